@@ -1,0 +1,34 @@
+package data
+
+import (
+	"io"
+	"time"
+)
+
+// Span is a range of an instrument, such as 0..10 V.
+type Span struct {
+	Low, High float64
+	Unit      string // as written after the numbers, "" when absent
+}
+
+// Options says how to read a log. The zero value recognises everything that
+// the file itself decides.
+type Options struct {
+	TimeCol, InputCol, TempCol, SetpointCol string // names of columns (or tags, with Long); "" means recognise
+	ModeCol, AirflowCol, InletCol           string
+	RunCol                                  string // column that tells several runs in one file apart
+
+	Long bool // rows are (time, tag, value)
+
+	InputUnit, TempUnit string // override of the unit: V, %, mA; C, F, K; "" means as the file says
+	InputSpan, TempSpan *Span  // scaling of mA and percent
+
+	Cycle time.Duration // a drive that switches on and off in a fixed cycle: the mean over a cycle is the input
+
+	TimeFormat string // layout of the clock, "" means recognise
+	From, To   string // part of the recording to keep: clock time or seconds; "" means all
+
+	RemoveSpikes bool // isolated spikes become missing instead of being flagged only
+
+	Stdin io.Reader // read for the name "-"
+}

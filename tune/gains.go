@@ -1,0 +1,81 @@
+package tune
+
+// GainsSchema is the schema of a gains file.
+const GainsSchema = "lagwright/gains/1"
+
+// Gains is a controller with what is known of it.
+type Gains struct {
+	Schema     string `json:"schema"`
+	Tool       string `json:"tool"`
+	Controller string `json:"controller"` // "p", "pi" or "pid"
+	Form       string `json:"form"`       // "ideal", "parallel" or "series"
+
+	Kc             float64   `json:"kc"`              // input units per temperature unit
+	Ti             *float64  `json:"ti_s"`            // null where absent
+	Td             *float64  `json:"td_s"`            // null where absent
+	Filter         float64   `json:"filter_s"`        // lag of the derivative (measurement) filter
+	SetpointWeight float64   `json:"setpoint_weight"` // b
+	Bias           float64   `json:"bias"`            // output of a P controller at zero error
+	Action         string    `json:"action"`          // "reverse" (gain > 0) or "direct"
+	Scan           float64   `json:"scan_s"`          // 0 means continuous
+	Limits         Limits    `json:"limits"`
+	Units          GainUnits `json:"units"`
+
+	Rule        string      `json:"rule"` // name of the rule, "synthesis" for the default
+	Requirement Requirement `json:"requirement"`
+
+	Nominal      *Metrics `json:"nominal"` // on the best-fit plant
+	Worst        *Metrics `json:"worst"`   // the assurance quantile over fresh plausible plants
+	Assurance    float64  `json:"assurance"`
+	Meets        bool     `json:"meets"`
+	ShareMeeting float64  `json:"share_meeting"`
+	Reasons      []string `json:"reasons"`
+	Cautions     []string `json:"cautions"`
+
+	Candidates []Candidate `json:"candidates,omitempty"` // the table of everything tried
+}
+
+// Limits of the controller output.
+type Limits struct {
+	Min  *float64 `json:"min"`
+	Max  *float64 `json:"max"`
+	Rate *float64 `json:"rate"` // per s
+}
+
+// GainUnits are the units of a gains file's numbers.
+type GainUnits struct {
+	Input       string `json:"input"`
+	Temperature string `json:"temperature"`
+}
+
+// Metrics of a loop. Null where the figure does not exist (an unstable loop,
+// no integral action, nothing settled in the time simulated).
+type Metrics struct {
+	Stable       bool     `json:"stable"`
+	Ms           *float64 `json:"ms"`
+	GainMargin   *float64 `json:"gain_margin"`
+	PhaseMargin  *float64 `json:"phase_margin_deg"`
+	DelayMargin  *float64 `json:"delay_margin_s"`
+	Damping      *float64 `json:"damping"`
+	Settling     *float64 `json:"settling_s"`
+	Overshoot    *float64 `json:"overshoot_percent"`
+	PeakInput    *float64 `json:"peak_input"`
+	IAE          *float64 `json:"iae"` // after a unit load step at the plant's input
+	SteadyOffset *float64 `json:"steady_offset"`
+}
+
+// Candidate is one row of the table of gains tried.
+type Candidate struct {
+	Rule     string   `json:"rule"`
+	Kc       float64  `json:"kc"`
+	Ti       *float64 `json:"ti_s"`
+	Td       *float64 `json:"td_s"`
+	Filter   float64  `json:"filter_s"`
+	Form     string   `json:"form"`
+	Nominal  *Metrics `json:"nominal"`
+	Worst    *Metrics `json:"worst"`
+	Share    float64  `json:"share_meeting"`
+	Meets    bool     `json:"meets"`
+	Selected bool     `json:"selected"`
+	Note     string   `json:"note"`
+}
