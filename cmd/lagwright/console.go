@@ -1,0 +1,130 @@
+package main
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"strings"
+
+	"github.com/spf13/pflag"
+
+	"lagwright/cmd/lagwright/internal/atomicfile"
+	"lagwright/cmd/lagwright/internal/format"
+)
+
+// console is what every command shares: the streams, and the flags that
+// stand everywhere.
+type console struct {
+	in          io.Reader
+	out, errOut io.Writer
+	args        []string // the command line without the program's name
+
+	json    bool
+	output  string
+	quiet   bool
+	rand    int64
+	workers int
+}
+
+func (c *console) addFlags(fs *pflag.FlagSet) {
+	fs.BoolVar(&c.json, "json", false, "print the result as JSON, and nothing else on standard output")
+	fs.StringVarP(&c.output, "output", "o", "", "write the result to this `FILE`")
+	fs.BoolVarP(&c.quiet, "quiet", "q", false, "no messages and no progress on standard error, errors only")
+	c.rand = 1
+	valueFlag(fs, &c.rand, "rand", "SEED", "1", "seed of every random draw; the same seed gives the same bytes", wholeNumber)
+	valueFlag(fs, &c.workers, "workers", "COUNT", "all", "processor cores to use", count)
+}
+
+// A result is what a library package computed; it writes itself.
+type result interface {
+	WriteJSON(io.Writer) error
+	WriteText(io.Writer) error
+}
+
+// deliver writes a result where the command line wants it: as JSON to the
+// file of -o, and as JSON (--json, or -o -) or text on standard output.
+func (c *console) deliver(r result) error {
+	if c.toFile() {
+		if err := c.writeFile(c.output, r.WriteJSON); err != nil {
+			return err
+		}
+	}
+	if c.json || c.output == "-" {
+		return r.WriteJSON(c.out)
+	}
+	return c.text(r.WriteText)
+}
+
+func (c *console) toFile() bool { return c.output != "" && c.output != "-" }
+
+// writeFile puts a whole file in place and says so.
+func (c *console) writeFile(path string, write func(io.Writer) error) error {
+	if err := atomicfile.Write(path, write); err != nil {
+		return err
+	}
+	c.note("wrote %s", path)
+	return nil
+}
+
+// text prints what write writes on standard output, made safe to show: it may
+// hold names out of a file.
+func (c *console) text(write func(io.Writer) error) error {
+	var b bytes.Buffer
+	if err := write(&b); err != nil {
+		return err
+	}
+	_, err := io.WriteString(c.out, safe(b.String()))
+	return err
+}
+
+// note prints a message on standard error, unless --quiet.
+func (c *console) note(message string, a ...any) {
+	if !c.quiet {
+		fmt.Fprintln(c.errOut, safe(fmt.Sprintf(message, a...)))
+	}
+}
+
+// complain prints the one line that an error gets.
+func (c *console) complain(ctx context.Context, err error) {
+	if errors.Is(err, context.Canceled) && ctx.Err() != nil {
+		err = errors.New("interrupted; no result was written")
+	}
+	fmt.Fprintln(c.errOut, "lagwright: "+oneLine(err.Error()))
+}
+
+// refuseOverwriting stops -o from naming one of the inputs.
+func (c *console) refuseOverwriting(output string, inputs []string) error {
+	out, err := os.Stat(output)
+	if err != nil {
+		return nil // not there yet
+	}
+	for _, path := range inputs {
+		if in, err := os.Stat(path); err == nil && in.Mode().IsRegular() && os.SameFile(in, out) {
+			return usageErrorf("%s is both input and output; give -o another name", path)
+		}
+	}
+	return nil
+}
+
+// safe makes every line of s safe to show.
+func safe(s string) string {
+	lines := strings.Split(s, "\n")
+	for i, line := range lines {
+		lines[i] = format.Text(line)
+	}
+	return strings.Join(lines, "\n")
+}
+
+// oneLine brings a message of several lines onto one.
+func oneLine(s string) string {
+	var parts []string
+	for line := range strings.Lines(s) {
+		if line = strings.TrimSpace(line); line != "" {
+			parts = append(parts, format.Text(line))
+		}
+	}
+	return strings.Join(parts, "; ")
+}

@@ -1,0 +1,82 @@
+package main
+
+import (
+	"context"
+
+	"github.com/spf13/cobra"
+
+	"lagwright/data"
+)
+
+// logFlags say how to read a log. They are the same on every command that
+// reads one.
+type logFlags struct {
+	options     data.Options
+	inputLaw    string
+	bumpInstant string
+}
+
+func (l *logFlags) add(cmd *cobra.Command) {
+	fs, o := cmd.Flags(), &l.options
+	fs.StringVar(&o.TimeCol, "time-col", "", "`NAME` of the time column (with --long: of the tag)")
+	fs.StringVar(&o.InputCol, "input-col", "", "`NAME` of the heater's input")
+	fs.StringVar(&o.TempCol, "temp-col", "", "`NAME` of the outlet temperature")
+	fs.StringVar(&o.SetpointCol, "setpoint-col", "", "`NAME` of the setpoint")
+	fs.StringVar(&o.ModeCol, "mode-col", "", "`NAME` of the column that says auto or manual")
+	fs.StringVar(&o.AirflowCol, "airflow-col", "", "`NAME` of the airflow")
+	fs.StringVar(&o.InletCol, "inlet-col", "", "`NAME` of the inlet temperature")
+	fs.StringVar(&o.RunCol, "run-col", "", "`NAME` of the column that tells several runs in a file apart")
+	fs.BoolVar(&o.Long, "long", false, "rows are time, tag, value")
+	choiceFlag(cmd, &o.InputUnit, "input-unit", "", "unit of the input, where the file is silent or wrong", "V", "%", "mA")
+	choiceFlag(cmd, &o.TempUnit, "temp-unit", "", "unit of the temperature, where the file is silent or wrong", "C", "F", "K")
+	l.addSpans(cmd)
+	choiceFlag(cmd, &l.inputLaw, "input-law", "linear", "power: the rise follows the input squared (RMS volts on a resistance)", "linear", "power")
+	valueFlag(fs, &o.Cycle, "cycle", "DURATION", "", "cycle of a drive that switches on and off: its mean over a cycle is the input", duration)
+	fs.StringVar(&o.TimeFormat, "time-format", "", "`LAYOUT` of the clock, such as 02/01/2006 15:04:05")
+	fs.StringVar(&o.From, "from", "", "keep the log from this `TIME`: clock time or seconds")
+	fs.StringVar(&o.To, "to", "", "keep the log up to this `TIME`: clock time or seconds")
+	fs.BoolVar(&o.RemoveSpikes, "remove-spikes", false, "take isolated spikes of temperature out instead of only flagging them")
+	choiceFlag(cmd, &l.bumpInstant, "bump-instant", "row", "row: a row's input holds from its time stamp on; unknown: anywhere in the sampling interval", "row", "unknown")
+}
+
+// addSpans defines the two flags that stand on gains as well.
+func (l *logFlags) addSpans(cmd *cobra.Command) {
+	optionalFlag(cmd.Flags(), &l.options.InputSpan, "input-span", "SPAN", "span of the input, such as 0..10V: scales mA and percent", span)
+	optionalFlag(cmd.Flags(), &l.options.TempSpan, "temp-span", "SPAN", "span of the temperature, such as 0..200C", span)
+}
+
+// expand resolves files, folders and globs.
+func (l *logFlags) expand(args []string) ([]string, error) {
+	files, err := data.Expand(args)
+	if err != nil {
+		return nil, inputError{err}
+	}
+	return files, nil
+}
+
+// readAll reads every file; the first that cannot be read stops it.
+func (l *logFlags) readAll(ctx context.Context, c *console, args []string) ([]*data.Run, error) {
+	files, err := l.expand(args)
+	if err != nil {
+		return nil, err
+	}
+	var runs []*data.Run
+	for _, file := range files {
+		more, err := l.read(ctx, c, file)
+		if err != nil {
+			return nil, err
+		}
+		runs = append(runs, more...)
+	}
+	return runs, nil
+}
+
+func (l *logFlags) read(ctx context.Context, c *console, file string) ([]*data.Run, error) {
+	o := l.options
+	o.Stdin = c.in
+	runs, err := data.Read(ctx, file, o)
+	if err != nil {
+		return nil, inputError{err}
+	}
+	return runs, nil
+}
