@@ -1,0 +1,274 @@
+package ident
+
+import "math"
+
+// A Simulator computes the responses of lag chains of unit gain to one input
+// at the rows of one log. It is exact at the rows for an input held between
+// its changes: any sampling, any dead time, lags that are equal, nearly equal
+// or decades apart. It keeps its work space, so an evaluation allocates
+// nothing and a Simulator must not be used by two goroutines at once; give
+// each its own [Simulator.Clone].
+type Simulator struct {
+	t         []float64 // time of each row
+	stretches []stretch
+	tolerance float64 // of a difference of times
+	shortest  float64 // lags up to it pass their input through
+
+	in     Input
+	change []float64 // of the input at in.At
+
+	chain chain
+	x     state
+	level float64 // delayed input less in.Before
+	next  int     // next change of the delayed input
+	step  matrix
+	kicks kickCache
+}
+
+// NewSimulator returns a simulator for the rows at t in s, strictly
+// ascending, and the input in. Changes of the input before t[0] count; the
+// chain is at rest before the first. t and in are kept, not copied.
+func NewSimulator(t []float64, in Input) *Simulator {
+	s := &Simulator{t: t, in: in, tolerance: timeTolerance(t)}
+	s.stretches = stretches(t, s.tolerance)
+	if n := len(t); n > 1 {
+		s.shortest = 1e-30 * (t[n-1] - t[0])
+	}
+	s.change = make([]float64, len(in.At))
+	before := in.Before
+	for j, v := range in.Value {
+		s.change[j] = v - before
+		before = v
+	}
+	return s
+}
+
+// Clone returns a simulator of the same log for another goroutine.
+func (s *Simulator) Clone() *Simulator {
+	clone := *s
+	return &clone
+}
+
+// outputs are the columns an evaluation fills; slope and v are nil when only
+// the response is wanted.
+type outputs struct {
+	y      []float64
+	dtheta []float64          // dy/dtheta, minus the slope
+	v      [maxLags][]float64 // by sensitivity state
+}
+
+// Response sets dst to the response of the chain with unit gain to the input
+// less its first value: y(t) for G(s) = e^(−deadTime·s)/Π(lag·s + 1), or
+// e^(−deadTime·s)/s for ipdt. lags are in s, in any order, st.NumLags() of
+// them, and may be zero. A nil dst is allocated; otherwise it has one element a
+// row. A negative or NaN lag, or a dead time that is not finite, gives NaN.
+func (s *Simulator) Response(dst []float64, st Structure, lags []float64, deadTime float64) []float64 {
+	if dst == nil {
+		dst = make([]float64, len(s.t))
+	}
+	o := outputs{y: dst}
+	s.evaluate(&o, st, lags, deadTime, false)
+	return dst
+}
+
+// Sensitivities sets dst[0] to the response as in [Simulator.Response],
+// dst[1+i] to its derivative with respect to lags[i] and the last, dst[1+
+// st.NumLags()], to that with respect to the dead time, per s. At a kink, where
+// a change of the input reaches a row of a chain of one element, the
+// derivative is the one from the right in time. The derivative at a lag of
+// zero is the one towards positive lags.
+func (s *Simulator) Sensitivities(dst [][]float64, st Structure, lags []float64, deadTime float64) {
+	lagCount := st.NumLags()
+	o := outputs{y: dst[0], dtheta: dst[1+lagCount]}
+	if !s.prepare(st, lags, deadTime, true) {
+		for _, column := range dst[:lagCount+2] {
+			fillNaN(column)
+		}
+		return
+	}
+	for i, k := range s.chain.of[:lagCount] {
+		if k >= 0 {
+			o.v[k] = dst[1+i]
+		}
+	}
+	s.walk(&o, st, deadTime)
+	for i, k := range s.chain.of[:lagCount] {
+		if k < 0 {
+			copy(dst[1+i], o.dtheta)
+		}
+	}
+}
+
+func (s *Simulator) evaluate(o *outputs, st Structure, lags []float64, deadTime float64, sensitivities bool) {
+	if !s.prepare(st, lags, deadTime, sensitivities) {
+		fillNaN(o.y)
+		return
+	}
+	s.walk(o, st, deadTime)
+}
+
+func fillNaN(x []float64) {
+	for i := range x {
+		x[i] = math.NaN()
+	}
+}
+
+func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sensitivities bool) bool {
+	s.kicks.clear()
+	return finite(deadTime) && s.chain.set(st, lags, s.shortest, sensitivities)
+}
+
+// walk fills the outputs row by row.
+func (s *Simulator) walk(o *outputs, st Structure, deadTime float64) {
+	if len(s.t) == 0 {
+		return
+	}
+	s.x, s.level, s.next = state{}, 0, 0
+	switch {
+	case st.integrating:
+		s.integrate(o, deadTime)
+		return
+	case s.chain.n == 0:
+		s.passThrough(o, deadTime)
+		return
+	}
+	s.arrive(0, deadTime)
+	s.emit(o, 0)
+	for _, r := range s.stretches {
+		s.chain.transition(&s.step, r.step)
+		for k := r.lo; k < r.hi; {
+			free := s.freeRows(k, r, deadTime)
+			s.run(o, k, k+free)
+			k += free
+			if k < r.hi {
+				s.chain.advance(&s.step, &s.x)
+				s.arrive(k, deadTime)
+				s.emit(o, k)
+				k++
+			}
+		}
+	}
+}
+
+// freeRows counts the rows of the stretch from row k on that lie before the
+// next change.
+func (s *Simulator) freeRows(k int, r stretch, deadTime float64) int {
+	if s.next == len(s.in.At) {
+		return r.hi - k
+	}
+	change := s.in.At[s.next] + deadTime - s.tolerance
+	if s.t[k] >= change {
+		return 0
+	}
+	steps := math.Ceil((change - s.t[k]) / r.step)
+	free := int(min(steps, float64(r.hi-k)))
+	for free > 0 && s.t[k+free-1] >= change {
+		free--
+	}
+	for k+free < r.hi && s.t[k+free] < change {
+		free++
+	}
+	return free
+}
+
+// arrive applies the changes of the delayed input up to row k to a state that
+// has been carried to row k without them.
+func (s *Simulator) arrive(k int, deadTime float64) {
+	c := &s.chain
+	for ; s.next < len(s.in.At); s.next++ {
+		since := s.t[k] - (s.in.At[s.next] + deadTime)
+		if since < -s.tolerance {
+			return
+		}
+		du := s.change[s.next]
+		kick := s.kicks.get(c, max(since, 0), s.tolerance)
+		for i := range c.n + c.q {
+			s.x[i] -= du * kick[i]
+		}
+		s.level = s.in.Value[s.next] - s.in.Before
+	}
+}
+
+// emit writes the outputs of row k.
+func (s *Simulator) emit(o *outputs, k int) {
+	n := s.chain.n
+	o.y[k] = s.level + s.x[n-1]
+	if o.dtheta == nil {
+		return
+	}
+	before := 0.0
+	if n > 1 {
+		before = s.x[n-2]
+	}
+	o.dtheta[k] = (s.x[n-1] - before) / s.chain.last()
+	for i := range s.chain.q {
+		o.v[i][k] = s.x[n+i]
+	}
+}
+
+// run carries the state through the rows lo ≤ k < hi, which no change
+// precedes, and writes their outputs.
+func (s *Simulator) run(o *outputs, lo, hi int) {
+	for k := lo; k < hi; k++ {
+		s.chain.advance(&s.step, &s.x)
+		s.emit(o, k)
+	}
+}
+
+// passThrough is walk for a chain without a lag: the response is the delayed
+// input itself and its slope is zero between the changes.
+func (s *Simulator) passThrough(o *outputs, deadTime float64) {
+	clear(o.dtheta)
+	for k := range s.t {
+		for s.next < len(s.in.At) && s.in.At[s.next]+deadTime <= s.t[k]+s.tolerance {
+			s.level = s.in.Value[s.next] - s.in.Before
+			s.next++
+		}
+		o.y[k] = s.level
+	}
+}
+
+// integrate is walk for ipdt: the response is the integral of the delayed
+// input less its first value, and its slope that input.
+func (s *Simulator) integrate(o *outputs, deadTime float64) {
+	area, at := 0.0, 0.0 // integral up to the last change, time of that change
+	for k := range s.t {
+		for s.next < len(s.in.At) && s.in.At[s.next]+deadTime <= s.t[k]+s.tolerance {
+			change := s.in.At[s.next] + deadTime
+			area += s.level * (change - at)
+			at = change
+			s.level = s.in.Value[s.next] - s.in.Before
+			s.next++
+		}
+		o.y[k] = area + s.level*(s.t[k]-at)
+		if o.dtheta != nil {
+			o.dtheta[k] = -s.level
+		}
+	}
+}
+
+// A kickCache remembers the kicks of the last few times since a change. When
+// the changes fall on the rows, there is only one such time.
+type kickCache struct {
+	since [4]float64
+	kick  [4]state
+	used  int
+	last  int
+}
+
+func (k *kickCache) clear() { k.used = 0 }
+
+func (k *kickCache) get(c *chain, since, tolerance float64) *state {
+	for i := range min(k.used, len(k.since)) {
+		if math.Abs(k.since[i]-since) <= tolerance {
+			return &k.kick[i]
+		}
+	}
+	i := k.used % len(k.since)
+	k.used++
+	var f matrix
+	c.transition(&f, since)
+	c.kick(&k.kick[i], &f)
+	k.since[i] = since
+	return &k.kick[i]
+}
