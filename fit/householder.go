@@ -1,0 +1,78 @@
+package fit
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/floats"
+)
+
+// triangularise overwrites the m×n matrix held in columns (n columns of m ≥ n
+// numbers) by its Householder QR decomposition without pivoting, A = Q·R.
+// Afterwards R is in columns[j][i] for i ≤ j, and below the diagonal stand the
+// mirrors that make up Q, whose first elements are returned as heads.
+//
+// The error of R grows with the condition number of A, where that of a
+// factor of AᵀA would grow with its square. Golub and Van Loan, Matrix
+// Computations, algorithm 5.2.1 (from memory).
+func triangularise(columns [][]float64) (heads []float64) {
+	heads = make([]float64, len(columns))
+	for j, column := range columns {
+		v := column[j:]
+		diagonal := -math.Copysign(floats.Norm(v, 2), v[0])
+		heads[j] = v[0] - diagonal
+		v[0] = diagonal
+		for _, other := range columns[j+1:] {
+			reflect(other[j:], v, heads[j])
+		}
+	}
+	return heads
+}
+
+// rotate overwrites x (m numbers) by Qᵀ·x for a matrix that triangularise has
+// decomposed.
+func rotate(x []float64, columns [][]float64, heads []float64) {
+	for j, column := range columns {
+		reflect(x[j:], column[j:], heads[j])
+	}
+}
+
+// reflect mirrors x at the plane normal to (head, v[1:]), where v[0] holds the
+// element of R that the mirror made: vᵀv/2 = −v[0]·head. A zero head stands
+// for a zero column, which needs no mirror.
+func reflect(x, v []float64, head float64) {
+	if head == 0 {
+		return
+	}
+	share := (head*x[0] + floats.Dot(v[1:], x[1:])) / (v[0] * head)
+	x[0] += share * head
+	floats.AddScaled(x[1:], share, v[1:])
+}
+
+// backSubstitute solves R·x = b for the upper triangle R held in columns and
+// writes x over b[:n]. A zero on the diagonal gives infinities.
+func backSubstitute(columns [][]float64, b []float64) {
+	for j := len(columns) - 1; j >= 0; j-- {
+		b[j] /= columns[j][j]
+		floats.AddScaled(b[:j], -b[j], columns[j][:j])
+	}
+}
+
+// invertTriangle returns the inverse of the upper triangle R held in columns,
+// again by columns (n of n numbers), or false where R is singular to working
+// precision: where, after the columns are scaled to unit length, a diagonal
+// element is below n·2⁻⁵². A dependent column is then not told from rounding.
+func invertTriangle(columns [][]float64) (inverse [][]float64, ok bool) {
+	n := len(columns)
+	const unit = 0x1p-52
+	inverse = make([][]float64, n)
+	for j, column := range columns {
+		length := floats.Norm(column[:j+1], 2)
+		if !(math.Abs(column[j]) > float64(n)*unit*length) || math.IsInf(length, 1) {
+			return nil, false
+		}
+		inverse[j] = make([]float64, n)
+		inverse[j][j] = 1
+		backSubstitute(columns[:j+1], inverse[j])
+	}
+	return inverse, true
+}
