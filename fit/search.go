@@ -29,8 +29,8 @@ const (
 	resolved = 64
 )
 
-// point is a place of the search with all that is known there.
-type point struct {
+// place is a point of the search with all that is known there.
+type place struct {
 	p         []float64
 	residuals []float64
 	sse       float64
@@ -45,7 +45,7 @@ type search struct {
 	pr       Problem
 	settings Settings
 	start    []float64
-	at       point
+	at       place
 
 	scale   []float64 // longest column of J so far for each parameter: D of linearised.step
 	damping float64   // λ of the next step
