@@ -9,7 +9,8 @@ import "math"
 // nothing and a Simulator must not be used by two goroutines at once; give
 // each its own [Simulator.Clone].
 type Simulator struct {
-	t         []float64 // time of each row
+	t         []float64 // time of each row, of its first sample when rows are means
+	rows      []Row     // nil when rows are samples
 	stretches []stretch
 	tolerance float64 // of a difference of times
 	shortest  float64 // lags up to it pass their input through
@@ -23,6 +24,7 @@ type Simulator struct {
 	next  int     // next change of the delayed input
 	step  matrix
 	kicks kickCache
+	means meanCache
 }
 
 // NewSimulator returns a simulator for the rows at t in s, strictly
@@ -115,6 +117,7 @@ func fillNaN(x []float64) {
 
 func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sensitivities bool) bool {
 	s.kicks.clear()
+	s.means.clear()
 	return finite(deadTime) && s.chain.set(st, lags, s.shortest, sensitivities)
 }
 
@@ -124,16 +127,12 @@ func (s *Simulator) walk(o *outputs, st Structure, deadTime float64) {
 		return
 	}
 	s.x, s.level, s.next = state{}, 0, 0
-	switch {
-	case st.integrating:
-		s.integrate(o, deadTime)
-		return
-	case s.chain.n == 0:
-		s.passThrough(o, deadTime)
+	if st.integrating || s.chain.n == 0 {
+		s.walkWithoutLags(o, st.integrating, deadTime)
 		return
 	}
 	s.arrive(0, deadTime)
-	s.emit(o, 0)
+	s.emitRow(o, 0, deadTime)
 	for _, r := range s.stretches {
 		s.chain.transition(&s.step, r.step)
 		for k := r.lo; k < r.hi; {
@@ -143,20 +142,23 @@ func (s *Simulator) walk(o *outputs, st Structure, deadTime float64) {
 			if k < r.hi {
 				s.chain.advance(&s.step, &s.x)
 				s.arrive(k, deadTime)
-				s.emit(o, k)
+				s.emitRow(o, k, deadTime)
 				k++
 			}
 		}
 	}
 }
 
-// freeRows counts the rows of the stretch from row k on that lie before the
-// next change.
+// freeRows counts the rows of the stretch from row k on that the next change
+// comes after.
 func (s *Simulator) freeRows(k int, r stretch, deadTime float64) int {
 	if s.next == len(s.in.At) {
 		return r.hi - k
 	}
-	change := s.in.At[s.next] + deadTime - s.tolerance
+	change := s.arrival(s.next, deadTime)
+	if s.rows != nil {
+		change -= s.rows[k].last() - s.rows[k].T
+	}
 	if s.t[k] >= change {
 		return 0
 	}
@@ -171,78 +173,111 @@ func (s *Simulator) freeRows(k int, r stretch, deadTime float64) int {
 	return free
 }
 
+// arrival is the time from which on change j of the delayed input counts: a
+// change that rounding puts just after a row is on that row.
+func (s *Simulator) arrival(j int, deadTime float64) float64 {
+	return s.in.At[j] + deadTime - s.tolerance
+}
+
 // arrive applies the changes of the delayed input up to row k to a state that
 // has been carried to row k without them.
 func (s *Simulator) arrive(k int, deadTime float64) {
-	c := &s.chain
-	for ; s.next < len(s.in.At); s.next++ {
-		since := s.t[k] - (s.in.At[s.next] + deadTime)
-		if since < -s.tolerance {
-			return
-		}
-		du := s.change[s.next]
-		kick := s.kicks.get(c, max(since, 0), s.tolerance)
-		for i := range c.n + c.q {
-			s.x[i] -= du * kick[i]
-		}
-		s.level = s.in.Value[s.next] - s.in.Before
-	}
+	s.next, s.level = s.takeChanges(&s.x, s.next, s.level, s.t[k], deadTime)
 }
 
-// emit writes the outputs of row k.
-func (s *Simulator) emit(o *outputs, k int) {
-	n := s.chain.n
-	o.y[k] = s.level + s.x[n-1]
-	if o.dtheta == nil {
-		return
+// takeChanges applies the changes of the delayed input, from change next on and
+// up to the time, to a state that has been carried to that time without them. It
+// returns the next change and the level of the input.
+func (s *Simulator) takeChanges(x *state, next int, level, time, deadTime float64) (int, float64) {
+	c := &s.chain
+	for ; next < len(s.in.At) && s.arrival(next, deadTime) <= time; next++ {
+		since := max(time-(s.in.At[next]+deadTime), 0)
+		du := s.change[next]
+		kick := s.kicks.get(c, since, s.tolerance)
+		for i := range c.n + c.q {
+			x[i] -= du * kick[i]
+		}
+		level = s.in.Value[next] - s.in.Before
 	}
-	before := 0.0
-	if n > 1 {
-		before = s.x[n-2]
-	}
-	o.dtheta[k] = (s.x[n-1] - before) / s.chain.last()
-	for i := range s.chain.q {
-		o.v[i][k] = s.x[n+i]
-	}
+	return next, level
 }
 
 // run carries the state through the rows lo ≤ k < hi, which no change
 // precedes, and writes their outputs.
 func (s *Simulator) run(o *outputs, lo, hi int) {
+	if s.rows != nil {
+		s.runMeans(o, lo, hi)
+		return
+	}
 	for k := lo; k < hi; k++ {
 		s.chain.advance(&s.step, &s.x)
-		s.emit(o, k)
+		s.emit(o, k, &s.x, s.level)
 	}
 }
 
-// passThrough is walk for a chain without a lag: the response is the delayed
-// input itself and its slope is zero between the changes.
-func (s *Simulator) passThrough(o *outputs, deadTime float64) {
-	clear(o.dtheta)
-	for k := range s.t {
-		for s.next < len(s.in.At) && s.in.At[s.next]+deadTime <= s.t[k]+s.tolerance {
-			s.level = s.in.Value[s.next] - s.in.Before
-			s.next++
-		}
-		o.y[k] = s.level
+// emitRow writes the outputs of row k from the state at its first sample.
+func (s *Simulator) emitRow(o *outputs, k int, deadTime float64) {
+	if s.rows != nil {
+		s.emitMean(o, k, deadTime)
+		return
+	}
+	s.emit(o, k, &s.x, s.level)
+}
+
+// emit writes the outputs of row k that a state and an input level make.
+func (s *Simulator) emit(o *outputs, k int, x *state, level float64) {
+	n := s.chain.n
+	o.y[k] = level + x[n-1]
+	if o.dtheta == nil {
+		return
+	}
+	before := 0.0
+	if n > 1 {
+		before = x[n-2]
+	}
+	o.dtheta[k] = (x[n-1] - before) / s.chain.last()
+	for i := range s.chain.q {
+		o.v[i][k] = x[n+i]
 	}
 }
 
-// integrate is walk for ipdt: the response is the integral of the delayed
-// input less its first value, and its slope that input.
-func (s *Simulator) integrate(o *outputs, deadTime float64) {
-	area, at := 0.0, 0.0 // integral up to the last change, time of that change
+// walkWithoutLags is walk for ipdt, whose response is the integral of the
+// delayed input less its first value and whose slope is that input; and for a
+// chain with no lag at all, whose response is that input and whose slope is
+// zero between the changes.
+func (s *Simulator) walkWithoutLags(o *outputs, integrating bool, deadTime float64) {
+	area, at := 0.0, 0.0 // integral up to the last change, and that change's time
 	for k := range s.t {
-		for s.next < len(s.in.At) && s.in.At[s.next]+deadTime <= s.t[k]+s.tolerance {
-			change := s.in.At[s.next] + deadTime
-			area += s.level * (change - at)
-			at = change
-			s.level = s.in.Value[s.next] - s.in.Before
-			s.next++
+		r := s.row(k)
+		levels, areas := 0.0, 0.0 // sums over the row's samples
+		for p := 0; p < r.M; {
+			for s.next < len(s.in.At) && s.arrival(s.next, deadTime) <= r.sample(p) {
+				change := s.in.At[s.next] + deadTime
+				area += s.level * (change - at)
+				at = change
+				s.level = s.in.Value[s.next] - s.in.Before
+				s.next++
+			}
+			count := r.M - p
+			if s.next < len(s.in.At) {
+				count = r.before(s.arrival(s.next, deadTime), p)
+			}
+			middle := (r.sample(p) + r.sample(p+count-1)) / 2
+			levels += float64(count) * s.level
+			areas += float64(count) * (area + s.level*(middle-at))
+			p += count
 		}
-		o.y[k] = area + s.level*(s.t[k]-at)
+		levels, areas = levels/float64(r.M), areas/float64(r.M)
+		if integrating {
+			o.y[k] = areas
+		} else {
+			o.y[k] = levels
+		}
 		if o.dtheta != nil {
-			o.dtheta[k] = -s.level
+			o.dtheta[k] = 0
+			if integrating {
+				o.dtheta[k] = -levels
+			}
 		}
 	}
 }

@@ -1,0 +1,74 @@
+package ident
+
+import (
+	"fmt"
+	"math/rand/v2"
+	"testing"
+)
+
+// TestBlockMeans compares rows that are means with the means of single samples.
+func TestBlockMeans(t *testing.T) {
+	const h = 0.05
+	rng := rand.New(rand.NewPCG(3, 1))
+	var rows []Row
+	var times []float64
+	for sample := 0; sample < 4000; {
+		m := []int{1, 1, 7, 64, 64, 301}[rng.IntN(6)]
+		for range 1 + rng.IntN(4) {
+			rows = append(rows, Row{T: float64(sample) * h, H: h, M: m})
+			for i := range m {
+				times = append(times, float64(sample+i)*h)
+			}
+			sample += m
+		}
+		if rng.IntN(3) == 0 {
+			sample += rng.IntN(20) // samples left out between the rows
+		}
+	}
+	in := Input{Before: 1}
+	for at := 0.0; at < 180; at += rng.ExpFloat64() * 9 {
+		in.At = append(in.At, at)
+		in.Value = append(in.Value, rng.NormFloat64())
+	}
+	plain, means := NewSimulator(times, in), NewBlockSimulator(rows, in)
+	for _, c := range []struct {
+		structure string
+		lags      []float64
+		deadTime  float64
+	}{
+		{"fopdt", []float64{2}, 0.22},
+		{"fopdt", []float64{0}, 0.22},
+		{"fopdt", []float64{900}, 0.1},
+		{"chain2", []float64{2, 2}, 0},
+		{"chain2", []float64{40, 0.004}, 0.31},
+		{"chain3", []float64{2.1, 0.65, 0.05}, 0.22},
+		{"chain3", []float64{2.1, 0, 500}, 0.22},
+		{"chain4", []float64{2.1, 0.65, 0.05, 1e-6}, 3},
+		{"equal2", []float64{3}, 0.2},
+		{"equal8", []float64{0.7}, 0.15},
+		{"ipdt", nil, 0.22},
+	} {
+		st := structure(t, c.structure)
+		all, got := columnsFor(st, len(times)), columnsFor(st, len(rows))
+		plain.Sensitivities(all, st, c.lags, c.deadTime)
+		means.Sensitivities(got, st, c.lags, c.deadTime)
+		for i := range all {
+			want := make([]float64, len(rows))
+			sample := 0
+			for k, r := range rows {
+				for range r.M {
+					want[k] += all[i][sample] / float64(r.M)
+					sample++
+				}
+			}
+			name := fmt.Sprintf("%s %v column %d", c.structure, c.lags, i)
+			if d := greatestDifference(got[i], want); !(d <= 1e-12*span(all[i])) {
+				t.Errorf("%s: mean is off by %.2g of the span", name, d/span(all[i]))
+			}
+		}
+		response := means.Response(nil, st, c.lags, c.deadTime)
+		if d := greatestDifference(response, got[0]); !(d <= 1e-13*span(got[0])) {
+			t.Errorf("%s: response alone is off by %.2g", c.structure, d)
+		}
+	}
+}
