@@ -37,9 +37,10 @@ type Gains struct {
 
 // Limits of the controller output.
 type Limits struct {
-	Min  *float64 `json:"min"`
-	Max  *float64 `json:"max"`
-	Rate *float64 `json:"rate"` // per s
+	Min        *float64 `json:"min"`
+	Max        *float64 `json:"max"`
+	Rate       *float64 `json:"rate"`                 // per s
+	Resolution *float64 `json:"resolution,omitempty"` // smallest step of the output
 }
 
 // GainUnits are the units of a gains file's numbers.
