@@ -95,15 +95,17 @@ func (c *console) complain(ctx context.Context, err error) {
 	fmt.Fprintln(c.errOut, "lagwright: "+oneLine(err.Error()))
 }
 
-// refuseOverwriting stops -o from naming one of the inputs.
-func (c *console) refuseOverwriting(output string, inputs []string) error {
-	out, err := os.Stat(output)
-	if err != nil {
-		return nil // not there yet
-	}
-	for _, path := range inputs {
-		if in, err := os.Stat(path); err == nil && in.Mode().IsRegular() && os.SameFile(in, out) {
-			return usageErrorf("%s is both input and output; give -o another name", path)
+// refuseOverwriting stops an output from taking the place of an input.
+func (c *console) refuseOverwriting(inputs []string, outputs ...string) error {
+	for _, output := range outputs {
+		out, err := os.Stat(output)
+		if err != nil || !out.Mode().IsRegular() {
+			continue // not there yet, or not replaced
+		}
+		for _, path := range inputs {
+			if in, err := os.Stat(path); err == nil && os.SameFile(in, out) {
+				return usageErrorf("%s is both input and output; write to another name", path)
+			}
 		}
 	}
 	return nil

@@ -53,13 +53,14 @@ func optionalFlag[T any](fs *pflag.FlagSet, dst **T, name, kind, usage string, p
 	})
 }
 
-// choiceFlag defines a flag that takes one of a few words.
+// choiceFlag defines a flag that takes one of a few words, shown where not given.
 func choiceFlag(cmd *cobra.Command, dst *string, name, shown, usage string, words ...string) {
 	choiceFlagFunc(cmd, dst, name, strings.Join(words, "|"), shown, usage, words)
 }
 
 // choiceFlagFunc is choiceFlag with a placeholder for lists too long to show.
 func choiceFlagFunc(cmd *cobra.Command, dst *string, name, kind, shown, usage string, words []string) {
+	*dst = shown
 	valueFlag(cmd.Flags(), dst, name, kind, shown, usage, func(s string) (string, error) {
 		if !slices.Contains(words, s) {
 			return "", fmt.Errorf("want one of %s", strings.Join(words, ", "))

@@ -53,6 +53,7 @@ Start with: lagwright demo`,
 	root.AddCommand(
 		newVersion(c),
 		newCompletion(c),
+		newMan(c),
 	)
 	// --help shows flags in the order they are declared: by subject.
 	root.PersistentFlags().SortFlags = false

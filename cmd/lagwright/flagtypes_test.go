@@ -1,0 +1,142 @@
+package main
+
+import (
+	"math"
+	"strings"
+	"testing"
+
+	"lagwright/data"
+)
+
+func TestSeconds(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want float64
+		err  string
+	}{
+		{"45s", 45, ""},
+		{"250ms", 0.25, ""},
+		{"2m", 120, ""},
+		{"1m30s", 90, ""},
+		{"1.5 h", 5400, ""},
+		{"45", 0, "want a unit: 45s, 45ms or 45m"},
+		{"soon", 0, "want a duration such as 45s, 250ms or 2m"},
+		{"-3s", 0, "not negative"},
+		{"", 0, "want a duration"},
+		{"1e400s", 0, "want a duration"},
+	} {
+		checkParsed(t, "seconds", tt.in, seconds, tt.want, tt.err)
+	}
+}
+
+func TestPercent(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want float64
+		err  string
+	}{
+		{"5%", 5, ""},
+		{"5 %", 5, ""},
+		{"5", 5, ""},
+		{"0", 0, ""},
+		{"0.5%", 0.5, ""},
+		{"0.05", 0, "is it 0.05% or 5%?"},
+		{"1", 0, "is it 1% or 100%?"},
+		{"-5%", 0, "want a percentage such as 5%"},
+		{"five", 0, "want a percentage such as 5%"},
+		{"NaN", 0, "want a percentage such as 5%"},
+		{"Inf%", 0, "want a percentage such as 5%"},
+	} {
+		checkParsed(t, "percent", tt.in, percent, tt.want, tt.err)
+	}
+}
+
+func TestShare(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want float64
+		err  string
+	}{
+		{"95%", 0.95, ""},
+		{"0.95", 0.95, ""},
+		{"95", 0.95, ""},
+		{"2%", 0.02, ""},
+		{"0.5%", 0.005, ""},
+		{"100%", 0, "below 100%"},
+		{"0", 0, "above 0%"},
+		{"most", 0, "want a percentage"},
+	} {
+		checkParsed(t, "share", tt.in, share, tt.want, tt.err)
+	}
+}
+
+func TestNumber(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want float64
+		err  string
+	}{
+		{"10", 10, ""},
+		{"-0.5", -0.5, ""},
+		{"1e3", 1000, ""},
+		{"1_0", 0, "want a number"},
+		{"0x1p-2", 0, "want a number"},
+		{"nan", 0, "want a number"},
+		{"inf", 0, "want a number"},
+		{"1,5", 0, "want a number"},
+	} {
+		checkParsed(t, "number", tt.in, number, tt.want, tt.err)
+	}
+}
+
+func TestSpan(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want data.Span
+		err  string
+	}{
+		{"0..10V", data.Span{Low: 0, High: 10, Unit: "V"}, ""},
+		{"4..20mA", data.Span{Low: 4, High: 20, Unit: "mA"}, ""},
+		{"-20..180C", data.Span{Low: -20, High: 180, Unit: "C"}, ""},
+		{"0 .. 200 degC", data.Span{Low: 0, High: 200, Unit: "degC"}, ""},
+		{"0.5..2.5", data.Span{Low: 0.5, High: 2.5}, ""},
+		{"-40..-10C", data.Span{Low: -40, High: -10, Unit: "C"}, ""},
+		{"10..0V", data.Span{}, "want the low end first"},
+		{"5..5", data.Span{}, "want the low end first"},
+		{"0-10V", data.Span{}, "want low..high"},
+		{"..10", data.Span{}, "want low..high"},
+		{"1e999..2e999", data.Span{}, "want low..high"},
+	} {
+		checkParsed(t, "span", tt.in, span, tt.want, tt.err)
+	}
+}
+
+func checkParsed[T comparable](t *testing.T, what, in string, parse func(string) (T, error), want T, wantErr string) {
+	t.Helper()
+	got, err := parse(in)
+	switch {
+	case wantErr == "" && err != nil:
+		t.Errorf("%s(%q): %v", what, in, err)
+	case wantErr != "" && (err == nil || !strings.Contains(err.Error(), wantErr)):
+		t.Errorf("%s(%q): error %v, want one that says %q", what, in, err, wantErr)
+	case wantErr == "" && got != want:
+		t.Errorf("%s(%q) = %v, want %v", what, in, got, want)
+	}
+}
+
+// Whatever is typed, a flag gives a finite number or an error.
+func FuzzFlagTypes(f *testing.F) {
+	for _, s := range []string{"45s", "5%", "0.95", "0..10V", "-1e3", "1m30s", "Inf", "%", ".."} {
+		f.Add(s)
+	}
+	f.Fuzz(func(t *testing.T, s string) {
+		for _, parse := range []func(string) (float64, error){number, seconds, percent, share, dampingRatio, peakSensitivity} {
+			if v, err := parse(s); err == nil && (math.IsNaN(v) || math.IsInf(v, 0)) {
+				t.Errorf("%q gives %v", s, v)
+			}
+		}
+		if v, err := span(s); err == nil && !(v.Low < v.High) {
+			t.Errorf("%q gives the span %v", s, v)
+		}
+	})
+}

@@ -1,0 +1,119 @@
+package main
+
+import (
+	"bytes"
+	"errors"
+	"flag"
+	"os"
+	"os/exec"
+	"path/filepath"
+	"regexp"
+	"strconv"
+	"strings"
+	"testing"
+	"unicode/utf8"
+
+	"github.com/rogpeppe/go-internal/testscript"
+)
+
+var update = flag.Bool("update", false, "rewrite the expected files inside testdata/script")
+
+func TestMain(m *testing.M) {
+	testscript.Main(m, map[string]func(){"lagwright": main})
+}
+
+// TestScript runs the manual in testdata/script: every command as a person
+// types it. $DEMO is the folder of the demo logs.
+func TestScript(t *testing.T) {
+	demo, err := filepath.Abs(filepath.Join(repository, "testdata", "demo"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	testscript.Run(t, testscript.Params{
+		Dir:                 "testdata/script",
+		RequireExplicitExec: true,
+		RequireUniqueNames:  true,
+		UpdateScripts:       *update,
+		Setup: func(e *testscript.Env) error {
+			e.Setenv("DEMO", demo)
+			e.Setenv("SOURCE_DATE_EPOCH", "1773220320")
+			return nil
+		},
+		Cmds: map[string]func(*testscript.TestScript, bool, []string){
+			"exitcode": scriptExitCode,
+			"oneline":  scriptOneLine,
+			"narrow":   scriptNarrow,
+			"plain":    scriptPlain,
+			"bytes":    scriptBytes,
+			"truncate": scriptTruncate,
+		},
+	})
+}
+
+// exitcode 3 lagwright fit x.csv: the command must end with this very code.
+func scriptExitCode(ts *testscript.TestScript, neg bool, args []string) {
+	if len(args) < 2 || neg {
+		ts.Fatalf("usage: exitcode CODE COMMAND...")
+	}
+	want, err := strconv.Atoi(args[0])
+	ts.Check(err)
+	err = ts.Exec(args[1], args[2:]...)
+	got := 0
+	if exit := (*exec.ExitError)(nil); errors.As(err, &exit) {
+		got = exit.ExitCode()
+	} else if err != nil {
+		ts.Fatalf("%v", err)
+	}
+	if got != want {
+		ts.Fatalf("exit code %d, want %d", got, want)
+	}
+}
+
+// oneline FILE: the file (or stderr) holds one line, which begins with the
+// program's name.
+func scriptOneLine(ts *testscript.TestScript, neg bool, args []string) {
+	text := ts.ReadFile(args[0])
+	if strings.Count(text, "\n") != 1 || !strings.HasPrefix(text, "lagwright: ") || !strings.HasSuffix(text, "\n") {
+		ts.Fatalf("want one line that begins with \"lagwright: \", have %q", text)
+	}
+}
+
+// narrow FILE: no line is wider than 80 columns.
+func scriptNarrow(ts *testscript.TestScript, neg bool, args []string) {
+	for line := range strings.Lines(ts.ReadFile(args[0])) {
+		if n := utf8.RuneCountInString(strings.TrimRight(line, "\n")); n > 80 {
+			ts.Fatalf("%d columns: %s", n, line)
+		}
+	}
+}
+
+var unsafeText = regexp.MustCompile(`[\x00-\x08\x0b-\x1f\x7f\x{80}-\x{9f}\x{200e}\x{200f}\x{202a}-\x{202e}\x{2066}-\x{2069}]`)
+
+// plain FILE: nothing in it moves a cursor, colours, or turns the writing.
+func scriptPlain(ts *testscript.TestScript, neg bool, args []string) {
+	if at := unsafeText.FindString(ts.ReadFile(args[0])); at != "" {
+		ts.Fatalf("%s holds %q", args[0], at)
+	}
+}
+
+// bytes FILE TEXT: writes the Go-quoted text, for files that a script cannot
+// hold as they are. bytes FILE TEXT COUNT repeats it.
+func scriptBytes(ts *testscript.TestScript, neg bool, args []string) {
+	text, err := strconv.Unquote(`"` + args[1] + `"`)
+	ts.Check(err)
+	count := 1
+	if len(args) > 2 {
+		count, err = strconv.Atoi(args[2])
+		ts.Check(err)
+	}
+	ts.Check(os.WriteFile(ts.MkAbs(args[0]), bytes.Repeat([]byte(text), count), 0o644))
+}
+
+// truncate FILE SOURCE COUNT: writes the first bytes of a file.
+func scriptTruncate(ts *testscript.TestScript, neg bool, args []string) {
+	whole, err := os.ReadFile(args[1])
+	ts.Check(err)
+	count, err := strconv.Atoi(args[2])
+	ts.Check(err)
+	ts.Check(os.WriteFile(ts.MkAbs(args[0]), whole[:count], 0o644))
+}
