@@ -132,6 +132,11 @@ func (s *Simulator) walk(o *outputs, st Structure, deadTime float64) {
 		return
 	}
 	s.arrive(0, deadTime)
+	s.carry(o, deadTime)
+}
+
+// carry fills the outputs from the state at the first row.
+func (s *Simulator) carry(o *outputs, deadTime float64) {
 	s.emitRow(o, 0, deadTime)
 	for _, r := range s.stretches {
 		s.chain.transition(&s.step, r.step)
@@ -228,6 +233,9 @@ func (s *Simulator) emitRow(o *outputs, k int, deadTime float64) {
 func (s *Simulator) emit(o *outputs, k int, x *state, level float64) {
 	n := s.chain.n
 	o.y[k] = level + x[n-1]
+	for i := range s.chain.q {
+		o.v[i][k] = x[n+i]
+	}
 	if o.dtheta == nil {
 		return
 	}
@@ -236,9 +244,6 @@ func (s *Simulator) emit(o *outputs, k int, x *state, level float64) {
 		before = x[n-2]
 	}
 	o.dtheta[k] = (x[n-1] - before) / s.chain.last()
-	for i := range s.chain.q {
-		o.v[i][k] = x[n+i]
-	}
 }
 
 // walkWithoutLags is walk for ipdt, whose response is the integral of the
