@@ -9,7 +9,8 @@ const ReplaySchema = "lagwright/replay/1"
 type Replay struct {
 	Schema      string           `json:"schema"`
 	Tool        string           `json:"tool"`
-	Card        string           `json:"card"`  // base name or hash of the card
+	Card        string           `json:"card"`  // short hash of the card
+	Key         string           `json:"key"`   // short hash of all that decides a run's result besides its log
 	Gains       tune.Gains       `json:"gains"` // as replayed
 	Requirement tune.Requirement `json:"requirement"`
 	Plants      int              `json:"plants"`
@@ -31,7 +32,8 @@ type RunReplay struct {
 	Proposed BandMetrics `json:"proposed"` // median and band over the plausible plants
 	Logged   RunMetrics  `json:"logged"`
 
-	Meets       bool     `json:"meets"`
+	Judged      bool     `json:"judged"`      // the run shows something that the requirement asks for
+	Meets       bool     `json:"meets"`       // probability ≥ the assurance of the gains; false when nothing could be judged
 	Probability float64  `json:"probability"` // share of plausible plants on which it meets
 	Reasons     []string `json:"reasons"`
 	Warnings    []string `json:"warnings"`
@@ -61,8 +63,11 @@ type BandMetrics struct {
 
 // BackTest is the replay of a run under the gains in force when it was made.
 type BackTest struct {
-	ShareInside float64  `json:"share_inside"` // of samples inside the stated band
-	Stated      float64  `json:"stated"`       // the band's level
+	ShareInside float64  `json:"share_inside"`       // of the temperatures inside the band of plants and noise, given the logged input
+	Stated      float64  `json:"stated"`             // the band's level
+	InputInside float64  `json:"input_share_inside"` // of the rows at which the replayed input meets the logged one
+	InputRMSE   *float64 `json:"input_rmse"`         // replayed less logged input
+	TempRMSE    *float64 `json:"temperature_rmse"`   // replayed less logged temperature
 	Reproduced  bool     `json:"reproduced"`
 	Differs     []string `json:"differs"` // what differs, in words
 }
@@ -91,8 +96,10 @@ type FailedRun struct {
 // Summary over all runs.
 type Summary struct {
 	Runs       int     `json:"runs"`
-	Meeting    int     `json:"meeting"`
-	Failed     int     `json:"failed"`
-	Meets      bool    `json:"meets"`
-	ShareMeets float64 `json:"share_meeting"`
+	Judged     int     `json:"judged"`        // runs on which the requirement could be judged
+	Meeting    int     `json:"meeting"`       // of these
+	Distrusted int     `json:"distrusted"`    // runs that the back-test did not reproduce
+	Failed     int     `json:"failed"`        // logs and runs that could not be replayed
+	Meets      bool    `json:"meets"`         // every judged run meets it
+	ShareMeets float64 `json:"share_meeting"` // of the judged runs
 }

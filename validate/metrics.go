@@ -1,0 +1,188 @@
+package validate
+
+import "math"
+
+// A signal is one recording to be measured, whether it was logged, simulated
+// or replayed: all three go through the same [figures.add]. The slices share
+// one length and clock (s, ascending).
+type signal struct {
+	t  []float64
+	y  []float64 // temperature; NaN where missing
+	u  []float64 // input, holds from its row on
+	r  []float64 // setpoint, holds from its row on; nil when there is none
+	r0 float64   // setpoint (or level) in force before the first row
+}
+
+// A yardstick is how signals are measured.
+type yardstick struct {
+	band     float64 // half-width of the settling band, fraction of the step
+	noise    float64 // sd of the noise that no controller can act on, see noiseBeyondControl
+	apart    float64 // s between noise values that can be taken as independent
+	quantum  float64 // resolution of the temperature
+	response float64 // dead time + sum of lags, s; 0 means: judge to the end of the record
+}
+
+// figures of one run, added up over its segments. NaN: no such figure;
+// +Inf: the temperature did not settle.
+type figures struct {
+	settling  float64 // s, the slowest of the run's setpoint moves
+	overshoot float64 // % of the move, the largest
+	iae       float64 // ∫|r − y| dt
+	deviation float64 // largest |r − y| while no setpoint move is being followed
+	peakTemp  float64
+	peakInput float64
+	lowInput  float64 // the least input
+	rate      float64 // the fastest change of input from row to row, per s
+	travel    float64 // Σ|Δu|
+	allowance float64 // widest noise allowance used, temperature units
+	moves     int     // setpoint moves judged
+	small     int     // setpoint moves too small against the noise to judge
+	unsettled int     // moves after which the temperature did not settle
+}
+
+func noFigures() figures {
+	nan := math.NaN()
+	return figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, rate: nan, travel: nan}
+}
+
+// add measures one unbroken segment and adds it to the figures of the run.
+func (f *figures) add(s signal, m yardstick) {
+	for i, y := range s.y {
+		f.peakTemp = larger(f.peakTemp, y)
+		f.peakInput = larger(f.peakInput, s.u[i])
+		f.lowInput = -larger(-f.lowInput, -s.u[i])
+		if i > 0 {
+			f.rate = larger(f.rate, math.Abs(s.u[i]-s.u[i-1])/(s.t[i]-s.t[i-1]))
+		}
+	}
+	f.travel = plus(f.travel, travel(s.u))
+	if s.r == nil {
+		return
+	}
+	f.iae = plus(f.iae, absoluteError(s))
+	quiet := 0 // first row not yet given to a move
+	for _, mv := range moves(s, m) {
+		f.deviation = larger(f.deviation, deviation(s, quiet, mv.from))
+		quiet = f.follow(s, m, mv)
+	}
+	f.deviation = larger(f.deviation, deviation(s, quiet, len(s.t)))
+}
+
+// follow measures settling and overshoot of one setpoint move and returns the
+// first row that no longer belongs to it.
+func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
+	allowance := m.allowance(s.t[mv.to-1] - s.t[mv.from])
+	f.allowance = max(f.allowance, allowance)
+	if allowance >= 0.5*math.Abs(mv.size) {
+		f.small++
+		return mv.to
+	}
+	f.moves++
+	at, rest := settled(s, mv, m.band*math.Abs(mv.size)+allowance, m.response)
+	if math.IsInf(at, 1) {
+		f.unsettled++
+	}
+	f.settling = larger(f.settling, at)
+	f.overshoot = larger(f.overshoot, overshoot(s, mv, rest, allowance))
+	return rest
+}
+
+// settled returns the time from the move until the temperature enters
+// ±half around the new setpoint and keeps it, interpolated to the crossing,
+// and the first row that follows the move no longer. Kept means for
+// 5 × response, or to the end of the move's rows if that leaves at least one
+// response time; with response 0, to the end. It returns +Inf when the
+// temperature does not settle.
+//
+// A later load that pushes the temperature out again counts as a load
+// deviation, not as slow settling (common practice, no source).
+func settled(s signal, mv move, half, response float64) (at float64, rest int) {
+	entered, last := math.NaN(), -1 // time of entry; last row with a temperature
+	outside := math.Abs(mv.size)    // |error| at that row
+	for i := mv.from; i < mv.to; i++ {
+		e := math.Abs(s.y[i] - mv.target)
+		if math.IsNaN(e) {
+			continue
+		}
+		switch {
+		case e > half:
+			entered = math.NaN()
+		case math.IsNaN(entered) && last >= 0 && outside > half:
+			entered = s.t[last] + (s.t[i]-s.t[last])*(outside-half)/(outside-e)
+		case math.IsNaN(entered):
+			entered = s.t[i]
+		}
+		if response > 0 && s.t[i]-entered >= 5*response {
+			return entered - s.t[mv.from], i + 1
+		}
+		outside, last = e, i
+	}
+	if end := s.t[mv.to-1]; end-entered >= response {
+		return entered - s.t[mv.from], mv.to
+	}
+	return math.Inf(1), mv.to
+}
+
+// overshoot returns how far the temperature passes the new setpoint, in
+// percent of the move, beyond what noise alone would explain.
+func overshoot(s signal, mv move, rest int, allowance float64) float64 {
+	worst := 0.0
+	for i := mv.from; i < rest; i++ {
+		past := math.Copysign(1, mv.size)*(s.y[i]-mv.target) - allowance
+		if past > worst {
+			worst = past
+		}
+	}
+	return 100 * worst / math.Abs(mv.size)
+}
+
+// deviation returns the largest |r − y| over the rows lo ≤ i < hi, NaN when
+// there is none. It is the reading's own: nothing is taken off for noise.
+func deviation(s signal, lo, hi int) float64 {
+	worst := math.NaN()
+	for i := lo; i < hi; i++ {
+		worst = larger(worst, math.Abs(s.r[i]-s.y[i]))
+	}
+	return worst
+}
+
+// absoluteError returns ∫|r − y| dt by the trapezoid rule between the rows
+// that have a temperature; the setpoint holds from its row on.
+func absoluteError(s signal) float64 {
+	sum, last := 0.0, -1
+	for i, y := range s.y {
+		if math.IsNaN(y) {
+			continue
+		}
+		if last >= 0 {
+			sum += (s.t[i] - s.t[last]) * (math.Abs(s.y[last]-s.r[last]) + math.Abs(y-s.r[last])) / 2
+		}
+		last = i
+	}
+	return sum
+}
+
+// travel returns the sum of |Δu| from row to row.
+func travel(u []float64) float64 {
+	sum := 0.0
+	for i := 1; i < len(u); i++ {
+		sum += math.Abs(u[i] - u[i-1])
+	}
+	return sum
+}
+
+// larger returns the larger of two values, the other where one is NaN.
+func larger(a, b float64) float64 {
+	if math.IsNaN(a) || b > a {
+		return b
+	}
+	return a
+}
+
+// plus returns a + b, b where a is NaN.
+func plus(a, b float64) float64 {
+	if math.IsNaN(a) {
+		return b
+	}
+	return a + b
+}

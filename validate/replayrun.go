@@ -1,0 +1,219 @@
+package validate
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"sync"
+	"sync/atomic"
+	"time"
+
+	"lagwright/data"
+	"lagwright/ident"
+)
+
+// replayRun replays one run on every plausible plant, shared out among the
+// runners. The result does not depend on their number.
+func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) (RunReplay, error) {
+	out := RunReplay{
+		File: run.Source.File, Name: run.Source.Name, SHA256: run.Source.SHA256,
+		Rows: len(run.T), Start: startText(run.Start),
+	}
+	if err := p.checkUnits(run); err != nil {
+		return out, err
+	}
+	courses, warnings, err := p.courses(run)
+	if err != nil {
+		return out, err
+	}
+	m := p.yardstick(run)
+	logged := measureLogged(courses, run, m)
+	e, err := p.ensemble(ctx, courses, m, runners)
+	if err != nil {
+		return out, err
+	}
+	p.conclude(&out, e)
+	out.Logged = logged.metrics()
+	out.Warnings = append(warnings, p.warnings(run, courses, e)...)
+	if p.options.Traces {
+		out.Trace = e.trace(courses, p.options.Confidence)
+	}
+	if p.logged != nil {
+		if out.BackTest, err = p.backTest(ctx, run, courses); err != nil {
+			return out, err
+		}
+	}
+	return out, nil
+}
+
+func startText(t time.Time) *string {
+	if t.IsZero() {
+		return nil
+	}
+	s := t.Format(time.RFC3339Nano)
+	return &s
+}
+
+func (p *plan) checkUnits(run *data.Run) error {
+	for _, u := range []struct{ what, run, card string }{
+		{"input", run.Units.Input, p.units.input},
+		{"temperature", run.Units.Temperature, p.units.temperature},
+	} {
+		if u.run != "" && u.card != "" && u.run != u.card {
+			return fmt.Errorf("the %s is in %s, the card's in %s: read the log with the unit or span of the card", u.what, u.run, u.card)
+		}
+	}
+	return nil
+}
+
+// courses prepares the unbroken segments of a run and says what was left out.
+func (p *plan) courses(run *data.Run) (out []*course, warnings []string, err error) {
+	parts, dropped := segments(run)
+	if len(parts) == 0 {
+		return nil, nil, fmt.Errorf("no unbroken part of %d rows with a temperature", minSegment)
+	}
+	bridged := 0
+	for _, s := range parts {
+		c, err := newCourse(run, s, p)
+		if err != nil {
+			return nil, nil, err
+		}
+		out = append(out, c)
+		bridged += s.bridged
+	}
+	if len(parts) > 1 {
+		warnings = append(warnings, fmt.Sprintf("the recording is broken: %d parts are replayed each for itself, starting from the log", len(parts)))
+	}
+	if dropped > 0 {
+		warnings = append(warnings, fmt.Sprintf("%d of %d rows are left out: no temperature, or parts of fewer than %d rows", dropped, len(run.T), minSegment))
+	}
+	if bridged > 0 {
+		warnings = append(warnings, fmt.Sprintf("%d missing temperatures are bridged by straight lines (at most %d in a row)", bridged, maxBridge))
+	}
+	return out, warnings, nil
+}
+
+// measureLogged measures the log itself. Against a setpoint that was not in
+// force when it was recorded there is no error to measure.
+func measureLogged(courses []*course, run *data.Run, m yardstick) figures {
+	f := noFigures()
+	for _, c := range courses {
+		s := c.signal(c.y, c.u)
+		if !hasValue(run.Setpoint) {
+			s.r = nil
+		}
+		f.add(s, m)
+	}
+	return f
+}
+
+// An ensemble is one run replayed on all plausible plants.
+type ensemble struct {
+	figures []figures // by plant
+	rows    [][]int   // rows kept for bands, by course
+	y, u    []float64 // at the kept rows: plants side by side, row after row
+}
+
+// ensemble replays the courses on every plant. Series are kept only when
+// traces are wanted, and then only at rows that show every extreme of the log
+// and of the best-fit plant's replay.
+func (p *plan) ensemble(ctx context.Context, courses []*course, m yardstick, runners []*runner) (*ensemble, error) {
+	e := &ensemble{figures: make([]figures, len(p.plants))}
+	if p.options.Traces {
+		if err := e.choose(p, courses); err != nil {
+			return nil, err
+		}
+	}
+	var next atomic.Int64
+	var wait sync.WaitGroup
+	errs := make([]error, len(runners))
+	for w, r := range runners {
+		wait.Go(func() {
+			for errs[w] == nil && ctx.Err() == nil {
+				k := int(next.Add(1)) - 1
+				if k >= len(p.plants) {
+					return
+				}
+				errs[w] = e.one(courses, m, r, k)
+			}
+		})
+	}
+	wait.Wait()
+	return e, errors.Join(ctx.Err(), errors.Join(errs...))
+}
+
+// one replays all courses on plant k.
+func (e *ensemble) one(courses []*course, m yardstick, r *runner, k int) error {
+	f := noFigures()
+	at := 0
+	for i, c := range courses {
+		y, u := r.buffers(len(c.t))
+		if err := r.replay(c, k, y, u); err != nil {
+			return err
+		}
+		if math.IsInf(y[len(y)-1], 1) {
+			e.figures[k] = runawayFigures()
+		} else {
+			f.add(c.signal(y, u), m)
+		}
+		if e.rows == nil {
+			continue
+		}
+		for _, row := range e.rows[i] {
+			e.y[at*len(e.figures)+k], e.u[at*len(e.figures)+k] = y[row], u[row]
+			at++
+		}
+	}
+	if e.figures[k].moves != runaway {
+		e.figures[k] = f
+	}
+	return nil
+}
+
+// choose picks the rows at which the series are kept.
+func (e *ensemble) choose(p *plan, courses []*course) error {
+	r := newRunner(p.law, p.gains, []ident.Plant{p.best})
+	kept := 0
+	for _, c := range courses {
+		y, u := r.buffers(len(c.t))
+		if err := r.replay(c, 0, y, u); err != nil {
+			return err
+		}
+		rows := thin(maxTrace/len(courses), c.y, y)
+		e.rows = append(e.rows, rows)
+		kept += len(rows)
+	}
+	e.y = make([]float64, kept*len(p.plants))
+	e.u = make([]float64, kept*len(p.plants))
+	return nil
+}
+
+// conclude writes metrics with their bands, and the verdict.
+func (p *plan) conclude(out *RunReplay, e *ensemble) {
+	out.Proposed = bandMetrics(e.figures, p.options.Confidence)
+	var open []string
+	for _, d := range p.asked {
+		if math.IsNaN(d.figure(e.figures[0])) {
+			open = append(open, d.name)
+		}
+	}
+	out.Judged = len(open) < len(p.asked)
+	share, reasons := judge(p.asked, e.figures, p.options.Confidence)
+	out.Reasons = reasons
+	if len(open) > 0 {
+		out.Reasons = append(out.Reasons, fmt.Sprintf("not judged on this run: %s", list(open)))
+	}
+	if out.Judged || len(p.asked) == 0 {
+		out.Probability = share
+		out.Meets = share >= p.assurance()
+	}
+}
+
+// assurance is the share of plants on which a run must meet the requirement.
+func (p *plan) assurance() float64 {
+	if p.gains.Assurance > 0 {
+		return p.gains.Assurance
+	}
+	return 0.95
+}

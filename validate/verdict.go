@@ -1,0 +1,125 @@
+package validate
+
+import (
+	"fmt"
+	"math"
+
+	"lagwright/tune"
+)
+
+// A demand is one item of the requirement as it is judged on a run. A figure
+// above the limit fails (below it, where least is set); one that does not
+// exist is not judged.
+type demand struct {
+	name, unit string
+	limit      float64
+	least      bool // the limit is a lowest, not a highest value
+	figure     func(figures) float64
+}
+
+// demands lists what the requirement asks of a run. Ms and damping are
+// properties of loop and plant, not of a run; tune judges them.
+func demands(r tune.Requirement, units units) []demand {
+	var out []demand
+	add := func(limit *float64, d demand) {
+		if limit != nil {
+			d.limit = *limit
+			out = append(out, d)
+		}
+	}
+	add(r.Settling, demand{name: "settling", unit: "s", figure: func(f figures) float64 { return f.settling }})
+	add(r.Overshoot, demand{name: "overshoot", unit: "%", figure: func(f figures) float64 { return f.overshoot }})
+	add(r.TempMax, demand{name: "peak temperature", unit: units.temperature, figure: func(f figures) float64 { return f.peakTemp }})
+	add(r.InputMax, demand{name: "largest input", unit: units.input, figure: func(f figures) float64 { return f.peakInput }})
+	add(r.InputMin, demand{name: "least input", unit: units.input, least: true, figure: func(f figures) float64 { return f.lowInput }})
+	add(r.InputRate, demand{name: "fastest change of input", unit: units.input + "/s", figure: func(f figures) float64 { return f.rate }})
+	return out
+}
+
+// slack is what a figure may pass its limit by without failing: rounding of
+// the limits inside the controller.
+const slack = 1e-9
+
+func (d demand) fails(f figures) bool {
+	v := d.figure(f)
+	if math.IsNaN(v) {
+		return false
+	}
+	if d.least {
+		return v < d.limit-slack*max(1, math.Abs(d.limit))
+	}
+	return v > d.limit+slack*max(1, math.Abs(d.limit))
+}
+
+// judge returns the share of plants on which a run meets every demand, and
+// for each demand that fails on some plant a sentence with its numbers.
+func judge(ds []demand, all []figures, level float64) (share float64, reasons []string) {
+	failing := make([]bool, len(all))
+	for _, d := range ds {
+		count := 0
+		for k, f := range all {
+			if d.fails(f) {
+				failing[k] = true
+				count++
+			}
+		}
+		if count > 0 {
+			reasons = append(reasons, d.reason(all, count, level))
+		}
+	}
+	meeting := 0
+	for _, failed := range failing {
+		if !failed {
+			meeting++
+		}
+	}
+	return float64(meeting) / float64(len(all)), reasons
+}
+
+// reason says what fails, by how much and on how many plants.
+func (d demand) reason(all []figures, count int, level float64) string {
+	values := make([]float64, 0, len(all))
+	for _, f := range all {
+		if v := d.figure(f); !math.IsNaN(v) {
+			values = append(values, v)
+		}
+	}
+	s := spreadOf(values, level)
+	asked := "at most"
+	if d.least {
+		asked = "at least"
+	}
+	return fmt.Sprintf("%s %s where %s %s is asked: fails on %d of %d plausible plants",
+		d.name, spreadText(s, d.unit), asked, quantity(d.limit, d.unit), count, len(all))
+}
+
+// spreadText writes a median with its band, "62 s (48 to 80 s)".
+func spreadText(s spread, unit string) string {
+	if s.low == s.high {
+		return quantity(s.median, unit)
+	}
+	return fmt.Sprintf("%s (%s to %s)", quantity(s.median, unit), number(s.low), quantity(s.high, unit))
+}
+
+// quantity writes a number with four digits and its unit.
+func quantity(x float64, unit string) string {
+	switch {
+	case math.IsInf(x, 1) && unit == "s":
+		return "not reached"
+	case math.IsInf(x, 0):
+		return "without bound"
+	case unit == "" || unit == "%":
+		return number(x) + unit
+	}
+	return number(x) + " " + unit
+}
+
+func number(x float64) string {
+	switch {
+	case math.IsInf(x, 0) || math.IsNaN(x):
+		return "none"
+	case math.Abs(x) >= 1000:
+		return fmt.Sprintf("%.0f", x)
+	}
+	return fmt.Sprintf("%.4g", x)
+}

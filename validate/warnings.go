@@ -1,0 +1,124 @@
+package validate
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"lagwright/data"
+)
+
+// warnings says what limits the replay of a run.
+func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string {
+	var out []string
+	warn := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
+
+	out = append(out, p.outside(run)...)
+	f := p.typical(e.figures)
+	if f.moves == 0 && p.options.Requirement.Settling != nil {
+		warn("no setpoint move in this run: settling and overshoot are not judged")
+	}
+	if f.small > 0 {
+		warn("%d setpoint moves are too small against the noise (%s) to judge settling", f.small, quantity(f.allowance, p.units.temperature))
+	} else if f.moves > 0 && f.allowance > 0 {
+		warn("settling is judged into the band widened by %s for noise and resolution, so it is told rather too short", quantity(f.allowance, p.units.temperature))
+	}
+	if away := p.runaways(e.figures); away > 0 {
+		warn("the loop runs away on %d of %d plausible plants", away, len(e.figures))
+	}
+	if need := 2 / (1 - p.options.Confidence); float64(len(p.plants)+1) < need {
+		warn("%d plausible plants are too few for a %g%% band; it is their whole range: fit with --plants %.0f or more", len(p.plants), 100*p.options.Confidence, math.Ceil(need))
+	}
+	if m := manualShare(run); m > 0 {
+		warn("the controller was in manual on %.0f%% of the rows; the replay keeps it in automatic", 100*m)
+	}
+	if lowest(courses) >= 0 && f.lowInput < 0 {
+		warn("the replayed input goes down to %s: a heater cannot cool; give --input-min 0", quantity(f.lowInput, p.units.input))
+	}
+	return out
+}
+
+// outside names what the run left the card's range in.
+func (p *plan) outside(run *data.Run) []string {
+	var out []string
+	check := func(what, unit string, x []float64, limits [2]float64) {
+		lo, hi := extremes(x)
+		margin := 0.05 * (limits[1] - limits[0])
+		if limits[0] == limits[1] || !(lo < limits[0]-margin || hi > limits[1]+margin) {
+			return
+		}
+		out = append(out, fmt.Sprintf("%s %s to %s is outside the card's %s to %s: another operating range, where gain, lags and dead time may differ",
+			what, number(lo), quantity(hi, unit), number(limits[0]), quantity(limits[1], unit)))
+	}
+	check("input", p.units.input, run.U, p.card.Range.Input)
+	check("temperature", p.units.temperature, run.Y, p.card.Range.Temperature)
+	if c := p.card.Conditions.Airflow; c != nil && run.Airflow != nil {
+		check("airflow", "", run.Airflow, *c)
+	}
+	if c := p.card.Conditions.Inlet; c != nil && run.Inlet != nil {
+		check("inlet temperature", p.units.temperature, run.Inlet, *c)
+	}
+	return out
+}
+
+// extremes returns the least and greatest value; NaN values are passed over.
+func extremes(x []float64) (lo, hi float64) {
+	lo, hi = math.NaN(), math.NaN()
+	for _, v := range x {
+		hi = larger(hi, v)
+		lo = -larger(-lo, -v)
+	}
+	return lo, hi
+}
+
+// typical returns the figures of the first plant that did not run away.
+func (p *plan) typical(all []figures) figures {
+	for _, f := range all {
+		if f.moves != runaway {
+			return f
+		}
+	}
+	return all[0]
+}
+
+func (p *plan) runaways(all []figures) int {
+	n := 0
+	for _, f := range all {
+		if f.moves == runaway {
+			n++
+		}
+	}
+	return n
+}
+
+func manualShare(run *data.Run) float64 {
+	if len(run.Auto) == 0 {
+		return 0
+	}
+	manual := 0
+	for _, auto := range run.Auto {
+		if !auto {
+			manual++
+		}
+	}
+	return float64(manual) / float64(len(run.Auto))
+}
+
+// lowest is the least logged input.
+func lowest(courses []*course) float64 {
+	low := math.Inf(1)
+	for _, c := range courses {
+		for _, u := range c.u {
+			low = min(low, u)
+		}
+	}
+	return low
+}
+
+// list joins words as a sentence does.
+func list(words []string) string {
+	if len(words) < 2 {
+		return strings.Join(words, "")
+	}
+	return strings.Join(words[:len(words)-1], ", ") + " and " + words[len(words)-1]
+}
