@@ -1,0 +1,257 @@
+package fit
+
+import (
+	"math"
+	"math/rand/v2"
+)
+
+// estimate is a parameter with its bounds; NaN where there is none.
+type estimate struct {
+	value, se, low, high float64
+	fixed                bool
+}
+
+// bounded is a fitted structure with the intervals of gain, lags and dead
+// time, in this order.
+type bounded struct {
+	*fitted
+	est       []estimate
+	members   []member     // linearised posterior over the noise shapes, coinciding lags as one
+	reference [][]float64  // linearised covariance at the shapes in force
+	lin       [][]estimate // per record: the fixed linear columns (baseline, drift)
+	cov       [][]float64  // Wald covariance of est, NaN rows where there is none
+}
+
+// bound finds the intervals of f at the level, and improves f when a better
+// optimum turns up on the way.
+func (s *study) bound(f *fitted, level float64, rng *rand.Rand) *bounded {
+	f.activate()
+	for range 3 {
+		b, better := s.tryBound(f, level, rng)
+		if better == nil {
+			return b
+		}
+		f.p = f.e.descend(better.eta, finalTol)
+		s.coincide(f)
+		s.score(f)
+	}
+	b, _ := s.tryBound(f, level, rng)
+	return b
+}
+
+func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *point) {
+	e := f.e
+	b := &bounded{fitted: f}
+	ts := f.tangents()
+	nodes := make([][]node, len(ts))
+	for i, t := range ts {
+		n := t.evaluate(s.recs[i].shape)
+		n.weight = 1
+		nodes[i] = []node{n}
+	}
+	here := members(nodes, rng)[0] // at the shapes in force; of several records, one draw
+	if len(ts) > 1 {
+		here = atBest(nodes)
+	}
+	b.members = []member{here}
+	if !s.white {
+		for i, t := range ts {
+			nodes[i] = t.grid(nodes[i][0])
+		}
+		b.members = members(nodes, rng)
+	}
+	b.reference = here.cov
+	cov := pooled(b.members)
+
+	q := &profiler{e: e, best: f.p, s2: f.s2()}
+	n := e.nl + 2
+	b.est = make([]estimate, n)
+	b.cov = columns(n, n)
+	for i := range n {
+		v := &b.est[i]
+		v.value = q.value(i)
+		if (i == 0 && e.gainFix) || (i > 0 && e.held[i-1]) {
+			v.fixed, v.se, v.low, v.high = true, 0, v.value, v.value
+			continue
+		}
+		g := f.direction(i)
+		v.se = math.NaN()
+		if c := cov[g][g]; c > 0 && f.alone(i) {
+			v.se = math.Sqrt(c)
+		}
+		lo, hi := b.quantiles(here, g, level)
+		limit := 0.0
+		if i == 0 && v.value < 0 {
+			limit = math.Inf(-1)
+		}
+		scale := math.Sqrt(here.cov[g][g])
+		lowEnd, highEnd := limit, math.Inf(1)
+		if i == 0 && v.value < 0 {
+			lowEnd, highEnd = 1e4*v.value, 0
+		} else if i == 0 {
+			highEnd = 1e4 * v.value
+		} else {
+			lowEnd, highEnd = e.lower[i-1], e.upper[i-1]
+		}
+		v.low = q.end(i, -1, lo, scale, lowEnd)
+		v.high = q.end(i, 1, hi, scale, highEnd)
+	}
+	for i := range n {
+		for j := range n {
+			b.cov[i][j] = cov[f.direction(i)][f.direction(j)]
+		}
+	}
+	b.lin = f.linear(b, level)
+	return b, q.found
+}
+
+// direction is the index in the linearised model of parameter i (0 gain, 1…).
+func (f *fitted) direction(i int) int {
+	switch {
+	case i == 0:
+		return 0
+	case i <= f.e.nl:
+		return 1 + f.groups[i-1]
+	}
+	ng := 0
+	for _, g := range f.groups {
+		ng = max(ng, g+1)
+	}
+	return ng + 1
+}
+
+// alone reports whether parameter i has a direction of its own: a lag that
+// coincides with another has no standard error.
+func (f *fitted) alone(i int) bool {
+	if i == 0 || i > f.e.nl {
+		return true
+	}
+	n := 0
+	for _, g := range f.groups {
+		if g == f.groups[i-1] {
+			n++
+		}
+	}
+	return n == 1
+}
+
+// quantiles returns how far, in standard errors at the shapes in force, the
+// interval reaches below and above the optimum.
+func (b *bounded) quantiles(here member, g int, level float64) (lo, hi float64) {
+	se := math.Sqrt(here.cov[g][g])
+	if !(se > 0) {
+		g = 0 // a direction the linearisation cannot tell: use the gain's
+		se = math.Sqrt(here.cov[0][0])
+	}
+	floor := -studentQuantile((1-level)/2, here.dof)
+	if len(b.members) == 1 || !(se > 0) {
+		return floor, floor
+	}
+	lo = -mixtureQuantile(b.members, g, (1-level)/2) / se
+	hi = mixtureQuantile(b.members, g, (1+level)/2) / se
+	return math.Min(math.Max(lo, 0.8*floor), 6*floor), math.Min(math.Max(hi, 0.8*floor), 6*floor)
+}
+
+func studentQuantile(p, nu float64) float64 {
+	lo, hi := -200.0, 200.0
+	for range 80 {
+		mid := (lo + hi) / 2
+		if studentCDF(mid, nu) < p {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	return (lo + hi) / 2
+}
+
+// atBest is the member at one shape per record, variances at their estimates.
+func atBest(nodes [][]node) member {
+	d := len(nodes[0][0].b)
+	a, v := columns(d, d), make([]float64, d)
+	dof := 0.0
+	for _, ns := range nodes {
+		n := ns[0]
+		s2 := n.rss / float64(n.dof)
+		dof += float64(n.dof)
+		for i := range d {
+			v[i] += n.b[i] / s2
+			for j := range d {
+				a[i][j] += n.a[i][j] / s2
+			}
+		}
+	}
+	cov := invert(a)
+	return member{weight: 1, cov: cov, shift: multiply(cov, v), dof: dof}
+}
+
+// linear returns the fixed linear columns of every record with Wald bounds:
+// the generalised least-squares covariance over all columns of the linearised
+// model, widened like the gain for the uncertainty of the noise.
+func (f *fitted) linear(b *bounded, level float64) [][]estimate {
+	out := make([][]estimate, len(f.e.recs))
+	here := math.Sqrt(math.Max(b.members[0].cov[0][0], 0))
+	widen := 1.0
+	if here > 0 && len(b.members) > 1 {
+		widen = math.Max(math.Sqrt(pooled(b.members)[0][0])/here, 1)
+	}
+	p := f.e.eval(f.p.eta, true)
+	for i, r := range f.e.recs {
+		w := &f.e.work[i]
+		cols := append([][]float64(nil), r.fixed...)
+		switch r.rest {
+		case earlier:
+			cols = append(cols, w.start[0])
+		case free:
+			cols = append(cols, w.start...)
+		}
+		rhs := make([]float64, len(r.t))
+		for k := range rhs {
+			rhs[k] = r.y[k] - p.gain*w.raw[0][k]
+		}
+		beta := weightedSolve(r.filter, cols, rhs)
+		t := b.tangentColumns(i)
+		all := append(append([][]float64(nil), cols...), t...)
+		white := columns(len(all), len(r.t))
+		for j, c := range all {
+			r.filter.apply(white[j], c)
+		}
+		gram := columns(len(all), len(all))
+		for j := range all {
+			for l := range all {
+				gram[j][l] = dot(white[j], white[l])
+			}
+		}
+		inv := invert(gram)
+		s2 := f.s2() / r.weight
+		q := -studentQuantile((1-level)/2, float64(len(r.t)-f.mean))
+		for j := range r.fixed {
+			se := widen * math.Sqrt(inv[j][j]*s2)
+			out[i] = append(out[i], estimate{value: beta[j], se: se, low: beta[j] - q*se, high: beta[j] + q*se})
+		}
+	}
+	return out
+}
+
+// tangentColumns are the directions of gain, lags and dead time of record i
+// at the optimum, coinciding lags as one.
+func (b *bounded) tangentColumns(i int) [][]float64 {
+	e, w := b.e, &b.e.work[i]
+	ng := b.direction(e.nl+1) - 1
+	out := make([][]float64, 0, ng+2)
+	if !e.gainFix {
+		out = append(out, append([]float64(nil), w.raw[0]...))
+	}
+	for g := 1; g <= ng+1; g++ {
+		c := make([]float64, len(w.raw[0]))
+		for l := 1; l <= e.nl+1; l++ {
+			if b.direction(l) == g && !e.held[l-1] {
+				for k, v := range w.raw[l] {
+					c[k] += b.p.gain * v
+				}
+			}
+		}
+		out = append(out, c)
+	}
+	return out
+}

@@ -1,0 +1,271 @@
+package fit
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"os"
+	"runtime"
+	"sort"
+	"strconv"
+	"strings"
+	"sync"
+	"testing"
+
+	"lagwright/data"
+	"lagwright/ident"
+)
+
+// family is a kind of invented log for the coverage study.
+type family struct {
+	name      string
+	structure string
+	gain      float64
+	lags      []float64
+	dead      float64
+	n         int
+	step      float64
+	bumps     []float64 // times of the changes of a ±1.5 V input around 4 V
+	sd        float64   // of the noise
+	ar        float64   // correlation of the correlated part from sample to sample
+	white     float64   // fraction of the variance that is white
+	quantum   float64
+	drift     float64 // K/s
+	jitter    float64 // of the sampling, as a fraction of the step
+	gaps      bool
+	closed    bool // PI control during the log
+	boundary  bool // a parameter sits on the edge of its range
+}
+
+func families() []family {
+	base := family{structure: "chain2", gain: 8, lags: []float64{2.1, 0.65}, dead: 0.42, n: 800, step: 0.1, bumps: []float64{10, 40}, sd: 0.15, white: 1}
+	with := func(name string, change func(*family)) family {
+		f := base
+		f.name = name
+		change(&f)
+		return f
+	}
+	return []family{
+		with("white", func(f *family) {}),
+		with("ar 0.5", func(f *family) { f.ar, f.white = 0.5, 0 }),
+		with("ar 0.8", func(f *family) { f.ar, f.white = 0.8, 0 }),
+		with("ar 0.95", func(f *family) { f.ar, f.white = 0.95, 0 }),
+		with("ar 0.9 and white", func(f *family) { f.ar, f.white = 0.9, 0.4 }),
+		with("coarse quantum", func(f *family) { f.ar, f.white, f.sd, f.quantum = 0.5, 0.3, 0.1, 0.25 }),
+		with("jittered", func(f *family) { f.ar, f.white, f.jitter = 0.8, 0, 0.3 }),
+		with("gaps", func(f *family) { f.ar, f.white, f.gaps = 0.8, 0, true }),
+		with("drift", func(f *family) { f.ar, f.white, f.drift = 0.8, 0, 0.02 }),
+		with("lags 1:0.85", func(f *family) { f.ar, f.white, f.lags, f.boundary = 0.5, 0, []float64{1.4, 1.19}, true }),
+		with("equal lags", func(f *family) { f.ar, f.white, f.lags, f.boundary = 0.5, 0, []float64{1.3, 1.3}, true }),
+		with("fopdt, dead time 0.37 samples", func(f *family) {
+			f.structure, f.lags, f.dead, f.ar, f.white = "fopdt", []float64{2.1}, 0.037, 0.5, 0
+		}),
+		with("no dead time", func(f *family) { f.dead, f.ar, f.white, f.boundary = 0, 0.5, 0, true }),
+		with("closed loop", func(f *family) { f.closed, f.ar, f.white = true, 0.8, 0 }),
+		with("short record", func(f *family) { f.n, f.bumps, f.ar, f.white = 160, []float64{5}, 0.5, 0 }),
+		with("one bump", func(f *family) { f.bumps, f.ar, f.white = []float64{10}, 0.8, 0 }),
+		with("fopdt ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "fopdt", []float64{2.1}, 0.8, 0 }),
+		with("equal3 ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "equal3", []float64{0.9}, 0.8, 0 }),
+	}
+}
+
+// make draws one log of the family.
+func (f family) make(seed uint64) *data.Run {
+	r := rand.New(rand.NewPCG(seed, 77))
+	run := &data.Run{Source: data.Source{File: fmt.Sprintf("%s-%d", f.name, seed)}}
+	t := 0.0
+	for k := range f.n {
+		if k > 0 {
+			t += f.step
+		}
+		tk := t
+		if f.jitter > 0 {
+			tk += f.step * f.jitter * (r.Float64() - 0.5)
+		}
+		if f.gaps && (k%200 > 150 && k%200 < 185) {
+			continue
+		}
+		run.T = append(run.T, tk)
+	}
+	st, _ := ident.ParseStructure(f.structure)
+	run.U = make([]float64, len(run.T))
+	for k, tk := range run.T {
+		run.U[k] = 4
+		for i, b := range f.bumps {
+			if tk >= b-1e-9 {
+				run.U[k] = 4 + 1.5*float64((i+1)%2)
+			}
+		}
+	}
+	noise := f.noise(run.T, r)
+	if f.closed {
+		f.close(run, st, noise)
+	} else {
+		y := ident.NewSimulator(run.T, ident.HeldInput(run.T, run.U, ident.Linear)).Response(nil, st, f.lags, f.dead)
+		run.Y = make([]float64, len(y))
+		for k := range y {
+			run.Y[k] = 60 + f.gain*y[k] + f.drift*run.T[k] + noise[k]
+		}
+	}
+	if f.quantum > 0 {
+		for k := range run.Y {
+			run.Y[k] = f.quantum * math.Round(run.Y[k]/f.quantum)
+		}
+	}
+	return run
+}
+
+func (f family) noise(t []float64, r *rand.Rand) []float64 {
+	out := make([]float64, len(t))
+	c := r.NormFloat64()
+	for k := range t {
+		if k > 0 {
+			phi := 0.0
+			if f.ar > 0 {
+				phi = math.Pow(f.ar, (t[k]-t[k-1])/f.step)
+			}
+			c = phi*c + math.Sqrt(1-phi*phi)*r.NormFloat64()
+		}
+		out[k] = f.sd * (math.Sqrt(1-f.white)*c + math.Sqrt(f.white)*r.NormFloat64())
+	}
+	return out
+}
+
+// close runs the log under PI control with setpoint steps instead of bumps.
+func (f family) close(run *data.Run, st ident.Structure, noise []float64) {
+	n := len(run.T)
+	run.Y = make([]float64, n)
+	x := make([]float64, len(f.lags))
+	integral, kc, ti := 0.0, 0.12, 2.5
+	u := make([]float64, n)
+	delay := int(math.Round(f.dead / f.step))
+	for k := range n {
+		y := 60.0
+		if len(x) > 0 {
+			y += f.gain * x[len(x)-1]
+		}
+		run.Y[k] = y + noise[k]
+		sp := 60.0
+		for i, b := range f.bumps {
+			if run.T[k] >= b-1e-9 {
+				sp = 60 + 10*float64((i+1)%2)
+			}
+		}
+		err := sp - run.Y[k]
+		integral += err * f.step / ti
+		u[k] = 4 + kc*(err+integral)
+		run.U[k] = u[k]
+		// The plant to the next sample, in small exact steps of each lag.
+		drive := 0.0
+		if k >= delay {
+			drive = u[k-delay] - 4
+		}
+		const sub = 50
+		for range sub {
+			in := drive
+			for i, tau := range f.lags {
+				a := math.Exp(-f.step / sub / tau)
+				next := a*x[i] + (1-a)*in
+				in = (x[i] + next) / 2
+				x[i] = next
+			}
+		}
+	}
+}
+
+// truth is the value of a parameter in the family.
+func (f family) truth(i, n int) float64 {
+	switch {
+	case i == 0:
+		return f.gain
+	case i == n-1:
+		return f.dead
+	}
+	l := append([]float64(nil), f.lags...)
+	sort.Sort(sort.Reverse(sort.Float64Slice(l)))
+	return l[i-1]
+}
+
+// covered counts, per parameter, how often the interval holds the truth.
+type coverage struct {
+	names        []string
+	in           []int
+	below, above []int
+	width        [][]float64
+	logs         int
+}
+
+func study1(t testing.TB, f family, logs int, o Options) coverage {
+	var c coverage
+	var mu sync.Mutex
+	var wg sync.WaitGroup
+	next := make(chan int)
+	for range runtime.GOMAXPROCS(0) {
+		wg.Add(1)
+		go func() {
+			defer wg.Done()
+			for i := range next {
+				opt := o
+				opt.Structure = f.structure
+				opt.Plants = -1
+				opt, _ = opt.withDefaults()
+				recs, err := prepare([]*data.Run{f.make(uint64(1000 + i))}, ident.Linear)
+				if err != nil {
+					t.Error(err)
+					continue
+				}
+				out, err := find(context.Background(), recs, opt)
+				if err != nil {
+					t.Error(err)
+					continue
+				}
+				mu.Lock()
+				m := out.models[out.selected]
+				if c.in == nil {
+					n := len(m.est)
+					c.in, c.below, c.above, c.width = make([]int, n), make([]int, n), make([]int, n), make([][]float64, n)
+				}
+				c.logs++
+				for j, e := range m.est {
+					v := f.truth(j, len(m.est))
+					switch {
+					case !math.IsNaN(e.low) && v < e.low:
+						c.below[j]++
+					case !math.IsNaN(e.high) && v > e.high:
+						c.above[j]++
+					default:
+						c.in[j]++
+					}
+					c.width[j] = append(c.width[j], e.width())
+				}
+				mu.Unlock()
+			}
+		}()
+	}
+	for i := range logs {
+		next <- i
+	}
+	close(next)
+	wg.Wait()
+	return c
+}
+
+func TestCoverageTrial(t *testing.T) {
+	if os.Getenv("LW_TRIAL") == "" {
+		t.Skip("trial")
+	}
+	n, _ := strconv.Atoi(os.Getenv("LW_TRIAL"))
+	for _, f := range families() {
+		if w := os.Getenv("LW_FAMILY"); w != "" && !strings.Contains(f.name, w) {
+			continue
+		}
+		c := study1(t, f, n, Options{Noise: os.Getenv("LW_NOISE"), Drift: os.Getenv("LW_DRIFT")})
+		var s []string
+		for j := range c.in {
+			sort.Float64s(c.width[j])
+			s = append(s, fmt.Sprintf("%5.1f%% (%d,%d) w %.3g", 100*float64(c.in[j])/float64(c.logs), c.below[j], c.above[j], c.width[j][len(c.width[j])/2]))
+		}
+		t.Logf("%-30s %s", f.name, strings.Join(s, " | "))
+	}
+}

@@ -1,0 +1,340 @@
+package fit
+
+import (
+	"math"
+
+	"lagwright/ident"
+)
+
+// engine evaluates one structure against the records, whitened under their
+// noise shapes. The parameters it works on are eta = (lags…, dead time); what
+// enters linearly is eliminated at every evaluation (variable projection,
+// Golub and Pereyra 1973, from memory): per record the baseline, the drift and
+// the initial state, and the gain shared by all records.
+type engine struct {
+	st     ident.Structure
+	recs   []*record
+	nl     int   // lag parameters
+	groups []int // lag i of the structure is eta[groups[i]]
+	ng     int   // distinct lags being fitted
+
+	lower   []float64
+	upper   []float64
+	held    []bool // eta that must not move
+	gain    float64
+	gainFix bool
+
+	work []workspace
+}
+
+// workspace holds the columns of one record.
+type workspace struct {
+	raw   [][]float64 // simulated: response, d/dlag…, d/ddeadtime
+	start [][]float64 // the same for the change at the first row, or free states
+	dfree [][][]float64
+	g, r  []float64
+	jac   [][]float64 // whitened, projected columns d/deta
+	extra [][]float64 // orthonormal columns of the initial state
+	coef  []float64
+	basis [][]float64
+}
+
+// point is an evaluated set of parameters.
+type point struct {
+	eta  []float64
+	gain float64
+	s    float64   // weighted sum of squares
+	part []float64 // unweighted whitened sum of squares of each record
+	gg   float64   // weighted square of the gain's whitened direction
+
+	// Gauss-Newton figures of (gain, eta), present after a full evaluation.
+	normal [][]float64 // JᵀJ, gain first
+	grad   []float64   // Jᵀr for eta (that of the gain is zero when it is free)
+	gradK  float64
+}
+
+func newEngine(st ident.Structure, recs []*record) *engine {
+	e := &engine{st: st, recs: recs, nl: st.NumLags()}
+	e.groups = make([]int, e.nl)
+	for i := range e.groups {
+		e.groups[i] = i
+	}
+	e.setGroups(e.groups)
+	e.work = make([]workspace, len(recs))
+	for i, r := range recs {
+		w := &e.work[i]
+		n := len(r.t)
+		w.raw = columns(e.nl+2, n)
+		switch r.rest {
+		case earlier:
+			w.start = columns(e.nl+2, n)
+		case free:
+			w.start = columns(max(st.Order(), 1), n)
+		}
+		w.g, w.r = make([]float64, n), make([]float64, n)
+		w.jac = columns(e.nl+1, n)
+	}
+	return e
+}
+
+func columns(k, n int) [][]float64 {
+	buf := make([]float64, k*n)
+	out := make([][]float64, k)
+	for i := range out {
+		out[i] = buf[i*n : (i+1)*n : (i+1)*n]
+	}
+	return out
+}
+
+// setGroups ties lags of the structure together: groups[i] is the index of
+// the fitted lag that element i shares.
+func (e *engine) setGroups(groups []int) {
+	e.groups = groups
+	e.ng = 0
+	for _, g := range groups {
+		e.ng = max(e.ng, g+1)
+	}
+	tmax, dmax := 0.0, 0.0
+	for _, r := range e.recs {
+		tmax = math.Max(tmax, 20*r.span)
+		dmax = math.Max(dmax, 0.9*(r.t[len(r.t)-1]-r.input.At[0]))
+	}
+	n := e.ng + 1
+	e.lower, e.upper, e.held = make([]float64, n), make([]float64, n), make([]bool, n)
+	for i := range e.ng {
+		e.upper[i] = tmax
+		e.lower[i] = 1e-6 * e.recs[0].step
+	}
+	e.upper[e.ng] = dmax
+}
+
+// lags spreads the fitted lags over the elements of the structure.
+func (e *engine) lags(eta []float64) []float64 {
+	out := make([]float64, e.nl)
+	for i, g := range e.groups {
+		out[i] = eta[g]
+	}
+	return out
+}
+
+// eval evaluates eta; with full, the Gauss-Newton figures too.
+func (e *engine) eval(eta []float64, full bool) point {
+	p := point{eta: append([]float64(nil), eta...)}
+	lags, dead := e.lags(eta), eta[e.ng]
+	var gg, gy float64
+	for i, r := range e.recs {
+		w := &e.work[i]
+		e.simulate(r, w, lags, dead, full)
+		r.filter.apply(w.g, w.raw[0])
+		project(w.g, w.basis)
+		gg += r.weight * dot(w.g, w.g)
+		gy += r.weight * dot(w.g, r.yw)
+	}
+	p.gain, p.gg = e.gain, gg
+	if !e.gainFix {
+		if gg > 0 {
+			p.gain = gy / gg
+		} else {
+			p.gain = 0
+		}
+	}
+	for i, r := range e.recs {
+		w := &e.work[i]
+		for k, v := range r.yw {
+			w.r[k] = v - p.gain*w.g[k]
+		}
+		if len(w.extra) > 0 {
+			project(w.r, w.extra)
+		}
+		ss := dot(w.r, w.r)
+		p.part = append(p.part, ss)
+		p.s += r.weight * ss
+	}
+	if full {
+		e.gaussNewton(&p)
+	}
+	return p
+}
+
+// simulate fills the raw columns and the basis of the record's linear columns.
+func (e *engine) simulate(r *record, w *workspace, lags []float64, dead float64, full bool) {
+	if full {
+		r.sim.Sensitivities(w.raw[:e.nl+2], e.st, lags, dead)
+	} else {
+		r.sim.Response(w.raw[0], e.st, lags, dead)
+	}
+	w.extra = w.extra[:0]
+	w.basis = append(w.basis[:0], r.basis...)
+	switch r.rest {
+	case earlier:
+		if full {
+			r.start.Sensitivities(w.start, e.st, lags, dead)
+		} else {
+			r.start.Response(w.start[0], e.st, lags, dead)
+		}
+		e.addExtra(r, w, w.start[0])
+	case free:
+		r.sim.FreeStates(w.start, e.st, lags, dead)
+		for _, c := range w.start {
+			e.addExtra(r, w, c)
+		}
+	}
+}
+
+func (e *engine) addExtra(r *record, w *workspace, c []float64) {
+	x := make([]float64, len(c))
+	r.filter.apply(x, c)
+	if addToBasis(&w.basis, x) {
+		w.extra = append(w.extra, x)
+	}
+}
+
+// gaussNewton fills normal and grad of p from the sensitivities.
+func (e *engine) gaussNewton(p *point) {
+	n := e.ng + 1
+	p.normal = columns(n+1, n+1)
+	p.grad = make([]float64, n)
+	for i, r := range e.recs {
+		w := &e.work[i]
+		states := e.stateDerivatives(r, w, p)
+		for j := range n {
+			c := w.jac[j]
+			clear(c)
+			for l := range e.nl + 1 {
+				if (l < e.nl && e.groups[l] != j) || (l == e.nl && j != e.ng) {
+					continue
+				}
+				d := w.raw[l+1]
+				for k, v := range d {
+					c[k] += p.gain * v
+				}
+				if states != nil {
+					for k, v := range states[l] {
+						c[k] += v
+					}
+				}
+			}
+			r.filter.apply(c, c)
+			project(c, w.basis)
+		}
+		p.normal[0][0] += r.weight * dot(w.g, w.g)
+		p.gradK += r.weight * dot(w.g, w.r)
+		for j := range n {
+			p.normal[0][j+1] += r.weight * dot(w.g, w.jac[j])
+			p.grad[j] += r.weight * dot(w.jac[j], w.r)
+			for l := 0; l <= j; l++ {
+				p.normal[l+1][j+1] += r.weight * dot(w.jac[l], w.jac[j])
+			}
+		}
+	}
+	for j := range p.normal {
+		for l := range j {
+			p.normal[j][l] = p.normal[l][j]
+		}
+	}
+}
+
+// stateDerivatives returns, per eta of the structure, the derivative of the
+// initial-state columns times their coefficients; nil at rest.
+func (e *engine) stateDerivatives(r *record, w *workspace, p *point) [][]float64 {
+	if r.rest == rest || len(w.extra) == 0 {
+		return nil
+	}
+	coef := e.stateCoefficients(r, w, p)
+	out := columns(e.nl+1, len(r.t))
+	if r.rest == earlier {
+		for l := range e.nl + 1 {
+			for k, v := range w.start[l+1] {
+				out[l][k] = coef[0] * v
+			}
+		}
+		return out
+	}
+	// Free states: central differences of their columns, which are smooth in the lags.
+	lags, dead := e.lags(p.eta), p.eta[e.ng]
+	up, down := columns(len(w.start), len(r.t)), columns(len(w.start), len(r.t))
+	for l := range e.nl {
+		h := 1e-5 * lags[l]
+		a := append([]float64(nil), lags...)
+		a[l] += h
+		r.sim.FreeStates(up, e.st, a, dead)
+		a[l] -= 2 * h
+		r.sim.FreeStates(down, e.st, a, dead)
+		for s, c := range coef {
+			for k := range out[l] {
+				out[l][k] += c * (up[s][k] - down[s][k]) / (2 * h)
+			}
+		}
+	}
+	return out
+}
+
+// stateCoefficients solves for the coefficients of the initial-state columns
+// (unwhitened) at the point by least squares on what the gain leaves.
+func (e *engine) stateCoefficients(r *record, w *workspace, p *point) []float64 {
+	cols := w.start
+	if r.rest == earlier {
+		cols = w.start[:1]
+	}
+	all := append(append([][]float64(nil), r.fixed...), cols...)
+	m := len(all)
+	rhs := make([]float64, len(r.t))
+	for k := range rhs {
+		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
+	}
+	beta := weightedSolve(r.filter, all, rhs)
+	return beta[m-len(cols):]
+}
+
+// weightedSolve is the generalised least-squares solution for a few columns,
+// by modified Gram-Schmidt on the whitened columns; a column that adds nothing
+// gets the coefficient 0.
+func weightedSolve(f *filter, cols [][]float64, rhs []float64) []float64 {
+	m, n := len(cols), len(rhs)
+	q := make([][]float64, m)
+	rr := columns(m, m)
+	y := make([]float64, n)
+	f.apply(y, rhs)
+	z := make([]float64, m)
+	for j, c := range cols {
+		x := make([]float64, n)
+		f.apply(x, c)
+		before := math.Sqrt(dot(x, x))
+		for range 2 {
+			for i := range j {
+				if q[i] == nil {
+					continue
+				}
+				s := dot(q[i], x)
+				rr[i][j] += s
+				for k, v := range q[i] {
+					x[k] -= s * v
+				}
+			}
+		}
+		after := math.Sqrt(dot(x, x))
+		if !(after > 1e-10*before) {
+			continue
+		}
+		for k := range x {
+			x[k] /= after
+		}
+		q[j], rr[j][j] = x, after
+		z[j] = dot(x, y)
+		for k, v := range x {
+			y[k] -= z[j] * v
+		}
+	}
+	beta := make([]float64, m)
+	for j := m - 1; j >= 0; j-- {
+		if q[j] == nil {
+			continue
+		}
+		s := z[j]
+		for l := j + 1; l < m; l++ {
+			s -= rr[j][l] * beta[l]
+		}
+		beta[j] = s / rr[j][j]
+	}
+	return beta
+}

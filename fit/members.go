@@ -1,0 +1,191 @@
+package fit
+
+import (
+	"math"
+	"math/rand/v2"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+// member is one noise shape (of every record) with the linearised posterior
+// of the parameters (gain, eta) under it: Student's t around shift, counted
+// from the optimum, with the covariance cov and dof degrees of freedom.
+type member struct {
+	weight float64
+	cov    [][]float64
+	shift  []float64
+	dof    float64
+}
+
+// members mixes the nodes of the records. One record: its nodes. Several:
+// joint draws of a shape and a variance for every record, because the number
+// of combinations grows too fast to list.
+func members(nodes [][]node, rng *rand.Rand) []member {
+	if len(nodes) == 1 {
+		out := make([]member, 0, len(nodes[0]))
+		for _, n := range nodes[0] {
+			cov := invert(n.a)
+			s2 := n.rss / float64(n.dof)
+			m := member{weight: n.weight, cov: cov, shift: multiply(cov, n.b), dof: float64(n.dof)}
+			for i := range cov {
+				for j := range cov {
+					cov[i][j] *= s2
+				}
+			}
+			out = append(out, m)
+		}
+		return out
+	}
+	const draws = 300
+	out := make([]member, draws)
+	for k := range out {
+		d := len(nodes[0][0].b)
+		a, b := columns(d, d), make([]float64, d)
+		for _, ns := range nodes {
+			n := ns[pick(ns, rng.Float64())]
+			chi := distuv.ChiSquared{K: float64(n.dof), Src: rng}
+			s2 := n.rss / chi.Rand()
+			for i := range d {
+				b[i] += n.b[i] / s2
+				for j := range d {
+					a[i][j] += n.a[i][j] / s2
+				}
+			}
+		}
+		cov := invert(a)
+		out[k] = member{weight: 1.0 / draws, cov: cov, shift: multiply(cov, b), dof: math.Inf(1)}
+	}
+	return out
+}
+
+func pick(ns []node, u float64) int {
+	for i, n := range ns {
+		if u -= n.weight; u < 0 {
+			return i
+		}
+	}
+	return 0
+}
+
+// invert inverts a symmetric matrix scaled to a unit diagonal; rows of
+// parameters that the records say nothing about stay zero. A matrix that is
+// singular in double precision is helped by a ridge that grows until it
+// factors.
+func invert(a [][]float64) [][]float64 {
+	var idx []int
+	for i := range a {
+		if a[i][i] > 0 {
+			idx = append(idx, i)
+		}
+	}
+	out := columns(len(a), len(a))
+	for ridge := 0.0; ; ridge = math.Max(10*ridge, 1e-12) {
+		ok := true
+		scaled := columns(len(a), len(a))
+		for _, i := range idx {
+			for _, j := range idx {
+				scaled[i][j] = a[i][j] / math.Sqrt(a[i][i]*a[j][j])
+			}
+		}
+		for _, j := range idx {
+			unit := make([]float64, len(a))
+			unit[j] = 1
+			x, good := solveDamped(scaled, unit, idx, ridge)
+			if !good {
+				ok = false
+				break
+			}
+			for k, i := range idx {
+				out[i][j] = x[k] / math.Sqrt(a[i][i]*a[j][j])
+			}
+		}
+		if ok || ridge > 1 {
+			return out
+		}
+	}
+}
+
+func multiply(a [][]float64, b []float64) []float64 {
+	out := make([]float64, len(b))
+	for i := range a {
+		for j, v := range b {
+			out[i] += a[i][j] * v
+		}
+	}
+	return out
+}
+
+// pooled is the covariance of the mixture of members: the mean of the
+// covariances plus the scatter of the centres.
+func pooled(ms []member) [][]float64 {
+	d := len(ms[0].shift)
+	out, mean := columns(d, d), make([]float64, d)
+	for _, m := range ms {
+		for i := range d {
+			mean[i] += m.weight * m.shift[i]
+		}
+	}
+	for _, m := range ms {
+		for i := range d {
+			for j := range d {
+				out[i][j] += m.weight * (m.cov[i][j] + (m.shift[i]-mean[i])*(m.shift[j]-mean[j]))
+			}
+		}
+	}
+	return out
+}
+
+// mixtureQuantile returns the p quantile of parameter i, counted from the
+// optimum.
+func mixtureQuantile(ms []member, i int, p float64) float64 {
+	cdf := func(x float64) float64 {
+		s := 0.0
+		for _, m := range ms {
+			sd := math.Sqrt(m.cov[i][i])
+			if sd > 0 {
+				s += m.weight * studentCDF((x-m.shift[i])/sd, m.dof)
+			}
+		}
+		return s
+	}
+	scale := math.Sqrt(pooled(ms)[i][i])
+	if !(scale > 0) {
+		return 0
+	}
+	lo, hi := -2*scale, 2*scale
+	for range 60 {
+		if cdf(lo) < p {
+			break
+		}
+		lo *= 1.5
+	}
+	for range 60 {
+		if cdf(hi) > p {
+			break
+		}
+		hi *= 1.5
+	}
+	for range 36 {
+		mid := (lo + hi) / 2
+		if cdf(mid) < p {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	return (lo + hi) / 2
+}
+
+// studentCDF is the distribution function of Student's t. Above 30 degrees of
+// freedom it uses the normal approximation of Abramowitz and Stegun 26.7.8
+// (from memory), good to 2e-5 there.
+func studentCDF(x, nu float64) float64 {
+	if math.IsInf(nu, 1) {
+		return 0.5 * math.Erfc(-x/math.Sqrt2)
+	}
+	if nu > 30 {
+		z := x * (1 - 1/(4*nu)) / math.Sqrt(1+x*x/(2*nu))
+		return 0.5 * math.Erfc(-z/math.Sqrt2)
+	}
+	return distuv.StudentsT{Mu: 0, Sigma: 1, Nu: math.Max(nu, 1)}.CDF(x)
+}

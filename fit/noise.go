@@ -1,0 +1,184 @@
+package fit
+
+import (
+	"math"
+
+	"lagwright/ident"
+)
+
+// shape is the shape of the noise: its autocorrelation apart from the size.
+// The noise is the sum of a first-order correlated part (an
+// Ornstein-Uhlenbeck process, autocorrelation exp(-|t|/tc)) and a white part
+// that carries the fraction white of the variance:
+//
+//	rho(t) = (1 - white)·exp(-|t|/tc) for t ≠ 0, and 1 at 0
+//
+// In continuous time the correlated part is exact for uneven sampling and
+// gaps. white = 1 is white noise, whatever tc.
+type shape struct {
+	tc    float64 // s
+	white float64 // fraction of the variance, 0..1
+}
+
+var whiteShape = shape{tc: 1, white: 1}
+
+// filter turns a column of noise of a given shape and variance 1 into
+// independent values of variance 1: the innovations of a scalar Kalman
+// filter divided by their standard deviation,
+//
+//	v[k] = x[k] - a2[k]·a,  out[k] = v[k]·isd[k],  a ← a1[k]·a + gain[k]·v[k]
+//
+// where a is the predicted correlated part at the last sample seen. A row that
+// is the mean of M samples is treated exactly (see rowMoments).
+type filter struct {
+	a1, a2, gain, isd []float64
+	logdet            float64 // log determinant of the correlation matrix of the rows
+	white             bool    // nothing to do apart from the weights isd
+	plain             bool    // white and every weight 1
+}
+
+// rowMoments are the moments of a row that is the mean of m samples spaced h:
+// with c0 the correlated part one gap before the first sample, phi0 the decay
+// over that gap and xi independent of the past,
+//
+//	last sample  = phiM·phi0·c0 + ..., variance vLL
+//	mean         = g·phi0·c0 + ...,    variance vMM, covariance with last vLM
+//
+// split into the share that scales with the gap (1-phi0²) and the rest.
+type rowMoments struct {
+	phiM, g       float64
+	vLL, vLM, vMM float64 // parts from the noise inside the row, unit variance
+}
+
+func momentsOf(h, tc float64, m int) rowMoments {
+	if m <= 1 {
+		return rowMoments{phiM: 1, g: 1}
+	}
+	phi := math.Exp(-h / tc)
+	one := -math.Expm1(-2 * h / tc) // 1 - phi²
+	var r rowMoments
+	// q is 1 + phi + … + phi^(l), pl is phi^l, l counted from the last sample back.
+	q, pl := 0.0, 1.0
+	n := float64(m)
+	for l := 0; l <= m-2; l++ {
+		q += pl
+		r.vLL += pl * pl * one
+		r.vLM += pl * q * one / n
+		r.vMM += q * q * one / (n * n)
+		pl *= phi
+	}
+	q += pl
+	r.phiM = pl
+	r.g = q / n
+	return r
+}
+
+// newFilter returns the filter for rows under the shape s.
+func newFilter(rows []ident.Row, s shape) *filter {
+	n := len(rows)
+	f := &filter{}
+	if s.white >= 1 {
+		f.white, f.plain = true, true
+		for _, r := range rows {
+			if r.M > 1 {
+				f.plain = false
+			}
+		}
+		if f.plain {
+			return f
+		}
+		f.isd = make([]float64, n)
+		for k, r := range rows {
+			f.isd[k] = math.Sqrt(float64(max(r.M, 1)))
+			f.logdet -= math.Log(float64(max(r.M, 1)))
+		}
+		return f
+	}
+	buf := make([]float64, 4*n)
+	f.a1, f.a2, f.gain, f.isd = buf[:n:n], buf[n:2*n:2*n], buf[2*n:3*n:3*n], buf[3*n:]
+	v, w := 1-s.white, s.white
+	var (
+		p                 = v // variance of the correlated part at the last sample, given the past
+		lastGap, lastPhi  = -1.0, 0.0
+		lastH, lastM      = -1.0, -1
+		mom               rowMoments
+		prevEnd           float64
+		steady            bool
+		cA1, cA2, cG, cIS float64
+		cLog, pBefore     float64
+		logs              float64
+	)
+	for k, r := range rows {
+		m := max(r.M, 1)
+		phi0, gap := 0.0, math.Inf(1)
+		if k > 0 {
+			gap = r.T - prevEnd
+			if gap != lastGap {
+				if lastGap > 0 && math.Abs(gap-lastGap) < 1e-9*lastGap {
+					gap = lastGap // rounding of equally spaced stamps
+				} else {
+					lastGap, lastPhi = gap, math.Exp(-gap/s.tc)
+					steady = false
+				}
+			}
+			phi0 = lastPhi
+		}
+		if m != lastM || r.H != lastH {
+			mom = momentsOf(r.H, s.tc, m)
+			lastM, lastH = m, r.H
+			steady = false
+		}
+		prevEnd = r.T + float64(m-1)*r.H
+		if !steady {
+			pBefore = p
+			one := v * (1 - phi0*phi0)
+			cA1, cA2 = mom.phiM*phi0, mom.g*phi0
+			vLL := mom.phiM*mom.phiM*one + v*mom.vLL
+			vLM := mom.phiM*mom.g*one + v*mom.vLM
+			vMM := mom.g*mom.g*one + v*mom.vMM
+			sv := cA2*cA2*p + vMM + w/float64(m)
+			cG = (cA1*cA2*p + vLM) / sv
+			p = cA1*cA1*p + vLL - cG*cG*sv
+			if p < 0 {
+				p = 0
+			}
+			cIS = 1 / math.Sqrt(sv)
+			cLog = math.Log(sv)
+			// Equal rows bring the filter to a steady state; then its figures repeat.
+			steady = k > 0 && math.Abs(p-pBefore) <= 1e-15*v
+		}
+		f.a1[k], f.a2[k], f.gain[k], f.isd[k] = cA1, cA2, cG, cIS
+		logs += cLog
+	}
+	f.logdet = logs
+	return f
+}
+
+// apply filters src into dst (they may be the same slice).
+func (f *filter) apply(dst, src []float64) {
+	switch {
+	case f.plain:
+		copy(dst, src)
+	case f.white:
+		for k, w := range f.isd {
+			dst[k] = src[k] * w
+		}
+	default:
+		n := len(src)
+		a1, a2, g, isd := f.a1[:n], f.a2[:n], f.gain[:n], f.isd[:n]
+		dst = dst[:n]
+		a := 0.0
+		for k, x := range src {
+			v := x - a2[k]*a
+			dst[k] = v * isd[k]
+			a = a1[k]*a + g[k]*v
+		}
+	}
+}
+
+// logLikelihood is the Gaussian log likelihood of a column of noise under the
+// shape, its variance at the maximum: -n/2·(ln(2π·rss/n) + 1) - ln|R|/2.
+func (f *filter) logLikelihood(rss float64, n int) float64 {
+	m := float64(n)
+	return -0.5 * (m*(math.Log(2*math.Pi*rss/m)+1) + f.logdet)
+}

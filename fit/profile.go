@@ -1,0 +1,151 @@
+package fit
+
+import "math"
+
+// bounds are the ends of an interval, NaN where the log sets none.
+type bounds struct{ low, high float64 }
+
+// profiler finds profile-likelihood intervals (Bates and Watts 1988, ch. 6):
+// a parameter is held at v, the others are fitted again, and
+//
+//	r(v) = ±√((S(v) - S)/s²), s² = S/(n-p)
+//
+// is compared with the quantiles of its mixture over the noise shapes that
+// the record does not rule out, in units of the standard error at the best
+// shape. For a regular parameter and known noise these are Student's t.
+type profiler struct {
+	e    *engine
+	best point
+	s2   float64
+	// found is a better optimum met on the way, nil when there is none.
+	found *point
+}
+
+// hold fits everything else with parameter i (0 gain, 1… eta) at v, from a
+// nearby solution.
+func (q *profiler) hold(i int, v float64, from point) point {
+	e := q.e
+	lower, upper := append([]float64(nil), e.lower...), append([]float64(nil), e.upper...)
+	gainFix, gain := e.gainFix, e.gain
+	held := append([]bool(nil), e.held...)
+	defer func() {
+		e.lower, e.upper, e.gainFix, e.gain, e.held = lower, upper, gainFix, gain, held
+	}()
+	e.lower, e.upper = append([]float64(nil), lower...), append([]float64(nil), upper...)
+	e.held = append([]bool(nil), held...)
+	start := append([]float64(nil), from.eta...)
+	if i == 0 {
+		e.gainFix, e.gain = true, v
+		return e.descend(start, searchTol)
+	}
+	j := i - 1
+	if j < e.ng {
+		// The lag stays the j-th longest; what it gains the others lose first.
+		d := v - start[j]
+		for l := range e.ng {
+			switch {
+			case l < j:
+				e.lower[l] = math.Max(e.lower[l], v)
+			case l > j:
+				e.upper[l] = math.Min(e.upper[l], v)
+			}
+			if l != j {
+				start[l] = math.Min(math.Max(start[l], e.lower[l]), e.upper[l])
+			}
+		}
+		if e.ng > 1 {
+			l := 1
+			if j > 0 {
+				l = 0
+			}
+			start[l] = math.Min(math.Max(start[l]-d, e.lower[l]), e.upper[l])
+		} else {
+			start[e.ng] = math.Min(math.Max(start[e.ng]-d*0.3, e.lower[e.ng]), e.upper[e.ng])
+		}
+	} else if e.ng > 0 {
+		d := v - start[j]
+		start[0] = math.Max(start[0]-0.3*d, 0.3*start[0])
+	}
+	start[j] = v
+	e.lower[j], e.upper[j] = v, v
+	e.held[j] = true
+	return e.descend(start, searchTol)
+}
+
+// end finds the end of the interval of parameter i in the direction dir (±1)
+// where r reaches c; scale is a first guess of the standard error, limit the
+// physical end of the parameter's range. It is NaN where r stays below c all
+// the way.
+func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
+	value := q.value(i)
+	r := func(v float64, from point) (float64, point) {
+		p := q.hold(i, v, from)
+		if p.s < q.best.s*(1-1e-7) && (q.found == nil || p.s < q.found.s) {
+			cp := p
+			q.found = &cp
+		}
+		return math.Sqrt(math.Max(p.s-q.best.s, 0) / q.s2), p
+	}
+	room := math.Abs(limit - value)
+	if !(scale > 0) || math.IsInf(scale, 0) || scale > math.Abs(value) {
+		scale = 0.2*math.Abs(value) + 1e-3*q.e.recs[0].step
+	}
+	x, from := math.Min(c*scale, room), q.best
+	xl, rl := 0.0, 0.0
+	var xh, rh float64
+	for tries := 0; ; tries++ {
+		rv, p := r(value+dir*x, from)
+		if rv >= c {
+			xh, rh = x, rv
+			break
+		}
+		if x >= room*(1-1e-12) || tries > 25 {
+			return math.NaN()
+		}
+		if rv > rl || tries == 0 {
+			xl, rl = x, rv
+		}
+		from = p
+		grow := 3.0
+		if rv > 0.2*c {
+			grow = math.Min(1.15*c/rv, 3)
+		}
+		x = math.Min(x*grow, room)
+	}
+	// Regula falsi with the Illinois modification; r is nearly linear in v.
+	side := 0
+	fl, fh := rl-c, rh-c
+	for range 12 {
+		if math.Abs(xh-xl) < 1e-5*xh {
+			break
+		}
+		x = xh - fh*(xh-xl)/(fh-fl)
+		rv, p := r(value+dir*x, from)
+		from = p
+		f := rv - c
+		if math.Abs(f) < 2e-3*c {
+			return value + dir*x
+		}
+		if f > 0 {
+			xh, fh = x, f
+			if side == 1 {
+				fl /= 2
+			}
+			side = 1
+		} else {
+			xl, fl = x, f
+			if side == -1 {
+				fh /= 2
+			}
+			side = -1
+		}
+	}
+	return value + dir*(xl+xh)/2
+}
+
+func (q *profiler) value(i int) float64 {
+	if i == 0 {
+		return q.best.gain
+	}
+	return q.best.eta[i-1]
+}

@@ -1,0 +1,184 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+	"sort"
+
+	"lagwright/data"
+	"lagwright/ident"
+)
+
+// record is one log made ready for fitting: the rows with a temperature, the
+// input as held, and the columns that enter the model linearly.
+type record struct {
+	run   *data.Run
+	input ident.Input // phi(u)
+	t, y  []float64   // rows with a temperature
+	rows  []ident.Row // the same rows, one sample each
+	span  float64     // s, first to last row
+	step  float64     // s, median interval
+	sim   *ident.Simulator
+	start *ident.Simulator // response to a unit change at the first row, for an earlier rest
+	rest  initial
+	drift bool
+
+	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
+
+	// Under the noise shape in force:
+	shape  shape
+	filter *filter
+	yw     []float64   // whitened temperature, free of the fixed columns
+	basis  [][]float64 // whitened fixed columns, orthonormal
+	weight float64     // 1/variance relative to the first record
+}
+
+// initial says what is known of the state at the first row.
+type initial int
+
+const (
+	rest    initial = iota // at rest at the first recorded input
+	earlier                // at rest at an unknown earlier input, left at the first row
+	free                   // nothing is known: every element starts anywhere
+)
+
+func (i initial) String() string { return [...]string{"rest", "earlier", "free"}[i] }
+
+func parseInitial(s string) (initial, error) {
+	for _, i := range []initial{rest, earlier, free} {
+		if s == i.String() {
+			return i, nil
+		}
+	}
+	return rest, fmt.Errorf("initial %q is not one of auto, rest, earlier, free", s)
+}
+
+func newRecord(run *data.Run, law ident.Law) (*record, error) {
+	r := &record{run: run, weight: 1}
+	r.input = ident.HeldInput(run.T, run.U, law)
+	for i, v := range run.Y {
+		if !math.IsNaN(v) {
+			r.t = append(r.t, run.T[i])
+			r.y = append(r.y, v)
+		}
+	}
+	name := run.Source.File
+	if len(r.t) < 8 {
+		return nil, fmt.Errorf("%s: %w: %d rows hold a temperature, at least 8 are needed", name, ErrTooShort, len(r.t))
+	}
+	lo, hi := r.y[0], r.y[0]
+	for _, v := range r.y {
+		lo, hi = math.Min(lo, v), math.Max(hi, v)
+	}
+	if lo == hi {
+		return nil, fmt.Errorf("%s: %w: it is %g in every row; check the sensor and the column", name, ErrConstant, lo)
+	}
+	if len(r.input.At) == 0 {
+		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
+	}
+	r.rows = make([]ident.Row, len(r.t))
+	for i, t := range r.t {
+		r.rows[i] = ident.Row{T: t, M: 1}
+	}
+	r.span = r.t[len(r.t)-1] - r.t[0]
+	r.step = medianInterval(r.t)
+	r.sim = ident.NewSimulator(r.t, r.input)
+	r.setShape(whiteShape)
+	return r, nil
+}
+
+// model fixes which linear columns the record carries.
+func (r *record) model(in initial, drift bool) {
+	r.rest, r.drift = in, drift
+	r.fixed = r.fixed[:0]
+	one := make([]float64, len(r.t))
+	for i := range one {
+		one[i] = 1
+	}
+	r.fixed = append(r.fixed, one)
+	if drift {
+		r.fixed = append(r.fixed, append([]float64(nil), r.t...))
+	}
+	if in == earlier && r.start == nil {
+		r.start = ident.NewSimulator(r.t, ident.Input{At: []float64{r.t[0]}, Value: []float64{1}})
+	}
+	r.setShape(r.shape)
+}
+
+// setShape whitens what does not depend on the plant.
+func (r *record) setShape(s shape) {
+	r.shape = s
+	r.filter = newFilter(r.rows, s)
+	n := len(r.y)
+	r.yw = resize(r.yw, n)
+	r.filter.apply(r.yw, r.y)
+	r.basis = r.basis[:0]
+	for _, c := range r.fixed {
+		w := make([]float64, n)
+		r.filter.apply(w, c)
+		if addToBasis(&r.basis, w) {
+			continue
+		}
+	}
+	project(r.yw, r.basis)
+}
+
+// addToBasis makes w orthonormal to the basis and appends it; it reports
+// false when nothing of w is left.
+func addToBasis(basis *[][]float64, w []float64) bool {
+	before := math.Sqrt(dot(w, w))
+	project(w, *basis)
+	project(w, *basis) // twice is enough: Parlett, The Symmetric Eigenvalue Problem (from memory)
+	after := math.Sqrt(dot(w, w))
+	if !(after > 1e-9*before) {
+		return false
+	}
+	for i := range w {
+		w[i] /= after
+	}
+	*basis = append(*basis, w)
+	return true
+}
+
+// project takes the part of x that lies in the basis out of x.
+func project(x []float64, basis [][]float64) {
+	for _, q := range basis {
+		c := dot(q, x)
+		for i, v := range q {
+			x[i] -= c * v
+		}
+	}
+}
+
+func dot(a, b []float64) float64 {
+	b = b[:len(a)]
+	var s0, s1, s2, s3 float64
+	i := 0
+	for ; i+4 <= len(a); i += 4 {
+		s0 += a[i] * b[i]
+		s1 += a[i+1] * b[i+1]
+		s2 += a[i+2] * b[i+2]
+		s3 += a[i+3] * b[i+3]
+	}
+	for ; i < len(a); i++ {
+		s0 += a[i] * b[i]
+	}
+	return (s0 + s1) + (s2 + s3)
+}
+
+func resize(x []float64, n int) []float64 {
+	if cap(x) < n {
+		return make([]float64, n)
+	}
+	return x[:n]
+}
+
+// medianInterval is the median distance of neighbouring rows.
+func medianInterval(t []float64) float64 {
+	d := make([]float64, len(t)-1)
+	for i := range d {
+		d[i] = t[i+1] - t[i]
+	}
+	sort.Float64s(d)
+	return d[len(d)/2]
+}

@@ -1,0 +1,321 @@
+package fit
+
+import (
+	"math"
+	"sort"
+)
+
+// tangent is a fitted model near its optimum on one record: what is left of
+// the log and an orthonormal basis of the directions in which the model can
+// move, the linear columns first, then gain, lags, dead time.
+type tangent struct {
+	rec    *record
+	left   []float64   // log minus model, unwhitened
+	cols   [][]float64 // orthonormal (unwhitened) directions
+	first  int         // how many of cols are linear columns
+	param  []int       // parameter (0 gain, 1… eta) behind cols[first+i]
+	tri    [][]float64 // parameter block of the triangular factor: direction = Σ tri·parameter
+	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
+	nparam int
+}
+
+// tangents linearises the model at p on every record.
+func (e *engine) tangents(p point) []*tangent {
+	p = e.eval(p.eta, true)
+	out := make([]*tangent, len(e.recs))
+	for i, r := range e.recs {
+		out[i] = e.tangent(r, &e.work[i], &p)
+	}
+	return out
+}
+
+func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
+	n := len(r.t)
+	t := &tangent{rec: r, nparam: e.ng + 2}
+	linear := append([][]float64(nil), r.fixed...)
+	switch r.rest {
+	case earlier:
+		linear = append(linear, w.start[0])
+	case free:
+		linear = append(linear, w.start...)
+	}
+	rhs := make([]float64, n)
+	for k := range rhs {
+		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
+	}
+	beta := weightedSolve(r.filter, linear, rhs)
+	t.left = rhs
+	for j, c := range linear {
+		for k, v := range c {
+			t.left[k] -= beta[j] * v
+		}
+	}
+	for _, c := range linear {
+		addToBasis(&t.cols, append([]float64(nil), c...))
+	}
+	t.first = len(t.cols)
+	// Directions of the parameters.
+	states := e.stateDerivatives(r, w, p)
+	dirs := make([][]float64, 0, e.ng+2)
+	dirs = append(dirs, append([]float64(nil), w.raw[0]...))
+	for j := range e.ng + 1 {
+		c := make([]float64, n)
+		for l := range e.nl + 1 {
+			if (l < e.nl && e.groups[l] != j) || (l == e.nl && j != e.ng) {
+				continue
+			}
+			for k, v := range w.raw[l+1] {
+				c[k] += p.gain * v
+			}
+			if states != nil {
+				for k, v := range states[l] {
+					c[k] += v
+				}
+			}
+		}
+		dirs = append(dirs, c)
+	}
+	t.tri = columns(len(dirs), len(dirs))
+	t.scale = make([]float64, len(dirs))
+	var params [][]float64
+	for j, c := range dirs {
+		if (j == 0 && e.gainFix) || (j > 0 && e.held[j-1]) {
+			continue
+		}
+		norm := math.Sqrt(dot(c, c))
+		project(c, t.cols[:t.first])
+		project(c, t.cols[:t.first])
+		t.scale[j] = math.Sqrt(dot(c, c))
+		for range 2 {
+			for i, q := range params {
+				s := dot(q, c)
+				t.tri[i][j] += s
+				for k, v := range q {
+					c[k] -= s * v
+				}
+			}
+		}
+		after := math.Sqrt(dot(c, c))
+		if !(after > 1e-7*norm) || !(after > 1e-6*t.scale[j]) {
+			for i := range params {
+				t.tri[i][j] = 0
+			}
+			t.scale[j] = 0
+			continue
+		}
+		for k := range c {
+			c[k] /= after
+		}
+		t.tri[len(params)][j] = after
+		t.param = append(t.param, j)
+		params = append(params, c)
+	}
+	t.cols = append(t.cols, params...)
+	return t
+}
+
+// node is one noise shape with what the record says under it: its weight,
+// and the quadratic form of the model's parameters (gain, eta):
+// rss(d) = rss + (d-shift)ᵀ·a·(d-shift), d counted from the optimum the
+// tangent was taken at. Parameters absent from the tangent have zero rows.
+type node struct {
+	shape  shape
+	weight float64
+	a      [][]float64
+	b      []float64 // a·shift
+	rss    float64   // at the optimum over the linear columns and d
+	dof    int
+	dev    float64 // -2 restricted log likelihood, up to a constant
+}
+
+// evaluate computes the restricted likelihood (REML: Patterson and Thompson
+// 1971; Harville 1977, from memory) of a noise shape,
+//
+//	-2·L = (n-p)·ln rss + ln|R| + ln|XᵀR⁻¹X|
+//
+// with rss the generalised least-squares sum over all directions X of the
+// tangent, and the quadratic form of the parameters.
+func (t *tangent) evaluate(s shape) node {
+	f := newFilter(t.rec.rows, s)
+	n, p := len(t.left), len(t.cols)
+	white := make([][]float64, p+1)
+	buf := columns(p+1, n)
+	for j, c := range t.cols {
+		f.apply(buf[j], c)
+		white[j] = buf[j]
+	}
+	f.apply(buf[p], t.left)
+	white[p] = buf[p]
+	// Cholesky of the Gram matrix, columns in order, the residual last.
+	l := columns(p+1, p+1)
+	logdet := 0.0
+	for i := 0; i <= p; i++ {
+		for j := 0; j <= i; j++ {
+			s := dot(white[i], white[j])
+			for k := range j {
+				s -= l[i][k] * l[j][k]
+			}
+			if i == j {
+				l[i][i] = math.Sqrt(math.Max(s, 1e-300))
+			} else {
+				l[i][j] = s / l[j][j]
+			}
+		}
+		if i < p {
+			logdet += 2 * math.Log(l[i][i])
+		}
+	}
+	nd := node{shape: s, rss: l[p][p] * l[p][p], dof: n - p}
+	nd.dev = float64(n-p)*math.Log(nd.rss) + f.logdet + logdet
+	// The parameter block: a in the orthonormal coordinates is lp·lpᵀ, with lp
+	// the trailing block of l; in parameters a = triᵀ·lp·lpᵀ·tri.
+	np := len(t.param)
+	nd.a = columns(t.nparam, t.nparam)
+	nd.b = make([]float64, t.nparam)
+	m := columns(np, t.nparam) // lpᵀ·tri
+	for i := range np {
+		for _, j := range t.param {
+			for k := i; k < np; k++ {
+				m[i][j] += l[t.first+k][t.first+i] * t.tri[k][j]
+			}
+		}
+	}
+	for _, i := range t.param {
+		for k := range np {
+			nd.b[i] += m[k][i] * l[p][t.first+k]
+			for _, j := range t.param {
+				nd.a[i][j] += m[k][i] * m[k][j]
+			}
+		}
+	}
+	return nd
+}
+
+// tcRange is the range of correlation times that a record can speak about.
+func (t *tangent) tcRange() (lo, hi float64) {
+	return 0.2 * t.rec.step, math.Max(0.7*t.rec.span, 2*t.rec.step)
+}
+
+// bestShape finds the noise shape of greatest restricted likelihood, from a
+// coarse grid and a pattern search; near narrows the grid to a neighbourhood.
+func (t *tangent) bestShape(near *shape) node {
+	lo, hi := t.tcRange()
+	best := t.evaluate(whiteShape)
+	better := func(tc, w float64) bool {
+		tc = math.Min(math.Max(tc, lo), hi)
+		w = math.Min(math.Max(w, 0), 0.995)
+		if n := t.evaluate(shape{tc, w}); n.dev < best.dev-1e-9 {
+			best = n
+			return true
+		}
+		return false
+	}
+	da, db := math.Log(hi/lo)/8, 0.25
+	if near == nil || near.white >= 1 {
+		for i := range 9 {
+			for _, w := range []float64{0, 0.3, 0.7, 0.93} {
+				better(lo*math.Exp(float64(i)*da), w)
+			}
+		}
+		da /= 2
+		db = 0.12
+	} else {
+		better(near.tc, near.white)
+		da, db = 0.3, 0.1
+	}
+	// Pattern search (Hooke and Jeeves 1961, from memory): halve when nothing helps.
+	for da > 0.01 {
+		c := best.shape
+		if c.white >= 1 {
+			c = shape{lo * 3, 0.97}
+		}
+		moved := false
+		for _, d := range [][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}} {
+			if better(c.tc*math.Exp(d[0]*da), c.white+d[1]*db) {
+				moved = true
+			}
+		}
+		if !moved {
+			da, db = da/2, db/2
+		}
+	}
+	return best
+}
+
+// grid spreads nodes over the noise shapes that the record does not rule out,
+// with weights proportional to their restricted likelihood under a prior flat
+// in log tc and in the white fraction. It is a flood fill on a lattice whose
+// spacing follows the curvature at the best shape.
+func (t *tangent) grid(best node) []node {
+	lo, hi := t.tcRange()
+	c := best.shape
+	if c.white >= 1 {
+		c = shape{math.Sqrt(lo * hi), 0.995}
+	}
+	at := func(a, w float64) (node, bool) {
+		tc := c.tc * math.Exp(a)
+		if tc < lo*0.999 || tc > hi*1.001 || w < -1e-9 || w > 1 {
+			return node{}, false
+		}
+		return t.evaluate(shape{tc, math.Min(math.Max(w, 0), 0.9999)}), true
+	}
+	spacing := func(d0, dMax float64, f func(d float64) (node, bool)) float64 {
+		// The distance at which -2L rises by about 1.
+		d := d0
+		for range 6 {
+			rise, ok := 0.0, false
+			for _, s := range []float64{1, -1} {
+				if n, in := f(s * d); in {
+					rise, ok = math.Max(rise, n.dev-best.dev), true
+				}
+			}
+			if ok && rise > 2.5 {
+				d /= 2
+			} else if ok && rise < 0.4 && d < dMax {
+				d *= 1.7
+			} else {
+				break
+			}
+		}
+		return math.Min(d, dMax)
+	}
+	da := spacing(0.4, math.Log(hi/lo)/5, func(d float64) (node, bool) { return at(d, c.white) })
+	db := spacing(0.1, 0.25, func(d float64) (node, bool) { return at(0, c.white+d) })
+	type key struct{ i, j int }
+	seen := map[key]bool{{0, 0}: true}
+	queue := []key{{0, 0}}
+	var nodes []node
+	for len(queue) > 0 && len(nodes) < 90 {
+		k := queue[0]
+		queue = queue[1:]
+		n, ok := at(float64(k.i)*da, c.white+float64(k.j)*db)
+		if !ok || n.dev > best.dev+9 {
+			continue
+		}
+		nodes = append(nodes, n)
+		for _, d := range []key{{1, 0}, {-1, 0}, {0, 1}, {0, -1}} {
+			q := key{k.i + d.i, k.j + d.j}
+			if !seen[q] {
+				seen[q] = true
+				queue = append(queue, q)
+			}
+		}
+	}
+	if len(nodes) == 0 {
+		nodes = []node{best}
+	}
+	low := nodes[0].dev
+	for _, n := range nodes {
+		low = math.Min(low, n.dev)
+	}
+	total := 0.0
+	for i := range nodes {
+		nodes[i].weight = math.Exp(-0.5 * (nodes[i].dev - low))
+		total += nodes[i].weight
+	}
+	for i := range nodes {
+		nodes[i].weight /= total
+	}
+	sort.SliceStable(nodes, func(i, j int) bool { return nodes[i].weight > nodes[j].weight })
+	return nodes
+}

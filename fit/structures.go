@@ -1,0 +1,303 @@
+package fit
+
+import (
+	"math"
+	"sort"
+
+	"lagwright/ident"
+)
+
+// fitted is one structure at its optimum, with the noise shapes it was
+// fitted under.
+type fitted struct {
+	st     ident.Structure
+	e      *engine
+	p      point // in the engine's full lags
+	groups []int // lags that coincide at the optimum
+	shapes []shape
+	weight []float64
+
+	mean   int // parameters of the mean: gain, lags, dead time, linear columns
+	params int // mean and noise parameters
+	loglik float64
+	aicc   float64
+	bic    float64
+}
+
+// activate puts the noise shapes of f in force.
+func (f *fitted) activate() {
+	for i, r := range f.e.recs {
+		r.weight = f.weight[i]
+		if r.shape != f.shapes[i] {
+			r.setShape(f.shapes[i])
+		}
+	}
+}
+
+// s2 is the variance of the whitened residuals.
+func (f *fitted) s2() float64 {
+	return f.p.s / float64(max(f.e.samples()-f.mean, 1))
+}
+
+// study fits structures to a set of records.
+type study struct {
+	recs  []*record
+	white bool // plain least squares on the simulated output
+	fix   map[string]float64
+	tau   float64 // of the best single lag, for starts
+	dead  float64
+}
+
+// fit finds the optimum of one structure. shorter is the fit of the chain with
+// one lag fewer, nil when there is none.
+func (s *study) fit(st ident.Structure, shorter *fitted) *fitted {
+	e := newEngine(st, s.recs)
+	s.applyFix(e)
+	var starts [][]float64
+	switch {
+	case st.Order() <= 1:
+		starts = e.coarse()
+	default:
+		var from []float64
+		if shorter != nil {
+			from = shorter.p.eta
+		}
+		starts = e.starts(s.tau, s.dead, from)
+	}
+	f := &fitted{st: st, e: e}
+	f.p = e.search(starts)
+	s.coincide(f)
+	if !s.white {
+		s.alternate(f)
+	}
+	s.score(f)
+	if st.Order() == 1 {
+		s.tau, s.dead = f.p.eta[0], f.p.eta[1]
+	}
+	return f
+}
+
+// applyFix holds the parameters that the user knows.
+func (s *study) applyFix(e *engine) {
+	for name, v := range s.fix {
+		switch {
+		case name == "gain":
+			e.gainFix, e.gain = true, v
+		case name == "dead_time":
+			e.lower[e.ng], e.upper[e.ng], e.held[e.ng] = v, v, true
+		default:
+			if i := lagIndex(name); i < e.ng {
+				e.lower[i], e.upper[i], e.held[i] = v, v, true
+			}
+		}
+	}
+}
+
+// lagIndex turns "lag2" into 1; -1 for anything else.
+func lagIndex(name string) int {
+	if len(name) == 4 && name[:3] == "lag" && name[3] >= '1' && name[3] <= '9' {
+		return int(name[3] - '1')
+	}
+	return -1
+}
+
+// coincide tries the ways in which lags of a chain can coincide. The sum of
+// squares depends on two near lags through their sum and the square of their
+// difference, so its optimum can lie exactly on the edge where they are equal;
+// a descent in the lags creeps towards it, a descent along the edge lands on it.
+func (s *study) coincide(f *fitted) {
+	e := f.e
+	f.groups = append([]int(nil), e.groups...)
+	s.order(f)
+	if e.st.Equal() || e.st.Order() < 2 || len(s.fix) > 0 {
+		return
+	}
+	identity := append([]int(nil), e.groups...)
+	best, full := f.p, f.p
+	dead := full.eta[e.nl]
+	for _, g := range patterns(e.st.Order()) {
+		e.setGroups(g)
+		start := make([]float64, e.ng+1)
+		count := make([]float64, e.ng)
+		for i, k := range g {
+			start[k] += full.eta[i]
+			count[k]++
+		}
+		for k := range count {
+			start[k] /= count[k]
+		}
+		start[e.ng] = dead
+		q := e.descend(start, finalTol)
+		if q.s < best.s*(1-1e-12) {
+			if full.s > q.s*(1+1e-9) {
+				if r := e.intervals(q); r.s < q.s {
+					q = e.descend(r.eta, finalTol)
+				}
+			}
+			best, f.groups = q, append([]int(nil), g...)
+		}
+	}
+	if len(best.eta) < e.nl+1 || !equalInts(f.groups, identity) {
+		e.setGroups(f.groups)
+		eta := append(e.lags(best.eta), best.eta[e.ng])
+		e.setGroups(identity)
+		f.p = e.eval(eta, true)
+	} else {
+		e.setGroups(identity)
+	}
+	// An optimum inside can still be a little better than the edge.
+	if q := e.descend(f.p.eta, finalTol); q.s < f.p.s*(1-1e-8) {
+		f.p, f.groups = q, identity
+	}
+	s.order(f)
+}
+
+func equalInts(a, b []int) bool {
+	for i := range a {
+		if a[i] != b[i] {
+			return false
+		}
+	}
+	return true
+}
+
+// order sorts the lags, longest first, groups along with them.
+func (s *study) order(f *fitted) {
+	if len(s.fix) > 0 || f.e.nl < 2 {
+		return
+	}
+	lags := f.p.eta[:f.e.nl]
+	idx := make([]int, len(lags))
+	for i := range idx {
+		idx[i] = i
+	}
+	sort.SliceStable(idx, func(i, j int) bool { return lags[idx[i]] > lags[idx[j]] })
+	eta := append([]float64(nil), f.p.eta...)
+	groups := make([]int, len(idx))
+	names := map[int]int{}
+	for i, k := range idx {
+		eta[i] = lags[k]
+		g := f.groups[k]
+		if _, ok := names[g]; !ok {
+			names[g] = len(names)
+		}
+		groups[i] = names[g]
+	}
+	f.groups = groups
+	f.p = f.e.eval(eta, true)
+}
+
+// alternate fits noise and plant in turn: the noise shape by restricted
+// likelihood given the plant, the plant by generalised least squares given the
+// noise, until the shape settles.
+func (s *study) alternate(f *fitted) {
+	for round := range 4 {
+		before := make([]shape, len(s.recs))
+		for i, r := range s.recs {
+			before[i] = r.shape
+		}
+		for i, t := range f.tangents() {
+			var from *shape
+			if before[i].white < 1 {
+				from = &before[i]
+			}
+			n := t.bestShape(from)
+			r := s.recs[i]
+			r.setShape(n.shape)
+			r.weight = float64(n.dof) / n.rss
+		}
+		for i := len(s.recs) - 1; i >= 0; i-- {
+			s.recs[i].weight /= s.recs[0].weight
+		}
+		f.p = f.e.descend(f.p.eta, finalTol)
+		if round == 0 {
+			if q := f.e.intervals(f.p); q.s < f.p.s {
+				f.p = f.e.descend(q.eta, finalTol)
+			}
+		}
+		s.coincide(f)
+		settled := round > 0
+		for i, r := range s.recs {
+			if !alike(before[i], r.shape) {
+				settled = false
+			}
+		}
+		if settled {
+			break
+		}
+	}
+}
+
+func alike(a, b shape) bool {
+	if a.white >= 1 && b.white >= 1 {
+		return true
+	}
+	return math.Abs(math.Log(a.tc/b.tc)) < 0.02 && math.Abs(a.white-b.white) < 0.01
+}
+
+// tangents linearises f at its optimum, coinciding lags as one.
+func (f *fitted) tangents() []*tangent {
+	e := f.e
+	identity := e.groups
+	lower, upper, held := e.lower, e.upper, e.held
+	if !equalInts(f.groups, identity) {
+		e.setGroups(f.groups)
+		defer func() { e.setGroups(identity); e.lower, e.upper, e.held = lower, upper, held }()
+	}
+	return e.tangents(point{eta: f.reducedEta()})
+}
+
+// reducedEta is the optimum with coinciding lags as one.
+func (f *fitted) reducedEta() []float64 {
+	ng := 0
+	for _, g := range f.groups {
+		ng = max(ng, g+1)
+	}
+	out := make([]float64, ng+1)
+	for i, g := range f.groups {
+		out[g] = f.p.eta[i]
+	}
+	out[ng] = f.p.eta[len(f.p.eta)-1]
+	return out
+}
+
+// score fills the likelihood figures and stores the noise shapes in force.
+func (s *study) score(f *fitted) {
+	n := 0
+	f.mean = f.e.nl + 2
+	f.params = 0
+	f.shapes, f.weight = nil, nil
+	if f.e.gainFix {
+		f.mean--
+	}
+	for _, h := range f.e.held {
+		if h {
+			f.mean--
+		}
+	}
+	f.loglik = 0
+	for i, r := range s.recs {
+		f.shapes = append(f.shapes, r.shape)
+		f.weight = append(f.weight, r.weight)
+		f.mean += len(r.basis)
+		switch r.rest {
+		case earlier:
+			f.mean++
+		case free:
+			f.mean += f.st.Order()
+		}
+		n += len(r.t)
+		f.loglik += r.filter.logLikelihood(f.p.part[i], len(r.t))
+		f.params++ // variance
+		if !s.white {
+			f.params += 2
+		}
+	}
+	f.params += f.mean
+	k, m := float64(f.params), float64(n)
+	f.aicc = -2*f.loglik + 2*k
+	if m-k-1 > 0 {
+		f.aicc += 2 * k * (k + 1) / (m - k - 1)
+	}
+	f.bic = -2*f.loglik + k*math.Log(m)
+}
