@@ -55,3 +55,19 @@ func (g *Gains) law() (law, error) {
 }
 
 func isFinite(x float64) bool { return !math.IsNaN(x) && !math.IsInf(x, 0) }
+
+// newGains writes a control law down as gains. The numbers are taken as they
+// are, in whatever form the caller says they are.
+func newGains(c law, controller string) *Gains {
+	g := &Gains{Schema: GainsSchema, Controller: controller, Form: Ideal, Kc: c.kc, Filter: c.tf, SetpointWeight: c.b, Action: "reverse"}
+	if c.kc < 0 {
+		g.Action = "direct"
+	}
+	if c.integral() {
+		g.Ti = &c.ti
+	}
+	if controller == "pid" {
+		g.Td = &c.td
+	}
+	return g
+}
