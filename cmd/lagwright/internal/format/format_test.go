@@ -30,7 +30,7 @@ func TestValue(t *testing.T) {
 		{80, at(79.97), at(80.03), "degC", "80.000 ± 0.030 °C"},
 		{0, at(-0.02), at(0.02), "K/s", "0.000 ± 0.020 K/s"},
 		{3e-8, at(1e-8), at(5e-8), "K/s", "3.0e-8 ± 2.0e-8 K/s"},
-		{3e-5, at(1e-5), at(5e-5), "K/s", "0.000030 ± 0.000020 K/s"},
+		{3e-5, at(1e-5), at(5e-5), "K/s", "3.0e-5 ± 2.0e-5 K/s"},
 		{5, at(6), at(7), "s", "5.00 s (6.00 to 7.00)"}, // a bound that leaves the value out is shown, not hidden
 	} {
 		if got := Value(c.v, c.low, c.high, c.unit); got != c.want {

@@ -34,7 +34,7 @@ func Value(v float64, low, high *float64, unit string) string {
 		d := decimals(half)
 		return join(fixed(v, d), unit) + " (" + fixed(*low, d) + " to " + fixed(*high, d) + ")"
 	}
-	if half < 1e-6 || math.Abs(v) >= 1e6 {
+	if half < 1e-6 || math.Max(math.Abs(v), half) < 1e-3 || math.Abs(v) >= 1e6 {
 		return join(Number(v, digitsFor(v, half))+" ± "+Number(half, 2), unit)
 	}
 	d := decimals(half)

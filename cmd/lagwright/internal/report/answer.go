@@ -1,0 +1,193 @@
+package report
+
+import (
+	"fmt"
+	"strings"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/fit"
+	"lagwright/tune"
+	"lagwright/validate"
+)
+
+// answer is the top of the page: what to do, and how sure.
+type answer struct {
+	Headline   string
+	EnterTitle string
+	Enter      []setting
+	Verdict    *item
+	Sure       []string
+	Reasons    []string
+}
+
+// setting is one field of a controller as someone types it in.
+type setting struct{ Name, Value string }
+
+func answerOf(b *Bundle) answer {
+	switch {
+	case b.Gains != nil:
+		return gainsAnswer(b)
+	case b.Replay != nil:
+		return replayAnswer(b)
+	case b.Card != nil:
+		return cardAnswer(b)
+	}
+	return logAnswer(b)
+}
+
+func gainsAnswer(b *Bundle) answer {
+	g := b.Gains
+	a := answer{
+		EnterTitle: fmt.Sprintf("%s controller, %s form", strings.ToUpper(g.Controller), g.Form),
+		Enter:      settings(g),
+		Reasons:    g.Reasons,
+	}
+	asked := requirementWords(g.Requirement, g.Units)
+	if g.Meets {
+		a.Headline = "Enter these gains"
+		a.Verdict = &item{"good", "They meet the requirement: " + asked + "."}
+	} else {
+		a.Headline = "No gains meet the requirement; these come nearest"
+		if g.Rule != "synthesis" {
+			a.Headline = "These gains do not meet the requirement"
+		}
+		a.Verdict = &item{"bad", "They do not meet the requirement: " + asked + "."}
+	}
+	a.Sure = append(a.Sure, sharePhrase(g))
+	if b.Replay != nil {
+		a.Sure = append(a.Sure, replayPhrase(b.Replay))
+	}
+	if m := b.model(); m != nil {
+		a.Sure = append(a.Sure, heaterPhrase(b.Card, m))
+	}
+	a.Sure = append(a.Sure, "Begin with the output limited and a small setpoint step. The cautions below come first.")
+	return a
+}
+
+func sharePhrase(g *tune.Gains) string {
+	s := fmt.Sprintf("How sure: the requirement holds on %s of the plausible plants, the heaters that the log cannot rule out",
+		format.Percent(g.ShareMeeting))
+	if g.Assurance > 0 {
+		s += fmt.Sprintf("; %s were asked for", format.Percent(g.Assurance))
+	}
+	return s + "."
+}
+
+func replayPhrase(r *validate.Replay) string {
+	s := fmt.Sprintf("Replayed on %s: the requirement holds on %d", format.Count(r.Summary.Runs, "past run", "past runs"), r.Summary.Meeting)
+	if r.Summary.Failed > 0 {
+		s += fmt.Sprintf("; %s could not be replayed", format.Count(r.Summary.Failed, "log", "logs"))
+	}
+	return s + "."
+}
+
+func heaterPhrase(c *fit.Card, m *fit.Model) string {
+	var parts []string
+	for _, p := range m.Parameters {
+		if p.Name == "baseline" || p.Name == "drift" {
+			continue
+		}
+		parts = append(parts, strings.ToLower(parameterName(p.Name))+" "+format.Value(p.Value, p.Low, p.High, p.Unit))
+	}
+	return fmt.Sprintf("The heater (%s, %s intervals): %s.", m.Structure, format.Percent(c.Confidence), strings.Join(parts, ", "))
+}
+
+func replayAnswer(b *Bundle) answer {
+	r := b.Replay
+	a := answer{
+		EnterTitle: fmt.Sprintf("%s controller, %s form, as replayed", strings.ToUpper(r.Gains.Controller), r.Gains.Form),
+		Enter:      settings(&r.Gains),
+		Sure:       []string{replayPhrase(r)},
+	}
+	asked := requirementWords(r.Requirement, r.Gains.Units)
+	if r.Summary.Meets {
+		a.Headline = "These gains would have met the requirement"
+		a.Verdict = &item{"good", "Requirement: " + asked + "."}
+	} else {
+		a.Headline = "These gains would not have met the requirement"
+		a.Verdict = &item{"bad", "Requirement: " + asked + "."}
+	}
+	return a
+}
+
+func cardAnswer(b *Bundle) answer {
+	a := answer{Headline: "The heater is measured; no gains are computed yet"}
+	if m := b.model(); m != nil {
+		a.Sure = []string{heaterPhrase(b.Card, m)}
+	}
+	if n := len(b.Card.Warnings); n > 0 {
+		a.Sure = append(a.Sure, fmt.Sprintf("%s limit what this card can be used for; they are listed below.", sentenceCase(format.Count(n, "warning", "warnings"))))
+	}
+	return a
+}
+
+func logAnswer(b *Bundle) answer {
+	if len(b.Runs) == 0 {
+		return answer{Headline: "There is nothing in this report"}
+	}
+	return answer{Headline: "What is in the log", Sure: []string{"No model has been fitted."}}
+}
+
+// settings are the fields of the controller's face plate, in the order they
+// are usually asked for.
+func settings(g *tune.Gains) []setting {
+	const digits = 4
+	kc := "V/K"
+	if g.Units.Input != "" {
+		kc = g.Units.Input + "/" + kelvin(g.Units.Temperature)
+	}
+	s := []setting{{"Gain Kc", format.Amount(g.Kc, kc, digits)}}
+	optional := func(name string, v *float64, unit string) {
+		if v != nil {
+			s = append(s, setting{name, format.Amount(*v, unit, digits)})
+		}
+	}
+	optional("Integral time Ti", g.Ti, "s")
+	optional("Derivative time Td", g.Td, "s")
+	if g.Filter > 0 {
+		s = append(s, setting{"Filter time", format.Amount(g.Filter, "s", digits)})
+	}
+	if g.Controller == "p" {
+		s = append(s, setting{"Bias", format.Amount(g.Bias, g.Units.Input, digits)})
+	}
+	s = append(s, setting{"Setpoint weight", format.Short(g.SetpointWeight, 3)}, setting{"Action", g.Action})
+	if g.Scan > 0 {
+		s = append(s, setting{"Scan time", format.Amount(g.Scan, "s", digits)})
+	}
+	optional("Output low limit", g.Limits.Min, g.Units.Input)
+	optional("Output high limit", g.Limits.Max, g.Units.Input)
+	optional("Output rate limit", g.Limits.Rate, g.Units.Input+"/s")
+	return s
+}
+
+// requirementWords says a requirement in one clause.
+func requirementWords(q tune.Requirement, u tune.GainUnits) string {
+	rows := requirementRows(q, u)
+	if len(rows) == 0 {
+		return "peak sensitivity held, nothing else asked"
+	}
+	parts := make([]string, len(rows))
+	for i, r := range rows {
+		parts[i] = strings.ToLower(r.Name[:1]) + r.Name[1:] + " " + r.Value
+	}
+	return strings.ReplaceAll(strings.Join(parts, ", "), "ms at", "Ms at")
+}
+
+// requirementRows lists what a requirement asks, with its numbers.
+func requirementRows(q tune.Requirement, u tune.GainUnits) []setting {
+	var rows []setting
+	add := func(name, before string, v *float64, unit, after string) {
+		if v != nil {
+			rows = append(rows, setting{name, before + format.Amount(*v, unit, 4) + after})
+		}
+	}
+	add("Settling", "within ", q.Settling, "s", fmt.Sprintf(" to ±%s", format.Percent(settlingBand(q))))
+	add("Overshoot", "at most ", q.Overshoot, "%", "")
+	add("Damping ratio", "at least ", q.Damping, "", "")
+	add("Ms", "at most ", q.Ms, "", "")
+	add("Input", "not below ", q.InputMin, u.Input, "")
+	add("Input", "not above ", q.InputMax, u.Input, "")
+	add("Input rate", "at most ", q.InputRate, u.Input+"/s", "")
+	add("Temperature", "never above ", q.TempMax, u.Temperature, "")
+	return rows
+}

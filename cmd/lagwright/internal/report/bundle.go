@@ -1,0 +1,56 @@
+package report
+
+import (
+	"lagwright/data"
+	"lagwright/fit"
+	"lagwright/tune"
+	"lagwright/validate"
+)
+
+// Bundle is all that a page can show. What is nil or empty is absent from the
+// page; a bundle of a card alone, or of runs alone, makes a page of its own.
+type Bundle struct {
+	Runs   []*data.Run
+	Curves []*Curves // the card's model beside each of Runs; nil where there is none
+	Card   *fit.Card
+	Gains  *tune.Gains
+	Replay *validate.Replay
+
+	Profiles []Profile // of the selected model
+	Loop     *Loop     // what Gains do on Card's plants
+
+	Tool    string // name and version of the program
+	Command string // what makes this page again, as typed
+}
+
+// model is the card's selected model, nil without one.
+func (b *Bundle) model() *fit.Model {
+	if b.Card == nil {
+		return nil
+	}
+	for i := range b.Card.Models {
+		if b.Card.Models[i].Structure == b.Card.Selected {
+			return &b.Card.Models[i]
+		}
+	}
+	return nil
+}
+
+// curves are those of a run, nil where there are none.
+func (b *Bundle) curves(run int) *Curves {
+	if run < len(b.Curves) {
+		return b.Curves[run]
+	}
+	return nil
+}
+
+// requirement is what the page judges by: that of the gains, else of the replay.
+func (b *Bundle) requirement() tune.Requirement {
+	switch {
+	case b.Gains != nil:
+		return b.Gains.Requirement
+	case b.Replay != nil:
+		return b.Replay.Requirement
+	}
+	return tune.Requirement{}
+}

@@ -1,0 +1,81 @@
+package report
+
+import (
+	"fmt"
+	"math"
+	"time"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/tune"
+	"lagwright/validate"
+)
+
+// ReplayFigure draws a run as logged and as the proposed gains would have run
+// it. The run must hold a trace.
+func ReplayFigure(r *validate.RunReplay, g *tune.Gains, q tune.Requirement) *Figure {
+	t := r.Trace
+	x := replayTime(r)
+	temp := &panel{x: x, y: yAxis("Temperature", g.Units.Temperature), height: 170}
+	temp.marks = []mark{
+		band{name: "proposed, plausible plants", x: t.T, low: gaps(t.Low), high: gaps(t.High), ink: inkModel},
+		trace{name: "logged", x: t.T, y: gaps(t.Logged), ink: inkLogged, width: 1.2},
+		trace{name: "setpoint", x: t.T, y: gaps(t.Setpoint), ink: inkOther, dash: true, hold: true},
+		trace{name: "proposed, median", x: t.T, y: gaps(t.Median), ink: inkModel, width: 1.8},
+	}
+	if q.TempMax != nil {
+		temp.marks = append(temp.marks, rule{label: "highest allowed", at: *q.TempMax, ink: inkLimit})
+	}
+	input := &panel{x: x, y: yAxis("Input", g.Units.Input), height: 90}
+	input.marks = []mark{
+		band{x: t.T, low: gaps(t.LowIn), high: gaps(t.HighIn), ink: inkModel, hold: true},
+		trace{name: "logged", x: t.T, y: gaps(t.LoggedIn), ink: inkLogged, width: 1.2, hold: true},
+		trace{name: "proposed, median", x: t.T, y: gaps(t.MedianIn), ink: inkModel, width: 1.8, hold: true},
+	}
+	for _, l := range []*float64{g.Limits.Min, g.Limits.Max} {
+		if l != nil {
+			input.marks = append(input.marks, rule{at: *l, ink: inkLimit, name: "output limits"})
+		}
+	}
+	f := &Figure{Name: "replay", panels: []*panel{temp, input}, Finding: replayFinding(r, g)}
+	f.Alt = "Line charts of temperature and input over time, logged against proposed. " + f.Finding
+	return f
+}
+
+func replayTime(r *validate.RunReplay) *axis {
+	if r.Start != nil {
+		if start, err := time.Parse(time.RFC3339, *r.Start); err == nil {
+			return clockAxis(start, span(r.Trace.T))
+		}
+	}
+	return elapsed("Time from the first row", span(r.Trace.T))
+}
+
+func replayFinding(r *validate.RunReplay, g *tune.Gains) string {
+	s := fmt.Sprintf("%s: under the proposed gains the requirement holds on %s of the plausible plants", runName(r), format.Percent(r.Probability))
+	was, now := r.Logged.Deviation, r.Proposed.Median.Deviation
+	if was != nil && now != nil {
+		unit := kelvin(g.Units.Temperature)
+		s += fmt.Sprintf("; the largest deviation was %s and would have been %s", format.Amount(*was, unit, 2), format.Amount(*now, unit, 2))
+	}
+	return s + "."
+}
+
+func runName(r *validate.RunReplay) string {
+	name := format.Text(r.File)
+	if r.Name != "" {
+		name += ", run " + format.Text(r.Name)
+	}
+	return format.Clip(name, 60)
+}
+
+// gaps makes holes of what does not exist.
+func gaps(v []*float64) []float64 {
+	out := make([]float64, len(v))
+	for i, p := range v {
+		out[i] = math.NaN()
+		if p != nil {
+			out[i] = *p
+		}
+	}
+	return out
+}

@@ -1,0 +1,127 @@
+package report
+
+import (
+	"fmt"
+	"strings"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/data"
+	"lagwright/fit"
+)
+
+// provenance says how someone else can check the page: which file, which
+// rows, which program, which command.
+func provenance(b *Bundle) *section {
+	s := &section{ID: "provenance", Title: "Provenance"}
+	if t := sourceTable(b); len(t.Rows) > 0 {
+		s.Blocks = append(s.Blocks, block{Table: t})
+	}
+	if t := versionTable(b); len(t.Rows) > 0 {
+		s.Blocks = append(s.Blocks, block{Table: t})
+	}
+	if b.Command != "" {
+		s.Blocks = append(s.Blocks, block{Text: "The exact command to make this again:", Code: b.Command})
+	}
+	if len(s.Blocks) == 0 {
+		return nil
+	}
+	return s
+}
+
+// source is a file behind the page, whichever part names it.
+type source struct{ file, use, rows, kept, start, columns, sha string }
+
+func sourceTable(b *Bundle) *table {
+	t := &table{
+		Caption: "Files read",
+		Head:    []string{"File", "Used for", "Rows", "Kept", "Start", "Columns", "SHA-256"},
+	}
+	all := sources(b)
+	for i, s := range all {
+		if i == longestList {
+			t.More = len(all) - longestList
+			break
+		}
+		t.Rows = append(t.Rows, []cell{head(s.file), text(s.use), num(s.rows), num(s.kept), text(s.start), text(s.columns), code(s.sha)})
+	}
+	return t
+}
+
+func sources(b *Bundle) []source {
+	var out []source
+	fitted := map[string]bool{}
+	if b.Card != nil {
+		for _, s := range b.Card.Source {
+			fitted[s.SHA256] = true
+			out = append(out, cardSource(s))
+		}
+	}
+	for _, r := range b.Runs {
+		if !fitted[r.Source.SHA256] {
+			out = append(out, runSource(r))
+		}
+	}
+	if b.Replay != nil {
+		for i := range b.Replay.Runs {
+			r := &b.Replay.Runs[i]
+			start := "-"
+			if r.Start != nil {
+				start = *r.Start
+			}
+			out = append(out, source{runName(r), "replay", format.Thousands(r.Rows), "-", start, "-", r.SHA256})
+		}
+	}
+	return out
+}
+
+func cardSource(s fit.CardSource) source {
+	var names []string
+	for _, k := range []string{"time", "input", "temperature", "setpoint", "mode", "airflow", "inlet"} {
+		if c := s.Columns[k]; c != "" {
+			names = append(names, k+": "+format.Text(c))
+		}
+	}
+	start := "-"
+	if s.Start != nil {
+		start = *s.Start
+	}
+	return source{s.File, "model", format.Thousands(s.Rows), keptWords(s.FromS, s.ToS), start, strings.Join(names, ", "), s.SHA256}
+}
+
+func runSource(r *data.Run) source {
+	c := r.Source.Columns
+	start := "-"
+	if !r.Start.IsZero() {
+		start = r.Start.Format("2006-01-02T15:04:05Z07:00")
+	}
+	return source{runTitle(r.Source), "log", format.Thousands(r.Source.Rows), keptWords(r.Source.FromS, r.Source.ToS), start,
+		fmt.Sprintf("time: %s, input: %s, temperature: %s", format.Text(c.Time), format.Text(c.Input), format.Text(c.Temperature)), r.Source.SHA256}
+}
+
+func keptWords(from, to float64) string {
+	return format.Short(from, 6) + " to " + format.Amount(to, "s", 6)
+}
+
+func versionTable(b *Bundle) *table {
+	t := &table{Caption: "Made by", Head: []string{"Part", "Value"}}
+	add := func(name, value string) {
+		if value != "" {
+			t.Rows = append(t.Rows, []cell{head(name), text(value)})
+		}
+	}
+	add("Program", b.Tool)
+	if c := b.Card; c != nil {
+		add("Model card", c.Schema+", made by "+c.Tool)
+		add("Model card dated", c.Created)
+		if n := len(c.Plants.Values); n > 0 {
+			add("Plausible plants", fmt.Sprintf("%s of %s, random seed %d", format.Thousands(n), c.Plants.Structure, c.Plants.Rand))
+		}
+	}
+	if g := b.Gains; g != nil {
+		add("Gains", g.Schema+", made by "+g.Tool)
+	}
+	if r := b.Replay; r != nil {
+		add("Replay", fmt.Sprintf("%s, made by %s, card %s", r.Schema, r.Tool, r.Card))
+	}
+	return t
+}

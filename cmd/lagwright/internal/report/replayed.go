@@ -1,0 +1,100 @@
+package report
+
+import (
+	"fmt"
+	"sort"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/validate"
+)
+
+// replayed answers: what would these gains have done?
+func replayed(b *Bundle) *section {
+	r := b.Replay
+	if r == nil {
+		return nil
+	}
+	s := &section{ID: "replay", Title: "What would they have done?", Lead: replayPhrase(r)}
+	if back := backTests(r); len(back) > 0 {
+		s.Blocks = append(s.Blocks, block{Heading: "Does the model reproduce what was logged under known gains?", List: listOf(back)})
+	}
+	for _, run := range worthDrawing(r) {
+		s.Blocks = append(s.Blocks, block{Figure: picturesOf(ReplayFigure(run, &r.Gains, r.Requirement))})
+	}
+	if len(r.Runs) > 0 {
+		s.Blocks = append(s.Blocks, block{Table: replayTable(r)})
+	}
+	return s
+}
+
+// worthDrawing are the runs with a trace on which the gains do worst.
+func worthDrawing(r *validate.Replay) []*validate.RunReplay {
+	var out []*validate.RunReplay
+	for i := range r.Runs {
+		if t := r.Runs[i].Trace; t != nil && len(t.T) > 1 {
+			out = append(out, &r.Runs[i])
+		}
+	}
+	sort.SliceStable(out, func(i, j int) bool { return out[i].Probability < out[j].Probability })
+	return out[:min(len(out), mostDrawn)]
+}
+
+func backTests(r *validate.Replay) []item {
+	var out []item
+	for i := range r.Runs {
+		run := &r.Runs[i]
+		t := run.BackTest
+		if t == nil {
+			continue
+		}
+		inside := fmt.Sprintf("%s of the samples lie inside the %s band", format.Percent(t.ShareInside), format.Percent(t.Stated))
+		if t.Reproduced {
+			out = append(out, item{"good", fmt.Sprintf("%s: yes, %s.", runName(run), inside)})
+			continue
+		}
+		out = append(out, item{"bad", fmt.Sprintf("%s: no, only %s. Do not believe its replay.", runName(run), inside)})
+		for _, d := range t.Differs {
+			out = append(out, item{"bad", d})
+		}
+	}
+	return out
+}
+
+func replayTable(r *validate.Replay) *table {
+	unit := kelvin(r.Gains.Units.Temperature)
+	t := &table{
+		Caption: "Run by run: as logged, and as proposed (median, and the band over the plausible plants)",
+		Head: []string{"Run", "Largest deviation, logged", "Proposed", "IAE, logged", "Proposed", "Peak temperature, logged", "Proposed",
+			"Peak input, logged", "Proposed", "Holds on", "Meets"},
+	}
+	for i := range r.Runs {
+		if i == longestList {
+			t.More = len(r.Runs) - longestList
+			break
+		}
+		run := &r.Runs[i]
+		row := []cell{head(runName(run))}
+		for _, f := range []struct {
+			unit string
+			pick func(*validate.RunMetrics) *float64
+		}{
+			{unit, func(m *validate.RunMetrics) *float64 { return m.Deviation }},
+			{unit + "·s", func(m *validate.RunMetrics) *float64 { return m.IAE }},
+			{r.Gains.Units.Temperature, func(m *validate.RunMetrics) *float64 { return m.PeakTemp }},
+			{r.Gains.Units.Input, func(m *validate.RunMetrics) *float64 { return m.PeakInput }},
+		} {
+			row = append(row, num(format.Optional(f.pick(&run.Logged), f.unit, 3)), num(banded(&run.Proposed, f.pick, f.unit)))
+		}
+		t.Rows = append(t.Rows, append(row, num(format.Percent(run.Probability)), yesNo(run.Meets)))
+	}
+	return t
+}
+
+// banded writes a median with its band: "3.1 K (2.8 to 3.6)".
+func banded(b *validate.BandMetrics, pick func(*validate.RunMetrics) *float64, unit string) string {
+	s := format.Optional(pick(&b.Median), unit, 3)
+	if l, h := pick(&b.Low), pick(&b.High); l != nil && h != nil && *l != *h {
+		s += " (" + format.Short(*l, 3) + " to " + format.Short(*h, 3) + ")"
+	}
+	return s
+}

@@ -1,0 +1,164 @@
+package report
+
+import (
+	"fmt"
+	"maps"
+	"slices"
+	"sort"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/data"
+)
+
+// mostDrawn is the number of runs whose logs, and of replays whose traces, a
+// page draws; the others are in its tables.
+const mostDrawn = 3
+
+// trust answers: can I trust this log?
+func trust(b *Bundle) *section {
+	if len(b.Runs) == 0 {
+		return nil
+	}
+	s := &section{ID: "log", Title: "Can I trust this log?", Lead: trustLead(b)}
+	if remarks := remarksOf(b.Runs); len(remarks) > 0 {
+		s.Blocks = append(s.Blocks, block{List: listOf(remarks)})
+	}
+	m := b.model()
+	for i, r := range b.Runs {
+		if i == mostDrawn {
+			s.Blocks = append(s.Blocks, block{Text: fmt.Sprintf("The first %d of %d runs are drawn.", mostDrawn, len(b.Runs))})
+			break
+		}
+		c := b.curves(i)
+		s.Blocks = append(s.Blocks, block{Heading: runHeading(b.Runs, i), Figure: picturesOf(LogFigure(r, c, m))})
+		if c != nil && m != nil && len(c.Residual) > 0 {
+			s.Blocks = append(s.Blocks, block{Figure: picturesOf(ResidualFigure(r, c, m))})
+		}
+	}
+	s.Blocks = append(s.Blocks, block{Table: recordingTable(b)})
+	return s
+}
+
+func trustLead(b *Bundle) string {
+	rows, length := 0, 0.0
+	for _, r := range b.Runs {
+		rows += len(r.T)
+		length += span(r.T)
+	}
+	s := fmt.Sprintf("%s with %s over %s.", sentenceCase(format.Count(len(b.Runs), "run", "runs")),
+		format.Count(rows, "row", "rows"), format.Duration(length))
+	if m := b.model(); m != nil {
+		s += fmt.Sprintf(" The model explains it to %s rms (fit %s %%).", format.Amount(m.RMSE, kelvin(b.Card.Units.Temperature), 2), format.Short(m.FitPercent, 3))
+	}
+	if n := len(remarksOf(b.Runs)); n > 0 {
+		return s + fmt.Sprintf(" %s about the recording:", sentenceCase(format.Count(n, "remark", "remarks")))
+	}
+	return s + " Nothing had to be mended or set aside."
+}
+
+func runHeading(runs []*data.Run, i int) string {
+	if len(runs) == 1 {
+		return ""
+	}
+	return runTitle(runs[i].Source)
+}
+
+func runTitle(s data.Source) string {
+	name := format.Text(s.File)
+	if s.Name != "" {
+		name += ", run " + format.Text(s.Name)
+	}
+	return name
+}
+
+// remarksOf lists what was mended, set aside or seen while reading, in words.
+func remarksOf(runs []*data.Run) []item {
+	var out []item
+	for i, r := range runs {
+		add := func(form string, a ...any) {
+			text := fmt.Sprintf(form, a...)
+			if len(runs) > 1 {
+				text = runTitle(runs[i].Source) + ": " + text
+			}
+			out = append(out, item{"warn", text})
+		}
+		q := r.Quality
+		for _, kind := range slices.Sorted(maps.Keys(q.Missing)) {
+			add("%s set aside: %s.", format.Count(q.Missing[kind], "cell", "cells"), kind)
+		}
+		for _, why := range slices.Sorted(maps.Keys(q.Dropped)) {
+			add("%s dropped: %s.", format.Count(q.Dropped[why], "row", "rows"), why)
+		}
+		if n := len(q.Gaps); n > 0 {
+			longest := slices.MaxFunc(q.Gaps, func(a, b data.Gap) int { return int(sign(a.Duration - b.Duration)) })
+			add("%s in the recording, the longest %s.", format.Count(n, "gap", "gaps"), format.Duration(longest.Duration))
+		}
+		if n := len(q.Spikes); n > 0 {
+			add("%s of temperature, one row each.", format.Count(n, "isolated spike", "isolated spikes"))
+		}
+		for _, n := range q.Notes {
+			if n.Row > 0 {
+				add("%s (row %d)", n.Text, n.Row)
+			} else {
+				add("%s", n.Text)
+			}
+		}
+	}
+	return out
+}
+
+func sign(v float64) float64 {
+	switch {
+	case v > 0:
+		return 1
+	case v < 0:
+		return -1
+	}
+	return 0
+}
+
+// recordingTable has one row for each run.
+func recordingTable(b *Bundle) *table {
+	t := &table{
+		Caption: "What was recorded",
+		Head:    []string{"Run", "Rows", "Length", "Interval", "Temperature", "Input", "Resolution", "Bumps"},
+	}
+	for i, r := range b.Runs {
+		if i == longestList {
+			t.More = len(b.Runs) - longestList
+			break
+		}
+		bumps := "-"
+		if c := b.curves(i); c != nil {
+			bumps = fmt.Sprint(len(c.Bumps))
+		}
+		quantum := "not visible"
+		if r.Quality.Quantum > 0 {
+			quantum = format.Amount(r.Quality.Quantum, kelvin(r.Units.Temperature), 3)
+		}
+		t.Rows = append(t.Rows, []cell{
+			head(runTitle(r.Source)), num(format.Thousands(len(r.T))), num(format.Duration(span(r.T))),
+			num(format.Duration(medianInterval(r))), num(spanWords(r.Y, r.Units.Temperature)), num(spanWords(r.U, r.Units.Input)),
+			num(quantum), num(bumps),
+		})
+	}
+	return t
+}
+
+// medianInterval is the reader's, else taken from the clock.
+func medianInterval(r *data.Run) float64 {
+	if r.Quality.MedianInterval > 0 || len(r.T) < 2 {
+		return r.Quality.MedianInterval
+	}
+	d := make([]float64, len(r.T)-1)
+	for i := range d {
+		d[i] = r.T[i+1] - r.T[i]
+	}
+	sort.Float64s(d)
+	return d[len(d)/2]
+}
+
+func spanWords(v []float64, unit string) string {
+	low, high := rangeOf(v)
+	return format.Short(low, 4) + " to " + format.Amount(high, unit, 4)
+}

@@ -1,0 +1,76 @@
+package report
+
+import (
+	"fmt"
+	"slices"
+
+	"lagwright/cmd/lagwright/internal/format"
+)
+
+// watch answers: what should I watch for? Warnings of the model, what fails
+// of the requirement, and what replays could not say.
+func watch(b *Bundle) *section {
+	var items []item
+	if b.Card != nil {
+		for _, w := range b.Card.Warnings {
+			items = append(items, item{"warn", fmt.Sprintf("%s (%s)", w.Text, w.Code)})
+		}
+	}
+	if b.Gains != nil {
+		for _, r := range b.Gains.Reasons {
+			items = append(items, item{"bad", r})
+		}
+	}
+	if b.Replay != nil {
+		for i := range b.Replay.Runs {
+			run := &b.Replay.Runs[i]
+			for _, r := range run.Reasons {
+				items = append(items, item{"bad", runName(run) + ": " + r})
+			}
+			for _, w := range run.Warnings {
+				items = append(items, item{"warn", runName(run) + ": " + w})
+			}
+		}
+		for _, f := range b.Replay.Failed {
+			items = append(items, item{"warn", fmt.Sprintf("%s could not be replayed: %s", format.Text(f.File), f.Reason)})
+		}
+	}
+	s := &section{ID: "watch", Title: "What to watch for"}
+	if len(items) == 0 {
+		if b.Card == nil && b.Gains == nil && b.Replay == nil {
+			return nil
+		}
+		s.Lead = "No warning came with these results."
+		return s
+	}
+	s.Blocks = []block{{List: listOf(items)}}
+	return s
+}
+
+// cautions are shown whatever the result says.
+func cautions(b *Bundle) *section {
+	var texts []string
+	if b.Card != nil {
+		texts = append(texts, b.Card.Cautions...)
+	}
+	if b.Gains != nil {
+		texts = append(texts, b.Gains.Cautions...)
+	}
+	if b.Replay != nil {
+		texts = append(texts, b.Replay.Cautions...)
+	}
+	var items []item
+	var seen []string
+	for _, t := range append(texts, standing...) {
+		if !slices.Contains(seen, t) {
+			seen = append(seen, t)
+			items = append(items, item{"", t})
+		}
+	}
+	return &section{ID: "cautions", Title: "Cautions", Blocks: []block{{List: &list{Items: items}}}}
+}
+
+// standing is the caution no page goes without.
+var standing = []string{
+	"Local codes, the makers' instructions and licensed practice come first.",
+}

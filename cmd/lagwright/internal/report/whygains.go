@@ -1,0 +1,135 @@
+package report
+
+import (
+	"fmt"
+	"strings"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/tune"
+)
+
+// whyGains answers: why these gains?
+func whyGains(b *Bundle) *section {
+	g := b.Gains
+	if g == nil {
+		return nil
+	}
+	s := &section{ID: "gains", Title: "Why these gains?", Lead: ruleWords(g)}
+	if g.Nominal != nil || g.Worst != nil {
+		s.Blocks = append(s.Blocks, block{Table: metricsTable(g)})
+	}
+	for _, f := range loopFigures(b.Loop, g) {
+		s.Blocks = append(s.Blocks, block{Figure: picturesOf(f)})
+	}
+	if len(g.Candidates) > 0 {
+		s.Blocks = append(s.Blocks, block{Table: candidateTable(g)})
+	}
+	return s
+}
+
+func loopFigures(l *Loop, g *tune.Gains) []*Figure {
+	if l == nil {
+		return nil
+	}
+	var out []*Figure
+	if l.Step != nil {
+		out = append(out, StepFigure(l.Step, g))
+	}
+	if l.Load != nil {
+		out = append(out, LoadFigure(l.Load, g))
+	}
+	if l.Sensitivity != nil {
+		out = append(out, SensitivityFigure(l.Sensitivity, g))
+	}
+	if l.Poles != nil {
+		out = append(out, PoleFigure(l.Poles))
+	}
+	return out
+}
+
+func ruleWords(g *tune.Gains) string {
+	if g.Rule == "synthesis" || g.Rule == "" {
+		return "Of all gains that keep the requirement on the plausible plants, these reject a load best (smallest IAE)."
+	}
+	return "They come from the rule " + g.Rule + "; the plausible plants say how well it does here."
+}
+
+// metricsTable sets what was asked beside what the loop does.
+func metricsTable(g *tune.Gains) *table {
+	t := &table{
+		Caption: fmt.Sprintf("What the loop does: on the best-fit plant, and at its worst over %s of the plausible plants", format.Percent(g.Assurance)),
+		Head:    []string{"Figure", "Asked", "Best fit", "Worst"},
+	}
+	q, u := g.Requirement, g.Units
+	row := func(name, unit string, asked string, pick func(*tune.Metrics) *float64) {
+		n, w := metric(g.Nominal, pick), metric(g.Worst, pick)
+		if n == nil && w == nil && asked == "" {
+			return
+		}
+		t.Rows = append(t.Rows, []cell{head(name), num(dash(asked)), num(format.Optional(n, unit, 3)), num(format.Optional(w, unit, 3))})
+	}
+	most := func(v *float64, unit string) string { return bound("at most ", v, unit) }
+	row("Settling", "s", most(q.Settling, "s"), func(m *tune.Metrics) *float64 { return m.Settling })
+	row("Overshoot", "%", most(q.Overshoot, "%"), func(m *tune.Metrics) *float64 { return m.Overshoot })
+	row("Damping ratio", "", bound("at least ", q.Damping, ""), func(m *tune.Metrics) *float64 { return m.Damping })
+	row("Peak sensitivity Ms", "", most(q.Ms, ""), func(m *tune.Metrics) *float64 { return m.Ms })
+	row("Gain margin", "", "", func(m *tune.Metrics) *float64 { return m.GainMargin })
+	row("Phase margin", "°", "", func(m *tune.Metrics) *float64 { return m.PhaseMargin })
+	row("Delay margin", "s", "", func(m *tune.Metrics) *float64 { return m.DelayMargin })
+	row("Peak input", u.Input, most(q.InputMax, u.Input), func(m *tune.Metrics) *float64 { return m.PeakInput })
+	row("Steady offset", kelvin(u.Temperature), "", func(m *tune.Metrics) *float64 { return m.SteadyOffset })
+	row("IAE after a unit load", kelvin(u.Temperature)+"·s", "", func(m *tune.Metrics) *float64 { return m.IAE })
+	return t
+}
+
+func metric(m *tune.Metrics, pick func(*tune.Metrics) *float64) *float64 {
+	if m == nil {
+		return nil
+	}
+	return pick(m)
+}
+
+func bound(word string, v *float64, unit string) string {
+	if v == nil {
+		return ""
+	}
+	return word + format.Amount(*v, unit, 4)
+}
+
+func dash(s string) string {
+	if s == "" {
+		return "-"
+	}
+	return s
+}
+
+func candidateTable(g *tune.Gains) *table {
+	kc := g.Units.Input + "/" + kelvin(g.Units.Temperature)
+	t := &table{
+		Caption: "Everything tried; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
+		Head:    []string{"Rule", "Kc", "Ti", "Td", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets", "Note"},
+	}
+	for i, c := range g.Candidates {
+		if i == longestList {
+			t.More = len(g.Candidates) - longestList
+			break
+		}
+		m := c.Worst
+		if m == nil {
+			m = c.Nominal
+		}
+		if m == nil {
+			m = &tune.Metrics{}
+		}
+		name := c.Rule
+		if c.Selected {
+			name += " (chosen)"
+		}
+		t.Rows = append(t.Rows, []cell{
+			head(strings.TrimSpace(name)), num(format.Amount(c.Kc, kc, 3)), num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
+			num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
+			num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets), text(c.Note),
+		})
+	}
+	return t
+}
