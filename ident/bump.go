@@ -8,6 +8,7 @@ import (
 // A Bump is a deliberate change of the input with the response it makes, up to
 // the next change or the end of the record.
 type Bump struct {
+	Start    int     // first row of the input held before the bump
 	Row      int     // first row of the new input
 	End      int     // row of the next bump, else the number of rows
 	Time     float64 // of Row, s
@@ -59,7 +60,7 @@ func FindBumps(t, u, y []float64) []Bump {
 	for i := 1; i < len(levels); i++ {
 		from, to := levels[i-1], levels[i]
 		b := Bump{
-			Row: to.start, End: to.end, Time: t[to.start], Ramp: t[to.held] - t[to.start],
+			Start: from.held, Row: to.start, End: to.end, Time: t[to.start], Ramp: t[to.held] - t[to.start],
 			From: from.mean(), To: to.mean(),
 		}
 		last := to.end
@@ -67,7 +68,7 @@ func FindBumps(t, u, y []float64) []Bump {
 			last--
 		}
 		b.Hold = t[last] - t[to.start]
-		b.describe(t, y, from.held)
+		b.describe(t, y)
 		out = append(out, b)
 	}
 	return out
@@ -141,10 +142,9 @@ func differenceNoise(x []float64) float64 {
 	return d[len(d)/2] / (0.6745 * math.Sqrt2)
 }
 
-// describe fills in what the temperature did; start is the row from which the
-// input before the bump was held.
-func (b *Bump) describe(t, y []float64, start int) {
-	before := lineThrough(t, y, b.Row-(b.Row-start+2)/3, b.Row)
+// describe fills in what the temperature did.
+func (b *Bump) describe(t, y []float64) {
+	before := lineThrough(t, y, b.Row-(b.Row-b.Start+2)/3, b.Row)
 	held := b.End - b.Row
 	after := lineThrough(t, y, b.End-(held+2)/3, b.End)
 	b.Before, b.After = before.mean, after.mean
