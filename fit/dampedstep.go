@@ -83,11 +83,15 @@ func (l linearised) rotated(x []float64) []float64 {
 }
 
 // reach returns the length of the part of the residuals that a linear step in
-// the free parameters would remove.
+// the free parameters would remove. Columns that depend on others add nothing.
 func (l linearised) reach(free []bool) float64 {
 	columns, c := l.subset(free, 0, nil)
-	rotate(c, columns, triangularise(columns))
-	return floats.Norm(c[:len(columns)], 2)
+	sum := 0.0
+	for _, direction := range orthonormal(columns, dependent) {
+		part := floats.Dot(direction, c)
+		sum += part * part
+	}
+	return math.Sqrt(sum)
 }
 
 // offset returns the relative offset of Bates and Watts (Technometrics 23

@@ -36,9 +36,10 @@ func (pr Problem) differences(jacobian [][]float64, p, start, at, a, b []float64
 			}
 			continue
 		}
-		h = min(h, (upper-lower)/2)
-		if p[i]+2*h > upper {
-			h = -h
+		if above, below := upper-p[i], p[i]-lower; above >= below {
+			h = min(h, above/2)
+		} else {
+			h = -min(h, below/2)
 		}
 		near, far := evaluate(a, i, p[i]+h), evaluate(b, i, p[i]+2*h)
 		for k := range column {

@@ -57,17 +57,19 @@ func backSubstitute(columns [][]float64, b []float64) {
 	}
 }
 
+// dependent is the share of a column's length that is left of it when the
+// columns before it are taken out, below which it counts as dependent on them:
+// six bits above the rounding of 1.
+const dependent = 0x1p-46
+
 // invertTriangle returns the inverse of the upper triangle R held in columns,
-// again by columns (n of n numbers), or false where R is singular to working
-// precision: where, after the columns are scaled to unit length, a diagonal
-// element is below n·2⁻⁵². A dependent column is then not told from rounding.
+// again by columns (n of n numbers), or false where a column is dependent on
+// the ones before.
 func invertTriangle(columns [][]float64) (inverse [][]float64, ok bool) {
 	n := len(columns)
-	const unit = 0x1p-52
 	inverse = make([][]float64, n)
 	for j, column := range columns {
-		length := floats.Norm(column[:j+1], 2)
-		if !(math.Abs(column[j]) > float64(n)*unit*length) || math.IsInf(length, 1) {
+		if !(math.Abs(column[j]) > dependent*floats.Norm(column[:j+1], 2)) {
 			return nil, false
 		}
 		inverse[j] = make([]float64, n)
@@ -75,4 +77,24 @@ func invertTriangle(columns [][]float64) (inverse [][]float64, ok bool) {
 		backSubstitute(columns[:j+1], inverse[j])
 	}
 	return inverse, true
+}
+
+// orthonormal returns an orthonormal basis of the columns, which it overwrites,
+// by Gram–Schmidt done twice. A column of which less than share of its length
+// is left when the ones before are taken out is left out.
+func orthonormal(columns [][]float64, share float64) [][]float64 {
+	var basis [][]float64
+	for _, column := range columns {
+		before := floats.Norm(column, 2)
+		for range 2 {
+			for _, b := range basis {
+				floats.AddScaled(column, -floats.Dot(column, b), b)
+			}
+		}
+		if after := floats.Norm(column, 2); after > share*before {
+			floats.Scale(1/after, column)
+			basis = append(basis, column)
+		}
+	}
+	return basis
 }

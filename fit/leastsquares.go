@@ -36,7 +36,7 @@ type Result struct {
 	AtBound []bool    // parameters that their bounds hold, against the slope or because the bounds are equal
 
 	SSE float64 // sum of squares at P
-	S2  float64 // SSE/(M − parameters not at a bound): the variance of one residual; NaN where that is 0/0
+	S2  float64 // SSE/(M − parameters not at a bound): the variance of one residual; NaN where nothing is left over
 
 	// Covariance is (JᵀJ)⁻¹ over the parameters that are not at a bound, N×N
 	// with zeros elsewhere. Times S2 it is the covariance of P where the errors

@@ -268,7 +268,10 @@ func (s *search) result(stop Stop) Result {
 			left--
 		}
 	}
-	r.S2 = r.SSE / float64(left)
+	r.S2 = math.NaN()
+	if left > 0 {
+		r.S2 = r.SSE / float64(left)
+	}
 	if s.at.free == nil { // no derivatives at all
 		return r
 	}
