@@ -135,6 +135,9 @@ func (p *plan) shifts(c *course) []string {
 	if !ok {
 		return nil
 	}
+	if !p.explains(left, beta, columns) {
+		return nil
+	}
 	var out []string
 	apart := func(k int, known float64) bool { return math.Abs(beta[k]) > 2.5*math.Hypot(se[k], known) }
 	known := p.knownSpread()
@@ -148,6 +151,23 @@ func (p *plan) shifts(c *course) []string {
 		out = append(out, fmt.Sprintf("the lags here are about %.0f%% %s than the card's", 100*math.Abs(beta[4]), side(beta[4], "longer", "shorter")))
 	}
 	return out
+}
+
+// explains tells whether the changes take away at least half of what the
+// difference left holds beyond the card's noise, after the start (the first
+// two columns) is taken off it. Without that a load passes for a slower plant.
+func (p *plan) explains(left, beta []float64, columns [][]float64) bool {
+	var before, after float64
+	for i, v := range left {
+		v -= beta[0]*columns[0][i] + beta[1]*columns[1][i]
+		before += v * v
+		for k := 2; k < len(columns); k++ {
+			v -= beta[k] * columns[k][i]
+		}
+		after += v * v
+	}
+	noise := float64(len(left)) * p.noise.SD * p.noise.SD
+	return after-noise <= (before-noise)/2
 }
 
 func side(x float64, more, less string) string {

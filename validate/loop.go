@@ -90,7 +90,7 @@ func (r *runner) replay(c *course, k int, y, u []float64) error {
 func (r *runner) closeEven(c *course, plant *tune.PlantStepper, control *tune.Controller, held float64, y, u []float64) {
 	power := r.law == ident.Power
 	bound := c.bound()
-	moved := 0.0 // G·[phi(u) − phi(logged u)]
+	moved := 0.0             // G·[phi(u) − phi(logged u)]
 	scanIn := c.lattice.scan // steps to the next scan
 	k := 0
 	for i := range y {

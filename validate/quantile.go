@@ -8,9 +8,10 @@ import (
 // quantile returns the p-quantile of sorted values at position p·(n+1)
 // (definition 6 of R. J. Hyndman, Y. Fan, The American Statistician 50 (1996)
 // 361–365, from memory), the ends where that position lies outside. At these
-// positions the interval between two quantiles of a sample holds one more
-// value drawn alike with just the stated probability, which is what a band
-// over plausible plants must do. Values of +Inf sort last; NaN is not allowed.
+// positions, where they are whole numbers, the interval between two quantiles
+// of a sample holds one more value drawn alike with just the stated
+// probability, which is what a band over plausible plants must do; in between
+// it holds it slightly more often. Values of +Inf sort last; NaN is not allowed.
 func quantile(sorted []float64, p float64) float64 {
 	n := len(sorted)
 	if n == 0 {

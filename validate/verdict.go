@@ -3,6 +3,8 @@ package validate
 import (
 	"fmt"
 	"math"
+	"strconv"
+	"strings"
 
 	"lagwright/tune"
 )
@@ -101,7 +103,7 @@ func spreadText(s spread, unit string) string {
 	return fmt.Sprintf("%s (%s to %s)", quantity(s.median, unit), number(s.low), quantity(s.high, unit))
 }
 
-// quantity writes a number with four digits and its unit.
+// quantity writes a number and its unit.
 func quantity(x float64, unit string) string {
 	switch {
 	case math.IsInf(x, 1) && unit == "s":
@@ -114,12 +116,21 @@ func quantity(x float64, unit string) string {
 	return number(x) + " " + unit
 }
 
+// number writes three significant digits without an exponent where it can.
 func number(x float64) string {
+	size := math.Abs(x)
 	switch {
 	case math.IsInf(x, 0) || math.IsNaN(x):
 		return "none"
-	case math.Abs(x) >= 1000:
-		return fmt.Sprintf("%.0f", x)
+	case size == 0:
+		return "0"
+	case size < 1e-4 || size >= 1e9:
+		return strconv.FormatFloat(x, 'g', 3, 64)
 	}
-	return fmt.Sprintf("%.4g", x)
+	decimals := max(0, 2-int(math.Floor(math.Log10(size)+1e-12)))
+	text := strconv.FormatFloat(x, 'f', decimals, 64)
+	if decimals > 0 {
+		text = strings.TrimRight(strings.TrimRight(text, "0"), ".")
+	}
+	return text
 }
