@@ -198,6 +198,11 @@ func (l *openLoop) peaks(f *LoopFigures, grid []float64) {
 	}
 	f.Ms, f.MsFrequency = highest(grid, sensitivity)
 	f.Mt, _ = highest(grid, complementary)
+	if l.integrators > 0 {
+		f.Mt = max(f.Mt, 1) // its limit at w = 0
+	} else {
+		f.Mt = max(f.Mt, l.k/(1+l.k))
+	}
 	if l.excess() == 0 {
 		far := l.atInfinity()
 		if l.delay > 0 {

@@ -77,7 +77,7 @@ func felt(lags []float64, step float64) []float64 {
 		}
 	}
 	if len(kept) == 0 {
-		kept = append(kept, 1e-7*step)
+		kept = append(kept, 1e-13*step)
 	}
 	return kept
 }
