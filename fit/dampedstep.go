@@ -15,13 +15,16 @@ type linearised struct {
 	rest   float64     // squared length of the rest of Qᵀr, which no step changes
 	length []float64   // lengths of the columns of J, N numbers
 
+	dependent float64 // share of a column's length below which what others leave of it is rounding
+
 	mirrors [][]float64 // J as triangularise leaves it; shares the memory it was decomposed in
 	heads   []float64
 }
 
 // linearise decomposes the jacobian (N columns of M numbers, overwritten) and
-// the residuals (M numbers, overwritten).
-func linearise(jacobian [][]float64, residuals []float64) linearised {
+// the residuals (M numbers, overwritten). precision is the relative error of
+// the jacobian.
+func linearise(jacobian [][]float64, residuals []float64, precision float64) linearised {
 	n := len(jacobian)
 	heads := triangularise(jacobian)
 	rotate(residuals, jacobian, heads)
@@ -31,6 +34,7 @@ func linearise(jacobian [][]float64, residuals []float64) linearised {
 		rest:    floats.Dot(residuals[n:], residuals[n:]),
 		length:  make([]float64, n),
 		mirrors: jacobian, heads: heads,
+		dependent: 64 * precision, // six bits, as for resolved
 	}
 	for j, column := range jacobian {
 		l.r[j] = make([]float64, n)
@@ -87,7 +91,7 @@ func (l linearised) rotated(x []float64) []float64 {
 func (l linearised) reach(free []bool) float64 {
 	columns, c := l.subset(free, 0, nil)
 	sum := 0.0
-	for _, direction := range orthonormal(columns, dependent) {
+	for _, direction := range orthonormal(columns, l.dependent) {
 		part := floats.Dot(direction, c)
 		sum += part * part
 	}
@@ -98,24 +102,25 @@ func (l linearised) reach(free []bool) float64 {
 // (1981) 179–183, from memory): the length of the residuals in reach of a step
 // in the free parameters, per parameter, over the length of those out of
 // reach, per degree of freedom. It measures the distance from the minimum in
-// units of the parameters' own uncertainty. freedom is M−N; where that is 0, or
-// nothing is out of reach, the offset is infinite until nothing is in reach.
-func (l linearised) offset(free []bool, freedom int) float64 {
-	reach := l.reach(free)
-	switch {
-	case reach == 0:
-		return 0
-	case freedom == 0:
-		return math.Inf(1)
-	}
+// units of the parameters' own uncertainty. m is the number of residuals; where
+// no degree of freedom is left, or nothing is out of reach, the offset is
+// infinite until nothing is in reach.
+func (l linearised) offset(free []bool, m int) float64 {
 	n := 0
 	for _, f := range free {
 		if f {
 			n++
 		}
 	}
+	reach := l.reach(free)
+	switch {
+	case reach == 0:
+		return 0
+	case m == n:
+		return math.Inf(1)
+	}
 	out := l.rest + floats.Dot(l.c, l.c) - reach*reach
-	return reach / math.Sqrt(max(out, 0)) * math.Sqrt(float64(freedom)/float64(n))
+	return reach / math.Sqrt(max(out, 0)) * math.Sqrt(float64(m-n)/float64(n))
 }
 
 // step returns the damped step d that minimises
@@ -186,7 +191,7 @@ func (l linearised) subset(free []bool, lambda float64, scale []float64) (column
 func (l linearised) covariance(free []bool) [][]float64 {
 	columns, _ := l.subset(free, 0, nil)
 	triangularise(columns)
-	inverse, ok := invertTriangle(columns)
+	inverse, ok := invertTriangle(columns, l.dependent)
 	if !ok {
 		return nil
 	}

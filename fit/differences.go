@@ -2,6 +2,9 @@ package fit
 
 import "math"
 
+// differencePrecision is the relative error to expect of central differences, ε^(2/3).
+const differencePrecision = 0x1p-35
+
 // differences fills the columns of jacobian (N columns of M numbers) with
 // central differences of the residuals at p,
 //

@@ -57,19 +57,15 @@ func backSubstitute(columns [][]float64, b []float64) {
 	}
 }
 
-// dependent is the share of a column's length that is left of it when the
-// columns before it are taken out, below which it counts as dependent on them:
-// six bits above the rounding of 1.
-const dependent = 0x1p-46
-
 // invertTriangle returns the inverse of the upper triangle R held in columns,
-// again by columns (n of n numbers), or false where a column is dependent on
-// the ones before.
-func invertTriangle(columns [][]float64) (inverse [][]float64, ok bool) {
+// again by columns (n of n numbers), or false where a column depends on the
+// ones before: where no more than share of its length is left when they are
+// taken out.
+func invertTriangle(columns [][]float64, share float64) (inverse [][]float64, ok bool) {
 	n := len(columns)
 	inverse = make([][]float64, n)
 	for j, column := range columns {
-		if !(math.Abs(column[j]) > dependent*floats.Norm(column[:j+1], 2)) {
+		if !(math.Abs(column[j]) > share*floats.Norm(column[:j+1], 2)) {
 			return nil, false
 		}
 		inverse[j] = make([]float64, n)
@@ -80,8 +76,8 @@ func invertTriangle(columns [][]float64) (inverse [][]float64, ok bool) {
 }
 
 // orthonormal returns an orthonormal basis of the columns, which it overwrites,
-// by Gram–Schmidt done twice. A column of which less than share of its length
-// is left when the ones before are taken out is left out.
+// by Gram–Schmidt done twice. A column of which no more than share of its
+// length is left when the ones before are taken out is left out.
 func orthonormal(columns [][]float64, share float64) [][]float64 {
 	var basis [][]float64
 	for _, column := range columns {

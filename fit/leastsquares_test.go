@@ -246,16 +246,27 @@ func TestNotFiniteSteps(t *testing.T) {
 func TestDependentColumns(t *testing.T) {
 	x := []float64{0, 1, 2, 3, 4}
 	y := []float64{1, 3, 2, 5, 4}
-	r := solve(t, curve(3, x, y, func(p []float64, x float64) float64 { return p[0] + (p[1]+2*p[2])*x }), []float64{1, 1, 1})
-	within(t, "slope", r.P[1]+2*r.P[2], 0.8, 1e-8)
-	within(t, "sum of squares", r.SSE, 3.6, 1e-12)
-	if r.Covariance != nil {
-		t.Errorf("two parameters that cannot be told apart have the covariance %v", r.Covariance)
-	}
-	for i, sd := range r.StdDev {
-		if !math.IsNaN(sd) {
-			t.Errorf("sd %d = %g", i, sd)
+	differences := curve(3, x, y, func(p []float64, x float64) float64 { return p[0] + (p[1]+2*p[2])*x })
+	exact := differences
+	exact.Jacobian = func(columns [][]float64, _ []float64) {
+		for k := range x {
+			columns[0][k], columns[1][k], columns[2][k] = 1, x[k], 2*x[k]
 		}
+	}
+	for name, pr := range map[string]Problem{"differences": differences, "exact": exact} {
+		t.Run(name, func(t *testing.T) {
+			r := solve(t, pr, []float64{1, 1, 1})
+			within(t, "slope", r.P[1]+2*r.P[2], 0.8, 1e-8)
+			within(t, "sum of squares", r.SSE, 3.6, 1e-12)
+			if r.Covariance != nil {
+				t.Errorf("two parameters that cannot be told apart have the covariance %v", r.Covariance)
+			}
+			for i, sd := range r.StdDev {
+				if !math.IsNaN(sd) {
+					t.Errorf("sd %d = %g", i, sd)
+				}
+			}
+		})
 	}
 }
 

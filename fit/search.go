@@ -116,13 +116,15 @@ func (s *search) run() Stop {
 // linearise takes the derivatives where the search is, and says whether they
 // are finite.
 func (s *search) linearise() bool {
+	precision := 0x1p-52
 	if s.pr.Jacobian != nil {
 		s.pr.Jacobian(s.jacobian, s.at.p)
 	} else {
+		precision = differencePrecision
 		s.evaluations += s.pr.differences(s.jacobian, s.at.p, s.start, s.at.residuals, s.a, s.b)
 	}
 	copy(s.a, s.at.residuals)
-	s.at.linear = linearise(s.jacobian, s.a)
+	s.at.linear = linearise(s.jacobian, s.a, precision)
 	if !s.at.linear.finite() {
 		return false
 	}
@@ -133,7 +135,7 @@ func (s *search) linearise() bool {
 		s.at.free[i] = lower < upper && !(x == lower && g >= 0) && !(x == upper && g <= 0)
 		s.scale[i] = max(s.scale[i], s.at.linear.length[i])
 	}
-	s.at.offset = s.at.linear.offset(s.at.free, s.pr.M-s.pr.N)
+	s.at.offset = s.at.linear.offset(s.at.free, s.pr.M)
 	return true
 }
 
