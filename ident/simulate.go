@@ -15,14 +15,18 @@ type Simulator struct {
 	tolerance float64 // of a difference of times
 	shortest  float64 // lags up to it pass their input through
 
-	in     Input
-	change []float64 // of the input at in.At
+	in       Input
+	change   []float64 // of the input at in.At
+	greatest float64   // |change|, or 1 for free states
 
 	chain chain
 	x     state
 	level float64 // delayed input less in.Before
 	next  int     // next change of the delayed input
-	step  matrix
+
+	step       matrix // transition over stepLength, the step of the stretch
+	stepLength float64
+
 	kicks kickCache
 	means meanCache
 }
@@ -40,7 +44,11 @@ func NewSimulator(t []float64, in Input) *Simulator {
 	before := in.Before
 	for j, v := range in.Value {
 		s.change[j] = v - before
+		s.greatest = max(s.greatest, math.Abs(s.change[j]))
 		before = v
+	}
+	if s.greatest == 0 {
+		s.greatest = 1
 	}
 	return s
 }
@@ -140,6 +148,7 @@ func (s *Simulator) carry(o *outputs, deadTime float64) {
 	s.emitRow(o, 0, deadTime)
 	for _, r := range s.stretches {
 		s.chain.transition(&s.step, r.step)
+		s.stepLength = r.step
 		for k := r.lo; k < r.hi; {
 			free := s.freeRows(k, r, deadTime)
 			s.run(o, k, k+free)
@@ -205,19 +214,6 @@ func (s *Simulator) takeChanges(x *state, next int, level, time, deadTime float6
 		level = s.in.Value[next] - s.in.Before
 	}
 	return next, level
-}
-
-// run carries the state through the rows lo ≤ k < hi, which no change
-// precedes, and writes their outputs.
-func (s *Simulator) run(o *outputs, lo, hi int) {
-	if s.rows != nil {
-		s.runMeans(o, lo, hi)
-		return
-	}
-	for k := lo; k < hi; k++ {
-		s.chain.advance(&s.step, &s.x)
-		s.emit(o, k, &s.x, s.level)
-	}
 }
 
 // emitRow writes the outputs of row k from the state at its first sample.
