@@ -26,6 +26,7 @@ type change struct {
 	first  int     // step: index of the first run after it
 	effect float64 // step: after − before; slope: per unit of t; on the history's scale
 	se     float64 // of effect, with the scatter between runs in it
+	taken  float64 // weighted sum of squares that it takes out
 }
 
 // test looks for one step at an unknown run and for one slope.
@@ -48,6 +49,7 @@ func (h history) test(rng *rand.Rand) (step, slope change) {
 	seen := h.statistics(h.x, w)
 	step.p, slope.p = h.pvalues(seen, w, rng)
 	step.first = seen.first
+	step.taken, slope.taken = seen.step, seen.slope
 	step.effect, step.se = h.stepEffect(seen, w)
 	slope.effect, slope.se = h.slopeEffect(seen, w)
 	return step, slope

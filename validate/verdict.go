@@ -113,7 +113,7 @@ func quantity(x float64, unit string) string {
 	case unit == "" || unit == "%":
 		return number(x) + unit
 	}
-	return number(x) + " " + unit
+	return number(x) + " " + shown(unit)
 }
 
 // number writes three significant digits without an exponent where it can.
