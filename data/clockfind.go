@@ -1,0 +1,248 @@
+package data
+
+import (
+	"bytes"
+	"errors"
+	"fmt"
+	"math"
+	"slices"
+	"strings"
+)
+
+// findClock decides how to read a time column from some of its cells. dated
+// tells that a column of dates stands beside it and the cells hold both.
+func findClock(cells [][]byte, c column, dated bool, o *Options, point byte) (*clock, []Note, error) {
+	if o.TimeFormat != "" {
+		k, err := clockOfFormat(o.TimeFormat)
+		return k, nil, err
+	}
+	switch {
+	case c.class == numbers:
+		return findNumberClock(cells, c, point)
+	case c.dated || dated:
+		k, err := findCalendar(cells, c)
+		return k, nil, err
+	}
+	k, err := findTimeOfDay(cells, c)
+	return k, nil, err
+}
+
+// findNumberClock tells elapsed time, time since 1970 and day numbers of
+// spreadsheets apart by size: a date of our days is a large number in any unit.
+func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, error) {
+	var v []float64
+	for _, b := range cells {
+		if x, ok := (numberFormat{point}).parse(b); ok {
+			v = append(v, x)
+		}
+	}
+	return numberClock(v, c)
+}
+
+func numberClock(v []float64, c column) (*clock, []Note, error) {
+	if len(v) == 0 {
+		return nil, nil, fmt.Errorf("column %q holds no time", c.label)
+	}
+	typical := medianOf(slices.Clone(v))
+	unit, known := timeUnits[c.unit]
+	units := []uint64{unit}
+	if !known {
+		units = []uint64{nsSecond, 1e6, 1e3, 1}
+	}
+	for _, u := range units {
+		if ns := typical * float64(u); ns > epochLow && ns < epochHigh && u <= nsSecond {
+			return &clock{kind: epoch, unit: u}, nil, nil
+		}
+	}
+	if isDayNumber(v, typical) && (!known || unit == nsDay) {
+		return &clock{kind: dayNumber, unit: nsDay}, []Note{{Code: "clock-day-number",
+			Text: fmt.Sprintf("column %q was read as spreadsheet day numbers; --time-format seconds says otherwise", c.label)}}, nil
+	}
+	if known {
+		return &clock{kind: elapsed, unit: unit}, nil, nil
+	}
+	return &clock{kind: elapsed, unit: nsSecond}, []Note{{Code: "time-unit-assumed",
+		Text: fmt.Sprintf("column %q names no unit and was read as seconds; --time-format says otherwise", c.label)}}, nil
+}
+
+// Times since 1970 from 1985 to 2100, ns.
+const (
+	epochLow  = 15 * 365.25 * 86400e9
+	epochHigh = 130 * 365.25 * 86400e9
+)
+
+// isDayNumber tells day numbers from 2000 to 2100 that advance by less than
+// ten minutes a row and are no whole numbers.
+func isDayNumber(v []float64, typical float64) bool {
+	const tenMinutes = 1.0 / 144
+	if typical < 36526 || typical > 73050 || len(v) < 2 {
+		return false
+	}
+	var steps []float64
+	broken := false
+	for i := 1; i < len(v); i++ {
+		steps = append(steps, math.Abs(v[i]-v[i-1]))
+		broken = broken || v[i] != math.Trunc(v[i])
+	}
+	return broken && medianOf(steps) < tenMinutes
+}
+
+// findCalendar settles the order of day and month if the cells can: a day
+// above 12 does, and so do dots, a year in front, and months by name.
+func findCalendar(cells [][]byte, c column) (*clock, error) {
+	k := &clock{kind: calendar}
+	for _, b := range cells {
+		k.parse(b, '.')
+	}
+	if k.dayFirst && k.monthFirst {
+		return nil, fmt.Errorf("column %q has days above 12 both in front and behind: say how to read it with --time-format", c.label)
+	}
+	fresh := &clock{kind: calendar}
+	if k.dayFirst {
+		fresh.order = dayMonthYear
+	}
+	if k.monthFirst {
+		fresh.order = monthDayYear
+	}
+	return fresh, nil
+}
+
+// errMinutes is the ambiguity of two fields with a colon.
+var errMinutes = errors.New("could be minutes and seconds or hours and minutes: say which with --time-format mm:ss or --time-format HH:mm")
+
+func findTimeOfDay(cells [][]byte, c column) (*clock, error) {
+	label := strings.ToLower(c.label)
+	for k, b := range cells {
+		b = trimBlanks(b)
+		_, n, fields := scanTime(b, true)
+		switch {
+		case fields == 3:
+			return &clock{kind: sexagesimal}, nil
+		case fields == 2 && n < len(b) && isLetter(bytes.TrimLeft(b[n:], " ")[0]):
+			return &clock{kind: hourMinute}, nil
+		case fields == 2 && (bytes.ContainsAny(b, ".,") || b[0] > '2' || k == 0 && bytes.HasPrefix(b, []byte("00:0"))):
+			return &clock{kind: sexagesimal}, nil
+		case fields == 2 && strings.Contains(label, "mm:ss"):
+			return &clock{kind: sexagesimal}, nil
+		case fields == 2 && strings.Contains(label, "hh:mm"):
+			return &clock{kind: hourMinute}, nil
+		}
+	}
+	return nil, fmt.Errorf("column %q (%s) %w", c.label, strings.Join(c.sample, ", "), errMinutes)
+}
+
+// clockOfFormat reads the value of --time-format: a word (day-first,
+// month-first, year-first, unix, unix-ms, unix-us, unix-ns, seconds, ms, min,
+// hours, days), mm:ss, HH:mm, a pattern with the letters of Unicode Technical
+// Standard 35 (dd/MM/yyyy HH:mm:ss.SSS) or with the marks of POSIX strptime
+// (%d/%m/%Y %H:%M:%S).
+func clockOfFormat(format string) (*clock, error) {
+	if k, ok := namedClocks[format]; ok {
+		return &k, nil
+	}
+	layout, err := goLayout(format)
+	if err != nil {
+		return nil, err
+	}
+	return &clock{kind: custom, layout: layout}, nil
+}
+
+var namedClocks = map[string]clock{
+	"day-first":   {kind: calendar, order: dayMonthYear},
+	"dmy":         {kind: calendar, order: dayMonthYear},
+	"month-first": {kind: calendar, order: monthDayYear},
+	"mdy":         {kind: calendar, order: monthDayYear},
+	"year-first":  {kind: calendar, order: yearMonthDay},
+	"ymd":         {kind: calendar, order: yearMonthDay},
+	"rfc3339":     {kind: calendar, order: yearMonthDay},
+	"unix":        {kind: epoch, unit: nsSecond},
+	"unix-ms":     {kind: epoch, unit: 1e6},
+	"unix-us":     {kind: epoch, unit: 1e3},
+	"unix-ns":     {kind: epoch, unit: 1},
+	"seconds":     {kind: elapsed, unit: nsSecond},
+	"s":           {kind: elapsed, unit: nsSecond},
+	"ms":          {kind: elapsed, unit: 1e6},
+	"us":          {kind: elapsed, unit: 1e3},
+	"min":         {kind: elapsed, unit: nsMinute},
+	"minutes":     {kind: elapsed, unit: nsMinute},
+	"h":           {kind: elapsed, unit: nsHour},
+	"hours":       {kind: elapsed, unit: nsHour},
+	"days":        {kind: dayNumber, unit: nsDay},
+	"mm:ss":       {kind: sexagesimal},
+	"hh:mm:ss":    {kind: sexagesimal},
+	"HH:mm:ss":    {kind: sexagesimal},
+	"HH:mm":       {kind: hourMinute},
+	"hh:mm":       {kind: hourMinute},
+}
+
+// patternParts maps pattern letters and strptime marks to the reference time
+// of package time, longest first.
+var patternParts = [][2]string{
+	{"yyyy", "2006"}, {"yy", "06"}, {"MMMM", "January"}, {"MMM", "Jan"}, {"MM", "01"}, {"M", "1"}, {"dd", "02"}, {"d", "2"},
+	{"HH", "15"}, {"H", "15"}, {"hh", "03"}, {"h", "3"}, {"mm", "04"}, {"m", "4"}, {"ss", "05"}, {"s", "5"},
+	{"a", "PM"}, {"XXX", "Z07:00"}, {"XX", "Z0700"}, {"X", "Z07"}, {"xxx", "-07:00"}, {"xx", "-0700"},
+}
+
+var strptimeParts = map[byte]string{
+	'Y': "2006", 'y': "06", 'm': "01", 'd': "02", 'e': "_2", 'H': "15", 'I': "03", 'M': "04", 'S': "05", 'p': "PM",
+	'b': "Jan", 'B': "January", 'z': "-0700", 'F': "2006-01-02", 'T': "15:04:05", 'D': "01/02/06", 'R': "15:04", '%': "%",
+}
+
+// goLayout turns a pattern into a layout of package time, which accepts a
+// fraction behind the seconds whether the layout has one or not.
+func goLayout(format string) (string, error) {
+	var b strings.Builder
+	date := false
+	for rest := format; rest != ""; {
+		if rest[0] == '%' && len(rest) > 1 {
+			if rest[1] == 'f' { // fraction: taken by the seconds
+				trimmed := strings.TrimRight(b.String(), ".,")
+				b.Reset()
+				b.WriteString(trimmed)
+			} else if part, ok := strptimeParts[rest[1]]; ok {
+				b.WriteString(part)
+				date = true
+			} else {
+				return "", fmt.Errorf("--time-format %q: %q is unknown", format, rest[:2])
+			}
+			rest = rest[2:]
+			continue
+		}
+		if rest[0] == 'S' { // fraction of a second
+			trimmed := strings.TrimRight(b.String(), ".,")
+			b.Reset()
+			b.WriteString(trimmed)
+			rest = strings.TrimLeft(rest, "S")
+			continue
+		}
+		part, n := patternPart(rest)
+		if n == 0 {
+			if rest[0] == '\'' {
+				rest = rest[1:]
+				continue
+			}
+			if isLetter(rest[0]) && rest[0] != 'T' && rest[0] != 'Z' {
+				return "", fmt.Errorf("--time-format %q: %q is unknown (try dd/MM/yyyy HH:mm:ss, day-first, unix-ms or seconds)", format, rest[:1])
+			}
+			b.WriteByte(rest[0])
+			rest = rest[1:]
+			continue
+		}
+		date = true
+		b.WriteString(part)
+		rest = rest[n:]
+	}
+	if !date {
+		return "", fmt.Errorf("--time-format %q: names no part of a time (try dd/MM/yyyy HH:mm:ss, day-first, unix-ms or seconds)", format)
+	}
+	return b.String(), nil
+}
+
+func patternPart(rest string) (part string, n int) {
+	for _, p := range patternParts {
+		if strings.HasPrefix(rest, p[0]) {
+			return p[1], len(p[0])
+		}
+	}
+	return "", 0
+}

@@ -1,0 +1,411 @@
+package data
+
+import (
+	"fmt"
+	"slices"
+	"strings"
+)
+
+// column is what is known of a column before the rows are read.
+type column struct {
+	index  int
+	label  string // as the file spells it
+	name   string // without the unit
+	unit   string // canonical where known, "" when the file names none
+	class  class  // of most of its cells
+	sample []string
+
+	dated, timed bool    // cells of class stamp: with a date, with a time of day
+	stepwise     float64 // share of cells equal to the one before; NaN below 5 cells
+	ascending    bool    // numbers that never fall
+	repeats      bool    // text of a few values that keep coming back
+}
+
+// class is what most cells of a column are.
+type class int
+
+const (
+	blankCells class = iota
+	numbers
+	stamps // dates, times of day or both
+	texts
+)
+
+// layout says which column has which role; -1 where none has.
+type layout [numRoles]int
+
+func noLayout() layout {
+	var l layout
+	for i := range l {
+		l[i] = -1
+	}
+	return l
+}
+
+// options returns the name that o gives for the column of a role.
+func (o *Options) column(r role) string {
+	switch r {
+	case roleTime:
+		return o.TimeCol
+	case roleInput:
+		return o.InputCol
+	case roleTemp:
+		return o.TempCol
+	case roleSetpoint:
+		return o.SetpointCol
+	case roleMode:
+		return o.ModeCol
+	case roleAirflow:
+		return o.AirflowCol
+	case roleInlet:
+		return o.InletCol
+	case roleCold:
+		return o.ColdCol
+	case roleRun:
+		return o.RunCol
+	}
+	return ""
+}
+
+// assign gives every role its column: by the flags, else by name and unit,
+// else, for input and temperature, by what the columns hold.
+//
+// With tags true the columns are tags of a log in long form, each with its
+// own clock: no column is looked for that holds the time.
+func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
+	l := noLayout()
+	taken := map[int]bool{}
+	for r := range numRoles {
+		name := o.column(r)
+		if name == "" || tags && (r == roleTime || r == roleRun) {
+			continue
+		}
+		i, err := findColumn(cols, name, flags[r])
+		if err != nil {
+			return l, nil, err
+		}
+		l[r] = i
+		taken[i] = true
+	}
+	if !tags {
+		if err := assignTime(cols, &l, taken); err != nil {
+			return l, nil, err
+		}
+	}
+	var notes []Note
+	for _, r := range []role{roleInput, roleTemp} {
+		if l[r] >= 0 {
+			continue
+		}
+		found := bestByName(cols, taken, r)
+		if len(found) > 1 {
+			found = byContent(cols, found, r)
+		}
+		if len(found) > 1 {
+			return l, nil, ambiguous(cols, found, r)
+		}
+		if len(found) == 1 {
+			l[r] = found[0]
+			taken[found[0]] = true
+		}
+	}
+	for r := roleSetpoint; r < roleRun; r++ {
+		if l[r] >= 0 {
+			continue
+		}
+		switch found := bestByName(cols, taken, r); {
+		case len(found) == 1:
+			l[r] = found[0]
+			taken[found[0]] = true
+		case len(found) > 1:
+			notes = append(notes, Note{Code: "column-ambiguous", Text: fmt.Sprintf("several columns could be the %s: %s; none is used (say which with %s)",
+				roleNames[r], listColumns(cols, found), flags[r])})
+		}
+	}
+	more, err := assignByContent(cols, &l, taken)
+	return l, append(notes, more...), err
+}
+
+// findColumn finds the column that a flag names: exactly, else without regard
+// to case if that leaves one. The name may leave out the unit.
+func findColumn(cols []column, name, flag string) (int, error) {
+	same := []func(c column) bool{
+		func(c column) bool { return c.label == name },
+		func(c column) bool { return strings.EqualFold(c.label, name) },
+		func(c column) bool { return c.name == name },
+		func(c column) bool { return strings.EqualFold(c.name, name) },
+	}
+	for _, is := range same {
+		var found []int
+		for i, c := range cols {
+			if is(c) {
+				found = append(found, i)
+			}
+		}
+		if len(found) == 1 {
+			return found[0], nil
+		}
+		if len(found) > 1 {
+			return 0, fmt.Errorf("%s %q fits several columns: %s", flag, name, listColumns(cols, found))
+		}
+	}
+	return 0, fmt.Errorf("%s %q: there is no such column; the columns are %s", flag, name, listColumns(cols, every(cols)))
+}
+
+// assignTime finds the clock: one column of stamps, a date and a time of day
+// side by side, or numbers by their name; else the first numbers that only rise.
+func assignTime(cols []column, l *layout, taken map[int]bool) error {
+	if l[roleTime] >= 0 {
+		pairDate(cols, l, taken)
+		return nil
+	}
+	found := bestByName(cols, taken, roleTime)
+	if len(found) == 0 {
+		for i, c := range cols {
+			if !taken[i] && c.class == stamps {
+				found = append(found, i)
+			}
+		}
+	}
+	if len(found) == 0 {
+		for i, c := range cols {
+			if r, _ := roleOf(c); !taken[i] && r == roleNone && c.class == numbers && c.ascending && !allEqual(c.sample) {
+				found = []int{i}
+				break
+			}
+		}
+	}
+	if len(found) > 1 {
+		found = clockAmong(cols, found)
+	}
+	switch {
+	case len(found) == 0:
+		return fmt.Errorf("no column is a clock: say which with %s; the columns are %s", flags[roleTime], listColumns(cols, every(cols)))
+	case len(found) > 1:
+		return ambiguous(cols, found, roleTime)
+	}
+	l[roleTime] = found[0]
+	taken[found[0]] = true
+	pairDate(cols, l, taken)
+	return nil
+}
+
+// clockAmong narrows several columns that could be the clock: a full stamp
+// says more than a time of day, a time of day beside a date belongs to it.
+func clockAmong(cols []column, found []int) []int {
+	var full, timed, dated, plain []int
+	for _, i := range found {
+		switch c := cols[i]; {
+		case c.class == stamps && c.dated && c.timed:
+			full = append(full, i)
+		case c.class == stamps && c.timed:
+			timed = append(timed, i)
+		case c.class == stamps:
+			dated = append(dated, i)
+		case c.class == numbers:
+			plain = append(plain, i)
+		}
+	}
+	switch {
+	case len(full) == 1:
+		return full
+	case len(full) == 0 && len(timed) == 1:
+		return timed
+	case len(full)+len(timed) == 0 && len(plain) == 1:
+		return plain
+	}
+	return found
+}
+
+// pairDate adds the column of dates to a clock that shows the time of day.
+func pairDate(cols []column, l *layout, taken map[int]bool) {
+	t := cols[l[roleTime]]
+	if t.class != stamps || t.dated {
+		if t.class == stamps && !t.timed { // the date was named: look for the time of day
+			for i, c := range cols {
+				if !taken[i] && c.class == stamps && c.timed && !c.dated {
+					l[roleDate], l[roleTime] = l[roleTime], i
+					taken[i] = true
+					return
+				}
+			}
+		}
+		return
+	}
+	for i, c := range cols {
+		if !taken[i] && c.class == stamps && c.dated && !c.timed {
+			l[roleDate] = i
+			taken[i] = true
+			return
+		}
+	}
+}
+
+// bestByName lists the columns not taken that fit a role best.
+func bestByName(cols []column, taken map[int]bool, want role) []int {
+	best := 0
+	var found []int
+	for i, c := range cols {
+		r, score := roleOf(c)
+		if r != want || taken[i] || !fits(c.class, want) {
+			continue
+		}
+		if score > best {
+			best, found = score, nil
+		}
+		if score == best {
+			found = append(found, i)
+		}
+	}
+	return found
+}
+
+// fits tells whether a column of this class can have the role.
+func fits(c class, r role) bool {
+	switch r {
+	case roleTime:
+		return c == numbers || c == stamps
+	case roleMode, roleStatus, roleRun:
+		return c == texts || c == numbers
+	case roleTag:
+		return c == texts
+	}
+	return c == numbers
+}
+
+// roleOf reads the role of a column from its name and unit; score grows with
+// how well they fit.
+func roleOf(c column) (role, int) {
+	parts := wordsOf(c.name)
+	hit := func(r role) int { return words[r].hit(c.name, parts) }
+	degrees := c.unit == "degC" || c.unit == "degF" || c.unit == "K" || c.unit == "mV"
+	electric := c.unit == "V" || c.unit == "%" || c.unit == "mA"
+	_, clocked := timeUnits[c.unit]
+	switch {
+	case clocked:
+		return roleTime, 2 + hit(roleTime)
+	case hit(roleRun) > 0:
+		return roleRun, hit(roleRun)
+	case hit(roleCold) > 0:
+		return roleCold, hit(roleCold)
+	case hit(roleSetpoint) > 0 && !electric && hit(roleSetpoint) >= hit(roleInput):
+		return roleSetpoint, hit(roleSetpoint)
+	case hit(roleMode) > 1:
+		return roleMode, hit(roleMode)
+	case hit(roleStatus) > 0 && !degrees && !electric:
+		return roleStatus, hit(roleStatus)
+	case hit(roleInlet) > 0 && hit(roleAirflow) == 0 && !electric:
+		return roleInlet, hit(roleInlet)
+	case hit(roleAirflow) > 0 && !degrees:
+		return roleAirflow, hit(roleAirflow)
+	case hit(roleOther) > 1 && !(electric && hit(roleInput) > 0):
+		return roleOther, 1
+	case degrees:
+		return roleTemp, 1 + hit(roleTemp)
+	case electric && !(hit(roleTemp) > 1 && hit(roleInput) == 0):
+		return roleInput, 1 + hit(roleInput)
+	case hit(roleTemp) > 0 && hit(roleTemp) >= hit(roleInput) && hit(roleTemp) >= hit(roleTime):
+		return roleTemp, hit(roleTemp)
+	case hit(roleInput) > 0 && hit(roleInput) >= hit(roleTime):
+		return roleInput, hit(roleInput)
+	case hit(roleTime) > 0:
+		return roleTime, hit(roleTime)
+	case c.class == stamps:
+		return roleTime, 1
+	}
+	return roleNone, 0
+}
+
+// byContent narrows candidates of equal name: an input moves in steps, so it
+// repeats itself from row to row; a temperature does not.
+func byContent(cols []column, found []int, r role) []int {
+	var fit []int
+	for _, i := range found {
+		if r == roleInput && isStepwise(cols[i]) || r == roleTemp && !isStepwise(cols[i]) {
+			fit = append(fit, i)
+		}
+	}
+	if len(fit) == 1 {
+		return fit
+	}
+	return found
+}
+
+func isStepwise(c column) bool { return c.stepwise > 0.9 }
+
+// assignByContent fills the roles that no name told, when what is left is
+// clear: one stepwise column for the input, one other for the temperature.
+func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, error) {
+	var notes []Note
+	for _, r := range []role{roleInput, roleTemp} {
+		if l[r] >= 0 {
+			continue
+		}
+		var left, fit []int
+		for i, c := range cols {
+			if known, _ := roleOf(c); taken[i] || known != roleNone || c.class != numbers {
+				continue
+			}
+			left = append(left, i)
+			if isStepwise(c) == (r == roleInput) {
+				fit = append(fit, i)
+			}
+		}
+		other := roleInput + roleTemp - r
+		if len(left) == 1 && l[other] >= 0 {
+			fit = left
+		}
+		if len(fit) == 0 && r == roleInput && len(left) > 1 {
+			fit = left
+		}
+		switch {
+		case len(fit) == 0:
+			return nil, fmt.Errorf("no column is the %s: say which with %s; the columns are %s", roleNames[r], flags[r], listColumns(cols, every(cols)))
+		case len(fit) > 1:
+			return nil, ambiguous(cols, fit, r)
+		}
+		l[r] = fit[0]
+		taken[fit[0]] = true
+		notes = append(notes, Note{Code: "column-by-content", Text: fmt.Sprintf("column %q was taken for the %s because of what it holds; %s says otherwise",
+			cols[fit[0]].label, roleNames[r], flags[r])})
+	}
+	return notes, nil
+}
+
+func ambiguous(cols []column, found []int, r role) error {
+	return fmt.Errorf("%d columns could be the %s: %s; say which with %s", len(found), roleNames[r], listColumns(cols, found), flags[r])
+}
+
+// maxListed bounds a list of columns in a message.
+const maxListed = 12
+
+// listColumns names columns with some of their values.
+func listColumns(cols []column, which []int) string {
+	var b strings.Builder
+	for k, i := range which {
+		if k == maxListed {
+			fmt.Fprintf(&b, " and %d more", len(which)-k)
+			break
+		}
+		if k > 0 {
+			b.WriteString(", ")
+		}
+		fmt.Fprintf(&b, "%q", cols[i].label)
+		if s := cols[i].sample; len(s) > 0 {
+			fmt.Fprintf(&b, " (%s)", strings.Join(s[:min(3, len(s))], ", "))
+		}
+	}
+	return b.String()
+}
+
+func every(cols []column) []int {
+	all := make([]int, len(cols))
+	for i := range all {
+		all[i] = i
+	}
+	return all
+}
+
+func allEqual(s []string) bool {
+	return len(s) == 0 || !slices.ContainsFunc(s, func(x string) bool { return x != s[0] })
+}

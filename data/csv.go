@@ -1,0 +1,409 @@
+package data
+
+import (
+	"bytes"
+	"context"
+	"fmt"
+	"io"
+	"math"
+	"slices"
+)
+
+// field is a column that is read: where it stands and what it means.
+type field struct {
+	index int
+	role  role
+	unit  string // that cells may carry behind the number
+}
+
+// csvReader reads the rows of a text into tables, one for each run.
+type csvReader struct {
+	path   string
+	d      *dialect
+	clock  *clock
+	open   bool // order of day and month is not settled
+	fields []field
+	last   int // index of the last field
+	at     layout
+	pair   bool // date and time of day have a column each
+	single bool // cells can be read in place: no blanks as delimiter
+
+	tables []*table
+	byName map[string]*table
+	long   *longReader // rows are (time, tag, value)
+
+	rec     record
+	cells   [][]byte
+	stamp   []byte
+	repeats int // header lines met again
+	nulRows int
+	firstNo map[string]int // line of the first row dropped, by reason
+}
+
+// readText reads a log in text form.
+func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, error) {
+	text := utf8Reader(s.head, s.r)
+	sample, whole, err := readSample(text)
+	if err != nil {
+		return nil, nil, err
+	}
+	d, err := sniff(s.path, sample, whole)
+	if err != nil {
+		return nil, nil, err
+	}
+	c := &csvReader{path: s.path, d: d, byName: map[string]*table{}, firstNo: map[string]int{}}
+	info := &reading{cols: d.cols}
+	if isLong(d.cols, o) {
+		err = c.planLong(o, info)
+	} else {
+		err = c.plan(o, info)
+	}
+	if err != nil {
+		return nil, nil, fmt.Errorf("%s: %w", s.path, err)
+	}
+	d.rows = nil
+	lines := newLineReader(s.path, io.MultiReader(bytes.NewReader(sample), text))
+	lines.onlyCR, lines.delim = d.onlyCR, d.delim
+	if err := c.readRows(ctx, lines); err != nil {
+		return nil, nil, err
+	}
+	if c.repeats > 0 {
+		info.note("header-repeated", 0, "the header is repeated %s inside the data (the logger was restarted)", times(c.repeats))
+	}
+	if c.nulRows > 0 {
+		info.note("nul-bytes", c.firstNo["NUL bytes"], "the file holds NUL bytes, as a logger leaves them that lost power")
+	}
+	if c.long != nil {
+		tables, err := c.long.tables(c, o, info)
+		if err != nil {
+			return nil, nil, fmt.Errorf("%s: %w", s.path, err)
+		}
+		return tables, info, nil
+	}
+	info.clock, info.at, info.open = c.clock, c.at, c.open
+	return c.tables, info, c.tooManyDropped()
+}
+
+// plan decides which columns are read and how.
+func (c *csvReader) plan(o *Options, info *reading) error {
+	at, notes, err := assign(c.d.cols, o, false)
+	if err != nil {
+		return err
+	}
+	info.notes = append(info.notes, notes...)
+	c.at = at
+	return c.planClock(o, info)
+}
+
+func (c *csvReader) planClock(o *Options, info *reading) error {
+	c.pair = c.at[roleDate] >= 0
+	var cells [][]byte
+	for _, l := range c.d.rows {
+		if cell, ok := c.stampOf(l.cells); ok && len(trimBlanks(cell)) > 0 {
+			cells = append(cells, bytes.Clone(cell))
+		}
+	}
+	k, notes, err := findClock(cells, c.d.cols[c.at[roleTime]], c.pair, o, c.d.format.point)
+	if err != nil {
+		return err
+	}
+	info.notes = append(info.notes, notes...)
+	c.clock = k
+	c.open = k.kind == calendar && k.order == openOrder && hasAlternative(k, cells)
+	if k.kind == calendar && k.order == openOrder && !c.open {
+		k.dayFirst, k.monthFirst = false, false
+	}
+	for r, i := range c.at {
+		if i >= 0 {
+			c.fields = append(c.fields, field{index: i, role: role(r), unit: c.d.cols[i].unit})
+			c.last = max(c.last, i)
+		}
+	}
+	slices.SortFunc(c.fields, func(a, b field) int { return a.index - b.index })
+	c.single = c.d.delim != ' '
+	return nil
+}
+
+// hasAlternative tells that some stamps can be read both day and month first.
+func hasAlternative(k *clock, cells [][]byte) bool {
+	probe := clock{kind: calendar}
+	for _, b := range cells {
+		if _, alt, ok := probe.parse(b, '.'); ok && alt != noTime {
+			return true
+		}
+	}
+	return false
+}
+
+// stampOf puts the stamp of a row together, from one cell or two.
+func (c *csvReader) stampOf(cells [][]byte) ([]byte, bool) {
+	i, j := c.at[roleTime], c.at[roleDate]
+	if i >= len(cells) || j >= len(cells) {
+		return nil, false
+	}
+	if j < 0 {
+		return cells[i], true
+	}
+	c.stamp = append(append(append(c.stamp[:0], cells[j]...), ' '), cells[i]...)
+	return c.stamp, true
+}
+
+// checkEvery is how many rows pass between looks at the context.
+const checkEvery = 1 << 14
+
+func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
+	for n := 0; ; n++ {
+		if n%checkEvery == 0 && ctx.Err() != nil {
+			return fmt.Errorf("%s: %w", c.path, ctx.Err())
+		}
+		text, err := lines.read()
+		if err == io.EOF {
+			return nil
+		}
+		if err != nil {
+			return err
+		}
+		if lines.line < c.d.first {
+			continue
+		}
+		if lines.line == 1 {
+			text = bytes.TrimPrefix(text, []byte("\xEF\xBB\xBF"))
+		}
+		if c.single && !lines.quoted && c.fast(text, lines.line) {
+			continue
+		}
+		c.slow(text, lines.line)
+	}
+}
+
+// fast reads a row whose cells are plain numbers in place. It gives up, and
+// changes nothing, at anything out of the ordinary.
+func (c *csvReader) fast(text []byte, line int) bool {
+	if c.long != nil || c.pair || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
+		return false
+	}
+	r := &c.rec
+	delim, point := c.d.delim, c.d.format.point
+	i, col := 0, 0
+	for _, f := range c.fields {
+		for ; col < f.index; col++ {
+			n := bytes.IndexByte(text[i:], delim)
+			if n < 0 {
+				return false
+			}
+			i += n + 1
+		}
+		switch f.role {
+		case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
+			d, n, ok := scanDecimal(text[i:], point)
+			if !ok || i+n < len(text) && text[i+n] != delim {
+				return false
+			}
+			v, ok := d.float(text[i:i+n], point)
+			if !ok {
+				return false
+			}
+			r.v[f.role] = v
+			i += n
+		case roleTime:
+			if c.clock.kind <= dayNumber {
+				d, n, ok := scanDecimal(text[i:], point)
+				if !ok || i+n < len(text) && text[i+n] != delim {
+					return false
+				}
+				r.t, ok = c.clock.ofDecimal(d, text[i:i+n], point)
+				if !ok {
+					return false
+				}
+				i += n
+				continue
+			}
+			n := bytes.IndexByte(text[i:], delim)
+			if n < 0 {
+				n = len(text) - i
+			}
+			var ok bool
+			if r.t, r.alt, ok = c.clock.parse(text[i:i+n], point); !ok {
+				return false
+			}
+			i += n
+		default:
+			return false
+		}
+	}
+	if rest := text[i:]; len(rest) > 0 {
+		extra := bytes.Count(rest, []byte{delim})
+		if col+extra >= c.d.fields || bytes.IndexByte(rest, 0) >= 0 {
+			return false
+		}
+	}
+	r.line = line
+	c.table("").take(r, c.open)
+	return true
+}
+
+// mayComment tells the characters that a comment can begin with.
+func mayComment(c byte) bool { return c == '#' || c == '%' || c == '!' || c == '/' || c == ';' }
+
+// take counts and adds a complete row.
+func (tb *table) take(r *record, open bool) {
+	tb.counts.read++
+	tb.add(r, open)
+}
+
+// table returns the table of a run, by its name.
+func (c *csvReader) table(name string) *table {
+	if name == "" && len(c.tables) == 1 {
+		return c.tables[0]
+	}
+	tb := c.byName[name]
+	if tb == nil {
+		tb = newTable(name, c.at)
+		c.byName[name] = tb
+		c.tables = append(c.tables, tb)
+	}
+	return tb
+}
+
+// slow reads any other row.
+func (c *csvReader) slow(text []byte, line int) {
+	trimmed := bytes.Trim(text, " \t")
+	if len(trimmed) == 0 || c.isHeader(text) || isComment(text, c.d.delim) {
+		return
+	}
+	if bytes.IndexByte(trimmed, 0) >= 0 {
+		c.nulRows++
+		if len(bytes.Trim(trimmed, "\x00")) == 0 {
+			c.first("NUL bytes", line)
+			return
+		}
+		c.drop("", "NUL bytes", line)
+		return
+	}
+	c.cells = splitCells(c.cells[:0], text, c.d.delim)
+	c.cellRow(line)
+}
+
+// cellRow reads a row from its cells.
+func (c *csvReader) cellRow(line int) {
+	run := ""
+	if i := c.at[roleRun]; i >= 0 && i < len(c.cells) {
+		run = decodeName(c.cells[i])
+	}
+	if len(bytes.Join(c.cells, nil)) == 0 {
+		return
+	}
+	if reason := c.misfit(); reason != "" {
+		c.drop(run, reason, line)
+		return
+	}
+	stamp, _ := c.stampOf(c.cells)
+	t, alt, ok := c.clock.parse(stamp, c.d.format.point)
+	if !ok {
+		reason := "no usable time"
+		if kind, _ := missingKind(stamp); kind == "blank" {
+			reason = "no time"
+		}
+		c.drop(run, reason, line)
+		return
+	}
+	r := &c.rec
+	r.clear()
+	r.line, r.t, r.alt = line, t, alt
+	if c.long != nil {
+		c.long.add(c, run, r)
+		return
+	}
+	c.values(c.table(run), r)
+}
+
+// misfit tells what is wrong with the number of cells in a row.
+func (c *csvReader) misfit() string {
+	if len(c.cells) <= c.last {
+		return "row too short"
+	}
+	for i := c.d.fields; i < len(c.cells); i++ {
+		if len(c.cells[i]) > 0 {
+			return "row too long"
+		}
+	}
+	return ""
+}
+
+// values reads the cells of a row into a table.
+func (c *csvReader) values(tb *table, r *record) {
+	for _, f := range c.fields {
+		cell := c.cells[f.index]
+		switch f.role {
+		case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
+			v, unit, ok := c.d.number(cell)
+			if ok && (unit == "" || unit == f.unit) {
+				r.v[f.role] = v
+			} else if f.role == roleInput || f.role == roleTemp {
+				kind, _ := missingKind(cell)
+				count(tb.counts.missing, kind, 1)
+			}
+		case roleMode:
+			r.auto = modeOf(cell)
+		}
+	}
+	if i := c.at[roleStatus]; i >= 0 && isBadStatus(c.cells[i]) && !math.IsNaN(r.v[roleTemp]) {
+		count(tb.counts.missing, "status "+decodeName(c.cells[i]), 1)
+		r.v[roleTemp] = math.NaN()
+	}
+	tb.take(r, c.open)
+}
+
+func (c *csvReader) drop(run, reason string, line int) {
+	tb := c.table(run)
+	tb.counts.read++
+	count(tb.counts.dropped, reason, 1)
+	c.first(reason, line)
+}
+
+func (c *csvReader) first(reason string, line int) {
+	if _, seen := c.firstNo[reason]; !seen {
+		c.firstNo[reason] = line
+	}
+}
+
+// isHeader tells that a line above the data has come again.
+func (c *csvReader) isHeader(text []byte) bool {
+	for k, h := range c.d.header {
+		if bytes.Equal(h, text) {
+			if k == len(c.d.header)-1 {
+				c.repeats++
+			}
+			return true
+		}
+	}
+	return false
+}
+
+// tooManyDropped refuses a file most of whose rows could not be read: what is
+// left would not be the recording.
+func (c *csvReader) tooManyDropped() error {
+	read, dropped := 0, 0
+	worst, most := "", 0
+	for _, tb := range c.tables {
+		read += tb.counts.read
+		for reason, n := range tb.counts.dropped {
+			dropped += n
+			if n > most || n == most && reason < worst {
+				worst, most = reason, n
+			}
+		}
+	}
+	if 2*dropped <= read {
+		return nil
+	}
+	return fmt.Errorf("%s:%d: %d of %d rows cannot be read, most because of %q (this is the first): is the right column the clock? say which with %s",
+		c.path, c.firstNo[worst], dropped, read, worst, flags[roleTime])
+}
+
+func times(n int) string {
+	if n == 1 {
+		return "once"
+	}
+	return fmt.Sprintf("%d times", n)
+}

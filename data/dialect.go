@@ -1,0 +1,561 @@
+package data
+
+import (
+	"bytes"
+	"fmt"
+	"io"
+	"math"
+	"strings"
+)
+
+// dialect is how a text file writes its rows, as its beginning shows.
+type dialect struct {
+	delim  byte
+	format numberFormat
+	onlyCR bool // lines end with CR alone
+
+	fields int // cells in a row of data
+	first  int // line of the first row of data
+	shift  int // 1 when the rows begin with a row name that the header leaves out
+
+	header [][]byte // lines above the data that may come again: header and unit row
+	cols   []column
+	rows   []line // rows of data in the sample, until the clock is found
+}
+
+// sampleSize is how much of a text is looked at before its rows are read;
+// more is taken, up to sampleMost, while it holds fewer than sampleLines lines.
+const (
+	sampleSize  = 1 << 18
+	sampleMost  = 8 << 20
+	sampleLines = 20
+	sampleRows  = 2000 // rows looked at in detail
+)
+
+// readSample reads the beginning of a text; whole tells that it is all of it.
+func readSample(r io.Reader) (sample []byte, whole bool, err error) {
+	want := sampleSize
+	for {
+		old := len(sample)
+		sample = append(sample, make([]byte, want-old)...)
+		n, err := io.ReadFull(r, sample[old:])
+		sample = sample[:old+n]
+		if err == io.EOF || err == io.ErrUnexpectedEOF {
+			return sample, true, nil
+		}
+		if err != nil {
+			return sample, false, err
+		}
+		lines := bytes.Count(sample, []byte{'\n'}) + bytes.Count(sample, []byte{'\r'})
+		if lines >= sampleLines || want >= sampleMost {
+			return sample, false, nil
+		}
+		want *= 2
+	}
+}
+
+// line is one line of the sample, cut into cells.
+type line struct {
+	number int
+	text   []byte
+	cells  [][]byte
+}
+
+// sniff finds the dialect of a text from its beginning.
+func sniff(path string, sample []byte, whole bool) (*dialect, error) {
+	d := &dialect{}
+	d.onlyCR = bytes.IndexByte(sample, '\n') < 0 && bytes.IndexByte(sample, '\r') >= 0
+	physical, err := d.lines(path, sample, whole, 0)
+	if err != nil {
+		return nil, err
+	}
+	if len(physical) == 0 {
+		return nil, fmt.Errorf("%s: is empty", path)
+	}
+	d.delim, d.fields = findDelimiter(physical)
+	if d.fields < 2 {
+		return nil, fmt.Errorf("%s: no rows of two or more numbers found: is this a log of columns with a delimiter?", path)
+	}
+	records, err := d.lines(path, sample, whole, d.delim)
+	if err != nil {
+		return nil, err
+	}
+	d.format.point = findPoint(records, d.delim, d.fields)
+	return d, d.findColumns(path, records)
+}
+
+// lines cuts the sample into lines and, with a delimiter, into cells. Blank
+// lines are left out, and the last line when the sample ends within it.
+func (d *dialect) lines(path string, sample []byte, whole bool, delim byte) ([]line, error) {
+	r := newLineReader(path, bytes.NewReader(sample))
+	r.onlyCR, r.delim = d.onlyCR, delim
+	if delim == 0 { // before the delimiter is known quotes mean nothing
+		r.quoted = false
+	}
+	var out []line
+	for len(out) < sampleRows {
+		text, err := r.read()
+		if err == io.EOF {
+			break
+		}
+		if err != nil {
+			return nil, err
+		}
+		if len(bytes.Trim(text, " \t\x00")) == 0 {
+			continue
+		}
+		l := line{number: r.line, text: bytes.Clone(text)}
+		if l.number == 1 {
+			l.text = bytes.TrimPrefix(l.text, []byte("\xEF\xBB\xBF"))
+		}
+		if delim != 0 {
+			l.cells = splitCells(nil, l.text, delim)
+			if len(l.cells) > maxColumns {
+				return nil, fmt.Errorf("%s:%d: %d columns, at most %d can be read", path, l.number, len(l.cells), maxColumns)
+			}
+		}
+		out = append(out, l)
+	}
+	if !whole && len(out) > 1 && len(out) < sampleRows {
+		out = out[:len(out)-1]
+	}
+	return out, nil
+}
+
+const maxColumns = 100000
+
+// delimiters in the order in which they are preferred when two fit equally.
+var delimiters = []byte{'\t', ';', '|', ',', ' '}
+
+// findDelimiter takes the delimiter that makes most of the text numbers and
+// times: the bytes in such cells, times the squared share of such cells.
+func findDelimiter(lines []line) (delim byte, fields int) {
+	best := 0.0
+	for _, d := range delimiters {
+		type tally struct{ goodBytes, good, all float64 }
+		byCount := map[int]*tally{}
+		for _, l := range lines[max(0, len(lines)-400):] {
+			if isComment(l.text, d) {
+				continue
+			}
+			cells := splitCells(nil, l.text, d)
+			t := byCount[len(cells)]
+			if t == nil {
+				t = &tally{}
+				byCount[len(cells)] = t
+			}
+			for _, c := range cells {
+				if k := looseClass(c); k == numbers || k == stamps {
+					t.good++
+					t.goodBytes += float64(len(c))
+				}
+				if len(c) > 0 {
+					t.all++
+				}
+			}
+		}
+		for n, t := range byCount {
+			if n < 2 || t.good == 0 {
+				continue
+			}
+			share := t.good / t.all
+			if score := t.goodBytes * share * share; score > best || score == best && d == delim && n > fields {
+				best, delim, fields = score, d, n
+			}
+		}
+	}
+	return delim, fields
+}
+
+// looseClass classes a cell before the decimal mark is known.
+func looseClass(cell []byte) class {
+	cell = trimBlanks(cell)
+	if len(cell) == 0 {
+		return blankCells
+	}
+	for _, point := range []byte{'.', ','} {
+		if _, n, ok := scanDecimal(cell, point); ok && (n == len(cell) || isUnitSuffix(cell[n:])) {
+			return numbers
+		}
+	}
+	if _, ok := (numberFormat{'.'}).parse(cell); ok && bytes.IndexByte(cell, ' ') < 0 {
+		return numbers
+	}
+	if _, ok := (numberFormat{','}).parse(cell); ok && bytes.IndexByte(cell, ' ') < 0 {
+		return numbers
+	}
+	if isStamp(cell) {
+		return stamps
+	}
+	return texts
+}
+
+// isStamp tells that a cell is a date, a time of day, or both.
+func isStamp(cell []byte) bool {
+	var c clock
+	if _, _, ok := c.parseCalendar(cell); ok && bytes.ContainsAny(cell, "/.-: T") {
+		return true
+	}
+	_, ok := parseTimeOfDay(cell, false)
+	return ok
+}
+
+func isUnitSuffix(rest []byte) bool {
+	if len(rest) > 12 {
+		return false
+	}
+	rest = trimBlanks(rest)
+	if len(rest) == 0 {
+		return false
+	}
+	_, known := canonicalUnit(decodeName(rest))
+	return known
+}
+
+// isComment tells a line that is meant for people.
+func isComment(text []byte, delim byte) bool {
+	text = bytes.TrimLeft(text, " \t\"")
+	if len(text) == 0 {
+		return false
+	}
+	return text[0] == '#' || text[0] == '%' || bytes.HasPrefix(text, []byte("//")) ||
+		text[0] == '!' || text[0] == ';' && delim != ';'
+}
+
+// findPoint decides between decimal point and comma. A mark that is not
+// followed by exactly three digits cannot be a thousands mark; a lone mark
+// with three digits behind it counts as decimal unless the other is.
+func findPoint(lines []line, delim byte, fields int) byte {
+	var strong, weak [2]int
+	marks := [2]byte{'.', ','}
+	for _, l := range lines {
+		if len(l.cells) != fields {
+			continue
+		}
+		for _, c := range l.cells {
+			if looseClass(c) != numbers {
+				continue
+			}
+			i, j := bytes.LastIndexByte(c, '.'), bytes.LastIndexByte(c, ',')
+			for k, at := range [2]int{i, j} {
+				if at < 0 || bytes.Count(c, marks[k:k+1]) > 1 || at < max(i, j) {
+					continue
+				}
+				whole := bytes.TrimLeft(c[:at], "+-")
+				digits := 0
+				for _, x := range c[at+1:] {
+					if x-'0' > 9 {
+						break
+					}
+					digits++
+				}
+				if digits != 3 || len(whole) == 0 || whole[0] == '0' || len(whole) > 3 && bytes.IndexByte(whole, marks[1-k]) < 0 ||
+					bytes.IndexByte(whole, marks[1-k]) >= 0 {
+					strong[k]++
+				} else {
+					weak[k]++
+				}
+			}
+		}
+	}
+	switch {
+	case strong[1] > strong[0]:
+		return ','
+	case strong[0] > 0 || delim == ',' || weak[0] > 0:
+		return '.'
+	case weak[1] > 0:
+		return ','
+	}
+	return '.'
+}
+
+// findColumns finds where the data begin, the header above them, and what is
+// in each column.
+func (d *dialect) findColumns(path string, lines []line) error {
+	d.describe(lines)
+	start := -1
+	for k, l := range lines {
+		if d.isData(l) {
+			start = k
+			break
+		}
+	}
+	if start < 0 {
+		return fmt.Errorf("%s: no rows of data found", path)
+	}
+	d.first = lines[start].number
+	names, units := d.findHeader(lines[:start], lines[start])
+	for i := range d.cols {
+		c := &d.cols[i]
+		c.label = fmt.Sprintf("column %d", i+1)
+		if k := i - d.shift; k >= 0 && k < len(names) && names[k] != "" {
+			c.label = names[k]
+		} else if d.shift == 1 && i == 0 {
+			c.label = "row"
+		}
+		c.name, c.unit = splitNameUnit(c.label)
+		if k := i - d.shift; k >= 0 && k < len(units) && units[k] != "" {
+			c.unit = units[k]
+		}
+	}
+	d.rows = lines[start:]
+	d.inspect(d.rows)
+	return nil
+}
+
+// describe classes the columns by the majority of their cells.
+func (d *dialect) describe(lines []line) {
+	votes := make([][4]int, d.fields)
+	for _, l := range lines {
+		if len(l.cells) != d.fields || isComment(l.text, d.delim) {
+			continue
+		}
+		for i, c := range l.cells {
+			votes[i][d.classOf(c)]++
+		}
+	}
+	d.cols = make([]column, d.fields)
+	for i, v := range votes {
+		c := &d.cols[i]
+		c.index = i
+		switch {
+		case v[numbers]+v[stamps]+v[texts] == 0:
+			c.class = blankCells
+		case v[numbers] >= v[stamps] && v[numbers] >= v[texts]:
+			c.class = numbers
+		case v[stamps] >= v[texts]:
+			c.class = stamps
+		default:
+			c.class = texts
+		}
+	}
+}
+
+// classOf classes a cell: a word for a missing value counts as blank.
+func (d *dialect) classOf(cell []byte) class {
+	if len(cell) == 0 {
+		return blankCells
+	}
+	if _, _, ok := d.number(cell); ok {
+		return numbers
+	}
+	if isStamp(cell) {
+		return stamps
+	}
+	if _, known := missingKind(cell); known {
+		return blankCells
+	}
+	return texts
+}
+
+// number reads a cell that may end with a unit.
+func (d *dialect) number(cell []byte) (v float64, unit string, ok bool) {
+	if v, ok = d.format.parse(cell); ok {
+		return v, "", true
+	}
+	if dec, n, ok := scanDecimal(cell, d.format.point); ok && isUnitSuffix(cell[n:]) {
+		v, ok = dec.float(cell[:n], d.format.point)
+		unit, _ = canonicalUnit(decodeName(trimBlanks(cell[n:])))
+		return v, unit, ok
+	}
+	return 0, "", false
+}
+
+// isData tells a row of data: its first cell that should be a number or a
+// stamp is one, and so are more than half of all such cells.
+func (d *dialect) isData(l line) bool {
+	if len(l.cells) < 2 || isComment(l.text, d.delim) {
+		return false
+	}
+	good, bad := 0, 0
+	for i, c := range l.cells {
+		if i >= len(d.cols) || d.cols[i].class != numbers && d.cols[i].class != stamps {
+			continue
+		}
+		switch k := d.classOf(c); {
+		case k == numbers || k == stamps:
+			good++
+		case k == texts && good == 0:
+			return false
+		case k == texts:
+			bad++
+		}
+	}
+	return good > bad && len(l.cells) >= min(d.fields, 2)
+}
+
+// findHeader looks upward from the first row of data for a unit row and a
+// header; a comment line counts when there is nothing else.
+func (d *dialect) findHeader(above []line, data line) (names, units []string) {
+	var rows []line
+	for k := len(above) - 1; k >= 0 && len(rows) < 2; k-- {
+		if isComment(above[k].text, d.delim) {
+			continue
+		}
+		if len(above[k].cells) < 2 {
+			break
+		}
+		rows = append(rows, above[k])
+	}
+	if len(rows) > 1 {
+		if u, ok := unitRow(rows[0].cells); ok && len(rows[1].cells) > 1 && !isUnitRow(rows[1].cells) {
+			d.header = append(d.header, rows[0].text)
+			units, rows = u, rows[1:]
+		}
+	}
+	if len(rows) == 0 {
+		return d.commentHeader(above), nil
+	}
+	d.header = append(d.header, rows[0].text)
+	names = cellNames(rows[0].cells)
+	if len(names) == d.fields-1 && names[len(names)-1] != "" && isRowName(data, names, d) {
+		d.shift = 1
+	}
+	return names, units
+}
+
+// isRowName tells that a row of data has one cell more than the header
+// because it begins with the row's number or quoted name.
+func isRowName(data line, names []string, d *dialect) bool {
+	last := data.cells[len(data.cells)-1]
+	v, _, ok := d.number(data.cells[0])
+	return len(data.cells) == len(names)+1 && len(last) > 0 && ok && v == math.Trunc(v)
+}
+
+// commentHeader takes the last comment above the data for the header when it
+// has as many cells as the data.
+func (d *dialect) commentHeader(above []line) []string {
+	for k := len(above) - 1; k >= 0; k-- {
+		if !isComment(above[k].text, d.delim) {
+			return nil
+		}
+		text := bytes.TrimLeft(above[k].text, " \t#%!/;")
+		if names := cellNames(splitCells(nil, text, d.delim)); len(names) == d.fields {
+			return names
+		}
+	}
+	return nil
+}
+
+func cellNames(cells [][]byte) []string {
+	names := make([]string, len(cells))
+	for i, c := range cells {
+		names[i] = strings.Join(strings.Fields(decodeName(bytes.TrimPrefix(c, []byte("\xEF\xBB\xBF")))), " ")
+	}
+	return names
+}
+
+// unitRow reads a row whose cells are all units or blank.
+func unitRow(cells [][]byte) (units []string, ok bool) {
+	known := 0
+	for _, c := range cells {
+		if len(c) == 0 || bytes.Equal(c, []byte("-")) {
+			units = append(units, "")
+			continue
+		}
+		text := decodeName(c)
+		u, is := unitCell(text)
+		if is {
+			known++
+		} else if len([]rune(text)) > 12 {
+			return nil, false
+		}
+		units = append(units, u)
+	}
+	return units, known >= 1 && 2*known >= len(nonBlank(cells))
+}
+
+func isUnitRow(cells [][]byte) bool {
+	_, ok := unitRow(cells)
+	return ok
+}
+
+func nonBlank(cells [][]byte) [][]byte {
+	var out [][]byte
+	for _, c := range cells {
+		if len(c) > 0 {
+			out = append(out, c)
+		}
+	}
+	return out
+}
+
+// inspect looks at the rows of the sample: values to show, whether a column
+// moves in steps, whether it only rises, what its stamps hold.
+func (d *dialect) inspect(rows []line) {
+	for i := range d.cols {
+		c := &d.cols[i]
+		var s columnStats
+		words := map[string]int{}
+		for _, l := range rows {
+			if i >= len(l.cells) || len(l.cells[i]) == 0 {
+				continue
+			}
+			cell := l.cells[i]
+			if len(c.sample) < 5 {
+				c.sample = append(c.sample, decodeName(cell[:min(len(cell), 30)]))
+			}
+			switch c.class {
+			case numbers:
+				if v, unit, ok := d.number(cell); ok {
+					s.add(v)
+					if unit != "" && c.unit == "" {
+						c.unit = unit
+					}
+				}
+			case texts:
+				words[string(cell)]++
+			case stamps:
+				dated, timed := stampParts(cell)
+				c.dated, c.timed = c.dated || dated, c.timed || timed
+			}
+		}
+		c.stepwise, c.ascending = s.stepwise(), s.ascending()
+		c.repeats = len(words) > 0 && 2*len(words) <= sum(words)
+	}
+}
+
+func sum(counts map[string]int) (n int) {
+	for _, c := range counts {
+		n += c
+	}
+	return n
+}
+
+// stampParts tells whether a stamp holds a date and a time of day.
+func stampParts(cell []byte) (dated, timed bool) {
+	var c clock
+	if _, _, ok := c.parseCalendar(cell); ok {
+		return true, bytes.IndexByte(cell, ':') >= 0 || len(cell) > 10 && bytes.IndexByte(cell, 'T') > 0
+	}
+	return false, true
+}
+
+// columnStats follows a column of numbers from row to row.
+type columnStats struct {
+	n, same, fell int
+	last          float64
+}
+
+func (s *columnStats) add(v float64) {
+	if s.n > 0 {
+		if v == s.last {
+			s.same++
+		}
+		if v < s.last {
+			s.fell++
+		}
+	}
+	s.n++
+	s.last = v
+}
+
+// stepwise is the share of rows that repeat the one before.
+func (s *columnStats) stepwise() float64 {
+	if s.n < 5 {
+		return math.NaN()
+	}
+	return float64(s.same) / float64(s.n-1)
+}
+
+func (s *columnStats) ascending() bool { return s.n > 1 && s.fell == 0 }

@@ -1,0 +1,321 @@
+package data
+
+import (
+	"fmt"
+	"slices"
+	"time"
+)
+
+// stamps of one recording, in file order, and what is needed to mend them.
+type stampSeries struct {
+	t        []int64             // ns
+	same     func(i, j int) bool // rows i and j hold the same values
+	line     func(i int) int     // line in the file
+	wall     bool                // local clock without a zone
+	tod      bool                // time of day without a date
+	reversed bool                // out: newest row first; the caller turns the rows round
+
+	drop    []bool // out: rows that go; nil when all stay
+	reasons map[string]int
+	notes   []Note
+}
+
+func (s *stampSeries) note(code string, row int, format string, args ...any) {
+	line := 0
+	if row >= 0 {
+		line = s.line(row)
+	}
+	addNote(&s.notes, Note{Code: code, Text: fmt.Sprintf(format, args...), Row: line})
+}
+
+// mend makes the stamps strictly ascending, and says how:
+//   - rows in falling order are turned round
+//   - a time of day that starts again at midnight goes on
+//   - a local clock set back or forth by an hour goes on as before
+//   - repeated rows are dropped
+//   - stamps too coarse for the sampling are spread evenly
+//
+// Anything else is an error that names the row.
+func (s *stampSeries) mend() error {
+	if strictlyAscending(s.t) {
+		s.springForward()
+		return nil
+	}
+	s.reasons = map[string]int{}
+	s.turnRound()
+	if err := s.runOn(); err != nil {
+		return err
+	}
+	s.springForward()
+	s.spreadOrDrop()
+	return nil
+}
+
+func strictlyAscending(t []int64) bool {
+	for i := 1; i < len(t); i++ {
+		if t[i] <= t[i-1] {
+			return false
+		}
+	}
+	return true
+}
+
+// turnRound reverses rows that stand newest first.
+func (s *stampSeries) turnRound() {
+	rising, falling := 0, 0
+	for i := 1; i < len(s.t); i++ {
+		switch {
+		case s.t[i] > s.t[i-1]:
+			rising++
+		case s.t[i] < s.t[i-1]:
+			falling++
+		}
+	}
+	if falling < 2 || rising > 0 && falling < 20*rising {
+		return
+	}
+	slices.Reverse(s.t)
+	s.reversed = true
+	s.note("rows-reversed", -1, "the newest row stood first; the rows were turned round")
+	n := len(s.t)
+	same, line := s.same, s.line
+	s.same = func(i, j int) bool { return same(n-1-i, n-1-j) }
+	s.line = func(i int) int { return line(n - 1 - i) }
+}
+
+// typicalStep is the median of the steps forward, ns, 0 when there is none.
+func (s *stampSeries) typicalStep() int64 {
+	stride := max(1, len(s.t)/100000)
+	var steps []int64
+	for i := stride; i < len(s.t); i += stride {
+		if d := s.t[i] - s.t[i-1]; d > 0 {
+			steps = append(steps, d)
+		}
+	}
+	if len(steps) == 0 {
+		return 0
+	}
+	slices.Sort(steps)
+	return steps[len(steps)/2]
+}
+
+// smallStep is how far a clock may be set back in one go (to correct it, by
+// a time server) without leaving doubt: a few rows are dropped then.
+const smallStep = int64(5 * time.Second)
+
+// runOn removes jumps back: midnight, the hour of daylight saving, rows sent
+// again and small corrections.
+func (s *stampSeries) runOn() error {
+	hour, day := int64(time.Hour), int64(24*time.Hour)
+	step := s.typicalStep()
+	var offset, last int64 // last: the latest stamp kept
+	hourly := func(back int64) bool {
+		return s.wall && back <= hour && hour-back <= max(4*step, int64(2*time.Second))
+	}
+	midnights, first := 0, 0
+	for i, t := range s.t {
+		t += offset
+		back := last - t
+		switch {
+		case i == 0 || back <= 0:
+		case s.tod && day-back >= 0 && day-back < day/2:
+			offset += day
+			t += day
+			if midnights++; midnights == 1 {
+				first = i
+			}
+		case s.resent(i, t, offset, hourly(back)):
+			s.dropRow(i, "repeated row")
+			s.t[i] = last
+			continue
+		case s.tod && max12(s.t) && back > 11*hour && back <= 12*hour:
+			offset += 12 * hour
+			t += 12 * hour
+			s.note("clock-twelve-hours", i, "the clock shows twelve hours and started again; it was taken to go on")
+		case hourly(back):
+			offset += hour
+			t += hour
+			s.note("clock-jump-back", i, "the clock was set back by an hour (end of daylight saving time?); it was taken to go on")
+		case back <= max(min(5*step, int64(time.Minute)), min(smallStep, 50*step)):
+			s.dropRow(i, "clock set back")
+			s.note("clock-set-back", i, "the clock was set back a little; the rows until it had caught up were dropped")
+			s.t[i] = last
+			continue
+		default:
+			return fmt.Errorf("row %d: the clock jumps back by %v: these may be two recordings in one file; cut it in two, or name the column that tells them apart with --run-col",
+				s.line(i), time.Duration(back))
+		}
+		s.t[i] = t
+		last = t
+	}
+	if midnights > 0 {
+		s.note("clock-midnight", first, "the clock started again at midnight (%s); it was taken to go on", times(midnights))
+	}
+	return nil
+}
+
+// resentRows is how many rows are compared to tell rows sent again from a
+// clock set back.
+const resentRows = 20
+
+// resent tells that a row with a stamp in the past repeats an earlier row.
+// Where the clock could as well have been set back by an hour, the rows that
+// follow must repeat too, and must not all be alike.
+func (s *stampSeries) resent(i int, t, offset int64, hourly bool) bool {
+	j, found := slices.BinarySearch(s.t[:i], t)
+	for ; found && j < i && s.t[j] == t && !s.same(i, j); j++ {
+	}
+	if !found || j >= i || s.t[j] != t {
+		return false
+	}
+	if !hourly {
+		return true
+	}
+	varied := false
+	for k := 0; k < resentRows && i+k < len(s.t) && j+k < i; k++ {
+		if s.t[i+k]+offset != s.t[j+k] || !s.same(i+k, j+k) {
+			return false
+		}
+		varied = varied || !s.same(j, j+k)
+	}
+	return varied
+}
+
+func max12(t []int64) bool { return slices.Max(t) < int64(13*time.Hour) }
+
+func (s *stampSeries) dropRow(i int, reason string) {
+	if s.drop == nil {
+		s.drop = make([]bool, len(s.t))
+	}
+	s.drop[i] = true
+	count(s.reasons, reason, 1)
+}
+
+// springForward takes back the hour that a local clock was set forward: a
+// step of an hour and an ordinary interval, in the small hours, in a log that
+// is regular otherwise.
+func (s *stampSeries) springForward() {
+	if !s.wall || s.tod || len(s.t) < 3 {
+		return
+	}
+	hour := int64(time.Hour)
+	var step, offset int64
+	for i := 1; i < len(s.t); i++ {
+		d := s.t[i] - (s.t[i-1] + offset)
+		if d >= hour && d < hour+hour/2 {
+			if step == 0 {
+				step = s.typicalStep()
+			}
+			at := time.Unix(0, s.t[i-1]+offset).UTC()
+			if over := d - hour - step; over <= step/2 && over >= -step/2 && step < hour/4 && at.Hour() < 3 && at.Minute() >= 45 {
+				s.note("clock-jump-forward", i, "the clock was set forward by an hour (daylight saving time?); it was taken to go on")
+				offset += hour
+			}
+		}
+		s.t[i] -= offset
+	}
+}
+
+// spreadOrDrop treats rows with equal stamps: where they are the rule the
+// stamps are coarser than the sampling and are spread evenly, else they are
+// repetitions and all but the first go.
+func (s *stampSeries) spreadOrDrop() {
+	kept, equal := 0, 0
+	last := int64(noTime)
+	for i, t := range s.t {
+		if s.drop != nil && s.drop[i] {
+			continue
+		}
+		if kept > 0 && t == last {
+			equal++
+		}
+		kept++
+		last = t
+	}
+	if equal == 0 {
+		return
+	}
+	if 3*equal > kept {
+		s.spread()
+		return
+	}
+	prev := -1
+	for i, t := range s.t {
+		if s.drop != nil && s.drop[i] {
+			continue
+		}
+		if prev >= 0 && t == s.t[prev] {
+			if s.same(i, prev) {
+				s.dropRow(i, "repeated row")
+			} else {
+				s.dropRow(i, "repeated time")
+			}
+			continue
+		}
+		prev = i
+	}
+}
+
+// spread divides the time from each stamp to the next among the rows that
+// share it. The first and the last stamp may be cut short: their rows keep
+// the spacing of a whole one.
+func (s *stampSeries) spread() {
+	var rows []int
+	for i := range s.t {
+		if s.drop == nil || !s.drop[i] {
+			rows = append(rows, i)
+		}
+	}
+	type group struct{ lo, hi int } // of rows
+	var groups []group
+	for k := range rows {
+		if k == 0 || s.t[rows[k]] != s.t[rows[k-1]] {
+			groups = append(groups, group{k, k})
+		}
+		groups[len(groups)-1].hi = k + 1
+	}
+	if len(groups) < 2 {
+		return
+	}
+	var sizes, widths []int64
+	for g := range groups {
+		sizes = append(sizes, int64(groups[g].hi-groups[g].lo))
+		if g > 0 {
+			widths = append(widths, s.t[rows[groups[g].lo]]-s.t[rows[groups[g-1].lo]])
+		}
+	}
+	slices.Sort(sizes)
+	slices.Sort(widths)
+	whole, width := sizes[len(sizes)/2], widths[len(widths)/2]
+	for g, gr := range groups {
+		n := int64(gr.hi - gr.lo)
+		start, from, per := s.t[rows[gr.lo]], int64(0), n
+		if (g == 0 || g == len(groups)-1) && n < whole {
+			per = whole
+			if g == 0 {
+				from = whole - n
+			}
+		}
+		for k := gr.lo; k < gr.hi; k++ {
+			s.t[rows[k]] = start + (from+int64(k-gr.lo))*width/per
+		}
+	}
+	s.note("clock-spread", -1, "%d rows share each stamp of the clock (every %v); they were spread evenly between the stamps", whole, time.Duration(width))
+}
+
+// maxNotes bounds the notes of one kind.
+const maxNotes = 20
+
+// addNote adds a note unless there are many of its kind already, or the same
+// one stands there.
+func addNote(notes *[]Note, n Note) {
+	same := 0
+	for _, m := range *notes {
+		if m.Code == n.Code {
+			if same++; same >= maxNotes || m == n || m.Text == n.Text && n.Code == "clock-set-back" {
+				return
+			}
+		}
+	}
+	*notes = append(*notes, n)
+}

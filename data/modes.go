@@ -1,0 +1,39 @@
+package data
+
+import (
+	"slices"
+	"strings"
+)
+
+// autoWords and manualWords are how controllers write their mode.
+var (
+	autoWords   = []string{"AUTO", "A", "AUTOMATIC", "AUTOMATIK", "CASCADE", "CAS", "CLOSED", "CLOSED LOOP", "1", "TRUE", "ON", "REGELN"}
+	manualWords = []string{"MAN", "M", "MANUAL", "HAND", "MANUELL", "MANUEL", "MANUALE", "OPEN", "OPEN LOOP", "0", "FALSE", "OFF", "STEUERN"}
+)
+
+// modeOf reads a mode: 1 automatic, 0 manual, -1 neither.
+func modeOf(cell []byte) int8 {
+	word := strings.ToUpper(decodeName(trimBlanks(cell)))
+	word = strings.TrimSuffix(word, ".0")
+	switch {
+	case slices.Contains(autoWords, word):
+		return 1
+	case slices.Contains(manualWords, word):
+		return 0
+	}
+	return -1
+}
+
+// badStatus are the words of a status column that take back the value beside
+// them.
+var badStatus = []string{
+	"BAD", "B", "UNCERTAIN", "ERROR", "ERR", "FAIL", "FAILED", "FAULT", "INVALID", "OPEN", "BURNOUT", "OVERRANGE", "UNDERRANGE",
+	"SENSOR FAULT", "NO DATA", "SUSPECT", "FEHLER", "UNGÜLTIG", "SCHLECHT", "MAUVAIS", "MALO", "FALSE",
+}
+
+func isBadStatus(cell []byte) bool {
+	if len(cell) == 0 {
+		return false
+	}
+	return slices.Contains(badStatus, strings.ToUpper(decodeName(trimBlanks(cell))))
+}

@@ -1,0 +1,245 @@
+package data
+
+import (
+	"bytes"
+	"math"
+	"math/bits"
+	"strconv"
+	"unicode/utf8"
+)
+
+// decimal is a number as written: ±mant·10^exp. It is exact unless digits
+// were dropped because there were more than 19 of them.
+type decimal struct {
+	mant    uint64
+	exp     int
+	neg     bool
+	dropped bool
+}
+
+// scanDecimal reads [+-]digits[point digits][e[+-]digits] from the start of b
+// and returns the index of the first byte after it. ok is false when there is
+// no digit. Anything that only a programming language would call a number
+// (0x10, 1_000, Inf, NaN) is not one here.
+func scanDecimal(b []byte, point byte) (d decimal, next int, ok bool) {
+	i := 0
+	if i < len(b) && (b[i] == '-' || b[i] == '+') {
+		d.neg = b[i] == '-'
+		i++
+	}
+	first := i
+	for ; i < len(b) && b[i]-'0' <= 9; i++ {
+		d.digit(b[i]-'0', 0)
+	}
+	seen := i - first
+	if i < len(b) && b[i] == point {
+		i++
+		first = i
+		for ; i < len(b) && b[i]-'0' <= 9; i++ {
+			d.digit(b[i]-'0', 1)
+		}
+		seen += i - first
+	}
+	if seen == 0 {
+		return decimal{}, 0, false
+	}
+	if i < len(b) && b[i]|0x20 == 'e' {
+		if e, n := scanExponent(b[i:]); n > 0 {
+			d.exp += e
+			i += n
+		}
+	}
+	return d, i, true
+}
+
+// digit appends one digit; decimals is 1 after the decimal point, else 0.
+func (d *decimal) digit(c byte, decimals int) {
+	const most = (math.MaxUint64 - 9) / 10
+	if d.mant > most || d.dropped {
+		d.dropped = d.dropped || c != 0
+		d.exp += 1 - decimals
+		return
+	}
+	d.mant = d.mant*10 + uint64(c)
+	d.exp -= decimals
+}
+
+// scanExponent reads e[+-]digits and returns its length, 0 when b does not
+// begin with a whole exponent.
+func scanExponent(b []byte) (exp, n int) {
+	i := 1
+	neg := false
+	if i < len(b) && (b[i] == '-' || b[i] == '+') {
+		neg = b[i] == '-'
+		i++
+	}
+	first := i
+	for ; i < len(b) && b[i]-'0' <= 9; i++ {
+		if exp < 10000 {
+			exp = exp*10 + int(b[i]-'0')
+		}
+	}
+	if i == first {
+		return 0, 0
+	}
+	if neg {
+		exp = -exp
+	}
+	return exp, i
+}
+
+var pow10 = [...]float64{1e0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e11,
+	1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22}
+
+// float returns the nearest float64, with text (the digits d was read from)
+// for the cases where one rounding would not be enough. An integer below 2^53
+// and a power of ten up to 10^22 are both exact, so their product or quotient
+// is rounded once. ok is false when the number is too large for a float64.
+func (d decimal) float(text []byte, point byte) (v float64, ok bool) {
+	switch {
+	case !d.dropped && d.mant < 1<<53 && 0 <= d.exp && d.exp < len(pow10):
+		v = float64(d.mant) * pow10[d.exp]
+	case !d.dropped && d.mant < 1<<53 && -len(pow10) < d.exp && d.exp < 0:
+		v = float64(d.mant) / pow10[-d.exp]
+	default:
+		if point != '.' {
+			text = bytes.Replace(text, []byte{point}, []byte{'.'}, 1)
+		}
+		v, err := strconv.ParseFloat(string(text), 64)
+		return v, err == nil
+	}
+	if d.neg {
+		v = -v
+	}
+	return v, true
+}
+
+// scaled returns the number times unit, rounded to an integer.
+func (d decimal) scaled(unit uint64) (int64, bool) {
+	hi, lo := bits.Mul64(d.mant, unit)
+	exp := d.exp
+	for ; exp > 0; exp-- {
+		over, h := bits.Mul64(hi, 10)
+		carry, l := bits.Mul64(lo, 10)
+		hi, lo = h+carry, l
+		if over != 0 || hi != 0 {
+			return 0, d.mant == 0
+		}
+	}
+	if exp < -38 {
+		return 0, true
+	}
+	for ; exp < -19; exp++ { // one digit at a time; such long fractions are rare
+		var r uint64
+		hi, r = hi/10, hi%10
+		lo, _ = bits.Div64(r, lo, 10)
+	}
+	div := pow10u[-exp]
+	if hi >= div {
+		return 0, false
+	}
+	q, r := bits.Div64(hi, lo, div)
+	if r >= div-r && r > 0 {
+		q++
+	}
+	if q > math.MaxInt64 {
+		return 0, false
+	}
+	if d.neg {
+		return -int64(q), true
+	}
+	return int64(q), true
+}
+
+var pow10u = func() (p [20]uint64) {
+	p[0] = 1
+	for i := 1; i < len(p); i++ {
+		p[i] = p[i-1] * 10
+	}
+	return p
+}()
+
+// numberFormat says how a file writes its numbers.
+type numberFormat struct {
+	point byte // decimal mark: '.' or ','
+}
+
+// parse reads a whole cell as a number: plain, with thousands marks, or with
+// a typographic minus. Blanks around it do not matter.
+func (f numberFormat) parse(cell []byte) (float64, bool) {
+	cell = trimBlanks(cell)
+	if d, n, ok := scanDecimal(cell, f.point); ok && n == len(cell) {
+		return d.float(cell, f.point)
+	}
+	plain, ok := f.withoutMarks(cell)
+	if !ok {
+		return 0, false
+	}
+	d, n, ok := scanDecimal(plain, f.point)
+	if !ok || n != len(plain) {
+		return 0, false
+	}
+	return d.float(plain, f.point)
+}
+
+// withoutMarks removes thousands marks that stand where they belong, in front
+// of every group of three digits, and turns U+2212 into a hyphen. ok is false
+// when there is nothing to remove or a mark stands anywhere else.
+func (f numberFormat) withoutMarks(cell []byte) (plain []byte, ok bool) {
+	other := byte(',')
+	if f.point == ',' {
+		other = '.'
+	}
+	whole := cell
+	if i := bytes.IndexByte(cell, f.point); i >= 0 {
+		whole = cell[:i]
+	}
+	var mark rune
+	digits := 0 // since the last mark
+	for len(whole) > 0 {
+		r, n := utf8.DecodeRune(whole)
+		whole = whole[n:]
+		switch {
+		case '0' <= r && r <= '9':
+			plain = append(plain, byte(r))
+			digits++
+		case r == '-' || r == '+' || r == '−':
+			if len(plain) > 0 {
+				return nil, false
+			}
+			if r == '−' {
+				r = '-'
+			}
+			plain = append(plain, byte(r))
+		case r == rune(other) || r == ' ' || r == '\'' || r == '’' || r == '\u00a0' || r == '\u202f' || r == '\u2009':
+			late := mark != 0 && (mark != r || digits != 3)
+			if digits == 0 || digits > 3 || late {
+				return nil, false
+			}
+			mark, digits = r, 0
+		default:
+			return nil, false
+		}
+	}
+	if mark != 0 && digits != 3 {
+		return nil, false
+	}
+	if i := bytes.IndexByte(cell, f.point); i >= 0 {
+		plain = append(plain, cell[i:]...)
+	}
+	return plain, true
+}
+
+// trimBlanks removes spaces and tabs, and the no-break space, from both ends.
+func trimBlanks(b []byte) []byte {
+	for len(b) > 0 && (b[0] == ' ' || b[0] == '\t') {
+		b = b[1:]
+	}
+	for len(b) > 0 && (b[len(b)-1] == ' ' || b[len(b)-1] == '\t') {
+		b = b[:len(b)-1]
+	}
+	if len(b) > 0 && (b[0] >= 0x80 || b[len(b)-1] >= 0x80) {
+		return bytes.TrimSpace(b)
+	}
+	return b
+}

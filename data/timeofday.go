@@ -1,0 +1,156 @@
+package data
+
+import (
+	"bytes"
+	"time"
+)
+
+// parseTimeOfDay reads h:mm:ss.s, or with two fields mm:ss.s, or h:mm when
+// hourMinute is set. Hours may exceed 24: such clocks show elapsed time.
+func parseTimeOfDay(b []byte, hourMinute bool) (ns int64, ok bool) {
+	ns, n, fields := scanTime(b, hourMinute)
+	if fields == 0 {
+		return 0, false
+	}
+	ns, rest, ok := halfDay(ns, b[n:])
+	return ns, ok && len(rest) == 0
+}
+
+// scanTime reads two or three fields of digits with colons between them and
+// a fraction of the last. With two fields the first are minutes, or hours
+// when hourMinute is set. fields is 0 when b begins with no such time.
+func scanTime(b []byte, hourMinute bool) (ns int64, n, fields int) {
+	var f [3]uint64
+	i := 0
+	for fields < 3 {
+		first := i
+		for i < len(b) && i-first < 6 && b[i]-'0' <= 9 {
+			f[fields] = f[fields]*10 + uint64(b[i]-'0')
+			i++
+		}
+		if i == first || fields > 0 && (i-first > 2 || f[fields] > 60) {
+			return 0, 0, 0
+		}
+		fields++
+		if fields == 3 || i == len(b) || b[i] != ':' {
+			break
+		}
+		i++
+	}
+	switch {
+	case fields < 2:
+		return 0, 0, 0
+	case fields == 2 && !hourMinute:
+		f[0], f[1], f[2] = 0, f[0], f[1]
+	}
+	ns = int64(f[0]*nsHour + f[1]*nsMinute + f[2]*nsSecond)
+	if i < len(b) && (b[i] == '.' || b[i] == ',' || b[i] == ':') {
+		frac, w := fraction(b[i+1:])
+		if w > 0 && (b[i] != ':' || w == 3) { // hh:mm:ss:mmm: milliseconds after a colon
+			ns += frac
+			i += 1 + w
+		}
+	}
+	return ns, i, fields
+}
+
+// fraction reads the digits of a decimal fraction of a second. Digits beyond
+// the ninth are cut off.
+func fraction(b []byte) (ns int64, n int) {
+	unit := int64(time.Second)
+	for n < len(b) && b[n]-'0' <= 9 {
+		unit /= 10
+		ns += unit * int64(b[n]-'0')
+		n++
+	}
+	return ns, n
+}
+
+// halfDay applies AM or PM, with or without dots and a blank.
+func halfDay(ns int64, rest []byte) (int64, []byte, bool) {
+	r := bytes.TrimLeft(rest, " ")
+	n := 1
+	if len(r) > 1 && r[1] == '.' {
+		n = 2
+	}
+	if len(r) <= n || r[n]|0x20 != 'm' || r[0]|0x20 != 'a' && r[0]|0x20 != 'p' {
+		return ns, rest, true
+	}
+	pm := r[0]|0x20 == 'p'
+	r = bytes.TrimPrefix(r[n+1:], []byte("."))
+	hour := ns / int64(nsHour)
+	if hour < 1 || hour > 12 {
+		return 0, nil, false
+	}
+	if hour == 12 {
+		ns -= 12 * int64(nsHour)
+	}
+	if pm {
+		ns += 12 * int64(nsHour)
+	}
+	return ns, r, true
+}
+
+// parseTimeAndZone reads the time of day after a date, and the zone if there
+// is one, as the time east of Greenwich.
+func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
+	tod, n, fields := scanTime(b, true)
+	if fields == 0 {
+		return 0, 0, false
+	}
+	tod, rest, ok := halfDay(tod, b[n:])
+	if !ok || tod >= int64(nsDay)+int64(nsSecond) {
+		return 0, 0, false
+	}
+	rest = bytes.TrimLeft(rest, " ")
+	if len(rest) == 0 {
+		return tod, 0, true
+	}
+	east, ok = zoneOffset(rest)
+	if ok && c.zone == nil {
+		c.zone = time.UTC
+		if east != 0 {
+			c.zone = time.FixedZone("", int(east/int64(nsSecond)))
+		}
+	}
+	return tod, east, ok
+}
+
+// zoneOffset reads Z, UTC, GMT, ±hh, ±hhmm or ±hh:mm.
+func zoneOffset(b []byte) (east int64, ok bool) {
+	if len(b) > 3 && (b[0]|0x20 == 'u' || b[0]|0x20 == 'g') {
+		if !bytes.EqualFold(b[:3], []byte("UTC")) && !bytes.EqualFold(b[:3], []byte("GMT")) {
+			return 0, false
+		}
+		b = b[3:]
+	}
+	if len(b) == 1 && b[0]|0x20 == 'z' || bytes.EqualFold(b, []byte("UTC")) || bytes.EqualFold(b, []byte("GMT")) {
+		return 0, true
+	}
+	if len(b) < 2 || b[0] != '+' && b[0] != '-' {
+		return 0, false
+	}
+	digits := bytes.Replace(b[1:], []byte(":"), nil, 1)
+	var v int64
+	for _, d := range digits {
+		if d-'0' > 9 {
+			return 0, false
+		}
+		v = v*10 + int64(d-'0')
+	}
+	switch len(digits) {
+	case 1, 2:
+		v *= 100
+	case 4:
+	default:
+		return 0, false
+	}
+	if v%100 > 59 || v > 1500 {
+		return 0, false
+	}
+	east = (v/100*60 + v%100) * int64(nsMinute)
+	if b[0] == '-' {
+		east = -east
+	}
+	return east, true
+}

@@ -1,0 +1,96 @@
+package data
+
+import (
+	"slices"
+	"strings"
+)
+
+// unitless is the unit of a column that nobody knows the unit of.
+const unitless = "unit"
+
+// unitNames holds the ways a unit is written, in lower case, by its
+// canonical name.
+var unitNames = map[string][]string{
+	"V":    {"v", "volt", "volts", "vdc", "vac", "vrms", "v rms", "v dc", "v ac", "v(rms)"},
+	"mV":   {"mv", "millivolt", "millivolts"},
+	"%":    {"%", "pct", "percent", "prozent", "perc", "% duty", "pourcent"},
+	"mA":   {"ma", "milliamp", "milliamps", "milliampere"},
+	"degC": {"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c"},
+	"degF": {"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f"},
+	"K":    {"k", "kelvin"},
+
+	"ns":  {"ns"},
+	"us":  {"us", "µs", "μs", "usec"},
+	"ms":  {"ms", "msec", "msecs", "millisecond", "milliseconds", "millisekunden"},
+	"s":   {"s", "sec", "secs", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"},
+	"min": {"min", "mins", "minute", "minutes", "minuten", "minutos", "minuti"},
+	"h":   {"h", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"},
+	"d":   {"d", "day", "days", "tage", "jours"},
+}
+
+// timeUnits gives the nanoseconds in a unit of time.
+var timeUnits = map[string]uint64{
+	"ns": 1, "us": 1e3, "ms": 1e6, "s": nsSecond, "min": nsMinute, "h": nsHour, "d": nsDay,
+}
+
+// canonicalUnit turns a unit as written into its canonical name; known is
+// false when it is none of the units this package converts.
+func canonicalUnit(written string) (name string, known bool) {
+	w := strings.TrimSpace(written)
+	for n, ways := range unitNames {
+		if slices.Contains(ways, strings.ToLower(w)) && w != "MV" && w != "S" && w != "MS" {
+			return n, true
+		}
+	}
+	return w, false
+}
+
+// splitNameUnit separates the unit from the name of a column: "Outlet (°C)",
+// "u [V]", "T/degC", "t_s", "Voltage, V", "Temp °C". unit is canonical when
+// it is known, as written in brackets when not, "" when there is none.
+func splitNameUnit(label string) (name, unit string) {
+	label = strings.TrimSpace(label)
+	for _, pair := range []string{"[]", "()", "{}", "<>"} {
+		open := strings.LastIndexByte(label, pair[0])
+		end := strings.LastIndexByte(label, pair[1])
+		if open < 0 || end < open {
+			continue
+		}
+		inside := label[open+1 : end]
+		u, known := canonicalUnit(inside)
+		if known || end == len(label)-1 && open > 0 && pair == "[]" {
+			return strings.TrimSpace(label[:open] + label[end+1:]), u
+		}
+	}
+	for _, sep := range []string{"/", ",", "_", " ", "-", "."} {
+		i := strings.LastIndex(label, sep)
+		if i <= 0 {
+			continue
+		}
+		if u, known := canonicalUnit(label[i+len(sep):]); known && (sep != "." || len(u) > 1) {
+			return strings.TrimSpace(label[:i]), u
+		}
+	}
+	if i := strings.IndexAny(label, "°º℃℉"); i > 0 {
+		if u, known := canonicalUnit(label[i:]); known {
+			return strings.TrimSpace(label[:i]), u
+		}
+	}
+	return label, ""
+}
+
+// unitCell reads a cell of a unit row: "V", "[V]", "(degC)", "°F".
+func unitCell(cell string) (unit string, known bool) {
+	c := strings.TrimSpace(cell)
+	if len(c) > 2 && strings.ContainsRune("[(<{", rune(c[0])) {
+		inside, known := canonicalUnit(c[1 : len(c)-1])
+		return inside, known || c[0] == '['
+	}
+	return canonicalUnit(c)
+}
+
+// unitOption turns the value of --input-unit or --temp-unit into a unit.
+func unitOption(written string) string {
+	u, _ := canonicalUnit(written)
+	return u
+}
