@@ -32,6 +32,8 @@ type Gains struct {
 	Reasons      []string `json:"reasons"`
 	Cautions     []string `json:"cautions"`
 
+	Entry []Entry `json:"entry,omitempty"` // the numbers as entered at the controller
+
 	Candidates []Candidate `json:"candidates,omitempty"` // the table of everything tried
 }
 
