@@ -96,8 +96,11 @@ func digitsFor(v, half float64) int {
 }
 
 func join(number, unit string) string {
-	if unit == "" {
+	switch unit {
+	case "":
 		return number
+	case "°":
+		return number + unit
 	}
 	return number + " " + Unit(unit)
 }

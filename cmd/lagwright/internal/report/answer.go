@@ -42,18 +42,8 @@ func gainsAnswer(b *Bundle) answer {
 		Enter:      settings(g),
 		Reasons:    g.Reasons,
 	}
-	asked := requirementWords(g.Requirement, g.Units)
-	if g.Meets {
-		a.Headline = "Enter these gains"
-		a.Verdict = &item{"good", "They meet the requirement: " + asked + "."}
-	} else {
-		a.Headline = "No gains meet the requirement; these come nearest"
-		if g.Rule != "synthesis" {
-			a.Headline = "These gains do not meet the requirement"
-		}
-		a.Verdict = &item{"bad", "They do not meet the requirement: " + asked + "."}
-	}
-	a.Sure = append(a.Sure, sharePhrase(g))
+	a.Headline, a.Verdict = gainsVerdict(g, b.Replay)
+	a.Sure = append(a.Sure, "Asked: "+requirementWords(g.Requirement, g.Units)+".", sharePhrase(g))
 	if b.Replay != nil {
 		a.Sure = append(a.Sure, replayPhrase(b.Replay))
 	}
@@ -62,6 +52,31 @@ func gainsAnswer(b *Bundle) answer {
 	}
 	a.Sure = append(a.Sure, "Begin with the output limited and a small setpoint step. The cautions below come first.")
 	return a
+}
+
+// gainsVerdict weighs the plausible plants first, then the past runs.
+func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *item) {
+	switch {
+	case !g.Meets && g.Rule == "synthesis":
+		return "No gains meet the requirement; these come nearest", &item{"bad", "They do not meet the requirement."}
+	case !g.Meets:
+		return "These gains do not meet the requirement", &item{"bad", "They do not meet the requirement."}
+	case r != nil && !reproduced(r):
+		return "These gains are not proven on past runs", &item{"bad", "They meet the requirement on the plausible plants, but the model does not reproduce every run logged under known gains."}
+	case r != nil && r.Summary.Runs > 0 && !r.Summary.Meets:
+		return "These gains do not hold on every past run", &item{"bad", "They meet the requirement on the plausible plants, but not on every replayed run."}
+	}
+	return "Enter these gains", &item{"good", "They meet the requirement."}
+}
+
+// reproduced tells whether every back-test gave the log back.
+func reproduced(r *validate.Replay) bool {
+	for i := range r.Runs {
+		if t := r.Runs[i].BackTest; t != nil && !t.Reproduced {
+			return false
+		}
+	}
+	return true
 }
 
 func sharePhrase(g *tune.Gains) string {
@@ -97,15 +112,14 @@ func replayAnswer(b *Bundle) answer {
 	a := answer{
 		EnterTitle: fmt.Sprintf("%s controller, %s form, as replayed", strings.ToUpper(r.Gains.Controller), r.Gains.Form),
 		Enter:      settings(&r.Gains),
-		Sure:       []string{replayPhrase(r)},
+		Sure:       []string{"Asked: " + requirementWords(r.Requirement, r.Gains.Units) + ".", replayPhrase(r)},
 	}
-	asked := requirementWords(r.Requirement, r.Gains.Units)
 	if r.Summary.Meets {
 		a.Headline = "These gains would have met the requirement"
-		a.Verdict = &item{"good", "Requirement: " + asked + "."}
+		a.Verdict = &item{"good", "The requirement holds on every run."}
 	} else {
 		a.Headline = "These gains would not have met the requirement"
-		a.Verdict = &item{"bad", "Requirement: " + asked + "."}
+		a.Verdict = &item{"bad", "The requirement does not hold on every run."}
 	}
 	return a
 }

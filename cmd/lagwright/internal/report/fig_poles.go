@@ -12,12 +12,11 @@ import (
 func PoleFigure(ps *Poles) *Figure {
 	f := &Figure{Name: "poles"}
 	p := &panel{
-		heading: "Dominant closed-loop poles",
+		heading: "Poles: imaginary part, rad/s",
 		x:       &axis{label: "Real part", unit: "1/s", grace: 0.08, hold: [2]*float64{new(float64)}},
 		y:       axis{label: "Imaginary part", unit: "rad/s", grace: 0.08, hold: [2]*float64{new(float64)}},
 		height:  220,
 	}
-	p.heading += ", imaginary part in rad/s"
 	if ps.Decay > 0 || ps.Damping > 0 {
 		p.marks = append(p.marks, ps.region())
 	}

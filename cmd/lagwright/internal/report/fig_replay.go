@@ -32,13 +32,25 @@ func ReplayFigure(r *validate.RunReplay, g *tune.Gains, q tune.Requirement) *Fig
 		trace{name: "proposed, median", x: t.T, y: gaps(t.MedianIn), ink: inkModel, width: 1.8, hold: true},
 	}
 	for _, l := range []*float64{g.Limits.Min, g.Limits.Max} {
-		if l != nil {
+		if l != nil && nearby(*l, t.LowIn, t.HighIn, t.LoggedIn) {
 			input.marks = append(input.marks, rule{at: *l, ink: inkLimit, name: "output limits"})
 		}
 	}
 	f := &Figure{Name: "replay", panels: []*panel{temp, input}, Finding: replayFinding(r, g)}
 	f.Alt = "Line charts of temperature and input over time, logged against proposed. " + f.Finding
 	return f
+}
+
+// nearby tells whether a limit is near enough to what it limits to be drawn
+// without flattening it: within half the signals' range of them.
+func nearby(limit float64, signals ...[]*float64) bool {
+	b := nowhere
+	for _, s := range signals {
+		v := gaps(s)
+		b = b.join(extentOf(v, v))
+	}
+	grace := 0.5 * (b.x1 - b.x0)
+	return limit > b.x0-grace && limit < b.x1+grace
 }
 
 func replayTime(r *validate.RunReplay) *axis {

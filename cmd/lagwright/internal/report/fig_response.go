@@ -25,11 +25,12 @@ func StepFigure(r *Response, g *tune.Gains) *Figure {
 			temp.marks = append([]mark{zone{name: fmt.Sprintf("not allowed after %s", format.Duration(*q.Settling)), box: b, ink: inkLimit}}, temp.marks...)
 		}
 		if *q.Settling < end {
-			temp.marks = append(temp.marks, rule{label: "settled by " + format.Duration(*q.Settling), at: *q.Settling, vertical: true, ink: inkLimit})
+			temp.marks = append(temp.marks, rule{label: "settled by " + format.Duration(*q.Settling), at: *q.Settling, vertical: true, low: true, ink: inkLimit})
 		}
 	}
 	if q.Overshoot != nil {
 		top := r.Size * (1 + *q.Overshoot/100)
+		temp.y.grace = 0.1 // room for the label
 		temp.marks = append(temp.marks, rule{label: format.Short(*q.Overshoot, 3) + " % overshoot", at: top, ink: inkLimit})
 	} else {
 		temp.marks = append(temp.marks, setpoint)
@@ -82,18 +83,18 @@ func LoadFigure(r *Response, g *tune.Gains) *Figure {
 
 func responsePanels(r *Response, g *tune.Gains, label string) (temp, input *panel) {
 	x := elapsed("Time after the step", span(r.T))
-	temp = &panel{x: x, y: yAxis(label, kelvin(g.Units.Temperature)), height: 170, marks: ensemble(r.T, r.Temperature, false)}
-	input = &panel{x: x, y: yAxis("Input change", g.Units.Input), height: 80, marks: ensemble(r.T, r.Input, true)}
+	temp = &panel{x: x, y: yAxis(label, kelvin(g.Units.Temperature)), height: 170, marks: ensemble(r.T, r.Temperature)}
+	input = &panel{x: x, y: yAxis("Input change", g.Units.Input), height: 80, marks: ensemble(r.T, r.Input)}
 	return temp, input
 }
 
 // ensemble are the marks of one signal over the plausible plants.
-func ensemble(t []float64, e Ensemble, hold bool) []mark {
+func ensemble(t []float64, e Ensemble) []mark {
 	var m []mark
 	if len(e.Low) == len(t) && len(e.High) == len(t) {
-		m = append(m, band{name: "plausible plants", x: t, low: e.Low, high: e.High, ink: inkModel, hold: hold})
+		m = append(m, band{name: "plausible plants", x: t, low: e.Low, high: e.High, ink: inkModel})
 	}
-	return append(m, trace{name: "best fit", x: t, y: e.Best, ink: inkModel, width: 1.8, hold: hold})
+	return append(m, trace{name: "best fit", x: t, y: e.Best, ink: inkModel, width: 1.8})
 }
 
 // settlingBand is the half-width of the band a step settles into, as a share

@@ -14,7 +14,7 @@ func SensitivityFigure(s *Sensitivity, g *tune.Gains) *Figure {
 		heading: "Sensitivity |S|",
 		x:       &axis{label: "Frequency", unit: "rad/s", log: true},
 		y:       yAxis("Sensitivity |S|", ""), height: 160,
-		marks: ensemble(s.W, s.S, false),
+		marks: ensemble(s.W, s.S),
 	}
 	p.y.hold[0] = new(float64)
 	p.marks = append(p.marks, rule{at: 1, ink: inkMuted, solid: true})

@@ -169,14 +169,14 @@ func (f *Figure) leftMargin(rows [][]*panel, cell vg.Length) vg.Length {
 	for _, row := range rows {
 		for _, p := range row {
 			for _, m := range p.y.marks(p.yTicks()) {
-				w = max(w, tickLetters.width(m.label))
+				w = max(w, tickLetters.room(m.label))
 			}
 		}
 	}
 	return min(w+tickGap, cell/2)
 }
 
-func (p *panel) yTicks() int { return max(2, int(p.height/32)) }
+func (p *panel) yTicks() int { return max(3, int(p.height/32)) }
 
 func (f *Figure) drawPanel(t *painter, p *panel, cell vg.Rectangle, left vg.Length) {
 	keys, lines := p.header(cell.Max.X - cell.Min.X)
@@ -236,7 +236,7 @@ func (p *pane) grid(of *panel, below bool) {
 
 // tickBelow writes a label under its tick, inside the drawing.
 func (p *pane) tickBelow(m tick) {
-	x, half := p.px(m.at), tickLetters.width(m.label)/2
+	x, half := p.px(m.at), tickLetters.room(m.label)/2
 	x = min(x, p.rect.Max.X+marginSide-half)
 	p.text(tickLetters, m.label, vg.Point{X: x, Y: p.rect.Min.Y - lineHeight + 3}, alignMiddle)
 }

@@ -1,6 +1,10 @@
 package report
 
-import "gonum.org/v1/plot/vg"
+import (
+	"slices"
+
+	"gonum.org/v1/plot/vg"
+)
 
 // keyEntry explains one mark in the line above a panel.
 type keyEntry struct {
@@ -16,6 +20,7 @@ const (
 	sampleDash
 	sampleBand
 	sampleDot
+	sampleCross
 )
 
 // placedKey is a key entry at its place in the header: x from the panel's
@@ -29,23 +34,33 @@ type placedKey struct {
 // header places the panel's key beside its heading, and below where the
 // width asks for it. Entries of one name are told once.
 func (p *panel) header(width vg.Length) (keys []placedKey, lines int) {
-	x, line := headingLetters.width(p.title())+20, 0
-	seen := map[string]bool{}
-	for _, m := range p.marks {
-		for _, k := range m.key() {
-			if seen[k.name] || k.name == "" {
-				continue
-			}
-			seen[k.name] = true
-			w := sampleWide + 4 + keyLetters.width(k.name)
-			if x+w > width && x > 0 {
-				x, line = 0, line+1
-			}
-			keys = append(keys, placedKey{k, x, line})
-			x += w + 14
+	x, line := headingLetters.room(p.title())+10, 0
+	for _, k := range p.entries() {
+		w := sampleWide + 4 + keyLetters.room(k.name)
+		if x+w > width && x > 0 {
+			x, line = 0, line+1
 		}
+		keys = append(keys, placedKey{k, x, line})
+		x += w + 12
 	}
 	return keys, line + 1
+}
+
+// entries of the key, each name once. A single line explains itself by the
+// heading.
+func (p *panel) entries() []keyEntry {
+	var out []keyEntry
+	for _, m := range p.marks {
+		for _, k := range m.key() {
+			if k.name != "" && !slices.ContainsFunc(out, func(o keyEntry) bool { return o.name == k.name }) {
+				out = append(out, k)
+			}
+		}
+	}
+	if len(out) == 1 && out[0].sample == sampleLine {
+		return nil
+	}
+	return out
 }
 
 // keySample draws a sample with its name; at is the start of the text's base.
@@ -61,6 +76,8 @@ func (t *painter) keySample(k keyEntry, at vg.Point) {
 		t.fill(k.ink.faint(), vg.Rectangle{Min: from.Add(vg.Point{Y: -5}), Max: to.Add(vg.Point{Y: 5})}.Path())
 	case sampleDot:
 		t.dot(k.ink, vg.Point{X: at.X + sampleWide/2, Y: mid}, 3)
+	case sampleCross:
+		t.cross(stroke{ink: k.ink, width: 1.5}, vg.Point{X: at.X + sampleWide/2, Y: mid}, 4)
 	}
 	t.text(keyLetters, k.name, vg.Point{X: at.X + sampleWide + 4, Y: at.Y}, alignLeft)
 }

@@ -114,12 +114,14 @@ type rule struct {
 	label    string // beside the line
 	at       float64
 	vertical bool
+	low      bool // the label stands at the foot of an upright line
 	ink      ink
 	solid    bool
+	loose    bool // the axis does not stretch to show it
 }
 
 func (m rule) extent() box {
-	if m.vertical {
+	if m.vertical || m.loose {
 		return nowhere
 	}
 	return box{nowhere.x0, nowhere.x1, m.at, m.at}
@@ -147,6 +149,9 @@ func (m rule) draw(p *pane) {
 		return
 	}
 	p.line(s, from, to)
+	if m.vertical && m.low {
+		to.Y = from.Y + 18
+	}
 	if m.vertical {
 		p.sideLabel(letters, m.label, to)
 		return
@@ -165,7 +170,7 @@ func (p *pane) clearOf(y vg.Length) vg.Length {
 // sideLabel writes beside the top of an upright line, on the side with room.
 func (p *pane) sideLabel(l lettering, s string, top vg.Point) {
 	at := vg.Point{X: top.X + 4, Y: top.Y - 11}
-	if at.X+l.width(s) > p.rect.Max.X {
+	if at.X+l.room(s) > p.rect.Max.X {
 		at.X = top.X - 4
 		p.text(l, s, at, alignRight)
 		return
@@ -190,7 +195,7 @@ func (m zone) draw(p *pane) {
 	if x0 >= x1 || y0 >= y1 {
 		return
 	}
-	p.area(m.ink.faint(), []vg.Point{
+	p.area(m.ink.fainter(), []vg.Point{
 		{X: p.px(x0), Y: p.py(y0)}, {X: p.px(x1), Y: p.py(y0)},
 		{X: p.px(x1), Y: p.py(y1)}, {X: p.px(x0), Y: p.py(y1)},
 	})
@@ -206,8 +211,13 @@ type dots struct {
 	cross  bool
 }
 
-func (m dots) extent() box     { return extentOf(m.x, m.y) }
-func (m dots) key() []keyEntry { return []keyEntry{{m.name, m.ink, sampleDot}} }
+func (m dots) extent() box { return extentOf(m.x, m.y) }
+func (m dots) key() []keyEntry {
+	if m.cross {
+		return []keyEntry{{m.name, m.ink, sampleCross}}
+	}
+	return []keyEntry{{m.name, m.ink, sampleDot}}
+}
 
 func (m dots) draw(p *pane) {
 	for i := range m.x {

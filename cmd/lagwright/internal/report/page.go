@@ -77,6 +77,7 @@ type table struct {
 
 type cell struct {
 	Text   string
+	Small  string // a second line
 	Kind   string // "num", "good", "bad", "code" or ""
 	Header bool
 }
@@ -165,7 +166,6 @@ func listOf(items []item) *list {
 func num(s string) cell  { return cell{Text: s, Kind: "num"} }
 func text(s string) cell { return cell{Text: s} }
 func head(s string) cell { return cell{Text: s, Header: true} }
-func code(s string) cell { return cell{Text: s, Kind: "code"} }
 
 // yesNo is a verdict in a table.
 func yesNo(ok bool) cell {

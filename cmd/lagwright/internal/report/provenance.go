@@ -29,12 +29,12 @@ func provenance(b *Bundle) *section {
 }
 
 // source is a file behind the page, whichever part names it.
-type source struct{ file, use, rows, kept, start, columns, sha string }
+type source struct{ file, sha, use, rows, kept, start, columns string }
 
 func sourceTable(b *Bundle) *table {
 	t := &table{
-		Caption: "Files read",
-		Head:    []string{"File", "Used for", "Rows", "Kept", "Start", "Columns", "SHA-256"},
+		Caption: "Files read, each with its SHA-256",
+		Head:    []string{"File", "Used for", "Rows", "Kept", "Start", "Columns"},
 	}
 	all := sources(b)
 	for i, s := range all {
@@ -42,7 +42,7 @@ func sourceTable(b *Bundle) *table {
 			t.More = len(all) - longestList
 			break
 		}
-		t.Rows = append(t.Rows, []cell{head(s.file), text(s.use), num(s.rows), num(s.kept), text(s.start), text(s.columns), code(s.sha)})
+		t.Rows = append(t.Rows, []cell{{Text: s.file, Small: s.sha, Kind: "code", Header: true}, text(s.use), num(s.rows), num(s.kept), text(s.start), text(s.columns)})
 	}
 	return t
 }
@@ -68,7 +68,7 @@ func sources(b *Bundle) []source {
 			if r.Start != nil {
 				start = *r.Start
 			}
-			out = append(out, source{runName(r), "replay", format.Thousands(r.Rows), "-", start, "-", r.SHA256})
+			out = append(out, source{runName(r), r.SHA256, "replay", format.Thousands(r.Rows), "-", start, "-"})
 		}
 	}
 	return out
@@ -85,7 +85,7 @@ func cardSource(s fit.CardSource) source {
 	if s.Start != nil {
 		start = *s.Start
 	}
-	return source{s.File, "model", format.Thousands(s.Rows), keptWords(s.FromS, s.ToS), start, strings.Join(names, ", "), s.SHA256}
+	return source{s.File, s.SHA256, "model", format.Thousands(s.Rows), keptWords(s.FromS, s.ToS), start, strings.Join(names, ", ")}
 }
 
 func runSource(r *data.Run) source {
@@ -94,8 +94,8 @@ func runSource(r *data.Run) source {
 	if !r.Start.IsZero() {
 		start = r.Start.Format("2006-01-02T15:04:05Z07:00")
 	}
-	return source{runTitle(r.Source), "log", format.Thousands(r.Source.Rows), keptWords(r.Source.FromS, r.Source.ToS), start,
-		fmt.Sprintf("time: %s, input: %s, temperature: %s", format.Text(c.Time), format.Text(c.Input), format.Text(c.Temperature)), r.Source.SHA256}
+	return source{runTitle(r.Source), r.Source.SHA256, "log", format.Thousands(r.Source.Rows), keptWords(r.Source.FromS, r.Source.ToS), start,
+		fmt.Sprintf("time: %s, input: %s, temperature: %s", format.Text(c.Time), format.Text(c.Input), format.Text(c.Temperature))}
 }
 
 func keptWords(from, to float64) string {

@@ -63,9 +63,8 @@ func backTests(r *validate.Replay) []item {
 func replayTable(r *validate.Replay) *table {
 	unit := kelvin(r.Gains.Units.Temperature)
 	t := &table{
-		Caption: "Run by run: as logged, and as proposed (median, and the band over the plausible plants)",
-		Head: []string{"Run", "Largest deviation, logged", "Proposed", "IAE, logged", "Proposed", "Peak temperature, logged", "Proposed",
-			"Peak input, logged", "Proposed", "Holds on", "Meets"},
+		Caption: "Run by run: logged → proposed (median; below it the band over the plausible plants)",
+		Head:    []string{"Run", "Largest deviation", "IAE", "Peak temperature", "Peak input", "Holds on", "Meets"},
 	}
 	for i := range r.Runs {
 		if i == longestList {
@@ -83,18 +82,20 @@ func replayTable(r *validate.Replay) *table {
 			{r.Gains.Units.Temperature, func(m *validate.RunMetrics) *float64 { return m.PeakTemp }},
 			{r.Gains.Units.Input, func(m *validate.RunMetrics) *float64 { return m.PeakInput }},
 		} {
-			row = append(row, num(format.Optional(f.pick(&run.Logged), f.unit, 3)), num(banded(&run.Proposed, f.pick, f.unit)))
+			row = append(row, beforeAfter(run, f.pick, f.unit))
 		}
 		t.Rows = append(t.Rows, append(row, num(format.Percent(run.Probability)), yesNo(run.Meets)))
 	}
 	return t
 }
 
-// banded writes a median with its band: "3.1 K (2.8 to 3.6)".
-func banded(b *validate.BandMetrics, pick func(*validate.RunMetrics) *float64, unit string) string {
-	s := format.Optional(pick(&b.Median), unit, 3)
-	if l, h := pick(&b.Low), pick(&b.High); l != nil && h != nil && *l != *h {
-		s += " (" + format.Short(*l, 3) + " to " + format.Short(*h, 3) + ")"
+// beforeAfter writes a figure as logged and as proposed, "3.6 → 1.2 K", and
+// the band below.
+func beforeAfter(r *validate.RunReplay, pick func(*validate.RunMetrics) *float64, unit string) cell {
+	p := &r.Proposed
+	c := num(format.Optional(pick(&r.Logged), "", 3) + " → " + format.Optional(pick(&p.Median), unit, 3))
+	if l, h := pick(&p.Low), pick(&p.High); l != nil && h != nil && *l != *h {
+		c.Small = format.Short(*l, 3) + " to " + format.Short(*h, 3)
 	}
-	return s
+	return c
 }

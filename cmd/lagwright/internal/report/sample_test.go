@@ -8,6 +8,7 @@ import (
 
 	"lagwright/data"
 	"lagwright/fit"
+	"lagwright/ident"
 	"lagwright/tune"
 	"lagwright/validate"
 )
@@ -71,7 +72,7 @@ func sampleRun(n int) (*data.Run, *Curves) {
 	for k := range 40 {
 		c.ACF = append(c.ACF, 0.04*math.Sin(float64(k)*1.7)*math.Exp(-float64(k)/30))
 	}
-	c.Bumps = []Bump{{Row: 120, Time: up, From: 3, To: 4.5}, {Row: 828, Time: down, From: 4.5, To: 3}}
+	c.Bumps = []ident.Bump{{Row: 120, Time: up, From: 3, To: 4.5}, {Row: 828, Time: down, From: 4.5, To: 3}}
 	return r, c
 }
 

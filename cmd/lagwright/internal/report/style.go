@@ -50,6 +50,12 @@ func (k ink) faint() ink {
 	return k
 }
 
+// fainter is a wash for large regions.
+func (k ink) fainter() ink {
+	k.alpha = 24
+	return k
+}
+
 // paletteCSS declares the palette as custom properties: light, dark where the
 // reader's system is dark, and light again on paper.
 func paletteCSS(root string) string {
@@ -101,7 +107,11 @@ func (l lettering) face() font.Face {
 	return font.DefaultCache.Lookup(f, l.size)
 }
 
-func (l lettering) width(s string) vg.Length {
+// room is the width to leave for a text. A reader without the fonts measured
+// here sees wider ones; DejaVu Sans, the usual last resort, is wider by up to
+// this factor.
+func (l lettering) room(s string) vg.Length {
+	const slack = 1.2
 	f := l.face()
-	return f.Width(s)
+	return slack * f.Width(s)
 }

@@ -1,6 +1,7 @@
 package report
 
 import (
+	"cmp"
 	"fmt"
 	"maps"
 	"slices"
@@ -75,46 +76,57 @@ func runTitle(s data.Source) string {
 func remarksOf(runs []*data.Run) []item {
 	var out []item
 	for i, r := range runs {
-		add := func(form string, a ...any) {
-			text := fmt.Sprintf(form, a...)
+		for _, it := range remarks(r) {
 			if len(runs) > 1 {
-				text = runTitle(runs[i].Source) + ": " + text
+				it.Text = runTitle(runs[i].Source) + ": " + it.Text
 			}
-			out = append(out, item{"warn", text})
-		}
-		q := r.Quality
-		for _, kind := range slices.Sorted(maps.Keys(q.Missing)) {
-			add("%s set aside: %s.", format.Count(q.Missing[kind], "cell", "cells"), kind)
-		}
-		for _, why := range slices.Sorted(maps.Keys(q.Dropped)) {
-			add("%s dropped: %s.", format.Count(q.Dropped[why], "row", "rows"), why)
-		}
-		if n := len(q.Gaps); n > 0 {
-			longest := slices.MaxFunc(q.Gaps, func(a, b data.Gap) int { return int(sign(a.Duration - b.Duration)) })
-			add("%s in the recording, the longest %s.", format.Count(n, "gap", "gaps"), format.Duration(longest.Duration))
-		}
-		if n := len(q.Spikes); n > 0 {
-			add("%s of temperature, one row each.", format.Count(n, "isolated spike", "isolated spikes"))
-		}
-		for _, n := range q.Notes {
-			if n.Row > 0 {
-				add("%s (row %d)", n.Text, n.Row)
-			} else {
-				add("%s", n.Text)
-			}
+			out = append(out, it)
 		}
 	}
 	return out
 }
 
-func sign(v float64) float64 {
-	switch {
-	case v > 0:
-		return 1
-	case v < 0:
-		return -1
+// manyRows is the share of a log's rows above which what was set aside or
+// dropped is a warning and no longer a remark.
+const manyRows = 0.01
+
+func remarks(r *data.Run) []item {
+	var out []item
+	add := func(warn bool, form string, a ...any) {
+		sign := ""
+		if warn {
+			sign = "warn"
+		}
+		out = append(out, item{sign, fmt.Sprintf(form, a...)})
 	}
-	return 0
+	q := r.Quality
+	many := func(n int) bool { return float64(n) > manyRows*float64(max(q.RowsRead, len(r.T))) }
+	for _, kind := range slices.Sorted(maps.Keys(q.Missing)) {
+		n := q.Missing[kind]
+		add(many(n), "%s set aside: %s.", format.Count(n, "cell", "cells"), kind)
+	}
+	for _, why := range slices.Sorted(maps.Keys(q.Dropped)) {
+		n := q.Dropped[why]
+		add(many(n), "%s dropped: %s.", format.Count(n, "row", "rows"), why)
+	}
+	switch n := len(q.Gaps); {
+	case n == 1:
+		add(true, "1 gap of %s in the recording.", format.Duration(q.Gaps[0].Duration))
+	case n > 1:
+		longest := slices.MaxFunc(q.Gaps, func(a, b data.Gap) int { return cmp.Compare(a.Duration, b.Duration) })
+		add(true, "%d gaps in the recording, the longest %s.", n, format.Duration(longest.Duration))
+	}
+	if n := len(q.Spikes); n > 0 {
+		add(many(n), "%s of temperature.", format.Count(n, "isolated spike", "isolated spikes"))
+	}
+	for _, n := range q.Notes {
+		if n.Row > 0 {
+			add(true, "%s (line %d)", n.Text, n.Row)
+		} else {
+			add(true, "%s", n.Text)
+		}
+	}
+	return out
 }
 
 // recordingTable has one row for each run.

@@ -2,7 +2,6 @@ package report
 
 import (
 	"fmt"
-	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/tune"
@@ -107,7 +106,7 @@ func candidateTable(g *tune.Gains) *table {
 	kc := g.Units.Input + "/" + kelvin(g.Units.Temperature)
 	t := &table{
 		Caption: "Everything tried; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
-		Head:    []string{"Rule", "Kc", "Ti", "Td", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets", "Note"},
+		Head:    []string{"Rule", "Kc", "Ti", "Td", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets"},
 	}
 	for i, c := range g.Candidates {
 		if i == longestList {
@@ -126,9 +125,9 @@ func candidateTable(g *tune.Gains) *table {
 			name += " (chosen)"
 		}
 		t.Rows = append(t.Rows, []cell{
-			head(strings.TrimSpace(name)), num(format.Amount(c.Kc, kc, 3)), num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
+			cell{Text: name, Small: c.Note, Header: true}, num(format.Amount(c.Kc, kc, 3)), num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
 			num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
-			num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets), text(c.Note),
+			num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets),
 		})
 	}
 	return t
