@@ -22,9 +22,11 @@ import (
 type Controller struct {
 	law
 	step  float64
+	half  float64 // Kc/Ti times half a step
 	decay float64 // of the measurement filter over a step
 	mean  float64 // weight of a ramp in the filter, see filter
 
+	limits          bool    // whether any of these binds
 	low, high, slew float64 // slew per step
 	quantum         float64 // resolution of the output, 0 when none
 
@@ -49,11 +51,11 @@ func NewController(g *Gains, step float64) (*Controller, error) {
 	k := newController(c, step)
 	k.bias = g.Bias
 	k.limit(g.Limits)
-	return k, nil
+	return &k, nil
 }
 
-func newController(c law, step float64) *Controller {
-	k := &Controller{law: c, step: step, low: math.Inf(-1), high: math.Inf(1), slew: math.Inf(1)}
+func newController(c law, step float64) Controller {
+	k := Controller{law: c, step: step, half: c.ki() * step / 2, low: math.Inf(-1), high: math.Inf(1), slew: math.Inf(1)}
 	if c.tf > 0 {
 		x := step / c.tf
 		k.decay = math.Exp(-x)
@@ -65,6 +67,7 @@ func newController(c law, step float64) *Controller {
 }
 
 func (c *Controller) limit(l Limits) {
+	c.limits = l != Limits{}
 	if l.Min != nil {
 		c.low = *l.Min
 	}
@@ -93,15 +96,19 @@ func (c *Controller) Start(r, y, u float64) {
 
 // Next runs one scan and returns the output to hold until the next one.
 func (c *Controller) Next(r, y float64) float64 {
-	c.filter(y)
-	e := r - c.yf
-	add := 0.0
-	if c.integral() {
-		add = c.ki() * c.step * (c.e + e) / 2
+	if c.tf > 0 || c.td > 0 {
+		c.filter(y)
+	} else {
+		c.yf = y
 	}
+	e := r - c.yf
+	add := c.half * (c.e + e)
 	c.e = e
 	want := c.kc*(c.b*r-c.yf-c.td*c.slope) + c.i
-	u := c.limited(want + add)
+	u := want + add
+	if c.limits {
+		u = c.limited(u)
+	}
 	if push := want + add - u; push*add <= 0 || c.quantum > 0 && math.Abs(push) <= c.quantum {
 		c.i += add
 	} else {
@@ -128,15 +135,14 @@ func (c *Controller) filter(y float64) {
 // temperature y, limits aside.
 func (c *Controller) affine(r float64) (a, b float64) {
 	rest := c.decay*c.yf + (1-c.decay-c.mean)*c.y // yf = rest + mean·y
-	half := c.ki() * c.step / 2
-	var slope0, slope1 float64 // dyf/dt = slope0 + slope1·y
+	var slope0, slope1 float64                    // dyf/dt = slope0 + slope1·y
 	if c.tf > 0 {
 		slope0, slope1 = -rest/c.tf, (1-c.mean)/c.tf
 	} else {
 		slope0, slope1 = -c.y/c.step, 1/c.step
 	}
-	a = c.kc*(c.b*r-rest-c.td*slope0) + c.i + half*(c.e+r-rest)
-	b = c.kc*(c.mean+c.td*slope1) + half*c.mean
+	a = c.kc*(c.b*r-rest-c.td*slope0) + c.i + c.half*(c.e+r-rest)
+	b = c.kc*(c.mean+c.td*slope1) + c.half*c.mean
 	return a, b
 }
 

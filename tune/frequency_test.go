@@ -50,11 +50,11 @@ func TestExactStepFigures(t *testing.T) {
 	c := law{kc: 2, ti: 4, b: 1}
 	l := newOpenLoop(p, c, 0)
 	plan := l.plan(0.02)
-	s, err := newLoopSim(p, c, 0, plan.step)
+	s, err := newLoopSim(p, 0, plan.step)
 	if err != nil {
 		t.Fatal(err)
 	}
-	f := setpointStep(s, p, c, 1, 0.02, plan)
+	f := setpointStep(s.under(c, Limits{}), p, c, 1, 0.02, plan)
 	near(t, "overshoot", f.overshoot, 0.0405, 5e-5)
 	near(t, "peak time", f.peakTime, 4.74, 0.005)
 	near(t, "settling", f.settling, 6.06, 0.005)
@@ -64,10 +64,10 @@ func TestExactStepFigures(t *testing.T) {
 	c = law{kc: 0.5, ti: 8, b: 1}
 	l = newOpenLoop(p, c, 0)
 	plan = l.plan(0.02)
-	if s, err = newLoopSim(p, c, 0, plan.step); err != nil {
+	if s, err = newLoopSim(p, 0, plan.step); err != nil {
 		t.Fatal(err)
 	}
-	f = loadStep(s, p, c, 1, plan)
+	f = loadStep(s.under(c, Limits{}), p, c, 1, plan)
 	near(t, "load peak", f.peak, 1.961, 0.0005)
 	near(t, "load peak time", f.peakTime, 4.03, 0.005)
 	near(t, "load IAE", f.iae, 16, 0.016)

@@ -17,15 +17,16 @@ import (
 // loopSim runs one plant under one controller.
 type loopSim struct {
 	plant     *PlantStepper
-	control   *Controller
+	control   Controller
 	step      float64 // of the plant, s
 	every     int     // plant steps per scan
 	lead      float64 // time of the first sample, s
 	immediate bool    // the sample sees the output computed from it
 }
 
-// newLoopSim prepares a run with plant steps of about step seconds.
-func newLoopSim(p ident.Plant, c law, scan, step float64) (*loopSim, error) {
+// newLoopSim prepares a plant for runs with steps of about step seconds,
+// under a controller that scans every scan seconds (0: continuous).
+func newLoopSim(p ident.Plant, scan, step float64) (*loopSim, error) {
 	s := &loopSim{step: step, every: 1}
 	if scan > 0 {
 		s.every = max(1, int(math.Ceil(scan/step-1e-9)))
@@ -35,11 +36,15 @@ func newLoopSim(p ident.Plant, c law, scan, step float64) (*loopSim, error) {
 		s.immediate = p.DeadTime < s.lead*(1-1e-9)
 	}
 	var err error
-	if s.plant, err = newPlantStepper(p, s.step, s.lead); err != nil {
-		return nil, err
-	}
+	s.plant, err = newPlantStepper(p, s.step, s.lead)
+	return s, err
+}
+
+// under puts a controller in charge, its limits counted from rest.
+func (s *loopSim) under(c law, l Limits) *loopSim {
 	s.control = newController(c, s.step*float64(s.every))
-	return s, nil
+	s.control.limit(l)
+	return s
 }
 
 // A sample is one instant of a run.
@@ -74,7 +79,7 @@ func (s *loopSim) run(r, d float64, seen func(sample) bool) {
 // together moves the plant to the next sample where the output acts on the
 // sample it is computed from: y = free + g·u and u = a − b·y.
 func (s *loopSim) together(r, d, held float64) (y, u float64) {
-	p, c := s.plant, s.control
+	p, c := s.plant, &s.control
 	n := p.n
 	free := p.old[n-1]*held + p.new[n-1]*d
 	for j, f := range p.phi[(n-1)*n:] {

@@ -22,10 +22,6 @@ type stepFigures struct {
 // maxSamples bounds a run that does not come to rest.
 const maxSamples = 400_000
 
-// rest is the remaining deviation, as a fraction of the largest so far, at
-// which a run has ended.
-const rest = 2e-5
-
 // watch accumulates stepFigures from the samples of a run. Between samples
 // the temperature is a straight line for settling and area; the peak is that
 // of the parabola through three samples.
@@ -43,6 +39,7 @@ type watch struct {
 	outside      float64 // last time outside the band
 	stirring     float64 // last time not at rest
 	horizon      float64
+	rest         float64 // remaining deviation, a fraction of the largest so far, at which a run has ended
 }
 
 func (w *watch) see(s sample) bool {
@@ -77,7 +74,7 @@ func (w *watch) note(s sample) {
 	w.top(s.y, s.t)
 	w.inputHigh = max(w.inputHigh, s.u)
 	w.inputLow = min(w.inputLow, s.u)
-	still := rest * max(w.largest, math.Abs(w.target))
+	still := w.rest * max(w.largest, math.Abs(w.target))
 	if math.Abs(s.y-w.target) > still || math.Abs(s.u-w.uEnd)*w.scale > still {
 		w.stirring = s.t
 	}
@@ -122,14 +119,20 @@ func (w *watch) parabola(a, b, c sample) {
 	w.top((yb-(ya-yc)*shift/4)*w.direction, b.t+shift*h)
 }
 
-// A runPlan is how long and how finely a stable loop is simulated.
+// A runPlan is how long (s) and how finely a stable loop is simulated.
 type runPlan struct {
 	step, horizon, quiet float64
+	rest                 float64 // see watch
 }
 
 // plan returns the plan for a stable loop; fine is the step times the highest
 // angular frequency that matters.
 func (l *openLoop) plan(fine float64) runPlan {
+	return l.planAt(l.fastest(1/l.spread()), fine)
+}
+
+// spread is the sum of the loop's times, s.
+func (l *openLoop) spread() float64 {
 	spread := l.delay
 	for _, t := range l.lags {
 		spread += t
@@ -137,11 +140,17 @@ func (l *openLoop) plan(fine float64) runPlan {
 	if l.integrators > 0 {
 		spread += l.q1
 	}
-	w := l.fastest(1 / spread)
+	return spread
+}
+
+// planAt is plan for a known highest frequency w, rad/s.
+func (l *openLoop) planAt(w, fine float64) runPlan {
+	spread := l.spread()
 	return runPlan{
 		step:    fine / w,
 		quiet:   l.delay + min(spread, 20/w),
 		horizon: 400 * max(spread, 1/w),
+		rest:    2e-5,
 	}
 }
 
@@ -209,7 +218,7 @@ func loadStep(s *loopSim, p ident.Plant, c law, d float64, plan runPlan) stepFig
 }
 
 func newWatch(p ident.Plant, r, target, uEnd float64, plan runPlan) *watch {
-	w := &watch{r: r, target: target, uEnd: uEnd, quiet: plan.quiet, horizon: plan.horizon}
+	w := &watch{r: r, target: target, uEnd: uEnd, quiet: plan.quiet, horizon: plan.horizon, rest: plan.rest}
 	w.scale = math.Abs(p.Gain)
 	if p.Structure.Integrating() {
 		w.scale *= plan.quiet
