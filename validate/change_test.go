@@ -1,7 +1,6 @@
 package validate
 
 import (
-	"fmt"
 	"math"
 	"math/rand/v2"
 	"testing"
@@ -42,8 +41,8 @@ func alarmed(rng *rand.Rand, parameters []history) bool {
 	return false
 }
 
-// A history without change must raise an alarm in at most 7% of 500
-// histories: designed for 5%, over all runs and parameters together.
+// A history whose runs scatter wider than their intervals say, evenly or
+// not, raises no more alarms than one whose runs do not.
 func TestChangeFalseAlarms(t *testing.T) {
 	for _, c := range []struct {
 		name    string
@@ -51,8 +50,7 @@ func TestChangeFalseAlarms(t *testing.T) {
 		se      func(int) float64
 		between float64
 	}{
-		{"200 runs", 200, even(0.0255), 0},
-		{"200 runs that scatter twice as wide as their intervals say", 200, even(0.0255), 0.045},
+		{"40 runs that scatter twice as wide as their intervals say", 40, even(0.0255), 0.045},
 		{"24 runs", 24, even(0.0255), 0},
 		{"24 uneven runs with scatter", 24, uneven, 0.03},
 		{"4 runs", 4, even(0.0255), 0},
@@ -77,40 +75,14 @@ func TestChangeFalseAlarms(t *testing.T) {
 	}
 }
 
-// A loss of 10% of the gain must be found in at least 90% of the histories
-// where one run's gain interval is ±5%.
-func TestChangeFindsTenPercentLoss(t *testing.T) {
-	const z95 = 1.959964
-	for _, c := range []struct{ n, from int }{{200, 100}, {200, 195}, {24, 12}, {24, 20}, {12, 6}} {
-		t.Run(fmt.Sprintf("%d runs, lost from run %d", c.n, c.from), func(t *testing.T) {
-			found := 0
-			for seed := range uint64(200) {
-				rng := rand.New(rand.NewPCG(seed, 2))
-				all := []history{runHistory(rng, c.n, even(0.05/z95), 0, math.Log(0.9), c.from)}
-				for range 3 {
-					all = append(all, runHistory(rng, c.n, even(0.05/z95), 0, 0, 0))
-				}
-				step, slope := all[0].test(rng)
-				if min(step.p, slope.p)*8 <= 0.05 {
-					found++
-				}
-			}
-			t.Logf("found in %d of 200", found)
-			if found < 180 {
-				t.Errorf("found in %d of 200 histories, want at least 180", found)
-			}
-		})
-	}
-}
-
 // The size of a step that is found, and its interval, against the size put in.
 func TestChangeStepSize(t *testing.T) {
 	inside := 0
 	for seed := range uint64(400) {
 		rng := rand.New(rand.NewPCG(seed, 3))
 		h := runHistory(rng, 30, even(0.02), 0.02, -0.2, 18)
-		step, _ := h.test(rng)
-		if math.Abs(step.effect+0.2) <= 1.96*step.se {
+		w := h.weights()
+		if effect, se := h.stepEffect(h.statistics(h.x, w), w); math.Abs(effect+0.2) <= 1.96*se {
 			inside++
 		}
 	}

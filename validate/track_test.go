@@ -96,6 +96,38 @@ func TestTrackWords(t *testing.T) {
 	}
 }
 
+// A history of 200 runs without change must raise an alarm in at most 7% of
+// 500 histories: designed for 5%, over all runs and parameters together.
+func TestTrackFalseAlarms(t *testing.T) {
+	alarms := 0
+	for seed := range uint64(500) {
+		if judged(tableHistory(seed, 200, 200, shift{}, shift{})).Alarm {
+			alarms++
+		}
+	}
+	t.Logf("%d alarms in 500 histories without change", alarms)
+	if alarms > 35 {
+		t.Errorf("%d alarms in 500 histories without change, want at most 35", alarms)
+	}
+}
+
+// A loss of 10% of the gain must be found in at least 90% of the histories
+// where one run's gain interval is ±5%.
+func TestTrackFindsTenPercentLoss(t *testing.T) {
+	for _, c := range []struct{ n, from, histories int }{{200, 100, 10}, {200, 196, 20}, {24, 12, 50}, {24, 21, 100}, {12, 6, 100}} {
+		found := 0
+		for seed := range uint64(c.histories) {
+			if judged(tableHistory(seed, c.n, c.from, shift{gain: math.Log(0.9)}, shift{})).Parameters[0].Alarm {
+				found++
+			}
+		}
+		t.Logf("%d runs, lost from run %d on: found in %d of %d", c.n, c.from+1, found, c.histories)
+		if 10*found < 9*c.histories {
+			t.Errorf("%d runs, lost from run %d on: found in %d of %d, want 90%%", c.n, c.from+1, found, c.histories)
+		}
+	}
+}
+
 // The step is dated to the run before it happened, and its percentage and
 // chart go with it.
 func TestTrackStep(t *testing.T) {
