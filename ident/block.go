@@ -60,14 +60,19 @@ func (r Row) before(time float64, p int) int {
 	return count
 }
 
-// splitByShape splits stretches so that all rows of one have the same shape.
+// splitByShape splits uniform stretches so that all rows of one have the same
+// shape.
 func splitByShape(in []stretch, rows []Row) []stretch {
 	var out []stretch
 	for _, s := range in {
+		if s.ragged {
+			out = append(out, s)
+			continue
+		}
 		lo := s.lo
 		for k := s.lo + 1; k <= s.hi; k++ {
 			if k == s.hi || rows[k].M != rows[lo].M || rows[k].H != rows[lo].H {
-				out = append(out, stretch{lo, k, s.step})
+				out = append(out, stretch{lo: lo, hi: k, step: s.step})
 				lo = k
 			}
 		}

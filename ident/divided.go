@@ -69,9 +69,14 @@ type expTable struct {
 	extra [maxLags][maxLags][maxLags]float64 // extra[i][j][k] = exp[a[j], …, a[k], a[i]], j ≤ k
 }
 
-// fill computes the table; with extra nodes only when asked.
+// fill computes the table; with extra nodes only when asked. extra[i][j][k] is
+// set where a transition or the recurrence uses it.
 func (e *expTable) fill(a []float64, withExtra bool) {
 	n := len(a)
+	if a[n-1]-a[0] <= clusterSpread {
+		e.fillCluster(a, withExtra)
+		return
+	}
 	for j := n - 1; j >= 0; j-- {
 		e.plain[j][j] = math.Exp(a[j])
 		for k := j + 1; k < n; k++ {
@@ -94,9 +99,70 @@ func (e *expTable) fill(a []float64, withExtra bool) {
 	}
 }
 
+// fillCluster is fill for nodes that all lie together. One pass through the
+// series, degree by degree, serves every set of nodes, because
+// h_k(S, x) = h_k(S) + x·h_(k−1)(S, x).
+func (e *expTable) fillCluster(a []float64, withExtra bool) {
+	n := len(a)
+	c := a[0] + (a[n-1]-a[0])/2
+	scale := math.Exp(c)
+	radius := (a[n-1] - a[0]) / 2
+	size := 1.0 // radius^d/d!, an upper bound of the terms of degree d against the first
+	*e = expTable{}
+	var plain [maxLags][maxLags]float64
+	var extra [maxLags][maxLags][2]float64 // of the sets up to node n−2 and n−1
+	var one [maxLags]float64               // y_k^d
+	for k := range n {
+		one[k] = 1
+	}
+	for d := 0; d < maxDegree && size > 1e-18; d++ {
+		for j := range n {
+			h := 0.0
+			for k := j; k < n; k++ {
+				y := a[k] - c
+				if k == j {
+					h = one[j]
+				} else {
+					h += y * plain[j][k]
+				}
+				plain[j][k] = h
+				e.plain[j][k] += h * scale * inverseFactorial[d+k-j]
+				if !withExtra || k < n-2 {
+					continue
+				}
+				for i := range n {
+					g := h + (a[i]-c)*extra[i][j][k-n+2]
+					extra[i][j][k-n+2] = g
+					e.extra[i][j][k] += g * scale * inverseFactorial[d+k-j+1]
+				}
+			}
+			one[j] *= a[j] - c
+		}
+		size *= radius / float64(d+1)
+	}
+}
+
+// maxDegree is where the series ends for the widest cluster.
+const maxDegree = 20
+
+// inverseFactorial[k] is 1/k!.
+var inverseFactorial = func() (f [maxDegree + maxNodes]float64) {
+	f[0] = 1
+	for k := 1; k < len(f); k++ {
+		f[k] = f[k-1] / float64(k)
+	}
+	return f
+}()
+
 // withNode returns exp[a[j], …, a[k], a[i]] from the entries with one node
 // less: those without the least and without the greatest node.
 func (e *expTable) withNode(a []float64, i, j, k int) float64 {
+	switch { // the set without a repeated node may be known
+	case i == k+1:
+		return e.plain[j][i]
+	case i == j-1:
+		return e.plain[i][k]
+	}
 	spread := max(a[k], a[i]) - min(a[j], a[i])
 	if spread <= clusterSpread {
 		var x [maxNodes]float64

@@ -2,11 +2,12 @@ package ident
 
 import "math"
 
-// A stretch is a series of rows lo ≤ k < hi that each follow the row before
-// them by the same step, in s.
+// A stretch is a series of rows lo ≤ k < hi. Unless it is ragged they each
+// follow the row before them by the same step, in s.
 type stretch struct {
 	lo, hi int
 	step   float64
+	ragged bool
 }
 
 // uniformTolerance is how far, in steps, the rows of a stretch may lie off an
@@ -23,33 +24,53 @@ func timeTolerance(t []float64) float64 {
 	return 4 * (math.Nextafter(greatest, math.Inf(1)) - greatest)
 }
 
-// stretches splits the rows 1 … len(t)−1 into uniform stretches, as long as
-// they can be found cheaply; t is strictly ascending.
+// fewestUniform is the length from which a uniform stretch is worth a
+// transition of its own.
+const fewestUniform = 4
+
+// stretches splits the rows 1 … len(t)−1 into uniform and ragged stretches; t
+// is strictly ascending. The work is of order len(t).
 func stretches(t []float64, tolerance float64) []stretch {
 	var out []stretch
 	for lo := 1; lo < len(t); {
-		s := longestStretch(t, lo, tolerance)
-		out = append(out, s)
+		s := longestSeries(t, lo, tolerance)
+		s.ragged = s.hi-s.lo < fewestUniform
+		if last := len(out) - 1; s.ragged && last >= 0 && out[last].ragged {
+			out[last].hi = s.hi
+		} else {
+			out = append(out, s)
+		}
 		lo = s.hi
 	}
 	return out
 }
 
-// longestStretch returns a uniform stretch that starts with row lo.
-func longestStretch(t []float64, lo int, tolerance float64) stretch {
-	step := t[lo] - t[lo-1]
-	hi := lo + 1
-	for hi < len(t) && math.Abs(t[hi]-t[hi-1]-step) <= tolerance+1e-9*step {
-		hi++
+// longestSeries returns the uniform stretch that starts with row lo: its
+// length is multiplied by four while it can be, and then found by bisection.
+func longestSeries(t []float64, lo int, tolerance float64) stretch {
+	try := func(hi int) (stretch, bool) {
+		step := (t[hi-1] - t[lo-1]) / float64(hi-lo)
+		return stretch{lo: lo, hi: hi, step: step}, isSeries(t[lo-1:hi], step, tolerance+uniformTolerance*step)
 	}
-	// Equal steps may still drift; the step is measured over the whole.
-	for ; hi > lo+1; hi = lo + (hi-lo)/2 {
-		step = (t[hi-1] - t[lo-1]) / float64(hi-lo)
-		if isSeries(t[lo-1:hi], step, tolerance+uniformTolerance*step) {
-			return stretch{lo, hi, step}
+	best, _ := try(lo + 1)
+	tooLong := len(t) + 1
+	for size := fewestUniform; best.hi < len(t); size *= 4 {
+		s, ok := try(min(lo+size, len(t)))
+		if !ok {
+			tooLong = s.hi
+			break
+		}
+		best = s
+	}
+	for best.hi+1 < tooLong && best.hi < len(t) {
+		s, ok := try(best.hi + (tooLong-best.hi)/2)
+		if ok {
+			best = s
+		} else {
+			tooLong = s.hi
 		}
 	}
-	return stretch{lo, lo + 1, t[lo] - t[lo-1]}
+	return best
 }
 
 func isSeries(t []float64, step, tolerance float64) bool {

@@ -1,6 +1,9 @@
 package ident
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // A Simulator computes the responses of lag chains of unit gain to one input
 // at the rows of one log. It is exact at the rows for an input held between
@@ -19,6 +22,8 @@ type Simulator struct {
 	change   []float64 // of the input at in.At
 	greatest float64   // |change|, or 1 for free states
 
+	evaluation uint64 // counts the evaluations, to tell what is remembered from which
+
 	chain chain
 	x     state
 	level float64 // delayed input less in.Before
@@ -27,6 +32,7 @@ type Simulator struct {
 	step       matrix // transition over stepLength, the step of the stretch
 	stepLength float64
 
+	steps *stepCache // of ragged rows
 	kicks kickCache
 	means meanCache
 }
@@ -37,6 +43,9 @@ type Simulator struct {
 func NewSimulator(t []float64, in Input) *Simulator {
 	s := &Simulator{t: t, in: in, tolerance: timeTolerance(t)}
 	s.stretches = stretches(t, s.tolerance)
+	if slices.ContainsFunc(s.stretches, func(r stretch) bool { return r.ragged }) {
+		s.steps = new(stepCache)
+	}
 	if n := len(t); n > 1 {
 		s.shortest = 1e-30 * (t[n-1] - t[0])
 	}
@@ -56,6 +65,9 @@ func NewSimulator(t []float64, in Input) *Simulator {
 // Clone returns a simulator of the same log for another goroutine.
 func (s *Simulator) Clone() *Simulator {
 	clone := *s
+	if s.steps != nil {
+		clone.steps = new(stepCache)
+	}
 	return &clone
 }
 
@@ -124,7 +136,11 @@ func fillNaN(x []float64) {
 }
 
 func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sensitivities bool) bool {
-	s.kicks.clear()
+	s.evaluation++
+	s.kicks.evaluation = s.evaluation
+	if s.steps != nil {
+		s.steps.evaluation = s.evaluation
+	}
 	s.means.clear()
 	return finite(deadTime) && s.chain.set(st, lags, s.shortest, sensitivities)
 }
@@ -147,6 +163,10 @@ func (s *Simulator) walk(o *outputs, st Structure, deadTime float64) {
 func (s *Simulator) carry(o *outputs, deadTime float64) {
 	s.emitRow(o, 0, deadTime)
 	for _, r := range s.stretches {
+		if r.ragged {
+			s.runRagged(o, r, deadTime)
+			continue
+		}
 		s.chain.transition(&s.step, r.step)
 		s.stepLength = r.step
 		for k := r.lo; k < r.hi; {
@@ -207,7 +227,7 @@ func (s *Simulator) takeChanges(x *state, next int, level, time, deadTime float6
 	for ; next < len(s.in.At) && s.arrival(next, deadTime) <= time; next++ {
 		since := max(time-(s.in.At[next]+deadTime), 0)
 		du := s.change[next]
-		kick := s.kicks.get(c, since, s.tolerance)
+		kick := s.kicks.after(c, since, s.tolerance)
 		for i := range c.n + c.q {
 			x[i] -= du * kick[i]
 		}
@@ -281,30 +301,4 @@ func (s *Simulator) walkWithoutLags(o *outputs, integrating bool, deadTime float
 			}
 		}
 	}
-}
-
-// A kickCache remembers the kicks of the last few times since a change. When
-// the changes fall on the rows, there is only one such time.
-type kickCache struct {
-	since [4]float64
-	kick  [4]state
-	used  int
-	last  int
-}
-
-func (k *kickCache) clear() { k.used = 0 }
-
-func (k *kickCache) get(c *chain, since, tolerance float64) *state {
-	for i := range min(k.used, len(k.since)) {
-		if math.Abs(k.since[i]-since) <= tolerance {
-			return &k.kick[i]
-		}
-	}
-	i := k.used % len(k.since)
-	k.used++
-	var f matrix
-	c.transition(&f, since)
-	c.kick(&k.kick[i], &f)
-	k.since[i] = since
-	return &k.kick[i]
 }

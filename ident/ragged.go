@@ -1,0 +1,130 @@
+package ident
+
+import "math"
+
+// Ragged rows: intervals that differ from row to row, and changes of the input
+// that fall anywhere between rows. A transition from scratch for each would
+// cost about a microsecond, so transitions are remembered by their length and
+// the small rest is made up for by the exponential's own Taylor series on the
+// state, which is as exact: x(h + d) = Σ (d·A)^k/k! · x(h).
+
+// nudgeable is the greatest |d|·‖A‖ that the series makes up for.
+const nudgeable = 0.5
+
+// nudge carries the state over a short d, of either sign.
+func (c *chain) nudge(x *state, d float64) {
+	if d == 0 {
+		return
+	}
+	n := c.n
+	last := 1 / c.last()
+	size, term := 1.0, *x
+	z := math.Abs(d) * c.norm()
+	for k := 1; size > 1e-18; k++ {
+		h := d / float64(k)
+		before := 0.0
+		if n > 1 {
+			before = term[n-2]
+		}
+		slope := (before - term[n-1]) * last
+		for i := range c.q {
+			share := slope
+			if c.equal {
+				share *= float64(n)
+			}
+			term[n+i] = -h * (share + term[n+i]) / c.lag(n+i)
+			x[n+i] += term[n+i]
+		}
+		for i := n - 1; i > 0; i-- {
+			term[i] = h * (term[i-1] - term[i]) / c.lag(i)
+			x[i] += term[i]
+		}
+		term[0] *= -h / c.tau[0]
+		x[0] += term[0]
+		size *= z / float64(k)
+	}
+}
+
+// norm bounds the rate at which the state changes, per s.
+func (c *chain) norm() float64 { return 2 / c.tau[0] }
+
+// spanKey is the first few bits of a length: 64 keys for every factor of two.
+func spanKey(h float64) uint64 { return math.Float64bits(h) >> (52 - 6) }
+
+// A stepCache remembers transitions over intervals between rows.
+type stepCache struct {
+	evaluation uint64
+	entry      [128]struct {
+		evaluation uint64 // that filled it
+		h          float64
+		f          matrix
+	}
+}
+
+// over carries the state over h s.
+func (s *stepCache) over(c *chain, x *state, h, tolerance float64) {
+	e := &s.entry[spanKey(h)%uint64(len(s.entry))]
+	if e.evaluation != s.evaluation || (math.Abs(h-e.h)*c.norm() > nudgeable && math.Abs(h-e.h) > tolerance) {
+		e.evaluation, e.h = s.evaluation, h
+		c.transition(&e.f, h)
+	}
+	c.advance(&e.f, x)
+	if math.Abs(h-e.h) > tolerance {
+		c.nudge(x, h-e.h)
+	}
+}
+
+// A kickCache remembers what a change of the input leaves in the state some
+// time later. When the changes fall on the rows, there is only one such time.
+type kickCache struct {
+	evaluation uint64
+	recent     int // entry used last
+	nudged     state
+	entry      [128]struct {
+		evaluation uint64
+		since      float64
+		kick       state
+	}
+}
+
+// after returns what a change of −1 of the delayed input leaves in the state
+// since s later. It is valid until the next call.
+func (s *kickCache) after(c *chain, since, tolerance float64) *state {
+	if e := &s.entry[s.recent]; e.evaluation == s.evaluation && math.Abs(since-e.since) <= tolerance {
+		return &e.kick
+	}
+	s.recent = int(spanKey(since) % uint64(len(s.entry)))
+	e := &s.entry[s.recent]
+	d := since - e.since
+	switch {
+	case e.evaluation == s.evaluation && math.Abs(d) <= tolerance:
+		return &e.kick
+	case e.evaluation == s.evaluation && math.Abs(d)*c.norm() <= nudgeable:
+		s.nudged = e.kick
+		c.nudge(&s.nudged, d)
+		return &s.nudged
+	}
+	e.evaluation, e.since = s.evaluation, since
+	if since*c.norm() <= nudgeable { // soon after the change itself
+		e.kick = state{}
+		for i := range c.n {
+			e.kick[i] = 1
+		}
+		c.nudge(&e.kick, since)
+		return &e.kick
+	}
+	var f matrix
+	c.transition(&f, since)
+	c.kick(&e.kick, &f)
+	return &e.kick
+}
+
+// runRagged is run for a ragged stretch, whose rows may follow changes of the
+// input.
+func (s *Simulator) runRagged(o *outputs, r stretch, deadTime float64) {
+	for k := r.lo; k < r.hi; k++ {
+		s.steps.over(&s.chain, &s.x, s.t[k]-s.t[k-1], s.tolerance)
+		s.arrive(k, deadTime)
+		s.emitRow(o, k, deadTime)
+	}
+}
