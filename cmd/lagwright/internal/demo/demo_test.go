@@ -31,7 +31,7 @@ func TestCommittedFiles(t *testing.T) {
 		checkFile(t, l.Name+".csv", l.WriteCSV)
 		checkFile(t, l.Name+".parquet", func(w io.Writer) error { return writeParquet(w, l) })
 	}
-	// GAINS
+	checkFile(t, "gains-in-force.json", GainsInForce().WriteJSON)
 }
 
 func checkFile(t *testing.T, name string, write func(io.Writer) error) {
