@@ -102,7 +102,7 @@ func heaterPhrase(c *fit.Card, m *fit.Model) string {
 		if p.Name == "baseline" || p.Name == "drift" {
 			continue
 		}
-		parts = append(parts, strings.ToLower(parameterName(p.Name))+" "+format.Value(p.Value, p.Low, p.High, p.Unit))
+		parts = append(parts, strings.ToLower(parameterName(p.Name))+" = "+format.Value(p.Value, p.Low, p.High, p.Unit))
 	}
 	return fmt.Sprintf("The heater (%s, %s intervals): %s.", m.Structure, format.Percent(c.Confidence), strings.Join(parts, ", "))
 }

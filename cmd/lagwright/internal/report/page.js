@@ -64,7 +64,7 @@
         tip.className = "readout";
         tip.setAttribute("role", "status");
         svg.parentNode.appendChild(tip);
-        cursor = document.createElementNS("http://www.w3.org/2000/svg", "line");
+        cursor = document.createElementNS(svg.namespaceURI, "line");
         cursor.setAttribute("class", "cursor");
         svg.appendChild(cursor);
       }

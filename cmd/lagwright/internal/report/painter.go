@@ -1,6 +1,7 @@
 package report
 
 import (
+	"image/color"
 	"math"
 
 	"gonum.org/v1/plot/vg"
@@ -9,9 +10,16 @@ import (
 
 // painter draws lines, areas and text on any canvas.
 type painter struct {
-	c      vg.Canvas
-	svg    *svgCanvas          // c, where c writes SVG; else nil
-	recode func(string) string // text as the canvas wants it; nil: UTF-8
+	c   vg.Canvas
+	svg *svgCanvas // c, where c writes SVG; else nil
+	pdf bool       // c writes PDF, see pdf.go
+}
+
+func (t *painter) color(k ink) color.Color {
+	if t.pdf {
+		return straight{k}
+	}
+	return k
 }
 
 // stroke is the look of a line.
@@ -33,6 +41,9 @@ const (
 
 // text writes one line whose base starts, centres or ends at a point.
 func (t *painter) text(l lettering, s string, at vg.Point, a align) {
+	if t.pdf {
+		l.bold = false // the PDF canvas registers bold fonts under a name it does not find again
+	}
 	face := l.face()
 	if t.svg != nil {
 		t.svg.SetColor(l.ink)
@@ -41,10 +52,10 @@ func (t *painter) text(l lettering, s string, at vg.Point, a align) {
 		return
 	}
 	at.X -= face.Width(s) * vg.Length(a)
-	if t.recode != nil {
-		s = t.recode(s)
+	t.c.SetColor(t.color(l.ink))
+	if t.pdf {
+		s = windows1252(s)
 	}
-	t.c.SetColor(l.ink)
 	t.c.FillString(face, at, s)
 }
 
@@ -55,7 +66,7 @@ func (t *painter) line(s stroke, pts ...vg.Point) {
 	}
 	t.c.SetLineWidth(s.width)
 	t.c.SetLineDash(s.dash, 0)
-	t.c.SetColor(s.ink)
+	t.c.SetColor(t.color(s.ink))
 	t.c.Stroke(polyline(pts))
 }
 
@@ -82,7 +93,7 @@ func (t *painter) curve(s stroke, attrs string, pts []vg.Point) {
 }
 
 func (t *painter) fill(k ink, p vg.Path) {
-	t.c.SetColor(k)
+	t.c.SetColor(t.color(k))
 	t.c.Fill(p)
 }
 

@@ -6,11 +6,7 @@ import (
 	"io"
 	"path/filepath"
 	"strings"
-	"sync"
-	"time"
 
-	"codeberg.org/go-pdf/fpdf"
-	"golang.org/x/text/encoding/charmap"
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/vgimg"
 	"gonum.org/v1/plot/vg/vgpdf"
@@ -41,7 +37,7 @@ func (f *Figure) Write(w io.Writer, name string) error {
 	case ".pdf":
 		fixPDF()
 		c = vgpdf.New(outerW, outerH)
-		t.recode = windows1252
+		t.pdf = true
 	default:
 		return fmt.Errorf("%s: no figure can be written as %q; name it .svg, .png or .pdf", name, ext)
 	}
@@ -59,27 +55,4 @@ func (f *Figure) inline(width vg.Length) *svgCanvas {
 	c := newSVG(width, f.height(width))
 	f.draw(&painter{c: c, svg: c}, width, c.h)
 	return c
-}
-
-// fixPDF takes the clock out of PDF files, which otherwise hold the moment
-// they were written, and sorts what is written from a map.
-var fixPDF = sync.OnceFunc(func() {
-	epoch := time.Unix(0, 0).UTC()
-	fpdf.SetDefaultCreationDate(epoch)
-	fpdf.SetDefaultModificationDate(epoch)
-	fpdf.SetDefaultCatalogSort(true)
-})
-
-// windows1252 recodes text for PDF, whose back end takes bytes of that code
-// page. Characters it lacks become "?".
-func windows1252(s string) string {
-	var b strings.Builder
-	for _, r := range s {
-		c, ok := charmap.Windows1252.EncodeRune(r)
-		if !ok {
-			c = '?'
-		}
-		b.WriteByte(c)
-	}
-	return b.String()
 }

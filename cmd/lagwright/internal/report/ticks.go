@@ -70,7 +70,7 @@ func tickLabel(v, step float64) string {
 	if v == 0 {
 		return "0"
 	}
-	if a := math.Abs(v); a >= 1e6 || step < 1e-4 {
+	if a := math.Abs(v); a >= 1e6 || step < 1e-4 && a < 1000*step {
 		s := strconv.FormatFloat(v, 'e', 2, 64)
 		mantissa, exp, _ := strings.Cut(s, "e")
 		mantissa = strings.TrimRight(strings.TrimRight(mantissa, "0"), ".")
@@ -184,7 +184,8 @@ func clockTicks(start time.Time) ticker {
 			if at > high+1e-9 {
 				break
 			}
-			if at >= low-1e-9 {
+			skipped := len(out) > 0 && out[len(out)-1].at == at // an hour that summer time leaves out
+			if at >= low-1e-9 && !skipped {
 				out = append(out, tick{at, clockLabel(t, step)})
 			}
 		}
@@ -203,7 +204,7 @@ func clockStep(y int, m time.Month, d, k int, step time.Duration, zone *time.Loc
 
 func clockLabel(t time.Time, step time.Duration) string {
 	switch {
-	case step >= 24*time.Hour:
+	case step >= 3*time.Hour && t.Hour() == 0:
 		return t.Format("2 Jan")
 	case step < time.Minute:
 		return t.Format("15:04:05")
