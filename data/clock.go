@@ -98,6 +98,9 @@ func (c *clock) parse(b []byte, point byte) (ns, alt int64, ok bool) {
 
 func (c *clock) parseNumber(b []byte, point byte) (int64, bool) {
 	d, n, ok := scanDecimal(b, point)
+	if ok && n != len(b) && c.isOwnUnit(b[n:]) {
+		b = b[:n]
+	}
 	if !ok || n != len(b) {
 		v, ok := numberFormat{point}.parse(b)
 		if !ok {
@@ -106,6 +109,12 @@ func (c *clock) parseNumber(b []byte, point byte) (int64, bool) {
 		return c.ofFloat(v)
 	}
 	return c.ofDecimal(d, b, point)
+}
+
+// isOwnUnit tells that what follows a number is the unit of the clock.
+func (c *clock) isOwnUnit(rest []byte) bool {
+	u, known := canonicalUnit(decodeName(trimBlanks(rest)))
+	return known && timeUnits[u] == c.unit && c.kind == elapsed
 }
 
 // ofDecimal turns a number as written into nanoseconds without a detour

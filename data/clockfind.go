@@ -32,14 +32,12 @@ func findClock(cells [][]byte, c column, dated bool, o *Options, point byte) (*c
 func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, error) {
 	var v []float64
 	for _, b := range cells {
-		if x, ok := (numberFormat{point}).parse(b); ok {
-			v = append(v, x)
+		if d, n, ok := scanDecimal(trimBlanks(b), point); ok {
+			if x, ok := d.float(trimBlanks(b)[:n], point); ok {
+				v = append(v, x)
+			}
 		}
 	}
-	return numberClock(v, c)
-}
-
-func numberClock(v []float64, c column) (*clock, []Note, error) {
 	if len(v) == 0 {
 		return nil, nil, fmt.Errorf("column %q holds no time", c.label)
 	}
@@ -189,53 +187,47 @@ var strptimeParts = map[byte]string{
 }
 
 // goLayout turns a pattern into a layout of package time, which accepts a
-// fraction behind the seconds whether the layout has one or not.
+// fraction behind the seconds whether the layout has one or not. Text between
+// apostrophes stands for itself.
 func goLayout(format string) (string, error) {
-	var b strings.Builder
-	date := false
+	unknown := func(what string) error {
+		return fmt.Errorf("--time-format %q: %q is unknown (try dd/MM/yyyy HH:mm:ss, day-first, unix-ms or seconds)", format, what)
+	}
+	layout := ""
 	for rest := format; rest != ""; {
-		if rest[0] == '%' && len(rest) > 1 {
-			if rest[1] == 'f' { // fraction: taken by the seconds
-				trimmed := strings.TrimRight(b.String(), ".,")
-				b.Reset()
-				b.WriteString(trimmed)
-			} else if part, ok := strptimeParts[rest[1]]; ok {
-				b.WriteString(part)
-				date = true
-			} else {
-				return "", fmt.Errorf("--time-format %q: %q is unknown", format, rest[:2])
-			}
-			rest = rest[2:]
-			continue
-		}
-		if rest[0] == 'S' { // fraction of a second
-			trimmed := strings.TrimRight(b.String(), ".,")
-			b.Reset()
-			b.WriteString(trimmed)
-			rest = strings.TrimLeft(rest, "S")
-			continue
-		}
 		part, n := patternPart(rest)
-		if n == 0 {
-			if rest[0] == '\'' {
-				rest = rest[1:]
-				continue
+		switch {
+		case strings.HasPrefix(rest, "%f") || rest[0] == 'S': // the fraction goes with the seconds
+			layout = strings.TrimRight(layout, ".,")
+			rest = strings.TrimLeft(strings.TrimPrefix(rest, "%f"), "S")
+		case rest[0] == '%':
+			part, ok := strptimeParts[rest[min(1, len(rest)-1)]]
+			if !ok || len(rest) < 2 {
+				return "", unknown(rest[:min(2, len(rest))])
 			}
-			if isLetter(rest[0]) && rest[0] != 'T' && rest[0] != 'Z' {
-				return "", fmt.Errorf("--time-format %q: %q is unknown (try dd/MM/yyyy HH:mm:ss, day-first, unix-ms or seconds)", format, rest[:1])
+			layout += part
+			rest = rest[2:]
+		case rest[0] == '\'':
+			text, after, closed := strings.Cut(rest[1:], "'")
+			if !closed {
+				return "", unknown(rest)
 			}
-			b.WriteByte(rest[0])
+			layout += text
+			rest = after
+		case n > 0:
+			layout += part
+			rest = rest[n:]
+		case isLetter(rest[0]) && rest[0] != 'T' && rest[0] != 'Z':
+			return "", unknown(rest[:1])
+		default:
+			layout += rest[:1]
 			rest = rest[1:]
-			continue
 		}
-		date = true
-		b.WriteString(part)
-		rest = rest[n:]
 	}
-	if !date {
-		return "", fmt.Errorf("--time-format %q: names no part of a time (try dd/MM/yyyy HH:mm:ss, day-first, unix-ms or seconds)", format)
+	if !strings.ContainsAny(layout, "0123456789") {
+		return "", unknown(format)
 	}
-	return b.String(), nil
+	return layout, nil
 }
 
 func patternPart(rest string) (part string, n int) {

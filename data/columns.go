@@ -279,7 +279,7 @@ func roleOf(c column) (role, int) {
 	parts := wordsOf(c.name)
 	hit := func(r role) int { return words[r].hit(c.name, parts) }
 	degrees := c.unit == "degC" || c.unit == "degF" || c.unit == "K" || c.unit == "mV"
-	electric := c.unit == "V" || c.unit == "%" || c.unit == "mA"
+	electric := slices.Contains([]string{"V", "%", "mA", "W", "kW"}, c.unit)
 	_, clocked := timeUnits[c.unit]
 	switch {
 	case clocked:

@@ -86,6 +86,9 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 
 // plan decides which columns are read and how.
 func (c *csvReader) plan(o *Options, info *reading) error {
+	if err := markStamps(c.d, o.TimeFormat); err != nil {
+		return err
+	}
 	at, notes, err := assign(c.d.cols, o, false)
 	if err != nil {
 		return err
@@ -93,6 +96,34 @@ func (c *csvReader) plan(o *Options, info *reading) error {
 	info.notes = append(info.notes, notes...)
 	c.at = at
 	return c.planClock(o, info)
+}
+
+// markStamps makes a column of stamps of the columns that a layout given by
+// the caller can read.
+func markStamps(d *dialect, format string) error {
+	if format == "" {
+		return nil
+	}
+	k, err := clockOfFormat(format)
+	if err != nil || k.kind != custom {
+		return err
+	}
+	for i := range d.cols {
+		read, all := 0, 0
+		for _, l := range d.rows {
+			if i < len(l.cells) && len(l.cells[i]) > 0 {
+				all++
+				if _, _, ok := k.parse(l.cells[i], '.'); ok {
+					read++
+				}
+			}
+		}
+		if read > 0 && 2*read > all {
+			c := &d.cols[i]
+			c.class, c.dated, c.timed = stamps, true, true
+		}
+	}
+	return nil
 }
 
 func (c *csvReader) planClock(o *Options, info *reading) error {

@@ -1,6 +1,7 @@
 package data
 
 import (
+	"errors"
 	"fmt"
 	"math"
 	"slices"
@@ -50,10 +51,14 @@ type rows struct {
 // no value is set aside, units become base units, the input is held.
 func finish(path string, tb *table, info *reading, o *Options) (*Run, error) {
 	fail := func(err error) error {
-		if tb.name != "" {
-			return fmt.Errorf("%s: run %q: %w", path, tb.name, err)
+		where := path
+		if at := (*lineError)(nil); errors.As(err, &at) {
+			where = fmt.Sprintf("%s:%d", path, at.line)
 		}
-		return fmt.Errorf("%s: %w", path, err)
+		if tb.name != "" {
+			return fmt.Errorf("%s: run %q: %w", where, tb.name, err)
+		}
+		return fmt.Errorf("%s: %w", where, err)
 	}
 	if tb.rows == 0 {
 		return nil, fail(errNoRows)
@@ -94,9 +99,18 @@ func finish(path string, tb *table, info *reading, o *Options) (*Run, error) {
 	return run, nil
 }
 
+// lineError is an error that belongs to a line of the file.
+type lineError struct {
+	line int
+	err  error
+}
+
+func (e *lineError) Error() string { return e.err.Error() }
+func (e *lineError) Unwrap() error { return e.err }
+
 // mendClock mends the stamps and drops the rows that go with that.
 func (r *rows) mendClock(k *clock) error {
-	s := &stampSeries{t: r.t, same: r.sameValues, line: r.lines.line, wall: k.wall(), tod: k.timeOfDay()}
+	s := &stampSeries{t: r.t, same: r.sameValues, line: r.lines.line, wall: k.wall(), tod: k.timeOfDay(), dated: k.dated()}
 	if err := s.mend(); err != nil {
 		return err
 	}

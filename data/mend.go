@@ -13,6 +13,7 @@ type stampSeries struct {
 	line     func(i int) int     // line in the file
 	wall     bool                // local clock without a zone
 	tod      bool                // time of day without a date
+	dated    bool                // date and time
 	reversed bool                // out: newest row first; the caller turns the rows round
 
 	drop    []bool // out: rows that go; nil when all stay
@@ -99,9 +100,26 @@ func (s *stampSeries) typicalStep() int64 {
 	return steps[len(steps)/2]
 }
 
-// smallStep is how far a clock may be set back in one go (to correct it, by
-// a time server) without leaving doubt: a few rows are dropped then.
-const smallStep = int64(5 * time.Second)
+// correction is how far a clock may be set back in one go without leaving
+// doubt, ns: a few rows are dropped then. A clock that shows the date may be
+// corrected by seconds (by a time server); one that counts from its own zero
+// has no reason to run back, unless two rows changed places.
+func (s *stampSeries) correction(step int64) int64 {
+	if s.dated {
+		return max(min(5*step, int64(time.Minute)), min(int64(5*time.Second), 50*step))
+	}
+	return 2 * step
+}
+
+// catchesUp tells that the clock passes its latest stamp again soon.
+func (s *stampSeries) catchesUp(i int, offset, last int64) bool {
+	for k := i; k < len(s.t) && k < i+100; k++ {
+		if s.t[k]+offset > last {
+			return true
+		}
+	}
+	return false
+}
 
 // runOn removes jumps back: midnight, the hour of daylight saving, rows sent
 // again and small corrections.
@@ -136,14 +154,14 @@ func (s *stampSeries) runOn() error {
 			offset += hour
 			t += hour
 			s.note("clock-jump-back", i, "the clock was set back by an hour (end of daylight saving time?); it was taken to go on")
-		case back <= max(min(5*step, int64(time.Minute)), min(smallStep, 50*step)):
+		case back <= s.correction(step) && s.catchesUp(i, offset, last):
 			s.dropRow(i, "clock set back")
 			s.note("clock-set-back", i, "the clock was set back a little; the rows until it had caught up were dropped")
 			s.t[i] = last
 			continue
 		default:
-			return fmt.Errorf("row %d: the clock jumps back by %v: these may be two recordings in one file; cut it in two, or name the column that tells them apart with --run-col",
-				s.line(i), time.Duration(back))
+			return &lineError{s.line(i), fmt.Errorf("the clock jumps back by %v: these may be two recordings in one file; cut it in two, or name the column that tells them apart with --run-col",
+				time.Duration(back))}
 		}
 		s.t[i] = t
 		last = t

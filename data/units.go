@@ -15,6 +15,8 @@ var unitNames = map[string][]string{
 	"mV":   {"mv", "millivolt", "millivolts"},
 	"%":    {"%", "pct", "percent", "prozent", "perc", "% duty", "pourcent"},
 	"mA":   {"ma", "milliamp", "milliamps", "milliampere"},
+	"W":    {"w", "watt", "watts"},
+	"kW":   {"kw", "kilowatt"},
 	"degC": {"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c"},
 	"degF": {"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f"},
 	"K":    {"k", "kelvin"},
