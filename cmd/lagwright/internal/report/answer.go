@@ -31,6 +31,8 @@ func answerOf(b *Bundle) answer {
 		return replayAnswer(b)
 	case b.Card != nil:
 		return cardAnswer(b)
+	case b.Drift != nil:
+		return driftAnswer(b.Drift)
 	}
 	return logAnswer(b)
 }
@@ -63,7 +65,7 @@ func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *
 		return "These gains do not meet the requirement", &item{"bad", "They do not meet the requirement."}
 	case r != nil && !reproduced(r):
 		return "These gains are not proven on past runs", &item{"bad", "They meet the requirement on the plausible plants, but the model does not reproduce every run logged under known gains."}
-	case r != nil && r.Summary.Runs > 0 && !r.Summary.Meets:
+	case r != nil && r.Summary.Judged > 0 && !r.Summary.Meets:
 		return "These gains do not hold on every past run", &item{"bad", "They meet the requirement on the plausible plants, but not on every replayed run."}
 	}
 	return "Enter these gains", &item{"good", "They meet the requirement."}
@@ -89,7 +91,17 @@ func sharePhrase(g *tune.Gains) string {
 }
 
 func replayPhrase(r *validate.Replay) string {
-	s := fmt.Sprintf("Replayed on %s: the requirement holds on %d", format.Count(r.Summary.Runs, "past run", "past runs"), r.Summary.Meeting)
+	n := r.Summary
+	s := fmt.Sprintf("Replayed on %s: the requirement holds on %d", format.Count(n.Runs, "past run", "past runs"), n.Meeting)
+	switch {
+	case n.Judged == 0:
+		s = fmt.Sprintf("Replayed on %s: none shows anything that the requirement asks for", format.Count(n.Runs, "past run", "past runs"))
+	case n.Judged < n.Runs:
+		s += fmt.Sprintf(" of the %d that can be judged", n.Judged)
+	}
+	if n.Distrusted > 0 {
+		s += fmt.Sprintf("; %s logged under known gains not reproduced", format.Count(n.Distrusted, "run", "runs"))
+	}
 	if r.Summary.Failed > 0 {
 		s += fmt.Sprintf("; %s could not be replayed", format.Count(r.Summary.Failed, "log", "logs"))
 	}
@@ -114,10 +126,16 @@ func replayAnswer(b *Bundle) answer {
 		Enter:      settings(&r.Gains),
 		Sure:       []string{"Asked: " + requirementWords(r.Requirement, r.Gains.Units) + ".", replayPhrase(r)},
 	}
-	if r.Summary.Meets {
+	switch {
+	case r.Summary.Judged == 0:
+		a.Headline = "These runs cannot judge the requirement"
+	case r.Summary.Meets && reproduced(r):
 		a.Headline = "These gains would have met the requirement"
-		a.Verdict = &item{"good", "The requirement holds on every run."}
-	} else {
+		a.Verdict = &item{"good", "The requirement holds on every run that can be judged."}
+	case r.Summary.Meets:
+		a.Headline = "These gains are not proven on past runs"
+		a.Verdict = &item{"bad", "The model does not reproduce every run logged under known gains."}
+	default:
 		a.Headline = "These gains would not have met the requirement"
 		a.Verdict = &item{"bad", "The requirement does not hold on every run."}
 	}
@@ -131,6 +149,19 @@ func cardAnswer(b *Bundle) answer {
 	}
 	if n := len(b.Card.Warnings); n > 0 {
 		a.Sure = append(a.Sure, fmt.Sprintf("%s limit what this card can be used for; they are listed below.", sentenceCase(format.Count(n, "warning", "warnings"))))
+	}
+	return a
+}
+
+func driftAnswer(d *validate.Drift) answer {
+	a := answer{Headline: "No drift is seen", Sure: []string{driftLead(d)}}
+	if d.Alarm {
+		a.Headline = "The heater has changed"
+	}
+	for _, p := range d.Parameters {
+		if p.Alarm {
+			a.Reasons = append(a.Reasons, p.Text)
+		}
 	}
 	return a
 }
@@ -150,14 +181,20 @@ func settings(g *tune.Gains) []setting {
 	if g.Units.Input != "" {
 		kc = g.Units.Input + "/" + kelvin(g.Units.Temperature)
 	}
-	s := []setting{{"Gain Kc", format.Amount(g.Kc, kc, digits)}}
+	var s []setting
 	optional := func(name string, v *float64, unit string) {
 		if v != nil {
 			s = append(s, setting{name, format.Amount(*v, unit, digits)})
 		}
 	}
-	optional("Integral time Ti", g.Ti, "s")
-	optional("Derivative time Td", g.Td, "s")
+	for _, e := range g.Entry {
+		s = append(s, setting{sentenceCase(e.Name), format.Amount(e.Value, e.Unit, digits)})
+	}
+	if len(g.Entry) == 0 {
+		optional("Gain Kc", &g.Kc, kc)
+		optional("Integral time Ti", g.Ti, "s")
+		optional("Derivative time Td", g.Td, "s")
+	}
 	if g.Filter > 0 {
 		s = append(s, setting{"Filter time", format.Amount(g.Filter, "s", digits)})
 	}

@@ -15,6 +15,7 @@ type Bundle struct {
 	Card   *fit.Card
 	Gains  *tune.Gains
 	Replay *validate.Replay
+	Drift  *validate.Drift
 
 	Profiles []Profile // of the selected model
 	Loop     *Loop     // what Gains do on Card's plants

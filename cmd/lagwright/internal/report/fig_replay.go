@@ -63,6 +63,9 @@ func replayTime(r *validate.RunReplay) *axis {
 }
 
 func replayFinding(r *validate.RunReplay, g *tune.Gains) string {
+	if !r.Judged {
+		return runName(r) + ": this run shows nothing that the requirement asks for."
+	}
 	s := fmt.Sprintf("%s: under the proposed gains the requirement holds on %s of the plausible plants", runName(r), format.Percent(r.Probability))
 	was, now := r.Logged.Deviation, r.Proposed.Median.Deviation
 	if was != nil && now != nil {
@@ -73,11 +76,7 @@ func replayFinding(r *validate.RunReplay, g *tune.Gains) string {
 }
 
 func runName(r *validate.RunReplay) string {
-	name := format.Text(r.File)
-	if r.Name != "" {
-		name += ", run " + format.Text(r.Name)
-	}
-	return format.Clip(name, 60)
+	return fileAndRun(r.File, r.Name)
 }
 
 // gaps makes holes of what does not exist.

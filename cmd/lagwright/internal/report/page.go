@@ -129,13 +129,15 @@ func title(b *Bundle) string {
 		name = b.Card.Source[0].File
 	case b.Replay != nil && len(b.Replay.Runs) > 0:
 		name = b.Replay.Runs[0].File
+	case b.Drift != nil && len(b.Drift.Runs) > 0:
+		name = b.Drift.Runs[0].File
 	}
 	return "Heater report: " + format.Clip(format.Text(name), 60)
 }
 
 func sections(b *Bundle) []section {
 	var out []section
-	for _, s := range []*section{trust(b), heater(b), whyGains(b), replayed(b), watch(b), cautions(b), provenance(b)} {
+	for _, s := range []*section{trust(b), heater(b), whyGains(b), replayed(b), drifted(b), watch(b), cautions(b), provenance(b)} {
 		if s != nil {
 			out = append(out, *s)
 		}

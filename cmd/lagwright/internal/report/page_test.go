@@ -91,11 +91,12 @@ func TestPageSections(t *testing.T) {
 		bundle Bundle
 		want   string
 	}{
-		{"all", all, "log heater gains replay watch cautions provenance"},
+		{"all", all, "log heater gains replay drift watch cautions provenance"},
 		{"runs", Bundle{Runs: all.Runs}, "log cautions provenance"},
 		{"card", Bundle{Card: all.Card}, "heater watch cautions provenance"},
 		{"gains", Bundle{Gains: all.Gains}, "gains watch cautions provenance"},
 		{"replay", Bundle{Replay: all.Replay}, "replay watch cautions provenance"},
+		{"drift", Bundle{Drift: all.Drift}, "drift watch cautions"},
 		{"nothing", Bundle{}, "cautions"},
 	} {
 		page := pageOf(t, c.bundle)
@@ -124,6 +125,7 @@ func TestAnswerFollowsVerdict(t *testing.T) {
 		want string
 		sign string
 	}{
+		{"meets, no run shows it", func(b *Bundle) { b.Replay.Summary.Judged = 0 }, "Enter these gains", "good"},
 		{"meets, all runs", func(b *Bundle) { b.Replay.Summary.Meets = true }, "Enter these gains", "good"},
 		{"meets, not all runs", func(b *Bundle) {}, "do not hold on every past run", "bad"},
 		{"meets, back-test fails", func(b *Bundle) { b.Replay.Runs[1].BackTest.Reproduced = false }, "not proven on past runs", "bad"},

@@ -84,9 +84,16 @@ func replayTable(r *validate.Replay) *table {
 		} {
 			row = append(row, beforeAfter(run, f.pick, f.unit))
 		}
-		t.Rows = append(t.Rows, append(row, num(format.Percent(run.Probability)), yesNo(run.Meets)))
+		t.Rows = append(t.Rows, append(row, num(format.Percent(run.Probability)), judged(run)))
 	}
 	return t
+}
+
+func judged(r *validate.RunReplay) cell {
+	if !r.Judged {
+		return text("not judged")
+	}
+	return yesNo(r.Meets)
 }
 
 // beforeAfter writes a figure as logged and as proposed, "3.6 → 1.2 K", and

@@ -215,7 +215,7 @@ func sampleProfiles(m *fit.Model) []Profile {
 func sampleReplay(g *tune.Gains) *validate.Replay {
 	r := &validate.Replay{
 		Schema: validate.ReplaySchema, Tool: "lagwright (devel)", Card: "card.json", Gains: *g, Requirement: g.Requirement, Plants: 200, Confidence: 0.95,
-		Summary:  validate.Summary{Runs: 2, Meeting: 1, Failed: 1, ShareMeets: 0.5},
+		Summary:  validate.Summary{Runs: 2, Judged: 2, Meeting: 1, Failed: 1, ShareMeets: 0.5},
 		Failed:   []validate.FailedRun{{File: "dryer2-old.csv", Reason: "no temperature column"}},
 		Cautions: []string{"A replay trusts the model outside what it has seen; it is no test of the live loop."},
 	}
@@ -235,7 +235,7 @@ func sampleReplay(g *tune.Gains) *validate.Replay {
 		run := validate.RunReplay{
 			File: "dryer2-shift" + string(rune('a'+k)) + ".csv", SHA256: "aa11bb22cc33dd44ee55ff66aa11bb22cc33dd44ee55ff66aa11bb22cc33dd44", Rows: 2400, Start: &start,
 			Logged: validate.RunMetrics{IAE: ptr(820), Deviation: ptr(3.6), PeakTemp: ptr(78.6), PeakInput: ptr(3.8)},
-			Meets:  k == 0, Probability: 0.99 - 0.4*float64(k), Trace: t,
+			Judged: true, Meets: k == 0, Probability: 0.99 - 0.4*float64(k), Trace: t,
 		}
 		run.Proposed = validate.BandMetrics{
 			Low:    validate.RunMetrics{IAE: ptr(190), Deviation: ptr(1.1), PeakTemp: ptr(76.1), PeakInput: ptr(3.9)},
@@ -251,11 +251,39 @@ func sampleReplay(g *tune.Gains) *validate.Replay {
 	return r
 }
 
+func sampleDrift() *validate.Drift {
+	d := &validate.Drift{
+		Schema: validate.DriftSchema, Tool: "lagwright (devel)", Structure: "chain2", Confidence: 0.95, FalseAlarm: 0.01, Clock: true, Alarm: true,
+		Hints:    []string{"The gain fell while the lags stayed: look at the airflow and the element first."},
+		Cautions: []string{"A drift says where to look, not what is wrong."},
+	}
+	gain := validate.DriftParameter{Name: "gain", Unit: "K/V", Alarm: true, Tested: 9, Text: "Gain fell by 5.9 % (4.1 to 7.7) between run 5 and run 6."}
+	lag := validate.DriftParameter{Name: "lag1", Unit: "s", Tested: 9, Text: "Lag 1: no change seen."}
+	step := 5
+	gain.Step = &validate.Change{P: 0.0004, Run: &step, Size: -0.73, SizeLow: -0.95, SizeHigh: -0.51, Alarm: true}
+	for i := range 9 {
+		start := time.Date(2026, 1, 7+14*i, 6, 0, 0, 0, time.UTC).Format(time.RFC3339)
+		d.Runs = append(d.Runs, validate.DriftRun{File: "dryer2-" + start[:10] + ".csv", SHA256: "ee", Start: &start, Day: float64(14 * i)})
+		level, wobble := 12.4, 0.06*math.Sin(float64(3*i))
+		if i >= step {
+			level = 11.67
+		}
+		point := func(v, centre, half float64) validate.DriftPoint {
+			return validate.DriftPoint{Value: &v, Low: ptr(v - half), High: ptr(v + half), Centre: &centre, Least: ptr(centre - 1.5*half), Most: ptr(centre + 1.5*half)}
+		}
+		gain.Points = append(gain.Points, point(level+wobble, level, 0.13))
+		lag.Points = append(lag.Points, point(38+20*wobble, 38, 1.4))
+	}
+	lag.Points[3].High = nil
+	d.Parameters = []validate.DriftParameter{gain, lag}
+	return d
+}
+
 func sampleBundle() Bundle {
 	r, c := sampleRun(1400)
 	card, g := sampleCard(), sampleGains()
 	return Bundle{
-		Runs: []*data.Run{r}, Curves: []*Curves{c}, Card: card, Gains: g, Replay: sampleReplay(g),
+		Runs: []*data.Run{r}, Curves: []*Curves{c}, Card: card, Gains: g, Replay: sampleReplay(g), Drift: sampleDrift(),
 		Profiles: sampleProfiles(&card.Models[0]), Loop: sampleLoop(),
 		Tool: "lagwright (devel)", Command: "lagwright run dryer2-bump.csv --settling 60s --overshoot 8% --ms 1.7 --input-max 10 --rand 1",
 	}

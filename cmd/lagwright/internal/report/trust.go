@@ -65,11 +65,16 @@ func runHeading(runs []*data.Run, i int) string {
 }
 
 func runTitle(s data.Source) string {
-	name := format.Text(s.File)
-	if s.Name != "" {
-		name += ", run " + format.Text(s.Name)
+	return fileAndRun(s.File, s.Name)
+}
+
+// fileAndRun names a run by its file and, in a file of several, its own name.
+func fileAndRun(file, run string) string {
+	name := format.Text(file)
+	if run != "" {
+		name += ", run " + format.Text(run)
 	}
-	return name
+	return format.Clip(name, 60)
 }
 
 // remarksOf lists what was mended, set aside or seen while reading, in words.

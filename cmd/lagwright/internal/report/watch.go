@@ -35,9 +35,17 @@ func watch(b *Bundle) *section {
 			items = append(items, item{"warn", fmt.Sprintf("%s could not be replayed: %s", format.Text(f.File), f.Reason)})
 		}
 	}
+	if b.Drift != nil {
+		for _, w := range b.Drift.Warnings {
+			items = append(items, item{"warn", w})
+		}
+		for _, f := range b.Drift.Failed {
+			items = append(items, item{"warn", fmt.Sprintf("%s could not be fitted: %s", format.Text(f.File), f.Reason)})
+		}
+	}
 	s := &section{ID: "watch", Title: "What to watch for"}
 	if len(items) == 0 {
-		if b.Card == nil && b.Gains == nil && b.Replay == nil {
+		if b.Card == nil && b.Gains == nil && b.Replay == nil && b.Drift == nil {
 			return nil
 		}
 		s.Lead = "No warning came with these results."
@@ -58,6 +66,9 @@ func cautions(b *Bundle) *section {
 	}
 	if b.Replay != nil {
 		texts = append(texts, b.Replay.Cautions...)
+	}
+	if b.Drift != nil {
+		texts = append(texts, b.Drift.Cautions...)
 	}
 	var items []item
 	var seen []string
