@@ -209,7 +209,7 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 		for k := range rhs {
 			rhs[k] = r.y[k] - p.gain*w.raw[0][k]
 		}
-		beta := weightedSolve(r.filter, cols, rhs)
+		beta := weightedSolve(&r.filter, cols, rhs)
 		t := b.tangentColumns(i)
 		all := append(append([][]float64(nil), cols...), t...)
 		white := columns(len(all), len(r.t))

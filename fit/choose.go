@@ -5,6 +5,9 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"runtime"
+	"sort"
+	"sync"
 
 	"lagwright/data"
 	"lagwright/ident"
@@ -20,6 +23,8 @@ type outcome struct {
 	selected int
 	weights  []float64 // of the models, for plausible plants
 	draws    []plausible
+
+	one, two *fitted // the single lag and the chain of two that settled initial state and drift
 }
 
 // plausible is a draw with the structure it is of.
@@ -52,47 +57,112 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 		return nil, err
 	}
 	structures := o.structures()
-	fits := map[string]*fitted{}
-	get := func(name string) *fitted {
-		if f, ok := fits[name]; ok {
-			return f
-		}
-		st, _ := ident.ParseStructure(name)
-		var shorter *fitted
-		switch name {
-		case "chain2":
-			shorter = fits["fopdt"]
-		case "chain3":
-			shorter = fits["chain2"]
-		case "chain4":
-			shorter = fits["chain3"]
-		}
-		f := s.fit(st, shorter)
-		fits[name] = f
-		return f
+	fits := make([]*fitted, len(structures))
+	studies := make([]*study, len(structures))
+	for i := range studies {
+		studies[i] = s.clone()
 	}
-	if s.tau == 0 {
-		get("fopdt")
-	}
-	level := o.Confidence
+	// Fits side by side; the chains wait for one another, since each starts
+	// from the one below.
+	tasks := map[int][]func(){}
+	task := func(group int, f func()) { tasks[group] = append(tasks[group], f) }
+	var chains []int
 	for i, st := range structures {
-		if err := ctx.Err(); err != nil {
-			return nil, err
+		if !st.Equal() && st.Order() > 1 {
+			chains = append(chains, i)
+			continue
 		}
-		for _, below := range map[string][]string{"chain3": {"chain2"}, "chain4": {"chain2", "chain3"}}[st.String()] {
-			get(below)
-		}
-		f := get(st.String())
-		if !(f.p.s > 0) && len(f.p.part) == 0 {
-			return nil, fmt.Errorf("%w: the least squares of %s did not come to an end", ErrNoAnswer, st)
-		}
-		out.models = append(out.models, s.bound(f, level, rng(o.Rand, "bound", i)))
+		task(i+1, func() { fits[i] = studies[i].fit(st, nil) })
+	}
+	if len(chains) > 0 {
+		task(0, func() {
+			shorter := out.two
+			for _, i := range chains {
+				st := structures[i]
+				for n := shorter.st.Order() + 1; n < st.Order(); n++ {
+					below, _ := ident.ParseStructure(fmt.Sprintf("chain%d", n))
+					shorter = studies[i].clone().fit(below, shorter)
+				}
+				if st.Order() == 2 {
+					shorter = out.one
+				}
+				fits[i] = studies[i].fit(st, shorter)
+				shorter = fits[i]
+			}
+		})
+	}
+	done := 0
+	var mu sync.Mutex
+	tick := func() {
+		mu.Lock()
+		defer mu.Unlock()
+		done++
 		if o.Progress != nil {
-			o.Progress(i+1, len(structures))
+			o.Progress(done, 2*len(structures))
 		}
+	}
+	if err := together(ctx, o.Workers, sortedGroups(tasks), tick); err != nil {
+		return nil, err
+	}
+	out.models = make([]*bounded, len(structures))
+	var bounds [][]func()
+	for i := range structures {
+		bounds = append(bounds, []func(){func() {
+			out.models[i] = studies[i].bound(fits[i], o.Confidence, rng(o.Rand, "bound", i))
+		}})
+	}
+	if err := together(ctx, o.Workers, bounds, tick); err != nil {
+		return nil, err
 	}
 	out.choose()
 	return out, nil
+}
+
+func sortedGroups(tasks map[int][]func()) [][]func() {
+	var keys []int
+	for k := range tasks {
+		keys = append(keys, k)
+	}
+	sort.Ints(keys)
+	var out [][]func()
+	for _, k := range keys {
+		out = append(out, tasks[k])
+	}
+	return out
+}
+
+// together runs groups of tasks on a number of workers, the tasks of a group
+// one after the other; tick is called after each.
+func together(ctx context.Context, workers int, groups [][]func(), tick func()) error {
+	if workers <= 0 {
+		workers = runtime.GOMAXPROCS(0)
+	}
+	next := make(chan []func())
+	var wg sync.WaitGroup
+	for range min(workers, len(groups)) {
+		wg.Add(1)
+		go func() {
+			defer wg.Done()
+			for g := range next {
+				for _, f := range g {
+					if ctx.Err() != nil {
+						return
+					}
+					f()
+					tick()
+				}
+			}
+		}()
+	}
+	for _, g := range groups {
+		select {
+		case next <- g:
+		case <-ctx.Done():
+		}
+	}
+	close(next)
+	wg.Wait()
+	return ctx.Err()
 }
 
 // rng is a random source of its own for each purpose, so that the draws of
@@ -106,13 +176,15 @@ func rng(seed int64, purpose string, index int) *rand.Rand {
 }
 
 // settle decides on the initial state and the drift with a chain of two lags,
-// by AICc on the noise model, unless the options say.
+// by AICc on the noise model, unless the options say. It leaves the single-lag
+// plant and the noise shapes found with two lags as a start for all structures.
 func (out *outcome) settle(s *study) error {
 	o := out.opt
-	var ins []initial
-	if o.Initial == "auto" {
-		ins = []initial{rest, earlier}
-	} else {
+	ins := []initial{rest, earlier}
+	if startsAtRest(s.recs) {
+		ins = ins[:1]
+	}
+	if o.Initial != "auto" {
 		in, err := parseInitial(o.Initial)
 		if err != nil {
 			return fmt.Errorf("%w: %w", ErrOption, err)
@@ -120,23 +192,22 @@ func (out *outcome) settle(s *study) error {
 		ins = []initial{in}
 	}
 	drifts := map[string][]bool{"none": {false}, "linear": {true}, "auto": {true, false}}[o.Drift]
-	if len(ins) == 1 && len(drifts) == 1 {
-		out.initial, out.drift = ins[0], drifts[0]
-		s.set(out.initial, out.drift)
-		return nil
-	}
 	one, _ := ident.ParseStructure("fopdt")
 	two, _ := ident.ParseStructure("chain2")
-	probe := &study{recs: s.recs, white: s.white}
 	best := math.Inf(1)
+	var shapes []shape
+	var weights []float64
 	for _, in := range ins {
+		s.set(in, drifts[0])
+		plain := &study{recs: s.recs, white: true}
+		start := plain.fit(one, nil)
 		for _, dr := range drifts {
-			for _, r := range probe.recs {
-				r.setShape(whiteShape)
-				r.weight = 1
+			s.set(in, dr)
+			free := &study{recs: s.recs, white: s.white, tau: start.p.eta[0], dead: start.p.eta[1]}
+			f := free.fit(two, start)
+			if math.IsNaN(f.p.s) || math.IsInf(f.p.s, 0) {
+				return fmt.Errorf("%s: %w: the least squares did not come to an end", s.recs[0].run.Source.File, ErrNoAnswer)
 			}
-			probe.set(in, dr)
-			f := probe.fit(two, probe.fit(one, nil))
 			score := f.aicc
 			if in == earlier {
 				score += earlierPenalty
@@ -146,15 +217,29 @@ func (out *outcome) settle(s *study) error {
 			}
 			if score < best {
 				best, out.initial, out.drift = score, in, dr
+				out.one, out.two = start, f
+				shapes, weights = f.shapes, f.weight
 			}
 		}
 	}
-	for _, r := range s.recs {
-		r.setShape(whiteShape)
-		r.weight = 1
+	for i, r := range s.recs {
+		r.shape, r.weight = shapes[i], weights[i]
 	}
 	s.set(out.initial, out.drift)
+	s.tau, s.dead = out.one.p.eta[0], out.one.p.eta[1]
 	return nil
+}
+
+// startsAtRest reports whether every record holds still before its first bump
+// for long enough to tell.
+func startsAtRest(recs []*record) bool {
+	for _, r := range recs {
+		bumps := ident.FindBumps(r.run.T, r.run.U, r.run.Y)
+		if len(bumps) == 0 || !bumps[0].SettledBefore {
+			return false
+		}
+	}
+	return true
 }
 
 const (

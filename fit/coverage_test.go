@@ -72,7 +72,7 @@ func families() []family {
 
 // make draws one log of the family.
 func (f family) make(seed uint64) *data.Run {
-	r := rand.New(rand.NewPCG(seed, 77))
+	r := rand.New(rand.NewPCG(seed, uint64(len(f.name))*7919+uint64(f.name[0])*131+uint64(f.name[len(f.name)-1])))
 	run := &data.Run{Source: data.Source{File: fmt.Sprintf("%s-%d", f.name, seed)}}
 	t := 0.0
 	for k := range f.n {
@@ -260,7 +260,7 @@ func TestCoverageTrial(t *testing.T) {
 		if w := os.Getenv("LW_FAMILY"); w != "" && !strings.Contains(f.name, w) {
 			continue
 		}
-		c := study1(t, f, n, Options{Noise: os.Getenv("LW_NOISE"), Drift: os.Getenv("LW_DRIFT")})
+		c := study1(t, f, n, Options{Noise: os.Getenv("LW_NOISE"), Drift: os.Getenv("LW_DRIFT"), Initial: os.Getenv("LW_INIT")})
 		var s []string
 		for j := range c.in {
 			sort.Float64s(c.width[j])

@@ -31,12 +31,11 @@ type engine struct {
 type workspace struct {
 	raw   [][]float64 // simulated: response, d/dlag…, d/ddeadtime
 	start [][]float64 // the same for the change at the first row, or free states
-	dfree [][][]float64
 	g, r  []float64
 	jac   [][]float64 // whitened, projected columns d/deta
 	extra [][]float64 // orthonormal columns of the initial state
-	coef  []float64
-	basis [][]float64
+	basis [][]float64 // the record's and extra
+	spare [][]float64 // memory of extra
 }
 
 // point is an evaluated set of parameters.
@@ -182,7 +181,11 @@ func (e *engine) simulate(r *record, w *workspace, lags []float64, dead float64,
 }
 
 func (e *engine) addExtra(r *record, w *workspace, c []float64) {
-	x := make([]float64, len(c))
+	k := len(w.extra)
+	if k == len(w.spare) {
+		w.spare = append(w.spare, make([]float64, len(c)))
+	}
+	x := w.spare[k]
 	r.filter.apply(x, c)
 	if addToBasis(&w.basis, x) {
 		w.extra = append(w.extra, x)
@@ -282,7 +285,7 @@ func (e *engine) stateCoefficients(r *record, w *workspace, p *point) []float64 
 	for k := range rhs {
 		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
 	}
-	beta := weightedSolve(r.filter, all, rhs)
+	beta := weightedSolve(&r.filter, all, rhs)
 	return beta[m-len(cols):]
 }
 

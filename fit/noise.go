@@ -73,29 +73,20 @@ func momentsOf(h, tc float64, m int) rowMoments {
 	return r
 }
 
-// newFilter returns the filter for rows under the shape s.
-func newFilter(rows []ident.Row, s shape) *filter {
+// set makes f the filter for rows under the shape s, in the memory it has.
+func (f *filter) set(rows []ident.Row, s shape) {
 	n := len(rows)
-	f := &filter{}
-	if s.white >= 1 {
-		f.white, f.plain = true, true
-		for _, r := range rows {
-			if r.M > 1 {
-				f.plain = false
-			}
-		}
-		if f.plain {
-			return f
-		}
-		f.isd = make([]float64, n)
+	f.logdet, f.white, f.plain = 0, s.white >= 1, s.white >= 1
+	f.isd = resize(f.isd, n)
+	if f.white {
 		for k, r := range rows {
+			f.plain = f.plain && r.M <= 1
 			f.isd[k] = math.Sqrt(float64(max(r.M, 1)))
 			f.logdet -= math.Log(float64(max(r.M, 1)))
 		}
-		return f
+		return
 	}
-	buf := make([]float64, 4*n)
-	f.a1, f.a2, f.gain, f.isd = buf[:n:n], buf[n:2*n:2*n], buf[2*n:3*n:3*n], buf[3*n:]
+	f.a1, f.a2, f.gain = resize(f.a1, n), resize(f.a2, n), resize(f.gain, n)
 	v, w := 1-s.white, s.white
 	var (
 		p                 = v // variance of the correlated part at the last sample, given the past
@@ -151,7 +142,6 @@ func newFilter(rows []ident.Row, s shape) *filter {
 		logs += cLog
 	}
 	f.logdet = logs
-	return f
 }
 
 // apply filters src into dst (they may be the same slice).

@@ -27,7 +27,7 @@ type record struct {
 
 	// Under the noise shape in force:
 	shape  shape
-	filter *filter
+	filter filter
 	yw     []float64   // whitened temperature, free of the fixed columns
 	basis  [][]float64 // whitened fixed columns, orthonormal
 	weight float64     // 1/variance relative to the first record
@@ -90,7 +90,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 // model fixes which linear columns the record carries.
 func (r *record) model(in initial, drift bool) {
 	r.rest, r.drift = in, drift
-	r.fixed = r.fixed[:0]
+	r.fixed = nil
 	one := make([]float64, len(r.t))
 	for i := range one {
 		one[i] = 1
@@ -108,7 +108,7 @@ func (r *record) model(in initial, drift bool) {
 // setShape whitens what does not depend on the plant.
 func (r *record) setShape(s shape) {
 	r.shape = s
-	r.filter = newFilter(r.rows, s)
+	r.filter.set(r.rows, s)
 	n := len(r.y)
 	r.yw = resize(r.yw, n)
 	r.filter.apply(r.yw, r.y)
@@ -116,11 +116,23 @@ func (r *record) setShape(s shape) {
 	for _, c := range r.fixed {
 		w := make([]float64, n)
 		r.filter.apply(w, c)
-		if addToBasis(&r.basis, w) {
-			continue
-		}
+		addToBasis(&r.basis, w)
 	}
 	project(r.yw, r.basis)
+}
+
+// clone returns a record that can be used beside r: what a fit changes is its
+// own, what it only reads is shared.
+func (r *record) clone() *record {
+	c := *r
+	c.sim = r.sim.Clone()
+	if r.start != nil {
+		c.start = r.start.Clone()
+	}
+	c.filter = filter{}
+	c.yw, c.basis = nil, nil
+	c.setShape(r.shape)
+	return &c
 }
 
 // addToBasis makes w orthonormal to the basis and appends it; it reports

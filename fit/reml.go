@@ -17,6 +17,9 @@ type tangent struct {
 	tri    [][]float64 // parameter block of the triangular factor: direction = Σ tri·parameter
 	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
+
+	filter filter      // scratch of evaluate
+	white  [][]float64 // scratch: whitened cols, and left
 }
 
 // tangents linearises the model at p on every record.
@@ -43,7 +46,7 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	for k := range rhs {
 		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
 	}
-	beta := weightedSolve(r.filter, linear, rhs)
+	beta := weightedSolve(&r.filter, linear, rhs)
 	t.left = rhs
 	for j, c := range linear {
 		for k, v := range c {
@@ -136,16 +139,17 @@ type node struct {
 // with rss the generalised least-squares sum over all directions X of the
 // tangent, and the quadratic form of the parameters.
 func (t *tangent) evaluate(s shape) node {
-	f := newFilter(t.rec.rows, s)
+	f := &t.filter
+	f.set(t.rec.rows, s)
 	n, p := len(t.left), len(t.cols)
-	white := make([][]float64, p+1)
-	buf := columns(p+1, n)
-	for j, c := range t.cols {
-		f.apply(buf[j], c)
-		white[j] = buf[j]
+	if t.white == nil {
+		t.white = columns(p+1, n)
 	}
-	f.apply(buf[p], t.left)
-	white[p] = buf[p]
+	white := t.white
+	for j, c := range t.cols {
+		f.apply(white[j], c)
+	}
+	f.apply(white[p], t.left)
 	// Cholesky of the Gram matrix, columns in order, the residual last.
 	l := columns(p+1, p+1)
 	logdet := 0.0

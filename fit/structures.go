@@ -48,22 +48,34 @@ type study struct {
 	dead  float64
 }
 
+// clone returns a study on records of its own.
+func (s *study) clone() *study {
+	c := *s
+	c.recs = make([]*record, len(s.recs))
+	for i, r := range s.recs {
+		c.recs[i] = r.clone()
+	}
+	return &c
+}
+
 // fit finds the optimum of one structure. shorter is the fit of the chain with
 // one lag fewer, nil when there is none.
 func (s *study) fit(st ident.Structure, shorter *fitted) *fitted {
 	e := newEngine(st, s.recs)
 	s.applyFix(e)
-	var starts [][]float64
-	switch {
-	case st.Order() <= 1:
-		starts = e.coarse()
-	default:
-		var from []float64
-		if shorter != nil {
-			from = shorter.p.eta
-		}
-		starts = e.starts(s.tau, s.dead, from)
+	if st.Order() <= 1 {
+		return s.fitFrom(e, e.coarse())
 	}
+	var from []float64
+	if shorter != nil {
+		from = shorter.p.eta
+	}
+	return s.fitFrom(e, e.starts(s.tau, s.dead, from))
+}
+
+// fitFrom finds the optimum of the engine's structure from the starts.
+func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
+	st := e.st
 	f := &fitted{st: st, e: e}
 	f.p = e.search(starts)
 	s.coincide(f)

@@ -1,0 +1,398 @@
+package fit
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"os"
+	"strconv"
+	"time"
+
+	"lagwright/data"
+	"lagwright/ident"
+)
+
+// Fit fits the structures to the runs, several runs as one joint fit with the
+// plant shared and baseline, drift and noise of their own, and returns the
+// model card. The error wraps [ErrNoBump], [ErrConstant], [ErrTooShort] or
+// [ErrNoAnswer] when the log cannot be fitted, [ErrOption] when an option is wrong.
+func Fit(ctx context.Context, runs []*data.Run, o Options) (*Card, error) {
+	o, err := o.withDefaults()
+	if err != nil {
+		return nil, err
+	}
+	recs, err := prepare(runs, o.Law)
+	if err != nil {
+		return nil, err
+	}
+	out, err := find(ctx, recs, o)
+	if err != nil {
+		return nil, err
+	}
+	out.sample()
+	return out.card(runs), nil
+}
+
+// card writes down what was found.
+func (out *outcome) card(runs []*data.Run) *Card {
+	o := out.opt
+	c := &Card{
+		Schema: CardSchema, Tool: o.Tool, Created: created(runs),
+		Units:    CardUnits{Time: "s", Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature},
+		InputLaw: o.Law.String(), Initial: out.initial.String(), NoiseModel: o.Noise,
+		Drift: map[bool]string{false: "none", true: "linear"}[out.drift], BumpTime: o.BumpInstant,
+		Confidence: o.Confidence,
+	}
+	c.Range = CardRange{Input: extent(runs, func(r *data.Run) []float64 { return r.U }), Temperature: extent(runs, func(r *data.Run) []float64 { return r.Y })}
+	c.Conditions.Airflow = condition(runs, func(r *data.Run) []float64 { return r.Airflow })
+	c.Conditions.Inlet = condition(runs, func(r *data.Run) []float64 { return r.Inlet })
+	for _, run := range runs {
+		c.Source = append(c.Source, source(run))
+	}
+	for _, m := range out.models {
+		c.Models = append(c.Models, out.model(m))
+	}
+	c.Selected = out.models[out.selected].st.String()
+	out.writePlants(c)
+	c.Derived = out.derived()
+	c.Warnings = out.warnings(runs)
+	c.Cautions = cautions(runs, c)
+	return c
+}
+
+// created is SOURCE_DATE_EPOCH (reproducible-builds.org), else the last time
+// of the logs, else the Unix epoch for logs without a clock.
+func created(runs []*data.Run) string {
+	if s := os.Getenv("SOURCE_DATE_EPOCH"); s != "" {
+		if n, err := strconv.ParseInt(s, 10, 64); err == nil {
+			return time.Unix(n, 0).UTC().Format(time.RFC3339)
+		}
+	}
+	last := time.Unix(0, 0).UTC()
+	for _, r := range runs {
+		if r.Start.IsZero() || len(r.T) == 0 {
+			continue
+		}
+		end := r.Start.Add(time.Duration(r.T[len(r.T)-1] * float64(time.Second)))
+		if end.After(last) {
+			last = end
+		}
+	}
+	return last.Format(time.RFC3339)
+}
+
+func source(run *data.Run) CardSource {
+	s := run.Source
+	out := CardSource{File: s.File, SHA256: s.SHA256, Rows: s.Rows, FromS: s.FromS, ToS: s.ToS,
+		Columns: map[string]string{"time": s.Columns.Time, "input": s.Columns.Input, "temperature": s.Columns.Temperature}}
+	for name, v := range map[string]string{"setpoint": s.Columns.Setpoint, "mode": s.Columns.Mode, "airflow": s.Columns.Airflow, "inlet": s.Columns.Inlet} {
+		if v != "" {
+			out.Columns[name] = v
+		}
+	}
+	if !run.Start.IsZero() {
+		t := run.Start.Format(time.RFC3339Nano)
+		out.Start = &t
+	}
+	return out
+}
+
+// extent is the range of the finite values of a column over the runs.
+func extent(runs []*data.Run, column func(*data.Run) []float64) [2]float64 {
+	lo, hi := math.Inf(1), math.Inf(-1)
+	for _, r := range runs {
+		for _, v := range column(r) {
+			if !math.IsNaN(v) && !math.IsInf(v, 0) {
+				lo, hi = math.Min(lo, v), math.Max(hi, v)
+			}
+		}
+	}
+	return [2]float64{lo, hi}
+}
+
+func condition(runs []*data.Run, column func(*data.Run) []float64) *[2]float64 {
+	e := extent(runs, column)
+	if e[0] > e[1] {
+		return nil
+	}
+	return &e
+}
+
+// gainUnit is the unit of the gain: temperature per input, per input squared
+// under the power law, per input and second for the integrator.
+func (out *outcome) gainUnit(st ident.Structure) string {
+	u := out.recs[0].run.Units
+	in := u.Input
+	if in == "" {
+		in = "input"
+	}
+	if out.opt.Law == ident.Power {
+		in += "²"
+	}
+	temp := temperatureStep(u.Temperature)
+	if st.Integrating() {
+		return temp + "/(" + in + "·s)"
+	}
+	return temp + "/" + in
+}
+
+// temperatureStep is the unit of a temperature difference.
+func temperatureStep(unit string) string {
+	if unit == "degC" || unit == "K" {
+		return "K"
+	}
+	if unit == "" {
+		return "temperature unit"
+	}
+	return unit
+}
+
+// numberOrNull is v for JSON: nil for what is not a number.
+func numberOrNull(v float64) *float64 {
+	if math.IsNaN(v) || math.IsInf(v, 0) {
+		return nil
+	}
+	return &v
+}
+
+func parameter(name, unit string, e estimate) Parameter {
+	p := Parameter{Name: name, Unit: unit, Value: e.value, SE: numberOrNull(e.se), Low: numberOrNull(e.low), High: numberOrNull(e.high), Fixed: e.fixed}
+	if e.fixed {
+		p.SE = nil
+	}
+	return p
+}
+
+// model writes one fitted structure.
+func (out *outcome) model(b *bounded) Model {
+	b.activate()
+	m := Model{Structure: b.st.String(), LogLik: b.loglik, AICc: b.aicc, BIC: b.bic}
+	unit := out.recs[0].run.Units.Temperature
+	m.Parameters = append(m.Parameters, parameter("gain", out.gainUnit(b.st), b.est[0]))
+	for i := range b.e.nl {
+		m.Parameters = append(m.Parameters, parameter(fmt.Sprintf("lag%d", i+1), "s", b.est[i+1]))
+	}
+	m.Parameters = append(m.Parameters, parameter("dead_time", "s", out.deadTime(b)))
+	for r, lin := range b.lin {
+		tag := ""
+		if r > 0 {
+			tag = fmt.Sprintf("_%d", r+1)
+		}
+		for j, name := range []string{"baseline", "drift"} {
+			if j >= len(lin) {
+				break
+			}
+			u := unit
+			if name == "drift" {
+				u = temperatureStep(unit) + "/s"
+			}
+			m.Parameters = append(m.Parameters, parameter(name+tag, u, lin[j]))
+		}
+	}
+	m.Covariance = out.covariance(b)
+	out.residuals(b, &m)
+	return m
+}
+
+// deadTime is the dead time as stated. With an unknown bump instant the change
+// a row shows was made somewhere since the row before, so that the true dead
+// time is the fitted one plus anything from nothing to one sampling interval.
+func (out *outcome) deadTime(b *bounded) estimate {
+	e := b.est[len(b.est)-1]
+	if out.opt.BumpInstant != "unknown" || e.fixed {
+		return e
+	}
+	h := out.recs[0].step
+	e.value += h / 2
+	e.high += h
+	e.se = math.Sqrt(e.se*e.se + h*h/12)
+	return e
+}
+
+// covariance is the Wald covariance of the free parameters among gain, lags
+// and dead time, then the variances of the linear columns.
+func (out *outcome) covariance(b *bounded) [][]float64 {
+	var idx []int
+	for i, e := range b.est {
+		if !e.fixed {
+			idx = append(idx, i)
+		}
+	}
+	n := len(idx)
+	for _, lin := range b.lin {
+		n += len(lin)
+	}
+	cov := columns(n, n)
+	for i, a := range idx {
+		for j, c := range idx {
+			cov[i][j] = b.cov[a][c]
+		}
+		if a == len(b.est)-1 {
+			d := out.deadTime(b)
+			cov[i][i] = d.se * d.se
+		}
+	}
+	k := len(idx)
+	for _, lin := range b.lin {
+		for _, e := range lin {
+			cov[k][k] = e.se * e.se
+			k++
+		}
+	}
+	for i := range cov {
+		for j := range cov[i] {
+			if math.IsNaN(cov[i][j]) || math.IsInf(cov[i][j], 0) {
+				cov[i][j] = 0
+			}
+		}
+	}
+	return cov
+}
+
+// residuals fills the figures of the misfit. The whitened residuals are those
+// of the noise model; the simulated output is what the plant alone explains.
+func (out *outcome) residuals(b *bounded, m *Model) {
+	var whitened, left []float64
+	var sse, sst float64
+	pIn := 1.0
+	lag1 := 0.0
+	b.e.eval(b.p.eta, false)
+	whiteParts := make([][]float64, len(b.e.recs))
+	for i := range b.e.recs {
+		whiteParts[i] = append([]float64(nil), b.e.work[i].r...)
+	}
+	for i, t := range b.fitted.tangents() {
+		r := t.rec
+		m.Samples += len(r.t)
+		mean := 0.0
+		for _, v := range r.y {
+			mean += v / float64(len(r.y))
+		}
+		for k, v := range t.left {
+			sse += v * v
+			sst += (r.y[k] - mean) * (r.y[k] - mean)
+		}
+		left = append(left, t.left...)
+		whitened = append(whitened, whiteParts[i]...)
+		lag1 += autocorrelation(t.left, 1)[1] * float64(len(r.t))
+		if p := crossCorrelationP(whiteParts[i], inputChanges(r), crossLags(r, b)); !math.IsNaN(p) {
+			pIn = math.Min(pIn, p)
+		}
+	}
+	n := float64(m.Samples)
+	m.SSE, m.RMSE = sse, math.Sqrt(sse/n)
+	m.FitPercent = 100 * (1 - math.Sqrt(sse/sst))
+	m.Residuals.Lag1Correlation = lag1 / n
+	lags := max(1, min(20, len(whitened)/5))
+	fitted := 2
+	if out.opt.Noise == "white" {
+		fitted = 0
+	}
+	_, p := ljungBox(whitened, lags, min(fitted, lags-1))
+	m.Residuals.LjungBoxP = finite(p, 1)
+	m.Residuals.InputCorrelationP = math.Min(1, pIn*float64(len(b.e.recs)))
+	m.Noise = out.noise(b)
+}
+
+// finite replaces what is not a number.
+func finite(v, other float64) float64 {
+	if math.IsNaN(v) || math.IsInf(v, 0) {
+		return other
+	}
+	return v
+}
+
+// noise pools the records' noise: variances by their mean, the correlation
+// time by its logarithm.
+func (out *outcome) noise(b *bounded) Noise {
+	var total, white, logTC, weight float64
+	dof := math.Max(float64(b.e.samples()-b.mean), 1) / float64(b.e.samples())
+	for i, r := range b.e.recs {
+		v := b.p.part[i] / (float64(len(r.t)) * dof)
+		s := b.shapes[i]
+		total += v
+		white += v * s.white
+		if s.white < 1 {
+			logTC += (1 - s.white) * math.Log(s.tc)
+			weight += 1 - s.white
+		}
+	}
+	n := float64(len(b.e.recs))
+	out2 := Noise{SD: math.Sqrt(total / n), WhiteSD: math.Sqrt(white / n)}
+	if weight > 0 {
+		out2.CorrelationTime = math.Exp(logTC / weight)
+	}
+	return out2
+}
+
+// inputChanges is the change of phi(u) at each row with a temperature.
+func inputChanges(r *record) []float64 {
+	out := make([]float64, len(r.t))
+	k := 0
+	last := r.input.Before
+	for i, at := range r.input.At {
+		for k < len(r.t)-1 && r.t[k] < at {
+			k++
+		}
+		out[k] += r.input.Value[i] - last
+		last = r.input.Value[i]
+	}
+	return out
+}
+
+// crossLags is how far back, in rows, the input is compared with the residuals:
+// dead time and three times the lags.
+func crossLags(r *record, b *bounded) int {
+	reach := b.p.eta[len(b.p.eta)-1]
+	for _, l := range b.e.lags(b.p.eta) {
+		reach += 3 * l
+	}
+	return max(4, min(int(reach/r.step), len(r.t)/4))
+}
+
+// writePlants puts the plausible plants into the card. Every plant is written
+// as a chain: gain, as many lags as the longest has (0 for an element that it
+// lacks), dead time.
+func (out *outcome) writePlants(c *Card) {
+	c.Plants.Structure = c.Selected
+	c.Plants.Rand = out.opt.Rand
+	most := 0
+	for _, d := range out.draws {
+		if d.st.String() != c.Selected {
+			c.Plants.Structure = "mixed"
+		}
+		most = max(most, d.st.Order())
+	}
+	if c.Plants.Structure != "mixed" {
+		if st, err := ident.ParseStructure(c.Selected); err == nil {
+			most = st.NumLags()
+		}
+	}
+	c.Plants.Parameters = []string{"gain"}
+	for i := range most {
+		c.Plants.Parameters = append(c.Plants.Parameters, fmt.Sprintf("lag%d", i+1))
+	}
+	c.Plants.Parameters = append(c.Plants.Parameters, "dead_time")
+	c.Plants.Values = [][]float64{}
+	r := rng(out.opt.Rand, "instant", 0)
+	for _, d := range out.draws {
+		row := make([]float64, most+2)
+		row[0] = d.gain
+		n := len(d.eta) - 1
+		for i := range most {
+			switch {
+			case c.Plants.Structure != "mixed" || !d.st.Equal():
+				if i < n {
+					row[i+1] = d.eta[i]
+				}
+			case i < d.st.Order():
+				row[i+1] = d.eta[0]
+			}
+		}
+		row[most+1] = d.eta[n]
+		if out.opt.BumpInstant == "unknown" {
+			row[most+1] += r.Float64() * out.recs[0].step
+		}
+		c.Plants.Values = append(c.Plants.Values, row)
+	}
+}
