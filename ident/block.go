@@ -107,6 +107,12 @@ func (c *chain) meanTransition(f *matrix, h float64, m int) {
 	c.transition(&all, float64(m)*h)
 	for i := range size {
 		tau := c.lag(i)
+		leaves := -math.Expm1(-h / tau)
+		if leaves == 0 { // an endless lag: the element keeps its state
+			clear(f[i*maxStates : i*maxStates+i])
+			f[i*maxStates+i] = 1
+			continue
+		}
 		for j := 0; j <= i; j++ {
 			sum := all[i*maxStates+j]
 			if j == i {
@@ -115,7 +121,7 @@ func (c *chain) meanTransition(f *matrix, h float64, m int) {
 			for k := j; k < i; k++ {
 				sum -= one[i*maxStates+k] * f[k*maxStates+j] * float64(m)
 			}
-			f[i*maxStates+j] = sum / (math.Expm1(-h/tau) * float64(m))
+			f[i*maxStates+j] = -sum / (leaves * float64(m))
 		}
 	}
 }

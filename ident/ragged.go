@@ -13,37 +13,46 @@ const nudgeable = 0.5
 
 // nudge carries the state over a short d, of either sign.
 func (c *chain) nudge(x *state, d float64) {
-	if d == 0 {
-		return
-	}
 	n := c.n
-	last := 1 / c.last()
+	var rate state
+	for i := range n + c.q {
+		rate[i] = 1 / c.lag(i)
+	}
+	share := 1.0 // of the slope in a sensitivity
+	if c.equal {
+		share = float64(n)
+	}
+	share *= 1 / c.last()
 	size, term := 1.0, *x
 	z := math.Abs(d) * c.norm()
 	for k := 1; size > 1e-18; k++ {
-		h := d / float64(k)
+		h := d * inverse[k]
 		before := 0.0
 		if n > 1 {
 			before = term[n-2]
 		}
-		slope := (before - term[n-1]) * last
-		for i := range c.q {
-			share := slope
-			if c.equal {
-				share *= float64(n)
-			}
-			term[n+i] = -h * (share + term[n+i]) / c.lag(n+i)
-			x[n+i] += term[n+i]
-		}
-		for i := n - 1; i > 0; i-- {
-			term[i] = h * (term[i-1] - term[i]) / c.lag(i)
+		slope := (before - term[n-1]) * share
+		for i := n; i < n+c.q; i++ {
+			term[i] = -h * (slope + term[i]) * rate[i]
 			x[i] += term[i]
 		}
-		term[0] *= -h / c.tau[0]
+		for i := n - 1; i > 0; i-- {
+			term[i] = h * (term[i-1] - term[i]) * rate[i]
+			x[i] += term[i]
+		}
+		term[0] *= -h * rate[0]
 		x[0] += term[0]
-		size *= z / float64(k)
+		size *= z * inverse[k]
 	}
 }
+
+// inverse[k] is 1/k, for more terms than the series of nudge has.
+var inverse = func() (f [32]float64) {
+	for k := 1; k < len(f); k++ {
+		f[k] = 1 / float64(k)
+	}
+	return f
+}()
 
 // norm bounds the rate at which the state changes, per s.
 func (c *chain) norm() float64 { return 2 / c.tau[0] }
@@ -54,6 +63,7 @@ func spanKey(h float64) uint64 { return math.Float64bits(h) >> (52 - 6) }
 // A stepCache remembers transitions over intervals between rows.
 type stepCache struct {
 	evaluation uint64
+	equal      matrix // work space
 	entry      [128]struct {
 		evaluation uint64 // that filled it
 		h          float64
@@ -61,16 +71,22 @@ type stepCache struct {
 	}
 }
 
-// over carries the state over h s.
+// over carries the state over h s. Equal lags need no memory, their transition
+// being cheap.
 func (s *stepCache) over(c *chain, x *state, h, tolerance float64) {
+	if c.equal {
+		c.equalTransition(&s.equal, h)
+		c.advance(&s.equal, x)
+		return
+	}
 	e := &s.entry[spanKey(h)%uint64(len(s.entry))]
 	if e.evaluation != s.evaluation || (math.Abs(h-e.h)*c.norm() > nudgeable && math.Abs(h-e.h) > tolerance) {
 		e.evaluation, e.h = s.evaluation, h
 		c.transition(&e.f, h)
 	}
 	c.advance(&e.f, x)
-	if math.Abs(h-e.h) > tolerance {
-		c.nudge(x, h-e.h)
+	if d := h - e.h; math.Abs(d) > tolerance {
+		c.nudge(x, d)
 	}
 }
 
