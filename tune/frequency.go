@@ -135,7 +135,6 @@ func bisect(f func(float64) float64, lo, hi float64) float64 {
 // down at every crossing; following it over the stretches with |L| > 1 counts
 // them. A loop with integrators comes in from angle 0 at s = +0.
 func (l *openLoop) stable(low float64, gain []float64) bool {
-	branch := func(w float64) int { return int(math.Floor((l.phase(w) + math.Pi) / (2 * math.Pi))) }
 	if l.k < 0 {
 		return l.integrators == 0 && len(gain) == 0 && math.Abs(l.k) < 1
 	}
@@ -149,14 +148,14 @@ func (l *openLoop) stable(low float64, gain []float64) bool {
 	from, sum := 0, 0
 	for _, w := range gain {
 		if above {
-			sum += branch(w) - from
+			sum += l.branch(w) - from
 		} else {
-			from = branch(w)
+			from = l.branch(w)
 		}
 		above = !above
 	}
 	if above { // |L| stays above 1: excess 0 without dead time
-		sum += branch(1e12*low) - from
+		sum += l.branch(1e12*low) - from
 	}
 	return sum == 0
 }

@@ -284,13 +284,14 @@ func distinct(p []complex128) []complex128 {
 }
 
 // dominantDamping returns the least damping ratio −Re s/|s| of the dominant
-// poles: those with |Im s| up to twice the phase crossover (rad/s, +Inf when
+// poles: those with |s| up to twice the phase crossover (rad/s, +Inf when
 // there is none). Faster ones belong to the endless chain of the dead time,
-// which every delay loop has. It is 1 when no pole swings.
+// which every delay loop has and whose damping ratio always tends to 0. It is
+// 1 when no pole swings.
 func dominantDamping(poles []complex128, phaseCross float64) float64 {
 	least := 1.0
 	for _, s := range poles {
-		if s != 0 && math.Abs(imag(s)) <= 2*phaseCross {
+		if s != 0 && cmplx.Abs(s) <= 2*phaseCross {
 			least = min(least, -real(s)/cmplx.Abs(s))
 		}
 	}

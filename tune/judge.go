@@ -1,0 +1,287 @@
+package tune
+
+import (
+	"math"
+	"math/cmplx"
+	"slices"
+)
+
+// task is a requirement made ready to be judged: what is not asked is +Inf
+// (damping: 0). Temperatures and inputs are changes from the operating point.
+type task struct {
+	ms        float64
+	overshoot float64 // fraction
+	settling  float64 // s
+	band      float64 // fraction of the step
+	damping   float64
+	peakTemp  float64 // highest temperature allowed above the operating point
+	step      float64 // of the setpoint
+	limits    Limits
+	scan      float64
+}
+
+// newTask compiles a requirement for an operating input and temperature.
+func newTask(q Requirement, input, temperature float64) task {
+	t := task{ms: math.Inf(1), overshoot: math.Inf(1), settling: math.Inf(1), band: q.Band, peakTemp: math.Inf(1), step: 1, scan: q.Scan}
+	if t.band == 0 {
+		t.band = 0.02
+	}
+	set := func(to *float64, from *float64, factor, less float64) {
+		if from != nil {
+			*to = (*from - less) * factor
+		}
+	}
+	set(&t.ms, q.Ms, 1, 0)
+	set(&t.overshoot, q.Overshoot, 0.01, 0)
+	set(&t.settling, q.Settling, 1, 0)
+	set(&t.damping, q.Damping, 1, 0)
+	set(&t.peakTemp, q.TempMax, 1, temperature)
+	set(&t.step, q.SetpointStep, 1, 0)
+	shifted := func(v *float64) *float64 {
+		if v == nil {
+			return nil
+		}
+		x := *v - input
+		return &x
+	}
+	t.limits = Limits{Min: shifted(q.InputMin), Max: shifted(q.InputMax), Rate: q.InputRate}
+	return t
+}
+
+// simulates tells whether judging needs a setpoint step.
+func (t *task) simulates() bool {
+	return !math.IsInf(t.overshoot, 1) || !math.IsInf(t.settling, 1) || !math.IsInf(t.peakTemp, 1)
+}
+
+// outcome is what one controller does on one plant.
+type outcome struct {
+	stable      bool
+	quick       quickFigures
+	step        stepFigures
+	violation   float64 // of the requirement that is missed most, in parts of its limit; ≤ 0 when all hold
+	missed      string  // its name
+	dampingHeld bool
+}
+
+// The accuracy of a run while searching and when a result is reported: the
+// step times the highest frequency.
+const (
+	searchStep = 0.15
+	reportStep = 0.05
+)
+
+// hair is what a figure may pass its limit by, in parts of the limit: the
+// accuracy of the simulation, no more.
+const hair = 2e-4
+
+// meets tells whether the requirement holds, giving up at the first failure.
+func (t *task) meets(s *scenario, c law) bool {
+	f := s.quick(c)
+	if !f.stable || f.ms > t.ms*(1+hair) {
+		return false
+	}
+	l := newOpenLoop(s.p, c, s.scan)
+	if t.damping > 0 && !l.dampedEnough(t.damping, s.phaseCross(&l)) {
+		return false
+	}
+	if !t.simulates() {
+		return true
+	}
+	fig, err := t.setpoint(s, c, &l, f, searchStep)
+	return err == nil && t.stepViolation(fig) <= hair
+}
+
+// stepViolation is the worst violation seen in a setpoint step.
+func (t *task) stepViolation(f stepFigures) float64 {
+	worst, _ := t.worstOf(f)
+	return worst
+}
+
+func (t *task) worstOf(f stepFigures) (violation float64, name string) {
+	violation = math.Inf(-1)
+	note := func(v float64, what string) {
+		if v > violation {
+			violation, name = v, what
+		}
+	}
+	if !math.IsInf(t.overshoot, 1) {
+		note((f.overshoot-t.overshoot)/max(t.overshoot, 0.02), "overshoot")
+	}
+	if !math.IsInf(t.settling, 1) {
+		if math.IsNaN(f.settling) {
+			note(100, "settling")
+		} else {
+			note(f.settling/t.settling-1, "settling")
+		}
+	}
+	if !math.IsInf(t.peakTemp, 1) {
+		top := f.peak
+		if t.step < 0 {
+			top = 0
+		}
+		note((top-t.peakTemp)/max(math.Abs(t.peakTemp), 1e-9), "temperature")
+	}
+	return violation, name
+}
+
+// setpoint runs the setpoint step of the task.
+func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine float64) (stepFigures, error) {
+	plan := l.planAt(max(f.crossover, 1/l.spread()), fine)
+	plan.rest = min(1e-3, t.band/10)
+	if fine < searchStep {
+		plan.rest /= 20
+	}
+	sim, err := s.loop(plan.step)
+	if err != nil {
+		return stepFigures{}, err
+	}
+	return setpointStep(sim.under(c, t.limits), s.p, c, t.step, t.band, plan), nil
+}
+
+// load runs a unit load step, limits aside.
+func (t *task) load(s *scenario, c law, f quickFigures, fine float64) (stepFigures, error) {
+	l := newOpenLoop(s.p, c, s.scan)
+	plan := l.planAt(max(f.crossover, 1/l.spread()), fine)
+	plan.rest = 1e-4
+	sim, err := s.loop(plan.step)
+	if err != nil {
+		return stepFigures{}, err
+	}
+	return loadStep(sim.under(c, Limits{}), s.p, c, 1, plan), nil
+}
+
+// judge is meets with everything that was found.
+func (t *task) judge(s *scenario, c law, fine float64) outcome {
+	o := outcome{quick: s.quick(c), violation: math.Inf(-1)}
+	o.stable = o.quick.stable
+	if !o.stable {
+		o.violation, o.missed = 1000, "stability"
+		return o
+	}
+	note := func(v float64, what string) {
+		if v > o.violation {
+			o.violation, o.missed = v, what
+		}
+	}
+	if !math.IsInf(t.ms, 1) {
+		note((o.quick.ms-t.ms)/max(t.ms-1, 0.05), "ms")
+		if o.quick.ms <= t.ms*(1+hair) {
+			o.violation = min(o.violation, 0)
+		}
+	}
+	l := newOpenLoop(s.p, c, s.scan)
+	if o.dampingHeld = true; t.damping > 0 {
+		cross := s.phaseCross(&l)
+		if o.dampingHeld = l.dampedEnough(t.damping, cross); !o.dampingHeld {
+			note(1-l.dampingBelow(t.damping, cross)/t.damping, "damping")
+		} else {
+			note(0, "damping")
+		}
+	}
+	var err error
+	if o.step, err = t.setpoint(s, c, &l, o.quick, fine); err != nil {
+		o.violation, o.missed = 1000, "simulation"
+		return o
+	}
+	if v, what := t.worstOf(o.step); v > hair || v > o.violation {
+		note(v, what)
+	}
+	return o
+}
+
+// met tells whether the requirement held.
+func (o outcome) met() bool { return o.stable && o.violation <= hair }
+
+// phaseCross returns about the lowest frequency at which the loop's phase
+// passes −180° on the scenario's grid, +Inf when it never does.
+func (s *scenario) phaseCross(l *openLoop) float64 {
+	before := l.phase(s.w[0]) + math.Pi
+	for i, w := range s.w[1:] {
+		now := l.phase(w) + math.Pi
+		if before > 0 && now <= 0 {
+			return s.w[i] + (w-s.w[i])*before/(before-now)
+		}
+		before = now
+	}
+	return math.Inf(1)
+}
+
+// dampedEnough tells whether every dominant pole of a stable loop has a
+// damping ratio of zeta or more. It counts the zeros of 1+L in the sector
+// |arg s| < π − acos(zeta), |s| < 2·phaseCross by the argument principle: along
+// the arc from the real axis to the sector's edge and down the edge to the
+// origin, where L ~ k/s^n, the angle of 1+L must change by
+// −n·(π − acos(zeta)) and no more.
+func (l *openLoop) dampedEnough(zeta, phaseCross float64) bool {
+	psi := math.Pi - math.Acos(min(zeta, 1-1e-9))
+	low, high := l.corners()
+	radius := min(2*phaseCross, 100*high)
+	bottom := 1e-4 * min(low, radius) / (1 + math.Abs(l.k))
+	start := complex(radius, 0)
+	w := winding{l: l, at: start, value: 1 + l.at(start)}
+	const onArc, onEdge = 16, 40
+	for i := range onArc {
+		w.to(cmplx.Rect(radius, psi*float64(i+1)/onArc), 0)
+	}
+	for i := range onEdge {
+		w.to(cmplx.Rect(radius*math.Pow(bottom/radius, float64(i+1)/onEdge), psi), 0)
+	}
+	count := (w.angle + float64(l.integrators)*psi) / math.Pi
+	return math.Round(count) == 0
+}
+
+// winding follows the angle of 1+L along a path.
+type winding struct {
+	l         *openLoop
+	at, value complex128
+	angle     float64
+}
+
+// to goes on in a straight line, in halves wherever the angle turns fast.
+func (w *winding) to(s complex128, depth int) {
+	value := 1 + w.l.at(s)
+	turn := cmplx.Phase(value / w.value)
+	if math.Abs(turn) > 0.6 && depth < 12 {
+		w.to((w.at+s)/2, depth+1)
+		w.to(s, depth+1)
+		return
+	}
+	w.at, w.value = s, value
+	w.angle += turn
+}
+
+// dampingBelow returns the damping ratio of the least damped dominant pole,
+// known to be less than zeta.
+func (l *openLoop) dampingBelow(zeta, phaseCross float64) float64 {
+	lo, hi := 0.0, zeta
+	for range 14 {
+		mid := (lo + hi) / 2
+		if l.dampedEnough(mid, phaseCross) {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	return lo
+}
+
+// quantile is the smallest value that a share of the values does not exceed;
+// NaN counts as larger than everything.
+func quantile(v []float64, share float64) float64 {
+	if len(v) == 0 {
+		return math.NaN()
+	}
+	sorted := slices.Clone(v)
+	for i, x := range sorted {
+		if math.IsNaN(x) {
+			sorted[i] = math.Inf(1)
+		}
+	}
+	slices.Sort(sorted)
+	return sorted[needed(len(sorted), share)-1]
+}
+
+// needed is how many of n make up a share, at least 1.
+func needed(n int, share float64) int {
+	return max(1, min(n, int(math.Ceil(share*float64(n)-1e-9))))
+}

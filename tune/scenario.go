@@ -1,0 +1,226 @@
+package tune
+
+import (
+	"math"
+	"math/cmplx"
+
+	"lagwright/ident"
+)
+
+// A scenario is one plausible plant made ready to be tried under many
+// controllers: its frequency response on a grid of its own and steppers kept
+// from run to run. A scenario serves one goroutine at a time.
+type scenario struct {
+	p    ident.Plant
+	scan float64
+	card int // which of several cards it comes from
+
+	w     []float64    // rad/s, ascending
+	g     []complex128 // G(jw) with half a scan of dead time more
+	loops map[int]*loopSim
+}
+
+// perDecade is the density of a scenario's grid; the peak is refined between
+// its points.
+const perDecade = 32
+
+func newScenario(p ident.Plant, scan float64) *scenario {
+	s := &scenario{p: p, scan: scan, loops: map[int]*loopSim{}}
+	analysed := p
+	analysed.DeadTime += scan / 2
+	low, high := span(analysed)
+	n := int(math.Ceil(perDecade*math.Log10(high/low))) + 1
+	s.w, s.g = make([]float64, n), make([]complex128, n)
+	for i := range n {
+		s.w[i] = low * math.Pow(10, float64(i)/perDecade)
+		s.g[i] = analysed.Response(s.w[i])
+	}
+	return s
+}
+
+// span returns the frequencies between which a sensible loop on the plant has
+// its sensitivity peak.
+func span(p ident.Plant) (low, high float64) {
+	sum, shortest := p.DeadTime, p.DeadTime
+	for _, tau := range p.Elements() {
+		sum += tau
+		if tau > 0 && (shortest == 0 || tau < shortest) {
+			shortest = tau
+		}
+	}
+	if sum == 0 {
+		return 1e-3, 1e3 // an integrator without dead time has no time of its own
+	}
+	low, high = 0.02/sum, 30/shortest
+	if p.Structure.Integrating() {
+		low /= 100
+	}
+	if _, pu, err := quickUltimate(p); err == nil {
+		high = min(high, 5*2*math.Pi/pu)
+	}
+	return low, max(high, 100*low)
+}
+
+// quickUltimate is ultimate without the sweep: the phase of a lag chain with
+// dead time falls all the way, so there is one place where it is −180°.
+func quickUltimate(p ident.Plant) (ku, pu float64, err error) {
+	l := newOpenLoop(p, law{kc: 1, ti: math.Inf(1)}, 0)
+	l.k = math.Abs(l.k)
+	if l.delay == 0 && len(felt(l.lags, l.spread()))+l.integrators < 3 {
+		return ultimate(p)
+	}
+	lo, hi := 1e-9/l.spread(), 1/l.spread()
+	for range 200 {
+		if l.phase(hi) < -math.Pi {
+			break
+		}
+		hi *= 2
+	}
+	if l.phase(hi) >= -math.Pi {
+		return ultimate(p)
+	}
+	w := bisect(func(w float64) float64 { return l.phase(w) + math.Pi }, lo, hi)
+	return 1 / (l.magnitude(w) * p.Gain), 2 * math.Pi / w, nil
+}
+
+// response returns C(jw).
+func (c law) response(w float64) complex128 {
+	num := complex(1, c.td*w)
+	if c.integral() {
+		num -= complex(0, 1/(c.ti*w))
+	}
+	num *= complex(c.kc, 0)
+	if c.tf > 0 {
+		num /= complex(1, c.tf*w)
+	}
+	return num
+}
+
+// quickFigures are the figures of a loop found on a scenario's grid. Ms and
+// the margins are exact to about 1e-4.
+type quickFigures struct {
+	stable      bool
+	ms          float64
+	crossover   float64 // rad/s, 0 when |L| < 1 throughout
+	phaseMargin float64 // degrees, +Inf when there is no crossover
+	delayMargin float64 // s
+	gainMargin  float64
+}
+
+// quick judges stability and Ms.
+func (s *scenario) quick(c law) quickFigures {
+	f := quickFigures{phaseMargin: math.Inf(1), delayMargin: math.Inf(1), gainMargin: math.Inf(1)}
+	l := newOpenLoop(s.p, c, s.scan)
+	if l.excess() == 0 || l.k < 0 { // limits at infinity: the sweep knows them
+		full := l.figures()
+		return quickFigures{full.Stable, full.Ms, full.Crossover, full.PhaseMargin, full.DelayMargin, full.GainMargin}
+	}
+	least, at := math.Inf(1), 0
+	above, branch := true, 0 // a loop with an integrator starts above 1
+	if l.integrators == 0 {
+		above = l.k > 1
+	}
+	sum := 0
+	var last complex128
+	for i, w := range s.w {
+		r := s.g[i] * c.response(w)
+		if d := norm(1 + r); d < least {
+			least, at = d, i
+		}
+		if now := norm(r) > 1; now != above {
+			at := l.crossAbout(w)
+			b := l.branch(at)
+			if above {
+				sum += b - branch
+				f.note(&l, at)
+			} else {
+				branch = b
+			}
+			above = now
+		}
+		if i > 0 && real(r) < 0 && imag(last)*imag(r) < 0 && norm(r) < 1 {
+			t := imag(last) / (imag(last) - imag(r))
+			f.gainMargin = min(f.gainMargin, 1/math.Abs(real(last)+t*(real(r)-real(last))))
+		}
+		last = r
+	}
+	if above { // the crossover lies beyond the grid
+		return s.slow(&l)
+	}
+	f.stable = sum == 0
+	f.ms = s.peak(c, at, least)
+	return f
+}
+
+func norm(z complex128) float64 { return real(z)*real(z) + imag(z)*imag(z) }
+
+// crossAbout returns the place of |L| = 1 next to w, by the secant rule on
+// logarithmic scales.
+func (l *openLoop) crossAbout(w float64) float64 {
+	x0, y0 := math.Log(w), math.Log(l.magnitude(w))
+	x1 := x0 + 0.03
+	for range 12 {
+		y1 := math.Log(l.magnitude(math.Exp(x1)))
+		if math.Abs(y1) < 1e-7 || y1 == y0 {
+			break
+		}
+		x0, x1, y0 = x1, x1-y1*(x1-x0)/(y1-y0), y1
+	}
+	return math.Exp(x1)
+}
+
+func (f *quickFigures) note(l *openLoop, w float64) {
+	f.crossover = max(f.crossover, w)
+	above := math.Mod(l.phase(w)+math.Pi, 2*math.Pi)
+	if above < 0 {
+		above += 2 * math.Pi
+	}
+	f.phaseMargin = min(f.phaseMargin, min(above, 2*math.Pi-above)*180/math.Pi)
+	f.delayMargin = min(f.delayMargin, above/w)
+}
+
+// branch counts the turns of the phase at w, see stable.
+func (l *openLoop) branch(w float64) int {
+	return int(math.Floor((l.phase(w) + math.Pi) / (2 * math.Pi)))
+}
+
+// slow is quick by the full sweep.
+func (s *scenario) slow(l *openLoop) quickFigures {
+	full := l.figures()
+	return quickFigures{full.Stable, full.Ms, full.Crossover, full.PhaseMargin, full.DelayMargin, full.GainMargin}
+}
+
+// peak refines Ms about grid point i by the parabola through three points of
+// log|1+L| and one exact value.
+func (s *scenario) peak(c law, i int, least float64) float64 {
+	if i == 0 || i == len(s.w)-1 {
+		return max(1, 1/math.Sqrt(least))
+	}
+	at := func(j int) float64 { return math.Log(norm(1 + s.g[j]*c.response(s.w[j]))) }
+	a, b, d := at(i-1), at(i), at(i+1)
+	if bend := a - 2*b + d; bend > 0 {
+		t := (a - d) / (2 * bend)
+		w := s.w[i] * math.Pow(10, t/perDecade)
+		l := s.p.Response(w) * c.response(w)
+		if s.scan > 0 {
+			l *= cmplx.Exp(complex(0, -w*s.scan/2))
+		}
+		least = min(least, norm(1+l))
+	}
+	return max(1, 1/math.Sqrt(least))
+}
+
+// loop returns a simulation of the plant with about the given step; steps are
+// powers of two, so that steppers can be kept.
+func (s *scenario) loop(step float64) (*loopSim, error) {
+	octave := int(math.Floor(math.Log2(step)))
+	if l := s.loops[octave]; l != nil {
+		return l, nil
+	}
+	l, err := newLoopSim(s.p, s.scan, math.Ldexp(1, octave))
+	if err != nil {
+		return nil, err
+	}
+	s.loops[octave] = l
+	return l, nil
+}

@@ -1,0 +1,296 @@
+package tune
+
+import (
+	"context"
+	"math"
+	"slices"
+
+	"gonum.org/v1/gonum/optimize"
+)
+
+// Synthesis. For given integral and derivative times the largest gain that
+// holds the requirement on the wanted share of the plausible plants gives the
+// smallest load IAE, so the gain is searched inside and the times outside. A
+// design is the law found and how it did on the plants it was chosen on.
+type design struct {
+	law   law
+	found bool    // the requirement holds on the share
+	iae   float64 // median over plants, see loadIAE; +Inf without integral action
+	miss  float64 // see ensemble.miss; for designs not found
+}
+
+// search is one synthesis.
+type search struct {
+	ctx       context.Context
+	on        *ensemble
+	assurance float64
+	sign      float64 // of the gain
+	kc        float64 // a gain to start from, > 0
+	ti        [2]float64
+	b         float64
+}
+
+// filterShare is the measurement filter as a part of the derivative time
+// (common practice, no source: a tenth).
+const filterShare = 0.1
+
+// iaeSample is how many plants the median IAE is taken over during a search.
+const iaeSample = 31
+
+// newSearch prepares a synthesis around a typical plant.
+func newSearch(ctx context.Context, e *ensemble, assurance float64) *search {
+	s := &search{ctx: ctx, on: e, assurance: assurance, b: 1}
+	p := e.scenarios[0].p
+	s.sign = math.Copysign(1, p.Gain)
+	var long, short float64
+	long = p.DeadTime + e.task.scan
+	for _, tau := range p.Elements() {
+		long += tau
+	}
+	short = 0.02 * long
+	s.kc = 2 / math.Abs(p.Gain)
+	if ku, pu, err := quickUltimate(p); err == nil {
+		short = 0.05 * pu
+		s.kc = math.Abs(ku) / 2
+		long = max(long, pu)
+	}
+	if p.Structure.Integrating() {
+		long *= 40
+	}
+	if long == 0 {
+		long, short = 100, 0.1
+	}
+	s.ti = [2]float64{short, 4 * long}
+	return s
+}
+
+// design searches a controller of a kind.
+func (s *search) design(kind string) design {
+	switch kind {
+	case "p":
+		return s.proportional()
+	case "pi":
+		return s.integral(0)
+	}
+	return s.derivative()
+}
+
+func (s *search) law(kc, ti, td float64) law {
+	return law{kc: s.sign * kc, ti: ti, td: td, tf: filterShare * td, b: s.b}
+}
+
+// loopCeiling bounds the gain searched, as a multiple of the starting gain: a
+// plant whose model sets no bound at all (one lag, no dead time) gets that.
+const loopCeiling = 50
+
+// largest returns the largest gain, to 0.2 %, with which holds is true, going
+// down from guess (or up, while it holds); ok is false when there is none
+// down to floor.
+func largest(guess, floor, ceiling float64, holds func(float64) bool) (kc float64, ok bool) {
+	const ratio = 1.25
+	hi := min(guess*ratio, ceiling)
+	for holds(hi) {
+		if hi >= ceiling {
+			return ceiling, true
+		}
+		guess, ok = hi, true
+		hi = min(hi*ratio, ceiling)
+	}
+	lo := guess
+	if !ok {
+		for lo = hi / ratio; !holds(lo); lo /= ratio {
+			if lo < floor {
+				return 0, false
+			}
+			hi = lo
+		}
+	}
+	for hi/lo > 1.002 {
+		mid := math.Sqrt(lo * hi)
+		if holds(mid) {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	return lo, true
+}
+
+// proportional: the largest gain leaves the smallest offset.
+func (s *search) proportional() design {
+	try := func(kc float64) law { return s.law(kc, math.Inf(1), 0) }
+	kc, ok := largest(s.kc, s.kc*1e-3, s.kc*loopCeiling, func(kc float64) bool {
+		return !cancelled(s.ctx) && s.on.holds(try(kc), s.assurance)
+	})
+	if ok {
+		return design{law: try(kc), found: true, iae: math.Inf(1)}
+	}
+	return s.nearest("p")
+}
+
+// integral: golden sections over log Ti after a coarse scan; td is a fixed
+// part of Ti (0 for PI).
+func (s *search) integral(part float64) design {
+	d := s.overTimes(s.on, part, 13, 9)
+	if d.found {
+		return d
+	}
+	if part > 0 {
+		return d
+	}
+	return s.nearest("pi")
+}
+
+// overTimes searches Ti: scan points on a logarithmic grid, then refine golden
+// sections about the best.
+func (s *search) overTimes(on *ensemble, part float64, scan, refine int) design {
+	best := design{iae: math.Inf(1)}
+	guess := s.kc
+	tried := map[float64]design{}
+	try := func(logTi float64) float64 {
+		if d, ok := tried[logTi]; ok {
+			return d.iae
+		}
+		d := s.atTimes(on, math.Exp(logTi), part, guess)
+		tried[logTi] = d
+		if d.found {
+			guess = math.Abs(d.law.kc)
+		}
+		if d.found && d.iae < best.iae {
+			best = d
+		}
+		return d.iae
+	}
+	lo, hi := math.Log(s.ti[0]), math.Log(s.ti[1])
+	grid := make([]float64, scan)
+	value := make([]float64, scan)
+	for i := range grid { // from long times down: there the gain varies least
+		k := scan - 1 - i
+		grid[k] = lo + (hi-lo)*float64(k)/float64(scan-1)
+		value[k] = try(grid[k])
+	}
+	if !best.found {
+		return best
+	}
+	at := slices.Index(value, slices.Min(value))
+	a, b := grid[max(0, at-1)], grid[min(scan-1, at+1)]
+	guess = math.Abs(best.law.kc)
+	const g = 0.6180339887498949
+	c, d := b-g*(b-a), a+g*(b-a)
+	for range refine {
+		if cancelled(s.ctx) {
+			break
+		}
+		if try(c) <= try(d) {
+			b, d = d, c
+			c = b - g*(b-a)
+		} else {
+			a, c = c, d
+			d = a + g*(b-a)
+		}
+	}
+	return best
+}
+
+// atTimes finds the gain for given times.
+func (s *search) atTimes(on *ensemble, ti, part, guess float64) design {
+	try := func(kc float64) law { return s.law(kc, ti, part*ti) }
+	kc, ok := largest(guess, s.kc*1e-3, s.kc*loopCeiling, func(kc float64) bool {
+		return !cancelled(s.ctx) && on.holds(try(kc), s.assurance)
+	})
+	if !ok {
+		return design{iae: math.Inf(1)}
+	}
+	c := try(kc)
+	return design{law: c, found: true, iae: on.loadIAE(c, iaeSample, searchStep)}
+}
+
+// derivative: the part Td/Ti by golden sections on a thinned ensemble, then
+// the times again on all plants.
+func (s *search) derivative() design {
+	few := s.on.thinned(48)
+	best, at := math.Inf(1), 0.0
+	for _, part := range []float64{0.06, 0.12, 0.2, 0.3, 0.45} {
+		if d := s.overTimes(few, part, 9, 5); d.found && d.iae < best {
+			best, at = d.iae, part
+			s.kc = math.Abs(d.law.kc)
+		}
+	}
+	if at == 0 {
+		return s.nearest("pid")
+	}
+	narrow := *s
+	d := narrow.overTimes(s.on, at, 13, 8)
+	if !d.found {
+		return s.nearest("pid")
+	}
+	return d
+}
+
+// nearest looks for the gains that miss the requirement least: the coarse
+// scan's best point, then the simplex method (Nelder and Mead 1965) on the
+// logarithms of gain and times.
+func (s *search) nearest(kind string) design {
+	few := s.on.thinned(60)
+	build := func(x []float64) law {
+		ti, td := math.Inf(1), 0.0
+		if kind != "p" {
+			ti = math.Exp(x[1])
+		}
+		if kind == "pid" {
+			td = ti * math.Exp(x[2])
+		}
+		return s.law(math.Exp(x[0]), ti, td)
+	}
+	best, at := math.Inf(1), []float64{math.Log(s.kc)}
+	visit := func(x []float64) {
+		if cancelled(s.ctx) {
+			return
+		}
+		if m := few.miss(build(x), s.assurance); m < best {
+			best, at = m, slices.Clone(x)
+		}
+	}
+	times := []float64{0}
+	if kind != "p" {
+		times = times[:0]
+		lo, hi := math.Log(s.ti[0]), math.Log(s.ti[1])
+		for i := range 8 {
+			times = append(times, lo+(hi-lo)*float64(i)/7)
+		}
+	}
+	for _, logTi := range times {
+		for i := range 11 {
+			x := []float64{math.Log(s.kc) + math.Log(3) - 0.55*float64(i)}
+			if kind != "p" {
+				x = append(x, logTi)
+			}
+			if kind == "pid" {
+				x = append(x, math.Log(0.2))
+			}
+			visit(x)
+		}
+	}
+	if len(at) == 1 && kind != "p" { // nothing was stable
+		at = append(at, math.Log(s.ti[1]))
+		if kind == "pid" {
+			at = append(at, math.Log(0.2))
+		}
+	}
+	problem := optimize.Problem{Func: func(x []float64) float64 {
+		if cancelled(s.ctx) {
+			return math.MaxFloat64
+		}
+		return few.miss(build(x), s.assurance)
+	}}
+	if r, err := optimize.Minimize(problem, at, &optimize.Settings{FuncEvaluations: 80}, &optimize.NelderMead{SimplexSize: 0.3}); r != nil && (err == nil || r.F <= best) {
+		at = r.X
+	}
+	c := build(at)
+	d := design{law: c, iae: math.Inf(1), miss: s.on.miss(c, s.assurance)}
+	d.found = d.miss <= hair
+	if c.integral() {
+		d.iae = s.on.loadIAE(c, iaeSample, searchStep)
+	}
+	return d
+}
