@@ -24,7 +24,9 @@ func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
 		}
 		day, alt = first, second
 	}
-	rest = bytes.TrimLeft(rest, " T,t_\t")
+	for len(rest) > 0 && isStampGap(rest[0]) {
+		rest = rest[1:]
+	}
 	if len(rest) == 0 {
 		return day, alt, true
 	}
@@ -36,6 +38,11 @@ func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
 		alt += tod - zone
 	}
 	return day + tod - zone, alt, true
+}
+
+// isStampGap tells the characters between a date and a time of day.
+func isStampGap(c byte) bool {
+	return c == 'T' || c == ' ' || c == ',' || c == 't' || c == '_' || c == '\t'
 }
 
 // cachedDate tells that b begins with the ten bytes of the date read last.

@@ -31,6 +31,7 @@ type csvReader struct {
 	tables []*table
 	byName map[string]*table
 	long   *longReader // rows are (time, tag, value)
+	expect int         // rows of a file of one run, 0 when nobody knows
 
 	rec     record
 	cells   [][]byte
@@ -62,6 +63,9 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 		return nil, nil, fmt.Errorf("%s: %w", s.path, err)
 	}
 	d.rows = nil
+	if c.at[roleRun] < 0 && c.long == nil {
+		c.expect = s.expectedRows(sample)
+	}
 	lines := newLineReader(s.path, io.MultiReader(bytes.NewReader(sample), text))
 	lines.onlyCR, lines.delim = d.onlyCR, d.delim
 	if err := c.readRows(ctx, lines); err != nil {
@@ -289,7 +293,7 @@ func (c *csvReader) table(name string) *table {
 	}
 	tb := c.byName[name]
 	if tb == nil {
-		tb = newTable(name, c.at)
+		tb = newTable(name, c.at, c.expect)
 		c.byName[name] = tb
 		c.tables = append(c.tables, tb)
 	}

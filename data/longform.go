@@ -149,7 +149,7 @@ func (l *longReader) open(run, tag string) *series {
 	}
 	at := noLayout()
 	at[roleInput], at[roleMode] = 0, 1
-	s := &series{run: run, tag: tag, tb: newTable(run, at)}
+	s := &series{run: run, tag: tag, tb: newTable(run, at, 0)}
 	l.byName[run+"\x00"+tag] = s
 	l.series = append(l.series, s)
 	return s
@@ -219,7 +219,7 @@ func (l *longReader) columns() []column {
 // records; a temperature is there only where it was recorded.
 func (l *longReader) merge(run string, cols []column, at layout, info *reading, c *csvReader) (*table, error) {
 	var parts [numRoles]*rows
-	tb := newTable(run, at)
+	tb := newTable(run, at, 0)
 	var grid []int64
 	for r := range numRoles {
 		i := at[r]

@@ -63,6 +63,9 @@ var fillValues = []float64{
 	1e30, 1e31, -1e31, 9.9e37, -9.9e37, 1e38, 3.4028234663852886e38, -3.4028234663852886e38,
 }
 
+// smallestFill is below all fill values: most readings need no search.
+const smallestFill = 300
+
 // rangeEnds are what an instrument shows for a broken thermocouple: the ends
 // of the ranges of the types K, J, T, N, E, R, S and B and of a platinum
 // resistor, in degC (the limits of IEC 60584-1 and IEC 60751, from memory).
@@ -116,7 +119,7 @@ const rareShare = 0.05
 func setInputSentinelsAside(u []float64, missing map[string]int) {
 	n := 0
 	for _, x := range u {
-		if slices.Contains(fillValues, x) {
+		if math.Abs(x) > smallestFill && slices.Contains(fillValues, x) {
 			n++
 		}
 	}

@@ -149,6 +149,9 @@ func (p *parquetReader) read(ctx context.Context, o *Options) ([]*table, *readin
 		return nil, nil, fmt.Errorf("%s: %w", p.path, err)
 	}
 	d.rows = nil
+	if c.at[roleRun] < 0 && c.long == nil {
+		c.expect = int(min(p.f.NumRows(), mostReserved))
+	}
 	if err := p.readRows(ctx); err != nil {
 		return nil, nil, p.hint(err)
 	}

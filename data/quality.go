@@ -7,7 +7,11 @@ import (
 
 // sampleMax bounds how many values a median is taken of: of longer columns
 // every k-th is used, which changes no figure that anyone acts on.
-const sampleMax = 1 << 20
+const sampleMax = 1 << 16
+
+// stride is the odd step at which about sampleMax of n values are looked at;
+// odd, so that a pattern that repeats every second row shows.
+func stride(n int) int { return n/sampleMax | 1 }
 
 // assess fills in the figures of Quality that need the finished columns.
 func assess(run *Run, o *Options) {
@@ -29,9 +33,9 @@ func assess(run *Run, o *Options) {
 // intervals gives the median interval between rows and the 95th percentile
 // of the distance from it, s.
 func intervals(t []float64) (median, jitter float64) {
-	stride := 1 + len(t)/sampleMax
-	var d []float64
-	for i := 1; i < len(t); i += stride {
+	step := stride(len(t))
+	d := make([]float64, 0, len(t)/step+1)
+	for i := 1; i < len(t); i += step {
 		d = append(d, t[i]-t[i-1])
 	}
 	if len(d) == 0 {
@@ -78,9 +82,9 @@ func findGaps(t []float64, median float64) []Gap {
 // where no resolution shows.
 func quantum(y []float64) float64 {
 	step := math.Inf(1)
-	var diffs []float64
-	stride := 1 + len(y)/sampleMax
-	for i := 1; i < len(y); i += stride {
+	every := stride(len(y))
+	diffs := make([]float64, 0, len(y)/every+1)
+	for i := 1; i < len(y); i += every {
 		d := math.Abs(y[i] - y[i-1])
 		if d > 1e-9*(1+math.Abs(y[i])) {
 			diffs = append(diffs, d)
@@ -130,9 +134,9 @@ func findSpikes(y []float64, quantum float64) []int {
 		return nil
 	}
 	off := func(i int) float64 { return math.Abs(y[i] - (y[i-1]+y[i+1])/2) }
-	stride := 1 + len(y)/sampleMax
-	var usual []float64
-	for i := 1; i < len(y)-1; i += stride {
+	every := stride(len(y))
+	usual := make([]float64, 0, len(y)/every+1)
+	for i := 1; i < len(y)-1; i += every {
 		if d := off(i); d == d {
 			usual = append(usual, d)
 		}

@@ -96,6 +96,22 @@ func (s *source) sum() (string, error) {
 	return hex.EncodeToString(s.stored.hash.Sum(nil)), nil
 }
 
+// expectedRows guesses the number of lines of a stored text from its size and
+// the lines of its beginning; 0 where the size is not known.
+func (s *source) expectedRows(sample []byte) int {
+	f, ok := s.closer.(*os.File)
+	if !ok || s.packed != "" {
+		return 0
+	}
+	info, err := f.Stat()
+	lines := bytes.Count(sample, []byte{'\n'})
+	if err != nil || !info.Mode().IsRegular() || lines == 0 {
+		return 0
+	}
+	perLine := float64(len(sample)) / float64(lines)
+	return int(1.02*float64(info.Size())/perLine) + firstBlock
+}
+
 func (s *source) close() {
 	if s.closer != nil {
 		s.closer.Close()

@@ -22,8 +22,12 @@ type counts struct {
 	dropped map[string]int
 }
 
-func newTable(name string, logged layout) *table {
+// newTable makes the table of a run. rows is how many rows are expected, 0
+// when nobody knows: with a good guess no column has to be put together from
+// blocks.
+func newTable(name string, logged layout, rows int) *table {
 	tb := &table{name: name, counts: counts{missing: map[string]int{}, dropped: map[string]int{}}}
+	tb.t.reserve(rows)
 	for r := range numRoles {
 		if logged[r] < 0 {
 			continue
@@ -31,6 +35,7 @@ func newTable(name string, logged layout) *table {
 		switch r {
 		case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
 			tb.cols[r] = &growing[float64]{}
+			tb.cols[r].reserve(rows)
 		case roleMode:
 			tb.auto = &growing[int8]{}
 		}
@@ -48,7 +53,15 @@ type growing[T any] struct {
 const (
 	firstBlock = 256
 	largeBlock = 1 << 16
+
+	mostReserved = 1 << 24 // rows that are made room for because of a guess
 )
+
+func (g *growing[T]) reserve(n int) {
+	if n > 0 {
+		g.last = make([]T, 0, min(n, mostReserved))
+	}
+}
 
 func (g *growing[T]) add(v T) {
 	if len(g.last) == cap(g.last) {
@@ -68,7 +81,7 @@ func (g *growing[T]) grow() {
 
 // flat returns the column in one piece and empties g.
 func (g *growing[T]) flat() []T {
-	if len(g.full) == 0 {
+	if n := len(g.last); len(g.full) == 0 && 4*n >= 3*cap(g.last) {
 		out := g.last
 		g.last = nil
 		return out

@@ -68,7 +68,7 @@ func fraction(b []byte) (ns int64, n int) {
 
 // halfDay applies AM or PM, with or without dots and a blank.
 func halfDay(ns int64, rest []byte) (int64, []byte, bool) {
-	r := bytes.TrimLeft(rest, " ")
+	r := skipSpaces(rest)
 	n := 1
 	if len(r) > 1 && r[1] == '.' {
 		n = 2
@@ -102,7 +102,7 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 	if !ok || tod >= int64(nsDay)+int64(nsSecond) {
 		return 0, 0, false
 	}
-	rest = bytes.TrimLeft(rest, " ")
+	rest = skipSpaces(rest)
 	if len(rest) == 0 {
 		return tod, 0, true
 	}
@@ -116,8 +116,18 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 	return tod, east, ok
 }
 
+func skipSpaces(b []byte) []byte {
+	for len(b) > 0 && b[0] == ' ' {
+		b = b[1:]
+	}
+	return b
+}
+
 // zoneOffset reads Z, UTC, GMT, ±hh, ±hhmm or ±hh:mm.
 func zoneOffset(b []byte) (east int64, ok bool) {
+	if len(b) == 1 && b[0] == 'Z' {
+		return 0, true
+	}
 	if len(b) > 3 && (b[0]|0x20 == 'u' || b[0]|0x20 == 'g') {
 		if !bytes.EqualFold(b[:3], []byte("UTC")) && !bytes.EqualFold(b[:3], []byte("GMT")) {
 			return 0, false
