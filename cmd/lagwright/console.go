@@ -69,15 +69,20 @@ func (c *console) writeFile(path string, write func(io.Writer) error) error {
 	return nil
 }
 
-// text prints what write writes on standard output, made safe to show: it may
-// hold names out of a file.
+// text prints what write writes on standard output, made safe to show (it may
+// hold names out of a file) and prose wrapped to 80 columns.
 func (c *console) text(write func(io.Writer) error) error {
 	var b bytes.Buffer
 	if err := write(&b); err != nil {
 		return err
 	}
-	_, err := io.WriteString(c.out, safe(b.String()))
-	return err
+	for line := range strings.Lines(b.String()) {
+		line = format.Text(strings.TrimRight(line, "\n"))
+		if _, err := fmt.Fprintln(c.out, strings.Join(wrapLine(line, columns), "\n")); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 // note prints a message on standard error, unless --quiet.

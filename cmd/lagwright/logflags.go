@@ -1,11 +1,13 @@
 package main
 
 import (
+	"cmp"
 	"context"
 
 	"github.com/spf13/cobra"
 
 	"lagwright/data"
+	"lagwright/fit"
 )
 
 // logFlags say how to read a log. They are the same on every command that
@@ -14,6 +16,7 @@ type logFlags struct {
 	options     data.Options
 	inputLaw    string
 	bumpInstant string
+	known       *data.Columns // see columnsOf
 }
 
 func (l *logFlags) add(cmd *cobra.Command) {
@@ -74,9 +77,32 @@ func (l *logFlags) readAll(ctx context.Context, c *console, args []string) ([]*d
 func (l *logFlags) read(ctx context.Context, c *console, file string) ([]*data.Run, error) {
 	o := l.options
 	o.Stdin = c.in
+	if l.known != nil && file != "-" {
+		// The logger that made the card's log most likely made this one.
+		if runs, err := data.Read(ctx, file, withColumns(o, *l.known)); err == nil {
+			return runs, nil
+		}
+	}
 	runs, err := data.Read(ctx, file, o)
 	if err != nil {
 		return nil, inputError{err}
 	}
 	return runs, nil
+}
+
+// columnsOf tries the columns of the card's log where the command line names none.
+func (l *logFlags) columnsOf(card *fit.Card) {
+	if len(card.Source) == 0 {
+		return
+	}
+	c := card.Source[0].Columns
+	l.known = &data.Columns{Time: c["time"], Input: c["input"], Temperature: c["temperature"]}
+}
+
+// withColumns names the columns that o leaves open.
+func withColumns(o data.Options, c data.Columns) data.Options {
+	o.TimeCol = cmp.Or(o.TimeCol, c.Time)
+	o.InputCol = cmp.Or(o.InputCol, c.Input)
+	o.TempCol = cmp.Or(o.TempCol, c.Temperature)
+	return o
 }

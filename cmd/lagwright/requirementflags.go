@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"errors"
 
 	"github.com/spf13/cobra"
@@ -38,6 +39,23 @@ func (r *requirementFlags) check() error {
 		return usageErrorf("--setpoint-step 0 is no step")
 	}
 	return nil
+}
+
+// over is the requirement with what the command line leaves open taken from base.
+func (r *requirementFlags) over(base tune.Requirement) tune.Requirement {
+	q := r.requirement
+	q.Band = cmp.Or(q.Band, base.Band)
+	q.Scan = cmp.Or(q.Scan, base.Scan)
+	for _, f := range []struct{ mine, base **float64 }{
+		{&q.Settling, &base.Settling}, {&q.Overshoot, &base.Overshoot},
+		{&q.Damping, &base.Damping}, {&q.Ms, &base.Ms},
+		{&q.InputMin, &base.InputMin}, {&q.InputMax, &base.InputMax},
+		{&q.InputRate, &base.InputRate}, {&q.TempMax, &base.TempMax},
+		{&q.SetpointStep, &base.SetpointStep},
+	} {
+		*f.mine = cmp.Or(*f.mine, *f.base)
+	}
+	return q
 }
 
 // dampingRatio reads a ratio above 0 and up to 1.

@@ -51,6 +51,8 @@ Start with: lagwright demo`,
 	root.SetHelpCommand(newHelp())
 	c.addFlags(root.PersistentFlags())
 	root.AddCommand(
+		newValidate(c),
+		newTrack(c),
 		newVersion(c),
 		newCompletion(c),
 		newMan(c),

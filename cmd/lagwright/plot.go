@@ -1,0 +1,39 @@
+package main
+
+import (
+	"errors"
+	"io"
+	"path/filepath"
+	"strings"
+
+	"github.com/spf13/cobra"
+
+	"lagwright/cmd/lagwright/internal/report"
+)
+
+// plotFlag is --plot, on every command that computes.
+type plotFlag struct{ path string }
+
+func (p *plotFlag) add(cmd *cobra.Command, shows string) {
+	valueFlag(cmd.Flags(), &p.path, "plot", "FILE", "", "draw "+shows+", as .svg, .png or .pdf", plotName)
+}
+
+func plotName(s string) (string, error) {
+	switch strings.ToLower(filepath.Ext(s)) {
+	case ".svg", ".png", ".pdf":
+		return s, nil
+	}
+	return "", errors.New("want a name that ends in .svg, .png or .pdf")
+}
+
+// write draws the figure where --plot asks for one.
+func (p *plotFlag) write(c *console, draw func() (*report.Figure, error)) error {
+	if p.path == "" {
+		return nil
+	}
+	figure, err := draw()
+	if err != nil {
+		return err
+	}
+	return c.writeFile(p.path, func(w io.Writer) error { return figure.Write(w, p.path) })
+}
