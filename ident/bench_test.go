@@ -133,3 +133,32 @@ func BenchmarkAgainstC(b *testing.B) {
 		}
 	}
 }
+
+// BenchmarkBlocks times a log of 2.2e5 samples summarised in 450 rows: after
+// each of three bumps blocks of twelve rows, each set twice as long as the one
+// before.
+func BenchmarkBlocks(b *testing.B) {
+	const h = 0.05
+	var rows []Row
+	var in Input
+	sample := 0
+	for bump := range 3 {
+		in.At = append(in.At, float64(sample+3)*h)
+		in.Value = append(in.Value, float64(bump+1))
+		m := 1
+		for k := range 150 {
+			rows = append(rows, Row{T: float64(sample) * h, H: h, M: m})
+			sample += m
+			if k%12 == 11 {
+				m *= 2
+			}
+		}
+	}
+	for _, name := range []string{"fopdt", "chain3", "equal8"} {
+		b.Run(name, func(b *testing.B) {
+			st := structure(b, name)
+			s, dst := NewBlockSimulator(rows, in), columnsFor(st, len(rows))
+			leastTime(b, len(rows), func() { s.Sensitivities(dst, st, benchLags[name], benchDeadTime) })
+		})
+	}
+}

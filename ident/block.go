@@ -88,41 +88,47 @@ func (s *Simulator) row(k int) Row {
 	return s.rows[k]
 }
 
-// meanTransition sets f to the mean of Phi(h)^0, …, Phi(h)^(m−1), extended by
-// the sensitivities: what turns the state at the first of m samples into the
-// mean state. As (Phi(h) − I)·ΣPhi(h)^k = Phi(m·h) − I, it follows by forward
-// substitution; the diagonal of both sides is expm1(−h/tau), so that nothing
-// is lost when h is short against every lag.
-func (c *chain) meanTransition(f *matrix, h float64, m int) {
-	size := c.n + c.q
-	if m == 1 {
-		*f = matrix{}
+// A block holds what m samples h s apart do to a state.
+type block struct {
+	h    float64
+	m    int
+	mean matrix // turns the state at the first sample into the mean state
+	over matrix // carries the state over the m samples, to the one that follows
+}
+
+// setBlock fills a block from one, the transition over its h. The mean is that
+// of Phi(h)^0, …, Phi(h)^(m−1), extended by the sensitivities. As (Phi(h) −
+// I)·ΣPhi(h)^k = Phi(m·h) − I, it follows by forward substitution; the
+// diagonal of both sides is expm1(−h/tau), so that nothing is lost when h is
+// short against every lag.
+func (c *chain) setBlock(b *block, one *matrix) {
+	size, m := c.n+c.q, float64(b.m)
+	if b.m == 1 {
+		b.over, b.mean = *one, matrix{}
 		for i := range size {
-			f[i*maxStates+i] = 1
+			b.mean[i*maxStates+i] = 1
 		}
 		return
 	}
-	var one, all matrix
-	c.transition(&one, h)
-	c.transition(&all, float64(m)*h)
+	c.transition(&b.over, m*b.h)
 	for i := range size {
 		tau := c.lag(i)
-		leaves := -math.Expm1(-h / tau)
+		row := b.mean[i*maxStates : (i+1)*maxStates]
+		leaves := -math.Expm1(-b.h / tau)
 		if leaves == 0 { // an endless lag: the element keeps its state
-			clear(f[i*maxStates : i*maxStates+i])
-			f[i*maxStates+i] = 1
+			clear(row[:i])
+			row[i] = 1
 			continue
 		}
-		for j := 0; j <= i; j++ {
-			sum := all[i*maxStates+j]
-			if j == i {
-				sum = math.Expm1(-float64(m) * h / tau)
+		elements := min(i, c.n) // no sensitivity acts on another
+		for j := range elements {
+			sum := -b.over[i*maxStates+j]
+			for k := j; k < elements; k++ {
+				sum += one[i*maxStates+k] * b.mean[k*maxStates+j] * m
 			}
-			for k := j; k < i; k++ {
-				sum -= one[i*maxStates+k] * f[k*maxStates+j] * float64(m)
-			}
-			f[i*maxStates+j] = -sum / (leaves * float64(m))
+			row[j] = sum / (leaves * m)
 		}
+		row[i] = -math.Expm1(-m*b.h/tau) / (leaves * m)
 	}
 }
 
@@ -137,41 +143,56 @@ func (c *chain) lag(i int) float64 {
 	return c.tau[i-c.n]
 }
 
-// A meanCache remembers the last few mean transitions.
-type meanCache struct {
-	h    [4]float64
-	m    [4]int
-	mean [4]matrix
-	used int
+// A blockCache remembers the last few blocks.
+type blockCache struct {
+	entry [4]block
+	used  int
+
+	one  matrix // transition over h
+	oneH float64
 }
 
-func (b *meanCache) clear() { b.used = 0 }
+func (s *blockCache) clear() { s.used, s.oneH = 0, -1 }
 
-func (b *meanCache) get(c *chain, h float64, m int) *matrix {
-	for i := range min(b.used, len(b.m)) {
-		if b.m[i] == m && (m == 1 || b.h[i] == h) {
-			return &b.mean[i]
+func (s *blockCache) get(c *chain, h float64, m int) *block {
+	for i := range min(s.used, len(s.entry)) {
+		if e := &s.entry[i]; e.m == m && e.h == h {
+			return e
 		}
 	}
-	i := b.used % len(b.m)
-	b.used++
-	b.h[i], b.m[i] = h, m
-	c.meanTransition(&b.mean[i], h, m)
-	return &b.mean[i]
+	e := &s.entry[s.used%len(s.entry)]
+	s.used++
+	if s.oneH != h {
+		c.transition(&s.one, h)
+		s.oneH = h
+	}
+	e.h, e.m = h, m
+	c.setBlock(e, &s.one)
+	return e
 }
 
 // runMeans is run for rows of equal shape that are means.
 func (s *Simulator) runMeans(o *outputs, lo, hi int) {
-	if lo == hi {
-		return
-	}
-	mean := s.means.get(&s.chain, s.rows[lo].H, s.rows[lo].M)
+	b := s.blocks.get(&s.chain, s.rows[lo].H, s.rows[lo].M)
 	for k := lo; k < hi; k++ {
 		s.chain.advance(&s.step, &s.x)
 		x := s.x
-		s.chain.advance(mean, &x)
+		s.chain.advance(&b.mean, &x)
 		s.emit(o, k, &x, s.level)
 	}
+}
+
+// setStep prepares the transition over the step of a uniform stretch.
+func (s *Simulator) setStep(r stretch) {
+	s.stepLength = r.step
+	if s.rows != nil {
+		row := s.rows[r.lo]
+		if row.M > 1 && math.Abs(r.step-float64(row.M)*row.H) <= s.tolerance {
+			s.step = s.blocks.get(&s.chain, row.H, row.M).over
+			return
+		}
+	}
+	s.chain.transition(&s.step, r.step)
 }
 
 // emitMean writes the outputs of row k, which is a mean, from the state at its
@@ -180,6 +201,10 @@ func (s *Simulator) runMeans(o *outputs, lo, hi int) {
 func (s *Simulator) emitMean(o *outputs, k int, deadTime float64) {
 	c, r := &s.chain, s.rows[k]
 	x, level, next := s.x, s.level, s.next
+	if r.M == 1 {
+		s.emit(o, k, &x, level)
+		return
+	}
 	var sum state
 	levels := 0.0
 	for p := 0; p < r.M; {
@@ -187,20 +212,18 @@ func (s *Simulator) emitMean(o *outputs, k int, deadTime float64) {
 		if next < len(s.in.At) {
 			count = r.before(s.arrival(next, deadTime), p)
 		}
+		b := s.blocks.get(c, r.H, count)
 		part := x
-		c.advance(s.means.get(c, r.H, count), &part)
+		c.advance(&b.mean, &part)
 		weight := float64(count) / float64(r.M)
 		for i := range c.n + c.q {
 			sum[i] += weight * part[i]
 		}
 		levels += weight * level
-		if p += count; p == r.M {
-			break
+		if p += count; p < r.M {
+			c.advance(&b.over, &x)
+			next, level = s.takeChanges(&x, next, level, r.sample(p), deadTime)
 		}
-		var f matrix
-		c.transition(&f, float64(count)*r.H)
-		c.advance(&f, &x)
-		next, level = s.takeChanges(&x, next, level, r.sample(p), deadTime)
 	}
 	s.emit(o, k, &sum, levels)
 }

@@ -16,7 +16,11 @@ type Bump struct {
 	Hold     float64 // from Time to the next bump or the last row, s
 	From, To float64 // mean input before and after
 
-	Before, After float64 // mean temperature just before the bump and at the end of its hold; NaN where nothing was measured
+	// Before is the mean temperature over the last third of the hold before
+	// the bump or, where that is not settled, the end of a straight line through
+	// it; After is the mean over the last third of the bump's own hold. NaN where
+	// nothing was measured.
+	Before, After float64
 	Noise         float64 // scatter of the temperature just before the bump about a straight line, else at the end of the hold
 
 	// Settled tells that a straight line through the last third of the hold
@@ -78,33 +82,36 @@ func FindBumps(t, u, y []float64) []Bump {
 // row held on.
 type level struct {
 	start, held, end int
-	sum              float64 // of the held rows
+	first            float64 // of the held rows
+	excess           float64 // sum over the held rows of what they exceed the first by
 }
 
-func (l level) mean() float64 { return l.sum / float64(l.end-l.held) }
+// mean is exact for an input that does not move at all.
+func (l level) mean() float64 { return l.first + l.excess/float64(l.end-l.held) }
 
 // heldLevels cuts the input into levels.
 func heldLevels(u []float64) []level {
 	noise := differenceNoise(u)
 	threshold := max(leastBump*(slices.Max(u)-slices.Min(u)), noisyBump*noise)
-	now := level{end: 1, sum: u[0]}
+	now := level{end: 1, first: u[0]}
 	var out []level
 	for k := 1; k < len(u); k++ {
 		away := math.Abs(u[k]-now.mean()) > threshold
 		if away && noise > 0 && k+1 < len(u) {
 			away = math.Abs(u[k+1]-now.mean()) > threshold
 			if !away {
+				mean := now.mean()
 				now.end++
-				now.sum += now.mean() // a stray row counts as the level
+				now.excess += mean - now.first // a stray row counts as the level
 				continue
 			}
 		}
 		if away {
 			out = append(out, now)
-			now = level{start: k, held: k, end: k}
+			now = level{start: k, held: k, end: k, first: u[k]}
 		}
 		now.end++
-		now.sum += u[k]
+		now.excess += u[k] - now.first
 	}
 	return append(out, now)
 }
@@ -118,7 +125,9 @@ func joinRamps(levels []level) []level {
 		for i+1 < len(levels) && l.end-l.held < rampRows &&
 			(levels[i].mean() > out[len(out)-1].mean()) == (levels[i+1].mean() > levels[i].mean()) {
 			i++
-			l.held, l.end, l.sum = levels[i].held, levels[i].end, levels[i].sum
+			start := l.start
+			l = levels[i]
+			l.start = start
 		}
 		out = append(out, l)
 	}
@@ -154,6 +163,9 @@ func (b *Bump) describe(t, y []float64) {
 	}
 	b.SettledBefore = before.settled(b.Rise())
 	b.SettledAfter = after.settled(b.Rise())
+	if !b.SettledBefore && before.rows >= enoughRows {
+		b.Before += before.slope * (b.Time - before.at)
+	}
 }
 
 // enoughRows is how many rows tell a scatter about a line.

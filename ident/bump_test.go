@@ -66,8 +66,8 @@ func TestFindBumps(t *testing.T) {
 			}
 			near(t, c.name+" time", b.Time, times[at[i]], 0)
 			near(t, c.name+" ramp", b.Ramp, 0.1*float64(c.over-1), 1e-9)
-			near(t, c.name+" from", b.From, from, 0.005)
-			near(t, c.name+" to", b.To, to[i], 0.005)
+			near(t, c.name+" from", b.From, from, c.noise/2)
+			near(t, c.name+" to", b.To, to[i], c.noise/2)
 			near(t, c.name+" before", b.Before, base, 0.05)
 			base += 8 * (to[i] - from)
 			from = to[i]

@@ -19,7 +19,7 @@ const settledState = 1e-100
 // run carries the state through the rows lo ≤ k < hi of a uniform stretch,
 // which no change precedes, and writes their outputs.
 func (s *Simulator) run(o *outputs, lo, hi int) {
-	if s.rows != nil {
+	if s.rows != nil && lo < hi && s.rows[lo].M > 1 {
 		s.runMeans(o, lo, hi)
 		return
 	}

@@ -32,9 +32,9 @@ type Simulator struct {
 	step       matrix // transition over stepLength, the step of the stretch
 	stepLength float64
 
-	steps *stepCache // of ragged rows
-	kicks kickCache
-	means meanCache
+	steps  *stepCache // of ragged rows
+	kicks  kickCache
+	blocks blockCache
 }
 
 // NewSimulator returns a simulator for the rows at t in s, strictly
@@ -141,7 +141,7 @@ func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sens
 	if s.steps != nil {
 		s.steps.evaluation = s.evaluation
 	}
-	s.means.clear()
+	s.blocks.clear()
 	return finite(deadTime) && s.chain.set(st, lags, s.shortest, sensitivities)
 }
 
@@ -167,8 +167,7 @@ func (s *Simulator) carry(o *outputs, deadTime float64) {
 			s.runRagged(o, r, deadTime)
 			continue
 		}
-		s.chain.transition(&s.step, r.step)
-		s.stepLength = r.step
+		s.setStep(r)
 		for k := r.lo; k < r.hi; {
 			free := s.freeRows(k, r, deadTime)
 			s.run(o, k, k+free)
