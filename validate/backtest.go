@@ -159,10 +159,9 @@ func (p *plan) moveRatio(c *course) (product, square float64, err error) {
 }
 
 func inputRange(courses []*course) float64 {
-	lo, hi := math.NaN(), math.NaN()
+	lo, hi := math.Inf(1), math.Inf(-1)
 	for _, c := range courses {
-		l, h := extremes(c.u)
-		lo, hi = -larger(-lo, -l), larger(hi, h)
+		lo, hi = min(lo, least(c.u)), max(hi, greatest(c.u))
 	}
 	return hi - lo
 }

@@ -149,7 +149,7 @@ func (h history) pvalues(seen statistics, w []float64, rng *rand.Rand) (step, sl
 	x := make([]float64, n)
 	var known, free [2]int // draws that reach the statistic, with known and with free scale
 	total := 0
-	for total < draws && (least(known, free, n, 0) < enough || least(known, free, n, 1) < enough) {
+	for total < draws && (fewest(known, free, n, 0) < enough || fewest(known, free, n, 1) < enough) {
 		for i := range x {
 			x[i] = rng.NormFloat64() / math.Sqrt(w[i])
 		}
@@ -170,8 +170,8 @@ func (h history) pvalues(seen statistics, w []float64, rng *rand.Rand) (step, sl
 	return p(0), p(1)
 }
 
-// least is the count that decides when statistic k has been reached often enough.
-func least(known, free [2]int, n, k int) int {
+// fewest is the count that decides when statistic k has been reached often enough.
+func fewest(known, free [2]int, n, k int) int {
 	if n >= honestRuns {
 		return max(known[k], free[k])
 	}

@@ -31,6 +31,7 @@ type course struct {
 	phi     []float64 // phi(logged u) by row
 	scans   []float64 // times of the scans when not even
 	scanRow []int     // row at or before each scan when not even
+	bound   float64   // |temperature| at which a replay counts as having run away
 }
 
 // newCourse prepares a segment for a controller with the given scan time (0:
@@ -50,6 +51,7 @@ func newCourse(run *data.Run, s segment, p *plan) (*course, error) {
 	if err := c.setSetpoint(logged, p.options.Setpoint, p.options.Requirement.SetpointStep); err != nil {
 		return nil, err
 	}
+	c.bound = runawayRatio * max(slices.Max(c.y)-slices.Min(c.y), math.Abs(slices.Max(c.y)), math.Abs(slices.Min(c.y)), 1)
 	c.phi = make([]float64, len(c.u))
 	for i, u := range c.u {
 		c.phi[i] = p.law.Apply(u)
@@ -63,6 +65,10 @@ func newCourse(run *data.Run, s segment, p *plan) (*course, error) {
 	}
 	return c, c.layScans()
 }
+
+// runawayRatio is how many times what was logged a replay may reach before it
+// counts as having run away.
+const runawayRatio = 1e6
 
 // maxSteps bounds the steps of one replay.
 const maxSteps = 200_000_000
@@ -134,11 +140,4 @@ func interpolate(at, t, y []float64, f func(k int, v float64)) {
 // be measured.
 func (c *course) signal(y, u []float64) signal {
 	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest}
-}
-
-// bound is where a replay counts as having run away: a million times what was
-// logged.
-func (c *course) bound() float64 {
-	lo, hi := slices.Min(c.y), slices.Max(c.y)
-	return 1e6 * max(hi-lo, math.Abs(hi), math.Abs(lo), 1)
 }

@@ -88,13 +88,15 @@ func (r *runner) replay(c *course, k int, y, u []float64) error {
 // closeEven closes the loop on the lattice, where one pass does it: the plant
 // is moved by the difference of new and logged input.
 func (r *runner) closeEven(c *course, plant *tune.PlantStepper, control *tune.Controller, held float64, y, u []float64) {
-	power := r.law == ident.Power
-	bound := c.bound()
+	if c.lattice.row == 1 && c.lattice.scan == 1 {
+		r.closeRows(c, plant, control, held, y, u)
+		return
+	}
+	bound := c.bound
 	moved := 0.0             // G·[phi(u) − phi(logged u)]
 	scanIn := c.lattice.scan // steps to the next scan
 	k := 0
-	for i := range y {
-		logged := c.phi[i]
+	for i, logged := range c.phi {
 		for row := range c.lattice.row {
 			now := c.log[k] + moved
 			if scanIn == 0 {
@@ -108,16 +110,38 @@ func (r *runner) closeEven(c *course, plant *tune.PlantStepper, control *tune.Co
 					return
 				}
 			}
-			drive := held
-			if power {
-				drive *= held
-			}
-			moved = plant.Step(drive - logged)
+			moved = plant.Step(r.law.Apply(held) - logged)
 			scanIn--
 			if k++; k == len(c.log) {
 				return
 			}
 		}
+	}
+}
+
+// closeRows is closeEven for one scan a row, the commonest case by far:
+// written out it takes a quarter less time.
+func (r *runner) closeRows(c *course, plant *tune.PlantStepper, control *tune.Controller, held float64, y, u []float64) {
+	n := len(c.phi)
+	log, phi, setpoint, bound := c.log[:n], c.phi[:n], c.r[:n], c.bound
+	y, u = y[:n], u[:n]
+	power := r.law == ident.Power
+	moved := 0.0
+	for i := range n {
+		now := log[i] + moved
+		if i > 0 {
+			held = control.Next(setpoint[i], now)
+		}
+		y[i], u[i] = now, held
+		if !(math.Abs(now) < bound) {
+			runAway(y[i:], u[i:])
+			return
+		}
+		drive := held
+		if power {
+			drive *= held
+		}
+		moved = plant.Step(drive - phi[i])
 	}
 }
 
@@ -133,7 +157,7 @@ func (r *runner) closeScans(c *course, k int, plant *tune.PlantStepper, control 
 		disturbance[i] = c.y[i] - g.Gain*disturbance[i]
 	}
 	inputs := make([]float64, len(c.scans))
-	rest, bound, moved := c.phi[0], c.bound(), 0.0
+	rest, bound, moved := c.phi[0], c.bound, 0.0
 	away := len(inputs)
 	interpolate(c.scans, c.t, disturbance, func(j int, d float64) {
 		now := d + moved

@@ -20,6 +20,7 @@ type yardstick struct {
 	apart    float64 // s between noise values that can be taken as independent
 	quantum  float64 // resolution of the temperature
 	response float64 // dead time + sum of lags, s; 0 means: judge to the end of the record
+	rate     bool    // measure how fast the input moves
 }
 
 // figures of one run, added up over its segments. NaN: no such figure;
@@ -47,15 +48,13 @@ func noFigures() figures {
 
 // add measures one unbroken segment and adds it to the figures of the run.
 func (f *figures) add(s signal, m yardstick) {
-	for i, y := range s.y {
-		f.peakTemp = larger(f.peakTemp, y)
-		f.peakInput = larger(f.peakInput, s.u[i])
-		f.lowInput = -larger(-f.lowInput, -s.u[i])
-		if i > 0 {
-			f.rate = larger(f.rate, math.Abs(s.u[i]-s.u[i-1])/(s.t[i]-s.t[i-1]))
-		}
-	}
+	f.peakTemp = larger(f.peakTemp, greatest(s.y))
+	f.peakInput = larger(f.peakInput, greatest(s.u))
+	f.lowInput = -larger(-f.lowInput, -least(s.u))
 	f.travel = plus(f.travel, travel(s.u))
+	if m.rate {
+		f.rate = larger(f.rate, fastest(s.t, s.u))
+	}
 	if s.r == nil {
 		return
 	}
@@ -139,11 +138,13 @@ func overshoot(s signal, mv move, rest int, allowance float64) float64 {
 // deviation returns the largest |r − y| over the rows lo ≤ i < hi, NaN when
 // there is none. It is the reading's own: nothing is taken off for noise.
 func deviation(s signal, lo, hi int) float64 {
-	worst := math.NaN()
+	worst := math.Inf(-1)
 	for i := lo; i < hi; i++ {
-		worst = larger(worst, math.Abs(s.r[i]-s.y[i]))
+		if e := math.Abs(s.r[i] - s.y[i]); e > worst {
+			worst = e
+		}
 	}
-	return worst
+	return orNaN(worst)
 }
 
 // absoluteError returns ∫|r − y| dt by the trapezoid rule between the rows
@@ -169,6 +170,46 @@ func travel(u []float64) float64 {
 		sum += math.Abs(u[i] - u[i-1])
 	}
 	return sum
+}
+
+// fastest returns the largest |Δu|/Δt from row to row.
+func fastest(t, u []float64) float64 {
+	worst := math.Inf(-1)
+	for i := 1; i < len(u); i++ {
+		worst = max(worst, math.Abs(u[i]-u[i-1])/(t[i]-t[i-1]))
+	}
+	return orNaN(worst)
+}
+
+// greatest returns the greatest value; NaN values are passed over, and the
+// result is NaN when there is nothing else.
+func greatest(x []float64) float64 {
+	top := math.Inf(-1)
+	for _, v := range x {
+		if v > top {
+			top = v
+		}
+	}
+	return orNaN(top)
+}
+
+// least returns the least value as greatest does the greatest.
+func least(x []float64) float64 {
+	low := math.Inf(1)
+	for _, v := range x {
+		if v < low {
+			low = v
+		}
+	}
+	return -orNaN(-low)
+}
+
+// orNaN turns the −Inf of an empty search into NaN.
+func orNaN(x float64) float64 {
+	if math.IsInf(x, -1) {
+		return math.NaN()
+	}
+	return x
 }
 
 // larger returns the larger of two values, the other where one is NaN.

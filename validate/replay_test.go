@@ -106,12 +106,10 @@ func TestWorstFirst(t *testing.T) {
 }
 
 func FuzzReadReplay(f *testing.F) {
-	var b bytes.Buffer
-	if err := sampleReplay(f).WriteJSON(&b); err != nil {
-		f.Fatal(err)
-	}
-	f.Add(b.Bytes())
-	f.Add([]byte(`{"schema":"lagwright/replay/1","runs":[{"trace":{}}],"summary":{"runs":1}}`))
+	f.Add([]byte(`{"schema":"lagwright/replay/1","confidence":0.95,"plants":1,"runs":[],"failed":[{"file":"a","reason":"b"}],"summary":{"failed":1}}`))
+	f.Add([]byte(`{"schema":"lagwright/replay/1","runs":[{"file":"a","start":"2026","judged":true,"probability":0.5,"proposed":{"low":{"settling_s":1},` +
+		`"median":{"settling_s":2},"high":{"settling_s":null}},"back_test":{"share_inside":0.5,"differs":["x"]},"trace":{"t_s":[0],"setpoint":[null],"logged":[1],` +
+		`"logged_input":[1],"median":[1],"low":[1],"high":[1],"median_input":[1],"low_input":[1],"high_input":[1]}}],"summary":{"runs":1}}`))
 	f.Fuzz(func(t *testing.T, in []byte) {
 		r, err := ReadReplay(bytes.NewReader(in), "f")
 		if err != nil {
@@ -134,11 +132,8 @@ func FuzzReadReplay(f *testing.F) {
 }
 
 func FuzzReadDrift(f *testing.F) {
-	var b bytes.Buffer
-	if err := judged(tableHistory(1, 5, 2, shift{gain: -1}, shift{})).WriteJSON(&b); err != nil {
-		f.Fatal(err)
-	}
-	f.Add(b.Bytes())
+	f.Add([]byte(`{"schema":"lagwright/drift/1","structure":"chain2","runs":[{"file":"a","start":"2026-01-01T00:00:00Z"},{"file":"b"}],` +
+		`"parameters":[{"name":"gain","unit":"K/V","points":[{"value":1,"low":0,"high":2},{}],"step":{"p":0.01,"run":1,"size":1,"percent":-3}}]}`))
 	f.Fuzz(func(t *testing.T, in []byte) {
 		d, err := ReadDrift(bytes.NewReader(in), "f")
 		if err != nil {

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"path/filepath"
+	"strings"
 	"sync"
 	"sync/atomic"
 
@@ -103,7 +104,7 @@ func (p *plan) previous() map[logID]doneLog {
 	}
 	for _, failed := range old.Failed { // a log of which a run failed is done again
 		for id := range known {
-			if id.file == failed.File {
+			if strings.HasPrefix(failed.File, id.file) { // the file, or a run in it
 				delete(known, id)
 			}
 		}

@@ -42,7 +42,7 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 func (p *plan) outside(run *data.Run) []string {
 	var out []string
 	check := func(what, unit string, x []float64, limits [2]float64) {
-		lo, hi := extremes(x)
+		lo, hi := least(x), greatest(x)
 		margin := 0.05 * (limits[1] - limits[0])
 		if limits[0] == limits[1] || !(lo < limits[0]-margin || hi > limits[1]+margin) {
 			return
@@ -59,16 +59,6 @@ func (p *plan) outside(run *data.Run) []string {
 		check("inlet temperature", p.units.temperature, run.Inlet, *c)
 	}
 	return out
-}
-
-// extremes returns the least and greatest value; NaN values are passed over.
-func extremes(x []float64) (lo, hi float64) {
-	lo, hi = math.NaN(), math.NaN()
-	for _, v := range x {
-		hi = larger(hi, v)
-		lo = -larger(-lo, -v)
-	}
-	return lo, hi
 }
 
 // typical returns the figures of the first plant that did not run away.
@@ -108,9 +98,7 @@ func manualShare(run *data.Run) float64 {
 func lowest(courses []*course) float64 {
 	low := math.Inf(1)
 	for _, c := range courses {
-		for _, u := range c.u {
-			low = min(low, u)
-		}
+		low = min(low, least(c.u))
 	}
 	return low
 }
