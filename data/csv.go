@@ -198,7 +198,7 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 		if err != nil {
 			return err
 		}
-		if lines.line < c.d.first {
+		if lines.line < c.d.first || len(text) == 0 {
 			continue
 		}
 		if lines.line == 1 {

@@ -70,19 +70,19 @@ func newParquetColumn(d *schema.Column, index int) *parquetColumn {
 		return nil
 	}
 	switch lt := d.LogicalType().(type) {
-	case schema.TimestampLogicalType:
+	case *schema.TimestampLogicalType:
 		c.class, c.kind, c.unit, c.utc = stamps, asInstant, unitOf(lt.TimeUnit()), lt.IsAdjustedToUTC()
 		return only(c, d, parquet.Types.Int64)
 	case schema.DateLogicalType:
 		c.class, c.kind, c.unit = stamps, asDate, int64(nsDay)
 		return only(c, d, parquet.Types.Int32)
-	case schema.TimeLogicalType:
+	case *schema.TimeLogicalType:
 		c.class, c.kind, c.unit = stamps, asTime, unitOf(lt.TimeUnit())
 		return only(c, d, parquet.Types.Int32, parquet.Types.Int64)
-	case schema.DecimalLogicalType:
+	case *schema.DecimalLogicalType:
 		c.scale, c.wide = int(lt.Scale()), d.TypeLength()
 		return only(c, d, parquet.Types.Int32, parquet.Types.Int64, parquet.Types.ByteArray, parquet.Types.FixedLenByteArray)
-	case schema.IntLogicalType:
+	case *schema.IntLogicalType:
 		c.kind = asInteger
 		if !lt.IsSigned() && lt.BitWidth() == 64 {
 			c.kind = asFloat
@@ -94,7 +94,7 @@ func newParquetColumn(d *schema.Column, index int) *parquetColumn {
 	case schema.Float16LogicalType:
 		c.wide = 2
 		return only(c, d, parquet.Types.FixedLenByteArray)
-	case schema.IntervalLogicalType, schema.UUIDLogicalType, schema.BSONLogicalType:
+	case schema.IntervalLogicalType, schema.UUIDLogicalType, schema.BSONLogicalType, schema.NullLogicalType:
 		return nil
 	}
 	switch d.PhysicalType() {
@@ -209,7 +209,7 @@ func sized[T any](v []T, n int) []T {
 }
 
 func isUnsigned(d *schema.Column) bool {
-	lt, ok := d.LogicalType().(schema.IntLogicalType)
+	lt, ok := d.LogicalType().(*schema.IntLogicalType)
 	return ok && !lt.IsSigned()
 }
 

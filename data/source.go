@@ -23,10 +23,11 @@ type source struct {
 	file string // base name, "-" for standard input
 	head []byte // first unpacked bytes, not consumed
 
-	r      *bufio.Reader // unpacked bytes
-	stored *hashReader
-	closer io.Closer
-	packed string // "gzip", "zstd" or ""
+	r        *bufio.Reader // unpacked bytes
+	stored   *hashReader
+	closer   io.Closer
+	unpacker *zstd.Decoder // nil when not packed with zstd
+	packed   string        // "gzip", "zstd" or ""
 }
 
 // headSize is how many bytes are enough to tell the kind of file.
@@ -75,6 +76,7 @@ func (s *source) unpack() error {
 		if err != nil {
 			return fmt.Errorf("%s: damaged zstd file: %w", s.path, err)
 		}
+		s.unpacker = z
 		s.packed, s.r = "zstd", bufio.NewReaderSize(&unpacked{r: z, s: s}, 1<<18)
 	case bytes.HasPrefix(magic, []byte("PK\x03\x04")):
 		return fmt.Errorf("%s: is a zip archive or a spreadsheet, not a log: export it as CSV", s.path)
@@ -113,6 +115,9 @@ func (s *source) expectedRows(sample []byte) int {
 }
 
 func (s *source) close() {
+	if s.unpacker != nil {
+		s.unpacker.Close()
+	}
 	if s.closer != nil {
 		s.closer.Close()
 	}
