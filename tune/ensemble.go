@@ -10,15 +10,14 @@ import (
 // ensemble is a set of scenarios judged together by several workers. Results
 // do not depend on their number.
 type ensemble struct {
-	task      *task
 	scenarios []*scenario
 	cards     int // how many cards the scenarios come from, at least 1
 	workers   int
 	order     []int // likely failures first: saves time, changes nothing
 }
 
-func newEnsemble(t *task, scenarios []*scenario, workers int) *ensemble {
-	e := &ensemble{task: t, scenarios: scenarios, cards: 1, workers: max(1, workers), order: make([]int, len(scenarios))}
+func newEnsemble(scenarios []*scenario, workers int) *ensemble {
+	e := &ensemble{scenarios: scenarios, cards: 1, workers: max(1, workers), order: make([]int, len(scenarios))}
 	for i, s := range scenarios {
 		e.order[i] = i
 		e.cards = max(e.cards, s.card+1)
@@ -53,7 +52,7 @@ func (e *ensemble) holds(c law, share float64) bool {
 	failed := make([]bool, len(e.scenarios))
 	var out atomic.Bool
 	e.each(func(i int, s *scenario) {
-		if out.Load() || e.task.meets(s, c) {
+		if out.Load() || s.task.meets(s, c) {
 			return
 		}
 		failed[i] = true
@@ -91,7 +90,7 @@ func (e *ensemble) promote(failed []bool) {
 // outcomes judges every scenario.
 func (e *ensemble) outcomes(c law, fine float64) []outcome {
 	out := make([]outcome, len(e.scenarios))
-	e.each(func(i int, s *scenario) { out[i] = e.task.judge(s, c, fine) })
+	e.each(func(i int, s *scenario) { out[i] = s.task.judge(s, c, fine) })
 	return out
 }
 
@@ -144,7 +143,7 @@ func (e *ensemble) loadIAE(c law, about int, fine float64) float64 {
 	sub.each(func(i int, s *scenario) {
 		v[i] = math.Inf(1)
 		if f := s.quick(c); f.stable {
-			if fig, err := e.task.load(s, c, f, fine); err == nil {
+			if fig, err := s.task.load(s, c, f, fine); err == nil {
 				v[i] = fig.iae
 			}
 		}
@@ -164,7 +163,7 @@ func (e *ensemble) thinned(about int) *ensemble {
 		}
 		seen[s.card]++
 	}
-	return newEnsemble(e.task, kept, e.workers)
+	return newEnsemble(kept, e.workers)
 }
 
 func cancelled(ctx context.Context) bool { return ctx.Err() != nil }

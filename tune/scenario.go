@@ -12,6 +12,7 @@ import (
 // from run to run. A scenario serves one goroutine at a time.
 type scenario struct {
 	p    ident.Plant
+	task *task
 	scan float64
 	card int // which of several cards it comes from
 
@@ -24,10 +25,10 @@ type scenario struct {
 // its points.
 const perDecade = 32
 
-func newScenario(p ident.Plant, scan float64) *scenario {
-	s := &scenario{p: p, scan: scan, loops: map[int]*loopSim{}}
+func newScenario(p ident.Plant, t *task, card int) *scenario {
+	s := &scenario{p: p, task: t, scan: t.scan, card: card, loops: map[int]*loopSim{}}
 	analysed := p
-	analysed.DeadTime += scan / 2
+	analysed.DeadTime += s.scan / 2
 	low, high := span(analysed)
 	n := int(math.Ceil(perDecade*math.Log10(high/low))) + 1
 	s.w, s.g = make([]float64, n), make([]complex128, n)

@@ -6,6 +6,8 @@ import (
 	"slices"
 
 	"gonum.org/v1/gonum/optimize"
+
+	"lagwright/ident"
 )
 
 // Synthesis. For given integral and derivative times the largest gain that
@@ -37,13 +39,12 @@ const filterShare = 0.1
 // iaeSample is how many plants the median IAE is taken over during a search.
 const iaeSample = 31
 
-// newSearch prepares a synthesis around a typical plant.
-func newSearch(ctx context.Context, e *ensemble, assurance float64) *search {
+// newSearch prepares a synthesis; the search starts around plant p.
+func newSearch(ctx context.Context, e *ensemble, p ident.Plant, assurance float64) *search {
 	s := &search{ctx: ctx, on: e, assurance: assurance, b: 1}
-	p := e.scenarios[0].p
 	s.sign = math.Copysign(1, p.Gain)
 	var long, short float64
-	long = p.DeadTime + e.task.scan
+	long = p.DeadTime + e.scenarios[0].scan
 	for _, tau := range p.Elements() {
 		long += tau
 	}

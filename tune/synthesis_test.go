@@ -4,6 +4,7 @@ import (
 	"context"
 	"math"
 	"math/rand/v2"
+	"os"
 	"testing"
 
 	"lagwright/ident"
@@ -34,10 +35,10 @@ func family(t testing.TB, seed uint64, n int, spread float64) []ident.Plant {
 	return out
 }
 
-func scenarios(plants []ident.Plant) []*scenario {
+func scenarios(plants []ident.Plant, t *task) []*scenario {
 	out := make([]*scenario, len(plants))
 	for i, p := range plants {
-		out[i] = newScenario(p, 0)
+		out[i] = newScenario(p, t, 0)
 	}
 	return out
 }
@@ -48,7 +49,7 @@ func TestQuickFigures(t *testing.T) {
 	stable := 0
 	for seed := range uint64(60) {
 		p := family(t, seed, 1, 0)[0]
-		s := newScenario(p, 0)
+		s := newScenario(p, &task{}, 0)
 		ku, pu, err := quickUltimate(p)
 		if err != nil {
 			t.Fatal(err)
@@ -95,8 +96,8 @@ func BenchmarkSynthesisPI(b *testing.B) {
 	plants := family(b, 2, 200, 0.05)
 	task := newTask(Requirement{Ms: ptr(1.6), Overshoot: ptr(10)}, 0, 0)
 	for b.Loop() {
-		e := newEnsemble(&task, scenarios(plants), 2)
-		d := newSearch(context.Background(), e, 0.95).design("pi")
+		e := newEnsemble(scenarios(plants, &task), 2)
+		d := newSearch(context.Background(), e, plants[0], 0.95).design("pi")
 		if !d.found {
 			b.Fatal("nothing found")
 		}
@@ -107,10 +108,60 @@ func BenchmarkSynthesisPID(b *testing.B) {
 	plants := family(b, 2, 200, 0.05)
 	task := newTask(Requirement{Ms: ptr(1.6), Overshoot: ptr(10)}, 0, 0)
 	for b.Loop() {
-		e := newEnsemble(&task, scenarios(plants), 2)
-		d := newSearch(context.Background(), e, 0.95).design("pid")
+		e := newEnsemble(scenarios(plants, &task), 2)
+		d := newSearch(context.Background(), e, plants[0], 0.95).design("pid")
 		if !d.found {
 			b.Fatal("nothing found")
 		}
 	}
+}
+
+// The synthesis against an exhaustive grid of gains and integral times, on
+// the plants it is given: never more than 2 % of IAE behind. 6 cases, 50 with
+// LAGWRIGHT_LONG=1.
+func TestSynthesisAgainstGrid(t *testing.T) {
+	cases, n := uint64(6), 60
+	if os.Getenv("LAGWRIGHT_LONG") != "" {
+		cases, n = 50, 150 // gains and times 2.4 % and 3.9 % apart
+	}
+	worst := 0.0
+	for seed := range cases {
+		plants := family(t, 100+seed, 20, 0.06)
+		rng := rand.New(rand.NewPCG(seed, 9))
+		task := newTask(Requirement{
+			Ms:        ptr([]float64{1.4, 1.6, 1.8}[rng.IntN(3)]),
+			Overshoot: ptr([]float64{5, 10, 20}[rng.IntN(3)]),
+		}, 0, 0)
+		e := newEnsemble(scenarios(plants, &task), 2)
+		const assurance = 0.9
+		d := newSearch(context.Background(), e, plants[0], assurance).design("pi")
+		if !d.found {
+			t.Errorf("case %d: nothing found", seed)
+			continue
+		}
+		if !e.holds(d.law, assurance) {
+			t.Errorf("case %d: the design does not hold on the plants it was chosen on", seed)
+		}
+		ku, pu, err := quickUltimate(plants[0])
+		if err != nil {
+			t.Fatal(err)
+		}
+		best := math.Inf(1)
+		for i := range n {
+			ti := pu * math.Exp(math.Log(0.08)+(math.Log(25)-math.Log(0.08))*float64(i)/float64(n-1))
+			for j := range n {
+				kc := ku * math.Exp(math.Log(0.03)+(math.Log(1.0)-math.Log(0.03))*float64(j)/float64(n-1))
+				c := piLaw(kc, ti)
+				if ti/kc < best && e.holds(c, assurance) { // the IAE is never less than Ti/Kc
+					best = min(best, e.loadIAE(c, 20, searchStep))
+				}
+			}
+		}
+		got := e.loadIAE(d.law, 20, searchStep)
+		worst = max(worst, got/best)
+		if got > 1.02*best {
+			t.Errorf("case %d: load IAE %.4g with kc %.4g ti %.4g, the grid finds %.4g", seed, got, d.law.kc, d.law.ti, best)
+		}
+	}
+	t.Logf("worst IAE against the grid over %d cases: %.4f", cases, worst)
 }
