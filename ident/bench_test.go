@@ -28,6 +28,15 @@ var benchInputs = map[string]func(t []float64) Input{
 	},
 }
 
+// everyRow is an input that changes at every row, as in closed loop.
+func everyRow(t []float64) Input {
+	in := Input{At: t[1:]}
+	for k := range in.At {
+		in.Value = append(in.Value, math.Sin(0.01*float64(k)))
+	}
+	return in
+}
+
 const benchDeadTime = 0.22
 
 var benchLags = map[string][]float64{
@@ -76,6 +85,22 @@ func BenchmarkSensitivities(b *testing.B) {
 				})
 			}
 		}
+	}
+}
+
+// BenchmarkEveryRow times an input that changes at every row.
+func BenchmarkEveryRow(b *testing.B) {
+	const rows = 1e4
+	t := uniformRows(rows)
+	for _, name := range []string{"fopdt", "chain3", "equal3"} {
+		st := structure(b, name)
+		s, dst := NewSimulator(t, everyRow(t)), columnsFor(st, rows)
+		b.Run(name+"/sensitivities", func(b *testing.B) {
+			leastTime(b, rows, func() { s.Sensitivities(dst, st, benchLags[name], benchDeadTime) })
+		})
+		b.Run(name+"/response", func(b *testing.B) {
+			leastTime(b, rows, func() { s.Response(dst[0], st, benchLags[name], benchDeadTime) })
+		})
 	}
 }
 

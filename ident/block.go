@@ -132,17 +132,6 @@ func (c *chain) setBlock(b *block, one *matrix) {
 	}
 }
 
-// lag is the lag of state i.
-func (c *chain) lag(i int) float64 {
-	switch {
-	case c.equal:
-		return c.tau[0]
-	case i < c.n:
-		return c.tau[i]
-	}
-	return c.tau[i-c.n]
-}
-
 // A blockCache remembers the last few blocks.
 type blockCache struct {
 	entry [4]block

@@ -13,19 +13,14 @@ const nudgeable = 0.5
 
 // nudge carries the state over a short d, of either sign.
 func (c *chain) nudge(x *state, d float64) {
-	n := c.n
-	var rate state
-	for i := range n + c.q {
-		rate[i] = 1 / c.lag(i)
-	}
-	share := 1.0 // of the slope in a sensitivity
+	n, rate := c.n, &c.rate
+	share := rate[n-1] // of the slope in a sensitivity
 	if c.equal {
-		share = float64(n)
+		share *= float64(n)
 	}
-	share *= 1 / c.last()
 	size, term := 1.0, *x
 	z := math.Abs(d) * c.norm()
-	for k := 1; size > 1e-18; k++ {
+	for k := 1; size > 1e-17; k++ {
 		h := d * inverse[k]
 		before := 0.0
 		if n > 1 {
@@ -55,7 +50,7 @@ var inverse = func() (f [32]float64) {
 }()
 
 // norm bounds the rate at which the state changes, per s.
-func (c *chain) norm() float64 { return 2 / c.tau[0] }
+func (c *chain) norm() float64 { return 2 * c.rate[0] }
 
 // spanKey is the first few bits of a length: 64 keys for every factor of two.
 func spanKey(h float64) uint64 { return math.Float64bits(h) >> (52 - 6) }

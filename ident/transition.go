@@ -49,7 +49,8 @@ type chain struct {
 	equal bool // all elements share tau[0]
 	order int  // lags of the structure, zero ones included
 
-	tau [maxElements]float64 // shortest first
+	tau  [maxElements]float64 // shortest first
+	rate state                // 1/lag of every state, per s
 	// of[i] is the sensitivity state of the structure's lag parameter i, or −1
 	// for a lag of zero
 	of    [maxLags]int
@@ -89,6 +90,9 @@ func (c *chain) set(st Structure, lags []float64, shortest float64, sensitivitie
 	if c.equal && c.n == 1 {
 		c.n = st.order
 	}
+	for i := range c.n + c.q {
+		c.rate[i] = 1 / c.lag(i)
+	}
 	return true
 }
 
@@ -98,6 +102,17 @@ func (c *chain) last() float64 {
 		return c.tau[0]
 	}
 	return c.tau[c.n-1]
+}
+
+// lag is the lag of state i.
+func (c *chain) lag(i int) float64 {
+	switch {
+	case c.equal:
+		return c.tau[0]
+	case i < c.n:
+		return c.tau[i]
+	}
+	return c.tau[i-c.n]
 }
 
 // transition sets f to the matrix that carries the state over h ≥ 0 s.
