@@ -203,3 +203,41 @@ func TestFirstEstimateOfNothing(t *testing.T) {
 		}
 	}
 }
+
+// FuzzFirstEstimate takes any record to pieces without a panic, and what it
+// returns is a plant.
+func FuzzFirstEstimate(f *testing.F) {
+	f.Add([]byte{1, 0, 0, 1, 0, 0, 1, 3, 1, 1, 3, 9, 1, 3, 20, 1, 3, 25, 1, 3, 26}, false)
+	f.Add([]byte{9, 0, 0, 1, 200, 255, 7, 3, 1, 1, 200, 9, 1, 3, 20, 1, 3, 255, 1, 3, 26}, true)
+	f.Fuzz(func(t *testing.T, record []byte, squared bool) {
+		var times, u, y []float64
+		at := 0.0
+		for ; len(record) >= 3; record = record[3:] {
+			at += float64(1+record[0]) / 8
+			times = append(times, at)
+			u = append(u, float64(record[1]))
+			y = append(y, float64(record[2]))
+			if record[2] == 255 {
+				y[len(y)-1] = math.NaN()
+			}
+		}
+		law := Linear
+		if squared {
+			law = Power
+		}
+		for _, b := range FindBumps(times, u, y) {
+			if b.Start > b.Row || b.Row >= b.End || b.End > len(times) || b.Hold < 0 {
+				t.Fatalf("a bump out of order: %+v", b)
+			}
+			for _, st := range Structures() {
+				p, err := FirstEstimate(st, times, y, b, law)
+				if err != nil {
+					continue
+				}
+				if _, err := NewPlant(st, p.Gain, p.Lags, p.DeadTime); err != nil {
+					t.Fatal(err)
+				}
+			}
+		}
+	})
+}

@@ -103,12 +103,22 @@ func TestClosedForms(t *testing.T) {
 	}
 }
 
-// TestLongRecord compares 2e5 uniform rows with closed forms evaluated row by
-// row: nothing may build up, and the pieces in which a run is computed must
-// join.
+// TestLongRecord compares 2e5 uniform and 2e4 jittered rows with closed forms
+// evaluated row by row: nothing may build up, and the pieces in which a run is
+// computed must join.
 func TestLongRecord(t *testing.T) {
-	const rows = 200_000
-	times := uniformRows(rows)
+	jittered := uniformRows(20_000)
+	rng := rand.New(rand.NewPCG(6, 1))
+	for k := range jittered {
+		jittered[k] += 0.03 * (rng.Float64() - 0.5)
+	}
+	for name, times := range map[string][]float64{"uniform": uniformRows(200_000), "jittered": jittered} {
+		t.Run(name, func(t *testing.T) { compareLong(t, times) })
+	}
+}
+
+func compareLong(t *testing.T, times []float64) {
+	rows := len(times)
 	in := Input{At: []float64{1}, Value: []float64{1}}
 	s := NewSimulator(times, in)
 	for _, c := range []struct {
@@ -116,6 +126,9 @@ func TestLongRecord(t *testing.T) {
 		lags      []float64
 		step      func(t float64) float64
 	}{
+		{"chain2", []float64{0.5, 0.04}, func(t float64) float64 {
+			return 1 - (0.5*math.Exp(-t/0.5)-0.04*math.Exp(-t/0.04))/0.46
+		}},
 		{"fopdt", []float64{1700}, func(t float64) float64 { return -math.Expm1(-t / 1700) }},
 		{"chain2", []float64{2000, 300}, func(t float64) float64 {
 			return 1 - (2000*math.Exp(-t/2000)-300*math.Exp(-t/300))/1700
