@@ -11,7 +11,7 @@ import (
 // page; a bundle of a card alone, or of runs alone, makes a page of its own.
 type Bundle struct {
 	Runs   []*data.Run
-	Curves []*Curves // the card's model beside each of Runs; nil where there is none
+	Curves []*fit.Curves // the card's model beside each of Runs; nil where there is none
 	Card   *fit.Card
 	Gains  *tune.Gains
 	Replay *validate.Replay
@@ -38,7 +38,7 @@ func (b *Bundle) model() *fit.Model {
 }
 
 // curves are those of a run, nil where there are none.
-func (b *Bundle) curves(run int) *Curves {
+func (b *Bundle) curves(run int) *fit.Curves {
 	if run < len(b.Curves) {
 		return b.Curves[run]
 	}

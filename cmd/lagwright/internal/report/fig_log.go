@@ -10,7 +10,7 @@ import (
 
 // LogFigure draws a run: temperature over input, the bumps, and, where c is
 // not nil, the fitted output with its band. m is the model c was made with.
-func LogFigure(r *data.Run, c *Curves, m *fit.Model) *Figure {
+func LogFigure(r *data.Run, c *fit.Curves, m *fit.Model) *Figure {
 	f := &Figure{Name: "log"}
 	x := runTime(r)
 	unit := r.Units.Temperature
@@ -41,7 +41,7 @@ func LogFigure(r *data.Run, c *Curves, m *fit.Model) *Figure {
 	return f
 }
 
-func logWords(r *data.Run, c *Curves, m *fit.Model) (finding, alt string) {
+func logWords(r *data.Run, c *fit.Curves, m *fit.Model) (finding, alt string) {
 	tl, th := rangeOf(r.Y)
 	ul, uh := rangeOf(r.U)
 	what := fmt.Sprintf("%s of log: temperature from %s to %s, input from %s to %s",

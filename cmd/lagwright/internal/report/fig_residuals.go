@@ -10,7 +10,7 @@ import (
 
 // ResidualFigure draws what the model leaves of a run over time, and the
 // autocorrelation of what the noise model leaves of that.
-func ResidualFigure(r *data.Run, c *Curves, m *fit.Model) *Figure {
+func ResidualFigure(r *data.Run, c *fit.Curves, m *fit.Model) *Figure {
 	f := &Figure{Name: "residuals"}
 	over := &panel{
 		heading: "Log minus model, " + format.Unit(kelvin(r.Units.Temperature)),

@@ -69,6 +69,34 @@ func TestFiguresInEveryFormat(t *testing.T) {
 	}
 }
 
+// TestFiguresSayWhatTheyMust: requirement, limits, bumps and clock are drawn
+// in, with their words.
+func TestFiguresSayWhatTheyMust(t *testing.T) {
+	want := map[string][]string{
+		"log":           {"Temperature, °C", "Input, V", "bump 1", "bump 2", "fitted", "band of the model", "Clock time, 2026-03-04 (UTC+01:00)", "08:14"},
+		"residuals":     {"Log minus model, K", "expected of noise, ±0.05", "Lag, samples"},
+		"intervals":     {"Gain: 12.41 ± 0.13 K/V", "Lag 2: 5.9 s (4.4 to 8.1)", "Dead time, s", "limit"},
+		"step-response": {"Temperature rise, K", "Input change, V", "settled by 60 s", "8 % overshoot", "plausible plants", "Time after the step, s"},
+		"load-response": {"Temperature deviation, K", "Input change, V"},
+		"sensitivity":   {"Sensitivity |S|", "Ms limit 1.7", "Frequency, rad/s"},
+		"poles":         {"required region", "stable to the left", "Real part, 1/s", "Poles: imaginary part, rad/s"},
+		"replay":        {"proposed, median", "proposed, plausible plants", "setpoint", "logged"},
+		"drift":         {"Gain, K/V", "Lag 1, s", "changed", "limits", "Date, from 2026-01-07"},
+	}
+	for _, f := range sampleFigures() {
+		svg := string(written(t, f, f.Name+".svg"))
+		for _, w := range want[f.Name] {
+			if !strings.Contains(svg, ">"+w+"</text>") {
+				t.Errorf("%s: %q is not in the drawing", f.Name, w)
+			}
+		}
+		delete(want, f.Name)
+	}
+	for name := range want {
+		t.Errorf("no figure %s", name)
+	}
+}
+
 func checkXML(t *testing.T, name string, svg []byte) {
 	t.Helper()
 	d := xml.NewDecoder(bytes.NewReader(svg))

@@ -31,7 +31,7 @@ func sampleStep(t float64) float64 {
 	return 1 - (sampleLag1*math.Exp(-t/sampleLag1)-sampleLag2*math.Exp(-t/sampleLag2))/(sampleLag1-sampleLag2)
 }
 
-func sampleRun(n int) (*data.Run, *Curves) {
+func sampleRun(n int) (*data.Run, *fit.Curves) {
 	rng := rand.New(rand.NewPCG(7, 7))
 	r := &data.Run{
 		Source: data.Source{
@@ -46,7 +46,7 @@ func sampleRun(n int) (*data.Run, *Curves) {
 			Notes: []data.Note{{Code: "units-row", Text: "A row of units below the header was read as such.", Row: 2}},
 		},
 	}
-	c := &Curves{ACFBound: 0.05}
+	c := &fit.Curves{ACFBound: 0.05}
 	up, down := 60.0, 420.0
 	noise, burst := 0.0, 0.0
 	for i := range n {
@@ -283,7 +283,7 @@ func sampleBundle() Bundle {
 	r, c := sampleRun(1400)
 	card, g := sampleCard(), sampleGains()
 	return Bundle{
-		Runs: []*data.Run{r}, Curves: []*Curves{c}, Card: card, Gains: g, Replay: sampleReplay(g), Drift: sampleDrift(),
+		Runs: []*data.Run{r}, Curves: []*fit.Curves{c}, Card: card, Gains: g, Replay: sampleReplay(g), Drift: sampleDrift(),
 		Profiles: sampleProfiles(&card.Models[0]), Loop: sampleLoop(),
 		Tool: "lagwright (devel)", Command: "lagwright run dryer2-bump.csv --settling 60s --overshoot 8% --ms 1.7 --input-max 10 --rand 1",
 	}

@@ -51,6 +51,9 @@ func trustLead(b *Bundle) string {
 	if m := b.model(); m != nil {
 		s += fmt.Sprintf(" The model explains it to %s rms (fit %s %%).", format.Amount(m.RMSE, kelvin(b.Card.Units.Temperature), 2), format.Short(m.FitPercent, 3))
 	}
+	if b.Card != nil && len(b.Card.Warnings) > 0 {
+		s += fmt.Sprintf(" %s came with the fit, see what to watch for.", sentenceCase(format.Count(len(b.Card.Warnings), "warning", "warnings")))
+	}
 	if n := len(remarksOf(b.Runs)); n > 0 {
 		return s + fmt.Sprintf(" %s about the recording:", sentenceCase(format.Count(n, "remark", "remarks")))
 	}
