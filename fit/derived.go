@@ -35,18 +35,7 @@ func (out *outcome) derived() []Derived {
 	}
 	if !st.Integrating() {
 		add("sum_of_lags", "s", func(_ float64, l []float64, _ float64) float64 { return total(l) })
-		// Half rule (Skogestad 2003): half the second lag and every later one count as dead time.
-		add("total_delay", "s", func(_ float64, l []float64, d float64) float64 {
-			for i, v := range l {
-				switch {
-				case i == 1:
-					d += v / 2
-				case i > 1:
-					d += v
-				}
-			}
-			return d
-		})
+		add("total_delay", "s", func(_ float64, l []float64, d float64) float64 { return halfRuleDelay(l, d) })
 		// Steepest rise of the single-lag plant of the half rule: K/(lag1 + lag2/2).
 		add("initial_slope", unit+"/s", func(g float64, l []float64, _ float64) float64 {
 			t := l[0]
@@ -68,6 +57,21 @@ func (out *outcome) derived() []Derived {
 			func(g float64, _ []float64, _ float64) float64 { return g * ident.Power.Slope(u) })
 	}
 	return list
+}
+
+// halfRuleDelay is the dead time of the single-lag plant that stands for a
+// chain by the half rule (Skogestad 2003): half the second lag and every later
+// one count as dead time. lags are longest first, in s.
+func halfRuleDelay(lags []float64, deadTime float64) float64 {
+	for i, v := range lags {
+		switch {
+		case i == 1:
+			deadTime += v / 2
+		case i > 1:
+			deadTime += v
+		}
+	}
+	return deadTime
 }
 
 func total(x []float64) float64 {

@@ -1,0 +1,130 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+	"strconv"
+	"strings"
+	"unicode"
+)
+
+// figure writes v with so many significant digits, without zeros at the end
+// and without an exponent between 0.001 and a million.
+func figure(v float64, digits int) string {
+	s := exactFigure(v, digits)
+	if strings.Contains(s, ".") && !strings.Contains(s, "e") {
+		s = strings.TrimRight(strings.TrimRight(s, "0"), ".")
+	}
+	return s
+}
+
+// exactFigure is figure with the zeros at the end.
+func exactFigure(v float64, digits int) string {
+	a := math.Abs(v)
+	switch {
+	case math.IsNaN(v) || math.IsInf(v, 0):
+		return "-"
+	case a != 0 && (a < 1e-3 || a >= 1e6):
+		return strconv.FormatFloat(v, 'e', digits-1, 64)
+	}
+	return strconv.FormatFloat(v, 'f', max(digits-1-magnitude(a, digits), 0), 64)
+}
+
+// magnitude is the power of ten of the first digit of a after rounding to the
+// given digits.
+func magnitude(a float64, digits int) int {
+	if a == 0 {
+		return 0
+	}
+	_, exp, _ := strings.Cut(strconv.FormatFloat(a, 'e', digits-1, 64), "e")
+	n, _ := strconv.Atoi(exp)
+	return n
+}
+
+// written is an estimate in words: the value with as many decimals as its
+// bound deserves, ±half where the interval is even, and the interval.
+type written struct{ value, half, interval string }
+
+// write gives the half-width two significant digits (GUM, JCGM 100:2008, 7.2.6: at
+// most two usually suffice) and the value and the ends as many decimals. low
+// and high are nil where the log sets no bound.
+func write(v float64, low, high *float64, fixed bool) written {
+	switch {
+	case fixed:
+		return written{figure(v, 6), "", "known, not fitted"}
+	case low == nil && high == nil:
+		return written{figure(v, 3), "", "no bound"}
+	case low == nil:
+		f := decimal(*high - v)
+		return written{f(v), "", "at most " + f(*high)}
+	case high == nil:
+		f := decimal(v - *low)
+		return written{f(v), "", "at least " + f(*low)}
+	}
+	half := (*high - *low) / 2
+	f := decimal(half)
+	w := written{f(v), "", f(*low) + " to " + f(*high)}
+	if math.Abs(*high+*low-2*v) <= 0.2*half { // else ± would misstate it
+		w.half = "± " + f(half)
+	}
+	return w
+}
+
+// decimal returns a format with the decimals that give the width two
+// significant digits; very small numbers get an exponent.
+func decimal(width float64) func(float64) string {
+	width = math.Abs(width)
+	if width == 0 {
+		return func(v float64) string { return figure(v, 6) }
+	}
+	places := 1 - magnitude(width, 2)
+	if places > 6 {
+		return func(v float64) string {
+			return strconv.FormatFloat(v, 'e', max(magnitude(math.Abs(v), 2)+places, 1), 64)
+		}
+	}
+	return func(v float64) string { return strconv.FormatFloat(v, 'f', max(places, 0), 64) }
+}
+
+// quantity is a number with its unit.
+func quantity(v float64, unit string, digits int) string {
+	return strings.TrimSpace(figure(v, digits) + " " + shownUnit(unit))
+}
+
+// shownUnit writes a unit of the card as people do.
+func shownUnit(unit string) string {
+	return strings.ReplaceAll(strings.ReplaceAll(printable(unit), "degC", "°C"), "degF", "°F")
+}
+
+// duration writes seconds in the units that fit.
+func duration(s float64) string {
+	switch {
+	case s < 1 && s > 0:
+		return figure(s*1000, 3) + " ms"
+	case s < 120:
+		return figure(s, 3) + " s"
+	case s < 7200:
+		return figure(s/60, 3) + " min"
+	case s < 48*3600:
+		return figure(s/3600, 3) + " h"
+	}
+	return figure(s/86400, 3) + " d"
+}
+
+// counted is a whole number with its noun.
+func counted(n int, one, many string) string {
+	if n == 1 {
+		return "1 " + one
+	}
+	return fmt.Sprintf("%d %s", n, many)
+}
+
+// printable shows text from a file without what would steer a terminal.
+func printable(s string) string {
+	return strings.Map(func(r rune) rune {
+		if unicode.IsPrint(r) {
+			return r
+		}
+		return '·'
+	}, s)
+}
