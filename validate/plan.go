@@ -18,11 +18,11 @@ import (
 // requirement of the gains and the setpoint of the log.
 type Options struct {
 	Workers     int              // goroutines; 0 means one a core; the result does not depend on it
-	Setpoint    *float64         // setpoint for the whole run instead of the logged one
+	Setpoint    *float64         // setpoint of the whole run where the log has none
 	LoggedGains *tune.Gains      // gains in force when the logs were made: replay under them first
 	Requirement tune.Requirement // the zero value means that of the gains; its limits and scan time replace those of the gains
 	Confidence  float64          // level of the bands; 0 means 0.95
-	Traces      bool             // keep thinned series for figures
+	Traces      bool             // add thinned series, for figures, to the worst 12 runs
 	Tool        string           // written into the result
 
 	Journal  string                // ReplayFiles: file that records each log that is done; "" means none
@@ -47,6 +47,7 @@ type plan struct {
 	noise  fit.Noise
 	units  units
 	asked  []demand
+	traces bool // keep the series of a run
 }
 
 func newPlan(card *fit.Card, gains *tune.Gains, o Options) (*plan, error) {
@@ -141,9 +142,8 @@ func (p *plan) key() (string, error) {
 		Requirement tune.Requirement
 		Setpoint    *float64
 		Confidence  float64
-		Traces      bool
 		Tool        string
-	}{p.cardID, p.gains, p.logged, p.options.Requirement, p.options.Setpoint, p.options.Confidence, p.options.Traces, p.options.Tool})
+	}{p.cardID, p.gains, p.logged, p.options.Requirement, p.options.Setpoint, p.options.Confidence, p.options.Tool})
 }
 
 func hash(v any) (string, error) {

@@ -32,7 +32,8 @@ func ReplayRuns(ctx context.Context, card *fit.Card, runs []*data.Run, gains *tu
 	if err != nil {
 		return nil, err
 	}
-	return p.assemble(done), nil
+	r := p.assemble(done)
+	return r, p.addTraces(ctx, r, done, func(i int) ([]*data.Run, error) { return runs[i : i+1], nil })
 }
 
 // ReplayFiles is ReplayRuns for files: read turns one file into its runs. Only
@@ -84,7 +85,8 @@ func ReplayFiles(ctx context.Context, card *fit.Card, files []string, read func(
 	if err != nil {
 		return nil, err
 	}
-	return p.assemble(done), nil
+	r := p.assemble(done)
+	return r, p.addTraces(ctx, r, done, func(i int) ([]*data.Run, error) { return read(ctx, files[i]) })
 }
 
 // previous lists the logs of an earlier result that was computed with the
@@ -96,6 +98,7 @@ func (p *plan) previous() map[logID]doneLog {
 		return known
 	}
 	for _, run := range old.Runs {
+		run.Trace = nil // made anew for the runs that are now the worst
 		id := logID{run.File, run.SHA256}
 		d := known[id]
 		d.File, d.SHA256 = run.File, run.SHA256

@@ -36,7 +36,7 @@ func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) 
 	p.conclude(&out, e)
 	out.Logged = logged.metrics()
 	out.Warnings = append(warnings, p.warnings(run, courses, e)...)
-	if p.options.Traces {
+	if p.traces {
 		out.Trace = e.trace(courses, p.options.Confidence)
 	}
 	if p.logged != nil {
@@ -120,7 +120,7 @@ type ensemble struct {
 // and of the best-fit plant's replay.
 func (p *plan) ensemble(ctx context.Context, courses []*course, m yardstick, runners []*runner) (*ensemble, error) {
 	e := &ensemble{figures: make([]figures, len(p.plants))}
-	if p.options.Traces {
+	if p.traces {
 		if err := e.choose(p, courses); err != nil {
 			return nil, err
 		}

@@ -12,17 +12,17 @@ var ErrNoSetpoint = errors.New("no setpoint: name its column, or give --setpoint
 // startRows is the number of rows whose median is the level a segment starts from.
 const startRows = 9
 
-// setSetpoint gives the course its setpoint: the one given, else the logged
-// one, else the starting level and a step of it at the first row. logged has
+// setSetpoint gives the course its setpoint: the logged one, else the one
+// given, else the starting level and a step of it at the first row. logged has
 // the rows of the segment, or is nil.
 func (c *course) setSetpoint(logged []float64, given, step *float64) error {
 	level := startLevel(c.y)
 	c.r = make([]float64, len(c.t))
 	switch {
-	case given != nil:
-		fill(c.r, *given)
 	case hasValue(logged):
 		copyHeld(c.r, logged)
+	case given != nil:
+		fill(c.r, *given)
 	case step != nil:
 		fill(c.r, level+*step)
 		c.before, c.rest = level, level
@@ -31,7 +31,7 @@ func (c *course) setSetpoint(logged []float64, given, step *float64) error {
 		return ErrNoSetpoint
 	}
 	c.before, c.rest = c.r[0], c.r[0]
-	if math.Abs(c.r[0]-level) > startBand(c.y) && (given != nil || goesHalfway(c.y, level, c.r[0])) {
+	if math.Abs(c.r[0]-level) > startBand(c.y) && (!hasValue(logged) || goesHalfway(c.y, level, c.r[0])) {
 		c.rest = level // it starts away from its setpoint, which is a move
 	}
 	return nil
