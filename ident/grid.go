@@ -10,12 +10,9 @@ type stretch struct {
 	ragged bool
 }
 
-// uniformTolerance is how far, in steps, the rows of a stretch may lie off an
-// exact arithmetic series, besides the rounding of the time stamps. It leaves
-// an error below 1e-11 of the span.
-const uniformTolerance = 1e-11
-
-// timeTolerance is the uncertainty of a difference of two rounded times.
+// timeTolerance is the uncertainty of a difference of two rounded times: rows
+// that lie no further off an arithmetic series are uniform, and a change that
+// falls no further from a row falls on it.
 func timeTolerance(t []float64) float64 {
 	if len(t) == 0 {
 		return 0
@@ -50,7 +47,7 @@ func stretches(t []float64, tolerance float64) []stretch {
 func longestSeries(t []float64, lo int, tolerance float64) stretch {
 	try := func(hi int) (stretch, bool) {
 		step := (t[hi-1] - t[lo-1]) / float64(hi-lo)
-		return stretch{lo: lo, hi: hi, step: step}, isSeries(t[lo-1:hi], step, tolerance+uniformTolerance*step)
+		return stretch{lo: lo, hi: hi, step: step}, isSeries(t[lo-1:hi], step, tolerance)
 	}
 	best, _ := try(lo + 1)
 	tooLong := len(t) + 1

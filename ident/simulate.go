@@ -20,7 +20,7 @@ type Simulator struct {
 
 	in       Input
 	change   []float64 // of the input at in.At
-	greatest float64   // |change|, or 1 for free states
+	greatest float64   // |change|; 1 without a change
 
 	evaluation uint64 // counts the evaluations, to tell what is remembered from which
 
@@ -71,7 +71,7 @@ func (s *Simulator) Clone() *Simulator {
 	return &clone
 }
 
-// outputs are the columns an evaluation fills; slope and v are nil when only
+// outputs are the columns an evaluation fills; dtheta and v are nil when only
 // the response is wanted.
 type outputs struct {
 	y      []float64

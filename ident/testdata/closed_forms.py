@@ -49,10 +49,10 @@ CHANGES = [(0.0, 2.0), (0.3, 4.0), (0.4, -1.0), (0.77, -0.5), (2.05, 3.0), (2.1,
 
 
 def times():
-    uniform = [k * 0.05 for k in range(80)]
+    uniform = [k * 0.05 for k in range(55)]
     rng = random.Random(5)
-    jittered = [k * 0.1 + rng.uniform(-0.04, 0.04) for k in range(60)]
-    gapped = [k * 0.05 for k in range(30)] + [7.3 + k * 0.05 for k in range(20)] + [29.0 + k * 0.25 for k in range(10)]
+    jittered = [k * 0.1 + rng.uniform(-0.04, 0.04) for k in range(40)]
+    gapped = [k * 0.05 for k in range(18)] + [7.3 + k * 0.05 for k in range(12)] + [29.0 + k * 0.25 for k in range(6)]
     return {"uniform": uniform, "jittered": jittered, "gapped": gapped}
 
 
