@@ -74,7 +74,7 @@ func leastTime(b *testing.B, rows int, call func()) float64 {
 }
 
 func BenchmarkSensitivities(b *testing.B) {
-	for _, name := range []string{"fopdt", "chain2", "chain3", "chain4", "equal3", "equal8"} {
+	for _, name := range []string{"fopdt", "chain2", "chain3", "chain4", "equal3", "equal8", "ipdt"} {
 		for _, input := range []string{"bump", "telegraph"} {
 			for _, rows := range []int{1e3, 1e4, 1e6} {
 				b.Run(fmt.Sprintf("%s/%s/%.0e", name, input, float64(rows)), func(b *testing.B) {

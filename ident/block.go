@@ -1,6 +1,9 @@
 package ident
 
-import "math"
+import (
+	"math"
+	"math/bits"
+)
 
 // A Row of a block simulator stands for M samples H s apart, the first at T:
 // its response is their mean. A row of one sample has M = 1, and its H does not
@@ -132,18 +135,83 @@ func (c *chain) setBlock(b *block, one *matrix) {
 	}
 }
 
-// A blockCache remembers the last few blocks.
+// doublings is one more than the greatest power of two of samples for which a
+// block follows by doubling.
+const doublings = 24
+
+// A blockCache remembers the last few blocks, and those of 1, 2, 4, … samples
+// of one spacing, each made from the one before.
 type blockCache struct {
 	entry [4]block
 	used  int
 
 	one  matrix // transition over h
 	oneH float64
+
+	power  []block // power[k] is the block of 2^k samples oneH apart
+	filled int
 }
 
-func (s *blockCache) clear() { s.used, s.oneH = 0, -1 }
+func (s *blockCache) clear() { s.used, s.oneH, s.filled = 0, -1, 0 }
+
+// doubled returns the block of 2^k samples: its transition is the square of
+// that of half as many, its mean the mean of the two halves.
+func (s *blockCache) doubled(c *chain, h float64, k int) *block {
+	if s.power == nil {
+		s.power = make([]block, doublings)
+	}
+	for s.filled <= k {
+		b := &s.power[s.filled]
+		b.h, b.m = h, 1<<s.filled
+		if s.filled == 0 {
+			c.setBlock(b, &s.one)
+		} else {
+			half := &s.power[s.filled-1]
+			c.product(&b.over, &half.over, &half.over)
+			c.product(&b.mean, &half.mean, &half.over)
+			for i := range c.n + c.q {
+				for j := 0; j <= i; j++ {
+					b.mean[i*maxStates+j] = (b.mean[i*maxStates+j] + half.mean[i*maxStates+j]) / 2
+				}
+			}
+		}
+		s.filled++
+	}
+	return &s.power[k]
+}
+
+// product sets f to a·b for matrices of the form of a transition: no
+// sensitivity acts on another.
+func (c *chain) product(f, a, b *matrix) {
+	for i := range c.n + c.q {
+		elements := min(i+1, c.n)
+		for j := range elements {
+			sum := 0.0
+			for k := j; k < elements; k++ {
+				sum += a[i*maxStates+k] * b[k*maxStates+j]
+			}
+			if i >= c.n {
+				sum += a[i*maxStates+i] * b[i*maxStates+j]
+			}
+			f[i*maxStates+j] = sum
+		}
+		for j := elements; j < i; j++ {
+			f[i*maxStates+j] = 0
+		}
+		if i >= c.n {
+			f[i*maxStates+i] = a[i*maxStates+i] * b[i*maxStates+i]
+		}
+	}
+}
 
 func (s *blockCache) get(c *chain, h float64, m int) *block {
+	if m&(m-1) == 0 && m < 1<<doublings {
+		if s.oneH != h {
+			c.transition(&s.one, h)
+			s.oneH, s.filled = h, 0
+		}
+		return s.doubled(c, h, bits.TrailingZeros(uint(m)))
+	}
 	for i := range min(s.used, len(s.entry)) {
 		if e := &s.entry[i]; e.m == m && e.h == h {
 			return e
@@ -153,7 +221,7 @@ func (s *blockCache) get(c *chain, h float64, m int) *block {
 	s.used++
 	if s.oneH != h {
 		c.transition(&s.one, h)
-		s.oneH = h
+		s.oneH, s.filled = h, 0
 	}
 	e.h, e.m = h, m
 	c.setBlock(e, &s.one)
@@ -174,14 +242,27 @@ func (s *Simulator) runMeans(o *outputs, lo, hi int) {
 // setStep prepares the transition over the step of a uniform stretch.
 func (s *Simulator) setStep(r stretch) {
 	s.stepLength = r.step
-	if s.rows != nil {
-		row := s.rows[r.lo]
-		if row.M > 1 && math.Abs(r.step-float64(row.M)*row.H) <= s.tolerance {
-			s.step = s.blocks.get(&s.chain, row.H, row.M).over
-			return
-		}
+	if b := s.departed(r.lo, r.step); b != nil {
+		s.step = b.over
+		return
 	}
 	s.chain.transition(&s.step, r.step)
+}
+
+// departed returns the block of the row before row k when the step to row k is
+// just its length, else nil.
+func (s *Simulator) departed(k int, step float64) *block {
+	if s.rows == nil {
+		return nil
+	}
+	row := s.rows[k-1]
+	if row.M == 1 {
+		row.H = s.rows[k].H // a single sample before a block of the same spacing
+	}
+	if row.H > 0 && math.Abs(step-float64(row.M)*row.H) <= s.tolerance {
+		return s.blocks.get(&s.chain, row.H, row.M)
+	}
+	return nil
 }
 
 // emitMean writes the outputs of row k, which is a mean, from the state at its

@@ -218,7 +218,7 @@ func scaled(shape []float64, scale, deadTime float64) candidate {
 // dead time reaches a level between 0 and 1, by bisection.
 func levelTime(st Structure, lags []float64, level float64) float64 {
 	var c chain
-	c.set(st, lags, 0, false)
+	c.set(st, lags, false)
 	response := func(t float64) float64 {
 		var f matrix
 		var kick state

@@ -134,7 +134,11 @@ func (s *kickCache) after(c *chain, since, tolerance float64) *state {
 // input.
 func (s *Simulator) runRagged(o *outputs, r stretch, deadTime float64) {
 	for k := r.lo; k < r.hi; k++ {
-		s.steps.over(&s.chain, &s.x, s.t[k]-s.t[k-1], s.tolerance)
+		if b := s.departed(k, s.t[k]-s.t[k-1]); b != nil {
+			s.chain.advance(&b.over, &s.x)
+		} else {
+			s.steps.over(&s.chain, &s.x, s.t[k]-s.t[k-1], s.tolerance)
+		}
 		s.arrive(k, deadTime)
 		s.emitRow(o, k, deadTime)
 	}

@@ -16,7 +16,6 @@ type Simulator struct {
 	rows      []Row     // nil when rows are samples
 	stretches []stretch
 	tolerance float64 // of a difference of times
-	shortest  float64 // lags up to it pass their input through
 
 	in       Input
 	change   []float64 // of the input at in.At
@@ -46,9 +45,6 @@ func NewSimulator(t []float64, in Input) *Simulator {
 	if slices.ContainsFunc(s.stretches, func(r stretch) bool { return r.ragged }) {
 		s.steps = new(stepCache)
 	}
-	if n := len(t); n > 1 {
-		s.shortest = 1e-30 * (t[n-1] - t[0])
-	}
 	s.change = make([]float64, len(in.At))
 	before := in.Before
 	for j, v := range in.Value {
@@ -65,6 +61,7 @@ func NewSimulator(t []float64, in Input) *Simulator {
 // Clone returns a simulator of the same log for another goroutine.
 func (s *Simulator) Clone() *Simulator {
 	clone := *s
+	clone.blocks = blockCache{}
 	if s.steps != nil {
 		clone.steps = new(stepCache)
 	}
@@ -142,7 +139,7 @@ func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sens
 		s.steps.evaluation = s.evaluation
 	}
 	s.blocks.clear()
-	return finite(deadTime) && s.chain.set(st, lags, s.shortest, sensitivities)
+	return finite(deadTime) && s.chain.set(st, lags, sensitivities)
 }
 
 // walk fills the outputs row by row.

@@ -283,8 +283,8 @@ func TestStrangeParameters(t *testing.T) {
 	times := append(uniformRows(300), 15.01, 15.06, 17, 1e6)
 	rows := []Row{{T: 0, H: 0.05, M: 40}, {T: 2, H: 0.05, M: 40}, {T: 7, H: nan, M: 1}, {T: 8, H: 1, M: 1e6}}
 	in := Input{At: []float64{0, 1, 1.01, 9}, Value: []float64{1, 2, 0, 5}}
-	values := []float64{0, 1e-320, 1e-200, 1e-30, 1e-9, 0.05, 1, 1e9, 1e200, math.MaxFloat64, inf, -1, nan}
-	for _, s := range []*Simulator{NewSimulator(times, in), NewBlockSimulator(rows, in)} {
+	values := []float64{0, 1e-320, 1e-200, 1e-59, 1e-30, 1e-9, 0.05, 1, 1e9, 1e200, math.MaxFloat64, inf, -1, nan}
+	for _, s := range []*Simulator{NewSimulator(times, in), NewSimulator(times[40:41], in), NewBlockSimulator(rows, in)} {
 		size := len(s.t)
 		for _, st := range Structures() {
 			got := columnsFor(st, size)

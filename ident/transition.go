@@ -57,9 +57,12 @@ type chain struct {
 	table expTable
 }
 
+// leastLag is the lag in s below which an element passes its input through,
+// as one with a lag of zero does: h/tau to the power of the order stays finite.
+const leastLag = 1e-60
+
 // set prepares the chain; ok is false when a lag is negative or not a number.
-// Lags below shortest are taken as zero.
-func (c *chain) set(st Structure, lags []float64, shortest float64, sensitivities bool) (ok bool) {
+func (c *chain) set(st Structure, lags []float64, sensitivities bool) (ok bool) {
 	c.n, c.q = 0, 0
 	c.equal = st.equal || st.order == 1
 	c.order = st.order
@@ -70,7 +73,7 @@ func (c *chain) set(st Structure, lags []float64, shortest float64, sensitivitie
 			return false
 		}
 		c.of[i] = -1
-		if tau <= shortest {
+		if tau < leastLag {
 			continue
 		}
 		k := c.n
