@@ -172,7 +172,7 @@ func atBest(nodes [][]node) member {
 	dof := 0.0
 	for _, ns := range nodes {
 		n := ns[0]
-		s2 := n.rss / float64(n.dof)
+		s2 := n.s2
 		dof += float64(n.dof)
 		for i := range d {
 			v[i] += n.b[i] / s2
@@ -223,8 +223,8 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 			}
 		}
 		inv := invert(gram)
-		s2 := f.s2() / r.weight
-		q := -studentQuantile((1-level)/2, float64(len(r.t)-f.mean))
+		s2 := r.sigma2
+		q := -studentQuantile((1-level)/2, float64(len(r.root.t)-f.mean))
 		for j := range r.fixed {
 			se := widen * math.Sqrt(inv[j][j]*s2)
 			out[i] = append(out[i], estimate{value: beta[j], se: se, low: beta[j] - q*se, high: beta[j] + q*se})

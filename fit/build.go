@@ -252,30 +252,26 @@ func (out *outcome) covariance(b *bounded) [][]float64 {
 // residuals fills the figures of the misfit. The whitened residuals are those
 // of the noise model; the simulated output is what the plant alone explains.
 func (out *outcome) residuals(b *bounded, m *Model) {
-	var whitened, left []float64
+	var whitened []float64
 	var sse, sst float64
 	pIn := 1.0
 	lag1 := 0.0
-	b.e.eval(b.p.eta, false)
-	whiteParts := make([][]float64, len(b.e.recs))
-	for i := range b.e.recs {
-		whiteParts[i] = append([]float64(nil), b.e.work[i].r...)
-	}
-	for i, t := range b.fitted.tangents() {
+	for _, t := range b.fitted.tangents() {
 		r := t.rec
-		m.Samples += len(r.t)
+		root := r.root
+		m.Samples += len(root.t)
 		mean := 0.0
-		for _, v := range r.y {
-			mean += v / float64(len(r.y))
+		for _, v := range root.y {
+			mean += v / float64(len(root.y))
 		}
-		for k, v := range t.left {
+		for k, v := range t.all {
 			sse += v * v
-			sst += (r.y[k] - mean) * (r.y[k] - mean)
+			sst += (root.y[k] - mean) * (root.y[k] - mean)
 		}
-		left = append(left, t.left...)
-		whitened = append(whitened, whiteParts[i]...)
-		lag1 += autocorrelation(t.left, 1)[1] * float64(len(r.t))
-		if p := crossCorrelationP(whiteParts[i], inputChanges(r), crossLags(r, b)); !math.IsNaN(p) {
+		w := r.whiten(t.all)
+		whitened = append(whitened, w...)
+		lag1 += autocorrelation(t.all, 1)[1] * float64(len(root.t))
+		if p := crossCorrelationP(w, inputChanges(root), crossLags(root, b)); !math.IsNaN(p) {
 			pIn = math.Min(pIn, p)
 		}
 	}
@@ -306,10 +302,8 @@ func finite(v, other float64) float64 {
 // time by its logarithm.
 func (out *outcome) noise(b *bounded) Noise {
 	var total, white, logTC, weight float64
-	dof := math.Max(float64(b.e.samples()-b.mean), 1) / float64(b.e.samples())
-	for i, r := range b.e.recs {
-		v := b.p.part[i] / (float64(len(r.t)) * dof)
-		s := b.shapes[i]
+	for i, s := range b.shapes {
+		v := b.sigma2[i]
 		total += v
 		white += v * s.white
 		if s.white < 1 {

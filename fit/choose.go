@@ -181,9 +181,6 @@ func rng(seed int64, purpose string, index int) *rand.Rand {
 func (out *outcome) settle(s *study) error {
 	o := out.opt
 	ins := []initial{rest, earlier}
-	if startsAtRest(s.recs) {
-		ins = ins[:1]
-	}
 	if o.Initial != "auto" {
 		in, err := parseInitial(o.Initial)
 		if err != nil {
@@ -198,6 +195,12 @@ func (out *outcome) settle(s *study) error {
 	var shapes []shape
 	var weights []float64
 	for _, in := range ins {
+		if in == earlier && out.one != nil && startsAtRest(s.recs, out.one.p.eta[0]) {
+			break
+		}
+		for _, r := range s.recs {
+			r.shape, r.weight = whiteShape, 1
+		}
 		s.set(in, drifts[0])
 		plain := &study{recs: s.recs, white: true}
 		start := plain.fit(one, nil)
@@ -230,16 +233,47 @@ func (out *outcome) settle(s *study) error {
 	return nil
 }
 
-// startsAtRest reports whether every record holds still before its first bump
-// for long enough to tell.
-func startsAtRest(recs []*record) bool {
+// startsAtRest reports whether every record holds still before its first
+// change of the input, for the few rows it takes to tell: a straight line
+// through them has a slope that is lost in the noise and the resolution, or
+// that over the lag tau amounts to less than a tenth of the swing.
+func startsAtRest(recs []*record, tau float64) bool {
 	for _, r := range recs {
-		bumps := ident.FindBumps(r.run.T, r.run.U, r.run.Y)
-		if len(bumps) == 0 || !bumps[0].SettledBefore {
+		n := 0
+		for n < len(r.t) && r.t[n] < r.input.At[0] {
+			n++
+		}
+		if n < 4 {
+			return false
+		}
+		slope, se := lineSlope(r.t[:n], r.y[:n])
+		lost := 2.5*se + r.run.Quality.Quantum/(r.t[n-1]-r.t[0])
+		e := extent([]*data.Run{r.run}, func(x *data.Run) []float64 { return x.Y })
+		if math.Abs(slope) > lost && math.Abs(slope)*tau > 0.1*(e[1]-e[0]) {
 			return false
 		}
 	}
 	return true
+}
+
+// lineSlope is the least-squares slope of y over t and its standard error.
+func lineSlope(t, y []float64) (slope, se float64) {
+	n := float64(len(t))
+	var mt, my, stt, sty, ss float64
+	for i := range t {
+		mt += t[i] / n
+		my += y[i] / n
+	}
+	for i := range t {
+		stt += (t[i] - mt) * (t[i] - mt)
+		sty += (t[i] - mt) * (y[i] - my)
+	}
+	slope = sty / stt
+	for i := range t {
+		d := y[i] - my - slope*(t[i]-mt)
+		ss += d * d
+	}
+	return slope, math.Sqrt(ss / math.Max(n-2, 1) / stt)
 }
 
 const (

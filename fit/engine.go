@@ -32,7 +32,7 @@ type workspace struct {
 	raw   [][]float64 // simulated: response, d/dlag…, d/ddeadtime
 	start [][]float64 // the same for the change at the first row, or free states
 	g, r  []float64
-	jac   [][]float64 // whitened, projected columns d/deta
+	jac   [][]float64 // whitened columns d/deta
 	extra [][]float64 // orthonormal columns of the initial state
 	basis [][]float64 // the record's and extra
 	spare [][]float64 // memory of extra
@@ -49,7 +49,6 @@ type point struct {
 	// Gauss-Newton figures of (gain, eta), present after a full evaluation.
 	normal [][]float64 // JᵀJ, gain first
 	grad   []float64   // Jᵀr for eta (that of the gain is zero when it is free)
-	gradK  float64
 }
 
 func newEngine(st ident.Structure, recs []*record) *engine {
@@ -217,16 +216,22 @@ func (e *engine) gaussNewton(p *point) {
 					}
 				}
 			}
-			r.filter.apply(c, c)
-			project(c, w.basis)
+		}
+		r.filter.applyAll(w.jac[:n])
+		// The residual and g are free of the basis already; the columns are
+		// freed of it in their products, which saves passes over the rows.
+		in := columns(n, len(w.basis))
+		for j := range n {
+			for l, q := range w.basis {
+				in[j][l] = dot(q, w.jac[j])
+			}
 		}
 		p.normal[0][0] += r.weight * dot(w.g, w.g)
-		p.gradK += r.weight * dot(w.g, w.r)
 		for j := range n {
 			p.normal[0][j+1] += r.weight * dot(w.g, w.jac[j])
 			p.grad[j] += r.weight * dot(w.jac[j], w.r)
 			for l := 0; l <= j; l++ {
-				p.normal[l+1][j+1] += r.weight * dot(w.jac[l], w.jac[j])
+				p.normal[l+1][j+1] += r.weight * (dot(w.jac[l], w.jac[j]) - dot(in[l], in[j]))
 			}
 		}
 	}

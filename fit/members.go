@@ -25,7 +25,7 @@ func members(nodes [][]node, rng *rand.Rand) []member {
 		out := make([]member, 0, len(nodes[0]))
 		for _, n := range nodes[0] {
 			cov := invert(n.a)
-			s2 := n.rss / float64(n.dof)
+			s2 := n.s2
 			m := member{weight: n.weight, cov: cov, shift: multiply(cov, n.b), dof: float64(n.dof)}
 			for i := range cov {
 				for j := range cov {
@@ -44,7 +44,7 @@ func members(nodes [][]node, rng *rand.Rand) []member {
 		for _, ns := range nodes {
 			n := ns[pick(ns, rng.Float64())]
 			chi := distuv.ChiSquared{K: float64(n.dof), Src: rng}
-			s2 := n.rss / chi.Rand()
+			s2 := n.s2 * float64(n.dof) / chi.Rand()
 			for i := range d {
 				b[i] += n.b[i] / s2
 				for j := range d {

@@ -26,15 +26,15 @@ var whiteShape = shape{tc: 1, white: 1}
 // independent values of variance 1: the innovations of a scalar Kalman
 // filter divided by their standard deviation,
 //
-//	v[k] = x[k] - a2[k]·a,  out[k] = v[k]·isd[k],  a ← a1[k]·a + gain[k]·v[k]
+//	out[k] = (x[k] - a2[k]·a)·isd[k],  a ← decay[k]·a + gain[k]·x[k]
 //
 // where a is the predicted correlated part at the last sample seen. A row that
 // is the mean of M samples is treated exactly (see rowMoments).
 type filter struct {
-	a1, a2, gain, isd []float64
-	logdet            float64 // log determinant of the correlation matrix of the rows
-	white             bool    // nothing to do apart from the weights isd
-	plain             bool    // white and every weight 1
+	decay, a2, gain, isd []float64
+	logdet               float64 // log determinant of the correlation matrix of the rows
+	white                bool    // nothing to do apart from the weights isd
+	plain                bool    // white and every weight 1
 }
 
 // rowMoments are the moments of a row that is the mean of m samples spaced h:
@@ -86,7 +86,7 @@ func (f *filter) set(rows []ident.Row, s shape) {
 		}
 		return
 	}
-	f.a1, f.a2, f.gain = resize(f.a1, n), resize(f.a2, n), resize(f.gain, n)
+	f.decay, f.a2, f.gain = resize(f.decay, n), resize(f.a2, n), resize(f.gain, n)
 	v, w := 1-s.white, s.white
 	var (
 		p                 = v // variance of the correlated part at the last sample, given the past
@@ -138,7 +138,7 @@ func (f *filter) set(rows []ident.Row, s shape) {
 			// Equal rows bring the filter to a steady state; then its figures repeat.
 			steady = k > 0 && math.Abs(p-pBefore) <= 1e-15*v
 		}
-		f.a1[k], f.a2[k], f.gain[k], f.isd[k] = cA1, cA2, cG, cIS
+		f.decay[k], f.a2[k], f.gain[k], f.isd[k] = cA1-cG*cA2, cA2, cG, cIS
 		logs += cLog
 	}
 	f.logdet = logs
@@ -155,14 +155,63 @@ func (f *filter) apply(dst, src []float64) {
 		}
 	default:
 		n := len(src)
-		a1, a2, g, isd := f.a1[:n], f.a2[:n], f.gain[:n], f.isd[:n]
+		decay, a2, g, isd := f.decay[:n], f.a2[:n], f.gain[:n], f.isd[:n]
 		dst = dst[:n]
 		a := 0.0
 		for k, x := range src {
-			v := x - a2[k]*a
-			dst[k] = v * isd[k]
-			a = a1[k]*a + g[k]*v
+			dst[k] = (x - a2[k]*a) * isd[k]
+			a = decay[k]*a + g[k]*x
 		}
+	}
+}
+
+// applyAll filters columns in place, four side by side: one recursion alone
+// waits for its own last value most of the time.
+func (f *filter) applyAll(cols [][]float64) {
+	for !f.white && len(cols) >= 4 {
+		f.applyFour(cols[0], cols[1], cols[2], cols[3])
+		cols = cols[4:]
+	}
+	if !f.white && len(cols) >= 2 {
+		f.applyTwo(cols[0], cols[1])
+		cols = cols[2:]
+	}
+	for _, c := range cols {
+		f.apply(c, c)
+	}
+}
+
+func (f *filter) applyFour(x0, x1, x2, x3 []float64) {
+	n := len(x0)
+	decay, a2, g, isd := f.decay[:n], f.a2[:n], f.gain[:n], f.isd[:n]
+	x1, x2, x3 = x1[:n], x2[:n], x3[:n]
+	var b0, b1, b2, b3 float64
+	for k, v0 := range x0 {
+		v1, v2, v3 := x1[k], x2[k], x3[k]
+		a, w, d, h := a2[k], isd[k], decay[k], g[k]
+		x0[k] = (v0 - a*b0) * w
+		x1[k] = (v1 - a*b1) * w
+		x2[k] = (v2 - a*b2) * w
+		x3[k] = (v3 - a*b3) * w
+		b0 = d*b0 + h*v0
+		b1 = d*b1 + h*v1
+		b2 = d*b2 + h*v2
+		b3 = d*b3 + h*v3
+	}
+}
+
+func (f *filter) applyTwo(x0, x1 []float64) {
+	n := len(x0)
+	decay, a2, g, isd := f.decay[:n], f.a2[:n], f.gain[:n], f.isd[:n]
+	x1 = x1[:n]
+	var b0, b1 float64
+	for k, v0 := range x0 {
+		v1 := x1[k]
+		a, w, d, h := a2[k], isd[k], decay[k], g[k]
+		x0[k] = (v0 - a*b0) * w
+		x1[k] = (v1 - a*b1) * w
+		b0 = d*b0 + h*v0
+		b1 = d*b1 + h*v1
 	}
 }
 

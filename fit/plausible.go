@@ -41,7 +41,7 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 	}
 	spreads := b.spreads()
 	s2 := b.s2()
-	dof := float64(max(e.samples()-b.mean, 1))
+	dof := float64(max(b.rows()-b.mean, 1))
 
 	type walker struct {
 		p      point

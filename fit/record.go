@@ -14,14 +14,17 @@ import (
 type record struct {
 	run   *data.Run
 	input ident.Input // phi(u)
-	t, y  []float64   // rows with a temperature
-	rows  []ident.Row // the same rows, one sample each
+	t, y  []float64   // rows with a temperature, or means of some (t their middle)
+	rows  []ident.Row // the same rows
 	span  float64     // s, first to last row
 	step  float64     // s, median interval
 	sim   *ident.Simulator
 	start *ident.Simulator // response to a unit change at the first row, for an earlier rest
 	rest  initial
 	drift bool
+
+	root *record          // the record at full resolution; itself when nothing is averaged
+	full *ident.Simulator // scratch: the plant at full resolution
 
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
 
@@ -31,6 +34,7 @@ type record struct {
 	yw     []float64   // whitened temperature, free of the fixed columns
 	basis  [][]float64 // whitened fixed columns, orthonormal
 	weight float64     // 1/variance relative to the first record
+	sigma2 float64     // variance of a whitened row
 }
 
 // initial says what is known of the state at the first row.
@@ -83,6 +87,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.span = r.t[len(r.t)-1] - r.t[0]
 	r.step = medianInterval(r.t)
 	r.sim = ident.NewSimulator(r.t, r.input)
+	r.root = r
 	r.setShape(whiteShape)
 	return r, nil
 }
@@ -100,7 +105,7 @@ func (r *record) model(in initial, drift bool) {
 		r.fixed = append(r.fixed, append([]float64(nil), r.t...))
 	}
 	if in == earlier && r.start == nil {
-		r.start = ident.NewSimulator(r.t, ident.Input{At: []float64{r.t[0]}, Value: []float64{1}})
+		r.start = ident.NewBlockSimulator(r.rows, ident.Input{At: []float64{r.root.t[0]}, Value: []float64{1}})
 	}
 	r.setShape(r.shape)
 }
@@ -129,7 +134,7 @@ func (r *record) clone() *record {
 	if r.start != nil {
 		c.start = r.start.Clone()
 	}
-	c.filter = filter{}
+	c.filter, c.full = filter{}, nil
 	c.yw, c.basis = nil, nil
 	c.setShape(r.shape)
 	return &c
@@ -193,4 +198,26 @@ func medianInterval(t []float64) float64 {
 	}
 	sort.Float64s(d)
 	return d[len(d)/2]
+}
+
+// logLikelihood is that of the full log under the shape in force, given what
+// the model leaves of it and the whitened sum of squares of the rows in use.
+func (r *record) logLikelihood(left []float64, part float64) float64 {
+	if r.root == r || len(r.root.rows) == len(r.rows) {
+		return r.filter.logLikelihood(part, len(r.t))
+	}
+	f := filter{}
+	f.set(r.root.rows, r.shape)
+	w := make([]float64, len(left))
+	f.apply(w, left)
+	return f.logLikelihood(dot(w, w), len(w))
+}
+
+// whiten filters a column of the full log under the shape in force.
+func (r *record) whiten(left []float64) []float64 {
+	f := filter{}
+	f.set(r.root.rows, r.shape)
+	w := make([]float64, len(left))
+	f.apply(w, left)
+	return w
 }

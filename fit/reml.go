@@ -3,6 +3,8 @@ package fit
 import (
 	"math"
 	"sort"
+
+	"lagwright/ident"
 )
 
 // tangent is a fitted model near its optimum on one record: what is left of
@@ -11,6 +13,9 @@ import (
 type tangent struct {
 	rec    *record
 	left   []float64   // log minus model, unwhitened
+	noise  []ident.Row // rows on which the noise is judged: those of rec, or of the full log
+	rest   []float64   // log minus model on them
+	all    []float64   // log minus model on the full log
 	cols   [][]float64 // orthonormal (unwhitened) directions
 	first  int         // how many of cols are linear columns
 	param  []int       // parameter (0 gain, 1… eta) behind cols[first+i]
@@ -19,6 +24,9 @@ type tangent struct {
 	nparam int
 
 	filter filter      // scratch of evaluate
+	fine   filter      // the same on the noise rows
+	buf    []float64   // scratch: rest whitened
+	logdet float64     // of the noise rows under the shape last evaluated
 	white  [][]float64 // scratch: whitened cols, and left
 }
 
@@ -52,6 +60,11 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 		for k, v := range c {
 			t.left[k] -= beta[j] * v
 		}
+	}
+	t.noise, t.rest, t.all = r.rows, t.left, t.left
+	if r.root != r && len(r.rows) < len(r.root.rows) {
+		t.all = r.residual(e, p, beta, len(linear))
+		t.noise, t.rest = pieces(r.root.rows, t.all)
 	}
 	for _, c := range linear {
 		addToBasis(&t.cols, append([]float64(nil), c...))
@@ -119,14 +132,14 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 
 // node is one noise shape with what the record says under it: its weight,
 // and the quadratic form of the model's parameters (gain, eta):
-// rss(d) = rss + (d-shift)ᵀ·a·(d-shift), d counted from the optimum the
+// rss(d) = least + (d-shift)ᵀ·a·(d-shift), d counted from the optimum the
 // tangent was taken at. Parameters absent from the tangent have zero rows.
 type node struct {
 	shape  shape
 	weight float64
 	a      [][]float64
 	b      []float64 // a·shift
-	rss    float64   // at the optimum over the linear columns and d
+	s2     float64   // variance of a whitened row
 	dof    int
 	dev    float64 // -2 restricted log likelihood, up to a constant
 }
@@ -141,15 +154,17 @@ type node struct {
 func (t *tangent) evaluate(s shape) node {
 	f := &t.filter
 	f.set(t.rec.rows, s)
+	t.logdet = f.logdet
 	n, p := len(t.left), len(t.cols)
 	if t.white == nil {
 		t.white = columns(p+1, n)
 	}
 	white := t.white
 	for j, c := range t.cols {
-		f.apply(white[j], c)
+		copy(white[j], c)
 	}
-	f.apply(white[p], t.left)
+	copy(white[p], t.left)
+	f.applyAll(white)
 	// Cholesky of the Gram matrix, columns in order, the residual last.
 	l := columns(p+1, p+1)
 	logdet := 0.0
@@ -169,8 +184,15 @@ func (t *tangent) evaluate(s shape) node {
 			logdet += 2 * math.Log(l[i][i])
 		}
 	}
-	nd := node{shape: s, rss: l[p][p] * l[p][p], dof: n - p}
-	nd.dev = float64(n-p)*math.Log(nd.rss) + f.logdet + logdet
+	nd := node{shape: s, dof: n - p}
+	rss := l[p][p] * l[p][p]
+	if len(t.rest) != n || &t.rest[0] != &t.left[0] {
+		rss = t.fullSum(s, white[p], rss)
+		n = len(t.rest)
+		nd.dof = max(len(t.rec.root.t)-p, 1)
+	}
+	nd.s2 = rss / float64(n-p)
+	nd.dev = float64(n-p)*math.Log(rss) + t.logdet + logdet
 	// The parameter block: a in the orthonormal coordinates is lp·lpᵀ, with lp
 	// the trailing block of l; in parameters a = triᵀ·lp·lpᵀ·tri.
 	np := len(t.param)
@@ -193,6 +215,20 @@ func (t *tangent) evaluate(s shape) node {
 		}
 	}
 	return nd
+}
+
+// fullSum is the generalised least-squares sum over the noise rows: their
+// whitened sum of squares less what the model's directions would still take
+// from it, which the averaged rows tell (whitened sum minus least, scaled to
+// the number of rows).
+func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
+	t.fine.set(t.noise, s)
+	t.buf = resize(t.buf, len(t.rest))
+	t.fine.apply(t.buf, t.rest)
+	t.logdet = t.fine.logdet
+	taken := (dot(white, white) - least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
+	sum := dot(t.buf, t.buf)
+	return math.Max(sum-taken, 1e-3*sum)
 }
 
 // tcRange is the range of correlation times that a record can speak about.

@@ -16,6 +16,7 @@ type fitted struct {
 	groups []int // lags that coincide at the optimum
 	shapes []shape
 	weight []float64
+	sigma2 []float64
 
 	mean   int // parameters of the mean: gain, lags, dead time, linear columns
 	params int // mean and noise parameters
@@ -27,7 +28,7 @@ type fitted struct {
 // activate puts the noise shapes of f in force.
 func (f *fitted) activate() {
 	for i, r := range f.e.recs {
-		r.weight = f.weight[i]
+		r.weight, r.sigma2 = f.weight[i], f.sigma2[i]
 		if r.shape != f.shapes[i] {
 			r.setShape(f.shapes[i])
 		}
@@ -35,9 +36,7 @@ func (f *fitted) activate() {
 }
 
 // s2 is the variance of the whitened residuals.
-func (f *fitted) s2() float64 {
-	return f.p.s / float64(max(f.e.samples()-f.mean, 1))
-}
+func (f *fitted) s2() float64 { return f.e.recs[0].sigma2 }
 
 // study fits structures to a set of records.
 type study struct {
@@ -78,8 +77,11 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 	st := e.st
 	f := &fitted{st: st, e: e}
 	f.p = e.search(starts)
+	s.focus(f)
 	s.coincide(f)
-	if !s.white {
+	if s.white {
+		s.measure(f)
+	} else {
 		s.alternate(f)
 	}
 	s.score(f)
@@ -87,6 +89,38 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 		s.tau, s.dead = f.p.eta[0], f.p.eta[1]
 	}
 	return f
+}
+
+// focus averages the records for the plant found and puts them in place of
+// those of the search.
+func (s *study) focus(f *fitted) {
+	e := f.e
+	dead := f.p.eta[e.ng]
+	zone := 3 * s.recs[0].step
+	if e.ng > 0 {
+		zone = math.Max(zone, math.Min(0.02*(dead+f.p.eta[0]), 50*s.recs[0].step))
+	}
+	for i, r := range s.recs {
+		s.recs[i] = r.focus(dead, zone)
+	}
+	fresh := newEngine(f.st, s.recs)
+	s.applyFix(fresh)
+	f.e = fresh
+	f.p = fresh.descend(f.p.eta, finalTol)
+	if q := fresh.intervals(f.p); q.s < f.p.s {
+		f.p = fresh.descend(q.eta, finalTol)
+	}
+}
+
+// measure sets the variance of every record from its residuals under the
+// shape in force, and the weights from the variances.
+func (s *study) measure(f *fitted) {
+	for i, t := range f.tangents() {
+		s.recs[i].sigma2 = t.evaluate(s.recs[i].shape).s2
+	}
+	for _, r := range s.recs {
+		r.weight = s.recs[0].sigma2 / r.sigma2
+	}
 }
 
 // applyFix holds the parameters that the user knows.
@@ -214,12 +248,11 @@ func (s *study) alternate(f *fitted) {
 				from = &before[i]
 			}
 			n := t.bestShape(from)
-			r := s.recs[i]
-			r.setShape(n.shape)
-			r.weight = float64(n.dof) / n.rss
+			s.recs[i].setShape(n.shape)
+			s.recs[i].sigma2 = n.s2
 		}
-		for i := len(s.recs) - 1; i >= 0; i-- {
-			s.recs[i].weight /= s.recs[0].weight
+		for _, r := range s.recs {
+			r.weight = s.recs[0].sigma2 / r.sigma2
 		}
 		f.p = f.e.descend(f.p.eta, finalTol)
 		if round == 0 {
@@ -238,6 +271,7 @@ func (s *study) alternate(f *fitted) {
 			break
 		}
 	}
+	s.measure(f)
 }
 
 func alike(a, b shape) bool {
@@ -278,7 +312,8 @@ func (s *study) score(f *fitted) {
 	n := 0
 	f.mean = f.e.nl + 2
 	f.params = 0
-	f.shapes, f.weight = nil, nil
+	f.shapes, f.weight, f.sigma2 = nil, nil, nil
+	ts := f.tangents()
 	if f.e.gainFix {
 		f.mean--
 	}
@@ -298,8 +333,9 @@ func (s *study) score(f *fitted) {
 		case free:
 			f.mean += f.st.Order()
 		}
-		n += len(r.t)
-		f.loglik += r.filter.logLikelihood(f.p.part[i], len(r.t))
+		n += len(r.root.t)
+		f.loglik += r.logLikelihood(ts[i].all, f.p.part[i])
+		f.sigma2 = append(f.sigma2, r.sigma2)
 		f.params++ // variance
 		if !s.white {
 			f.params += 2
@@ -312,4 +348,13 @@ func (s *study) score(f *fitted) {
 		f.aicc += 2 * k * (k + 1) / (m - k - 1)
 	}
 	f.bic = -2*f.loglik + k*math.Log(m)
+}
+
+// rows is the number of rows of the full logs.
+func (f *fitted) rows() int {
+	n := 0
+	for _, r := range f.e.recs {
+		n += len(r.root.t)
+	}
+	return n
 }

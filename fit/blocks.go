@@ -1,0 +1,202 @@
+package fit
+
+import (
+	"math"
+	"sort"
+
+	"lagwright/ident"
+)
+
+// A bump log holds few facts in many rows: between changes of the input the
+// response is a sum of exponentials that grows smoother with the time since
+// the change. Rows are therefore averaged in blocks whose width grows with
+// that time. The plant's response to a block is its exact mean, and so is the
+// noise model's (see momentsOf); what is lost is only the information inside a
+// block. For a part of the response with time scale s, a block of width w
+// loses the fraction (w/s)²/12 of the Fisher information, and at the distance d
+// from the change only parts with s of d/3 or more are still alive (the rest
+// has decayed by exp(-6) in square), so that w = d/25 loses less than 0.1 %.
+const blockGrowth = 25
+
+// reduceAbove is the number of rows from which a log is averaged; below, it is
+// not worth it.
+const reduceAbove = 300
+
+// ladder rounds a block length down to a power of two, so that blocks share
+// their figures and each follows from the one half as long.
+func ladder(w int) int {
+	p := 1
+	for 2*p <= w {
+		p *= 2
+	}
+	return p
+}
+
+// averaged returns r with blocks in place of rows: allowed gives the longest
+// block, in samples, that may start at a time. A block never spans uneven
+// sampling. It returns r itself when little would be saved.
+func (r *record) averaged(allowed func(t float64) int) *record {
+	root := r.root
+	n := len(root.t)
+	c := *r
+	c.rows, c.t, c.y = nil, nil, nil
+	for k := 0; k < n; {
+		m := root.uniform(k, ladder(allowed(root.t[k])))
+		row := ident.Row{T: root.t[k], H: root.step, M: m}
+		if m > 1 {
+			row.H = (root.t[k+m-1] - root.t[k]) / float64(m-1)
+			if math.Abs(row.H-root.step)*float64(m) < 1e-9*root.step {
+				row.H = root.step // rounding of the stamps
+			}
+		}
+		mean := 0.0
+		for _, v := range root.y[k : k+m] {
+			mean += v
+		}
+		c.rows = append(c.rows, row)
+		c.t = append(c.t, row.T+float64(m-1)/2*row.H)
+		c.y = append(c.y, mean/float64(m))
+		k += m
+	}
+	if float64(len(c.rows)) > 0.7*float64(n) {
+		c = *root
+		c.sim = root.sim.Clone()
+		c.rest, c.drift = r.rest, r.drift
+	} else {
+		c.sim = ident.NewBlockSimulator(c.rows, r.input)
+	}
+	c.start, c.filter, c.yw, c.basis = nil, filter{}, nil, nil
+	c.shape, c.weight, c.sigma2 = r.shape, r.weight, r.sigma2
+	c.model(r.rest, r.drift)
+	return &c
+}
+
+// uniform returns the longest ladder length up to m of equally spaced rows
+// from k on.
+func (r *record) uniform(k, m int) int {
+	m = min(m, len(r.t)-k)
+	if m < 2 {
+		return max(m, 1)
+	}
+	h := r.t[k+1] - r.t[k]
+	for i := 2; i < m; i++ {
+		if math.Abs(r.t[k+i]-r.t[k]-float64(i)*h) > 1e-6*h {
+			m = i
+			break
+		}
+	}
+	if h > 1.5*r.step { // the first row ends a hole
+		return 1
+	}
+	return ladder(m)
+}
+
+// coarse averages a long log into about rows equal blocks, for the search.
+func (r *record) coarse(rows int) *record {
+	w := len(r.root.t) / rows
+	if w < 2 {
+		return r
+	}
+	return r.averaged(func(float64) int { return w })
+}
+
+// focus averages the log for a plant with the given dead time: full
+// resolution where the response to a change sets in, blocks that widen from
+// there on both sides.
+func (r *record) focus(dead, zone float64) *record {
+	if len(r.root.t) < reduceAbove {
+		return r
+	}
+	var onset []float64
+	for _, at := range r.input.At {
+		onset = append(onset, at+dead)
+	}
+	if r.rest == earlier {
+		onset = append([]float64{r.root.t[0] + dead}, onset...)
+	}
+	first := r.root.t[0]
+	span := r.span
+	return r.averaged(func(t float64) int {
+		k := sort.SearchFloat64s(onset, t)
+		w := span / 40
+		if k > 0 {
+			if d := t - onset[k-1]; d < zone {
+				return 1
+			} else {
+				w = math.Min(w, d/blockGrowth)
+			}
+		} else if r.rest == free {
+			w = math.Min(w, (t-first)/blockGrowth)
+		}
+		if k < len(onset) {
+			d := onset[k] - t - zone
+			if d <= 0 {
+				return 1
+			}
+			w = math.Min(w, d/4)
+			// A block must end before the zone begins.
+			w = math.Min(w, d)
+		}
+		return int(w/r.step) + 1
+	})
+}
+
+// noiseRows is the largest number of rows on which a noise shape is judged: of
+// a longer log, equal pieces spread over it. The shape is then known to about
+// a percent.
+const noiseRows = 24000
+
+// residual returns what the plant at p and the linear columns leave of the
+// full log, row by row.
+func (r *record) residual(e *engine, p *point, beta []float64, linear int) []float64 {
+	root := r.root
+	if r.full == nil {
+		r.full = root.sim.Clone()
+	}
+	lags, dead := e.lags(p.eta), p.eta[e.ng]
+	out := r.full.Response(nil, e.st, lags, dead)
+	for k := range out {
+		out[k] = root.y[k] - p.gain*out[k] - beta[0]
+	}
+	j := 1
+	if r.drift {
+		for k, t := range root.t {
+			out[k] -= beta[1] * t
+		}
+		j = 2
+	}
+	switch r.rest {
+	case earlier:
+		s := ident.NewSimulator(root.t, ident.Input{At: []float64{root.t[0]}, Value: []float64{1}}).Response(nil, e.st, lags, dead)
+		for k, v := range s {
+			out[k] -= beta[j] * v
+		}
+	case free:
+		cols := columns(max(e.st.Order(), 1), len(root.t))
+		r.full.FreeStates(cols, e.st, lags, dead)
+		for i := j; i < linear; i++ {
+			for k, v := range cols[i-j] {
+				out[k] -= beta[i] * v
+			}
+		}
+	}
+	return out
+}
+
+// pieces cuts rows and residuals down to noiseRows in equal pieces.
+func pieces(rows []ident.Row, left []float64) ([]ident.Row, []float64) {
+	n := len(rows)
+	if n <= noiseRows {
+		return rows, left
+	}
+	const count = 8
+	size := noiseRows / count
+	var rs []ident.Row
+	var ls []float64
+	for i := range count {
+		lo := i * (n - size) / (count - 1)
+		rs = append(rs, rows[lo:lo+size]...)
+		ls = append(ls, left[lo:lo+size]...)
+	}
+	return rs, ls
+}
