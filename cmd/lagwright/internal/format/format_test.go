@@ -39,6 +39,21 @@ func TestValue(t *testing.T) {
 	}
 }
 
+func TestInterval(t *testing.T) {
+	for _, c := range []struct {
+		v         float64
+		low, high *float64
+		want      string
+	}{
+		{12.4, at(12.12), at(12.74), "12.12 to 12.74"}, {3.2, at(2.6), nil, "at least 2.60"}, {3.2, nil, at(4.9), "at most 4.9"},
+		{3.2, nil, nil, "no bound"}, {3, at(3), at(3), "fixed"}, {4.2e-4, at(1.4e-4), at(7.0e-4), "1.4e-4 to 7.0e-4"},
+	} {
+		if got := Interval(c.v, c.low, c.high); got != c.want {
+			t.Errorf("Interval(%v) = %q, want %q", c.v, got, c.want)
+		}
+	}
+}
+
 func TestNumber(t *testing.T) {
 	for _, c := range []struct {
 		v      float64

@@ -34,7 +34,7 @@ func Value(v float64, low, high *float64, unit string) string {
 		d := decimals(half)
 		return join(fixed(v, d), unit) + " (" + fixed(*low, d) + " to " + fixed(*high, d) + ")"
 	}
-	if half < 1e-6 || math.Max(math.Abs(v), half) < 1e-3 || math.Abs(v) >= 1e6 {
+	if scientific(v, half) {
 		return join(Number(v, digitsFor(v, half))+" ± "+Number(half, 2), unit)
 	}
 	d := decimals(half)
@@ -54,8 +54,17 @@ func Interval(v float64, low, high *float64) string {
 	case *low == *high:
 		return "fixed"
 	}
-	d := decimals((*high - *low) / 2)
+	half := (*high - *low) / 2
+	if scientific(v, half) {
+		return Number(*low, digitsFor(*low, half)) + " to " + Number(*high, digitsFor(*high, half))
+	}
+	d := decimals(half)
 	return fixed(*low, d) + " to " + fixed(*high, d)
+}
+
+// scientific tells numbers that read better with an exponent.
+func scientific(v, half float64) bool {
+	return half < 1e-6 || math.Max(math.Abs(v), half) < 1e-3 || math.Abs(v) >= 1e6
 }
 
 // Amount writes a number without a bound: significant digits and unit.

@@ -3,6 +3,8 @@ package report
 import (
 	"fmt"
 	"strings"
+	"unicode"
+	"unicode/utf8"
 
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/fit"
@@ -80,8 +82,9 @@ func parameterName(name string) string {
 }
 
 func sentenceCase(s string) string {
-	if s == "" {
+	r, size := utf8.DecodeRuneInString(s)
+	if size == 0 || r == utf8.RuneError {
 		return s
 	}
-	return strings.ToUpper(s[:1]) + s[1:]
+	return string(unicode.ToUpper(r)) + s[size:]
 }

@@ -20,7 +20,7 @@ func ReplayFigure(r *validate.RunReplay, g *tune.Gains, q tune.Requirement) *Fig
 		band{name: "proposed, plausible plants", x: t.T, low: gaps(t.Low), high: gaps(t.High), ink: inkModel},
 		trace{name: "logged", x: t.T, y: gaps(t.Logged), ink: inkLogged, width: 1.2},
 		trace{name: "setpoint", x: t.T, y: gaps(t.Setpoint), ink: inkOther, dash: true, hold: true},
-		trace{name: "proposed, median", x: t.T, y: gaps(t.Median), ink: inkModel, width: 1.8},
+		trace{name: "proposed, median", x: t.T, y: gaps(t.Median), ink: inkModel, width: 1.4},
 	}
 	if q.TempMax != nil {
 		temp.marks = append(temp.marks, rule{label: "highest allowed", at: *q.TempMax, ink: inkLimit})
@@ -29,7 +29,7 @@ func ReplayFigure(r *validate.RunReplay, g *tune.Gains, q tune.Requirement) *Fig
 	input.marks = []mark{
 		band{x: t.T, low: gaps(t.LowIn), high: gaps(t.HighIn), ink: inkModel, hold: true},
 		trace{name: "logged", x: t.T, y: gaps(t.LoggedIn), ink: inkLogged, width: 1.2, hold: true},
-		trace{name: "proposed, median", x: t.T, y: gaps(t.MedianIn), ink: inkModel, width: 1.8, hold: true},
+		trace{name: "proposed, median", x: t.T, y: gaps(t.MedianIn), ink: inkModel, width: 1.4, hold: true},
 	}
 	for _, l := range []*float64{g.Limits.Min, g.Limits.Max} {
 		if l != nil && nearby(*l, t.LowIn, t.HighIn, t.LoggedIn) {

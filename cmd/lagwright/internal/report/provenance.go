@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
@@ -49,16 +50,23 @@ func sourceTable(b *Bundle) *table {
 
 func sources(b *Bundle) []source {
 	var out []source
-	fitted := map[string]bool{}
+	at := map[string]int{} // by hash
+	add := func(s source) {
+		if i, ok := at[s.sha]; ok && out[i].file == s.file {
+			out[i].use += ", " + s.use
+			return
+		}
+		at[s.sha] = len(out)
+		out = append(out, s)
+	}
 	if b.Card != nil {
 		for _, s := range b.Card.Source {
-			fitted[s.SHA256] = true
-			out = append(out, cardSource(s))
+			add(cardSource(s))
 		}
 	}
 	for _, r := range b.Runs {
-		if !fitted[r.Source.SHA256] {
-			out = append(out, runSource(r))
+		if s := runSource(r); b.Card == nil || !slices.ContainsFunc(b.Card.Source, func(c fit.CardSource) bool { return c.SHA256 == s.sha }) {
+			add(s)
 		}
 	}
 	if b.Replay != nil {
@@ -68,7 +76,7 @@ func sources(b *Bundle) []source {
 			if r.Start != nil {
 				start = *r.Start
 			}
-			out = append(out, source{runName(r), r.SHA256, "replay", format.Thousands(r.Rows), "-", start, "-"})
+			add(source{runName(r), r.SHA256, "replay", format.Thousands(r.Rows), "-", start, "-"})
 		}
 	}
 	return out
@@ -111,17 +119,27 @@ func versionTable(b *Bundle) *table {
 	}
 	add("Program", b.Tool)
 	if c := b.Card; c != nil {
-		add("Model card", c.Schema+", made by "+c.Tool)
+		add("Model card", schemaAndTool(c.Schema, c.Tool))
 		add("Model card dated", c.Created)
 		if n := len(c.Plants.Values); n > 0 {
-			add("Plausible plants", fmt.Sprintf("%s of %s, random seed %d", format.Thousands(n), c.Plants.Structure, c.Plants.Rand))
+			add("Plausible plants", fmt.Sprintf("%s, structure %s, random seed %d", format.Thousands(n), c.Plants.Structure, c.Plants.Rand))
 		}
 	}
 	if g := b.Gains; g != nil {
-		add("Gains", g.Schema+", made by "+g.Tool)
+		add("Gains", schemaAndTool(g.Schema, g.Tool))
 	}
 	if r := b.Replay; r != nil {
-		add("Replay", fmt.Sprintf("%s, made by %s, card %s", r.Schema, r.Tool, r.Card))
+		add("Replay", schemaAndTool(r.Schema, r.Tool)+", card "+r.Card)
+	}
+	if d := b.Drift; d != nil {
+		add("Drift", schemaAndTool(d.Schema, d.Tool))
 	}
 	return t
+}
+
+func schemaAndTool(schema, tool string) string {
+	if tool == "" {
+		return schema
+	}
+	return schema + ", made by " + tool
 }

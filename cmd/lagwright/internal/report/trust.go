@@ -129,9 +129,9 @@ func remarks(r *data.Run) []item {
 	}
 	for _, n := range q.Notes {
 		if n.Row > 0 {
-			add(true, "%s (line %d)", n.Text, n.Row)
+			add(true, "%s (line %d)", sentenceCase(n.Text), n.Row)
 		} else {
-			add(true, "%s", n.Text)
+			add(true, "%s", sentenceCase(n.Text))
 		}
 	}
 	return out

@@ -13,19 +13,23 @@ func watch(b *Bundle) *section {
 	var items []item
 	if b.Card != nil {
 		for _, w := range b.Card.Warnings {
-			items = append(items, item{"warn", fmt.Sprintf("%s (%s)", w.Text, w.Code)})
+			items = append(items, item{"warn", fmt.Sprintf("%s (%s)", sentenceCase(w.Text), w.Code)})
 		}
 	}
 	if b.Gains != nil {
 		for _, r := range b.Gains.Reasons {
-			items = append(items, item{"bad", r})
+			items = append(items, item{"bad", sentenceCase(r)})
 		}
 	}
 	if b.Replay != nil {
 		for i := range b.Replay.Runs {
 			run := &b.Replay.Runs[i]
+			sign := "bad"
+			if !run.Judged {
+				sign = "warn"
+			}
 			for _, r := range run.Reasons {
-				items = append(items, item{"bad", runName(run) + ": " + r})
+				items = append(items, item{sign, runName(run) + ": " + r})
 			}
 			for _, w := range run.Warnings {
 				items = append(items, item{"warn", runName(run) + ": " + w})
@@ -37,7 +41,7 @@ func watch(b *Bundle) *section {
 	}
 	if b.Drift != nil {
 		for _, w := range b.Drift.Warnings {
-			items = append(items, item{"warn", w})
+			items = append(items, item{"warn", sentenceCase(w)})
 		}
 		for _, f := range b.Drift.Failed {
 			items = append(items, item{"warn", fmt.Sprintf("%s could not be fitted: %s", format.Text(f.File), f.Reason)})
