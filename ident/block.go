@@ -139,6 +139,10 @@ func (c *chain) setBlock(b *block, one *matrix) {
 // block follows by doubling.
 const doublings = 24
 
+// afresh is the number of doublings after which a block is computed from
+// scratch: every doubling doubles the relative error, 1e-16 at first.
+const afresh = 10
+
 // A blockCache remembers the last few blocks, and those of 1, 2, 4, … samples
 // of one spacing, each made from the one before.
 type blockCache struct {
@@ -163,7 +167,7 @@ func (s *blockCache) doubled(c *chain, h float64, k int) *block {
 	for s.filled <= k {
 		b := &s.power[s.filled]
 		b.h, b.m = h, 1<<s.filled
-		if s.filled == 0 {
+		if s.filled%afresh == 0 {
 			c.setBlock(b, &s.one)
 		} else {
 			half := &s.power[s.filled-1]

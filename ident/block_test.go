@@ -2,6 +2,7 @@ package ident
 
 import (
 	"fmt"
+	"math"
 	"math/rand/v2"
 	"testing"
 )
@@ -70,5 +71,25 @@ func TestBlockMeans(t *testing.T) {
 		if d := greatestDifference(response, got[0]); !(d <= 1e-13*span(got[0])) {
 			t.Errorf("%s: response alone is off by %.2g", c.structure, d)
 		}
+	}
+}
+
+// TestLongBlocks compares the means over very long blocks, of powers of two and
+// other numbers of samples, with the mean of the closed form of a geometric
+// series.
+func TestLongBlocks(t *testing.T) {
+	const h, tau = 0.001, 9000.0
+	var rows []Row
+	sample := 1
+	for _, m := range []int{1 << 20, 1 << 9, 1 << 23, 1 << 14, 777_777, 1 << 23} {
+		rows = append(rows, Row{T: float64(sample) * h, H: h, M: m})
+		sample += m
+	}
+	s := NewBlockSimulator(rows, Input{At: []float64{0}, Value: []float64{1}})
+	for k, y := range s.Response(nil, structure(t, "fopdt"), []float64{tau}, 0) {
+		r := rows[k]
+		m := float64(r.M)
+		want := 1 - math.Exp(-r.T/tau)*math.Expm1(-m*h/tau)/math.Expm1(-h/tau)/m
+		near(t, fmt.Sprintf("block of %d", r.M), y, want, 1e-12)
 	}
 }
