@@ -79,7 +79,7 @@ func (tc *thermocouple) temperature(e float64) float64 {
 		if !(next > lo && next < hi) {
 			next = lo + (hi-lo)/2
 		}
-		if math.Abs(next-t) <= 1e-10*(1+math.Abs(t)) {
+		if math.Abs(next-t) <= 1e-12*(1+math.Abs(t)) {
 			return next
 		}
 		t = next

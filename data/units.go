@@ -69,7 +69,11 @@ func splitNameUnit(label string) (name, unit string) {
 		if i <= 0 {
 			continue
 		}
-		if u, known := canonicalUnit(label[i+len(sep):]); known && (sep != "." || len(u) > 1) {
+		u, known := canonicalUnit(label[i+len(sep):])
+		if sep == "/" && isFlowUnit(label[:i]) {
+			break
+		}
+		if known && (sep != "." || len(u) > 1) {
 			return strings.TrimSpace(label[:i]), u
 		}
 	}
@@ -79,6 +83,12 @@ func splitNameUnit(label string) (name, unit string) {
 		}
 	}
 	return label, ""
+}
+
+// isFlowUnit tells that a name ends like the first half of m3/h or kg/s.
+func isFlowUnit(name string) bool {
+	parts := strings.FieldsFunc(strings.ToLower(name), func(r rune) bool { return strings.ContainsRune(" _-([,", r) })
+	return len(parts) > 1 && slices.Contains([]string{"m", "m3", "m³", "nm3", "nm³", "kg", "g", "l", "ft", "ft3"}, parts[len(parts)-1])
 }
 
 // unitCell reads a cell of a unit row: "V", "[V]", "(degC)", "°F".
