@@ -17,7 +17,8 @@ type answer struct {
 	Enter      []setting
 	Verdict    *item
 	Sure       []string
-	Reasons    []string
+	Reasons    []string // what fails, and by how much
+	Cures      []string // what would let it hold
 }
 
 // setting is one field of a controller as someone types it in.
@@ -42,7 +43,7 @@ func gainsAnswer(b *Bundle) answer {
 	a := answer{
 		EnterTitle: fmt.Sprintf("%s controller, %s form", strings.ToUpper(g.Controller), g.Form),
 		Enter:      settings(g),
-		Reasons:    g.Reasons,
+		Reasons:    g.Reasons, Cures: g.Cures,
 	}
 	a.Headline, a.Verdict = gainsVerdict(g, b.Replay)
 	a.Sure = append(a.Sure, "Asked: "+requirementWords(g.Requirement, g.Units)+".", sharePhrase(g))
@@ -208,6 +209,9 @@ func settings(g *tune.Gains) []setting {
 	optional("Output low limit", g.Limits.Min, g.Units.Input)
 	optional("Output high limit", g.Limits.Max, g.Units.Input)
 	optional("Output rate limit", g.Limits.Rate, g.Units.Input+"/s")
+	if q := g.SquareRoot; q != nil {
+		s = append(s, setting{"Gain Kc with a square root between controller and drive", format.Amount(q.Kc, q.Unit, digits)})
+	}
 	return s
 }
 

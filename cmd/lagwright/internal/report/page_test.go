@@ -14,6 +14,7 @@ import (
 
 	"lagwright/data"
 	"lagwright/fit"
+	"lagwright/tune"
 	"lagwright/validate"
 )
 
@@ -96,7 +97,7 @@ func TestPageSections(t *testing.T) {
 		{"card", Bundle{Card: all.Card}, "heater watch cautions provenance"},
 		{"gains", Bundle{Gains: all.Gains}, "gains watch cautions provenance"},
 		{"replay", Bundle{Replay: all.Replay}, "replay watch cautions provenance"},
-		{"drift", Bundle{Drift: all.Drift}, "drift watch cautions"},
+		{"drift", Bundle{Drift: all.Drift}, "drift watch cautions provenance"},
 		{"nothing", Bundle{}, "cautions"},
 	} {
 		page := pageOf(t, c.bundle)
@@ -130,7 +131,7 @@ func TestAnswerFollowsVerdict(t *testing.T) {
 		{"meets, not all runs", func(b *Bundle) {}, "do not hold on every past run", "bad"},
 		{"meets, back-test fails", func(b *Bundle) { b.Replay.Runs[1].BackTest.Reproduced = false }, "not proven on past runs", "bad"},
 		{"nearest miss", func(b *Bundle) { b.Gains.Meets = false }, "No gains meet the requirement; these come nearest", "bad"},
-		{"a rule that fails", func(b *Bundle) { b.Gains.Meets, b.Gains.Rule = false, "SIMC" }, "These gains do not meet the requirement", "bad"},
+		{"a rule that fails", func(b *Bundle) { b.Gains.Meets, b.Gains.Rule = false, "simc" }, "These gains do not meet the requirement", "bad"},
 	} {
 		b := sampleBundle()
 		c.edit(&b)
@@ -206,7 +207,11 @@ func hostileBundle() Bundle {
 	g := b.Gains
 	g.Controller, g.Form, g.Rule, g.Action = hostile, hostile, hostile, hostile
 	g.Units.Input, g.Units.Temperature = hostile, hostile
-	g.Reasons, g.Cautions = []string{hostile}, []string{hostile}
+	g.Reasons, g.Cautions, g.Cures = []string{hostile}, []string{hostile}, []string{hostile}
+	g.Schedule = []tune.ScheduleEntry{{Card: hostile}}
+	g.Entry = []tune.Entry{{Name: hostile, Value: 1, Unit: hostile}}
+	b.Drift.Hints, b.Drift.Warnings = []string{hostile}, []string{hostile}
+	b.Drift.Runs[0].File, b.Drift.Parameters[0].Name, b.Drift.Parameters[0].Text = hostile, hostile, hostile
 	g.Candidates[0].Rule, g.Candidates[0].Note = hostile, hostile
 	b.Replay.Gains = *g
 	b.Replay.Card = hostile

@@ -141,9 +141,10 @@ func sampleGains() *tune.Gains {
 		Assurance: 0.95, Meets: true, ShareMeeting: 0.987,
 		Cautions: []string{"Start new gains with the output limited and a setpoint step of 2 K."},
 	}
+	g.OperatingInput, g.HoldsOver = ptr(3.75), &[2]float64{3.2, 4.4}
 	g.Candidates = []tune.Candidate{
-		{Rule: "synthesis", Kc: g.Kc, Ti: g.Ti, Worst: g.Worst, Share: 0.987, Meets: true, Selected: true},
-		{Rule: "SIMC", Kc: 0.161, Ti: ptr(41), Worst: metrics(1.55, 71.2, 3.1, 255), Share: 0.31, Note: "settles too late"},
+		{Rule: "synthesis", Controller: "pi", Kc: g.Kc, Ti: g.Ti, Worst: g.Worst, Share: 0.987, Meets: true, Selected: true},
+		{Rule: "simc", Controller: "pi", Kc: 0.161, Ti: ptr(41), Worst: metrics(1.55, 71.2, 3.1, 255), Share: 0.31, Note: "settles too late"},
 	}
 	return g
 }

@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/tune"
@@ -20,10 +21,50 @@ func whyGains(b *Bundle) *section {
 	for _, f := range loopFigures(b.Loop, g) {
 		s.Blocks = append(s.Blocks, block{Figure: picturesOf(f)})
 	}
+	if t := operatingWords(g); t != "" {
+		s.Blocks = append(s.Blocks, block{Text: t})
+	}
+	if len(g.Schedule) > 0 {
+		s.Blocks = append(s.Blocks, block{Table: scheduleTable(g)})
+	}
 	if len(g.Candidates) > 0 {
 		s.Blocks = append(s.Blocks, block{Table: candidateTable(g)})
 	}
 	return s
+}
+
+// operatingWords says about which input the figures were judged, and how far
+// from it they hold.
+func operatingWords(g *tune.Gains) string {
+	s := ""
+	if g.OperatingInput != nil {
+		s = fmt.Sprintf("The figures are judged about an input of %s.", format.Amount(*g.OperatingInput, g.Units.Input, 4))
+	}
+	if h := g.HoldsOver; h != nil {
+		s += fmt.Sprintf(" The requirement holds for inputs from %s to %s.", format.Short(h[0], 4), format.Amount(h[1], g.Units.Input, 4))
+	}
+	return strings.TrimSpace(s)
+}
+
+// scheduleTable lists a set of gains for each card.
+func scheduleTable(g *tune.Gains) *table {
+	t := &table{
+		Caption: "One set for each card (ideal form), and what the common set costs against it",
+		Head:    []string{"Card", "Input", "Kc", "Ti", "Td", "Filter", "Load IAE of the common set", "Meets"},
+	}
+	kc := g.Units.Input + "/" + kelvin(g.Units.Temperature)
+	for _, e := range g.Schedule {
+		cost := "-"
+		if e.Cost != nil {
+			cost = format.Short(*e.Cost, 3) + " times"
+		}
+		t.Rows = append(t.Rows, []cell{
+			head(e.Card), num(format.Short(e.Input[0], 4) + " to " + format.Amount(e.Input[1], g.Units.Input, 4)),
+			num(format.Amount(e.Kc, kc, 4)), num(format.Optional(e.Ti, "s", 4)), num(format.Optional(e.Td, "s", 4)),
+			num(format.Amount(e.Filter, "s", 3)), num(cost), yesNo(e.Meets),
+		})
+	}
+	return t
 }
 
 func loopFigures(l *Loop, g *tune.Gains) []*Figure {
@@ -120,7 +161,7 @@ func candidateTable(g *tune.Gains) *table {
 		if m == nil {
 			m = &tune.Metrics{}
 		}
-		name := c.Rule
+		name := strings.TrimSpace(c.Rule + " " + strings.ToUpper(c.Controller))
 		if c.Selected {
 			name += " (chosen)"
 		}
