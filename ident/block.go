@@ -243,16 +243,6 @@ func (s *Simulator) runMeans(o *outputs, lo, hi int) {
 	}
 }
 
-// setStep prepares the transition over the step of a uniform stretch.
-func (s *Simulator) setStep(r stretch) {
-	s.stepLength = r.step
-	if b := s.departed(r.lo, r.step); b != nil {
-		s.step = b.over
-		return
-	}
-	s.chain.transition(&s.step, r.step)
-}
-
 // departed returns the block of the row before row k when the step to row k is
 // just its length, else nil.
 func (s *Simulator) departed(k int, step float64) *block {

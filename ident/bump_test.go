@@ -72,6 +72,7 @@ func TestFindBumps(t *testing.T) {
 			base += 8 * (to[i] - from)
 			from = to[i]
 			near(t, c.name+" after", b.After, base, 0.05)
+			near(t, c.name+" rise over noise", b.RiseOverNoise()*b.Noise, math.Abs(b.Rise()), 1e-9)
 			near(t, c.name+" noise", b.Noise, 0.05, 0.0175) // 4 standard errors of 66 rows
 			if !b.SettledBefore || !b.SettledAfter {
 				t.Errorf("%s: bump %d is not taken as settled: %+v", c.name, i, b)

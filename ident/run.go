@@ -11,10 +11,29 @@ import "math"
 // runRows is how many rows are run before the state is looked at.
 const runRows = 256
 
+// longStretch is the number of rows from which a uniform stretch leaps from
+// piece to piece with a transition of its own. Row after row the rounding of one
+// transition, 1e-16 of it, would build up to 1e-11 in 1e5 rows when the lags are
+// as long as the stretch.
+const longStretch = 16 * runRows
+
 // settledState is the part of the greatest change of the input below which an
 // element counts as settled. It lies far below the precision of any sum it could
 // enter, and keeps the recursion away from denormal numbers, which are slow.
 const settledState = 1e-100
+
+// setStep prepares the transition over the step of a uniform stretch.
+func (s *Simulator) setStep(r stretch) {
+	s.stepLength = r.step
+	if s.long = r.hi-r.lo >= longStretch; s.long {
+		s.chain.transition(&s.leap, runRows*r.step)
+	}
+	if b := s.departed(r.lo, r.step); b != nil {
+		s.step = b.over
+		return
+	}
+	s.chain.transition(&s.step, r.step)
+}
 
 // run carries the state through the rows lo ≤ k < hi of a uniform stretch,
 // which no change precedes, and writes their outputs.
@@ -28,8 +47,12 @@ func (s *Simulator) run(o *outputs, lo, hi int) {
 			s.hold(o, lo, hi)
 			return
 		}
-		end := min(lo+runRows, hi)
+		end, x := min(lo+runRows, hi), s.x
 		s.runPiece(o, lo, end)
+		if end-lo == runRows && s.long {
+			s.x = x
+			s.chain.advance(&s.leap, &s.x)
+		}
 		lo = end
 	}
 }
@@ -259,7 +282,7 @@ func (s *Simulator) runEqual(y, dtheta, v []float64) {
 		dtheta[k] = q * (first - 2*second) * rate
 		v[k] = q * (startV + scale*(start+sum-first))
 	}
-	s.leap(len(y))
+	s.skip(len(y))
 }
 
 // runEqualResponse is runEqual without the sensitivities.
@@ -280,7 +303,7 @@ func (s *Simulator) runEqualResponse(y []float64) {
 		}
 		y[k] = s.level + q*sum
 	}
-	s.leap(len(y))
+	s.skip(len(y))
 }
 
 // equalPolynomial returns the coefficients of ∫A in powers of z.
@@ -293,8 +316,8 @@ func (s *Simulator) equalPolynomial() (a [maxElements + 1]float64) {
 	return a
 }
 
-// leap carries the state over rows of the uniform stretch in one go.
-func (s *Simulator) leap(rows int) {
+// skip carries the state over rows of the uniform stretch in one go.
+func (s *Simulator) skip(rows int) {
 	var over matrix
 	s.chain.transition(&over, float64(rows)*s.stepLength)
 	s.chain.advance(&over, &s.x)

@@ -30,6 +30,8 @@ type Simulator struct {
 
 	step       matrix // transition over stepLength, the step of the stretch
 	stepLength float64
+	long       bool   // the stretch leaps
+	leap       matrix // transition over runRows steps, when it does
 
 	steps  *stepCache // of ragged rows
 	kicks  kickCache
