@@ -14,7 +14,7 @@ import (
 //
 //	m + (x − m + h·(x' − x'')/√2)/√(1+h²)
 //
-// with m the mean and x', x'' two more, all of its structure: the kernel has the shape of the
+// with m the mean and x', x” two more, all of its structure: the kernel has the shape of the
 // sample itself and mean and covariance stay what they are; h is Silverman's
 // width. Gain and times are taken by their logarithms, times that are zero in
 // some row as they are, reflected at zero.

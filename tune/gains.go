@@ -29,8 +29,14 @@ type Gains struct {
 	Assurance    float64  `json:"assurance"`
 	Meets        bool     `json:"meets"`
 	ShareMeeting float64  `json:"share_meeting"`
-	Reasons      []string `json:"reasons"`
+	Reasons      []string `json:"reasons"`         // what fails and by how much
+	Cures        []string `json:"cures,omitempty"` // changes that would let it hold, sized
 	Cautions     []string `json:"cautions"`
+
+	OperatingInput *float64        `json:"operating_input,omitempty"`  // the figures are judged from here
+	HoldsOver      *[2]float64     `json:"holds_over_input,omitempty"` // power law: inputs over which the requirement holds
+	SquareRoot     *SquareRoot     `json:"square_root,omitempty"`      // power law: gain behind a square root
+	Schedule       []ScheduleEntry `json:"schedule,omitempty"`         // several cards: a set for each
 
 	Entry []Entry `json:"entry,omitempty"` // the numbers as entered at the controller
 
@@ -69,16 +75,40 @@ type Metrics struct {
 
 // Candidate is one row of the table of gains tried.
 type Candidate struct {
-	Rule     string   `json:"rule"`
-	Kc       float64  `json:"kc"`
-	Ti       *float64 `json:"ti_s"`
-	Td       *float64 `json:"td_s"`
-	Filter   float64  `json:"filter_s"`
-	Form     string   `json:"form"`
-	Nominal  *Metrics `json:"nominal"`
-	Worst    *Metrics `json:"worst"`
-	Share    float64  `json:"share_meeting"`
-	Meets    bool     `json:"meets"`
-	Selected bool     `json:"selected"`
-	Note     string   `json:"note"`
+	Rule       string   `json:"rule"`
+	Controller string   `json:"controller"`
+	Kc         float64  `json:"kc"`
+	Ti         *float64 `json:"ti_s"`
+	Td         *float64 `json:"td_s"`
+	Filter     float64  `json:"filter_s"`
+	Form       string   `json:"form"`
+	Nominal    *Metrics `json:"nominal"`
+	Worst      *Metrics `json:"worst"`
+	Share      float64  `json:"share_meeting"`
+	Meets      bool     `json:"meets"`
+	Selected   bool     `json:"selected"`
+	Note       string   `json:"note"`
+
+	InputNoise float64 `json:"input_noise"` // standard deviation at the output from the measurement's noise, input units
+}
+
+// SquareRoot is the gain to enter where the output of the controller goes
+// through a square root to the drive, so that the loop is linear: the integral
+// and derivative times stay.
+type SquareRoot struct {
+	Kc   float64 `json:"kc"`
+	Unit string  `json:"unit"`
+}
+
+// ScheduleEntry is the set of gains for one of several cards, in the ideal
+// form.
+type ScheduleEntry struct {
+	Card   string     `json:"card"`
+	Input  [2]float64 `json:"input"` // range of the card
+	Kc     float64    `json:"kc"`
+	Ti     *float64   `json:"ti_s"`
+	Td     *float64   `json:"td_s"`
+	Filter float64    `json:"filter_s"`
+	Meets  bool       `json:"meets"`
+	Cost   *float64   `json:"cost"` // load IAE of the common set as a multiple of this one's
 }

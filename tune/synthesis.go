@@ -30,6 +30,7 @@ type search struct {
 	kc        float64 // a gain to start from, > 0
 	ti        [2]float64
 	b         float64
+	thin      bool // only whether there is a solution matters
 }
 
 // filterShare is the measurement filter as a part of the derivative time
@@ -71,7 +72,7 @@ func (s *search) design(kind string) design {
 	case "p":
 		return s.proportional()
 	case "pi":
-		return s.integral(0)
+		return s.integral()
 	}
 	return s.derivative()
 }
@@ -86,9 +87,8 @@ const loopCeiling = 50
 
 // largest returns the largest gain, to 0.2 %, with which holds is true, going
 // down from guess (or up, while it holds); ok is false when there is none
-// down to floor.
-func largest(guess, floor, ceiling float64, holds func(float64) bool) (kc float64, ok bool) {
-	const ratio = 1.25
+// down to floor. It tries gains apart by ratio and then divides.
+func largest(guess, floor, ceiling, ratio float64, holds func(float64) bool) (kc float64, ok bool) {
 	hi := min(guess*ratio, ceiling)
 	for holds(hi) {
 		if hi >= ceiling {
@@ -120,26 +120,60 @@ func largest(guess, floor, ceiling float64, holds func(float64) bool) (kc float6
 // proportional: the largest gain leaves the smallest offset.
 func (s *search) proportional() design {
 	try := func(kc float64) law { return s.law(kc, math.Inf(1), 0) }
-	kc, ok := largest(s.kc, s.kc*1e-3, s.kc*loopCeiling, func(kc float64) bool {
-		return !cancelled(s.ctx) && s.on.holds(try(kc), s.assurance)
-	})
-	if ok {
-		return design{law: try(kc), found: true, iae: math.Inf(1)}
+	largestFrom := func(guess float64) (float64, bool) {
+		return largest(guess, s.kc*1e-3, s.kc*loopCeiling, s.fine(), func(kc float64) bool {
+			return !cancelled(s.ctx) && s.on.holds(try(kc), s.assurance)
+		})
 	}
-	return s.nearest("p")
+	kc, ok := largestFrom(s.kc)
+	if !ok {
+		d := s.nearest("p")
+		if !d.found {
+			return d
+		}
+		if kc, ok = largestFrom(math.Abs(d.law.kc)); !ok {
+			return d
+		}
+	}
+	return design{law: try(kc), found: true, iae: math.Inf(1)}
 }
 
-// integral: golden sections over log Ti after a coarse scan; td is a fixed
-// part of Ti (0 for PI).
-func (s *search) integral(part float64) design {
-	d := s.overTimes(s.on, part, 13, 9)
-	if d.found {
+// integral: golden sections over log Ti after a coarse scan. A settling time
+// leaves only a narrow patch of gains, which the scan can miss: then the
+// nearest miss is looked for, and if it misses nothing the search goes on
+// around it.
+func (s *search) integral() design {
+	scan, refine := 13, 9
+	if s.thin {
+		scan, refine = 9, 0
+	}
+	if d := s.overTimes(s.on, 0, scan, refine); d.found {
 		return d
 	}
-	if part > 0 {
+	d := s.nearest("pi")
+	if !d.found || s.thin {
 		return d
 	}
-	return s.nearest("pi")
+	return s.around(d, 0)
+}
+
+// around searches on from a design that holds.
+func (s *search) around(d design, part float64) design {
+	near := *s
+	near.kc = math.Abs(d.law.kc)
+	near.ti = [2]float64{d.law.ti / 1.8, d.law.ti * 1.8}
+	if better := near.overTimes(s.on, part, 9, 8); better.found && better.iae < d.iae {
+		return better
+	}
+	return d
+}
+
+// fine is the ratio of neighbouring gains tried.
+func (s *search) fine() float64 {
+	if math.IsInf(s.on.scenarios[0].task.settling, 1) {
+		return 1.25
+	}
+	return 1.1
 }
 
 // overTimes searches Ti: scan points on a logarithmic grid, then refine golden
@@ -196,7 +230,7 @@ func (s *search) overTimes(on *ensemble, part float64, scan, refine int) design 
 // atTimes finds the gain for given times.
 func (s *search) atTimes(on *ensemble, ti, part, guess float64) design {
 	try := func(kc float64) law { return s.law(kc, ti, part*ti) }
-	kc, ok := largest(guess, s.kc*1e-3, s.kc*loopCeiling, func(kc float64) bool {
+	kc, ok := largest(guess, s.kc*1e-3, s.kc*loopCeiling, s.fine(), func(kc float64) bool {
 		return !cancelled(s.ctx) && on.holds(try(kc), s.assurance)
 	})
 	if !ok {
@@ -217,15 +251,19 @@ func (s *search) derivative() design {
 			s.kc = math.Abs(d.law.kc)
 		}
 	}
-	if at == 0 {
-		return s.nearest("pid")
+	if at > 0 {
+		if s.thin {
+			return design{found: true}
+		}
+		if d := s.overTimes(s.on, at, 13, 8); d.found {
+			return d
+		}
 	}
-	narrow := *s
-	d := narrow.overTimes(s.on, at, 13, 8)
-	if !d.found {
-		return s.nearest("pid")
+	d := s.nearest("pid")
+	if !d.found || s.thin {
+		return d
 	}
-	return d
+	return s.around(d, d.law.td/d.law.ti)
 }
 
 // nearest looks for the gains that miss the requirement least: the coarse
@@ -256,8 +294,8 @@ func (s *search) nearest(kind string) design {
 	if kind != "p" {
 		times = times[:0]
 		lo, hi := math.Log(s.ti[0]), math.Log(s.ti[1])
-		for i := range 8 {
-			times = append(times, lo+(hi-lo)*float64(i)/7)
+		for i := range 12 {
+			times = append(times, lo+(hi-lo)*float64(i)/11)
 		}
 	}
 	for _, logTi := range times {

@@ -1,0 +1,115 @@
+package tune
+
+import (
+	"math"
+
+	"lagwright/ident"
+)
+
+// Evaluate returns the metrics of the gains on a plant for a requirement,
+// judged about an operating input and temperature (see Requirement): the
+// figures of Analyse, a setpoint step and a unit load step. An unstable loop
+// has nothing but Stable false.
+func Evaluate(p ident.Plant, g *Gains, q Requirement, input, temperature float64) (*Metrics, error) {
+	c, err := g.law()
+	if err != nil {
+		return nil, err
+	}
+	q.Scan = g.Scan
+	t := newTask(q, input, temperature)
+	return t.metrics(newScenario(p, &t, 0), c, input), nil
+}
+
+// metrics evaluates one scenario with the full sweep.
+func (t *task) metrics(s *scenario, c law, input float64) *Metrics {
+	l := newOpenLoop(s.p, c, s.scan)
+	f := l.figures()
+	if !f.Stable {
+		return &Metrics{}
+	}
+	m := &Metrics{Stable: true, Ms: finite(f.Ms), GainMargin: finite(f.GainMargin), PhaseMargin: finite(f.PhaseMargin), DelayMargin: finite(f.DelayMargin)}
+	if poles := l.poles(); poles != nil {
+		m.Damping = finite(dominantDamping(poles, f.PhaseCross))
+	}
+	q := quickFigures{stable: true, crossover: f.Crossover}
+	step, err := t.setpoint(s, c, &l, q, reportStep)
+	if err != nil {
+		return m
+	}
+	m.setpoint(step, input, s.p.Gain*t.step > 0)
+	if load, err := t.load(s, c, q, reportStep); err == nil && c.integral() {
+		m.IAE = finite(load.iae)
+	}
+	return m
+}
+
+func (m *Metrics) setpoint(f stepFigures, input float64, upward bool) {
+	m.Settling, m.Overshoot = finite(f.settling), finite(100*f.overshoot)
+	peak := f.inputLow
+	if upward {
+		peak = f.inputHigh
+	}
+	m.PeakInput, m.SteadyOffset = finite(input+peak), finite(f.offset)
+}
+
+// finite is a pointer to x, nil where x is not a number to be written down.
+func finite(x float64) *float64 {
+	if !isFinite(x) {
+		return nil
+	}
+	return &x
+}
+
+// worst gathers the share quantile of every figure over the scenarios, each
+// figure for itself: the high side of what should be small, the low side of
+// what should be large.
+func (e *ensemble) worst(c law, out []outcome, share float64, input float64) *Metrics {
+	n := len(out)
+	column := func(f func(i int) float64) []float64 {
+		v := make([]float64, n)
+		for i := range v {
+			v[i] = math.NaN()
+			if out[i].stable {
+				v[i] = f(i)
+			}
+		}
+		return v
+	}
+	high := func(f func(i int) float64) *float64 { return finite(quantile(column(f), share)) }
+	low := func(f func(i int) float64) *float64 {
+		if q := high(func(i int) float64 { return -f(i) }); q != nil {
+			return finite(-*q)
+		}
+		return nil
+	}
+	stable := 0
+	iae := make([]float64, n)
+	e.each(func(i int, s *scenario) {
+		iae[i] = math.NaN()
+		if out[i].stable && c.integral() {
+			if f, err := s.task.load(s, c, out[i].quick, searchStep); err == nil {
+				iae[i] = f.iae
+			}
+		}
+	})
+	for _, o := range out {
+		if o.stable {
+			stable++
+		}
+	}
+	m := &Metrics{Stable: stable >= needed(n, share)}
+	m.Ms = high(func(i int) float64 { return out[i].quick.ms })
+	m.GainMargin = low(func(i int) float64 { return out[i].quick.gainMargin })
+	m.PhaseMargin = low(func(i int) float64 { return out[i].quick.phaseMargin })
+	m.DelayMargin = low(func(i int) float64 { return out[i].quick.delayMargin })
+	m.Settling = high(func(i int) float64 { return out[i].step.settling })
+	m.Overshoot = high(func(i int) float64 { return 100 * out[i].step.overshoot })
+	m.SteadyOffset = high(func(i int) float64 { return math.Abs(out[i].step.offset) })
+	m.IAE = high(func(i int) float64 { return iae[i] })
+	if s := e.scenarios[0]; s.p.Gain*s.task.step > 0 {
+		m.PeakInput = high(func(i int) float64 { return input + out[i].step.inputHigh })
+	} else {
+		m.PeakInput = low(func(i int) float64 { return input + out[i].step.inputLow })
+	}
+	return m
+}

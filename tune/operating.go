@@ -1,0 +1,92 @@
+package tune
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"lagwright/fit"
+	"lagwright/ident"
+)
+
+// ErrUnusable is wrapped by every error that says a card cannot be tuned on.
+var ErrUnusable = errors.New("card cannot be used")
+
+// operation is a card at its operating point: plants with the gain that holds
+// there, and the point itself.
+type operation struct {
+	card        *fit.Card
+	nominal     ident.Plant
+	plants      []ident.Plant // plausible plants
+	input       float64       // operating input, input units
+	temperature float64       // about the temperature there
+	slope       float64       // dphi/du at the operating input
+}
+
+// operate reads a card. Without an operating input it is the middle of the
+// inputs the card was measured over; under the power law it is their upper end,
+// where the gain is highest.
+func operate(c *fit.Card, input *float64) (operation, error) {
+	o := operation{card: c, slope: 1}
+	nominal, err := c.Plant()
+	if err != nil {
+		return o, fmt.Errorf("%w: %w", ErrUnusable, err)
+	}
+	plants, err := c.PlausiblePlants()
+	if err != nil {
+		return o, fmt.Errorf("%w: %w", ErrUnusable, err)
+	}
+	if len(plants) == 0 {
+		plants = []ident.Plant{nominal}
+	}
+	in, temp := c.Range.Input, c.Range.Temperature
+	o.input = (in[0] + in[1]) / 2
+	if c.Law() == ident.Power {
+		o.input = math.Max(math.Abs(in[0]), math.Abs(in[1]))
+	}
+	if input != nil {
+		o.input = *input
+	}
+	o.slope = c.Law().Slope(o.input)
+	if o.slope == 0 || !isFinite(o.slope) {
+		return o, fmt.Errorf("%w: at an input of %g the power law has no gain: give --operating-input", ErrUnusable, o.input)
+	}
+	o.temperature = temperatureAt(c, nominal, o.input, in, temp)
+	o.nominal = scaledGain(nominal, o.slope)
+	for _, p := range plants {
+		o.plants = append(o.plants, scaledGain(p, o.slope))
+	}
+	return o, nil
+}
+
+// temperatureAt is the temperature that goes with an input, by the recorded
+// ranges and the plant's gain through their middle.
+func temperatureAt(c *fit.Card, p ident.Plant, input float64, in, temp [2]float64) float64 {
+	middle := (temp[0] + temp[1]) / 2
+	if p.Structure.Integrating() {
+		return middle
+	}
+	phi := c.Law().Apply
+	return middle + p.Gain*(phi(input)-(phi(in[0])+phi(in[1]))/2)
+}
+
+func scaledGain(p ident.Plant, by float64) ident.Plant {
+	p.Gain *= by
+	return p
+}
+
+// sameAction refuses cards whose gains have different signs: no controller
+// serves both.
+func sameAction(ops []operation) error {
+	for _, o := range ops {
+		for _, p := range append([]ident.Plant{o.nominal}, o.plants...) {
+			if (p.Gain > 0) != (ops[0].nominal.Gain > 0) {
+				return fmt.Errorf("%w: the gain's sign is not certain (%.3g and %.3g are both plausible): a better test is needed", ErrUnusable, ops[0].nominal.Gain, p.Gain)
+			}
+		}
+		if o.card.Units != ops[0].card.Units {
+			return fmt.Errorf("%w: cards in different units (%v and %v)", ErrUnusable, ops[0].card.Units, o.card.Units)
+		}
+	}
+	return nil
+}

@@ -1,0 +1,201 @@
+package tune
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"slices"
+)
+
+// reasons says what fails, and by how much, at the share quantile of every
+// figure that is asked for.
+func (e *ensemble) reasons(q Requirement, out []outcome, m *Metrics, share float64) []string {
+	var r []string
+	say := func(format string, args ...any) { r = append(r, fmt.Sprintf(format, args...)) }
+	percent := 100 * share
+	if !m.Stable {
+		say("the loop is not stable on %.0f %% of the plausible plants", percent)
+	}
+	over := func(name, unit string, value, limit *float64) {
+		switch {
+		case limit == nil:
+		case value == nil:
+			say("%s: not reached on %.0f %% of the plausible plants; asked is %.4g%s", name, percent, *limit, unit)
+		case *value > *limit*(1+hair):
+			say("%s: %.4g%s on the plant at %.0f %%; asked is %.4g%s", name, *value, unit, percent, *limit, unit)
+		}
+	}
+	over("Ms", "", m.Ms, q.Ms)
+	over("settling time", " s", m.Settling, q.Settling)
+	over("overshoot", " %", m.Overshoot, q.Overshoot)
+	damped := 0
+	for _, o := range out {
+		if o.dampingHeld {
+			damped++
+		}
+	}
+	if q.Damping != nil && damped < needed(len(out), share) {
+		say("damping ratio %.3g: held on %.0f %% of the plausible plants only", *q.Damping, 100*float64(damped)/float64(len(out)))
+	}
+	if e.missedCount(out, "temperature") > len(out)-needed(len(out), share) {
+		say("temperature ceiling of %.4g: passed on %d of %d plausible plants", *q.TempMax, e.missedCount(out, "temperature"), len(out))
+	}
+	if len(r) == 0 {
+		say("every figure holds at its own %.0f %% plant, but not all of them together: %.0f %% of the plausible plants meet the whole requirement", percent, 100*e.share(out))
+	}
+	if binding := e.binding(out); binding != "" {
+		say("the limit that binds is %s", binding)
+	}
+	return r
+}
+
+func (e *ensemble) missedCount(out []outcome, name string) int {
+	n := 0
+	for _, o := range out {
+		if !o.met() && o.missed == name {
+			n++
+		}
+	}
+	return n
+}
+
+// binding is what is missed most on most of the plants that fail.
+func (e *ensemble) binding(out []outcome) string {
+	names := []string{"stability", "ms", "damping", "overshoot", "settling", "temperature"}
+	best, count := "", 0
+	for _, n := range names {
+		if k := e.missedCount(out, n); k > count {
+			best, count = n, k
+		}
+	}
+	return map[string]string{"ms": "Ms", "settling": "settling time", "damping": "the damping ratio", "overshoot": "the overshoot",
+		"temperature": "the temperature ceiling", "stability": "stability"}[best]
+}
+
+// cures sizes the changes, one at a time, that would let a controller of this
+// kind meet the requirement.
+func (t *tuning) cures(ctx context.Context, kind string, assurance float64) []string {
+	var out []string
+	say := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
+	if d := t.solve(ctx, kind, change{nominalOnly: true}, assurance); d.found {
+		say("a better test would do: on the best-fit plant alone a %s controller meets the requirement, it is the spread of the plausible plants that fails", kind)
+	}
+	if f, ok := t.leastChange(ctx, kind, assurance, func(f float64) change { return change{relax: f} }); ok {
+		say("relaxing every limit asked (settling, overshoot, Ms − 1, damping) by %.0f %% would do", 100*(f-1))
+	}
+	if f, ok := t.leastChange(ctx, kind, assurance, func(f float64) change { return change{deadTime: 1 / f} }); ok {
+		say("cutting the dead time to %.0f %% (sensor nearer the heater, faster scan) would do", 100/f)
+	}
+	if q := t.requirement; q.InputMax != nil && t.ops[0].input < *q.InputMax {
+		if f, ok := t.leastChange(ctx, kind, assurance, func(f float64) change { return change{supply: f} }); ok {
+			say("more supply would do: an input up to %.4g in place of %.4g", t.ops[0].input+f*(*q.InputMax-t.ops[0].input), *q.InputMax)
+		}
+	}
+	return out
+}
+
+// leastChange finds, to a few percent, the smallest factor above 1 (up to 8)
+// with which a change makes the requirement feasible.
+func (t *tuning) leastChange(ctx context.Context, kind string, assurance float64, of func(float64) change) (float64, bool) {
+	feasible := func(f float64) bool {
+		return !cancelled(ctx) && t.solve(ctx, kind, of(f), assurance).found
+	}
+	lo, hi := 1.0, 0.0
+	for _, f := range []float64{1.3, 2, 4, 8} {
+		if feasible(f) {
+			hi = f
+			break
+		}
+		lo = f
+	}
+	if hi == 0 {
+		return 0, false
+	}
+	for hi/lo > 1.04 {
+		if mid := math.Sqrt(lo * hi); feasible(mid) {
+			hi = mid
+		} else {
+			lo = mid
+		}
+	}
+	return hi, true
+}
+
+// change is a hypothetical change of plant or requirement; zero fields change
+// nothing.
+type change struct {
+	nominalOnly bool
+	relax       float64
+	deadTime    float64
+	supply      float64
+}
+
+// solve repeats the synthesis, thinly, with a change.
+func (t *tuning) solve(ctx context.Context, kind string, ch change, assurance float64) design {
+	q := ch.apply(t.requirement)
+	var list []*scenario
+	for card, o := range t.ops {
+		limited := q
+		if ch.supply > 0 {
+			limited.InputMax = finite(o.input + ch.supply*(*q.InputMax-o.input))
+		}
+		task := newTask(limited, o.input, o.temperature)
+		plants := o.plants
+		if ch.nominalOnly {
+			plants = plants[:0:0]
+			plants = append(plants, o.nominal)
+		}
+		for i := 0; i < len(plants); i += max(1, len(plants)/40) {
+			p := plants[i]
+			if ch.deadTime > 0 {
+				p.DeadTime *= ch.deadTime
+			}
+			list = append(list, newScenario(p, &task, card))
+		}
+	}
+	s := newSearch(ctx, newEnsemble(list, t.workers), t.ops[0].nominal, assurance)
+	s.thin = true
+	return s.design(kind)
+}
+
+func (ch change) apply(q Requirement) Requirement {
+	if ch.relax == 0 {
+		return q
+	}
+	scale := func(v *float64, f func(float64) float64) *float64 {
+		if v == nil {
+			return nil
+		}
+		return finite(f(*v))
+	}
+	q.Settling = scale(q.Settling, func(v float64) float64 { return v * ch.relax })
+	q.Overshoot = scale(q.Overshoot, func(v float64) float64 { return max(v, 1) * ch.relax })
+	q.Ms = scale(q.Ms, func(v float64) float64 { return 1 + (v-1)*ch.relax })
+	q.Damping = scale(q.Damping, func(v float64) float64 { return v / ch.relax })
+	return q
+}
+
+// cautions go with every set of gains.
+func (t *tuning) cautions(g *Gains) []string {
+	o := t.ops[0]
+	c := []string{
+		"keep an independent over-temperature cut-out and an airflow interlock in service while tuning and after",
+		"the outlet sensor does not see the element's sheath, which runs hotter, the more so at low flow",
+		"start with the output limited and a small setpoint step, stay with it and be ready to switch to manual",
+	}
+	in, temp := o.card.Range.Input, o.card.Range.Temperature
+	c = append(c, fmt.Sprintf("the model holds near where it was measured: input %.4g to %.4g %s, temperature %.4g to %.4g %s", in[0], in[1], o.card.Units.Input, temp[0], temp[1], o.card.Units.Temperature))
+	if s := g.Requirement.SetpointStep; s != nil && g.Worst != nil && g.Worst.Overshoot != nil {
+		top := o.temperature + *s*(1+*g.Worst.Overshoot/100)
+		c = append(c, fmt.Sprintf("a setpoint step of %.4g from about %.4g may reach %.4g %s", *s, o.temperature, top, o.card.Units.Temperature))
+	}
+	if len(o.plants) < 20 {
+		c = append(c, fmt.Sprintf("the card holds %d plausible plants: the spread of the figures is not known", len(o.plants)))
+	}
+	for _, w := range o.card.Warnings {
+		if slices.Contains([]string{"short-record", "no-plateau"}, w.Code) {
+			c = append(c, "from the card: "+w.Text)
+		}
+	}
+	return append(c, "local codes, the makers' instructions and licensed practice come first")
+}

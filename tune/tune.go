@@ -1,0 +1,479 @@
+package tune
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"runtime"
+	"slices"
+
+	"lagwright/data"
+	"lagwright/fit"
+	"lagwright/ident"
+)
+
+// Options steers [Tune]. The zero value compares P, PI and PID.
+type Options struct {
+	Controller string   // "p", "pi" or "pid"; "" compares them
+	Rule       string   // a published rule (see Rules) in place of the synthesis
+	TauC       float64  // closed-loop time constant for the rule, s; 0 means its usual choice
+	Assurance  float64  // share of the plausible plants on which the requirement must hold; 0 means 0.95
+	Rand       int64    // seed of the fresh plants
+	Workers    int      // 0 means one per core; no effect on the result
+	Operating  *float64 // operating input; nil: see operate in operating.go
+	Tool       string   // written into the gains
+
+	InputSpan, TempSpan *data.Span // where both are given, the entries are in percent of span
+	Band, Rate, Minutes bool       // spelling of the entries, see Spelling
+
+	// ScheduleFactor is the load IAE that one set for several cards may cost
+	// against a set of each card's own before a schedule is proposed; 0 means 1.5.
+	ScheduleFactor float64
+}
+
+// The figures a result is judged by.
+const (
+	freshCount   = 400 // fresh plausible plants a card
+	rulesJudged  = 100 // of them for the rows of the table
+	usualMs      = 1.6 // when nothing is required
+	usualShare   = 0.95
+	derivativeBy = 0.7  // PID is preferred where it brings the load IAE below this part of PI's …
+	noiseAllowed = 0.02 // … and sends less noise to the drive than this part of the input's range
+)
+
+// tuning is one call of Tune under way.
+type tuning struct {
+	requirement Requirement
+	options     Options
+	ops         []operation
+	workers     int
+	chosenOn    *ensemble // the plausible plants
+	fresh       *ensemble // plants the gains are not chosen on
+}
+
+// Tune finds gains for one or several cards (several: one set safe for all).
+// A result whose Meets is false is the nearest there is, with the reasons;
+// an error wraps [ErrUnusable] or says what in the options is wrong. The
+// same input and seed give the same result with any number of workers.
+func Tune(ctx context.Context, cards []*fit.Card, q Requirement, o Options) (*Gains, error) {
+	t, err := newTuning(cards, q, o)
+	if err != nil {
+		return nil, err
+	}
+	var rows []row
+	if o.Rule != "" {
+		rows, err = t.ruleRows(o.Rule, o.Controller)
+	} else {
+		rows, err = t.designRows(ctx)
+	}
+	if err != nil {
+		return nil, err
+	}
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	best := t.choose(rows)
+	g, err := t.gains(ctx, rows[best])
+	if err != nil {
+		return nil, err
+	}
+	if o.Rule == "" {
+		for _, r := range Rules() {
+			more, err := t.ruleRows(r.Name, "")
+			if err == nil {
+				rows = append(rows, more...)
+			}
+		}
+	}
+	for i := range rows {
+		g.Candidates = append(g.Candidates, t.candidate(rows[i], i == best))
+	}
+	if o.Rule == "" && len(cards) > 1 {
+		t.schedule(ctx, g)
+	}
+	t.powerLaw(g)
+	return g, ctx.Err()
+}
+
+func newTuning(cards []*fit.Card, q Requirement, o Options) (*tuning, error) {
+	if len(cards) == 0 {
+		return nil, fmt.Errorf("%w: no card given", ErrUnusable)
+	}
+	if o.Controller != "" && !slices.Contains(all, o.Controller) {
+		return nil, fmt.Errorf("controller %q: use p, pi or pid", o.Controller)
+	}
+	if o.Assurance == 0 {
+		o.Assurance = usualShare
+	}
+	if !(o.Assurance > 0 && o.Assurance <= 1) {
+		return nil, fmt.Errorf("assurance %g: give a share above 0 and up to 1", o.Assurance)
+	}
+	if o.Workers <= 0 {
+		o.Workers = runtime.GOMAXPROCS(0)
+	}
+	t := &tuning{options: o, workers: o.Workers}
+	for _, c := range cards {
+		op, err := operate(c, o.Operating)
+		if err != nil {
+			return nil, err
+		}
+		t.ops = append(t.ops, op)
+	}
+	if err := sameAction(t.ops); err != nil {
+		return nil, err
+	}
+	var err error
+	if t.requirement, err = complete(q, t.ops[0]); err != nil {
+		return nil, err
+	}
+	rng := rand.New(rand.NewPCG(uint64(o.Rand), 0x6c616777))
+	var chosenOn, fresh []*scenario
+	for card, op := range t.ops {
+		task := newTask(t.requirement, op.input, op.temperature)
+		for _, p := range op.plants {
+			chosenOn = append(chosenOn, newScenario(p, &task, card))
+		}
+		for _, p := range freshPlants(op.plants, freshCount, rng) {
+			fresh = append(fresh, newScenario(p, &task, card))
+		}
+	}
+	t.chosenOn, t.fresh = newEnsemble(chosenOn, t.workers), newEnsemble(fresh, t.workers)
+	return t, nil
+}
+
+// complete checks a requirement and fills in what it leaves open.
+func complete(q Requirement, o operation) (Requirement, error) {
+	positive := func(name string, v *float64, zero bool) error {
+		if v != nil && (!isFinite(*v) || *v < 0 || *v == 0 && !zero) {
+			return fmt.Errorf("%s is %g: give a positive number", name, *v)
+		}
+		return nil
+	}
+	for _, err := range []error{
+		positive("settling time", q.Settling, false), positive("overshoot", q.Overshoot, true),
+		positive("damping ratio", q.Damping, false), positive("input rate", q.InputRate, false),
+	} {
+		if err != nil {
+			return q, err
+		}
+	}
+	switch {
+	case q.Ms != nil && !(*q.Ms > 1):
+		return q, fmt.Errorf("ms is %g: the sensitivity peak is never below 1", *q.Ms)
+	case q.Damping != nil && *q.Damping >= 1:
+		return q, fmt.Errorf("damping ratio is %g: give one below 1", *q.Damping)
+	case !(q.Band >= 0 && q.Band < 1):
+		return q, fmt.Errorf("band is %g: give a fraction below 1", q.Band)
+	case !(q.Scan >= 0) || math.IsInf(q.Scan, 1):
+		return q, fmt.Errorf("scan time is %g s: give 0 or more", q.Scan)
+	case q.InputMin != nil && q.InputMax != nil && !(*q.InputMin < *q.InputMax):
+		return q, fmt.Errorf("input limits %g and %g: the first must be the smaller", *q.InputMin, *q.InputMax)
+	case q.InputMax != nil && o.input > *q.InputMax || q.InputMin != nil && o.input < *q.InputMin:
+		return q, fmt.Errorf("the operating input %.4g lies outside the input limits: give --operating-input", o.input)
+	case q.SetpointStep != nil && (*q.SetpointStep == 0 || !isFinite(*q.SetpointStep)):
+		return q, fmt.Errorf("setpoint step is %g: give a step other than 0", *q.SetpointStep)
+	}
+	if q.Band == 0 {
+		q.Band = 0.02
+	}
+	if q.Settling == nil && q.Overshoot == nil && q.Damping == nil && q.Ms == nil {
+		q.Ms = finite(usualMs)
+	}
+	if q.SetpointStep == nil {
+		step := (o.card.Range.Temperature[1] - o.card.Range.Temperature[0]) / 4
+		if !(step > 0) || !isFinite(step) {
+			step = 10
+		}
+		q.SetpointStep = &step
+	}
+	return q, nil
+}
+
+// A row is one set of gains of the table.
+type row struct {
+	rule, kind string
+	law        law
+	form       string // in which the rule publishes it
+	note       string
+	nominal    *Metrics
+	worst      *Metrics
+	out        []outcome // on the fresh plants (or part of them)
+	on         *ensemble // those plants
+	share      float64
+	designed   design
+}
+
+// designRows synthesises the controllers asked for.
+func (t *tuning) designRows(ctx context.Context) ([]row, error) {
+	kinds := all
+	if t.options.Controller != "" {
+		kinds = []string{t.options.Controller}
+	}
+	var rows []row
+	for _, kind := range kinds {
+		s := newSearch(ctx, t.chosenOn, t.ops[0].nominal, t.options.Assurance)
+		d := s.design(kind)
+		if err := ctx.Err(); err != nil {
+			return nil, err
+		}
+		r := t.judged(row{rule: "synthesis", kind: kind, law: d.law, form: Ideal, designed: d}, t.fresh)
+		if !d.found {
+			r.note = "nearest miss"
+		}
+		rows = append(rows, r)
+	}
+	return rows, nil
+}
+
+// ruleRows applies a published rule to the best fit of the first card; kind
+// "" takes all its controllers.
+func (t *tuning) ruleRows(name, kind string) ([]row, error) {
+	kinds := noP
+	if kind != "" {
+		kinds = []string{kind}
+	}
+	var rows []row
+	var first error
+	for _, k := range kinds {
+		g, note, err := ApplyRule(name, k, t.ops[0].nominal, RuleOptions{TauC: t.options.TauC})
+		if err != nil {
+			if first == nil {
+				first = err
+			}
+			continue
+		}
+		c, err := g.law()
+		if err != nil {
+			continue
+		}
+		c.tf = filterShare * c.td
+		on := t.fresh
+		if t.options.Rule == "" {
+			on = t.fresh.thinned(rulesJudged)
+		}
+		rows = append(rows, t.judged(row{rule: name, kind: k, law: c, form: g.Form, note: note, designed: design{law: c, found: true}}, on))
+		if t.options.Rule != "" {
+			break // the first controller the rule has
+		}
+	}
+	if len(rows) == 0 {
+		return nil, first
+	}
+	return rows, nil
+}
+
+// judged puts a row's gains on the best fit and on fresh plants.
+func (t *tuning) judged(r row, on *ensemble) row {
+	o := t.ops[0]
+	task := newTask(t.requirement, o.input, o.temperature)
+	r.nominal = task.metrics(newScenario(o.nominal, &task, 0), r.law, o.input)
+	r.on, r.out = on, on.outcomes(r.law, searchStep)
+	r.share = on.share(r.out)
+	r.worst = on.worst(r.law, r.out, t.options.Assurance, o.input)
+	return r
+}
+
+// meets tells whether a row's share reaches the assurance, within twice the
+// sampling error of the fresh plants it was counted on.
+func (t *tuning) meets(r row) bool {
+	a := t.options.Assurance
+	n := float64(len(r.out)) / float64(len(t.ops))
+	return r.designed.found && r.share >= a-2*math.Sqrt(a*(1-a)/n)
+}
+
+// choose returns the row to recommend: PI where it meets the requirement,
+// PID where only it does or where it rejects loads much better at little
+// noise, P where only P does; where none meets it, the one that is nearest.
+func (t *tuning) choose(rows []row) int {
+	index := func(kind string) int {
+		return slices.IndexFunc(rows, func(r row) bool { return r.kind == kind && t.meets(r) })
+	}
+	pi, pid := index("pi"), index("pid")
+	switch {
+	case pi >= 0 && pid >= 0:
+		cost := t.inputNoise(rows[pid].law)
+		in := t.ops[0].card.Range.Input
+		if rows[pid].designed.iae < derivativeBy*rows[pi].designed.iae && cost < noiseAllowed*(in[1]-in[0]) {
+			return pid
+		}
+		return pi
+	case pi >= 0:
+		return pi
+	case pid >= 0:
+		return pid
+	}
+	if p := index("p"); p >= 0 {
+		return p
+	}
+	best := 0
+	for i, r := range rows {
+		if r.share > rows[best].share || r.share == rows[best].share && r.designed.miss < rows[best].designed.miss {
+			best = i
+		}
+	}
+	return best
+}
+
+// inputNoise is the standard deviation, in input units, that the noise of the
+// measurement makes at the output: the card's correlated part as a first-order
+// process of its correlation time Tc, its white part as one of half the logging
+// interval, both through Kc·(1 + Td·s)/(Tf·s + 1). With a = Td/Tf, b = 1 − a
+// the variance is multiplied by Kc²·(a² + (2ab + b²)·Tc/(Tc+Tf)).
+func (t *tuning) inputNoise(c law) float64 {
+	card := t.ops[0].card
+	m, ok := card.Model(card.Selected)
+	if !ok {
+		return 0
+	}
+	interval := 1.0
+	for _, s := range card.Source {
+		if s.Rows > 1 {
+			interval = (s.ToS - s.FromS) / float64(s.Rows-1)
+		}
+	}
+	through := func(variance, tc float64) float64 {
+		if c.tf == 0 || tc+c.tf == 0 {
+			return variance
+		}
+		a := c.td / c.tf
+		b := 1 - a
+		return variance * (a*a + (2*a*b+b*b)*tc/(tc+c.tf))
+	}
+	white := m.Noise.WhiteSD * m.Noise.WhiteSD
+	rest := max(0, m.Noise.SD*m.Noise.SD-white)
+	return math.Abs(c.kc) * math.Sqrt(through(rest, m.Noise.CorrelationTime)+through(white, interval/2))
+}
+
+// candidate is the table's row.
+func (t *tuning) candidate(r row, selected bool) Candidate {
+	c := Candidate{Rule: r.rule, Controller: r.kind, Kc: r.law.kc, Filter: r.law.tf, Form: Ideal, Nominal: r.nominal, Worst: r.worst,
+		Share: r.share, Meets: t.meets(r), Selected: selected, Note: r.note, InputNoise: t.inputNoise(r.law)}
+	if r.law.integral() {
+		c.Ti = finite(r.law.ti)
+	}
+	if r.kind == "pid" {
+		c.Td = finite(r.law.td)
+	}
+	return c
+}
+
+// gains writes the recommended row down.
+func (t *tuning) gains(ctx context.Context, r row) (*Gains, error) {
+	o := t.ops[0]
+	g := newGains(r.law, r.kind)
+	g.Tool, g.Rule, g.Requirement = t.options.Tool, r.rule, t.requirement
+	g.Scan = t.requirement.Scan
+	g.Limits = Limits{Min: t.requirement.InputMin, Max: t.requirement.InputMax, Rate: t.requirement.InputRate}
+	g.Units = GainUnits{Input: o.card.Units.Input, Temperature: o.card.Units.Temperature}
+	if !r.law.integral() {
+		g.Bias = o.input
+	}
+	g.Nominal, g.Worst, g.Assurance = r.nominal, r.worst, t.options.Assurance
+	g.Meets, g.ShareMeeting = t.meets(r), r.share
+	g.OperatingInput = finite(o.input)
+	g.Reasons = []string{}
+	if !g.Meets {
+		g.Reasons = r.on.reasons(t.requirement, r.out, r.worst, t.options.Assurance)
+		if t.options.Rule == "" {
+			g.Cures = t.cures(ctx, r.kind, t.options.Assurance)
+		}
+	}
+	form := r.form
+	out, err := Convert(g, form, Spelling{Band: t.options.Band, Rate: t.options.Rate, Minutes: t.options.Minutes, InputSpan: t.options.InputSpan, TempSpan: t.options.TempSpan})
+	if err != nil {
+		return nil, err
+	}
+	out.Cautions = t.cautions(out)
+	return out, nil
+}
+
+// schedule compares one set for all cards with a set for each, and proposes
+// the sets where the one costs too much load IAE.
+func (t *tuning) schedule(ctx context.Context, g *Gains) {
+	limit := t.options.ScheduleFactor
+	if limit == 0 {
+		limit = 1.5
+	}
+	common, err := g.law()
+	if err != nil || !common.integral() {
+		return
+	}
+	var entries []ScheduleEntry
+	worst := 0.0
+	for card, o := range t.ops {
+		var own []*scenario
+		for _, s := range t.chosenOn.scenarios {
+			if s.card == card {
+				alone := *s
+				alone.card = 0
+				own = append(own, &alone)
+			}
+		}
+		e := newEnsemble(own, t.workers)
+		d := newSearch(ctx, e, o.nominal, t.options.Assurance).design(g.Controller)
+		entry := ScheduleEntry{Card: label(o.card), Input: o.card.Range.Input, Kc: d.law.kc, Ti: finite(d.law.ti), Filter: d.law.tf, Meets: d.found}
+		if g.Controller == "pid" {
+			entry.Td = finite(d.law.td)
+		}
+		if d.found {
+			cost := e.loadIAE(common, iaeSample, searchStep) / d.iae
+			entry.Cost = finite(cost)
+			worst = max(worst, cost)
+		}
+		entries = append(entries, entry)
+	}
+	if worst > limit || !g.Meets {
+		g.Schedule = entries
+		g.Reasons = append(g.Reasons, fmt.Sprintf("one set for all %d cards costs up to %.2f times the load IAE of a set for each: see the schedule", len(t.ops), worst))
+	}
+}
+
+func label(c *fit.Card) string {
+	if len(c.Source) == 0 {
+		return ""
+	}
+	return c.Source[0].File
+}
+
+// powerLaw says over which inputs the gains hold when the heat goes with the
+// square of the input, and what to enter behind a square-root linearisation.
+func (t *tuning) powerLaw(g *Gains) {
+	o := t.ops[0]
+	if len(t.ops) > 1 || o.card.Law() != ident.Power {
+		return
+	}
+	c, err := g.law()
+	if err != nil {
+		return
+	}
+	task := newTask(t.requirement, o.input, o.temperature)
+	few := t.fresh.thinned(rulesJudged)
+	holds := func(input float64) bool {
+		slope := o.card.Law().Slope(input)
+		if !(slope*o.slope > 0) {
+			return false
+		}
+		list := make([]*scenario, len(few.scenarios))
+		for i, s := range few.scenarios {
+			list[i] = newScenario(scaledGain(s.p, slope/o.slope), &task, 0)
+		}
+		e := newEnsemble(list, t.workers)
+		return e.holds(c, t.options.Assurance-2*math.Sqrt(t.options.Assurance*(1-t.options.Assurance)/float64(len(list))))
+	}
+	linear := &SquareRoot{Kc: c.kc * o.slope, Unit: orUnit(o.card.Units.Input, "input") + "²/" + orUnit(perKelvin(o.card.Units.Temperature), "K")}
+	g.SquareRoot = linear
+	if !g.Meets {
+		return
+	}
+	lo, hi := o.input, o.input
+	for f := 0.98; f > 0.05 && holds(o.input*f); f -= 0.02 {
+		lo = o.input * f
+	}
+	for f := 1.02; f < 3 && holds(o.input*f); f += 0.02 {
+		hi = o.input * f
+	}
+	g.HoldsOver = &[2]float64{min(lo, hi), max(lo, hi)}
+	g.Cautions = append([]string{fmt.Sprintf("the gain grows with the input: these gains hold the requirement between %.3g and %.3g %s; behind a square root of the controller's output one set holds everywhere",
+		g.HoldsOver[0], g.HoldsOver[1], o.card.Units.Input)}, g.Cautions...)
+}

@@ -1,0 +1,153 @@
+package tune
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"strings"
+	"testing"
+
+	"lagwright/fit"
+)
+
+// card is a card of a heater as a fit would leave it, its plausible plants
+// scattered by the given relative spread.
+func card(t testing.TB, seed uint64, spread float64) *fit.Card {
+	t.Helper()
+	plants := family(t, seed, 200, spread)
+	nominal := family(t, seed, 1, 0)[0]
+	c := &fit.Card{Schema: fit.CardSchema, InputLaw: "linear", Confidence: 0.95, Selected: nominal.Structure.String(),
+		Units: fit.CardUnits{Time: "s", Input: "V", Temperature: "degC"},
+		Range: fit.CardRange{Input: [2]float64{2, 6}, Temperature: [2]float64{40, 40 + 4*nominal.Gain}}}
+	m := fit.Model{Structure: c.Selected, Noise: fit.Noise{SD: 0.2, CorrelationTime: 3, WhiteSD: 0.1}}
+	m.Parameters = append(m.Parameters, fit.Parameter{Name: "gain", Value: nominal.Gain})
+	c.Plants.Structure, c.Plants.Parameters = c.Selected, []string{"gain"}
+	for i, tau := range nominal.Lags {
+		name := fmt.Sprintf("lag%d", i+1)
+		m.Parameters = append(m.Parameters, fit.Parameter{Name: name, Value: tau})
+		c.Plants.Parameters = append(c.Plants.Parameters, name)
+	}
+	m.Parameters = append(m.Parameters, fit.Parameter{Name: "dead_time", Value: nominal.DeadTime})
+	c.Plants.Parameters = append(c.Plants.Parameters, "dead_time")
+	c.Models = []fit.Model{m}
+	for _, p := range plants {
+		c.Plants.Values = append(c.Plants.Values, append(append([]float64{p.Gain}, p.Lags...), p.DeadTime))
+	}
+	return c
+}
+
+func TestTuneDefault(t *testing.T) {
+	g, err := Tune(context.Background(), []*fit.Card{card(t, 3, 0.05)}, Requirement{}, Options{Rand: 1, Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if g.Requirement.Ms == nil || *g.Requirement.Ms != 1.6 {
+		t.Errorf("requirement %v, want Ms 1.6 where nothing is asked", g.Requirement)
+	}
+	if !g.Meets || g.ShareMeeting < 0.92 || g.ShareMeeting > 1 {
+		t.Errorf("meets %v, share %g", g.Meets, g.ShareMeeting)
+	}
+	if *g.Worst.Ms > 1.61 || *g.Nominal.Ms > *g.Worst.Ms {
+		t.Errorf("Ms %g nominal, %g at the assurance quantile", *g.Nominal.Ms, *g.Worst.Ms)
+	}
+	selected := 0
+	for _, c := range g.Candidates {
+		if c.Selected {
+			selected++
+		}
+	}
+	if selected != 1 || len(g.Candidates) < 20 {
+		t.Errorf("%d candidates, %d selected", len(g.Candidates), selected)
+	}
+	var b bytes.Buffer
+	if err := g.WriteText(&b); err != nil {
+		t.Fatal(err)
+	}
+	t.Log(b.String())
+	for _, want := range []string{"Enter at the controller", "simc", "Cautions", "cut-out", "meets the requirement"} {
+		if !strings.Contains(b.String(), want) {
+			t.Errorf("text lacks %q", want)
+		}
+	}
+	if b.Reset(); g.WriteJSON(&b) != nil {
+		t.Fatal("no JSON")
+	}
+	if _, err := ReadGains(&b, "gains.json"); err != nil {
+		t.Error(err)
+	}
+}
+
+// The same seed gives the same bytes with any number of workers.
+func TestTuneIsReproducible(t *testing.T) {
+	var first string
+	for _, workers := range []int{1, 3} {
+		g, err := Tune(context.Background(), []*fit.Card{card(t, 7, 0.05)}, Requirement{Ms: ptr(1.8), Overshoot: ptr(10)}, Options{Rand: 4, Workers: workers, Controller: "pi"})
+		if err != nil {
+			t.Fatal(err)
+		}
+		var b bytes.Buffer
+		if err := g.WriteJSON(&b); err != nil {
+			t.Fatal(err)
+		}
+		if first == "" {
+			first = b.String()
+		} else if b.String() != first {
+			t.Error("one and three workers write different gains")
+		}
+	}
+}
+
+func TestTuneNearestMiss(t *testing.T) {
+	g, err := Tune(context.Background(), []*fit.Card{card(t, 3, 0.05)}, Requirement{Settling: ptr(70), Overshoot: ptr(5)}, Options{Workers: 2, Controller: "pi"})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if g.Meets || g.ShareMeeting > 0.5 {
+		t.Errorf("settling in 70 s: meets %v, share %g", g.Meets, g.ShareMeeting)
+	}
+	text := strings.Join(append(g.Reasons, g.Cures...), "\n")
+	t.Log(text)
+	for _, want := range []string{"settling time: ", "asked is 70 s", "binds", "dead time"} {
+		if !strings.Contains(text, want) {
+			t.Errorf("reasons and cures lack %q:\n%s", want, text)
+		}
+	}
+}
+
+func TestTuneRefuses(t *testing.T) {
+	good := card(t, 3, 0.05)
+	mixed := card(t, 3, 0.05)
+	mixed.Plants.Values[5][0] *= -1
+	for _, c := range []struct {
+		name  string
+		cards []*fit.Card
+		q     Requirement
+		o     Options
+		says  string
+		card  bool
+	}{
+		{"no card", nil, Requirement{}, Options{}, "no card", true},
+		{"gain of both signs", []*fit.Card{mixed}, Requirement{}, Options{}, "sign is not certain", true},
+		{"empty card", []*fit.Card{{}}, Requirement{}, Options{}, "selected structure", true},
+		{"Ms", []*fit.Card{good}, Requirement{Ms: ptr(0.9)}, Options{}, "never below 1", false},
+		{"limits", []*fit.Card{good}, Requirement{InputMin: ptr(5), InputMax: ptr(1)}, Options{}, "input limits", false},
+		{"outside", []*fit.Card{good}, Requirement{InputMax: ptr(1)}, Options{}, "outside the input limits", false},
+		{"rule", []*fit.Card{good}, Requirement{}, Options{Rule: "guess"}, "unknown rule", false},
+		{"controller", []*fit.Card{good}, Requirement{}, Options{Controller: "pd"}, "use p, pi or pid", false},
+	} {
+		_, err := Tune(context.Background(), c.cards, c.q, c.o)
+		if err == nil || !strings.Contains(err.Error(), c.says) || errors.Is(err, ErrUnusable) != c.card {
+			t.Errorf("%s: error %v, want one that says %q (unusable card: %v)", c.name, err, c.says, c.card)
+		}
+	}
+}
+
+func BenchmarkTune(b *testing.B) {
+	c := card(b, 3, 0.05)
+	for b.Loop() {
+		if _, err := Tune(context.Background(), []*fit.Card{c}, Requirement{Ms: ptr(1.6), Overshoot: ptr(10)}, Options{Workers: 2}); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
