@@ -150,7 +150,11 @@ func noiseWords(n Noise, unit string) string {
 	if n.CorrelationTime <= 0 {
 		return s + ", white"
 	}
-	return s + fmt.Sprintf(", correlated over %s, its white part sd %s", duration(n.CorrelationTime), quantity(n.WhiteSD, unit, 2))
+	s += ", correlated over " + duration(n.CorrelationTime)
+	if n.WhiteSD < 0.01*n.SD {
+		return s
+	}
+	return s + ", its white part sd " + quantity(n.WhiteSD, unit, 2)
 }
 
 func (c *Card) writeStructures(p *page) {
@@ -218,12 +222,17 @@ func sentence(s string) string {
 	if s == "" {
 		return s
 	}
-	if first, _, _ := strings.Cut(s, " "); !strings.ContainsAny(first, ".:_") {
-		r := []rune(s)
-		s = strings.ToUpper(string(r[:1])) + string(r[1:])
-	}
+	s = sentenceStart(s)
 	if !strings.HasSuffix(s, ".") {
 		s += "."
 	}
 	return s
+}
+
+func sentenceStart(s string) string {
+	if first, _, _ := strings.Cut(s, " "); strings.ContainsAny(first, ".:_") {
+		return s
+	}
+	r := []rune(s)
+	return strings.ToUpper(string(r[:1])) + string(r[1:])
 }
