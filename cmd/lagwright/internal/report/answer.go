@@ -87,6 +87,9 @@ func sharePhrase(g *tune.Gains) string {
 		format.Percent(g.ShareMeeting))
 	if g.Assurance > 0 {
 		s += fmt.Sprintf("; %s were asked for", format.Percent(g.Assurance))
+		if g.Meets && g.ShareMeeting < g.Assurance {
+			s += ", and the difference is within the error of the sample"
+		}
 	}
 	return s + "."
 }
@@ -174,45 +177,54 @@ func logAnswer(b *Bundle) answer {
 	return answer{Headline: "What is in the log", Sure: []string{"No model has been fitted."}}
 }
 
+// entryDigits are the digits of a number that someone types in.
+const entryDigits = 4
+
 // settings are the fields of the controller's face plate, in the order they
-// are usually asked for.
+// are usually asked for: the entries of the file where it has them.
 func settings(g *tune.Gains) []setting {
-	const digits = 4
-	kc := "V/K"
-	if g.Units.Input != "" {
-		kc = g.Units.Input + "/" + kelvin(g.Units.Temperature)
-	}
 	var s []setting
+	for _, e := range entries(g) {
+		s = append(s, setting{sentenceCase(e.Name), format.Amount(e.Value, e.Unit, entryDigits)})
+	}
+	if q := g.SquareRoot; q != nil {
+		s = append(s, setting{"Gain with a square root between controller and drive", format.Amount(q.Kc, q.Unit, entryDigits)})
+	}
+	s = append(s, setting{"Action", g.Action})
 	optional := func(name string, v *float64, unit string) {
 		if v != nil {
-			s = append(s, setting{name, format.Amount(*v, unit, digits)})
+			s = append(s, setting{name, format.Amount(*v, unit, entryDigits)})
 		}
 	}
-	for _, e := range g.Entry {
-		s = append(s, setting{sentenceCase(e.Name), format.Amount(e.Value, e.Unit, digits)})
-	}
-	if len(g.Entry) == 0 {
-		optional("Gain Kc", &g.Kc, kc)
-		optional("Integral time Ti", g.Ti, "s")
-		optional("Derivative time Td", g.Td, "s")
-	}
-	if g.Filter > 0 {
-		s = append(s, setting{"Filter time", format.Amount(g.Filter, "s", digits)})
-	}
-	if g.Controller == "p" {
-		s = append(s, setting{"Bias", format.Amount(g.Bias, g.Units.Input, digits)})
-	}
-	s = append(s, setting{"Setpoint weight", format.Short(g.SetpointWeight, 3)}, setting{"Action", g.Action})
 	if g.Scan > 0 {
-		s = append(s, setting{"Scan time", format.Amount(g.Scan, "s", digits)})
+		optional("Scan time", &g.Scan, "s")
 	}
 	optional("Output low limit", g.Limits.Min, g.Units.Input)
 	optional("Output high limit", g.Limits.Max, g.Units.Input)
 	optional("Output rate limit", g.Limits.Rate, g.Units.Input+"/s")
-	if q := g.SquareRoot; q != nil {
-		s = append(s, setting{"Gain Kc with a square root between controller and drive", format.Amount(q.Kc, q.Unit, digits)})
-	}
 	return s
+}
+
+// entries are the numbers of the controller itself.
+func entries(g *tune.Gains) []tune.Entry {
+	if len(g.Entry) > 0 {
+		return g.Entry
+	}
+	out := []tune.Entry{{Name: "gain Kc", Value: g.Kc, Unit: g.Units.Input + "/" + kelvin(g.Units.Temperature)}}
+	if g.Ti != nil {
+		out = append(out, tune.Entry{Name: "integral time Ti", Value: *g.Ti, Unit: "s"})
+	}
+	if g.Td != nil {
+		out = append(out, tune.Entry{Name: "derivative time Td", Value: *g.Td, Unit: "s"})
+	}
+	if g.Filter > 0 {
+		out = append(out, tune.Entry{Name: "filter time", Value: g.Filter, Unit: "s"})
+	}
+	out = append(out, tune.Entry{Name: "setpoint weight", Value: g.SetpointWeight})
+	if g.Controller == "p" {
+		out = append(out, tune.Entry{Name: "bias", Value: g.Bias, Unit: g.Units.Input})
+	}
+	return out
 }
 
 // requirementWords says a requirement in one clause.

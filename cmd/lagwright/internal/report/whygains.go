@@ -1,7 +1,9 @@
 package report
 
 import (
+	"cmp"
 	"fmt"
+	"slices"
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
@@ -143,33 +145,56 @@ func dash(s string) string {
 	return s
 }
 
+// mostCandidates is the number of controllers tried that a page lists.
+const mostCandidates = 12
+
+// candidateTable lists the chosen controller, those that meet the requirement
+// and those that come nearest.
 func candidateTable(g *tune.Gains) *table {
-	kc := g.Units.Input + "/" + kelvin(g.Units.Temperature)
 	t := &table{
-		Caption: "Everything tried; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
+		Caption: "Controllers tried, the best first; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
 		Head:    []string{"Rule", "Kc", "Ti", "Td", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets"},
 	}
-	for i, c := range g.Candidates {
-		if i == longestList {
-			t.More = len(g.Candidates) - longestList
-			break
-		}
-		m := c.Worst
-		if m == nil {
-			m = c.Nominal
-		}
-		if m == nil {
-			m = &tune.Metrics{}
-		}
-		name := strings.TrimSpace(c.Rule + " " + strings.ToUpper(c.Controller))
-		if c.Selected {
-			name += " (chosen)"
-		}
-		t.Rows = append(t.Rows, []cell{
-			cell{Text: name, Small: c.Note, Header: true}, num(format.Amount(c.Kc, kc, 3)), num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
-			num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
-			num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets),
-		})
+	best := slices.Clone(g.Candidates)
+	slices.SortStableFunc(best, func(a, b tune.Candidate) int { return cmp.Compare(rank(b), rank(a)) })
+	if len(best) > mostCandidates {
+		t.More = len(best) - mostCandidates
+		best = best[:mostCandidates]
+	}
+	for i := range best {
+		t.Rows = append(t.Rows, candidateRow(&best[i], g.Units))
 	}
 	return t
+}
+
+// rank orders candidates: chosen, meeting, then by their share of plants.
+func rank(c tune.Candidate) float64 {
+	r := c.Share
+	if c.Meets {
+		r += 2
+	}
+	if c.Selected {
+		r += 4
+	}
+	return r
+}
+
+func candidateRow(c *tune.Candidate, u tune.GainUnits) []cell {
+	m := c.Worst
+	if m == nil {
+		m = c.Nominal
+	}
+	if m == nil {
+		m = &tune.Metrics{}
+	}
+	name := strings.TrimSpace(c.Rule + " " + strings.ToUpper(c.Controller))
+	if c.Selected {
+		name += " (chosen)"
+	}
+	return []cell{
+		{Text: name, Small: c.Note, Header: true}, num(format.Amount(c.Kc, u.Input+"/"+kelvin(u.Temperature), 3)),
+		num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
+		num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
+		num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets),
+	}
 }
