@@ -84,3 +84,43 @@ func ExampleFindBumps() {
 	}
 	// Output: at 30 s: 3 to 5 V, 40 to 56 °C, held 89 s
 }
+
+// Twenty samples of a settled stretch count as one row, exactly.
+func ExampleNewBlockSimulator() {
+	in := ident.Input{At: []float64{0}, Value: []float64{1}}
+	rows := []ident.Row{{T: 0.5, M: 1}, {T: 1, M: 1}, {T: 1.5, H: 0.5, M: 20}}
+	fopdt, err := ident.ParseStructure("fopdt")
+	if err != nil {
+		fmt.Println(err)
+		return
+	}
+	fmt.Printf("%.4f\n", ident.NewBlockSimulator(rows, in).Response(nil, fopdt, []float64{2}, 0))
+	// Output: [0.2212 0.3935 0.8939]
+}
+
+func ExampleFirstEstimate() {
+	chain2, err := ident.ParseStructure("chain2")
+	if err != nil {
+		fmt.Println(err)
+		return
+	}
+	t, u := make([]float64, 600), make([]float64, 600)
+	for k := range t {
+		t[k] = 0.1 * float64(k)
+		u[k] = 3
+		if k >= 100 {
+			u[k] = 5
+		}
+	}
+	y := ident.NewSimulator(t, ident.HeldInput(t, u, ident.Linear)).Response(nil, chain2, []float64{4, 1.4}, 0.8)
+	for k := range y {
+		y[k] = 40 + 8*y[k]
+	}
+	p, err := ident.FirstEstimate(chain2, t, y, ident.FindBumps(t, u, y)[0], ident.Linear)
+	if err != nil {
+		fmt.Println(err)
+		return
+	}
+	fmt.Printf("gain %.1f K/V, lags %.1f s, dead time %.1f s\n", p.Gain, p.Lags, p.DeadTime)
+	// Output: gain 8.0 K/V, lags [4.0 1.4] s, dead time 0.8 s
+}
