@@ -25,7 +25,7 @@ import (
 //
 // A run is reproduced when both hold; then so does any replay of it.
 func (p *plan) backTest(ctx context.Context, run *data.Run, all []*course) (*BackTest, error) {
-	b := &BackTest{Stated: p.options.Confidence}
+	b := &BackTest{Stated: p.options.Confidence, Differs: []string{}}
 	if !hasValue(run.Setpoint) {
 		b.Differs = []string{"the log has no setpoint: name its column to test the controller"}
 		return b, nil

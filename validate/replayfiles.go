@@ -67,7 +67,11 @@ func ReplayFiles(ctx context.Context, card *fit.Card, files []string, read func(
 	done := make([]doneLog, len(files))
 	teams := p.teams(len(files))
 	err = share(ctx, len(files), len(teams), o.Progress, func(w, i int) error {
-		id, identified := identify(files[i])
+		var id logID
+		identified := false
+		if j != nil || len(known) > 0 { // hashing is a read of its own
+			id, identified = identify(files[i])
+		}
 		if d, ok := known[id]; ok && identified {
 			done[i] = d
 			return nil

@@ -18,7 +18,7 @@ import (
 func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) (RunReplay, error) {
 	out := RunReplay{
 		File: run.Source.File, Name: run.Source.Name, SHA256: run.Source.SHA256,
-		Rows: len(run.T), Start: startText(run.Start),
+		Rows: len(run.T), Start: startText(run.Start), Reasons: []string{}, Warnings: []string{},
 	}
 	if err := p.checkUnits(run); err != nil {
 		return out, err
@@ -35,7 +35,7 @@ func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) 
 	}
 	p.conclude(&out, e)
 	out.Logged = logged.metrics()
-	out.Warnings = append(warnings, p.warnings(run, courses, e)...)
+	out.Warnings = append(append(out.Warnings, warnings...), p.warnings(run, courses, e)...)
 	if p.traces {
 		out.Trace = e.trace(courses, p.options.Confidence)
 	}
@@ -192,15 +192,15 @@ func (e *ensemble) choose(p *plan, courses []*course) error {
 // conclude writes metrics with their bands, and the verdict.
 func (p *plan) conclude(out *RunReplay, e *ensemble) {
 	out.Proposed = bandMetrics(e.figures, p.options.Confidence)
-	var open []string
+	open, typical := []string{}, p.typical(e.figures)
 	for _, d := range p.asked {
-		if math.IsNaN(d.figure(e.figures[0])) {
+		if math.IsNaN(d.figure(typical)) {
 			open = append(open, d.name)
 		}
 	}
 	out.Judged = len(open) < len(p.asked)
 	share, reasons := judge(p.asked, e.figures, p.options.Confidence)
-	out.Reasons = reasons
+	out.Reasons = append(out.Reasons, reasons...)
 	if len(open) > 0 {
 		out.Reasons = append(out.Reasons, fmt.Sprintf("not judged on this run: %s", list(open)))
 	}

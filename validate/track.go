@@ -47,7 +47,8 @@ func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions
 	if err != nil {
 		return nil, err
 	}
-	d := &Drift{Schema: DriftSchema, Tool: fo.Tool, Structure: structure, Confidence: fo.Confidence, FalseAlarm: o.FalseAlarm, Cautions: driftCautions()}
+	d := &Drift{Schema: DriftSchema, Tool: fo.Tool, Structure: structure, Confidence: fo.Confidence, FalseAlarm: o.FalseAlarm,
+		Warnings: []string{}, Failed: []FailedRun{}, Cautions: driftCautions()}
 	if d.Confidence == 0 {
 		d.Confidence = 0.95
 	}
