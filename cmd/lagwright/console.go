@@ -116,6 +116,23 @@ func (c *console) refuseOverwriting(inputs []string, outputs ...string) error {
 	return nil
 }
 
+// commandLine is what was typed, quoted for a shell.
+func commandLine(args []string) string {
+	line := "lagwright"
+	for _, arg := range args {
+		line += " " + shellQuote(arg)
+	}
+	return line
+}
+
+func shellQuote(s string) string {
+	const harmless = "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789-_./=:,%+@"
+	if s != "" && strings.Trim(s, harmless) == "" {
+		return s
+	}
+	return "'" + strings.ReplaceAll(s, "'", `'\''`) + "'"
+}
+
 // safe makes every line of s safe to show.
 func safe(s string) string {
 	lines := strings.Split(s, "\n")

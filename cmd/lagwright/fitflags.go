@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"errors"
 	"fmt"
 	"regexp"
@@ -64,7 +65,7 @@ func (f *fitFlags) fixOne(s string) error {
 // with completes the options by what the other flags say.
 func (f *fitFlags) with(c *console, l *logFlags, progress func(done, total int)) (fit.Options, error) {
 	o := f.options
-	law, err := ident.ParseLaw(l.inputLaw)
+	law, err := ident.ParseLaw(cmp.Or(l.inputLaw, "linear"))
 	if err != nil {
 		return o, usageError{err}
 	}

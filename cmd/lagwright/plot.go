@@ -9,6 +9,8 @@ import (
 	"github.com/spf13/cobra"
 
 	"lagwright/cmd/lagwright/internal/report"
+	"lagwright/data"
+	"lagwright/fit"
 )
 
 // plotFlag is --plot, on every command that computes.
@@ -36,4 +38,14 @@ func (p *plotFlag) write(c *console, draw func() (*report.Figure, error)) error 
 		return err
 	}
 	return c.writeFile(p.path, func(w io.Writer) error { return figure.Write(w, p.path) })
+}
+
+// fitFigure draws the first run of a card with its fit.
+func fitFigure(card *fit.Card, run *data.Run) (*report.Figure, error) {
+	curves, err := card.Curves(run, 0)
+	if err != nil {
+		return nil, err
+	}
+	model, _ := card.Model(card.Selected)
+	return report.LogFigure(run, curves, model), nil
 }

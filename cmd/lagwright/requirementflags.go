@@ -17,7 +17,7 @@ type requirementFlags struct {
 func (r *requirementFlags) add(cmd *cobra.Command) {
 	fs, q := cmd.Flags(), &r.requirement
 	optionalFlag(fs, &q.Settling, "settling", "DURATION", "settled after a setpoint step within this time", positiveSeconds)
-	valueFlag(fs, &q.Band, "band", "PERCENT", "2%", "settled means: within this share of the step, and staying", share)
+	valueFlag(fs, &q.Band, "settling-band", "PERCENT", "2%", "settled means: within this share of the step, and staying", share)
 	optionalFlag(fs, &q.Overshoot, "overshoot", "PERCENT", "largest overshoot of a setpoint step", percent)
 	optionalFlag(fs, &q.Damping, "damping", "RATIO", "least damping ratio of the dominant poles", dampingRatio)
 	optionalFlag(fs, &q.Ms, "ms", "NUMBER", "largest peak sensitivity Ms (1.6 where nothing is required)", peakSensitivity)

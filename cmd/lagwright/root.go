@@ -51,12 +51,20 @@ Start with: lagwright demo`,
 	root.SetHelpCommand(newHelp())
 	c.addFlags(root.PersistentFlags())
 	root.AddCommand(
+		newDemo(c),
+		newRun(c),
+		newCheck(c),
+		newFit(c),
+		newTune(c),
 		newValidate(c),
 		newTrack(c),
+		newConvert(c),
+		newReport(c),
 		newVersion(c),
 		newCompletion(c),
 		newMan(c),
 	)
+	cobra.EnableCommandSorting = false // in the order of the work
 	// --help shows flags in the order they are declared: by subject.
 	root.PersistentFlags().SortFlags = false
 	for _, sub := range root.Commands() {

@@ -1,0 +1,162 @@
+package main
+
+import (
+	"bufio"
+	"bytes"
+	"context"
+	"encoding/json"
+	"io"
+	"os"
+	"strings"
+
+	"github.com/spf13/cobra"
+
+	"lagwright/cmd/lagwright/internal/report"
+	"lagwright/fit"
+	"lagwright/tune"
+	"lagwright/validate"
+)
+
+type reportOptions struct {
+	log logFlags
+}
+
+func newReport(c *console) *cobra.Command {
+	var o reportOptions
+	cmd := &cobra.Command{
+		Use:   "report FILE... -o PAGE",
+		Short: "One self-contained page from card, gains, replay and log",
+		Long: `Makes one HTML page, without outside resources, from what the other commands
+wrote: a model card, gains, a replay, each recognised by its content. Give the
+log as well, and the page shows it with the fit; its columns are found by the
+names in the card.
+` + exitHelp,
+		Example: `  lagwright report card.json gains.json replay.json bump.csv -o report.html
+  lagwright report card.json -o card.html`,
+		Args: needArgs(1, -1, "lagwright report card.json gains.json -o report.html"),
+		RunE: func(cmd *cobra.Command, args []string) error { return runReport(cmd.Context(), c, &o, args) },
+	}
+	o.log.add(cmd)
+	return cmd
+}
+
+func runReport(ctx context.Context, c *console, o *reportOptions, args []string) error {
+	if c.json {
+		return usageErrorf("report makes a page, not JSON; leave --json out")
+	}
+	if err := c.refuseOverwriting(args, c.output); err != nil {
+		return err
+	}
+	var j job
+	var logs []string
+	for _, path := range args {
+		known, err := j.addFile(path)
+		if err != nil {
+			return err
+		}
+		if !known {
+			logs = append(logs, path)
+		}
+	}
+	if len(logs) > 0 {
+		if err := j.addLogs(ctx, c, &o.log, logs); err != nil {
+			return err
+		}
+	}
+	page := func(w io.Writer) error { return report.Page(w, j.bundle(commandLine(c.args))) }
+	if !c.toFile() {
+		return page(c.out)
+	}
+	return c.writeFile(c.output, page)
+}
+
+// addLogs reads the logs behind the card and lays the model beside them.
+func (j *job) addLogs(ctx context.Context, c *console, l *logFlags, logs []string) error {
+	if j.card != nil {
+		l.columnsOf(j.card)
+	}
+	runs, err := l.readAll(ctx, c, logs)
+	if err != nil {
+		return err
+	}
+	j.bump = runs
+	if j.card == nil {
+		return nil
+	}
+	return j.layCurves()
+}
+
+// addFile takes in a file that lagwright wrote, and reports false for others.
+func (j *job) addFile(path string) (known bool, err error) {
+	text, err := readLagwright(path)
+	if err != nil || text == nil {
+		return false, err
+	}
+	var head struct {
+		Schema string `json:"schema"`
+	}
+	if json.Unmarshal(text, &head) != nil || head.Schema == "" {
+		return false, nil
+	}
+	switch r := bytes.NewReader(text); schemaKind(head.Schema) {
+	case "card":
+		return true, put(&j.card, path, r, fit.ReadCard)
+	case "gains":
+		return true, put(&j.gains, path, r, tune.ReadGains)
+	case "replay":
+		return true, put(&j.replay, path, r, validate.ReadReplay)
+	}
+	return false, inputErrorf("%s: %q is nothing that a page can show; give cards, gains, replays and logs", path, head.Schema)
+}
+
+// put reads a part of the page; two of a kind are one too many.
+func put[T any](dst **T, path string, r io.Reader, read func(io.Reader, string) (*T, error)) error {
+	if *dst != nil {
+		return usageErrorf("%s: a second file of its kind; a page shows one card, one set of gains, one replay", path)
+	}
+	v, err := read(r, path)
+	if err != nil {
+		return inputError{err}
+	}
+	*dst = v
+	return nil
+}
+
+// maxFile bounds what is read of a file of ours: a card of 100 000 plants has
+// some 20 MB.
+const maxFile = 1 << 28
+
+// readLagwright returns the text of a JSON file, and nil for anything else.
+func readLagwright(path string) ([]byte, error) {
+	info, err := os.Stat(path)
+	if err != nil {
+		return nil, inputError{err}
+	}
+	if !info.Mode().IsRegular() || info.Size() > maxFile {
+		return nil, nil
+	}
+	f, err := os.Open(path)
+	if err != nil {
+		return nil, inputError{err}
+	}
+	defer f.Close()
+	b := bufio.NewReader(f)
+	start, _ := b.Peek(64)
+	if !bytes.HasPrefix(bytes.TrimLeft(start, " \t\r\n\ufeff"), []byte("{")) {
+		return nil, nil
+	}
+	text, err := io.ReadAll(b)
+	if err != nil {
+		return nil, inputError{err}
+	}
+	return text, nil
+}
+
+// schemaKind is the middle of lagwright/card/1, "" for a foreign schema.
+func schemaKind(schema string) string {
+	parts := strings.Split(schema, "/")
+	if len(parts) != 3 || parts[0] != "lagwright" {
+		return ""
+	}
+	return parts[1]
+}

@@ -1,0 +1,185 @@
+package main
+
+import (
+	"encoding/json"
+	"fmt"
+	"io"
+	"path/filepath"
+	"strings"
+
+	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/data"
+	"lagwright/fit"
+	"lagwright/tune"
+	"lagwright/validate"
+)
+
+// finish says on standard output what came out, and where the page is.
+func (j *job) finish(c *console, folder string) error {
+	var err error
+	if c.json {
+		err = j.writeJSON(c.out, folder)
+	} else {
+		if err = c.sketchLog(j.bump[0], j.curves[0]); err == nil {
+			err = c.text(func(w io.Writer) error { return j.summary(w, folder) })
+		}
+	}
+	if err != nil {
+		return err
+	}
+	if err := gainsVerdict(j.gains); err != nil {
+		return err
+	}
+	return replayVerdict(j.replay)
+}
+
+func (j *job) writeJSON(w io.Writer, folder string) error {
+	e := json.NewEncoder(w)
+	e.SetIndent("", "  ")
+	return e.Encode(struct {
+		Folder string           `json:"folder"`
+		Card   *fit.Card        `json:"card"`
+		Gains  *tune.Gains      `json:"gains"`
+		Replay *validate.Replay `json:"replay"`
+	}{folder, j.card, j.gains, j.replay})
+}
+
+// summary is what a person can act on, in 80 columns.
+func (j *job) summary(w io.Writer, folder string) error {
+	s := &rows{w: w}
+	for _, run := range j.bump {
+		s.add("log", logWords(run))
+	}
+	s.add("heater", modelWords(j.card))
+	for _, warning := range j.card.Warnings {
+		s.add("warning", warning.Text)
+	}
+	s.add("enter", gainsWords(j.gains))
+	s.add("", requirementWords(j.gains))
+	for _, reason := range j.gains.Reasons {
+		s.add("", reason)
+	}
+	for i := range j.replay.Runs {
+		s.add("replay", replayWords(&j.replay.Runs[i], j.card.Units.Temperature))
+	}
+	for _, failed := range j.replay.Failed {
+		s.add("replay", failed.File+": not replayed: "+failed.Reason)
+	}
+	for _, caution := range j.gains.Cautions {
+		s.add("caution", caution)
+	}
+	s.add("open", filepath.Join(folder, "report.html"))
+	return s.err
+}
+
+// rows writes lines of a label and a text wrapped beside it.
+type rows struct {
+	w    io.Writer
+	last string
+	err  error
+}
+
+func (r *rows) add(label, text string) {
+	const margin = 9
+	shown := label
+	if label == r.last {
+		shown = "" // the label of several lines is written once
+	}
+	if label != "" {
+		r.last = label
+	}
+	for _, line := range wrap(format.Text(text), columns-margin) {
+		if r.err == nil {
+			_, r.err = fmt.Fprintln(r.w, strings.TrimRight(fmt.Sprintf("%-*s%s", margin, shown, line), " "))
+		}
+		shown = ""
+	}
+}
+
+func logWords(run *data.Run) string {
+	last := run.T[len(run.T)-1]
+	words := fmt.Sprintf("%s: %s over %s, every %s", run.Source.File, format.Count(len(run.T), "row", "rows"),
+		format.Duration(last), format.Duration(run.Quality.MedianInterval))
+	missing := 0
+	for _, n := range run.Quality.Missing {
+		missing += n
+	}
+	if missing > 0 {
+		words += fmt.Sprintf("; %s without a reading", format.Count(missing, "row", "rows"))
+	}
+	return words
+}
+
+func modelWords(card *fit.Card) string {
+	model, ok := card.Model(card.Selected)
+	if !ok {
+		return card.Selected
+	}
+	var parts []string
+	for _, p := range model.Parameters {
+		if p.Name == "baseline" || p.Name == "drift" {
+			continue
+		}
+		name := strings.ReplaceAll(p.Name, "_", " ")
+		parts = append(parts, name+" "+format.Value(p.Value, p.Low, p.High, p.Unit))
+	}
+	return fmt.Sprintf("%s: %s (%s intervals)", model.Structure, strings.Join(parts, ", "), format.Percent(card.Confidence))
+}
+
+func gainsWords(g *tune.Gains) string {
+	words := fmt.Sprintf("%s, %s form: Kc %s", strings.ToUpper(g.Controller), g.Form,
+		format.Amount(g.Kc, g.Units.Input+"/"+kelvins(g.Units.Temperature), 3))
+	if g.Ti != nil {
+		words += ", Ti " + format.Amount(*g.Ti, "s", 3)
+	}
+	if g.Td != nil {
+		words += ", Td " + format.Amount(*g.Td, "s", 3)
+	}
+	if g.Filter > 0 {
+		words += ", filter " + format.Amount(g.Filter, "s", 3)
+	}
+	return words + ", setpoint weight " + format.Short(g.SetpointWeight, 3)
+}
+
+// kelvins is the unit of a difference of temperatures.
+func kelvins(unit string) string {
+	if unit == "degC" {
+		return "K"
+	}
+	return unit
+}
+
+func requirementWords(g *tune.Gains) string {
+	verdict := "meets"
+	if !g.Meets {
+		verdict = "does not meet"
+	}
+	return fmt.Sprintf("%s the requirement on %s of plausible plants (asked: %s)", verdict,
+		format.Percent(g.ShareMeeting), format.Percent(g.Assurance))
+}
+
+func replayWords(r *validate.RunReplay, unit string) string {
+	words := r.File
+	if r.Name != "" {
+		words += ", run " + r.Name
+	}
+	if b := r.BackTest; b != nil && !b.Reproduced {
+		words += ": not reproduced under the logged gains, do not trust the model here"
+	}
+	k := kelvins(unit)
+	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string) {
+		now := pick(r.Proposed.Median)
+		if now == nil {
+			return
+		}
+		words += fmt.Sprintf("; %s %s", what, format.Amount(*now, unit, 3))
+		if was := pick(r.Logged); was != nil {
+			words += fmt.Sprintf(" (logged %s)", format.Amount(*was, unit, 3))
+		}
+	}
+	compare("settles in", func(m validate.RunMetrics) *float64 { return m.Settling }, "s")
+	compare("largest deviation", func(m validate.RunMetrics) *float64 { return m.Deviation }, k)
+	compare("error area", func(m validate.RunMetrics) *float64 { return m.IAE }, k+"*s")
+	compare("peak", func(m validate.RunMetrics) *float64 { return m.PeakTemp }, unit)
+	return words
+}

@@ -1,0 +1,71 @@
+package main
+
+import (
+	"context"
+	"strings"
+
+	"github.com/spf13/cobra"
+
+	"lagwright/fit"
+	"lagwright/tune"
+)
+
+type tuneOptions struct {
+	tune  tuneFlags
+	spans logFlags // --input-span and --temp-span only
+}
+
+func newTune(c *console) *cobra.Command {
+	var o tuneOptions
+	cmd := &cobra.Command{
+		Use:   "tune CARD...",
+		Short: "Gains that hold for every plausible plant",
+		Long: `Chooses gains from a model card: the best load rejection (smallest IAE) that
+meets the requirement on the plausible plants, not only on the best fit. With
+no requirement, Ms is held to 1.6. Several cards give one set, safe for all.
+When nothing meets the requirement the nearest miss is written, with what
+binds and what would have to change; that is exit code 4.
+` + exitHelp,
+		Example: `  lagwright tune card.json --settling 60s --overshoot 5% -o gains.json
+  lagwright tune card.json --controller pi --ms 1.5 --input-max 10 --scan 100ms
+  lagwright tune card.json --rule simc --json`,
+		Args: needArgs(1, -1, "lagwright tune card.json -o gains.json"),
+		RunE: func(cmd *cobra.Command, args []string) error { return runTune(cmd.Context(), c, &o, args) },
+	}
+	o.tune.add(cmd)
+	o.spans.addSpans(cmd)
+	return cmd
+}
+
+func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) error {
+	if err := o.tune.requirement.check(); err != nil {
+		return err
+	}
+	if err := c.refuseOverwriting(args, c.output); err != nil {
+		return err
+	}
+	var cards []*fit.Card
+	for _, path := range args {
+		card, err := c.readCard(path)
+		if err != nil {
+			return err
+		}
+		cards = append(cards, card)
+	}
+	gains, err := tune.Tune(ctx, cards, o.tune.requirement.requirement, o.tune.with(c, &o.spans))
+	if err != nil {
+		return tuneError(err)
+	}
+	if err := c.deliver(gains); err != nil {
+		return err
+	}
+	return gainsVerdict(gains)
+}
+
+// gainsVerdict is nil where the gains meet the requirement.
+func gainsVerdict(g *tune.Gains) error {
+	if g.Meets {
+		return nil
+	}
+	return answerNof("the requirement is not met: %s", strings.Join(g.Reasons, "; "))
+}
