@@ -134,7 +134,7 @@ func tryHeater(h trialHeater, assurance float64) (trialResult, error) {
 	out := trialResult{share: g.ShareMeeting, stated: g.Meets, ratio: math.NaN()}
 	out.meets = truth.holds(l, 1)
 	if best.found {
-		out.ratio = truth.loadIAE(l, 1, 1) / truth.loadIAE(best.law, 1, 1)
+		out.ratio = truth.loadIAE(l, 1, reportStep) / truth.loadIAE(best.law, 1, reportStep)
 	}
 	out.what = fmt.Sprintf("%s selected %s, ms %.1f over %g: kc %.4g ti %.4g, best kc %.4g ti %.4g", h.plant.Structure, card.Selected, h.ms, h.over, g.Kc, *g.Ti, best.law.kc, best.law.ti)
 	return out, nil

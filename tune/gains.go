@@ -25,7 +25,7 @@ type Gains struct {
 	Requirement Requirement `json:"requirement"`
 
 	Nominal      *Metrics `json:"nominal"` // on the best-fit plant
-	Worst        *Metrics `json:"worst"`   // the assurance quantile over fresh plausible plants
+	Worst        *Metrics `json:"worst"`   // the assurance quantile over plausible plants it was not chosen on
 	Assurance    float64  `json:"assurance"`
 	Meets        bool     `json:"meets"`
 	ShareMeeting float64  `json:"share_meeting"`

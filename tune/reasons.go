@@ -145,7 +145,7 @@ func (t *tuning) solve(ctx context.Context, kind string, ch change, assurance fl
 			plants = plants[:0:0]
 			plants = append(plants, o.nominal)
 		}
-		for i := 0; i < len(plants); i += max(1, len(plants)/40) {
+		for i := 0; i < len(plants); i += max(1, len(plants)/24) {
 			p := plants[i]
 			if ch.deadTime > 0 {
 				p.DeadTime *= ch.deadTime

@@ -270,7 +270,10 @@ func (s *search) derivative() design {
 // scan's best point, then the simplex method (Nelder and Mead 1965) on the
 // logarithms of gain and times.
 func (s *search) nearest(kind string) design {
-	few := s.on.thinned(60)
+	few, points, steps, evaluations := s.on.thinned(60), 12, 11, 80
+	if s.thin {
+		few, points, steps, evaluations = s.on.thinned(24), 8, 8, 30
+	}
 	build := func(x []float64) law {
 		ti, td := math.Inf(1), 0.0
 		if kind != "p" {
@@ -283,7 +286,7 @@ func (s *search) nearest(kind string) design {
 	}
 	best, at := math.Inf(1), []float64{math.Log(s.kc)}
 	visit := func(x []float64) {
-		if cancelled(s.ctx) {
+		if cancelled(s.ctx) || s.thin && best <= hair {
 			return
 		}
 		if m := few.miss(build(x), s.assurance); m < best {
@@ -294,13 +297,13 @@ func (s *search) nearest(kind string) design {
 	if kind != "p" {
 		times = times[:0]
 		lo, hi := math.Log(s.ti[0]), math.Log(s.ti[1])
-		for i := range 12 {
-			times = append(times, lo+(hi-lo)*float64(i)/11)
+		for i := range points {
+			times = append(times, lo+(hi-lo)*float64(i)/float64(points-1))
 		}
 	}
 	for _, logTi := range times {
-		for i := range 11 {
-			x := []float64{math.Log(s.kc) + math.Log(3) - 0.55*float64(i)}
+		for i := range steps {
+			x := []float64{math.Log(s.kc) + math.Log(3) - 5.5*float64(i)/float64(steps-1)}
 			if kind != "p" {
 				x = append(x, logTi)
 			}
@@ -309,6 +312,9 @@ func (s *search) nearest(kind string) design {
 			}
 			visit(x)
 		}
+	}
+	if s.thin && best <= hair {
+		return design{law: build(at), found: true}
 	}
 	if len(at) == 1 && kind != "p" { // nothing was stable
 		at = append(at, math.Log(s.ti[1]))
@@ -322,7 +328,7 @@ func (s *search) nearest(kind string) design {
 		}
 		return few.miss(build(x), s.assurance)
 	}}
-	if r, err := optimize.Minimize(problem, at, &optimize.Settings{FuncEvaluations: 80}, &optimize.NelderMead{SimplexSize: 0.3}); r != nil && (err == nil || r.F <= best) {
+	if r, err := optimize.Minimize(problem, at, &optimize.Settings{FuncEvaluations: evaluations}, &optimize.NelderMead{SimplexSize: 0.3}); r != nil && (err == nil || r.F <= best) {
 		at = r.X
 	}
 	c := build(at)

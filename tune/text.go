@@ -103,7 +103,7 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 	if !g.Meets {
 		verdict = "does NOT meet"
 	}
-	fmt.Fprintf(b, "\nThis %s the requirement (%s) on %.4g%% of the plausible plants: it holds on %.1f%% of fresh ones.\n",
+	fmt.Fprintf(b, "\nThis %s the requirement (%s) on %.4g%% of the plausible plants: it holds on %.1f%% of those it was not chosen on.\n",
 		verdict, g.Requirement, 100*g.Assurance, 100*g.ShareMeeting)
 	for _, r := range g.Reasons {
 		fmt.Fprintln(b, "  -", plain(r))

@@ -4,7 +4,6 @@ import (
 	"context"
 	"fmt"
 	"math"
-	"math/rand/v2"
 	"runtime"
 	"slices"
 
@@ -19,7 +18,7 @@ type Options struct {
 	Rule       string   // a published rule (see Rules) in place of the synthesis
 	TauC       float64  // closed-loop time constant for the rule, s; 0 means its usual choice
 	Assurance  float64  // share of the plausible plants on which the requirement must hold; 0 means 0.95
-	Rand       int64    // seed of the fresh plants
+	Rand       int64    // seed; nothing here is drawn at random today
 	Workers    int      // 0 means one per core; no effect on the result
 	Operating  *float64 // operating input; nil: see operate in operating.go
 	Tool       string   // written into the gains
@@ -34,8 +33,7 @@ type Options struct {
 
 // The figures a result is judged by.
 const (
-	freshCount   = 400 // fresh plausible plants a card
-	rulesJudged  = 100 // of them for the rows of the table
+	rulesJudged  = 100 // plausible plants a row of the table is judged on where it is not the recommended one
 	usualMs      = 1.6 // when nothing is required
 	usualShare   = 0.95
 	derivativeBy = 0.7  // PID is preferred where it brings the load IAE below this part of PI's …
@@ -48,8 +46,7 @@ type tuning struct {
 	options     Options
 	ops         []operation
 	workers     int
-	chosenOn    *ensemble // the plausible plants
-	fresh       *ensemble // plants the gains are not chosen on
+	plausible   *ensemble
 }
 
 // Tune finds gains for one or several cards (several: one set safe for all).
@@ -127,18 +124,14 @@ func newTuning(cards []*fit.Card, q Requirement, o Options) (*tuning, error) {
 	if t.requirement, err = complete(q, t.ops[0]); err != nil {
 		return nil, err
 	}
-	rng := rand.New(rand.NewPCG(uint64(o.Rand), 0x6c616777))
-	var chosenOn, fresh []*scenario
+	var list []*scenario
 	for card, op := range t.ops {
 		task := newTask(t.requirement, op.input, op.temperature)
 		for _, p := range op.plants {
-			chosenOn = append(chosenOn, newScenario(p, &task, card))
-		}
-		for _, p := range freshPlants(op.plants, freshCount, rng) {
-			fresh = append(fresh, newScenario(p, &task, card))
+			list = append(list, newScenario(p, &task, card))
 		}
 	}
-	t.chosenOn, t.fresh = newEnsemble(chosenOn, t.workers), newEnsemble(fresh, t.workers)
+	t.plausible = newEnsemble(list, t.workers)
 	return t, nil
 }
 
@@ -198,8 +191,8 @@ type row struct {
 	note       string
 	nominal    *Metrics
 	worst      *Metrics
-	out        []outcome // on the fresh plants (or part of them)
-	on         *ensemble // those plants
+	on         *ensemble // the plants it is judged on
+	out        []outcome // on each of them, not chosen on it
 	share      float64
 	designed   design
 }
@@ -212,12 +205,14 @@ func (t *tuning) designRows(ctx context.Context) ([]row, error) {
 	}
 	var rows []row
 	for _, kind := range kinds {
-		s := newSearch(ctx, t.chosenOn, t.ops[0].nominal, t.options.Assurance)
+		s := newSearch(ctx, t.plausible, t.ops[0].nominal, t.options.Assurance)
 		d := s.design(kind)
 		if err := ctx.Err(); err != nil {
 			return nil, err
 		}
-		r := t.judged(row{rule: "synthesis", kind: kind, law: d.law, form: Ideal, designed: d}, t.fresh)
+		r := row{rule: "synthesis", kind: kind, law: d.law, form: Ideal, designed: d, on: t.plausible}
+		r.out = crossFitted(ctx, t.plausible, d, t.options.Assurance)
+		r = t.judged(r)
 		if !d.found {
 			r.note = "nearest miss"
 		}
@@ -248,11 +243,12 @@ func (t *tuning) ruleRows(name, kind string) ([]row, error) {
 			continue
 		}
 		c.tf = filterShare * c.td
-		on := t.fresh
+		on := t.plausible
 		if t.options.Rule == "" {
-			on = t.fresh.thinned(rulesJudged)
+			on = t.plausible.thinned(rulesJudged)
 		}
-		rows = append(rows, t.judged(row{rule: name, kind: k, law: c, form: g.Form, note: note, designed: design{law: c, found: true}}, on))
+		rows = append(rows, t.judged(row{rule: name, kind: k, law: c, form: g.Form, note: note, designed: design{law: c, found: true},
+			on: on, out: on.outcomes(c, searchStep)}))
 		if t.options.Rule != "" {
 			break // the first controller the rule has
 		}
@@ -263,14 +259,14 @@ func (t *tuning) ruleRows(name, kind string) ([]row, error) {
 	return rows, nil
 }
 
-// judged puts a row's gains on the best fit and on fresh plants.
-func (t *tuning) judged(r row, on *ensemble) row {
+// judged completes a row: its gains on the best fit, and the figures over the
+// plausible plants from its outcomes.
+func (t *tuning) judged(r row) row {
 	o := t.ops[0]
 	task := newTask(t.requirement, o.input, o.temperature)
 	r.nominal = task.metrics(newScenario(o.nominal, &task, 0), r.law, o.input)
-	r.on, r.out = on, on.outcomes(r.law, searchStep)
-	r.share = on.share(r.out)
-	r.worst = on.worst(r.law, r.out, t.options.Assurance, o.input)
+	r.share = r.on.share(r.out)
+	r.worst = r.on.worst(r.law, r.out, t.options.Assurance, o.input)
 	return r
 }
 
@@ -403,7 +399,7 @@ func (t *tuning) schedule(ctx context.Context, g *Gains) {
 	worst := 0.0
 	for card, o := range t.ops {
 		var own []*scenario
-		for _, s := range t.chosenOn.scenarios {
+		for _, s := range t.plausible.scenarios {
 			if s.card == card {
 				alone := *s
 				alone.card = 0
@@ -448,7 +444,7 @@ func (t *tuning) powerLaw(g *Gains) {
 		return
 	}
 	task := newTask(t.requirement, o.input, o.temperature)
-	few := t.fresh.thinned(rulesJudged)
+	few := t.plausible.thinned(rulesJudged)
 	holds := func(input float64) bool {
 		slope := o.card.Law().Slope(input)
 		if !(slope*o.slope > 0) {
