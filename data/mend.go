@@ -48,6 +48,9 @@ func (s *stampSeries) mend() error {
 		return err
 	}
 	s.springForward()
+	if len(s.t) > 1 && s.t[len(s.t)-1] == s.t[0] {
+		return errNoTime
+	}
 	s.spreadOrDrop()
 	return nil
 }
@@ -255,7 +258,9 @@ func (s *stampSeries) spreadOrDrop() {
 	}
 	if 3*equal > kept {
 		s.spread()
-		return
+		if strictlyAscending(s.t) {
+			return
+		}
 	}
 	prev := -1
 	for i, t := range s.t {
@@ -307,7 +312,10 @@ func (s *stampSeries) spread() {
 	whole, width := sizes[len(sizes)/2], widths[len(widths)/2]
 	for g, gr := range groups {
 		n := int64(gr.hi - gr.lo)
-		start, from, per := s.t[rows[gr.lo]], int64(0), n
+		start, from, per, wide := s.t[rows[gr.lo]], int64(0), n, width
+		if g+1 < len(groups) { // a stamp never reaches beyond the next one
+			wide = min(wide, s.t[rows[groups[g+1].lo]]-start)
+		}
 		if (g == 0 || g == len(groups)-1) && n < whole {
 			per = whole
 			if g == 0 {
@@ -315,7 +323,7 @@ func (s *stampSeries) spread() {
 			}
 		}
 		for k := gr.lo; k < gr.hi; k++ {
-			s.t[rows[k]] = start + (from+int64(k-gr.lo))*width/per
+			s.t[rows[k]] = start + (from+int64(k-gr.lo))*wide/per
 		}
 	}
 	s.note("clock-spread", -1, "%d rows share each stamp of the clock (every %v); they were spread evenly between the stamps", whole, time.Duration(width))
