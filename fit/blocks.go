@@ -34,7 +34,7 @@ func ladder(w int) int {
 
 // averaged returns r with blocks in place of rows: allowed gives the longest
 // block, in samples, that may start at a time. A block never spans uneven
-// sampling. It returns r itself when little would be saved.
+// sampling. It returns the whole log when little would be saved.
 func (r *record) averaged(allowed func(t float64) int) *record {
 	root := r.root
 	n := len(root.t)
@@ -59,16 +59,10 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 		k += m
 	}
 	if float64(len(c.rows)) > 0.7*float64(n) {
-		c = *root
-		c.sim = root.sim.Clone()
-		c.rest, c.drift = r.rest, r.drift
-	} else {
-		c.sim = ident.NewBlockSimulator(c.rows, r.input)
+		return r.whole()
 	}
-	c.start, c.filter, c.yw, c.basis = nil, filter{}, nil, nil
-	c.shape, c.weight, c.sigma2 = r.shape, r.weight, r.sigma2
-	c.model(r.rest, r.drift)
-	return &c
+	c.sim = ident.NewBlockSimulator(c.rows, r.input)
+	return r.adopt(&c)
 }
 
 // uniform returns the longest ladder length up to m of equally spaced rows
@@ -91,11 +85,14 @@ func (r *record) uniform(k, m int) int {
 	return ladder(m)
 }
 
+// searchRows is how many blocks a long log is averaged into for the search.
+const searchRows = 600
+
 // coarse averages a long log into about rows equal blocks, for the search.
 func (r *record) coarse(rows int) *record {
 	w := len(r.root.t) / rows
 	if w < 2 {
-		return r
+		return r.whole()
 	}
 	return r.averaged(func(float64) int { return w })
 }
@@ -105,7 +102,7 @@ func (r *record) coarse(rows int) *record {
 // there on both sides.
 func (r *record) focus(dead, zone float64) *record {
 	if len(r.root.t) < reduceAbove {
-		return r
+		return r.whole()
 	}
 	var onset []float64
 	for _, at := range r.input.At {
@@ -151,7 +148,7 @@ const noiseRows = 24000
 func (r *record) residual(e *engine, p *point, beta []float64, linear int) []float64 {
 	root := r.root
 	if r.full == nil {
-		r.full = root.sim.Clone()
+		r.full = ident.NewSimulator(root.t, root.input)
 	}
 	lags, dead := e.lags(p.eta), p.eta[e.ng]
 	out := r.full.Response(nil, e.st, lags, dead)
@@ -183,20 +180,19 @@ func (r *record) residual(e *engine, p *point, beta []float64, linear int) []flo
 	return out
 }
 
-// pieces cuts rows and residuals down to noiseRows in equal pieces.
-func pieces(rows []ident.Row, left []float64) ([]ident.Row, []float64) {
-	n := len(rows)
+// pieces cuts times and residuals down to noiseRows in equal pieces.
+func pieces(t, left []float64) ([]float64, []float64) {
+	n := len(t)
 	if n <= noiseRows {
-		return rows, left
+		return t, left
 	}
 	const count = 8
 	size := noiseRows / count
-	var rs []ident.Row
-	var ls []float64
+	var ts, ls []float64
 	for i := range count {
 		lo := i * (n - size) / (count - 1)
-		rs = append(rs, rows[lo:lo+size]...)
+		ts = append(ts, t[lo:lo+size]...)
 		ls = append(ls, left[lo:lo+size]...)
 	}
-	return rs, ls
+	return ts, ls
 }

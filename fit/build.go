@@ -256,9 +256,13 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 	var sse, sst float64
 	pIn := 1.0
 	lag1 := 0.0
-	for _, t := range b.fitted.tangents() {
+	for i, t := range b.fitted.tangents() {
 		r := t.rec
 		root := r.root
+		if b.fine != nil {
+			p := point{eta: b.fine.eta, gain: b.fine.gain}
+			t.all = r.residual(b.e, &p, b.fine.beta[i], len(b.fine.beta[i]))
+		}
 		m.Samples += len(root.t)
 		mean := 0.0
 		for _, v := range root.y {
@@ -268,7 +272,8 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 			sse += v * v
 			sst += (root.y[k] - mean) * (root.y[k] - mean)
 		}
-		w := r.whiten(t.all)
+		w := append([]float64(nil), t.all...)
+		whitenTimes(w, root.t, r.shape)
 		whitened = append(whitened, w...)
 		lag1 += autocorrelation(t.all, 1)[1] * float64(len(root.t))
 		if p := crossCorrelationP(w, inputChanges(root), crossLags(root, b)); !math.IsNaN(p) {

@@ -6,6 +6,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"runtime"
+	"slices"
 	"sort"
 	"sync"
 
@@ -44,7 +45,7 @@ func prepare(runs []*data.Run, law ident.Law) ([]*record, error) {
 		if err != nil {
 			return nil, err
 		}
-		recs = append(recs, r)
+		recs = append(recs, r.coarse(searchRows))
 	}
 	return recs, nil
 }
@@ -115,8 +116,17 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 		return nil, err
 	}
 	out.choose()
+	for i, m := range out.models {
+		if i == out.selected || s.white && m.rows() <= polishAll {
+			m.refine()
+		}
+	}
 	return out, nil
 }
+
+// polishAll is the number of rows up to which every structure of a white fit is
+// brought to its optimum on every row; of longer logs only the selected one.
+const polishAll = 50000
 
 func sortedGroups(tasks map[int][]func()) [][]func() {
 	var keys []int
@@ -202,11 +212,11 @@ func (out *outcome) settle(s *study) error {
 			r.shape, r.weight = whiteShape, 1
 		}
 		s.set(in, drifts[0])
-		plain := &study{recs: s.recs, white: true}
+		plain := &study{recs: slices.Clone(s.recs), white: true}
 		start := plain.fit(one, nil)
 		for _, dr := range drifts {
 			s.set(in, dr)
-			free := &study{recs: s.recs, white: s.white, tau: start.p.eta[0], dead: start.p.eta[1]}
+			free := &study{recs: slices.Clone(s.recs), white: s.white, tau: start.p.eta[0], dead: start.p.eta[1]}
 			f := free.fit(two, start)
 			if math.IsNaN(f.p.s) || math.IsInf(f.p.s, 0) {
 				return fmt.Errorf("%s: %w: the least squares did not come to an end", s.recs[0].run.Source.File, ErrNoAnswer)

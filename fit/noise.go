@@ -73,75 +73,109 @@ func momentsOf(h, tc float64, m int) rowMoments {
 	return r
 }
 
+// kalman walks over the rows of a record and gives the filter's coefficients
+// row by row.
+type kalman struct {
+	s shape
+
+	p                float64 // variance of the correlated part at the last sample, given the past
+	lastGap, lastPhi float64
+	lastH            float64
+	lastM            int
+	mom              rowMoments
+	prevEnd          float64
+	started, steady  bool
+
+	decay, a2, gain, isd, log float64 // of the row just passed; log is that of the variance
+}
+
+func newKalman(s shape) *kalman {
+	k := &kalman{s: s, p: 1 - s.white, lastGap: -1, lastH: -1, lastM: -1}
+	return k
+}
+
+// next passes the row r.
+func (k *kalman) next(r ident.Row) {
+	m := max(r.M, 1)
+	phi0 := 0.0
+	if k.started {
+		gap := r.T - k.prevEnd
+		// Equally spaced stamps differ by their rounding.
+		if math.Abs(gap-k.lastGap) > 1e-7*k.lastGap || k.lastGap < 0 {
+			k.lastGap, k.lastPhi, k.steady = gap, math.Exp(-gap/k.s.tc), false
+		}
+		phi0 = k.lastPhi
+	}
+	if m != k.lastM || (m > 1 && r.H != k.lastH) {
+		k.mom = momentsOf(r.H, k.s.tc, m)
+		k.lastM, k.lastH, k.steady = m, r.H, false
+	}
+	k.prevEnd = r.T
+	if m > 1 {
+		k.prevEnd += float64(m-1) * r.H
+	}
+	if k.steady {
+		return
+	}
+	v, w, before := 1-k.s.white, k.s.white, k.p
+	one := v * (1 - phi0*phi0)
+	a1 := k.mom.phiM * phi0
+	k.a2 = k.mom.g * phi0
+	vLL := k.mom.phiM*k.mom.phiM*one + v*k.mom.vLL
+	vLM := k.mom.phiM*k.mom.g*one + v*k.mom.vLM
+	vMM := k.mom.g*k.mom.g*one + v*k.mom.vMM
+	sv := k.a2*k.a2*k.p + vMM + w/float64(m)
+	k.gain = (a1*k.a2*k.p + vLM) / sv
+	k.p = math.Max(a1*a1*k.p+vLL-k.gain*k.gain*sv, 0)
+	k.decay = a1 - k.gain*k.a2
+	k.isd, k.log = 1/math.Sqrt(sv), math.Log(sv)
+	// Equal rows bring the filter to a steady state; then its figures repeat.
+	k.steady = k.started && math.Abs(k.p-before) <= 1e-15*v
+	k.started = true
+}
+
 // set makes f the filter for rows under the shape s, in the memory it has.
 func (f *filter) set(rows []ident.Row, s shape) {
 	n := len(rows)
 	f.logdet, f.white, f.plain = 0, s.white >= 1, s.white >= 1
-	f.isd = resize(f.isd, n)
 	if f.white {
-		for k, r := range rows {
+		for _, r := range rows {
 			f.plain = f.plain && r.M <= 1
+		}
+		if f.plain {
+			return
+		}
+		f.isd = resize(f.isd, n)
+		for k, r := range rows {
 			f.isd[k] = math.Sqrt(float64(max(r.M, 1)))
 			f.logdet -= math.Log(float64(max(r.M, 1)))
 		}
 		return
 	}
-	f.decay, f.a2, f.gain = resize(f.decay, n), resize(f.a2, n), resize(f.gain, n)
-	v, w := 1-s.white, s.white
-	var (
-		p                 = v // variance of the correlated part at the last sample, given the past
-		lastGap, lastPhi  = -1.0, 0.0
-		lastH, lastM      = -1.0, -1
-		mom               rowMoments
-		prevEnd           float64
-		steady            bool
-		cA1, cA2, cG, cIS float64
-		cLog, pBefore     float64
-		logs              float64
-	)
-	for k, r := range rows {
-		m := max(r.M, 1)
-		phi0, gap := 0.0, math.Inf(1)
-		if k > 0 {
-			gap = r.T - prevEnd
-			if gap != lastGap {
-				if lastGap > 0 && math.Abs(gap-lastGap) < 1e-9*lastGap {
-					gap = lastGap // rounding of equally spaced stamps
-				} else {
-					lastGap, lastPhi = gap, math.Exp(-gap/s.tc)
-					steady = false
-				}
-			}
-			phi0 = lastPhi
-		}
-		if m != lastM || r.H != lastH {
-			mom = momentsOf(r.H, s.tc, m)
-			lastM, lastH = m, r.H
-			steady = false
-		}
-		prevEnd = r.T + float64(m-1)*r.H
-		if !steady {
-			pBefore = p
-			one := v * (1 - phi0*phi0)
-			cA1, cA2 = mom.phiM*phi0, mom.g*phi0
-			vLL := mom.phiM*mom.phiM*one + v*mom.vLL
-			vLM := mom.phiM*mom.g*one + v*mom.vLM
-			vMM := mom.g*mom.g*one + v*mom.vMM
-			sv := cA2*cA2*p + vMM + w/float64(m)
-			cG = (cA1*cA2*p + vLM) / sv
-			p = cA1*cA1*p + vLL - cG*cG*sv
-			if p < 0 {
-				p = 0
-			}
-			cIS = 1 / math.Sqrt(sv)
-			cLog = math.Log(sv)
-			// Equal rows bring the filter to a steady state; then its figures repeat.
-			steady = k > 0 && math.Abs(p-pBefore) <= 1e-15*v
-		}
-		f.decay[k], f.a2[k], f.gain[k], f.isd[k] = cA1-cG*cA2, cA2, cG, cIS
-		logs += cLog
+	f.decay, f.a2, f.gain, f.isd = resize(f.decay, n), resize(f.a2, n), resize(f.gain, n), resize(f.isd, n)
+	k := newKalman(s)
+	for i, r := range rows {
+		k.next(r)
+		f.decay[i], f.a2[i], f.gain[i], f.isd[i] = k.decay, k.a2, k.gain, k.isd
+		f.logdet += k.log
 	}
-	f.logdet = logs
+}
+
+// whitenTimes filters x, one sample a row at the times t, in place, without
+// keeping coefficients; it returns the sum of squares and the log determinant.
+func whitenTimes(x, t []float64, s shape) (sum, logdet float64) {
+	if s.white >= 1 {
+		return dot(x, x), 0
+	}
+	k, a := newKalman(s), 0.0
+	for i, v := range x {
+		k.next(ident.Row{T: t[i], M: 1})
+		x[i] = (v - k.a2*a) * k.isd
+		a = k.decay*a + k.gain*v
+		sum += x[i] * x[i]
+		logdet += k.log
+	}
+	return sum, logdet
 }
 
 // apply filters src into dst (they may be the same slice).
@@ -217,7 +251,7 @@ func (f *filter) applyTwo(x0, x1 []float64) {
 
 // logLikelihood is the Gaussian log likelihood of a column of noise under the
 // shape, its variance at the maximum: -n/2·(ln(2π·rss/n) + 1) - ln|R|/2.
-func (f *filter) logLikelihood(rss float64, n int) float64 {
+func logLikelihood(rss, logdet float64, n int) float64 {
 	m := float64(n)
-	return -0.5 * (m*(math.Log(2*math.Pi*rss/m)+1) + f.logdet)
+	return -0.5 * (m*(math.Log(2*math.Pi*rss/m)+1) + logdet)
 }

@@ -3,6 +3,7 @@ package fit
 import (
 	"fmt"
 	"math"
+	"slices"
 	"sort"
 
 	"lagwright/data"
@@ -58,14 +59,9 @@ func parseInitial(s string) (initial, error) {
 }
 
 func newRecord(run *data.Run, law ident.Law) (*record, error) {
-	r := &record{run: run, weight: 1}
+	r := &record{run: run, weight: 1, shape: whiteShape}
 	r.input = ident.HeldInput(run.T, run.U, law)
-	for i, v := range run.Y {
-		if !math.IsNaN(v) {
-			r.t = append(r.t, run.T[i])
-			r.y = append(r.y, v)
-		}
-	}
+	r.t, r.y = present(run.T, run.Y)
 	name := run.Source.File
 	if len(r.t) < 8 {
 		return nil, fmt.Errorf("%s: %w: %d rows hold a temperature, at least 8 are needed", name, ErrTooShort, len(r.t))
@@ -80,16 +76,43 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	if len(r.input.At) == 0 {
 		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
 	}
-	r.rows = make([]ident.Row, len(r.t))
-	for i, t := range r.t {
-		r.rows[i] = ident.Row{T: t, M: 1}
-	}
 	r.span = r.t[len(r.t)-1] - r.t[0]
 	r.step = medianInterval(r.t)
-	r.sim = ident.NewSimulator(r.t, r.input)
 	r.root = r
-	r.setShape(whiteShape)
 	return r, nil
+}
+
+// present returns the rows that hold a temperature; the columns themselves when
+// all do.
+func present(t, y []float64) (pt, py []float64) {
+	if !slices.ContainsFunc(y, math.IsNaN) {
+		return t, y
+	}
+	for i, v := range y {
+		if !math.IsNaN(v) {
+			pt, py = append(pt, t[i]), append(py, v)
+		}
+	}
+	return pt, py
+}
+
+// whole is the record with every row of the log, ready for fitting.
+func (r *record) whole() *record {
+	c := *r.root
+	c.rows = make([]ident.Row, len(c.t))
+	for i, t := range c.t {
+		c.rows[i] = ident.Row{T: t, H: c.step, M: 1}
+	}
+	c.sim = ident.NewSimulator(c.t, c.input)
+	return r.adopt(&c)
+}
+
+// adopt gives c, a fresh set of rows of the same log, what r has been told.
+func (r *record) adopt(c *record) *record {
+	c.start, c.full, c.filter, c.yw, c.basis, c.fixed = nil, nil, filter{}, nil, nil, nil
+	c.shape, c.weight, c.sigma2 = r.shape, r.weight, r.sigma2
+	c.model(r.rest, r.drift)
+	return c
 }
 
 // model fixes which linear columns the record carries.
@@ -200,24 +223,5 @@ func medianInterval(t []float64) float64 {
 	return d[len(d)/2]
 }
 
-// logLikelihood is that of the full log under the shape in force, given what
-// the model leaves of it and the whitened sum of squares of the rows in use.
-func (r *record) logLikelihood(left []float64, part float64) float64 {
-	if r.root == r || len(r.root.rows) == len(r.rows) {
-		return r.filter.logLikelihood(part, len(r.t))
-	}
-	f := filter{}
-	f.set(r.root.rows, r.shape)
-	w := make([]float64, len(left))
-	f.apply(w, left)
-	return f.logLikelihood(dot(w, w), len(w))
-}
-
-// whiten filters a column of the full log under the shape in force.
-func (r *record) whiten(left []float64) []float64 {
-	f := filter{}
-	f.set(r.root.rows, r.shape)
-	w := make([]float64, len(left))
-	f.apply(w, left)
-	return w
-}
+// averagesRows reports whether rows of the log are averaged.
+func (r *record) averagesRows() bool { return len(r.t) < len(r.root.t) }

@@ -3,8 +3,6 @@ package fit
 import (
 	"math"
 	"sort"
-
-	"lagwright/ident"
 )
 
 // tangent is a fitted model near its optimum on one record: what is left of
@@ -13,8 +11,8 @@ import (
 type tangent struct {
 	rec    *record
 	left   []float64   // log minus model, unwhitened
-	noise  []ident.Row // rows on which the noise is judged: those of rec, or of the full log
-	rest   []float64   // log minus model on them
+	noise  []float64   // times on which the noise is judged when rec averages rows, else nil
+	rest   []float64   // log minus model at them
 	all    []float64   // log minus model on the full log
 	cols   [][]float64 // orthonormal (unwhitened) directions
 	first  int         // how many of cols are linear columns
@@ -24,7 +22,6 @@ type tangent struct {
 	nparam int
 
 	filter filter      // scratch of evaluate
-	fine   filter      // the same on the noise rows
 	buf    []float64   // scratch: rest whitened
 	logdet float64     // of the noise rows under the shape last evaluated
 	white  [][]float64 // scratch: whitened cols, and left
@@ -61,10 +58,10 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			t.left[k] -= beta[j] * v
 		}
 	}
-	t.noise, t.rest, t.all = r.rows, t.left, t.left
-	if r.root != r && len(r.rows) < len(r.root.rows) {
+	t.all = t.left
+	if r.averagesRows() {
 		t.all = r.residual(e, p, beta, len(linear))
-		t.noise, t.rest = pieces(r.root.rows, t.all)
+		t.noise, t.rest = pieces(r.root.t, t.all)
 	}
 	for _, c := range linear {
 		addToBasis(&t.cols, append([]float64(nil), c...))
@@ -186,7 +183,7 @@ func (t *tangent) evaluate(s shape) node {
 	}
 	nd := node{shape: s, dof: n - p}
 	rss := l[p][p] * l[p][p]
-	if len(t.rest) != n || &t.rest[0] != &t.left[0] {
+	if t.noise != nil {
 		rss = t.fullSum(s, white[p], rss)
 		n = len(t.rest)
 		nd.dof = max(len(t.rec.root.t)-p, 1)
@@ -222,12 +219,11 @@ func (t *tangent) evaluate(s shape) node {
 // from it, which the averaged rows tell (whitened sum minus least, scaled to
 // the number of rows).
 func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
-	t.fine.set(t.noise, s)
 	t.buf = resize(t.buf, len(t.rest))
-	t.fine.apply(t.buf, t.rest)
-	t.logdet = t.fine.logdet
+	copy(t.buf, t.rest)
+	sum, logdet := whitenTimes(t.buf, t.noise, s)
+	t.logdet = logdet
 	taken := (dot(white, white) - least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
-	sum := dot(t.buf, t.buf)
 	return math.Max(sum-taken, 1e-3*sum)
 }
 

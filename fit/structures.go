@@ -334,7 +334,7 @@ func (s *study) score(f *fitted) {
 			f.mean += f.st.Order()
 		}
 		n += len(r.root.t)
-		f.loglik += r.logLikelihood(ts[i].all, f.p.part[i])
+		f.loglik += r.likelihood(ts[i], f.p.part[i])
 		f.sigma2 = append(f.sigma2, r.sigma2)
 		f.params++ // variance
 		if !s.white {
@@ -357,4 +357,14 @@ func (f *fitted) rows() int {
 		n += len(r.root.t)
 	}
 	return n
+}
+
+// likelihood is the log likelihood of the record under the shape in force,
+// given the model's tangent and the whitened sum of squares of the rows in use.
+func (r *record) likelihood(t *tangent, part float64) float64 {
+	if !r.averagesRows() {
+		return logLikelihood(part, r.filter.logdet, len(r.t))
+	}
+	sum, logdet := whitenTimes(append([]float64(nil), t.all...), r.root.t, r.shape)
+	return logLikelihood(sum, logdet, len(t.all))
 }
