@@ -37,27 +37,42 @@ func shared(t testing.TB, parts ...string) string {
 	}
 }
 
-// The real logs: rows, first and last values as printed in the files.
+// The real logs: rows, first and last row as printed in the files, sampling
+// as their README says.
 func TestRealLogs(t *testing.T) {
 	for _, c := range []struct {
 		file           string
 		rows           int
-		u0, y0, end    float64
-		uEnd, yEnd     float64
-		tempUnit, unit string
+		u0, y0         float64
+		end, u, y      float64 // last row
+		kelvin         bool
+		median, within float64 // sampling, s
 	}{
-		{"air_heater_bench.csv", 1000, 6.41, 4.7660989, 79.92, 6.41, 4.7318125, "", "unit"},
-		{"small_heater_levels.csv", 150, 0, 27.224, 298.5, 0, 0, "C", "degC"},
-		{"small_heater_doublet.csv", 571, 0, 299.53 - 273.15, 600, 0, 0, "K", "degC"},
+		{"air_heater_bench.csv", 1000, 6.41, 4.7660989, 79.92, 6.41, 4.6830789, false, 0.08, 1e-9},
+		{"small_heater_levels.csv", 150, 0, 27.224, 297.56, 10, 53.617, false, 2, 0.01},
+		{"small_heater_doublet.csv", 571, 0, 299.53, 572.14, 150, 339.81, true, 1, 0.01},
 	} {
-		runs, err := Read(context.Background(), shared(t, "data", c.file), Options{TimeCol: "t_s", InputCol: "u", TempCol: "y", TempUnit: c.tempUnit})
+		o := Options{TimeCol: "t_s", InputCol: "u", TempCol: "y"}
+		unit, zero := unitless, 0.0
+		if c.kelvin {
+			o.TempUnit, unit, zero = "K", "degC", 273.15
+		}
+		runs, err := Read(context.Background(), shared(t, "data", c.file), o)
 		if err != nil {
 			t.Errorf("%s: %v", c.file, err)
 			continue
 		}
 		r := runs[0]
-		t.Logf("%s: %d rows, %+v", c.file, len(r.T), r.Quality)
 		n := len(r.T) - 1
-		t.Logf("%v %v %v / %v %v %v %v", r.T[0], r.U[0], r.Y[0], r.T[n], r.U[n], r.Y[n], r.Units)
+		if len(r.T) != c.rows || r.Quality.RowsRead != c.rows || len(r.Quality.Missing)+len(r.Quality.Dropped)+len(r.Quality.Gaps)+len(r.Quality.Spikes) > 0 {
+			t.Errorf("%s: %d rows, want %d; quality %+v", c.file, len(r.T), c.rows, r.Quality)
+		}
+		same(t, c.file, []float64{r.T[0], r.U[0], r.Y[0], r.T[n], r.U[n], r.Y[n]}, []float64{0, c.u0, c.y0 - zero, c.end, c.u, c.y - zero}, 0)
+		if d := r.Quality.MedianInterval - c.median; d > c.within || d < -c.within {
+			t.Errorf("%s: sampled every %v s, want %v", c.file, r.Quality.MedianInterval, c.median)
+		}
+		if r.Units != (Units{Time: "s", Input: unitless, Temperature: unit}) {
+			t.Errorf("%s: units %+v", c.file, r.Units)
+		}
 	}
 }

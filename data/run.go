@@ -3,6 +3,13 @@
 // units, sets missing and impossible values aside, and says what it mended.
 // What comes out is a [Run]: one cleaned recording on one clock, held by
 // columns. Most callers need only [Read] and [Expand].
+//
+// It is strict where a guess could change the answer. What can be read in two
+// ways is an error that names the flag to settle it; a cell that holds no
+// number is missing and never zero; an input holds until the next one, a
+// temperature does not; a file that was cut off is an error and never a
+// shorter run. It does not judge a log: whether a recording can support a fit
+// is for package fit to say.
 package data
 
 import "time"
@@ -17,8 +24,8 @@ type Run struct {
 	U []float64 // input, in Units.Input; holds from its row on; always finite
 	Y []float64 // temperature, in Units.Temperature; NaN where missing
 
-	Setpoint []float64 // temperature units; NaN where missing; nil when not logged
-	Auto     []bool    // true where the controller was in automatic; nil when not logged
+	Setpoint []float64 // temperature units; holds until the next one, NaN before the first; nil when not logged
+	Auto     []bool    // true where the controller was in automatic, holds like the setpoint; nil when not logged
 	Airflow  []float64 // as logged; nil when not logged
 	Inlet    []float64 // inlet temperature, temperature units; nil when not logged
 
@@ -48,8 +55,8 @@ type Columns struct {
 // Units of the columns of a run.
 type Units struct {
 	Time        string // always "s"
-	Input       string // "V", "%", "mA", or as the file says
-	Temperature string // "degC" unless nobody knows the unit
+	Input       string // "V", "%", "mA", or as the file says; "unit" when nobody knows it
+	Temperature string // "degC"; as the file says when that is no unit of temperature, "unit" when nobody knows it
 }
 
 // Quality is what was seen, mended and dropped while reading.
