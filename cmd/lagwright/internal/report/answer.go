@@ -53,7 +53,11 @@ func gainsAnswer(b *Bundle) answer {
 	if m := b.model(); m != nil {
 		a.Sure = append(a.Sure, heaterPhrase(b.Card, m))
 	}
-	a.Sure = append(a.Sure, "Begin with the output limited and a small setpoint step. The cautions below come first.")
+	if g.Meets {
+		a.Sure = append(a.Sure, "Begin with the output limited and a small setpoint step. The cautions below come first.")
+	} else {
+		a.Sure = append(a.Sure, "Enter them only if what fails can be lived with. The cautions below come first.")
+	}
 	return a
 }
 

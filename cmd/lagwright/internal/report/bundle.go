@@ -18,7 +18,9 @@ type Bundle struct {
 	Drift  *validate.Drift
 
 	Profiles []Profile // of the selected model
-	Loop     *Loop     // what Gains do on Card's plants
+	Loop     *Loop     // what Gains do on Card's plants; nil: Page gathers it
+
+	loopError string // why there are no curves of the loop
 
 	Tool    string // name and version of the program
 	Command string // what makes this page again, as typed

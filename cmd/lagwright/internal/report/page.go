@@ -96,6 +96,12 @@ type drawing struct {
 // Page writes one self-contained HTML page. The same bundle gives the same
 // bytes.
 func Page(w io.Writer, b Bundle) error {
+	if b.Loop == nil && b.Card != nil && b.Gains != nil {
+		var err error
+		if b.Loop, err = LoopOf(b.Card, b.Gains); err != nil {
+			b.loopError = err.Error()
+		}
+	}
 	style := paletteCSS(":root") + inkCSS() + pageCSS
 	v := view{
 		Title:    title(&b),

@@ -16,11 +16,6 @@ func watch(b *Bundle) *section {
 			items = append(items, item{"warn", fmt.Sprintf("%s (%s)", sentenceCase(w.Text), w.Code)})
 		}
 	}
-	if b.Gains != nil {
-		for _, r := range b.Gains.Reasons {
-			items = append(items, item{"bad", sentenceCase(r)})
-		}
-	}
 	if b.Replay != nil {
 		for i := range b.Replay.Runs {
 			run := &b.Replay.Runs[i]

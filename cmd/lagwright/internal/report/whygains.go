@@ -23,6 +23,9 @@ func whyGains(b *Bundle) *section {
 	for _, f := range loopFigures(b.Loop, g) {
 		s.Blocks = append(s.Blocks, block{Figure: picturesOf(f)})
 	}
+	if b.loopError != "" {
+		s.Blocks = append(s.Blocks, block{Text: "The loop cannot be drawn: " + b.loopError + "."})
+	}
 	if t := operatingWords(g); t != "" {
 		s.Blocks = append(s.Blocks, block{Text: t})
 	}
