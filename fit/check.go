@@ -2,7 +2,6 @@ package fit
 
 import (
 	"context"
-	"encoding/json"
 	"fmt"
 	"io"
 	"math"
@@ -124,12 +123,7 @@ type QuickFit struct {
 }
 
 // WriteJSON writes the report as indented JSON.
-func (r *CheckReport) WriteJSON(w io.Writer) error {
-	e := json.NewEncoder(w)
-	e.SetIndent("", "  ")
-	e.SetEscapeHTML(false)
-	return e.Encode(r)
-}
+func (r *CheckReport) WriteJSON(w io.Writer) error { return writeJSON(w, r) }
 
 // quickRows is how many rows of an input that moves all the time the quick fit
 // looks at.

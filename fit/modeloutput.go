@@ -54,15 +54,7 @@ func (m *modelOutput) of(p ident.Plant) []float64 {
 	for k := range out {
 		out[k] *= p.Gain
 	}
-	linear := append([][]float64(nil), m.linear...)
-	switch m.initial {
-	case earlier:
-		linear = append(linear, m.start.Response(nil, p.Structure, p.Lags, p.DeadTime))
-	case free:
-		states := columns(max(p.Structure.Order(), 1), len(m.t))
-		m.sim.FreeStates(states, p.Structure, p.Lags, p.DeadTime)
-		linear = append(linear, states...)
-	}
+	linear := m.linearOf(p)
 	seen := make([][]float64, len(linear))
 	for j, c := range linear {
 		seen[j] = m.pick(c)
@@ -77,6 +69,20 @@ func (m *modelOutput) of(p ident.Plant) []float64 {
 		}
 	}
 	return out
+}
+
+// linearOf are the columns that enter linearly beside the gain, at every row.
+func (m *modelOutput) linearOf(p ident.Plant) [][]float64 {
+	linear := append([][]float64(nil), m.linear...)
+	switch m.initial {
+	case earlier:
+		linear = append(linear, m.start.Response(nil, p.Structure, p.Lags, p.DeadTime))
+	case free:
+		states := columns(max(p.Structure.Order(), 1), len(m.t))
+		m.sim.FreeStates(states, p.Structure, p.Lags, p.DeadTime)
+		linear = append(linear, states...)
+	}
+	return linear
 }
 
 // pick returns the measured rows of a column.

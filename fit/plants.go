@@ -1,6 +1,7 @@
 package fit
 
 import (
+	"errors"
 	"fmt"
 
 	"lagwright/ident"
@@ -81,6 +82,9 @@ func (c *Card) plausible(v []float64) (ident.Plant, error) {
 	if n != len(c.Plants.Parameters) || n < 2 {
 		return ident.Plant{}, fmt.Errorf("%d values for %d parameters", n, len(c.Plants.Parameters))
 	}
+	if c.Plants.Parameters[0] != "gain" || c.Plants.Parameters[n-1] != "dead_time" {
+		return ident.Plant{}, errors.New("the columns are not gain, lags, dead_time: see plants.parameters")
+	}
 	if c.Plants.Structure != "mixed" {
 		st, err := ident.ParseStructure(c.Plants.Structure)
 		if err != nil {
@@ -90,7 +94,10 @@ func (c *Card) plausible(v []float64) (ident.Plant, error) {
 	}
 	var lags []float64
 	equal := true
-	for _, l := range v[1 : n-1] {
+	for i, l := range v[1 : n-1] {
+		if l < 0 {
+			return ident.Plant{}, fmt.Errorf("%s is %g s, want 0 or longer", c.Plants.Parameters[i+1], l)
+		}
 		if l > 0 {
 			lags = append(lags, l)
 			equal = equal && l == lags[0]
@@ -99,7 +106,7 @@ func (c *Card) plausible(v []float64) (ident.Plant, error) {
 	name := fmt.Sprintf("chain%d", len(lags))
 	switch {
 	case len(lags) == 0:
-		return ident.Plant{}, fmt.Errorf("no lag above zero")
+		return ident.Plant{}, errors.New("no lag above zero")
 	case len(lags) == 1:
 		name = "fopdt"
 	case equal:

@@ -1,6 +1,7 @@
 package fit
 
 import (
+	"context"
 	"fmt"
 	"math"
 	"strings"
@@ -8,9 +9,13 @@ import (
 	"lagwright/data"
 )
 
-// warnings lists what limits the card: what was seen, what it means, what to do.
+// warn adds a warning: its code, the parameter it concerns ("" for the whole),
+// and in words what was seen, what it means, what to do.
+type warn func(code, parameter, format string, args ...any)
+
+// warnings lists what limits the card.
 func (out *outcome) warnings(runs []*data.Run) []Warning {
-	var list []Warning
+	list := []Warning{}
 	add := func(code, parameter, format string, args ...any) {
 		list = append(list, Warning{Code: code, Parameter: parameter, Text: fmt.Sprintf(format, args...)})
 	}
@@ -18,32 +23,9 @@ func (out *outcome) warnings(runs []*data.Run) []Warning {
 	m := out.model(b)
 	out.openEnds(b, add)
 	out.alike(add)
-	if out.opt.Noise == "white" && m.Residuals.Lag1Correlation > 0.2 {
-		add("white-intervals", "", "the residuals are correlated (%.2f from row to row) but the fit was told they are white: the bounds are too narrow; fit with --noise auto", m.Residuals.Lag1Correlation)
-	}
-	if m.Residuals.LjungBoxP < 0.01 {
-		add("residual-correlation", "", "what is left after the noise model is still correlated (Ljung-Box p = %.2g): the noise is not a first-order one, or the structure misses something; treat the bounds as too narrow", m.Residuals.LjungBoxP)
-	}
-	if m.Residuals.InputCorrelationP < 0.01 {
-		add("input-correlation", "", "the misfit follows the input (p = %.2g): the structure, the input law or the dead time is not right over the whole log; look at the residuals after each bump", m.Residuals.InputCorrelationP)
-	}
-	if out.initial == earlier {
-		add("not-at-rest", "", "the log does not start at rest: an earlier input was fitted along; start the next test from a steady state")
-	}
-	if out.drift && out.opt.Drift == "auto" {
-		lin := b.lin[0]
-		if len(lin) > 1 && lin[1].low*lin[1].high > 0 {
-			add("drift", "drift", "the baseline drifts by %.3g %s over the log: it was fitted along and costs width; let the heater settle before the bump", lin[1].value*out.recs[0].span, temperatureStep(out.recs[0].run.Units.Temperature))
-		}
-	}
-	if out.opt.BumpInstant == "unknown" {
-		add("bump-instant", "dead_time", "the instant of the bump inside its sampling interval is not known: the dead time is stated %.3g s wider", out.recs[0].step)
-	}
-	for _, r := range out.recs {
-		if q := r.run.Quality.Quantum; q > 0 && q > 2*m.Noise.SD {
-			add("coarse-quantum", "", "%s: the temperature is logged in steps of %.3g, coarser than its noise (%.2g): log with more digits", r.run.Source.File, q, m.Noise.SD)
-		}
-	}
+	out.warnNoise(&m, add)
+	out.warnMisfit(runs, b, &m, add)
+	out.warnTest(runs, b, &m, add)
 	for _, run := range runs {
 		for _, n := range run.Quality.Notes {
 			add(n.Code, "", "%s: %s", run.Source.File, n.Text)
@@ -52,8 +34,93 @@ func (out *outcome) warnings(runs []*data.Run) []Warning {
 	return list
 }
 
+// warnNoise warns of noise that the noise model does not describe.
+func (out *outcome) warnNoise(m *Model, add warn) {
+	if out.opt.Noise == "white" && m.Residuals.Lag1Correlation > 0.2 {
+		add("white-intervals", "", "the residuals are correlated (%s from row to row) but the fit was told they are white: the bounds are too narrow; fit with --noise auto", figure(m.Residuals.Lag1Correlation, 2))
+	}
+	if m.Residuals.LjungBoxP < 0.01 {
+		add("residual-correlation", "", "what is left after the noise model is still correlated (Ljung-Box p = %s): the noise is not a first-order one, or the structure misses something; treat the bounds as too narrow", figure(m.Residuals.LjungBoxP, 2))
+	}
+	for _, r := range out.recs {
+		if q := r.run.Quality.Quantum; q > 0 && q > 2*m.Noise.SD {
+			add("coarse-quantum", "", "%s: the temperature is logged in steps of %s, coarser than its noise (%s): small answers are lost between the steps; log with more digits",
+				r.run.Source.File, figure(q, 3), figure(m.Noise.SD, 2))
+		}
+	}
+}
+
+// warnMisfit warns of what a linear plant shared by all logs cannot follow.
+func (out *outcome) warnMisfit(runs []*data.Run, b *bounded, m *Model, add warn) {
+	plant, err := m.Plant()
+	if err != nil {
+		return
+	}
+	plant.DeadTime = b.p.eta[len(b.p.eta)-1] // on the clock of the rows
+	fit := misfit{plant: plant, noise: m.Noise, start: out.initial, drift: out.drift, law: out.opt.Law}
+	for _, e := range b.est {
+		fit.held = append(fit.held, e.fixed)
+	}
+	if p := m.Residuals.InputCorrelationP; p < 0.01 {
+		looks := fit.looks(runs, temperatureStep(runs[0].Units.Temperature))
+		if looks != "" {
+			looks = ", " + looks
+		}
+		add("input-correlation", "", "the misfit follows the input (p = %s)%s: the structure, the input law or the dead time is not right over the whole log; look at the residuals after each bump", figure(p, 2), looks)
+	}
+	fit.upDown(runs, add)
+	fit.curved(runs, CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
+	if n := len(runs); n > 1 && n <= mostApart {
+		c := &Card{Initial: out.initial.String(), Drift: map[bool]string{false: "none", true: "linear"}[out.drift]}
+		if a := compareApart(context.Background(), runs, out.opt, c, m); a != nil {
+			a.warnDiffer(out.opt.Confidence, add)
+		}
+	}
+}
+
+// warnTest warns of how the test was made.
+func (out *outcome) warnTest(runs []*data.Run, b *bounded, m *Model, add warn) {
+	if out.initial == earlier {
+		add("not-at-rest", "", "the log does not start at rest: an earlier input was fitted along and costs width; start the next test from a steady state")
+	}
+	if out.drift && out.opt.Drift == "auto" {
+		lin := b.lin[0]
+		if len(lin) > 1 && lin[1].low*lin[1].high > 0 {
+			add("drift", "drift", "the baseline drifts by %s over the log: it was fitted along and costs width; let the heater settle before the bump",
+				quantity(lin[1].value*out.recs[0].span, temperatureStep(runs[0].Units.Temperature), 3))
+		}
+	}
+	if out.opt.BumpInstant == "unknown" {
+		add("bump-instant", "dead_time", "the instant of the bump inside its sampling interval is not known: the dead time is stated %s wider; log faster, or log the input at the instant it changes", duration(out.recs[0].step))
+	}
+	for _, run := range runs {
+		if loop := loopOf(run); loop.State == "closed" {
+			out.warnClosed(run, loop, b, add)
+		}
+	}
+}
+
+// warnClosed warns of a log made in closed loop, where the controller moves
+// the input against the noise, and little else may move it.
+func (out *outcome) warnClosed(run *data.Run, loop Loop, b *bounded, add warn) {
+	name := run.Source.File
+	if out.opt.Noise == "white" {
+		add("closed-loop-white", "gain", "%s: %s: with --noise white the controller's answers to the noise count as the plant's and shift gain and lags; fit with --noise auto", name, loop.Reason)
+	}
+	g := b.est[0]
+	half := (g.high - g.low) / 2
+	if g.fixed || half <= wanted["gain"][0]*math.Abs(g.value) {
+		return
+	}
+	known := "the gain has no bound"
+	if !math.IsNaN(half) {
+		known = fmt.Sprintf("the gain is known to ±%s %% only", figure(100*half/math.Abs(g.value), 2))
+	}
+	add("closed-loop", "gain", "%s: %s and moved the input too little to tell the plant from the noise: %s; make a bump in manual, or a larger step of the setpoint", name, loop.Reason, known)
+}
+
 // openEnds warns of intervals that the log leaves open.
-func (out *outcome) openEnds(b *bounded, add func(code, parameter, format string, args ...any)) {
+func (out *outcome) openEnds(b *bounded, add warn) {
 	names := []string{"gain"}
 	for i := range b.e.nl {
 		names = append(names, fmt.Sprintf("lag%d", i+1))
@@ -64,23 +131,27 @@ func (out *outcome) openEnds(b *bounded, add func(code, parameter, format string
 		if i == 0 && b.p.gain < 0 {
 			low, high = high, low
 		}
+		said := parameterWords(names[i])
 		switch {
+		case i == 0 && high && b.st.Integrating():
+			add("weak-bump", names[i], "the log sets no upper bound on the slope: the answer is lost in the noise; make a larger bump")
 		case i == 0 && high:
-			add("short-record", names[i], "the record shows no plateau: it sets no upper bound on the gain; hold the next bump at least %.3g s", 4*(total(elements(b.st, b.p.eta))+b.p.eta[len(b.p.eta)-1]))
+			hold := 4*total(elements(b.st, b.p.eta)) + b.p.eta[len(b.p.eta)-1]
+			add("short-record", names[i], "the record shows no plateau: it sets no upper bound on the gain; hold the next bump at least %s", duration(roundUp(hold)))
 		case i == 0 && low:
-			add("weak-bump", names[i], "the log does not tell the gain from zero: make a larger bump")
+			add("weak-bump", names[i], "the log does not tell the gain from zero: the answer is lost in the noise; make a larger bump")
 		case i == len(b.est)-1 && low:
-			add("dead-time-unresolved", names[i], "the dead time cannot be told from zero: its interval is one-sided")
+			add("dead-time-unresolved", names[i], "the dead time cannot be told from zero: its interval is one-sided; log faster if it matters")
 		case high:
-			add("short-record", names[i], "the record sets no upper bound on %s: hold the next bump longer", names[i])
+			add("short-record", names[i], "the record sets no upper bound on %s: it ends too early; hold the next bump longer", said)
 		case low:
-			add("lag-unresolved", names[i], "%s cannot be told from zero: its interval is one-sided; log at %.2g s or faster to see it, or use a simpler structure", names[i], math.Max(e.high/5, 1e-3))
+			add("lag-unresolved", names[i], "%s cannot be told from zero: its interval is one-sided; log at %s or faster to see it, or use a simpler structure", said, duration(roundDown(math.Max(e.high/5, 1e-3))))
 		}
 	}
 }
 
 // alike says which structures the log cannot tell from the selected one.
-func (out *outcome) alike(add func(code, parameter, format string, args ...any)) {
+func (out *outcome) alike(add warn) {
 	sel := out.models[out.selected]
 	var names []string
 	for i, m := range out.models {
@@ -88,7 +159,14 @@ func (out *outcome) alike(add func(code, parameter, format string, args ...any))
 			names = append(names, m.st.String())
 		}
 	}
-	if len(names) > 0 {
-		add("structures-alike", "", "the log cannot tell %s from %s; %s was taken, and the plausible plants include all of them", sel.st, strings.Join(names, ", "), sel.st)
+	if len(names) == 0 {
+		return
 	}
+	include := "the plausible plants include all of them"
+	for i, m := range out.models {
+		if i != out.selected && m.aicc < sel.aicc+2 && m.st.Integrating() != sel.st.Integrating() {
+			include = "the plausible plants are of those that rest where it does"
+		}
+	}
+	add("structures-alike", "", "the log cannot tell %s from %s; %s was taken, the simplest, and %s; faster rows or a larger bump would tell them apart", sel.st, strings.Join(names, ", "), sel.st, include)
 }

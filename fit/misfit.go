@@ -1,0 +1,258 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+
+	"lagwright/data"
+	"lagwright/ident"
+)
+
+// misfit looks for what a linear plant cannot follow in the logs it was
+// fitted to. Each departure adds one column to the model; its coefficient is
+// estimated by generalised least squares beside everything else that the fit
+// was free to move, and is reported when it is both clear and large.
+type misfit struct {
+	plant ident.Plant
+	noise Noise
+	start initial
+	drift bool
+	law   ident.Law
+	held  []bool // gain, lags, dead time that were known
+}
+
+const (
+	misfitRows  = 4000  // of a longer log, rows close after the bumps are looked at
+	misfitLevel = 0.001 // p below which a departure is clear
+	misfitSize  = 0.03  // relative difference from which it is worth a word; common practice, no source
+)
+
+// departure is a way in which a plant may differ from a linear one: column is
+// the change of the output for one unit of it.
+type departure func(in ident.Input, t []float64) []float64
+
+// estimate is a departure's coefficient with its standard error, over all logs;
+// ok is false where no log can tell.
+func (m misfit) estimate(runs []*data.Run, of departure) (value, se float64, ok bool) {
+	var top, bottom float64
+	for _, run := range runs {
+		a, b := m.onRun(run, of)
+		top += a
+		bottom += b
+	}
+	if !(bottom > 0) {
+		return 0, 0, false
+	}
+	return top / bottom, 1 / math.Sqrt(bottom), true
+}
+
+// onRun returns the information b of one log on the departure's coefficient,
+// and a, b times the estimate.
+func (m misfit) onRun(run *data.Run, of departure) (a, b float64) {
+	var t, y []float64
+	for _, k := range closeRows(run, ident.FindBumps(run.T, run.U, run.Y), misfitRows) {
+		if !math.IsNaN(run.Y[k]) {
+			t, y = append(t, run.T[k]), append(y, run.Y[k])
+		}
+	}
+	in := ident.HeldInput(run.T, run.U, m.law)
+	extra := of(in, t)
+	if len(t) < 20 || extra == nil {
+		return 0, 0
+	}
+	out := newModelOutput(t, y, in, m.start, m.drift, m.noise.shape())
+	left := out.of(m.plant)
+	for k := range left {
+		left[k] = y[k] - left[k]
+	}
+	var basis [][]float64
+	for _, c := range m.directions(out) {
+		out.filter.apply(c, c)
+		addToBasis(&basis, c)
+	}
+	out.filter.apply(left, left)
+	project(left, basis)
+	out.filter.apply(extra, extra)
+	before := dot(extra, extra)
+	project(extra, basis)
+	project(extra, basis)
+	after := dot(extra, extra)
+	dof := len(t) - len(basis) - 1
+	if !(after > 1e-8*before) || dof < 8 {
+		return 0, 0
+	}
+	s2 := (dot(left, left) - dot(extra, left)*dot(extra, left)/after) / float64(dof)
+	return dot(extra, left) / s2, after / s2
+}
+
+// directions are the columns in which the fit was free to move.
+func (m misfit) directions(out *modelOutput) [][]float64 {
+	st := m.plant.Structure
+	sens := columns(st.NumLags()+2, len(out.t))
+	out.sim.Sensitivities(sens, st, m.plant.Lags, m.plant.DeadTime)
+	var cols [][]float64
+	for _, c := range out.linearOf(m.plant) {
+		cols = append(cols, append([]float64(nil), c...))
+	}
+	for i, c := range sens {
+		if i >= len(m.held) || !m.held[i] {
+			cols = append(cols, c)
+		}
+	}
+	return cols
+}
+
+// rises is the input with its changes upward only.
+func rises(in ident.Input) (up ident.Input, both bool) {
+	level, last := in.Before, in.Before
+	down := false
+	up.Before = in.Before
+	for i, v := range in.Value {
+		if v > last {
+			level += v - last
+			up.At = append(up.At, in.At[i])
+			up.Value = append(up.Value, level)
+		} else {
+			down = true
+		}
+		last = v
+	}
+	return up, down && len(up.At) > 0
+}
+
+// gainUpDown is the difference of the gain between steps up and steps down.
+func (m misfit) gainUpDown(in ident.Input, t []float64) []float64 {
+	up, both := rises(in)
+	if !both {
+		return nil
+	}
+	return ident.NewSimulator(t, up).Response(nil, m.plant.Structure, m.plant.Lags, m.plant.DeadTime)
+}
+
+// lagsUpDown is the relative difference of all lags between steps up and steps
+// down.
+func (m misfit) lagsUpDown(in ident.Input, t []float64) []float64 {
+	up, both := rises(in)
+	st := m.plant.Structure
+	if !both || st.NumLags() == 0 {
+		return nil
+	}
+	sens := columns(st.NumLags()+2, len(t))
+	ident.NewSimulator(t, up).Sensitivities(sens, st, m.plant.Lags, m.plant.DeadTime)
+	out := make([]float64, len(t))
+	for i, tau := range m.plant.Lags {
+		for k, v := range sens[i+1] {
+			out[k] += m.plant.Gain * tau * v
+		}
+	}
+	return out
+}
+
+// curvature is the coefficient of the square of the input's distance from the
+// middle of its range, on top of the straight line.
+func (m misfit) curvature(middle float64) departure {
+	return func(in ident.Input, t []float64) []float64 {
+		bent := ident.Input{Before: (in.Before - middle) * (in.Before - middle)}
+		for i, v := range in.Value {
+			bent.At = append(bent.At, in.At[i])
+			bent.Value = append(bent.Value, (v-middle)*(v-middle))
+		}
+		return ident.NewSimulator(t, bent).Response(nil, m.plant.Structure, m.plant.Lags, m.plant.DeadTime)
+	}
+}
+
+// clearOf tells whether a coefficient is told from zero.
+func clearOf(value, se float64) bool {
+	return math.Abs(value)/se > normalQuantile(1-misfitLevel/2)
+}
+
+// upDown warns of a gain or lags that differ between steps up and down.
+func (m misfit) upDown(runs []*data.Run, add warn) {
+	const cure = "hold the model for an average of both: bump both ways about the working point, or fit the bumps one by one with --from and --to"
+	if d, se, ok := m.estimate(runs, m.gainUpDown); ok {
+		d, se = d/m.plant.Gain, se/math.Abs(m.plant.Gain)
+		if clearOf(d, se) && math.Abs(d) > misfitSize {
+			add("up-down-differ", "gain", "the gain of steps up is %s %s than that of steps down (±%s %%): something sets between bumps, or heating and cooling differ; %s",
+				percent(d), moreOrLess(d, "larger", "smaller"), figure(200*se, 2), cure)
+			return // a difference of gain shows in the lags, too
+		}
+	}
+	if d, se, ok := m.estimate(runs, m.lagsUpDown); ok && clearOf(d, se) && math.Abs(d) > misfitSize {
+		add("up-down-differ", "lag1", "the lags of steps up are %s %s than those of steps down (±%s %%): heating and cooling differ; %s",
+			percent(d), moreOrLess(d, "longer", "shorter"), figure(200*se, 2), cure)
+	}
+}
+
+// curved warns of a gain that changes over the range of the input.
+func (m misfit) curved(runs []*data.Run, units CardUnits, add warn) {
+	e := extent(runs, func(r *data.Run) []float64 { return r.U })
+	low, high := m.law.Apply(e[0]), m.law.Apply(e[1])
+	c, se, ok := m.estimate(runs, m.curvature((low+high)/2))
+	if !ok {
+		return
+	}
+	// The gain of the lower half of the range is K - c·(high-low)/2, that of the upper K + c·(high-low)/2.
+	change, seChange := c*(high-low)/m.plant.Gain, se*math.Abs((high-low)/m.plant.Gain)
+	if !clearOf(change, seChange) || math.Abs(change) < 2*misfitSize {
+		return
+	}
+	lower, upper := m.plant.Gain*(1-change/2), m.plant.Gain*(1+change/2)
+	hint := "bump about the working point only, and tune for the larger gain"
+	if squared := (e[0] + 3*e[1]) / (3*e[0] + e[1]); m.law == ident.Linear && e[0] >= 0 && math.Abs(math.Log(upper/lower/squared)) < 0.5*math.Log(squared) {
+		hint = "it grows with the input as a resistive element's does: fit with --input-law power"
+	}
+	add("curvature", "gain", "the gain changes over the range, from about %s in the lower half of the input (%s to %s) to %s in the upper: one straight line does not hold everywhere; %s",
+		figure(lower, 3), figure(e[0], 3), quantity(e[1], units.Input, 3), figure(upper, 3), hint)
+}
+
+func percent(share float64) string { return figure(100*math.Abs(share), 2) + " %" }
+
+func moreOrLess(v float64, more, less string) string {
+	if v > 0 {
+		return more
+	}
+	return less
+}
+
+// looks says in words where, after the bumps, the log and the model part most:
+// the mean misfit in the direction of the bump, in windows of the plant's
+// residence time (dead time and lags together). Empty where there are no bumps.
+func (m misfit) looks(runs []*data.Run, unit string) string {
+	residence := m.plant.DeadTime + total(m.plant.Elements())
+	windows := [][2]float64{{0, 1}, {1, 3}, {3, math.Inf(1)}} // in residence times after the bump
+	sum, weight := make([]float64, len(windows)), make([]float64, len(windows))
+	for _, run := range runs {
+		out := newModelOutput(run.T, run.Y, ident.HeldInput(run.T, run.U, m.law), m.start, m.drift, m.noise.shape())
+		fitted := out.of(m.plant)
+		for _, b := range ident.FindBumps(run.T, run.U, run.Y) {
+			direction := math.Copysign(1, (m.law.Apply(b.To)-m.law.Apply(b.From))*m.plant.Gain)
+			for k := b.Row; k < b.End; k++ {
+				if math.IsNaN(run.Y[k]) {
+					continue
+				}
+				since := (run.T[k] - b.Time) / residence
+				for i, w := range windows {
+					if since >= w[0] && since < w[1] {
+						sum[i] += direction * (run.Y[k] - fitted[k])
+						weight[i]++
+					}
+				}
+			}
+		}
+	}
+	worst, most := -1, 0.0
+	for i := range windows {
+		if weight[i] > 0 && math.Abs(sum[i]/weight[i]) > math.Abs(most) {
+			worst, most = i, sum[i]/weight[i]
+		}
+	}
+	if worst < 0 {
+		return ""
+	}
+	where := [...]string{
+		fmt.Sprintf("in the first %s after a bump", duration(residence)),
+		fmt.Sprintf("from %s to %s after a bump", duration(residence), duration(3*residence)),
+		fmt.Sprintf("from %s after a bump on", duration(3*residence)),
+	}[worst]
+	return fmt.Sprintf("%s the log runs %s %s the model", where, quantity(math.Abs(most), unit, 2), moreOrLess(most, "ahead of", "behind"))
+}
