@@ -84,15 +84,13 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 		if err != nil {
 			return l, nil, err
 		}
-		l[r] = i
-		taken[i] = true
+		l[r], taken[i] = i, true
 	}
 	if !tags {
 		if err := assignTime(cols, &l, taken); err != nil {
 			return l, nil, err
 		}
 	}
-	var notes []Note
 	for _, r := range []role{roleInput, roleTemp} {
 		if l[r] >= 0 {
 			continue
@@ -105,25 +103,34 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 			return l, nil, ambiguous(cols, found, r)
 		}
 		if len(found) == 1 {
-			l[r] = found[0]
-			taken[found[0]] = true
+			l[r], taken[found[0]] = found[0], true
 		}
 	}
+	notes := assignOptional(cols, &l, taken)
+	more, err := assignByContent(cols, &l, taken)
+	return l, append(notes, more...), err
+}
+
+// assignOptional finds the columns that a fit can do without. Of several
+// equal ones none is used, and that is said.
+func assignOptional(cols []column, l *layout, taken map[int]bool) []Note {
+	var notes []Note
 	for r := roleSetpoint; r < roleRun; r++ {
 		if l[r] >= 0 {
 			continue
 		}
 		switch found := bestByName(cols, taken, r); {
 		case len(found) == 1:
-			l[r] = found[0]
-			taken[found[0]] = true
+			l[r], taken[found[0]] = found[0], true
 		case len(found) > 1:
-			notes = append(notes, Note{Code: "column-ambiguous", Text: fmt.Sprintf("several columns could be the %s: %s; none is used (say which with %s)",
-				roleNames[r], listColumns(cols, found), flags[r])})
+			text := fmt.Sprintf("several columns could be the %s: %s; none is used", roleNames[r], listColumns(cols, found))
+			if flags[r] != "" {
+				text += " (say which with " + flags[r] + ")"
+			}
+			notes = append(notes, Note{Code: "column-ambiguous", Text: text})
 		}
 	}
-	more, err := assignByContent(cols, &l, taken)
-	return l, append(notes, more...), err
+	return notes
 }
 
 // findColumn finds the column that a flag names: exactly, else without regard

@@ -212,69 +212,56 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 }
 
 // fast reads a row whose cells are plain numbers in place. It gives up, and
-// changes nothing, at anything out of the ordinary.
+// adds nothing, at anything out of the ordinary.
 func (c *csvReader) fast(text []byte, line int) bool {
 	if c.long != nil || c.pair || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
 		return false
 	}
-	r := &c.rec
-	delim, point := c.d.delim, c.d.format.point
 	i, col := 0, 0
 	for _, f := range c.fields {
 		for ; col < f.index; col++ {
-			n := bytes.IndexByte(text[i:], delim)
+			n := bytes.IndexByte(text[i:], c.d.delim)
 			if n < 0 {
 				return false
 			}
 			i += n + 1
 		}
-		switch f.role {
-		case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
-			d, n, ok := scanDecimal(text[i:], point)
-			if !ok || i+n < len(text) && text[i+n] != delim {
-				return false
-			}
-			v, ok := d.float(text[i:i+n], point)
-			if !ok {
-				return false
-			}
-			r.v[f.role] = v
-			i += n
-		case roleTime:
-			if c.clock.kind <= dayNumber {
-				d, n, ok := scanDecimal(text[i:], point)
-				if !ok || i+n < len(text) && text[i+n] != delim {
-					return false
-				}
-				r.t, ok = c.clock.ofDecimal(d, text[i:i+n], point)
-				if !ok {
-					return false
-				}
-				i += n
-				continue
-			}
-			n := bytes.IndexByte(text[i:], delim)
-			if n < 0 {
-				n = len(text) - i
-			}
-			var ok bool
-			if r.t, r.alt, ok = c.clock.parse(text[i:i+n], point); !ok {
-				return false
-			}
-			i += n
-		default:
+		n, ok := c.inPlace(text[i:], f.role)
+		if !ok {
 			return false
 		}
+		i += n
 	}
 	if rest := text[i:]; len(rest) > 0 {
-		extra := bytes.Count(rest, []byte{delim})
+		extra := bytes.Count(rest, []byte{c.d.delim})
 		if col+extra >= c.d.fields || bytes.IndexByte(rest, 0) >= 0 {
 			return false
 		}
 	}
-	r.line = line
-	c.table("").take(r, c.open)
+	c.rec.line = line
+	c.table("").take(&c.rec, c.open)
 	return true
+}
+
+// inPlace reads the cell that text begins with into the record and returns
+// its length.
+func (c *csvReader) inPlace(text []byte, r role) (n int, ok bool) {
+	switch r {
+	case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
+		d, n, ok := scanDecimal(text, c.d.format.point)
+		if !ok || n < len(text) && text[n] != c.d.delim {
+			return 0, false
+		}
+		c.rec.v[r], ok = d.float(text[:n], c.d.format.point)
+		return n, ok
+	case roleTime:
+		if n = bytes.IndexByte(text, c.d.delim); n < 0 {
+			n = len(text)
+		}
+		c.rec.t, c.rec.alt, ok = c.clock.parse(text[:n], c.d.format.point)
+		return n, ok
+	}
+	return 0, false
 }
 
 // mayComment tells the characters that a comment can begin with.

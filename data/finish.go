@@ -15,7 +15,6 @@ type reading struct {
 	clock *clock
 	open  bool // stamps were read both day and month first
 	notes []Note
-	long  bool
 }
 
 func (r *reading) note(code string, line int, format string, args ...any) {

@@ -8,6 +8,7 @@ import (
 	"path/filepath"
 	"runtime"
 	"testing"
+	"time"
 
 	"github.com/apache/arrow/go/v17/parquet/compress"
 )
@@ -59,12 +60,28 @@ func FuzzCSV(f *testing.F) {
 		if err != nil {
 			f.Fatal(err)
 		}
-		f.Add(text)
+		f.Add(text, byte(0))
 	}
-	f.Fuzz(func(t *testing.T, text []byte) {
+	f.Fuzz(func(t *testing.T, text []byte, choice byte) {
+		o := Options{Stdin: bytes.NewReader(text), Long: choice&1 > 0, RemoveSpikes: choice&2 > 0}
+		if choice&4 > 0 {
+			o.Cycle = time.Second
+		}
+		if choice&8 > 0 {
+			o.InputSpan, o.TempSpan = &Span{Low: 0, High: 10}, &Span{Low: 0, High: 200}
+		}
+		if choice&16 > 0 {
+			o.From, o.To = "1", "1h"
+		}
+		if choice&32 > 0 {
+			o.TimeFormat = "day-first"
+		}
+		if choice&64 > 0 {
+			o.RunCol = "run"
+		}
 		var before, after runtime.MemStats
 		runtime.ReadMemStats(&before)
-		runs, err := Read(context.Background(), "-", Options{Stdin: bytes.NewReader(text)})
+		runs, err := Read(context.Background(), "-", o)
 		runtime.ReadMemStats(&after)
 		if took := after.TotalAlloc - before.TotalAlloc; took > memoryLimit {
 			t.Fatalf("%d bytes took %d bytes of memory", len(text), took)

@@ -44,6 +44,7 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 	cols := c.d.cols
 	at := noLayout()
 	taken := map[int]bool{}
+	take := func(r role, i int) { at[r], taken[i] = i, true }
 	for _, r := range []role{roleTime, roleRun} {
 		name := o.column(r)
 		if name == "" {
@@ -53,56 +54,52 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 		if err != nil {
 			return err
 		}
-		at[r], taken[i] = i, true
+		take(r, i)
 	}
 	if err := assignTime(cols, &at, taken); err != nil {
 		return err
 	}
-	for i, col := range cols {
-		r, _ := roleOf(col)
-		if r == roleStatus && !taken[i] && at[roleStatus] < 0 {
-			at[roleStatus] = i
-			taken[i] = true
-		}
+	if found := bestByName(cols, taken, roleStatus); len(found) == 1 {
+		take(roleStatus, found[0])
 	}
-	for _, want := range []struct {
-		role  role
-		class class
-	}{{roleTag, texts}, {roleValue, numbers}} {
-		var found []int
-		best := 0
-		for i, col := range cols {
-			if taken[i] || col.class != want.class {
-				continue
-			}
-			score := 1 + words[want.role].hit(col.name, wordsOf(col.name))
-			if score > best {
-				best, found = score, nil
-			}
-			if score == best {
-				found = append(found, i)
-			}
-		}
+	for _, r := range []role{roleTag, roleValue} {
+		found := bestByWords(cols, taken, r)
 		if len(found) != 1 {
 			return fmt.Errorf("the log is read as rows of time, tag and value, but it is not clear which column is the %s among %s",
-				roleNames[want.role], listColumns(cols, every(cols)))
+				roleNames[r], listColumns(cols, every(cols)))
 		}
-		at[want.role] = found[0]
-		taken[found[0]] = true
+		take(r, found[0])
 	}
 	c.at = at
-	c.long = &longReader{byName: map[string]*series{}, modeTag: o.ModeCol}
-	info.long = true
+	c.long = &longReader{byName: map[string]*series{}}
 	return c.planClock(o, info)
+}
+
+// bestByWords lists the columns that can be the tag or the value, those whose
+// name says so before others.
+func bestByWords(cols []column, taken map[int]bool, r role) []int {
+	var found []int
+	best := -1
+	for i, col := range cols {
+		if taken[i] || !fits(col.class, r) {
+			continue
+		}
+		score := words[r].hit(col.name, wordsOf(col.name))
+		if score > best {
+			best, found = score, nil
+		}
+		if score == best {
+			found = append(found, i)
+		}
+	}
+	return found
 }
 
 // longReader collects the records of a log in long form, tag by tag.
 type longReader struct {
 	byName  map[string]*series
 	series  []*series // in the order met
-	modeTag string
 	tooMany bool
-	dropped counts
 }
 
 // series is what was recorded of one tag in one run.
@@ -215,15 +212,13 @@ func (l *longReader) columns() []column {
 }
 
 // merge puts the tags of a run on one clock, the union of the stamps of input
-// and temperature. The input, the setpoint and the mode hold between their
-// records; a temperature is there only where it was recorded.
+// and temperature.
 func (l *longReader) merge(run string, cols []column, at layout, info *reading, c *csvReader) (*table, error) {
 	var parts [numRoles]*rows
 	tb := newTable(run, at, 0)
-	var grid []int64
-	for r := range numRoles {
+	for r := roleInput; r < roleStatus; r++ {
 		i := at[r]
-		if i < 0 || r == roleTime || r == roleDate {
+		if i < 0 {
 			continue
 		}
 		s := l.byName[run+"\x00"+cols[i].label]
@@ -238,58 +233,89 @@ func (l *longReader) merge(run string, cols []column, at layout, info *reading, 
 			return nil, fmt.Errorf("tag %q: %w", s.tag, err)
 		}
 		parts[r] = p
-		tb.counts.read += p.read
-		if r == roleInput || r == roleTemp {
-			grid = append(grid, p.t...)
-			for kind, n := range p.missing {
-				count(tb.counts.missing, kind, n)
-			}
-		}
-		for reason, n := range p.dropped {
-			count(tb.counts.dropped, reason, n)
-		}
+		tb.counts.add(p.counts, r == roleInput || r == roleTemp)
 		for _, n := range p.notes {
 			addNote(&info.notes, n)
 		}
 	}
 	for _, d := range c.tables { // rows that could not be read at all
 		if d.name == run {
-			tb.counts.read += d.counts.read
-			for reason, n := range d.counts.dropped {
-				count(tb.counts.dropped, reason, n)
+			tb.counts.add(d.counts, false)
+		}
+	}
+	if err := sameDays(parts); err != nil {
+		return nil, err
+	}
+	l.lay(tb, parts)
+	return tb, nil
+}
+
+// add sums counts; missing values count only for columns that a fit needs.
+func (c *counts) add(d counts, missing bool) {
+	c.read += d.read
+	for reason, n := range d.dropped {
+		count(c.dropped, reason, n)
+	}
+	for kind, n := range d.missing {
+		if missing {
+			count(c.missing, kind, n)
+		}
+	}
+}
+
+// sameDays refuses tags whose clocks without a date passed midnight in ways
+// that do not fit together: a tag that was recorded only after midnight shows
+// no midnight of its own.
+func sameDays(parts [numRoles]*rows) error {
+	passed := func(p *rows) bool {
+		return slices.ContainsFunc(p.notes, func(n Note) bool { return n.Code == "clock-midnight" })
+	}
+	for _, p := range parts {
+		if p == nil || !passed(p) {
+			continue
+		}
+		for r, q := range parts {
+			if q != nil && !passed(q) && q.t[0] < p.t[0] {
+				return fmt.Errorf("the clock names no date and the record passes midnight, but the tag of the %s does not show on which side of it: export the log with dates", roleNames[r])
 			}
 		}
 	}
+	return nil
+}
+
+// lay puts the records on the union of the stamps of input and temperature.
+// Input, setpoint and mode hold between their records; a temperature or an
+// airflow is there only where it was recorded.
+func (l *longReader) lay(tb *table, parts [numRoles]*rows) {
+	grid := slices.Concat(parts[roleInput].t, parts[roleTemp].t)
 	slices.Sort(grid)
 	grid = slices.Compact(grid)
 	var next [numRoles]int
 	var rec record
 	rec.clear()
 	for _, t := range grid {
-		rec.t, rec.alt = t, noTime
-		for r, p := range parts {
+		rec.t = t
+		for i, p := range parts {
 			if p == nil {
 				continue
 			}
-			fresh := false
-			for next[r] < len(p.t) && p.t[next[r]] <= t {
-				fresh = p.t[next[r]] == t
-				if v := p.v[roleInput][next[r]]; v == v || role(r) != roleInput && role(r) != roleSetpoint {
-					rec.v[r] = v
-				}
-				if role(r) == roleMode && p.auto[next[r]] >= 0 {
-					rec.auto = p.auto[next[r]]
-				}
-				rec.line = p.lines.line(next[r])
-				next[r]++
+			held := role(i) == roleInput || role(i) == roleSetpoint || role(i) == roleMode
+			if !held {
+				rec.v[i] = math.NaN()
 			}
-			if !fresh && role(r) != roleInput && role(r) != roleSetpoint && role(r) != roleMode {
-				rec.v[r] = math.NaN()
+			for ; next[i] < len(p.t) && p.t[next[i]] <= t; next[i]++ {
+				v, auto := p.v[roleInput][next[i]], p.auto[next[i]]
+				if v == v && (held || p.t[next[i]] == t) {
+					rec.v[i] = v
+				}
+				if role(i) == roleMode && auto >= 0 {
+					rec.auto = auto
+				}
+				rec.line = p.lines.line(next[i])
 			}
 		}
 		tb.add(&rec, false)
 	}
-	return tb, nil
 }
 
 var errTagEmpty = errors.New("holds no record")
