@@ -156,7 +156,7 @@ func cardAnswer(b *Bundle) answer {
 		a.Sure = []string{heaterPhrase(b.Card, m)}
 	}
 	if n := len(b.Card.Warnings); n > 0 {
-		a.Sure = append(a.Sure, fmt.Sprintf("%s limit what this card can be used for; they are listed below.", sentenceCase(format.Count(n, "warning", "warnings"))))
+		a.Sure = append(a.Sure, fmt.Sprintf("%s limit what this card can be used for; they are listed below.", format.Count(n, "warning", "warnings")))
 	}
 	return a
 }

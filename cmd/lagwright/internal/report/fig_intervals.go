@@ -3,8 +3,6 @@ package report
 import (
 	"fmt"
 	"strings"
-	"unicode"
-	"unicode/utf8"
 
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/fit"
@@ -70,21 +68,4 @@ func profileOf(all []Profile, name string) *Profile {
 		}
 	}
 	return nil
-}
-
-// parameterName is a parameter's name as people say it: "dead_time" is "Dead time".
-func parameterName(name string) string {
-	s := strings.ReplaceAll(format.Text(name), "_", " ")
-	if rest, ok := strings.CutPrefix(s, "lag"); ok && rest != "" {
-		s = "lag " + rest
-	}
-	return sentenceCase(s)
-}
-
-func sentenceCase(s string) string {
-	r, size := utf8.DecodeRuneInString(s)
-	if size == 0 || r == utf8.RuneError {
-		return s
-	}
-	return string(unicode.ToUpper(r)) + s[size:]
 }

@@ -237,12 +237,13 @@ func (l *looped) poles() *Poles {
 	return out
 }
 
-// dominant keeps the upper poles of the first three or fewer.
+// dominant keeps the rightmost pole and up to two more that decay at most four
+// times as fast.
 func dominant(f tune.LoopFigures) []complex128 {
 	const most = 3
 	var out []complex128
 	for _, z := range f.Poles {
-		if imag(z) < 0 || len(out) > 0 && finite(f.PhaseCross) && cmplx.Abs(z) > 2*f.PhaseCross {
+		if imag(z) < 0 || len(out) > 0 && (cmplx.Abs(z) > 2*f.PhaseCross || real(z) < 4*real(out[0])) {
 			continue
 		}
 		if out = append(out, z); len(out) == most {

@@ -46,16 +46,16 @@ func trustLead(b *Bundle) string {
 		rows += len(r.T)
 		length += span(r.T)
 	}
-	s := fmt.Sprintf("%s with %s over %s.", sentenceCase(format.Count(len(b.Runs), "run", "runs")),
+	s := fmt.Sprintf("%s with %s over %s.", format.Count(len(b.Runs), "run", "runs"),
 		format.Count(rows, "row", "rows"), format.Duration(length))
 	if m := b.model(); m != nil {
 		s += fmt.Sprintf(" The model explains it to %s rms (fit %s %%).", format.Amount(m.RMSE, kelvin(b.Card.Units.Temperature), 2), format.Short(m.FitPercent, 3))
 	}
 	if b.Card != nil && len(b.Card.Warnings) > 0 {
-		s += fmt.Sprintf(" %s came with the fit, see what to watch for.", sentenceCase(format.Count(len(b.Card.Warnings), "warning", "warnings")))
+		s += fmt.Sprintf(" %s came with the fit, see what to watch for.", format.Count(len(b.Card.Warnings), "warning", "warnings"))
 	}
 	if n := len(remarksOf(b.Runs)); n > 0 {
-		return s + fmt.Sprintf(" %s about the recording:", sentenceCase(format.Count(n, "remark", "remarks")))
+		return s + fmt.Sprintf(" %s about the recording:", format.Count(n, "remark", "remarks"))
 	}
 	return s + " Nothing had to be mended or set aside."
 }

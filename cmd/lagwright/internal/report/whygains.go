@@ -20,7 +20,7 @@ func whyGains(b *Bundle) *section {
 	if g.Nominal != nil || g.Worst != nil {
 		s.Blocks = append(s.Blocks, block{Table: metricsTable(g)})
 	}
-	for _, f := range loopFigures(b.Loop, g) {
+	for _, f := range LoopFigures(b.Loop, g) {
 		s.Blocks = append(s.Blocks, block{Figure: picturesOf(f)})
 	}
 	if b.loopError != "" {
@@ -72,7 +72,9 @@ func scheduleTable(g *tune.Gains) *table {
 	return t
 }
 
-func loopFigures(l *Loop, g *tune.Gains) []*Figure {
+// LoopFigures draws what a loop has: step and load response, sensitivity,
+// poles.
+func LoopFigures(l *Loop, g *tune.Gains) []*Figure {
 	if l == nil {
 		return nil
 	}
