@@ -3,6 +3,8 @@ package data
 import (
 	"bytes"
 	"context"
+	"encoding/csv"
+	"io"
 	"math"
 	"os"
 	"path/filepath"
@@ -91,4 +93,40 @@ func BenchmarkReadParquet(b *testing.B) {
 		b.Fatal(err)
 	}
 	benchFile(b, path, benchRows)
+}
+
+// BenchmarkStandardLibrary reads the same text with encoding/csv and
+// strconv.ParseFloat, for the ratio.
+func BenchmarkStandardLibrary(b *testing.B) {
+	t, u, y := dryerLog(benchRows)
+	text := csvText(t, u, y, plainSeconds)
+	b.ReportAllocs()
+	for b.Loop() {
+		r := csv.NewReader(bytes.NewReader(text))
+		r.ReuseRecord = true
+		if _, err := r.Read(); err != nil {
+			b.Fatal(err)
+		}
+		var cols [3][]float64
+		for {
+			row, err := r.Read()
+			if err == io.EOF {
+				break
+			}
+			if err != nil {
+				b.Fatal(err)
+			}
+			for i, cell := range row {
+				v, err := strconv.ParseFloat(cell, 64)
+				if err != nil {
+					b.Fatal(err)
+				}
+				cols[i] = append(cols[i], v)
+			}
+		}
+		if len(cols[2]) != benchRows {
+			b.Fatalf("%d rows, want %d", len(cols[2]), benchRows)
+		}
+	}
+	b.ReportMetric(b.Elapsed().Seconds()/float64(b.N)/benchRows*1e9, "ns/row")
 }
