@@ -41,7 +41,7 @@ func (r *Replay) writeHead(b *strings.Builder) {
 	}
 	b.WriteString("\n")
 	if s.Distrusted > 0 {
-		fmt.Fprintf(b, "do not trust this model on %d runs: replayed under the gains then in force it does not give the log\n", s.Distrusted)
+		fmt.Fprintf(b, "do not trust this model on %s: replayed under the gains then in force it does not give the log\n", counted(s.Distrusted, "run"))
 	}
 	b.WriteString("\n")
 }
@@ -105,6 +105,14 @@ func writeNotes(b *strings.Builder, runs []*RunReplay) {
 		}
 	}
 	b.WriteString("\n")
+}
+
+// counted writes "1 run", "2 runs".
+func counted(n int, what string) string {
+	if n == 1 {
+		return "1 " + what
+	}
+	return fmt.Sprintf("%d %ss", n, what)
 }
 
 func (r *RunReplay) title() string {

@@ -19,7 +19,7 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 		warn("no setpoint move in this run: settling and overshoot are not judged")
 	}
 	if f.small > 0 {
-		warn("%d setpoint moves are too small against the noise (%s) to judge settling", f.small, quantity(f.allowance, p.units.temperature))
+		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.temperature))
 	} else if f.moves > 0 && f.allowance > 0 {
 		warn("settling is judged into the band widened by %s for noise and resolution, so it is told rather too short", quantity(f.allowance, p.units.temperature))
 	}
