@@ -91,13 +91,17 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 			return l, nil, err
 		}
 	}
+	var notes []Note
 	for _, r := range []role{roleInput, roleTemp} {
 		if l[r] >= 0 {
 			continue
 		}
 		found := bestByName(cols, taken, r)
-		if len(found) > 1 {
-			found = byContent(cols, found, r)
+		if r == roleInput && len(found) > 1 {
+			if only := stepwiseAmong(cols, found); only >= 0 {
+				found = []int{only}
+				notes = append(notes, contentNote(cols[only], r))
+			}
 		}
 		if len(found) > 1 {
 			return l, nil, ambiguous(cols, found, r)
@@ -106,7 +110,7 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 			l[r], taken[found[0]] = found[0], true
 		}
 	}
-	notes := assignOptional(cols, &l, taken)
+	notes = append(notes, assignOptional(cols, &l, taken)...)
 	more, err := assignByContent(cols, &l, taken)
 	return l, append(notes, more...), err
 }
@@ -323,19 +327,26 @@ func roleOf(c column) (role, int) {
 	return roleNone, 0
 }
 
-// byContent narrows candidates of equal name: an input moves in steps, so it
-// repeats itself from row to row; a temperature does not.
-func byContent(cols []column, found []int, r role) []int {
-	var fit []int
+// stepwiseAmong picks the only candidate for the input that moves in steps, as
+// a drive set by hand does and its measured voltage does not; -1 when there is
+// no such one. Temperatures are never told apart by content: the still one
+// may be the outlet before its bump.
+func stepwiseAmong(cols []column, found []int) int {
+	only := -1
 	for _, i := range found {
-		if r == roleInput && isStepwise(cols[i]) || r == roleTemp && !isStepwise(cols[i]) {
-			fit = append(fit, i)
+		if isStepwise(cols[i]) {
+			if only >= 0 {
+				return -1
+			}
+			only = i
 		}
 	}
-	if len(fit) == 1 {
-		return fit
-	}
-	return found
+	return only
+}
+
+func contentNote(c column, r role) Note {
+	return Note{Code: "column-by-content", Text: fmt.Sprintf("column %q was taken for the %s because of what it holds; %s says otherwise",
+		c.label, roleNames[r], flags[r])}
 }
 
 func isStepwise(c column) bool { return c.stepwise > 0.9 }
@@ -373,8 +384,7 @@ func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, erro
 		}
 		l[r] = fit[0]
 		taken[fit[0]] = true
-		notes = append(notes, Note{Code: "column-by-content", Text: fmt.Sprintf("column %q was taken for the %s because of what it holds; %s says otherwise",
-			cols[fit[0]].label, roleNames[r], flags[r])})
+		notes = append(notes, contentNote(cols[fit[0]], r))
 	}
 	return notes, nil
 }

@@ -149,6 +149,18 @@ var quirks = []quirk{
 	}},
 	{file: "two-temperatures.csv", wrong: `2 columns could be the temperature: "outlet_A_degC" (24.1, 24.1, 24.2), "outlet_B_degC" (25.1, 25.1, 25.2); say which with --temp-col`},
 	{file: "two-temperatures.csv", o: Options{TempCol: "OUTLET_B_DEGC"}, y: []float64{25.1, 25.1, 25.2, 25.6, 26.9, 28.3, 29.6, 30.8}},
+	{file: "still-temperature.csv", wrong: `2 columns could be the temperature: "Ch2 (°C)"`},
+	{file: "set-and-measured.csv", t: ramp(24, half), u: headless, y: headlessY, notes: []string{"column-by-content"}, also: func(t *testing.T, r *Run) {
+		if r.Source.Columns.Input != "voltage set (V)" {
+			t.Errorf("input is %q, want the stepwise one", r.Source.Columns.Input)
+		}
+	}},
+	{file: "historian-tags.csv", input: "unit", temp: "unit", start: "2026-01-05T10:00:00Z", notes: []string{"input-unit-unknown", "unit-unknown"}, also: func(t *testing.T, r *Run) {
+		if r.Auto == nil || r.Auto[0] || r.Source.Columns.Setpoint != "TIC-7.SP" {
+			t.Errorf("automatic %v, columns %+v", r.Auto, r.Source.Columns)
+		}
+	}},
+	{file: "start-up-text.csv", y: with(baseY, 0, nan, 1, nan, 2, nan), missing: map[string]int{`text "Startup"`: 3}},
 	{file: "comma.csv", o: Options{TempCol: "inlet"}, wrong: `--temp-col "inlet": there is no such column; the columns are "time_s" (0, 0.5, 1), "drive_V"`},
 
 	// clocks
