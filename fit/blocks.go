@@ -138,61 +138,59 @@ func (r *record) focus(dead, zone float64) *record {
 	})
 }
 
-// noiseRows is the largest number of rows on which a noise shape is judged: of
-// a longer log, equal pieces spread over it. The shape is then known to about
-// a percent.
-const noiseRows = 24000
-
-// residual returns what the plant at p and the linear columns leave of the
-// full log, row by row.
-func (r *record) residual(e *engine, p *point, beta []float64, linear int) []float64 {
-	root := r.root
-	if r.full == nil {
-		r.full = ident.NewSimulator(root.t, root.input)
-	}
+// residual returns what the plant at p and the linear columns leave of the rows
+// lo ≤ k < hi of the full log.
+func (r *record) residual(e *engine, p *point, beta []float64, lo, hi int) []float64 {
+	t, y := r.root.t[lo:hi], r.root.y[lo:hi]
 	lags, dead := e.lags(p.eta), p.eta[e.ng]
-	out := r.full.Response(nil, e.st, lags, dead)
+	sim := ident.NewSimulator(t, r.input)
+	out := sim.Response(nil, e.st, lags, dead)
 	for k := range out {
-		out[k] = root.y[k] - p.gain*out[k] - beta[0]
+		out[k] = y[k] - p.gain*out[k] - beta[0]
 	}
 	j := 1
 	if r.drift {
-		for k, t := range root.t {
-			out[k] -= beta[1] * t
+		for k, v := range t {
+			out[k] -= beta[1] * v
 		}
 		j = 2
 	}
+	first := r.root.t[0]
 	switch r.rest {
 	case earlier:
-		s := ident.NewSimulator(root.t, ident.Input{At: []float64{root.t[0]}, Value: []float64{1}}).Response(nil, e.st, lags, dead)
+		s := ident.NewSimulator(t, ident.Input{At: []float64{first}, Value: []float64{1}}).Response(nil, e.st, lags, dead)
 		for k, v := range s {
 			out[k] -= beta[j] * v
 		}
 	case free:
-		cols := columns(max(e.st.Order(), 1), len(root.t))
-		r.full.FreeStates(cols, e.st, lags, dead)
-		for i := j; i < linear; i++ {
-			for k, v := range cols[i-j] {
-				out[k] -= beta[i] * v
+		cols := columns(max(e.st.Order(), 1), hi)
+		ident.NewSimulator(r.root.t[:hi], r.input).FreeStates(cols, e.st, lags, dead)
+		for i, b := range beta[j:] {
+			for k := range out {
+				out[k] -= b * cols[i][lo+k]
 			}
 		}
 	}
 	return out
 }
 
-// pieces cuts times and residuals down to noiseRows in equal pieces.
-func pieces(t, left []float64) ([]float64, []float64) {
-	n := len(t)
+// noiseRows is the largest number of rows on which a noise shape is judged: of
+// a longer log, equal pieces spread over it. The shape is then known to about
+// a percent.
+const noiseRows = 24000
+
+// pieces are the half-open row ranges on which the noise of a log of n rows is
+// judged.
+func pieces(n int) [][2]int {
 	if n <= noiseRows {
-		return t, left
+		return [][2]int{{0, n}}
 	}
 	const count = 8
 	size := noiseRows / count
-	var ts, ls []float64
+	var out [][2]int
 	for i := range count {
 		lo := i * (n - size) / (count - 1)
-		ts = append(ts, t[lo:lo+size]...)
-		ls = append(ls, left[lo:lo+size]...)
+		out = append(out, [2]int{lo, lo + size})
 	}
-	return ts, ls
+	return out
 }

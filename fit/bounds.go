@@ -17,6 +17,7 @@ type bounded struct {
 	*fitted
 	est       []estimate
 	fine      *polished    // optimum on every row, nil when it is that of fitted
+	written   *Model       // as it stands in the card, once it does
 	members   []member     // linearised posterior over the noise shapes, coinciding lags as one
 	reference [][]float64  // linearised covariance at the shapes in force
 	lin       [][]estimate // per record: the fixed linear columns (baseline, drift)

@@ -165,6 +165,9 @@ func parameter(name, unit string, e estimate) Parameter {
 
 // model writes one fitted structure.
 func (out *outcome) model(b *bounded) Model {
+	if b.written != nil {
+		return *b.written
+	}
 	b.activate()
 	m := Model{Structure: b.st.String(), LogLik: b.loglik, AICc: b.aicc, BIC: b.bic}
 	unit := out.recs[0].run.Units.Temperature
@@ -191,6 +194,7 @@ func (out *outcome) model(b *bounded) Model {
 	}
 	m.Covariance = out.covariance(b)
 	out.residuals(b, &m)
+	b.written = &m
 	return m
 }
 
@@ -259,23 +263,32 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 	for i, t := range b.fitted.tangents() {
 		r := t.rec
 		root := r.root
+		var left []float64
 		if b.fine != nil {
 			p := point{eta: b.fine.eta, gain: b.fine.gain}
-			t.all = r.residual(b.e, &p, b.fine.beta[i], len(b.fine.beta[i]))
+			left = r.residual(b.e, &p, b.fine.beta[i], 0, len(root.t))
+		} else {
+			left = t.all()
 		}
 		m.Samples += len(root.t)
 		mean := 0.0
 		for _, v := range root.y {
 			mean += v / float64(len(root.y))
 		}
-		for k, v := range t.all {
+		for k, v := range left {
 			sse += v * v
 			sst += (root.y[k] - mean) * (root.y[k] - mean)
 		}
-		w := append([]float64(nil), t.all...)
+		w := append([]float64(nil), left...)
 		whitenTimes(w, root.t, r.shape)
-		whitened = append(whitened, w...)
-		lag1 += autocorrelation(t.all, 1)[1] * float64(len(root.t))
+		whitened = append(whitened, w[:min(len(w), noiseRows)]...)
+		if len(root.t) > testRows {
+			m := (len(root.t) + testRows - 1) / testRows
+			pIn = math.Min(pIn, finite(crossCorrelationP(sums(w, m), sums(inputChanges(root), m), max(4, crossLags(root, b)/m)), 1))
+			lag1 += autocorrelation(left, 1)[1] * float64(len(root.t))
+			continue
+		}
+		lag1 += autocorrelation(left, 1)[1] * float64(len(root.t))
 		if p := crossCorrelationP(w, inputChanges(root), crossLags(root, b)); !math.IsNaN(p) {
 			pIn = math.Min(pIn, p)
 		}
@@ -293,6 +306,19 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 	m.Residuals.LjungBoxP = finite(p, 1)
 	m.Residuals.InputCorrelationP = math.Min(1, pIn*float64(len(b.e.recs)))
 	m.Noise = out.noise(b)
+}
+
+// testRows is the number of rows above which the misfit is compared with the
+// input in sums over several rows: a slow misfit shows in them just as well.
+const testRows = 5000
+
+// sums adds up every m values of x.
+func sums(x []float64, m int) []float64 {
+	out := make([]float64, 0, len(x)/m+1)
+	for lo := 0; lo < len(x); lo += m {
+		out = append(out, total(x[lo:min(lo+m, len(x))]))
+	}
+	return out
 }
 
 // finite replaces what is not a number.

@@ -51,12 +51,18 @@ type rowMoments struct {
 }
 
 func momentsOf(h, tc float64, m int) rowMoments {
+	r := rowMoments{phiM: 1, g: 1}
 	if m <= 1 {
-		return rowMoments{phiM: 1, g: 1}
+		return r
 	}
 	phi := math.Exp(-h / tc)
 	one := -math.Expm1(-2 * h / tc) // 1 - phi²
-	var r rowMoments
+	if m&(m-1) == 0 {
+		for ; m > 1; m /= 2 {
+			r = r.doubled(phi, one)
+		}
+		return r
+	}
 	// q is 1 + phi + … + phi^(l), pl is phi^l, l counted from the last sample back.
 	q, pl := 0.0, 1.0
 	n := float64(m)
@@ -71,6 +77,20 @@ func momentsOf(h, tc float64, m int) rowMoments {
 	r.phiM = pl
 	r.g = q / n
 	return r
+}
+
+// doubled is the moments of twice as many samples. The first sample of the
+// second half is phi times the last of the first half plus noise of variance
+// one, and the mean is that of the halves' means.
+func (r rowMoments) doubled(phi, one float64) rowMoments {
+	through := phi*phi*r.vLL + one
+	return rowMoments{
+		phiM: r.phiM * phi * r.phiM,
+		g:    (r.g + r.g*phi*r.phiM) / 2,
+		vLL:  r.phiM*r.phiM*through + r.vLL,
+		vLM:  (r.phiM*phi*r.vLM + r.phiM*r.g*through + r.vLM) / 2,
+		vMM:  (2*r.vMM + 2*r.g*phi*r.vLM + r.g*r.g*through) / 4,
+	}
 }
 
 // kalman walks over the rows of a record and gives the filter's coefficients

@@ -24,8 +24,7 @@ type record struct {
 	rest  initial
 	drift bool
 
-	root *record          // the record at full resolution; itself when nothing is averaged
-	full *ident.Simulator // scratch: the plant at full resolution
+	root *record // the record at full resolution; itself when nothing is averaged
 
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
 
@@ -109,7 +108,7 @@ func (r *record) whole() *record {
 
 // adopt gives c, a fresh set of rows of the same log, what r has been told.
 func (r *record) adopt(c *record) *record {
-	c.start, c.full, c.filter, c.yw, c.basis, c.fixed = nil, nil, filter{}, nil, nil, nil
+	c.start, c.filter, c.yw, c.basis, c.fixed = nil, filter{}, nil, nil, nil
 	c.shape, c.weight, c.sigma2 = r.shape, r.weight, r.sigma2
 	c.model(r.rest, r.drift)
 	return c
@@ -157,7 +156,7 @@ func (r *record) clone() *record {
 	if r.start != nil {
 		c.start = r.start.Clone()
 	}
-	c.filter, c.full = filter{}, nil
+	c.filter = filter{}
 	c.yw, c.basis = nil, nil
 	c.setShape(r.shape)
 	return &c

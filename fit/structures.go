@@ -365,6 +365,7 @@ func (r *record) likelihood(t *tangent, part float64) float64 {
 	if !r.averagesRows() {
 		return logLikelihood(part, r.filter.logdet, len(r.t))
 	}
-	sum, logdet := whitenTimes(append([]float64(nil), t.all...), r.root.t, r.shape)
-	return logLikelihood(sum, logdet, len(t.all))
+	all := t.all()
+	sum, logdet := whitenTimes(all, r.root.t, r.shape)
+	return logLikelihood(sum, logdet, len(all))
 }
