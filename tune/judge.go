@@ -126,7 +126,7 @@ func (t *task) worstOf(f stepFigures) (violation float64, name string) {
 
 // setpoint runs the setpoint step of the task.
 func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine float64) (stepFigures, error) {
-	plan := l.planAt(max(f.crossover, 1/l.spread()), fine)
+	plan := l.planAt(f.crossover, fine)
 	plan.rest = min(1e-3, t.band/10)
 	if fine < searchStep {
 		plan.rest /= 20
@@ -141,7 +141,7 @@ func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine fl
 // load runs a unit load step, limits aside.
 func (t *task) load(s *scenario, c law, f quickFigures, fine float64) (stepFigures, error) {
 	l := newOpenLoop(s.p, c, s.scan)
-	plan := l.planAt(max(f.crossover, 1/l.spread()), fine)
+	plan := l.planAt(f.crossover, fine)
 	plan.rest = 1e-4
 	sim, err := s.loop(plan.step)
 	if err != nil {

@@ -2,6 +2,7 @@ package tune
 
 import (
 	"math"
+	"slices"
 
 	"lagwright/ident"
 )
@@ -143,9 +144,15 @@ func (l *openLoop) spread() float64 {
 	return spread
 }
 
-// planAt is plan for a known highest frequency w, rad/s.
+// planAt is plan for a known highest gain crossover w, rad/s, 0 for none.
+// Where dead time dominates the output moves faster than the loop does: in
+// the time of the longest lag, once every dead time.
 func (l *openLoop) planAt(w, fine float64) runPlan {
 	spread := l.spread()
+	w = max(w, 1/spread)
+	if l.delay > 0 && len(l.lags) > 0 {
+		w = max(w, min(2/slices.Max(l.lags), 3/l.delay))
+	}
 	return runPlan{
 		step:    fine / w,
 		quiet:   l.delay + min(spread, 20/w),

@@ -47,7 +47,7 @@ func trace(p ident.Plant, g *Gains, q Requirement, input, temperature, r, d floa
 	if !f.Stable {
 		return nil, ErrUnstable
 	}
-	plan := l.planAt(max(f.Crossover, 1/l.spread()), reportStep)
+	plan := l.planAt(f.Crossover, reportStep)
 	sim, err := newLoopSim(p, g.Scan, plan.step)
 	if err != nil {
 		return nil, err
