@@ -6,9 +6,11 @@ import (
 	"strings"
 )
 
-// Unit writes a unit of a file as people do: degC is °C, V2 is V².
+// Unit writes a unit of a file as people do: degC is °C, V2 is V². No unit is
+// long; what is is cut.
 func Unit(u string) string {
-	return unitNames.Replace(Text(u))
+	const longest = 24
+	return Clip(unitNames.Replace(Text(u)), longest)
 }
 
 var unitNames = strings.NewReplacer(

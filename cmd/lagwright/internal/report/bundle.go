@@ -11,7 +11,8 @@ import (
 // page; a bundle of a card alone, or of runs alone, makes a page of its own.
 type Bundle struct {
 	Runs   []*data.Run
-	Curves []*fit.Curves // the card's model beside each of Runs; nil where there is none
+	Curves []*fit.Curves      // the card's model beside each of Runs; nil where there is none
+	Checks []*fit.CheckReport // beside each of Runs; nil where there is none
 	Card   *fit.Card
 	Gains  *tune.Gains
 	Replay *validate.Replay
@@ -43,6 +44,14 @@ func (b *Bundle) model() *fit.Model {
 func (b *Bundle) curves(run int) *fit.Curves {
 	if run < len(b.Curves) {
 		return b.Curves[run]
+	}
+	return nil
+}
+
+// check is that of a run, nil where there is none.
+func (b *Bundle) check(run int) *fit.CheckReport {
+	if run < len(b.Checks) {
+		return b.Checks[run]
 	}
 	return nil
 }

@@ -86,6 +86,9 @@ func firstDifference(want, got string) string {
 // a part that is missing leaves no trace.
 func TestPageSections(t *testing.T) {
 	all := sampleBundle()
+	if !strings.Contains(pageOf(t, all), "With care. 1 run") {
+		t.Error("a doubtful verdict does not lead")
+	}
 	ids := regexp.MustCompile(`<section id="([a-z]+)"`)
 	for _, c := range []struct {
 		name   string
@@ -221,6 +224,9 @@ func hostileBundle() Bundle {
 		p.File, p.Name, p.SHA256, p.Reasons, p.Warnings = hostile, hostile, hostile, []string{hostile}, []string{hostile}
 	}
 	b.Tool, b.Command = hostile, hostile
+	b.Checks[0].Loop = fit.Loop{State: hostile, Reason: hostile}
+	b.Checks[0].Verdict[0] = fit.Verdict{Parameter: hostile, Verdict: hostile, Reason: hostile, Cures: []string{hostile}}
+	b.Checks[0].Caution = []string{hostile}
 	return b
 }
 

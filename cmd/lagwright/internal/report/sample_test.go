@@ -280,11 +280,22 @@ func sampleDrift() *validate.Drift {
 	return d
 }
 
+func sampleCheck() *fit.CheckReport {
+	return &fit.CheckReport{
+		Loop: fit.Loop{State: "open", Reason: "the input does not follow the temperature"},
+		Verdict: []fit.Verdict{
+			{Parameter: "gain", Verdict: "good", Bound: ptr(1.1), Reason: "both plateaus are in the log"},
+			{Parameter: "lags", Verdict: "good", Bound: ptr(3.6)},
+			{Parameter: "dead_time", Verdict: "doubtful", Bound: ptr(6.2), Reason: "a row every 500 ms is coarse", Cures: []string{"log every 200 ms", "repeat the bump"}},
+		},
+	}
+}
+
 func sampleBundle() Bundle {
 	r, c := sampleRun(1400)
 	card, g := sampleCard(), sampleGains()
 	return Bundle{
-		Runs: []*data.Run{r}, Curves: []*fit.Curves{c}, Card: card, Gains: g, Replay: sampleReplay(g), Drift: sampleDrift(),
+		Runs: []*data.Run{r}, Curves: []*fit.Curves{c}, Checks: []*fit.CheckReport{sampleCheck()}, Card: card, Gains: g, Replay: sampleReplay(g), Drift: sampleDrift(),
 		Profiles: sampleProfiles(&card.Models[0]), Loop: sampleLoop(),
 		Tool: "lagwright (devel)", Command: "lagwright run dryer2-bump.csv --settling 60s --overshoot 8% --ms 1.7 --input-max 10 --rand 1",
 	}

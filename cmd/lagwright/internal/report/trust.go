@@ -31,7 +31,12 @@ func trust(b *Bundle) *section {
 			break
 		}
 		c := b.curves(i)
-		s.Blocks = append(s.Blocks, block{Heading: runHeading(b.Runs, i), Figure: picturesOf(LogFigure(r, c, m))})
+		heading := runHeading(b.Runs, i)
+		if k := b.check(i); k != nil && len(checked(k)) > 0 {
+			s.Blocks = append(s.Blocks, block{Heading: heading, List: listOf(checked(k))})
+			heading = ""
+		}
+		s.Blocks = append(s.Blocks, block{Heading: heading, Figure: picturesOf(LogFigure(r, c, m))})
 		if c != nil && m != nil && len(c.Residual) > 0 {
 			s.Blocks = append(s.Blocks, block{Figure: picturesOf(ResidualFigure(r, c, m))})
 		}
@@ -46,7 +51,7 @@ func trustLead(b *Bundle) string {
 		rows += len(r.T)
 		length += span(r.T)
 	}
-	s := fmt.Sprintf("%s with %s over %s.", format.Count(len(b.Runs), "run", "runs"),
+	s := verdictWords(b.Checks) + fmt.Sprintf("%s with %s over %s.", format.Count(len(b.Runs), "run", "runs"),
 		format.Count(rows, "row", "rows"), format.Duration(length))
 	if m := b.model(); m != nil {
 		s += fmt.Sprintf(" The model explains it to %s rms (fit %s %%).", format.Amount(m.RMSE, kelvin(b.Card.Units.Temperature), 2), format.Short(m.FitPercent, 3))

@@ -57,6 +57,11 @@ func watch(b *Bundle) *section {
 // cautions are shown whatever the result says.
 func cautions(b *Bundle) *section {
 	var texts []string
+	for _, c := range b.Checks {
+		if c != nil {
+			texts = append(texts, c.Caution...)
+		}
+	}
 	if b.Card != nil {
 		texts = append(texts, b.Card.Cautions...)
 	}
