@@ -77,6 +77,9 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 	if c.nulRows > 0 {
 		info.note("nul-bytes", c.firstNo["NUL bytes"], "the file holds NUL bytes, as a logger leaves them that lost power")
 	}
+	if !lines.lastNL && c.nulRows == 0 {
+		info.note("no-final-newline", lines.line, "the last line does not end; if the file was cut off, its last value may be wrong")
+	}
 	if c.long != nil {
 		tables, err := c.long.tables(c, o, info)
 		if err != nil {

@@ -136,7 +136,13 @@ func FuzzParquet(f *testing.F) {
 			text[at] ^= flip
 		}
 		text = append([]byte("PAR1"), bytes.TrimPrefix(text[:max(0, len(text)-int(cut))], []byte("PAR1"))...)
+		var before, after runtime.MemStats
+		runtime.ReadMemStats(&before)
 		runs, err := Read(context.Background(), "-", Options{Stdin: bytes.NewReader(text)})
+		runtime.ReadMemStats(&after)
+		if took := after.TotalAlloc - before.TotalAlloc; took > memoryLimit {
+			t.Fatalf("%d bytes took %d bytes of memory", len(text), took)
+		}
 		if err != nil {
 			return
 		}

@@ -108,7 +108,7 @@ var quirks = []quirk{
 	{file: "packed.csv.gz"},
 	{file: "nul-padding.csv", notes: []string{"nul-bytes"}},
 	{file: "nul-inside.csv", t: without(baseT, 2), u: without(baseU, 2), y: without(baseY, 2), notes: []string{"nul-bytes"}, dropped: map[string]int{"NUL bytes": 1}},
-	{file: "no-newline-at-end.csv"},
+	{file: "no-newline-at-end.csv", notes: []string{"no-final-newline"}},
 	{file: "blank-lines.csv"},
 	{file: "comments.csv"},
 
