@@ -166,21 +166,28 @@ func clearOf(value, se float64) bool {
 	return math.Abs(value)/se > normalQuantile(1-misfitLevel/2)
 }
 
-// upDown warns of a gain or lags that differ between steps up and down.
+// upDown warns of a gain or lags that differ between steps up and down,
+// whichever is clearer: a difference of one shows in the other, too.
 func (m misfit) upDown(runs []*data.Run, add warn) {
-	const cure = "hold the model for an average of both: bump both ways about the working point, or fit the bumps one by one with --from and --to"
-	if d, se, ok := m.estimate(runs, m.gainUpDown); ok {
-		d, se = d/m.plant.Gain, se/math.Abs(m.plant.Gain)
-		if clearOf(d, se) && math.Abs(d) > misfitSize {
-			add("up-down-differ", "gain", "the gain of steps up is %s %s than that of steps down (±%s %%): something sets between bumps, or heating and cooling differ; %s",
-				percent(d), moreOrLess(d, "larger", "smaller"), figure(200*se, 2), cure)
-			return // a difference of gain shows in the lags, too
-		}
+	gain, gainSE, ok := m.estimate(runs, m.gainUpDown)
+	if !ok {
+		return
 	}
-	if d, se, ok := m.estimate(runs, m.lagsUpDown); ok && clearOf(d, se) && math.Abs(d) > misfitSize {
-		add("up-down-differ", "lag1", "the lags of steps up are %s %s than those of steps down (±%s %%): heating and cooling differ; %s",
-			percent(d), moreOrLess(d, "longer", "shorter"), figure(200*se, 2), cure)
+	parameter, what, words := "gain", "the gain of steps up is %s %s than that of steps down", [2]string{"larger", "smaller"}
+	d, se := gain/m.plant.Gain, gainSE/math.Abs(m.plant.Gain)
+	if lag, lagSE, ok := m.estimate(runs, m.lagsUpDown); ok && math.Abs(lag)/lagSE > math.Abs(d)/se {
+		parameter, what, words = "lag1", "the lags of steps up are %s %s than those of steps down", [2]string{"longer", "shorter"}
+		d, se = lag, lagSE
 	}
+	if !clearOf(d, se) || math.Abs(d) < misfitSize {
+		return
+	}
+	word := words[0]
+	if d < 0 {
+		word = words[1]
+	}
+	add("up-down-differ", parameter, what+" (±%s %%): heating and cooling differ, or something sets between the bumps; hold the model for an average of both: bump both ways about the working point, or fit the bumps one by one with --from and --to",
+		figure(100*math.Abs(d), 2)+" %", word, figure(200*se, 2))
 }
 
 // curved warns of a gain that changes over the range of the input.
@@ -203,15 +210,6 @@ func (m misfit) curved(runs []*data.Run, units CardUnits, add warn) {
 	}
 	add("curvature", "gain", "the gain changes over the range, from about %s in the lower half of the input (%s to %s) to %s in the upper: one straight line does not hold everywhere; %s",
 		figure(lower, 3), figure(e[0], 3), quantity(e[1], units.Input, 3), figure(upper, 3), hint)
-}
-
-func percent(share float64) string { return figure(100*math.Abs(share), 2) + " %" }
-
-func moreOrLess(v float64, more, less string) string {
-	if v > 0 {
-		return more
-	}
-	return less
 }
 
 // looks says in words where, after the bumps, the log and the model part most:
@@ -254,5 +252,9 @@ func (m misfit) looks(runs []*data.Run, unit string) string {
 		fmt.Sprintf("from %s to %s after a bump", duration(residence), duration(3*residence)),
 		fmt.Sprintf("from %s after a bump on", duration(3*residence)),
 	}[worst]
-	return fmt.Sprintf("%s the log runs %s %s the model", where, quantity(math.Abs(most), unit, 2), moreOrLess(most, "ahead of", "behind"))
+	side := "ahead of"
+	if most < 0 {
+		side = "behind"
+	}
+	return fmt.Sprintf("%s the log runs %s %s the model", where, quantity(math.Abs(most), unit, 2), side)
 }
