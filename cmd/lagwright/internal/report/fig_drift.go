@@ -43,7 +43,7 @@ func driftPanel(p *validate.DriftParameter, x *axis, at []float64) *panel {
 		}
 	}
 	pn.marks = []mark{
-		band{name: "limits", x: at, low: gaps(least), high: gaps(most), ink: inkLogged},
+		band{name: "limits", x: at, low: gaps(least), high: gaps(most), ink: inkLogged, hold: true},
 		trace{name: "level", x: at, y: gaps(centre), ink: inkLogged, hold: true},
 		bars,
 	}

@@ -21,8 +21,14 @@ func trust(b *Bundle) *section {
 		return nil
 	}
 	s := &section{ID: "log", Title: "Can I trust this log?", Lead: trustLead(b)}
+	for i := range min(len(b.Runs), mostDrawn) {
+		if k := b.check(i); k != nil && len(checked(k)) > 0 {
+			s.Blocks = append(s.Blocks, block{Heading: runHeading(b.Runs, i), List: listOf(checked(k))})
+		}
+	}
 	if remarks := remarksOf(b.Runs); len(remarks) > 0 {
-		s.Blocks = append(s.Blocks, block{List: listOf(remarks)})
+		said := format.Count(len(remarks), "remark", "remarks") + " about the recording:"
+		s.Blocks = append(s.Blocks, block{Text: said, List: listOf(remarks)})
 	}
 	m := b.model()
 	for i, r := range b.Runs {
@@ -31,12 +37,7 @@ func trust(b *Bundle) *section {
 			break
 		}
 		c := b.curves(i)
-		heading := runHeading(b.Runs, i)
-		if k := b.check(i); k != nil && len(checked(k)) > 0 {
-			s.Blocks = append(s.Blocks, block{Heading: heading, List: listOf(checked(k))})
-			heading = ""
-		}
-		s.Blocks = append(s.Blocks, block{Heading: heading, Figure: picturesOf(LogFigure(r, c, m))})
+		s.Blocks = append(s.Blocks, block{Heading: runHeading(b.Runs, i), Figure: picturesOf(LogFigure(r, c, m))})
 		if c != nil && m != nil && len(c.Residual) > 0 {
 			s.Blocks = append(s.Blocks, block{Figure: picturesOf(ResidualFigure(r, c, m))})
 		}
@@ -59,10 +60,10 @@ func trustLead(b *Bundle) string {
 	if b.Card != nil && len(b.Card.Warnings) > 0 {
 		s += fmt.Sprintf(" %s came with the fit, see what to watch for.", format.Count(len(b.Card.Warnings), "warning", "warnings"))
 	}
-	if n := len(remarksOf(b.Runs)); n > 0 {
-		return s + fmt.Sprintf(" %s about the recording:", format.Count(n, "remark", "remarks"))
+	if len(remarksOf(b.Runs)) == 0 {
+		s += " Nothing had to be mended or set aside."
 	}
-	return s + " Nothing had to be mended or set aside."
+	return s
 }
 
 func runHeading(runs []*data.Run, i int) string {

@@ -11,7 +11,7 @@ import (
 // parameterName is a parameter's name as people say it: "dead_time" is "Dead time".
 func parameterName(name string) string {
 	s := strings.ReplaceAll(format.Text(name), "_", " ")
-	if rest, ok := strings.CutPrefix(s, "lag"); ok && rest != "" {
+	if rest, ok := strings.CutPrefix(s, "lag"); ok && rest != "" && rest[0] >= '0' && rest[0] <= '9' {
 		s = "lag " + rest
 	}
 	return sentenceCase(s)

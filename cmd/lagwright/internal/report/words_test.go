@@ -10,7 +10,7 @@ func TestSentenceCase(t *testing.T) {
 			t.Errorf("sentenceCase(%q) = %q, want %q", in, got, want)
 		}
 	}
-	for in, want := range map[string]string{"dead_time": "Dead time", "lag2": "Lag 2", "gain": "Gain", "sum_of_lags": "Sum of lags"} {
+	for in, want := range map[string]string{"dead_time": "Dead time", "lag2": "Lag 2", "gain": "Gain", "lags": "Lags", "sum_of_lags": "Sum of lags"} {
 		if got := parameterName(in); got != want {
 			t.Errorf("parameterName(%q) = %q, want %q", in, got, want)
 		}
