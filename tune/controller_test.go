@@ -145,7 +145,7 @@ func TestScanTendsToContinuous(t *testing.T) {
 		task := newTask(Requirement{Scan: scan}, 0, 0)
 		s := newScenario(p, &task, 0)
 		l := newOpenLoop(p, c, scan)
-		f, err := task.setpoint(s, c, &l, s.quick(c), reportStep)
+		f, err := task.setpoint(s, c, &l, s.quick(c), reportStep, math.Inf(1))
 		if err != nil {
 			t.Fatal(err)
 		}

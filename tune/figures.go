@@ -32,7 +32,7 @@ func (t *task) metrics(s *scenario, c law, input float64) *Metrics {
 		m.Damping = finite(dominantDamping(poles, f.PhaseCross))
 	}
 	q := quickFigures{stable: true, crossover: f.Crossover}
-	step, err := t.setpoint(s, c, &l, q, reportStep)
+	step, err := t.setpoint(s, c, &l, q, reportStep, math.Inf(1))
 	if err != nil {
 		return m
 	}

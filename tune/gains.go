@@ -38,6 +38,8 @@ type Gains struct {
 	SquareRoot     *SquareRoot     `json:"square_root,omitempty"`      // power law: gain behind a square root
 	Schedule       []ScheduleEntry `json:"schedule,omitempty"`         // several cards: a set for each
 
+	PoleRegion *RegionDesign `json:"pole_region,omitempty"` // P control: gains that place the poles
+
 	Entry []Entry `json:"entry,omitempty"` // the numbers as entered at the controller
 
 	Candidates []Candidate `json:"candidates,omitempty"` // the table of everything tried

@@ -70,6 +70,10 @@ const (
 	reportStep = 0.05
 )
 
+// patience is the multiple of the settling time asked after which a loop that
+// is still outside the band counts as not settled.
+const patience = 20
+
 // hair is what a figure may pass its limit by, in parts of the limit: the
 // accuracy of the simulation, no more.
 const hair = 2e-4
@@ -87,7 +91,7 @@ func (t *task) meets(s *scenario, c law) bool {
 	if !t.simulates() {
 		return true
 	}
-	fig, err := t.setpoint(s, c, &l, f, searchStep)
+	fig, err := t.setpoint(s, c, &l, f, searchStep, t.settling)
 	return err == nil && t.stepViolation(fig) <= hair
 }
 
@@ -109,7 +113,7 @@ func (t *task) worstOf(f stepFigures) (violation float64, name string) {
 	}
 	if !math.IsInf(t.settling, 1) {
 		if math.IsNaN(f.settling) {
-			note(100, "settling")
+			note(patience, "settling")
 		} else {
 			note(f.settling/t.settling-1, "settling")
 		}
@@ -124,9 +128,11 @@ func (t *task) worstOf(f stepFigures) (violation float64, name string) {
 	return violation, name
 }
 
-// setpoint runs the setpoint step of the task.
-func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine float64) (stepFigures, error) {
+// setpoint runs the setpoint step of the task; it gives up when the
+// temperature is outside the band after deadline.
+func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine, deadline float64) (stepFigures, error) {
 	plan := l.planAt(f.crossover, fine)
+	plan.deadline = deadline
 	plan.rest = min(1e-3, t.band/10)
 	if fine < searchStep {
 		plan.rest /= 20
@@ -179,7 +185,7 @@ func (t *task) judge(s *scenario, c law, fine float64) outcome {
 		}
 	}
 	var err error
-	if o.step, err = t.setpoint(s, c, &l, o.quick, fine); err != nil {
+	if o.step, err = t.setpoint(s, c, &l, o.quick, fine, patience*t.settling); err != nil {
 		o.violation, o.missed = 1000, "simulation"
 		return o
 	}

@@ -41,6 +41,7 @@ type watch struct {
 	stirring     float64 // last time not at rest
 	horizon      float64
 	rest         float64 // remaining deviation, a fraction of the largest so far, at which a run has ended
+	deadline     float64 // time after which being outside the band ends the run
 }
 
 func (w *watch) see(s sample) bool {
@@ -56,7 +57,8 @@ func (w *watch) see(s sample) bool {
 		return true
 	}
 	w.add(s)
-	return w.n < maxSamples && s.t < w.horizon && (s.t-w.stirring < w.quiet || s.t < 2*w.quiet)
+	late := s.t > w.deadline && math.Abs(s.y-w.target) > w.band
+	return !late && w.n < maxSamples && s.t < w.horizon && (s.t-w.stirring < w.quiet || s.t < 2*w.quiet)
 }
 
 func (w *watch) add(s sample) {
@@ -123,7 +125,7 @@ func (w *watch) parabola(a, b, c sample) {
 // A runPlan is how long (s) and how finely a stable loop is simulated.
 type runPlan struct {
 	step, horizon, quiet float64
-	rest                 float64 // see watch
+	rest, deadline       float64 // see watch
 }
 
 // plan returns the plan for a stable loop; fine is the step times the highest
@@ -158,6 +160,8 @@ func (l *openLoop) planAt(w, fine float64) runPlan {
 		quiet:   l.delay + min(spread, 20/w),
 		horizon: 400 * max(spread, 1/w),
 		rest:    2e-5,
+
+		deadline: math.Inf(1),
 	}
 }
 
@@ -225,7 +229,7 @@ func loadStep(s *loopSim, p ident.Plant, c law, d float64, plan runPlan) stepFig
 }
 
 func newWatch(p ident.Plant, r, target, uEnd float64, plan runPlan) *watch {
-	w := &watch{r: r, target: target, uEnd: uEnd, quiet: plan.quiet, horizon: plan.horizon, rest: plan.rest}
+	w := &watch{r: r, target: target, uEnd: uEnd, quiet: plan.quiet, horizon: plan.horizon, rest: plan.rest, deadline: plan.deadline}
 	w.scale = math.Abs(p.Gain)
 	if p.Structure.Integrating() {
 		w.scale *= plan.quiet

@@ -35,7 +35,7 @@ func TestStepsAgainstIndependentScript(t *testing.T) {
 			task := newTask(Requirement{}, 0, 0)
 			s := newScenario(p, &task, 0)
 			l := newOpenLoop(p, c, 0)
-			step, err := task.setpoint(s, c, &l, s.quick(c), reportStep)
+			step, err := task.setpoint(s, c, &l, s.quick(c), reportStep, math.Inf(1))
 			if err != nil {
 				t.Fatal(err)
 			}
@@ -51,7 +51,7 @@ func TestStepsAgainstIndependentScript(t *testing.T) {
 			}
 			near(t, "load peak", load.peak, number(t, row[12]), tolerance*number(t, row[12]))
 
-			coarse, err := task.setpoint(s, c, &l, s.quick(c), searchStep)
+			coarse, err := task.setpoint(s, c, &l, s.quick(c), searchStep, math.Inf(1))
 			if err != nil {
 				t.Fatal(err)
 			}

@@ -121,7 +121,7 @@ func largest(guess, floor, ceiling, ratio float64, holds func(float64) bool) (kc
 func (s *search) proportional() design {
 	try := func(kc float64) law { return s.law(kc, math.Inf(1), 0) }
 	largestFrom := func(guess float64) (float64, bool) {
-		return largest(guess, s.kc*1e-3, s.kc*loopCeiling, s.fine(), func(kc float64) bool {
+		return largest(guess, s.kc*5e-3, s.kc*loopCeiling, s.fine(), func(kc float64) bool {
 			return !cancelled(s.ctx) && s.on.holds(try(kc), s.assurance)
 		})
 	}
@@ -230,7 +230,7 @@ func (s *search) overTimes(on *ensemble, part float64, scan, refine int) design 
 // atTimes finds the gain for given times.
 func (s *search) atTimes(on *ensemble, ti, part, guess float64) design {
 	try := func(kc float64) law { return s.law(kc, ti, part*ti) }
-	kc, ok := largest(guess, s.kc*1e-3, s.kc*loopCeiling, s.fine(), func(kc float64) bool {
+	kc, ok := largest(guess, s.kc*5e-3, s.kc*loopCeiling, s.fine(), func(kc float64) bool {
 		return !cancelled(s.ctx) && on.holds(try(kc), s.assurance)
 	})
 	if !ok {

@@ -120,6 +120,9 @@ func (g *Gains) writeMore(b *bufio.Writer) {
 	if s := g.SquareRoot; s != nil {
 		fmt.Fprintf(b, "\nBehind a square root of the output: gain %.4g %s, the times as above.\n", s.Kc, plain(s.Unit))
 	}
+	if g.PoleRegion != nil {
+		g.PoleRegion.writeText(b)
+	}
 	if len(g.Schedule) == 0 {
 		return
 	}
@@ -134,6 +137,26 @@ func (g *Gains) writeMore(b *bufio.Writer) {
 		fmt.Fprintf(t, "  %s\t%.4g to %.4g\t%.4g\t%s\t%s\t%s\n", plain(e.Card), e.Input[0], e.Input[1], e.Kc, figure(e.Ti, 4), figure(e.Td, 4), cost)
 	}
 	t.Flush()
+}
+
+func (d *RegionDesign) writeText(b *bufio.Writer) {
+	fmt.Fprint(b, "\nP control: poles left of ")
+	fmt.Fprintf(b, "%.3g 1/s and damping ratio of %.3g or more\n", -d.Region.sigma(), d.Region.Damping)
+	list := func(where string, set []GainInterval) {
+		var parts []string
+		for _, g := range set {
+			parts = append(parts, fmt.Sprintf("%.4g to %.4g", g.Low, g.High))
+		}
+		if len(parts) == 0 {
+			parts = []string{"no gain"}
+		}
+		fmt.Fprintf(b, "  %s: %s\n", where, strings.Join(parts, ", "))
+	}
+	list("on the best fit", d.Nominal)
+	list(fmt.Sprintf("on %.4g%% of the plausible plants", 100*d.Assurance), d.Plausible)
+	if len(d.Nominal) == 0 {
+		fmt.Fprintf(b, "  nearest: gain %.4g, which settles in about %.3g s with a damping ratio of %.2g\n", d.Best, d.BestSettling, d.BestDamping)
+	}
 }
 
 // String says the requirement in a few words.

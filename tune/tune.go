@@ -90,6 +90,7 @@ func Tune(ctx context.Context, cards []*fit.Card, q Requirement, o Options) (*Ga
 		t.schedule(ctx, g)
 	}
 	t.powerLaw(g)
+	t.poleRegion(g)
 	return g, ctx.Err()
 }
 
@@ -430,6 +431,27 @@ func label(c *fit.Card) string {
 		return ""
 	}
 	return c.Source[0].File
+}
+
+// poleRegion adds, where P control is in question and settling or damping is
+// asked, the gains that put the poles where they ask for.
+func (t *tuning) poleRegion(g *Gains) {
+	q := t.requirement
+	if q.Settling == nil && q.Damping == nil || t.options.Rule != "" || t.options.Controller != "" && t.options.Controller != "p" {
+		return
+	}
+	r := PoleRegion{Band: q.Band}
+	if q.Settling != nil {
+		r.Settling = *q.Settling
+	}
+	if q.Damping != nil {
+		r.Damping = *q.Damping
+	}
+	var plants []ident.Plant
+	for _, s := range t.plausible.scenarios {
+		plants = append(plants, s.p)
+	}
+	g.PoleRegion = DesignPoleRegion(t.ops[0].nominal, plants, r, t.options.Assurance)
 }
 
 // powerLaw says over which inputs the gains hold when the heat goes with the

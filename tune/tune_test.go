@@ -151,3 +151,126 @@ func BenchmarkTune(b *testing.B) {
 		}
 	}
 }
+
+// scaledCard is a card whose gains are all multiplied.
+func scaledCard(t *testing.T, seed uint64, by float64, file string) *fit.Card {
+	c := card(t, seed, 0.04)
+	c.Models[0].Parameters[0].Value *= by
+	for _, v := range c.Plants.Values {
+		v[0] *= by
+	}
+	c.Source = []fit.CardSource{{File: file}}
+	return c
+}
+
+// One set for two operating points holds on both; where the gains differ much
+// a schedule is proposed, each of whose sets is better on its own card.
+func TestTuneSeveralCards(t *testing.T) {
+	q := Requirement{Ms: ptr(1.6), Overshoot: ptr(15)}
+	cards := []*fit.Card{scaledCard(t, 3, 1, "low.csv"), scaledCard(t, 3, 2.5, "high.csv")}
+	g, err := Tune(context.Background(), cards, q, Options{Controller: "pi", Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if !g.Meets {
+		t.Fatalf("no common set: %v", g.Reasons)
+	}
+	for i, c := range cards {
+		op, err := operate(c, nil)
+		if err != nil {
+			t.Fatal(err)
+		}
+		task := newTask(g.Requirement, op.input, op.temperature)
+		e := newEnsemble(scenarios(op.plants, &task), 2)
+		common, err := g.law()
+		if err != nil {
+			t.Fatal(err)
+		}
+		if !e.holds(common, 0.95) {
+			t.Errorf("the common set does not hold on card %d", i)
+		}
+	}
+	if len(g.Schedule) != 2 || g.Schedule[0].Card != "low.csv" {
+		t.Fatalf("schedule %+v", g.Schedule)
+	}
+	if low, high := g.Schedule[0], g.Schedule[1]; !(low.Kc > 2*high.Kc) || !(*low.Cost > 1.5) || !(*high.Cost > 0.95) {
+		t.Errorf("schedule %+v and %+v", low, high)
+	}
+	same, err := Tune(context.Background(), []*fit.Card{cards[0], scaledCard(t, 3, 1.05, "near.csv")}, q, Options{Controller: "pi", Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(same.Schedule) != 0 {
+		t.Errorf("a schedule for two cards that hardly differ: %+v", same.Schedule)
+	}
+}
+
+// Under the power law the plant's gain goes with the input: the gains say
+// where they hold, and behind a square root they are those of the linear loop.
+func TestTunePowerLaw(t *testing.T) {
+	c := card(t, 3, 0.04)
+	c.InputLaw = "power"
+	g, err := Tune(context.Background(), []*fit.Card{c}, Requirement{Ms: ptr(1.6), Overshoot: ptr(10)}, Options{Controller: "pi", Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if *g.OperatingInput != 6 { // the upper end: the highest gain
+		t.Errorf("operating input %g", *g.OperatingInput)
+	}
+	if g.HoldsOver == nil || g.HoldsOver[0] >= 6 || g.HoldsOver[1] < 6 || g.HoldsOver[1] > 7 {
+		t.Errorf("holds over %v", g.HoldsOver)
+	}
+	near(t, "gain behind a square root", g.SquareRoot.Kc, g.Kc*2*6, 1e-12)
+	linear := card(t, 3, 0.04)
+	ref, err := Tune(context.Background(), []*fit.Card{linear}, Requirement{Ms: ptr(1.6), Overshoot: ptr(10)}, Options{Controller: "pi", Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	// the optimum is flat in the gain, so the two are compared by what is optimised
+	near(t, "load IAE on phi(u)", *g.Nominal.IAE/12, *ref.Nominal.IAE, 0.005**ref.Nominal.IAE)
+}
+
+func TestTunePoleRegion(t *testing.T) {
+	g, err := Tune(context.Background(), []*fit.Card{card(t, 3, 0.04)}, Requirement{Settling: ptr(170), Damping: ptr(0.4)}, Options{Controller: "p", Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	d := g.PoleRegion
+	if d == nil || len(d.Nominal) != 1 || len(d.Plausible) != 1 {
+		t.Fatalf("pole region %+v", d)
+	}
+	if d.Plausible[0].Low < d.Nominal[0].Low || d.Plausible[0].High > d.Nominal[0].High {
+		t.Errorf("plausible %v is not inside nominal %v", d.Plausible, d.Nominal)
+	}
+	if *g.Nominal.Damping < 0.4 {
+		t.Errorf("damping %g of the chosen gain", *g.Nominal.Damping)
+	}
+	var b bytes.Buffer
+	if err := g.WriteText(&b); err != nil {
+		t.Fatal(err)
+	}
+	if !strings.Contains(b.String(), "P control: poles left of") {
+		t.Error("the text does not show the pole region")
+	}
+}
+
+func TestTuneByRule(t *testing.T) {
+	g, err := Tune(context.Background(), []*fit.Card{card(t, 3, 0.04)}, Requirement{}, Options{Rule: "simc", Controller: "pi"})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if g.Rule != "simc" || len(g.Candidates) != 1 || g.Meets {
+		t.Errorf("rule %s, %d candidates, meets %v at Ms 1.6", g.Rule, len(g.Candidates), g.Meets)
+	}
+	if len(g.Reasons) == 0 || !strings.Contains(g.Reasons[0], "Ms") {
+		t.Errorf("reasons %v", g.Reasons)
+	}
+}
+
+func TestTuneStopsWhenCancelled(t *testing.T) {
+	ctx, cancel := context.WithCancel(context.Background())
+	cancel()
+	if _, err := Tune(ctx, []*fit.Card{card(t, 3, 0.04)}, Requirement{}, Options{}); !errors.Is(err, context.Canceled) {
+		t.Errorf("error %v", err)
+	}
+}
