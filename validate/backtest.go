@@ -11,39 +11,37 @@ import (
 	"lagwright/ident"
 )
 
-// A back-test asks of a run logged in closed loop under known gains whether
-// model and controller as stated reproduce it.
+// A back-test asks of a run whether model and controller, as stated, can have
+// made it.
 //
-// Replayed under the same gains with the disturbance taken from the log
-// itself, any plant returns the log, provided the controller is the one that
-// ran: the loop cannot tell a wrong plant from a disturbance. So the two
-// halves are tested apart, each where it can fail:
+// Replayed under the gains it was made with, and with the disturbance taken
+// from the log itself, any plant returns the log, provided the controller is
+// the one that ran: such a replay cannot tell a wrong plant from a
+// disturbance. So the two halves are tested apart, each where it can fail:
 //
 //   - the controller: replayed in closed loop, does it choose the logged input?
 //   - the plant: driven by the logged input, does it give the logged
-//     temperature within the card's bounds and noise?
+//     temperature within the card's bounds and noise? Where it does not, do
+//     the moves of the setpoint (in manual, of the input) speak for another
+//     gain, dead time or lags, or is it a load, which a replay takes over?
 //
-// A run is reproduced when both hold; then so does any replay of it.
+// A run is reproduced when the controller holds and nothing speaks against
+// the plant; then any replay of it is as good as the model.
 func (p *plan) backTest(ctx context.Context, run *data.Run, all []*course) (*BackTest, error) {
 	b := &BackTest{Stated: p.options.Confidence, Differs: []string{}}
-	if !hasValue(run.Setpoint) {
-		b.Differs = []string{"the log has no setpoint: name its column to test the controller"}
-		return b, nil
-	}
 	courses, err := p.automatic(run)
 	if err != nil {
 		return nil, err
 	}
-	if len(courses) == 0 {
-		b.Differs = []string{fmt.Sprintf("no part of %d rows in automatic", minSegment)}
-		return b, nil
-	}
-	controllerOK, err := p.testController(b, courses)
-	if err != nil {
+	controller, manual := true, len(courses) == 0
+	if manual {
+		courses = all
+		b.Differs = append(b.Differs, "not in automatic with a logged setpoint: only the plant is tested, not the controller")
+	} else if controller, err = p.testController(b, courses); err != nil {
 		return nil, err
 	}
-	plantOK := p.testPlant(b, all)
-	b.Reproduced = controllerOK && plantOK
+	plant := p.testPlant(b, courses, manual)
+	b.Reproduced = controller && plant
 	if !b.Reproduced {
 		b.Differs = append(b.Differs, p.saturation(courses)...)
 		b.Differs = append(b.Differs, p.outside(run)...)
@@ -52,8 +50,11 @@ func (p *plan) backTest(ctx context.Context, run *data.Run, all []*course) (*Bac
 }
 
 // automatic prepares the segments in which the controller was in automatic
-// for the logged gains.
+// for the logged gains; none without a logged setpoint.
 func (p *plan) automatic(run *data.Run) ([]*course, error) {
+	if !hasValue(run.Setpoint) {
+		return nil, nil
+	}
 	only := *run
 	if run.Auto != nil {
 		only.Y = append([]float64(nil), run.Y...)
@@ -65,7 +66,6 @@ func (p *plan) automatic(run *data.Run) ([]*course, error) {
 	}
 	q := *p
 	q.gains = p.logged
-	q.options.Setpoint, q.options.Requirement.SetpointStep = nil, nil
 	parts, _ := segments(&only)
 	var out []*course
 	for _, s := range parts {
@@ -87,7 +87,7 @@ const inputTolerance = 0.02
 func (p *plan) testController(b *BackTest, courses []*course) (ok bool, err error) {
 	r := newRunner(p.law, p.logged, []ident.Plant{p.best})
 	var rows, near int
-	var sumU, sumY, worst, product, square float64
+	var sumU, sumY, worst float64
 	tolerance := inputTolerance * inputRange(courses)
 	for _, c := range courses {
 		y, u := r.buffers(len(c.t))
@@ -105,51 +105,51 @@ func (p *plan) testController(b *BackTest, courses []*course) (ok bool, err erro
 			sumY += (y[i] - c.y[i]) * (y[i] - c.y[i])
 		}
 	}
-	for _, c := range courses {
-		follow, asked, err := p.moveRatio(c)
-		if err != nil {
-			return false, err
-		}
-		product += follow
-		square += asked
-	}
-	b.InputInside = float64(near) / float64(rows)
+	share := float64(near) / float64(rows)
+	b.InputInside = &share
 	b.InputRMSE, b.TempRMSE = finite(math.Sqrt(sumU/float64(rows))), finite(math.Sqrt(sumY/float64(rows)))
-	if b.InputInside >= p.options.Confidence {
+	if share >= p.options.Confidence {
 		return true, nil
 	}
 	text := fmt.Sprintf("the logged gains give another input than was logged: off by up to %s, within %s on %.0f%% of the rows",
-		quantity(worst, p.units.input), quantity(tolerance, p.units.input), 100*b.InputInside)
-	if ratio := product / square; square > 0 && math.Abs(ratio-1) > 0.1 {
-		text += fmt.Sprintf("; the logged moves of the input are about %s times those the gains ask for: look at the gain and its units", number(ratio))
-	} else {
-		text += "; look at integral time, scan time, limits and moves by hand"
+		quantity(worst, p.units.input), quantity(tolerance, p.units.input), 100*share)
+	hint, err := p.controllerHint(courses)
+	b.Differs = append(b.Differs, text+"; "+hint)
+	return false, err
+}
+
+// controllerHint says what to look at when the controller is not reproduced.
+func (p *plan) controllerHint(courses []*course) (string, error) {
+	var product, square float64
+	for _, c := range courses {
+		follow, asked, err := p.moveRatio(c)
+		if err != nil {
+			return "", err
+		}
+		product, square = product+follow, square+asked
 	}
-	b.Differs = append(b.Differs, text)
-	return false, nil
+	if ratio := product / square; square > 0 && math.Abs(ratio-1) > 0.1 {
+		return fmt.Sprintf("the logged moves of the input are about %s times those the gains ask for: look at the gain and its units", number(ratio)), nil
+	}
+	return "look at integral time, scan time, limits and moves by hand", nil
 }
 
 // moveRatio runs the controller on the logged temperature and returns the
 // sums Σ(logged move × asked move) and Σ(asked move²) of the input.
 func (p *plan) moveRatio(c *course) (product, square float64, err error) {
-	r := newRunner(p.law, p.logged, []ident.Plant{p.best})
 	if !c.even || c.lattice.scan > 1 {
 		return 0, 0, nil // moves row by row are not the controller's
 	}
-	_, control, err := r.ready(c, 0)
+	_, control, err := newRunner(p.law, p.logged, []ident.Plant{p.best}).ready(c, 0)
 	if err != nil {
 		return 0, 0, err
 	}
 	control.Start(c.before, c.y[0], c.u[0])
 	last := c.u[0]
 	for i := 1; i < len(c.t); i++ {
-		var u float64
+		u := last
 		for k := (i-1)*c.lattice.row + 1; k <= i*c.lattice.row; k++ {
-			sp := c.r[i-1]
-			if k == i*c.lattice.row {
-				sp = c.r[i]
-			}
-			u = control.Next(sp, c.log[k])
+			u = control.Next(c.r[k/c.lattice.row], c.log[k])
 		}
 		product += (u - last) * (c.u[i] - c.u[i-1])
 		square += (u - last) * (u - last)
@@ -166,45 +166,65 @@ func inputRange(courses []*course) float64 {
 	return hi - lo
 }
 
-// maxTested bounds the rows on which the plant is tested.
-const maxTested = 5000
-
-// testPlant drives every plausible plant with the logged input, its starting
-// level and starting slope free, and counts the rows at which the logged
-// temperature lies within the band of plants and noise.
-func (p *plan) testPlant(b *BackTest, courses []*course) bool {
+// testPlant drives every plausible plant with the logged input and counts the
+// temperatures within the band of plants and noise; where they are too few it
+// asks whether another plant or a load is the reason.
+func (p *plan) testPlant(b *BackTest, courses []*course, manual bool) (ok bool) {
 	var rows, inside int
 	var span float64
+	worst := departure{}
 	for _, c := range courses {
-		n, in := p.insideBand(c)
+		n, in, far := p.insideBand(c)
 		rows, inside = rows+n, inside+in
 		span += c.t[len(c.t)-1] - c.t[0]
+		if math.Abs(far.size) > math.Abs(worst.size) {
+			worst = far
+		}
 	}
 	b.ShareInside = float64(inside) / float64(rows)
 	// the noise is correlated: so many of the rows are independent
 	independent := min(float64(rows), max(1, span/max(1e-12, 2*p.noise.CorrelationTime)))
-	least := b.Stated - 2*math.Sqrt(b.Stated*(1-b.Stated)/independent)
-	if b.ShareInside >= least {
+	if b.ShareInside >= b.Stated-2*math.Sqrt(b.Stated*(1-b.Stated)/independent) {
 		return true
 	}
 	b.Differs = append(b.Differs, fmt.Sprintf("driven by the logged input the model holds %.0f%% of the temperatures in its %.0f%% band", 100*b.ShareInside, 100*b.Stated))
-	b.Differs = append(b.Differs, p.explain(courses)...)
-	return false
+	s, shown := p.shift(courses, manual)
+	if shown && p.contradicts(s) {
+		b.Differs = append(b.Differs, p.words(s)...)
+		return false
+	}
+	load := fmt.Sprintf("%s at %s s that the input did not cause, such as a load: the replay takes it over", quantity(worst.size, p.units.difference), number(worst.at))
+	if !shown {
+		load += "; no setpoint move shows the plant, so this run does not test it"
+	}
+	b.Differs = append(b.Differs, load)
+	return true
 }
 
+// A departure of the log from the best-fit plant, and when.
+type departure struct{ size, at float64 }
+
+// maxTested bounds the rows of a course on which the plant is tested.
+const maxTested = 5000
+
 // insideBand counts rows whose temperature lies in the middle share of the
-// distribution that plants and noise give it.
-func (p *plan) insideBand(c *course) (rows, inside int) {
+// distribution that plants and noise give it, each plant starting from the
+// level of the log's first rows.
+func (p *plan) insideBand(c *course) (rows, inside int, far departure) {
 	stride := 1 + len(c.t)/maxTested
 	simulator := ident.NewSimulator(c.t, ident.HeldInput(c.t, c.u, p.law))
 	below := make([]float64, len(c.t))
-	sd := math.Hypot(p.noise.SD, 1e-9*max(1, math.Abs(c.y[0])))
 	unit := make([]float64, len(c.t))
-	for _, g := range p.plants {
+	sd := math.Hypot(p.noise.SD, 1e-9*max(1, math.Abs(c.y[0])))
+	for k, g := range append([]ident.Plant{p.best}, p.plants...) {
 		simulator.Response(unit, g.Structure, g.Lags, g.DeadTime)
 		left := p.unexplained(c, g, unit)
 		for i := 0; i < len(left); i += stride {
-			below[i] += distuv.UnitNormal.CDF(left[i] / sd)
+			if k > 0 {
+				below[i] += distuv.UnitNormal.CDF(left[i] / sd)
+			} else if math.Abs(left[i]) > math.Abs(far.size) {
+				far = departure{left[i], c.t[i]}
+			}
 		}
 	}
 	tail := (1 - p.options.Confidence) / 2
@@ -214,5 +234,29 @@ func (p *plan) insideBand(c *course) (rows, inside int) {
 			inside++
 		}
 	}
-	return rows, inside
+	return rows, inside, far
+}
+
+// unexplained returns what plant g, of unit response unit, leaves of the
+// logged temperature after a level and a start off rest, fading with the
+// longest lag, are fitted along. The level is set by the median in the end, so
+// that a load in a part of the run does not shift the rest.
+func (p *plan) unexplained(c *course, g ident.Plant, unit []float64) []float64 {
+	left := make([]float64, len(unit))
+	for i := range left {
+		left[i] = c.y[i] - g.Gain*unit[i]
+	}
+	ones, fading := p.startColumns(c.t)
+	columns := [][]float64{ones, fading}
+	step := medianInterval(c.t)
+	if beta, _, ok := instrumental(c.t, step, p.cardCorrelation(step), left, columns, columns); ok {
+		for i := range left {
+			left[i] -= beta[0] + beta[1]*fading[i]
+		}
+	}
+	level := median(left)
+	for i := range left {
+		left[i] -= level
+	}
+	return left
 }

@@ -23,6 +23,7 @@ type course struct {
 	t, y, u, r []float64 // time s, temperature with short holes bridged, input, setpoint
 	before     float64   // setpoint the controller starts from
 	rest       float64   // level from which the first setpoint move is measured
+	resumed    bool      // starts after a hole in the run
 
 	scan    float64 // s
 	even    bool    // rows and scans share the lattice
@@ -139,5 +140,5 @@ func interpolate(at, t, y []float64, f func(k int, v float64)) {
 // signal returns the course with another temperature and input as a signal to
 // be measured.
 func (c *course) signal(y, u []float64) signal {
-	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest}
+	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest, resumed: c.resumed}
 }

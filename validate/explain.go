@@ -3,122 +3,157 @@ package validate
 import (
 	"fmt"
 	"math"
-	"slices"
 
 	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/stat/distuv"
 
 	"lagwright/ident"
+	"lagwright/tune"
 )
 
-// unexplained returns what plant g, of unit response unit, leaves of the
-// logged temperature after a starting level and a start off rest that fades
-// with the longest lag have been fitted.
-func (p *plan) unexplained(c *course, g ident.Plant, unit []float64) []float64 {
-	left := make([]float64, len(unit))
-	for i := range left {
-		left[i] = c.y[i] - g.Gain*unit[i]
-	}
-	ones, fading := p.startColumns(c, g)
-	fitted, _, ok := p.leastSquares(c, left, ones, fading)
-	if !ok {
-		return left
-	}
-	for i := range left {
-		left[i] -= fitted[0] + fitted[1]*fading[i]
-	}
-	return left
+// A plantShift is by how much a run speaks for another plant than the card's
+// best fit: gain and lags (all in one proportion) as fractions, dead time in
+// s, with the covariance of these estimates.
+type plantShift struct {
+	by         [3]float64 // gain, dead time, lags
+	covariance *mat.SymDense
 }
 
-// startColumns returns a constant and what is left of a start off rest.
-func (p *plan) startColumns(c *course, g ident.Plant) (ones, fading []float64) {
-	ones, fading = make([]float64, len(c.t)), make([]float64, len(c.t))
-	longest := response(g)
-	if len(g.Lags) > 0 {
-		longest = g.Lags[0]
+// shift estimates the plant shift from the rows that follow the moves of the
+// setpoint, each move for itself, and puts the estimates together by their
+// covariances; so a move into which a load falls counts for little.
+//
+// In a log made in closed loop the input answers the disturbance, so least
+// squares would take a load for another plant. Instead the sensitivities to
+// the logged input are weighed by those to an input that owes nothing to the
+// disturbance: the one that the controller, on the card's plant, would have
+// given for the setpoint moves alone (instrumental variables: T. Söderström,
+// P. Stoica, Instrumental Variable Methods for System Identification, 1983,
+// from memory). In manual the moves are those of the input, which is its own
+// instrument. ok is false when nothing shows the plant.
+func (p *plan) shift(courses []*course, manual bool) (s plantShift, ok bool) {
+	n := 3 // gain, dead time, lags
+	if p.best.Structure.NumLags() == 0 {
+		n = 2
 	}
-	for i := range ones {
-		ones[i] = 1
-		fading[i] = math.Exp(-(c.t[i] - c.t[0]) / longest)
-	}
-	return ones, fading
-}
-
-// leastSquares fits y by the columns, all rows whitened for the card's
-// correlated noise by y[i] − ρ·y[i−1], ρ = exp(−Δt/correlation time). It
-// returns coefficients and standard errors; ok is false when the columns
-// cannot be told apart.
-func (p *plan) leastSquares(c *course, y []float64, columns ...[]float64) (beta, se []float64, ok bool) {
-	n, m := len(y)-1, len(columns)
-	if n <= m {
-		return nil, nil, false
-	}
-	a, b := mat.NewDense(n, m, nil), mat.NewVecDense(n, nil)
-	for i := range n {
-		rho := 0.0
-		if p.noise.CorrelationTime > 0 {
-			rho = math.Exp(-(c.t[i+1] - c.t[i]) / p.noise.CorrelationTime)
+	precision, weighted := mat.NewSymDense(n, nil), mat.NewVecDense(n, nil)
+	for _, c := range courses {
+		columns, left := p.shiftColumns(c, c.u)
+		instruments := columns
+		driver := c.u
+		if !manual {
+			u, err := p.setpointInput(c)
+			if err != nil {
+				continue
+			}
+			instruments, _ = p.shiftColumns(c, u)
+			driver = c.r
 		}
-		for j, x := range columns {
-			a.Set(i, j, x[i+1]-rho*x[i])
+		for _, w := range p.windows(c, driver) {
+			by, cov, tells := p.shiftIn(w, c, left, columns, instruments)
+			if !tells {
+				continue
+			}
+			var factor mat.Cholesky
+			var inverse mat.SymDense
+			if !factor.Factorize(cov) || factor.InverseTo(&inverse) != nil {
+				continue
+			}
+			var part mat.VecDense
+			part.MulVec(&inverse, by)
+			precision.AddSym(precision, &inverse)
+			weighted.AddVec(weighted, &part)
+			ok = true
 		}
-		b.SetVec(i, y[i+1]-rho*y[i])
 	}
-	var qr mat.QR
-	qr.Factorize(a)
-	if !(qr.Cond() < 1e10) {
-		return nil, nil, false
+	var factor mat.Cholesky
+	s.covariance = mat.NewSymDense(n, nil)
+	if !ok || !factor.Factorize(precision) || factor.InverseTo(s.covariance) != nil {
+		return s, false
 	}
-	var x, left mat.VecDense
-	if qr.SolveVecTo(&x, false, b) != nil {
-		return nil, nil, false
+	var by mat.VecDense
+	by.MulVec(s.covariance, weighted)
+	for i := range by.Len() {
+		s.by[i] = by.AtVec(i)
 	}
-	left.MulVec(a, &x)
-	left.SubVec(b, &left)
-	var r, inverse mat.Dense
-	qr.RTo(&r)
-	if inverse.Inverse(r.Slice(0, m, 0, m)) != nil {
-		return nil, nil, false
-	}
-	sd := mat.Norm(&left, 2) / math.Sqrt(float64(n-m))
-	for j := range m {
-		beta = append(beta, x.AtVec(j))
-		se = append(se, sd*mat.Norm(inverse.RowView(j), 2))
-	}
-	return beta, se, true
+	return s, s.covariance.At(0, 0) < 0.25*0.25
 }
 
-// explain says which changes of the best-fit plant would bring it nearer to
-// the log: gain, dead time, lags (all in one proportion), by one linearised
-// step; or, when none would, where the largest difference lies.
-func (p *plan) explain(courses []*course) []string {
-	longest := slices.MaxFunc(courses, func(a, b *course) int { return len(a.t) - len(b.t) })
-	if out := p.shifts(longest); len(out) > 0 {
+// A window is the rows lo ≤ i < hi about one move.
+type window struct{ lo, hi int }
+
+// windows lists the rows from one response time before each move of the
+// driver to eight after it, or to the next move.
+func (p *plan) windows(c *course, driver []float64) []window {
+	span := response(p.best)
+	s := signal{t: c.t, r: driver, r0: driver[0]}
+	var out []window
+	for _, mv := range moves(s, yardstick{response: span}) {
+		w := window{mv.from, mv.to}
+		for w.lo > 0 && c.t[mv.from]-c.t[w.lo] < span {
+			w.lo--
+		}
+		for w.hi > w.lo && c.t[w.hi-1]-c.t[mv.from] > 8*span {
+			w.hi--
+		}
+		out = append(out, w)
+	}
+	return out
+}
+
+// shiftIn estimates the shift in one window; a level and a start off rest are
+// fitted along, and what is left is whitened by its own first-order
+// correlation.
+func (p *plan) shiftIn(w window, c *course, left []float64, columns, instruments [][]float64) (by *mat.VecDense, cov *mat.SymDense, ok bool) {
+	t := c.t[w.lo:w.hi]
+	cut := func(all [][]float64) [][]float64 {
+		ones, fading := p.startColumns(t)
+		out := [][]float64{ones, fading}
+		for _, x := range all {
+			out = append(out, x[w.lo:w.hi])
+		}
 		return out
 	}
-	var worst, at float64
-	for _, c := range courses {
-		unit := ident.NewSimulator(c.t, ident.HeldInput(c.t, c.u, p.law)).Response(nil, p.best.Structure, p.best.Lags, p.best.DeadTime)
-		for i, v := range p.unexplained(c, p.best, unit) {
-			if math.Abs(v) > math.Abs(worst) {
-				worst, at = v, c.t[i]
-			}
+	y, x, z := left[w.lo:w.hi], cut(columns), cut(instruments)
+	step := medianInterval(c.t)
+	beta, _, ok := instrumental(t, step, p.cardCorrelation(step), y, x, z)
+	if !ok {
+		return nil, nil, false
+	}
+	beta, all, ok := instrumental(t, step, lagOneCorrelation(y, x, beta), y, x, z)
+	if !ok {
+		return nil, nil, false
+	}
+	n := len(columns)
+	by, cov = mat.NewVecDense(n, append([]float64(nil), beta[2:]...)), mat.NewSymDense(n, nil)
+	for i := range n {
+		for j := i; j < n; j++ {
+			cov.SetSym(i, j, all.At(2+i, 2+j))
 		}
 	}
-	return []string{fmt.Sprintf("no other gain, dead time or lag explains it: %s at %s s that the input did not cause, such as a load", quantity(worst, p.units.temperature), number(at))}
+	return by, cov, true
 }
 
-// shifts returns a sentence for each of gain, dead time and lags that differs
-// from the card's by more than both its own and the card's uncertainty.
-func (p *plan) shifts(c *course) []string {
+// cardCorrelation is the card's correlation of the noise over a step.
+func (p *plan) cardCorrelation(step float64) float64 {
+	if p.noise.CorrelationTime <= 0 {
+		return 0
+	}
+	return math.Exp(-step / p.noise.CorrelationTime)
+}
+
+// shiftColumns returns the sensitivities to gain, dead time and lags for the
+// input u, and what the best-fit plant leaves of the log.
+func (p *plan) shiftColumns(c *course, u []float64) (columns [][]float64, left []float64) {
 	g := p.best
-	lagCount := g.Structure.NumLags()
+	n, lagCount := len(c.t), g.Structure.NumLags()
 	sens := make([][]float64, lagCount+2)
 	for i := range sens {
-		sens[i] = make([]float64, len(c.t))
+		sens[i] = make([]float64, n)
 	}
-	ident.NewSimulator(c.t, ident.HeldInput(c.t, c.u, p.law)).Sensitivities(sens, g.Structure, g.Lags, g.DeadTime)
-	gain, dead, lags := make([]float64, len(c.t)), make([]float64, len(c.t)), make([]float64, len(c.t))
-	left := make([]float64, len(c.t))
+	ident.NewSimulator(c.t, ident.HeldInput(c.t, u, p.law)).Sensitivities(sens, g.Structure, g.Lags, g.DeadTime)
+	gain, dead, lags := make([]float64, n), make([]float64, n), make([]float64, n)
+	left = make([]float64, n)
 	for i := range left {
 		gain[i], dead[i] = g.Gain*sens[0][i], g.Gain*sens[lagCount+1][i]
 		for j, tau := range g.Lags {
@@ -126,48 +161,199 @@ func (p *plan) shifts(c *course) []string {
 		}
 		left[i] = c.y[i] - gain[i]
 	}
-	ones, fading := p.startColumns(c, g)
-	columns := [][]float64{ones, fading, gain, dead, lags}
+	columns = [][]float64{gain, dead, lags}
 	if lagCount == 0 {
-		columns = columns[:4]
+		columns = columns[:2]
 	}
-	beta, se, ok := p.leastSquares(c, left, columns...)
-	if !ok {
-		return nil
+	return columns, left
+}
+
+// startColumns returns a constant and what is left of a start off rest, which
+// fades with the longest lag.
+func (p *plan) startColumns(t []float64) (ones, fading []float64) {
+	ones, fading = make([]float64, len(t)), make([]float64, len(t))
+	longest := response(p.best)
+	if len(p.best.Lags) > 0 {
+		longest = p.best.Lags[0]
 	}
-	if !p.explains(left, beta, columns) {
-		return nil
+	for i := range ones {
+		ones[i] = 1
+		fading[i] = math.Exp(-(t[i] - t[0]) / longest)
 	}
-	var out []string
-	apart := func(k int, known float64) bool { return math.Abs(beta[k]) > 2.5*math.Hypot(se[k], known) }
-	known := p.knownSpread()
-	if apart(2, known.gain) {
-		out = append(out, fmt.Sprintf("the gain here is about %.0f%% %s than the card's", 100*math.Abs(beta[2]), side(beta[2], "higher", "lower")))
+	return ones, fading
+}
+
+// setpointInput returns the input that the logged controller would have given
+// on the card's plant for the setpoint alone, starting at rest.
+func (p *plan) setpointInput(c *course) ([]float64, error) {
+	quiet := *c
+	quiet.y, quiet.u, quiet.phi = make([]float64, len(c.t)), make([]float64, len(c.t)), make([]float64, len(c.t))
+	fill(quiet.y, c.before)
+	fill(quiet.u, c.u[0])
+	fill(quiet.phi, c.phi[0])
+	if quiet.log != nil {
+		quiet.log = make([]float64, len(c.log))
+		fill(quiet.log, c.before)
 	}
-	if apart(3, known.dead) {
-		out = append(out, fmt.Sprintf("the dead time here is about %s %s than the card's", quantity(math.Abs(beta[3]), "s"), side(beta[3], "longer", "shorter")))
+	gains := *p.logged
+	gains.Limits = tune.Limits{} // the linear loop: at a limit the logged input shows it
+	y, u := make([]float64, len(c.t)), make([]float64, len(c.t))
+	return u, newRunner(p.law, &gains, []ident.Plant{p.best}).replay(&quiet, 0, y, u)
+}
+
+// instrumental solves Zᵀ(y − X·beta) = 0 with rows whitened by
+// y[i+1] − ρ^(Δt/step)·y[i], and returns the covariance
+// s²·(ZᵀX)⁻¹·ZᵀZ·(ZᵀX)⁻ᵀ. ok is false when the instruments cannot tell the
+// columns apart.
+func instrumental(t []float64, step, rho float64, y []float64, x, z [][]float64) (beta []float64, cov *mat.Dense, ok bool) {
+	n, m := len(t)-1, len(x)
+	if n <= m {
+		return nil, nil, false
 	}
-	if lagCount > 0 && apart(4, known.lags) {
-		out = append(out, fmt.Sprintf("the lags here are about %.0f%% %s than the card's", 100*math.Abs(beta[4]), side(beta[4], "longer", "shorter")))
+	a, b := mat.NewDense(n, m, nil), mat.NewDense(n, m, nil)
+	v := mat.NewVecDense(n, nil)
+	for i := range n {
+		r := math.Pow(rho, (t[i+1]-t[i])/step)
+		for j := range m {
+			a.Set(i, j, x[j][i+1]-r*x[j][i])
+			b.Set(i, j, z[j][i+1]-r*z[j][i])
+		}
+		v.SetVec(i, y[i+1]-r*y[i])
+	}
+	scale := make([]float64, m) // so that the condition means something
+	for j := range m {
+		scale[j] = mat.Norm(b.ColView(j), 2)
+		if scale[j] == 0 {
+			return nil, nil, false
+		}
+	}
+	var zx, zz, inverse mat.Dense
+	zx.Mul(b.T(), a)
+	zz.Mul(b.T(), b)
+	for _, d := range []*mat.Dense{&zx, &zz} {
+		d.Apply(func(i, j int, v float64) float64 { return v / scale[i] / scale[j] }, d)
+	}
+	if !(mat.Cond(&zx, 2) < 1e8) || inverse.Inverse(&zx) != nil {
+		return nil, nil, false
+	}
+	var zy, solved mat.VecDense
+	zy.MulVec(b.T(), v)
+	for j := range m {
+		zy.SetVec(j, zy.AtVec(j)/scale[j])
+	}
+	solved.MulVec(&inverse, &zy)
+	for j := range m {
+		solved.SetVec(j, solved.AtVec(j)/scale[j])
+	}
+	var left mat.VecDense
+	left.MulVec(a, &solved)
+	left.SubVec(v, &left)
+	variance := mat.Dot(&left, &left) / float64(n-m)
+	cov = new(mat.Dense)
+	cov.Product(&inverse, &zz, inverse.T())
+	cov.Apply(func(i, j int, v float64) float64 { return v * variance / scale[i] / scale[j] }, cov)
+	for j := range m {
+		beta = append(beta, solved.AtVec(j))
+	}
+	return beta, cov, true
+}
+
+// lagOneCorrelation of what the columns leave of y, between 0 and 0.999.
+func lagOneCorrelation(y []float64, x [][]float64, beta []float64) float64 {
+	var last, product, square float64
+	for i := range y {
+		e := y[i]
+		for j := range x {
+			e -= beta[j] * x[j][i]
+		}
+		if i > 0 {
+			product += last * e
+		}
+		square += e * e
+		last = e
+	}
+	if square == 0 {
+		return 0
+	}
+	return min(0.999, max(0, product/square))
+}
+
+// material is how much of a shift makes a difference: a twentieth of the gain
+// and of the response time, a tenth of the lags (common practice, no source).
+func (p *plan) material() [3]float64 { return [3]float64{0.05, 0.05 * response(p.best), 0.1} }
+
+// contradicts tells whether the shift is larger than its own and the card's
+// uncertainty together explain in 99% of runs, and large enough to matter.
+func (p *plan) contradicts(s plantShift) bool {
+	n := s.covariance.SymmetricDim()
+	both := p.cardCovariance(n)
+	both.AddSym(both, s.covariance)
+	var factor mat.Cholesky
+	if !factor.Factorize(both) {
+		return false
+	}
+	by := mat.NewVecDense(n, append([]float64(nil), s.by[:n]...))
+	var solved mat.VecDense
+	if factor.SolveVecTo(&solved, by) != nil {
+		return false
+	}
+	matters := false
+	for i, least := range p.material() {
+		matters = matters || math.Abs(s.by[i]) > least
+	}
+	return matters && mat.Dot(by, &solved) > distuv.ChiSquared{K: float64(n)}.Quantile(0.99)
+}
+
+// cardCovariance is that of gain, dead time and lags over the plausible
+// plants about the best fit, as shifts.
+func (p *plan) cardCovariance(n int) *mat.SymDense {
+	out := mat.NewSymDense(n, nil)
+	lags := response(p.best) - p.best.DeadTime
+	for _, g := range p.plants {
+		by := [3]float64{g.Gain/p.best.Gain - 1, g.DeadTime - p.best.DeadTime, 0}
+		if n > 2 {
+			by[2] = (response(g)-g.DeadTime)/lags - 1
+		}
+		for i := range n {
+			for j := i; j < n; j++ {
+				out.SetSym(i, j, out.At(i, j)+by[i]*by[j]/float64(len(p.plants)))
+			}
+		}
 	}
 	return out
 }
 
-// explains tells whether the changes take away at least half of what the
-// difference left holds beyond the card's noise, after the start (the first
-// two columns) is taken off it. Without that a load passes for a slower plant.
-func (p *plan) explains(left, beta []float64, columns [][]float64) bool {
-	var before, after float64
-	for i, v := range left {
-		v -= beta[0]*columns[0][i] + beta[1]*columns[1][i]
-		before += v * v
-		for k := 2; k < len(columns); k++ {
-			v -= beta[k] * columns[k][i]
-		}
-		after += v * v
+// words names the parts of a shift that stand out: more than twice their
+// uncertainty, or the largest when none does.
+func (p *plan) words(s plantShift) []string {
+	n := s.covariance.SymmetricDim()
+	card := p.cardCovariance(n)
+	say := []func(float64) string{
+		func(x float64) string {
+			return fmt.Sprintf("the gain here is about %.0f%% %s than the card's", 100*math.Abs(x), side(x, "higher", "lower"))
+		},
+		func(x float64) string {
+			return fmt.Sprintf("the dead time here is about %s %s than the card's", quantity(math.Abs(x), "s"), side(x, "longer", "shorter"))
+		},
+		func(x float64) string {
+			return fmt.Sprintf("the lags here are about %.0f%% %s than the card's", 100*math.Abs(x), side(x, "longer", "shorter"))
+		},
 	}
-	noise := float64(len(left)) * p.noise.SD * p.noise.SD
-	return after-noise <= (before-noise)/2
+	var out []string
+	largest, most := 0, 0.0
+	for i := range n {
+		ratio := math.Abs(s.by[i]) / math.Sqrt(s.covariance.At(i, i)+card.At(i, i))
+		if ratio > most {
+			largest, most = i, ratio
+		}
+		if ratio > 2 {
+			out = append(out, say[i](s.by[i]))
+		}
+	}
+	if len(out) == 0 {
+		out = append(out, say[largest](s.by[largest]))
+	}
+	return out
 }
 
 func side(x float64, more, less string) string {
@@ -175,49 +361,4 @@ func side(x float64, more, less string) string {
 		return more
 	}
 	return less
-}
-
-// known is the card's own spread: of the gain and the sum of lags as
-// fractions, of the dead time in s.
-type known struct{ gain, dead, lags float64 }
-
-func (p *plan) knownSpread() known {
-	n := float64(len(p.plants))
-	var k known
-	lagSum := response(p.best) - p.best.DeadTime
-	for _, g := range p.plants {
-		k.gain += math.Pow(g.Gain/p.best.Gain-1, 2) / n
-		k.dead += math.Pow(g.DeadTime-p.best.DeadTime, 2) / n
-		if lagSum > 0 {
-			k.lags += math.Pow((response(g)-g.DeadTime)/lagSum-1, 2) / n
-		}
-	}
-	return known{math.Sqrt(k.gain), math.Sqrt(k.dead), math.Sqrt(k.lags)}
-}
-
-// saturation says when the input sat at a limit of the logged gains.
-func (p *plan) saturation(courses []*course) []string {
-	var rows, high, low int
-	limits := p.logged.Limits
-	for _, c := range courses {
-		for _, u := range c.u {
-			rows++
-			if limits.Max != nil && u >= *limits.Max-slack {
-				high++
-			}
-			if limits.Min != nil && u <= *limits.Min+slack {
-				low++
-			}
-		}
-	}
-	var out []string
-	for _, s := range []struct {
-		n    int
-		name string
-	}{{high, "upper"}, {low, "lower"}} {
-		if share := float64(s.n) / float64(rows); share > 0.05 {
-			out = append(out, fmt.Sprintf("the input sits at its %s limit on %.0f%% of the rows, where the loop is open", s.name, 100*share))
-		}
-	}
-	return out
 }

@@ -2,7 +2,7 @@ package validate
 
 import "slices"
 
-// medianInterval returns the median of the intervals of t.
+// medianInterval returns the median of the intervals of t, 0 when there is none.
 func medianInterval(t []float64) float64 {
 	if len(t) < 2 {
 		return 0
@@ -11,6 +11,12 @@ func medianInterval(t []float64) float64 {
 	for i := range d {
 		d[i] = t[i+1] - t[i]
 	}
-	slices.Sort(d)
-	return d[len(d)/2]
+	return median(d)
+}
+
+// median returns the middle one of x, of an even number the upper of the two.
+func median(x []float64) float64 {
+	sorted := slices.Clone(x)
+	slices.Sort(sorted)
+	return sorted[len(sorted)/2]
 }

@@ -88,7 +88,7 @@ func (r *RunReplay) check() error {
 	if r.Rows < 0 {
 		return fmt.Errorf("rows is %d", r.Rows)
 	}
-	if b := r.BackTest; b != nil && !(isShare(b.ShareInside) && isShare(b.InputInside) && isShare(b.Stated)) {
+	if b := r.BackTest; b != nil && !(isShare(b.ShareInside) && (b.InputInside == nil || isShare(*b.InputInside)) && isShare(b.Stated)) {
 		return fmt.Errorf("back_test: its shares must lie from 0 to 1")
 	}
 	if r.Trace == nil {

@@ -11,6 +11,9 @@ type signal struct {
 	u  []float64 // input, holds from its row on
 	r  []float64 // setpoint, holds from its row on; nil when there is none
 	r0 float64   // setpoint (or level) in force before the first row
+	// resumed: the segment starts where a hole in the log has put it; its way
+	// to the setpoint is nobody's move
+	resumed bool
 }
 
 // A yardstick is how signals are measured.
@@ -62,6 +65,10 @@ func (f *figures) add(s signal, m yardstick) {
 	quiet := 0 // first row not yet given to a move
 	for _, mv := range moves(s, m) {
 		f.deviation = larger(f.deviation, deviation(s, quiet, mv.from))
+		if mv.from == 0 && s.resumed {
+			_, quiet = settled(s, mv, m.band*math.Abs(mv.size)+m.allowance(s.t[mv.to-1]-s.t[0]), m.response)
+			continue
+		}
 		quiet = f.follow(s, m, mv)
 	}
 	f.deviation = larger(f.deviation, deviation(s, quiet, len(s.t)))

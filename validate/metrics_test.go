@@ -125,6 +125,22 @@ func TestMeasureMoves(t *testing.T) {
 	}
 }
 
+// A segment that a hole in the log starts far from its setpoint is not judged
+// on its way back, nor is that way a deviation.
+func TestResumedSegment(t *testing.T) {
+	s := signal{r0: 50, resumed: true}
+	for i := range 1000 {
+		at := float64(i) * 0.1
+		s.t, s.u, s.r = append(s.t, at), append(s.u, 1), append(s.r, 60)
+		s.y = append(s.y, 60-10*math.Exp(-at/3))
+	}
+	f := noFigures()
+	f.add(s, yardstick{band: 0.02, response: 3})
+	if f.moves != 0 || !math.IsNaN(f.settling) || f.deviation > 0.2 {
+		t.Errorf("%d moves, settling %g, deviation %g; want none, none and nearly nothing", f.moves, f.settling, f.deviation)
+	}
+}
+
 // Settling of a noisy record is told no later than, and within a third of,
 // that of the record without noise, in nearly all of 200 records; overshoot
 // of a rise that has none stays at none.

@@ -31,7 +31,7 @@ type Options struct {
 	Progress func(done, total int) // called from one goroutine at a time; nil means not
 }
 
-type units struct{ input, temperature string }
+type units struct{ input, temperature, difference string }
 
 // A plan is everything that is the same for all runs.
 type plan struct {
@@ -78,7 +78,10 @@ func newPlan(card *fit.Card, gains *tune.Gains, o Options) (*plan, error) {
 	if err := p.checkGains(); err != nil {
 		return nil, err
 	}
-	p.units = units{card.Units.Input, card.Units.Temperature}
+	p.units = units{card.Units.Input, card.Units.Temperature, card.Units.Temperature}
+	if p.units.temperature == "degC" {
+		p.units.difference = "K"
+	}
 	p.asked = demands(o.Requirement, p.units)
 	p.cardID, err = hash(card)
 	return p, err

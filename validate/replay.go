@@ -65,7 +65,7 @@ type BandMetrics struct {
 type BackTest struct {
 	ShareInside float64  `json:"share_inside"`       // of the temperatures inside the band of plants and noise, given the logged input
 	Stated      float64  `json:"stated"`             // the band's level
-	InputInside float64  `json:"input_share_inside"` // of the rows at which the replayed input meets the logged one
+	InputInside *float64 `json:"input_share_inside"` // of the rows at which the replayed input meets the logged one; null in manual
 	InputRMSE   *float64 `json:"input_rmse"`         // replayed less logged input
 	TempRMSE    *float64 `json:"temperature_rmse"`   // replayed less logged temperature
 	Reproduced  bool     `json:"reproduced"`

@@ -79,6 +79,7 @@ func (p *plan) courses(run *data.Run) (out []*course, warnings []string, err err
 		if err != nil {
 			return nil, nil, err
 		}
+		c.resumed = len(out) > 0
 		out = append(out, c)
 		bridged += s.bridged
 	}

@@ -46,18 +46,13 @@ func goesHalfway(y []float64, level, setpoint float64) bool {
 }
 
 // startLevel is the median of the first rows.
-func startLevel(y []float64) float64 {
-	first := slices.Clone(y[:min(startRows, len(y))])
-	slices.Sort(first)
-	return first[len(first)/2]
-}
+func startLevel(y []float64) float64 { return median(y[:min(startRows, len(y))]) }
 
 // startBand is how far from its setpoint a segment may start and still count
 // as being at it: four times the scatter of its first rows.
 func startBand(y []float64) float64 {
-	first := slices.Clone(y[:min(startRows, len(y))])
-	slices.Sort(first)
-	return 4 * (first[len(first)-1] - first[0])
+	first := y[:min(startRows, len(y))]
+	return 4 * (slices.Max(first) - slices.Min(first))
 }
 
 func fill(x []float64, v float64) {

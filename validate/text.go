@@ -99,6 +99,8 @@ func writeNotes(b *strings.Builder, runs []*RunReplay) {
 		}
 		if t := run.BackTest; t != nil && !t.Reproduced {
 			fmt.Fprintf(b, "\n%s: do not trust this model here: %s", clean(run.title()), strings.Join(t.Differs, "; "))
+		} else if t != nil && len(t.Differs) > 0 {
+			fmt.Fprintf(b, "\n%s: back-test: %s", clean(run.title()), strings.Join(t.Differs, "; "))
 		}
 		for _, warning := range run.Warnings {
 			fmt.Fprintf(b, "\n%s: warning: %s", clean(run.title()), warning)

@@ -19,9 +19,9 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 		warn("no setpoint move in this run: settling and overshoot are not judged")
 	}
 	if f.small > 0 {
-		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.temperature))
+		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.difference))
 	} else if f.moves > 0 && f.allowance > 0 {
-		warn("settling is judged into the band widened by %s for noise and resolution, so it is told rather too short", quantity(f.allowance, p.units.temperature))
+		warn("settling is judged into the band widened by %s for noise and resolution, so it is told rather too short", quantity(f.allowance, p.units.difference))
 	}
 	if away := p.runaways(e.figures); away > 0 {
 		warn("the loop runs away on %d of %d plausible plants", away, len(e.figures))
