@@ -147,9 +147,9 @@ func switchesOnTemperature(u, y []float64) bool {
 
 // explainedMoves is the share of the input's changes from row to row that a
 // straight-line combination of the control error and its changes explains, at
-// the same row and at the row before: what a P, PI or PID controller does. The
+// the same row and at the rows before: what a P, PI or PID controller does. The
 // error is setpoint less temperature, or minus the temperature without a
-// setpoint.
+// setpoint; the few great moves that a step of the setpoint makes are clipped.
 func explainedMoves(u, y, setpoint []float64) float64 {
 	e := func(k int) float64 {
 		if setpoint != nil {
@@ -172,6 +172,7 @@ func explainedMoves(u, y, setpoint []float64) float64 {
 	if len(du) < 20 {
 		return 0
 	}
+	clip(du)
 	du = centred(du)
 	whole := dot(du, du)
 	if whole == 0 {
@@ -183,4 +184,18 @@ func explainedMoves(u, y, setpoint []float64) float64 {
 	}
 	project(du, basis)
 	return 1 - dot(du, du)/whole
+}
+
+// clip brings values further from 0 than 8 median distances to there.
+func clip(v []float64) {
+	away := make([]float64, len(v))
+	for i, x := range v {
+		away[i] = math.Abs(x)
+	}
+	slices.Sort(away)
+	if most := 8 * quantileOf(away, 0.5); most > 0 {
+		for i := range v {
+			v[i] = math.Max(-most, math.Min(v[i], most))
+		}
+	}
 }
