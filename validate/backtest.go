@@ -218,13 +218,13 @@ func (p *plan) insideBand(c *course) (rows, inside int, far departure) {
 	sd := math.Hypot(p.noise.SD, 1e-9*max(1, math.Abs(c.y[0])))
 	for k, g := range append([]ident.Plant{p.best}, p.plants...) {
 		simulator.Response(unit, g.Structure, g.Lags, g.DeadTime)
+		if k == 0 {
+			far = farthest(c, g.Gain, unit)
+			continue
+		}
 		left := p.unexplained(c, g, unit)
 		for i := 0; i < len(left); i += stride {
-			if k > 0 {
-				below[i] += distuv.UnitNormal.CDF(left[i] / sd)
-			} else if math.Abs(left[i]) > math.Abs(far.size) {
-				far = departure{left[i], c.t[i]}
-			}
+			below[i] += distuv.UnitNormal.CDF(left[i] / sd)
 		}
 	}
 	tail := (1 - p.options.Confidence) / 2
@@ -235,6 +235,22 @@ func (p *plan) insideBand(c *course) (rows, inside int, far departure) {
 		}
 	}
 	return rows, inside, far
+}
+
+// farthest returns where the log goes farthest from the plant's response,
+// from how it stood in the first rows.
+func farthest(c *course, gain float64, unit []float64) (far departure) {
+	left := make([]float64, len(unit))
+	for i := range left {
+		left[i] = c.y[i] - gain*unit[i]
+	}
+	level := startLevel(left)
+	for i, v := range left {
+		if math.Abs(v-level) > math.Abs(far.size) {
+			far = departure{v - level, c.t[i]}
+		}
+	}
+	return far
 }
 
 // unexplained returns what plant g, of unit response unit, leaves of the

@@ -9,7 +9,7 @@ func runawayFigures() figures {
 	inf := math.Inf(1)
 	return figures{
 		settling: inf, overshoot: inf, iae: inf, deviation: inf, peakTemp: inf,
-		peakInput: inf, lowInput: -inf, rate: inf, travel: inf, moves: runaway,
+		peakInput: inf, lowInput: -inf, travel: inf, moves: runaway,
 	}
 }
 

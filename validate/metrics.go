@@ -23,7 +23,6 @@ type yardstick struct {
 	apart    float64 // s between noise values that can be taken as independent
 	quantum  float64 // resolution of the temperature
 	response float64 // dead time + sum of lags, s; 0 means: judge to the end of the record
-	rate     bool    // measure how fast the input moves
 }
 
 // figures of one run, added up over its segments. NaN: no such figure;
@@ -36,7 +35,6 @@ type figures struct {
 	peakTemp  float64
 	peakInput float64
 	lowInput  float64 // the least input
-	rate      float64 // the fastest change of input from row to row, per s
 	travel    float64 // Σ|Δu|
 	allowance float64 // widest noise allowance used, temperature units
 	moves     int     // setpoint moves judged
@@ -46,7 +44,7 @@ type figures struct {
 
 func noFigures() figures {
 	nan := math.NaN()
-	return figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, rate: nan, travel: nan}
+	return figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, travel: nan}
 }
 
 // add measures one unbroken segment and adds it to the figures of the run.
@@ -55,9 +53,6 @@ func (f *figures) add(s signal, m yardstick) {
 	f.peakInput = larger(f.peakInput, greatest(s.u))
 	f.lowInput = -larger(-f.lowInput, -least(s.u))
 	f.travel = plus(f.travel, travel(s.u))
-	if m.rate {
-		f.rate = larger(f.rate, fastest(s.t, s.u))
-	}
 	if s.r == nil {
 		return
 	}
@@ -177,15 +172,6 @@ func travel(u []float64) float64 {
 		sum += math.Abs(u[i] - u[i-1])
 	}
 	return sum
-}
-
-// fastest returns the largest |Δu|/Δt from row to row.
-func fastest(t, u []float64) float64 {
-	worst := math.Inf(-1)
-	for i := 1; i < len(u); i++ {
-		worst = max(worst, math.Abs(u[i]-u[i-1])/(t[i]-t[i-1]))
-	}
-	return orNaN(worst)
 }
 
 // greatest returns the greatest value; NaN values are passed over, and the

@@ -164,7 +164,7 @@ func (p *plan) yardstick(run *data.Run) yardstick {
 	if band == 0 {
 		band = 0.02
 	}
-	m := yardstick{band: band, quantum: run.Quality.Quantum, response: response(p.best), rate: p.options.Requirement.InputRate != nil}
+	m := yardstick{band: band, quantum: run.Quality.Quantum, response: response(p.best)}
 	m.noise = noiseBeyondControl(p.noise, m.response)
 	m.apart = medianInterval(run.T)
 	if p.noise.SD > 0 {

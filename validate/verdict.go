@@ -10,17 +10,16 @@ import (
 )
 
 // A demand is one item of the requirement as it is judged on a run. A figure
-// above the limit fails (below it, where least is set); one that does not
-// exist is not judged.
+// above the limit fails; one that does not exist is not judged.
 type demand struct {
 	name, unit string
 	limit      float64
-	least      bool // the limit is a lowest, not a highest value
 	figure     func(figures) float64
 }
 
 // demands lists what the requirement asks of a run. Ms and damping are
-// properties of loop and plant, not of a run; tune judges them.
+// properties of loop and plant, not of a run; tune judges them. The limits of
+// the input are not asked here: the controller of the replay keeps them.
 func demands(r tune.Requirement, units units) []demand {
 	var out []demand
 	add := func(limit *float64, d demand) {
@@ -32,25 +31,14 @@ func demands(r tune.Requirement, units units) []demand {
 	add(r.Settling, demand{name: "settling", unit: "s", figure: func(f figures) float64 { return f.settling }})
 	add(r.Overshoot, demand{name: "overshoot", unit: "%", figure: func(f figures) float64 { return f.overshoot }})
 	add(r.TempMax, demand{name: "peak temperature", unit: units.temperature, figure: func(f figures) float64 { return f.peakTemp }})
-	add(r.InputMax, demand{name: "largest input", unit: units.input, figure: func(f figures) float64 { return f.peakInput }})
-	add(r.InputMin, demand{name: "least input", unit: units.input, least: true, figure: func(f figures) float64 { return f.lowInput }})
-	add(r.InputRate, demand{name: "fastest change of input", unit: units.input + "/s", figure: func(f figures) float64 { return f.rate }})
 	return out
 }
 
-// slack is what a figure may pass its limit by without failing: rounding of
-// the limits inside the controller.
+// slack is the relative rounding that a figure may pass its limit by.
 const slack = 1e-9
 
 func (d demand) fails(f figures) bool {
-	v := d.figure(f)
-	if math.IsNaN(v) {
-		return false
-	}
-	if d.least {
-		return v < d.limit-slack*max(1, math.Abs(d.limit))
-	}
-	return v > d.limit+slack*max(1, math.Abs(d.limit))
+	return d.figure(f) > d.limit+slack*max(1, math.Abs(d.limit)) // false for NaN
 }
 
 // judge returns the share of plants on which a run meets every demand, and
@@ -87,12 +75,8 @@ func (d demand) reason(all []figures, count int, level float64) string {
 		}
 	}
 	s := spreadOf(values, level)
-	asked := "at most"
-	if d.least {
-		asked = "at least"
-	}
-	return fmt.Sprintf("%s %s where %s %s is asked: fails on %d of %d plausible plants",
-		d.name, spreadText(s, d.unit), asked, quantity(d.limit, d.unit), count, len(all))
+	return fmt.Sprintf("%s %s where at most %s is asked: fails on %d of %d plausible plants",
+		d.name, spreadText(s, d.unit), quantity(d.limit, d.unit), count, len(all))
 }
 
 // spreadText writes a median with its band, "62 s (48 to 80 s)".
