@@ -78,10 +78,7 @@ func newPlan(card *fit.Card, gains *tune.Gains, o Options) (*plan, error) {
 	if err := p.checkGains(); err != nil {
 		return nil, err
 	}
-	p.units = units{card.Units.Input, card.Units.Temperature, card.Units.Temperature}
-	if p.units.temperature == "degC" {
-		p.units.difference = "K"
-	}
+	p.units = units{card.Units.Input, card.Units.Temperature, difference(card.Units.Temperature)}
 	p.asked = demands(o.Requirement, p.units)
 	p.cardID, err = hash(card)
 	return p, err

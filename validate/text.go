@@ -80,12 +80,14 @@ func (r *Replay) writeTable(b *strings.Builder, runs []*RunReplay) {
 	}
 	u := r.Gains.Units
 	tw := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
-	fmt.Fprintf(tw, "run\tmeets\tprobability\tsettling s\tlogged\tovershoot %%\tlogged\tpeak %s\tlogged\tpeak %s\tlogged\n", shown(u.Temperature), shown(u.Input))
+	fmt.Fprintf(tw, "run\tmeets\tprobability\tsettling s\tlogged\tovershoot %%\tlogged\tdeviation %s\tlogged\tpeak %s\tlogged\tpeak %s\tlogged\n",
+		difference(u.Temperature), shown(u.Temperature), shown(u.Input))
 	for _, run := range runs {
 		p, l := run.Proposed, run.Logged
-		fmt.Fprintf(tw, "%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\n", clean(run.title()), run.verdict(), run.probability(),
+		fmt.Fprintf(tw, "%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\n", clean(run.title()), run.verdict(), run.probability(),
 			banded(p.Low.Settling, p.Median.Settling, p.High.Settling), optional(l.Settling),
 			banded(p.Low.Overshoot, p.Median.Overshoot, p.High.Overshoot), optional(l.Overshoot),
+			banded(p.Low.Deviation, p.Median.Deviation, p.High.Deviation), optional(l.Deviation),
 			banded(p.Low.PeakTemp, p.Median.PeakTemp, p.High.PeakTemp), optional(l.PeakTemp),
 			banded(p.Low.PeakInput, p.Median.PeakInput, p.High.PeakInput), optional(l.PeakInput))
 	}
@@ -170,6 +172,14 @@ func shown(unit string) string {
 		return "°F"
 	}
 	return unit
+}
+
+// difference is the unit of a difference of temperatures.
+func difference(temperature string) string {
+	if temperature == "degC" {
+		return "K"
+	}
+	return temperature
 }
 
 // clean shows foreign text without what would steer a terminal.
