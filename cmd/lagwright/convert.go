@@ -2,6 +2,7 @@ package main
 
 import (
 	"errors"
+	"io"
 
 	"github.com/spf13/cobra"
 
@@ -54,5 +55,15 @@ func runConvert(c *console, o *convertOptions, path string) error {
 	if err != nil { // a spelling that lacks something
 		return usageError{err}
 	}
-	return c.deliver(converted)
+	return c.deliver(entered{converted})
+}
+
+// entered shows what is entered at the controller, without the table of
+// candidates that the gains were chosen from.
+type entered struct{ *tune.Gains }
+
+func (e entered) WriteText(w io.Writer) error {
+	g := *e.Gains
+	g.Candidates = nil
+	return g.WriteText(w)
 }

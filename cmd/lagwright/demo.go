@@ -33,6 +33,10 @@ gains.json, replay.json, report.html and the figures.
 }
 
 func runDemo(ctx context.Context, c *console) error {
+	folder, err := c.outputFolder(demoFolder)
+	if err != nil {
+		return err
+	}
 	logs, err := demo.Logs()
 	if err != nil {
 		return err
@@ -50,10 +54,6 @@ func runDemo(ctx context.Context, c *console) error {
 	j, err := c.work(ctx, flags, runs[:1], runs[1:], inForce)
 	if err != nil {
 		return err
-	}
-	folder := c.output
-	if folder == "" {
-		folder = demoFolder
 	}
 	err = j.writeFolder(folder, "lagwright demo", func(dir string) error {
 		for _, l := range logs {
@@ -86,10 +86,11 @@ func readDemo(ctx context.Context, l demo.Log) (*data.Run, error) {
 
 // demoFlags are the flags a user would give for the demo's heater.
 func demoFlags() *jobFlags {
-	settling, overshoot, low, high, scan := 60.0, 10.0, 0.0, 10.0, 1.0
+	settling, overshoot, low, high, scan := 100.0, 10.0, 0.0, 10.0, 1.0
 	var f jobFlags
 	f.tune.requirement.requirement = tune.Requirement{
 		Settling: &settling, Overshoot: &overshoot, InputMin: &low, InputMax: &high, Scan: scan,
 	}
+	f.tune.options.Controller = "pi"
 	return &f
 }

@@ -1,9 +1,11 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"io"
+	"os"
 	"path/filepath"
 
 	"github.com/spf13/cobra"
@@ -38,7 +40,10 @@ type job struct {
 	card   *fit.Card
 	gains  *tune.Gains
 	replay *validate.Replay
-	curves []*fit.Curves // beside bump
+	drift  *validate.Drift
+	curves []*fit.Curves      // beside bump
+	checks []*fit.CheckReport // beside bump
+	loop   *report.Loop
 }
 
 // work goes the whole way. past are the runs to replay, made under logged
@@ -52,9 +57,15 @@ func (c *console) work(ctx context.Context, f *jobFlags, bump, past []*data.Run,
 	if err := j.layCurves(); err != nil {
 		return nil, err
 	}
+	if err := j.check(ctx, c, f); err != nil {
+		return nil, err
+	}
 	j.gains, err = tune.Tune(ctx, []*fit.Card{card}, f.tune.requirement.requirement, f.tune.with(c, &f.log))
 	if err != nil {
 		return nil, tuneError(err)
+	}
+	if j.loop, err = report.LoopOf(card, j.gains); err != nil {
+		return nil, err
 	}
 	progress, clear := c.progress("replaying")
 	defer clear()
@@ -86,6 +97,22 @@ func (j *job) layCurves() error {
 	return nil
 }
 
+// check judges every run it was fitted to.
+func (j *job) check(ctx context.Context, c *console, f *jobFlags) error {
+	options, err := f.fit.with(c, &f.log, nil)
+	if err != nil {
+		return err
+	}
+	for _, run := range j.bump {
+		r, err := fit.Check(ctx, run, options)
+		if err != nil {
+			return fitError(err)
+		}
+		j.checks = append(j.checks, r)
+	}
+	return nil
+}
+
 // replayRequirement gives a log without setpoint, such as a bump test in
 // manual, a step to be judged by: half the range of temperature in which the
 // heater was measured.
@@ -95,6 +122,19 @@ func replayRequirement(r tune.Requirement, card *fit.Card) tune.Requirement {
 		r.SetpointStep = &half
 	}
 	return r
+}
+
+// outputFolder is the folder that a whole job writes; that it can be one is
+// found out before the work.
+func (c *console) outputFolder(usual string) (string, error) {
+	folder := cmp.Or(c.output, usual)
+	if folder == "-" {
+		return "", usageErrorf("-o names the folder to write; a folder cannot go to standard output")
+	}
+	if info, err := os.Stat(folder); err == nil && !info.IsDir() {
+		return "", fmt.Errorf("%s exists and is not a folder; name another with -o", folder)
+	}
+	return folder, nil
 }
 
 // writeFolder puts everything the job made into a folder, whole or not at all.
@@ -125,11 +165,10 @@ func (j *job) writeFolder(folder, command string, more func(dir string) error) e
 }
 
 func (j *job) bundle(command string) report.Bundle {
-	b := report.Bundle{
-		Runs: j.bump, Curves: j.curves, Card: j.card, Gains: j.gains, Replay: j.replay,
-		Tool: tool(), Command: command,
+	return report.Bundle{
+		Runs: j.bump, Curves: j.curves, Checks: j.checks, Card: j.card, Gains: j.gains, Replay: j.replay, Drift: j.drift,
+		Loop: j.loop, Tool: tool(), Command: command,
 	}
-	return b
 }
 
 // figures are those of the page, as files of their own.
@@ -140,6 +179,7 @@ func (j *job) figures() []*report.Figure {
 		report.ResidualFigure(j.bump[0], j.curves[0], model),
 		report.IntervalFigure(model, nil, j.card.Confidence),
 	}
+	figures = append(figures, report.LoopFigures(j.loop, j.gains)...)
 	for i := range j.replay.Runs {
 		run := &j.replay.Runs[i]
 		figure := report.ReplayFigure(run, &j.replay.Gains, j.replay.Requirement)

@@ -11,6 +11,7 @@ import (
 	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/data"
 	"lagwright/fit"
+	"lagwright/tune"
 )
 
 // plotFlag is --plot, on every command that computes.
@@ -48,4 +49,16 @@ func fitFigure(card *fit.Card, run *data.Run) (*report.Figure, error) {
 	}
 	model, _ := card.Model(card.Selected)
 	return report.LogFigure(run, curves, model), nil
+}
+
+// stepFigure draws the loop's answer to a setpoint step.
+func stepFigure(card *fit.Card, gains *tune.Gains) (*report.Figure, error) {
+	loop, err := report.LoopOf(card, gains)
+	if err != nil {
+		return nil, err
+	}
+	if loop.Step == nil {
+		return nil, answerNof("the loop is unstable on the best fit: there is no step response to draw")
+	}
+	return report.StepFigure(loop.Step, gains), nil
 }

@@ -25,9 +25,9 @@ func newReport(c *console) *cobra.Command {
 	var o reportOptions
 	cmd := &cobra.Command{
 		Use:   "report FILE... -o PAGE",
-		Short: "One self-contained page from card, gains, replay and log",
+		Short: "One self-contained page from card, gains, replay, drift, log",
 		Long: `Makes one HTML page, without outside resources, from what the other commands
-wrote: a model card, gains, a replay, each recognised by its content. Give the
+wrote: a model card, gains, a replay, a drift, each recognised by its content. Give the
 log as well, and the page shows it with the fit; its columns are found by the
 names in the card.
 ` + exitHelp,
@@ -105,14 +105,16 @@ func (j *job) addFile(path string) (known bool, err error) {
 		return true, put(&j.gains, path, r, tune.ReadGains)
 	case "replay":
 		return true, put(&j.replay, path, r, validate.ReadReplay)
+	case "drift":
+		return true, put(&j.drift, path, r, validate.ReadDrift)
 	}
-	return false, inputErrorf("%s: %q is nothing that a page can show; give cards, gains, replays and logs", path, head.Schema)
+	return false, inputErrorf("%s: %q is nothing that a page can show; give a card, gains, a replay, a drift, logs", path, head.Schema)
 }
 
 // put reads a part of the page; two of a kind are one too many.
 func put[T any](dst **T, path string, r io.Reader, read func(io.Reader, string) (*T, error)) error {
 	if *dst != nil {
-		return usageErrorf("%s: a second file of its kind; a page shows one card, one set of gains, one replay", path)
+		return usageErrorf("%s: a second file of its kind; a page shows one of each", path)
 	}
 	v, err := read(r, path)
 	if err != nil {

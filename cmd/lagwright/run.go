@@ -33,6 +33,10 @@ func runRun(ctx context.Context, c *console, o *runOptions, log string) error {
 	if err := o.job.tune.requirement.check(); err != nil {
 		return err
 	}
+	folder, err := c.outputFolder(folderFor(log))
+	if err != nil {
+		return err
+	}
 	runs, err := o.job.log.readAll(ctx, c, []string{log})
 	if err != nil {
 		return err
@@ -40,10 +44,6 @@ func runRun(ctx context.Context, c *console, o *runOptions, log string) error {
 	j, err := c.work(ctx, &o.job, runs, runs, nil)
 	if err != nil {
 		return err
-	}
-	folder := c.output
-	if folder == "" {
-		folder = folderFor(log)
 	}
 	if err := j.writeFolder(folder, commandLine(c.args), nil); err != nil {
 		return err

@@ -4,6 +4,8 @@ import (
 	"bytes"
 	"errors"
 	"flag"
+	"fmt"
+	"math"
 	"os"
 	"os/exec"
 	"path/filepath"
@@ -42,6 +44,8 @@ func TestScript(t *testing.T) {
 		Cmds: map[string]func(*testscript.TestScript, bool, []string){
 			"exitcode": scriptExitCode,
 			"oneline":  scriptOneLine,
+			"lastline": scriptLastLine,
+			"hostile":  scriptHostile,
 			"narrow":   scriptNarrow,
 			"plain":    scriptPlain,
 			"bytes":    scriptBytes,
@@ -76,6 +80,40 @@ func scriptOneLine(ts *testscript.TestScript, neg bool, args []string) {
 	if strings.Count(text, "\n") != 1 || !strings.HasPrefix(text, "lagwright: ") || !strings.HasSuffix(text, "\n") {
 		ts.Fatalf("want one line that begins with \"lagwright: \", have %q", text)
 	}
+}
+
+// lastline: the last line on standard error is the program's one line; those
+// before it say what was written.
+func scriptLastLine(ts *testscript.TestScript, neg bool, args []string) {
+	lines := strings.Split(strings.TrimRight(ts.ReadFile("stderr"), "\n"), "\n")
+	for i, line := range lines {
+		prefix := "wrote "
+		if i == len(lines)-1 {
+			prefix = "lagwright: "
+		}
+		if !strings.HasPrefix(line, prefix) {
+			ts.Fatalf("want a line that begins with %q, have %q", prefix, line)
+		}
+	}
+}
+
+// hostile FILE (Go-quoted): writes a bump test whose columns try to be obeyed.
+func scriptHostile(ts *testscript.TestScript, neg bool, args []string) {
+	var b strings.Builder
+	b.WriteString("time_s,\"=cmd|' /C calc'!A0 heater \x1b[31m [V]\",\"temp <script>alert(1)</script><img src=x onerror=alert(2)> \u202e [degC]\"\n")
+	for t := range 200 {
+		u, y := 4.0, 60.0
+		if t >= 40 {
+			u, y = 5, 60+10*-math.Expm1(-float64(t-40)/15)
+		}
+		// Three of a kind of unevenness stand in for noise.
+		fmt.Fprintf(&b, "%d,%g,%.2f\n", t, u, y+0.05*math.Sin(float64(7*t))+0.03*math.Cos(float64(13*t*t)))
+	}
+	name, err := strconv.Unquote(`"` + args[0] + `"`)
+	ts.Check(err)
+	path := ts.MkAbs(name)
+	ts.Check(os.MkdirAll(filepath.Dir(path), 0o755))
+	ts.Check(os.WriteFile(path, []byte(b.String()), 0o644))
 }
 
 // narrow FILE: no line is wider than 80 columns.

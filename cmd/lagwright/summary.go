@@ -59,6 +59,9 @@ func (j *job) summary(w io.Writer, folder string) error {
 	for _, reason := range j.gains.Reasons {
 		s.add("", reason)
 	}
+	for _, cure := range j.gains.Cures {
+		s.add("try", cure)
+	}
 	for i := range j.replay.Runs {
 		s.add("replay", replayWords(&j.replay.Runs[i], j.card.Units.Temperature))
 	}
@@ -126,19 +129,13 @@ func modelWords(card *fit.Card) string {
 	return fmt.Sprintf("%s: %s (%s intervals)", model.Structure, strings.Join(parts, ", "), format.Percent(card.Confidence))
 }
 
+// gainsWords are the numbers as they are entered at the controller.
 func gainsWords(g *tune.Gains) string {
-	words := fmt.Sprintf("%s, %s form: Kc %s", strings.ToUpper(g.Controller), g.Form,
-		format.Amount(g.Kc, g.Units.Input+"/"+kelvins(g.Units.Temperature), 3))
-	if g.Ti != nil {
-		words += ", Ti " + format.Amount(*g.Ti, "s", 3)
+	var parts []string
+	for _, e := range g.Entry {
+		parts = append(parts, e.Name+" "+format.Amount(e.Value, e.Unit, 4))
 	}
-	if g.Td != nil {
-		words += ", Td " + format.Amount(*g.Td, "s", 3)
-	}
-	if g.Filter > 0 {
-		words += ", filter " + format.Amount(g.Filter, "s", 3)
-	}
-	return words + ", setpoint weight " + format.Short(g.SetpointWeight, 3)
+	return fmt.Sprintf("%s, %s form, %s acting: %s", strings.ToUpper(g.Controller), g.Form, g.Action, strings.Join(parts, ", "))
 }
 
 // kelvins is the unit of a difference of temperatures.
@@ -150,12 +147,11 @@ func kelvins(unit string) string {
 }
 
 func requirementWords(g *tune.Gains) string {
-	verdict := "meets"
-	if !g.Meets {
-		verdict = "does not meet"
+	share := format.Percent(g.ShareMeeting)
+	if g.Meets {
+		return fmt.Sprintf("meets %s on %s of plausible plants", g.Requirement, share)
 	}
-	return fmt.Sprintf("%s the requirement on %s of plausible plants (asked: %s)", verdict,
-		format.Percent(g.ShareMeeting), format.Percent(g.Assurance))
+	return fmt.Sprintf("misses %s: holds on %s of plausible plants, asked for %s", g.Requirement, share, format.Percent(g.Assurance))
 }
 
 func replayWords(r *validate.RunReplay, unit string) string {
@@ -163,8 +159,16 @@ func replayWords(r *validate.RunReplay, unit string) string {
 	if r.Name != "" {
 		words += ", run " + r.Name
 	}
+	switch {
+	case !r.Judged:
+		words += ": nothing of the requirement shows in this run"
+	case r.Meets:
+		words += ": meets the requirement"
+	default:
+		words += ": misses the requirement"
+	}
 	if b := r.BackTest; b != nil && !b.Reproduced {
-		words += ": not reproduced under the logged gains, do not trust the model here"
+		words += "; not reproduced under the logged gains, do not trust the model here"
 	}
 	k := kelvins(unit)
 	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string) {

@@ -6,6 +6,7 @@ import (
 
 	"github.com/spf13/cobra"
 
+	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/fit"
 	"lagwright/tune"
 )
@@ -13,6 +14,7 @@ import (
 type tuneOptions struct {
 	tune  tuneFlags
 	spans logFlags // --input-span and --temp-span only
+	plot  plotFlag
 }
 
 func newTune(c *console) *cobra.Command {
@@ -34,6 +36,7 @@ binds and what would have to change; that is exit code 4.
 	}
 	o.tune.add(cmd)
 	o.spans.addSpans(cmd)
+	o.plot.add(cmd, "the loop's answer to a setpoint step over the plausible plants")
 	return cmd
 }
 
@@ -41,7 +44,7 @@ func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) err
 	if err := o.tune.requirement.check(); err != nil {
 		return err
 	}
-	if err := c.refuseOverwriting(args, c.output); err != nil {
+	if err := c.refuseOverwriting(args, c.output, o.plot.path); err != nil {
 		return err
 	}
 	var cards []*fit.Card
@@ -57,6 +60,9 @@ func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) err
 		return tuneError(err)
 	}
 	if err := c.deliver(gains); err != nil {
+		return err
+	}
+	if err := o.plot.write(c, func() (*report.Figure, error) { return stepFigure(cards[0], gains) }); err != nil {
 		return err
 	}
 	return gainsVerdict(gains)

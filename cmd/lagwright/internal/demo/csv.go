@@ -6,6 +6,7 @@ import (
 	"io"
 	"math"
 	"strconv"
+	"time"
 )
 
 // WriteCSV writes the log as the logger exports it.
@@ -17,7 +18,7 @@ func (l Log) WriteCSV(w io.Writer) error {
 		if !math.IsNaN(r.Temperature) {
 			temperature = strconv.FormatFloat(r.Temperature, 'f', 1, 64)
 		}
-		fmt.Fprintf(b, "%s,%.3f,%s,%.1f,%s\n", r.Time.Format("2006-01-02 15:04:05"), r.Input, temperature, r.Setpoint, mode(r.Auto))
+		fmt.Fprintf(b, "%s,%.3f,%s,%.1f,%s\n", r.Time.Format(time.RFC3339), r.Input, temperature, r.Setpoint, mode(r.Auto))
 	}
 	return b.Flush()
 }

@@ -10,7 +10,7 @@ import (
 	"github.com/apache/arrow/go/v17/parquet/schema"
 )
 
-// writeParquet writes the log as a historian exports it: local time stamps in
+// writeParquet writes the log as a historian exports it: UTC time stamps in
 // microseconds, doubles, an open thermocouple as null, the mode as text.
 func writeParquet(w io.Writer, l Log) error {
 	root, err := parquetSchema()
@@ -26,8 +26,8 @@ func writeParquet(w io.Writer, l Log) error {
 }
 
 func parquetSchema() (*schema.GroupNode, error) {
-	local := schema.NewTimestampLogicalType(false, schema.TimeUnitMicros)
-	stamp, err := schema.NewPrimitiveNodeLogical(timeColumn, parquet.Repetitions.Required, local, parquet.Types.Int64, 0, -1)
+	utc := schema.NewTimestampLogicalType(true, schema.TimeUnitMicros)
+	stamp, err := schema.NewPrimitiveNodeLogical(timeColumn, parquet.Repetitions.Required, utc, parquet.Types.Int64, 0, -1)
 	if err != nil {
 		return nil, err
 	}

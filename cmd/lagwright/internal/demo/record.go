@@ -12,7 +12,7 @@ import (
 // What the thermocouple adds, in °C: turbulence, a first-order process of the
 // given correlation time in s, and the white noise of the electronics.
 const (
-	turbulence     = 0.22
+	turbulence     = 0.15
 	turbulenceTime = 6.0
 	electronics    = 0.05
 )

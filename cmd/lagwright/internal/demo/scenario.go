@@ -48,10 +48,10 @@ type Log struct {
 
 // Row is what the logger writes at one instant.
 type Row struct {
-	Time        time.Time // local time of the mill
-	Input       float64   // V
-	Temperature float64   // °C; NaN where the thermocouple reads open
-	Setpoint    float64   // °C
+	Time        time.Time
+	Input       float64 // V
+	Temperature float64 // °C; NaN where the thermocouple reads open
+	Setpoint    float64 // °C
 	Auto        bool
 }
 
@@ -67,6 +67,9 @@ func Logs() ([]Log, error) {
 	}
 	return logs, nil
 }
+
+// mill is the zone of the logger's clock.
+var mill = time.FixedZone("", 3600)
 
 // script is what happens during one recording. Times are in s from its first
 // row; moves are applied from their time on.
@@ -89,28 +92,28 @@ type move struct{ at, to float64 }
 var scripts = []script{
 	{
 		name:     "bump",
-		start:    time.Date(2026, 3, 11, 9, 12, 0, 0, time.UTC),
+		start:    time.Date(2026, 3, 11, 9, 12, 0, 0, mill),
 		duration: 840,
 		ambient:  22.3,
-		input:    []move{{0, 4}, {150, 5.2}, {480, 4}},
+		input:    []move{{0, 4}, {150, 5.6}, {480, 4}},
 		setpoint: []move{{0, 70}},
 		drift:    1.4 / 3600,
 		open:     [2]float64{331, 343},
 	},
 	{
-		name:      "startup",
-		start:     time.Date(2026, 2, 17, 6, 40, 0, 0, time.UTC),
+		name:      "setpoint-change",
+		start:     time.Date(2026, 2, 17, 6, 40, 0, 0, mill),
 		duration:  1200,
-		ambient:   19.6,
-		setpoint:  []move{{0, 60}, {120, 72}, {660, 66}},
+		ambient:   21.6,
+		setpoint:  []move{{0, 72}, {120, 82}, {660, 77}},
 		automatic: true,
 	},
 	{
 		name:      "wet-board",
-		start:     time.Date(2026, 2, 24, 14, 5, 0, 0, time.UTC),
+		start:     time.Date(2026, 2, 24, 14, 5, 0, 0, mill),
 		duration:  1200,
-		ambient:   21.1,
-		setpoint:  []move{{0, 70}},
+		ambient:   22.1,
+		setpoint:  []move{{0, 76}},
 		load:      []move{{0, 0}, {180, -6}, {700, -1.5}},
 		automatic: true,
 	},
