@@ -161,30 +161,55 @@ func Check(ctx context.Context, run *data.Run, o Options) (*CheckReport, error) 
 	return r, err
 }
 
-// quickFit fits one lag and two lags and returns the card of the better: two
-// lags must earn their place by 2 in AICc.
+// quickFit fits two lags and, where the second cannot be told from zero, one. The
+// card holds what the verdict needs, not the warnings of a whole fit.
 func quickFit(ctx context.Context, run *data.Run, o Options) (*Card, error) {
-	o.Plants, o.Progress = 80, nil
-	var best *Card
-	names := []string{"fopdt", "chain2"}
-	if o.Structure != "" && o.Structure != "auto" {
-		names = []string{o.Structure}
+	o.Plants, o.Progress = 48, nil
+	o, err := o.withDefaults()
+	if err != nil {
+		return nil, err
 	}
-	least := math.Inf(1)
-	for _, name := range names {
-		o.Structure = name
-		c, err := Fit(ctx, []*data.Run{run}, o)
-		if err != nil {
-			return nil, err
-		}
-		if m, _ := c.Model(name); m.AICc < least-2 {
-			best, least = c, m.AICc
-		}
+	recs, err := prepare([]*data.Run{run}, o.Law)
+	if err != nil {
+		return nil, err
 	}
-	if best == nil {
-		return nil, fmt.Errorf("%s: %w: the quick fit did not come to an end", run.Source.File, ErrNoAnswer)
+	if o.Structure != "auto" {
+		return quickCard(ctx, recs, o)
 	}
-	return best, nil
+	o.Structure = "chain2"
+	two, err := quickCard(ctx, recs, o)
+	if err != nil {
+		return nil, err
+	}
+	m := two.Models[0]
+	if lag2 := m.Parameters[2]; lag2.Fixed || (lag2.Low != nil && *lag2.Low > 0) {
+		return two, nil
+	}
+	o.Structure = "fopdt"
+	one, err := quickCard(ctx, recs, o)
+	if err != nil || m.AICc < one.Models[0].AICc-2 {
+		return two, err
+	}
+	return one, nil
+}
+
+// quickCard fits one structure.
+func quickCard(ctx context.Context, recs []*record, o Options) (*Card, error) {
+	out, err := find(ctx, recs, o)
+	if err != nil {
+		return nil, err
+	}
+	out.sample()
+	u := recs[0].run.Units
+	c := &Card{
+		Schema: CardSchema, Units: CardUnits{Time: "s", Input: u.Input, Temperature: u.Temperature},
+		InputLaw: o.Law.String(), Initial: out.initial.String(), Drift: "none", BumpTime: o.BumpInstant,
+		Confidence: o.Confidence, Selected: o.Structure, Models: []Model{out.model(out.models[0])}, Derived: out.derived(),
+	}
+	if out.drift {
+		c.Drift = "linear"
+	}
+	return c, nil
 }
 
 // answers reports whether the temperature follows the input at all: a gain that

@@ -101,10 +101,7 @@ func (c *Card) band(v *Curves, run *data.Run, best ident.Plant) error {
 		return err
 	}
 	rows := closeRows(run, v.Bumps, mostBandRows)
-	t, y := make([]float64, len(rows)), make([]float64, len(rows))
-	for i, k := range rows {
-		t[i], y[i] = run.T[k], run.Y[k]
-	}
+	t, y := rowsOf(run, rows)
 	m, _, err := c.output(run, t, y)
 	if err != nil {
 		return err
@@ -157,6 +154,15 @@ func closeRows(run *data.Run, bumps []ident.Bump, most int) []int {
 		}
 	}
 	return rows
+}
+
+// rowsOf are the times and temperatures of some rows.
+func rowsOf(run *data.Run, rows []int) (t, y []float64) {
+	t, y = make([]float64, len(rows)), make([]float64, len(rows))
+	for i, k := range rows {
+		t[i], y[i] = run.T[k], run.Y[k]
+	}
+	return t, y
 }
 
 // addBetween adds to x, at the times t, the values v given at the times at, with

@@ -220,20 +220,25 @@ func (m misfit) looks(runs []*data.Run, unit string) string {
 	windows := [][2]float64{{0, 1}, {1, 3}, {3, math.Inf(1)}} // in residence times after the bump
 	sum, weight := make([]float64, len(windows)), make([]float64, len(windows))
 	for _, run := range runs {
-		out := newModelOutput(run.T, run.Y, ident.HeldInput(run.T, run.U, m.law), m.start, m.drift, m.noise.shape())
-		fitted := out.of(m.plant)
-		for _, b := range ident.FindBumps(run.T, run.U, run.Y) {
+		bumps := ident.FindBumps(run.T, run.U, run.Y)
+		rows := closeRows(run, bumps, misfitRows)
+		t, y := rowsOf(run, rows)
+		fitted := newModelOutput(t, y, ident.HeldInput(run.T, run.U, m.law), m.start, m.drift, m.noise.shape()).of(m.plant)
+		i := -1 // the last bump begun
+		for k, row := range rows {
+			for i+1 < len(bumps) && bumps[i+1].Row <= row {
+				i++
+			}
+			if i < 0 || math.IsNaN(y[k]) {
+				continue
+			}
+			b := bumps[i]
 			direction := math.Copysign(1, (m.law.Apply(b.To)-m.law.Apply(b.From))*m.plant.Gain)
-			for k := b.Row; k < b.End; k++ {
-				if math.IsNaN(run.Y[k]) {
-					continue
-				}
-				since := (run.T[k] - b.Time) / residence
-				for i, w := range windows {
-					if since >= w[0] && since < w[1] {
-						sum[i] += direction * (run.Y[k] - fitted[k])
-						weight[i]++
-					}
+			since := (t[k] - b.Time) / residence
+			for w, window := range windows {
+				if since >= window[0] && since < window[1] {
+					sum[w] += direction * (y[k] - fitted[k])
+					weight[w]++
 				}
 			}
 		}
