@@ -1,9 +1,15 @@
 package main
 
 import (
+	"bufio"
+	"bytes"
+	"encoding/json"
+	"errors"
 	"io"
+	"io/fs"
 	"os"
 	"path/filepath"
+	"strings"
 
 	"lagwright/fit"
 	"lagwright/tune"
@@ -40,4 +46,44 @@ func (c *console) readGains(path string) (*tune.Gains, error) {
 
 func (c *console) readReplay(path string) (*validate.Replay, error) {
 	return readFile(c, path, validate.ReadReplay)
+}
+
+// maxFile bounds what is read of a file of ours: a card of 100 000 plants has
+// some 20 MB.
+const maxFile = 1 << 28
+
+// lagwrightFile tells what kind of file of ours a path holds ("card", "gains",
+// …) and gives its text; kind is "" for anything else.
+func lagwrightFile(path string) (kind string, text []byte, err error) {
+	f, err := os.Open(path)
+	if errors.Is(err, fs.ErrNotExist) || path == "-" {
+		return "", nil, nil // a pattern, standard input, or an error of who reads it
+	}
+	if err != nil {
+		return "", nil, inputError{err}
+	}
+	defer f.Close()
+	info, err := f.Stat()
+	if err != nil || !info.Mode().IsRegular() || info.Size() > maxFile {
+		return "", nil, nil
+	}
+	b := bufio.NewReader(f)
+	start, _ := b.Peek(64)
+	if !bytes.HasPrefix(bytes.TrimLeft(start, " \t\r\n"), []byte("{")) {
+		return "", nil, nil
+	}
+	if text, err = io.ReadAll(b); err != nil {
+		return "", nil, inputError{err}
+	}
+	var head struct {
+		Schema string `json:"schema"`
+	}
+	if json.Unmarshal(text, &head) != nil {
+		return "", nil, nil
+	}
+	parts := strings.Split(head.Schema, "/")
+	if len(parts) != 3 || parts[0] != "lagwright" {
+		return "", nil, nil
+	}
+	return parts[1], text, nil
 }

@@ -1,13 +1,9 @@
 package main
 
 import (
-	"bufio"
 	"bytes"
 	"context"
-	"encoding/json"
 	"io"
-	"os"
-	"strings"
 
 	"github.com/spf13/cobra"
 
@@ -88,17 +84,11 @@ func (j *job) addLogs(ctx context.Context, c *console, l *logFlags, logs []strin
 
 // addFile takes in a file that lagwright wrote, and reports false for others.
 func (j *job) addFile(path string) (known bool, err error) {
-	text, err := readLagwright(path)
-	if err != nil || text == nil {
+	kind, text, err := lagwrightFile(path)
+	if err != nil || kind == "" {
 		return false, err
 	}
-	var head struct {
-		Schema string `json:"schema"`
-	}
-	if json.Unmarshal(text, &head) != nil || head.Schema == "" {
-		return false, nil
-	}
-	switch r := bytes.NewReader(text); schemaKind(head.Schema) {
+	switch r := bytes.NewReader(text); kind {
 	case "card":
 		return true, put(&j.card, path, r, fit.ReadCard)
 	case "gains":
@@ -108,7 +98,7 @@ func (j *job) addFile(path string) (known bool, err error) {
 	case "drift":
 		return true, put(&j.drift, path, r, validate.ReadDrift)
 	}
-	return false, inputErrorf("%s: %q is nothing that a page can show; give a card, gains, a replay, a drift, logs", path, head.Schema)
+	return false, inputErrorf("%s: a %s is nothing that a page can show; give a card, gains, a replay, a drift, logs", path, kind)
 }
 
 // put reads a part of the page; two of a kind are one too many.
@@ -122,43 +112,4 @@ func put[T any](dst **T, path string, r io.Reader, read func(io.Reader, string) 
 	}
 	*dst = v
 	return nil
-}
-
-// maxFile bounds what is read of a file of ours: a card of 100 000 plants has
-// some 20 MB.
-const maxFile = 1 << 28
-
-// readLagwright returns the text of a JSON file, and nil for anything else.
-func readLagwright(path string) ([]byte, error) {
-	info, err := os.Stat(path)
-	if err != nil {
-		return nil, inputError{err}
-	}
-	if !info.Mode().IsRegular() || info.Size() > maxFile {
-		return nil, nil
-	}
-	f, err := os.Open(path)
-	if err != nil {
-		return nil, inputError{err}
-	}
-	defer f.Close()
-	b := bufio.NewReader(f)
-	start, _ := b.Peek(64)
-	if !bytes.HasPrefix(bytes.TrimLeft(start, " \t\r\n\ufeff"), []byte("{")) {
-		return nil, nil
-	}
-	text, err := io.ReadAll(b)
-	if err != nil {
-		return nil, inputError{err}
-	}
-	return text, nil
-}
-
-// schemaKind is the middle of lagwright/card/1, "" for a foreign schema.
-func schemaKind(schema string) string {
-	parts := strings.Split(schema, "/")
-	if len(parts) != 3 || parts[0] != "lagwright" {
-		return ""
-	}
-	return parts[1]
 }

@@ -21,7 +21,7 @@ import (
 type validateOptions struct {
 	log         logFlags
 	requirement requirementFlags
-	gains       string
+	gains       []string
 	loggedGains string
 	options     validate.Options
 	plot        plotFlag
@@ -30,7 +30,7 @@ type validateOptions struct {
 func newValidate(c *console) *cobra.Command {
 	var o validateOptions
 	cmd := &cobra.Command{
-		Use:   "validate CARD LOG... --gains FILE",
+		Use:   "validate CARD... LOG... --gains FILE",
 		Short: "Replay of past runs under proposed gains",
 		Long: `Computes past runs again with other gains in the loop: what the plant does not
 explain of a run is its disturbance, and the loop is closed on every plausible
@@ -40,18 +40,18 @@ cannot be replayed is listed and does not stop the others.
 With --logged-gains each run is first replayed under the gains it was made
 with; one that is not reproduced says: do not trust this model here.
 With -o, a journal beside the output keeps what is done; after a break, the
-same command with --resume goes on.
+same command with --resume goes on. Several cards, or several --gains, give a
+table of the runs with the results side by side.
 ` + exitHelp,
 		Example: `  lagwright validate card.json runs/ --gains gains.json -o replay.json
   lagwright validate card.json startup.csv --gains gains.json --logged-gains old.json
-  lagwright validate card.json 'runs/*.parquet' --gains gains.json -o runs.parquet`,
+  lagwright validate card.json 'runs/*.parquet' --gains gains.json -o runs.parquet
+  lagwright validate card.json runs/ --gains pi.json --gains pid.json`,
 		Args: needArgs(2, -1, "lagwright validate card.json runs/ --gains gains.json"),
-		RunE: func(cmd *cobra.Command, args []string) error {
-			return runValidate(cmd.Context(), c, &o, args[0], args[1:])
-		},
+		RunE: func(cmd *cobra.Command, args []string) error { return runValidate(cmd.Context(), c, &o, args) },
 	}
 	fs := cmd.Flags()
-	fs.StringVar(&o.gains, "gains", "", "`FILE` of the proposed gains")
+	fs.StringArrayVar(&o.gains, "gains", nil, "`FILE` of the proposed gains; may be repeated to compare")
 	_ = cmd.MarkFlagRequired("gains")
 	fs.StringVar(&o.loggedGains, "logged-gains", "", "`FILE` of the gains in force when the logs were made")
 	optionalFlag(fs, &o.options.Setpoint, "setpoint", "NUMBER", "setpoint of the whole run, where the log has none", number)
@@ -63,23 +63,15 @@ same command with --resume goes on.
 	return cmd
 }
 
-func runValidate(ctx context.Context, c *console, o *validateOptions, cardPath string, logs []string) error {
+func runValidate(ctx context.Context, c *console, o *validateOptions, args []string) error {
 	if err := o.check(c); err != nil {
 		return err
 	}
-	inputs := append([]string{cardPath, o.gains, o.loggedGains}, logs...)
+	inputs := append(append([]string{o.loggedGains}, o.gains...), args...)
 	if err := c.refuseOverwriting(inputs, c.output, o.plot.path); err != nil {
 		return err
 	}
-	card, err := c.readCard(cardPath)
-	if err != nil {
-		return err
-	}
-	gains, err := c.readGains(o.gains)
-	if err != nil {
-		return err
-	}
-	options, err := o.with(c, gains)
+	cardPaths, logs, err := splitCards(args)
 	if err != nil {
 		return err
 	}
@@ -87,39 +79,80 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, cardPath s
 	if err != nil {
 		return err
 	}
-	o.log.columnsOf(card)
-	read := func(ctx context.Context, file string) ([]*data.Run, error) { return o.log.read(ctx, c, file) }
-	progress, clear := c.progress("replaying")
-	options.Progress = progress
-	replay, err := validate.ReplayFiles(ctx, card, files, read, gains, options)
-	clear()
-	if err != nil {
-		return inputError{err}
+	if len(cardPaths) > 1 || len(o.gains) > 1 {
+		return o.compare(ctx, c, cardPaths, files)
 	}
-	if len(replay.Runs) == 0 && len(replay.Failed) > 0 {
-		return inputErrorf("none of %d logs can be replayed: %s: %s", len(replay.Failed), replay.Failed[0].File, replay.Failed[0].Reason)
+	replay, err := o.replay(ctx, c, cardPaths[0], o.gains[0], files, c.toFile())
+	if err != nil {
+		return err
 	}
 	if err := o.deliver(c, replay); err != nil {
 		return err
 	}
-	if options.Journal != "" {
-		if err := os.Remove(options.Journal); err != nil && !errors.Is(err, fs.ErrNotExist) {
-			return err
-		}
+	if err := removeJournal(c); err != nil {
+		return err
 	}
-	err = o.plot.write(c, func() (*report.Figure, error) {
-		worst := worstRun(replay)
-		return report.ReplayFigure(worst, &replay.Gains, replay.Requirement), nil
-	})
-	if err != nil {
+	if err := o.plot.write(c, func() (*report.Figure, error) { return replayFigure(replay) }); err != nil {
 		return err
 	}
 	return replayVerdict(replay)
 }
 
+// splitCards parts the cards, which come first, from the logs.
+func splitCards(args []string) (cards, logs []string, err error) {
+	for n, path := range args {
+		kind, _, err := lagwrightFile(path)
+		if err != nil {
+			return nil, nil, err
+		}
+		if kind != "card" && n > 0 {
+			return args[:n], args[n:], nil
+		}
+	}
+	return nil, nil, usageErrorf("no log among the arguments: lagwright validate card.json runs/ --gains gains.json")
+}
+
+// replay replays all files with one card and one set of gains.
+func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gainsPath string, files []string, journal bool) (*validate.Replay, error) {
+	card, err := c.readCard(cardPath)
+	if err != nil {
+		return nil, err
+	}
+	gains, err := c.readGains(gainsPath)
+	if err != nil {
+		return nil, err
+	}
+	options, err := o.with(c, gains)
+	if err != nil {
+		return nil, err
+	}
+	if journal {
+		if err := o.withJournal(c, &options); err != nil {
+			return nil, err
+		}
+	}
+	log := o.log
+	log.columnsOf(card)
+	progress, clear := c.progress("replaying")
+	defer clear()
+	options.Progress = progress
+	read := func(ctx context.Context, file string) ([]*data.Run, error) { return log.read(ctx, c, file) }
+	replay, err := validate.ReplayFiles(ctx, card, files, read, gains, options)
+	if err != nil {
+		return nil, inputError{err}
+	}
+	if len(replay.Runs) == 0 && len(replay.Failed) > 0 {
+		return nil, inputErrorf("none of %d logs can be replayed: %s: %s", len(replay.Failed), replay.Failed[0].File, replay.Failed[0].Reason)
+	}
+	return replay, nil
+}
+
 func (o *validateOptions) check(c *console) error {
+	if o.options.Resume && len(o.gains) > 1 {
+		return usageErrorf("--resume goes on with one card and one set of gains, not with a comparison")
+	}
 	if o.options.Resume && !c.toFile() {
-		return usageErrorf("--resume needs -o: the output is what it goes on with")
+		return usageErrorf("--resume needs -o: it goes on beside the output")
 	}
 	return o.requirement.check()
 }
@@ -130,25 +163,41 @@ func (o *validateOptions) with(c *console, gains *tune.Gains) (validate.Options,
 	v.Workers, v.Tool = c.workers, tool()
 	v.Requirement = o.requirement.over(gains.Requirement)
 	v.Traces = o.plot.path != ""
-	if o.loggedGains != "" {
-		logged, err := c.readGains(o.loggedGains)
-		if err != nil {
-			return v, err
-		}
-		v.LoggedGains = logged
-	}
-	if !c.toFile() {
+	if o.loggedGains == "" {
 		return v, nil
 	}
-	v.Journal = c.output + ".journal"
-	if v.Resume && !isTable(c.output) {
-		previous, err := c.readReplay(c.output)
-		if err != nil && !errors.Is(err, fs.ErrNotExist) {
-			return v, err
-		}
-		v.Previous = previous
+	var err error
+	v.LoggedGains, err = c.readGains(o.loggedGains)
+	return v, err
+}
+
+// withJournal keeps what is done beside the output, and with --resume takes
+// over what the output holds.
+func (o *validateOptions) withJournal(c *console, v *validate.Options) error {
+	v.Journal = journalOf(c.output)
+	if !v.Resume || isTable(c.output) {
+		return nil
 	}
-	return v, nil
+	previous, err := c.readReplay(c.output)
+	if errors.Is(err, fs.ErrNotExist) {
+		return nil
+	}
+	v.Previous = previous
+	return err
+}
+
+func journalOf(output string) string { return output + ".journal" }
+
+// removeJournal ends the journal when the result is in place.
+func removeJournal(c *console) error {
+	if !c.toFile() {
+		return nil
+	}
+	err := os.Remove(journalOf(c.output))
+	if errors.Is(err, fs.ErrNotExist) {
+		return nil
+	}
+	return err
 }
 
 // isTable tells whether the output is to be a Parquet table of the runs.
@@ -169,12 +218,22 @@ func (o *validateOptions) deliver(c *console, replay *validate.Replay) error {
 	return c.text(replay.WriteText)
 }
 
+// replayFigure draws the run furthest from the requirement.
+func replayFigure(r *validate.Replay) (*report.Figure, error) {
+	worst := worstRun(r)
+	if worst.Trace == nil {
+		return nil, errors.New("the run furthest from the requirement has no trace to draw")
+	}
+	return report.ReplayFigure(worst, &r.Gains, r.Requirement), nil
+}
+
 // worstRun is the run least likely to meet the requirement.
 func worstRun(r *validate.Replay) *validate.RunReplay {
 	worst := &r.Runs[0]
 	for i := range r.Runs {
-		if r.Runs[i].Probability < worst.Probability {
-			worst = &r.Runs[i]
+		run := &r.Runs[i]
+		if run.Judged && (!worst.Judged || run.Probability < worst.Probability) {
+			worst = run
 		}
 	}
 	return worst
