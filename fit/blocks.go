@@ -138,34 +138,41 @@ func (r *record) focus(dead, zone float64) *record {
 	})
 }
 
-// residual returns what the plant at p and the linear columns leave of the rows
-// lo ≤ k < hi of the full log.
-func (r *record) residual(e *engine, p *point, beta []float64, lo, hi int) []float64 {
+// explained is a plant with the coefficients of a record's linear columns.
+type explained struct {
+	st   ident.Structure
+	gain float64
+	lags []float64
+	dead float64
+	beta []float64
+}
+
+// residual returns what x leaves of the rows lo ≤ k < hi of the full log.
+func (r *record) residual(x explained, lo, hi int) []float64 {
 	t, y := r.root.t[lo:hi], r.root.y[lo:hi]
-	lags, dead := e.lags(p.eta), p.eta[e.ng]
 	sim := ident.NewSimulator(t, r.input)
-	out := sim.Response(nil, e.st, lags, dead)
+	out := sim.Response(nil, x.st, x.lags, x.dead)
 	for k := range out {
-		out[k] = y[k] - p.gain*out[k] - beta[0]
+		out[k] = y[k] - x.gain*out[k] - x.beta[0]
 	}
 	j := 1
 	if r.drift {
 		for k, v := range t {
-			out[k] -= beta[1] * v
+			out[k] -= x.beta[1] * v
 		}
 		j = 2
 	}
 	first := r.root.t[0]
 	switch r.rest {
 	case earlier:
-		s := ident.NewSimulator(t, ident.Input{At: []float64{first}, Value: []float64{1}}).Response(nil, e.st, lags, dead)
+		s := ident.NewSimulator(t, ident.Input{At: []float64{first}, Value: []float64{1}}).Response(nil, x.st, x.lags, x.dead)
 		for k, v := range s {
-			out[k] -= beta[j] * v
+			out[k] -= x.beta[j] * v
 		}
 	case free:
-		cols := columns(max(e.st.Order(), 1), hi)
-		ident.NewSimulator(r.root.t[:hi], r.input).FreeStates(cols, e.st, lags, dead)
-		for i, b := range beta[j:] {
+		cols := columns(max(x.st.Order(), 1), hi)
+		ident.NewSimulator(r.root.t[:hi], r.input).FreeStates(cols, x.st, x.lags, x.dead)
+		for i, b := range x.beta[j:] {
 			for k := range out {
 				out[k] -= b * cols[i][lo+k]
 			}

@@ -265,8 +265,8 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 		root := r.root
 		var left []float64
 		if b.fine != nil {
-			p := point{eta: b.fine.eta, gain: b.fine.gain}
-			left = r.residual(b.e, &p, b.fine.beta[i], 0, len(root.t))
+			n := len(b.fine.eta) - 1
+			left = r.residual(explained{b.st, b.fine.gain, b.fine.eta[:n], b.fine.eta[n], b.fine.beta[i]}, 0, len(root.t))
 		} else {
 			left = t.all()
 		}

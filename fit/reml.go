@@ -60,10 +60,11 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	}
 	t.all = func() []float64 { return t.left }
 	if r.averagesRows() {
-		t.all = func() []float64 { return r.residual(e, p, beta, 0, len(r.root.t)) }
+		x := explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
+		t.all = func() []float64 { return r.residual(x, 0, len(r.root.t)) }
 		for _, c := range pieces(len(r.root.t)) {
 			t.noise = append(t.noise, r.root.t[c[0]:c[1]]...)
-			t.rest = append(t.rest, r.residual(e, p, beta, c[0], c[1])...)
+			t.rest = append(t.rest, r.residual(x, c[0], c[1])...)
 		}
 	}
 	for _, c := range linear {
