@@ -53,13 +53,16 @@ func runRun(ctx context.Context, c *console, o *runOptions, log string) error {
 
 // folderFor names the folder after the log, without its endings.
 func folderFor(log string) string {
+	if log == "-" {
+		return "lagwright-run"
+	}
 	base := filepath.Base(log)
 	for _, ending := range []string{".gz", ".zst"} {
 		base = strings.TrimSuffix(base, ending)
 	}
 	name := strings.TrimSuffix(base, filepath.Ext(base))
-	if name == "" || name == "-" || name == base {
-		return strings.TrimPrefix(base, "-") + "-lagwright" // never the log itself
+	if name == "" || name == base {
+		return base + "-lagwright" // never the name of the log itself
 	}
 	return name
 }

@@ -5,8 +5,11 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"os"
+	"path/filepath"
 	"strings"
 	"testing"
+	"time"
 )
 
 // Every command can say what it is for: one line, a real example, and how it
@@ -78,5 +81,65 @@ func TestWrongCommandLines(t *testing.T) {
 		if msg := errOut.String(); strings.Count(msg, "\n") != 1 || !strings.Contains(msg, tt.want) {
 			t.Errorf("%s: message %q, want one line that says %q", tt.line, msg, tt.want)
 		}
+	}
+}
+
+// An interrupt ends the work with exit 1 and leaves nothing behind.
+func TestInterrupt(t *testing.T) {
+	ctx, cancel := context.WithCancel(t.Context())
+	cancel()
+	dir := t.TempDir()
+	bump := filepath.Join(repository, "testdata", "demo", "bump.csv")
+	for _, args := range [][]string{
+		{"fit", bump, "-o", filepath.Join(dir, "card.json")},
+		{"check", bump, "-o", filepath.Join(dir, "check.json")},
+		{"track", bump, bump, "-o", filepath.Join(dir, "drift.json")},
+		{"run", bump, "-o", filepath.Join(dir, "folder")},
+		{"demo", "-o", filepath.Join(dir, "demo")},
+	} {
+		var out, errOut bytes.Buffer
+		code := Main(ctx, args, strings.NewReader(""), &out, &errOut)
+		if want := "lagwright: interrupted; no result was written\n"; code != exitMachine || errOut.String() != want {
+			t.Errorf("%s: exit %d, message %q", args[0], code, errOut.String())
+		}
+	}
+	entries, err := os.ReadDir(dir)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(entries) > 0 {
+		t.Errorf("left behind: %v", entries)
+	}
+}
+
+func TestCommandLine(t *testing.T) {
+	got := commandLine([]string{"run", "my log.csv", "--ms", "1.6", "it's", ""})
+	if want := `lagwright run 'my log.csv' --ms 1.6 'it'\''s' ''`; got != want {
+		t.Errorf("command line %s, want %s", got, want)
+	}
+}
+
+func TestFolderFor(t *testing.T) {
+	for log, want := range map[string]string{
+		"bump.csv":           "bump",
+		"logs/bump.csv.gz":   "bump",
+		"a.b.parquet":        "a.b",
+		"export":             "export-lagwright",
+		"-":                  "lagwright-run",
+		".csv":               ".csv-lagwright",
+		"dir.d/no-ending":    "no-ending-lagwright",
+		"bump.csv.zst":       "bump",
+		"C-2026-03-11.5.log": "C-2026-03-11.5",
+	} {
+		if got := folderFor(log); got != want {
+			t.Errorf("folderFor(%q) = %q, want %q", log, got, want)
+		}
+	}
+}
+
+func TestBarLine(t *testing.T) {
+	got := barLine("replaying", 120, 240, 12*time.Second)
+	if want := "replaying [############............] 120 of 240, 12 s left"; got != want {
+		t.Errorf("%q, want %q", got, want)
 	}
 }
