@@ -45,7 +45,7 @@ func (e *ensemble) each(f func(i int, s *scenario)) {
 }
 
 // holds tells whether the task is met on at least the share of the scenarios
-// of every card. It stops as soon as that is out of reach.
+// of every card (see toHold). It stops as soon as that is out of reach.
 func (e *ensemble) holds(c law, share float64) bool {
 	counts := e.counts()
 	failures := make([]atomic.Int64, e.cards)
@@ -57,13 +57,20 @@ func (e *ensemble) holds(c law, share float64) bool {
 		}
 		failed[i] = true
 		n := counts[s.card]
-		if int(failures[s.card].Add(1)) > n-needed(n, share) {
+		if int(failures[s.card].Add(1)) > n-toHold(n, share) {
 			out.Store(true)
 		}
 	})
 	e.promote(failed)
 	return !out.Load()
 }
+
+// toHold is on how many of n plants a design must hold so that one more plant
+// of the same kind, the real one, is expected among those it holds on with the
+// wanted share: ceil(share·(n+1)), the rank of conformal prediction (Vovk,
+// Gammerman and Shafer, Algorithmic Learning in a Random World, 2005, citation
+// from memory), n at most.
+func toHold(n int, share float64) int { return min(n, needed(n+1, share)) }
 
 // counts returns the number of scenarios of every card.
 func (e *ensemble) counts() []int {
