@@ -32,15 +32,10 @@ type plantShift struct {
 // from memory). In manual the moves are those of the input, which is its own
 // instrument. ok is false when nothing shows the plant.
 func (p *plan) shift(courses []*course, manual bool) (s plantShift, ok bool) {
-	n := 3 // gain, dead time, lags
-	if p.best.Structure.NumLags() == 0 {
-		n = 2
-	}
-	precision, weighted := mat.NewSymDense(n, nil), mat.NewVecDense(n, nil)
+	var all pool
 	for _, c := range courses {
 		columns, left := p.shiftColumns(c, c.u)
-		instruments := columns
-		driver := c.u
+		instruments, driver := columns, c.u
 		if !manual {
 			u, err := p.setpointInput(c)
 			if err != nil {
@@ -50,33 +45,55 @@ func (p *plan) shift(courses []*course, manual bool) (s plantShift, ok bool) {
 			driver = c.r
 		}
 		for _, w := range p.windows(c, driver) {
-			by, cov, tells := p.shiftIn(w, c, left, columns, instruments)
-			if !tells {
-				continue
+			if by, cov, tells := p.shiftIn(w, c, left, columns, instruments); tells {
+				all.add(by, cov)
 			}
-			var factor mat.Cholesky
-			var inverse mat.SymDense
-			if !factor.Factorize(cov) || factor.InverseTo(&inverse) != nil {
-				continue
-			}
-			var part mat.VecDense
-			part.MulVec(&inverse, by)
-			precision.AddSym(precision, &inverse)
-			weighted.AddVec(weighted, &part)
-			ok = true
 		}
 	}
+	if s, ok = all.mean(); !ok {
+		return s, false
+	}
+	return s, s.covariance.At(0, 0) < 0.25*0.25 // a gain known to worse than a quarter shows nothing
+}
+
+// A pool puts independent estimates together, each weighed by the inverse of
+// its covariance.
+type pool struct {
+	precision *mat.SymDense
+	weighted  *mat.VecDense
+}
+
+// add leaves out an estimate whose covariance is singular.
+func (a *pool) add(by *mat.VecDense, cov *mat.SymDense) {
 	var factor mat.Cholesky
-	s.covariance = mat.NewSymDense(n, nil)
-	if !ok || !factor.Factorize(precision) || factor.InverseTo(s.covariance) != nil {
+	var inverse mat.SymDense
+	if !factor.Factorize(cov) || factor.InverseTo(&inverse) != nil {
+		return
+	}
+	if a.precision == nil {
+		a.precision, a.weighted = mat.NewSymDense(by.Len(), nil), mat.NewVecDense(by.Len(), nil)
+	}
+	var part mat.VecDense
+	part.MulVec(&inverse, by)
+	a.precision.AddSym(a.precision, &inverse)
+	a.weighted.AddVec(a.weighted, &part)
+}
+
+func (a *pool) mean() (s plantShift, ok bool) {
+	if a.precision == nil {
+		return s, false
+	}
+	var factor mat.Cholesky
+	s.covariance = mat.NewSymDense(a.weighted.Len(), nil)
+	if !factor.Factorize(a.precision) || factor.InverseTo(s.covariance) != nil {
 		return s, false
 	}
 	var by mat.VecDense
-	by.MulVec(s.covariance, weighted)
+	by.MulVec(s.covariance, a.weighted)
 	for i := range by.Len() {
 		s.by[i] = by.AtVec(i)
 	}
-	return s, s.covariance.At(0, 0) < 0.25*0.25
+	return s, true
 }
 
 // A window is the rows lo ≤ i < hi about one move.

@@ -61,7 +61,9 @@ type BandMetrics struct {
 	High   RunMetrics `json:"high"`
 }
 
-// BackTest is the replay of a run under the gains in force when it was made.
+// BackTest says whether a run can have been made by the card's model and the
+// gains then in force. Differs says what differs; in a run that is reproduced,
+// what a reader should know of the test.
 type BackTest struct {
 	ShareInside float64  `json:"share_inside"`       // of the temperatures inside the band of plants and noise, given the logged input
 	Stated      float64  `json:"stated"`             // the band's level

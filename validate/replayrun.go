@@ -131,6 +131,11 @@ func (p *plan) ensemble(ctx context.Context, courses []*course, m yardstick, run
 	errs := make([]error, len(runners))
 	for w, r := range runners {
 		wait.Go(func() {
+			defer func() { // a panic here would pass by the one of attempt
+				if r := recover(); r != nil {
+					errs[w] = fmt.Errorf("internal error: %v", r)
+				}
+			}()
 			for errs[w] == nil && ctx.Err() == nil {
 				k := int(next.Add(1)) - 1
 				if k >= len(p.plants) {
