@@ -317,7 +317,11 @@ func (p *Plan) WriteText(w io.Writer) error {
 		{"step to", quantity(p.To, in, 4), "hold for " + duration(p.Hold)},
 		{"step back to", quantity(p.From, in, 4), "hold for " + duration(p.Back)},
 	})
-	out.paragraph("  ", fmt.Sprintf("Log every %s or faster; %s in all, %s.", duration(p.Sampling), duration(p.Duration*float64(p.Repeats)), counted(p.Repeats, "time", "times")))
+	text := fmt.Sprintf("Log every %s or faster. It takes %s.", duration(p.Sampling), duration(p.Duration))
+	if p.Repeats > 1 {
+		text += fmt.Sprintf(" Make it %d times, %s in all, and fit the logs together.", p.Repeats, duration(p.Duration*float64(p.Repeats)))
+	}
+	out.paragraph("  ", text)
 	out.heading("What it is expected to give")
 	rows := [][]string{{"", "expected", "wanted"}}
 	for _, e := range p.Expected {

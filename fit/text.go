@@ -29,7 +29,11 @@ func (c *Card) WriteText(w io.Writer) error {
 }
 
 func (c *Card) writeSource(p *page) {
-	p.heading("Model card " + printable(strings.TrimSpace(c.Tool+" "+c.Created)))
+	title := "Model card of " + printable(c.Created)
+	if c.Tool != "" {
+		title += ", made by " + printable(c.Tool)
+	}
+	p.heading(title)
 	for _, s := range c.Source {
 		text := fmt.Sprintf("%s: %s over %s", printable(s.File), counted(s.Rows, "row", "rows"), duration(s.ToS-s.FromS))
 		if s.Start != nil {
@@ -158,7 +162,7 @@ func noiseWords(n Noise, unit string) string {
 }
 
 func (c *Card) writeStructures(p *page) {
-	p.heading("Structures tried (AICc over the least one: within 2 the log cannot tell them apart)")
+	p.heading("Structures tried (AICc over the least; within 2 the log cannot tell them apart)")
 	unit := temperatureStep(c.Units.Temperature)
 	least := math.Inf(1)
 	for _, m := range c.Models {
