@@ -8,7 +8,6 @@ import (
 	"os"
 	"runtime"
 	"sort"
-	"strconv"
 	"strings"
 	"sync"
 	"testing"
@@ -187,61 +186,42 @@ func (f family) truth(i, n int) float64 {
 	return l[i-1]
 }
 
-// covered counts, per parameter, how often the interval holds the truth.
+// coverage counts, per parameter, how often the interval holds the truth.
 type coverage struct {
-	names        []string
-	in           []int
-	below, above []int
-	width        [][]float64
-	logs         int
+	in, below, above []int
+	width            [][]float64
+	logs             int
 }
 
-func study1(t testing.TB, f family, logs int, o Options) coverage {
+// cover fits logs of a family and counts.
+func cover(t testing.TB, f family, logs int, o Options) coverage {
 	var c coverage
+	o.Structure, o.Plants, o.Workers = f.structure, -1, 1
+	o, err := o.withDefaults()
+	if err != nil {
+		t.Fatal(err)
+	}
 	var mu sync.Mutex
 	var wg sync.WaitGroup
 	next := make(chan int)
 	for range runtime.GOMAXPROCS(0) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
+		wg.Go(func() {
 			for i := range next {
-				opt := o
-				opt.Structure = f.structure
-				opt.Plants = -1
-				opt, _ = opt.withDefaults()
 				recs, err := prepare([]*data.Run{f.make(uint64(1000 + i))}, ident.Linear)
 				if err != nil {
 					t.Error(err)
 					continue
 				}
-				out, err := find(context.Background(), recs, opt)
+				out, err := find(context.Background(), recs, o)
 				if err != nil {
 					t.Error(err)
 					continue
 				}
 				mu.Lock()
-				m := out.models[out.selected]
-				if c.in == nil {
-					n := len(m.est)
-					c.in, c.below, c.above, c.width = make([]int, n), make([]int, n), make([]int, n), make([][]float64, n)
-				}
-				c.logs++
-				for j, e := range m.est {
-					v := f.truth(j, len(m.est))
-					switch {
-					case !math.IsNaN(e.low) && v < e.low:
-						c.below[j]++
-					case !math.IsNaN(e.high) && v > e.high:
-						c.above[j]++
-					default:
-						c.in[j]++
-					}
-					c.width[j] = append(c.width[j], e.width())
-				}
+				c.count(f, out.models[out.selected].est)
 				mu.Unlock()
 			}
-		}()
+		})
 	}
 	for i := range logs {
 		next <- i
@@ -251,21 +231,85 @@ func study1(t testing.TB, f family, logs int, o Options) coverage {
 	return c
 }
 
-func TestCoverageTrial(t *testing.T) {
-	if os.Getenv("LW_TRIAL") == "" {
-		t.Skip("trial")
+func (c *coverage) count(f family, est []estimate) {
+	n := len(est)
+	if c.in == nil {
+		c.in, c.below, c.above, c.width = make([]int, n), make([]int, n), make([]int, n), make([][]float64, n)
 	}
-	n, _ := strconv.Atoi(os.Getenv("LW_TRIAL"))
-	for _, f := range families() {
-		if w := os.Getenv("LW_FAMILY"); w != "" && !strings.Contains(f.name, w) {
+	c.logs++
+	for j, e := range est {
+		v := f.truth(j, n)
+		switch {
+		case !math.IsNaN(e.low) && v < e.low:
+			c.below[j]++
+		case !math.IsNaN(e.high) && v > e.high:
+			c.above[j]++
+		default:
+			c.in[j]++
+		}
+		c.width[j] = append(c.width[j], e.width())
+	}
+}
+
+// bound is the Cramér-Rao width of the 95 % intervals at the truth, baseline
+// and drift unknown; the noise figures are orthogonal to the mean (Kay,
+// Fundamentals of Statistical Signal Processing, 1993, ch. 3, from memory).
+func (f family) bound(t testing.TB) []float64 {
+	recs, err := prepare([]*data.Run{f.make(1)}, ident.Linear)
+	if err != nil {
+		t.Fatal(err)
+	}
+	r := recs[0].whole()
+	r.model(rest, true)
+	s := shape{tc: 1, white: 1}
+	if f.ar > 0 {
+		s = shape{tc: -f.step / math.Log(f.ar), white: f.white}
+	}
+	r.setShape(s)
+	st, _ := ident.ParseStructure(f.structure)
+	e := newEngine(st, []*record{r})
+	e.gain, e.gainFix = f.gain, true
+	p := e.eval(append(append([]float64(nil), f.lags...), f.dead), true)
+	e.gainFix = false
+	cov := invert(e.tangent(r, &e.work[0], &p).evaluate(s).a)
+	var out []float64
+	for i := range cov {
+		out = append(out, 2*1.959964*f.sd*math.Sqrt(cov[i][i]))
+	}
+	return out
+}
+
+// TestCoverage holds the stated 95 % intervals of gain, lags and dead time
+// against the truth over many invented logs. Without LAGWRIGHT_LONG it takes
+// three families and few logs, and only a gross failure shows; the long study
+// asks for 93 to 97 %, up to 98.5 % where a parameter sits on an edge, within
+// three standard deviations of the count.
+func TestCoverage(t *testing.T) {
+	logs, long := 60, os.Getenv("LAGWRIGHT_LONG") != ""
+	if long {
+		logs = 1000
+	}
+	for i, f := range families() {
+		if !long && i != 2 && i != 10 && i != 11 {
 			continue
 		}
-		c := study1(t, f, n, Options{Noise: os.Getenv("LW_NOISE"), Drift: os.Getenv("LW_DRIFT"), Initial: os.Getenv("LW_INIT")})
-		var s []string
+		c := cover(t, f, logs, Options{})
+		bound := f.bound(t)
+		var line []string
 		for j := range c.in {
 			sort.Float64s(c.width[j])
-			s = append(s, fmt.Sprintf("%5.1f%% (%d,%d) w %.3g", 100*float64(c.in[j])/float64(c.logs), c.below[j], c.above[j], c.width[j][len(c.width[j])/2]))
+			share := float64(c.in[j]) / float64(c.logs)
+			ratio := c.width[j][len(c.width[j])/2] / bound[j]
+			line = append(line, fmt.Sprintf("%5.1f %% (%d, %d) %.2f", 100*share, c.below[j], c.above[j], ratio))
+			lo, hi := 0.93, 0.97
+			if f.boundary {
+				hi = 0.985
+			}
+			slack := 3 * math.Sqrt(0.95*0.05/float64(c.logs))
+			if share < lo-slack || share > hi+slack {
+				t.Errorf("%s: parameter %d is covered in %.1f %% of %d logs", f.name, j, 100*share, c.logs)
+			}
 		}
-		t.Logf("%-30s %s", f.name, strings.Join(s, " | "))
+		t.Logf("%-30s %s", f.name, strings.Join(line, " | "))
 	}
 }
