@@ -65,6 +65,7 @@ Start with: lagwright demo`,
 		newMan(c),
 	)
 	cobra.EnableCommandSorting = false // in the order of the work
+	root.SetUsageTemplate(strings.ReplaceAll(root.UsageTemplate(), ".FlagUsages", ".FlagUsagesWrapped 80"))
 	// --help shows flags in the order they are declared: by subject.
 	root.PersistentFlags().SortFlags = false
 	for _, sub := range root.Commands() {

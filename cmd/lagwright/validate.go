@@ -44,8 +44,8 @@ same command with --resume goes on. Several cards, or several --gains, give a
 table of the runs with the results side by side.
 ` + exitHelp,
 		Example: `  lagwright validate card.json runs/ --gains gains.json -o replay.json
-  lagwright validate card.json startup.csv --gains gains.json --logged-gains old.json
-  lagwright validate card.json 'runs/*.parquet' --gains gains.json -o runs.parquet
+  lagwright validate card.json may.csv --gains new.json --logged-gains old.json
+  lagwright validate card.json "runs/*.parquet" --gains new.json -o table.parquet
   lagwright validate card.json runs/ --gains pi.json --gains pid.json`,
 		Args: needArgs(2, -1, "lagwright validate card.json runs/ --gains gains.json"),
 		RunE: func(cmd *cobra.Command, args []string) error { return runValidate(cmd.Context(), c, &o, args) },
