@@ -27,16 +27,56 @@ const (
 	misfitSize  = 0.03  // relative difference from which it is worth a word; common practice, no source
 )
 
-// departure is a way in which a plant may differ from a linear one: column is
-// the change of the output for one unit of it.
+// departure is a way in which a plant may differ from a linear one: the change
+// of the output at the times t for one unit of it; nil where the input cannot
+// tell.
 type departure func(in ident.Input, t []float64) []float64
 
-// estimate is a departure's coefficient with its standard error, over all logs;
-// ok is false where no log can tell.
-func (m misfit) estimate(runs []*data.Run, of departure) (value, se float64, ok bool) {
-	var top, bottom float64
+// scene is one log with what the fitted model leaves of it.
+type scene struct {
+	in     ident.Input
+	t      []float64
+	out    *modelOutput
+	left   []float64   // whitened, free of basis
+	basis  [][]float64 // whitened directions in which the fit was free to move
+	bumps  []ident.Bump
+	misfit []float64 // log less model, as logged
+}
+
+// scenes prepares the logs.
+func (m misfit) scenes(runs []*data.Run) []*scene {
+	var all []*scene
 	for _, run := range runs {
-		a, b := m.onRun(run, of)
+		s := &scene{in: ident.HeldInput(run.T, run.U, m.law), bumps: ident.FindBumps(run.T, run.U, run.Y)}
+		var y []float64
+		for _, k := range closeRows(run, s.bumps, misfitRows) {
+			if !math.IsNaN(run.Y[k]) {
+				s.t, y = append(s.t, run.T[k]), append(y, run.Y[k])
+			}
+		}
+		s.out = newModelOutput(s.t, y, s.in, m.start, m.drift, m.noise.shape())
+		s.misfit = s.out.of(m.plant)
+		for k := range s.misfit {
+			s.misfit[k] = y[k] - s.misfit[k]
+		}
+		for _, c := range m.directions(s.out) {
+			s.out.filter.apply(c, c)
+			addToBasis(&s.basis, c)
+		}
+		s.left = make([]float64, len(s.t))
+		s.out.filter.apply(s.left, s.misfit)
+		project(s.left, s.basis)
+		all = append(all, s)
+	}
+	return all
+}
+
+// estimateDeparture is a departure's coefficient with its standard error, over all logs;
+// ok is false where no log can tell.
+func estimateDeparture(scenes []*scene, of departure) (value, se float64, ok bool) {
+	var top, bottom float64
+	for _, s := range scenes {
+		a, b := s.score(of)
 		top += a
 		bottom += b
 	}
@@ -46,43 +86,25 @@ func (m misfit) estimate(runs []*data.Run, of departure) (value, se float64, ok 
 	return top / bottom, 1 / math.Sqrt(bottom), true
 }
 
-// onRun returns the information b of one log on the departure's coefficient,
+// score returns the information b of the log on the departure's coefficient,
 // and a, b times the estimate.
-func (m misfit) onRun(run *data.Run, of departure) (a, b float64) {
-	var t, y []float64
-	for _, k := range closeRows(run, ident.FindBumps(run.T, run.U, run.Y), misfitRows) {
-		if !math.IsNaN(run.Y[k]) {
-			t, y = append(t, run.T[k]), append(y, run.Y[k])
-		}
-	}
-	in := ident.HeldInput(run.T, run.U, m.law)
-	extra := of(in, t)
-	if len(t) < 20 || extra == nil {
+func (s *scene) score(of departure) (a, b float64) {
+	extra := of(s.in, s.t)
+	dof := len(s.t) - len(s.basis) - 1
+	if extra == nil || dof < 12 {
 		return 0, 0
 	}
-	out := newModelOutput(t, y, in, m.start, m.drift, m.noise.shape())
-	left := out.of(m.plant)
-	for k := range left {
-		left[k] = y[k] - left[k]
-	}
-	var basis [][]float64
-	for _, c := range m.directions(out) {
-		out.filter.apply(c, c)
-		addToBasis(&basis, c)
-	}
-	out.filter.apply(left, left)
-	project(left, basis)
-	out.filter.apply(extra, extra)
+	s.out.filter.apply(extra, extra)
 	before := dot(extra, extra)
-	project(extra, basis)
-	project(extra, basis)
+	project(extra, s.basis)
+	project(extra, s.basis)
 	after := dot(extra, extra)
-	dof := len(t) - len(basis) - 1
-	if !(after > 1e-8*before) || dof < 8 {
+	if !(after > 1e-8*before) {
 		return 0, 0
 	}
-	s2 := (dot(left, left) - dot(extra, left)*dot(extra, left)/after) / float64(dof)
-	return dot(extra, left) / s2, after / s2
+	c := dot(extra, s.left)
+	s2 := (dot(s.left, s.left) - c*c/after) / float64(dof)
+	return c / s2, after / s2
 }
 
 // directions are the columns in which the fit was free to move.
@@ -168,14 +190,14 @@ func clearOf(value, se float64) bool {
 
 // upDown warns of a gain or lags that differ between steps up and down,
 // whichever is clearer: a difference of one shows in the other, too.
-func (m misfit) upDown(runs []*data.Run, add warn) {
-	gain, gainSE, ok := m.estimate(runs, m.gainUpDown)
+func (m misfit) upDown(scenes []*scene, add warn) {
+	gain, gainSE, ok := estimateDeparture(scenes, m.gainUpDown)
 	if !ok {
 		return
 	}
 	parameter, what, words := "gain", "the gain of steps up is %s %s than that of steps down", [2]string{"larger", "smaller"}
 	d, se := gain/m.plant.Gain, gainSE/math.Abs(m.plant.Gain)
-	if lag, lagSE, ok := m.estimate(runs, m.lagsUpDown); ok && math.Abs(lag)/lagSE > math.Abs(d)/se {
+	if lag, lagSE, ok := estimateDeparture(scenes, m.lagsUpDown); ok && math.Abs(lag)/lagSE > math.Abs(d)/se {
 		parameter, what, words = "lag1", "the lags of steps up are %s %s than those of steps down", [2]string{"longer", "shorter"}
 		d, se = lag, lagSE
 	}
@@ -190,11 +212,10 @@ func (m misfit) upDown(runs []*data.Run, add warn) {
 		figure(100*math.Abs(d), 2)+" %", word, figure(200*se, 2))
 }
 
-// curved warns of a gain that changes over the range of the input.
-func (m misfit) curved(runs []*data.Run, units CardUnits, add warn) {
-	e := extent(runs, func(r *data.Run) []float64 { return r.U })
+// curved warns of a gain that changes over the range e of the input.
+func (m misfit) curved(scenes []*scene, e [2]float64, units CardUnits, add warn) {
 	low, high := m.law.Apply(e[0]), m.law.Apply(e[1])
-	c, se, ok := m.estimate(runs, m.curvature((low+high)/2))
+	c, se, ok := estimateDeparture(scenes, m.curvature((low+high)/2))
 	if !ok {
 		return
 	}
@@ -215,29 +236,25 @@ func (m misfit) curved(runs []*data.Run, units CardUnits, add warn) {
 // looks says in words where, after the bumps, the log and the model part most:
 // the mean misfit in the direction of the bump, in windows of the plant's
 // residence time (dead time and lags together). Empty where there are no bumps.
-func (m misfit) looks(runs []*data.Run, unit string) string {
+func (m misfit) looks(scenes []*scene, unit string) string {
 	residence := m.plant.DeadTime + total(m.plant.Elements())
 	windows := [][2]float64{{0, 1}, {1, 3}, {3, math.Inf(1)}} // in residence times after the bump
 	sum, weight := make([]float64, len(windows)), make([]float64, len(windows))
-	for _, run := range runs {
-		bumps := ident.FindBumps(run.T, run.U, run.Y)
-		rows := closeRows(run, bumps, misfitRows)
-		t, y := rowsOf(run, rows)
-		fitted := newModelOutput(t, y, ident.HeldInput(run.T, run.U, m.law), m.start, m.drift, m.noise.shape()).of(m.plant)
+	for _, s := range scenes {
 		i := -1 // the last bump begun
-		for k, row := range rows {
-			for i+1 < len(bumps) && bumps[i+1].Row <= row {
+		for k, t := range s.t {
+			for i+1 < len(s.bumps) && s.bumps[i+1].Time <= t {
 				i++
 			}
-			if i < 0 || math.IsNaN(y[k]) {
+			if i < 0 {
 				continue
 			}
-			b := bumps[i]
+			b := s.bumps[i]
 			direction := math.Copysign(1, (m.law.Apply(b.To)-m.law.Apply(b.From))*m.plant.Gain)
-			since := (t[k] - b.Time) / residence
+			since := (t - b.Time) / residence
 			for w, window := range windows {
 				if since >= window[0] && since < window[1] {
-					sum[w] += direction * (y[k] - fitted[k])
+					sum[w] += direction * s.misfit[k]
 					weight[w]++
 				}
 			}

@@ -61,15 +61,16 @@ func (out *outcome) warnMisfit(runs []*data.Run, b *bounded, m *Model, add warn)
 	for _, e := range b.est {
 		fit.held = append(fit.held, e.fixed)
 	}
+	scenes := fit.scenes(runs)
 	if p := m.Residuals.InputCorrelationP; p < 0.01 {
-		looks := fit.looks(runs, temperatureStep(runs[0].Units.Temperature))
+		looks := fit.looks(scenes, temperatureStep(runs[0].Units.Temperature))
 		if looks != "" {
 			looks = ", " + looks
 		}
 		add("input-correlation", "", "the misfit follows the input (p = %s)%s: the structure, the input law or the dead time is not right over the whole log; look at the residuals after each bump", figure(p, 2), looks)
 	}
-	fit.upDown(runs, add)
-	fit.curved(runs, CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
+	fit.upDown(scenes, add)
+	fit.curved(scenes, extent(runs, func(r *data.Run) []float64 { return r.U }), CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
 	if n := len(runs); n > 1 && n <= mostApart {
 		c := &Card{Initial: out.initial.String(), Drift: map[bool]string{false: "none", true: "linear"}[out.drift]}
 		if a := compareApart(context.Background(), runs, out.opt, c, m); a != nil {
