@@ -56,7 +56,7 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 		here = atBest(nodes)
 	}
 	b.members = []member{here}
-	if !s.white {
+	if !s.white && !s.refuted {
 		for i, t := range ts {
 			nodes[i] = t.grid(nodes[i][0])
 		}
@@ -95,6 +95,10 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 		} else {
 			lowEnd, highEnd = e.lower[i-1], e.upper[i-1]
 		}
+		if s.refuted {
+			v.low, v.high = inside(v.value-lo*scale, lowEnd, highEnd), inside(v.value+hi*scale, lowEnd, highEnd)
+			continue
+		}
 		v.low = q.end(i, -1, lo, scale, lowEnd)
 		v.high = q.end(i, 1, hi, scale, highEnd)
 	}
@@ -105,6 +109,14 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	}
 	b.lin = f.linear(b, level)
 	return b, q.found
+}
+
+// inside is x, or NaN where the parameter's range ends before it.
+func inside(x, low, high float64) float64 {
+	if x <= low || x >= high {
+		return math.NaN()
+	}
+	return x
 }
 
 // direction is the index in the linearised model of parameter i (0 gain, 1…).

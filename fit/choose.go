@@ -105,6 +105,13 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	if err := together(ctx, o.Workers, sortedGroups(tasks), tick); err != nil {
 		return nil, err
 	}
+	least := math.Inf(1)
+	for _, f := range fits {
+		least = math.Min(least, f.aicc)
+	}
+	for i, f := range fits {
+		studies[i].refuted = f.aicc > least+refutedBy
+	}
 	out.models = make([]*bounded, len(structures))
 	var bounds [][]func()
 	for i := range structures {
@@ -123,6 +130,11 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	}
 	return out, nil
 }
+
+// refutedBy is the difference in AICc beyond which a structure counts as
+// refuted: its likelihood is e^-15 of the best one's (Burnham and Anderson
+// 2002, from memory, call a difference above 10 "essentially no support").
+const refutedBy = 30
 
 // polishAll is the number of rows up to which every structure of a white fit is
 // brought to its optimum on every row; of longer logs only the selected one.

@@ -112,7 +112,7 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 		}
 		return out
 	}
-	const burn, every = 60, 6
+	const burn, every = 40, 4
 	half := walkers / 2
 	for sweep := 0; len(out) < count; sweep++ {
 		for side := range 2 {

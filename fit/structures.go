@@ -43,8 +43,14 @@ type study struct {
 	recs  []*record
 	white bool // plain least squares on the simulated output
 	fix   map[string]float64
-	tau   float64 // of the best single lag, for starts
-	dead  float64
+
+	// refuted says that the log speaks clearly for another structure: the
+	// intervals are then Wald intervals at the best noise shape, which is all
+	// that a wrong model deserves.
+	refuted bool
+
+	tau  float64 // of the best single lag, for starts
+	dead float64
 }
 
 // clone returns a study on records of its own.
