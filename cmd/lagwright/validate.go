@@ -45,7 +45,7 @@ table of the runs with the results side by side.
 ` + exitHelp,
 		Example: `  lagwright validate card.json runs/ --gains gains.json -o replay.json
   lagwright validate card.json may.csv --gains new.json --logged-gains old.json
-  lagwright validate card.json "runs/*.parquet" --gains new.json -o table.parquet
+  lagwright validate card.json "runs/*.parquet" --gains new.json -o t.parquet
   lagwright validate card.json runs/ --gains pi.json --gains pid.json`,
 		Args: needArgs(2, -1, "lagwright validate card.json runs/ --gains gains.json"),
 		RunE: func(cmd *cobra.Command, args []string) error { return runValidate(cmd.Context(), c, &o, args) },
