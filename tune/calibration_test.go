@@ -14,9 +14,9 @@ import (
 // centre is scattered about the true heater, the plausible plants about the
 // centre in the same way, so that truth and plants are alike. Then the share
 // stated must be that of the true heaters on which the requirement holds.
-// 12 heaters, 300 with LAGWRIGHT_LONG=1.
+// 8 heaters, 300 with LAGWRIGHT_LONG=1.
 func TestShareIsCalibrated(t *testing.T) {
-	heaters, plants := uint64(12), 100
+	heaters, plants := uint64(8), 60
 	if os.Getenv("LAGWRIGHT_LONG") != "" {
 		heaters, plants = 300, 200
 	}

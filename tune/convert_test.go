@@ -99,6 +99,26 @@ func TestSeriesForm(t *testing.T) {
 	}
 }
 
+// A filter on the derivative alone can do the same as one in front of it all.
+func TestDerivativeOnlyFilter(t *testing.T) {
+	c := law{kc: 0.8, ti: 40, td: 9, tf: 0.9, b: 0.5}
+	d, ok := derivativeOnly(c)
+	if !ok {
+		t.Fatal("no such settings")
+	}
+	near(t, "setpoint gain", d.kc*d.b, c.kc*c.b, 1e-14)
+	for _, w := range []float64{0.01, 0.3, 5} {
+		s := complex(0, w)
+		alone := complex(d.kc, 0) * (1 + 1/(complex(d.ti, 0)*s) + complex(d.td, 0)*s/(complex(d.tf, 0)*s+1))
+		if cmplx.Abs(alone-c.response(w)) > 1e-13*cmplx.Abs(alone) {
+			t.Errorf("at %g rad/s %v, want %v", w, alone, c.response(w))
+		}
+	}
+	if _, ok := derivativeOnly(piLaw(1, 10)); ok {
+		t.Error("settings without a filter")
+	}
+}
+
 func TestConvertNamesTheNearest(t *testing.T) {
 	g := newGains(pidLaw(1, 10, 3), "pid")
 	_, err := Convert(g, Series, Spelling{})

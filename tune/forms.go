@@ -52,6 +52,22 @@ func toSeries(c law) (law, error) {
 	return law{kc: c.kc * f, ti: c.ti * f, td: c.td / f, tf: c.tf, b: c.b / f}, nil
 }
 
+// derivativeOnly returns the ideal settings for a controller that filters its
+// derivative alone, Kc·(1 + 1/(Ti·s) + Td·s/(Tf·s + 1)), with the same C(s) and
+// the same filter:
+//
+//	Ti − Tf, Kc·(Ti − Tf)/Ti, Ti·Td/(Ti − Tf) − Tf, b·Ti/(Ti − Tf)
+//
+// by comparing coefficients. It exists where those are positive.
+func derivativeOnly(c law) (law, bool) {
+	if !c.integral() || c.tf == 0 {
+		return law{}, false
+	}
+	ti := c.ti - c.tf
+	td := c.ti*c.td/ti - c.tf
+	return law{kc: c.kc * ti / c.ti, ti: ti, td: td, tf: c.tf, b: c.b * c.ti / ti}, ti > 0 && td > 0
+}
+
 // NoSeriesError says that ideal settings have no series form, which needs
 // Ti ≥ 4·Td.
 type NoSeriesError struct {

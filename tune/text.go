@@ -79,7 +79,7 @@ func (g *Gains) writeEntries(b *bufio.Writer) {
 		entries, _ = g.spell(Spelling{})
 	}
 	for _, e := range entries {
-		fmt.Fprintf(t, "  %s\t%.4g %s\n", plain(e.Name), e.Value, plain(e.Unit))
+		fmt.Fprintf(t, "  %s\t%s\n", plain(e.Name), strings.TrimSpace(fmt.Sprintf("%.4g %s", e.Value, plain(e.Unit))))
 	}
 	if g.Scan > 0 {
 		fmt.Fprintf(t, "  scan time\t%.4g s\n", g.Scan)
@@ -95,6 +95,11 @@ func (g *Gains) writeEntries(b *bufio.Writer) {
 	t.Flush()
 	if g.Filter > 0 {
 		fmt.Fprintln(b, "  The filter stands before the whole controller; without it the figures differ.")
+		if c, err := g.law(); err == nil {
+			if d, ok := derivativeOnly(c); ok {
+				fmt.Fprintf(b, "  A controller that filters its derivative alone gets, in the ideal form: Kc %.4g, Ti %.4g s, Td %.4g s, derivative filter %.4g s, setpoint weight %.4g.\n", d.kc, d.ti, d.td, d.tf, d.b)
+			}
+		}
 	}
 }
 
@@ -140,8 +145,7 @@ func (g *Gains) writeMore(b *bufio.Writer) {
 }
 
 func (d *RegionDesign) writeText(b *bufio.Writer) {
-	fmt.Fprint(b, "\nP control: poles left of ")
-	fmt.Fprintf(b, "%.3g 1/s and damping ratio of %.3g or more\n", -d.Region.sigma(), d.Region.Damping)
+	fmt.Fprintf(b, "\nP control: poles left of %.3g 1/s and damping ratio of %.3g or more\n", 0-d.Region.sigma(), d.Region.Damping)
 	list := func(where string, set []GainInterval) {
 		var parts []string
 		for _, g := range set {

@@ -15,7 +15,12 @@ import (
 // scattered by the given relative spread.
 func card(t testing.TB, seed uint64, spread float64) *fit.Card {
 	t.Helper()
-	plants := family(t, seed, 200, spread)
+	return cardOf(t, seed, 80, spread)
+}
+
+func cardOf(t testing.TB, seed uint64, n int, spread float64) *fit.Card {
+	t.Helper()
+	plants := family(t, seed, n, spread)
 	nominal := family(t, seed, 1, 0)[0]
 	c := &fit.Card{Schema: fit.CardSchema, InputLaw: "linear", Confidence: 0.95, Selected: nominal.Structure.String(),
 		Units: fit.CardUnits{Time: "s", Input: "V", Temperature: "degC"},
@@ -144,7 +149,7 @@ func TestTuneRefuses(t *testing.T) {
 }
 
 func BenchmarkTune(b *testing.B) {
-	c := card(b, 3, 0.05)
+	c := cardOf(b, 3, 200, 0.05)
 	for b.Loop() {
 		if _, err := Tune(context.Background(), []*fit.Card{c}, Requirement{Ms: ptr(1.6), Overshoot: ptr(10)}, Options{Workers: 2}); err != nil {
 			b.Fatal(err)
