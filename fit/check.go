@@ -127,7 +127,7 @@ func (r *CheckReport) WriteJSON(w io.Writer) error { return writeJSON(w, r) }
 
 // quickRows is how many rows of an input that moves all the time the quick fit
 // looks at.
-const quickRows = 20000
+const quickRows = 4000
 
 // Check says what is in a run and, from a quick fit of one lag and of two,
 // whether the run can support a fit. Where nothing can be fitted the error

@@ -60,6 +60,8 @@ const (
 	beforeLags = 2.0 // and the input before it
 	mostRepeat = 6
 	rowsPerLag = 12.0 // of the shortest lag that matters
+	leastRise  = 10.0 // of a bump, in standard deviations of the noise
+	leastShare = 0.1  // of a bump, of the range the card's log was driven over
 	planMargin = 1.25 // on the expected bounds: the plan rests on one card's noise
 )
 
@@ -184,10 +186,12 @@ func (d *design) halfWidth(name string, unit precision, heat float64, repeats in
 }
 
 // neededHeat is the step of phi(u) that gives every wanted bound at once; it is
-// positive, a step up.
+// positive, a step up. Its rise stands well out of the noise, and it is no
+// smaller than a share of what the card's log was driven by.
 func (d *design) neededHeat(p *Plan) float64 {
 	unit := d.precision(p)
-	heat := 0.0
+	law, in := d.card.Law(), d.card.Range.Input
+	heat := math.Max(leastRise*d.noise.SD/math.Abs(d.plant.Gain), leastShare*(law.Apply(in[1])-law.Apply(in[0])))
 	for _, w := range d.wants() {
 		heat = math.Max(heat, d.halfWidth(w.Parameter, unit, 1, 1)/w.Wanted)
 	}
@@ -202,7 +206,7 @@ func (d *design) inputOf(from, heat float64) float64 {
 	if law == ident.Power {
 		to = math.Sqrt(from*from + heat)
 	}
-	return from + roundUp(to-from)
+	return math.Round((from+roundUp(to-from))*1e9) / 1e9 // without the last bits of the sum
 }
 
 // limit is the highest input allowed, and why.

@@ -224,10 +224,14 @@ func (j *judgement) longerHold(would func(experiment) bool) (x float64, ok bool)
 	return high, true
 }
 
+// mostRise is how many times the swing of this log's temperature a cure may
+// ask for.
+const mostRise = 4
+
 // biggerBump words a bump that is larger by a factor; nothing where the factor
-// is none or more than 6.
+// is none, or would take the temperature far from where this log has been.
 func (j *judgement) biggerBump(need float64) string {
-	if len(j.bumps) == 0 || !(need > 1) || need > 6 {
+	if len(j.bumps) == 0 || !(need > 1) {
 		return ""
 	}
 	b := j.bumps[0]
@@ -241,6 +245,9 @@ func (j *judgement) biggerBump(need float64) string {
 	to := b.From + need*(b.To-b.From)
 	if law == ident.Power {
 		to = math.Copysign(math.Sqrt(math.Max(law.Apply(b.From)+heat, 0)), b.To)
+	}
+	if e := extent([]*data.Run{j.run}, func(r *data.Run) []float64 { return r.Y }); math.Abs(j.plant.Gain*heat) > mostRise*(e[1]-e[0]) {
+		return ""
 	}
 	s := fmt.Sprintf("bump at least %s instead of %s", quantity(roundUp(math.Abs(to-b.From)), unit, 3), quantity(math.Abs(b.To-b.From), unit, 3))
 	if !math.IsNaN(b.Before) {
