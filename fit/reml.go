@@ -264,13 +264,16 @@ func (t *tangent) bestShape(near *shape) node {
 		da, db = 0.3, 0.1
 	}
 	// Pattern search (Hooke and Jeeves 1961, from memory): halve when nothing helps.
-	for da > 0.01 {
+	for da > 0.02 {
 		c := best.shape
 		if c.white >= 1 {
 			c = shape{lo * 3, 0.97}
 		}
 		moved := false
-		for _, d := range [][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}} {
+		for i, d := range [][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}} {
+			if i >= 4 && moved {
+				break // the diagonals are for ridges
+			}
 			if better(c.tc*math.Exp(d[0]*da), c.white+d[1]*db) {
 				moved = true
 			}

@@ -102,6 +102,10 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 func (s *study) focus(f *fitted) {
 	e := f.e
 	dead := f.p.eta[e.ng]
+	searched := true // on every row
+	for _, r := range s.recs {
+		searched = searched && !r.averagesRows()
+	}
 	zone := 3 * s.recs[0].step
 	if e.ng > 0 {
 		zone = math.Max(zone, math.Min(0.02*(dead+f.p.eta[0]), 50*s.recs[0].step))
@@ -113,6 +117,9 @@ func (s *study) focus(f *fitted) {
 	s.applyFix(fresh)
 	f.e = fresh
 	f.p = fresh.descend(f.p.eta, finalTol)
+	if searched {
+		return
+	}
 	if q := fresh.intervals(f.p); q.s < f.p.s {
 		f.p = fresh.descend(q.eta, finalTol)
 	}
@@ -179,7 +186,10 @@ func (s *study) coincide(f *fitted) {
 			start[k] /= count[k]
 		}
 		start[e.ng] = dead
-		q := e.descend(start, finalTol)
+		q := e.descend(start, searchTol)
+		if q.s < best.s*(1+1e-5) {
+			q = e.descend(q.eta, finalTol)
+		}
 		if q.s < best.s*(1-1e-12) {
 			if full.s > q.s*(1+1e-9) {
 				if r := e.intervals(q); r.s < q.s {
@@ -198,10 +208,20 @@ func (s *study) coincide(f *fitted) {
 		e.setGroups(identity)
 	}
 	// An optimum inside can still be a little better than the edge.
-	if q := e.descend(f.p.eta, finalTol); q.s < f.p.s*(1-1e-8) {
-		f.p, f.groups = q, identity
+	if q := e.descend(f.p.eta, searchTol); q.s < f.p.s*(1-1e-8) {
+		f.p, f.groups = e.descend(q.eta, finalTol), identity
 	}
 	s.order(f)
+}
+
+// nearEdge reports whether lags coincide or come close to it.
+func (f *fitted) nearEdge() bool {
+	for i := range f.e.nl - 1 {
+		if f.p.eta[i] < 1.5*f.p.eta[i+1] {
+			return true
+		}
+	}
+	return false
 }
 
 func equalInts(a, b []int) bool {
@@ -266,7 +286,9 @@ func (s *study) alternate(f *fitted) {
 				f.p = f.e.descend(q.eta, finalTol)
 			}
 		}
-		s.coincide(f)
+		if round == 0 || f.nearEdge() {
+			s.coincide(f)
+		}
 		settled := round > 0
 		for i, r := range s.recs {
 			if !alike(before[i], r.shape) {
