@@ -188,14 +188,32 @@ func whitenTimes(x, t []float64, s shape) (sum, logdet float64) {
 		return dot(x, x), 0
 	}
 	k, a := newKalman(s), 0.0
-	for i, v := range x {
+	for i := 0; i < len(x); {
 		k.next(ident.Row{T: t[i], M: 1})
-		x[i] = (v - k.a2*a) * k.isd
-		a = k.decay*a + k.gain*v
-		sum += x[i] * x[i]
-		logdet += k.log
+		end := i + 1
+		if k.steady {
+			end = k.evenUntil(t, i)
+		}
+		a2, isd, decay, gain := k.a2, k.isd, k.decay, k.gain
+		logdet += float64(end-i) * k.log
+		for ; i < end; i++ {
+			v := x[i]
+			w := (v - a2*a) * isd
+			x[i] = w
+			a = decay*a + gain*v
+			sum += w * w
+		}
 	}
 	return sum, logdet
+}
+
+// evenUntil passes the rows after row i that keep its distance, and returns
+// the first that does not.
+func (k *kalman) evenUntil(t []float64, i int) int {
+	for i++; i < len(t) && math.Abs(t[i]-k.prevEnd-k.lastGap) <= 1e-7*k.lastGap; i++ {
+		k.prevEnd = t[i]
+	}
+	return i
 }
 
 // apply filters src into dst (they may be the same slice).
