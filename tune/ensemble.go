@@ -137,7 +137,8 @@ func (e *ensemble) miss(c law, share float64) float64 {
 
 // loadIAE is the median, over about the given number of scenarios, of the
 // integral of |error| after a unit load step at the plant's input; +Inf where
-// a loop is unstable.
+// a loop is unstable. It is never less than the integral of the error itself,
+// which is Ti/Kc.
 func (e *ensemble) loadIAE(c law, about int, fine float64) float64 {
 	stride := max(1, len(e.scenarios)/about)
 	sub := *e
@@ -152,6 +153,9 @@ func (e *ensemble) loadIAE(c law, about int, fine float64) float64 {
 		if f := s.quick(c); f.stable {
 			if fig, err := s.task.load(s, c, f, fine); err == nil {
 				v[i] = fig.iae
+				if c.integral() && s.scan == 0 {
+					v[i] = max(v[i], math.Abs(c.ti/c.kc))
+				}
 			}
 		}
 	})

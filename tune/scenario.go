@@ -21,8 +21,9 @@ type scenario struct {
 	loops map[int]*loopSim
 }
 
-// perDecade is the density of a scenario's grid; the peak is refined between
-// its points.
+// perDecade is the density of a scenario's grid, made denser where the dead
+// time turns the phase by more than 0.4 rad from point to point; the peak is
+// refined between its points.
 const perDecade = 32
 
 func newScenario(p ident.Plant, t *task, card int) *scenario {
@@ -30,11 +31,14 @@ func newScenario(p ident.Plant, t *task, card int) *scenario {
 	analysed := p
 	analysed.DeadTime += s.scan / 2
 	low, high := span(analysed)
-	n := int(math.Ceil(perDecade*math.Log10(high/low))) + 1
-	s.w, s.g = make([]float64, n), make([]complex128, n)
-	for i := range n {
-		s.w[i] = low * math.Pow(10, float64(i)/perDecade)
-		s.g[i] = analysed.Response(s.w[i])
+	turn := math.Inf(1)
+	if analysed.DeadTime > 0 {
+		turn = 0.4 / analysed.DeadTime
+	}
+	ratio := math.Pow(10, 1.0/perDecade)
+	for w := low; w < high*ratio; w = min(w*ratio, w+turn) {
+		s.w = append(s.w, w)
+		s.g = append(s.g, analysed.Response(w))
 	}
 	return s
 }
@@ -58,6 +62,8 @@ func span(p ident.Plant) (low, high float64) {
 	}
 	if _, pu, err := quickUltimate(p); err == nil {
 		high = min(high, 5*2*math.Pi/pu)
+	} else {
+		high *= 100 // nothing bounds the gain, so a crossover may lie far out
 	}
 	return low, max(high, 100*low)
 }
@@ -145,12 +151,14 @@ func (s *scenario) quick(c law) quickFigures {
 		}
 		last = r
 	}
-	if above { // the crossover lies beyond the grid
-		return s.slow(&l)
-	}
-	f.stable = sum == 0
 	f.ms = s.peak(c, at, least)
-	return f
+	f.stable = sum == 0
+	if far, ok := s.beyond(&l, c, above); ok {
+		f.ms = max(f.ms, far)
+		f.stable = f.stable && !math.IsInf(far, 1)
+		return f
+	}
+	return s.slow(&l)
 }
 
 func norm(z complex128) float64 { return real(z)*real(z) + imag(z)*imag(z) }
@@ -185,6 +193,40 @@ func (l *openLoop) branch(w float64) int {
 	return int(math.Floor((l.phase(w) + math.Pi) / (2 * math.Pi)))
 }
 
+// beyond returns the sensitivity peak above the grid, where a derivative can
+// lift |L| again and a loop of little but dead time stays up: +Inf where the
+// loop is unstable for it; ok is false where only the full sweep can tell.
+// Where the dead time turns the phase fast against the change of |L|, the peak
+// is 1/(1−|L|), and with |L| > 1 over a turn and a half −1 is encircled.
+func (s *scenario) beyond(l *openLoop, c law, above bool) (peak float64, ok bool) {
+	const ratio, little = 1.08, 0.05
+	end := s.w[len(s.w)-1]
+	limit := end
+	if c.tf > 0 {
+		limit = max(limit, 10/c.tf)
+	}
+	if above || l.magnitude(end) > 1 {
+		far := end + 3*math.Pi/l.delay
+		return math.Inf(1), l.delay > 0 && l.magnitude(far) > 1
+	}
+	peak = 1
+	for w := end; ; w *= ratio {
+		m := l.magnitude(w)
+		switch turning := l.delay*w*(ratio-1) > 0.5; {
+		case m > 1:
+			far := w + 3*math.Pi/max(l.delay, 1e-300)
+			return math.Inf(1), turning && l.magnitude(far) > 1
+		case turning:
+			peak = max(peak, 1/(1-m))
+		default:
+			peak = max(peak, 1/cmplx.Abs(1+l.response(w)))
+		}
+		if w > limit && m < little || w > 1e6*end {
+			return peak, true
+		}
+	}
+}
+
 // slow is quick by the full sweep.
 func (s *scenario) slow(l *openLoop) quickFigures {
 	full := l.figures()
@@ -201,7 +243,11 @@ func (s *scenario) peak(c law, i int, least float64) float64 {
 	a, b, d := at(i-1), at(i), at(i+1)
 	if bend := a - 2*b + d; bend > 0 {
 		t := (a - d) / (2 * bend)
-		w := s.w[i] * math.Pow(10, t/perDecade)
+		next := i + 1
+		if t < 0 {
+			next = i - 1
+		}
+		w := s.w[i] * math.Pow(s.w[next]/s.w[i], math.Abs(t))
 		l := s.p.Response(w) * c.response(w)
 		if s.scan > 0 {
 			l *= cmplx.Exp(complex(0, -w*s.scan/2))

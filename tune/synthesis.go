@@ -27,7 +27,8 @@ type search struct {
 	on        *ensemble
 	assurance float64
 	sign      float64 // of the gain
-	kc        float64 // a gain to start from, > 0
+	kc        float64 // a sensible size of the gain, > 0: bounds what is tried
+	from      float64 // the gain to start from, > 0
 	ti        [2]float64
 	b         float64
 	thin      bool // only whether there is a solution matters
@@ -62,7 +63,7 @@ func newSearch(ctx context.Context, e *ensemble, p ident.Plant, assurance float6
 	if long == 0 {
 		long, short = 100, 0.1
 	}
-	s.ti = [2]float64{short, 4 * long}
+	s.ti, s.from = [2]float64{short, 4 * long}, s.kc
 	return s
 }
 
@@ -160,7 +161,7 @@ func (s *search) integral() design {
 // around searches on from a design that holds.
 func (s *search) around(d design, part float64) design {
 	near := *s
-	near.kc = math.Abs(d.law.kc)
+	near.from = math.Abs(d.law.kc)
 	near.ti = [2]float64{d.law.ti / 1.8, d.law.ti * 1.8}
 	if better := near.overTimes(s.on, part, 9, 8); better.found && better.iae < d.iae {
 		return better
@@ -180,7 +181,7 @@ func (s *search) fine() float64 {
 // sections about the best.
 func (s *search) overTimes(on *ensemble, part float64, scan, refine int) design {
 	best := design{iae: math.Inf(1)}
-	guess := s.kc
+	guess := s.from
 	tried := map[float64]design{}
 	try := func(logTi float64) float64 {
 		if d, ok := tried[logTi]; ok {
@@ -248,7 +249,7 @@ func (s *search) derivative() design {
 	for _, part := range []float64{0.06, 0.12, 0.2, 0.3, 0.45} {
 		if d := s.overTimes(few, part, 9, 5); d.found && d.iae < best {
 			best, at = d.iae, part
-			s.kc = math.Abs(d.law.kc)
+			s.from = math.Abs(d.law.kc)
 		}
 	}
 	if at > 0 {
