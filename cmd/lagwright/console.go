@@ -95,7 +95,11 @@ func (c *console) note(message string, a ...any) {
 // complain prints the one line that an error gets.
 func (c *console) complain(ctx context.Context, err error) {
 	if errors.Is(err, context.Canceled) && ctx.Err() != nil {
-		err = errors.New("interrupted; no result was written")
+		message := "interrupted; no result was written"
+		if errors.As(err, new(resumable)) {
+			message += "; the same command with --resume goes on"
+		}
+		err = errors.New(message)
 	}
 	fmt.Fprintln(c.errOut, "lagwright: "+oneLine(err.Error()))
 }

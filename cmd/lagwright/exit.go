@@ -29,11 +29,13 @@ type (
 	usageError struct{ error } // the command line is wrong
 	inputError struct{ error } // the input cannot be used
 	answerNo   struct{ error } // the work was done and the answer is no
+	resumable  struct{ error } // interrupted, and --resume goes on
 )
 
 func (e usageError) Unwrap() error { return e.error }
 func (e inputError) Unwrap() error { return e.error }
 func (e answerNo) Unwrap() error   { return e.error }
+func (e resumable) Unwrap() error  { return e.error }
 
 func usageErrorf(format string, a ...any) error { return usageError{fmt.Errorf(format, a...)} }
 func inputErrorf(format string, a ...any) error { return inputError{fmt.Errorf(format, a...)} }

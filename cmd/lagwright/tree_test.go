@@ -112,6 +112,27 @@ func TestInterrupt(t *testing.T) {
 	}
 }
 
+// A validation with an output says how to go on.
+func TestInterruptedValidation(t *testing.T) {
+	dir := t.TempDir()
+	demo := filepath.Join(repository, "testdata", "demo")
+	card, replay := filepath.Join(dir, "card.json"), filepath.Join(dir, "replay.json")
+	gains, log := filepath.Join(demo, "gains-in-force.json"), filepath.Join(demo, "setpoint-change.csv")
+	var out, errOut bytes.Buffer
+	if code := Main(t.Context(), []string{"fit", filepath.Join(demo, "bump.csv"), "--structure", "fopdt", "--plants", "20", "-q", "-o", card}, nil, &out, &errOut); code != exitDone {
+		t.Fatalf("fit: %s", errOut.String())
+	}
+	ctx, cancel := context.WithCancel(t.Context())
+	cancel()
+	code := Main(ctx, []string{"validate", card, log, "--gains", gains, "-o", replay}, nil, &out, &errOut)
+	if !strings.Contains(errOut.String(), "--resume goes on") || code != exitMachine {
+		t.Errorf("exit %d, message %q", code, errOut.String())
+	}
+	if _, err := os.Stat(replay); err == nil {
+		t.Error("an interrupted validation wrote its output")
+	}
+}
+
 func TestCommandLine(t *testing.T) {
 	got := commandLine([]string{"run", "my log.csv", "--ms", "1.6", "it's", ""})
 	if want := `lagwright run 'my log.csv' --ms 1.6 'it'\''s' ''`; got != want {

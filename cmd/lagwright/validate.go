@@ -138,6 +138,9 @@ func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gain
 	options.Progress = progress
 	read := func(ctx context.Context, file string) ([]*data.Run, error) { return log.read(ctx, c, file) }
 	replay, err := validate.ReplayFiles(ctx, card, files, read, gains, options)
+	if ctx.Err() != nil && journal {
+		return nil, resumable{err}
+	}
 	if err != nil {
 		return nil, inputError{err}
 	}
