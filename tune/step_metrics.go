@@ -2,7 +2,6 @@ package tune
 
 import (
 	"math"
-	"slices"
 
 	"lagwright/ident"
 )
@@ -136,24 +135,29 @@ func (l *openLoop) plan(fine float64) runPlan {
 
 // spread is the sum of the loop's times, s.
 func (l *openLoop) spread() float64 {
-	spread := l.delay
+	spread := l.delay + l.reset()
 	for _, t := range l.lags {
 		spread += t
-	}
-	if l.integrators > 0 {
-		spread += l.q1
 	}
 	return spread
 }
 
+// reset is the integral time of a loop with an integrator, s.
+func (l *openLoop) reset() float64 {
+	if l.integrators == 0 {
+		return 0
+	}
+	return l.q1
+}
+
 // planAt is plan for a known highest gain crossover w, rad/s, 0 for none.
 // Where dead time dominates the output moves faster than the loop does: in
-// the time of the longest lag, once every dead time.
+// the time of the lags, once every dead time.
 func (l *openLoop) planAt(w, fine float64) runPlan {
 	spread := l.spread()
 	w = max(w, 1/spread)
-	if l.delay > 0 && len(l.lags) > 0 {
-		w = max(w, min(2/slices.Max(l.lags), 3/l.delay))
+	if lags := spread - l.delay - l.reset(); l.delay > 0 && lags > 0 {
+		w = max(w, min(2/lags, 3/l.delay))
 	}
 	return runPlan{
 		step:    fine / w,
