@@ -82,19 +82,8 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 			v.se = math.Sqrt(c)
 		}
 		lo, hi := b.quantiles(here, g, level)
-		limit := 0.0
-		if i == 0 && v.value < 0 {
-			limit = math.Inf(-1)
-		}
 		scale := math.Sqrt(here.cov[g][g])
-		lowEnd, highEnd := limit, math.Inf(1)
-		if i == 0 && v.value < 0 {
-			lowEnd, highEnd = 1e4*v.value, 0
-		} else if i == 0 {
-			highEnd = 1e4 * v.value
-		} else {
-			lowEnd, highEnd = e.lower[i-1], e.upper[i-1]
-		}
+		lowEnd, highEnd := b.reach(i, v.value)
 		if s.refuted {
 			v.low, v.high = inside(v.value-lo*scale, lowEnd, highEnd), inside(v.value+hi*scale, lowEnd, highEnd)
 			continue
@@ -109,6 +98,18 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	}
 	b.lin = f.linear(b, level)
 	return b, q.found
+}
+
+// reach is the range that parameter i may take: the gain keeps its sign.
+func (b *bounded) reach(i int, value float64) (low, high float64) {
+	const far = 1e4
+	switch {
+	case i > 0:
+		return b.e.lower[i-1], b.e.upper[i-1]
+	case value < 0:
+		return far * value, 0
+	}
+	return 0, far * value
 }
 
 // inside is x, or NaN where the parameter's range ends before it.

@@ -30,11 +30,11 @@ func Fit(ctx context.Context, runs []*data.Run, o Options) (*Card, error) {
 		return nil, err
 	}
 	out.sample()
-	return out.card(runs), nil
+	return out.card(ctx, runs), ctx.Err()
 }
 
 // card writes down what was found.
-func (out *outcome) card(runs []*data.Run) *Card {
+func (out *outcome) card(ctx context.Context, runs []*data.Run) *Card {
 	o := out.opt
 	c := &Card{
 		Schema: CardSchema, Tool: o.Tool, Created: created(runs),
@@ -55,7 +55,7 @@ func (out *outcome) card(runs []*data.Run) *Card {
 	c.Selected = out.models[out.selected].st.String()
 	out.writePlants(c)
 	c.Derived = out.derived()
-	c.Warnings = out.warnings(runs)
+	c.Warnings = out.warnings(ctx, runs)
 	c.Cautions = cautions(runs, c)
 	return c
 }
@@ -350,13 +350,15 @@ func (out *outcome) noise(b *bounded) Noise {
 	return out2
 }
 
-// inputChanges is the change of phi(u) at each row with a temperature.
+// inputChanges is the change of phi(u) since the row before, at each row with a
+// temperature: a change at a row shows in the rows after it, and in closed loop
+// it was made from that row's noise.
 func inputChanges(r *record) []float64 {
 	out := make([]float64, len(r.t))
 	k := 0
 	last := r.input.Before
 	for i, at := range r.input.At {
-		for k < len(r.t)-1 && r.t[k] < at {
+		for k < len(r.t)-1 && r.t[k] <= at {
 			k++
 		}
 		out[k] += r.input.Value[i] - last

@@ -105,6 +105,10 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	if err := together(ctx, o.Workers, sortedGroups(tasks), tick); err != nil {
 		return nil, err
 	}
+	structures, fits, studies = answered(structures, fits, studies)
+	if len(fits) == 0 {
+		return nil, fmt.Errorf("%s: %w: no row after the bump shows it; record on until the temperature has settled", recs[0].run.Source.File, ErrNoAnswer)
+	}
 	least := math.Inf(1)
 	for _, f := range fits {
 		least = math.Min(least, f.aicc)
@@ -125,10 +129,23 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	out.choose()
 	for i, m := range out.models {
 		if i == out.selected || s.white && m.rows() <= polishAll {
-			m.refine()
+			m.refine(s.white)
 		}
 	}
 	return out, nil
+}
+
+// answered drops the structures whose fit found no response in any row.
+func answered(sts []ident.Structure, fits []*fitted, studies []*study) ([]ident.Structure, []*fitted, []*study) {
+	var s []ident.Structure
+	var f []*fitted
+	var d []*study
+	for i := range fits {
+		if p := fits[i].p; p.gg > 0 && p.gain != 0 && !math.IsNaN(fits[i].aicc) && !math.IsInf(fits[i].aicc, 0) {
+			s, f, d = append(s, sts[i]), append(f, fits[i]), append(d, studies[i])
+		}
+	}
+	return s, f, d
 }
 
 // refutedBy is the difference in AICc beyond which a structure counts as

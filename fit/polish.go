@@ -16,6 +16,7 @@ type polished struct {
 	eta  []float64 // as in point, coinciding lags apart
 	gain float64
 	beta [][]float64 // per record: baseline, drift, earlier input
+	cov  [][]float64 // of gain, eta (coinciding lags as one) and the linear columns, for unit variance
 }
 
 // polishChunk is how many rows are taken at a time.
@@ -60,11 +61,32 @@ func (b *bounded) polish() *polished {
 			break
 		}
 	}
+	at.cov = b.unitCovariance(gram)
 	return &at
 }
 
-// refine polishes b and moves its values to the optimum found.
-func (b *bounded) refine() {
+// unitCovariance inverts the normal equations of the parameters that are free.
+func (b *bounded) unitCovariance(gram [][]float64) [][]float64 {
+	n := len(gram) - 1
+	a := columns(n, n)
+	for i := range n {
+		copy(a[i], gram[i][:n])
+	}
+	if b.e.gainFix {
+		a[0][0] = 0
+	}
+	for l, held := range b.e.held {
+		if held {
+			d := b.direction(l + 1)
+			a[d][d] = 0
+		}
+	}
+	return invert(a)
+}
+
+// refine polishes b and moves its values to the optimum found. Under a known
+// noise shape (exact) the standard errors are those of every row, too.
+func (b *bounded) refine(exact bool) {
 	b.fine = b.polish()
 	if b.fine == nil {
 		return
@@ -72,6 +94,16 @@ func (b *bounded) refine() {
 	b.est[0].value = b.fine.gain
 	for i, v := range b.fine.eta {
 		b.est[i+1].value = v
+	}
+	if exact {
+		for i := range b.est {
+			for j := range b.est {
+				b.cov[i][j] = b.s2() * b.fine.cov[b.direction(i)][b.direction(j)]
+			}
+			if !math.IsNaN(b.est[i].se) && !b.est[i].fixed {
+				b.est[i].se = math.Sqrt(b.cov[i][i])
+			}
+		}
 	}
 	for i, lin := range b.lin {
 		for j := range lin {

@@ -2,9 +2,6 @@ package fit
 
 import "math"
 
-// bounds are the ends of an interval, NaN where the log sets none.
-type bounds struct{ low, high float64 }
-
 // profiler finds profile-likelihood intervals (Bates and Watts 1988, ch. 6):
 // a parameter is held at v, the others are fitted again, and
 //
@@ -96,6 +93,9 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 	for tries := 0; ; tries++ {
 		rv, p := r(value+dir*x, from)
 		if rv >= c {
+			if i == 0 && q.endless(p) {
+				return math.NaN()
+			}
 			xh, rh = x, rv
 			break
 		}
@@ -141,6 +141,17 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 		}
 	}
 	return value + dir*(xl+xh)/2
+}
+
+// endless reports whether a lag of p sits on the limit of the search: there the
+// sum of squares rises only because the lag may not grow with the gain.
+func (q *profiler) endless(p point) bool {
+	for j := range q.e.ng {
+		if !q.e.held[j] && p.eta[j] >= 0.999*q.e.upper[j] {
+			return true
+		}
+	}
+	return false
 }
 
 func (q *profiler) value(i int) float64 {

@@ -14,7 +14,7 @@ import (
 type warn func(code, parameter, format string, args ...any)
 
 // warnings lists what limits the card.
-func (out *outcome) warnings(runs []*data.Run) []Warning {
+func (out *outcome) warnings(ctx context.Context, runs []*data.Run) []Warning {
 	list := []Warning{}
 	add := func(code, parameter, format string, args ...any) {
 		list = append(list, Warning{Code: code, Parameter: parameter, Text: fmt.Sprintf(format, args...)})
@@ -24,7 +24,7 @@ func (out *outcome) warnings(runs []*data.Run) []Warning {
 	out.openEnds(b, add)
 	out.alike(add)
 	out.warnNoise(&m, add)
-	out.warnMisfit(runs, b, &m, add)
+	out.warnMisfit(ctx, runs, b, &m, add)
 	out.warnTest(runs, b, &m, add)
 	for _, run := range runs {
 		for _, n := range run.Quality.Notes {
@@ -51,7 +51,7 @@ func (out *outcome) warnNoise(m *Model, add warn) {
 }
 
 // warnMisfit warns of what a linear plant shared by all logs cannot follow.
-func (out *outcome) warnMisfit(runs []*data.Run, b *bounded, m *Model, add warn) {
+func (out *outcome) warnMisfit(ctx context.Context, runs []*data.Run, b *bounded, m *Model, add warn) {
 	plant, err := m.Plant()
 	if err != nil {
 		return
@@ -73,7 +73,7 @@ func (out *outcome) warnMisfit(runs []*data.Run, b *bounded, m *Model, add warn)
 	fit.curved(scenes, extent(runs, func(r *data.Run) []float64 { return r.U }), CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
 	if n := len(runs); n > 1 && n <= mostApart {
 		c := &Card{Initial: out.initial.String(), Drift: map[bool]string{false: "none", true: "linear"}[out.drift]}
-		if a := compareApart(context.Background(), runs, out.opt, c, m); a != nil {
+		if a := compareApart(ctx, runs, out.opt, c, m); a != nil {
 			a.warnDiffer(out.opt.Confidence, add)
 		}
 	}
