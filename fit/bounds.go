@@ -16,12 +16,13 @@ type estimate struct {
 type bounded struct {
 	*fitted
 	est       []estimate
-	fine      *polished    // optimum on every row, nil when it is that of fitted
-	written   *Model       // as it stands in the card, once it does
-	members   []member     // linearised posterior over the noise shapes, coinciding lags as one
-	reference [][]float64  // linearised covariance at the shapes in force
-	lin       [][]estimate // per record: the fixed linear columns (baseline, drift)
-	cov       [][]float64  // Wald covariance of est, NaN rows where there is none
+	fine      *polished      // optimum on every row, nil when it is that of fitted
+	written   *Model         // as it stands in the card, once it does
+	members   []member       // linearised posterior over the noise shapes, coinciding lags as one
+	reference [][]float64    // linearised covariance at the shapes in force
+	lin       [][]estimate   // per record: the fixed linear columns (baseline, drift)
+	trails    [][][2]float64 // profile of est: value, root over its quantile, ascending
+	cov       [][]float64    // Wald covariance of est, NaN rows where there is none
 }
 
 // bound finds the intervals of f at the level, and improves f when a better
@@ -68,6 +69,7 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	q := &profiler{e: e, best: f.p, s2: f.s2()}
 	n := e.nl + 2
 	b.est = make([]estimate, n)
+	b.trails = make([][][2]float64, n)
 	b.cov = columns(n, n)
 	for i := range n {
 		v := &b.est[i]
@@ -90,6 +92,7 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 		}
 		v.low = q.end(i, -1, lo, scale, lowEnd)
 		v.high = q.end(i, 1, hi, scale, highEnd)
+		b.trails[i] = q.takeTrail(v.value)
 	}
 	for i := range n {
 		for j := range n {

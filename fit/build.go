@@ -54,6 +54,7 @@ func (out *outcome) card(ctx context.Context, runs []*data.Run) *Card {
 	}
 	c.Selected = out.models[out.selected].st.String()
 	out.writePlants(c)
+	c.Profiles = out.profiles()
 	c.Derived = out.derived()
 	c.Warnings = out.warnings(ctx, runs)
 	c.Cautions = cautions(runs, c)
@@ -153,6 +154,30 @@ func numberOrNull(v float64) *float64 {
 		return nil
 	}
 	return &v
+}
+
+// profiles are those of the selected model.
+func (out *outcome) profiles() []Profile {
+	b := out.models[out.selected]
+	var list []Profile
+	for i, trail := range b.trails {
+		if len(trail) < 3 {
+			continue
+		}
+		name := "gain"
+		switch {
+		case i == len(b.est)-1:
+			name = "dead_time"
+		case i > 0:
+			name = fmt.Sprintf("lag%d", i)
+		}
+		p := Profile{Parameter: name}
+		for _, v := range trail {
+			p.Value, p.Root = append(p.Value, v[0]), append(p.Root, v[1])
+		}
+		list = append(list, p)
+	}
+	return list
 }
 
 func parameter(name, unit string, e estimate) Parameter {

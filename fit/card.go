@@ -25,7 +25,8 @@ type Card struct {
 
 	Conditions Conditions `json:"conditions"`
 	Plants     Plants     `json:"plants"`
-	Derived    []Derived  `json:"derived"` // of the selected model
+	Profiles   []Profile  `json:"profiles,omitempty"` // of the selected model
+	Derived    []Derived  `json:"derived"`            // of the selected model
 	Warnings   []Warning  `json:"warnings"`
 	Cautions   []string   `json:"cautions"`
 }
@@ -113,6 +114,16 @@ type Plants struct {
 	Rand       int64       `json:"rand"`
 	Parameters []string    `json:"parameters"`
 	Values     [][]float64 `json:"values"`
+}
+
+// Profile is how the fit worsens as one parameter is held away from its best
+// value and the others are fitted again: Root is the signed root of the
+// likelihood ratio, (S(v) - S)/s², in units in which the interval ends at ±1
+// on either side. Points are in ascending order of Value.
+type Profile struct {
+	Parameter string    `json:"parameter"`
+	Value     []float64 `json:"value"`
+	Root      []float64 `json:"root"`
 }
 
 // Derived is a quantity computed from the model, with bounds.

@@ -1,6 +1,10 @@
 package fit
 
-import "math"
+import (
+	"cmp"
+	"math"
+	"slices"
+)
 
 // profiler finds profile-likelihood intervals (Bates and Watts 1988, ch. 6):
 // a parameter is held at v, the others are fitted again, and
@@ -16,6 +20,7 @@ type profiler struct {
 	s2   float64
 	// found is a better optimum met on the way, nil when there is none.
 	found *point
+	trail [][2]float64 // points passed: value, root over the quantile of its side
 }
 
 // hold fits everything else with parameter i (0 gain, 1… eta) at v, from a
@@ -81,7 +86,9 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 			cp := p
 			q.found = &cp
 		}
-		return math.Sqrt(math.Max(p.s-q.best.s, 0) / q.s2), p
+		root := math.Sqrt(math.Max(p.s-q.best.s, 0) / q.s2)
+		q.trail = append(q.trail, [2]float64{v, dir * root / c})
+		return root, p
 	}
 	room := math.Abs(limit - value)
 	if !(scale > 0) || math.IsInf(scale, 0) || scale > math.Abs(value) {
@@ -141,6 +148,14 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 		}
 	}
 	return value + dir*(xl+xh)/2
+}
+
+// takeTrail hands over the points passed, in order, the optimum among them.
+func (q *profiler) takeTrail(value float64) [][2]float64 {
+	t := append(q.trail, [2]float64{value, 0})
+	q.trail = nil
+	slices.SortFunc(t, func(a, b [2]float64) int { return cmp.Compare(a[0], b[0]) })
+	return t
 }
 
 // endless reports whether a lag of p sits on the limit of the search: there the
