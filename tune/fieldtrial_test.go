@@ -8,7 +8,6 @@ import (
 	"os"
 	"runtime"
 	"sort"
-	"strconv"
 	"sync"
 	"testing"
 
@@ -140,18 +139,22 @@ func tryHeater(h trialHeater, assurance float64) (trialResult, error) {
 	return out, nil
 }
 
+// TestFieldTrial makes gains from the bump logs of invented heaters and puts
+// them on the true ones. The long trial asks for what the trade's best practice
+// does not reach: at --assurance 95 % at least 93 % meet their requirement, at a
+// load IAE of at most 1.15 times the best possible (90th percentile 1.45). The
+// short one only shows a gross failure.
 func TestFieldTrial(t *testing.T) {
-	n := 6
-	if s := os.Getenv("LW_TRIAL"); s != "" {
-		n, _ = strconv.Atoi(s)
+	heaters, least := 8, 0.7
+	long := os.Getenv("LAGWRIGHT_LONG") != ""
+	if long {
+		heaters, least = 500, 0.93
 	}
-	results := make([]trialResult, n)
+	results := make([]trialResult, heaters)
 	var wg sync.WaitGroup
 	next := make(chan int)
 	for range runtime.GOMAXPROCS(0) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
+		wg.Go(func() {
 			for i := range next {
 				r, err := tryHeater(inventHeater(uint64(i)), 0.95)
 				if err != nil {
@@ -159,14 +162,14 @@ func TestFieldTrial(t *testing.T) {
 				}
 				results[i] = r
 			}
-		}()
+		})
 	}
-	for i := range n {
+	for i := range heaters {
 		next <- i
 	}
 	close(next)
 	wg.Wait()
-	met, statedHigh, metHigh := 0, 0, 0
+	met, high, metHigh := 0, 0, 0
 	var ratios []float64
 	for i, r := range results {
 		if r.meets {
@@ -176,19 +179,26 @@ func TestFieldTrial(t *testing.T) {
 			}
 		}
 		if r.share >= 0.9 {
-			statedHigh++
+			high++
 			if r.meets {
 				metHigh++
 			}
 		}
-		if testing.Verbose() {
-			t.Logf("%3d meets %-5v ratio %.3f share %.3f stated %v  %s", i, r.meets, r.ratio, r.share, r.stated, r.what)
+		if !r.meets || long {
+			t.Logf("%3d meets %-5v IAE ratio %.3f share %.3f stated %v: %s", i, r.meets, r.ratio, r.share, r.stated, r.what)
 		}
 	}
 	sort.Float64s(ratios)
 	if len(ratios) == 0 {
 		t.Fatal("no heater met its requirement")
 	}
-	t.Logf("%d heaters: %.1f%% meet; load IAE over the best possible: median %.3f, 90th percentile %.3f; stated 0.9 to 1: %d, of which %.1f%% met",
-		n, 100*float64(met)/float64(n), ratios[len(ratios)/2], ratios[int(0.9*float64(len(ratios)-1))], statedHigh, 100*float64(metHigh)/math.Max(float64(statedHigh), 1))
+	share, median, most := float64(met)/float64(heaters), ratios[len(ratios)/2], ratios[len(ratios)*9/10]
+	t.Logf("%d heaters: %.1f %% meet; load IAE over the best possible: median %.3f, 90th percentile %.3f; of %d stated at 0.9 to 1, %.1f %% met",
+		heaters, 100*share, median, most, high, 100*float64(metHigh)/float64(max(high, 1)))
+	if share < least {
+		t.Errorf("%.1f %% of the heaters meet their requirement, want %.0f %%", 100*share, 100*least)
+	}
+	if long && (median > 1.15 || most > 1.45) {
+		t.Errorf("load IAE %.3f times the best possible in the median, %.3f at the 90th percentile", median, most)
+	}
 }
