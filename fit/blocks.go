@@ -86,7 +86,7 @@ func (r *record) uniform(k, m int) int {
 }
 
 // searchRows is how many blocks a long log is averaged into for the search.
-const searchRows = 600
+const searchRows = 400
 
 // coarse averages a long log into about rows equal blocks, for the search.
 func (r *record) coarse(rows int) *record {

@@ -137,8 +137,10 @@ func (e *engine) descend(eta []float64, tol float64) point {
 	return p
 }
 
-// The tolerances of a search and of a final fit, relative in the sum of squares.
+// The tolerances of a scan of intervals, of a search and of a final fit, relative
+// in the sum of squares.
 const (
+	scanTol   = 1e-4
 	searchTol = 1e-7
 	finalTol  = 1e-13
 )
@@ -194,7 +196,10 @@ func (e *engine) intervals(p point) point {
 			return point{}, false
 		}
 		e.lower[d], e.upper[d] = a, b
-		q := e.descend(e.moveDeadTime(from, a+frac*(b-a)), searchTol)
+		q := e.descend(e.moveDeadTime(from, a+frac*(b-a)), scanTol)
+		if q.s < best.s+worse/12 { // near enough to become the best
+			q = e.descend(q.eta, searchTol)
+		}
 		if q.s < best.s {
 			best = q
 		}

@@ -35,7 +35,7 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 		}
 	}
 	d := len(free)
-	walkers := 2 * max(12, 2*d)
+	walkers := 2 * max(8, 2*d)
 	if d == 0 {
 		walkers = 2
 	}
@@ -112,7 +112,7 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 		}
 		return out
 	}
-	const burn, every = 40, 4
+	const burn, every = 30, 4
 	half := walkers / 2
 	for sweep := 0; len(out) < count; sweep++ {
 		for side := range 2 {
