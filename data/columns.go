@@ -204,15 +204,13 @@ func assignTime(cols []column, l *layout, taken map[int]bool) error {
 // clockAmong narrows several columns that could be the clock: a full stamp
 // says more than a time of day, a time of day beside a date belongs to it.
 func clockAmong(cols []column, found []int) []int {
-	var full, timed, dated, plain []int
+	var full, timed, plain []int // a date alone is no clock
 	for _, i := range found {
 		switch c := cols[i]; {
 		case c.class == stamps && c.dated && c.timed:
 			full = append(full, i)
 		case c.class == stamps && c.timed:
 			timed = append(timed, i)
-		case c.class == stamps:
-			dated = append(dated, i)
 		case c.class == numbers:
 			plain = append(plain, i)
 		}

@@ -47,7 +47,6 @@ type parquetColumn struct {
 		by  []parquet.ByteArray
 		fix []parquet.FixedLenByteArray
 	}
-	scratch []byte
 }
 
 // parquetKind is what the values of a column become.

@@ -55,14 +55,3 @@ func (b *Bundle) check(run int) *fit.CheckReport {
 	}
 	return nil
 }
-
-// requirement is what the page judges by: that of the gains, else of the replay.
-func (b *Bundle) requirement() tune.Requirement {
-	switch {
-	case b.Gains != nil:
-		return b.Gains.Requirement
-	case b.Replay != nil:
-		return b.Replay.Requirement
-	}
-	return tune.Requirement{}
-}

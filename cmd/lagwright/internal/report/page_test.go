@@ -146,7 +146,8 @@ func TestAnswerFollowsVerdict(t *testing.T) {
 }
 
 func TestPageSameBytes(t *testing.T) {
-	if pageOf(t, sampleBundle()) != pageOf(t, sampleBundle()) {
+	first, second := pageOf(t, sampleBundle()), pageOf(t, sampleBundle())
+	if first != second {
 		t.Error("two pages of one bundle differ")
 	}
 }
