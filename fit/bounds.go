@@ -19,6 +19,7 @@ type bounded struct {
 	fine      *polished      // optimum on every row, nil when it is that of fitted
 	written   *Model         // as it stands in the card, once it does
 	members   []member       // linearised posterior over the noise shapes, coinciding lags as one
+	nodes     [][]node       // of every record
 	reference [][]float64    // linearised covariance at the shapes in force
 	lin       [][]estimate   // per record: the fixed linear columns (baseline, drift)
 	trails    [][][2]float64 // profile of est: value, root over its quantile, ascending
@@ -63,7 +64,7 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 		}
 		b.members = members(nodes, rng)
 	}
-	b.reference = here.cov
+	b.reference, b.nodes = here.cov, nodes
 	cov := pooled(b.members)
 
 	q := &profiler{e: e, best: f.p, s2: f.s2()}
@@ -203,16 +204,11 @@ func atBest(nodes [][]node) member {
 	return member{weight: 1, cov: cov, shift: multiply(cov, v), dof: dof}
 }
 
-// linear returns the fixed linear columns of every record with Wald bounds:
-// the generalised least-squares covariance over all columns of the linearised
-// model, widened like the gain for the uncertainty of the noise.
+// linear returns the fixed linear columns of every record with their bounds:
+// generalised least squares over all columns of the linearised model, mixed
+// over the noise shapes that the record does not rule out, like the others.
 func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 	out := make([][]estimate, len(f.e.recs))
-	here := math.Sqrt(math.Max(b.members[0].cov[0][0], 0))
-	widen := 1.0
-	if here > 0 && len(b.members) > 1 {
-		widen = math.Max(math.Sqrt(pooled(b.members)[0][0])/here, 1)
-	}
 	p := f.e.eval(f.p.eta, true)
 	for i, r := range f.e.recs {
 		w := &f.e.work[i]
@@ -223,29 +219,55 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 		case free:
 			cols = append(cols, w.start...)
 		}
-		rhs := make([]float64, len(r.t))
-		for k := range rhs {
-			rhs[k] = r.y[k] - p.gain*w.raw[0][k]
+		left := make([]float64, len(r.t))
+		for k := range left {
+			left[k] = r.y[k] - p.gain*w.raw[0][k]
 		}
-		beta := weightedSolve(&r.filter, cols, rhs)
-		t := b.tangentColumns(i)
-		all := append(append([][]float64(nil), cols...), t...)
-		white := columns(len(all), len(r.t))
-		for j, c := range all {
-			r.filter.apply(white[j], c)
-		}
-		gram := columns(len(all), len(all))
-		for j := range all {
-			for l := range all {
-				gram[j][l] = dot(white[j], white[l])
+		beta := weightedSolve(&r.filter, cols, left)
+		for j, c := range cols {
+			for k, v := range c {
+				left[k] -= beta[j] * v
 			}
 		}
-		inv := invert(gram)
-		s2 := r.sigma2
-		q := -studentQuantile((1-level)/2, float64(len(r.root.t)-f.mean))
+		all := append(cols, b.tangentColumns(i)...)
+		var ms []member
+		for _, n := range b.nodes[i] {
+			ms = append(ms, r.linearMember(n, all, left))
+		}
 		for j := range r.fixed {
-			se := widen * math.Sqrt(inv[j][j]*s2)
-			out[i] = append(out[i], estimate{value: beta[j], se: se, low: beta[j] - q*se, high: beta[j] + q*se})
+			e := estimate{value: beta[j], se: math.Sqrt(pooled(ms)[j][j])}
+			e.low = e.value + mixtureQuantile(ms, j, (1-level)/2)
+			e.high = e.value + mixtureQuantile(ms, j, (1+level)/2)
+			out[i] = append(out[i], e)
+		}
+	}
+	return out
+}
+
+// linearMember is the posterior of the coefficients of cols under the noise
+// shape of a node, given what the model leaves.
+func (r *record) linearMember(n node, cols [][]float64, left []float64) member {
+	var f filter
+	f.set(r.rows, n.shape)
+	m := len(cols)
+	white := columns(m+1, len(r.t))
+	for j, c := range cols {
+		copy(white[j], c)
+	}
+	copy(white[m], left)
+	f.applyAll(white)
+	gram, b := columns(m, m), make([]float64, m)
+	for j := range m {
+		b[j] = dot(white[j], white[m])
+		for l := range m {
+			gram[j][l] = dot(white[j], white[l])
+		}
+	}
+	cov := invert(gram)
+	out := member{weight: n.weight, shift: multiply(cov, b), cov: cov, dof: float64(n.dof)}
+	for j := range cov {
+		for l := range cov {
+			cov[j][l] *= n.s2
 		}
 	}
 	return out
