@@ -86,7 +86,7 @@ func (out *outcome) warnTest(runs []*data.Run, b *bounded, m *Model, add warn) {
 	}
 	if out.drift && out.opt.Drift == "auto" {
 		lin := b.lin[0]
-		if len(lin) > 1 && lin[1].low*lin[1].high > 0 {
+		if len(lin) > 1 && math.Abs(lin[1].value) > 3*lin[1].se { // closed loops make two common
 			add("drift", "drift", "the baseline drifts by %s over the log: it was fitted along and costs width; let the heater settle before the bump",
 				quantity(lin[1].value*out.recs[0].span, temperatureStep(runs[0].Units.Temperature), 3))
 		}
