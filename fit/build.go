@@ -57,7 +57,7 @@ func (out *outcome) card(ctx context.Context, runs []*data.Run) *Card {
 	c.Profiles = out.profiles()
 	c.Derived = out.derived()
 	c.Warnings = out.warnings(ctx, runs)
-	c.Cautions = cautions(runs, c)
+	c.Cautions = c.cautions()
 	return c
 }
 

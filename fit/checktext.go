@@ -170,13 +170,10 @@ func figureOrDash(v *float64, digits int) string {
 	return figure(*v, digits)
 }
 
-// checkCautions are the words that go with a check. Common practice, no
-// source.
+// checkCautions are the cautions that go with a check, with the numbers of its
+// log.
 func checkCautions(run *data.Run, r *CheckReport, c *Card) []string {
-	out := []string{
-		"Keep the independent over-temperature cut-out and the airflow interlock in service during every test; never bypass them for a bump.",
-		"The outlet sensor does not see the element's sheath, which runs hotter, the more so at low airflow.",
-	}
+	out := []string{CautionCutOut, CautionSheath}
 	if high := r.Range.Temperature[1]; r.Rows > 0 {
 		s := fmt.Sprintf("This log went up to %s", quantity(high, r.Units.Temperature, 4))
 		if c != nil {
@@ -191,7 +188,7 @@ func checkCautions(run *data.Run, r *CheckReport, c *Card) []string {
 				}
 			}
 		}
-		out = append(out, s+". Before a larger or longer bump, see that no limit of heater, duct or product lies below what it would reach; stay with it, ready to switch off.")
+		out = append(out, s+". Before a larger or longer bump, see that no limit of heater, duct or product lies below what it would reach.")
 	}
-	return append(out, "Local codes, the makers' instructions and licensed practice come first.")
+	return append(out, CautionStay, CautionCodes)
 }

@@ -18,16 +18,30 @@ func figure(v float64, digits int) string {
 	return s
 }
 
+// nothing is the size below which a number is rounding, in any unit people use.
+const nothing = 1e-9
+
 // exactFigure is figure with the zeros at the end.
 func exactFigure(v float64, digits int) string {
 	a := math.Abs(v)
 	switch {
 	case math.IsNaN(v) || math.IsInf(v, 0):
 		return "-"
+	case v < 0 && a < nothing:
+		return "0"
+	case a != 0 && a < nothing:
+		return "under 1e-9"
 	case a != 0 && (a < 1e-3 || a >= 1e6):
-		return strconv.FormatFloat(v, 'e', digits-1, 64)
+		return exponent(v, digits-1)
 	}
 	return strconv.FormatFloat(v, 'f', max(digits-1-magnitude(a, digits), 0), 64)
+}
+
+// exponent writes v with so many decimals and a short exponent, 4.2e-5.
+func exponent(v float64, decimals int) string {
+	m, e, _ := strings.Cut(strconv.FormatFloat(v, 'e', decimals, 64), "e")
+	n, _ := strconv.Atoi(e)
+	return m + "e" + strconv.Itoa(n)
 }
 
 // magnitude is the power of ten of the first digit of a after rounding to the
@@ -44,6 +58,10 @@ func magnitude(a float64, digits int) int {
 // written is an estimate in words: the value with as many decimals as its
 // bound deserves, ±half where the interval is even, and the interval.
 type written struct{ value, half, interval string }
+
+// mostDigits is how many digits of an estimate are written, however well the
+// log knows it: no thermocouple knows more.
+const mostDigits = 6
 
 // write gives the half-width two significant digits (GUM, JCGM 100:2008, 7.2.6: at
 // most two usually suffice) and the value and the ends as many decimals. low
@@ -62,6 +80,12 @@ func write(v float64, low, high *float64, fixed bool) written {
 		return written{f(v), "", "at least " + f(*low)}
 	}
 	half := (*high - *low) / 2
+	switch {
+	case math.Max(math.Abs(v), half) < nothing:
+		return written{"0", "", "0 to 9 decimals"}
+	case half < math.Abs(v)*math.Pow10(-mostDigits):
+		return written{figure(v, mostDigits), "", fmt.Sprintf("exact to %d digits", mostDigits)}
+	}
 	f := decimal(half)
 	w := written{f(v), "", f(*low) + " to " + f(*high)}
 	if math.Abs(*high+*low-2*v) <= 0.2*half { // else ± would misstate it
@@ -80,7 +104,7 @@ func decimal(width float64) func(float64) string {
 	places := 1 - magnitude(width, 2)
 	if places > 6 {
 		return func(v float64) string {
-			return strconv.FormatFloat(v, 'e', max(magnitude(math.Abs(v), 2)+places, 1), 64)
+			return exponent(v, max(magnitude(math.Abs(v), 2)+places, 1))
 		}
 	}
 	return func(v float64) string { return strconv.FormatFloat(v, 'f', max(places, 0), 64) }

@@ -89,6 +89,8 @@ type design struct {
 	plant ident.Plant
 	noise Noise
 	o     PlanOptions
+
+	guessed bool // nothing was measured: see PlanFirst
 }
 
 func (d *design) residence() float64 { return d.plant.DeadTime + total(d.plant.Elements()) }
@@ -119,6 +121,9 @@ func (d *design) plan() (*Plan, error) {
 	if d.o.Input != nil {
 		p.From = *d.o.Input
 	}
+	if err := d.within(p.From); err != nil {
+		return nil, err
+	}
 	heat := d.neededHeat(p)
 	p.To = d.inputOf(p.From, heat)
 	if limit, why := d.limit(p.From); math.Abs(p.To-p.From) > math.Abs(limit-p.From) || math.IsNaN(p.To) {
@@ -138,6 +143,19 @@ func (d *design) plan() (*Plan, error) {
 	p.Duration = p.Before + p.Hold + p.Back
 	d.warn(p, reached)
 	return p, nil
+}
+
+// within refuses to bump from outside the limits of the input.
+func (d *design) within(from float64) error {
+	low, high := d.o.InputMin, d.o.InputMax
+	unit := d.card.Units.Input
+	switch {
+	case high != nil && from >= *high:
+		return fmt.Errorf("%w: a bump from %s leaves no room below the highest input allowed, %s; give an input to bump from below it", ErrOption, quantity(from, unit, 4), quantity(*high, unit, 4))
+	case low != nil && from < *low:
+		return fmt.Errorf("%w: a bump from %s begins below the lowest input allowed, %s; give an input to bump from above it", ErrOption, quantity(from, unit, 4), quantity(*low, unit, 4))
+	}
+	return nil
 }
 
 // sampling is the interval between rows: a dozen in the shortest lag that
@@ -227,6 +245,7 @@ func (d *design) limit(from float64) (float64, string) {
 	if room <= 0 {
 		u = from
 	}
+	u = from + roundDown(u-from) // never above the temperature allowed
 	if u < limit {
 		limit, why = u, fmt.Sprintf("the temperature may go to %s", quantity(*d.o.TempMax, d.card.Units.Temperature, 4))
 	}
@@ -295,12 +314,21 @@ func (d *design) warn(p *Plan, heat float64) {
 		highest += d.largestGain() * heat
 	}
 	p.Highest = &highest
+	by := "by every plausible plant of the card"
+	if d.guessed {
+		by = "if the gain is up to half as large again as guessed"
+	}
 	p.Caution = []string{
-		fmt.Sprintf("This bump would bring the outlet to about %s at most, by every plausible plant of the card. Check that this lies well below the limits of heater, duct and product before you begin.", quantity(highest, d.card.Units.Temperature, 3)),
-		"Keep the independent over-temperature cut-out and the airflow interlock in service; never bypass them for a bump.",
-		"The outlet sensor does not see the element's sheath, which runs hotter, the more so at low airflow.",
-		"Begin from a steady state, at the airflow the loop will run at; stay with the heater, ready to switch it off.",
-		"Local codes, the makers' instructions and licensed practice come first.",
+		fmt.Sprintf("This bump would bring the outlet to about %s at most, %s. Check that this lies well below the limits of heater, duct and product before you begin.", quantity(highest, d.card.Units.Temperature, 3), by),
+		CautionCutOut,
+		CautionSheath,
+		"Begin from a steady state, at the airflow the loop will run at.",
+		CautionStay,
+		CautionCodes,
+	}
+	if d.guessed {
+		p.Caution = append(p.Caution, "This plan rests on a guess: watch the first minutes, and plan the next bump from the card of this one.")
+		return
 	}
 	if p.To > d.card.Range.Input[1] || highest > d.card.Range.Temperature[1] {
 		p.Caution = append(p.Caution, fmt.Sprintf("It leaves the range the card was measured in (input %s to %s, up to %s): go there in smaller steps first.",

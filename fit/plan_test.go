@@ -2,6 +2,7 @@ package fit
 
 import (
 	"bytes"
+	"errors"
 	"math"
 	"strings"
 	"testing"
@@ -107,5 +108,56 @@ func TestPlanScales(t *testing.T) {
 	}
 	if r := b.Size / a.Size; math.Abs(r-2) > 0.1 {
 		t.Errorf("half the width of the gain asks for %.3g times the bump, want 2", r)
+	}
+}
+
+// A bump is never planned from outside the limits.
+func TestPlanRefusesToBeginOutsideTheLimits(t *testing.T) {
+	g := Guess{Gain: 10, Lag: 30, DeadTime: 4, Noise: 0.2, Temperature: 60, Units: CardUnits{Time: "s", Input: "V", Temperature: "degC"}}
+	five, two, six := 5.0, 2.0, 6.0
+	for _, c := range []struct {
+		name string
+		o    PlanOptions
+		want string
+	}{
+		{"above the highest", PlanOptions{Input: &five, InputMax: &two}, "no room below the highest input allowed, 2 V"},
+		{"at the highest", PlanOptions{Input: &five, InputMax: &five}, "no room"},
+		{"below the lowest", PlanOptions{Input: &five, InputMin: &six}, "begins below the lowest input allowed, 6 V"},
+		{"nowhere", PlanOptions{}, "needs the input to bump from"},
+	} {
+		if _, err := PlanFirst(g, c.o); !errors.Is(err, ErrOption) || !strings.Contains(err.Error(), c.want) {
+			t.Errorf("%s: error %v, want %q", c.name, err, c.want)
+		}
+	}
+	g.Lag = 0
+	if _, err := PlanFirst(g, PlanOptions{Input: &five}); !errors.Is(err, ErrOption) {
+		t.Errorf("no lag: error %v", err)
+	}
+}
+
+// A plan from a guess gives what was wanted where the guess is right, and says
+// how hot it gets where the gain is half as large again.
+func TestPlanFromAGuess(t *testing.T) {
+	l := twoLags() // 7.4 K/V
+	l.sd = 0.3
+	residence := l.dead + total(l.lags)
+	from := 3.0
+	g := Guess{Gain: 7.4, Lag: total(l.lags), DeadTime: l.dead, Noise: l.sd, Temperature: 61, Units: CardUnits{Time: "s", Input: "V", Temperature: "degC"}}
+	p, err := PlanFirst(g, PlanOptions{Input: &from})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if p.From != from || p.To <= from || !p.Meets || p.Hold < holdLags*residence {
+		t.Fatalf("plan %+v", p)
+	}
+	if want := 61 + 1.5*7.4*p.Size; math.Abs(*p.Highest-want) > 1e-9 {
+		t.Errorf("highest temperature %g °C, want %g", *p.Highest, want)
+	}
+	l.every, l.n = p.Sampling, int(p.Duration/p.Sampling)
+	l.steps = []step{{0, p.From}, {p.Before, p.To}, {p.Before + p.Hold, p.From}}
+	c := fitted1(t, []*data.Run{l.run(9)}, Options{Structure: "chain2", Plants: 20, Initial: "rest", Drift: "none"})
+	m, _ := c.Model("chain2")
+	if q := m.Parameters[0]; (*q.High-*q.Low)/2 > 0.1*q.Value {
+		t.Errorf("the gain of the planned test is known to %g to %g, wanted ±10 %%", *q.Low, *q.High)
 	}
 }

@@ -151,7 +151,11 @@ func TestNumbersInWords(t *testing.T) {
 		{3.2, nil, nil, false, written{"3.2", "", "no bound"}},
 		{0.05, ptr(0.05), ptr(0.05), true, written{"0.05", "", "known, not fitted"}},
 		{1243.12, ptr(1120), ptr(1366), false, written{"1243", "± 123", "1120 to 1366"}},
-		{3e-8, ptr(1e-8), ptr(5e-8), false, written{"3.0e-08", "± 2.0e-08", "1.0e-08 to 5.0e-08"}},
+		{3e-8, ptr(1e-8), ptr(5e-8), false, written{"3.0e-8", "± 2.0e-8", "1.0e-8 to 5.0e-8"}},
+		{0.4, ptr(0.4 - 2.2e-16), ptr(0.4 + 2.2e-16), false, written{"0.4", "", "exact to 6 digits"}},
+		{11.67, ptr(11.669996), ptr(11.670004), false, written{"11.67", "", "exact to 6 digits"}},
+		{11.67, ptr(11.66996), ptr(11.67004), false, written{"11.670000", "± 0.000040", "11.669960 to 11.670040"}},
+		{-3e-17, ptr(-2e-16), ptr(1e-16), false, written{"0", "", "0 to 9 decimals"}},
 	} {
 		if got := write(c.value, c.low, c.high, c.fixed); got != c.want {
 			t.Errorf("write(%g) = %q, want %q", c.value, got, c.want)
@@ -159,6 +163,7 @@ func TestNumbersInWords(t *testing.T) {
 	}
 	for _, c := range []struct{ got, want string }{
 		{figure(9.996, 3), "10"}, {figure(0.0123456, 3), "0.0123"}, {figure(1235.5, 3), "1236"}, {figure(0, 3), "0"},
+		{figure(2.2e-16, 2), "under 1e-9"}, {figure(-2.2e-16, 2), "0"}, {figure(0.000043, 2), "4.3e-5"},
 		{duration(0.25), "250 ms"}, {duration(90), "90 s"}, {duration(600), "10 min"}, {duration(7800), "2.17 h"},
 		{sentence("the log ends"), "The log ends."}, {sentence("bump.csv: ends"), "bump.csv: ends."},
 	} {

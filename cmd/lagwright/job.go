@@ -3,6 +3,7 @@ package main
 import (
 	"cmp"
 	"context"
+	"errors"
 	"fmt"
 	"io"
 	"os"
@@ -57,7 +58,11 @@ func (c *console) work(ctx context.Context, f *jobFlags, bump, past []*data.Run,
 	if err := j.layCurves(); err != nil {
 		return nil, err
 	}
-	if err := j.check(ctx, c, f); err != nil {
+	options, err := f.fit.with(c, &f.log, nil)
+	if err != nil {
+		return nil, err
+	}
+	if err := j.check(ctx, options); err != nil {
 		return nil, err
 	}
 	j.gains, err = tune.Tune(ctx, []*fit.Card{card}, f.tune.requirement.requirement, f.tune.with(c, &f.log))
@@ -97,16 +102,18 @@ func (j *job) layCurves() error {
 	return nil
 }
 
-// check judges every run it was fitted to.
-func (j *job) check(ctx context.Context, c *console, f *jobFlags) error {
-	options, err := f.fit.with(c, &f.log, nil)
-	if err != nil {
-		return err
-	}
+// check judges every run it was fitted to. A run that is no bump test on its
+// own, one of several fitted together for instance, goes without a verdict.
+func (j *job) check(ctx context.Context, o fit.Options) error {
 	for _, run := range j.bump {
-		r, err := fit.Check(ctx, run, options)
-		if err != nil {
+		r, err := fit.Check(ctx, run, o)
+		switch {
+		case ctx.Err() != nil:
+			return ctx.Err()
+		case errors.Is(err, fit.ErrOption):
 			return fitError(err)
+		case err != nil:
+			r = nil
 		}
 		j.checks = append(j.checks, r)
 	}
@@ -177,7 +184,7 @@ func (j *job) figures() []*report.Figure {
 	figures := []*report.Figure{
 		report.LogFigure(j.bump[0], j.curves[0], model),
 		report.ResidualFigure(j.bump[0], j.curves[0], model),
-		report.IntervalFigure(model, nil, j.card.Confidence),
+		report.IntervalFigure(model, j.card.Profiles, j.card.Confidence),
 	}
 	figures = append(figures, report.LoopFigures(j.loop, j.gains)...)
 	for i := range j.replay.Runs {

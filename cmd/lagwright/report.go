@@ -66,7 +66,8 @@ func runReport(ctx context.Context, c *console, o *reportOptions, args []string)
 	return c.writeFile(c.output, page)
 }
 
-// addLogs reads the logs behind the card and lays the model beside them.
+// addLogs reads the logs behind the card, judges them and lays the model
+// beside them.
 func (j *job) addLogs(ctx context.Context, c *console, l *logFlags, logs []string) error {
 	if j.card != nil {
 		l.columnsOf(j.card)
@@ -76,10 +77,17 @@ func (j *job) addLogs(ctx context.Context, c *console, l *logFlags, logs []strin
 		return err
 	}
 	j.bump = runs
-	if j.card == nil {
-		return nil
+	options, err := new(fitFlags).with(c, l, nil)
+	if err != nil {
+		return err
 	}
-	return j.layCurves()
+	if j.card != nil {
+		options.Law, options.BumpInstant = j.card.Law(), j.card.BumpTime
+		if err := j.layCurves(); err != nil {
+			return err
+		}
+	}
+	return j.check(ctx, options)
 }
 
 // addFile takes in a file that lagwright wrote, and reports false for others.

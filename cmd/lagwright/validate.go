@@ -59,7 +59,7 @@ table of the runs with the results side by side.
 	valueFlag(fs, &o.options.Confidence, "confidence", "PERCENT", "95%", "level of the bands", share)
 	o.requirement.add(cmd)
 	o.log.add(cmd)
-	o.plot.add(cmd, "the run furthest from the requirement, logged against proposed")
+	o.plot.add(cmd, "the judged run furthest from the requirement, logged against proposed")
 	return cmd
 }
 
@@ -223,19 +223,23 @@ func (o *validateOptions) deliver(c *console, replay *validate.Replay) error {
 
 // replayFigure draws the run furthest from the requirement.
 func replayFigure(r *validate.Replay) (*report.Figure, error) {
-	worst := worstRun(r)
-	if worst.Trace == nil {
-		return nil, errors.New("the run furthest from the requirement has no trace to draw")
+	drawn := worstRun(r)
+	if drawn == nil {
+		drawn = &r.Runs[0]
 	}
-	return report.ReplayFigure(worst, &r.Gains, r.Requirement), nil
+	if drawn.Trace == nil {
+		return nil, fmt.Errorf("%s has no trace to draw", drawn.File)
+	}
+	return report.ReplayFigure(drawn, &r.Gains, r.Requirement), nil
 }
 
-// worstRun is the run least likely to meet the requirement.
+// worstRun is the judged run least likely to meet the requirement; nil where
+// none could be judged.
 func worstRun(r *validate.Replay) *validate.RunReplay {
-	worst := &r.Runs[0]
+	var worst *validate.RunReplay
 	for i := range r.Runs {
 		run := &r.Runs[i]
-		if run.Judged && (!worst.Judged || run.Probability < worst.Probability) {
+		if run.Judged && (worst == nil || run.Probability < worst.Probability) {
 			worst = run
 		}
 	}
@@ -248,8 +252,12 @@ func replayVerdict(r *validate.Replay) error {
 	if s.Meets {
 		return nil
 	}
+	worst := worstRun(r)
+	if worst == nil {
+		return answerNof("no run shows anything that the requirement asks for; replay a run with a setpoint change")
+	}
 	reason := ""
-	if worst := worstRun(r); len(worst.Reasons) > 0 {
+	if len(worst.Reasons) > 0 {
 		reason = fmt.Sprintf("; %s: %s", worst.File, strings.Join(worst.Reasons, ", "))
 	}
 	return answerNof("the requirement is met in %d of %d runs%s", s.Meeting, s.Judged, reason)

@@ -18,8 +18,7 @@ type Bundle struct {
 	Replay *validate.Replay
 	Drift  *validate.Drift
 
-	Profiles []Profile // of the selected model
-	Loop     *Loop     // what Gains do on Card's plants; nil: Page gathers it
+	Loop *Loop // what Gains do on Card's plants; nil: Page gathers it
 
 	loopError string // why there are no curves of the loop
 

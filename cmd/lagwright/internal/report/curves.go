@@ -37,12 +37,3 @@ type Loop struct {
 	Sensitivity *Sensitivity
 	Poles       *Poles
 }
-
-// Profile is how much worse the fit gets as one parameter is moved and the
-// others follow.
-type Profile struct {
-	Parameter string
-	Value     []float64
-	Drop      []float64 // 2·(loglik at best − loglik), 0 at the best value
-	Limit     float64   // the drop at the ends of the stated interval
-}

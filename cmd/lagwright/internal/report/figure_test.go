@@ -19,7 +19,7 @@ func sampleFigures() []*Figure {
 	m, l, g := b.model(), b.Loop, b.Gains
 	return []*Figure{
 		LogFigure(b.Runs[0], b.Curves[0], m), ResidualFigure(b.Runs[0], b.Curves[0], m),
-		IntervalFigure(m, b.Profiles, 0.95), StepFigure(l.Step, g), LoadFigure(l.Load, g), SensitivityFigure(l.Sensitivity, g),
+		IntervalFigure(m, b.Card.Profiles, 0.95), StepFigure(l.Step, g), LoadFigure(l.Load, g), SensitivityFigure(l.Sensitivity, g),
 		PoleFigure(l.Poles), ReplayFigure(&b.Replay.Runs[0], g, g.Requirement), DriftFigure(b.Drift),
 	}
 }

@@ -17,7 +17,7 @@ func heater(b *Bundle) *section {
 	s := &section{ID: "heater", Title: "What is this heater?", Lead: structureWords(m.Structure)}
 	s.Blocks = append(s.Blocks,
 		block{Table: parameterTable(b.Card, m)},
-		block{Figure: picturesOf(IntervalFigure(m, b.Profiles, b.Card.Confidence))},
+		block{Figure: picturesOf(IntervalFigure(m, b.Card.Profiles, b.Card.Confidence))},
 	)
 	if len(b.Card.Derived) > 0 {
 		s.Blocks = append(s.Blocks, block{Table: derivedTable(b.Card)})

@@ -195,18 +195,18 @@ func appendTo(e *Ensemble, best, low, high float64) {
 	e.Best, e.Low, e.High = append(e.Best, best), append(e.Low, low), append(e.High, high)
 }
 
-func sampleProfiles(m *fit.Model) []Profile {
-	var out []Profile
+func sampleProfiles(m *fit.Model) []fit.Profile {
+	var out []fit.Profile
 	for _, p := range m.Parameters {
-		pr := Profile{Parameter: p.Name, Limit: 3.84}
+		pr := fit.Profile{Parameter: p.Name}
 		down, up := p.Value-*p.Low, *p.High-p.Value
-		for i := range 41 {
-			z := -1.5 + 3*float64(i)/40
+		for i := range 7 {
+			z := -1.5 + 3*float64(i)/6
 			w := up
 			if z < 0 {
 				w = down
 			}
-			pr.Value, pr.Drop = append(pr.Value, p.Value+z*w), append(pr.Drop, 3.84*z*z)
+			pr.Value, pr.Root = append(pr.Value, p.Value+z*w), append(pr.Root, z)
 		}
 		out = append(out, pr)
 	}
@@ -294,9 +294,10 @@ func sampleCheck() *fit.CheckReport {
 func sampleBundle() Bundle {
 	r, c := sampleRun(1400)
 	card, g := sampleCard(), sampleGains()
+	card.Profiles = sampleProfiles(&card.Models[0])
 	return Bundle{
 		Runs: []*data.Run{r}, Curves: []*fit.Curves{c}, Checks: []*fit.CheckReport{sampleCheck()}, Card: card, Gains: g, Replay: sampleReplay(g), Drift: sampleDrift(),
-		Profiles: sampleProfiles(&card.Models[0]), Loop: sampleLoop(),
+		Loop: sampleLoop(),
 		Tool: "lagwright (devel)", Command: "lagwright run dryer2-bump.csv --settling 60s --overshoot 8% --ms 1.7 --input-max 10 --rand 1",
 	}
 }
