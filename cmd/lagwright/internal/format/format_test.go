@@ -31,6 +31,8 @@ func TestValue(t *testing.T) {
 		{0, at(-0.02), at(0.02), "K/s", "0.000 ± 0.020 K/s"},
 		{3e-8, at(1e-8), at(5e-8), "K/s", "3.0e-8 ± 2.0e-8 K/s"},
 		{3e-5, at(1e-5), at(5e-5), "K/s", "3.0e-5 ± 2.0e-5 K/s"},
+		{0.4, at(0.4 - 2.2e-16), at(0.4 + 2.2e-16), "s", "0.4 s (exact to 6 digits)"},
+		{-3e-17, at(-2e-16), at(1e-16), "K/s", "0 K/s (exact to 6 digits)"},
 		{5, at(6), at(7), "s", "5.00 s (6.00 to 7.00)"}, // a bound that leaves the value out is shown, not hidden
 	} {
 		if got := Value(c.v, c.low, c.high, c.unit); got != c.want {
@@ -62,7 +64,7 @@ func TestNumber(t *testing.T) {
 	}{
 		{9.996, 3, "10.0"}, {1234.5, 3, "1234"}, {1235.5, 3, "1236"}, {0.0123456, 3, "0.0123"},
 		{0.00012, 3, "1.20e-4"}, {1234567, 3, "1.23e6"}, {0, 3, "0"}, {-0.5, 2, "-0.50"},
-		{math.NaN(), 3, "-"}, {math.Inf(1), 3, "-"},
+		{2.2e-16, 3, "0"}, {-2.2e-16, 3, "0"}, {math.NaN(), 3, "-"}, {math.Inf(1), 3, "-"},
 	} {
 		if got := Number(c.v, c.digits); got != c.want {
 			t.Errorf("Number(%v, %d) = %q, want %q", c.v, c.digits, got, c.want)

@@ -10,15 +10,18 @@ import (
 	"strings"
 )
 
+// nothing is the size below which a number is rounding, in any unit people use.
+const nothing = 1e-9
+
 // Number writes v with the given significant digits, without an exponent
 // between 0.001 and a million and without losing whole digits: Number(1234.5,
 // 3) is "1235". Zeros at the end stay, for they say how exact the number is.
-// What is not finite is "-".
+// What is not finite is "-", what is too small to mean anything "0".
 func Number(v float64, digits int) string {
 	switch {
 	case math.IsNaN(v) || math.IsInf(v, 0):
 		return "-"
-	case v == 0:
+	case math.Abs(v) < nothing:
 		return "0"
 	}
 	if a := math.Abs(v); a >= 1e6 || a < 1e-3 {

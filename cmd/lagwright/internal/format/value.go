@@ -1,6 +1,9 @@
 package format
 
-import "math"
+import (
+	"fmt"
+	"math"
+)
 
 // Value writes an estimate with its bound and unit. low and high are the ends
 // of the interval, nil where the log sets none:
@@ -30,6 +33,9 @@ func Value(v float64, low, high *float64, unit string) string {
 	if half == 0 {
 		return join(Short(v, 6), unit)
 	}
+	if exact(v, half) {
+		return join(Short(v, mostDigits), unit) + fmt.Sprintf(" (exact to %d digits)", mostDigits)
+	}
 	if lopsided(down, up) {
 		d := decimals(half)
 		return join(fixed(v, d), unit) + " (" + fixed(*low, d) + " to " + fixed(*high, d) + ")"
@@ -55,11 +61,23 @@ func Interval(v float64, low, high *float64) string {
 		return "fixed"
 	}
 	half := (*high - *low) / 2
+	if exact(v, half) {
+		return fmt.Sprintf("exact to %d digits", mostDigits)
+	}
 	if scientific(v, half) {
 		return Number(*low, digitsFor(*low, half)) + " to " + Number(*high, digitsFor(*high, half))
 	}
 	d := decimals(half)
 	return fixed(*low, d) + " to " + fixed(*high, d)
+}
+
+// mostDigits is how many digits of an estimate are written, however well it is
+// known: no thermocouple knows more.
+const mostDigits = 6
+
+// exact tells a bound that does not show in the digits written.
+func exact(v, half float64) bool {
+	return half < math.Abs(v)*math.Pow10(-mostDigits) || math.Max(math.Abs(v), half) < nothing
 }
 
 // scientific tells numbers that read better with an exponent.
