@@ -129,6 +129,10 @@ func TestMend(t *testing.T) {
 		{name: "twelve hours", tod: true, wall: true, in: []float64{46000, 46700, 4200, 4900}, want: []float64{46000, 46700, 47400, 48100}, note: "clock-twelve-hours"},
 		{name: "newest first", in: []float64{3, 2, 1, 0}, want: []float64{0, 1, 2, 3}, note: "rows-reversed"},
 		{name: "four rows a stamp", in: []float64{0, 0, 0, 0, 1, 1, 1, 1, 2, 2, 2, 2}, want: []float64{0, .25, .5, .75, 1, 1.25, 1.5, 1.75, 2, 2.25, 2.5, 2.75}, note: "clock-spread"},
+		{name: "every row twice", in: []float64{0, 0, 1, 1, 2, 2, 3, 3, 4, 4, 5, 5, 6, 6, 7, 7, 8, 8}, values: []float64{1, 1, 2, 2, 3, 3, 4, 4, 5, 5, 6, 6, 7, 7, 8, 8, 9, 9},
+			want: []float64{0, 1, 2, 3, 4, 5, 6, 7, 8}, dropped: map[string]int{"repeated row": 9}},
+		{name: "two rows a stamp, seldom alike", in: []float64{0, 0, 1, 1, 2, 2, 3, 3, 4, 4}, values: []float64{1, 1, 1, 1, 2, 2, 2, 3, 3, 3},
+			want: []float64{0, .5, 1, 1.5, 2, 2.5, 3, 3.5, 4, 4.5}, note: "clock-spread"},
 		{name: "first and last stamp cut short", in: []float64{0, 1, 1, 1, 1, 2, 2, 2, 2, 3, 3}, want: []float64{.75, 1, 1.25, 1.5, 1.75, 2, 2.25, 2.5, 2.75, 3, 3.25}, note: "clock-spread"},
 	} {
 		t.Run(c.name, func(t *testing.T) {

@@ -201,8 +201,12 @@ func (r *rows) holdInput() error {
 	if first < 0 {
 		return fmt.Errorf("the input column holds no value%s", commonest(r.missing))
 	}
+	unseen := r.unseenChange(first)
 	if held := hold(u); held > 0 {
 		r.notes = append(r.notes, Note{Code: "input-held", Text: fmt.Sprintf("%d rows without an input were given the input before them", held)})
+		if float64(held) < lostShare*float64(len(u)) && unseen != "" {
+			r.notes = append(r.notes, Note{Code: "input-change-unseen", Text: unseen})
+		}
 	}
 	hold(r.v[roleSetpoint])
 	for i := 1; i < len(r.auto); i++ {
@@ -217,6 +221,33 @@ func (r *rows) holdInput() error {
 		r.truncate(first, len(r.t))
 	}
 	return nil
+}
+
+// lostShare is the largest share of rows without an input that counts as
+// cells lost; where more are blank the log writes the input when it changes
+// (common practice, no source).
+const lostShare = 0.3
+
+// unseenChange describes the longest stretch of rows without an input over
+// which the input changed, "" when there is none: the instant of that change
+// is not known, and holding puts it at the end of the stretch.
+func (r *rows) unseenChange(first int) string {
+	u := r.v[roleInput]
+	var longest int64
+	text := ""
+	last := first
+	for i := first + 1; i < len(u); i++ {
+		if u[i] != u[i] {
+			continue
+		}
+		if took := r.t[i] - r.t[last]; i > last+1 && u[i] != u[last] && took > longest {
+			longest = took
+			text = fmt.Sprintf("the input went from %.6g to %.6g in the %.6g s from %.6g s on, in which it was not recorded: the change was put at their end, and the dead time can be wrong by as much",
+				u[last], u[i], float64(took)/1e9, float64(r.t[last]-r.t[first])/1e9)
+		}
+		last = i
+	}
+	return text
 }
 
 // hold fills gaps with the value before them and counts those it filled.

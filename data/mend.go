@@ -256,7 +256,7 @@ func (s *stampSeries) spreadOrDrop() {
 	if equal == 0 {
 		return
 	}
-	if 3*equal > kept {
+	if 3*equal > kept && !s.copied() {
 		s.spread()
 		if strictlyAscending(s.t) {
 			return
@@ -277,6 +277,32 @@ func (s *stampSeries) spreadOrDrop() {
 		}
 		prev = i
 	}
+}
+
+// enoughChanges is how many changes of value from stamp to stamp it takes to
+// tell copied rows from samples between stamps: of samples at least every
+// second change would fall inside a stamp, so that none of eight does is no
+// chance (1 in 256).
+const enoughChanges = 8
+
+// copied tells that rows with equal stamps are one row written again, as a
+// join of two exports leaves them: values change from stamp to stamp, and
+// never inside one. Spread, they would pass for twice the samples.
+func (s *stampSeries) copied() bool {
+	changes, prev := 0, -1
+	for i, t := range s.t {
+		if s.drop != nil && s.drop[i] {
+			continue
+		}
+		if prev >= 0 && !s.same(i, prev) {
+			if t == s.t[prev] {
+				return false
+			}
+			changes++
+		}
+		prev = i
+	}
+	return changes >= enoughChanges
 }
 
 // spread divides the time from each stamp to the next among the rows that

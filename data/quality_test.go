@@ -99,3 +99,40 @@ func TestSentinels(t *testing.T) {
 		t.Errorf("the fill value of an input stayed: %v", missing)
 	}
 }
+
+// An input that was lost while it changed is said; one written only when it
+// changes, or the same before and after, is none.
+func TestInputChangeUnseen(t *testing.T) {
+	steps := func(lost ...int) []float64 {
+		return with(ramp(20, func(i int) float64 { return float64(2 + 2*(i/10)) }), func() (pairs []float64) {
+			for _, i := range lost {
+				pairs = append(pairs, float64(i), nan)
+			}
+			return pairs
+		}()...)
+	}
+	for _, c := range []struct {
+		name string
+		u    []float64
+		want bool
+	}{
+		{"nothing lost", steps(), false},
+		{"lost at rest", steps(3, 4, 15), false},
+		{"lost over the change", steps(10, 11), true},
+		{"lost up to the change", steps(8, 9), true},
+		{"written on change", steps(1, 2, 3, 4, 5, 6, 7, 8, 9, 11, 12, 13, 14, 15, 16, 17, 18, 19), false},
+	} {
+		r := &rows{counts: counts{dropped: map[string]int{}, missing: map[string]int{}}}
+		r.t = make([]int64, len(c.u))
+		for i := range r.t {
+			r.t[i] = int64(i) * 5e8
+		}
+		r.v[roleInput] = c.u
+		if err := r.holdInput(); err != nil {
+			t.Fatal(err)
+		}
+		if got := slices.ContainsFunc(r.notes, func(n Note) bool { return n.Code == "input-change-unseen" }); got != c.want {
+			t.Errorf("%s: said %v, want %v (%v)", c.name, got, c.want, r.notes)
+		}
+	}
+}
