@@ -5,11 +5,13 @@ import (
 	"fmt"
 	"math"
 	"slices"
+
+	"lagwright/fit"
 )
 
 // reasons says what fails, and by how much, at the share quantile of every
 // figure that is asked for.
-func (e *ensemble) reasons(q Requirement, out []outcome, m *Metrics, share float64) []string {
+func (e *ensemble) reasons(q Requirement, u GainUnits, out []outcome, m *Metrics, share float64) []string {
 	var r []string
 	say := func(format string, args ...any) { r = append(r, fmt.Sprintf(format, args...)) }
 	percent := 100 * share
@@ -20,9 +22,9 @@ func (e *ensemble) reasons(q Requirement, out []outcome, m *Metrics, share float
 		switch {
 		case limit == nil:
 		case value == nil:
-			say("%s: not reached on %.0f %% of the plausible plants; asked is %.4g%s", name, percent, *limit, unit)
+			say("%s: not reached on %.0f %% of the plausible plants; asked is %s%s", name, percent, figure(limit, 4), unit)
 		case *value > *limit*(1+hair):
-			say("%s: %.4g%s on the plant at %.0f %%; asked is %.4g%s", name, *value, unit, percent, *limit, unit)
+			say("%s: %s%s on the plant at %.0f %%; asked is %s%s", name, figure(value, 4), unit, percent, figure(limit, 4), unit)
 		}
 	}
 	over("Ms", "", m.Ms, q.Ms)
@@ -38,7 +40,7 @@ func (e *ensemble) reasons(q Requirement, out []outcome, m *Metrics, share float
 		say("damping ratio %.3g: held on %.0f %% of the plausible plants only", *q.Damping, 100*float64(damped)/float64(len(out)))
 	}
 	if e.missedCount(out, "temperature") > len(out)-needed(len(out), share) {
-		say("temperature ceiling of %.4g: passed on %d of %d plausible plants", *q.TempMax, e.missedCount(out, "temperature"), len(out))
+		say("temperature ceiling of %s: passed on %d of %d plausible plants", quantity(*q.TempMax, u.Temperature, 4), e.missedCount(out, "temperature"), len(out))
 	}
 	if len(r) == 0 {
 		say("every figure holds at its own %.0f %% plant, but not all of them together: %.0f %% of the plausible plants meet the whole requirement", percent, 100*e.share(out))
@@ -88,7 +90,8 @@ func (t *tuning) cures(ctx context.Context, kind string, assurance float64) []st
 	}
 	if q := t.requirement; q.InputMax != nil && t.ops[0].input < *q.InputMax {
 		if f, ok := t.leastChange(ctx, kind, assurance, func(f float64) change { return change{supply: f} }); ok {
-			say("more supply would do: an input up to %.4g in place of %.4g", t.ops[0].input+f*(*q.InputMax-t.ops[0].input), *q.InputMax)
+			unit := t.ops[0].card.Units.Input
+			say("more supply would do: an input up to %s in place of %s", quantity(t.ops[0].input+f*(*q.InputMax-t.ops[0].input), unit, 3), quantity(*q.InputMax, unit, 3))
 		}
 	}
 	return out
@@ -175,27 +178,33 @@ func (ch change) apply(q Requirement) Requirement {
 	return q
 }
 
+// CautionStart goes with every set of gains. Common practice, no source.
+const CautionStart = "Start new gains with the output limited and a small setpoint step; stay with the heater, ready to switch to manual."
+
 // cautions go with every set of gains.
 func (t *tuning) cautions(g *Gains) []string {
-	o := t.ops[0]
-	c := []string{
-		"keep an independent over-temperature cut-out and an airflow interlock in service while tuning and after",
-		"the outlet sensor does not see the element's sheath, which runs hotter, the more so at low flow",
-		"start with the output limited and a small setpoint step, stay with it and be ready to switch to manual",
+	c := []string{fit.CautionCutOut, fit.CautionSheath, CautionStart}
+	for _, o := range t.ops {
+		if words := o.card.CautionRange(); !slices.Contains(c, words) {
+			c = append(c, words)
+		}
 	}
-	in, temp := o.card.Range.Input, o.card.Range.Temperature
-	c = append(c, fmt.Sprintf("the model holds near where it was measured: input %.4g to %.4g %s, temperature %.4g to %.4g %s", in[0], in[1], o.card.Units.Input, temp[0], temp[1], o.card.Units.Temperature))
+	o := t.ops[0]
+	unit := o.card.Units.Temperature
 	if s := g.Requirement.SetpointStep; s != nil && g.Worst != nil && g.Worst.Overshoot != nil {
-		top := o.temperature + *s*(1+*g.Worst.Overshoot/100)
-		c = append(c, fmt.Sprintf("a setpoint step of %.4g from about %.4g may reach %.4g %s", *s, o.temperature, top, o.card.Units.Temperature))
+		top := o.temperature + *s*(1+math.Max(*g.Worst.Overshoot, 0)/100)
+		if *s > 0 {
+			top = math.Ceil(10*top) / 10 // never said to be cooler than it is
+		}
+		c = append(c, fmt.Sprintf("A setpoint step of %s from about %s may reach %s.", quantity(*s, perKelvin(unit), 2), quantity(o.temperature, unit, 3), quantity(top, unit, 4)))
 	}
 	if len(o.plants) < 20 {
-		c = append(c, fmt.Sprintf("the card holds %d plausible plants: the spread of the figures is not known", len(o.plants)))
+		c = append(c, fmt.Sprintf("The card holds %d plausible plants: the spread of the figures is not known.", len(o.plants)))
 	}
 	for _, w := range o.card.Warnings {
 		if slices.Contains([]string{"short-record", "no-plateau"}, w.Code) {
-			c = append(c, "from the card: "+w.Text)
+			c = append(c, "From the card: "+w.Text+".")
 		}
 	}
-	return append(c, "local codes, the makers' instructions and licensed practice come first")
+	return append(c, fit.CautionCodes)
 }

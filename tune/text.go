@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"fmt"
 	"io"
+	"math"
 	"strings"
 	"text/tabwriter"
 	"unicode"
@@ -29,14 +30,16 @@ func (g *Gains) WriteText(w io.Writer) error {
 	return nil
 }
 
+// writeTable lists what was tried in 80 columns.
 func (g *Gains) writeTable(b *bufio.Writer) {
 	if len(g.Candidates) == 0 {
 		return
 	}
-	percent := fmt.Sprintf("%.4g%%", 100*g.Assurance)
-	fmt.Fprintf(b, "Candidates (ideal form; each figure on the best fit, and on the plausible plant at %s)\n\n", percent)
-	t := tabwriter.NewWriter(b, 0, 0, 2, ' ', tabwriter.AlignRight)
-	fmt.Fprintf(t, "\trule\t\tKc\tTi s\tTd s\tMs\t%s\tGM\tPM °\tsettling s\t%s\tovershoot %%\t%s\tpeak input\tload IAE\tnoise\tshare\tmeets\t\n", percent, percent, percent)
+	fmt.Fprintf(b, "Candidates (ideal form). Ms, settling and overshoot are those of the plausible plant at %s, IAE after a unit load that of the best fit.\n\n", percent(g.Assurance))
+	const line = "%-2s%-16s %-3s %7s %5s %5s %5s %7s %7s %5s %6s %5s\n"
+	gain := unitWords(g.Units.Input) + "/" + unitWords(perKelvin(g.Units.Temperature))
+	fmt.Fprintf(b, line, "", "rule", "", "Kc", "Ti", "Td", "Ms", "settled", "over-", "IAE", "share", "meets")
+	fmt.Fprint(b, strings.TrimRight(fmt.Sprintf(line, "", "", "", gain, "s", "s", "", "s", "shoot %", "", "", ""), " \n"), "\n")
 	for _, c := range g.Candidates {
 		mark, meets := "", "no"
 		if c.Selected {
@@ -46,12 +49,20 @@ func (g *Gains) writeTable(b *bufio.Writer) {
 			meets = "yes"
 		}
 		n, w := orNone(c.Nominal), orNone(c.Worst)
-		fmt.Fprintf(t, "%s\t%s\t%s\t%.4g\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%.2g\t%.0f%%\t%s\t\n", mark, plain(c.Rule), plain(c.Controller), c.Kc,
-			figure(c.Ti, 4), figure(c.Td, 4), figure(n.Ms, 3), figure(w.Ms, 3), figure(n.GainMargin, 3), figure(n.PhaseMargin, 3),
-			figure(n.Settling, 3), figure(w.Settling, 3), figure(n.Overshoot, 3), figure(w.Overshoot, 3), figure(n.PeakInput, 3), figure(n.IAE, 4), c.InputNoise, 100*c.Share, meets)
+		fmt.Fprintf(b, line, mark, plain(c.Rule), plain(c.Controller), figure(&c.Kc, 3), figure(c.Ti, 3), figure(c.Td, 3),
+			figure(w.Ms, 3), figure(w.Settling, 3), figure(w.Overshoot, 3), figure(n.IAE, 3), percent(c.Share), meets)
 	}
-	t.Flush()
 	fmt.Fprintln(b)
+}
+
+// percent writes a share; it never rounds one that is short of everything up
+// to 100 %.
+func percent(share float64) string {
+	p := 100 * share
+	if p > 99.5 && p < 100 {
+		return ">99 %"
+	}
+	return fmt.Sprintf("%.0f %%", p)
 }
 
 func orNone(m *Metrics) Metrics {
@@ -61,13 +72,35 @@ func orNone(m *Metrics) Metrics {
 	return *m
 }
 
-// figure prints a number with digits significant digits, a dash where there
-// is none.
+// figure prints a number with so many significant digits and no exponent
+// between a thousandth and a million, a dash where there is none.
 func figure(v *float64, digits int) string {
 	if v == nil {
 		return "-"
 	}
-	return fmt.Sprintf("%.*g", digits, *v)
+	a := math.Abs(*v)
+	switch {
+	case a < 1e-9: // rounding, in any unit people use
+		return "0"
+	case a < 1e-3 || a >= 1e6:
+		return fmt.Sprintf("%.*g", digits, *v)
+	}
+	decimals := max(0, digits-1-int(math.Floor(math.Log10(a))))
+	s := fmt.Sprintf("%.*f", decimals, *v)
+	if decimals > 0 {
+		s = strings.TrimRight(strings.TrimRight(s, "0"), ".")
+	}
+	return s
+}
+
+// quantity is a number with its unit.
+func quantity(v float64, unit string, digits int) string {
+	return strings.TrimSpace(figure(&v, digits) + " " + unitWords(unit))
+}
+
+// unitWords writes a unit as people do.
+func unitWords(unit string) string {
+	return strings.NewReplacer("degC", "°C", "degF", "°F").Replace(plain(unit))
 }
 
 func (g *Gains) writeEntries(b *bufio.Writer) {
@@ -79,14 +112,14 @@ func (g *Gains) writeEntries(b *bufio.Writer) {
 		entries, _ = g.spell(Spelling{})
 	}
 	for _, e := range entries {
-		fmt.Fprintf(t, "  %s\t%s\n", plain(e.Name), strings.TrimSpace(fmt.Sprintf("%.4g %s", e.Value, plain(e.Unit))))
+		fmt.Fprintf(t, "  %s\t%s\n", plain(e.Name), quantity(e.Value, e.Unit, 4))
 	}
 	if g.Scan > 0 {
-		fmt.Fprintf(t, "  scan time\t%.4g s\n", g.Scan)
+		fmt.Fprintf(t, "  scan time\t%s\n", quantity(g.Scan, "s", 4))
 	}
 	limit := func(name string, v *float64, per string) {
 		if v != nil {
-			fmt.Fprintf(t, "  %s\t%.4g %s%s\n", name, *v, plain(g.Units.Input), per)
+			fmt.Fprintf(t, "  %s\t%s%s\n", name, quantity(*v, g.Units.Input, 4), per)
 		}
 	}
 	limit("output from", g.Limits.Min, "")
@@ -103,13 +136,20 @@ func (g *Gains) writeEntries(b *bufio.Writer) {
 	}
 }
 
+// Judged tells gains whose loop was looked at from gains that someone wrote
+// down.
+func (g *Gains) Judged() bool { return g.Nominal != nil || g.Worst != nil }
+
 func (g *Gains) writeJudgement(b *bufio.Writer) {
+	if !g.Judged() {
+		return
+	}
 	verdict := "meets"
 	if !g.Meets {
 		verdict = "does NOT meet"
 	}
-	fmt.Fprintf(b, "\nThis %s the requirement (%s) on %.4g%% of the plausible plants: it holds on %.1f%% of those it was not chosen on.\n",
-		verdict, g.Requirement, 100*g.Assurance, 100*g.ShareMeeting)
+	fmt.Fprintf(b, "\nThis %s the requirement (%s) on %.4g %% of the plausible plants: it holds on %.1f %% of those it was not chosen on.\n",
+		verdict, g.Requirement.Words(g.Units), 100*g.Assurance, 100*g.ShareMeeting)
 	for _, r := range g.Reasons {
 		fmt.Fprintln(b, "  -", plain(r))
 	}
@@ -123,17 +163,17 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 
 func (g *Gains) writeMore(b *bufio.Writer) {
 	if s := g.SquareRoot; s != nil {
-		fmt.Fprintf(b, "\nBehind a square root of the output: gain %.4g %s, the times as above.\n", s.Kc, plain(s.Unit))
+		fmt.Fprintf(b, "\nBehind a square root of the output: gain %s, the times as above.\n", quantity(s.Kc, s.Unit, 4))
 	}
 	if g.PoleRegion != nil {
-		g.PoleRegion.writeText(b)
+		g.PoleRegion.writeText(b, g.Units.Input+"/"+perKelvin(g.Units.Temperature))
 	}
 	if len(g.Schedule) == 0 {
 		return
 	}
 	fmt.Fprintln(b, "\nA set for each card (ideal form)")
 	t := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
-	fmt.Fprintln(t, "  card\tinput\tKc\tTi s\tTd s\tload IAE of the common set")
+	fmt.Fprintf(t, "  card\tinput %s\tKc\tTi s\tTd s\tload IAE of the common set\n", unitWords(g.Units.Input))
 	for _, e := range g.Schedule {
 		cost := "-"
 		if e.Cost != nil {
@@ -144,12 +184,12 @@ func (g *Gains) writeMore(b *bufio.Writer) {
 	t.Flush()
 }
 
-func (d *RegionDesign) writeText(b *bufio.Writer) {
-	fmt.Fprintf(b, "\nP control: poles left of %.3g 1/s and damping ratio of %.3g or more\n", 0-d.Region.sigma(), d.Region.Damping)
+func (d *RegionDesign) writeText(b *bufio.Writer, unit string) {
+	fmt.Fprintf(b, "\nP control: %s\n", d.Region)
 	list := func(where string, set []GainInterval) {
 		var parts []string
 		for _, g := range set {
-			parts = append(parts, fmt.Sprintf("%.4g to %.4g", g.Low, g.High))
+			parts = append(parts, figure(&g.Low, 3)+" to "+quantity(g.High, unit, 3))
 		}
 		if len(parts) == 0 {
 			parts = []string{"no gain"}
@@ -157,25 +197,37 @@ func (d *RegionDesign) writeText(b *bufio.Writer) {
 		fmt.Fprintf(b, "  %s: %s\n", where, strings.Join(parts, ", "))
 	}
 	list("on the best fit", d.Nominal)
-	list(fmt.Sprintf("on %.4g%% of the plausible plants", 100*d.Assurance), d.Plausible)
+	list(fmt.Sprintf("on %.4g %% of the plausible plants", 100*d.Assurance), d.Plausible)
 	if len(d.Nominal) == 0 {
-		fmt.Fprintf(b, "  nearest: gain %.4g, which settles in about %.3g s with a damping ratio of %.2g\n", d.Best, d.BestSettling, d.BestDamping)
+		fmt.Fprintf(b, "  nearest: gain %s, which settles in about %s with a damping ratio of %.2g\n", quantity(d.Best, unit, 3), quantity(d.BestSettling, "s", 3), d.BestDamping)
 	}
 }
 
-// String says the requirement in a few words.
-func (q Requirement) String() string {
+// String says where the poles must lie.
+func (r PoleRegion) String() string {
+	var parts []string
+	if sigma := r.sigma(); sigma > 0 {
+		parts = append(parts, fmt.Sprintf("poles left of %.3g 1/s", -sigma))
+	}
+	if r.Damping > 0 {
+		parts = append(parts, fmt.Sprintf("damping ratio of %.3g or more", r.Damping))
+	}
+	return strings.Join(parts, " and ")
+}
+
+// Words says the requirement in a few words.
+func (q Requirement) Words(u GainUnits) string {
 	var parts []string
 	say := func(format string, v *float64) {
 		if v != nil {
-			parts = append(parts, fmt.Sprintf(format, *v))
+			parts = append(parts, fmt.Sprintf(format, figure(v, 4)))
 		}
 	}
-	say("Ms ≤ %.4g", q.Ms)
-	say("settling ≤ %.4g s", q.Settling)
-	say("overshoot ≤ %.4g%%", q.Overshoot)
-	say("damping ≥ %.4g", q.Damping)
-	say("temperature ≤ %.4g", q.TempMax)
+	say("Ms ≤ %s", q.Ms)
+	say("settling ≤ %s s", q.Settling)
+	say("overshoot ≤ %s %%", q.Overshoot)
+	say("damping ≥ %s", q.Damping)
+	say("temperature ≤ %s "+strings.ReplaceAll(unitWords(u.Temperature), "%", "%%"), q.TempMax)
 	if len(parts) == 0 {
 		return "none"
 	}

@@ -371,7 +371,7 @@ func (t *tuning) gains(ctx context.Context, r row) (*Gains, error) {
 	g.OperatingInput = finite(o.input)
 	g.Reasons = []string{}
 	if !g.Meets {
-		g.Reasons = r.on.reasons(t.requirement, r.out, r.worst, t.options.Assurance)
+		g.Reasons = r.on.reasons(t.requirement, g.Units, r.out, r.worst, t.options.Assurance)
 		if t.options.Rule == "" {
 			g.Cures = t.cures(ctx, r.kind, t.options.Assurance)
 		}

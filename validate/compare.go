@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"io"
 	"strings"
-	"text/tabwriter"
 )
 
 // ComparisonSchema is the schema of a comparison file.
@@ -76,36 +75,44 @@ func cellOf(run *RunReplay) *ComparedCell {
 // WriteJSON writes the comparison as indented JSON.
 func (c *Comparison) WriteJSON(w io.Writer) error { return writeJSON(w, c) }
 
-// WriteText writes one line a run and, for each replay, the probability of
-// meeting the requirement, the median settling time and the median IAE.
+// WriteText writes for each run the figures of the log and, for each replay,
+// the share of plausible plants on which it meets the requirement and the
+// medians over the plants, 80 columns wide at most.
 func (c *Comparison) WriteText(w io.Writer) error {
 	var b strings.Builder
-	tw := tabwriter.NewWriter(&b, 0, 0, 2, ' ', 0)
-	fmt.Fprint(tw, "run\tlogged: settling s\tIAE")
-	for _, label := range c.Columns {
-		fmt.Fprintf(tw, "\t%s: meets\tsettling s\tIAE", clean(label))
+	row := func(label string, m RunMetrics, verdict string) {
+		fmt.Fprintf(&b, "%-36s %12s %10s %11s %7s\n", short("  "+clean(label), 36), verdict, optional(m.Settling), optional(m.Overshoot), optional(m.IAE))
 	}
-	fmt.Fprintln(tw)
-	for _, row := range c.Rows {
-		title := (&RunReplay{File: row.File, Name: row.Name}).title()
-		fmt.Fprintf(tw, "%s\t%s\t%s", clean(title), optional(row.Logged.Settling), optional(row.Logged.IAE))
-		for _, cell := range row.Cells {
+	fmt.Fprintf(&b, "%-36s %12s %10s %11s %7s\n", "", "meets on", "settling s", "overshoot %", "IAE")
+	for i, run := range c.Rows {
+		if i == mostShown {
+			fmt.Fprintf(&b, "and %s more; a file written with -o holds them all\n", counted(len(c.Rows)-mostShown, "run"))
+			break
+		}
+		fmt.Fprintln(&b, clean((&RunReplay{File: run.File, Name: run.Name}).title()))
+		row("logged", run.Logged, "")
+		for k, cell := range run.Cells {
 			if cell == nil {
-				fmt.Fprint(tw, "\t-\t-\t-")
+				row(c.Columns[k], RunMetrics{}, "-")
 				continue
 			}
-			fmt.Fprintf(tw, "\t%s\t%s\t%s", cell.verdict(), optional(cell.Proposed.Median.Settling), optional(cell.Proposed.Median.IAE))
+			row(c.Columns[k], cell.Proposed.Median, cell.verdict())
 		}
-		fmt.Fprintln(tw)
 	}
-	fmt.Fprint(tw, "all\t\t")
-	for _, s := range c.Totals {
-		fmt.Fprintf(tw, "\t%d of %d\t\t", s.Meeting, s.Judged)
+	b.WriteString("runs that meet, of those judged\n")
+	for k, s := range c.Totals {
+		fmt.Fprintf(&b, "%-36s %12s\n", short("  "+clean(c.Columns[k]), 36), fmt.Sprintf("%d of %d", s.Meeting, s.Judged))
 	}
-	fmt.Fprintln(tw)
-	tw.Flush() // writes to a strings.Builder, which cannot fail
 	_, err := io.WriteString(w, b.String())
 	return err
+}
+
+// short cuts a text to so many characters, the last one then being "…".
+func short(s string, n int) string {
+	if r := []rune(s); len(r) > n {
+		return string(r[:n-1]) + "…"
+	}
+	return s
 }
 
 func (c *ComparedCell) verdict() string {
@@ -115,5 +122,5 @@ func (c *ComparedCell) verdict() string {
 	case !c.Judged:
 		return "not judged"
 	}
-	return number(100*c.Probability) + "%"
+	return percent(c.Probability)
 }

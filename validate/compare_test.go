@@ -32,7 +32,7 @@ func TestCompare(t *testing.T) {
 		}
 	}
 	var text, js bytes.Buffer
-	if err := c.WriteText(&text); err != nil || !strings.Contains(text.String(), "fast: meets") {
+	if err := c.WriteText(&text); err != nil || !strings.Contains(text.String(), "meets on") {
 		t.Errorf("%v\n%s", err, text.String())
 	}
 	if err := c.WriteJSON(&js); err != nil {

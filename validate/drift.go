@@ -3,8 +3,8 @@ package validate
 import (
 	"fmt"
 	"io"
+	"math"
 	"strings"
-	"text/tabwriter"
 )
 
 // DriftSchema is the schema of a drift file.
@@ -117,37 +117,75 @@ func (d *Drift) WriteText(w io.Writer) error {
 	}
 	d.writeTable(&b)
 	for _, text := range d.Warnings {
-		fmt.Fprintf(&b, "warning: %s\n", text)
+		fmt.Fprintf(&b, "\nwarning: %s\n", text)
 	}
 	for _, f := range d.Failed {
 		fmt.Fprintf(&b, "not fitted: %s: %s\n", clean(f.File), clean(f.Reason))
 	}
+	if len(d.Cautions) > 0 {
+		b.WriteString("\nCautions\n")
+	}
 	for _, text := range d.Cautions {
-		fmt.Fprintf(&b, "caution: %s\n", text)
+		fmt.Fprintf(&b, "  - %s\n", text)
 	}
 	_, err := io.WriteString(w, b.String())
 	return err
 }
 
+// writeTable writes the estimates run by run with the half-widths of their
+// intervals, 80 columns wide at most.
 func (d *Drift) writeTable(b *strings.Builder) {
 	b.WriteString("\n")
-	tw := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
-	fmt.Fprint(tw, "run\tdate")
+	const name, cell = 28, 13
+	inLine := name+len(d.Parameters)*cell <= 80
+	label := fmt.Sprintf("%-*s", name, "run, date")
+	if !inLine {
+		label = "run, date\n  "
+	}
+	line := label
 	for _, p := range d.Parameters {
-		fmt.Fprintf(tw, "\t%s %s", wordFor(p.Name), shown(p.Unit))
+		line += fmt.Sprintf("%*s", cell, wordFor(p.Name)+" "+shown(p.Unit))
 	}
-	fmt.Fprintln(tw)
+	fmt.Fprintln(b, line)
 	for i, r := range d.Runs {
-		date := "-"
+		label := clean(r.title())
 		if r.Start != nil {
-			date, _, _ = strings.Cut(*r.Start, "T")
+			date, _, _ := strings.Cut(*r.Start, "T")
+			label += ", " + clean(date)
 		}
-		fmt.Fprintf(tw, "%s\t%s", clean(r.title()), date)
+		switch short := len([]rune(label)) < name; {
+		case inLine && short:
+			label = fmt.Sprintf("%-*s", name, label)
+		case inLine:
+			label += fmt.Sprintf("\n%*s", name, "")
+		default:
+			label += "\n  "
+		}
+		line := label
 		for _, p := range d.Parameters {
-			fmt.Fprintf(tw, "\t%s", banded(p.Points[i].Low, p.Points[i].Value, p.Points[i].High))
+			line += fmt.Sprintf("%*s", cell, p.Points[i].words())
 		}
-		fmt.Fprintln(tw)
+		fmt.Fprintln(b, line)
 	}
-	tw.Flush() // writes to a strings.Builder, which cannot fail
-	b.WriteString("\n")
+}
+
+// words writes the estimate with half the width of its interval, "11.7
+// ±0.07", or the one end that its interval has.
+func (p DriftPoint) words() string {
+	switch {
+	case p.Value == nil:
+		return "-"
+	case p.Low == nil && p.High == nil:
+		return "no bound"
+	case p.Low == nil:
+		return "≤ " + number(*p.High)
+	case p.High == nil:
+		return "≥ " + number(*p.Low)
+	}
+	half := (*p.High - *p.Low) / 2
+	decimals := 0
+	if half > 0 {
+		decimals = min(max(1-int(math.Floor(math.Log10(half))), 0), 6)
+	}
+	return fmt.Sprintf("%.*f ±%.*f", decimals, *p.Value, decimals, half)
 }

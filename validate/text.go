@@ -5,26 +5,35 @@ import (
 	"io"
 	"slices"
 	"strings"
-	"text/tabwriter"
 	"unicode"
 )
 
-// WriteText writes the replay for a terminal: a table, worst run first, then
-// what failed, what could not be replayed, warnings and cautions.
+// mostShown is how many runs and failures the terminal lists; the files hold
+// them all.
+const mostShown = 20
+
+// WriteText writes the replay for a terminal, its tables 80 columns wide at
+// most: the runs, worst first, each with what limits it, then what could not
+// be replayed, and the cautions.
 func (r *Replay) WriteText(w io.Writer) error {
 	var b strings.Builder
 	r.writeHead(&b)
-	worst := r.worstFirst()
-	r.writeTable(&b, worst)
-	writeNotes(&b, worst)
-	for _, f := range r.Failed {
+	r.writeRuns(&b, r.worstFirst())
+	for i, f := range r.Failed {
+		if i == 0 {
+			b.WriteString("\n")
+		}
+		if i == mostShown {
+			fmt.Fprintf(&b, "and %d more not replayed\n", len(r.Failed)-mostShown)
+			break
+		}
 		fmt.Fprintf(&b, "not replayed: %s: %s\n", clean(f.File), clean(f.Reason))
 	}
 	if len(r.Cautions) > 0 {
-		b.WriteString("\n")
+		b.WriteString("\nCautions\n")
 	}
 	for _, c := range r.Cautions {
-		fmt.Fprintf(&b, "caution: %s\n", c)
+		fmt.Fprintf(&b, "  - %s\n", c)
 	}
 	_, err := io.WriteString(w, b.String())
 	return err
@@ -74,41 +83,72 @@ func (r *Replay) worstFirst() []*RunReplay {
 	return out
 }
 
-func (r *Replay) writeTable(b *strings.Builder, runs []*RunReplay) {
+// shownMetrics are the columns of the table of runs.
+func (r *Replay) shownMetrics() (heads []string, pick []func(RunMetrics) *float64) {
+	u := r.Gains.Units
+	add := func(head string, f func(RunMetrics) *float64) { heads, pick = append(heads, head), append(pick, f) }
+	add("settling s", func(m RunMetrics) *float64 { return m.Settling })
+	add("overshoot %", func(m RunMetrics) *float64 { return m.Overshoot })
+	add("deviation "+difference(u.Temperature), func(m RunMetrics) *float64 { return m.Deviation })
+	add("peak "+shown(u.Temperature), func(m RunMetrics) *float64 { return m.PeakTemp })
+	add("peak "+shown(u.Input), func(m RunMetrics) *float64 { return m.PeakInput })
+	return heads, pick
+}
+
+// writeRuns writes for each run its verdict with the median figures, their
+// band over the plausible plants, the figures of the log, and what limits it.
+func (r *Replay) writeRuns(b *strings.Builder, runs []*RunReplay) {
 	if len(runs) == 0 {
 		return
 	}
-	u := r.Gains.Units
-	tw := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
-	fmt.Fprintf(tw, "run\tmeets\tprobability\tsettling s\tlogged\tovershoot %%\tlogged\tdeviation %s\tlogged\tpeak %s\tlogged\tpeak %s\tlogged\n",
-		difference(u.Temperature), shown(u.Temperature), shown(u.Input))
-	for _, run := range runs {
-		p, l := run.Proposed, run.Logged
-		fmt.Fprintf(tw, "%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\n", clean(run.title()), run.verdict(), run.probability(),
-			banded(p.Low.Settling, p.Median.Settling, p.High.Settling), optional(l.Settling),
-			banded(p.Low.Overshoot, p.Median.Overshoot, p.High.Overshoot), optional(l.Overshoot),
-			banded(p.Low.Deviation, p.Median.Deviation, p.High.Deviation), optional(l.Deviation),
-			banded(p.Low.PeakTemp, p.Median.PeakTemp, p.High.PeakTemp), optional(l.PeakTemp),
-			banded(p.Low.PeakInput, p.Median.PeakInput, p.High.PeakInput), optional(l.PeakInput))
+	heads, pick := r.shownMetrics()
+	tableRow(b, "", heads)
+	for i, run := range runs {
+		if i == mostShown {
+			fmt.Fprintf(b, "and %s more; a file written with -o holds them all\n", counted(len(runs)-mostShown, "run"))
+			break
+		}
+		fmt.Fprintln(b, clean(run.title()))
+		p := run.Proposed
+		median, band, logged := make([]string, len(pick)), make([]string, len(pick)), make([]string, len(pick))
+		wide := false
+		for k, f := range pick {
+			median[k], band[k], logged[k] = optional(f(p.Median)), banded(f(p.Low), f(p.High)), optional(f(run.Logged))
+			wide = wide || band[k] != ""
+		}
+		tableRow(b, "  "+run.verdict(), median)
+		if wide {
+			tableRow(b, "  band", band)
+		}
+		tableRow(b, "  logged", logged)
+		run.writeNotes(b)
 	}
-	tw.Flush() // writes to a strings.Builder, which cannot fail
 }
 
-func writeNotes(b *strings.Builder, runs []*RunReplay) {
-	for _, run := range runs {
-		for _, reason := range run.Reasons {
-			fmt.Fprintf(b, "\n%s: %s", clean(run.title()), reason)
-		}
-		if t := run.BackTest; t != nil && !t.Reproduced {
-			fmt.Fprintf(b, "\n%s: do not trust this model here: %s", clean(run.title()), strings.Join(t.Differs, "; "))
-		} else if t != nil && len(t.Differs) > 0 {
-			fmt.Fprintf(b, "\n%s: back-test: %s", clean(run.title()), strings.Join(t.Differs, "; "))
-		}
-		for _, warning := range run.Warnings {
-			fmt.Fprintf(b, "\n%s: warning: %s", clean(run.title()), warning)
-		}
+// tableRow writes a label and cells set to the right, 80 columns wide at most
+// with five cells.
+func tableRow(b *strings.Builder, label string, cells []string) {
+	const labelWidth, cellWidth = 16, 12
+	line := fmt.Sprintf("%-*s", labelWidth, label)
+	for _, c := range cells {
+		line += fmt.Sprintf(" %*s", cellWidth, c)
 	}
-	b.WriteString("\n")
+	fmt.Fprintln(b, strings.TrimRight(line, " "))
+}
+
+func (r *RunReplay) writeNotes(b *strings.Builder) {
+	note := func(format string, a ...any) { fmt.Fprintf(b, "  - "+format+"\n", a...) }
+	for _, reason := range r.Reasons {
+		note("%s", reason)
+	}
+	if t := r.BackTest; t != nil && !t.Reproduced {
+		note("do not trust this model here: %s", strings.Join(t.Differs, "; "))
+	} else if t != nil && len(t.Differs) > 0 {
+		note("back-test: %s", strings.Join(t.Differs, "; "))
+	}
+	for _, warning := range r.Warnings {
+		note("warning: %s", warning)
+	}
 }
 
 // counted writes "1 run", "2 runs".
@@ -126,6 +166,8 @@ func (r *RunReplay) title() string {
 	return r.File + ", run " + r.Name
 }
 
+// verdict is the word of the table, with the share of plausible plants on
+// which the run meets the requirement.
 func (r *RunReplay) verdict() string {
 	switch {
 	case r.BackTest != nil && !r.BackTest.Reproduced:
@@ -133,27 +175,25 @@ func (r *RunReplay) verdict() string {
 	case !r.Judged:
 		return "not judged"
 	case r.Meets:
-		return "yes"
+		return "meets, " + percent(r.Probability)
 	}
-	return "no"
+	return "fails, " + percent(r.Probability)
 }
 
-func (r *RunReplay) probability() string {
-	if !r.Judged {
-		return "-"
+// percent never rounds a share that is short of everything up to 100 %.
+func percent(share float64) string {
+	if share < 1 && share > 0.995 {
+		return "over 99 %"
 	}
-	return number(100*r.Probability) + "%"
+	return fmt.Sprintf("%.0f %%", 100*share)
 }
 
-// banded writes "62 (48..80)"; a figure that does not exist is a dash.
-func banded(low, median, high *float64) string {
-	if median == nil && low == nil && high == nil {
-		return "-"
+// banded writes the ends of a band, "48..80"; nothing where there is none.
+func banded(low, high *float64) string {
+	if low == nil && high == nil || low != nil && high != nil && *low == *high {
+		return ""
 	}
-	if low != nil && high != nil && *low == *high {
-		return optional(median)
-	}
-	return fmt.Sprintf("%s (%s..%s)", optional(median), optional(low), optional(high))
+	return optional(low) + ".." + optional(high)
 }
 
 func optional(x *float64) string {

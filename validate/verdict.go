@@ -106,7 +106,7 @@ func number(x float64) string {
 	switch {
 	case math.IsInf(x, 0) || math.IsNaN(x):
 		return "none"
-	case size == 0:
+	case size < 1e-9: // rounding, in any unit people use
 		return "0"
 	case size < 1e-4 || size >= 1e9:
 		return strconv.FormatFloat(x, 'g', 3, 64)

@@ -147,11 +147,11 @@ func kelvins(unit string) string {
 }
 
 func requirementWords(g *tune.Gains) string {
-	share := format.Percent(g.ShareMeeting)
+	share, asked := format.Percent(g.ShareMeeting), g.Requirement.Words(g.Units)
 	if g.Meets {
-		return fmt.Sprintf("meets %s on %s of plausible plants", g.Requirement, share)
+		return fmt.Sprintf("meets %s on %s of plausible plants", asked, share)
 	}
-	return fmt.Sprintf("misses %s: holds on %s of plausible plants, asked for %s", g.Requirement, share, format.Percent(g.Assurance))
+	return fmt.Sprintf("misses %s: holds on %s of plausible plants, asked for %s", asked, share, format.Percent(g.Assurance))
 }
 
 func replayWords(r *validate.RunReplay, unit string) string {
