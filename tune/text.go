@@ -36,9 +36,9 @@ func (g *Gains) writeTable(b *bufio.Writer) {
 		return
 	}
 	fmt.Fprintf(b, "Candidates (ideal form). Ms, settling and overshoot are those of the plausible plant at %s, IAE after a unit load that of the best fit.\n\n", percent(g.Assurance))
-	const line = "%-2s%-16s %-3s %7s %5s %5s %5s %7s %7s %5s %6s %5s\n"
+	const line = "%-2s%-16s %-3s %7s %5s %5s %4s %7s %7s %5s %5s %3s\n"
 	gain := unitWords(g.Units.Input) + "/" + unitWords(perKelvin(g.Units.Temperature))
-	fmt.Fprintf(b, line, "", "rule", "", "Kc", "Ti", "Td", "Ms", "settled", "over-", "IAE", "share", "meets")
+	fmt.Fprintf(b, line, "", "rule", "", "Kc", "Ti", "Td", "Ms", "settled", "over-", "IAE", "share", "met")
 	fmt.Fprint(b, strings.TrimRight(fmt.Sprintf(line, "", "", "", gain, "s", "s", "", "s", "shoot %", "", "", ""), " \n"), "\n")
 	for _, c := range g.Candidates {
 		mark, meets := "", "no"
