@@ -108,6 +108,9 @@ func (t *task) worstOf(f stepFigures) (violation float64, name string) {
 			violation, name = v, what
 		}
 	}
+	if t.simulates() && f.short > 1e-9 {
+		return f.short, "input"
+	}
 	if !math.IsInf(t.overshoot, 1) {
 		note((f.overshoot-t.overshoot)/max(t.overshoot, 0.02), "overshoot")
 	}

@@ -48,8 +48,8 @@ func operate(c *fit.Card, input *float64) (operation, error) {
 		o.input = *input
 	}
 	o.slope = c.Law().Slope(o.input)
-	if o.slope == 0 || !isFinite(o.slope) {
-		return o, fmt.Errorf("%w: at an input of %g the power law has no gain: give --operating-input", ErrUnusable, o.input)
+	if c.Law() == ident.Power && !(o.input > 0) || !isFinite(o.slope) {
+		return o, fmt.Errorf("%w: at an input of %g the power law has no gain that a controller could use: give an --operating-input above 0", ErrUnusable, o.input)
 	}
 	o.temperature = temperatureAt(c, nominal, o.input, in, temp)
 	o.nominal = scaledGain(nominal, o.slope)

@@ -42,6 +42,9 @@ func (e *ensemble) reasons(q Requirement, u GainUnits, out []outcome, m *Metrics
 	if e.missedCount(out, "temperature") > len(out)-needed(len(out), share) {
 		say("temperature ceiling of %s: passed on %d of %d plausible plants", quantity(*q.TempMax, u.Temperature, 4), e.missedCount(out, "temperature"), len(out))
 	}
+	if short := e.missedCount(out, "input"); short > len(out)-needed(len(out), share) {
+		say("input limits: the setpoint step needs more input than they leave on %d of %d plausible plants", short, len(out))
+	}
 	if len(r) == 0 {
 		say("every figure holds at its own %.0f %% plant, but not all of them together: %.0f %% of the plausible plants meet the whole requirement", percent, 100*e.share(out))
 	}
@@ -63,7 +66,7 @@ func (e *ensemble) missedCount(out []outcome, name string) int {
 
 // binding is what is missed most on most of the plants that fail.
 func (e *ensemble) binding(out []outcome) string {
-	names := []string{"stability", "ms", "damping", "overshoot", "settling", "temperature"}
+	names := []string{"stability", "ms", "damping", "overshoot", "settling", "temperature", "input"}
 	best, count := "", 0
 	for _, n := range names {
 		if k := e.missedCount(out, n); k > count {
@@ -71,7 +74,7 @@ func (e *ensemble) binding(out []outcome) string {
 		}
 	}
 	return map[string]string{"ms": "Ms", "settling": "settling time", "damping": "the damping ratio", "overshoot": "the overshoot",
-		"temperature": "the temperature ceiling", "stability": "stability"}[best]
+		"temperature": "the temperature ceiling", "input": "the input", "stability": "stability"}[best]
 }
 
 // cures sizes the changes, one at a time, that would let a controller of this
@@ -181,6 +184,11 @@ func (ch change) apply(q Requirement) Requirement {
 // CautionStart goes with every set of gains. Common practice, no source.
 const CautionStart = "Start new gains with the output limited and a small setpoint step; stay with the heater, ready to switch to manual."
 
+// soundMs is the largest peak sensitivity that passes without a word: sound
+// loops have 1.2 to 2 (Åström and Hägglund, Advanced PID Control, 2006, from
+// memory).
+const soundMs = 2.0
+
 // cautions go with every set of gains.
 func (t *tuning) cautions(g *Gains) []string {
 	c := []string{fit.CautionCutOut, fit.CautionSheath, CautionStart}
@@ -197,6 +205,14 @@ func (t *tuning) cautions(g *Gains) []string {
 			top = math.Ceil(10*top) / 10 // never said to be cooler than it is
 		}
 		c = append(c, fmt.Sprintf("A setpoint step of %s from about %s may reach %s.", quantity(*s, perKelvin(unit), 2), quantity(o.temperature, unit, 3), quantity(top, unit, 4)))
+	}
+	if n := g.Nominal; g.Controller == "p" && n != nil && n.SteadyOffset != nil && g.Requirement.SetpointStep != nil {
+		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",
+			quantity(*g.Requirement.SetpointStep, perKelvin(unit), 2), quantity(math.Abs(*n.SteadyOffset), perKelvin(unit), 2)))
+	}
+	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs {
+		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.0f %%; up to %.0f is usual. Ask for --ms %.1f.",
+			figure(w.Ms, 3), 100*g.Assurance, soundMs, usualMs))
 	}
 	if len(o.plants) < 20 {
 		c = append(c, fmt.Sprintf("The card holds %d plausible plants: the spread of the figures is not known.", len(o.plants)))

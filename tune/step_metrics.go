@@ -17,6 +17,7 @@ type stepFigures struct {
 	iae       float64 // ∫|r − y|dt
 	final     float64 // temperature it comes to
 	offset    float64 // r − final
+	short     float64 // input that the step needs beyond a limit, as a part of what the limit leaves; 0 where it is within reach
 }
 
 // maxSamples bounds a run that does not come to rest.
@@ -199,23 +200,33 @@ func bisectCoarse(f func(float64) float64, lo, hi float64) float64 {
 }
 
 // setpointStep runs a step of the setpoint by r (a change, not 0) and judges
-// settling into band (fraction of the step).
+// settling into band (fraction of the step). A step that the limits of the
+// input keep out of reach does not settle.
 func setpointStep(s *loopSim, p ident.Plant, c law, r, band float64, plan runPlan) stepFigures {
 	target, uEnd := steadyState(p, c, r, 0)
 	// where the limits do not let the temperature come to its target, it ends
 	// where they hold it
-	uEnd = max(s.control.low, min(s.control.high, uEnd))
-	w := newWatch(p, r, target, uEnd, plan)
+	needed := uEnd
+	uEnd = max(s.control.low, min(s.control.high, needed))
+	end := target
+	if uEnd != needed && !p.Structure.Integrating() {
+		end = p.Gain * uEnd
+		plan.deadline = math.Inf(1) // it comes to rest outside the band
+	}
+	w := newWatch(p, r, end, uEnd, plan)
 	w.band = band * math.Abs(target)
 	w.direction = math.Copysign(1, target)
 	s.run(r, 0, w.see)
 	f := w.stepFigures
 	f.settling = math.NaN()
-	if d := math.Abs(w.last.y - target); d <= w.band && w.last.t-w.outside > plan.quiet/2 {
+	if d := math.Abs(w.last.y - target); end == target && d <= w.band && w.last.t-w.outside > plan.quiet/2 {
 		f.settling = w.outside
 	}
 	f.overshoot = max(0, f.peak/math.Abs(target)-1)
-	f.final, f.offset = target, r-target
+	f.final, f.offset = end, r-end
+	if uEnd != needed {
+		f.short = math.Abs(needed-uEnd) / max(math.Abs(uEnd), 1e-3*math.Abs(needed))
+	}
 	return f
 }
 

@@ -69,6 +69,9 @@ func newSearch(ctx context.Context, e *ensemble, p ident.Plant, assurance float6
 
 // design searches a controller of a kind.
 func (s *search) design(kind string) design {
+	if kind != "p" && !s.on.reaches(s.assurance) {
+		return s.beyondReach(kind)
+	}
 	switch kind {
 	case "p":
 		return s.proportional()

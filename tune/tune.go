@@ -127,6 +127,9 @@ func newTuning(cards []*fit.Card, q Requirement, o Options) (*tuning, error) {
 	}
 	var list []*scenario
 	for card, op := range t.ops {
+		if err := op.admits(t.requirement); err != nil {
+			return nil, err
+		}
 		task := newTask(t.requirement, op.input, op.temperature)
 		for _, p := range op.plants {
 			list = append(list, newScenario(p, &task, card))
@@ -163,8 +166,6 @@ func complete(q Requirement, o operation) (Requirement, error) {
 		return q, fmt.Errorf("scan time is %g s: give 0 or more", q.Scan)
 	case q.InputMin != nil && q.InputMax != nil && !(*q.InputMin < *q.InputMax):
 		return q, fmt.Errorf("input limits %g and %g: the first must be the smaller", *q.InputMin, *q.InputMax)
-	case q.InputMax != nil && o.input > *q.InputMax || q.InputMin != nil && o.input < *q.InputMin:
-		return q, fmt.Errorf("the operating input %.4g lies outside the input limits: give --operating-input", o.input)
 	case q.SetpointStep != nil && (*q.SetpointStep == 0 || !isFinite(*q.SetpointStep)):
 		return q, fmt.Errorf("setpoint step is %g: give a step other than 0", *q.SetpointStep)
 	}

@@ -1,0 +1,74 @@
+package tune
+
+import (
+	"fmt"
+	"math"
+
+	"lagwright/ident"
+)
+
+// What no controller can change: whether the operating point and the end of
+// the setpoint step lie within the limits.
+
+// admits says whether a requirement can be judged about an operating point.
+func (o operation) admits(q Requirement) error {
+	if q.InputMax != nil && o.input > *q.InputMax || q.InputMin != nil && o.input < *q.InputMin {
+		return fmt.Errorf("the operating input %.4g lies outside the input limits: give --operating-input", o.input)
+	}
+	if q.TempMax == nil {
+		return nil
+	}
+	if end := o.temperature + max(0, *q.SetpointStep); !(end < *q.TempMax) {
+		return fmt.Errorf("a setpoint step of %.4g from about %.4g, the temperature at an input of %.4g, ends at %.4g, not below the ceiling of %.4g: give a smaller --setpoint-step or a lower --operating-input",
+			*q.SetpointStep, o.temperature, o.input, end, *q.TempMax)
+	}
+	return nil
+}
+
+// reaches tells whether the limits of the input leave the end of the setpoint
+// step within reach of a controller with integral action.
+func (t *task) reaches(p ident.Plant) bool {
+	if p.Structure.Integrating() || !t.simulates() {
+		return true
+	}
+	u := t.step / p.Gain
+	return (t.limits.Min == nil || u >= *t.limits.Min) && (t.limits.Max == nil || u <= *t.limits.Max)
+}
+
+// reaches tells whether the step is within reach on the share of every card's
+// plants.
+func (e *ensemble) reaches(share float64) bool {
+	reached := make([]int, e.cards)
+	for _, s := range e.scenarios {
+		if s.task.reaches(s.p) {
+			reached[s.card]++
+		}
+	}
+	for card, n := range e.counts() {
+		if reached[card] < toHold(n, share) {
+			return false
+		}
+	}
+	return true
+}
+
+// beyondReach designs where the step is out of reach, so that nothing about
+// the step can tell one controller from another: for Ms, and for damping where
+// it is asked. The result is not found, whatever it is.
+func (s *search) beyondReach(kind string) design {
+	if s.thin {
+		return design{iae: math.Inf(1), miss: math.Inf(1)}
+	}
+	list := make([]*scenario, len(s.on.scenarios))
+	for i, old := range s.on.scenarios {
+		free := *old.task
+		free.ms = min(free.ms, usualMs)
+		free.overshoot, free.settling, free.peakTemp = math.Inf(1), math.Inf(1), math.Inf(1)
+		list[i] = newScenario(old.p, &free, old.card)
+	}
+	near := *s
+	near.on = newEnsemble(list, s.on.workers)
+	d := near.design(kind)
+	d.found, d.miss = false, s.on.miss(d.law, s.assurance)
+	return d
+}
