@@ -20,6 +20,9 @@ func assess(run *Run, o *Options) {
 	q.Gaps = findGaps(run.T, q.MedianInterval)
 	q.Quantum = quantum(run.Y)
 	q.Spikes = findSpikes(run.Y, q.Quantum)
+	if n, ok := clippedNote(run.Y); ok {
+		addNote(&q.Notes, n)
+	}
 	if o.RemoveSpikes {
 		for _, i := range q.Spikes {
 			run.Y[i] = math.NaN()
