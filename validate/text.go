@@ -128,7 +128,7 @@ func (r *Replay) writeRuns(b *strings.Builder, runs []*RunReplay) {
 // tableRow writes a label and cells set to the right, 80 columns wide at most
 // with five cells.
 func tableRow(b *strings.Builder, label string, cells []string) {
-	const labelWidth, cellWidth = 16, 12
+	const labelWidth, cellWidth = 15, 12
 	line := fmt.Sprintf("%-*s", labelWidth, label)
 	for _, c := range cells {
 		line += fmt.Sprintf(" %*s", cellWidth, c)

@@ -23,9 +23,9 @@ func newReport(c *console) *cobra.Command {
 		Use:   "report FILE... -o PAGE",
 		Short: "One self-contained page from card, gains, replay, drift, log",
 		Long: `Makes one HTML page, without outside resources, from what the other commands
-wrote: a model card, gains, a replay, a drift, each recognised by its content. Give the
-log as well, and the page shows it with the fit; its columns are found by the
-names in the card.
+wrote: a model card, gains, a replay, a drift, each recognised by its content.
+Give the log as well, and the page shows it with the fit; its columns are found
+by the names in the card.
 ` + exitHelp,
 		Example: `  lagwright report card.json gains.json replay.json bump.csv -o report.html
   lagwright report card.json -o card.html`,
