@@ -101,7 +101,11 @@ func (c *Comparison) WriteText(w io.Writer) error {
 	}
 	b.WriteString("runs that meet, of those judged\n")
 	for k, s := range c.Totals {
-		fmt.Fprintf(&b, "%-36s %12s\n", short("  "+clean(c.Columns[k]), 36), fmt.Sprintf("%d of %d", s.Meeting, s.Judged))
+		meeting := "none judged"
+		if s.Judged > 0 {
+			meeting = fmt.Sprintf("%d of %d", s.Meeting, s.Judged)
+		}
+		fmt.Fprintf(&b, "%-36s %12s\n", short("  "+clean(c.Columns[k]), 36), meeting)
 	}
 	_, err := io.WriteString(w, b.String())
 	return err
