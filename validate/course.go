@@ -23,6 +23,7 @@ type course struct {
 	t, y, u, r []float64 // time s, temperature with short holes bridged, input, setpoint
 	before     float64   // setpoint the controller starts from
 	rest       float64   // level from which the first setpoint move is measured
+	stepped    float64   // size of the step made up for a log without setpoint, 0 when none
 	resumed    bool      // starts after a hole in the run
 
 	scan    float64 // s

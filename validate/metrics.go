@@ -18,11 +18,12 @@ type signal struct {
 
 // A yardstick is how signals are measured.
 type yardstick struct {
-	band     float64 // half-width of the settling band, fraction of the step
-	noise    float64 // sd of the noise that no controller can act on, see noiseBeyondControl
-	apart    float64 // s between noise values that can be taken as independent
-	quantum  float64 // resolution of the temperature
-	response float64 // dead time + sum of lags, s; 0 means: judge to the end of the record
+	band     float64  // half-width of the settling band, fraction of the step
+	noise    float64  // sd of the noise that no controller can act on, see noiseBeyondControl
+	apart    float64  // s between noise values that can be taken as independent
+	quantum  float64  // resolution of the temperature
+	limit    *float64 // settling time asked, s; nil when none is
+	response float64  // dead time + sum of lags, s; 0 means: judge to the end of the record
 }
 
 // figures of one run, added up over its segments. NaN: no such figure;
@@ -39,6 +40,7 @@ type figures struct {
 	allowance float64 // widest noise allowance used, temperature units
 	moves     int     // setpoint moves judged
 	small     int     // setpoint moves too small against the noise to judge
+	cut       int     // setpoint moves whose record ends before it shows whether they settle in time
 	unsettled int     // moves after which the temperature did not settle
 }
 
@@ -79,8 +81,14 @@ func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
 		return mv.to
 	}
 	f.moves++
-	at, rest := settled(s, mv, m.band*math.Abs(mv.size)+allowance, m.response)
-	if math.IsInf(at, 1) {
+	half := m.band*math.Abs(mv.size) + allowance
+	at, rest := settled(s, mv, half, m.response)
+	switch {
+	case !math.IsInf(at, 1):
+	case m.limit != nil && endsTooSoon(s, mv, half, *m.limit):
+		f.cut++
+		at = math.NaN()
+	default:
 		f.unsettled++
 	}
 	f.settling = larger(f.settling, at)
@@ -122,6 +130,26 @@ func settled(s signal, mv move, half, response float64) (at float64, rest int) {
 		return entered - s.t[mv.from], mv.to
 	}
 	return math.Inf(1), mv.to
+}
+
+// endsTooSoon tells whether the record of a move that was not seen to settle
+// leaves open whether it does so within limit: it ends outside the band before
+// the limit has passed, or inside the band, entered in time.
+func endsTooSoon(s signal, mv move, half, limit float64) bool {
+	entered := math.NaN()
+	for i := mv.from; i < mv.to; i++ {
+		switch e := math.Abs(s.y[i] - mv.target); {
+		case e > half:
+			entered = math.NaN()
+		case math.IsNaN(entered) && e <= half:
+			entered = s.t[i]
+		}
+	}
+	start := s.t[mv.from]
+	if math.IsNaN(entered) {
+		return s.t[mv.to-1]-start < limit
+	}
+	return entered-start <= limit
 }
 
 // overshoot returns how far the temperature passes the new setpoint, in

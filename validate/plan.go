@@ -47,6 +47,7 @@ type plan struct {
 	noise  fit.Noise
 	units  units
 	asked  []demand
+	loop   loopCheck
 	traces bool // keep the series of a run
 }
 
@@ -80,6 +81,7 @@ func newPlan(card *fit.Card, gains *tune.Gains, o Options) (*plan, error) {
 	}
 	p.units = units{card.Units.Input, card.Units.Temperature, difference(card.Units.Temperature)}
 	p.asked = demands(o.Requirement, p.units)
+	p.loop = p.checkLoop()
 	p.cardID, err = hash(card)
 	return p, err
 }
@@ -161,7 +163,7 @@ func (p *plan) yardstick(run *data.Run) yardstick {
 	if band == 0 {
 		band = 0.02
 	}
-	m := yardstick{band: band, quantum: run.Quality.Quantum, response: response(p.best)}
+	m := yardstick{band: band, limit: p.options.Requirement.Settling, quantum: run.Quality.Quantum, response: response(p.best)}
 	m.noise = noiseBeyondControl(p.noise, m.response)
 	m.apart = medianInterval(run.T)
 	if p.noise.SD > 0 {

@@ -204,15 +204,15 @@ func (p *plan) conclude(out *RunReplay, e *ensemble) {
 			open = append(open, d.name)
 		}
 	}
-	out.Judged = len(open) < len(p.asked)
-	share, reasons := judge(p.asked, e.figures, p.options.Confidence)
-	out.Reasons = append(out.Reasons, reasons...)
+	out.Judged = len(open) < len(p.asked) || p.loop.fails
+	share, reasons := judge(p.asked, e.figures, p.loop.misses, p.options.Confidence)
+	out.Reasons = append(append(out.Reasons, p.loop.reasons...), reasons...)
 	if len(open) > 0 {
 		out.Reasons = append(out.Reasons, fmt.Sprintf("not judged on this run: %s", list(open)))
 	}
 	if out.Judged || len(p.asked) == 0 {
 		out.Probability = share
-		out.Meets = share >= p.assurance()
+		out.Meets = share >= p.assurance() && !p.loop.fails
 	}
 }
 

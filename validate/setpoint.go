@@ -25,7 +25,7 @@ func (c *course) setSetpoint(logged []float64, given, step *float64) error {
 		fill(c.r, *given)
 	case step != nil:
 		fill(c.r, level+*step)
-		c.before, c.rest = level, level
+		c.before, c.rest, c.stepped = level, level, *step
 		return nil
 	default:
 		return ErrNoSetpoint

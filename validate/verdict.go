@@ -3,6 +3,7 @@ package validate
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -18,7 +19,7 @@ type demand struct {
 }
 
 // demands lists what the requirement asks of a run. Ms and damping are
-// properties of loop and plant, not of a run; tune judges them. The limits of
+// properties of loop and plant, not of a run: see loopCheck. The limits of
 // the input are not asked here: the controller of the replay keeps them.
 func demands(r tune.Requirement, units units) []demand {
 	var out []demand
@@ -42,9 +43,13 @@ func (d demand) fails(f figures) bool {
 }
 
 // judge returns the share of plants on which a run meets every demand, and
-// for each demand that fails on some plant a sentence with its numbers.
-func judge(ds []demand, all []figures, level float64) (share float64, reasons []string) {
-	failing := make([]bool, len(all))
+// for each demand that fails on some plant a sentence with its numbers. A
+// plant whose loop misses what is asked of it meets nothing.
+func judge(ds []demand, all []figures, misses []bool, level float64) (share float64, reasons []string) {
+	failing := slices.Clone(misses)
+	for k, f := range all {
+		failing[k] = failing[k] || f.moves == runaway
+	}
 	for _, d := range ds {
 		count := 0
 		for k, f := range all {
