@@ -230,6 +230,12 @@ func (out *outcome) settle(s *study) error {
 	drifts := map[string][]bool{"none": {false}, "linear": {true}, "auto": {true, false}}[o.Drift]
 	one, _ := ident.ParseStructure("fopdt")
 	two, _ := ident.ParseStructure("chain2")
+	bonus := driftBonus
+	for _, r := range s.recs {
+		if loopOf(r.run).State == "closed" {
+			bonus = driftClosed
+		}
+	}
 	best := math.Inf(1)
 	var shapes []shape
 	var weights []float64
@@ -255,7 +261,7 @@ func (out *outcome) settle(s *study) error {
 				score += earlierPenalty
 			}
 			if !dr {
-				score += driftBonus
+				score += bonus
 			}
 			if score < best {
 				best, out.initial, out.drift = score, in, dr
@@ -323,6 +329,11 @@ const (
 	// driftBonus keeps the drift where it is doubtful: leaving out a drift that
 	// is there shifts the gain, keeping one that is not only widens it.
 	driftBonus = 1.5
+	// driftClosed is the same in closed loop, where it is the other way round: the
+	// integral action answers slow noise with slow moves of the input, which a
+	// drift in the model then explains too well (gain covered in 91 % with a
+	// drift, in 95 % without, on closed-loop logs that do not drift).
+	driftClosed = -4
 )
 
 // set puts the linear columns of every record in place.

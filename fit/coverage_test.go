@@ -61,7 +61,7 @@ func families() []family {
 			f.structure, f.lags, f.dead, f.ar, f.white = "fopdt", []float64{2.1}, 0.037, 0.5, 0
 		}),
 		with("no dead time", func(f *family) { f.dead, f.ar, f.white, f.boundary = 0, 0.5, 0, true }),
-		with("closed loop", func(f *family) { f.closed, f.ar, f.white = true, 0.8, 0 }),
+		with("closed loop", func(f *family) { f.closed, f.ar, f.white, f.dead = true, 0.8, 0, 0.4 }),
 		with("short record", func(f *family) { f.n, f.bumps, f.ar, f.white = 160, []float64{5}, 0.5, 0 }),
 		with("one bump", func(f *family) { f.bumps, f.ar, f.white = []float64{10}, 0.8, 0 }),
 		with("fopdt ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "fopdt", []float64{2.1}, 0.8, 0 }),
@@ -131,7 +131,8 @@ func (f family) noise(t []float64, r *rand.Rand) []float64 {
 	return out
 }
 
-// close runs the log under PI control with setpoint steps instead of bumps.
+// close runs the log under PI control with setpoint steps instead of bumps; the
+// dead time is a whole number of rows.
 func (f family) close(run *data.Run, st ident.Structure, noise []float64) {
 	n := len(run.T)
 	run.Y = make([]float64, n)
