@@ -46,14 +46,16 @@ func gainsAnswer(b *Bundle) answer {
 		Reasons:    g.Reasons, Cures: g.Cures,
 	}
 	a.Headline, a.Verdict = gainsVerdict(g, b.Replay)
-	a.Sure = append(a.Sure, "Asked: "+requirementWords(g.Requirement, g.Units)+".", sharePhrase(g))
+	if g.Judged() {
+		a.Sure = append(a.Sure, "Asked: "+requirementWords(g.Requirement, g.Units)+".", sharePhrase(g))
+	}
 	if b.Replay != nil {
 		a.Sure = append(a.Sure, replayPhrase(b.Replay))
 	}
 	if m := b.model(); m != nil {
 		a.Sure = append(a.Sure, heaterPhrase(b.Card, m))
 	}
-	if g.Meets {
+	if g.Meets || !g.Judged() {
 		a.Sure = append(a.Sure, "Begin with the output limited and a small setpoint step. The cautions below come first.")
 	} else {
 		a.Sure = append(a.Sure, "Enter them only if what fails can be lived with. The cautions below come first.")
@@ -64,6 +66,8 @@ func gainsAnswer(b *Bundle) answer {
 // gainsVerdict weighs the plausible plants first, then the past runs.
 func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *item) {
 	switch {
+	case !g.Judged():
+		return "Gains as they were written down", nil
 	case !g.Meets && g.Rule == "synthesis":
 		return "No gains meet the requirement; these come nearest", &item{"bad", "They do not meet the requirement."}
 	case !g.Meets:

@@ -21,7 +21,7 @@ func checked(c *fit.CheckReport) []item {
 			sign = "bad"
 		}
 		text := parameterName(v.Parameter) + ": " + v.Verdict
-		if v.Bound != nil {
+		if v.Bound != nil && !strings.HasPrefix(v.Reason, "known to") {
 			text += fmt.Sprintf(", known to ±%s %%", format.Short(*v.Bound, 2))
 		}
 		if v.Reason != "" {

@@ -12,6 +12,7 @@ import (
 	"fmt"
 	"html/template"
 	"io"
+	"strings"
 
 	"gonum.org/v1/plot/vg"
 
@@ -30,8 +31,11 @@ var pageJS string
 // maxText is the longest text from a file, in runes, that a page shows whole.
 const maxText = 400
 
+// together keeps a number and its sign on one line.
+var together = strings.NewReplacer(" %", "\u00a0%", " °C", "\u00a0°C", "± ", "±\u00a0", " ±", "\u00a0±")
+
 var pageTemplate = template.Must(template.New("page").Funcs(template.FuncMap{
-	"clean": func(s string) string { return format.Clip(format.Text(s), maxText) },
+	"clean": func(s string) string { return together.Replace(format.Clip(format.Text(s), maxText)) },
 }).Parse(pageHTML))
 
 // view is a page before it is written.

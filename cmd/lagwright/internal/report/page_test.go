@@ -134,13 +134,18 @@ func TestAnswerFollowsVerdict(t *testing.T) {
 		{"meets, not all runs", func(b *Bundle) {}, "do not hold on every past run", "bad"},
 		{"meets, back-test fails", func(b *Bundle) { b.Replay.Runs[1].BackTest.Reproduced = false }, "not proven on past runs", "bad"},
 		{"nearest miss", func(b *Bundle) { b.Gains.Meets = false }, "No gains meet the requirement; these come nearest", "bad"},
+		{"never judged", func(b *Bundle) { b.Gains.Nominal, b.Gains.Worst, b.Gains.Meets = nil, nil, false }, "as they were written down", ""},
 		{"a rule that fails", func(b *Bundle) { b.Gains.Meets, b.Gains.Rule = false, "simc" }, "These gains do not meet the requirement", "bad"},
 	} {
 		b := sampleBundle()
 		c.edit(&b)
 		a := answerOf(&b)
-		if !strings.Contains(a.Headline, c.want) || a.Verdict.Sign != c.sign {
-			t.Errorf("%s: %q, %q", c.name, a.Headline, a.Verdict)
+		sign := ""
+		if a.Verdict != nil {
+			sign = a.Verdict.Sign
+		}
+		if !strings.Contains(a.Headline, c.want) || sign != c.sign {
+			t.Errorf("%s: %q, %q", c.name, a.Headline, sign)
 		}
 	}
 }

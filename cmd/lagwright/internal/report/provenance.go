@@ -43,7 +43,7 @@ func sourceTable(b *Bundle) *table {
 			t.More = len(all) - longestList
 			break
 		}
-		t.Rows = append(t.Rows, []cell{{Text: s.file, Small: s.sha, Kind: "code", Header: true}, text(s.use), num(s.rows), num(s.kept), text(s.start), text(s.columns)})
+		t.Rows = append(t.Rows, []cell{{Text: s.file, Small: s.sha, Kind: "code", Header: true}, text(s.use), num(s.rows), num(s.kept), text(strings.Replace(s.start, "T", " ", 1)), text(s.columns)})
 	}
 	return t
 }

@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"sort"
+	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/validate"
@@ -47,6 +48,10 @@ func backTests(r *validate.Replay) []item {
 		if t == nil {
 			continue
 		}
+		if t.Reproduced && len(t.Differs) > 0 {
+			out = append(out, item{"warn", fmt.Sprintf("%s: nothing speaks against it; %s.", runName(run), strings.Join(t.Differs, "; "))})
+			continue
+		}
 		inside := fmt.Sprintf("%s of the samples lie inside the %s band", format.Percent(t.ShareInside), format.Percent(t.Stated))
 		if t.Reproduced {
 			out = append(out, item{"good", fmt.Sprintf("%s: yes, %s.", runName(run), inside)})
@@ -84,7 +89,11 @@ func replayTable(r *validate.Replay) *table {
 		} {
 			row = append(row, beforeAfter(run, f.pick, f.unit))
 		}
-		t.Rows = append(t.Rows, append(row, num(format.Percent(run.Probability)), judged(run)))
+		share := "-"
+		if run.Judged {
+			share = format.Percent(run.Probability)
+		}
+		t.Rows = append(t.Rows, append(row, num(share), judged(run)))
 	}
 	return t
 }

@@ -5,6 +5,7 @@ import (
 	"slices"
 
 	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/fit"
 )
 
 // watch answers: what should I watch for? Warnings of the model, what fails
@@ -76,16 +77,12 @@ func cautions(b *Bundle) *section {
 	}
 	var items []item
 	var seen []string
-	for _, t := range append(texts, standing...) {
-		if !slices.Contains(seen, t) {
+	for _, t := range texts {
+		if t != fit.CautionCodes && !slices.Contains(seen, t) {
 			seen = append(seen, t)
 			items = append(items, item{"", t})
 		}
 	}
+	items = append(items, item{"", fit.CautionCodes}) // the caution no page goes without
 	return &section{ID: "cautions", Title: "Cautions", Blocks: []block{{List: &list{Items: items}}}}
-}
-
-// standing is the caution no page goes without.
-var standing = []string{
-	"Local codes, the makers' instructions and licensed practice come first.",
 }

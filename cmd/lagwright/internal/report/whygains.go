@@ -95,8 +95,11 @@ func LoopFigures(l *Loop, g *tune.Gains) []*Figure {
 }
 
 func ruleWords(g *tune.Gains) string {
+	if !g.Judged() {
+		return "They were written down; no requirement has been judged for them."
+	}
 	if g.Rule == "synthesis" || g.Rule == "" {
-		return "Of all gains that keep the requirement on the plausible plants, these reject a load best (smallest IAE)."
+		return fmt.Sprintf("Of all %s gains that keep the requirement on the plausible plants, these reject a load best (smallest IAE).", strings.ToUpper(g.Controller))
 	}
 	return "They come from the rule " + g.Rule + "; the plausible plants say how well it does here."
 }
@@ -157,7 +160,7 @@ const mostCandidates = 12
 // and those that come nearest.
 func candidateTable(g *tune.Gains) *table {
 	t := &table{
-		Caption: "Controllers tried, the best first; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
+		Caption: "Controllers tried: the chosen one, those that meet the requirement, those that come near it; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
 		Head:    []string{"Rule", "Kc", "Ti", "Td", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets"},
 	}
 	best := slices.Clone(g.Candidates)
