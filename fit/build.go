@@ -231,11 +231,20 @@ func (out *outcome) deadTime(b *bounded) estimate {
 	if out.opt.BumpInstant != "unknown" || e.fixed {
 		return e
 	}
-	h := out.recs[0].step
+	h := out.longestStep()
 	e.value += h / 2
 	e.high += h
 	e.se = math.Sqrt(e.se*e.se + h*h/12)
 	return e
+}
+
+// longestStep is the longest sampling interval of the logs, s.
+func (out *outcome) longestStep() float64 {
+	h := 0.0
+	for _, r := range out.recs {
+		h = math.Max(h, r.step)
+	}
+	return h
 }
 
 // covariance is the Wald covariance of the free parameters among gain, lags
@@ -306,7 +315,10 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 		}
 		w := append([]float64(nil), left...)
 		whitenTimes(w, root.t, r.shape)
-		whitened = append(whitened, w[:min(len(w), noiseRows)]...)
+		scale := 1 / math.Sqrt(math.Max(r.sigma2, 1e-300)) // logs of different noise on one scale
+		for _, v := range w[:min(len(w), noiseRows)] {
+			whitened = append(whitened, v*scale)
+		}
 		if len(root.t) > testRows {
 			m := (len(root.t) + testRows - 1) / testRows
 			pIn = math.Min(pIn, finite(crossCorrelationP(sums(w, m), sums(inputChanges(root), m), max(4, crossLags(root, b)/m)), 1))
@@ -443,7 +455,7 @@ func (out *outcome) writePlants(c *Card) {
 		}
 		row[most+1] = d.eta[n]
 		if out.opt.BumpInstant == "unknown" {
-			row[most+1] += r.Float64() * out.recs[0].step
+			row[most+1] += r.Float64() * out.longestStep()
 		}
 		c.Plants.Values = append(c.Plants.Values, row)
 	}

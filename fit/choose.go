@@ -39,6 +39,9 @@ func prepare(runs []*data.Run, law ident.Law) ([]*record, error) {
 	if len(runs) == 0 {
 		return nil, fmt.Errorf("%w: no log given", ErrTooShort)
 	}
+	if err := alikeRuns(runs); err != nil {
+		return nil, err
+	}
 	var recs []*record
 	for _, run := range runs {
 		r, err := newRecord(run, law)
@@ -50,6 +53,25 @@ func prepare(runs []*data.Run, law ident.Law) ([]*record, error) {
 	return recs, nil
 }
 
+// alikeRuns refuses runs that cannot share a plant: other units, or the same
+// rows twice.
+func alikeRuns(runs []*data.Run) error {
+	for i, a := range runs {
+		for _, b := range runs[:i] {
+			if a.Units != b.Units {
+				return fmt.Errorf("%w: %s is in %s and %s, %s in %s and %s; bring them to the same units with --input-unit, --temp-unit",
+					ErrUnlike, b.Source.File, b.Units.Input, b.Units.Temperature, a.Source.File, a.Units.Input, a.Units.Temperature)
+			}
+			if a.Start.Equal(b.Start) && slices.Equal(a.T, b.T) && slices.EqualFunc(a.Y, b.Y, sameReading) {
+				return fmt.Errorf("%w: %s and %s hold the same rows; give each log once", ErrUnlike, b.Source.File, a.Source.File)
+			}
+		}
+	}
+	return nil
+}
+
+func sameReading(a, b float64) bool { return a == b || math.IsNaN(a) && math.IsNaN(b) }
+
 // find fits the structures and chooses among them.
 func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	out := &outcome{opt: o, recs: recs}
@@ -57,7 +79,10 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	if err := out.settle(s); err != nil {
 		return nil, err
 	}
-	structures := o.structures()
+	structures, err := o.structures()
+	if err != nil {
+		return nil, err
+	}
 	fits := make([]*fitted, len(structures))
 	studies := make([]*study, len(structures))
 	for i := range studies {
@@ -127,6 +152,7 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 		return nil, err
 	}
 	out.choose()
+	out.widen()
 	for i, m := range out.models {
 		if i == out.selected || s.white && m.rows() <= polishAll {
 			m.refine(s.white)
@@ -346,8 +372,9 @@ func (s *study) set(in initial, drift bool) {
 // choose selects the model and weighs all for the plausible plants.
 //
 // The selected model is the one with fewest parameters among those whose AICc
-// lies within 2 of the least, ties by AICc (the usual reading of differences
-// below 2: Burnham and Anderson 2002, from memory).
+// lies within 2 of the least, ties by order (the usual reading of differences
+// below 2: Burnham and Anderson 2002, from memory). An integrator is not
+// selected while a chain is that near: its gain is another quantity.
 func (out *outcome) choose() {
 	low := math.Inf(1)
 	for _, m := range out.models {
@@ -355,11 +382,11 @@ func (out *outcome) choose() {
 	}
 	best := -1
 	for i, m := range out.models {
-		if m.aicc > low+2 {
+		if m.aicc > low+2 || m.st.Integrating() && out.chainWithin(low+2) {
 			continue
 		}
 		if best < 0 || m.params < out.models[best].params ||
-			(m.params == out.models[best].params && m.aicc < out.models[best].aicc) {
+			(m.params == out.models[best].params && m.st.Order() < out.models[best].st.Order()) {
 			best = i
 		}
 	}
@@ -381,6 +408,39 @@ func (out *outcome) choose() {
 	}
 	for i := range out.weights {
 		out.weights[i] /= total
+	}
+}
+
+// chainWithin reports whether a chain has an AICc up to limit.
+func (out *outcome) chainWithin(limit float64) bool {
+	for _, m := range out.models {
+		if !m.st.Integrating() && m.aicc <= limit {
+			return true
+		}
+	}
+	return false
+}
+
+// widen extends the selected model's interval of the gain over the intervals
+// of every other chain that the log does not clearly reject (AICc within 4 of
+// the least): which structure is right is not known either, and the steady gain
+// means the same in all of them. It is open where one of them is.
+func (out *outcome) widen() {
+	sel := out.models[out.selected]
+	if sel.st.Integrating() || sel.est[0].fixed {
+		return
+	}
+	low := sel.aicc
+	for _, m := range out.models {
+		low = math.Min(low, m.aicc)
+	}
+	g := &sel.est[0]
+	for _, m := range out.models {
+		if m == sel || m.st.Integrating() || m.aicc > low+4 || m.est[0].value*g.value < 0 {
+			continue
+		}
+		g.low = math.Min(g.low, m.est[0].low) // NaN, an open end, stays
+		g.high = math.Max(g.high, m.est[0].high)
 	}
 }
 

@@ -82,8 +82,8 @@ func (e *engine) advance(p *point, free []int, x []float64) (next []float64, pre
 	next = append([]float64(nil), p.eta...)
 	for i, j := range free {
 		v := p.eta[j] + x[i]
-		if j < e.ng { // a lag changes by at most a factor in one step
-			v = math.Min(math.Max(v, 0.2*p.eta[j]), 5*p.eta[j])
+		if j < e.ng { // a lag changes by at most a factor in one step, but can leave zero
+			v = math.Min(math.Max(v, 0.2*p.eta[j]), math.Max(5*p.eta[j], e.recs[0].step))
 		}
 		next[j] = math.Min(math.Max(v, e.lower[j]), e.upper[j])
 		predicted += p.grad[j] * (next[j] - p.eta[j])

@@ -92,10 +92,15 @@ func (e *engine) setGroups(groups []int) {
 	for _, g := range groups {
 		e.ng = max(e.ng, g+1)
 	}
-	tmax, dmax := 0.0, 0.0
+	tmax, dmax, limit := 0.0, 0.0, math.Inf(1)
 	for _, r := range e.recs {
 		tmax = math.Max(tmax, 20*r.span)
 		dmax = math.Max(dmax, 0.9*(r.t[len(r.t)-1]-r.input.At[0]))
+		if before := r.input.At[0] - r.t[0]; r.rest == earlier && before > 10*r.step {
+			// The change at the first row, of unknown size, must not be put off
+			// until the bump: it would explain all of it.
+			limit = math.Min(limit, 0.9*before)
+		}
 	}
 	n := e.ng + 1
 	e.lower, e.upper, e.held = make([]float64, n), make([]float64, n), make([]bool, n)
@@ -103,7 +108,7 @@ func (e *engine) setGroups(groups []int) {
 		e.upper[i] = tmax
 		e.lower[i] = 1e-6 * e.recs[0].step
 	}
-	e.upper[e.ng] = dmax
+	e.upper[e.ng] = math.Min(dmax, limit)
 }
 
 // lags spreads the fitted lags over the elements of the structure.

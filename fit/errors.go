@@ -9,5 +9,6 @@ var (
 	ErrConstant = errors.New("the temperature never changes")
 	ErrNoBump   = errors.New("no bump in the input")
 	ErrNoAnswer = errors.New("the temperature does not answer the input")
+	ErrUnlike   = errors.New("logs that do not go together")
 	ErrOption   = errors.New("option")
 )

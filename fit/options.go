@@ -84,11 +84,29 @@ func (o Options) withDefaults() (Options, error) {
 	return o, nil
 }
 
-// structures lists the structures to try.
-func (o Options) structures() []ident.Structure {
+// structures lists the structures to try: those that have every lag the user
+// fixes.
+func (o Options) structures() ([]ident.Structure, error) {
+	all := ident.Structures()
 	if o.Structure != "auto" {
-		s, _ := ident.ParseStructure(o.Structure)
-		return []ident.Structure{s}
+		s, err := ident.ParseStructure(o.Structure)
+		if err != nil {
+			return nil, fmt.Errorf("%w: %w", ErrOption, err)
+		}
+		all = []ident.Structure{s}
 	}
-	return ident.Structures()
+	var out []ident.Structure
+	for _, s := range all {
+		fits := true
+		for name := range o.Fix {
+			fits = fits && lagIndex(name) < s.NumLags()
+		}
+		if fits {
+			out = append(out, s)
+		}
+	}
+	if len(out) == 0 {
+		return nil, fmt.Errorf("%w: fix names a lag that %s does not have; leave it out, or take a chain with more lags", ErrOption, o.Structure)
+	}
+	return out, nil
 }

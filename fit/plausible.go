@@ -94,7 +94,7 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 	}
 	var out []draw
 	emit := func(w walker) {
-		k2 := spreads[pickSpread(spreads, rng.Float64())].k2
+		k2 := spreads[pickSpread(spreads, rng.Float64())].gain
 		g := w.p.gain
 		if !e.gainFix {
 			t := distuv.StudentsT{Sigma: 1, Nu: dof, Src: rng}.Rand()
@@ -112,7 +112,7 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 		}
 		return out
 	}
-	const burn, every = 30, 4
+	const burn, every = 60, 5
 	half := walkers / 2
 	for sweep := 0; len(out) < count; sweep++ {
 		for side := range 2 {
@@ -143,9 +143,10 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 	return out
 }
 
-// spread is a member of the noise mixture reduced to one number: how much
-// wider (variance) the posterior is under it than at the shapes in force.
-type spread struct{ weight, k2 float64 }
+// spread is a member of the noise mixture reduced to how much wider (variance)
+// the posterior is under it than at the shapes in force: on the whole, and for
+// the gain, which slow noise hits most.
+type spread struct{ weight, k2, gain float64 }
 
 func (b *bounded) spreads() []spread {
 	ref := b.reference
@@ -162,7 +163,11 @@ func (b *bounded) spreads() []spread {
 		if n > 0 {
 			k2 = math.Exp(logs / float64(n))
 		}
-		out = append(out, spread{m.weight, k2})
+		s := spread{m.weight, k2, k2}
+		if ref[0][0] > 0 {
+			s.gain = math.Max((m.cov[0][0]+m.shift[0]*m.shift[0])/ref[0][0], k2)
+		}
+		out = append(out, s)
 	}
 	return out
 }

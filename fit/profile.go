@@ -46,6 +46,8 @@ func (q *profiler) hold(i int, v float64, from point) point {
 		d := v - start[j]
 		for l := range e.ng {
 			switch {
+			case held[l]:
+				continue
 			case l < j:
 				e.lower[l] = math.Max(e.lower[l], v)
 			case l > j:
@@ -55,11 +57,11 @@ func (q *profiler) hold(i int, v float64, from point) point {
 				start[l] = math.Min(math.Max(start[l], e.lower[l]), e.upper[l])
 			}
 		}
-		if e.ng > 1 {
-			l := 1
-			if j > 0 {
-				l = 0
-			}
+		l := 1
+		if j > 0 {
+			l = 0
+		}
+		if e.ng > 1 && !held[l] {
 			start[l] = math.Min(math.Max(start[l]-d, e.lower[l]), e.upper[l])
 		} else {
 			start[e.ng] = math.Min(math.Max(start[e.ng]-d*0.3, e.lower[e.ng]), e.upper[e.ng])

@@ -192,7 +192,10 @@ func (t *tangent) evaluate(s shape) node {
 		n = len(t.rest)
 		nd.dof = max(len(t.rec.root.t)-p, 1)
 	}
-	nd.s2 = rss / float64(n-p)
+	// A rounded reading is never better than its rounding, Δ²/12 (GUM, rectangular
+	// distribution), however well the steps are met.
+	q := t.rec.run.Quality.Quantum
+	nd.s2 = math.Max(rss/float64(n-p), q*q/12)
 	nd.dev = float64(n-p)*math.Log(rss) + t.logdet + logdet
 	// The parameter block: a in the orthonormal coordinates is lp·lpᵀ, with lp
 	// the trailing block of l; in parameters a = triᵀ·lp·lpᵀ·tri.

@@ -69,7 +69,9 @@ func (out *outcome) warnMisfit(ctx context.Context, runs []*data.Run, b *bounded
 		}
 		add("input-correlation", "", "the misfit follows the input (p = %s)%s: the structure, the input law or the dead time is not right over the whole log; look at the residuals after each bump", figure(p, 2), looks)
 	}
-	fit.upDown(scenes, add)
+	if out.opt.BumpInstant != "unknown" { // each bump then has an instant of its own
+		fit.upDown(scenes, add)
+	}
 	fit.curved(scenes, extent(runs, func(r *data.Run) []float64 { return r.U }), CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
 	if n := len(runs); n > 1 && n <= mostApart {
 		c := &Card{Initial: out.initial.String(), Drift: map[bool]string{false: "none", true: "linear"}[out.drift]}
@@ -92,7 +94,7 @@ func (out *outcome) warnTest(runs []*data.Run, b *bounded, m *Model, add warn) {
 		}
 	}
 	if out.opt.BumpInstant == "unknown" {
-		add("bump-instant", "dead_time", "the instant of the bump inside its sampling interval is not known: the dead time is stated %s wider; log faster, or log the input at the instant it changes", duration(out.recs[0].step))
+		add("bump-instant", "dead_time", "the instant of the bump inside its sampling interval is not known: the dead time is stated %s wider; log faster, or log the input at the instant it changes", duration(out.longestStep()))
 	}
 	for _, run := range runs {
 		if loop := loopOf(run); loop.State == "closed" {
