@@ -11,12 +11,19 @@ import (
 // figure writes v with so many significant digits, without zeros at the end
 // and without an exponent between 0.001 and a million.
 func figure(v float64, digits int) string {
-	s := exactFigure(v, digits)
-	if strings.Contains(s, ".") && !strings.Contains(s, "e") {
+	s, power, _ := strings.Cut(exactFigure(v, digits), "e")
+	if strings.Contains(s, ".") {
 		s = strings.TrimRight(strings.TrimRight(s, "0"), ".")
+	}
+	if power != "" {
+		s += "e" + power
 	}
 	return s
 }
+
+// plusMinus is a relative bound in percent, "±2.3 %"; what is known better than
+// to 0.01 % is not told finer.
+func plusMinus(percent float64) string { return "±" + figure(math.Max(percent, 0.01), 2) + " %" }
 
 // nothing is the size below which a number is rounding, in any unit people use.
 const nothing = 1e-9
@@ -27,11 +34,9 @@ func exactFigure(v float64, digits int) string {
 	switch {
 	case math.IsNaN(v) || math.IsInf(v, 0):
 		return "-"
-	case v < 0 && a < nothing:
+	case a < nothing:
 		return "0"
-	case a != 0 && a < nothing:
-		return "under 1e-9"
-	case a != 0 && (a < 1e-3 || a >= 1e6):
+	case a < 1e-3 || a >= 1e6:
 		return exponent(v, digits-1)
 	}
 	return strconv.FormatFloat(v, 'f', max(digits-1-magnitude(a, digits), 0), 64)

@@ -301,7 +301,7 @@ func (d *design) expect(p *Plan, heat float64) {
 		w.Expected = d.halfWidth(w.Parameter, unit, heat, p.Repeats)
 		if w.Expected > w.Wanted*(1+1e-9) {
 			p.Meets = false
-			p.Reasons = append(p.Reasons, fmt.Sprintf("%s is expected to ±%s %% only, wanted ±%s %%", parameterWords(w.Parameter), figure(w.Expected, 2), figure(w.Wanted, 2)))
+			p.Reasons = append(p.Reasons, fmt.Sprintf("%s is expected to %s only, wanted %s", parameterWords(w.Parameter), plusMinus(w.Expected), plusMinus(w.Wanted)))
 		}
 		p.Expected = append(p.Expected, w)
 	}
@@ -357,7 +357,7 @@ func (p *Plan) WriteText(w io.Writer) error {
 	out.heading("What it is expected to give")
 	rows := [][]string{{"", "expected", "wanted"}}
 	for _, e := range p.Expected {
-		rows = append(rows, []string{parameterWords(e.Parameter), "±" + figure(e.Expected, 2) + " %", "±" + figure(e.Wanted, 2) + " %"})
+		rows = append(rows, []string{parameterWords(e.Parameter), plusMinus(e.Expected), plusMinus(e.Wanted)})
 	}
 	out.table("  ", rows, 1, 2)
 	for _, r := range p.Reasons {

@@ -163,7 +163,8 @@ func TestNumbersInWords(t *testing.T) {
 	}
 	for _, c := range []struct{ got, want string }{
 		{figure(9.996, 3), "10"}, {figure(0.0123456, 3), "0.0123"}, {figure(1235.5, 3), "1236"}, {figure(0, 3), "0"},
-		{figure(2.2e-16, 2), "under 1e-9"}, {figure(-2.2e-16, 2), "0"}, {figure(0.000043, 2), "4.3e-5"},
+		{figure(2.2e-16, 2), "0"}, {figure(-2.2e-16, 2), "0"}, {figure(0.000043, 2), "4.3e-5"}, {figure(1e-6, 3), "1e-6"}, {figure(0, 3), "0"},
+		{plusMinus(2.31), "±2.3 %"}, {plusMinus(1e-9), "±0.01 %"},
 		{duration(0.25), "250 ms"}, {duration(90), "90 s"}, {duration(600), "10 min"}, {duration(7800), "2.17 h"},
 		{sentence("the log ends"), "The log ends."}, {sentence("bump.csv: ends"), "bump.csv: ends."},
 	} {

@@ -91,17 +91,17 @@ func (j *judgement) verdict(name string, value float64, low, high *float64, fixe
 	of := map[string]string{"gain": "", "lags": " of their sum", "dead_time": " of dead time and lags"}[name]
 	switch share := half / whole; {
 	case share <= limits[0]:
-		v.Reason = fmt.Sprintf("known to ±%s %%%s", figure(100*share, 2), of)
+		v.Reason = fmt.Sprintf("known to %s%s", plusMinus(100*share), of)
 		return v
 	case share <= limits[1]:
 		v.Verdict = doubtful
-		v.Reason = fmt.Sprintf("known to ±%s %%%s only: %s", figure(100*share, 2), of, j.why(name))
+		v.Reason = fmt.Sprintf("known to %s%s only: %s", plusMinus(100*share), of, j.why(name))
 	case math.IsInf(half, 1):
 		v.Verdict = not
 		v.Reason = "the log sets no bound: " + j.why(name)
 	default:
 		v.Verdict = not
-		v.Reason = fmt.Sprintf("known to ±%s %%%s only: %s", figure(100*share, 2), of, j.why(name))
+		v.Reason = fmt.Sprintf("known to %s%s only: %s", plusMinus(100*share), of, j.why(name))
 	}
 	v.Cures = j.cures(name, half, limits[0]*whole)
 	return v
