@@ -35,6 +35,8 @@ type family struct {
 	gaps      bool
 	closed    bool // PI control during the log
 	boundary  bool // a parameter sits on the edge of its range
+	auto      bool // structure chosen by the fit: only the gain is held to the truth
+	wide      bool // few effective samples: the width is not held to the bound
 }
 
 func families() []family {
@@ -49,7 +51,7 @@ func families() []family {
 		with("white", func(f *family) {}),
 		with("ar 0.5", func(f *family) { f.ar, f.white = 0.5, 0 }),
 		with("ar 0.8", func(f *family) { f.ar, f.white = 0.8, 0 }),
-		with("ar 0.95", func(f *family) { f.ar, f.white = 0.95, 0 }),
+		with("ar 0.95", func(f *family) { f.ar, f.white, f.wide = 0.95, 0, true }),
 		with("ar 0.9 and white", func(f *family) { f.ar, f.white = 0.9, 0.4 }),
 		with("coarse quantum", func(f *family) { f.ar, f.white, f.sd, f.quantum = 0.5, 0.3, 0.1, 0.25 }),
 		with("jittered", func(f *family) { f.ar, f.white, f.jitter = 0.8, 0, 0.3 }),
@@ -62,9 +64,14 @@ func families() []family {
 		}),
 		with("no dead time", func(f *family) { f.dead, f.ar, f.white, f.boundary = 0, 0.5, 0, true }),
 		with("closed loop", func(f *family) { f.closed, f.ar, f.white, f.dead = true, 0.8, 0, 0.4 }),
-		with("short record", func(f *family) { f.n, f.bumps, f.ar, f.white = 160, []float64{5}, 0.5, 0 }),
+		with("short record", func(f *family) { f.n, f.bumps, f.ar, f.white, f.wide = 160, []float64{5}, 0.5, 0, true }),
 		with("one bump", func(f *family) { f.bumps, f.ar, f.white = []float64{10}, 0.8, 0 }),
 		with("fopdt ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "fopdt", []float64{2.1}, 0.8, 0 }),
+		with("auto, chain2", func(f *family) { f.ar, f.white, f.auto = 0.8, 0, true }),
+		with("auto, short", func(f *family) { f.n, f.bumps, f.ar, f.white, f.auto = 160, []float64{5}, 0.5, 0, true }),
+		with("auto, one bump, ar 0.95", func(f *family) {
+			f.n, f.bumps, f.ar, f.white, f.auto = 400, []float64{10}, 0.95, 0, true
+		}),
 		with("equal3 ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "equal3", []float64{0.9}, 0.8, 0 }),
 	}
 }
@@ -198,6 +205,9 @@ type coverage struct {
 func cover(t testing.TB, f family, logs int, o Options) coverage {
 	var c coverage
 	o.Structure, o.Plants, o.Workers = f.structure, -1, 1
+	if f.auto {
+		o.Structure = "auto"
+	}
 	o, err := o.withDefaults()
 	if err != nil {
 		t.Fatal(err)
@@ -219,7 +229,11 @@ func cover(t testing.TB, f family, logs int, o Options) coverage {
 					continue
 				}
 				mu.Lock()
-				c.count(f, out.models[out.selected].est)
+				est := out.models[out.selected].est
+				if f.auto {
+					est = est[:1]
+				}
+				c.count(f, est)
 				mu.Unlock()
 			}
 		})
@@ -281,14 +295,15 @@ func (f family) bound(t testing.TB) []float64 {
 }
 
 // TestCoverage holds the stated 95 % intervals of gain, lags and dead time
-// against the truth over many invented logs. Without LAGWRIGHT_LONG it takes
-// three families and few logs, and only a gross failure shows; the long study
-// asks for 93 to 97 %, up to 98.5 % where a parameter sits on an edge, within
-// three standard deviations of the count.
+// against the truth over many invented logs: 93 to 97 %, from 93 % up where a
+// parameter sits on an edge (to 98.5 %) or the structure is chosen by the fit,
+// within two standard deviations of the count (three in the short study). The median width is held to 1.15
+// of the Cramér-Rao width in the long study. Without LAGWRIGHT_LONG it takes
+// three families and few logs, and only a gross failure shows.
 func TestCoverage(t *testing.T) {
-	logs, long := 60, os.Getenv("LAGWRIGHT_LONG") != ""
+	logs, sds, long := 60, 3.0, os.Getenv("LAGWRIGHT_LONG") != ""
 	if long {
-		logs = 1000
+		logs, sds = 1000, 2
 	}
 	for i, f := range families() {
 		if !long && i != 2 && i != 10 && i != 11 {
@@ -301,16 +316,22 @@ func TestCoverage(t *testing.T) {
 			sort.Float64s(c.width[j])
 			share := float64(c.in[j]) / float64(c.logs)
 			ratio := c.width[j][len(c.width[j])/2] / bound[j]
-			line = append(line, fmt.Sprintf("%5.1f %% (%d, %d) %.2f", 100*share, c.below[j], c.above[j], ratio))
+			line = append(line, fmt.Sprintf("%.1f (%d, %d) %.2f", 100*share, c.below[j], c.above[j], ratio))
 			lo, hi := 0.93, 0.97
-			if f.boundary {
+			switch {
+			case f.auto:
+				hi = 1
+			case f.boundary:
 				hi = 0.985
 			}
-			slack := 3 * math.Sqrt(0.95*0.05/float64(c.logs))
+			slack := sds * math.Sqrt(0.95*0.05/float64(c.logs))
 			if share < lo-slack || share > hi+slack {
 				t.Errorf("%s: parameter %d is covered in %.1f %% of %d logs", f.name, j, 100*share, c.logs)
 			}
+			if long && ratio > 1.15 && !f.boundary && !f.auto && !f.wide {
+				t.Errorf("%s: parameter %d has a median width of %.2f times the bound", f.name, j, ratio)
+			}
 		}
-		t.Logf("%-30s %s", f.name, strings.Join(line, " | "))
+		t.Logf("| %s | %s |", f.name, strings.Join(line, " | "))
 	}
 }
