@@ -13,6 +13,7 @@ import (
 	"html/template"
 	"io"
 	"strings"
+	"sync"
 
 	"gonum.org/v1/plot/vg"
 
@@ -34,9 +35,10 @@ const maxText = 400
 // together keeps a number and its sign on one line.
 var together = strings.NewReplacer(" %", "\u00a0%", " °C", "\u00a0°C", "± ", "±\u00a0", " ±", "\u00a0±")
 
-var pageTemplate = template.Must(template.New("page").Funcs(template.FuncMap{
-	"clean": func(s string) string { return together.Replace(format.Clip(format.Text(s), maxText)) },
-}).Parse(pageHTML))
+var pageTemplate = sync.OnceValue(func() *template.Template {
+	clean := func(s string) string { return together.Replace(format.Clip(format.Text(s), maxText)) }
+	return template.Must(template.New("page").Funcs(template.FuncMap{"clean": clean}).Parse(pageHTML))
+})
 
 // view is a page before it is written.
 type view struct {
@@ -117,7 +119,7 @@ func Page(w io.Writer, b Bundle) error {
 			integrity(style), integrity(pageJS)),
 	}
 	var page bytes.Buffer
-	if err := pageTemplate.Execute(&page, v); err != nil {
+	if err := pageTemplate().Execute(&page, v); err != nil {
 		return fmt.Errorf("make report page: %w", err)
 	}
 	_, err := w.Write(page.Bytes())

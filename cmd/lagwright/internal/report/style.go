@@ -4,11 +4,11 @@ import (
 	"fmt"
 	"image/color"
 	"strings"
+	"sync"
 
 	"gonum.org/v1/plot/font"
+	"gonum.org/v1/plot/font/liberation"
 	"gonum.org/v1/plot/vg"
-
-	_ "gonum.org/v1/plot" // brings the Liberation fonts into font.DefaultCache
 )
 
 // ink is a colour with a role. PNG and PDF draw its light shade; SVG refers
@@ -99,12 +99,16 @@ var (
 	noteLetters    = lettering{11, false, inkLimit}
 )
 
+// fonts are read when the first text is drawn: it takes longer than all else
+// that a command does before it begins.
+var fonts = sync.OnceValue(func() *font.Cache { return font.NewCache(liberation.Collection()) })
+
 func (l lettering) face() font.Face {
 	f := font.Font{Typeface: "Liberation", Variant: "Sans", Size: l.size}
 	if l.bold {
 		f.Weight = 3 // bold, as golang.org/x/image/font numbers it
 	}
-	return font.DefaultCache.Lookup(f, l.size)
+	return fonts().Lookup(f, l.size)
 }
 
 // room is the width to leave for a text. A reader without the fonts measured
