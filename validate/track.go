@@ -182,6 +182,7 @@ func (d *Drift) judge(fitted []estimate, rand uint64) {
 		p := tr.judge(d, tests, newRand(rand, uint64(i)))
 		d.Alarm = d.Alarm || p.Alarm
 		d.Parameters = append(d.Parameters, p)
+		d.Warnings = append(d.Warnings, tr.apart(d)...)
 	}
 	if len(d.Runs) < honestRuns {
 		d.Warnings = append(d.Warnings, fmt.Sprintf("%d runs are too few to show how far runs scatter when nothing changes: the tests believe the intervals of the fits", len(d.Runs)))
