@@ -152,6 +152,12 @@ func (c *Controller) limited(v float64) float64 {
 	v = max(c.low, min(c.high, v))
 	if c.quantum > 0 {
 		v = c.quantum * math.Round(v/c.quantum)
+		switch { // a limit that is no multiple of the resolution is not rounded past
+		case v > c.high:
+			v -= c.quantum
+		case v < c.low:
+			v += c.quantum
+		}
 	}
 	return v
 }

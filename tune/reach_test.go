@@ -85,3 +85,21 @@ func TestOperatingPointOutsideTheLimits(t *testing.T) {
 		})
 	}
 }
+
+// Rounding to the output's resolution does not carry it past a limit.
+func TestResolutionStaysWithinTheLimits(t *testing.T) {
+	ti := 10.0
+	g := &Gains{Form: Ideal, Kc: 1, Ti: &ti, SetpointWeight: 1, Limits: Limits{Min: finite(-11), Max: finite(11), Resolution: finite(3)}}
+	c, err := NewController(g, 1)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, r := range []float64{100, -100} {
+		c.Start(0, 0, 0)
+		for range 5 {
+			if u := c.Next(r, 0); u < -11 || u > 11 || u == 0 {
+				t.Errorf("output %g for an error of %g, limits ±11", u, r)
+			}
+		}
+	}
+}
