@@ -62,8 +62,8 @@ func finite(x float64) *float64 {
 
 // worst gathers the share quantile of every figure over the scenarios, each
 // figure for itself: the high side of what should be small, the low side of
-// what should be large.
-func (e *ensemble) worst(c law, out []outcome, share float64, input float64) *Metrics {
+// what should be large. inputs are the operating inputs by card.
+func (e *ensemble) worst(c law, out []outcome, share float64, inputs []float64) *Metrics {
 	n := len(out)
 	column := func(f func(i int) float64) []float64 {
 		v := make([]float64, n)
@@ -107,9 +107,9 @@ func (e *ensemble) worst(c law, out []outcome, share float64, input float64) *Me
 	m.SteadyOffset = high(func(i int) float64 { return math.Abs(out[i].step.offset) })
 	m.IAE = high(func(i int) float64 { return iae[i] })
 	if s := e.scenarios[0]; s.p.Gain*s.task.step > 0 {
-		m.PeakInput = high(func(i int) float64 { return input + out[i].step.inputHigh })
+		m.PeakInput = high(func(i int) float64 { return inputs[e.scenarios[i].card] + out[i].step.inputHigh })
 	} else {
-		m.PeakInput = low(func(i int) float64 { return input + out[i].step.inputLow })
+		m.PeakInput = low(func(i int) float64 { return inputs[e.scenarios[i].card] + out[i].step.inputLow })
 	}
 	return m
 }

@@ -103,3 +103,17 @@ func TestResolutionStaysWithinTheLimits(t *testing.T) {
 		}
 	}
 }
+
+// With several cards the figures of a step are counted from where each card
+// operates.
+func TestPeakInputOfSeveralCards(t *testing.T) {
+	low, high := card(t, 3, 0.02), card(t, 3, 0.02)
+	high.Range.Input = [2]float64{8, 10}
+	g, err := Tune(context.Background(), []*fit.Card{low, high}, Requirement{}, Options{Controller: "pi", Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if peak := *g.Worst.PeakInput; peak < 9 {
+		t.Errorf("peak input %g, though one card operates at 9", peak)
+	}
+}

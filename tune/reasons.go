@@ -200,11 +200,15 @@ func (t *tuning) cautions(g *Gains) []string {
 	o := t.ops[0]
 	unit := o.card.Units.Temperature
 	if s := g.Requirement.SetpointStep; s != nil && g.Worst != nil && g.Worst.Overshoot != nil {
-		top := o.temperature + *s*(1+math.Max(*g.Worst.Overshoot, 0)/100)
+		from := o.temperature // of the hottest card
+		for _, other := range t.ops {
+			from = max(from, other.temperature)
+		}
+		top := from + *s*(1+math.Max(*g.Worst.Overshoot, 0)/100)
 		if *s > 0 {
 			top = math.Ceil(10*top) / 10 // never said to be cooler than it is
 		}
-		c = append(c, fmt.Sprintf("A setpoint step of %s from about %s may reach %s.", quantity(*s, perKelvin(unit), 2), quantity(o.temperature, unit, 3), quantity(top, unit, 4)))
+		c = append(c, fmt.Sprintf("A setpoint step of %s from about %s may reach %s.", quantity(*s, perKelvin(unit), 2), quantity(from, unit, 3), quantity(top, unit, 4)))
 	}
 	if n := g.Nominal; g.Controller == "p" && n != nil && n.SteadyOffset != nil && g.Requirement.SetpointStep != nil {
 		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",

@@ -268,7 +268,11 @@ func (t *tuning) judged(r row) row {
 	task := newTask(t.requirement, o.input, o.temperature)
 	r.nominal = task.metrics(newScenario(o.nominal, &task, 0), r.law, o.input)
 	r.share = r.on.share(r.out)
-	r.worst = r.on.worst(r.law, r.out, t.options.Assurance, o.input)
+	inputs := make([]float64, len(t.ops))
+	for i, o := range t.ops {
+		inputs[i] = o.input
+	}
+	r.worst = r.on.worst(r.law, r.out, t.options.Assurance, inputs)
 	return r
 }
 
