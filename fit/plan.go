@@ -132,7 +132,7 @@ func (d *design) plan() (*Plan, error) {
 	}
 	p.Size = p.To - p.From
 	if p.Size == 0 {
-		return nil, fmt.Errorf("no bump from %s is possible: %s", quantity(p.From, d.card.Units.Input, 4), p.Reasons[0])
+		return nil, fmt.Errorf("no bump from %s is possible: %s, which may be reached without one; bump from a lower input", quantity(p.From, d.card.Units.Input, 4), p.Reasons[0])
 	}
 	// What size alone cannot give, repeats may.
 	reached := law.Apply(p.To) - law.Apply(p.From)

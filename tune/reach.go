@@ -12,15 +12,16 @@ import (
 
 // admits says whether a requirement can be judged about an operating point.
 func (o operation) admits(q Requirement) error {
+	in, temp := o.card.Units.Input, o.card.Units.Temperature
 	if q.InputMax != nil && o.input > *q.InputMax || q.InputMin != nil && o.input < *q.InputMin {
-		return fmt.Errorf("the operating input %.4g lies outside the input limits: give --operating-input", o.input)
+		return fmt.Errorf("the operating input, %s, lies outside the input limits: give --operating-input", quantity(o.input, in, 4))
 	}
 	if q.TempMax == nil {
 		return nil
 	}
 	if end := o.temperature + max(0, *q.SetpointStep); !(end < *q.TempMax) {
-		return fmt.Errorf("a setpoint step of %.4g from about %.4g, the temperature at an input of %.4g, ends at %.4g, not below the ceiling of %.4g: give a smaller --setpoint-step or a lower --operating-input",
-			*q.SetpointStep, o.temperature, o.input, end, *q.TempMax)
+		return fmt.Errorf("a setpoint step of %s from about %s, the temperature at an input of %s, ends at %s, not below the ceiling of %s: give a smaller --setpoint-step or a lower --operating-input",
+			quantity(*q.SetpointStep, perKelvin(temp), 3), quantity(o.temperature, temp, 4), quantity(o.input, in, 4), quantity(end, temp, 4), quantity(*q.TempMax, temp, 4))
 	}
 	return nil
 }
