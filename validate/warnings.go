@@ -21,13 +21,13 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 	if f.small > 0 {
 		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.difference))
 	} else if f.moves > 0 && f.allowance > 0 {
-		warn("settling is judged into the band widened by %s for noise and resolution, so it is told rather too short", quantity(f.allowance, p.units.difference))
+		warn("settling and overshoot are judged past %s granted to noise and resolution, so both are told rather too small", quantity(f.allowance, p.units.difference))
 	}
 	if f.cut > 0 {
 		warn("the record of %s ends before it shows whether the temperature settles in the time asked: that is not judged", counted(f.cut, "setpoint move"))
 	}
 	if step := courses[0].stepped; step != 0 {
-		warn("the log has no setpoint: a step of %s at its start is judged", quantity(step, p.units.difference))
+		warn("the log has no setpoint in force: a step of %s at its start is replayed", quantity(step, p.units.difference))
 	}
 	if away := p.runaways(e.figures); away > 0 {
 		warn("the loop runs away on %d of %d plausible plants", away, len(e.figures))
