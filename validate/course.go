@@ -1,6 +1,7 @@
 package validate
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"slices"
@@ -47,10 +48,10 @@ func newCourse(run *data.Run, s segment, p *plan) (*course, error) {
 	}
 	bridge(c.t, c.y)
 	var logged []float64
-	if run.Setpoint != nil {
+	if run.Setpoint != nil && !(p.setpointGiven() && p.byHand(run)) {
 		logged = run.Setpoint[s.lo:s.hi]
 	}
-	if err := c.setSetpoint(logged, p.options.Setpoint, p.options.Requirement.SetpointStep); err != nil {
+	if err := c.setSetpoint(logged, p.options.Setpoint, cmp.Or(p.options.SetpointStep, p.options.Requirement.SetpointStep)); err != nil {
 		return nil, err
 	}
 	c.bound = runawayRatio * max(slices.Max(c.y)-slices.Min(c.y), math.Abs(slices.Max(c.y)), math.Abs(slices.Min(c.y)), 1)

@@ -17,13 +17,16 @@ import (
 // Options says how runs are replayed. The zero value replays with the
 // requirement of the gains and the setpoint of the log.
 type Options struct {
-	Workers     int              // goroutines; 0 means one a core; the result does not depend on it
-	Setpoint    *float64         // setpoint of the whole run where the log has none
-	LoggedGains *tune.Gains      // gains in force when the logs were made: replay under them first
-	Requirement tune.Requirement // the zero value means that of the gains; its limits and scan time replace those of the gains
-	Confidence  float64          // level of the bands; 0 means 0.95
-	Traces      bool             // add thinned series, for figures, to the worst 12 runs
-	Tool        string           // written into the result
+	Workers  int      // goroutines; 0 means one a core; the result does not depend on it
+	Setpoint *float64 // setpoint of the whole run where the log has none in force
+	// SetpointStep at the first row of a run without setpoint is judged. Without
+	// it the step of the requirement is replayed, and nothing judged by it.
+	SetpointStep *float64
+	LoggedGains  *tune.Gains      // gains in force when the logs were made: replay under them first
+	Requirement  tune.Requirement // the zero value means that of the gains; its limits and scan time replace those of the gains
+	Confidence   float64          // level of the bands; 0 means 0.95
+	Traces       bool             // add thinned series, for figures, to the worst 12 runs
+	Tool         string           // written into the result
 
 	Journal  string                // ReplayFiles: file that records each log that is done; "" means none
 	Resume   bool                  // ReplayFiles: go on with the journal, and with Previous
@@ -143,9 +146,10 @@ func (p *plan) key() (string, error) {
 		Logged      *tune.Gains
 		Requirement tune.Requirement
 		Setpoint    *float64
+		Step        *float64 `json:",omitempty"`
 		Confidence  float64
 		Tool        string
-	}{p.cardID, p.gains, p.logged, p.options.Requirement, p.options.Setpoint, p.options.Confidence, p.options.Tool})
+	}{p.cardID, p.gains, p.logged, p.options.Requirement, p.options.Setpoint, p.options.SetpointStep, p.options.Confidence, p.options.Tool})
 }
 
 func hash(v any) (string, error) {

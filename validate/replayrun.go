@@ -33,7 +33,7 @@ func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) 
 	if err != nil {
 		return out, err
 	}
-	p.conclude(&out, e)
+	p.conclude(&out, run, e)
 	out.Logged = logged.metrics()
 	out.Warnings = append(append(out.Warnings, warnings...), p.warnings(run, courses, e)...)
 	if p.traces {
@@ -195,8 +195,9 @@ func (e *ensemble) choose(p *plan, courses []*course) error {
 	return nil
 }
 
-// conclude writes metrics with their bands, and the verdict.
-func (p *plan) conclude(out *RunReplay, e *ensemble) {
+// conclude writes metrics with their bands, and the verdict. A run in which no
+// setpoint was followed is judged only if the loop itself is not sound.
+func (p *plan) conclude(out *RunReplay, run *data.Run, e *ensemble) {
 	out.Proposed = bandMetrics(e.figures, p.options.Confidence)
 	open, typical := []string{}, p.typical(e.figures)
 	for _, d := range p.asked {
@@ -204,8 +205,13 @@ func (p *plan) conclude(out *RunReplay, e *ensemble) {
 			open = append(open, d.name)
 		}
 	}
-	out.Judged = len(open) < len(p.asked) || p.loop.fails
-	share, reasons := judge(p.asked, e.figures, p.loop.misses, p.options.Confidence)
+	asked, unfollowed := p.asked, p.unfollowed(run)
+	if unfollowed != "" && len(asked) > 0 {
+		asked, open = nil, nil
+		out.Reasons = append(out.Reasons, "not judged: "+unfollowed)
+	}
+	out.Judged = len(open) < len(asked) || p.loop.fails
+	share, reasons := judge(asked, e.figures, p.loop.misses, p.options.Confidence)
 	out.Reasons = append(append(out.Reasons, p.loop.reasons...), reasons...)
 	if len(open) > 0 {
 		out.Reasons = append(out.Reasons, fmt.Sprintf("not judged on this run: %s", list(open)))

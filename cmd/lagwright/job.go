@@ -75,14 +75,15 @@ func (c *console) work(ctx context.Context, f *jobFlags, bump, past []*data.Run,
 	progress, clear := c.progress("replaying")
 	defer clear()
 	j.replay, err = validate.ReplayRuns(ctx, card, past, j.gains, validate.Options{
-		Workers:     c.workers,
-		Setpoint:    f.setpoint,
-		LoggedGains: logged,
-		Requirement: replayRequirement(j.gains.Requirement, card),
-		Confidence:  f.fit.options.Confidence,
-		Traces:      true,
-		Tool:        tool(),
-		Progress:    progress,
+		Workers:      c.workers,
+		Setpoint:     f.setpoint,
+		SetpointStep: f.tune.requirement.requirement.SetpointStep,
+		LoggedGains:  logged,
+		Requirement:  replayRequirement(j.gains.Requirement, card),
+		Confidence:   f.fit.options.Confidence,
+		Traces:       true,
+		Tool:         tool(),
+		Progress:     progress,
 	})
 	if err != nil {
 		return nil, inputError{err}
@@ -121,7 +122,7 @@ func (j *job) check(ctx context.Context, o fit.Options) error {
 }
 
 // replayRequirement gives a log without setpoint, such as a bump test in
-// manual, a step to be judged by: half the range of temperature in which the
+// manual, a step to be shown by: half the range of temperature in which the
 // heater was measured.
 func replayRequirement(r tune.Requirement, card *fit.Card) tune.Requirement {
 	if r.SetpointStep == nil {

@@ -8,6 +8,7 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"reflect"
 	"strings"
 
 	"github.com/spf13/cobra"
@@ -164,6 +165,7 @@ func (o *validateOptions) check(c *console) error {
 func (o *validateOptions) with(c *console, gains *tune.Gains) (validate.Options, error) {
 	v := o.options
 	v.Workers, v.Tool = c.workers, tool()
+	v.SetpointStep = o.requirement.requirement.SetpointStep
 	v.Requirement = o.requirement.over(gains.Requirement)
 	v.Traces = o.plot.path != ""
 	if o.loggedGains == "" {
@@ -246,13 +248,17 @@ func worstRun(r *validate.Replay) *validate.RunReplay {
 	return worst
 }
 
-// replayVerdict is nil where every judged run meets the requirement.
+// replayVerdict is nil where every judged run meets the requirement; where none
+// could be judged, where the gains were tuned to it and meet it.
 func replayVerdict(r *validate.Replay) error {
 	s := r.Summary
 	if s.Meets {
 		return nil
 	}
 	worst := worstRun(r)
+	if worst == nil && r.Gains.Meets && reflect.DeepEqual(r.Gains.Requirement, r.Requirement) {
+		return nil
+	}
 	if worst == nil {
 		return answerNof("no run shows anything that the requirement asks for; replay a run with a setpoint change")
 	}
