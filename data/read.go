@@ -49,6 +49,9 @@ func readTables(ctx context.Context, s *source, o *Options) ([]*table, *reading,
 	if len(s.head) == 0 {
 		return nil, nil, fmt.Errorf("%s: %w", s.path, errEmpty)
 	}
+	if use := ownFile(s.head); use != "" {
+		return nil, nil, fmt.Errorf("%s: %s", s.path, use)
+	}
 	if bytes.HasPrefix(s.head, []byte("PAR1")) {
 		return readParquet(ctx, s, o)
 	}

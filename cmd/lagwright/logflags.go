@@ -3,6 +3,7 @@ package main
 import (
 	"cmp"
 	"context"
+	"strings"
 
 	"github.com/spf13/cobra"
 
@@ -28,14 +29,16 @@ func (l *logFlags) add(cmd *cobra.Command) {
 	fs.StringVar(&o.ModeCol, "mode-col", "", "`NAME` of the column that says auto or manual")
 	fs.StringVar(&o.AirflowCol, "airflow-col", "", "`NAME` of the airflow")
 	fs.StringVar(&o.InletCol, "inlet-col", "", "`NAME` of the inlet temperature")
+	fs.StringVar(&o.ColdCol, "cold-col", "", "`NAME` of the cold junction's temperature (thermocouple logged in mV)")
 	fs.StringVar(&o.RunCol, "run-col", "", "`NAME` of the column that tells several runs in a file apart")
 	fs.BoolVar(&o.Long, "long", false, "rows are time, tag, value")
 	choiceFlag(cmd, &o.InputUnit, "input-unit", "", "unit of the input, where the file is silent or wrong", "V", "%", "mA")
-	choiceFlag(cmd, &o.TempUnit, "temp-unit", "", "unit of the temperature, where the file is silent or wrong", "C", "F", "K")
+	choiceFlag(cmd, &o.TempUnit, "temp-unit", "", "unit of the temperature, where the file is silent or wrong", "C", "F", "K", "mV")
+	choiceFlagFunc(cmd, &o.Thermocouple, "thermocouple", "TYPE", "", "type of a thermocouple logged in mV: B E J K N R S T", strings.Split("BEJKNRST", ""))
 	l.addSpans(cmd)
 	choiceFlag(cmd, &l.inputLaw, "input-law", "linear", "power: the rise follows the input squared (RMS volts on a resistance)", "linear", "power")
 	valueFlag(fs, &o.Cycle, "cycle", "DURATION", "", "cycle of a drive that switches on and off: its mean over a cycle is the input", duration)
-	fs.StringVar(&o.TimeFormat, "time-format", "", "`LAYOUT` of the clock, such as 02/01/2006 15:04:05")
+	fs.StringVar(&o.TimeFormat, "time-format", "", "`LAYOUT` of the clock, such as 'dd/MM/yyyy HH:mm:ss'")
 	fs.StringVar(&o.From, "from", "", "keep the log from this `TIME`: clock time or seconds")
 	fs.StringVar(&o.To, "to", "", "keep the log up to this `TIME`: clock time or seconds")
 	fs.BoolVar(&o.RemoveSpikes, "remove-spikes", false, "take isolated spikes of temperature out instead of only flagging them")
