@@ -157,6 +157,9 @@ func Check(ctx context.Context, run *data.Run, o Options) (*CheckReport, error) 
 	m, _ := card.Model(card.Selected)
 	r.Noise = &m.Noise
 	r.Quick = &QuickFit{Structure: m.Structure, Parameters: m.Parameters, Derived: card.Derived, FitPercent: m.FitPercent}
+	if m.unbounded(part) == atLimit {
+		r.Quick.Parameters, r.Quick.Derived = withoutFalseBounds(m.Parameters, card.Derived)
+	}
 	r.Verdict, err = judge(card, part, r.Loop)
 	return r, err
 }

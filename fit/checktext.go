@@ -177,13 +177,12 @@ func checkCautions(run *data.Run, r *CheckReport, c *Card) []string {
 	if high := r.Range.Temperature[1]; r.Rows > 0 {
 		s := fmt.Sprintf("This log went up to %s", quantity(high, r.Units.Temperature, 4))
 		if c != nil {
-			if plant, err := c.Plant(); err == nil && !plant.Structure.Integrating() {
+			m, ok := c.Model(c.Selected)
+			if plant, err := c.Plant(); err == nil && ok && !plant.Structure.Integrating() && m.unbounded(run) == closedEnds {
 				rise := plant.Gain * (c.Law().Apply(run.U[len(run.U)-1]) - c.Law().Apply(run.U[0]))
-				if m, ok := c.Model(c.Selected); ok {
-					for _, q := range m.Parameters {
-						if end := q.Value + rise; q.Name == "baseline" && end > high+0.02*math.Abs(rise) {
-							s += fmt.Sprintf("; at the last input it would settle near %s", quantity(end, r.Units.Temperature, 3))
-						}
+				for _, q := range m.Parameters {
+					if end := q.Value + rise; q.Name == "baseline" && end > high+0.02*math.Abs(rise) {
+						s += fmt.Sprintf("; at the last input it would settle near %s", quantity(end, r.Units.Temperature, 3))
 					}
 				}
 			}

@@ -77,6 +77,14 @@ func write(v float64, low, high *float64, fixed bool) written {
 		return written{figure(v, 6), "", "known, not fitted"}
 	case low == nil && high == nil:
 		return written{figure(v, 3), "", "no bound"}
+	case low == nil && *high-v < few(v), high == nil && v-*low < few(v):
+		w := written{figure(v, 3), "", ""}
+		if low == nil {
+			w.interval = "at most " + figure(*high, 3)
+		} else {
+			w.interval = "at least " + figure(*low, 3)
+		}
+		return w
 	case low == nil:
 		f := decimal(*high - v)
 		return written{f(v), "", "at most " + f(*high)}
@@ -98,6 +106,9 @@ func write(v float64, low, high *float64, fixed bool) written {
 	}
 	return w
 }
+
+// few is a distance below which a one-sided bound cannot be told from the value.
+func few(v float64) float64 { return 1e-3 * math.Abs(v) }
 
 // decimal returns a format with the decimals that give the width two
 // significant digits; very small numbers get an exponent.

@@ -24,6 +24,9 @@ const (
 	not      = "not from this log"
 )
 
+// known is the reason of a verdict on a parameter that was given.
+const known = "known, not fitted"
+
 // wanted is the half-width, as a share, up to which a parameter is good, and up
 // to which it is doubtful: of the gain, of the sum of lags, and for the dead
 // time of dead time and lags together, which is the delay that a controller
@@ -40,7 +43,7 @@ func judge(c *Card, run *data.Run, loop Loop) ([]Verdict, error) {
 	j := &judgement{card: c, model: m, plant: plant, run: run, loop: loop, bumps: ident.FindBumps(run.T, run.U, run.Y)}
 	j.now = j.experiment(0, 1)
 	j.reached = j.now.precision(plant, m.Noise, nil)
-	residence := plant.DeadTime + total(plant.Elements())
+	j.open = m.unbounded(run)
 	var out []Verdict
 	for _, q := range m.Parameters {
 		switch q.Name {
@@ -51,7 +54,7 @@ func judge(c *Card, run *data.Run, loop Loop) ([]Verdict, error) {
 			if low == nil {
 				low = new(float64) // a dead time of zero is the end of the interval
 			}
-			out = append(out, j.verdict("dead_time", q.Value, low, q.High, q.Fixed, residence))
+			out = append(out, j.verdict("dead_time", q.Value, low, q.High, q.Fixed, j.delay()))
 		}
 	}
 	for _, d := range c.Derived {
@@ -60,6 +63,7 @@ func judge(c *Card, run *data.Run, loop Loop) ([]Verdict, error) {
 			out = append(out[:1], append([]Verdict{v}, out[1:]...)...)
 		}
 	}
+	j.cap(out)
 	return out, nil
 }
 
@@ -71,6 +75,7 @@ type judgement struct {
 	run     *data.Run
 	loop    Loop
 	bumps   []ident.Bump
+	open    unbounded
 	now     experiment
 	reached precision
 }
@@ -78,7 +83,7 @@ type judgement struct {
 func (j *judgement) verdict(name string, value float64, low, high *float64, fixed bool, whole float64) Verdict {
 	v := Verdict{Parameter: name, Verdict: good, Cures: []string{}}
 	if fixed {
-		v.Reason = "known, not fitted"
+		v.Reason = known
 		return v
 	}
 	half := math.Inf(1)
@@ -87,8 +92,14 @@ func (j *judgement) verdict(name string, value float64, low, high *float64, fixe
 		percent := 100 * half / whole
 		v.Bound = &percent
 	}
+	if name != "dead_time" && j.open != closedEnds {
+		half, v.Bound = math.Inf(1), nil
+	}
 	limits := wanted[name]
 	of := map[string]string{"gain": "", "lags": " of their sum", "dead_time": " of dead time and lags"}[name]
+	if name == "dead_time" && j.open != closedEnds {
+		of = " of the time the bump was held"
+	}
 	switch share := half / whole; {
 	case share <= limits[0]:
 		v.Reason = fmt.Sprintf("known to %s%s", plusMinus(100*share), of)
@@ -119,6 +130,10 @@ func (j *judgement) why(name string) string {
 	lags := j.plant.Elements()
 	step := medianInterval(j.run.T)
 	switch {
+	case j.open == atLimit && last >= 0:
+		return fmt.Sprintf("the last bump was held %s, and the temperature had not begun to level off", duration(j.bumps[last].Hold))
+	case j.open == atLimit:
+		return "the temperature never levelled off"
 	case len(j.bumps) > 0 && strongest < 10:
 		return fmt.Sprintf("the largest rise is %s times the noise", figure(strongest, 2))
 	case name != "dead_time" && last >= 0 && !j.bumps[last].SettledAfter && j.bumps[last].Hold < 4*total(lags)+j.plant.DeadTime:
@@ -158,6 +173,9 @@ func (j *judgement) cures(name string, half, target float64) []string {
 	out := []string{}
 	if j.loop.State == "closed" {
 		return append(out, j.bumpInManual(name, target))
+	}
+	if j.open == atLimit { // its lags are no ground to foretell another test on
+		return append(out, j.holdUntilLevel())
 	}
 	if x, ok := j.longerHold(would); ok {
 		out = append(out, fmt.Sprintf("hold the last bump %s longer", duration(roundUp(x))))
