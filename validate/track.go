@@ -27,7 +27,8 @@ var ErrFewRuns = errors.New("a history needs at least two fitted runs")
 // and for a slope over the runs. Without a structure in fo it takes the one
 // that most runs choose for themselves (of equals the simpler). Runs are
 // ordered by their clock where all have one, else as given. A run that cannot
-// be fitted is listed in Failed and does not stop the others.
+// be fitted, or whose fit fixes no gain, is listed in Failed and does not stop
+// the others.
 func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions) (*Drift, error) {
 	if o.FalseAlarm == 0 {
 		o.FalseAlarm = 0.05
@@ -58,6 +59,10 @@ func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions
 			d.Failed = append(d.Failed, FailedRun{e.run.title(), e.err.Error()})
 			continue
 		}
+		if why := e.unusable(); why != "" {
+			d.Failed = append(d.Failed, FailedRun{e.run.title(), why})
+			continue
+		}
 		fitted = append(fitted, e)
 	}
 	if len(fitted) < 2 {
@@ -79,6 +84,7 @@ type estimate struct {
 	run        DriftRun
 	start      time.Time
 	selected   string
+	span       float64 // s
 	parameters []fit.Parameter
 	err        error
 }
@@ -122,6 +128,9 @@ func fitRun(ctx context.Context, run *data.Run, fo fit.Options) estimate {
 		run:   DriftRun{File: run.Source.File, Name: run.Source.Name, SHA256: run.Source.SHA256, Start: startText(run.Start)},
 		start: run.Start,
 	}
+	if n := len(run.T); n > 0 {
+		e.span = run.T[n-1] - run.T[0]
+	}
 	card, err := fit.Fit(ctx, []*data.Run{run}, fo)
 	if err != nil {
 		e.err = err
@@ -140,7 +149,7 @@ func commonest(all []estimate) string {
 	votes, size := map[string]int{}, map[string]int{}
 	best := ""
 	for _, e := range all {
-		if e.err != nil {
+		if e.err != nil || e.unusable() != "" {
 			continue
 		}
 		s := e.selected
