@@ -79,7 +79,7 @@ func (c *console) work(ctx context.Context, f *jobFlags, bump, past []*data.Run,
 		Setpoint:     f.setpoint,
 		SetpointStep: f.tune.requirement.requirement.SetpointStep,
 		LoggedGains:  logged,
-		Requirement:  replayRequirement(j.gains.Requirement, card),
+		Requirement:  j.gains.Requirement,
 		Confidence:   f.fit.options.Confidence,
 		Traces:       true,
 		Tool:         tool(),
@@ -119,17 +119,6 @@ func (j *job) check(ctx context.Context, o fit.Options) error {
 		j.checks = append(j.checks, r)
 	}
 	return nil
-}
-
-// replayRequirement gives a log without setpoint, such as a bump test in
-// manual, a step to be shown by: half the range of temperature in which the
-// heater was measured.
-func replayRequirement(r tune.Requirement, card *fit.Card) tune.Requirement {
-	if r.SetpointStep == nil {
-		half := (card.Range.Temperature[1] - card.Range.Temperature[0]) / 2
-		r.SetpointStep = &half
-	}
-	return r
 }
 
 // outputFolder is the folder that a whole job writes; that it can be one is

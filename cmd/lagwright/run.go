@@ -18,8 +18,9 @@ func newRun(c *console) *cobra.Command {
 		Long: `Reads the log of a bump test, fits, tunes and replays it under the new gains,
 and writes a folder named after the log (-o names another) with card.json,
 gains.json, replay.json, report.html and the figures. A log without setpoint is
-replayed with a step of half the range of temperature it shows. A log made in
-manual, or without setpoint, is judged only by --setpoint or --setpoint-step.
+replayed with a step of a quarter of the range of temperature it shows. A log
+made in manual, or without setpoint, is judged only by --setpoint or
+--setpoint-step.
 ` + exitHelp,
 		Example: `  lagwright run bump.csv --settling 60s --overshoot 5% --input-max 10
   lagwright run export.csv --time-col t_s --input-col u --temp-col y -o oven3`,
