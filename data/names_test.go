@@ -42,7 +42,7 @@ func TestRoleOf(t *testing.T) {
 		"u": roleInput, "Heater voltage [V]": roleInput, "Stellgröße": roleInput, "OP": roleInput, "controller output %": roleInput, "Heizspannung": roleInput,
 		"y": roleTemp, "PV": roleTemp, "TC1 (°C)": roleTemp, "outlet temperature": roleTemp, "Austrittstemperatur": roleTemp, "heater outlet (degF)": roleTemp,
 		"SP": roleSetpoint, "Temp setpoint (degC)": roleSetpoint, "Sollwert": roleSetpoint, "Consigne (°C)": roleSetpoint,
-		"inlet temperature (°C)": roleInlet, "Zuluft [°C]": roleInlet, "air flow m3/h": roleAirflow, "Volumenstrom": roleAirflow,
+		"inlet temperature (°C)": roleInlet, "Eintritt [°C]": roleInlet, "air flow m3/h": roleAirflow, "Volumenstrom": roleAirflow,
 		"CJC (°C)": roleCold, "cold junction": roleCold, "mode": roleMode, "Betriebsart": roleMode, "quality": roleStatus,
 		"battery_V": roleOther, "room temperature (°C)": roleOther, "sheath °C": roleOther, "record": roleOther, "heater current (A)": roleOther,
 		"column 3": roleNone, "X7": roleNone,

@@ -69,7 +69,7 @@ var words = [numRoles]vocabulary{
 	roleTemp: {
 		whole: []string{"y", "pv", "temp", "x", "t_out", "tc", "tout"},
 		words: []string{"temperature", "temp", "outlet", "thermocouple", "tc", "pv", "process", "measurement",
-			"temperatur", "lufttemperatur", "austritt", "austrittstemperatur", "istwert", "thermoelement", "messwert", "abluft",
+			"temperatur", "lufttemperatur", "zuluft", "zulufttemperatur", "supply_air", "austritt", "austrittstemperatur", "istwert", "thermoelement", "messwert", "abluft",
 			"température", "soufflage", "mesure", "temperatura", "termopar", "salida_aire", "medida", "misura", "termocoppia",
 			"temperatuur", "thermokoppel", "uitlaat", "meetwaarde", "medição", "pomiar", "temperaturen", "ärvärde", "utlopp"},
 	},
@@ -88,7 +88,7 @@ var words = [numRoles]vocabulary{
 	},
 	roleInlet: {
 		whole: []string{"t_in", "tin"},
-		words: []string{"inlet", "intake", "supply_air", "eintritt", "zuluft", "ansaugung", "eintrittstemperatur", "entrée", "entree", "entrada",
+		words: []string{"inlet", "intake", "eintritt", "ansaugung", "eintrittstemperatur", "entrée", "entree", "entrada",
 			"ingresso", "inlaat", "wlot", "inlopp"},
 	},
 	roleCold: {

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 
 	"lagwright/data"
 )
@@ -63,13 +64,31 @@ func Convert(g *Gains, form string, s Spelling) (*Gains, error) {
 // scale returns what one gain unit is worth in the spelling, with the units
 // of input and temperature there.
 func (s Spelling) scale(u GainUnits) (factor float64, input, temperature string, err error) {
+	if s.InputSpan == nil && s.TempSpan != nil && u.Input == "%" {
+		s.InputSpan = &data.Span{Low: 0, High: 100, Unit: "%"}
+	}
 	if s.InputSpan == nil && s.TempSpan == nil {
+		if s.Band {
+			return 0, "", "", fmt.Errorf("a proportional band is a part of the temperature's span for the whole span of the output: give --temp-span and --input-span")
+		}
 		return 1, orUnit(u.Input, "input"), orUnit(perKelvin(u.Temperature), "K"), nil
 	}
 	if s.InputSpan == nil || s.TempSpan == nil {
 		return 0, "", "", fmt.Errorf("percent gains need both spans: give --input-span and --temp-span")
 	}
+	if unit := s.InputSpan.Unit; unit != "" && u.Input != "" && unit != u.Input {
+		return 0, "", "", fmt.Errorf("the input's span is in %s but the gains are for an input in %s: give the span in %s", unit, u.Input, u.Input)
+	}
 	in, temp := s.InputSpan.High-s.InputSpan.Low, s.TempSpan.High-s.TempSpan.Low
+	switch strings.TrimPrefix(strings.TrimPrefix(s.TempSpan.Unit, "°"), "deg") {
+	case "", "C", "K", u.Temperature:
+	case "F": // a degree Fahrenheit is 5/9 K
+		if u.Temperature == "degC" || u.Temperature == "K" {
+			temp *= 5.0 / 9
+		}
+	default:
+		return 0, "", "", fmt.Errorf("the temperature's span is in %s: give it in C, K or F", s.TempSpan.Unit)
+	}
 	if !(in > 0 && temp > 0) || !isFinite(in) || !isFinite(temp) {
 		return 0, "", "", fmt.Errorf("spans %g..%g and %g..%g: the second number must be the larger", s.InputSpan.Low, s.InputSpan.High, s.TempSpan.Low, s.TempSpan.High)
 	}

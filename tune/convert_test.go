@@ -3,6 +3,7 @@ package tune
 import (
 	"bytes"
 	"errors"
+	"fmt"
 	"math"
 	"math/cmplx"
 	"strings"
@@ -221,4 +222,28 @@ func FuzzReadGains(f *testing.F) {
 			t.Fatalf("what was written cannot be read: %v", err)
 		}
 	})
+}
+
+// A proportional band means nothing without the spans, and spans in other
+// units than the gains would give a wrong one.
+func TestBandNeedsFittingSpans(t *testing.T) {
+	g := &Gains{Controller: "pi", Form: Ideal, Kc: 0.5, Ti: finite(30), Action: "reverse", SetpointWeight: 1, Units: GainUnits{Input: "%", Temperature: "degC"}}
+	volts, celsius := &data.Span{Low: 0, High: 10, Unit: "V"}, &data.Span{Low: 0, High: 200, Unit: "C"}
+	if _, err := Convert(g, Ideal, Spelling{Band: true}); err == nil {
+		t.Error("a band without spans is told")
+	}
+	if _, err := Convert(g, Ideal, Spelling{Band: true, InputSpan: volts, TempSpan: celsius}); err == nil {
+		t.Error("a span in V is taken for gains in %")
+	}
+	percent := func(s *data.Span) string {
+		c, err := Convert(g, Ideal, Spelling{Band: true, TempSpan: s})
+		if err != nil {
+			t.Fatal(err)
+		}
+		return fmt.Sprint(c.Entry)
+	}
+	// The same instrument in Fahrenheit: 0 to 200 °C is 32 to 392 °F.
+	if c, f := percent(celsius), percent(&data.Span{Low: 32, High: 392, Unit: "F"}); c != f {
+		t.Errorf("band of 0..200C %s, of 32..392F %s", c, f)
+	}
 }
