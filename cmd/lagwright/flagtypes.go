@@ -18,7 +18,7 @@ import (
 
 // parsed is a flag whose text goes through a function.
 type parsed struct {
-	kind string // placeholder in the help
+	kind string // the value's name in the help
 	text string
 	set  func(string) error
 }
@@ -58,7 +58,7 @@ func choiceFlag(cmd *cobra.Command, dst *string, name, shown, usage string, word
 	choiceFlagFunc(cmd, dst, name, strings.Join(words, "|"), shown, usage, words)
 }
 
-// choiceFlagFunc is choiceFlag with a placeholder for lists too long to show.
+// choiceFlagFunc is choiceFlag with a name in place of lists too long to show.
 func choiceFlagFunc(cmd *cobra.Command, dst *string, name, kind, shown, usage string, words []string) {
 	*dst = shown
 	valueFlag(cmd.Flags(), dst, name, kind, shown, usage, func(s string) (string, error) {
