@@ -162,26 +162,13 @@ func (b *bounded) quantiles(here member, g int, level float64) (lo, hi float64) 
 		g = 0 // a direction the linearisation cannot tell: use the gain's
 		se = math.Sqrt(here.cov[0][0])
 	}
-	floor := -studentQuantile((1-level)/2, here.dof)
+	floor := tQuantile((1+level)/2, math.Max(here.dof, 1))
 	if len(b.members) == 1 || !(se > 0) {
 		return floor, floor
 	}
 	lo = -mixtureQuantile(b.members, g, (1-level)/2) / se
 	hi = mixtureQuantile(b.members, g, (1+level)/2) / se
 	return math.Min(math.Max(lo, 0.8*floor), 6*floor), math.Min(math.Max(hi, 0.8*floor), 6*floor)
-}
-
-func studentQuantile(p, nu float64) float64 {
-	lo, hi := -200.0, 200.0
-	for range 80 {
-		mid := (lo + hi) / 2
-		if studentCDF(mid, nu) < p {
-			lo = mid
-		} else {
-			hi = mid
-		}
-	}
-	return (lo + hi) / 2
 }
 
 // atBest is the member at one shape per record, variances at their estimates.
@@ -212,23 +199,7 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 	p := f.e.eval(f.p.eta, true)
 	for i, r := range f.e.recs {
 		w := &f.e.work[i]
-		cols := append([][]float64(nil), r.fixed...)
-		switch r.rest {
-		case earlier:
-			cols = append(cols, w.start[0])
-		case free:
-			cols = append(cols, w.start...)
-		}
-		left := make([]float64, len(r.t))
-		for k := range left {
-			left[k] = r.y[k] - p.gain*w.raw[0][k]
-		}
-		beta := weightedSolve(&r.filter, cols, left)
-		for j, c := range cols {
-			for k, v := range c {
-				left[k] -= beta[j] * v
-			}
-		}
+		cols, beta, left := r.solveLinear(w, p.gain)
 		all := append(cols, b.tangentColumns(i)...)
 		var ms []member
 		for _, n := range b.nodes[i] {

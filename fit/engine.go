@@ -285,18 +285,33 @@ func (e *engine) stateDerivatives(r *record, w *workspace, p *point) [][]float64
 // stateCoefficients solves for the coefficients of the initial-state columns
 // (unwhitened) at the point by least squares on what the gain leaves.
 func (e *engine) stateCoefficients(r *record, w *workspace, p *point) []float64 {
-	cols := w.start
-	if r.rest == earlier {
-		cols = w.start[:1]
+	_, beta, _ := r.solveLinear(w, p.gain)
+	return beta[len(r.fixed):]
+}
+
+// solveLinear fits the record's linear columns, the fixed ones first and then
+// those of the initial state, to what the gain's response last simulated leaves:
+// the columns, their coefficients by generalised least squares, and what is
+// then left.
+func (r *record) solveLinear(w *workspace, gain float64) (cols [][]float64, beta, left []float64) {
+	cols = append(cols, r.fixed...)
+	switch r.rest {
+	case earlier:
+		cols = append(cols, w.start[0])
+	case free:
+		cols = append(cols, w.start...)
 	}
-	all := append(append([][]float64(nil), r.fixed...), cols...)
-	m := len(all)
-	rhs := make([]float64, len(r.t))
-	for k := range rhs {
-		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
+	left = make([]float64, len(r.t))
+	for k := range left {
+		left[k] = r.y[k] - gain*w.raw[0][k]
 	}
-	beta := weightedSolve(&r.filter, all, rhs)
-	return beta[m-len(cols):]
+	beta = weightedSolve(&r.filter, cols, left)
+	for j, c := range cols {
+		for k, v := range c {
+			left[k] -= beta[j] * v
+		}
+	}
+	return cols, beta, left
 }
 
 // weightedSolve is the generalised least-squares solution for a few columns,

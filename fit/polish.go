@@ -40,8 +40,8 @@ func (b *bounded) polish() *polished {
 	p := e.eval(b.p.eta, true)
 	at := polished{eta: append([]float64(nil), p.eta...), gain: p.gain}
 	for i, r := range e.recs {
-		w := &e.work[i]
-		at.beta = append(at.beta, b.linearCoefficients(r, w, &p))
+		_, beta, _ := r.solveLinear(&e.work[i], p.gain)
+		at.beta = append(at.beta, beta)
 	}
 	var sum float64
 	gram := b.normal(&at, &sum)
@@ -113,19 +113,6 @@ func (b *bounded) refine(exact bool) {
 			lin[j].high += shift
 		}
 	}
-}
-
-// linearCoefficients solves for the record's linear columns at the point.
-func (b *bounded) linearCoefficients(r *record, w *workspace, p *point) []float64 {
-	cols := append([][]float64(nil), r.fixed...)
-	if r.rest == earlier {
-		cols = append(cols, w.start[0])
-	}
-	rhs := make([]float64, len(r.t))
-	for k := range rhs {
-		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
-	}
-	return weightedSolve(&r.filter, cols, rhs)
 }
 
 // unknowns is the number of parameters polished: gain, eta with coinciding

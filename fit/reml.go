@@ -40,24 +40,8 @@ func (e *engine) tangents(p point) []*tangent {
 func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	n := len(r.t)
 	t := &tangent{rec: r, nparam: e.ng + 2}
-	linear := append([][]float64(nil), r.fixed...)
-	switch r.rest {
-	case earlier:
-		linear = append(linear, w.start[0])
-	case free:
-		linear = append(linear, w.start...)
-	}
-	rhs := make([]float64, n)
-	for k := range rhs {
-		rhs[k] = r.y[k] - p.gain*w.raw[0][k]
-	}
-	beta := weightedSolve(&r.filter, linear, rhs)
-	t.left = rhs
-	for j, c := range linear {
-		for k, v := range c {
-			t.left[k] -= beta[j] * v
-		}
-	}
+	linear, beta, left := r.solveLinear(w, p.gain)
+	t.left = left
 	t.all = func() []float64 { return t.left }
 	if r.averagesRows() {
 		x := explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
