@@ -45,7 +45,7 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 		row := ident.Row{T: root.t[k], H: root.step, M: m}
 		if m > 1 {
 			row.H = (root.t[k+m-1] - root.t[k]) / float64(m-1)
-			if math.Abs(row.H-root.step)*float64(m) < 1e-9*root.step {
+			if math.Abs(row.H-root.step)*float64(m) < 1e-6*root.step {
 				row.H = root.step // rounding of the stamps
 			}
 		}

@@ -76,7 +76,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
 	}
 	r.span = r.t[len(r.t)-1] - r.t[0]
-	r.step = medianInterval(r.t)
+	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
 	return r, nil
 }
@@ -220,6 +220,19 @@ func medianInterval(t []float64) float64 {
 	}
 	sort.Float64s(d)
 	return d[len(d)/2]
+}
+
+// evenStep is the median interval freed of the rounding of two stamps: where all
+// rows lie on one even series, rows missing or not, it is the span over the number of
+// steps.
+func evenStep(t []float64, median float64) float64 {
+	span := t[len(t)-1] - t[0]
+	last := math.Max(math.Abs(t[0]), math.Abs(t[len(t)-1]))
+	step := span / math.Round(span/median)
+	if math.Abs(step-median) > 4*(math.Nextafter(last, math.Inf(1))-last) {
+		return median
+	}
+	return step
 }
 
 // averagesRows reports whether rows of the log are averaged.

@@ -42,6 +42,11 @@ func (s *Simulator) run(o *outputs, lo, hi int) {
 		s.runMeans(o, lo, hi)
 		return
 	}
+	s.runSamples(o, lo, hi)
+}
+
+// runSamples carries the state step by step, what it stands at being the output.
+func (s *Simulator) runSamples(o *outputs, lo, hi int) {
 	for lo < hi {
 		if s.settle() {
 			s.hold(o, lo, hi)
