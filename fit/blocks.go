@@ -138,66 +138,23 @@ func (r *record) focus(dead, zone float64) *record {
 	})
 }
 
-// explained is a plant with the coefficients of a record's linear columns.
-type explained struct {
-	st   ident.Structure
-	gain float64
-	lags []float64
-	dead float64
-	beta []float64
-}
-
-// residual returns what x leaves of the rows lo ≤ k < hi of the full log.
-func (r *record) residual(x explained, lo, hi int) []float64 {
-	t, y := r.root.t[lo:hi], r.root.y[lo:hi]
-	sim := ident.NewSimulator(t, r.input)
-	out := sim.Response(nil, x.st, x.lags, x.dead)
-	for k := range out {
-		out[k] = y[k] - x.gain*out[k] - x.beta[0]
-	}
-	j := 1
-	if r.drift {
-		for k, v := range t {
-			out[k] -= x.beta[1] * v
-		}
-		j = 2
-	}
-	first := r.root.t[0]
-	switch r.rest {
-	case earlier:
-		s := ident.NewSimulator(t, ident.Input{At: []float64{first}, Value: []float64{1}}).Response(nil, x.st, x.lags, x.dead)
-		for k, v := range s {
-			out[k] -= x.beta[j] * v
-		}
-	case free:
-		cols := columns(max(x.st.Order(), 1), hi)
-		ident.NewSimulator(r.root.t[:hi], r.input).FreeStates(cols, x.st, x.lags, x.dead)
-		for i, b := range x.beta[j:] {
-			for k := range out {
-				out[k] -= b * cols[i][lo+k]
-			}
-		}
-	}
-	return out
-}
-
 // noiseRows is the largest number of rows on which a noise shape is judged: of
 // a longer log, equal pieces spread over it. The shape is then known to about
 // a percent.
 const noiseRows = 24000
 
-// pieces are the half-open row ranges on which the noise of a log of n rows is
-// judged.
-func pieces(n int) [][2]int {
+// noiseParts are the parts of a log on which its noise is judged.
+func (r *record) noiseParts() []part {
+	n := len(r.t)
 	if n <= noiseRows {
-		return [][2]int{{0, n}}
+		return []part{{0, n, r.sim.Clone()}}
 	}
 	const count = 8
 	size := noiseRows / count
-	var out [][2]int
+	var out []part
 	for i := range count {
 		lo := i * (n - size) / (count - 1)
-		out = append(out, [2]int{lo, lo + size})
+		out = append(out, part{lo, lo + size, ident.NewSimulator(r.t[lo:lo+size], r.input)})
 	}
 	return out
 }

@@ -287,77 +287,6 @@ func (out *outcome) covariance(b *bounded) [][]float64 {
 	return cov
 }
 
-// residuals fills the figures of the misfit. The whitened residuals are those
-// of the noise model; the simulated output is what the plant alone explains.
-func (out *outcome) residuals(b *bounded, m *Model) {
-	var whitened []float64
-	var sse, sst float64
-	pIn := 1.0
-	lag1 := 0.0
-	for i, t := range b.fitted.tangents() {
-		r := t.rec
-		root := r.root
-		var left []float64
-		if b.fine != nil {
-			n := len(b.fine.eta) - 1
-			left = r.residual(explained{b.st, b.fine.gain, b.fine.eta[:n], b.fine.eta[n], b.fine.beta[i]}, 0, len(root.t))
-		} else {
-			left = t.all()
-		}
-		m.Samples += len(root.t)
-		mean := 0.0
-		for _, v := range root.y {
-			mean += v / float64(len(root.y))
-		}
-		for k, v := range left {
-			sse += v * v
-			sst += (root.y[k] - mean) * (root.y[k] - mean)
-		}
-		w := append([]float64(nil), left...)
-		whitenTimes(w, root.t, r.shape)
-		scale := 1 / math.Sqrt(math.Max(r.sigma2, 1e-300)) // logs of different noise on one scale
-		for _, v := range w[:min(len(w), noiseRows)] {
-			whitened = append(whitened, v*scale)
-		}
-		if len(root.t) > testRows {
-			m := (len(root.t) + testRows - 1) / testRows
-			pIn = math.Min(pIn, finite(crossCorrelationP(sums(w, m), sums(inputChanges(root), m), max(4, crossLags(root, b)/m)), 1))
-			lag1 += autocorrelation(left, 1)[1] * float64(len(root.t))
-			continue
-		}
-		lag1 += autocorrelation(left, 1)[1] * float64(len(root.t))
-		if p := crossCorrelationP(w, inputChanges(root), crossLags(root, b)); !math.IsNaN(p) {
-			pIn = math.Min(pIn, p)
-		}
-	}
-	n := float64(m.Samples)
-	m.SSE, m.RMSE = sse, math.Sqrt(sse/n)
-	m.FitPercent = 100 * (1 - math.Sqrt(sse/sst))
-	m.Residuals.Lag1Correlation = lag1 / n
-	lags := max(1, min(20, len(whitened)/5))
-	fitted := 2
-	if out.opt.Noise == "white" {
-		fitted = 0
-	}
-	_, p := ljungBox(whitened, lags, min(fitted, lags-1))
-	m.Residuals.LjungBoxP = finite(p, 1)
-	m.Residuals.InputCorrelationP = math.Min(1, pIn*float64(len(b.e.recs)))
-	m.Noise = out.noise(b)
-}
-
-// testRows is the number of rows above which the misfit is compared with the
-// input in sums over several rows: a slow misfit shows in them just as well.
-const testRows = 5000
-
-// sums adds up every m values of x.
-func sums(x []float64, m int) []float64 {
-	out := make([]float64, 0, len(x)/m+1)
-	for lo := 0; lo < len(x); lo += m {
-		out = append(out, total(x[lo:min(lo+m, len(x))]))
-	}
-	return out
-}
-
 // finite replaces what is not a number.
 func finite(v, other float64) float64 {
 	if math.IsNaN(v) || math.IsInf(v, 0) {
@@ -385,33 +314,6 @@ func (out *outcome) noise(b *bounded) Noise {
 		out2.CorrelationTime = math.Exp(logTC / weight)
 	}
 	return out2
-}
-
-// inputChanges is the change of phi(u) since the row before, at each row with a
-// temperature: a change at a row shows in the rows after it, and in closed loop
-// it was made from that row's noise.
-func inputChanges(r *record) []float64 {
-	out := make([]float64, len(r.t))
-	k := 0
-	last := r.input.Before
-	for i, at := range r.input.At {
-		for k < len(r.t)-1 && r.t[k] <= at {
-			k++
-		}
-		out[k] += r.input.Value[i] - last
-		last = r.input.Value[i]
-	}
-	return out
-}
-
-// crossLags is how far back, in rows, the input is compared with the residuals:
-// dead time and three times the lags.
-func crossLags(r *record, b *bounded) int {
-	reach := b.p.eta[len(b.p.eta)-1]
-	for _, l := range b.e.lags(b.p.eta) {
-		reach += 3 * l
-	}
-	return max(4, min(int(reach/r.step), len(r.t)/4))
 }
 
 // writePlants puts the plausible plants into the card. Every plant is written

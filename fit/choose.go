@@ -25,6 +25,8 @@ type outcome struct {
 	weights  []float64 // of the models, for plausible plants
 	draws    []plausible
 
+	yardsticks []*yardstick // of the records
+
 	one, two *fitted // the single lag and the chain of two that settled initial state and drift
 }
 

@@ -181,30 +181,96 @@ func (f *filter) set(rows []ident.Row, s shape) {
 	}
 }
 
-// whitenTimes filters x, one sample a row at the times t, in place, without
-// keeping coefficients; it returns the sum of squares and the log determinant.
-func whitenTimes(x, t []float64, s shape) (sum, logdet float64) {
-	if s.white >= 1 {
-		return dot(x, x), 0
+// whitener filters the rows of a log in place, one sample a row, without
+// keeping coefficients: the rows come in pieces, one after the other.
+type whitener struct {
+	k    *kalman
+	even bool // the whole log is evenly sampled
+
+	a           float64 // predicted correlated part at the last sample
+	sum, logdet float64 // of squares; of the correlation matrix
+}
+
+func newWhitener(s shape, even bool) *whitener {
+	return &whitener{k: newKalman(s), even: even}
+}
+
+// pass filters the next rows x at the times t.
+func (w *whitener) pass(x, t []float64) {
+	k := w.k
+	if k.s.white >= 1 {
+		w.sum += dot(x, x)
+		return
 	}
-	k, a := newKalman(s), 0.0
 	for i := 0; i < len(x); {
 		k.next(ident.Row{T: t[i], M: 1})
 		end := i + 1
-		if k.steady {
+		switch {
+		case k.steady && w.even:
+			end = len(x)
+			k.prevEnd = t[end-1]
+		case k.steady:
 			end = k.evenUntil(t, i)
 		}
-		a2, isd, decay, gain := k.a2, k.isd, k.decay, k.gain
-		logdet += float64(end-i) * k.log
-		for ; i < end; i++ {
-			v := x[i]
-			w := (v - a2*a) * isd
-			x[i] = w
-			a = decay*a + gain*v
-			sum += w * w
-		}
+		w.logdet += float64(end-i) * k.log
+		w.steadily(x[i:end])
+		i = end
 	}
-	return sum, logdet
+}
+
+// steadily filters rows under the coefficients in force. The recursion
+// a ← decay·a + gain·x waits for itself; four rows at a time it waits once.
+func (w *whitener) steadily(x []float64) {
+	a2, isd, d, g := w.k.a2, w.k.isd, w.k.decay, w.k.gain
+	a, sum := w.a, 0.0
+	d2, d3, d4 := d*d, d*d*d, d*d*d*d
+	for ; len(x) >= 4; x = x[4:] {
+		v0, v1, v2, v3 := x[0], x[1], x[2], x[3]
+		c1 := g * v0
+		c2 := d*c1 + g*v1
+		c3 := d*c2 + g*v2
+		c4 := d*c3 + g*v3
+		w0 := (v0 - a2*a) * isd
+		w1 := (v1 - a2*(d*a+c1)) * isd
+		w2 := (v2 - a2*(d2*a+c2)) * isd
+		w3 := (v3 - a2*(d3*a+c3)) * isd
+		a = d4*a + c4
+		x[0], x[1], x[2], x[3] = w0, w1, w2, w3
+		sum += w0*w0 + w1*w1 + w2*w2 + w3*w3
+	}
+	for i, v := range x {
+		r := (v - a2*a) * isd
+		a = d*a + g*v
+		x[i] = r
+		sum += r * r
+	}
+	w.a = a
+	w.sum += sum
+}
+
+// newWhitenAll returns one whitener for each of n columns of the same rows.
+func newWhitenAll(s shape, even bool, n int) whitenAll {
+	w := make(whitenAll, n)
+	for j := range w {
+		w[j] = newWhitener(s, even)
+	}
+	return w
+}
+
+type whitenAll []*whitener
+
+func (w whitenAll) pass(cols [][]float64, t []float64) {
+	for j, c := range cols {
+		w[j].pass(c, t)
+	}
+}
+
+// whitenTimes filters x, one sample a row at the times t, in place; it returns
+// the sum of squares and the log determinant.
+func whitenTimes(x, t []float64, s shape) (sum, logdet float64) {
+	w := newWhitener(s, false)
+	w.pass(x, t)
+	return w.sum, w.logdet
 }
 
 // evenUntil passes the rows after row i that keep its distance, and returns

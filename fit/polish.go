@@ -2,14 +2,11 @@ package fit
 
 import (
 	"math"
-
-	"lagwright/ident"
 )
 
 // A fit on averaged rows lies within a small part of a standard error of the
 // fit on every row. polish closes that distance: Gauss-Newton steps on the full
-// log, for all parameters at once, the linear ones too, taken in chunks so that
-// memory does not grow with the log.
+// log, for all parameters at once, the linear ones too, in pieces (everyrow.go).
 
 // polished is an optimum on every row of the logs.
 type polished struct {
@@ -18,9 +15,6 @@ type polished struct {
 	beta [][]float64 // per record: baseline, drift, earlier input
 	cov  [][]float64 // of gain, eta (coinciding lags as one) and the linear columns, for unit variance
 }
-
-// polishChunk is how many rows are taken at a time.
-const polishChunk = 32768
 
 // polish improves the optimum of b on the full logs, nil when nothing was
 // averaged or the initial state is free.
@@ -161,67 +155,86 @@ func (b *bounded) normal(at *polished, sum *float64) [][]float64 {
 
 // accumulate adds one record; idx says where its columns stand in gram.
 func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int, gram [][]float64) {
-	e, t, y := b.e, r.root.t, r.root.y
-	nl := e.nl
-	dirs := b.direction(nl+1) + 1
-	m := len(idx)
-	carry := make([]float64, m)
-	k := newKalman(r.shape)
-	size := min(polishChunk, len(t))
+	e, root := b.e, r.root
+	nl, m := e.nl, len(idx)
+	lags, dead := e.lags(at.eta), at.eta[nl]
+	response := root.sim.Clone().Pieces(e.st, lags, dead, true)
+	var started func([][]float64) int
+	if r.rest == earlier {
+		started = root.sim.WithInput(r.fromFirstRow()).Pieces(e.st, lags, dead, true)
+	}
+	w := newWhitenAll(r.shape, r.even, m)
+	size := min(pieceRows, len(root.t))
 	raw, start, cols := columns(nl+2, size), columns(nl+2, size), columns(m, size)
-	onset := ident.Input{At: []float64{t[0]}, Value: []float64{1}}
-	for lo := 0; lo < len(t); lo += size {
-		hi := min(lo+size, len(t))
-		n := hi - lo
-		ident.NewSimulator(t[lo:hi], r.input).Sensitivities(cut(raw, n), e.st, e.lags(at.eta), at.eta[nl])
+	upper := columns(m, m)
+	for lo := 0; lo < len(root.t); {
+		n := response(raw)
+		if started != nil {
+			started(start)
+		}
+		b.directions(cut(cols, n), cut(raw, n), cut(start, n), at.gain, beta, r, lo)
+		w.pass(cut(cols, n), root.t[lo:lo+n])
+		addProducts(upper, cut(cols, n))
+		lo += n
+	}
+	for a := range m {
+		for c := a; c < m; c++ {
+			gram[idx[a]][idx[c]] += r.weight * upper[a][c]
+			if a != c {
+				gram[idx[c]][idx[a]] += r.weight * upper[a][c]
+			}
+		}
+	}
+}
+
+// directions fills cols, rows lo and after of the record: gain, lags and dead
+// time (coinciding lags as one), the linear columns, what is left.
+func (b *bounded) directions(cols, raw, start [][]float64, gain float64, beta []float64, r *record, lo int) {
+	nl := b.e.nl
+	state := beta[len(beta)-1]
+	copy(cols[0], raw[0])
+	for l := range nl + 1 {
+		clear(cols[b.direction(l+1)])
+	}
+	for l := range nl + 1 {
+		c := cols[b.direction(l+1)]
+		for i, v := range raw[l+1][:len(c)] {
+			c[i] += gain * v
+		}
 		if r.rest == earlier {
-			ident.NewSimulator(t[lo:hi], onset).Sensitivities(cut(start, n), e.st, e.lags(at.eta), at.eta[nl])
-		}
-		for j := range m {
-			clear(cols[j][:n])
-		}
-		for i := range n {
-			cols[0][i] = raw[0][i]
-			left := y[lo+i] - at.gain*raw[0][i] - beta[0]
-			for l := range nl + 1 {
-				d := at.gain * raw[l+1][i]
-				if r.rest == earlier {
-					d += beta[len(beta)-1] * start[l+1][i]
-				}
-				cols[b.direction(l+1)][i] += d
-			}
-			c := dirs
-			cols[c][i] = 1
-			if r.drift {
-				c++
-				cols[c][i] = t[lo+i]
-				left -= beta[1] * t[lo+i]
-			}
-			if r.rest == earlier {
-				c++
-				cols[c][i] = start[0][i]
-				left -= beta[len(beta)-1] * start[0][i]
-			}
-			cols[m-1][i] = left
-		}
-		if r.shape.white < 1 {
-			for i := range n {
-				k.next(ident.Row{T: t[lo+i], M: 1})
-				for j := range m {
-					x := cols[j][i]
-					cols[j][i] = (x - k.a2*carry[j]) * k.isd
-					carry[j] = k.decay*carry[j] + k.gain*x
-				}
+			for i, v := range start[l+1][:len(c)] {
+				c[i] += state * v
 			}
 		}
-		for a := range m {
-			for c := 0; c <= a; c++ {
-				v := r.weight * dot(cols[a][:n], cols[c][:n])
-				gram[idx[a]][idx[c]] += v
-				if a != c {
-					gram[idx[c]][idx[a]] += v
-				}
-			}
+	}
+	c := b.direction(nl+1) + 1
+	left := cols[len(cols)-1]
+	one, y := cols[c][:len(left)], r.root.y[lo:lo+len(left)]
+	for i, v := range raw[0][:len(left)] {
+		one[i] = 1
+		left[i] = y[i] - gain*v - beta[0]
+	}
+	if r.drift {
+		c++
+		copy(cols[c], r.root.t[lo:lo+len(left)])
+		for i, v := range cols[c] {
+			left[i] -= beta[1] * v
+		}
+	}
+	if r.rest == earlier {
+		c++
+		copy(cols[c], start[0])
+		for i, v := range cols[c] {
+			left[i] -= state * v
+		}
+	}
+}
+
+// addProducts adds the products of all columns to the upper triangle.
+func addProducts(upper, cols [][]float64) {
+	for a := range cols {
+		for c := a; c < len(cols); c++ {
+			upper[a][c] += dot(cols[a], cols[c])
 		}
 	}
 }

@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"math"
 	"slices"
-	"sort"
 
 	"lagwright/data"
 	"lagwright/ident"
@@ -24,7 +23,9 @@ type record struct {
 	rest  initial
 	drift bool
 
-	root *record // the record at full resolution; itself when nothing is averaged
+	root  *record // the record at full resolution; itself when nothing is averaged
+	even  bool    // the full log is evenly sampled
+	parts []part  // of the full log, on which its noise is judged
 
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
 
@@ -78,6 +79,9 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.span = r.t[len(r.t)-1] - r.t[0]
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
+	r.even = isEven(r.t, r.step)
+	r.sim = ident.NewSimulator(r.t, r.input)
+	r.parts = r.noiseParts()
 	return r, nil
 }
 
@@ -102,7 +106,7 @@ func (r *record) whole() *record {
 	for i, t := range c.t {
 		c.rows[i] = ident.Row{T: t, H: c.step, M: 1}
 	}
-	c.sim = ident.NewSimulator(c.t, c.input)
+	c.sim = r.root.sim.Clone()
 	return r.adopt(&c)
 }
 
@@ -127,7 +131,7 @@ func (r *record) model(in initial, drift bool) {
 		r.fixed = append(r.fixed, append([]float64(nil), r.t...))
 	}
 	if in == earlier && r.start == nil {
-		r.start = ident.NewBlockSimulator(r.rows, ident.Input{At: []float64{r.root.t[0]}, Value: []float64{1}})
+		r.start = r.sim.WithInput(r.fromFirstRow())
 	}
 	r.setShape(r.shape)
 }
@@ -153,6 +157,10 @@ func (r *record) setShape(s shape) {
 func (r *record) clone() *record {
 	c := *r
 	c.sim = r.sim.Clone()
+	c.parts = slices.Clone(r.parts)
+	for i := range c.parts {
+		c.parts[i].sim = c.parts[i].sim.Clone()
+	}
 	if r.start != nil {
 		c.start = r.start.Clone()
 	}
@@ -212,13 +220,18 @@ func resize(x []float64, n int) []float64 {
 	return x[:n]
 }
 
-// medianInterval is the median distance of neighbouring rows.
+// intervalSample is the number of intervals of which a long log's median is taken.
+const intervalSample = 20000
+
+// medianInterval is the median distance of neighbouring rows; of a long log,
+// that of rows spread over it.
 func medianInterval(t []float64) float64 {
-	d := make([]float64, len(t)-1)
-	for i := range d {
-		d[i] = t[i+1] - t[i]
+	stride := max(1, len(t)/intervalSample)
+	d := make([]float64, 0, len(t)/stride+1)
+	for i := 1; i < len(t); i += stride {
+		d = append(d, t[i]-t[i-1])
 	}
-	sort.Float64s(d)
+	slices.Sort(d)
 	return d[len(d)/2]
 }
 

@@ -10,15 +10,15 @@ import (
 // move, the linear columns first, then gain, lags, dead time.
 type tangent struct {
 	rec    *record
-	left   []float64        // log minus model, unwhitened
-	noise  []float64        // times on which the noise is judged when rec averages rows, else nil
-	rest   []float64        // log minus model at them
-	all    func() []float64 // log minus model on the full log
-	cols   [][]float64      // orthonormal (unwhitened) directions
-	first  int              // how many of cols are linear columns
-	param  []int            // parameter (0 gain, 1… eta) behind cols[first+i]
-	tri    [][]float64      // parameter block of the triangular factor: direction = Σ tri·parameter
-	scale  []float64        // norm of each parameter's direction after the linear columns; 0 when nothing is left
+	left   []float64   // log minus model, unwhitened
+	noise  []float64   // times on which the noise is judged when rec averages rows, else nil
+	rest   []float64   // log minus model at them
+	model  explained   // the model itself
+	cols   [][]float64 // orthonormal (unwhitened) directions
+	first  int         // how many of cols are linear columns
+	param  []int       // parameter (0 gain, 1… eta) behind cols[first+i]
+	tri    [][]float64 // parameter block of the triangular factor: direction = Σ tri·parameter
+	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
 
 	filter filter      // scratch of evaluate
@@ -42,13 +42,11 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	t := &tangent{rec: r, nparam: e.ng + 2}
 	linear, beta, left := r.solveLinear(w, p.gain)
 	t.left = left
-	t.all = func() []float64 { return t.left }
+	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
-		x := explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
-		t.all = func() []float64 { return r.residual(x, 0, len(r.root.t)) }
-		for _, c := range pieces(len(r.root.t)) {
-			t.noise = append(t.noise, r.root.t[c[0]:c[1]]...)
-			t.rest = append(t.rest, r.residual(x, c[0], c[1])...)
+		for _, c := range r.parts {
+			t.noise = append(t.noise, r.root.t[c.lo:c.hi]...)
+			t.rest = append(t.rest, r.residual(t.model, c)...)
 		}
 	}
 	for _, c := range linear {

@@ -393,7 +393,7 @@ func (r *record) likelihood(t *tangent, part float64) float64 {
 	if !r.averagesRows() {
 		return logLikelihood(part, r.filter.logdet, len(r.t))
 	}
-	all := t.all()
-	sum, logdet := whitenTimes(all, r.root.t, r.shape)
-	return logLikelihood(sum, logdet, len(all))
+	w := newWhitener(r.shape, r.even)
+	r.everyRow(t.model, func(lo int, left []float64) { w.pass(left, r.root.t[lo:lo+len(left)]) })
+	return logLikelihood(w.sum, w.logdet, len(r.root.t))
 }

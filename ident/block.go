@@ -83,8 +83,8 @@ func splitByShape(in []stretch, rows []Row) []stretch {
 	return out
 }
 
-// row returns row k, of one sample when the rows are samples.
-func (s *Simulator) row(k int) Row {
+// sampleRow returns row k, of one sample when the rows are samples.
+func (s *Simulator) sampleRow(k int) Row {
 	if s.rows == nil {
 		return Row{T: s.t[k], M: 1}
 	}
@@ -307,7 +307,7 @@ func (s *Simulator) departed(k int, step float64) *block {
 // emitMean writes the outputs of row k, which is a mean, from the state at its
 // first sample; the row is taken apart at the changes inside it. The state
 // stays where it is.
-func (s *Simulator) emitMean(o *outputs, k int, deadTime float64) {
+func (s *Simulator) emitMean(o *outputs, k int) {
 	c, r := &s.chain, s.rows[k]
 	x, level, next := s.x, s.level, s.next
 	if r.M == 1 {
@@ -319,7 +319,7 @@ func (s *Simulator) emitMean(o *outputs, k int, deadTime float64) {
 	for p := 0; p < r.M; {
 		count := r.M - p
 		if next < len(s.in.At) {
-			count = r.before(s.arrival(next, deadTime), p)
+			count = r.before(s.arrival(next), p)
 		}
 		b := s.blocks.get(c, r.H, count)
 		part := x
@@ -331,7 +331,7 @@ func (s *Simulator) emitMean(o *outputs, k int, deadTime float64) {
 		levels += weight * level
 		if p += count; p < r.M {
 			c.advance(&b.over, &x)
-			next, level = s.takeChanges(&x, next, level, r.sample(p), deadTime)
+			next, level = s.takeChanges(&x, next, level, r.sample(p))
 		}
 	}
 	s.emit(o, k, &sum, levels)

@@ -22,7 +22,7 @@ func (s *Simulator) FreeStates(dst [][]float64, st Structure, lags []float64, de
 			continue
 		}
 		s.release(n - 1 - j)
-		s.carry(&outputs{y: dst[j]}, deadTime)
+		s.walk(&outputs{y: dst[j]})
 	}
 }
 
@@ -60,7 +60,7 @@ func (s *Simulator) FreeStateSensitivities(dst [][]float64, st Structure, lags [
 			}
 		}
 		s.release(element)
-		s.carry(&o, deadTime)
+		s.walk(&o)
 		for i, k := range c.of[:lagCount] {
 			c.freeSlope(slopes[i], dst[j], element, k)
 		}
@@ -69,7 +69,8 @@ func (s *Simulator) FreeStateSensitivities(dst [][]float64, st Structure, lags [
 
 // release puts 1 at the output of an element and switches the input off.
 func (s *Simulator) release(element int) {
-	s.x, s.level, s.next = state{}, 0, len(s.in.At)
+	s.rewind()
+	s.next = len(s.in.At)
 	s.x[element] = 1
 }
 

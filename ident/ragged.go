@@ -130,16 +130,16 @@ func (s *kickCache) after(c *chain, since, tolerance float64) *state {
 	return &e.kick
 }
 
-// runRagged is run for a ragged stretch, whose rows may follow changes of the
+// runRagged is run for rows of a ragged stretch, which may follow changes of the
 // input.
-func (s *Simulator) runRagged(o *outputs, r stretch, deadTime float64) {
-	for k := r.lo; k < r.hi; k++ {
+func (s *Simulator) runRagged(o *outputs, lo, hi int) {
+	for k := lo; k < hi; k++ {
 		if b := s.departed(k, s.t[k]-s.t[k-1]); b != nil {
 			s.chain.advance(&b.over, &s.x)
 		} else {
 			s.steps.over(&s.chain, &s.x, s.t[k]-s.t[k-1], s.tolerance)
 		}
-		s.arrive(k, deadTime)
-		s.emitRow(o, k, deadTime)
+		s.arrive(k)
+		s.emitRow(o, k)
 	}
 }

@@ -77,6 +77,7 @@ func (s *Simulator) settle() bool {
 
 // hold is run for a settled state.
 func (s *Simulator) hold(o *outputs, lo, hi int) {
+	lo, hi = lo-o.from, hi-o.from
 	for k := range o.y[lo:hi] {
 		o.y[lo+k] = s.level
 	}
@@ -89,6 +90,8 @@ func (s *Simulator) hold(o *outputs, lo, hi int) {
 }
 
 func (s *Simulator) runPiece(o *outputs, lo, hi int) {
+	from := lo
+	lo, hi = lo-o.from, hi-o.from
 	n, y := s.chain.n, o.y[lo:hi]
 	if s.chain.q == 0 {
 		if s.chain.equal && n > 1 && s.step[0] > 0 {
@@ -119,9 +122,9 @@ func (s *Simulator) runPiece(o *outputs, lo, hi int) {
 			return
 		}
 	}
-	for k := lo; k < hi; k++ {
+	for k := range y {
 		s.chain.advance(&s.step, &s.x)
-		s.emit(o, k, &s.x, s.level)
+		s.emit(o, from+k, &s.x, s.level)
 	}
 }
 

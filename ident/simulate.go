@@ -28,6 +28,13 @@ type Simulator struct {
 	level float64 // delayed input less in.Before
 	next  int     // next change of the delayed input
 
+	integrating bool
+	deadTime    float64
+	row         int // the next to be written
+	stretch     int // that it belongs to
+	area        float64
+	areaUntil   float64 // of the delayed input, up to its last change
+
 	step       matrix // transition over stepLength, the step of the stretch
 	stepLength float64
 	long       bool   // the stretch leaps
@@ -42,11 +49,17 @@ type Simulator struct {
 // ascending, and the input in. Changes of the input before t[0] count; the
 // chain is at rest before the first. t and in are kept, not copied.
 func NewSimulator(t []float64, in Input) *Simulator {
-	s := &Simulator{t: t, in: in, tolerance: timeTolerance(t)}
+	s := &Simulator{t: t, tolerance: timeTolerance(t)}
 	s.stretches = stretches(t, s.tolerance)
 	if slices.ContainsFunc(s.stretches, func(r stretch) bool { return r.ragged }) {
 		s.steps = new(stepCache)
 	}
+	s.setInput(in)
+	return s
+}
+
+func (s *Simulator) setInput(in Input) {
+	s.in, s.greatest = in, 0
 	s.change = make([]float64, len(in.At))
 	before := in.Before
 	for j, v := range in.Value {
@@ -57,7 +70,6 @@ func NewSimulator(t []float64, in Input) *Simulator {
 	if s.greatest == 0 {
 		s.greatest = 1
 	}
-	return s
 }
 
 // Clone returns a simulator of the same log for another goroutine.
@@ -70,9 +82,17 @@ func (s *Simulator) Clone() *Simulator {
 	return &clone
 }
 
+// WithInput returns a simulator of the same rows for another input.
+func (s *Simulator) WithInput(in Input) *Simulator {
+	clone := s.Clone()
+	clone.setInput(in)
+	return clone
+}
+
 // outputs are the columns an evaluation fills; dtheta and v are nil when only
 // the response is wanted.
 type outputs struct {
+	from   int // row of the first element
 	y      []float64
 	dtheta []float64          // dy/dtheta, minus the slope
 	v      [maxLags][]float64 // by sensitivity state
@@ -87,8 +107,11 @@ func (s *Simulator) Response(dst []float64, st Structure, lags []float64, deadTi
 	if dst == nil {
 		dst = make([]float64, len(s.t))
 	}
-	o := outputs{y: dst}
-	s.evaluate(&o, st, lags, deadTime, false)
+	if !s.prepare(st, lags, deadTime, false) {
+		fillNaN(dst)
+		return dst
+	}
+	s.walk(&outputs{y: dst})
 	return dst
 }
 
@@ -99,33 +122,52 @@ func (s *Simulator) Response(dst []float64, st Structure, lags []float64, deadTi
 // derivative is the one from the right in time. The derivative at a lag of
 // zero is the one towards positive lags.
 func (s *Simulator) Sensitivities(dst [][]float64, st Structure, lags []float64, deadTime float64) {
-	lagCount := st.NumLags()
-	o := outputs{y: dst[0], dtheta: dst[1+lagCount]}
 	if !s.prepare(st, lags, deadTime, true) {
-		for _, column := range dst[:lagCount+2] {
+		for _, column := range dst[:st.NumLags()+2] {
 			fillNaN(column)
 		}
 		return
 	}
+	s.rowsWithSensitivities(dst, st.NumLags(), len(s.t))
+}
+
+// Pieces returns a function that writes the response, and with sensitivities
+// what [Simulator.Sensitivities] writes, of the next rows into dst, as many as
+// its columns have elements, and returns how many it wrote: a long log in
+// bounded memory. Another evaluation of s ends it.
+func (s *Simulator) Pieces(st Structure, lags []float64, deadTime float64, sensitivities bool) func(dst [][]float64) int {
+	valid := s.prepare(st, lags, deadTime, sensitivities)
+	return func(dst [][]float64) int {
+		rows := min(len(dst[0]), len(s.t)-s.row)
+		switch {
+		case !valid:
+			for _, column := range dst {
+				fillNaN(column)
+			}
+			s.row += rows
+		case sensitivities:
+			s.rowsWithSensitivities(dst, st.NumLags(), rows)
+		default:
+			s.walkTo(&outputs{from: s.row, y: dst[0]}, s.row+rows)
+		}
+		return rows
+	}
+}
+
+// rowsWithSensitivities writes the next rows and their derivatives.
+func (s *Simulator) rowsWithSensitivities(dst [][]float64, lagCount, rows int) {
+	o := outputs{from: s.row, y: dst[0], dtheta: dst[1+lagCount]}
 	for i, k := range s.chain.of[:lagCount] {
 		if k >= 0 {
 			o.v[k] = dst[1+i]
 		}
 	}
-	s.walk(&o, st, deadTime)
+	s.walkTo(&o, s.row+rows)
 	for i, k := range s.chain.of[:lagCount] {
 		if k < 0 {
-			copy(dst[1+i], o.dtheta)
+			copy(dst[1+i], o.dtheta[:rows])
 		}
 	}
-}
-
-func (s *Simulator) evaluate(o *outputs, st Structure, lags []float64, deadTime float64, sensitivities bool) {
-	if !s.prepare(st, lags, deadTime, sensitivities) {
-		fillNaN(o.y)
-		return
-	}
-	s.walk(o, st, deadTime)
 }
 
 func fillNaN(x []float64) {
@@ -141,53 +183,72 @@ func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sens
 		s.steps.evaluation = s.evaluation
 	}
 	s.blocks.clear()
+	s.integrating, s.deadTime = st.integrating, deadTime
+	s.rewind()
 	return finite(deadTime) && s.chain.set(st, lags, sensitivities)
 }
 
-// walk fills the outputs row by row.
-func (s *Simulator) walk(o *outputs, st Structure, deadTime float64) {
-	if len(s.t) == 0 {
-		return
-	}
+// rewind goes back to before the first row, at rest.
+func (s *Simulator) rewind() {
 	s.x, s.level, s.next = state{}, 0, 0
-	if st.integrating || s.chain.n == 0 {
-		s.walkWithoutLags(o, st.integrating, deadTime)
-		return
-	}
-	s.arrive(0, deadTime)
-	s.carry(o, deadTime)
+	s.row, s.stretch, s.area, s.areaUntil = 0, 0, 0, 0
 }
 
-// carry fills the outputs from the state at the first row.
-func (s *Simulator) carry(o *outputs, deadTime float64) {
-	s.emitRow(o, 0, deadTime)
-	for _, r := range s.stretches {
-		if r.ragged {
-			s.runRagged(o, r, deadTime)
+// walk fills the outputs, all rows from the first on.
+func (s *Simulator) walk(o *outputs) { s.walkTo(o, len(s.t)) }
+
+// walkTo fills the outputs from where the last walk ended up to row end.
+func (s *Simulator) walkTo(o *outputs, end int) {
+	if s.integrating || s.chain.n == 0 {
+		s.walkWithoutLags(o, end)
+		return
+	}
+	if s.row == 0 && end > 0 {
+		s.arrive(0)
+		s.emitRow(o, 0)
+		s.row = 1
+	}
+	for s.row < end {
+		r := s.stretches[s.stretch]
+		if s.row == r.hi {
+			s.stretch++
 			continue
 		}
+		s.walkStretch(o, r, min(r.hi, end))
+	}
+}
+
+// walkStretch fills the outputs of a stretch up to row end.
+func (s *Simulator) walkStretch(o *outputs, r stretch, end int) {
+	if r.ragged {
+		s.runRagged(o, s.row, end)
+		s.row = end
+		return
+	}
+	if s.row == r.lo {
 		s.setStep(r)
-		for k := r.lo; k < r.hi; {
-			free := s.freeRows(k, r, deadTime)
-			s.run(o, k, k+free)
-			k += free
-			if k < r.hi {
-				s.chain.advance(&s.step, &s.x)
-				s.arrive(k, deadTime)
-				s.emitRow(o, k, deadTime)
-				k++
-			}
+	}
+	for k := s.row; k < end; {
+		free := min(s.freeRows(k, r), end-k)
+		s.run(o, k, k+free)
+		k += free
+		if k < end {
+			s.chain.advance(&s.step, &s.x)
+			s.arrive(k)
+			s.emitRow(o, k)
+			k++
 		}
 	}
+	s.row = end
 }
 
 // freeRows counts the rows of the stretch from row k on that the next change
 // comes after.
-func (s *Simulator) freeRows(k int, r stretch, deadTime float64) int {
+func (s *Simulator) freeRows(k int, r stretch) int {
 	if s.next == len(s.in.At) {
 		return r.hi - k
 	}
-	change := s.arrival(s.next, deadTime)
+	change := s.arrival(s.next)
 	if s.rows != nil {
 		change -= s.rows[k].last() - s.rows[k].T
 	}
@@ -207,23 +268,23 @@ func (s *Simulator) freeRows(k int, r stretch, deadTime float64) int {
 
 // arrival is the time from which on change j of the delayed input counts: a
 // change that rounding puts just after a row is on that row.
-func (s *Simulator) arrival(j int, deadTime float64) float64 {
-	return s.in.At[j] + deadTime - s.tolerance
+func (s *Simulator) arrival(j int) float64 {
+	return s.in.At[j] + s.deadTime - s.tolerance
 }
 
 // arrive applies the changes of the delayed input up to row k to a state that
 // has been carried to row k without them.
-func (s *Simulator) arrive(k int, deadTime float64) {
-	s.next, s.level = s.takeChanges(&s.x, s.next, s.level, s.t[k], deadTime)
+func (s *Simulator) arrive(k int) {
+	s.next, s.level = s.takeChanges(&s.x, s.next, s.level, s.t[k])
 }
 
 // takeChanges applies the changes of the delayed input, from change next on and
 // up to the time, to a state that has been carried to that time without them. It
 // returns the next change and the level of the input.
-func (s *Simulator) takeChanges(x *state, next int, level, time, deadTime float64) (int, float64) {
+func (s *Simulator) takeChanges(x *state, next int, level, time float64) (int, float64) {
 	c := &s.chain
-	for ; next < len(s.in.At) && s.arrival(next, deadTime) <= time; next++ {
-		since := max(time-(s.in.At[next]+deadTime), 0)
+	for ; next < len(s.in.At) && s.arrival(next) <= time; next++ {
+		since := max(time-(s.in.At[next]+s.deadTime), 0)
 		du := s.change[next]
 		kick := s.kicks.after(c, since, s.tolerance)
 		for i := range c.n + c.q {
@@ -235,9 +296,9 @@ func (s *Simulator) takeChanges(x *state, next int, level, time, deadTime float6
 }
 
 // emitRow writes the outputs of row k from the state at its first sample.
-func (s *Simulator) emitRow(o *outputs, k int, deadTime float64) {
+func (s *Simulator) emitRow(o *outputs, k int) {
 	if s.rows != nil {
-		s.emitMean(o, k, deadTime)
+		s.emitMean(o, k)
 		return
 	}
 	s.emit(o, k, &s.x, s.level)
@@ -246,6 +307,7 @@ func (s *Simulator) emitRow(o *outputs, k int, deadTime float64) {
 // emit writes the outputs of row k that a state and an input level make.
 func (s *Simulator) emit(o *outputs, k int, x *state, level float64) {
 	n := s.chain.n
+	k -= o.from
 	o.y[k] = level + x[n-1]
 	for i := range s.chain.q {
 		o.v[i][k] = x[n+i]
@@ -264,37 +326,37 @@ func (s *Simulator) emit(o *outputs, k int, x *state, level float64) {
 // delayed input less its first value and whose slope is that input; and for a
 // chain with no lag at all, whose response is that input and whose slope is
 // zero between the changes.
-func (s *Simulator) walkWithoutLags(o *outputs, integrating bool, deadTime float64) {
-	area, at := 0.0, 0.0 // integral up to the last change, and that change's time
-	for k := range s.t {
-		r := s.row(k)
+func (s *Simulator) walkWithoutLags(o *outputs, end int) {
+	for ; s.row < end; s.row++ {
+		r := s.sampleRow(s.row)
 		levels, areas := 0.0, 0.0 // sums over the row's samples
 		for p := 0; p < r.M; {
-			for s.next < len(s.in.At) && s.arrival(s.next, deadTime) <= r.sample(p) {
-				change := s.in.At[s.next] + deadTime
-				area += s.level * (change - at)
-				at = change
+			for s.next < len(s.in.At) && s.arrival(s.next) <= r.sample(p) {
+				change := s.in.At[s.next] + s.deadTime
+				s.area += s.level * (change - s.areaUntil)
+				s.areaUntil = change
 				s.level = s.in.Value[s.next] - s.in.Before
 				s.next++
 			}
 			count := r.M - p
 			if s.next < len(s.in.At) {
-				count = r.before(s.arrival(s.next, deadTime), p)
+				count = r.before(s.arrival(s.next), p)
 			}
 			middle := (r.sample(p) + r.sample(p+count-1)) / 2
 			levels += float64(count) * s.level
-			areas += float64(count) * (area + s.level*(middle-at))
+			areas += float64(count) * (s.area + s.level*(middle-s.areaUntil))
 			p += count
 		}
+		k := s.row - o.from
 		levels, areas = levels/float64(r.M), areas/float64(r.M)
-		if integrating {
+		if s.integrating {
 			o.y[k] = areas
 		} else {
 			o.y[k] = levels
 		}
 		if o.dtheta != nil {
 			o.dtheta[k] = 0
-			if integrating {
+			if s.integrating {
 				o.dtheta[k] = -levels
 			}
 		}
