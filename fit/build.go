@@ -103,8 +103,11 @@ func extent(runs []*data.Run, column func(*data.Run) []float64) [2]float64 {
 	lo, hi := math.Inf(1), math.Inf(-1)
 	for _, r := range runs {
 		for _, v := range column(r) {
-			if !math.IsNaN(v) && !math.IsInf(v, 0) {
-				lo, hi = math.Min(lo, v), math.Max(hi, v)
+			if v < lo && v > math.Inf(-1) {
+				lo = v
+			}
+			if v > hi && v < math.Inf(1) {
+				hi = v
 			}
 		}
 	}

@@ -75,11 +75,17 @@ func halfRuleDelay(lags []float64, deadTime float64) float64 {
 }
 
 func total(x []float64) float64 {
-	s := 0.0
-	for _, v := range x {
-		s += v
+	var s0, s1, s2, s3 float64
+	for ; len(x) >= 4; x = x[4:] {
+		s0 += x[0]
+		s1 += x[1]
+		s2 += x[2]
+		s3 += x[3]
 	}
-	return s
+	for _, v := range x {
+		s0 += v
+	}
+	return (s0 + s1) + (s2 + s3)
 }
 
 // elements lists every first-order element's lag, longest first.

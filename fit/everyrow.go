@@ -34,13 +34,12 @@ func (r *record) everyRow(x explained, visit func(lo int, left []float64)) {
 		n := response([][]float64{y})
 		out := y[:n]
 		t, logged := root.t[lo:lo+n], root.y[lo:lo+n]
-		for k, v := range out {
-			out[k] = logged[k] - x.gain*v - x.beta[0]
-		}
+		base, slope := x.beta[0], 0.0
 		if r.drift {
-			for k, v := range t {
-				out[k] -= x.beta[1] * v
-			}
+			slope = x.beta[1]
+		}
+		for k, v := range out {
+			out[k] = logged[k] - x.gain*v - base - slope*t[k]
 		}
 		if initial != nil {
 			initial(state[:n])

@@ -40,8 +40,12 @@ func (b *bounded) polish() *polished {
 	var sum float64
 	gram := b.normal(&at, &sum)
 	for range 4 {
-		next, ok := b.step(&at, gram)
+		next, promised, ok := b.step(&at, gram)
 		if !ok {
+			break
+		}
+		if promised < 1e-15*sum { // nothing left that a sum of squares could show
+			at = *next
 			break
 		}
 		var s float64
@@ -49,11 +53,7 @@ func (b *bounded) polish() *polished {
 		if !(s < sum) {
 			break
 		}
-		done := sum-s < 1e-14*sum
 		at, gram, sum = *next, g, s
-		if done {
-			break
-		}
 	}
 	at.cov = b.unitCovariance(gram)
 	return &at
@@ -248,8 +248,8 @@ func cut(cols [][]float64, n int) [][]float64 {
 }
 
 // step solves the normal equations and returns the point they lead to, inside
-// the bounds.
-func (b *bounded) step(at *polished, gram [][]float64) (*polished, bool) {
+// the bounds, and by how much they promise to lower the sum of squares.
+func (b *bounded) step(at *polished, gram [][]float64) (next *polished, promised float64, ok bool) {
 	e := b.e
 	n := len(gram) - 1
 	var free []int
@@ -276,13 +276,14 @@ func (b *bounded) step(at *polished, gram [][]float64) (*polished, bool) {
 	}
 	x, ok := solveDamped(scaled, rhs, free, 0)
 	if !ok {
-		return nil, false
+		return nil, 0, false
 	}
 	move := make([]float64, n)
 	for k, j := range free {
 		move[j] = x[k] / math.Sqrt(gram[j][j])
+		promised += x[k] * rhs[j]
 	}
-	next := &polished{gain: at.gain + move[0], eta: append([]float64(nil), at.eta...)}
+	next = &polished{gain: at.gain + move[0], eta: append([]float64(nil), at.eta...)}
 	for l := range next.eta {
 		next.eta[l] = math.Min(math.Max(next.eta[l]+move[b.direction(l+1)], e.lower[l]), e.upper[l])
 	}
@@ -295,5 +296,5 @@ func (b *bounded) step(at *polished, gram [][]float64) (*polished, bool) {
 		base += len(beta)
 		next.beta = append(next.beta, beta)
 	}
-	return next, true
+	return next, promised, true
 }

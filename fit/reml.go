@@ -13,6 +13,7 @@ type tangent struct {
 	left   []float64   // log minus model, unwhitened
 	noise  []float64   // times on which the noise is judged when rec averages rows, else nil
 	rest   []float64   // log minus model at them
+	piece  int         // length of the parts that they are made of
 	model  explained   // the model itself
 	cols   [][]float64 // orthonormal (unwhitened) directions
 	first  int         // how many of cols are linear columns
@@ -45,6 +46,7 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
 		for _, c := range r.parts {
+			t.piece = c.hi - c.lo
 			t.noise = append(t.noise, r.root.t[c.lo:c.hi]...)
 			t.rest = append(t.rest, r.residual(t.model, c)...)
 		}
@@ -210,8 +212,14 @@ func (t *tangent) evaluate(s shape) node {
 func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
 	t.buf = resize(t.buf, len(t.rest))
 	copy(t.buf, t.rest)
-	sum, logdet := whitenTimes(t.buf, t.noise, s)
-	t.logdet = logdet
+	w := newWhitener(s, t.rec.even)
+	for lo := 0; lo < len(t.rest); {
+		hi := lo + t.piece
+		w.pass(t.buf[lo:hi], t.noise[lo:hi])
+		lo = hi
+	}
+	sum := w.sum
+	t.logdet = w.logdet
 	taken := (dot(white, white) - least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
 	return math.Max(sum-taken, 1e-3*sum)
 }

@@ -8,20 +8,18 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 	var whitened []float64
 	var sse, sst, lag1 float64
 	pIn := 1.0
-	for i, x := range b.explanations() {
-		r := b.e.recs[i]
-		c := out.yardstick(i)
-		f := r.walkResiduals(x, c.group)
-		n := float64(len(r.root.t))
-		m.Samples += len(r.root.t)
+	for i, f := range b.residualFigures() {
+		r, c := b.e.recs[i], out.yardstick(i)
+		n := len(r.root.t)
+		m.Samples += n
 		sse += f.squares
 		sst += c.sst
-		lag1 += f.lag1() * n
+		lag1 += f.lag1() * float64(n)
 		scale := 1 / math.Sqrt(math.Max(r.sigma2, 1e-300)) // logs of different noise on one scale
 		for _, v := range f.white {
 			whitened = append(whitened, v*scale)
 		}
-		reach := max(4, crossLags(r.root, b)/c.group)
+		reach := max(4, crossLags(r.root, b)/groupSize(n))
 		pIn = math.Min(pIn, finite(crossCorrelationP(f.grouped, c.changes, reach), 1))
 	}
 	n := float64(m.Samples)
@@ -39,33 +37,44 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 	m.Noise = out.noise(b)
 }
 
-// explanations is the model with its linear columns, for every record: at the
-// optimum on every row where there is one.
-func (b *bounded) explanations() []explained {
-	e := b.e
-	out := make([]explained, len(e.recs))
-	p := e.eval(b.p.eta, true)
-	for i, r := range e.recs {
-		if b.fine != nil {
-			n := len(b.fine.eta) - 1
-			out[i] = explained{b.st, b.fine.gain, b.fine.eta[:n], b.fine.eta[n], b.fine.beta[i]}
-			continue
-		}
-		_, beta, _ := r.solveLinear(&e.work[i], p.gain)
-		out[i] = explained{b.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
+// residualFigures are those of the optimum, on every row where it was brought
+// there, per record.
+func (b *bounded) residualFigures() []*residualFigures {
+	if b.fine == nil {
+		return b.figures
+	}
+	var out []*residualFigures
+	n := len(b.fine.eta) - 1
+	for i, r := range b.e.recs {
+		f, _ := r.walkResiduals(explained{b.st, b.fine.gain, b.fine.eta[:n], b.fine.eta[n], b.fine.beta[i]})
+		out = append(out, f)
 	}
 	return out
+}
+
+// walkResiduals passes the residuals of x on every row of the full log, and
+// returns their whitener too.
+func (r *record) walkResiduals(x explained) (*residualFigures, *whitener) {
+	f, w := r.newResidualFigures(), newWhitener(r.shape, r.even)
+	r.everyRow(x, func(lo int, left []float64) {
+		f.add(left)
+		w.pass(left, r.root.t[lo:lo+len(left)])
+		f.addWhite(left, lo, len(r.root.t))
+	})
+	return f, w
 }
 
 // testRows is the number of rows above which the misfit is compared with the
 // input in sums over several rows: a slow misfit shows in them just as well.
 const testRows = 5000
 
+// groupSize is the number of rows added up in a log of n.
+func groupSize(n int) int { return max(1, (n+testRows-1)/testRows) }
+
 // yardstick is what the residuals of a record are held against.
 type yardstick struct {
 	sst     float64   // of the temperature about its mean
-	group   int       // rows added up
-	changes []float64 // of the input, added up
+	changes []float64 // of the input, added up in groups of rows
 }
 
 // yardstick returns that of record i, made once.
@@ -78,8 +87,7 @@ func (out *outcome) yardstick(i int) *yardstick {
 	}
 	r := out.recs[i].root
 	n := len(r.t)
-	c := &yardstick{group: max(1, (n+testRows-1)/testRows)}
-	c.changes = groupedChanges(r, c.group)
+	c := &yardstick{changes: groupedChanges(r, groupSize(n))}
 	mean := total(r.y) / float64(n)
 	for _, v := range r.y {
 		c.sst += (v - mean) * (v - mean)
@@ -98,42 +106,39 @@ type residualFigures struct {
 	grouped []float64 // whitened, every so many rows added up
 }
 
-// walkResiduals passes the residuals of x on every row of the full log.
-func (r *record) walkResiduals(x explained, group int) *residualFigures {
+// newResidualFigures begins the sums over a full log.
+func (r *record) newResidualFigures() *residualFigures {
 	n := len(r.root.t)
-	f := &residualFigures{white: make([]float64, 0, min(n, noiseRows)), grouped: make([]float64, 0, n/group+1)}
-	w := newWhitener(r.shape, r.even)
-	inGroup := 0
-	r.everyRow(x, func(lo int, left []float64) {
-		f.add(left)
-		w.pass(left, r.root.t[lo:lo+len(left)])
-		f.white = append(f.white, left[:min(len(left), cap(f.white)-len(f.white))]...)
-		for _, v := range left {
-			if inGroup == 0 {
-				f.grouped = append(f.grouped, 0)
-			}
-			f.grouped[len(f.grouped)-1] += v
-			if inGroup++; inGroup == group {
-				inGroup = 0
-			}
-		}
-	})
-	return f
+	group := groupSize(n)
+	return &residualFigures{
+		white:   make([]float64, 0, min(n, noiseRows)),
+		grouped: make([]float64, (n+group-1)/group),
+	}
 }
 
+// add takes the next rows, before they are whitened.
 func (f *residualFigures) add(left []float64) {
 	if f.n == 0 {
-		f.first, f.last = left[0], 0
+		f.first = left[0]
+	} else {
+		f.lagged += f.last * left[0]
 	}
-	last := f.last
-	for _, v := range left {
-		f.sum += v
-		f.squares += v * v
-		f.lagged += last * v
-		last = v
-	}
-	f.last = last
+	f.sum += total(left)
+	f.squares += dot(left, left)
+	f.lagged += dot(left[:len(left)-1], left[1:])
+	f.last = left[len(left)-1]
 	f.n += len(left)
+}
+
+// addWhite takes the whitened rows lo and after of a log of n.
+func (f *residualFigures) addWhite(left []float64, lo, n int) {
+	f.white = append(f.white, left[:min(len(left), cap(f.white)-len(f.white))]...)
+	group := groupSize(n)
+	for len(left) > 0 {
+		k := min(group-lo%group, len(left))
+		f.grouped[lo/group] += total(left[:k])
+		left, lo = left[k:], lo+k
+	}
 }
 
 // lag1 is the autocorrelation at a lag of one row, about the mean m (see

@@ -18,6 +18,8 @@ type fitted struct {
 	weight []float64
 	sigma2 []float64
 
+	figures []*residualFigures // of every record
+
 	mean   int // parameters of the mean: gain, lags, dead time, linear columns
 	params int // mean and noise parameters
 	loglik float64
@@ -340,7 +342,7 @@ func (s *study) score(f *fitted) {
 	n := 0
 	f.mean = f.e.nl + 2
 	f.params = 0
-	f.shapes, f.weight, f.sigma2 = nil, nil, nil
+	f.shapes, f.weight, f.sigma2, f.figures = nil, nil, nil, nil
 	ts := f.tangents()
 	if f.e.gainFix {
 		f.mean--
@@ -362,7 +364,7 @@ func (s *study) score(f *fitted) {
 			f.mean += f.st.Order()
 		}
 		n += len(r.root.t)
-		f.loglik += r.likelihood(ts[i], f.p.part[i])
+		f.loglik += f.likelihood(i, ts[i])
 		f.sigma2 = append(f.sigma2, r.sigma2)
 		f.params++ // variance
 		if !s.white {
@@ -387,13 +389,14 @@ func (f *fitted) rows() int {
 	return n
 }
 
-// likelihood is the log likelihood of the record under the shape in force,
-// given the model's tangent and the whitened sum of squares of the rows in use.
-func (r *record) likelihood(t *tangent, part float64) float64 {
+// likelihood is the log likelihood of record i under the shape in force,
+// at the model's tangent. It keeps the figures of the residuals it passes.
+func (f *fitted) likelihood(i int, t *tangent) float64 {
+	r := f.e.recs[i]
+	figures, w := r.walkResiduals(t.model)
+	f.figures = append(f.figures, figures)
 	if !r.averagesRows() {
-		return logLikelihood(part, r.filter.logdet, len(r.t))
+		return logLikelihood(f.p.part[i], r.filter.logdet, len(r.t))
 	}
-	w := newWhitener(r.shape, r.even)
-	r.everyRow(t.model, func(lo int, left []float64) { w.pass(left, r.root.t[lo:lo+len(left)]) })
 	return logLikelihood(w.sum, w.logdet, len(r.root.t))
 }
