@@ -19,6 +19,9 @@ type column struct {
 	stepwise     float64 // share of cells equal to the one before; NaN below 5 cells
 	ascending    bool    // numbers that never fall
 	repeats      bool    // text of a few values that keep coming back
+
+	switched bool     // nothing but words such as ON and OFF, or logged as true and false
+	words    []string // some of these words
 }
 
 // class is what most cells of a column are.
@@ -97,6 +100,9 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 			continue
 		}
 		found := bestByName(cols, taken, r)
+		if r == roleInput && len(found) == 0 {
+			found = best(cols, taken, r, isSwitched)
+		}
 		if r == roleInput && len(found) > 1 {
 			if only := stepwiseAmong(cols, found); only >= 0 {
 				found = []int{only}
@@ -112,8 +118,13 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 	}
 	notes = append(notes, assignOptional(cols, &l, taken)...)
 	more, err := assignByContent(cols, &l, taken)
+	if err == nil && cols[l[roleInput]].switched {
+		more = append(more, readSwitched(&cols[l[roleInput]]))
+	}
 	return l, append(notes, more...), err
 }
+
+func isSwitched(c column) bool { return c.switched }
 
 // assignOptional finds the columns that a fit can do without. Of several
 // equal ones none is used, and that is said.
@@ -252,11 +263,15 @@ func pairDate(cols []column, l *layout, taken map[int]bool) {
 
 // bestByName lists the columns not taken that fit a role best.
 func bestByName(cols []column, taken map[int]bool, want role) []int {
+	return best(cols, taken, want, func(c column) bool { return fits(c.class, want) && !(c.switched && want == roleInput) })
+}
+
+func best(cols []column, taken map[int]bool, want role, usable func(c column) bool) []int {
 	best := 0
 	var found []int
 	for i, c := range cols {
 		r, score := roleOf(c)
-		if r != want || taken[i] || !fits(c.class, want) {
+		if r != want || taken[i] || !usable(c) {
 			continue
 		}
 		if score > best {
@@ -291,6 +306,8 @@ func roleOf(c column) (role, int) {
 	electric := slices.Contains([]string{"V", "%", "mA", "W", "kW"}, c.unit)
 	_, clocked := timeUnits[c.unit]
 	switch {
+	case c.switched && hit(roleInput) > 0 && hit(roleInput) >= hit(roleOther) && hit(roleMode) < 2:
+		return roleInput, hit(roleInput)
 	case clocked:
 		return roleTime, 2 + hit(roleTime)
 	case hit(roleRun) > 0:
@@ -357,13 +374,10 @@ func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, erro
 		if l[r] >= 0 {
 			continue
 		}
-		var left, fit []int
-		for i, c := range cols {
-			if known, _ := roleOf(c); taken[i] || known != roleNone || c.class != numbers {
-				continue
-			}
-			left = append(left, i)
-			if isStepwise(c) == (r == roleInput) {
+		left := unnamed(cols, taken, isNumeric)
+		var fit []int
+		for _, i := range left {
+			if isStepwise(cols[i]) == (r == roleInput) {
 				fit = append(fit, i)
 			}
 		}
@@ -373,6 +387,11 @@ func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, erro
 		}
 		if len(fit) == 0 && r == roleInput && len(left) > 1 {
 			fit = left
+		}
+		if r == roleInput && (len(fit) == 0 || len(left) == 1 && l[other] < 0) {
+			if words := unnamed(cols, taken, isSwitched); len(words) > 0 {
+				fit = words
+			}
 		}
 		switch {
 		case len(fit) == 0:
@@ -385,6 +404,18 @@ func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, erro
 		notes = append(notes, contentNote(cols[fit[0]], r))
 	}
 	return notes, nil
+}
+
+func isNumeric(c column) bool { return c.class == numbers && !c.switched }
+
+// unnamed lists the columns whose name says nothing.
+func unnamed(cols []column, taken map[int]bool, usable func(c column) bool) (left []int) {
+	for i, c := range cols {
+		if known, _ := roleOf(c); !taken[i] && known == roleNone && usable(c) {
+			left = append(left, i)
+		}
+	}
+	return left
 }
 
 func ambiguous(cols []column, found []int, r role) error {

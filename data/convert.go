@@ -19,6 +19,10 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 	unit := info.unit(roleInput)
 	if o.InputUnit != "" {
 		unit = unitOption(o.InputUnit)
+		if info.switched() && unit != "%" {
+			return fmt.Errorf("column %q holds words such as ON and OFF, which are read as 100 and 0 %%: instead of --input-unit %s say what 0 and 100 %% are, such as --input-span 0..230V",
+				info.label(roleInput), o.InputUnit)
+		}
 	}
 	run.Units.Input = unit
 	u := r.v[roleInput]

@@ -14,6 +14,8 @@ type field struct {
 	index int
 	role  role
 	unit  string // that cells may carry behind the number
+
+	switched bool // the cells are words: ON, OFF
 }
 
 // csvReader reads the rows of a text into tables, one for each run.
@@ -38,6 +40,7 @@ type csvReader struct {
 	stamp   []byte
 	repeats int // header lines met again
 	nulRows int
+	word    wordAmongNumbers
 	firstNo map[string]int // line of the first row dropped, by reason
 }
 
@@ -88,7 +91,15 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 		return tables, info, nil
 	}
 	info.clock, info.at, info.open = c.clock, c.at, c.open
-	return c.tables, info, c.tooManyDropped()
+	return c.tables, info, c.refuse()
+}
+
+// refuse tells what in the rows forbids to use them.
+func (c *csvReader) refuse() error {
+	if err := c.tooManyDropped(); err != nil {
+		return err
+	}
+	return c.word.err(c.path)
 }
 
 // plan decides which columns are read and how.
@@ -153,7 +164,7 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 	}
 	for r, i := range c.at {
 		if i >= 0 {
-			c.fields = append(c.fields, field{index: i, role: role(r), unit: c.d.cols[i].unit})
+			c.fields = append(c.fields, field{index: i, role: role(r), unit: c.d.cols[i].unit, switched: c.d.cols[i].switched})
 			c.last = max(c.last, i)
 		}
 	}
@@ -222,6 +233,9 @@ func (c *csvReader) fast(text []byte, line int) bool {
 	}
 	i, col := 0, 0
 	for _, f := range c.fields {
+		if f.switched && f.role == roleInput {
+			return false
+		}
 		for ; col < f.index; col++ {
 			n := bytes.IndexByte(text[i:], c.d.delim)
 			if n < 0 {
@@ -362,11 +376,18 @@ func (c *csvReader) values(tb *table, r *record) {
 		switch f.role {
 		case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
 			v, unit, ok := c.d.number(cell)
+			if f.switched {
+				unit = ""
+				v, ok = switchOf(cell)
+			}
 			if ok && (unit == "" || unit == f.unit) {
 				r.v[f.role] = v
 			} else if f.role == roleInput || f.role == roleTemp {
 				kind, _ := missingKind(cell)
 				count(tb.counts.missing, kind, 1)
+			}
+			if f.role == roleInput && !ok {
+				c.word.look(cell, r.line)
 			}
 		case roleMode:
 			r.auto = modeOf(cell)

@@ -134,7 +134,7 @@ func findDelimiter(lines []line) (delim byte, fields int) {
 	for _, d := range delimiters {
 		type tally struct{ goodBytes, good, all float64 }
 		byCount := map[int]*tally{}
-		for _, l := range lines[max(0, len(lines)-400):] {
+		for _, l := range lines[max(len(lines)/2, len(lines)-400):] { // the header is no measure
 			if isComment(l.text, d) {
 				continue
 			}
@@ -377,11 +377,17 @@ func (d *dialect) isData(l line) bool {
 			good++
 		case k == texts && good == 0:
 			return false
-		case k == texts:
+		case k == texts && !isWord(c):
 			bad++
 		}
 	}
 	return good > bad && len(l.cells) >= min(d.fields, 2)
+}
+
+// isWord tells a word that stands for a value: ON, MAN.
+func isWord(cell []byte) bool {
+	_, is := switchOf(cell)
+	return is || modeOf(cell) >= 0
 }
 
 // findHeader looks upward from the first row of data for a unit row and a
@@ -398,9 +404,14 @@ func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 		rows = append(rows, above[k])
 	}
 	if len(rows) > 1 {
-		if u, ok := unitRow(rows[0].cells); ok && len(rows[1].cells) > 1 && !isUnitRow(rows[1].cells) {
+		under, isUnder := unitRow(rows[0].cells)
+		over, isOver := unitRow(rows[1].cells)
+		switch {
+		case isUnder && !isOver:
 			d.header = append(d.header, rows[0].text)
-			units, rows = u, rows[1:]
+			units, rows = under, rows[1:]
+		case isOver && !isUnder && len(over) == d.fields:
+			units = over
 		}
 	}
 	if len(rows) == 0 {
@@ -487,6 +498,7 @@ func (d *dialect) inspect(rows []line) {
 		c := &d.cols[i]
 		var s columnStats
 		words := map[string]int{}
+		var onOff switchTally
 		for _, l := range rows {
 			if i >= len(l.cells) || len(l.cells[i]) == 0 {
 				continue
@@ -505,6 +517,7 @@ func (d *dialect) inspect(rows []line) {
 				}
 			case texts:
 				words[string(cell)]++
+				onOff.add(cell)
 			case stamps:
 				dated, timed := stampParts(cell)
 				c.dated, c.timed = c.dated || dated, c.timed || timed
@@ -512,6 +525,9 @@ func (d *dialect) inspect(rows []line) {
 		}
 		c.stepwise, c.ascending = s.stepwise(), s.ascending()
 		c.repeats = len(words) > 0 && 2*len(words) <= sum(words)
+		if c.class == texts {
+			c.switched, c.words = onOff.switched(), onOff.seen
+		}
 	}
 }
 

@@ -54,14 +54,12 @@ func ExampleRead_span() {
 
 // Folders and patterns become files in a fixed order.
 func ExampleExpand() {
-	files, err := data.Expand([]string{filepath.Join("..", "testdata", "logs", "quirks", "words-*.csv")})
+	files, err := data.Expand([]string{filepath.Join("..", "testdata", "logs", "quirks", "thousands-*.csv")})
 	for _, f := range files {
 		fmt.Println(filepath.Base(f), err)
 	}
 	// Output:
-	// words-dutch.csv <nil>
-	// words-french.csv <nil>
-	// words-german.csv <nil>
-	// words-italian.csv <nil>
-	// words-spanish.csv <nil>
+	// thousands-apostrophe.csv <nil>
+	// thousands-comma.csv <nil>
+	// thousands-dot.csv <nil>
 }

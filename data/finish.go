@@ -36,6 +36,12 @@ func (r *reading) unit(x role) string {
 	return ""
 }
 
+// switched tells that the input is words such as ON and OFF.
+func (r *reading) switched() bool {
+	i := r.at[roleInput]
+	return i >= 0 && r.cols[i].switched
+}
+
 // rows are the columns of one run, each in one piece.
 type rows struct {
 	t     []int64 // ns
@@ -199,7 +205,7 @@ func (r *rows) holdInput() error {
 	u := r.v[roleInput]
 	first := slices.IndexFunc(u, func(v float64) bool { return v == v })
 	if first < 0 {
-		return fmt.Errorf("the input column holds no value%s", commonest(r.missing))
+		return fmt.Errorf("the input column holds no value%s: an input is numbers, or ON and OFF", commonest(r.missing))
 	}
 	unseen := r.unseenChange(first)
 	if held := hold(u); held > 0 {

@@ -171,7 +171,7 @@ func FuzzRow(f *testing.F) {
 				clock: &clock{kind: elapsed, unit: nsSecond}, byName: map[string]*table{}, firstNo: map[string]int{}}
 			c.at = noLayout()
 			c.at[roleTime], c.at[roleInput], c.at[roleTemp] = 0, 1, 2
-			c.fields, c.last = []field{{0, roleTime, ""}, {1, roleInput, ""}, {2, roleTemp, ""}}, 2
+			c.fields, c.last = []field{{index: 0, role: roleTime}, {index: 1, role: roleInput}, {index: 2, role: roleTemp}}, 2
 			if fast {
 				ok := c.fast([]byte(text), 1)
 				return c.table(""), ok

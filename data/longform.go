@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 )
 
 // maxTags bounds how many tags a log in long form may hold.
@@ -25,7 +26,7 @@ func isLong(cols []column, o *Options) bool {
 	for _, c := range cols {
 		r, _ := roleOf(c)
 		switch {
-		case c.class == texts && r != roleStatus && r != roleMode && c.repeats:
+		case c.class == texts && r != roleStatus && r != roleMode && c.repeats && !c.switched:
 			tags++
 		case c.class == numbers && r != roleTime && r != roleStatus && r != roleOther:
 			values++
@@ -108,6 +109,7 @@ type series struct {
 	tb       *table // columns: the value as input, the mode
 	sample   []string
 	stats    columnStats
+	onOff    switchTally // of the cells that are no numbers
 }
 
 // add takes one row; the value may be a number, a mode or a word.
@@ -128,6 +130,7 @@ func (l *longReader) add(c *csvReader, run string, r *record) {
 		r.v[roleInput] = v
 		s.stats.add(v)
 	} else {
+		s.onOff.add(cell)
 		kind, _ := missingKind(cell)
 		count(s.tb.counts.missing, kind, 1)
 	}
@@ -163,6 +166,11 @@ func (l *longReader) tables(c *csvReader, o *Options, info *reading) ([]*table, 
 	}
 	at, notes, err := assign(cols, o, true)
 	if err != nil {
+		if !o.Long {
+			tag := c.d.cols[c.at[roleTag]]
+			return nil, fmt.Errorf("the rows were taken for (time, tag, value) because column %q holds words; among these tags, %w; if it is the input instead, write numbers, or ON and OFF",
+				tag.label, err)
+		}
 		return nil, fmt.Errorf("among the tags, %w", err)
 	}
 	info.notes = append(info.notes, notes...)
@@ -205,6 +213,7 @@ func (l *longReader) columns() []column {
 		col.class = numbers
 		if s.stats.n == 0 {
 			col.class = texts
+			col.switched, col.words = s.onOff.switched(), s.onOff.seen
 		}
 		cols = append(cols, col)
 	}
@@ -231,6 +240,11 @@ func (l *longReader) merge(run string, cols []column, at layout, info *reading, 
 		p, err := s.settled(info)
 		if err != nil {
 			return nil, fmt.Errorf("tag %q: %w", s.tag, err)
+		}
+		if r == roleInput {
+			if err := s.switchOver(p, cols[i].switched); err != nil {
+				return nil, err
+			}
 		}
 		parts[r] = p
 		tb.counts.add(p.counts, r == roleInput || r == roleTemp)
@@ -316,6 +330,32 @@ func (l *longReader) lay(tb *table, parts [numRoles]*rows) {
 		}
 		tb.add(&rec, false)
 	}
+}
+
+// switchOver reads the words of a switched tag; in a tag of numbers such words
+// are an error.
+func (s *series) switchOver(p *rows, switched bool) error {
+	if !switched {
+		if s.onOff.any() {
+			return fmt.Errorf("tag %q is the input and holds the words %s among numbers: write 0 where the drive was off and its full value where it was on",
+				s.tag, strings.Join(s.onOff.seen, ", "))
+		}
+		return nil
+	}
+	for i, on := range p.auto {
+		p.v[roleInput][i] = math.NaN()
+		if on >= 0 {
+			p.v[roleInput][i] = full * float64(on)
+		}
+	}
+	for kind := range p.missing {
+		if word, is := strings.CutPrefix(kind, `text "`); is || kind == "OPEN" {
+			if _, is := switchOf([]byte(strings.TrimSuffix(word, `"`))); is {
+				delete(p.missing, kind)
+			}
+		}
+	}
+	return nil
 }
 
 var errTagEmpty = errors.New("holds no record")

@@ -40,6 +40,7 @@ func (s *stampSeries) note(code string, row int, format string, args ...any) {
 func (s *stampSeries) mend() error {
 	if strictlyAscending(s.t) {
 		s.springForward()
+		s.noteRounded()
 		return nil
 	}
 	s.reasons = map[string]int{}
@@ -235,124 +236,6 @@ func (s *stampSeries) springForward() {
 		}
 		s.t[i] -= offset
 	}
-}
-
-// spreadOrDrop treats rows with equal stamps: where they are the rule the
-// stamps are coarser than the sampling and are spread evenly, else they are
-// repetitions and all but the first go.
-func (s *stampSeries) spreadOrDrop() {
-	kept, equal := 0, 0
-	last := int64(noTime)
-	for i, t := range s.t {
-		if s.drop != nil && s.drop[i] {
-			continue
-		}
-		if kept > 0 && t == last {
-			equal++
-		}
-		kept++
-		last = t
-	}
-	if equal == 0 {
-		return
-	}
-	if 3*equal > kept && !s.copied() {
-		s.spread()
-		if strictlyAscending(s.t) {
-			return
-		}
-	}
-	prev := -1
-	for i, t := range s.t {
-		if s.drop != nil && s.drop[i] {
-			continue
-		}
-		if prev >= 0 && t == s.t[prev] {
-			if s.same(i, prev) {
-				s.dropRow(i, "repeated row")
-			} else {
-				s.dropRow(i, "repeated time")
-			}
-			continue
-		}
-		prev = i
-	}
-}
-
-// enoughChanges is how many changes of value from stamp to stamp it takes to
-// tell copied rows from samples between stamps: of samples at least every
-// second change would fall inside a stamp, so that none of eight does is no
-// chance (1 in 256).
-const enoughChanges = 8
-
-// copied tells that rows with equal stamps are one row written again, as a
-// join of two exports leaves them: values change from stamp to stamp, and
-// never inside one. Spread, they would pass for twice the samples.
-func (s *stampSeries) copied() bool {
-	changes, prev := 0, -1
-	for i, t := range s.t {
-		if s.drop != nil && s.drop[i] {
-			continue
-		}
-		if prev >= 0 && !s.same(i, prev) {
-			if t == s.t[prev] {
-				return false
-			}
-			changes++
-		}
-		prev = i
-	}
-	return changes >= enoughChanges
-}
-
-// spread divides the time from each stamp to the next among the rows that
-// share it. The first and the last stamp may be cut short: their rows keep
-// the spacing of a whole one.
-func (s *stampSeries) spread() {
-	var rows []int
-	for i := range s.t {
-		if s.drop == nil || !s.drop[i] {
-			rows = append(rows, i)
-		}
-	}
-	type group struct{ lo, hi int } // of rows
-	var groups []group
-	for k := range rows {
-		if k == 0 || s.t[rows[k]] != s.t[rows[k-1]] {
-			groups = append(groups, group{k, k})
-		}
-		groups[len(groups)-1].hi = k + 1
-	}
-	if len(groups) < 2 {
-		return
-	}
-	var sizes, widths []int64
-	for g := range groups {
-		sizes = append(sizes, int64(groups[g].hi-groups[g].lo))
-		if g > 0 {
-			widths = append(widths, s.t[rows[groups[g].lo]]-s.t[rows[groups[g-1].lo]])
-		}
-	}
-	slices.Sort(sizes)
-	slices.Sort(widths)
-	whole, width := sizes[len(sizes)/2], widths[len(widths)/2]
-	for g, gr := range groups {
-		n := int64(gr.hi - gr.lo)
-		start, from, per, wide := s.t[rows[gr.lo]], int64(0), n, width
-		if g+1 < len(groups) { // a stamp never reaches beyond the next one
-			wide = min(wide, s.t[rows[groups[g+1].lo]]-start)
-		}
-		if (g == 0 || g == len(groups)-1) && n < whole {
-			per = whole
-			if g == 0 {
-				from = whole - n
-			}
-		}
-		for k := gr.lo; k < gr.hi; k++ {
-			s.t[rows[k]] = start + (from+int64(k-gr.lo))*wide/per
-		}
-	}
-	s.note("clock-spread", -1, "%d rows share each stamp of the clock (every %v); they were spread evenly between the stamps", whole, time.Duration(width))
 }
 
 // maxNotes bounds the notes of one kind.

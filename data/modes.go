@@ -21,6 +21,9 @@ func modeOf(cell []byte) int8 {
 	case slices.Contains(manualWords, word):
 		return 0
 	}
+	if on, ok := switchOf(cell); ok {
+		return int8(on / full)
+	}
 	return -1
 }
 

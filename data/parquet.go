@@ -163,7 +163,7 @@ func (p *parquetReader) read(ctx context.Context, o *Options) ([]*table, *readin
 		return tables, info, nil
 	}
 	info.clock, info.at, info.open = c.clock, c.at, c.open
-	return c.tables, info, c.tooManyDropped()
+	return c.tables, info, c.refuse()
 }
 
 // hint adds what to do about the two kinds of files that cannot be read.
@@ -213,6 +213,9 @@ func (p *parquetReader) sample(o *Options) (*dialect, error) {
 	for i, c := range p.columns {
 		col := column{index: i, label: c.name, class: c.class}
 		col.name, col.unit = splitNameUnit(c.name)
+		if c.truth {
+			col.switched, col.words = true, []string{"true", "false"}
+		}
 		d.cols[i] = col
 		if r, _ := roleOf(col); len(p.columns) > wide && r == roleNone && !named(o, c.name) {
 			continue
@@ -263,6 +266,7 @@ func (p *parquetReader) readRows(ctx context.Context) error {
 	var used []*parquetColumn
 	for _, f := range c.fields {
 		col := p.columns[f.index]
+		col.switched = f.role == roleInput && f.switched
 		col.role, col.isTime = f.role, (f.role == roleTime || f.role == roleDate) && c.long == nil
 		col.clock, col.format = c.clock, c.d.format
 		if col.utc && f.role == roleTime {
@@ -348,6 +352,9 @@ func (p *parquetReader) row(used []*parquetColumn, k, number int) {
 	for _, col := range used {
 		if (col.role == roleInput || col.role == roleTemp) && r.v[col.role] != r.v[col.role] {
 			count(tb.counts.missing, col.missing(k), 1)
+			if col.role == roleInput && col.kind == asText {
+				c.word.look(col.texts[k], number)
+			}
 		}
 	}
 	if bad && r.v[roleTemp] == r.v[roleTemp] {

@@ -24,11 +24,14 @@ type parquetColumn struct {
 	utc   bool  // the stamps are UTC, not local time of an unknown place
 	scale int   // of a decimal
 	wide  int   // bytes of a fixed-length value
+	truth bool  // values are true and false
 
 	role   role
 	isTime bool // the column is the clock
-	clock  *clock
-	format numberFormat
+
+	switched bool // the values are those of a switched input
+	clock    *clock
+	format   numberFormat
 
 	reader file.ColumnChunkReader
 	maxDef int16
@@ -101,7 +104,9 @@ func newParquetColumn(d *schema.Column, index int) *parquetColumn {
 		c.kind = asInteger
 	case parquet.Types.Int96:
 		c.class, c.kind, c.utc = stamps, asInstant, true
-	case parquet.Types.Float, parquet.Types.Double, parquet.Types.Boolean:
+	case parquet.Types.Boolean:
+		c.truth = true
+	case parquet.Types.Float, parquet.Types.Double:
 	case parquet.Types.ByteArray:
 		c.class, c.kind = texts, asText
 	default:
@@ -326,6 +331,15 @@ func (c *parquetColumn) number(k int) float64 {
 		v = float64(c.ints[k])
 	case asText:
 		if x, ok := c.format.parse(c.texts[k]); ok {
+			v = x
+		}
+	}
+	switch {
+	case c.switched && c.truth:
+		v *= full
+	case c.switched:
+		v = math.NaN()
+		if x, ok := switchOf(c.texts[k]); ok {
 			v = x
 		}
 	}

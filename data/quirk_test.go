@@ -139,6 +139,21 @@ var quirks = []quirk{
 	{file: "words-spanish.csv", also: setpoint60},
 	{file: "words-italian.csv", also: setpoint60},
 	{file: "words-dutch.csv", also: setpoint60},
+	{file: "words-portuguese.csv", also: setpoint60},
+	{file: "words-polish.csv", also: setpoint60},
+	{file: "words-czech.csv", also: setpoint60},
+	{file: "words-swedish.csv", also: setpoint60},
+	{file: "words-danish.csv", also: setpoint60},
+	{file: "words-finnish.csv", also: setpoint60},
+	{file: "words-turkish.csv", also: setpoint60},
+	{file: "words-japanese.csv", also: setpoint60},
+	{file: "words-chinese.csv", also: setpoint60},
+	{file: "names-are-units.csv"},
+	{file: "names-are-units-min.csv", within: 1e-7}, // minutes to nine decimals
+	{file: "percent-in-name.csv", u: []float64{0, 0, 15, 15, 15, 15, 15, 15}, input: "%", also: setpoint60},
+	{file: "unit-row-above.csv"},
+	{file: "tab-blank-first-unit.tsv", u: []float64{0, 0, 15, 15, 15, 15, 15, 15}, input: "%", start: "2026-01-25T10:00:00Z", notes: []string{local}, also: setpoint60},
+	{file: "time-last.tsv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "many-roles.csv", also: func(t *testing.T, r *Run) {
 		same(t, "setpoint", r.Setpoint, with(ramp(8, func(int) float64 { return 60 }), 0, nan), 0)
 		same(t, "airflow", r.Airflow, ramp(8, func(i int) float64 { return 400 + float64(i) }), 0)
@@ -197,6 +212,11 @@ var quirks = []quirk{
 	{file: "midnight.csv", notes: []string{"clock-midnight"}},
 	{file: "whole-seconds.csv", start: "2026-01-05T10:00:00Z", notes: []string{"clock-spread", local}},
 	{file: "whole-seconds-cut.csv", start: "2026-01-05T10:00:00.5Z", notes: []string{"clock-spread", local}},
+	{file: "whole-seconds-uneven.csv", t: ramp(40, func(i int) float64 { return 0.7 * float64(i) }), u: unevenU, y: unevenY, within: 1e-9,
+		start: "2026-01-25T10:00:00.05Z", notes: []string{"clock-spread", local}},
+	{file: "whole-seconds-jitter.csv", t: jitterT, u: unevenU, y: unevenY, within: 1, start: "2026-01-25T10:00:00Z", notes: []string{"clock-coarse", local}},
+	{file: "seconds-rounded.csv", t: ramp(40, func(i int) float64 { return math.Floor(1.2*float64(i) + 1e-9) }), u: unevenU, y: unevenY,
+		start: "2026-01-25T10:00:00Z", notes: []string{"clock-coarse", local}},
 	{file: "hour-back.csv", start: "2026-10-25T02:59:58Z", notes: []string{"clock-jump-back", local}},
 	{file: "hour-forward.csv", start: "2026-03-29T01:59:58Z", notes: []string{"clock-jump-forward", local}},
 	{file: "rows-repeated.csv", dropped: map[string]int{"repeated row": 3}},
@@ -243,6 +263,18 @@ var quirks = []quirk{
 	{file: "switching-drive.csv", o: Options{Cycle: time.Second}, t: ramp(32, func(i int) float64 { return float64(i) / 4 }),
 		u: ramp(32, func(i int) float64 { return []float64{0, 25, 25, 25, 50, 50, 50, 50}[i/4] }),
 		y: ramp(32, func(i int) float64 { return math.Round(240+float64(i)) / 10 }), input: "%", notes: []string{"cycle-mean"}},
+	{file: "switched-on-off.csv", u: switchedU, input: "%", notes: []string{"input-switched"}},
+	{file: "switched-on-off.csv", o: Options{InputUnit: "V"}, wrong: "instead of --input-unit V say what 0 and 100 % are, such as --input-span 0..230V"},
+	{file: "switched-on-off.csv", o: Options{InputCol: "heater", InputUnit: "%"}, u: switchedU, input: "%", notes: []string{"input-switched"}},
+	{file: "switched-german.csv", u: switchedU, input: "%", notes: []string{"input-switched"}},
+	{file: "switched-french.csv", u: switchedU, input: "%", notes: []string{"input-switched"}},
+	{file: "switched-contact.csv", o: Options{InputSpan: &Span{Low: 0, High: 230, Unit: "V"}}, u: with(ramp(8, func(int) float64 { return 230 }), 0, 0, 1, 0), notes: []string{"input-switched"}},
+	{file: "switched-true.csv", u: switchedU, input: "%", notes: []string{"input-switched", "input-held"}, missing: map[string]int{"blank": 1}},
+	{file: "switched-beside-number.csv"},
+	{file: "switched-long.csv", u: switchedU, input: "%", notes: []string{"input-switched", "long-form"}},
+	{file: "off-among-numbers.csv", wrong: `off-among-numbers.csv:2: the input is "OFF" among numbers: write 0 where the drive was off`},
+	{file: "off-among-numbers-long.csv", wrong: `tag "drive_V" is the input and holds the words OFF among numbers`},
+	{file: "high-low.csv", wrong: `because column "heater" holds words; among these tags, 2 columns could be the input: "LOW"`},
 	{file: "thermocouple.csv", t: baseT[:5], u: baseU[:5], y: []float64{100, 100, 200, nan, 200}, within: 0.013, // half of the table's last digit, twice, over 0.04 mV/K
 		missing: map[string]int{"OPEN": 1}},
 
@@ -257,6 +289,12 @@ var quirks = []quirk{
 				t.Errorf("automatic %v, want %v", r.Auto, want)
 			}
 		}},
+	{file: "long-words-first.csv", input: "unit", temp: "unit", start: "2026-01-25T10:00:00Z", notes: []string{"long-form", "input-unit-unknown", "unit-unknown"},
+		also: func(t *testing.T, r *Run) {
+			if r.Auto == nil || r.Auto[7] {
+				t.Errorf("automatic %v, want manual throughout", r.Auto)
+			}
+		}},
 	{file: "exception-wide.csv", t: []float64{0, 0.7, 1, 1.3, 2.9, 3.5}, u: []float64{0, 0, 1.5, 1.5, 1.5, 1.5},
 		y: []float64{24.1, 24.1, nan, 24.3, 26.7, 28}, notes: []string{"input-held"}, missing: map[string]int{"blank": 5}},
 }
@@ -266,9 +304,22 @@ func half(i int) float64 { return float64(i) / 2 }
 var (
 	headless  = ramp(24, func(i int) float64 { return []float64{0, 1.5}[min(1, i/3)] })
 	headlessY = ramp(24, func(i int) float64 { return math.Round(2400+10*float64(i)+float64(i*i%5)) / 100 })
+	switchedU = with(ramp(8, func(int) float64 { return 100 }), 0, 0, 1, 0)
+	unevenU   = ramp(40, func(i int) float64 { return []float64{0, 1.5}[min(1, i/12)] })
+	unevenY   = ramp(40, func(i int) float64 { return float64(2400+10*i+i*i%7) / 100 })
+	jitterT   = sums(40, func(i int) float64 { return []float64{0.1, 0.9, 0.3, 0.1, 0.1, 0.6, 0.1}[i*i%7] })
 	spikeU    = ramp(40, func(i int) float64 { return []float64{0, 1.5}[i/20] })
 	spikeY    = with(ramp(40, func(i int) float64 { return float64(240+i%3) / 10 }), 10, 79.1)
 )
+
+// sums are the running sums of steps, from 0.
+func sums(n int, step func(i int) float64) []float64 {
+	out := make([]float64, n)
+	for i := 1; i < n; i++ {
+		out[i] = out[i-1] + step(i-1)
+	}
+	return out
+}
 
 func fahrenheit(v []float64) []float64 {
 	return ramp(len(v), func(i int) float64 { return (v[i] - 32) / 1.8 })

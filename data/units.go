@@ -22,8 +22,8 @@ var unitNames = map[string][]string{
 	"K":    {"k", "kelvin"},
 
 	"ns":  {"ns"},
-	"us":  {"us", "µs", "μs", "usec"},
-	"ms":  {"ms", "msec", "msecs", "millisecond", "milliseconds", "millisekunden"},
+	"us":  {"us", "µs", "μs", "usec", "micros", "microsecond", "microseconds"},
+	"ms":  {"ms", "msec", "msecs", "millis", "millisecond", "milliseconds", "millisekunden"},
 	"s":   {"s", "sec", "secs", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"},
 	"min": {"min", "mins", "minute", "minutes", "minuten", "minutos", "minuti"},
 	"h":   {"h", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"},
@@ -52,6 +52,9 @@ func canonicalUnit(written string) (name string, known bool) {
 // it is known, as written in brackets when not, "" when there is none.
 func splitNameUnit(label string) (name, unit string) {
 	label = strings.TrimSpace(label)
+	if u, known := canonicalUnit(label); known && !isSymbol(label) {
+		return label, u
+	}
 	for _, pair := range []string{"[]", "()", "{}", "<>"} {
 		open := strings.LastIndexByte(label, pair[0])
 		end := strings.LastIndexByte(label, pair[1])
@@ -77,12 +80,21 @@ func splitNameUnit(label string) (name, unit string) {
 			return strings.TrimSpace(label[:i]), u
 		}
 	}
+	if name := strings.Trim(label, "% "); name != "" && name != label && strings.Contains(label, "%") { // "CO%", "% output"
+		return name, "%"
+	}
 	if i := strings.IndexAny(label, "°º℃℉"); i > 0 {
 		if u, known := canonicalUnit(label[i:]); known {
 			return strings.TrimSpace(label[:i]), u
 		}
 	}
 	return label, ""
+}
+
+// isSymbol tells the names of units that are names of quantities as well: mv is
+// the manipulated variable, w the setpoint, c and k could be anything.
+func isSymbol(label string) bool {
+	return len(label) == 1 && !strings.Contains("VCFs%", label) || strings.EqualFold(label, "mV")
 }
 
 // isFlowUnit tells that a name ends like the first half of m3/h or kg/s.

@@ -50,12 +50,14 @@ type vocabulary struct {
 }
 
 // words of English, German, French, Spanish, Italian, Dutch, Portuguese,
-// Polish and Swedish.
+// Polish, Czech, Hungarian, Swedish, Danish, Norwegian, Finnish, Turkish,
+// Russian, Japanese and Chinese.
 var words = [numRoles]vocabulary{
 	roleTime: {
-		whole: []string{"t", "ts", "tid", "ora", "data", "czas"},
+		whole: []string{"t", "ts", "tid", "ora", "data", "czas", "čas", "idő", "aika"},
 		words: []string{"time", "timestamp", "datetime", "date", "elapsed", "clock", "zeit", "uhrzeit", "datum", "zeitstempel",
 			"temps", "heure", "horodatage", "hora", "fecha", "tiempo", "tempo", "orario", "tijd", "tijdstip", "data/hora", "czas", "tidpunkt",
+			"čas", "cas", "tid", "idő", "aika", "zaman", "tarih", "время", "時刻", "時間", "日時", "时间", "日期",
 			"sec", "secs", "second", "seconds", "sekunden", "millis", "msec", "epoch", "unix", "instant"},
 	},
 	roleInput: {
@@ -64,32 +66,38 @@ var words = [numRoles]vocabulary{
 			"spannung", "heizung", "heizspannung", "stellgröße", "stellgroesse", "stellwert", "stellgrad", "ausgang", "leistung", "ansteuerung",
 			"tension", "chauffage", "chauffe", "commande", "sortie", "puissance", "tensión", "voltaje", "calefactor", "calentador", "salida", "potencia",
 			"tensione", "riscaldatore", "uscita", "comando", "spanning", "verwarming", "uitgang", "tensão", "aquecedor", "saída",
-			"napięcie", "grzałka", "spänning", "värmare", "utsignal"},
+			"napięcie", "grzałka", "spänning", "värmare", "utsignal",
+			"heat", "heating", "relay", "ssr", "contactor", "triac", "thyristor", "scr", "relais", "schütz", "heizer", "heizstab", "relé", "relè", "stycznik",
+			"napětí", "topení", "ohřev", "výkon", "feszültség", "fűtés", "spænding", "spenning", "varme", "varmelegeme", "effekt", "jännite", "lämmitin", "lämmitys", "teho",
+			"gerilim", "ısıtıcı", "напряжение", "нагреватель", "мощность", "電圧", "ヒータ", "出力", "操作量", "电压", "加热", "功率", "输出"},
 	},
 	roleTemp: {
 		whole: []string{"y", "pv", "temp", "x", "t_out", "tc", "tout"},
 		words: []string{"temperature", "temp", "outlet", "thermocouple", "tc", "pv", "process", "measurement",
 			"temperatur", "lufttemperatur", "zuluft", "zulufttemperatur", "supply_air", "austritt", "austrittstemperatur", "istwert", "thermoelement", "messwert", "abluft",
 			"température", "soufflage", "mesure", "temperatura", "termopar", "salida_aire", "medida", "misura", "termocoppia",
-			"temperatuur", "thermokoppel", "uitlaat", "meetwaarde", "medição", "pomiar", "temperaturen", "ärvärde", "utlopp"},
+			"temperatuur", "thermokoppel", "uitlaat", "meetwaarde", "medição", "pomiar", "temperaturen", "ärvärde", "utlopp",
+			"teplota", "hőmérséklet", "lämpötila", "sıcaklık", "sıcaklığı", "температура", "温度"},
 	},
 	roleSetpoint: {
 		whole: []string{"r", "sp", "w", "ref", "rsp", "lsp"},
 		words: []string{"setpoint", "set-point", "sp", "setpt", "set", "reference", "target", "wanted", "demand",
-			"sollwert", "soll", "führungsgröße", "consigne", "consigna", "riferimento", "setpunt", "gewenst", "referência", "zadana", "börvärde", "referens"},
+			"sollwert", "soll", "führungsgröße", "consigne", "consigna", "riferimento", "setpunt", "gewenst", "referência", "zadana", "börvärde", "referens",
+			"vorgabe", "ajuste", "deseado", "deseada", "desejado", "desejada", "impostata", "impostato", "instelwaarde", "nastawa", "žádaná", "zadaná", "alapjel",
+			"inställd", "sætpunkt", "settpunkt", "ønsket", "asetusarvo", "ayar", "уставка", "задание", "設定", "目標", "设定", "设置", "目标"},
 	},
 	roleMode: {
 		whole: []string{"mode", "a/m", "auto", "am"},
 		words: []string{"mode", "auto/man", "automan", "automatic", "betriebsart", "automatik", "modus", "modo", "modalità", "tryb", "läge"},
 	},
 	roleAirflow: {
-		words: []string{"airflow", "flow", "air_velocity", "velocity", "volumenstrom", "luftstrom", "durchfluss", "luftmenge", "débit", "debit",
+		words: []string{"airflow", "flow", "air_velocity", "velocity", "volumenstrom", "风量", "流量", "風量", "luftstrom", "durchfluss", "luftmenge", "débit", "debit",
 			"caudal", "portata", "luchtstroom", "debiet", "vazão", "przepływ", "flöde", "luftflöde"},
 	},
 	roleInlet: {
 		whole: []string{"t_in", "tin"},
 		words: []string{"inlet", "intake", "eintritt", "ansaugung", "eintrittstemperatur", "entrée", "entree", "entrada",
-			"ingresso", "inlaat", "wlot", "inlopp"},
+			"ingresso", "inlaat", "wlot", "inlopp", "vstup", "入口", "进口", "进风"},
 	},
 	roleCold: {
 		whole: []string{"cj", "cjc", "cjt"},
@@ -109,7 +117,7 @@ var words = [numRoles]vocabulary{
 	roleOther: {
 		words: []string{"battery", "ambient", "room", "sheath", "element", "board", "cpu", "panel", "supply_voltage", "mains", "humidity",
 			"pressure", "raum", "umgebung", "batterie", "feuchte", "druck", "index", "row", "record", "nr", "no", "serial", "current", "ampere",
-			"error", "deviation", "alarm"},
+			"error", "deviation", "alarm", "fault", "trip", "interlock", "fan", "blower", "pump", "lamp", "door", "rh"},
 	},
 }
 
