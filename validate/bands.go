@@ -7,10 +7,12 @@ const runaway = -1
 
 func runawayFigures() figures {
 	inf := math.Inf(1)
-	return figures{
+	f := figures{
 		settling: inf, overshoot: inf, iae: inf, deviation: inf, peakTemp: inf,
 		peakInput: inf, lowInput: -inf, travel: inf, moves: runaway,
 	}
+	f.noisy.settling, f.noisy.overshoot = inf, inf
+	return f
 }
 
 // metrics writes figures as they stand in files: null where there is none.
@@ -25,13 +27,7 @@ func (f figures) metrics() RunMetrics {
 func bandMetrics(all []figures, level float64) BandMetrics {
 	var b BandMetrics
 	put := func(figure func(figures) float64, field func(*RunMetrics) **float64) {
-		var values []float64
-		for _, f := range all {
-			if v := figure(f); !math.IsNaN(v) {
-				values = append(values, v)
-			}
-		}
-		s := spreadOf(values, level)
+		s := spreadOf(valuesOf(all, figure), level)
 		*field(&b.Low), *field(&b.Median), *field(&b.High) = finite(s.low), finite(s.median), finite(s.high)
 	}
 	put(func(f figures) float64 { return f.settling }, func(m *RunMetrics) **float64 { return &m.Settling })
@@ -42,4 +38,26 @@ func bandMetrics(all []figures, level float64) BandMetrics {
 	put(func(f figures) float64 { return f.peakInput }, func(m *RunMetrics) **float64 { return &m.PeakInput })
 	put(func(f figures) float64 { return f.travel }, func(m *RunMetrics) **float64 { return &m.InputMoves })
 	return b
+}
+
+// valuesOf lists a figure over the plants that have it.
+func valuesOf(all []figures, figure func(figures) float64) []float64 {
+	values := make([]float64, 0, len(all))
+	for _, f := range all {
+		if v := figure(f); !math.IsNaN(v) {
+			values = append(values, v)
+		}
+	}
+	return values
+}
+
+// withNoise returns the medians of settling and overshoot in the noisy replay.
+func withNoise(all []figures) StepMetrics {
+	median := func(figure func(figures) float64) *float64 {
+		return finite(spreadOf(valuesOf(all, figure), 0.95).median)
+	}
+	return StepMetrics{
+		Settling:  median(func(f figures) float64 { return f.noisy.settling }),
+		Overshoot: median(func(f figures) float64 { return f.noisy.overshoot }),
+	}
 }

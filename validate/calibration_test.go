@@ -56,8 +56,9 @@ func (h heater) bump() *data.Run {
 }
 
 // loops are the second log, made under the gains in force, and what the
-// heater itself does under the proposed gains with the same disturbance.
-func (h heater) loops(t testing.TB, inForce, proposed *tune.Gains) (log, truth *data.Run) {
+// heater itself does under the proposed gains: with the same disturbance, and
+// without noise and load.
+func (h heater) loops(t testing.TB, inForce, proposed *tune.Gains) (log, truth, clean *data.Run) {
 	const rows = 400
 	d := noisy(rand.New(rand.NewPCG(h.seed, 2)), rows, studyInterval, h.noise)
 	for i := 250; i < rows; i++ {
@@ -65,7 +66,10 @@ func (h heater) loops(t testing.TB, inForce, proposed *tune.Gains) (log, truth *
 	}
 	d[0] = 0
 	setpoint := stepsAt(rows, 60, map[int]float64{50: 10})
-	return loggedLoop(t, h.plant, ident.Linear, inForce, setpoint, d, 4), loggedLoop(t, h.plant, ident.Linear, proposed, setpoint, d, 4)
+	loop := func(g *tune.Gains, d []float64) *data.Run {
+		return loggedLoop(t, h.plant, ident.Linear, g, setpoint, d, 4)
+	}
+	return loop(inForce, d), loop(proposed, d), loop(proposed, make([]float64, rows))
 }
 
 // lambdaGains are internal-model PI gains for the card's best fit with a
@@ -76,21 +80,61 @@ func lambdaGains(p ident.Plant, slow float64) *tune.Gains {
 	return piGains(ti/(p.Gain*(slow+1)*dead), ti, studyInterval)
 }
 
+// A reliability table: cases by stated probability in fifths, and how many of
+// them were met.
+type reliability [5]struct{ stated, met, runs float64 }
+
+func (r *reliability) add(stated, met float64) {
+	row := &r[min(4, int(5*stated))]
+	row.stated, row.met, row.runs = row.stated+stated, row.met+met, row.runs+1
+}
+
+// check logs the table; in rows of 30 cases or more what was stated must come
+// true to 10% and two standard errors.
+func (r *reliability) check(t *testing.T, name string) {
+	var lines []string
+	for k, row := range r {
+		if row.runs == 0 {
+			continue
+		}
+		stated, met := row.stated/row.runs, row.met/row.runs
+		lines = append(lines, fmt.Sprintf("%s, stated %d–%d%%: %.0f cases, mean stated %.1f%%, met %.1f%%", name, 20*k, 20*k+20, row.runs, 100*stated, 100*met))
+		if row.runs >= 30 && math.Abs(stated-met) > 0.1 {
+			t.Errorf("%s, row %d: stated and met are %.1f%% apart", name, k, 100*math.Abs(stated-met))
+		}
+	}
+	t.Log(strings.Join(lines, "\n"))
+}
+
 // TestCalibration is a study over 300 invented heaters: a bump log makes the
 // card, a second log of the heater in closed loop is replayed under other
-// gains, and the heater itself, with the very disturbance, says what those
-// gains would have done. The 95% band must hold 95% ± 2% of its samples, and
-// stated probabilities must come true.
+// gains, and the heater itself says what those gains would have done: with the
+// very disturbance for the band, which must hold 95% ± 2% of its samples, and
+// without it for settling and overshoot, whose stated probabilities must come
+// true. With the structure found by the fit the same is asked of 150 heaters.
 func TestCalibration(t *testing.T) {
 	if os.Getenv("LAGWRIGHT_LONG") == "" {
 		t.Skip("a study of some minutes: set LAGWRIGHT_LONG=1")
 	}
-	const heaters = 300
+	for _, c := range []struct {
+		name    string
+		heaters uint64
+		options fit.Options
+	}{
+		{"structure known", 300, fit.Options{Structure: "chain2", Drift: "none", Initial: "rest"}},
+		{"all found by the fit", 150, fit.Options{}},
+	} {
+		t.Run(c.name, func(t *testing.T) { calibrate(t, c.heaters, c.options) })
+	}
+}
+
+func calibrate(t *testing.T, heaters uint64, o fit.Options) {
 	var samples, inside, open int
-	var table [5]struct{ stated, met, runs float64 }
-	for seed := range uint64(heaters) {
+	var settling, overshoot reliability
+	for seed := range heaters {
 		h := inventHeater(t, seed)
-		card, err := fit.Fit(context.Background(), []*data.Run{h.bump()}, fit.Options{Structure: "chain2", Rand: int64(seed), Drift: "none", Initial: "rest"})
+		o.Rand = int64(seed)
+		card, err := fit.Fit(context.Background(), []*data.Run{h.bump()}, o)
 		if err != nil {
 			t.Logf("heater %d: %v", seed, err)
 			open++
@@ -101,39 +145,36 @@ func TestCalibration(t *testing.T) {
 			t.Fatal(err)
 		}
 		proposed := lambdaGains(best, 1)
-		log, truth := h.loops(t, lambdaGains(best, 3), proposed)
+		log, truth, clean := h.loops(t, lambdaGains(best, 3), proposed)
 		in, all := bandHolds(t, card, log, truth, proposed)
 		inside, samples = inside+in, samples+all
 
+		median, own := stepFigures(t, card, log, clean, proposed)
 		for _, factor := range []float64{0.8, 0.95, 1, 1.05, 1.2} { // a requirement that is met by some
-			stated, met, ok := probability(t, card, log, truth, proposed, factor)
-			if !ok {
-				continue // does not settle: nothing to ask for
+			if m := median.Settling; m != nil {
+				asked := tune.Requirement{Settling: ptr(factor * *m)}
+				settling.add(stated(t, card, log, proposed, asked), oneIf(own.settling <= factor**m))
 			}
-			k := min(4, int(5*stated))
-			table[k].stated += stated
-			table[k].met += met
-			table[k].runs++
+			if m := median.Overshoot; m != nil && *m > 1 {
+				asked := tune.Requirement{Overshoot: ptr(factor * *m)}
+				overshoot.add(stated(t, card, log, proposed, asked), oneIf(own.overshoot <= factor**m))
+			}
 		}
 	}
 	share := float64(inside) / float64(samples)
 	t.Logf("%d heaters, %d not fitted; the 95%% band holds %.2f%% of %d samples", heaters, open, 100*share, samples)
-	var lines []string
-	for k, row := range table {
-		lines = append(lines, fmt.Sprintf("stated %d–%d%%: %.0f cases, mean stated %.1f%%, met %.1f%%", 20*k, 20*k+20, row.runs, 100*row.stated/row.runs, 100*row.met/row.runs))
-	}
-	t.Log(strings.Join(lines, "\n"))
 	if share < 0.93 || share > 0.97 {
 		t.Errorf("the 95%% band holds %.2f%% of the samples, want 93 to 97%%", 100*share)
 	}
-	for k, row := range table {
-		if row.runs < 30 {
-			continue
-		}
-		if gap := math.Abs(row.stated-row.met) / row.runs; gap > 0.1 {
-			t.Errorf("row %d of the reliability table: stated and met are %.1f%% apart", k, 100*gap)
-		}
+	settling.check(t, "settling")
+	overshoot.check(t, "overshoot")
+}
+
+func oneIf(met bool) float64 {
+	if met {
+		return 1
 	}
+	return 0
 }
 
 // bandHolds counts the samples of the truth inside the band. Samples at which
@@ -160,27 +201,29 @@ func bandHolds(t testing.TB, card *fit.Card, log, truth *data.Run, gains *tune.G
 	return inside, all
 }
 
-// probability asks for a settling time of factor × the median of the replay
-// and returns the probability stated for it and whether the truth (1 or 0)
-// meets it, measured alike. ok is false where the median does not settle.
-func probability(t testing.TB, card *fit.Card, log, truth *data.Run, gains *tune.Gains, factor float64) (stated, met float64, ok bool) {
+// stepFigures returns the medians that the replay gives for the setpoint move,
+// and those of the heater itself without noise and load, measured alike.
+func stepFigures(t testing.TB, card *fit.Card, log, clean *data.Run, gains *tune.Gains) (median RunMetrics, truth figures) {
 	t.Helper()
-	asked := *gains
-	asked.Requirement.Settling = ptr(1)
-	replay := func(run *data.Run, g *tune.Gains) RunReplay {
-		r, err := ReplayRuns(context.Background(), card, []*data.Run{run}, g, Options{})
-		if err != nil || len(r.Runs) != 1 {
-			t.Fatalf("%v %+v", err, r)
-		}
-		return r.Runs[0]
+	r, err := ReplayRuns(context.Background(), card, []*data.Run{log}, gains, Options{})
+	if err != nil || len(r.Runs) != 1 {
+		t.Fatalf("%v %+v", err, r)
 	}
-	median := replay(log, &asked).Proposed.Median.Settling
-	if median == nil {
-		return 0, 0, false
+	p, err := newPlan(card, gains, Options{})
+	if err != nil {
+		t.Fatal(err)
 	}
-	asked.Requirement.Settling = ptr(factor * *median)
-	if s := replay(truth, &asked).Logged.Settling; s != nil && *s <= factor**median {
-		met = 1
+	truth = noFigures()
+	truth.add(signal{t: clean.T, y: clean.Y, u: clean.U, r: clean.Setpoint, r0: clean.Setpoint[0]}, p.yardstick(clean).quiet())
+	return r.Runs[0].Proposed.Median, truth
+}
+
+// stated is the probability that the replay states for a requirement.
+func stated(t testing.TB, card *fit.Card, log *data.Run, gains *tune.Gains, asked tune.Requirement) float64 {
+	t.Helper()
+	r, err := ReplayRuns(context.Background(), card, []*data.Run{log}, gains, Options{Requirement: asked})
+	if err != nil || len(r.Runs) != 1 {
+		t.Fatalf("%v %+v", err, r)
 	}
-	return replay(log, &asked).Probability, met, true
+	return r.Runs[0].Probability
 }

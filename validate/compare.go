@@ -3,6 +3,7 @@ package validate
 import (
 	"fmt"
 	"io"
+	"slices"
 	"strings"
 )
 
@@ -98,6 +99,9 @@ func (c *Comparison) WriteText(w io.Writer) error {
 			}
 			row(c.Columns[k], cell.Proposed.Median, cell.verdict())
 		}
+	}
+	if slices.ContainsFunc(c.Rows, func(r ComparedRun) bool { return r.Logged.Settling != nil || r.Logged.Overshoot != nil }) {
+		b.WriteString("logged settling and overshoot are measured past the noise: told rather too small\n")
 	}
 	b.WriteString("runs that meet, of those judged\n")
 	for k, s := range c.Totals {

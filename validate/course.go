@@ -41,17 +41,27 @@ type course struct {
 // continuous). Between its rows the logged temperature is taken to follow the
 // best-fit plant's response to the logged input plus a straight line.
 func newCourse(run *data.Run, s segment, p *plan) (*course, error) {
+	return newCourseAt(run, s, p, false)
+}
+
+// newCourseAt is newCourse; a segment that resumes after a hole makes up no step.
+func newCourseAt(run *data.Run, s segment, p *plan, resumed bool) (*course, error) {
 	c := &course{
-		t: run.T[s.lo:s.hi],
-		y: slices.Clone(run.Y[s.lo:s.hi]),
-		u: run.U[s.lo:s.hi],
+		resumed: resumed,
+		t:       run.T[s.lo:s.hi],
+		y:       slices.Clone(run.Y[s.lo:s.hi]),
+		u:       run.U[s.lo:s.hi],
 	}
 	bridge(c.t, c.y)
 	var logged []float64
 	if run.Setpoint != nil && !(p.setpointGiven() && p.byHand(run)) {
 		logged = run.Setpoint[s.lo:s.hi]
 	}
-	if err := c.setSetpoint(logged, p.options.Setpoint, cmp.Or(p.options.SetpointStep, p.options.Requirement.SetpointStep)); err != nil {
+	step := cmp.Or(p.options.SetpointStep, p.options.Requirement.SetpointStep)
+	if resumed && step != nil {
+		step = new(float64) // the step was made where the run began
+	}
+	if err := c.setSetpoint(logged, p.options.Setpoint, step); err != nil {
 		return nil, err
 	}
 	c.bound = runawayRatio * max(slices.Max(c.y)-slices.Min(c.y), math.Abs(slices.Max(c.y)), math.Abs(slices.Min(c.y)), 1)

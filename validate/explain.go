@@ -189,10 +189,7 @@ func (p *plan) shiftColumns(c *course, u []float64) (columns [][]float64, left [
 // fades with the longest lag.
 func (p *plan) startColumns(t []float64) (ones, fading []float64) {
 	ones, fading = make([]float64, len(t)), make([]float64, len(t))
-	longest := response(p.best)
-	if len(p.best.Lags) > 0 {
-		longest = p.best.Lags[0]
-	}
+	longest := p.longest()
 	for i := range ones {
 		ones[i] = 1
 		fading[i] = math.Exp(-(t[i] - t[0]) / longest)
@@ -200,22 +197,21 @@ func (p *plan) startColumns(t []float64) (ones, fading []float64) {
 	return ones, fading
 }
 
+// longest is the best fit's longest lag, in s.
+func (p *plan) longest() float64 {
+	if len(p.best.Lags) > 0 {
+		return p.best.Lags[0]
+	}
+	return response(p.best)
+}
+
 // setpointInput returns the input that the logged controller would have given
 // on the card's plant for the setpoint alone, starting at rest.
 func (p *plan) setpointInput(c *course) ([]float64, error) {
-	quiet := *c
-	quiet.y, quiet.u, quiet.phi = make([]float64, len(c.t)), make([]float64, len(c.t)), make([]float64, len(c.t))
-	fill(quiet.y, c.before)
-	fill(quiet.u, c.u[0])
-	fill(quiet.phi, c.phi[0])
-	if quiet.log != nil {
-		quiet.log = make([]float64, len(c.log))
-		fill(quiet.log, c.before)
-	}
 	gains := *p.logged
 	gains.Limits = tune.Limits{} // the linear loop: at a limit the logged input shows it
 	y, u := make([]float64, len(c.t)), make([]float64, len(c.t))
-	return u, newRunner(p.law, &gains, []ident.Plant{p.best}).replay(&quiet, 0, y, u)
+	return u, newRunner(p.law, &gains, []ident.Plant{p.best}).replay(c.atRest(c.before), 0, y, u)
 }
 
 // instrumental solves Zᵀ(y − X·beta) = 0 with rows whitened by

@@ -24,6 +24,9 @@ type yardstick struct {
 	quantum  float64  // resolution of the temperature
 	limit    *float64 // settling time asked, s; nil when none is
 	response float64  // dead time + sum of lags, s; 0 means: judge to the end of the record
+	// noiseless: the signal has no noise, so none is allowed for; a move too
+	// small to show in the noisy record is passed over all the same
+	noiseless bool
 }
 
 // figures of one run, added up over its segments. NaN: no such figure;
@@ -42,11 +45,15 @@ type figures struct {
 	small     int     // setpoint moves too small against the noise to judge
 	cut       int     // setpoint moves whose record ends before it shows whether they settle in time
 	unsettled int     // moves after which the temperature did not settle
+
+	noisy struct{ settling, overshoot float64 } // as the replayed record shows them past the allowance
 }
 
 func noFigures() figures {
 	nan := math.NaN()
-	return figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, travel: nan}
+	f := figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, travel: nan}
+	f.noisy.settling, f.noisy.overshoot = nan, nan
+	return f
 }
 
 // add measures one unbroken segment and adds it to the figures of the run.
@@ -81,6 +88,9 @@ func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
 		return mv.to
 	}
 	f.moves++
+	if m.noiseless {
+		allowance = 0
+	}
 	half := m.band*math.Abs(mv.size) + allowance
 	at, rest := settled(s, mv, half, m.response)
 	switch {

@@ -7,8 +7,8 @@ import (
 	"lagwright/tune"
 )
 
-// What the gains are known to miss on a clean step fails a run, however the
-// noise of its log hides it.
+// What the gains are known to miss on the step they were tuned for fails a run
+// that does not show it.
 func TestNominalMissFails(t *testing.T) {
 	f := func(v float64) *float64 { return &v }
 	for _, c := range []struct {
@@ -23,8 +23,8 @@ func TestNominalMissFails(t *testing.T) {
 		p.options.Requirement = tune.Requirement{Settling: f(c.asked)}
 		l := loopCheck{misses: make([]bool, 3)}
 		p.checkNominal(&l)
-		if l.fails != c.fails || l.misses[1] != c.fails {
-			t.Errorf("%s: fails %v, misses %v", c.name, l.fails, l.misses)
+		if l.fails != c.fails {
+			t.Errorf("%s: fails %v", c.name, l.fails)
 		}
 		if c.fails && !strings.Contains(strings.Join(l.reasons, " "), "73") {
 			t.Errorf("%s: reasons %q do not give the figure", c.name, l.reasons)

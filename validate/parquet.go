@@ -50,6 +50,8 @@ func tableColumns() []tableColumn {
 		}
 	}
 	return append(out,
+		tableColumn{"with_noise_settling_s", parquet.Types.Double, false, func(r *RunReplay) any { return pointed(r.WithNoise.Settling) }},
+		tableColumn{"with_noise_overshoot_percent", parquet.Types.Double, false, func(r *RunReplay) any { return pointed(r.WithNoise.Overshoot) }},
 		tableColumn{"reproduced", parquet.Types.Boolean, false, reproduced},
 		tableColumn{"reasons", parquet.Types.ByteArray, false, func(r *RunReplay) any { return orNull(strings.Join(r.Reasons, "; ")) }},
 		tableColumn{"warnings", parquet.Types.ByteArray, false, func(r *RunReplay) any { return orNull(strings.Join(r.Warnings, "; ")) }},

@@ -24,6 +24,7 @@ type Options struct {
 	SetpointStep *float64
 	LoggedGains  *tune.Gains      // gains in force when the logs were made: replay under them first
 	Requirement  tune.Requirement // the zero value means that of the gains; its limits and scan time replace those of the gains
+	RunLimits    RunLimits        // what is asked of a run beyond the requirement
 	Confidence   float64          // level of the bands; 0 means 0.95
 	Traces       bool             // add thinned series, for figures, to the worst 12 runs
 	Tool         string           // written into the result
@@ -32,6 +33,14 @@ type Options struct {
 	Resume   bool                  // ReplayFiles: go on with the journal, and with Previous
 	Previous *Replay               // ReplayFiles with Resume: an earlier result; its runs of unchanged logs are taken over
 	Progress func(done, total int) // called from one goroutine at a time; nil means not
+}
+
+// RunLimits are asked of a whole run, with its loads and its noise; nil: not
+// asked. They belong to runs and not to gains, since both grow with the load
+// that a run happens to hold.
+type RunLimits struct {
+	Deviation *float64 `json:"largest_deviation"` // |r − y| while no setpoint move is being followed, temperature units
+	IAE       *float64 `json:"iae"`               // ∫|r − y| dt over the run, temperature units × s
 }
 
 type units struct{ input, temperature, difference string }
@@ -83,7 +92,7 @@ func newPlan(card *fit.Card, gains *tune.Gains, o Options) (*plan, error) {
 		return nil, err
 	}
 	p.units = units{card.Units.Input, card.Units.Temperature, difference(card.Units.Temperature)}
-	p.asked = demands(o.Requirement, p.units)
+	p.asked = append(demands(o.Requirement, p.units), o.RunLimits.demands(p.units)...)
 	p.loop = p.checkLoop()
 	p.cardID, err = hash(card)
 	return p, err
@@ -145,11 +154,12 @@ func (p *plan) key() (string, error) {
 		Gains       *tune.Gains
 		Logged      *tune.Gains
 		Requirement tune.Requirement
+		RunLimits   RunLimits
 		Setpoint    *float64
 		Step        *float64 `json:",omitempty"`
 		Confidence  float64
 		Tool        string
-	}{p.cardID, p.gains, p.logged, p.options.Requirement, p.options.Setpoint, p.options.SetpointStep, p.options.Confidence, p.options.Tool})
+	}{p.cardID, p.gains, p.logged, p.options.Requirement, p.options.RunLimits, p.options.Setpoint, p.options.SetpointStep, p.options.Confidence, p.options.Tool})
 }
 
 func hash(v any) (string, error) {

@@ -13,6 +13,7 @@ type Replay struct {
 	Key         string           `json:"key"`   // short hash of all that decides a run's result besides its log
 	Gains       tune.Gains       `json:"gains"` // as replayed
 	Requirement tune.Requirement `json:"requirement"`
+	RunLimits   RunLimits        `json:"run_limits"`
 	Plants      int              `json:"plants"`
 	Confidence  float64          `json:"confidence"`
 	Runs        []RunReplay      `json:"runs"`
@@ -29,11 +30,16 @@ type RunReplay struct {
 	Rows   int     `json:"rows"`
 	Start  *string `json:"start"`
 
-	Proposed BandMetrics `json:"proposed"` // median and band over the plausible plants
-	Logged   RunMetrics  `json:"logged"`
+	// Proposed are median and band over the plausible plants. Settling and
+	// overshoot are those of the setpoint moves alone, without noise and loads;
+	// WithNoise are their medians as the replayed record shows them, past an
+	// allowance for its noise.
+	Proposed  BandMetrics `json:"proposed"`
+	WithNoise StepMetrics `json:"with_noise"`
+	Logged    RunMetrics  `json:"logged"`
 
 	Judged      bool     `json:"judged"`      // the run shows something that the requirement asks for
-	Meets       bool     `json:"meets"`       // probability ≥ the assurance of the gains; false when nothing could be judged
+	Meets       bool     `json:"meets"`       // probability not below the assurance of the gains by more than twice its sampling error; false when nothing could be judged
 	Probability float64  `json:"probability"` // share of plausible plants on which it meets
 	Reasons     []string `json:"reasons"`
 	Warnings    []string `json:"warnings"`
@@ -41,6 +47,12 @@ type RunReplay struct {
 	BackTest *BackTest `json:"back_test"` // null unless --logged-gains
 
 	Trace *Trace `json:"trace,omitempty"` // thinned series for figures
+}
+
+// StepMetrics are the figures of a setpoint move; null where there is none.
+type StepMetrics struct {
+	Settling  *float64 `json:"settling_s"`
+	Overshoot *float64 `json:"overshoot_percent"`
 }
 
 // RunMetrics of one signal; null where the figure does not exist.

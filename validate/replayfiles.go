@@ -212,7 +212,7 @@ func share(ctx context.Context, n, workers int, progress func(done, total int), 
 func (p *plan) assemble(done []doneLog) *Replay {
 	key, _ := p.key() // newPlan has made it once
 	r := &Replay{
-		Schema: ReplaySchema, Tool: p.options.Tool, Card: p.cardID, Key: key, Gains: *p.gains, Requirement: p.options.Requirement,
+		Schema: ReplaySchema, Tool: p.options.Tool, Card: p.cardID, Key: key, Gains: *p.gains, Requirement: p.options.Requirement, RunLimits: p.options.RunLimits,
 		Plants: len(p.plants), Confidence: p.options.Confidence, Runs: []RunReplay{}, Failed: []FailedRun{}, Cautions: cautions(p),
 	}
 	for _, d := range done {

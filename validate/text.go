@@ -91,7 +91,11 @@ func (r *Replay) shownMetrics() (heads []string, pick []func(RunMetrics) *float6
 	add("overshoot %", func(m RunMetrics) *float64 { return m.Overshoot })
 	add("deviation "+difference(u.Temperature), func(m RunMetrics) *float64 { return m.Deviation })
 	add("peak "+shown(u.Temperature), func(m RunMetrics) *float64 { return m.PeakTemp })
-	add("peak "+shown(u.Input), func(m RunMetrics) *float64 { return m.PeakInput })
+	if r.RunLimits.IAE != nil { // there is room for five
+		add("IAE "+difference(u.Temperature)+"·s", func(m RunMetrics) *float64 { return m.IAE })
+	} else {
+		add("peak "+shown(u.Input), func(m RunMetrics) *float64 { return m.PeakInput })
+	}
 	return heads, pick
 }
 
@@ -119,6 +123,9 @@ func (r *Replay) writeRuns(b *strings.Builder, runs []*RunReplay) {
 		tableRow(b, "  "+run.verdict(), median)
 		if wide {
 			tableRow(b, "  band", band)
+		}
+		if n := run.WithNoise; n != (StepMetrics{}) {
+			tableRow(b, "  with noise", []string{optional(n.Settling), optional(n.Overshoot)})
 		}
 		tableRow(b, "  logged", logged)
 		run.writeNotes(b)

@@ -35,6 +35,18 @@ func demands(r tune.Requirement, units units) []demand {
 	return out
 }
 
+// demands lists what is asked of a run's loads.
+func (l RunLimits) demands(units units) []demand {
+	var out []demand
+	if l.Deviation != nil {
+		out = append(out, demand{"largest deviation", units.difference, *l.Deviation, func(f figures) float64 { return f.deviation }})
+	}
+	if l.IAE != nil {
+		out = append(out, demand{"error area", units.difference + "·s", *l.IAE, func(f figures) float64 { return f.iae }})
+	}
+	return out
+}
+
 // slack is the relative rounding that a figure may pass its limit by.
 const slack = 1e-9
 
@@ -73,13 +85,7 @@ func judge(ds []demand, all []figures, misses []bool, level float64) (share floa
 
 // reason says what fails, by how much and on how many plants.
 func (d demand) reason(all []figures, count int, level float64) string {
-	values := make([]float64, 0, len(all))
-	for _, f := range all {
-		if v := d.figure(f); !math.IsNaN(v) {
-			values = append(values, v)
-		}
-	}
-	s := spreadOf(values, level)
+	s := spreadOf(valuesOf(all, d.figure), level)
 	return fmt.Sprintf("%s %s where at most %s is asked: fails on %d of %d plausible plants",
 		d.name, spreadText(s, d.unit), quantity(d.limit, d.unit), count, len(all))
 }

@@ -21,7 +21,7 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 	if f.small > 0 {
 		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.difference))
 	} else if f.moves > 0 && f.allowance > 0 {
-		warn("settling and overshoot are judged past %s granted to noise and resolution, so both are told rather too small", quantity(f.allowance, p.units.difference))
+		warn("settling and overshoot are judged on the setpoint moves alone; those with noise, and those logged, are measured past %s granted to noise and resolution, and so told rather too small", quantity(f.allowance, p.units.difference))
 	}
 	if f.cut > 0 {
 		warn("the record of %s ends before it shows whether the temperature settles in the time asked: that is not judged", counted(f.cut, "setpoint move"))

@@ -174,17 +174,24 @@ func replayWords(r *validate.RunReplay, unit string) string {
 		words += "; not reproduced under the logged gains, do not trust the model here"
 	}
 	k := kelvins(unit)
-	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string) {
+	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string, beside ...string) {
 		now := pick(r.Proposed.Median)
 		if now == nil {
 			return
 		}
 		words += fmt.Sprintf("; %s %s", what, format.Amount(*now, unit, 3))
 		if was := pick(r.Logged); was != nil {
-			words += fmt.Sprintf(" (logged %s)", format.Amount(*was, unit, 3))
+			beside = append(beside, "logged "+format.Amount(*was, unit, 3))
+		}
+		if len(beside) > 0 {
+			words += " (" + strings.Join(beside, ", ") + ")"
 		}
 	}
-	compare("settles in", func(m validate.RunMetrics) *float64 { return m.Settling }, "s")
+	var noisy []string
+	if s := r.WithNoise.Settling; s != nil {
+		noisy = append(noisy, "with noise "+format.Amount(*s, "s", 3))
+	}
+	compare("settles in", func(m validate.RunMetrics) *float64 { return m.Settling }, "s", noisy...)
 	compare("largest deviation", func(m validate.RunMetrics) *float64 { return m.Deviation }, k)
 	compare("error area", func(m validate.RunMetrics) *float64 { return m.IAE }, k+"*s")
 	compare("peak", func(m validate.RunMetrics) *float64 { return m.PeakTemp }, unit)

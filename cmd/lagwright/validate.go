@@ -59,6 +59,8 @@ table of the runs with the results side by side.
 	fs.BoolVar(&o.options.Resume, "resume", false, "go on after a break: runs already in the output are taken over")
 	valueFlag(fs, &o.options.Confidence, "confidence", "PERCENT", "95%", "level of the bands", share)
 	o.requirement.add(cmd)
+	optionalFlag(fs, &o.options.RunLimits.Deviation, "deviation", "NUMBER", "largest distance from the setpoint that a run may show, setpoint moves aside", positiveNumber)
+	optionalFlag(fs, &o.options.RunLimits.IAE, "iae", "NUMBER", "largest error area of a run: degrees off the setpoint, times seconds", positiveNumber)
 	o.log.add(cmd)
 	o.plot.add(cmd, "the judged run furthest from the requirement, logged against proposed")
 	return cmd
@@ -256,7 +258,7 @@ func replayVerdict(r *validate.Replay) error {
 		return nil
 	}
 	worst := worstRun(r)
-	if worst == nil && r.Gains.Meets && reflect.DeepEqual(r.Gains.Requirement, r.Requirement) {
+	if worst == nil && r.RunLimits == (validate.RunLimits{}) && r.Gains.Meets && reflect.DeepEqual(r.Gains.Requirement, r.Requirement) {
 		return nil
 	}
 	if worst == nil {

@@ -1,0 +1,134 @@
+package validate
+
+import (
+	"math"
+
+	"lagwright/ident"
+)
+
+// Settling and overshoot are asked of a setpoint move, not of noise and loads.
+// They are therefore judged on the response of each plausible plant to the
+// run's setpoint moves alone: the same controller with its limits, the same
+// moves, and a disturbance that stays what it was at the start. Measured on the
+// noisy replay they would have to be granted an allowance for the noise, which
+// lets pass what misses by less (see [yardstick.allowance]); that figure is
+// kept beside, as [RunReplay].WithNoise.
+
+// quietCourses returns for each course the one without noise and loads, nil
+// where no setpoint moves.
+func (p *plan) quietCourses(courses []*course, m yardstick) []*course {
+	out := make([]*course, len(courses))
+	for i, c := range courses {
+		if len(moves(c.signal(c.y, c.u), m)) > 0 {
+			out[i] = p.quietCourse(c)
+		}
+	}
+	return out
+}
+
+// quietCourse rests at the level the course starts from. An integrating
+// controller holds its setpoint; a P controller stands off it, so that its
+// level is the log's.
+func (p *plan) quietCourse(c *course) *course {
+	if p.gains.Ti == nil && c.stepped == 0 {
+		return c.atRest(startLevel(c.y))
+	}
+	return c.atRest(c.before)
+}
+
+// atRest is the course of a heater that rests at the level with the first
+// input held, without noise and loads.
+func (c *course) atRest(level float64) *course {
+	q := *c
+	q.y, q.u, q.phi, q.log = make([]float64, len(c.y)), make([]float64, len(c.u)), make([]float64, len(c.phi)), make([]float64, len(c.log))
+	fill(q.u, c.u[0])
+	fill(q.phi, c.phi[0])
+	fill(q.y, level)
+	fill(q.log, level)
+	return &q
+}
+
+// on returns the quiet course for plant g. A run that starts away from its
+// setpoint, as when it heats up, is not at rest in its first row: what is left
+// then of its past depends on the plant, and is found from the whole log c.
+func (p *plan) on(g ident.Plant, quiet, c *course) *course {
+	if c.rest == c.before || c.stepped != 0 {
+		return quiet
+	}
+	q := *quiet
+	s := p.startOf(c, g)
+	q.y = s.at(c.t)
+	if len(c.log) > 0 {
+		steps := make([]float64, len(c.log))
+		for k := range steps {
+			steps[k] = c.t[0] + float64(k)*c.lattice.step
+		}
+		q.log = s.at(steps)
+	}
+	return &q
+}
+
+// A start is the temperature of a plant whose input is held from the first
+// row on, at the time t0: the level it comes to, what fades with the longest
+// lag, and what a change of input in the first row still does.
+type start struct {
+	plant              ident.Plant
+	t0, fade           float64 // s
+	level, above, rise float64
+}
+
+// at returns the temperature at ascending times.
+func (s start) at(times []float64) []float64 {
+	out := s.columns(times)[2]
+	for i, t := range times {
+		out[i] = s.level + s.above*math.Exp(-(t-s.t0)/s.fade) + s.rise*out[i]
+	}
+	return out
+}
+
+// columns are the three parts of a start, for one unit of each.
+func (s start) columns(times []float64) [][]float64 {
+	ones, fading := make([]float64, len(times)), make([]float64, len(times))
+	for i, t := range times {
+		ones[i], fading[i] = 1, math.Exp(-(t-s.t0)/s.fade)
+	}
+	step := ident.Input{At: []float64{s.t0}, Value: []float64{1}}
+	rising := ident.NewSimulator(times, step).Response(nil, s.plant.Structure, s.plant.Lags, s.plant.DeadTime)
+	return [][]float64{ones, fading, rising}
+}
+
+// startOf finds how the log starts, seen from plant g: least squares on what
+// the response to the logged input leaves, whitened by the card's correlation.
+// The level is set by the median in the end, so that a load in a part of the
+// run does not shift the rest.
+func (p *plan) startOf(c *course, g ident.Plant) start {
+	s := start{plant: g, t0: c.t[0], fade: p.longest()}
+	left := ident.NewSimulator(c.t, ident.HeldInput(c.t, c.u, p.law)).Response(nil, g.Structure, g.Lags, g.DeadTime)
+	for i := range left {
+		left[i] = c.y[i] - g.Gain*left[i]
+	}
+	step := medianInterval(c.t)
+	columns := s.columns(c.t)
+	if beta, _, ok := instrumental(c.t, step, p.cardCorrelation(step), left, columns, columns); ok {
+		s.level, s.above, s.rise = beta[0], beta[1], beta[2]
+	}
+	for i, v := range s.at(c.t) {
+		left[i] -= v
+	}
+	s.level += median(left)
+	return s
+}
+
+// quiet measures as m does, but grants nothing to noise: there is none.
+func (m yardstick) quiet() yardstick {
+	m.noiseless = true
+	return m
+}
+
+// judgeQuiet puts settling and overshoot of the quiet replay in the place of
+// those of the noisy one, which are kept beside.
+func (f *figures) judgeQuiet(q figures) {
+	f.noisy.settling, f.noisy.overshoot = f.settling, f.overshoot
+	f.settling, f.overshoot = q.settling, q.overshoot
+	f.cut, f.unsettled = q.cut, q.unsettled
+}
