@@ -149,15 +149,13 @@ func calibrate(t *testing.T, heaters uint64, o fit.Options) {
 		in, all := bandHolds(t, card, log, truth, proposed)
 		inside, samples = inside+in, samples+all
 
-		median, own := stepFigures(t, card, log, clean, proposed)
+		replay := newStudy(t, card, log, clean, proposed)
 		for _, factor := range []float64{0.8, 0.95, 1, 1.05, 1.2} { // a requirement that is met by some
-			if m := median.Settling; m != nil {
-				asked := tune.Requirement{Settling: ptr(factor * *m)}
-				settling.add(stated(t, card, log, proposed, asked), oneIf(own.settling <= factor**m))
+			if m := replay.median.Settling; m != nil {
+				replay.ask(&settling, tune.Requirement{Settling: ptr(factor * *m)})
 			}
-			if m := median.Overshoot; m != nil && *m > 1 {
-				asked := tune.Requirement{Overshoot: ptr(factor * *m)}
-				overshoot.add(stated(t, card, log, proposed, asked), oneIf(own.overshoot <= factor**m))
+			if m := replay.median.Overshoot; m != nil && *m > 1 {
+				replay.ask(&overshoot, tune.Requirement{Overshoot: ptr(factor * *m)})
 			}
 		}
 	}
@@ -168,13 +166,6 @@ func calibrate(t *testing.T, heaters uint64, o fit.Options) {
 	}
 	settling.check(t, "settling")
 	overshoot.check(t, "overshoot")
-}
-
-func oneIf(met bool) float64 {
-	if met {
-		return 1
-	}
-	return 0
 }
 
 // bandHolds counts the samples of the truth inside the band. Samples at which
@@ -201,29 +192,37 @@ func bandHolds(t testing.TB, card *fit.Card, log, truth *data.Run, gains *tune.G
 	return inside, all
 }
 
-// stepFigures returns the medians that the replay gives for the setpoint move,
-// and those of the heater itself without noise and load, measured alike.
-func stepFigures(t testing.TB, card *fit.Card, log, clean *data.Run, gains *tune.Gains) (median RunMetrics, truth figures) {
+// A studied replay: the figures on all plausible plants, and those of the
+// heater itself without noise and load, measured alike.
+type studied struct {
+	plan   *plan
+	all    []figures
+	median RunMetrics
+	truth  figures
+}
+
+func newStudy(t testing.TB, card *fit.Card, log, clean *data.Run, gains *tune.Gains) studied {
 	t.Helper()
-	r, err := ReplayRuns(context.Background(), card, []*data.Run{log}, gains, Options{})
-	if err != nil || len(r.Runs) != 1 {
-		t.Fatalf("%v %+v", err, r)
-	}
 	p, err := newPlan(card, gains, Options{})
 	if err != nil {
 		t.Fatal(err)
 	}
-	truth = noFigures()
-	truth.add(signal{t: clean.T, y: clean.Y, u: clean.U, r: clean.Setpoint, r0: clean.Setpoint[0]}, p.yardstick(clean).quiet())
-	return r.Runs[0].Proposed.Median, truth
+	courses, _, err := p.courses(log)
+	if err != nil {
+		t.Fatal(err)
+	}
+	e, err := p.ensemble(context.Background(), courses, p.yardstick(log), p.teams(1)[0])
+	if err != nil {
+		t.Fatal(err)
+	}
+	return studied{p, e.figures, bandMetrics(e.figures, p.options.Confidence).Median, ownFigures(t, card, gains, clean)}
 }
 
-// stated is the probability that the replay states for a requirement.
-func stated(t testing.TB, card *fit.Card, log *data.Run, gains *tune.Gains, asked tune.Requirement) float64 {
-	t.Helper()
-	r, err := ReplayRuns(context.Background(), card, []*data.Run{log}, gains, Options{Requirement: asked})
-	if err != nil || len(r.Runs) != 1 {
-		t.Fatalf("%v %+v", err, r)
-	}
-	return r.Runs[0].Probability
+// ask adds what the replay states for a requirement, and whether the heater
+// itself meets it.
+func (s studied) ask(r *reliability, asked tune.Requirement) {
+	ds := demands(asked, s.plan.units)
+	stated, _ := judge(ds, s.all, s.plan.loop.misses, s.plan.options.Confidence)
+	met, _ := judge(ds, []figures{s.truth}, []bool{false}, s.plan.options.Confidence)
+	r.add(stated, met)
 }
