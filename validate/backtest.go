@@ -9,6 +9,7 @@ import (
 
 	"lagwright/data"
 	"lagwright/ident"
+	"lagwright/tune"
 )
 
 // A back-test asks of a run whether model and controller, as stated, can have
@@ -85,41 +86,62 @@ const inputTolerance = 0.02
 // testController replays the run under the logged gains on the best-fit plant
 // and compares the inputs.
 func (p *plan) testController(b *BackTest, courses []*course) (ok bool, err error) {
-	r := newRunner(p.law, p.logged, []ident.Plant{p.best})
-	var rows, near int
-	var sumU, sumY, worst float64
-	tolerance := inputTolerance * inputRange(courses)
-	for _, c := range courses {
-		y, u := r.buffers(len(c.t))
-		if err := r.replay(c, 0, y, u); err != nil {
-			return false, err
-		}
-		for i := range u {
-			du := u[i] - c.u[i]
-			rows++
-			if math.Abs(du) <= tolerance+1e-9 {
-				near++
-			}
-			worst = larger(worst, math.Abs(du))
-			sumU += du * du
-			sumY += (y[i] - c.y[i]) * (y[i] - c.y[i])
-		}
+	m, err := p.compareInputs(p.logged, courses)
+	if err != nil {
+		return false, err
 	}
-	share := float64(near) / float64(rows)
-	b.InputInside = &share
-	b.InputRMSE, b.TempRMSE = finite(math.Sqrt(sumU/float64(rows))), finite(math.Sqrt(sumY/float64(rows)))
-	if share >= p.options.Confidence {
+	b.InputInside = &m.near
+	b.InputRMSE, b.TempRMSE = finite(m.rmsU), finite(m.rmsY)
+	if m.near >= p.options.Confidence {
 		return true, nil
 	}
 	text := fmt.Sprintf("the logged gains give another input than was logged: off by up to %s, within %s on %.0f%% of the rows",
-		quantity(worst, p.units.input), quantity(tolerance, p.units.input), 100*share)
+		quantity(m.worst, p.units.input), quantity(m.tolerance, p.units.input), 100*m.near)
 	hint, err := p.controllerHint(courses)
 	b.Differs = append(b.Differs, text+"; "+hint)
 	return false, err
 }
 
+// A match says how near the inputs of a replay come to those logged.
+type match struct {
+	near       float64 // share of the rows within the tolerance
+	tolerance  float64
+	worst      float64 // largest difference of the inputs
+	rmsU, rmsY float64 // replayed less logged
+}
+
+// compareInputs closes the loop under the gains on the best-fit plant.
+func (p *plan) compareInputs(gains *tune.Gains, courses []*course) (match, error) {
+	r := newRunner(p.law, gains, []ident.Plant{p.best})
+	m := match{tolerance: inputTolerance * inputRange(courses), worst: math.NaN()}
+	var rows, near int
+	var sumU, sumY float64
+	for _, c := range courses {
+		y, u := r.buffers(len(c.t))
+		if err := r.replay(c, 0, y, u); err != nil {
+			return m, err
+		}
+		for i := range u {
+			du := u[i] - c.u[i]
+			rows++
+			if math.Abs(du) <= m.tolerance+1e-9 {
+				near++
+			}
+			m.worst = larger(m.worst, math.Abs(du))
+			sumU += du * du
+			sumY += (y[i] - c.y[i]) * (y[i] - c.y[i])
+		}
+	}
+	m.near = float64(near) / float64(rows)
+	m.rmsU, m.rmsY = math.Sqrt(sumU/float64(rows)), math.Sqrt(sumY/float64(rows))
+	return m, nil
+}
+
 // controllerHint says what to look at when the controller is not reproduced.
 func (p *plan) controllerHint(courses []*course) (string, error) {
+	if hint, err := p.limitHint(courses); hint != "" || err != nil {
+		return hint, err
+	}
 	var product, square float64
 	for _, c := range courses {
 		follow, asked, err := p.moveRatio(c)
