@@ -28,7 +28,7 @@ var ErrFewRuns = errors.New("a history needs at least two fitted runs")
 // that most runs choose for themselves (of equals the simpler). Runs are
 // ordered by their clock where all have one, else as given. A run that cannot
 // be fitted, or whose fit fixes no gain, is listed in Failed and does not stop
-// the others.
+// the others; so is one that holds the same recording as another.
 func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions) (*Drift, error) {
 	if o.FalseAlarm == 0 {
 		o.FalseAlarm = 0.05
@@ -44,12 +44,13 @@ func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions
 	if fo.Structure == "auto" {
 		fo.Structure = ""
 	}
+	runs, twins, warnings := withoutTwins(runs)
 	all, structure, err := fitAlike(ctx, runs, fo, o)
 	if err != nil {
 		return nil, err
 	}
 	d := &Drift{Schema: DriftSchema, Tool: fo.Tool, Structure: structure, Confidence: fo.Confidence, FalseAlarm: o.FalseAlarm,
-		Warnings: []string{}, Failed: []FailedRun{}, Cautions: driftCautions()}
+		Warnings: append([]string{}, warnings...), Failed: append([]FailedRun{}, twins...), Cautions: driftCautions()}
 	if d.Confidence == 0 {
 		d.Confidence = 0.95
 	}
@@ -66,7 +67,7 @@ func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions
 		fitted = append(fitted, e)
 	}
 	if len(fitted) < 2 {
-		return nil, fmt.Errorf("%w: %d of %d could be%s", ErrFewRuns, len(fitted), len(runs), firstReason(d.Failed))
+		return nil, fmt.Errorf("%w: %d of %d could be%s", ErrFewRuns, len(fitted), len(runs)+len(twins), firstReason(d.Failed))
 	}
 	d.judge(fitted, uint64(fo.Rand))
 	return d, nil

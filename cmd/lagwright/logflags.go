@@ -3,7 +3,9 @@ package main
 import (
 	"cmp"
 	"context"
+	"path/filepath"
 	"strings"
+	"sync"
 
 	"github.com/spf13/cobra"
 
@@ -17,7 +19,8 @@ type logFlags struct {
 	options     data.Options
 	inputLaw    string
 	bumpInstant string
-	known       *data.Columns // see columnsOf
+	known       []data.Columns // see columnsOf
+	mentioned   *sync.Once
 }
 
 func (l *logFlags) add(cmd *cobra.Command) {
@@ -80,9 +83,13 @@ func (l *logFlags) readAll(ctx context.Context, c *console, args []string) ([]*d
 func (l *logFlags) read(ctx context.Context, c *console, file string) ([]*data.Run, error) {
 	o := l.options
 	o.Stdin = c.in
-	if l.known != nil && file != "-" {
+	for _, known := range l.known {
+		if file == "-" {
+			break // can be read only once
+		}
 		// The logger that made the card's log most likely made this one.
-		if runs, err := data.Read(ctx, file, withColumns(o, *l.known)); err == nil {
+		if runs, err := data.Read(ctx, file, withColumns(o, known)); err == nil && len(runs) > 0 {
+			l.mentioned.Do(func() { mentionColumns(ctx, c, file, o, runs[0].Source.Columns) })
 			return runs, nil
 		}
 	}
@@ -93,13 +100,42 @@ func (l *logFlags) read(ctx context.Context, c *console, file string) ([]*data.R
 	return runs, nil
 }
 
-// columnsOf tries the columns of the card's log where the command line names none.
+// columnsOf tries the columns of the card's log where the command line names
+// none: all of them, or the three that every log has.
 func (l *logFlags) columnsOf(card *fit.Card) {
 	if len(card.Source) == 0 {
 		return
 	}
 	c := card.Source[0].Columns
-	l.known = &data.Columns{Time: c["time"], Input: c["input"], Temperature: c["temperature"]}
+	three := data.Columns{Time: c["time"], Input: c["input"], Temperature: c["temperature"]}
+	all := three
+	all.Setpoint, all.Mode, all.Airflow, all.Inlet = c["setpoint"], c["mode"], c["airflow"], c["inlet"]
+	l.known, l.mentioned = []data.Columns{all}, new(sync.Once)
+	if all != three {
+		l.known = append(l.known, three)
+	}
+}
+
+// mentionColumns says which columns the card named, where the log alone would
+// have left them open or had others taken.
+func mentionColumns(ctx context.Context, c *console, file string, o data.Options, used data.Columns) {
+	var own data.Columns
+	if runs, err := data.Read(ctx, file, o); err == nil && len(runs) > 0 {
+		own = runs[0].Source.Columns
+	}
+	var names []string
+	for _, n := range [][2]string{
+		{used.Time, own.Time}, {used.Input, own.Input}, {used.Temperature, own.Temperature},
+		{used.Setpoint, own.Setpoint}, {used.Mode, own.Mode}, {used.Airflow, own.Airflow}, {used.Inlet, own.Inlet},
+	} {
+		if n[0] != "" && n[0] != n[1] {
+			names = append(names, n[0])
+		}
+	}
+	if own != (data.Columns{}) && len(names) == 0 {
+		return
+	}
+	c.note("%s: columns as in the card: %s", filepath.Base(file), strings.Join(names, ", "))
 }
 
 // withColumns names the columns that o leaves open.
@@ -107,5 +143,9 @@ func withColumns(o data.Options, c data.Columns) data.Options {
 	o.TimeCol = cmp.Or(o.TimeCol, c.Time)
 	o.InputCol = cmp.Or(o.InputCol, c.Input)
 	o.TempCol = cmp.Or(o.TempCol, c.Temperature)
+	o.SetpointCol = cmp.Or(o.SetpointCol, c.Setpoint)
+	o.ModeCol = cmp.Or(o.ModeCol, c.Mode)
+	o.AirflowCol = cmp.Or(o.AirflowCol, c.Airflow)
+	o.InletCol = cmp.Or(o.InletCol, c.Inlet)
 	return o
 }

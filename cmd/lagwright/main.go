@@ -17,5 +17,6 @@ func main() {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	// A second Ctrl-C ends the process at once, should the first not be enough.
 	context.AfterFunc(ctx, stop)
+	signal.Ignore(syscall.SIGPIPE) // a write then returns an error, see pipe
 	os.Exit(Main(ctx, os.Args[1:], os.Stdin, os.Stdout, os.Stderr))
 }

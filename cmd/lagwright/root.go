@@ -7,11 +7,16 @@ import (
 	"strings"
 
 	"github.com/spf13/cobra"
+
+	"lagwright/cmd/lagwright/internal/terminal"
 )
 
 // Main runs one command line and returns its exit code. Answers go to out,
 // everything else to errOut.
 func Main(ctx context.Context, args []string, in io.Reader, out, errOut io.Writer) int {
+	if _, terminal := terminal.Width(out); !terminal {
+		out = &pipe{to: out}
+	}
 	c := &console{in: in, out: out, errOut: errOut, args: args}
 	root := newRoot(c)
 	var working bool
