@@ -2,6 +2,8 @@ package data
 
 import (
 	"bytes"
+	"slices"
+	"strings"
 	"time"
 )
 
@@ -17,8 +19,14 @@ func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
 	rest, hit := c.cachedDate(b)
 	day := c.day
 	if !hit {
+		if ns, ok := compactStamp(b); ok {
+			return ns, noTime, true
+		}
 		var first, second int64
 		first, second, rest, ok = c.parseDate(b)
+		if !ok {
+			first, second, rest, ok = c.parseDate(withoutWeekday(b))
+		}
 		if !ok {
 			return 0, noTime, false
 		}
@@ -38,6 +46,24 @@ func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
 		alt += tod - zone
 	}
 	return day + tod - zone, alt, true
+}
+
+// weekdays are the first letters of the days of the week, in English, German,
+// French, Spanish, Italian, Dutch and Portuguese.
+var weekdays = []string{"mon", "tue", "wed", "thu", "fri", "sat", "sun", "mo", "di", "mi", "do", "fr", "sa", "so", "lu", "ma", "me", "je", "ve", "vi",
+	"gi", "ju", "sá", "wo", "vr", "za", "zo", "seg", "ter", "qua", "qui", "sex"}
+
+// withoutWeekday removes the day of the week that a stamp begins with.
+func withoutWeekday(b []byte) []byte {
+	n := 0
+	for n < len(b) && (isLetter(b[n]) || b[n] >= 0x80) {
+		n++
+	}
+	word := strings.ToLower(decodeName(b[:n]))
+	if n < 2 || !slices.ContainsFunc(weekdays, func(d string) bool { return strings.HasPrefix(word, d) }) {
+		return nil
+	}
+	return bytes.TrimLeft(b[n:], "., ")
 }
 
 // isStampGap tells the characters between a date and a time of day.
@@ -154,6 +180,35 @@ func fullYear(y, width int) int {
 		return 1900 + y
 	}
 	return 2000 + y
+}
+
+// compactStamp reads yyyymmddhhmmss and a fraction.
+func compactStamp(b []byte) (ns int64, ok bool) {
+	if len(b) < 14 || b[8]-'0' > 9 {
+		return 0, false
+	}
+	var f [7]int
+	for i, c := range b[:14] {
+		if c-'0' > 9 {
+			return 0, false
+		}
+		f[i/2] = 10*f[i/2] + int(c-'0')
+	}
+	day, ok := dayStart(100*f[0]+f[1], f[2], f[3])
+	if !ok || f[4] > 23 || f[5] > 59 || f[6] > 60 {
+		return 0, false
+	}
+	frac, rest := int64(0), b[14:]
+	if len(rest) > 0 {
+		w := 0
+		if rest[0] == '.' || rest[0] == ',' {
+			frac, w = fraction(rest[1:])
+		}
+		if w == 0 || w+1 != len(rest) {
+			return 0, false
+		}
+	}
+	return day + (int64(f[4])*3600+int64(f[5])*60+int64(f[6]))*int64(nsSecond) + frac, true
 }
 
 // basicDate reads yyyymmdd followed by a T, a blank or nothing.

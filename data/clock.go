@@ -17,6 +17,7 @@ type clock struct {
 	order  dateOrder      // of dates with slashes or dashes
 	layout string         // of --time-format, as package time writes it
 	zone   *time.Location // zone of the last stamp that named one
+	days   dayCount       // of day numbers
 
 	cached [10]byte // the date read last, as written …
 	day    int64    // … and its beginning
@@ -30,7 +31,7 @@ type clockKind int
 const (
 	elapsed     clockKind = iota // number since the logger's zero
 	epoch                        // number since 1970-01-01
-	dayNumber                    // spreadsheet day number, 25569 is 1970-01-01
+	dayNumber                    // number of a day and its fraction
 	sexagesimal                  // hh:mm:ss.s or, from minutes on, mm:ss.s
 	hourMinute                   // hh:mm
 	calendar                     // date and time
@@ -58,7 +59,7 @@ const (
 
 // dated tells that the clock knows the date.
 func (c *clock) dated() bool {
-	return c.kind == epoch || c.kind == dayNumber || c.kind == calendar || c.kind == custom
+	return c.kind == epoch || c.kind == dayNumber || c.kind == calendar || c.kind == custom && !c.timeOfDay()
 }
 
 // wall tells that the clock is a local clock without a zone, which may be set
@@ -69,7 +70,9 @@ func (c *clock) wall() bool {
 }
 
 // timeOfDay tells that the clock starts again at midnight.
-func (c *clock) timeOfDay() bool { return c.kind == sexagesimal || c.kind == hourMinute }
+func (c *clock) timeOfDay() bool {
+	return c.kind == sexagesimal || c.kind == hourMinute || c.kind == custom && !strings.Contains(c.layout, "06")
+}
 
 // parse reads one stamp. While the order of day and month is open, alt is the
 // stamp read month first and ns the stamp read day first; else alt is noTime.
@@ -90,6 +93,9 @@ func (c *clock) parse(b []byte, point byte) (ns, alt int64, ok bool) {
 		}
 		if c.zone == nil && strings.Contains(c.layout, "07") {
 			c.zone = t.Location()
+		}
+		if c.timeOfDay() {
+			return t.Sub(t.Truncate(24 * time.Hour)).Nanoseconds(), alt, true
 		}
 		ns, ok = t.UnixNano(), inRange(t)
 	}
@@ -120,6 +126,9 @@ func (c *clock) isOwnUnit(rest []byte) bool {
 // ofDecimal turns a number as written into nanoseconds without a detour
 // through a float64, whose 53 bits cannot hold a date to the nanosecond.
 func (c *clock) ofDecimal(d decimal, b []byte, point byte) (int64, bool) {
+	if c.kind == dayNumber && c.days.zero != 0 && !d.dropped {
+		return c.days.instant(d)
+	}
 	if d.dropped {
 		v, ok := d.float(b, point)
 		if !ok || math.Abs(v)*float64(c.unit) > 9e18 {

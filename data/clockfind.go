@@ -52,37 +52,76 @@ func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, erro
 			return &clock{kind: epoch, unit: u}, nil, nil
 		}
 	}
-	if isDayNumber(v, typical) && (!known || unit == nsDay) {
-		return &clock{kind: dayNumber, unit: nsDay}, []Note{{Code: "clock-day-number",
-			Text: fmt.Sprintf("column %q was read as spreadsheet day numbers; --time-format seconds says otherwise", c.label)}}, nil
+	if days, ok := findDayCount(v, typical); ok && (!known || unit == nsDay) {
+		return &clock{kind: dayNumber, unit: nsDay, days: days}, []Note{{Code: "clock-day-number",
+			Text: fmt.Sprintf("column %q was read as %s; --time-format seconds says otherwise", c.label, days.name)}}, nil
+	}
+	if !known && areCompact(cells) {
+		return &clock{kind: calendar}, nil, nil
 	}
 	if known {
 		return &clock{kind: elapsed, unit: unit}, nil, nil
+	}
+	if k, notes, err := implausible(v, c.label); k != nil || err != nil {
+		return k, notes, err
 	}
 	return &clock{kind: elapsed, unit: nsSecond}, []Note{{Code: "time-unit-assumed",
 		Text: fmt.Sprintf("column %q names no unit and was read as seconds; --time-format says otherwise", c.label)}}, nil
 }
 
-// Times since 1970 from 1985 to 2100, ns.
+// Times since 1970 from 1985 to 2080, ns: seconds since 1904, as some software
+// counts, are beyond.
 const (
 	epochLow  = 15 * 365.25 * 86400e9
-	epochHigh = 130 * 365.25 * 86400e9
+	epochHigh = 110 * 365.25 * 86400e9
 )
 
-// isDayNumber tells day numbers from 2000 to 2100 that advance by less than
-// ten minutes a row and are no whole numbers.
-func isDayNumber(v []float64, typical float64) bool {
-	const tenMinutes = 1.0 / 144
-	if typical < 36526 || typical > 73050 || len(v) < 2 {
-		return false
+// fastest is the least plausible step of a clock in seconds: no heater is
+// logged a thousand times a second by its rows' numbers alone.
+const fastest = 1e-3
+
+// implausible refuses numbers without a unit that cannot be seconds: digits of
+// a time of day without colons, and steps too small. Fractions of a day, as
+// spreadsheets hold a time of day, are read.
+func implausible(v []float64, label string) (*clock, []Note, error) {
+	step := typicalStep(v)
+	switch {
+	case areClockDigits(v):
+		return nil, nil, fmt.Errorf("column %q goes from 59 to 100, as hours, minutes and seconds without colons do: say --time-format HHmmss, or --time-format seconds", label)
+	case !(step < fastest):
+		return nil, nil, nil
+	case slices.Min(v) > 0.01 && slices.Max(v) < 1:
+		return &clock{kind: elapsed, unit: nsDay}, []Note{{Code: "clock-day-number",
+			Text: fmt.Sprintf("column %q was read as fractions of a day; --time-format seconds says otherwise", label)}}, nil
 	}
-	var steps []float64
-	broken := false
-	for i := 1; i < len(v); i++ {
-		steps = append(steps, math.Abs(v[i]-v[i-1]))
-		broken = broken || v[i] != math.Trunc(v[i])
+	return nil, nil, fmt.Errorf("column %q names no unit and goes on by %.3g a row, too little for seconds: say --time-format hours, days, min, or seconds", label, step)
+}
+
+// areClockDigits tells numbers that skip from 59 to 100 and hold no digits
+// from 60 to 99 where minutes and seconds stand.
+func areClockDigits(v []float64) bool {
+	skips := false
+	for i, x := range v {
+		whole := math.Trunc(x)
+		if x < 0 || whole >= 240000 || math.Mod(whole, 100) >= 60 || math.Mod(math.Trunc(whole/100), 100) >= 60 {
+			return false
+		}
+		if i > 0 {
+			d := whole - math.Trunc(v[i-1])
+			skips = skips || d > 40 && d < 60 && math.Mod(math.Trunc(v[i-1]), 100) > 40
+		}
 	}
-	return broken && medianOf(steps) < tenMinutes
+	return skips && typicalStep(v) < 20
+}
+
+// areCompact tells stamps written as yyyymmddhhmmss.
+func areCompact(cells [][]byte) bool {
+	for _, b := range cells {
+		if _, ok := compactStamp(trimBlanks(b)); !ok {
+			return false
+		}
+	}
+	return len(cells) > 0
 }
 
 // findCalendar settles the order of day and month if the cells can: a day

@@ -20,6 +20,7 @@ type column struct {
 	ascending    bool    // numbers that never fall
 	repeats      bool    // text of a few values that keep coming back
 
+	units    bool     // text of nothing but units
 	switched bool     // nothing but words such as ON and OFF, or logged as true and false
 	words    []string // some of these words
 }

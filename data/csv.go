@@ -20,15 +20,16 @@ type field struct {
 
 // csvReader reads the rows of a text into tables, one for each run.
 type csvReader struct {
-	path   string
-	d      *dialect
-	clock  *clock
-	open   bool // order of day and month is not settled
-	fields []field
-	last   int // index of the last field
-	at     layout
-	pair   bool // date and time of day have a column each
-	single bool // cells can be read in place: no blanks as delimiter
+	path    string
+	d       *dialect
+	clock   *clock
+	open    bool // order of day and month is not settled
+	fields  []field
+	last    int // index of the last field
+	at      layout
+	pair    bool // date and time of day have a column each
+	quality bool // the status is a number, good from 192 on
+	single  bool // cells can be read in place: no blanks as delimiter
 
 	tables []*table
 	byName map[string]*table
@@ -170,6 +171,10 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 	}
 	slices.SortFunc(c.fields, func(a, b field) int { return a.index - b.index })
 	c.single = c.d.delim != ' '
+	c.quality = isQuality(c.d.rows, c.at[roleStatus])
+	if o.TimeCol == "" && o.TimeFormat == "" {
+		return c.compareClocks()
+	}
 	return nil
 }
 
@@ -362,7 +367,7 @@ func (c *csvReader) misfit() string {
 		return "row too short"
 	}
 	for i := c.d.fields; i < len(c.cells); i++ {
-		if len(c.cells[i]) > 0 {
+		if len(c.cells[i]) > 0 && looseClass(c.cells[i]) != texts { // text is a remark
 			return "row too long"
 		}
 	}
@@ -393,7 +398,7 @@ func (c *csvReader) values(tb *table, r *record) {
 			r.auto = modeOf(cell)
 		}
 	}
-	if i := c.at[roleStatus]; i >= 0 && isBadStatus(c.cells[i]) && !math.IsNaN(r.v[roleTemp]) {
+	if i := c.at[roleStatus]; i >= 0 && c.badStatus(c.cells[i]) && !math.IsNaN(r.v[roleTemp]) {
 		count(tb.counts.missing, "status "+decodeName(c.cells[i]), 1)
 		r.v[roleTemp] = math.NaN()
 	}

@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"io"
 	"math"
-	"strings"
 )
 
 // dialect is how a text file writes its rows, as its beginning shows.
@@ -285,6 +284,9 @@ func (d *dialect) findColumns(path string, lines []line) error {
 	}
 	d.first = lines[start].number
 	names, units := d.findHeader(lines[:start], lines[start])
+	if err := d.checkNames(names, lines[start:]); err != nil {
+		return fmt.Errorf("%s:%d: %w", path, max(1, d.first-1), err)
+	}
 	for i := range d.cols {
 		c := &d.cols[i]
 		c.label = fmt.Sprintf("column %d", i+1)
@@ -390,107 +392,6 @@ func isWord(cell []byte) bool {
 	return is || modeOf(cell) >= 0
 }
 
-// findHeader looks upward from the first row of data for a unit row and a
-// header; a comment line counts when there is nothing else.
-func (d *dialect) findHeader(above []line, data line) (names, units []string) {
-	var rows []line
-	for k := len(above) - 1; k >= 0 && len(rows) < 2; k-- {
-		if isComment(above[k].text, d.delim) {
-			continue
-		}
-		if len(above[k].cells) < 2 {
-			break
-		}
-		rows = append(rows, above[k])
-	}
-	if len(rows) > 1 {
-		under, isUnder := unitRow(rows[0].cells)
-		over, isOver := unitRow(rows[1].cells)
-		switch {
-		case isUnder && !isOver:
-			d.header = append(d.header, rows[0].text)
-			units, rows = under, rows[1:]
-		case isOver && !isUnder && len(over) == d.fields:
-			units = over
-		}
-	}
-	if len(rows) == 0 {
-		return d.commentHeader(above), nil
-	}
-	d.header = append(d.header, rows[0].text)
-	names = cellNames(rows[0].cells)
-	if len(names) == d.fields-1 && names[len(names)-1] != "" && isRowName(data, names, d) {
-		d.shift = 1
-	}
-	return names, units
-}
-
-// isRowName tells that a row of data has one cell more than the header
-// because it begins with the row's number or quoted name.
-func isRowName(data line, names []string, d *dialect) bool {
-	last := data.cells[len(data.cells)-1]
-	v, _, ok := d.number(data.cells[0])
-	return len(data.cells) == len(names)+1 && len(last) > 0 && ok && v == math.Trunc(v)
-}
-
-// commentHeader takes the last comment above the data for the header when it
-// has as many cells as the data.
-func (d *dialect) commentHeader(above []line) []string {
-	for k := len(above) - 1; k >= 0; k-- {
-		if !isComment(above[k].text, d.delim) {
-			return nil
-		}
-		text := bytes.TrimLeft(above[k].text, " \t#%!/;")
-		if names := cellNames(splitCells(nil, text, d.delim)); len(names) == d.fields {
-			return names
-		}
-	}
-	return nil
-}
-
-func cellNames(cells [][]byte) []string {
-	names := make([]string, len(cells))
-	for i, c := range cells {
-		names[i] = strings.Join(strings.Fields(decodeName(bytes.TrimPrefix(c, []byte("\xEF\xBB\xBF")))), " ")
-	}
-	return names
-}
-
-// unitRow reads a row whose cells are all units or blank.
-func unitRow(cells [][]byte) (units []string, ok bool) {
-	known := 0
-	for _, c := range cells {
-		if len(c) == 0 || bytes.Equal(c, []byte("-")) {
-			units = append(units, "")
-			continue
-		}
-		text := decodeName(c)
-		u, is := unitCell(text)
-		if is {
-			known++
-		} else if len([]rune(text)) > 12 {
-			return nil, false
-		}
-		units = append(units, u)
-	}
-	return units, known >= 1 && 2*known >= len(nonBlank(cells))
-}
-
-func isUnitRow(cells [][]byte) bool {
-	_, ok := unitRow(cells)
-	return ok
-}
-
-func nonBlank(cells [][]byte) [][]byte {
-	var out [][]byte
-	for _, c := range cells {
-		if len(c) > 0 {
-			out = append(out, c)
-		}
-	}
-	return out
-}
-
 // inspect looks at the rows of the sample: values to show, whether a column
 // moves in steps, whether it only rises, what its stamps hold.
 func (d *dialect) inspect(rows []line) {
@@ -527,6 +428,11 @@ func (d *dialect) inspect(rows []line) {
 		c.repeats = len(words) > 0 && 2*len(words) <= sum(words)
 		if c.class == texts {
 			c.switched, c.words = onOff.switched(), onOff.seen
+			c.units = len(words) > 0 && !c.switched
+			for w := range words {
+				_, known := canonicalUnit(decodeName([]byte(w)))
+				c.units = c.units && known
+			}
 		}
 	}
 }

@@ -184,7 +184,7 @@ func (r *rows) truncate(lo, hi int) {
 
 // setAside makes missing what stands for "no value".
 func (r *rows) setAside(info *reading, o *Options) {
-	setInputSentinelsAside(r.v[roleInput], r.missing)
+	setInputSentinelsAside(r.v[roleInput], info.unit(roleInput), r.missing)
 	temps := append(slices.Clone(fillValues), rangeEnds...)
 	if info.unit(roleTemp) == "degF" {
 		for _, c := range rangeEnds {

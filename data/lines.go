@@ -48,10 +48,7 @@ func (l *lineReader) read() ([]byte, error) {
 				l.next += bytes.Count(line, []byte{'\n'})
 			}
 			l.lo += end
-			if n > 0 && line[n-1] == '\r' {
-				line = line[:n-1]
-			}
-			return line, nil
+			return bytes.TrimRight(line, "\r"), nil
 		}
 		if l.eof {
 			if l.err != nil {

@@ -22,17 +22,37 @@ func isLong(cols []column, o *Options) bool {
 	if o.InputCol != "" && hasColumn(cols, o.InputCol) || o.TempCol != "" && hasColumn(cols, o.TempCol) {
 		return false
 	}
-	tags, values := 0, 0
+	values := 0
 	for _, c := range cols {
 		r, _ := roleOf(c)
 		switch {
-		case c.class == texts && r != roleStatus && r != roleMode && c.repeats && !c.switched:
-			tags++
+		case c.switched && r == roleInput:
+			return false
 		case c.class == numbers && r != roleTime && r != roleStatus && r != roleOther:
 			values++
 		}
 	}
-	return tags == 1 && values == 1
+	return values == 1 && len(tagColumns(cols)) == 1
+}
+
+// tagColumns lists the columns of text that can be the tag; of several those
+// whose name says so best.
+func tagColumns(cols []column) (found []int) {
+	best := -1
+	for i, c := range cols {
+		r, _ := roleOf(c)
+		if c.class != texts || r == roleStatus || r == roleMode || !c.repeats || c.switched || c.units {
+			continue
+		}
+		score := words[roleTag].hit(c.name, wordsOf(c.name))
+		if score > best {
+			best, found = score, nil
+		}
+		if score == best {
+			found = append(found, i)
+		}
+	}
+	return found
 }
 
 func hasColumn(cols []column, name string) bool {
@@ -62,6 +82,9 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 	}
 	if found := bestByName(cols, taken, roleStatus); len(found) == 1 {
 		take(roleStatus, found[0])
+	}
+	if i := slices.IndexFunc(cols, func(c column) bool { return c.units }); i >= 0 {
+		take(roleUnit, i)
 	}
 	for _, r := range []role{roleTag, roleValue} {
 		found := bestByWords(cols, taken, r)
@@ -107,6 +130,8 @@ type longReader struct {
 type series struct {
 	run, tag string
 	tb       *table // columns: the value as input, the mode
+	unit     string // of a column of units
+	units    bool   // it changes
 	sample   []string
 	stats    columnStats
 	onOff    switchTally // of the cells that are no numbers
@@ -120,6 +145,11 @@ func (l *longReader) add(c *csvReader, run string, r *record) {
 		if s = l.open(run, tag); s == nil {
 			return
 		}
+	}
+	if i := c.at[roleUnit]; i >= 0 && len(c.cells[i]) > 0 {
+		unit, _ := canonicalUnit(decodeName(c.cells[i]))
+		s.units = s.units || s.unit != "" && s.unit != unit
+		s.unit = unit
 	}
 	cell := c.cells[c.at[roleValue]]
 	if len(s.sample) < 5 {
@@ -135,7 +165,7 @@ func (l *longReader) add(c *csvReader, run string, r *record) {
 		count(s.tb.counts.missing, kind, 1)
 	}
 	r.auto = modeOf(cell)
-	if i := c.at[roleStatus]; i >= 0 && isBadStatus(c.cells[i]) && ok {
+	if i := c.at[roleStatus]; i >= 0 && c.badStatus(c.cells[i]) && ok {
 		count(s.tb.counts.missing, "status "+decodeName(c.cells[i]), 1)
 		r.v[roleInput] = math.NaN()
 	}
@@ -210,6 +240,9 @@ func (l *longReader) columns() []column {
 		}
 		col := column{index: len(cols), label: s.tag, sample: s.sample, stepwise: s.stats.stepwise(), ascending: false}
 		col.name, col.unit = splitNameUnit(s.tag)
+		if col.unit == "" {
+			col.unit = s.unit
+		}
 		col.class = numbers
 		if s.stats.n == 0 {
 			col.class = texts
@@ -236,6 +269,9 @@ func (l *longReader) merge(run string, cols []column, at layout, info *reading, 
 				return nil, fmt.Errorf("run %q holds no record of tag %q", run, cols[i].label)
 			}
 			continue
+		}
+		if s.units {
+			return nil, fmt.Errorf("tag %q is recorded in more than one unit: cut the log in two", s.tag)
 		}
 		p, err := s.settled(info)
 		if err != nil {

@@ -55,16 +55,18 @@ func count(m map[string]int, kind string, n int) {
 }
 
 // fillValues are numbers that loggers write where they have no value: rows
-// of nines, and the ends of 16-bit counts as they are or with one or two
-// decimals (common practice, no source).
+// of nines, the ends of 16-bit counts as they are or with one or two decimals,
+// those of 32-bit counts and of floating-point numbers, and what a digital
+// sensor gives that does not answer (common practice, no source).
 var fillValues = []float64{
 	9999, -9999, 9999.9, -9999.9, 99999, -99999, 999999, -999999, 999.9, -999.9, 999.99, -999.99, 999, -999,
 	32767, -32768, 32766, 3276.7, -3276.8, 327.67, -327.68, 65535, 6553.5, 655.35, 8888, -888, -888.8, 7999, -7999,
-	1e30, 1e31, -1e31, 9.9e37, -9.9e37, 1e38, 3.4028234663852886e38, -3.4028234663852886e38,
+	9999.99, 99999.9, 99999.99, 9999999, math.MaxInt32, math.MinInt32, math.MaxUint32, -127,
+	1e30, -1e30, 1e31, -1e31, math.MaxFloat64, -math.MaxFloat64, 9.9e37, -9.9e37, 1e38, 3.4028234663852886e38, -3.4028234663852886e38,
 }
 
 // smallestFill is below all fill values: most readings need no search.
-const smallestFill = 300
+const smallestFill = 100
 
 // rangeEnds are what an instrument shows for a broken thermocouple: the ends
 // of the ranges of the types K, J, T, N, E, R, S and B and of a platinum
@@ -115,16 +117,21 @@ func rangeWithout(v, sentinels []float64) (lo, hi float64, found bool) {
 const rareShare = 0.05
 
 // setInputSentinelsAside does the same for an input, which may step to a
-// distant value and stay there: only rare fill values are set aside.
-func setInputSentinelsAside(u []float64, missing map[string]int) {
+// distant value and stay there. Counts are set aside only where they are rare;
+// no drive gives 9999 V, % or mA, or a negative fill value.
+func setInputSentinelsAside(u []float64, unit string, missing map[string]int) {
 	n := 0
 	for _, x := range u {
 		if math.Abs(x) > smallestFill && slices.Contains(fillValues, x) {
 			n++
 		}
 	}
-	if n > 0 && float64(n) < rareShare*float64(len(u)) {
+	switch {
+	case n == 0:
+	case unit == "V" || unit == "%" || unit == "mA" || float64(n) < rareShare*float64(len(u)):
 		setSentinelsAside(u, fillValues, missing)
+	default:
+		setSentinelsAside(u, slices.DeleteFunc(slices.Clone(fillValues), func(x float64) bool { return 0 < x && x < 1e30 }), missing)
 	}
 }
 

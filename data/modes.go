@@ -34,6 +34,25 @@ var badStatus = []string{
 	"SENSOR FAULT", "NO DATA", "SUSPECT", "FEHLER", "UNGÜLTIG", "SCHLECHT", "MAUVAIS", "MALO", "FALSE",
 }
 
+// goodQuality is the quality of a good value in open process control data
+// (OPC data access: 192 to 255 good, 64 to 127 uncertain, below bad; from
+// memory).
+const goodQuality = 192
+
+// isQuality tells that a column of status holds such numbers.
+func isQuality(rows []line, i int) bool {
+	return i >= 0 && slices.ContainsFunc(rows, func(l line) bool { return i < len(l.cells) && string(l.cells[i]) == "192" })
+}
+
+// badStatus tells that a status takes back the value beside it.
+func (c *csvReader) badStatus(cell []byte) bool {
+	if c.quality {
+		v, ok := c.d.format.parse(cell)
+		return ok && v < goodQuality
+	}
+	return isBadStatus(cell)
+}
+
 func isBadStatus(cell []byte) bool {
 	if len(cell) == 0 {
 		return false

@@ -337,7 +337,7 @@ func (p *parquetReader) row(used []*parquetColumn, k, number int) {
 			r.auto = modeOf(col.cell(k))
 		case roleStatus:
 			status = col.cell(k)
-			bad = isBadStatus(status)
+			bad = c.badStatus(status)
 		case roleRun:
 			run = decodeName(col.cell(k))
 		default:

@@ -373,7 +373,7 @@ func (c *parquetColumn) stamp(k int) (ns, alt int64, ok bool) {
 		return c.ints[k], noTime, true
 	case asInteger:
 		if c.clock.kind > dayNumber {
-			return 0, noTime, false
+			return c.clock.parse(c.cell(k), '.')
 		}
 		d := decimal{mant: uint64(c.ints[k])}
 		if c.ints[k] < 0 {

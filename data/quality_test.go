@@ -90,11 +90,11 @@ func TestSentinels(t *testing.T) {
 	}
 	drive := append(ramp(50, func(int) float64 { return 0 }), ramp(50, func(int) float64 { return 32767 })...)
 	u := slices.Clone(drive)
-	setInputSentinelsAside(u, map[string]int{})
+	setInputSentinelsAside(u, unitless, map[string]int{})
 	same(t, "a drive of 16 bits", u, drive, 0)
 	u[10] = 9999
 	missing := map[string]int{}
-	setInputSentinelsAside(u[:40], missing)
+	setInputSentinelsAside(u[:40], unitless, missing)
 	if !math.IsNaN(u[10]) || missing["sentinel 9999"] != 1 {
 		t.Errorf("the fill value of an input stayed: %v", missing)
 	}

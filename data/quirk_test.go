@@ -109,6 +109,7 @@ var quirks = []quirk{
 	{file: "nul-padding.csv", notes: []string{"nul-bytes"}},
 	{file: "nul-inside.csv", t: without(baseT, 2), u: without(baseU, 2), y: without(baseY, 2), notes: []string{"nul-bytes"}, dropped: map[string]int{"NUL bytes": 1}},
 	{file: "no-newline-at-end.csv", notes: []string{"no-final-newline"}},
+	{file: "crcrlf.csv"},
 	{file: "blank-lines.csv"},
 	{file: "comments.csv"},
 
@@ -154,6 +155,14 @@ var quirks = []quirk{
 	{file: "unit-row-above.csv"},
 	{file: "tab-blank-first-unit.tsv", u: []float64{0, 0, 15, 15, 15, 15, 15, 15}, input: "%", start: "2026-01-25T10:00:00Z", notes: []string{local}, also: setpoint60},
 	{file: "time-last.tsv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "header-narrow.csv", wrong: "header-narrow.csv:1: the header names 3 columns (time | drive_V | outlet_degC), but the rows hold 4 (2026-01-25 10:00:00,0,0,24.1)"},
+	{file: "header-decimal-comma.csv", wrong: "but the rows hold 6"},
+	{file: "header-unit-apart.csv"},
+	{file: "header-wide.csv", wrong: "the header names 4 columns (Time | local | Drive_V | Outlet_C), but the rows hold 3"},
+	{file: "header-two-words.txt"},
+	{file: "header-rule.tsv"},
+	{file: "remark-column.csv"},
+	{file: "remark-unnamed.csv"},
 	{file: "many-roles.csv", also: func(t *testing.T, r *Run) {
 		same(t, "setpoint", r.Setpoint, with(ramp(8, func(int) float64 { return 60 }), 0, nan), 0)
 		same(t, "airflow", r.Airflow, ramp(8, func(i int) float64 { return 400 + float64(i) }), 0)
@@ -199,7 +208,21 @@ var quirks = []quirk{
 	{file: "unix-ms.csv", start: "2026-01-05T10:00:00Z"},
 	{file: "unix-us.csv", start: "2026-01-05T10:00:00Z"},
 	{file: "unix-ns.csv", start: "2026-01-05T10:00:00Z"},
-	{file: "day-number.csv", within: 1e-6, start: "2026-01-05T10:00:00.000002966Z", notes: []string{"clock-day-number", local}}, // the file holds 46027.416666666701 days
+	{file: "day-number.csv", within: 1e-6, start: "2026-01-05T10:00:00.000002966Z", notes: []string{"clock-day-number", local}},               // the file holds 46027.416666666701 days
+	{file: "day-number-decimal-comma.csv", within: 1e-7, start: "2026-01-25T10:00:00.000000029Z", notes: []string{"clock-day-number", local}}, // twelve decimals of a day
+	{file: "day-number-year-0.csv", within: 1e-7, start: "2026-01-25T10:00:00.000000029Z", notes: []string{"clock-day-number", local}},
+	{file: "day-number-julian.csv", within: 1e-7, start: "2026-01-25T10:00:00.000000029Z", notes: []string{"clock-day-number", local}},
+	{file: "day-fraction.csv", within: 1e-7, notes: []string{"clock-day-number"}},
+	{file: "minutes-unnamed.csv", wrong: "goes on by 0.000139 a row, too little for seconds: say --time-format hours"},
+	{file: "minutes-unnamed.csv", o: Options{TimeFormat: "hours"}, within: 1e-5}, // nine decimals of an hour
+	{file: "clock-digits.csv", wrong: "say --time-format HHmmss, or --time-format seconds"},
+	{file: "clock-digits.csv", o: Options{TimeFormat: "HHmmss"}, t: ramp(8, func(i int) float64 { return float64(i) })},
+	{file: "two-clocks.csv", wrong: `columns "time (ms)" and "timestamp" are both clocks, but over the first 8 rows one goes on by 583.333µs and the other by 35s: say which to use with --time-col`},
+	{file: "two-clocks.csv", o: Options{TimeCol: "timestamp"}, t: ramp(8, func(i int) float64 { return 5 * float64(i) }), start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "compact-stamp.csv", start: "2026-01-25T10:00:58Z", notes: []string{local}},
+	{file: "zone-name.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "am-pm-spanish.csv", start: "2026-01-25T11:59:58Z", notes: []string{local}},
+	{file: "weekday.tsv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "elapsed-ms.csv"},
 	{file: "elapsed-min.csv"},
 	{file: "elapsed-offset.csv"},
@@ -242,6 +265,10 @@ var quirks = []quirk{
 		missing: map[string]int{"OPEN": 1, "OL": 1, "OVER": 1, "NAN": 1, "#N/A": 1, "----": 1, "BAD": 1, "blank": 1}},
 	{file: "sentinels.csv", y: with(baseY, 1, nan, 3, nan, 5, nan, 7, nan),
 		missing: map[string]int{"sentinel 9999": 1, "sentinel -9999": 1, "sentinel 32767": 1, "sentinel 1372": 1}},
+	{file: "sentinels-input.csv", notes: []string{"input-held"}, missing: map[string]int{"sentinel 9999": 2, "sentinel -9999": 1}},
+	{file: "sentinels-32-bit.csv", y: with(baseY, 1, nan, 3, nan, 5, nan, 6, nan),
+		missing: map[string]int{"sentinel 2.147483647e+09": 1, "sentinel -127": 1, "sentinel 1.7976931348623157e+308": 1, "sentinel 99999.99": 1}},
+	{file: "quality-number.csv", y: with(baseY, 4, nan), missing: map[string]int{"status 24": 1}},
 	{file: "real-999.csv", y: []float64{997, 998, 999, 999, 1000, 1001, 1003, 1005}},
 	{file: "full-scale.csv", o: Options{TempSpan: &Span{Low: 0, High: 200, Unit: "C"}}, y: with(baseY, 2, nan, 6, nan), missing: map[string]int{"full scale": 2}},
 	{file: "spike.csv", t: ramp(40, half), u: spikeU, y: spikeY, also: func(t *testing.T, r *Run) {
@@ -295,6 +322,7 @@ var quirks = []quirk{
 				t.Errorf("automatic %v, want manual throughout", r.Auto)
 			}
 		}},
+	{file: "long-historian.csv", y: with(baseY, 4, nan), start: "2026-01-25T10:00:00Z", notes: []string{"long-form", local}, missing: map[string]int{"status Bad": 1}},
 	{file: "exception-wide.csv", t: []float64{0, 0.7, 1, 1.3, 2.9, 3.5}, u: []float64{0, 0, 1.5, 1.5, 1.5, 1.5},
 		y: []float64{24.1, 24.1, nan, 24.3, 26.7, 28}, notes: []string{"input-held"}, missing: map[string]int{"blank": 5}},
 }

@@ -66,12 +66,12 @@ func fraction(b []byte) (ns int64, n int) {
 	return ns, n
 }
 
-// halfDay applies AM or PM, with or without dots and a blank.
+// halfDay applies AM or PM, with or without dots and blanks.
 func halfDay(ns int64, rest []byte) (int64, []byte, bool) {
 	r := skipSpaces(rest)
 	n := 1
 	if len(r) > 1 && r[1] == '.' {
-		n = 2
+		n = len(r) - len(skipSpaces(r[2:]))
 	}
 	if len(r) <= n || r[n]|0x20 != 'm' || r[0]|0x20 != 'a' && r[0]|0x20 != 'p' {
 		return ns, rest, true
@@ -103,7 +103,7 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 		return 0, 0, false
 	}
 	rest = skipSpaces(rest)
-	if len(rest) == 0 {
+	if len(rest) == 0 || isZoneName(rest) {
 		return tod, 0, true
 	}
 	east, ok = zoneOffset(rest)
@@ -117,10 +117,33 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 }
 
 func skipSpaces(b []byte) []byte {
-	for len(b) > 0 && b[0] == ' ' {
-		b = b[1:]
+	for len(b) > 0 {
+		switch {
+		case b[0] == ' ':
+			b = b[1:]
+		case bytes.HasPrefix(b, []byte("\u00a0")):
+			b = b[len("\u00a0"):]
+		case bytes.HasPrefix(b, []byte("\u202f")):
+			b = b[len("\u202f"):]
+		default:
+			return b
+		}
 	}
 	return b
+}
+
+// isZoneName tells the letters of a zone such as CET. They mean different
+// zones in different countries, so the clock stays a local one.
+func isZoneName(b []byte) bool {
+	if len(b) < 3 || len(b) > 5 || bytes.Equal(b, []byte("UTC")) || bytes.Equal(b, []byte("GMT")) {
+		return false
+	}
+	for _, c := range b {
+		if c < 'A' || c > 'Z' {
+			return false
+		}
+	}
+	return true
 }
 
 // zoneOffset reads Z, UTC, GMT, ±hh, ±hhmm or ±hh:mm.

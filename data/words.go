@@ -24,6 +24,7 @@ const (
 	roleRun
 	roleTag
 	roleValue
+	roleUnit  // of the value
 	roleOther // known to be none of these: a battery, a room, a serial number
 	numRoles
 )

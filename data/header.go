@@ -1,0 +1,178 @@
+package data
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"slices"
+	"strings"
+)
+
+// findHeader looks upward from the first row of data for a unit row and a
+// header; a comment line counts when there is nothing else.
+func (d *dialect) findHeader(above []line, data line) (names, units []string) {
+	var rows []line
+	for k := len(above) - 1; k >= 0 && len(rows) < 2; k-- {
+		if isComment(above[k].text, d.delim) {
+			continue
+		}
+		if len(above[k].cells) < 2 {
+			break
+		}
+		if one := nonBlank(above[k].cells); len(one) == 1 && !isUnitRow(one) { // a line between header and data
+			continue
+		}
+		rows = append(rows, above[k])
+	}
+	if len(rows) > 1 {
+		under, isUnder := unitRow(rows[0].cells)
+		over, isOver := unitRow(rows[1].cells)
+		switch {
+		case isUnder && !isOver:
+			d.header = append(d.header, rows[0].text)
+			units, rows = under, rows[1:]
+		case isOver && !isUnder && len(over) == d.fields:
+			units = over
+		}
+	}
+	if len(rows) == 0 {
+		return d.commentHeader(above), nil
+	}
+	d.header = append(d.header, rows[0].text)
+	names = cellNames(rows[0].cells)
+	if len(names) == d.fields-1 && names[len(names)-1] != "" && isRowName(data, names, d) {
+		d.shift = 1
+		return names, units
+	}
+	return d.fitNames(rows[0].text, names), units
+}
+
+// fitNames makes as many names of a header as the rows have cells, where it
+// has more because the delimiter stands in names: in front of a unit
+// ("Voltage, V"), or as the blank between words.
+func (d *dialect) fitNames(text []byte, names []string) []string {
+	for len(names) > d.fields && names[len(names)-1] == "" {
+		names = names[:len(names)-1]
+	}
+	if len(names) <= d.fields {
+		return names
+	}
+	if d.delim == ' ' {
+		if wide := wideGaps(text); len(wide) == d.fields {
+			return wide
+		}
+	}
+	var joined []string
+	for i, n := range names {
+		if _, known := unitCell(n); known && i > 0 {
+			joined[len(joined)-1] += " [" + strings.Trim(n, "[](){}<>") + "]"
+			continue
+		}
+		joined = append(joined, n)
+	}
+	if len(joined) == d.fields {
+		return joined
+	}
+	return names
+}
+
+// wideGaps splits a header at tabs and at two blanks or more.
+func wideGaps(text []byte) (names []string) {
+	for _, part := range strings.Split(strings.ReplaceAll(decodeName(bytes.Trim(text, " \t")), "\t", "  "), "  ") {
+		if part = strings.TrimSpace(part); part != "" {
+			names = append(names, part)
+		}
+	}
+	return names
+}
+
+// remarks are names of columns that most rows leave out.
+var remarks = []string{"comment", "comments", "remark", "remarks", "note", "notes", "marker", "event", "annotation", "kommentar", "bemerkung", "notiz", "marke",
+	"commentaire", "remarque", "comentario", "nota", "commento", "opmerking", "comentário", "uwagi"}
+
+// checkNames refuses a header that names more or fewer columns than the rows
+// hold: whatever the names say would be said of the wrong column. Columns of
+// remarks may be left out, and columns without a name may hold text.
+func (d *dialect) checkNames(names []string, lines []line) error {
+	switch {
+	case len(names) == 0 || d.shift > 0:
+		return nil
+	case len(names) > d.fields:
+		used := slices.ContainsFunc(lines, func(l line) bool { return len(l.cells) > d.fields })
+		extra := slices.ContainsFunc(names[d.fields:], func(n string) bool { return !slices.Contains(remarks, strings.ToLower(n)) })
+		if used || !extra {
+			d.fields = len(names)
+			return nil
+		}
+	case !slices.ContainsFunc(d.cols[len(names):], func(c column) bool { return c.class == numbers || c.class == stamps }):
+		return nil
+	}
+	return fmt.Errorf("the header names %d columns (%s), but the rows hold %d (%s): quote the cells that hold the delimiter %q, or name every column once",
+		len(names), strings.Join(names, " | "), d.fields, bytes.TrimSpace(lines[0].text[:min(len(lines[0].text), 60)]), d.delim)
+}
+
+// isRowName tells that a row of data has one cell more than the header
+// because it begins with the row's number or quoted name.
+func isRowName(data line, names []string, d *dialect) bool {
+	last := data.cells[len(data.cells)-1]
+	v, _, ok := d.number(data.cells[0])
+	return len(data.cells) == len(names)+1 && len(last) > 0 && ok && v == math.Trunc(v)
+}
+
+// commentHeader takes the last comment above the data for the header when it
+// has as many cells as the data.
+func (d *dialect) commentHeader(above []line) []string {
+	for k := len(above) - 1; k >= 0; k-- {
+		if !isComment(above[k].text, d.delim) {
+			return nil
+		}
+		text := bytes.TrimLeft(above[k].text, " \t#%!/;")
+		if names := cellNames(splitCells(nil, text, d.delim)); len(names) == d.fields {
+			return names
+		}
+	}
+	return nil
+}
+
+func cellNames(cells [][]byte) []string {
+	names := make([]string, len(cells))
+	for i, c := range cells {
+		names[i] = strings.Join(strings.Fields(decodeName(bytes.TrimPrefix(c, []byte("\xEF\xBB\xBF")))), " ")
+	}
+	return names
+}
+
+// unitRow reads a row whose cells are all units or blank.
+func unitRow(cells [][]byte) (units []string, ok bool) {
+	known := 0
+	for _, c := range cells {
+		if len(c) == 0 || bytes.Equal(c, []byte("-")) {
+			units = append(units, "")
+			continue
+		}
+		text := decodeName(c)
+		u, is := unitCell(text)
+		if is {
+			known++
+		} else if len([]rune(text)) > 12 {
+			return nil, false
+		}
+		units = append(units, u)
+	}
+	return units, known >= 1 && 2*known >= len(nonBlank(cells))
+}
+
+func isUnitRow(cells [][]byte) bool {
+	_, ok := unitRow(cells)
+	return ok
+}
+
+func nonBlank(cells [][]byte) [][]byte {
+	var out [][]byte
+	for _, c := range cells {
+		if len(c) > 0 {
+			out = append(out, c)
+		}
+	}
+	return out
+}

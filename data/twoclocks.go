@@ -1,0 +1,67 @@
+package data
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"time"
+)
+
+// Two clocks in a log may differ by a hundredth of what they advance, and by
+// two seconds, as one of whole seconds does from a finer one.
+const (
+	clocksApart  = 0.01
+	clocksCoarse = 2 * float64(time.Second)
+)
+
+// compareClocks looks at a clock of numbers beside a column of full stamps. If
+// they do not advance alike, the numbers are not in the unit they seem to be
+// in, and nothing says which clock is right.
+func (c *csvReader) compareClocks() error {
+	at := c.at[roleTime]
+	if c.d.cols[at].class != numbers || c.clock.kind == calendar {
+		return nil
+	}
+	for i, col := range c.d.cols {
+		if col.class != stamps || !col.dated || !col.timed {
+			continue
+		}
+		var cells [][]byte
+		for _, l := range c.d.rows {
+			if i < len(l.cells) && len(l.cells[i]) > 0 {
+				cells = append(cells, bytes.Clone(l.cells[i]))
+			}
+		}
+		other, err := findCalendar(cells, col)
+		if err != nil {
+			continue
+		}
+		mine, theirs := c.advance(at, c.clock), c.advance(i, other)
+		if math.Abs(mine-theirs) > max(clocksCoarse, clocksApart*theirs) {
+			return fmt.Errorf("columns %q and %q are both clocks, but over the first %d rows one goes on by %v and the other by %v: say which to use with %s",
+				c.d.cols[at].label, col.label, len(c.d.rows), time.Duration(mine), time.Duration(theirs), flags[roleTime])
+		}
+	}
+	return nil
+}
+
+// advance is how far a clock goes on from the first to the last row of the
+// sample that it can be read in, ns.
+func (c *csvReader) advance(i int, k *clock) float64 {
+	var first, last int64
+	seen := false
+	for _, l := range c.d.rows {
+		if i >= len(l.cells) {
+			continue
+		}
+		t, _, ok := k.parse(l.cells[i], c.d.format.point)
+		if !ok {
+			continue
+		}
+		if !seen {
+			first, seen = t, true
+		}
+		last = t
+	}
+	return float64(last) - float64(first)
+}
