@@ -16,129 +16,95 @@ type draw struct {
 	eta  []float64 // lags longest first, dead time
 }
 
-// sample draws count plausible plants of a bounded structure from the
-// likelihood of the log, the noise shapes mixed as in its intervals, under a
-// prior flat in gain, lags and dead time within their physical bounds.
-//
-// The lags and the dead time are sampled by the affine-invariant ensemble
-// (Goodman and Weare 2010, from memory), which needs no tuning where lags are
-// nearly exchangeable or pressed against zero; the gain is drawn from its
+// posterior is the distribution that the plausible plants of a structure are
+// drawn from: the likelihood of the log, the noise shapes mixed as in its
+// intervals, under a prior flat in gain, lags and dead time within their
+// physical bounds. The gain is integrated out and drawn last, from its
 // conditional Student's t, so that a record without a plateau keeps the tie
 // between gain and lag.
+type posterior struct {
+	b       *bounded
+	free    []int // eta that are not held
+	spreads []spread
+	s2, dof float64
+	root    [][]float64 // square root of a covariance to begin with
+	rng     *rand.Rand
+}
+
+// plantAt is an eta with the logarithm of its density, up to a constant.
+type plantAt struct {
+	p       point
+	density float64
+}
+
+func (b *bounded) posterior(rng *rand.Rand) *posterior {
+	q := &posterior{b: b, spreads: b.spreads(), s2: b.s2(), dof: float64(max(b.rows()-b.mean, 1)), rng: rng}
+	for j, held := range b.e.held {
+		if !held {
+			q.free = append(q.free, j)
+		}
+	}
+	q.root = b.starts(q.free)
+	return q
+}
+
+// at evaluates eta.
+func (q *posterior) at(eta []float64) plantAt {
+	e, d := q.b.e, float64(len(q.free))
+	for j := range eta {
+		if eta[j] < e.lower[j] || eta[j] > e.upper[j] {
+			return plantAt{density: math.Inf(-1)}
+		}
+	}
+	p := e.eval(eta, false)
+	r2 := math.Max(p.s-q.b.p.s, 0) / q.s2
+	t := 0.0
+	for _, sp := range q.spreads {
+		t += sp.weight * math.Pow(sp.k2, -d/2) * math.Exp(-0.5*(q.dof+d)*math.Log1p(r2/(sp.k2*q.dof)))
+	}
+	density := math.Log(t)
+	if !e.gainFix {
+		density -= 0.5 * math.Log(p.gg) // the gain integrated out
+	}
+	return plantAt{p, density}
+}
+
+// plant draws the gain of a place and returns the whole plant.
+func (q *posterior) plant(w plantAt) draw {
+	k2 := q.spreads[pickSpread(q.spreads, q.rng.Float64())].gain
+	g := w.p.gain
+	if !q.b.e.gainFix {
+		t := distuv.StudentsT{Sigma: 1, Nu: q.dof, Src: q.rng}.Rand()
+		g += t * math.Sqrt(k2*q.s2/w.p.gg)
+	}
+	eta := append([]float64(nil), w.p.eta...)
+	if !slices.Contains(q.b.e.held, true) {
+		sort.Sort(sort.Reverse(sort.Float64Slice(eta[:q.b.e.nl])))
+	}
+	return draw{g, eta}
+}
+
+// sample draws count plausible plants of a bounded structure. Where the
+// posterior is close to its linearisation, they are taken from proposals by
+// rejection, each independent of the others; where lags are nearly exchangeable
+// or pressed against zero, an ensemble of walkers finds them.
 func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 	b.activate()
-	e := b.e
-	var free []int
-	for j := range e.held {
-		if !e.held[j] {
-			free = append(free, j)
-		}
-	}
-	d := len(free)
-	walkers := 2 * max(8, 2*d)
-	if d == 0 {
-		walkers = 2
-	}
-	spreads := b.spreads()
-	s2 := b.s2()
-	dof := float64(max(b.rows()-b.mean, 1))
-
-	type walker struct {
-		p      point
-		target float64
-	}
-	evaluate := func(eta []float64) walker {
-		for j := range eta {
-			if eta[j] < e.lower[j] || eta[j] > e.upper[j] {
-				return walker{target: math.Inf(-1)}
-			}
-		}
-		p := e.eval(eta, false)
-		r2 := math.Max(p.s-b.p.s, 0) / s2
-		t := 0.0
-		for _, sp := range spreads {
-			t += sp.weight * math.Pow(sp.k2, -float64(d)/2) * math.Exp(-0.5*(dof+float64(d))*math.Log1p(r2/(sp.k2*dof)))
-		}
-		target := math.Log(t)
-		if !e.gainFix {
-			target -= 0.5 * math.Log(p.gg) // the gain integrated out
-		}
-		return walker{p, target}
-	}
-	spread := b.starts(free)
-	ws := make([]walker, walkers)
-	for i := range ws {
-		for try := 0; ; try++ {
-			eta := append([]float64(nil), b.p.eta...)
-			shrink := math.Pow(0.7, float64(try))
-			z := make([]float64, d)
-			for k := range z {
-				z[k] = rng.NormFloat64() * shrink
-			}
-			for k, j := range free {
-				for l := range z {
-					eta[j] += spread[k][l] * z[l]
-				}
-				if eta[j] < e.lower[j] {
-					eta[j] = math.Min(2*e.lower[j]-eta[j], e.upper[j])
-				}
-			}
-			ws[i] = evaluate(eta)
-			if ws[i].target > -math.Inf(1) && ws[i].target > -60 || try > 40 {
-				break
-			}
-		}
-		if math.IsInf(ws[i].target, -1) {
-			ws[i] = evaluate(b.p.eta)
-		}
-	}
+	q := b.posterior(rng)
 	var out []draw
-	emit := func(w walker) {
-		k2 := spreads[pickSpread(spreads, rng.Float64())].gain
-		g := w.p.gain
-		if !e.gainFix {
-			t := distuv.StudentsT{Sigma: 1, Nu: dof, Src: rng}.Rand()
-			g += t * math.Sqrt(k2*s2/w.p.gg)
-		}
-		eta := append([]float64(nil), w.p.eta...)
-		if !slices.Contains(e.held, true) {
-			sort.Sort(sort.Reverse(sort.Float64Slice(eta[:e.nl])))
-		}
-		out = append(out, draw{g, eta})
-	}
-	if d == 0 {
-		for len(out) < count {
-			emit(ws[0])
+	if len(q.free) == 0 {
+		w := q.at(b.p.eta)
+		for range count {
+			out = append(out, q.plant(w))
 		}
 		return out
 	}
-	const burn, every = 60, 5
-	half := walkers / 2
-	for sweep := 0; len(out) < count; sweep++ {
-		for side := range 2 {
-			for i := range half {
-				k := side*half + i
-				other := ws[(1-side)*half+rng.IntN(half)]
-				u := rng.Float64()
-				z := (1 + u) * (1 + u) / 2 // density ∝ 1/√z on [1/2, 2]
-				eta := append([]float64(nil), b.p.eta...)
-				for _, j := range free {
-					eta[j] = other.p.eta[j] + z*(ws[k].p.eta[j]-other.p.eta[j])
-				}
-				accept := rng.Float64()
-				next := evaluate(eta)
-				if math.Log(accept) < float64(d-1)*math.Log(z)+next.target-ws[k].target {
-					ws[k] = next
-				}
-			}
-		}
-		if sweep >= burn && (sweep-burn)%every == 0 {
-			for _, k := range rng.Perm(walkers) {
-				if len(out) < count {
-					emit(ws[k])
-				}
-			}
-		}
+	taken, ok := q.reject(q.propose(firstProposals), count)
+	if !ok {
+		taken = q.walk(count)
+	}
+	for _, w := range taken {
+		out = append(out, q.plant(w))
 	}
 	return out
 }

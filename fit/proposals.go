@@ -1,0 +1,82 @@
+package fit
+
+import (
+	"math"
+	"slices"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+const (
+	// proposalFreedom is the degrees of freedom of the proposals: tails heavier
+	// than the posterior's.
+	proposalFreedom = 8
+
+	// firstProposals is how many proposals tell how close they are to the posterior.
+	firstProposals = 64
+
+	// leastAcceptance is the share of proposals accepted below which they are
+	// too far from the posterior for the greatest weight to be a bound.
+	leastAcceptance = 0.3
+)
+
+// proposals are draws from a multivariate Student's t around the optimum, with
+// the logarithm of the weight of each: posterior over proposal density.
+type proposals struct {
+	at     []plantAt
+	weight []float64
+}
+
+// propose draws n proposals.
+func (q *posterior) propose(n int) proposals {
+	var out proposals
+	d := len(q.free)
+	z := make([]float64, d)
+	for range n {
+		eta := append([]float64(nil), q.b.p.eta...)
+		scale := math.Sqrt(proposalFreedom / distuv.ChiSquared{K: proposalFreedom, Src: q.rng}.Rand())
+		r2 := 0.0
+		for k := range z {
+			z[k] = q.rng.NormFloat64() * scale
+			r2 += z[k] * z[k]
+		}
+		for k, j := range q.free {
+			for l := range k + 1 {
+				eta[j] += q.root[k][l] * z[l]
+			}
+		}
+		w := q.at(eta)
+		out.at = append(out.at, w)
+		out.weight = append(out.weight, w.density+0.5*(proposalFreedom+float64(d))*math.Log1p(r2/proposalFreedom))
+	}
+	return out
+}
+
+// reject takes count places by rejection, proposing more as needed; ok is false
+// where proposals of great weight keep turning up. The bound on the weight is
+// the greatest one met (Caffo, Booth and Davis 2002, from memory: empirical
+// supremum rejection sampling).
+func (q *posterior) reject(pool proposals, count int) (out []plantAt, ok bool) {
+	var u []float64
+	for {
+		for len(u) < len(pool.at) {
+			u = append(u, math.Log(q.rng.Float64()))
+		}
+		top := slices.Max(pool.weight)
+		out = out[:0]
+		for i, w := range pool.weight {
+			if u[i] < w-top {
+				out = append(out, pool.at[i])
+			}
+		}
+		tried := len(pool.at)
+		switch {
+		case len(out) >= count:
+			return out[:count], true
+		case float64(len(out)) < leastAcceptance*float64(tried):
+			return nil, false
+		}
+		more := q.propose((count-len(out))*tried/max(len(out), 1) + 8)
+		pool.at, pool.weight = append(pool.at, more.at...), append(pool.weight, more.weight...)
+	}
+}
