@@ -151,11 +151,11 @@ func packed(t testing.TB, how string, text []byte) []byte {
 // A packed log that was cut off or damaged is an error: both formats carry a
 // check sum. Only bits that mean nothing (the time in a gzip header, a code
 // that no symbol uses) may change, and then the run is the same. The long form
-// of the test has several blocks and damages every seventh byte.
+// of the test has several blocks and flips a bit in every seventh byte.
 func TestPackedDamage(t *testing.T) {
-	rows, tries := 3000, 25
+	rows, tries, block := 3000, 25, 1 // block: flips for one block zeroed and one cut out
 	if os.Getenv("LAGWRIGHT_LONG") != "" {
-		rows, tries = 20000, 0
+		rows, tries, block = 12000, 0, 9
 	}
 	ts, u, y := dryerLog(rows)
 	text := csvText(ts, u, y, plainSeconds)
@@ -184,12 +184,15 @@ func TestPackedDamage(t *testing.T) {
 		if tries > 0 {
 			step = len(whole) / tries
 		}
-		for at := 30; at < len(whole)-8; at += step {
+		for k, at := 0, 30; at < len(whole)-8; k, at = k+1, at+step {
 			for what, damage := range map[string]func(b []byte) []byte{
 				"flipped bit":   func(b []byte) []byte { b[at] ^= 1 << (at % 8); return b },
 				"zeroed block":  func(b []byte) []byte { clear(b[at:min(at+64, len(b))]); return b },
 				"block cut out": func(b []byte) []byte { return slices.Delete(b, at, min(at+64, len(b))) },
 			} {
+				if k%block > 0 && what != "flipped bit" {
+					continue
+				}
 				n++
 				run, err := read(damage(slices.Clone(whole)))
 				if err != nil {
