@@ -61,12 +61,18 @@ func Convert(g *Gains, form string, s Spelling) (*Gains, error) {
 	return &out, nil
 }
 
-// scale returns what one gain unit is worth in the spelling, with the units
-// of input and temperature there.
-func (s Spelling) scale(u GainUnits) (factor float64, input, temperature string, err error) {
+// completed gives a span of 0 to 100 % to an input in percent where the
+// temperature has one.
+func (s Spelling) completed(u GainUnits) Spelling {
 	if s.InputSpan == nil && s.TempSpan != nil && u.Input == "%" {
 		s.InputSpan = &data.Span{Low: 0, High: 100, Unit: "%"}
 	}
+	return s
+}
+
+// scale returns what one gain unit is worth in a completed spelling, with the
+// units of input and temperature there.
+func (s Spelling) scale(u GainUnits) (factor float64, input, temperature string, err error) {
 	if s.InputSpan == nil && s.TempSpan == nil {
 		if s.Band {
 			return 0, "", "", fmt.Errorf("a proportional band is a part of the temperature's span for the whole span of the output: give --temp-span and --input-span")
@@ -102,6 +108,14 @@ func orUnit(unit, otherwise string) string {
 	return unit
 }
 
+// spanWords writes a span of temperature down.
+func spanWords(s *data.Span, unit string) string {
+	if u := strings.TrimPrefix(strings.TrimPrefix(s.Unit, "°"), "deg"); u == "C" || u == "F" {
+		unit = "deg" + u
+	}
+	return strings.TrimSpace(fmt.Sprintf("%s to %s %s", figure(&s.Low, 4), figure(&s.High, 4), unit))
+}
+
 // perKelvin is the unit of a temperature difference.
 func perKelvin(unit string) string {
 	if unit == "degC" {
@@ -112,10 +126,12 @@ func perKelvin(unit string) string {
 
 // spell writes the gains in their form the way a controller wants them.
 func (g *Gains) spell(s Spelling) ([]Entry, error) {
+	s = s.completed(g.Units)
 	factor, in, temp, err := s.scale(g.Units)
 	if err != nil {
 		return nil, err
 	}
+	spans := s.InputSpan != nil && s.TempSpan != nil
 	second, clock := 1.0, "s"
 	if s.Minutes {
 		second, clock = 60, "min"
@@ -123,8 +139,8 @@ func (g *Gains) spell(s Spelling) ([]Entry, error) {
 	kc := g.Kc * factor
 	out := []Entry{{"gain", kc, in + "/" + temp}}
 	switch {
-	case s.Band && in == "%":
-		out[0] = Entry{"proportional band", 100 / math.Abs(kc), "%"}
+	case s.Band && spans:
+		out[0] = Entry{"proportional band", 100 / math.Abs(kc), "% of " + spanWords(s.TempSpan, g.Units.Temperature)}
 	case s.Band:
 		return nil, fmt.Errorf("a proportional band is a percentage of the measurement span: give --input-span and --temp-span")
 	}
@@ -158,7 +174,7 @@ func (g *Gains) spell(s Spelling) ([]Entry, error) {
 	out = append(out, Entry{"setpoint weight", g.SetpointWeight, ""})
 	if g.Ti == nil {
 		bias, unit := g.Bias, orUnit(g.Units.Input, "input")
-		if in == "%" {
+		if spans {
 			bias, unit = 100*(g.Bias-s.InputSpan.Low)/(s.InputSpan.High-s.InputSpan.Low), "%"
 		}
 		out = append(out, Entry{"bias", bias, unit})
@@ -170,6 +186,7 @@ func (g *Gains) spell(s Spelling) ([]Entry, error) {
 // inverse of what [Convert] puts into Entry. A proportional band has no sign:
 // action says it ("direct" for an output that rises with the temperature).
 func FromEntries(entries []Entry, form, action string, u GainUnits, s Spelling) (*Gains, error) {
+	s = s.completed(u)
 	factor, _, _, err := s.scale(u)
 	if err != nil {
 		return nil, err

@@ -3,7 +3,6 @@ package tune
 import (
 	"bytes"
 	"errors"
-	"fmt"
 	"math"
 	"math/cmplx"
 	"strings"
@@ -150,11 +149,11 @@ func TestConvertNamesTheNearest(t *testing.T) {
 func TestSpelling(t *testing.T) {
 	g := newGains(pidLaw(0.4, 30, 6), "pid")
 	c, err := Convert(g, Ideal, Spelling{Band: true, Rate: true, Minutes: true,
-		InputSpan: &data.Span{High: 10}, TempSpan: &data.Span{High: 200}})
+		InputSpan: &data.Span{High: 10}, TempSpan: &data.Span{High: 200, Unit: "C"}})
 	if err != nil {
 		t.Fatal(err)
 	}
-	want := []Entry{{"proportional band", 12.5, "%"}, {"integral rate", 2, "repeats/min"}, {"derivative time", 0.1, "min"}, {"setpoint weight", 1, ""}}
+	want := []Entry{{"proportional band", 12.5, "% of 0 to 200 degC"}, {"integral rate", 2, "repeats/min"}, {"derivative time", 0.1, "min"}, {"setpoint weight", 1, ""}}
 	for i, e := range want {
 		if c.Entry[i].Name != e.Name || c.Entry[i].Unit != e.Unit || math.Abs(c.Entry[i].Value-e.Value) > 1e-12 {
 			t.Errorf("entry %d is %v, want %v", i, c.Entry[i], e)
@@ -235,15 +234,29 @@ func TestBandNeedsFittingSpans(t *testing.T) {
 	if _, err := Convert(g, Ideal, Spelling{Band: true, InputSpan: volts, TempSpan: celsius}); err == nil {
 		t.Error("a span in V is taken for gains in %")
 	}
-	percent := func(s *data.Span) string {
+	percent := func(s *data.Span) float64 {
 		c, err := Convert(g, Ideal, Spelling{Band: true, TempSpan: s})
 		if err != nil {
 			t.Fatal(err)
 		}
-		return fmt.Sprint(c.Entry)
+		return c.Entry[0].Value
 	}
 	// The same instrument in Fahrenheit: 0 to 200 °C is 32 to 392 °F.
 	if c, f := percent(celsius), percent(&data.Span{Low: 32, High: 392, Unit: "F"}); c != f {
-		t.Errorf("band of 0..200C %s, of 32..392F %s", c, f)
+		t.Errorf("band of 0..200C %g %%, of 32..392F %g %%", c, f)
+	}
+}
+
+// A P controller has a bias; an input in percent needs no span for it.
+func TestBiasInPercent(t *testing.T) {
+	g := &Gains{Controller: "p", Form: Ideal, Kc: 0.5, Bias: 40, Action: "reverse", SetpointWeight: 1, Units: GainUnits{Input: "%", Temperature: "degC"}}
+	for _, s := range []Spelling{{}, {TempSpan: &data.Span{High: 200, Unit: "C"}}} {
+		out, err := Convert(g, Ideal, s)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if last := out.Entry[len(out.Entry)-1]; last != (Entry{"bias", 40, "%"}) {
+			t.Errorf("spelling %+v: %v", s, last)
+		}
 	}
 }

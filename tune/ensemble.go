@@ -103,50 +103,71 @@ func (e *ensemble) outcomes(c law, fine float64) []outcome {
 
 // share is the least share of a card's scenarios on which the task is met.
 func (e *ensemble) share(out []outcome) float64 {
-	met := make([]int, e.cards)
-	for i, s := range e.scenarios {
-		if out[i].met() {
-			met[s.card]++
-		}
-	}
-	least := 1.0
-	for card, n := range e.counts() {
-		if n > 0 {
-			least = min(least, float64(met[card])/float64(n))
-		}
-	}
-	return least
+	_, share := e.leastShare(func(i int) bool { return out[i].met() })
+	return share
 }
 
-// miss is the quantile, over the scenarios, of the worst violation: ≤ 0 (but
-// for a hair) where the task holds on the share of them.
-func (e *ensemble) miss(c law, share float64) float64 {
-	worst := math.Inf(-1)
-	v := make([][]float64, e.cards)
-	for i, o := range e.outcomes(c, searchStep) {
-		card := e.scenarios[i].card
-		v[card] = append(v[card], o.violation)
-	}
-	for _, x := range v {
-		if len(x) > 0 {
-			worst = max(worst, quantile(x, share))
+// leastShare returns the card on which the smallest share of the scenarios
+// has a property, and that share.
+func (e *ensemble) leastShare(has func(i int) bool) (card int, share float64) {
+	hits := make([]int, e.cards)
+	for i, s := range e.scenarios {
+		if has(i) {
+			hits[s.card]++
 		}
 	}
+	share = math.Inf(1)
+	for k, n := range e.counts() {
+		if n == 0 {
+			continue
+		}
+		if part := float64(hits[k]) / float64(n); part < share {
+			card, share = k, part
+		}
+	}
+	return card, min(share, 1)
+}
+
+// quantile is the largest of the cards' share quantiles of a figure that
+// should be small, and the card it belongs to.
+func (e *ensemble) quantile(figure func(i int) float64, share float64) (value float64, card int) {
+	return e.worstCard(figure, func(v []float64) float64 { return quantile(v, share) })
+}
+
+// worstCard is the largest of what a figure's values come to on each card.
+func (e *ensemble) worstCard(figure func(i int) float64, of func(v []float64) float64) (value float64, card int) {
+	v := make([][]float64, e.cards)
+	for i, s := range e.scenarios {
+		v[s.card] = append(v[s.card], figure(i))
+	}
+	value = math.Inf(-1)
+	for k, x := range v {
+		if len(x) == 0 {
+			continue
+		}
+		if q := of(x); q > value {
+			value, card = q, k
+		}
+	}
+	return value, card
+}
+
+// miss is the worst violation on as many of the scenarios as a design must hold
+// on (see toHold), of the worst card: ≤ 0 (but for a hair) where holds is true.
+func (e *ensemble) miss(c law, share float64) float64 {
+	out := e.outcomes(c, searchStep)
+	worst, _ := e.worstCard(func(i int) float64 { return out[i].violation }, func(v []float64) float64 {
+		return quantile(v, float64(toHold(len(v), share))/float64(len(v)))
+	})
 	return worst
 }
 
 // loadIAE is the median, over about the given number of scenarios, of the
-// integral of |error| after a unit load step at the plant's input; +Inf where
-// a loop is unstable. It is never less than the integral of the error itself,
+// integral of |error| after a unit load step at the plant's input, of several
+// cards the largest; +Inf where a loop is unstable. It is never less than the integral of the error itself,
 // which is Ti/Kc.
 func (e *ensemble) loadIAE(c law, about int, fine float64) float64 {
-	stride := max(1, len(e.scenarios)/about)
-	sub := *e
-	sub.scenarios, sub.order = nil, nil
-	for i := 0; i < len(e.scenarios); i += stride {
-		sub.order = append(sub.order, len(sub.scenarios))
-		sub.scenarios = append(sub.scenarios, e.scenarios[i])
-	}
+	sub := e.thinned(about)
 	v := make([]float64, len(sub.scenarios))
 	sub.each(func(i int, s *scenario) {
 		v[i] = math.Inf(1)
@@ -159,7 +180,8 @@ func (e *ensemble) loadIAE(c law, about int, fine float64) float64 {
 			}
 		}
 	})
-	return quantile(v, 0.5)
+	median, _ := sub.quantile(func(i int) float64 { return v[i] }, 0.5)
+	return median
 }
 
 // thinned keeps every n-th scenario of each card so that about the given

@@ -53,7 +53,7 @@ func ExampleConvert() {
 		fmt.Printf("%s %.4g %s\n", e.Name, e.Value, e.Unit)
 	}
 	// Output:
-	// proportional band 12.97 %
+	// proportional band 12.97 % of 0 to 200
 	// integral time 0.437 min
 	// derivative time 0.1297 min
 	// setpoint weight 1.297

@@ -60,44 +60,23 @@ func finite(x float64) *float64 {
 	return &x
 }
 
-// worst gathers the share quantile of every figure over the scenarios, each
-// figure for itself: the high side of what should be small, the low side of
-// what should be large. inputs are the operating inputs by card.
+// worst gathers the share quantile of every figure over the scenarios of each
+// card, each figure for itself: the high side of what should be small, the low
+// side of what should be large; of several cards the worst. inputs are the
+// operating inputs by card.
 func (e *ensemble) worst(c law, out []outcome, share float64, inputs []float64) *Metrics {
-	n := len(out)
-	column := func(f func(i int) float64) []float64 {
-		v := make([]float64, n)
-		for i := range v {
-			v[i] = math.NaN()
-			if out[i].stable {
-				v[i] = f(i)
-			}
-		}
-		return v
+	high := func(f func(i int) float64) *float64 {
+		v, _ := e.quantile(onStable(out, f), share)
+		return finite(v)
 	}
-	high := func(f func(i int) float64) *float64 { return finite(quantile(column(f), share)) }
 	low := func(f func(i int) float64) *float64 {
 		if q := high(func(i int) float64 { return -f(i) }); q != nil {
 			return finite(-*q)
 		}
 		return nil
 	}
-	stable := 0
-	iae := make([]float64, n)
-	e.each(func(i int, s *scenario) {
-		iae[i] = math.NaN()
-		if out[i].stable && c.integral() {
-			if f, err := s.task.load(s, c, out[i].quick, searchStep); err == nil {
-				iae[i] = f.iae
-			}
-		}
-	})
-	for _, o := range out {
-		if o.stable {
-			stable++
-		}
-	}
-	m := &Metrics{Stable: stable >= needed(n, share)}
+	iae := e.loadAreas(c, out)
+	m := &Metrics{Stable: e.mostly(func(i int) bool { return out[i].stable }, share)}
 	m.Ms = high(func(i int) float64 { return out[i].quick.ms })
 	m.GainMargin = low(func(i int) float64 { return out[i].quick.gainMargin })
 	m.PhaseMargin = low(func(i int) float64 { return out[i].quick.phaseMargin })
@@ -112,4 +91,35 @@ func (e *ensemble) worst(c law, out []outcome, share float64, inputs []float64) 
 		m.PeakInput = low(func(i int) float64 { return inputs[e.scenarios[i].card] + out[i].step.inputLow })
 	}
 	return m
+}
+
+// onStable is a figure that does not exist, NaN, on plants whose loop is not
+// stable.
+func onStable(out []outcome, f func(i int) float64) func(i int) float64 {
+	return func(i int) float64 {
+		if !out[i].stable {
+			return math.NaN()
+		}
+		return f(i)
+	}
+}
+
+// loadAreas returns the load IAE on every scenario, NaN where there is none.
+func (e *ensemble) loadAreas(c law, out []outcome) []float64 {
+	iae := make([]float64, len(out))
+	e.each(func(i int, s *scenario) {
+		iae[i] = math.NaN()
+		if out[i].stable && c.integral() {
+			if f, err := s.task.load(s, c, out[i].quick, searchStep); err == nil {
+				iae[i] = f.iae
+			}
+		}
+	})
+	return iae
+}
+
+// mostly tells whether a share of the scenarios of every card has a property.
+func (e *ensemble) mostly(has func(i int) bool, share float64) bool {
+	_, least := e.leastShare(has)
+	return least >= share-1e-9
 }

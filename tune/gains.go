@@ -25,16 +25,17 @@ type Gains struct {
 	Requirement Requirement `json:"requirement"`
 
 	Nominal      *Metrics `json:"nominal"` // on the best-fit plant
-	Worst        *Metrics `json:"worst"`   // the assurance quantile over plausible plants it was not chosen on
+	Worst        *Metrics `json:"worst"`   // the assurance quantile over plausible plants it was not chosen on; of several cards the worst
 	Assurance    float64  `json:"assurance"`
 	Meets        bool     `json:"meets"`
-	ShareMeeting float64  `json:"share_meeting"`
-	Reasons      []string `json:"reasons"`         // what fails and by how much
-	Cures        []string `json:"cures,omitempty"` // changes that would let it hold, sized
+	ShareMeeting float64  `json:"share_meeting"`         // of several cards, on the worst
+	ShareError   float64  `json:"share_error,omitempty"` // its sampling error, one standard deviation
+	Reasons      []string `json:"reasons"`               // what fails and by how much
+	Cures        []string `json:"cures,omitempty"`       // changes that would let it hold, sized
 	Cautions     []string `json:"cautions"`
 
 	OperatingInput *float64        `json:"operating_input,omitempty"`  // the figures are judged from here
-	HoldsOver      *[2]float64     `json:"holds_over_input,omitempty"` // power law: inputs over which the requirement holds
+	HoldsOver      *[2]float64     `json:"holds_over_input,omitempty"` // power law: inputs over which the requirement holds, on every card
 	SquareRoot     *SquareRoot     `json:"square_root,omitempty"`      // power law: gain behind a square root
 	Schedule       []ScheduleEntry `json:"schedule,omitempty"`         // several cards: a set for each
 

@@ -263,7 +263,7 @@ func (w *winding) to(s complex128, depth int) {
 // known to be less than zeta.
 func (l *openLoop) dampingBelow(zeta, phaseCross float64) float64 {
 	lo, hi := 0.0, zeta
-	for range 14 {
+	for range 8 {
 		mid := (lo + hi) / 2
 		if l.dampedEnough(mid, phaseCross) {
 			lo = mid

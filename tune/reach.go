@@ -14,7 +14,7 @@ import (
 func (o operation) admits(q Requirement) error {
 	in, temp := o.card.Units.Input, o.card.Units.Temperature
 	if q.InputMax != nil && o.input > *q.InputMax || q.InputMin != nil && o.input < *q.InputMin {
-		return fmt.Errorf("the operating input, %s, lies outside the input limits: give --operating-input", quantity(o.input, in, 4))
+		return fmt.Errorf("the heater is taken to run at an input of %s, outside the input limits (%s): give --operating-input with the input at which it runs", quantity(o.input, in, 4), limitWords(q, in))
 	}
 	if q.TempMax == nil {
 		return nil
@@ -24,6 +24,17 @@ func (o operation) admits(q Requirement) error {
 			quantity(*q.SetpointStep, perKelvin(temp), 3), quantity(o.temperature, temp, 4), quantity(o.input, in, 4), quantity(end, temp, 4), quantity(*q.TempMax, temp, 4))
 	}
 	return nil
+}
+
+// limitWords writes the limits of the input down.
+func limitWords(q Requirement, unit string) string {
+	switch {
+	case q.InputMin == nil:
+		return "up to " + quantity(*q.InputMax, unit, 4)
+	case q.InputMax == nil:
+		return "from " + quantity(*q.InputMin, unit, 4)
+	}
+	return figure(q.InputMin, 4) + " to " + quantity(*q.InputMax, unit, 4)
 }
 
 // reaches tells whether the limits of the input leave the end of the setpoint
@@ -57,9 +68,6 @@ func (e *ensemble) reaches(share float64) bool {
 // the step can tell one controller from another: for Ms, and for damping where
 // it is asked. The result is not found, whatever it is.
 func (s *search) beyondReach(kind string) design {
-	if s.thin {
-		return design{iae: math.Inf(1), miss: math.Inf(1)}
-	}
 	list := make([]*scenario, len(s.on.scenarios))
 	for i, old := range s.on.scenarios {
 		free := *old.task

@@ -33,7 +33,7 @@ func TestStepBeyondTheInputLimits(t *testing.T) {
 		t.Errorf("steady offset %g, want %g", got, want)
 	}
 	text := strings.Join(append(g.Reasons, g.Cures...), "\n")
-	for _, want := range []string{"the limit that binds is the input", "more supply would do"} {
+	for _, want := range []string{"the limit that binds is the input", "more supply: an input up to 5.6 V"} {
 		if !strings.Contains(text, want) {
 			t.Errorf("%q is not said in:\n%s", want, text)
 		}

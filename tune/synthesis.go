@@ -31,7 +31,7 @@ type search struct {
 	from      float64 // the gain to start from, > 0
 	ti        [2]float64
 	b         float64
-	thin      bool // only whether there is a solution matters
+	any       bool // the first that holds will do
 }
 
 // filterShare is the measurement filter as a part of the derivative time
@@ -147,15 +147,11 @@ func (s *search) proportional() design {
 // nearest miss is looked for, and if it misses nothing the search goes on
 // around it.
 func (s *search) integral() design {
-	scan, refine := 13, 9
-	if s.thin {
-		scan, refine = 9, 0
-	}
-	if d := s.overTimes(s.on, 0, scan, refine); d.found {
+	if d := s.overTimes(s.on, 0, 13, 9); d.found {
 		return d
 	}
 	d := s.nearest("pi")
-	if !d.found || s.thin {
+	if !d.found || s.any {
 		return d
 	}
 	return s.around(d, 0)
@@ -207,6 +203,9 @@ func (s *search) overTimes(on *ensemble, part float64, scan, refine int) design 
 		k := scan - 1 - i
 		grid[k] = lo + (hi-lo)*float64(k)/float64(scan-1)
 		value[k] = try(grid[k])
+		if s.any && best.found {
+			return best
+		}
 	}
 	if !best.found {
 		return best
@@ -253,18 +252,18 @@ func (s *search) derivative() design {
 		if d := s.overTimes(few, part, 9, 5); d.found && d.iae < best {
 			best, at = d.iae, part
 			s.from = math.Abs(d.law.kc)
+			if s.any {
+				return d
+			}
 		}
 	}
 	if at > 0 {
-		if s.thin {
-			return design{found: true}
-		}
 		if d := s.overTimes(s.on, at, 13, 8); d.found {
 			return d
 		}
 	}
 	d := s.nearest("pid")
-	if !d.found || s.thin {
+	if !d.found || s.any {
 		return d
 	}
 	return s.around(d, d.law.td/d.law.ti)
@@ -272,74 +271,76 @@ func (s *search) derivative() design {
 
 // nearest looks for the gains that miss the requirement least: the coarse
 // scan's best point, then the simplex method (Nelder and Mead 1965) on the
-// logarithms of gain and times.
+// logarithms of gain and times, first on some of the plants, then, where what
+// holds on those fails on all, on all.
 func (s *search) nearest(kind string) design {
-	few, points, steps, evaluations := s.on.thinned(60), 12, 11, 80
-	if s.thin {
-		few, points, steps, evaluations = s.on.thinned(24), 8, 8, 30
+	few := s.on.thinned(60)
+	at := s.coarse(few, kind)
+	at = s.simplex(few, kind, at, 0.3, 80)
+	c := s.build(kind, at)
+	miss := s.on.miss(c, s.assurance)
+	if miss > hair {
+		c = s.build(kind, s.simplex(s.on, kind, at, 0.08, 50))
+		miss = s.on.miss(c, s.assurance)
 	}
-	build := func(x []float64) law {
-		ti, td := math.Inf(1), 0.0
-		if kind != "p" {
-			ti = math.Exp(x[1])
-		}
-		if kind == "pid" {
-			td = ti * math.Exp(x[2])
-		}
-		return s.law(math.Exp(x[0]), ti, td)
-	}
-	best, at := math.Inf(1), []float64{math.Log(s.kc)}
-	visit := func(x []float64) {
-		if cancelled(s.ctx) || s.thin && best <= hair {
-			return
-		}
-		if m := few.miss(build(x), s.assurance); m < best {
-			best, at = m, slices.Clone(x)
-		}
-	}
-	times := []float64{0}
-	if kind != "p" {
-		times = times[:0]
-		lo, hi := math.Log(s.ti[0]), math.Log(s.ti[1])
-		for i := range points {
-			times = append(times, lo+(hi-lo)*float64(i)/float64(points-1))
-		}
-	}
-	for _, logTi := range times {
-		for i := range steps {
-			x := []float64{math.Log(s.kc) + math.Log(3) - 5.5*float64(i)/float64(steps-1)}
-			if kind != "p" {
-				x = append(x, logTi)
-			}
-			if kind == "pid" {
-				x = append(x, math.Log(0.2))
-			}
-			visit(x)
-		}
-	}
-	if s.thin && best <= hair {
-		return design{law: build(at), found: true}
-	}
-	if len(at) == 1 && kind != "p" { // nothing was stable
-		at = append(at, math.Log(s.ti[1]))
-		if kind == "pid" {
-			at = append(at, math.Log(0.2))
-		}
-	}
-	problem := optimize.Problem{Func: func(x []float64) float64 {
-		if cancelled(s.ctx) {
-			return math.MaxFloat64
-		}
-		return few.miss(build(x), s.assurance)
-	}}
-	if r, err := optimize.Minimize(problem, at, &optimize.Settings{FuncEvaluations: evaluations}, &optimize.NelderMead{SimplexSize: 0.3}); r != nil && (err == nil || r.F <= best) {
-		at = r.X
-	}
-	c := build(at)
-	d := design{law: c, iae: math.Inf(1), miss: s.on.miss(c, s.assurance)}
-	d.found = d.miss <= hair
+	d := design{law: c, iae: math.Inf(1), miss: miss, found: miss <= hair}
 	if c.integral() {
 		d.iae = s.on.loadIAE(c, iaeSample, searchStep)
 	}
 	return d
+}
+
+// build is the law at a point of the nearest search: the logarithms of gain,
+// integral time and Td/Ti.
+func (s *search) build(kind string, x []float64) law {
+	ti, td := math.Inf(1), 0.0
+	if kind != "p" {
+		ti = math.Exp(x[1])
+	}
+	if kind == "pid" {
+		td = ti * math.Exp(x[2])
+	}
+	return s.law(math.Exp(x[0]), ti, td)
+}
+
+// coarse returns the point of a grid of gains and times that misses least.
+func (s *search) coarse(on *ensemble, kind string) []float64 {
+	const gains, times, part = 11, 12, 0.2
+	point := func(logKc, logTi float64) []float64 {
+		return []float64{logKc, logTi, math.Log(part)}[:len(kind)] // one number a letter
+	}
+	lo, hi := math.Log(s.ti[0]), math.Log(s.ti[1])
+	best, at := math.Inf(1), point(math.Log(s.kc), hi) // where nothing is stable
+	for k := range times {
+		if kind == "p" && k > 0 {
+			break
+		}
+		for i := range gains {
+			x := point(math.Log(s.kc)+math.Log(3)-5.5*float64(i)/(gains-1), lo+(hi-lo)*float64(k)/(times-1))
+			if cancelled(s.ctx) {
+				return at
+			}
+			if m := on.miss(s.build(kind, x), s.assurance); m < best {
+				best, at = m, x
+			}
+		}
+	}
+	return at
+}
+
+// simplex goes on from a point to one that misses no more.
+func (s *search) simplex(on *ensemble, kind string, from []float64, size float64, evaluations int) []float64 {
+	best, at := math.Inf(1), from
+	problem := optimize.Problem{Func: func(x []float64) float64 {
+		if cancelled(s.ctx) {
+			return math.MaxFloat64
+		}
+		m := on.miss(s.build(kind, x), s.assurance)
+		if m < best {
+			best, at = m, slices.Clone(x)
+		}
+		return m
+	}}
+	_, _ = optimize.Minimize(problem, from, &optimize.Settings{FuncEvaluations: evaluations}, &optimize.NelderMead{SimplexSize: size})
+	return at // whatever ended the search
 }

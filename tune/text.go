@@ -148,17 +148,46 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 	if !g.Meets {
 		verdict = "does NOT meet"
 	}
-	fmt.Fprintf(b, "\nThis %s the requirement (%s) on %.4g %% of the plausible plants: it holds on %.1f %% of those it was not chosen on.\n",
-		verdict, g.Requirement.Words(g.Units), 100*g.Assurance, 100*g.ShareMeeting)
+	fmt.Fprintf(b, "\nThis %s the requirement (%s): it holds on %s; asked %s%s.\n",
+		verdict, g.Requirement.Words(g.Units), g.countedOn(), percent(g.Assurance), g.scatter())
 	for _, r := range g.Reasons {
 		fmt.Fprintln(b, "  -", plain(r))
 	}
 	if len(g.Cures) > 0 {
-		fmt.Fprintln(b, "What would change that")
+		fmt.Fprintln(b, "What would let it be met, any one of these")
 		for _, c := range g.Cures {
 			fmt.Fprintln(b, "  -", plain(c))
 		}
 	}
+}
+
+// countedOn says on which share of which plants the requirement holds.
+func (g *Gains) countedOn() string {
+	words := exactly(g.ShareMeeting) + " of the plausible plants"
+	if len(g.Schedule) > 0 {
+		words += " of the worst card"
+	}
+	if g.Rule == synthesised {
+		words += ", those it was not chosen on"
+	}
+	return words
+}
+
+// scatter says by how much the share may be wrong where that matters.
+func (g *Gains) scatter() string {
+	short := g.Assurance - g.ShareMeeting
+	switch {
+	case g.ShareError == 0 || g.ShareMeeting == 1 || math.Abs(short) > 2*g.ShareError:
+		return ""
+	case g.Meets && short > 1e-9:
+		return fmt.Sprintf(", sampling error %.2g %%: short by less than twice that, which passes", 100*g.ShareError)
+	}
+	return fmt.Sprintf(", sampling error %.2g %%", 100*g.ShareError)
+}
+
+// exactly is percent to a tenth.
+func exactly(share float64) string {
+	return fmt.Sprintf("%.3g %%", math.Floor(1000*share+1e-9)/10)
 }
 
 func (g *Gains) writeMore(b *bufio.Writer) {

@@ -20,13 +20,14 @@ func TestWriteText(t *testing.T) {
 	g.Rule, g.Assurance, g.ShareMeeting, g.Scan = "synthesis", 0.95, 0.84, 0.5
 	g.Units = GainUnits{Input: "V", Temperature: "degC"}
 	g.Limits = Limits{Min: ptr(0), Max: ptr(10), Rate: ptr(2)}
+	g.ShareError, g.Nominal = 0.0154, figures(1.5, 3)
 	g.Requirement = Requirement{Ms: ptr(1.6), Overshoot: ptr(5)}
 	g.Candidates = []Candidate{
 		{Rule: "synthesis", Controller: "pid", Kc: 0.19, Ti: ptr(60), Td: ptr(7), Filter: 0.7, Nominal: figures(1.5, 3), Worst: figures(1.7, 6), Share: 0.84, Selected: true, InputNoise: 0.12},
 		{Rule: "zn-step", Controller: "pi", Kc: 0.4, Ti: ptr(50), Nominal: figures(2.4, 28), Worst: &Metrics{}, InputNoise: 0.06},
 	}
-	g.Reasons = []string{"overshoot: 6 % on the plant at 95 %; asked is 5 %"}
-	g.Cures = []string{"cutting the dead time to 80 % would do"}
+	g.Reasons = []string{"overshoot: up to 6 % on 95 % of the plausible plants; asked is 5 %"}
+	g.Cures = []string{"allow an overshoot of 6.5 % in place of 5 %", "cut the dead time from 5 s to 4 s (sensor nearer the heater, measurement less filtered)"}
 	g.SquareRoot = &SquareRoot{Kc: 2.3, Unit: "V²/K"}
 	g.PoleRegion = &RegionDesign{Region: PoleRegion{Damping: 0.7}, Plausible: nil, Assurance: 0.95, Best: 0.3, BestSettling: 120, BestDamping: 0.65}
 	g.Schedule = []ScheduleEntry{{Card: "low\x1b[31m.csv", Input: [2]float64{2, 4}, Kc: 0.3, Ti: ptr(55), Cost: ptr(1.7)}}

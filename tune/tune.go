@@ -1,6 +1,7 @@
 package tune
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"math"
@@ -33,8 +34,9 @@ type Options struct {
 
 // The figures a result is judged by.
 const (
-	rulesJudged  = 100 // plausible plants a row of the table is judged on where it is not the recommended one
-	usualMs      = 1.6 // when nothing is required
+	rulesJudged  = 100         // plausible plants a row of the table is judged on where it is not the recommended one
+	synthesised  = "synthesis" // the name of the default in place of a rule's
+	usualMs      = 1.6         // when nothing is required
 	usualShare   = 0.95
 	derivativeBy = 0.7  // PID is preferred where it brings the load IAE below this part of PI's …
 	noiseAllowed = 0.02 // … and sends less noise to the drive than this part of the input's range
@@ -125,10 +127,15 @@ func newTuning(cards []*fit.Card, q Requirement, o Options) (*tuning, error) {
 	if t.requirement, err = complete(q, t.ops[0]); err != nil {
 		return nil, err
 	}
+	return t, t.prepare()
+}
+
+// prepare makes the plausible plants ready to be tried.
+func (t *tuning) prepare() error {
 	var list []*scenario
 	for card, op := range t.ops {
 		if err := op.admits(t.requirement); err != nil {
-			return nil, err
+			return err
 		}
 		task := newTask(t.requirement, op.input, op.temperature)
 		for _, p := range op.plants {
@@ -136,7 +143,7 @@ func newTuning(cards []*fit.Card, q Requirement, o Options) (*tuning, error) {
 		}
 	}
 	t.plausible = newEnsemble(list, t.workers)
-	return t, nil
+	return nil
 }
 
 // complete checks a requirement and fills in what it leaves open.
@@ -207,20 +214,29 @@ func (t *tuning) designRows(ctx context.Context) ([]row, error) {
 	}
 	var rows []row
 	for _, kind := range kinds {
-		s := newSearch(ctx, t.plausible, t.ops[0].nominal, t.options.Assurance)
-		d := s.design(kind)
-		if err := ctx.Err(); err != nil {
+		r, err := t.designRow(ctx, kind)
+		if err != nil {
 			return nil, err
 		}
-		r := row{rule: "synthesis", kind: kind, law: d.law, form: Ideal, designed: d, on: t.plausible}
-		r.out = crossFitted(ctx, t.plausible, d, t.options.Assurance)
-		r = t.judged(r)
-		if !d.found {
-			r.note = "nearest miss"
-		}
-		rows = append(rows, r)
+		rows = append(rows, t.judged(r))
 	}
 	return rows, nil
+}
+
+// designRow synthesises a controller of one kind.
+func (t *tuning) designRow(ctx context.Context, kind string) (row, error) {
+	s := newSearch(ctx, t.plausible, t.ops[0].nominal, t.options.Assurance)
+	d := s.design(kind)
+	if err := ctx.Err(); err != nil {
+		return row{}, err
+	}
+	r := row{rule: synthesised, kind: kind, law: d.law, form: Ideal, designed: d, on: t.plausible}
+	r.out = crossFitted(ctx, t.plausible, d, t.options.Assurance)
+	r.share = r.on.share(r.out)
+	if !d.found {
+		r.note = "nearest miss"
+	}
+	return r, nil
 }
 
 // ruleRows applies a published rule to the best fit of the first card; kind
@@ -249,8 +265,9 @@ func (t *tuning) ruleRows(name, kind string) ([]row, error) {
 		if t.options.Rule == "" {
 			on = t.plausible.thinned(rulesJudged)
 		}
-		rows = append(rows, t.judged(row{rule: name, kind: k, law: c, form: g.Form, note: note, designed: design{law: c, found: true},
-			on: on, out: on.outcomes(c, searchStep)}))
+		r := row{rule: name, kind: k, law: c, form: g.Form, note: note, designed: design{law: c, found: true}, on: on, out: on.outcomes(c, searchStep)}
+		r.share = on.share(r.out)
+		rows = append(rows, t.judged(r))
 		if t.options.Rule != "" {
 			break // the first controller the rule has
 		}
@@ -267,7 +284,6 @@ func (t *tuning) judged(r row) row {
 	o := t.ops[0]
 	task := newTask(t.requirement, o.input, o.temperature)
 	r.nominal = task.metrics(newScenario(o.nominal, &task, 0), r.law, o.input)
-	r.share = r.on.share(r.out)
 	inputs := make([]float64, len(t.ops))
 	for i, o := range t.ops {
 		inputs[i] = o.input
@@ -276,17 +292,40 @@ func (t *tuning) judged(r row) row {
 	return r
 }
 
-// meets tells whether a row's share reaches the assurance, within twice the
-// sampling error of the fresh plants it was counted on.
+// meets tells whether a row's share reaches the assurance. A design holds on
+// that share of the plants it was chosen on (see toHold); that it holds as well
+// on others is a count that scatters about the share by its sampling error, and
+// may stay short of it by twice that much. A published rule was not chosen on
+// any: its count stands as it is.
 func (t *tuning) meets(r row) bool {
-	a := t.options.Assurance
-	n := float64(len(r.out)) / float64(len(t.ops))
-	return r.designed.found && r.share >= a-2*math.Sqrt(a*(1-a)/n)
+	short := t.options.Assurance - r.share
+	if r.rule != synthesised {
+		return short <= 1e-9
+	}
+	return r.designed.found && short <= 2*t.shareError(r)
+}
+
+// shareError is the sampling error of a row's share where the assurance is
+// right: one standard deviation on the card with the fewest plants.
+func (t *tuning) shareError(r row) float64 {
+	return samplingError(t.options.Assurance, slices.Min(r.on.counts()))
+}
+
+// samplingError is the standard deviation of a share counted on n plants.
+func samplingError(share float64, n int) float64 {
+	return math.Sqrt(share * (1 - share) / float64(n))
+}
+
+// units are those of the cards.
+func (t *tuning) units() GainUnits {
+	u := t.ops[0].card.Units
+	return GainUnits{Input: u.Input, Temperature: u.Temperature}
 }
 
 // choose returns the row to recommend: PI where it meets the requirement,
 // PID where only it does or where it rejects loads much better at little
-// noise, P where only P does; where none meets it, the one that is nearest.
+// noise, P where only P does; where none meets it, the one that is nearest, of
+// those equally near in share one that leaves no offset.
 func (t *tuning) choose(rows []row) int {
 	index := func(kind string) int {
 		return slices.IndexFunc(rows, func(r row) bool { return r.kind == kind && t.meets(r) })
@@ -308,13 +347,18 @@ func (t *tuning) choose(rows []row) int {
 	if p := index("p"); p >= 0 {
 		return p
 	}
-	best := 0
-	for i, r := range rows {
-		if r.share > rows[best].share || r.share == rows[best].share && r.designed.miss < rows[best].designed.miss {
-			best = i
-		}
+	nearest := slices.MaxFunc(rows, func(a, b row) int {
+		return cmp.Or(cmp.Compare(a.share, b.share), offsets(b)-offsets(a), cmp.Compare(b.designed.miss, a.designed.miss))
+	})
+	return slices.IndexFunc(rows, func(r row) bool { return r.kind == nearest.kind && r.rule == nearest.rule })
+}
+
+// offsets is 1 for a controller that leaves a steady offset.
+func offsets(r row) int {
+	if r.law.integral() {
+		return 0
 	}
-	return best
+	return 1
 }
 
 // inputNoise is the standard deviation, in input units, that the noise of the
@@ -367,19 +411,16 @@ func (t *tuning) gains(ctx context.Context, r row) (*Gains, error) {
 	g.Tool, g.Rule, g.Requirement = t.options.Tool, r.rule, t.requirement
 	g.Scan = t.requirement.Scan
 	g.Limits = Limits{Min: t.requirement.InputMin, Max: t.requirement.InputMax, Rate: t.requirement.InputRate}
-	g.Units = GainUnits{Input: o.card.Units.Input, Temperature: o.card.Units.Temperature}
+	g.Units = t.units()
 	if !r.law.integral() {
 		g.Bias = o.input
 	}
 	g.Nominal, g.Worst, g.Assurance = r.nominal, r.worst, t.options.Assurance
-	g.Meets, g.ShareMeeting = t.meets(r), r.share
+	g.Meets, g.ShareMeeting, g.ShareError = t.meets(r), r.share, t.shareError(r)
 	g.OperatingInput = finite(o.input)
 	g.Reasons = []string{}
 	if !g.Meets {
-		g.Reasons = r.on.reasons(t.requirement, g.Units, r.out, r.worst, t.options.Assurance)
-		if t.options.Rule == "" {
-			g.Cures = t.cures(ctx, r.kind, t.options.Assurance)
-		}
+		g.Reasons, g.Cures = t.reasons(r), t.cures(ctx, r.kind)
 	}
 	form := r.form
 	out, err := Convert(g, form, Spelling{Band: t.options.Band, Rate: t.options.Rate, Minutes: t.options.Minutes, InputSpan: t.options.InputSpan, TempSpan: t.options.TempSpan})
@@ -388,54 +429,6 @@ func (t *tuning) gains(ctx context.Context, r row) (*Gains, error) {
 	}
 	out.Cautions = t.cautions(out)
 	return out, nil
-}
-
-// schedule compares one set for all cards with a set for each, and proposes
-// the sets where the one costs too much load IAE.
-func (t *tuning) schedule(ctx context.Context, g *Gains) {
-	limit := t.options.ScheduleFactor
-	if limit == 0 {
-		limit = 1.5
-	}
-	common, err := g.law()
-	if err != nil || !common.integral() {
-		return
-	}
-	var entries []ScheduleEntry
-	worst := 0.0
-	for card, o := range t.ops {
-		var own []*scenario
-		for _, s := range t.plausible.scenarios {
-			if s.card == card {
-				alone := *s
-				alone.card = 0
-				own = append(own, &alone)
-			}
-		}
-		e := newEnsemble(own, t.workers)
-		d := newSearch(ctx, e, o.nominal, t.options.Assurance).design(g.Controller)
-		entry := ScheduleEntry{Card: label(o.card), Input: o.card.Range.Input, Kc: d.law.kc, Ti: finite(d.law.ti), Filter: d.law.tf, Meets: d.found}
-		if g.Controller == "pid" {
-			entry.Td = finite(d.law.td)
-		}
-		if d.found {
-			cost := e.loadIAE(common, iaeSample, searchStep) / d.iae
-			entry.Cost = finite(cost)
-			worst = max(worst, cost)
-		}
-		entries = append(entries, entry)
-	}
-	if worst > limit || !g.Meets {
-		g.Schedule = entries
-		g.Reasons = append(g.Reasons, fmt.Sprintf("one set for all %d cards costs up to %.2f times the load IAE of a set for each: see the schedule", len(t.ops), worst))
-	}
-}
-
-func label(c *fit.Card) string {
-	if len(c.Source) == 0 {
-		return ""
-	}
-	return c.Source[0].File
 }
 
 // poleRegion adds, where P control is in question and settling or damping is
@@ -457,46 +450,4 @@ func (t *tuning) poleRegion(g *Gains) {
 		plants = append(plants, s.p)
 	}
 	g.PoleRegion = DesignPoleRegion(t.ops[0].nominal, plants, r, t.options.Assurance)
-}
-
-// powerLaw says over which inputs the gains hold when the heat goes with the
-// square of the input, and what to enter behind a square-root linearisation.
-func (t *tuning) powerLaw(g *Gains) {
-	o := t.ops[0]
-	if len(t.ops) > 1 || o.card.Law() != ident.Power {
-		return
-	}
-	c, err := g.law()
-	if err != nil {
-		return
-	}
-	task := newTask(t.requirement, o.input, o.temperature)
-	few := t.plausible.thinned(rulesJudged)
-	holds := func(input float64) bool {
-		slope := o.card.Law().Slope(input)
-		if !(slope*o.slope > 0) {
-			return false
-		}
-		list := make([]*scenario, len(few.scenarios))
-		for i, s := range few.scenarios {
-			list[i] = newScenario(scaledGain(s.p, slope/o.slope), &task, 0)
-		}
-		e := newEnsemble(list, t.workers)
-		return e.holds(c, t.options.Assurance-2*math.Sqrt(t.options.Assurance*(1-t.options.Assurance)/float64(len(list))))
-	}
-	linear := &SquareRoot{Kc: c.kc * o.slope, Unit: orUnit(o.card.Units.Input, "input") + "²/" + orUnit(perKelvin(o.card.Units.Temperature), "K")}
-	g.SquareRoot = linear
-	if !g.Meets {
-		return
-	}
-	lo, hi := o.input, o.input
-	for f := 0.98; f > 0.05 && holds(o.input*f); f -= 0.02 {
-		lo = o.input * f
-	}
-	for f := 1.02; f < 3 && holds(o.input*f); f += 0.02 {
-		hi = o.input * f
-	}
-	g.HoldsOver = &[2]float64{min(lo, hi), max(lo, hi)}
-	g.Cautions = append([]string{fmt.Sprintf("the gain grows with the input: these gains hold the requirement between %.3g and %.3g %s; behind a square root of the controller's output one set holds everywhere",
-		g.HoldsOver[0], g.HoldsOver[1], o.card.Units.Input)}, g.Cautions...)
 }

@@ -2,6 +2,9 @@ package main
 
 import (
 	"context"
+	"io"
+	"os"
+	"path/filepath"
 	"strings"
 
 	"github.com/spf13/cobra"
@@ -26,7 +29,8 @@ func newTune(c *console) *cobra.Command {
 meets the requirement on the plausible plants, not only on the best fit. With
 no requirement, Ms is held to 1.6. Several cards give one set, safe for all.
 When nothing meets the requirement the nearest miss is written, with what
-binds and what would have to change; that is exit code 4.
+binds and which settling time, overshoot or other limit could be had instead;
+that is exit code 4.
 ` + exitHelp,
 		Example: `  lagwright tune card.json --settling 60s --overshoot 5% -o gains.json
   lagwright tune card.json --controller pi --ms 1.5 --input-max 10 --scan 100ms
@@ -51,7 +55,7 @@ func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) err
 	for _, path := range args {
 		card, err := c.readCard(path)
 		if err != nil {
-			return err
+			return cardError(path, err)
 		}
 		cards = append(cards, card)
 	}
@@ -66,6 +70,31 @@ func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) err
 		return err
 	}
 	return gainsVerdict(gains)
+}
+
+// cardError says what to do with a file that is no model card.
+func cardError(path string, err error) error {
+	name := filepath.Base(path)
+	switch kind, _, _ := lagwrightFile(path); {
+	case kind != "" && kind != "card":
+		return inputErrorf("%s is a file of %s, not a model card: give the card that lagwright fit wrote", name, kind)
+	case kind == "" && table(path):
+		return inputErrorf("%s is not a model card; if it is a log, fit it first: lagwright fit %s -o card.json", name, name)
+	}
+	return err
+}
+
+// table tells a file that may be a log from one that is no file or was meant
+// to be JSON.
+func table(path string) bool {
+	f, err := os.Open(path)
+	if err != nil {
+		return false
+	}
+	defer f.Close()
+	var first [1]byte
+	_, err = io.ReadFull(f, first[:])
+	return err == nil && first[0] != '{'
 }
 
 // gainsVerdict is nil where the gains meet the requirement.

@@ -1,0 +1,86 @@
+package tune
+
+import (
+	"fmt"
+	"math"
+	"slices"
+
+	"lagwright/fit"
+)
+
+// CautionStart goes with every set of gains. Common practice, no source.
+const CautionStart = "Start new gains with the output limited and a small setpoint step; stay with the heater, ready to switch to manual."
+
+// soundMs is the largest peak sensitivity that passes without a word: sound
+// loops have 1.2 to 2 (Åström and Hägglund, Advanced PID Control, 2006, from
+// memory).
+const soundMs = 2.0
+
+// cautions go with every set of gains.
+func (t *tuning) cautions(g *Gains) []string {
+	c := []string{fit.CautionCutOut, fit.CautionSheath, CautionStart}
+	for _, o := range t.ops {
+		if words := o.card.CautionRange(); !slices.Contains(c, words) {
+			c = append(c, words)
+		}
+	}
+	o := t.ops[0]
+	unit := o.card.Units.Temperature
+	if s := g.Requirement.SetpointStep; s != nil && g.Worst != nil && g.Worst.Overshoot != nil {
+		from := o.temperature // of the hottest card
+		for _, other := range t.ops {
+			from = max(from, other.temperature)
+		}
+		top := from + *s*(1+math.Max(*g.Worst.Overshoot, 0)/100)
+		if *s > 0 {
+			top = math.Ceil(10*top-1e-6) / 10 // never said to be cooler than it is
+		} else {
+			top = math.Floor(10*top+1e-6) / 10
+		}
+		c = append(c, fmt.Sprintf("A setpoint step of %s from about %s may reach %s.", quantity(*s, perKelvin(unit), 2), quantity(from, unit, 3), quantity(top, unit, 4)))
+	}
+	if words := t.unlimited(g); words != "" {
+		c = append(c, words)
+	}
+	if n := g.Nominal; g.Controller == "p" && n != nil && n.SteadyOffset != nil && g.Requirement.SetpointStep != nil {
+		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",
+			quantity(*g.Requirement.SetpointStep, perKelvin(unit), 2), quantity(math.Abs(*n.SteadyOffset), perKelvin(unit), 2)))
+	}
+	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs {
+		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.0f %%; up to %.0f is usual. Ask for --ms %.1f.",
+			figure(w.Ms, 3), 100*g.Assurance, soundMs, usualMs))
+	}
+	if len(o.plants) < 20 {
+		c = append(c, fmt.Sprintf("The card holds %d plausible plants: the spread of the figures is not known.", len(o.plants)))
+	}
+	for _, w := range o.card.Warnings {
+		if slices.Contains([]string{"short-record", "no-plateau"}, w.Code) {
+			c = append(c, "From the card: "+w.Text+".")
+		}
+	}
+	return append(c, fit.CautionCodes)
+}
+
+// unlimited says that a step drives the input to where the log has not been
+// while no limit was given.
+func (t *tuning) unlimited(g *Gains) string {
+	if g.Worst == nil || g.Worst.PeakInput == nil {
+		return ""
+	}
+	peak, unit := *g.Worst.PeakInput, g.Units.Input
+	low, high := math.Inf(1), math.Inf(-1)
+	for _, o := range t.ops {
+		low, high = min(low, o.card.Range.Input[0]), max(high, o.card.Range.Input[1])
+	}
+	flag := ""
+	switch {
+	case peak > high && g.Limits.Max == nil:
+		flag = "--input-max"
+	case peak < low && g.Limits.Min == nil:
+		flag = "--input-min"
+	default:
+		return ""
+	}
+	return fmt.Sprintf("No %s was given, so the input is taken as unlimited: the setpoint step of %s drives it to %s, the log has it from %s to %s. Give the drive's limits.",
+		flag, quantity(*g.Requirement.SetpointStep, perKelvin(g.Units.Temperature), 2), quantity(peak, unit, 3), figure(&low, 3), quantity(high, unit, 3))
+}
