@@ -121,6 +121,43 @@ func TestParquetTypes(t *testing.T) {
 	}
 }
 
+// A switched drive is the same run as truth values, as text and as CSV.
+func TestParquetSwitched(t *testing.T) {
+	for _, c := range []struct {
+		name   string
+		heater pqColumn
+	}{
+		{name: "truth values", heater: pqOf[bool, *file.BooleanColumnChunkWriter]("heater", nil, parquet.Types.Boolean, -1, mapped(baseU, func(x float64) bool { return x > 0 }))},
+		{name: "text", heater: pqOf[parquet.ByteArray, *file.ByteArrayColumnChunkWriter]("heater", schema.StringLogicalType{}, parquet.Types.ByteArray, -1, mapped(baseU, func(x float64) parquet.ByteArray {
+			return parquet.ByteArray(map[bool]string{true: "On", false: "Off"}[x > 0])
+		}))},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			var buf bytes.Buffer
+			writeParquet(t, &buf, pqOptions{rowGroup: 3}, pqFloat64("time_s", baseT), c.heater, pqFloat64("outlet_degC", baseY))
+			runs, err := readBytes(t, "log.parquet", buf.Bytes(), Options{})
+			if err != nil {
+				t.Fatal(err)
+			}
+			q := quirk{u: switchedU, input: "%", notes: []string{"input-switched"}}
+			q.check(t, runs[0])
+		})
+	}
+}
+
+// A word among numbers stored as text is refused as in a text file.
+func TestParquetWordAmongNumbers(t *testing.T) {
+	drive := mapped(baseU, func(x float64) parquet.ByteArray { return parquet.ByteArray(string(appendShort(x))) })
+	drive[6] = parquet.ByteArray("OFF")
+	var buf bytes.Buffer
+	writeParquet(t, &buf, pqOptions{}, pqFloat64("time_s", baseT),
+		pqOf[parquet.ByteArray, *file.ByteArrayColumnChunkWriter]("drive_V", schema.StringLogicalType{}, parquet.Types.ByteArray, -1, drive), pqFloat64("outlet_degC", baseY))
+	_, err := readBytes(t, "log.parquet", buf.Bytes(), Options{})
+	if err == nil || !strings.Contains(err.Error(), `log.parquet:7: the input is "OFF" among numbers`) {
+		t.Errorf("error %v, want one that names row 7", err)
+	}
+}
+
 func appendShort(x float64) []byte { return plainSeconds(nil, x) }
 
 // What is not there in a Parquet file is missing, never zero: nulls, NaN.

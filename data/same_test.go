@@ -100,6 +100,9 @@ func TestSameRunInEveryForm(t *testing.T) {
 			if len(r.T) != n || len(r.U) != n || len(r.Y) != n {
 				t.Errorf("%d rows, want %d", len(r.T), n)
 			}
+			if want := (Units{Time: "s", Input: "V", Temperature: "degC"}); r.Units != want || len(r.Quality.Missing)+len(r.Quality.Dropped) > 0 {
+				t.Errorf("units %+v, quality %+v", r.Units, r.Quality)
+			}
 		})
 	}
 }
