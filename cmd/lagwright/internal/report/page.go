@@ -27,7 +27,12 @@ var pageHTML string
 var pageCSS string
 
 //go:embed page.js
-var pageJS string
+var readoutJS string
+
+//go:embed zoom.js
+var zoomJS string
+
+var pageJS = readoutJS + zoomJS
 
 // maxText is the longest text from a file, in runes, that a page shows whole.
 const maxText = 400

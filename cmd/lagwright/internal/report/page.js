@@ -97,6 +97,7 @@
     });
     svg.addEventListener("pointerleave", hide);
     svg.addEventListener("blur", hide);
+    svg.addEventListener("zoomed", function () { panels = at = null; hide(); }); // see zoom.js
     if (svg.querySelector("path[data-name]")) svg.setAttribute("tabindex", "0");
     svg.addEventListener("keydown", function (e) {
       var step = { ArrowLeft: -4, ArrowRight: 4 }[e.key];
