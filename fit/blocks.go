@@ -100,42 +100,52 @@ func (r *record) coarse(rows int) *record {
 // focus averages the log for a plant with the given dead time: full
 // resolution where the response to a change sets in, blocks that widen from
 // there on both sides.
-func (r *record) focus(dead, zone float64) *record {
+func (r *record) focus(dead, zone float64) *record { return r.focusOn(dead, dead, zone, 0) }
+
+// zoneRows is how many blocks the zone of possible onsets is worth in a search.
+const zoneRows = 60
+
+// survey averages the log for a search among plants with dead times up to the
+// given one.
+func (r *record) survey(dead, zone float64) *record {
+	return r.focusOn(0, dead, zone, (dead+zone)/zoneRows)
+}
+
+// focusOn averages the log for plants with dead times between first and last;
+// no block need be shorter than least.
+func (r *record) focusOn(first, last, zone, least float64) *record {
 	if len(r.root.t) < reduceAbove {
 		return r.whole()
 	}
 	var onset []float64
 	for _, at := range r.input.At {
-		onset = append(onset, at+dead)
+		onset = append(onset, at+first)
 	}
+	start := r.root.t[0]
 	if r.rest == earlier {
-		onset = append([]float64{r.root.t[0] + dead}, onset...)
+		onset = append([]float64{start + first}, onset...)
 	}
-	first := r.root.t[0]
+	zone += last - first
 	span := r.span
-	return r.averaged(func(t float64) int {
+	width := func(t float64) float64 {
 		k := sort.SearchFloat64s(onset, t)
 		w := span / 40
 		if k > 0 {
-			if d := t - onset[k-1]; d < zone {
-				return 1
-			} else {
-				w = math.Min(w, d/blockGrowth)
+			d := t - onset[k-1]
+			if d < zone {
+				return 0
 			}
+			w = math.Min(w, (d-last+first)/blockGrowth)
 		} else if r.rest == free {
-			w = math.Min(w, (t-first)/blockGrowth)
+			w = math.Min(w, (t-start)/blockGrowth)
 		}
 		if k < len(onset) {
-			d := onset[k] - t - zone
-			if d <= 0 {
-				return 1
-			}
-			w = math.Min(w, d/4)
 			// A block must end before the zone begins.
-			w = math.Min(w, d)
+			w = math.Min(w, math.Max(onset[k]-t-(zone-last+first), 0)/4)
 		}
-		return int(w/r.step) + 1
-	})
+		return w
+	}
+	return r.averaged(func(t float64) int { return int(math.Max(width(t), least)/r.step) + 1 })
 }
 
 // noiseRows is the largest number of rows on which a noise shape is judged: of

@@ -77,7 +77,7 @@ func sameReading(a, b float64) bool { return a == b || math.IsNaN(a) && math.IsN
 // find fits the structures and chooses among them.
 func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	out := &outcome{opt: o, recs: recs}
-	s := &study{recs: recs, white: o.Noise == "white", fix: o.Fix}
+	s := &study{recs: recs, white: o.Noise == "white", fix: o.Fix, rival: math.Inf(1)}
 	if err := out.settle(s); err != nil {
 		return nil, err
 	}
@@ -87,6 +87,7 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	}
 	fits := make([]*fitted, len(structures))
 	studies := make([]*study, len(structures))
+	s.survey()
 	for i := range studies {
 		studies[i] = s.clone()
 	}
@@ -275,11 +276,12 @@ func (out *outcome) settle(s *study) error {
 			r.shape, r.weight = whiteShape, 1
 		}
 		s.set(in, drifts[0])
-		plain := &study{recs: slices.Clone(s.recs), white: true}
+		plain := &study{recs: slices.Clone(s.recs), white: true, coarse: s.coarse, rival: math.Inf(1)}
 		start := plain.fit(one, nil)
+		s.coarse = plain.coarse
 		for _, dr := range drifts {
 			s.set(in, dr)
-			free := &study{recs: slices.Clone(s.recs), white: s.white, tau: start.p.eta[0], dead: start.p.eta[1]}
+			free := &study{recs: slices.Clone(s.recs), white: s.white, tau: start.p.eta[0], dead: start.p.eta[1], rival: math.Inf(1)}
 			f := free.fit(two, start)
 			if math.IsNaN(f.p.s) || math.IsInf(f.p.s, 0) {
 				return fmt.Errorf("%s: %w: the least squares did not come to an end", s.recs[0].run.Source.File, ErrNoAnswer)
@@ -303,6 +305,7 @@ func (out *outcome) settle(s *study) error {
 	}
 	s.set(out.initial, out.drift)
 	s.tau, s.dead = out.one.p.eta[0], out.one.p.eta[1]
+	s.rival = out.two.aicc
 	return nil
 }
 

@@ -35,15 +35,13 @@ func (q *profiler) hold(i int, v float64, from point) point {
 	}()
 	e.lower, e.upper = append([]float64(nil), lower...), append([]float64(nil), upper...)
 	e.held = append([]bool(nil), held...)
-	start := append([]float64(nil), from.eta...)
+	start := q.predict(i, v, from)
 	if i == 0 {
 		e.gainFix, e.gain = true, v
 		return e.descend(start, searchTol)
 	}
 	j := i - 1
-	if j < e.ng {
-		// The lag stays the j-th longest; what it gains the others lose first.
-		d := v - start[j]
+	if j < e.ng { // the lag stays the j-th longest
 		for l := range e.ng {
 			switch {
 			case held[l]:
@@ -53,27 +51,73 @@ func (q *profiler) hold(i int, v float64, from point) point {
 			case l > j:
 				e.upper[l] = math.Min(e.upper[l], v)
 			}
-			if l != j {
-				start[l] = math.Min(math.Max(start[l], e.lower[l]), e.upper[l])
-			}
 		}
-		l := 1
-		if j > 0 {
-			l = 0
-		}
-		if e.ng > 1 && !held[l] {
-			start[l] = math.Min(math.Max(start[l]-d, e.lower[l]), e.upper[l])
-		} else {
-			start[e.ng] = math.Min(math.Max(start[e.ng]-d*0.3, e.lower[e.ng]), e.upper[e.ng])
-		}
-	} else if e.ng > 0 {
-		d := v - start[j]
-		start[0] = math.Max(start[0]-0.3*d, 0.3*start[0])
 	}
 	start[j] = v
 	e.lower[j], e.upper[j] = v, v
 	e.held[j] = true
 	return e.descend(start, searchTol)
+}
+
+// predict is where the others will be when parameter i is held at v: on the
+// straight line through the optimum and a nearby solution, or along the
+// linearised model's.
+func (q *profiler) predict(i int, v float64, from point) []float64 {
+	value, there := q.value(i), from.gain
+	if i > 0 {
+		there = from.eta[i-1]
+	}
+	if there != value {
+		share := (v - value) / (there - value)
+		out := append([]float64(nil), q.best.eta...)
+		for l := range out {
+			out[l] = q.near(q.best.eta[l]+share*(from.eta[l]-q.best.eta[l]), from.eta[l], l)
+		}
+		return out
+	}
+	out := append([]float64(nil), from.eta...)
+	e := q.e
+	a := e.reduced(&q.best)
+	if i == 0 {
+		a = unreduced(&q.best)
+	}
+	var free []int
+	for l := range out {
+		if l != i-1 && !e.held[l] && q.best.eta[l] > e.lower[l] && q.best.eta[l] < e.upper[l] && a[l][l] > 0 {
+			free = append(free, l)
+		}
+	}
+	rhs := make([]float64, len(out))
+	for _, l := range free {
+		if i == 0 {
+			rhs[l] = -q.best.normal[0][l+1] * (v - value)
+		} else {
+			rhs[l] = -a[l][i-1] * (v - value)
+		}
+	}
+	if x, ok := solveDamped(a, rhs, free, 1e-6); ok {
+		for k, l := range free {
+			out[l] = q.near(out[l]+x[k], out[l], l)
+		}
+	}
+	return out
+}
+
+// unreduced is the Gauss-Newton matrix of eta at a held gain.
+func unreduced(p *point) [][]float64 {
+	out := make([][]float64, len(p.eta))
+	for l := range out {
+		out[l] = p.normal[l+1][1:]
+	}
+	return out
+}
+
+// near keeps a predicted x of eta[l] within reach of where it was.
+func (q *profiler) near(x, was float64, l int) float64 {
+	if l < q.e.ng {
+		return math.Min(math.Max(x, 0.3*was), math.Max(3*was, q.e.recs[0].step))
+	}
+	return math.Max(x, q.e.lower[l])
 }
 
 // end finds the end of the interval of parameter i in the direction dir (±1)

@@ -234,14 +234,14 @@ func (t *tangent) tcRange() (lo, hi float64) {
 func (t *tangent) bestShape(near *shape) node {
 	lo, hi := t.tcRange()
 	best := t.evaluate(whiteShape)
-	better := func(tc, w float64) bool {
+	better := func(tc, w float64) (up bool, dev float64) {
 		tc = math.Min(math.Max(tc, lo), hi)
 		w = math.Min(math.Max(w, 0), 0.995)
-		if n := t.evaluate(shape{tc, w}); n.dev < best.dev-1e-9 {
+		n := t.evaluate(shape{tc, w})
+		if up = n.dev < best.dev-1e-9; up {
 			best = n
-			return true
 		}
-		return false
+		return up, n.dev
 	}
 	da, db := math.Log(hi/lo)/8, 0.25
 	if near == nil || near.white >= 1 {
@@ -256,26 +256,51 @@ func (t *tangent) bestShape(near *shape) node {
 		better(near.tc, near.white)
 		da, db = 0.3, 0.1
 	}
-	// Pattern search (Hooke and Jeeves 1961, from memory): halve when nothing helps.
-	for da > 0.02 {
-		c := best.shape
+	// Pattern search (Hooke and Jeeves 1961, from memory): halve when nothing
+	// helps. At the last lattice the nine values give a parabola, and its bottom.
+	for da > 0.05 {
+		c, centre := best.shape, best.dev
 		if c.white >= 1 {
 			c = shape{lo * 3, 0.97}
 		}
+		var dev [8]float64
 		moved := false
-		for i, d := range [][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}} {
+		for i, d := range lattice {
 			if i >= 4 && moved {
 				break // the diagonals are for ridges
 			}
-			if better(c.tc*math.Exp(d[0]*da), c.white+d[1]*db) {
-				moved = true
+			var up bool
+			up, dev[i] = better(c.tc*math.Exp(d[0]*da), c.white+d[1]*db)
+			moved = moved || up
+		}
+		if moved {
+			continue
+		}
+		if da <= 0.1 && best.shape.white < 1 {
+			if x, y, ok := bottom(centre, dev); ok {
+				better(c.tc*math.Exp(x*da), c.white+y*db)
 			}
 		}
-		if !moved {
-			da, db = da/2, db/2
-		}
+		da, db = da/2, db/2
 	}
 	return best
+}
+
+// lattice are the neighbours of a shape, in steps of log tc and of white.
+var lattice = [8][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}}
+
+// bottom is the lowest point of the parabola through the centre of a lattice and
+// its neighbours, in steps; ok is false where it has none within reach.
+func bottom(centre float64, dev [8]float64) (x, y float64, ok bool) {
+	gx, gy := (dev[0]-dev[1])/2, (dev[2]-dev[3])/2
+	xx, yy := dev[0]+dev[1]-2*centre, dev[2]+dev[3]-2*centre
+	xy := (dev[4] + dev[5] - dev[6] - dev[7]) / 4
+	det := xx*yy - xy*xy
+	if !(xx > 0) || !(yy > 0) || !(det > 1e-3*xx*yy) {
+		return 0, 0, false
+	}
+	x, y = (xy*gy-yy*gx)/det, (xy*gx-xx*gy)/det
+	return x, y, math.Abs(x) <= 1 && math.Abs(y) <= 1
 }
 
 // grid spreads nodes over the noise shapes that the record does not rule out,

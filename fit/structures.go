@@ -53,6 +53,10 @@ type study struct {
 
 	tau  float64 // of the best single lag, for starts
 	dead float64
+	// coarse are the starts of a single lag, when they are known already.
+	coarse [][]float64
+	// rival is the AICc of the chain of two lags, infinite while there is none.
+	rival float64
 }
 
 // clone returns a study on records of its own.
@@ -71,13 +75,24 @@ func (s *study) fit(st ident.Structure, shorter *fitted) *fitted {
 	e := newEngine(st, s.recs)
 	s.applyFix(e)
 	if st.Order() <= 1 {
-		return s.fitFrom(e, e.coarse())
+		if s.coarse == nil || st.Integrating() {
+			s.coarse = e.coarse()
+		}
+		return s.fitFrom(e, s.coarse)
 	}
 	var from []float64
 	if shorter != nil {
 		from = shorter.p.eta
 	}
 	return s.fitFrom(e, e.starts(s.tau, s.dead, from))
+}
+
+// survey averages the records for the search among structures: the single lag
+// has the longest dead time of all, being late for all the lags it lacks.
+func (s *study) survey() {
+	for i, r := range s.recs {
+		s.recs[i] = r.survey(1.2*s.dead+2*r.step, 3*r.step)
+	}
 }
 
 // fitFrom finds the optimum of the engine's structure from the starts.
@@ -89,10 +104,10 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 	s.coincide(f)
 	if s.white {
 		s.measure(f)
+		s.score(f)
 	} else {
 		s.alternate(f)
 	}
-	s.score(f)
 	if st.Order() == 1 {
 		s.tau, s.dead = f.p.eta[0], f.p.eta[1]
 	}
@@ -119,7 +134,7 @@ func (s *study) focus(f *fitted) {
 	s.applyFix(fresh)
 	f.e = fresh
 	f.p = fresh.descend(f.p.eta, finalTol)
-	if searched {
+	if searched || !s.white { // alternate does it under the noise found
 		return
 	}
 	if q := fresh.intervals(f.p); q.s < f.p.s {
@@ -263,27 +278,19 @@ func (s *study) order(f *fitted) {
 
 // alternate fits noise and plant in turn: the noise shape by restricted
 // likelihood given the plant, the plant by generalised least squares given the
-// noise, until the shape settles.
+// noise, until the shape settles. It ends early where the structure is hopeless.
 func (s *study) alternate(f *fitted) {
 	for round := range 4 {
 		before := make([]shape, len(s.recs))
 		for i, r := range s.recs {
 			before[i] = r.shape
 		}
-		for i, t := range f.tangents() {
-			var from *shape
-			if before[i].white < 1 {
-				from = &before[i]
-			}
-			n := t.bestShape(from)
-			s.recs[i].setShape(n.shape)
-			s.recs[i].sigma2 = n.s2
-		}
-		for _, r := range s.recs {
-			r.weight = s.recs[0].sigma2 / r.sigma2
-		}
+		s.whiten(f)
 		f.p = f.e.descend(f.p.eta, finalTol)
 		if round == 0 {
+			if s.hopeless(f) {
+				return
+			}
 			if q := f.e.intervals(f.p); q.s < f.p.s {
 				f.p = f.e.descend(q.eta, finalTol)
 			}
@@ -302,6 +309,39 @@ func (s *study) alternate(f *fitted) {
 		}
 	}
 	s.measure(f)
+	s.score(f)
+}
+
+// whiten puts the noise shape of greatest restricted likelihood in force, given
+// the plant.
+func (s *study) whiten(f *fitted) {
+	for i, t := range f.tangents() {
+		var from *shape
+		if s.recs[i].shape.white < 1 {
+			from = &s.recs[i].shape
+		}
+		n := t.bestShape(from)
+		s.recs[i].setShape(n.shape)
+		s.recs[i].sigma2 = n.s2
+	}
+	for _, r := range s.recs {
+		r.weight = s.recs[0].sigma2 / r.sigma2
+	}
+}
+
+// hopelessBy is the difference in AICc from the chain of two lags beyond which
+// what is left to be found, other dead times and a better noise shape, is not
+// looked for: far beyond refutedBy, because both can still lower it.
+const hopelessBy = 100
+
+// hopeless scores f as it stands and reports whether it is beyond hope.
+func (s *study) hopeless(f *fitted) bool {
+	if math.IsInf(s.rival, 1) || f.rows() > polishAll {
+		return false
+	}
+	s.measure(f)
+	s.score(f)
+	return f.aicc > s.rival+hopelessBy
 }
 
 func alike(a, b shape) bool {
