@@ -116,12 +116,13 @@ func areClockDigits(v []float64) bool {
 
 // areCompact tells stamps written as yyyymmddhhmmss.
 func areCompact(cells [][]byte) bool {
+	n := 0
 	for _, b := range cells {
-		if _, ok := compactStamp(trimBlanks(b)); !ok {
-			return false
+		if _, ok := compactStamp(trimBlanks(b)); ok {
+			n++
 		}
 	}
-	return len(cells) > 0
+	return n > 0 && 10*n >= 9*len(cells)
 }
 
 // findCalendar settles the order of day and month if the cells can: a day

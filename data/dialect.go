@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 )
 
 // dialect is how a text file writes its rows, as its beginning shows.
@@ -158,7 +159,11 @@ func findDelimiter(lines []line) (delim byte, fields int) {
 				continue
 			}
 			share := t.good / t.all
-			if score := t.goodBytes * share * share; score > best || score == best && d == delim && n > fields {
+			score := t.goodBytes * share * share
+			if d == ' ' { // blanks stand in stamps and words too
+				score /= 2
+			}
+			if score > best || score == best && d == delim && n > fields {
 				best, delim, fields = score, d, n
 			}
 		}
@@ -300,7 +305,11 @@ func (d *dialect) findColumns(path string, lines []line) error {
 			c.unit = units[k]
 		}
 	}
-	d.rows = lines[start:]
+	for _, l := range lines[start:] {
+		if !slices.ContainsFunc(d.header, func(h []byte) bool { return bytes.Equal(h, l.text) }) {
+			d.rows = append(d.rows, l)
+		}
+	}
 	d.inspect(d.rows)
 	return nil
 }
@@ -364,13 +373,18 @@ func (d *dialect) number(cell []byte) (v float64, unit string, ok bool) {
 }
 
 // isData tells a row of data: its first cell that should be a number or a
-// stamp is one, and so are more than half of all such cells.
+// stamp is one, and so are more than half of all such cells. A row with fewer
+// cells than the others, as lines above the header are, must hold no words.
 func (d *dialect) isData(l line) bool {
 	if len(l.cells) < 2 || isComment(l.text, d.delim) {
 		return false
 	}
 	good, bad := 0, 0
+	short := len(l.cells) < d.fields
 	for i, c := range l.cells {
+		if short && d.classOf(c) == texts {
+			return false
+		}
 		if i >= len(d.cols) || d.cols[i].class != numbers && d.cols[i].class != stamps {
 			continue
 		}
@@ -420,8 +434,10 @@ func (d *dialect) inspect(rows []line) {
 				words[string(cell)]++
 				onOff.add(cell)
 			case stamps:
-				dated, timed := stampParts(cell)
-				c.dated, c.timed = c.dated || dated, c.timed || timed
+				if isStamp(cell) {
+					dated, timed := stampParts(cell)
+					c.dated, c.timed = c.dated || dated, c.timed || timed
+				}
 			}
 		}
 		c.stepwise, c.ascending = s.stepwise(), s.ascending()

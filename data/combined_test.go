@@ -1,0 +1,305 @@
+package data
+
+import (
+	"bytes"
+	"context"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"os"
+	"slices"
+	"strconv"
+	"strings"
+	"testing"
+	"time"
+
+	"golang.org/x/text/encoding/charmap"
+	"golang.org/x/text/encoding/unicode"
+)
+
+// mess is a log written with many quirks at once, and what is in it.
+type mess struct {
+	rng  *rand.Rand
+	text []byte
+	how  []string // the quirks drawn, for messages
+
+	t, u, y, sp []float64
+}
+
+// pick draws one of several ways and remembers its name.
+func pick[T any](m *mess, what string, ways map[string]T) T {
+	var names []string
+	for name := range ways {
+		names = append(names, name)
+	}
+	slices.Sort(names)
+	name := names[m.rng.IntN(len(names))]
+	m.how = append(m.how, what+" "+name)
+	return ways[name]
+}
+
+// language holds the names of clock, input, temperature, setpoint and another
+// temperature.
+type language struct {
+	names [5]string
+	latin bool // can be written in Windows-1252
+}
+
+var languages = map[string]language{
+	"English":    {[5]string{"Time", "Heater voltage", "Outlet temperature", "Setpoint", "Room"}, true},
+	"German":     {[5]string{"Zeit", "Heizspannung", "Austrittstemperatur", "Sollwert", "Umgebung"}, true},
+	"French":     {[5]string{"Heure", "Tension de chauffe", "Température soufflage", "Consigne", "Ambient"}, true},
+	"Spanish":    {[5]string{"Hora", "Tensión calefactor", "Temperatura salida aire", "Consigna", "Ambient"}, true},
+	"Italian":    {[5]string{"Ora", "Tensione riscaldatore", "Temperatura aria", "Riferimento", "Ambient"}, true},
+	"Dutch":      {[5]string{"Tijd", "Spanning verwarming", "Uitlaattemperatuur", "Setpunt", "Ambient"}, true},
+	"Portuguese": {[5]string{"Hora", "Tensão", "Temperatura do ar", "Referência", "Ambient"}, true},
+	"Polish":     {[5]string{"Czas", "Napięcie grzałki", "Temperatura wylotu", "Zadana", "Ambient"}, false},
+	"Swedish":    {[5]string{"Tid", "Spänning", "Temperatur utlopp", "Börvärde", "Ambient"}, true},
+	"Czech":      {[5]string{"Čas", "Napětí topení", "Teplota výstupu", "Žádaná hodnota", "Ambient"}, false},
+	"Japanese":   {[5]string{"時刻", "ヒータ電圧", "出口温度", "設定温度", "Ambient"}, false},
+	"Chinese":    {[5]string{"时间", "加热电压", "出口温度", "设定温度", "Ambient"}, false},
+	"loop":       {[5]string{"Timestamp", "OP", "PV", "SP", "Ambient"}, true},
+}
+
+// clockForm writes the instant of a row: one cell or two, or a number.
+type clockForm struct {
+	unit    string
+	columns []string // names, where there are two
+	cells   func(at time.Time, s float64) []string
+	number  bool // its decimal mark is that of the file
+	blank   bool // holds blanks
+}
+
+func stampForm(layout string) clockForm {
+	return clockForm{cells: func(at time.Time, _ float64) []string { return []string{at.Format(layout)} }, blank: strings.Contains(layout, " ")}
+}
+
+func twoForms(a, b string) clockForm {
+	return clockForm{columns: []string{"Date", "Time"}, blank: strings.Contains(b, " "), cells: func(at time.Time, _ float64) []string { return []string{at.Format(a), at.Format(b)} }}
+}
+
+func countForm(unit string, f func(at time.Time, s float64) string) clockForm {
+	return clockForm{unit: unit, number: true, cells: func(at time.Time, s float64) []string { return []string{f(at, s)} }}
+}
+
+var clockForms = map[string]clockForm{
+	"elapsed s":    countForm("s", func(_ time.Time, s float64) string { return fmt.Sprintf("%.3f", s) }),
+	"elapsed ms":   countForm("ms", func(_ time.Time, s float64) string { return fmt.Sprintf("%.0f", 1000*s+12345) }),
+	"elapsed min":  countForm("min", func(_ time.Time, s float64) string { return fmt.Sprintf("%.10f", s/60) }),
+	"unix s":       countForm("", func(at time.Time, _ float64) string { return fmt.Sprintf("%d.%03d", at.Unix(), at.Nanosecond()/1e6) }),
+	"unix ms":      countForm("", func(at time.Time, _ float64) string { return strconv.FormatInt(at.UnixMilli(), 10) }),
+	"ISO":          stampForm("2006-01-02 15:04:05.000"),
+	"RFC 3339":     stampForm("2006-01-02T15:04:05.000Z07:00"),
+	"dots":         stampForm("02.01.2006 15:04:05.000"),
+	"slashes":      stampForm("2006/01/02 15:04:05.000"),
+	"day first":    stampForm("2/1/2006 15:04:05.000"),
+	"month first":  stampForm("01/02/2006 03:04:05.000 PM"),
+	"month's name": stampForm("02-Jan-06 15:04:05.000"),
+	"time of day":  stampForm("15:04:05.000"),
+	"half days":    stampForm("3:04:05.000 PM"),
+	"compact":      stampForm("20060102150405.000"),
+	"two columns":  twoForms("02.01.2006", "15:04:05.000"),
+	"two, AM/PM":   twoForms("01/02/2006", "03:04:05.000 PM"),
+}
+
+// newMess writes a log of some rows in a way drawn at random. The recording
+// passes midnight.
+func newMess(seed uint64) *mess {
+	m := &mess{rng: rand.New(rand.NewPCG(seed, 11))}
+	n := 30 + m.rng.IntN(40)
+	step := []float64{0.5, 0.25, 1, 2}[m.rng.IntN(4)]
+	start := time.Date(2026, 1, 25, 23, 59, 50, 0, time.UTC)
+	temp := 24.0
+	for i := range n {
+		m.t = append(m.t, float64(i)*step)
+		m.u = append(m.u, []float64{0, 2.5, 1.25}[i*3/n])
+		temp += (24 + 10*m.u[i] - temp) * 0.15
+		m.y = append(m.y, math.Round(10*temp+3*m.rng.NormFloat64())/10)
+		m.sp = append(m.sp, []float64{60, 65.5}[i*2/n])
+	}
+	m.write(start)
+	return m
+}
+
+func (m *mess) write(start time.Time) {
+	delim := pick(m, "delimiter", map[string]byte{"comma": ',', "semicolon": ';', "tab": '\t', "pipe": '|'})
+	comma := pick(m, "decimal mark", map[string]bool{"point": false, "comma": true})
+	quoted := m.rng.IntN(4) == 0 || comma && delim == ','
+	form := pick(m, "clock", clockForms)
+	lang := pick(m, "words", languages)
+	unitStyle := pick(m, "units", map[string]string{"in round brackets": "%s (%s)", "in brackets": "%s [%s]", "after a slash": "%s / %s", "in a row": ""})
+	number := func(s string) string {
+		if comma {
+			return strings.Replace(s, ".", ",", 1)
+		}
+		return s
+	}
+	short := func(v float64) string { return number(strconv.FormatFloat(v, 'f', -1, 64)) }
+
+	type col struct {
+		names, units []string
+		cells        func(i int) []string
+	}
+	one := func(name, unit string, f func(i int) string) col {
+		return col{[]string{name}, []string{unit}, func(i int) []string { return []string{f(i)} }}
+	}
+	clockNames := form.columns
+	if clockNames == nil {
+		clockNames = lang.names[:1]
+	}
+	units := make([]string, len(clockNames))
+	units[0] = form.unit
+	missing := map[int]string{}
+	for range m.rng.IntN(4) {
+		missing[5+m.rng.IntN(len(m.y)-5)] = []string{"OL", "", "----", short(9999), short(-999.9), "NaN", "Bad", "OPEN"}[m.rng.IntN(8)]
+	}
+	clock := col{clockNames, units, func(i int) []string {
+		cells := form.cells(start.Add(time.Duration(m.t[i]*1e9)), m.t[i])
+		if form.number {
+			cells[0] = number(cells[0])
+		}
+		return cells
+	}}
+	outlet := one(lang.names[2], "°C", func(i int) string {
+		if w, is := missing[i]; is {
+			return w
+		}
+		return short(m.y[i])
+	})
+	cols := []col{one(lang.names[1], "V", func(i int) string { return short(m.u[i]) }), outlet,
+		one(lang.names[3], "°C", func(i int) string { return short(m.sp[i]) })}
+	extras := map[string]func(){
+		"none":   func() {},
+		"room":   func() { cols = append(cols, one(lang.names[4], "°C", func(int) string { return short(21.5) })) },
+		"status": func() { cols = append(cols, one("Status", "", func(int) string { return "OK" })) },
+		"blank":  func() { cols = append(cols, one("", "", func(int) string { return "" })) },
+		"number": func() { cols = append(cols, one("No.", "", func(i int) string { return strconv.Itoa(i + 1) })) },
+	}
+	for range 2 {
+		pick(m, "extra", extras)()
+	}
+	m.rng.Shuffle(len(cols), func(i, j int) { cols[i], cols[j] = cols[j], cols[i] })
+	at := m.rng.IntN(2) * len(cols) // the clock stands first or last
+	cols = slices.Insert(cols, at, clock)
+
+	line := func(cells []string) string {
+		if quoted {
+			for i := range cells {
+				cells[i] = `"` + cells[i] + `"`
+			}
+		}
+		return strings.Join(cells, string(delim))
+	}
+	var names, unitRow []string
+	for _, c := range cols {
+		for i, n := range c.names {
+			if unitStyle != "" && c.units[i] != "" {
+				n = fmt.Sprintf(unitStyle, n, c.units[i])
+			}
+			names, unitRow = append(names, n), append(unitRow, c.units[i])
+		}
+	}
+	lines := pick(m, "preamble", map[string][]string{
+		"none": nil, "title": {"Test of the drying tunnel"}, "pairs": {"Serial" + string(delim) + "4711", "Operator" + string(delim) + "A. Miller", ""},
+		"wide": {strings.Repeat("Report"+string(delim), 12), ""}, "comments": {"# logger 3", "# period " + short(0.5)},
+	})
+	lines = slices.Clone(lines)
+	header := []string{line(names)}
+	if unitStyle == "" {
+		header = append(header, line(unitRow))
+	}
+	lines = append(lines, header...)
+	restart, gap := -1, -1
+	if m.rng.IntN(4) == 0 {
+		restart = len(m.t) / 2
+		m.how = append(m.how, "header again")
+	}
+	if m.rng.IntN(4) == 0 {
+		gap = len(m.t) / 3
+		m.how = append(m.how, "blank line")
+	}
+	for i := range m.t {
+		if i == restart {
+			lines = append(lines, header...)
+		}
+		if i == gap {
+			lines = append(lines, "")
+		}
+		var cells []string
+		for _, c := range cols {
+			cells = append(cells, c.cells(i)...)
+		}
+		lines = append(lines, line(cells))
+	}
+	for i := range missing {
+		m.y[i] = nan
+	}
+	end := pick(m, "lines end with", map[string]string{"LF": "\n", "CRLF": "\r\n", "CR": "\r"})
+	m.pack(strings.Join(lines, end)+end, lang.latin)
+}
+
+// pack encodes and packs the text.
+func (m *mess) pack(text string, latin bool) {
+	plain := func(s string) ([]byte, error) { return []byte(s), nil }
+	encodings := map[string]func(s string) ([]byte, error){
+		"UTF-8":           plain,
+		"UTF-8 with mark": func(s string) ([]byte, error) { return []byte("\uFEFF" + s), nil },
+		"UTF-16 LE": func(s string) ([]byte, error) {
+			return unicode.UTF16(unicode.LittleEndian, unicode.UseBOM).NewEncoder().Bytes([]byte(s))
+		},
+		"UTF-16 BE": func(s string) ([]byte, error) {
+			return unicode.UTF16(unicode.BigEndian, unicode.UseBOM).NewEncoder().Bytes([]byte(s))
+		},
+	}
+	if latin {
+		encodings["Windows-1252"] = func(s string) ([]byte, error) { return charmap.Windows1252.NewEncoder().Bytes([]byte(s)) }
+	}
+	b, err := pick(m, "encoding", encodings)(text)
+	if err != nil {
+		panic(err)
+	}
+	m.text = b
+}
+
+// Quirks in combination: whatever is drawn, the values are those written. The
+// long form of the test draws a hundred times as many.
+func TestCombined(t *testing.T) {
+	draws := uint64(300)
+	if os.Getenv("LAGWRIGHT_LONG") != "" {
+		draws = 30000
+	}
+	for seed := range draws {
+		m := newMess(seed)
+		runs, err := Read(context.Background(), "-", Options{Stdin: bytes.NewReader(m.text)})
+		bad := ""
+		if err != nil {
+			bad = err.Error()
+		} else {
+			bad = m.compare(runs[0])
+		}
+		if bad != "" {
+			t.Errorf("draw %d (%s): %s", seed, strings.Join(m.how, ", "), bad)
+		}
+	}
+}
+
+func (m *mess) compare(r *Run) string {
+	for _, c := range []struct {
+		what      string
+		got, want []float64
+		within    float64
+	}{{"time", r.T, m.t, 1e-7}, {"input", r.U, m.u, 0}, {"temperature", r.Y, m.y, 0}, {"setpoint", r.Setpoint, m.sp, 0}} {
+		if len(c.got) != len(c.want) {
+			return fmt.Sprintf("%d values of %s, want %d; %+v", len(c.got), c.what, len(c.want), r.Source.Columns)
+		}
+		for i, v := range c.got {
+			if both := v != v && c.want[i] != c.want[i]; !both && !(math.Abs(v-c.want[i]) <= c.within) {
+				return fmt.Sprintf("%s in row %d is %v, want %v; %+v", c.what, i, v, c.want[i], r.Source.Columns)
+			}
+		}
+	}
+	if r.Units.Input != "V" || r.Units.Temperature != "degC" {
+		return fmt.Sprintf("units %+v", r.Units)
+	}
+	return ""
+}
