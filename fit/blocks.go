@@ -86,7 +86,7 @@ func (r *record) uniform(k, m int) int {
 }
 
 // searchRows is how many blocks a long log is averaged into for the search.
-const searchRows = 400
+const searchRows = 250
 
 // coarse averages a long log into about rows equal blocks, for the search.
 func (r *record) coarse(rows int) *record {
@@ -100,7 +100,9 @@ func (r *record) coarse(rows int) *record {
 // focus averages the log for a plant with the given dead time: full
 // resolution where the response to a change sets in, blocks that widen from
 // there on both sides.
-func (r *record) focus(dead, zone float64) *record { return r.focusOn(dead, dead, zone, 0) }
+func (r *record) focus(dead, zone float64) *record {
+	return r.focusOn(dead, dead, zone, 0, blockGrowth)
+}
 
 // zoneRows is how many blocks the zone of possible onsets is worth in a search.
 const zoneRows = 60
@@ -108,12 +110,22 @@ const zoneRows = 60
 // survey averages the log for a search among plants with dead times up to the
 // given one.
 func (r *record) survey(dead, zone float64) *record {
-	return r.focusOn(0, dead, zone, (dead+zone)/zoneRows)
+	return r.focusOn(0, dead, zone, (dead+zone)/zoneRows, blockGrowth)
+}
+
+// sketchGrowth is blockGrowth where plausible plants are drawn: thousands of
+// evaluations, none of which is stated. A hundredth of the information is lost.
+const sketchGrowth = 8
+
+// sketch averages the log for drawing plants around one.
+func (r *record) sketch(dead, zone float64) *record {
+	return r.focusOn(dead, dead, zone, 0, sketchGrowth)
 }
 
 // focusOn averages the log for plants with dead times between first and last;
-// no block need be shorter than least.
-func (r *record) focusOn(first, last, zone, least float64) *record {
+// no block need be shorter than least, and blocks widen by one part in growth
+// of the time since the onset.
+func (r *record) focusOn(first, last, zone, least, growth float64) *record {
 	if len(r.root.t) < reduceAbove {
 		return r.whole()
 	}
@@ -129,15 +141,15 @@ func (r *record) focusOn(first, last, zone, least float64) *record {
 	span := r.span
 	width := func(t float64) float64 {
 		k := sort.SearchFloat64s(onset, t)
-		w := span / 40
+		w := span / (40 * growth / blockGrowth)
 		if k > 0 {
 			d := t - onset[k-1]
 			if d < zone {
 				return 0
 			}
-			w = math.Min(w, (d-last+first)/blockGrowth)
+			w = math.Min(w, (d-last+first)/growth)
 		} else if r.rest == free {
-			w = math.Min(w, (t-start)/blockGrowth)
+			w = math.Min(w, (t-start)/growth)
 		}
 		if k < len(onset) {
 			// A block must end before the zone begins.

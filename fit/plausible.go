@@ -24,6 +24,8 @@ type draw struct {
 // between gain and lag.
 type posterior struct {
 	b       *bounded
+	e       *engine // b's, on fewer rows
+	least   float64 // its sum of squares at the optimum
 	free    []int // eta that are not held
 	spreads []spread
 	s2, dof float64
@@ -45,19 +47,33 @@ func (b *bounded) posterior(rng *rand.Rand) *posterior {
 		}
 	}
 	q.root = b.starts(q.free)
+	q.e = b.sketch()
+	q.least = q.e.eval(b.p.eta, false).s
 	return q
+}
+
+// sketch is the engine on records that are averaged more widely.
+func (b *bounded) sketch() *engine {
+	recs := make([]*record, len(b.e.recs))
+	for i, r := range b.e.recs {
+		recs[i] = r.sketch(b.p.eta[b.e.ng], b.zone())
+	}
+	e := newEngine(b.st, recs)
+	e.lower, e.upper, e.held = b.e.lower, b.e.upper, b.e.held
+	e.gain, e.gainFix = b.e.gain, b.e.gainFix
+	return e
 }
 
 // at evaluates eta.
 func (q *posterior) at(eta []float64) plantAt {
-	e, d := q.b.e, float64(len(q.free))
+	e, d := q.e, float64(len(q.free))
 	for j := range eta {
 		if eta[j] < e.lower[j] || eta[j] > e.upper[j] {
 			return plantAt{density: math.Inf(-1)}
 		}
 	}
 	p := e.eval(eta, false)
-	r2 := math.Max(p.s-q.b.p.s, 0) / q.s2
+	r2 := math.Max(p.s-q.least, 0) / q.s2
 	t := 0.0
 	for _, sp := range q.spreads {
 		t += sp.weight * math.Pow(sp.k2, -d/2) * math.Exp(-0.5*(q.dof+d)*math.Log1p(r2/(sp.k2*q.dof)))

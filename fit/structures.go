@@ -123,10 +123,7 @@ func (s *study) focus(f *fitted) {
 	for _, r := range s.recs {
 		searched = searched && !r.averagesRows()
 	}
-	zone := 3 * s.recs[0].step
-	if e.ng > 0 {
-		zone = math.Max(zone, math.Min(0.02*(dead+f.p.eta[0]), 50*s.recs[0].step))
-	}
+	zone := f.zone()
 	for i, r := range s.recs {
 		s.recs[i] = r.focus(dead, zone)
 	}
@@ -140,6 +137,15 @@ func (s *study) focus(f *fitted) {
 	if q := fresh.intervals(f.p); q.s < f.p.s {
 		f.p = fresh.descend(q.eta, finalTol)
 	}
+}
+
+// zone is how long after an onset every row is kept.
+func (f *fitted) zone() float64 {
+	step, eta := f.e.recs[0].step, f.p.eta
+	if len(eta) < 2 {
+		return 3 * step
+	}
+	return math.Max(3*step, math.Min(0.02*(eta[len(eta)-1]+eta[0]), 50*step))
 }
 
 // measure sets the variance of every record from its residuals under the
