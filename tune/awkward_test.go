@@ -29,6 +29,10 @@ func TestSynthesisOfAwkwardPlants(t *testing.T) {
 		{"integrator", "ipdt", 0.02, nil, 5, 0},
 		{"eight equal lags", "equal8", 1, []float64{4}, 1, 0},
 		{"slow scan", "chain2", 1, []float64{20, 5}, 2, 3},
+		{"scan slower than the plant", "fopdt", 1, []float64{5}, 1, 12},
+		{"very fast scan", "chain2", 1, []float64{20, 5}, 2, 1e-4},
+		{"integrator, scanned", "ipdt", 0.02, nil, 5, 2},
+		{"a lag of zero, scanned", "chain2", 1, []float64{20, 0}, 2, 0.7},
 		{"a lag of zero", "chain2", 1, []float64{20, 0}, 2, 0},
 	} {
 		p := plant(t, c.structure, c.gain, c.lags, c.deadTime)
@@ -40,8 +44,7 @@ func TestSynthesisOfAwkwardPlants(t *testing.T) {
 				t.Errorf("%s, %s: nothing found, missed by %.3g", c.name, kind, d.miss)
 				continue
 			}
-			l := newOpenLoop(p, d.law, c.scan)
-			f := l.figures()
+			f := analyse(p, d.law, c.scan)
 			if !f.Stable || f.Ms > 1.7*1.002 || !isFinite(d.law.kc) || d.law.kc*c.gain <= 0 {
 				t.Errorf("%s, %s: %+v with stable %v, Ms %g", c.name, kind, d.law, f.Stable, f.Ms)
 			}

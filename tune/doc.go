@@ -18,6 +18,8 @@
 // what both the analysis and the simulation see. The load enters at the
 // plant's input. Times are in s, gains in input units per temperature unit.
 //
-// A scanning controller is simulated scan by scan. In the frequency analysis
-// its sampling counts as half a scan of dead time (common practice, no source).
+// A scanning controller is simulated scan by scan, and its stability, Ms,
+// margins and damping are those of the sampled loop, see sampled.go. Only the
+// poles that are listed and drawn count its sampling as half a scan of dead time
+// (common practice, no source).
 package tune

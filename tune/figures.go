@@ -23,12 +23,15 @@ func Evaluate(p ident.Plant, g *Gains, q Requirement, input, temperature float64
 // metrics evaluates one scenario with the full sweep.
 func (t *task) metrics(s *scenario, c law, input float64) *Metrics {
 	l := newOpenLoop(s.p, c, s.scan)
-	f := l.figures()
+	f := analyse(s.p, c, s.scan)
 	if !f.Stable {
 		return &Metrics{}
 	}
 	m := &Metrics{Stable: true, Ms: finite(f.Ms), GainMargin: finite(f.GainMargin), PhaseMargin: finite(f.PhaseMargin), DelayMargin: finite(f.DelayMargin)}
-	if poles := l.poles(); poles != nil {
+	if s.sampled != nil {
+		cross := s.phaseCross(&l)
+		m.Damping = finite(dampingBelow(1, 14, func(zeta float64) bool { return s.damped(c, &l, zeta, cross) }))
+	} else if poles := l.poles(); poles != nil {
 		m.Damping = finite(dominantDamping(poles, f.PhaseCross))
 	}
 	q := quickFigures{stable: true, crossover: f.Crossover}

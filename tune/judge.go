@@ -2,7 +2,6 @@ package tune
 
 import (
 	"math"
-	"math/cmplx"
 	"slices"
 )
 
@@ -85,7 +84,7 @@ func (t *task) meets(s *scenario, c law) bool {
 		return false
 	}
 	l := newOpenLoop(s.p, c, s.scan)
-	if t.damping > 0 && !l.dampedEnough(t.damping, s.phaseCross(&l)) {
+	if t.damping > 0 && !s.damped(c, &l, t.damping, s.phaseCross(&l)) {
 		return false
 	}
 	if !t.simulates() {
@@ -181,8 +180,9 @@ func (t *task) judge(s *scenario, c law, fine float64) outcome {
 	l := newOpenLoop(s.p, c, s.scan)
 	if o.dampingHeld = true; t.damping > 0 {
 		cross := s.phaseCross(&l)
-		if o.dampingHeld = l.dampedEnough(t.damping, cross); !o.dampingHeld {
-			note(1-l.dampingBelow(t.damping, cross)/t.damping, "damping")
+		held := func(zeta float64) bool { return s.damped(c, &l, zeta, cross) }
+		if o.dampingHeld = held(t.damping); !o.dampingHeld {
+			note(1-dampingBelow(t.damping, 8, held)/t.damping, "damping")
 		} else {
 			note(0, "damping")
 		}
@@ -213,65 +213,6 @@ func (s *scenario) phaseCross(l *openLoop) float64 {
 		before = now
 	}
 	return math.Inf(1)
-}
-
-// dampedEnough tells whether every dominant pole of a stable loop has a
-// damping ratio of zeta or more. It counts the zeros of 1+L in the sector
-// |arg s| < π − acos(zeta), |s| < 2·phaseCross by the argument principle: along
-// the arc from the real axis to the sector's edge and down the edge to the
-// origin, where L ~ k/s^n, the angle of 1+L must change by
-// −n·(π − acos(zeta)) and no more.
-func (l *openLoop) dampedEnough(zeta, phaseCross float64) bool {
-	psi := math.Pi - math.Acos(min(zeta, 1-1e-9))
-	low, high := l.corners()
-	radius := min(2*phaseCross, 100*high)
-	bottom := 1e-4 * min(low, radius) / (1 + math.Abs(l.k))
-	start := complex(radius, 0)
-	w := winding{l: l, at: start, value: 1 + l.at(start)}
-	const onArc, onEdge = 16, 40
-	for i := range onArc {
-		w.to(cmplx.Rect(radius, psi*float64(i+1)/onArc), 0)
-	}
-	for i := range onEdge {
-		w.to(cmplx.Rect(radius*math.Pow(bottom/radius, float64(i+1)/onEdge), psi), 0)
-	}
-	count := (w.angle + float64(l.integrators)*psi) / math.Pi
-	return math.Round(count) == 0
-}
-
-// winding follows the angle of 1+L along a path.
-type winding struct {
-	l         *openLoop
-	at, value complex128
-	angle     float64
-}
-
-// to goes on in a straight line, in halves wherever the angle turns fast.
-func (w *winding) to(s complex128, depth int) {
-	value := 1 + w.l.at(s)
-	turn := cmplx.Phase(value / w.value)
-	if math.Abs(turn) > 0.6 && depth < 12 {
-		w.to((w.at+s)/2, depth+1)
-		w.to(s, depth+1)
-		return
-	}
-	w.at, w.value = s, value
-	w.angle += turn
-}
-
-// dampingBelow returns the damping ratio of the least damped dominant pole,
-// known to be less than zeta.
-func (l *openLoop) dampingBelow(zeta, phaseCross float64) float64 {
-	lo, hi := 0.0, zeta
-	for range 8 {
-		mid := (lo + hi) / 2
-		if l.dampedEnough(mid, phaseCross) {
-			lo = mid
-		} else {
-			hi = mid
-		}
-	}
-	return lo
 }
 
 // quantile is the smallest value that a share of the values does not exceed;

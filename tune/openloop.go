@@ -21,7 +21,8 @@ type openLoop struct {
 
 // newOpenLoop joins a plant and a control law. A controller that scans every
 // scan seconds holds its output for scan/2 on average, which adds to the dead
-// time (common practice, no source).
+// time (common practice, no source): near enough for times and poles, not for
+// margins, see sampledLoop.
 func newOpenLoop(p ident.Plant, c law, scan float64) openLoop {
 	l := openLoop{k: p.Gain * c.kc, q1: c.td, lags: p.Elements(), delay: p.DeadTime + scan/2}
 	if p.Structure.Integrating() {

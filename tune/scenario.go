@@ -16,9 +16,10 @@ type scenario struct {
 	scan float64
 	card int // which of several cards it comes from
 
-	w     []float64    // rad/s, ascending
-	g     []complex128 // G(jw) with half a scan of dead time more
-	loops map[int]*loopSim
+	w       []float64    // rad/s, ascending
+	g       []complex128 // G(jw) with half a scan of dead time more
+	sampled *sampledGrid // nil under a continuous controller
+	loops   map[int]*loopSim
 }
 
 // perDecade is the density of a scenario's grid, made denser where the dead
@@ -39,6 +40,10 @@ func newScenario(p ident.Plant, t *task, card int) *scenario {
 	for w := low; w < high*ratio; w = min(w*ratio, w+turn) {
 		s.w = append(s.w, w)
 		s.g = append(s.g, analysed.Response(w))
+	}
+	if s.scan > 0 {
+		// a dead time of too many scans is left to half a scan of dead time more
+		s.sampled, _ = newSampledGrid(p, s.scan, low, high, perDecade)
 	}
 	return s
 }
@@ -116,11 +121,13 @@ type quickFigures struct {
 
 // quick judges stability and Ms.
 func (s *scenario) quick(c law) quickFigures {
+	if s.sampled != nil {
+		return s.sampled.figures(c).quick()
+	}
 	f := quickFigures{phaseMargin: math.Inf(1), delayMargin: math.Inf(1), gainMargin: math.Inf(1)}
 	l := newOpenLoop(s.p, c, s.scan)
 	if l.excess() == 0 || l.k < 0 { // limits at infinity: the sweep knows them
-		full := l.figures()
-		return quickFigures{full.Stable, full.Ms, full.Crossover, full.PhaseMargin, full.DelayMargin, full.GainMargin}
+		return s.slow(&l)
 	}
 	least, at := math.Inf(1), 0
 	above, branch := true, 0 // a loop with an integrator starts above 1
@@ -229,8 +236,11 @@ func (s *scenario) beyond(l *openLoop, c law, above bool) (peak float64, ok bool
 
 // slow is quick by the full sweep.
 func (s *scenario) slow(l *openLoop) quickFigures {
-	full := l.figures()
-	return quickFigures{full.Stable, full.Ms, full.Crossover, full.PhaseMargin, full.DelayMargin, full.GainMargin}
+	return l.figures().quick()
+}
+
+func (f LoopFigures) quick() quickFigures {
+	return quickFigures{f.Stable, f.Ms, f.Crossover, f.PhaseMargin, f.DelayMargin, f.GainMargin}
 }
 
 // peak refines Ms about grid point i by the parabola through three points of
