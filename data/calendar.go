@@ -187,28 +187,13 @@ func compactStamp(b []byte) (ns int64, ok bool) {
 	if len(b) < 14 || b[8]-'0' > 9 {
 		return 0, false
 	}
-	var f [7]int
-	for i, c := range b[:14] {
-		if c-'0' > 9 {
-			return 0, false
-		}
-		f[i/2] = 10*f[i/2] + int(c-'0')
-	}
-	day, ok := dayStart(100*f[0]+f[1], f[2], f[3])
-	if !ok || f[4] > 23 || f[5] > 59 || f[6] > 60 {
+	y, m, d, n := basicDate(b[:8])
+	tod, w := digitsOfTime(b[8:])
+	if n == 0 || w != len(b)-8 {
 		return 0, false
 	}
-	frac, rest := int64(0), b[14:]
-	if len(rest) > 0 {
-		w := 0
-		if rest[0] == '.' || rest[0] == ',' {
-			frac, w = fraction(rest[1:])
-		}
-		if w == 0 || w+1 != len(rest) {
-			return 0, false
-		}
-	}
-	return day + (int64(f[4])*3600+int64(f[5])*60+int64(f[6]))*int64(nsSecond) + frac, true
+	day, ok := dayStart(y, m, d)
+	return day + tod, ok
 }
 
 // basicDate reads yyyymmdd followed by a T, a blank or nothing.

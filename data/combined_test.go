@@ -19,11 +19,13 @@ import (
 
 // mess is a log written with many quirks at once, and what is in it.
 type mess struct {
+	t0   testing.TB
 	rng  *rand.Rand
 	text []byte
 	how  []string // the quirks drawn, for messages
 
 	t, u, y, sp []float64
+	input       string // unit of the input
 }
 
 // pick draws one of several ways and remembers its name.
@@ -97,16 +99,35 @@ var clockForms = map[string]clockForm{
 	"month's name": stampForm("02-Jan-06 15:04:05.000"),
 	"time of day":  stampForm("15:04:05.000"),
 	"half days":    stampForm("3:04:05.000 PM"),
-	"compact":      stampForm("20060102150405.000"),
-	"two columns":  twoForms("02.01.2006", "15:04:05.000"),
-	"two, AM/PM":   twoForms("01/02/2006", "03:04:05.000 PM"),
+	"colon":        stampForm("2006-01-02 15:04:05:000"),
+	"zone's name":  stampForm("2006-01-02 15:04:05.000 CET"),
+	"offset":       stampForm("2006-01-02 15:04:05.000 -0700"),
+	"day's name":   stampForm("Mon 02 Jan 2006 15:04:05.000"),
+	"basic":        stampForm("20060102T150405.000"),
+	"comma":        stampForm("02.01.2006 15:04:05,000"),
+	"spelt": {blank: true, cells: func(at time.Time, _ float64) []string {
+		half := map[bool]string{true: " a. m.", false: " p.\u00a0m."}[at.Hour() < 12]
+		return []string{at.Format("02/01/06 03:04:05.000") + half}
+	}},
+	"unix us":     countForm("", func(at time.Time, _ float64) string { return strconv.FormatInt(at.UnixMicro(), 10) }),
+	"day number":  countForm("", func(at time.Time, _ float64) string { return dayNumberOf(at) }),
+	"compact":     stampForm("20060102150405.000"),
+	"two columns": twoForms("02.01.2006", "15:04:05.000"),
+	"two, AM/PM":  twoForms("01/02/2006", "03:04:05.000 PM"),
+}
+
+// dayNumberOf is a spreadsheet's number of an instant, with twelve decimals.
+func dayNumberOf(at time.Time) string {
+	ns := at.UnixNano()
+	const day = int64(24 * time.Hour)
+	return fmt.Sprintf("%d.%012.0f", 25569+ns/day, float64(ns%day)/float64(day)*1e12)
 }
 
 // newMess writes a log of some rows in a way drawn at random. The recording
 // passes midnight.
-func newMess(seed uint64) *mess {
-	m := &mess{rng: rand.New(rand.NewPCG(seed, 11))}
-	n := 30 + m.rng.IntN(40)
+func newMess(t testing.TB, seed uint64) *mess {
+	m := &mess{t0: t, rng: rand.New(rand.NewPCG(seed, 11))}
+	n := []int{9, 30}[m.rng.IntN(2)] + m.rng.IntN(40)
 	step := []float64{0.5, 0.25, 1, 2}[m.rng.IntN(4)]
 	start := time.Date(2026, 1, 25, 23, 59, 50, 0, time.UTC)
 	temp := 24.0
@@ -122,10 +143,13 @@ func newMess(seed uint64) *mess {
 }
 
 func (m *mess) write(start time.Time) {
-	delim := pick(m, "delimiter", map[string]byte{"comma": ',', "semicolon": ';', "tab": '\t', "pipe": '|'})
+	delim := pick(m, "delimiter", map[string]byte{"comma": ',', "semicolon": ';', "tab": '\t', "pipe": '|', "blanks": ' '})
 	comma := pick(m, "decimal mark", map[string]bool{"point": false, "comma": true})
-	quoted := m.rng.IntN(4) == 0 || comma && delim == ','
 	form := pick(m, "clock", clockForms)
+	if form.blank && delim == ' ' {
+		delim = '\t'
+	}
+	quoted := delim != ' ' && m.rng.IntN(4) == 0 || delim == ',' && (comma || strings.Contains(form.cells(start, 0)[0], ","))
 	lang := pick(m, "words", languages)
 	unitStyle := pick(m, "units", map[string]string{"in round brackets": "%s (%s)", "in brackets": "%s [%s]", "after a slash": "%s / %s", "in a row": ""})
 	number := func(s string) string {
@@ -151,7 +175,7 @@ func (m *mess) write(start time.Time) {
 	units[0] = form.unit
 	missing := map[int]string{}
 	for range m.rng.IntN(4) {
-		missing[5+m.rng.IntN(len(m.y)-5)] = []string{"OL", "", "----", short(9999), short(-999.9), "NaN", "Bad", "OPEN"}[m.rng.IntN(8)]
+		missing[5+m.rng.IntN(len(m.y)-5)] = []string{"OL", map[bool]string{true: "?"}[delim == ' '], "----", short(9999), short(-999.9), "NaN", "Bad", "OPEN"}[m.rng.IntN(8)]
 	}
 	clock := col{clockNames, units, func(i int) []string {
 		cells := form.cells(start.Add(time.Duration(m.t[i]*1e9)), m.t[i])
@@ -166,13 +190,54 @@ func (m *mess) write(start time.Time) {
 		}
 		return short(m.y[i])
 	})
-	cols := []col{one(lang.names[1], "V", func(i int) string { return short(m.u[i]) }), outlet,
+	drive := pick(m, "input", map[string]func() col{
+		"V": func() col { m.input = "V"; return one(lang.names[1], "V", func(i int) string { return short(m.u[i]) }) },
+		"in cell": func() col {
+			m.input = "V"
+			return one(lang.names[1], "", func(i int) string { return short(m.u[i]) + "V" })
+		},
+		"thousands": func() col {
+			m.input = "W"
+			for i := range m.u {
+				m.u[i] *= 1000
+			}
+			return one(lang.names[1], "W", func(i int) string {
+				mark := map[bool]string{true: ".", false: "'"}[comma]
+				thousands, rest := int(m.u[i])/1000, int(m.u[i])%1000
+				if thousands == 0 {
+					return number(fmt.Sprintf("%d.00", rest))
+				}
+				return fmt.Sprintf("%d%s%03d%s", thousands, mark, rest, number(".00"))
+			})
+		},
+		"switched": func() col {
+			m.input = "%"
+			on, off := m.rng.IntN(4), 0.0
+			for i := range m.u {
+				m.u[i] = max(off, min(full, 1e6*m.u[i]))
+			}
+			return one(lang.names[1], "", func(i int) string {
+				return [][2]string{{"OFF", "ON"}, {"Aus", "Ein"}, {"false", "true"}, {"OPEN", "CLOSED"}}[on][int(m.u[i]/full)]
+			})
+		},
+	})()
+	cols := []col{drive, outlet,
 		one(lang.names[3], "°C", func(i int) string { return short(m.sp[i]) })}
 	extras := map[string]func(){
 		"none":   func() {},
 		"room":   func() { cols = append(cols, one(lang.names[4], "°C", func(int) string { return short(21.5) })) },
 		"status": func() { cols = append(cols, one("Status", "", func(int) string { return "OK" })) },
-		"blank":  func() { cols = append(cols, one("", "", func(int) string { return "" })) },
+		"blank": func() {
+			if delim != ' ' {
+				cols = append(cols, one("", "", func(int) string { return "" }))
+			}
+		},
+		"mode": func() { cols = append(cols, one("Mode", "", func(int) string { return "MAN" })) },
+		"remark": func() {
+			if delim != ' ' {
+				cols = append(cols, one("Remark", "", func(i int) string { return map[int]string{3: "bump, by hand"}[i%7] }))
+			}
+		},
 		"number": func() { cols = append(cols, one("No.", "", func(i int) string { return strconv.Itoa(i + 1) })) },
 	}
 	for range 2 {
@@ -182,19 +247,30 @@ func (m *mess) write(start time.Time) {
 	at := m.rng.IntN(2) * len(cols) // the clock stands first or last
 	cols = slices.Insert(cols, at, clock)
 
+	trailing := delim != ' ' && m.rng.IntN(5) == 0
 	line := func(cells []string) string {
-		if quoted {
-			for i := range cells {
-				cells[i] = `"` + cells[i] + `"`
+		for i, c := range cells {
+			if quoted || delim != ' ' && strings.IndexByte(c, delim) >= 0 {
+				cells[i] = `"` + c + `"`
+			}
+			if delim == ' ' {
+				cells[i] = fmt.Sprintf("%8s", strings.ReplaceAll(c, " ", "_"))
 			}
 		}
-		return strings.Join(cells, string(delim))
+		text := strings.Join(cells, string(delim))
+		if trailing {
+			text += string(delim)
+		}
+		return text
 	}
 	var names, unitRow []string
 	for _, c := range cols {
 		for i, n := range c.names {
 			if unitStyle != "" && c.units[i] != "" {
 				n = fmt.Sprintf(unitStyle, n, c.units[i])
+			}
+			if unitStyle == "" && delim == ' ' && c.units[i] == "" {
+				c.units[i] = "-"
 			}
 			names, unitRow = append(names, n), append(unitRow, c.units[i])
 		}
@@ -231,6 +307,7 @@ func (m *mess) write(start time.Time) {
 		}
 		lines = append(lines, line(cells))
 	}
+	lines = append(lines, pick(m, "end", map[string][]string{"none": nil, "blank": {"", ""}, "words": {"", "End of log"}, "NUL": {strings.Repeat("\x00", 40)}})...)
 	for i := range missing {
 		m.y[i] = nan
 	}
@@ -259,6 +336,9 @@ func (m *mess) pack(text string, latin bool) {
 		panic(err)
 	}
 	m.text = b
+	if how := pick(m, "packed", map[string]string{"no": "", "not": "", "gzip": "gz", "zstd": "zst"}); how != "" {
+		m.text = packed(m.t0, how, b)
+	}
 }
 
 // Quirks in combination: whatever is drawn, the values are those written. The
@@ -269,7 +349,7 @@ func TestCombined(t *testing.T) {
 		draws = 30000
 	}
 	for seed := range draws {
-		m := newMess(seed)
+		m := newMess(t, seed)
 		runs, err := Read(context.Background(), "-", Options{Stdin: bytes.NewReader(m.text)})
 		bad := ""
 		if err != nil {
@@ -298,7 +378,7 @@ func (m *mess) compare(r *Run) string {
 			}
 		}
 	}
-	if r.Units.Input != "V" || r.Units.Temperature != "degC" {
+	if r.Units.Input != m.input || r.Units.Temperature != "degC" {
 		return fmt.Sprintf("units %+v", r.Units)
 	}
 	return ""

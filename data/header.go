@@ -144,12 +144,13 @@ func cellNames(cells [][]byte) []string {
 
 // unitRow reads a row whose cells are all units or blank.
 func unitRow(cells [][]byte) (units []string, ok bool) {
-	known := 0
+	known, written := 0, 0
 	for _, c := range cells {
 		if len(c) == 0 || bytes.Equal(c, []byte("-")) {
 			units = append(units, "")
 			continue
 		}
+		written++
 		text := decodeName(c)
 		u, is := unitCell(text)
 		if is {
@@ -159,7 +160,7 @@ func unitRow(cells [][]byte) (units []string, ok bool) {
 		}
 		units = append(units, u)
 	}
-	return units, known >= 1 && 2*known >= len(nonBlank(cells))
+	return units, known >= 1 && 2*known >= written
 }
 
 func isUnitRow(cells [][]byte) bool {

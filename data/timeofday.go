@@ -54,6 +54,30 @@ func scanTime(b []byte, hourMinute bool) (ns int64, n, fields int) {
 	return ns, i, fields
 }
 
+// digitsOfTime reads hhmmss and a fraction of the second.
+func digitsOfTime(b []byte) (ns int64, n int) {
+	if len(b) < 6 {
+		return 0, 0
+	}
+	var f [3]int64
+	for i, c := range b[:6] {
+		if c-'0' > 9 {
+			return 0, 0
+		}
+		f[i/2] = 10*f[i/2] + int64(c-'0')
+	}
+	n = 6
+	if f[0] > 23 || f[1] > 59 || f[2] > 60 {
+		return 0, 0
+	}
+	ns = (f[0]*3600 + f[1]*60 + f[2]) * int64(time.Second)
+	if len(b) > 7 && (b[6] == '.' || b[6] == ',') {
+		frac, w := fraction(b[7:])
+		ns, n = ns+frac, 7+w
+	}
+	return ns, n
+}
+
 // fraction reads the digits of a decimal fraction of a second. Digits beyond
 // the ninth are cut off.
 func fraction(b []byte) (ns int64, n int) {
@@ -96,7 +120,9 @@ func halfDay(ns int64, rest []byte) (int64, []byte, bool) {
 func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 	tod, n, fields := scanTime(b, true)
 	if fields == 0 {
-		return 0, 0, false
+		if tod, n = digitsOfTime(b); n == 0 {
+			return 0, 0, false
+		}
 	}
 	tod, rest, ok := halfDay(tod, b[n:])
 	if !ok || tod >= int64(nsDay)+int64(nsSecond) {
@@ -119,7 +145,7 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 func skipSpaces(b []byte) []byte {
 	for len(b) > 0 {
 		switch {
-		case b[0] == ' ':
+		case b[0] == ' ' || b[0] == 0xA0: // alone, a no-break space of Windows-1252
 			b = b[1:]
 		case bytes.HasPrefix(b, []byte("\u00a0")):
 			b = b[len("\u00a0"):]
