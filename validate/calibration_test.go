@@ -72,11 +72,15 @@ func (h heater) loops(t testing.TB, inForce, proposed *tune.Gains) (log, truth, 
 	return loop(inForce, d), loop(proposed, d), loop(proposed, make([]float64, rows))
 }
 
-// lambdaGains are internal-model PI gains for the card's best fit with a
-// closed-loop time of `slow` dead times.
+// lambdaGains are internal-model PI gains for the card's best fit, reduced to
+// one lag by the half rule, with a closed-loop time of `slow` dead times.
 func lambdaGains(p ident.Plant, slow float64) *tune.Gains {
-	ti := p.Lags[0] + p.Lags[1]/2
-	dead := p.DeadTime + p.Lags[1]/2
+	lags := append(p.Elements(), 0, 0)
+	ti := lags[0] + lags[1]/2
+	dead := p.DeadTime + lags[1]/2
+	for _, tau := range lags[2:] {
+		dead += tau
+	}
 	return piGains(ti/(p.Gain*(slow+1)*dead), ti, studyInterval)
 }
 

@@ -89,9 +89,16 @@ func (p *plan) courses(run *data.Run) (out []*course, warnings []string, err err
 		warnings = append(warnings, fmt.Sprintf("%d of %d rows are left out: no temperature, or parts of fewer than %d rows", dropped, len(run.T), minSegment))
 	}
 	if bridged > 0 {
-		warnings = append(warnings, fmt.Sprintf("%d missing temperatures are bridged by straight lines (at most %d in a row)", bridged, maxBridge))
+		warnings = append(warnings, bridgedWords(bridged))
 	}
 	return out, warnings, nil
+}
+
+func bridgedWords(n int) string {
+	if n == 1 {
+		return "1 missing temperature is bridged by a straight line"
+	}
+	return fmt.Sprintf("%d missing temperatures are bridged by straight lines (at most %d in a row)", n, maxBridge)
 }
 
 // measureLogged measures the log itself. Against a setpoint that was not in

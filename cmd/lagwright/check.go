@@ -5,6 +5,7 @@ import (
 	"encoding/json"
 	"fmt"
 	"io"
+	"time"
 
 	"github.com/spf13/cobra"
 
@@ -14,29 +15,40 @@ import (
 )
 
 type checkOptions struct {
-	log  logFlags
-	plot plotFlag
+	log       logFlags
+	plot      plotFlag
+	following bool
+	every     time.Duration // between two looks at a log that is followed
 }
 
 func newCheck(c *console) *cobra.Command {
-	var o checkOptions
+	o := checkOptions{every: followEvery}
 	cmd := &cobra.Command{
 		Use:   "check LOG...",
 		Short: "What is in the log; can it support a fit?",
 		Long: `Reads a log and says, while you are still on site, what is in it: rows, clock,
 gaps, what was mended or left out, noise, drift, every bump, and for gain, lags
 and dead time whether this log can give them, with the cure in numbers.
+
+With --follow it watches one log while it grows, says in a line each time the
+verdict changes, and ends with the report when everything is good, or at
+Ctrl-C.
 ` + exitHelp,
 		Example: `  lagwright check bump.csv
   lagwright check export.csv --temp-col TT-214 --plot log.png
+  lagwright check bump.csv --follow
   lagwright check runs/ --json`,
 		Args: needArgs(1, -1, "lagwright check bump.csv"),
 		RunE: func(cmd *cobra.Command, args []string) error { return runCheck(cmd.Context(), c, &o, args) },
 	}
 	o.log.add(cmd)
 	o.plot.add(cmd, "the first log")
+	cmd.Flags().BoolVar(&o.following, "follow", false, "watch one log while it grows, until it is good")
 	return cmd
 }
+
+// checkSchema is the schema of a check of several runs.
+const checkSchema = "lagwright/check/1"
 
 // checks is what is said of several runs.
 type checks struct {
@@ -48,11 +60,17 @@ func runCheck(ctx context.Context, c *console, o *checkOptions, args []string) e
 	if err := c.refuseOverwriting(args, c.output, o.plot.path); err != nil {
 		return err
 	}
+	if o.following {
+		if len(args) > 1 || o.plot.path != "" {
+			return usageErrorf("--follow watches one log, and draws nothing")
+		}
+		return o.follow(ctx, c, args[0])
+	}
 	files, err := o.log.expand(args)
 	if err != nil {
 		return err
 	}
-	all := checks{Schema: "lagwright/check/1"}
+	all := checks{Schema: checkSchema}
 	var first *data.Run
 	var failed []error
 	for _, file := range files {

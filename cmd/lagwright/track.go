@@ -6,6 +6,7 @@ import (
 
 	"github.com/spf13/cobra"
 
+	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/data"
 	"lagwright/validate"
@@ -59,7 +60,7 @@ func runTrack(ctx context.Context, c *console, o *trackOptions, args []string) e
 	clear()
 	switch {
 	case err != nil && len(failed) > 0:
-		return inputErrorf("%w; %d files cannot be read, the first: %s", err, len(failed), failed[0].Reason)
+		return inputErrorf("%w; %s cannot be read, the first: %s", err, format.Count(len(failed), "file", "files"), failed[0].Reason)
 	case err != nil:
 		return fitError(err)
 	}

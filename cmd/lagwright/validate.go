@@ -13,6 +13,7 @@ import (
 
 	"github.com/spf13/cobra"
 
+	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/data"
 	"lagwright/tune"
@@ -148,7 +149,7 @@ func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gain
 		return nil, inputError{err}
 	}
 	if len(replay.Runs) == 0 && len(replay.Failed) > 0 {
-		return nil, inputErrorf("none of %d logs can be replayed: %s: %s", len(replay.Failed), replay.Failed[0].File, replay.Failed[0].Reason)
+		return nil, inputErrorf("none of %s can be replayed: %s: %s", format.Count(len(replay.Failed), "log", "logs"), replay.Failed[0].File, replay.Failed[0].Reason)
 	}
 	return replay, nil
 }

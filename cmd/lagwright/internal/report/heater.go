@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"math"
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
@@ -78,8 +79,12 @@ func derivedTable(c *fit.Card) *table {
 
 func structureTable(c *fit.Card) *table {
 	t := &table{
-		Caption: "Every structure tried; the lower AICc and BIC, the better the log speaks for it",
+		Caption: "Every structure tried: AICc and BIC over the least; within 2 the log cannot tell structures apart",
 		Head:    []string{"Structure", "AICc", "BIC", "RMSE", "Fit", "Ljung-Box p", "Chosen"},
+	}
+	aicc, bic := math.Inf(1), math.Inf(1)
+	for _, m := range c.Models {
+		aicc, bic = math.Min(aicc, m.AICc), math.Min(bic, m.BIC)
 	}
 	for _, m := range c.Models {
 		chosen := cell{}
@@ -87,7 +92,7 @@ func structureTable(c *fit.Card) *table {
 			chosen = cell{Text: "chosen", Kind: "good"}
 		}
 		t.Rows = append(t.Rows, []cell{
-			head(m.Structure), num(format.Number(m.AICc, 4)), num(format.Number(m.BIC, 4)),
+			head(m.Structure), num(fmt.Sprintf("%.1f", m.AICc-aicc)), num(fmt.Sprintf("%.1f", m.BIC-bic)),
 			num(format.Amount(m.RMSE, kelvin(c.Units.Temperature), 3)), num(format.Short(m.FitPercent, 4) + " %"),
 			num(format.Short(m.Residuals.LjungBoxP, 2)), chosen,
 		})
