@@ -1,6 +1,7 @@
 package fit
 
 import (
+	"cmp"
 	"math"
 	"math/rand/v2"
 	"slices"
@@ -26,8 +27,9 @@ type posterior struct {
 	b       *bounded
 	e       *engine // b's, on fewer rows
 	least   float64 // its sum of squares at the optimum
-	free    []int // eta that are not held
+	free    []int   // eta that are not held
 	spreads []spread
+	heights []float64 // density of each at the optimum, up to a constant
 	s2, dof float64
 	root    [][]float64 // square root of a covariance to begin with
 	rng     *rand.Rand
@@ -45,6 +47,9 @@ func (b *bounded) posterior(rng *rand.Rand) *posterior {
 		if !held {
 			q.free = append(q.free, j)
 		}
+	}
+	for _, sp := range q.spreads {
+		q.heights = append(q.heights, sp.weight*math.Pow(sp.k2, -float64(len(q.free))/2))
 	}
 	q.root = b.starts(q.free)
 	q.e = b.sketch()
@@ -75,8 +80,8 @@ func (q *posterior) at(eta []float64) plantAt {
 	p := e.eval(eta, false)
 	r2 := math.Max(p.s-q.least, 0) / q.s2
 	t := 0.0
-	for _, sp := range q.spreads {
-		t += sp.weight * math.Pow(sp.k2, -d/2) * math.Exp(-0.5*(q.dof+d)*math.Log1p(r2/(sp.k2*q.dof)))
+	for i, sp := range q.spreads {
+		t += q.heights[i] * math.Exp(-0.5*(q.dof+d)*math.Log1p(r2/(sp.k2*q.dof)))
 	}
 	density := math.Log(t)
 	if !e.gainFix {
@@ -150,6 +155,25 @@ func (b *bounded) spreads() []spread {
 			s.gain = math.Max((m.cov[0][0]+m.shift[0]*m.shift[0])/ref[0][0], k2)
 		}
 		out = append(out, s)
+	}
+	return merged(out)
+}
+
+// merged joins spreads that differ by less than a tenth.
+func merged(ss []spread) []spread {
+	slices.SortFunc(ss, func(a, b spread) int { return cmp.Compare(a.k2, b.k2) })
+	var out []spread
+	for _, s := range ss {
+		n := len(out)
+		if n == 0 || s.k2 > 1.1*out[n-1].k2 {
+			out = append(out, s)
+			continue
+		}
+		o := &out[n-1]
+		w := o.weight + s.weight
+		o.k2 = (o.weight*o.k2 + s.weight*s.k2) / w
+		o.gain = (o.weight*o.gain + s.weight*s.gain) / w
+		o.weight = w
 	}
 	return out
 }

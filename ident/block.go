@@ -25,7 +25,7 @@ func NewBlockSimulator(rows []Row, in Input) *Simulator {
 		t[k] = r.T
 	}
 	s := NewSimulator(t, in)
-	s.rows = rows
+	s.rows, s.blocks = rows, new(blockCache)
 	s.stretches = splitByShape(s.stretches, rows)
 	if n := len(rows); n > 0 {
 		s.tolerance = timeTolerance([]float64{t[0], rows[n-1].last()})

@@ -86,49 +86,60 @@ func (s *stepCache) over(c *chain, x *state, h, tolerance float64) {
 }
 
 // A kickCache remembers what a change of the input leaves in the state some
-// time later. When the changes fall on the rows, there is only one such time.
+// time later. When the changes fall on the rows, there is only one such time, and
+// the table is not needed.
 type kickCache struct {
 	evaluation uint64
-	recent     int // entry used last
+	recent     kick // used last
 	nudged     state
-	entry      [128]struct {
-		evaluation uint64
-		since      float64
-		kick       state
-	}
+	table      *[128]kick
+}
+
+type kick struct {
+	evaluation uint64
+	since      float64
+	state      state
 }
 
 // after returns what a change of −1 of the delayed input leaves in the state
 // since s later. It is valid until the next call.
 func (s *kickCache) after(c *chain, since, tolerance float64) *state {
-	if e := &s.entry[s.recent]; e.evaluation == s.evaluation && math.Abs(since-e.since) <= tolerance {
-		return &e.kick
+	e := &s.recent
+	if e.evaluation == s.evaluation {
+		if math.Abs(since-e.since) <= tolerance {
+			return &e.state
+		}
+		if s.table == nil {
+			s.table = new([128]kick)
+		}
+		s.table[s.place(e.since)] = *e
+		*e = s.table[s.place(since)]
 	}
-	s.recent = int(spanKey(since) % uint64(len(s.entry)))
-	e := &s.entry[s.recent]
 	d := since - e.since
 	switch {
 	case e.evaluation == s.evaluation && math.Abs(d) <= tolerance:
-		return &e.kick
+		return &e.state
 	case e.evaluation == s.evaluation && math.Abs(d)*c.norm() <= nudgeable:
-		s.nudged = e.kick
+		s.nudged = e.state
 		c.nudge(&s.nudged, d)
 		return &s.nudged
 	}
 	e.evaluation, e.since = s.evaluation, since
 	if since*c.norm() <= nudgeable { // soon after the change itself
-		e.kick = state{}
+		e.state = state{}
 		for i := range c.n {
-			e.kick[i] = 1
+			e.state[i] = 1
 		}
-		c.nudge(&e.kick, since)
-		return &e.kick
+		c.nudge(&e.state, since)
+		return &e.state
 	}
 	var f matrix
 	c.transition(&f, since)
-	c.kick(&e.kick, &f)
-	return &e.kick
+	c.kick(&e.state, &f)
+	return &e.state
 }
+
+func (s *kickCache) place(since float64) int { return int(spanKey(since) % uint64(len(s.table))) }
 
 // runRagged is run for rows of a ragged stretch, which may follow changes of the
 // input.

@@ -42,7 +42,7 @@ type Simulator struct {
 
 	steps  *stepCache // of ragged rows
 	kicks  kickCache
-	blocks blockCache
+	blocks *blockCache // of rows that are means
 }
 
 // NewSimulator returns a simulator for the rows at t in s, strictly
@@ -75,7 +75,10 @@ func (s *Simulator) setInput(in Input) {
 // Clone returns a simulator of the same log for another goroutine.
 func (s *Simulator) Clone() *Simulator {
 	clone := *s
-	clone.blocks = blockCache{}
+	clone.kicks = kickCache{}
+	if s.blocks != nil {
+		clone.blocks = new(blockCache)
+	}
 	if s.steps != nil {
 		clone.steps = new(stepCache)
 	}
@@ -182,7 +185,9 @@ func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sens
 	if s.steps != nil {
 		s.steps.evaluation = s.evaluation
 	}
-	s.blocks.clear()
+	if s.blocks != nil {
+		s.blocks.clear()
+	}
 	s.integrating, s.deadTime = st.integrating, deadTime
 	s.rewind()
 	return finite(deadTime) && s.chain.set(st, lags, sensitivities)
