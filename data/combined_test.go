@@ -138,8 +138,83 @@ func newMess(t testing.TB, seed uint64) *mess {
 		m.y = append(m.y, math.Round(10*temp+3*m.rng.NormFloat64())/10)
 		m.sp = append(m.sp, []float64{60, 65.5}[i*2/n])
 	}
-	m.write(start)
+	if seed%5 == 4 {
+		m.writeLong(start)
+	} else {
+		m.write(start)
+	}
 	return m
+}
+
+// writeLong writes rows of time, tag and value: each temperature, but input
+// and setpoint only when they change.
+func (m *mess) writeLong(start time.Time) {
+	m.input = "V"
+	form := pick(m, "clock", clockForms)
+	for !form.number && !strings.Contains(form.cells(start, 0)[0], "6") { // without a date it is unknown which tag passed midnight
+		form = pick(m, "clock", clockForms)
+	}
+	delim := pick(m, "delimiter", map[string]byte{"comma": ',', "semicolon": ';', "tab": '\t'})
+	comma := delim != ',' && m.rng.IntN(2) == 0
+	lang := pick(m, "words", languages)
+	quality := pick(m, "quality", map[string]string{"none": "", "word": "Good", "number": "192"})
+	apart := pick(m, "unit", map[string]bool{"in the tag": false, "in a column": true})
+	number := func(s string) string {
+		if comma {
+			return strings.Replace(s, ".", ",", 1)
+		}
+		return s
+	}
+	names := form.columns
+	if names == nil {
+		names = []string{"Timestamp"}
+		if form.unit != "" {
+			names[0] += "_" + form.unit
+		}
+	}
+	names = append(slices.Clone(names), "Tag", "Value")
+	if quality != "" {
+		names = append(names, "Quality")
+	}
+	if apart {
+		names = append(names, "Units")
+	}
+	join := func(cells []string) string {
+		for i, c := range cells {
+			if strings.IndexByte(c, delim) >= 0 {
+				cells[i] = `"` + c + `"`
+			}
+		}
+		return strings.Join(cells, string(delim))
+	}
+	lines := []string{join(names)}
+	put := func(i int, tag, unit string, v float64) {
+		cells := form.cells(start.Add(time.Duration(m.t[i]*1e9)), m.t[i])
+		if form.number {
+			cells[0] = number(cells[0])
+		}
+		if !apart {
+			tag += " (" + unit + ")"
+		}
+		cells = append(cells, tag, number(strconv.FormatFloat(v, 'f', -1, 64)))
+		if quality != "" {
+			cells = append(cells, quality)
+		}
+		if apart {
+			cells = append(cells, unit)
+		}
+		lines = append(lines, join(cells))
+	}
+	for i := range m.t {
+		if i == 0 || m.u[i] != m.u[i-1] {
+			put(i, lang.names[1], "V", m.u[i])
+		}
+		put(i, lang.names[2], "°C", m.y[i])
+		if i == 0 || m.sp[i] != m.sp[i-1] {
+			put(i, lang.names[3], "°C", m.sp[i])
+		}
+	}
+	m.pack(strings.Join(lines, "\n")+"\n", lang.latin)
 }
 
 func (m *mess) write(start time.Time) {

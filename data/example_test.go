@@ -54,12 +54,12 @@ func ExampleRead_span() {
 
 // Folders and patterns become files in a fixed order.
 func ExampleExpand() {
-	files, err := data.Expand([]string{filepath.Join("..", "testdata", "logs", "quirks", "thousands-*.csv")})
+	files, err := data.Expand([]string{filepath.Join("..", "testdata", "logs", "quirks", "sentinels*.csv")})
 	for _, f := range files {
 		fmt.Println(filepath.Base(f), err)
 	}
 	// Output:
-	// thousands-apostrophe.csv <nil>
-	// thousands-comma.csv <nil>
-	// thousands-dot.csv <nil>
+	// sentinels-32-bit.csv <nil>
+	// sentinels-input.csv <nil>
+	// sentinels.csv <nil>
 }

@@ -88,6 +88,9 @@ var quirks = []quirk{
 	{file: "thousands-comma.csv", u: times1500(baseU), input: "W"},
 	{file: "thousands-dot.csv", u: times1500(baseU), input: "W"},
 	{file: "thousands-apostrophe.csv", u: times1500(baseU), input: "W"},
+	{file: "thousands-only.csv", u: times1500(baseU), y: wholeY, input: "W", start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "thousands-only-dots.csv", u: times1500(baseU), y: wholeY, input: "W", start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "three-decimals-quoted.csv", u: []float64{1, 1, 2.5, 2.5, 2.5, 2.5, 2.5, 2.5}, start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "quoted-newline.csv"},
 	{file: "stray-quote.csv"},
 
@@ -122,6 +125,12 @@ var quirks = []quirk{
 	{file: "unit-suffix-f.csv", within: 1e-12},
 	{file: "unit-kelvin.csv", within: 1e-12},
 	{file: "unit-in-cell.csv"},
+	{file: "unit-row-dashes.csv", also: func(t *testing.T, r *Run) {
+		if r.Auto == nil || slices.Contains(r.Auto, true) {
+			t.Errorf("automatic %v, want manual throughout", r.Auto)
+		}
+	}},
+	{file: "tab-many-words.tsv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "comment-header.csv"},
 	{file: "trailing-delimiter.csv"},
 	{file: "header-repeated.csv", notes: []string{"header-repeated"}},
@@ -191,6 +200,8 @@ var quirks = []quirk{
 	{file: "rfc3339.csv", start: "2026-01-05T10:00:00Z"},
 	{file: "rfc3339-offset.csv", start: "2026-01-05T10:00:00+01:00"},
 	{file: "iso-basic.csv", start: "2026-01-05T10:00:00Z"},
+	{file: "iso-basic-fraction.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "restart-two-columns.csv", start: "2026-01-25T10:00:00Z", notes: []string{"header-repeated", local}},
 	{file: "year-first-slash.csv", start: "2026-01-05T10:00:00Z", notes: []string{local}},
 	{file: "dots-day-first.csv", start: "2026-01-05T10:00:00Z", notes: []string{local}},
 	{file: "dots-decimal-comma.csv", start: "2026-01-05T10:00:00Z", notes: []string{local}},
@@ -332,6 +343,7 @@ func half(i int) float64 { return float64(i) / 2 }
 var (
 	headless  = ramp(24, func(i int) float64 { return []float64{0, 1.5}[min(1, i/3)] })
 	headlessY = ramp(24, func(i int) float64 { return math.Round(2400+10*float64(i)+float64(i*i%5)) / 100 })
+	wholeY    = []float64{24, 24, 24, 25, 26, 27, 29, 30}
 	switchedU = with(ramp(8, func(int) float64 { return 100 }), 0, 0, 1, 0)
 	unevenU   = ramp(40, func(i int) float64 { return []float64{0, 1.5}[min(1, i/12)] })
 	unevenY   = ramp(40, func(i int) float64 { return float64(2400+10*i+i*i%7) / 100 })
