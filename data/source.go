@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"bytes"
 	"crypto/sha256"
+	"encoding/binary"
 	"encoding/hex"
 	"errors"
 	"fmt"
@@ -101,17 +102,39 @@ func (s *source) sum() (string, error) {
 // expectedRows guesses the number of lines of a stored text from its size and
 // the lines of its beginning; 0 where the size is not known.
 func (s *source) expectedRows(sample []byte) int {
-	f, ok := s.closer.(*os.File)
-	if !ok || s.packed != "" {
-		return 0
-	}
-	info, err := f.Stat()
+	size := s.textSize()
 	lines := bytes.Count(sample, []byte{'\n'})
-	if err != nil || !info.Mode().IsRegular() || lines == 0 {
+	if size == 0 || lines == 0 {
 		return 0
 	}
 	perLine := float64(len(sample)) / float64(lines)
-	return int(1.02*float64(info.Size())/perLine) + firstBlock
+	return int(1.02*float64(size)/perLine) + firstBlock
+}
+
+// textSize is the number of bytes of the text as far as the file shows it
+// without being read; 0 where it does not.
+func (s *source) textSize() int64 {
+	f, ok := s.closer.(*os.File)
+	if !ok {
+		return 0
+	}
+	info, err := f.Stat()
+	if err != nil || !info.Mode().IsRegular() {
+		return 0
+	}
+	switch s.packed {
+	case "":
+		return info.Size()
+	case "gzip": // the last four bytes, modulo 2^32 (RFC 1952)
+		var b [4]byte
+		if _, err := f.ReadAt(b[:], info.Size()-4); err != nil {
+			return 0
+		}
+		if n := int64(binary.LittleEndian.Uint32(b[:])); n < 50*info.Size() {
+			return n
+		}
+	}
+	return 0
 }
 
 func (s *source) close() {
