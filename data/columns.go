@@ -20,6 +20,7 @@ type column struct {
 	ascending    bool    // numbers that never fall
 	repeats      bool    // text of a few values that keep coming back
 
+	halves   bool     // text of nothing but AM and PM
 	units    bool     // text of nothing but units
 	switched bool     // nothing but words such as ON and OFF, or logged as true and false
 	words    []string // some of these words
@@ -105,6 +106,9 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 			found = best(cols, taken, r, isSwitched)
 		}
 		if r == roleInput && len(found) > 1 {
+			found = leaveOthers(cols, found)
+		}
+		if r == roleInput && len(found) > 1 {
 			if only := stepwiseAmong(cols, found); only >= 0 {
 				found = []int{only}
 				notes = append(notes, contentNote(cols[only], r))
@@ -123,6 +127,18 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 		more = append(more, readSwitched(&cols[l[roleInput]]))
 	}
 	return l, append(notes, more...), err
+}
+
+// leaveOthers drops candidates whose name says that they are something else,
+// such as the voltage of the supply, if that leaves any.
+func leaveOthers(cols []column, found []int) []int {
+	rest := slices.DeleteFunc(slices.Clone(found), func(i int) bool {
+		return words[roleOther].hit(cols[i].name, wordsOf(cols[i].name)) > 1
+	})
+	if len(rest) == 0 {
+		return found
+	}
+	return rest
 }
 
 func isSwitched(c column) bool { return c.switched }

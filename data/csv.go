@@ -114,6 +114,9 @@ func (c *csvReader) plan(o *Options, info *reading) error {
 	}
 	info.notes = append(info.notes, notes...)
 	c.at = at
+	if at[roleTime] >= 0 && c.d.cols[at[roleTime]].class == stamps {
+		c.at[roleHalf] = slices.IndexFunc(c.d.cols, func(c column) bool { return c.halves })
+	}
 	return c.planClock(o, info)
 }
 
@@ -189,17 +192,22 @@ func hasAlternative(k *clock, cells [][]byte) bool {
 	return false
 }
 
-// stampOf puts the stamp of a row together, from one cell or two.
+// stampOf puts the stamp of a row together, from one cell to three.
 func (c *csvReader) stampOf(cells [][]byte) ([]byte, bool) {
-	i, j := c.at[roleTime], c.at[roleDate]
-	if i >= len(cells) || j >= len(cells) {
+	i, j, h := c.at[roleTime], c.at[roleDate], c.at[roleHalf]
+	if i >= len(cells) || j >= len(cells) || h >= len(cells) {
 		return nil, false
 	}
-	if j < 0 {
+	if j < 0 && h < 0 {
 		return cells[i], true
 	}
-	c.stamp = append(append(append(c.stamp[:0], cells[j]...), ' '), cells[i]...)
-	return c.stamp, true
+	c.stamp = c.stamp[:0]
+	for _, k := range []int{j, i, h} {
+		if k >= 0 {
+			c.stamp = append(append(c.stamp, cells[k]...), ' ')
+		}
+	}
+	return c.stamp[:len(c.stamp)-1], true
 }
 
 // checkEvery is how many rows pass between looks at the context.
@@ -233,7 +241,7 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 // fast reads a row whose cells are plain numbers in place. It gives up, and
 // adds nothing, at anything out of the ordinary.
 func (c *csvReader) fast(text []byte, line int) bool {
-	if c.long != nil || c.pair || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
+	if c.long != nil || c.pair || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
 		return false
 	}
 	i, col := 0, 0

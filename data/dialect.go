@@ -489,7 +489,11 @@ func (d *dialect) inspect(rows []line) {
 		c.repeats = len(words) > 0 && 2*len(words) <= sum(words)
 		if c.class == texts {
 			c.switched, c.words = onOff.switched(), onOff.seen
-			c.units = len(words) > 0 && !c.switched
+			c.units, c.halves = len(words) > 0 && !c.switched, len(words) > 0
+			for w := range words {
+				_, rest, ok := halfDay(int64(nsHour), []byte(w))
+				c.halves = c.halves && ok && len(rest) == 0
+			}
 			for w := range words {
 				_, known := canonicalUnit(decodeName([]byte(w)))
 				c.units = c.units && known

@@ -317,7 +317,7 @@ func (p *parquetReader) readRows(ctx context.Context) error {
 // row hands one row to its table.
 func (p *parquetReader) row(used []*parquetColumn, k, number int) {
 	c := p.csv
-	if c.long != nil || c.pair && (p.columns[c.at[roleTime]].kind == asText || p.columns[c.at[roleDate]].kind == asText) {
+	if c.long != nil || c.at[roleHalf] >= 0 || c.pair && (p.columns[c.at[roleTime]].kind == asText || p.columns[c.at[roleDate]].kind == asText) {
 		p.textRow(used, k, number)
 		return
 	}

@@ -180,6 +180,7 @@ var quirks = []quirk{
 			t.Errorf("automatic %v, want %v", r.Auto, want)
 		}
 	}},
+	{file: "supply-voltage.csv"},
 	{file: "two-temperatures.csv", wrong: `2 columns could be the temperature: "outlet_A_degC" (24.1, 24.1, 24.2), "outlet_B_degC" (25.1, 25.1, 25.2); say which with --temp-col`},
 	{file: "two-temperatures.csv", o: Options{TempCol: "OUTLET_B_DEGC"}, y: []float64{25.1, 25.1, 25.2, 25.6, 26.9, 28.3, 29.6, 30.8}},
 	{file: "still-temperature.csv", wrong: `2 columns could be the temperature: "Ch2 (°C)"`},
@@ -213,6 +214,7 @@ var quirks = []quirk{
 	{file: "ambiguous-order.csv", o: Options{TimeFormat: "%m/%d/%Y %H:%M:%S.%f"}, start: "2026-05-01T10:00:00Z", notes: []string{local}},
 	{file: "order-by-midnight.csv", start: "2026-01-05T23:59:58Z", notes: []string{"date-order", local}},
 	{file: "am-pm.csv", start: "2026-01-25T11:59:58Z", notes: []string{local}},
+	{file: "am-pm-column.csv", start: "2026-01-25T11:59:58Z", notes: []string{local}},
 	{file: "month-name.csv", start: "2026-01-05T10:00:00Z", notes: []string{local}},
 	{file: "date-and-time.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "unix-s.csv", start: "2026-01-05T10:00:00Z"},

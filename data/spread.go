@@ -172,8 +172,8 @@ const evenRows = 20
 
 // even gives the rows the times of an even sampling, if there is one that
 // falls into every stamp, which then means width from its time on. A tenth of
-// a width is allowed for jitter. Of the intervals that fit the one of fewest
-// digits is taken, as a logger is set to one.
+// a width is allowed for jitter. Of the intervals that fit without jitter the
+// one of fewest digits is taken, as a logger is set to one.
 func (s *stampSeries) even(rows []int, width int64) (period time.Duration, ok bool) {
 	n := len(rows)
 	if n < evenRows {
@@ -188,23 +188,22 @@ func (s *stampSeries) even(rows []int, width int64) (period time.Duration, ok bo
 		}
 		return lo, hi
 	}
-	fits := func(lo, hi float64) bool { return hi-lo <= 1.1*float64(width) }
-	if slope < 1 || !fits(reach(slope)) {
+	lo, hi := reach(slope)
+	if slope < 1 || hi-lo > 1.1*float64(width) {
 		return 0, false
 	}
-	for digits := 1; digits < 16; digits++ {
-		step := rounded(slope, digits)
-		lo, hi := reach(step)
-		if !fits(lo, hi) {
-			continue
+	step := slope
+	for digits := 1; digits < 9; digits++ {
+		if a, b := reach(rounded(slope, digits)); b-a < float64(width) {
+			step, lo, hi = rounded(slope, digits), a, b
+			break
 		}
-		start := (lo + hi + float64(width)) / 2 // the stamps allow hi to lo+width
-		for k, i := range rows {
-			s.t[i] = first + int64(math.Round(start+step*float64(k)))
-		}
-		return time.Duration(math.Round(step)), true
 	}
-	return 0, false
+	start := (lo + hi + float64(width)) / 2 // the stamps allow hi to lo+width
+	for k, i := range rows {
+		s.t[i] = first + int64(math.Round(start+step*float64(k)))
+	}
+	return time.Duration(math.Round(step)), true
 }
 
 // rounded gives v > 0 to so many significant digits.

@@ -13,6 +13,7 @@ const (
 	roleNone role = iota
 	roleTime
 	roleDate // the date, where date and time of day have a column each
+	roleHalf // AM or PM, in a column of its own
 	roleInput
 	roleTemp
 	roleSetpoint
