@@ -21,11 +21,12 @@ import (
 // Baseline, drift, the initial state and all that came before the first row
 // are in the log and cancel: no assumption about them is needed.
 type course struct {
-	t, y, u, r []float64 // time s, temperature with short holes bridged, input, setpoint
-	before     float64   // setpoint the controller starts from
-	rest       float64   // level from which the first setpoint move is measured
-	stepped    float64   // size of the step made up for a log without setpoint, 0 when none
-	resumed    bool      // starts after a hole in the run
+	t, y, u, r []float64               // time s, temperature with short holes bridged, input, setpoint
+	before     float64                 // setpoint the controller starts from
+	rest       float64                 // level from which the first setpoint move is measured
+	stepped    float64                 // size of the step made up for a log without setpoint, 0 when none
+	resumed    bool                    // starts after a hole in the run
+	final      func(r float64) float64 // quiet courses under a P controller: where it comes to rest; else nil
 
 	scan    float64 // s
 	even    bool    // rows and scans share the lattice
@@ -152,5 +153,5 @@ func interpolate(at, t, y []float64, f func(k int, v float64)) {
 // signal returns the course with another temperature and input as a signal to
 // be measured.
 func (c *course) signal(y, u []float64) signal {
-	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest, resumed: c.resumed}
+	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest, resumed: c.resumed, final: c.final}
 }

@@ -211,7 +211,7 @@ func (p *plan) setpointInput(c *course) ([]float64, error) {
 	gains := *p.logged
 	gains.Limits = tune.Limits{} // the linear loop: at a limit the logged input shows it
 	y, u := make([]float64, len(c.t)), make([]float64, len(c.t))
-	return u, newRunner(p.law, &gains, []ident.Plant{p.best}).replay(c.atRest(c.before), 0, y, u)
+	return u, newRunner(p.law, &gains, []ident.Plant{p.best}).replay(c.atRest(c.before, c.u[0], c.phi[0]), 0, y, u)
 }
 
 // instrumental solves Zᵀ(y − X·beta) = 0 with rows whitened by

@@ -14,6 +14,10 @@ type signal struct {
 	// resumed: the segment starts where a hole in the log has put it; its way
 	// to the setpoint is nobody's move
 	resumed bool
+	// final is where the temperature comes to rest under a P controller with the
+	// setpoint r: settling and overshoot are told from there, as tune tells them;
+	// nil: at the setpoint
+	final func(r float64) float64
 }
 
 // A yardstick is how signals are measured.
@@ -42,6 +46,7 @@ type figures struct {
 	travel    float64 // Σ|Δu|
 	allowance float64 // widest noise allowance used, temperature units
 	moves     int     // setpoint moves judged
+	offset    float64 // largest distance from the setpoint at which P control comes to rest
 	small     int     // setpoint moves too small against the noise to judge
 	cut       int     // setpoint moves whose record ends before it shows whether they settle in time
 	unsettled int     // moves after which the temperature did not settle
@@ -81,6 +86,12 @@ func (f *figures) add(s signal, m yardstick) {
 // follow measures settling and overshoot of one setpoint move and returns the
 // first row that no longer belongs to it.
 func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
+	if s.final != nil {
+		end := s.final(mv.target)
+		f.offset = max(f.offset, math.Abs(end-mv.target))
+		mv.target = end
+		mv.size = mv.target - s.y[mv.from]
+	}
 	allowance := m.allowance(s.t[mv.to-1] - s.t[mv.from])
 	f.allowance = max(f.allowance, allowance)
 	if allowance >= 0.5*math.Abs(mv.size) {

@@ -26,46 +26,97 @@ func (p *plan) quietCourses(courses []*course, m yardstick) []*course {
 	return out
 }
 
-// quietCourse rests at the level the course starts from. An integrating
-// controller holds its setpoint; a P controller stands off it, so that its
-// level is the log's.
-func (p *plan) quietCourse(c *course) *course {
-	if p.gains.Ti == nil && c.stepped == 0 {
-		return c.atRest(startLevel(c.y))
-	}
-	return c.atRest(c.before)
-}
+// quietCourse rests at the setpoint, with the first input held.
+func (p *plan) quietCourse(c *course) *course { return c.atRest(c.before, c.u[0], c.phi[0]) }
 
-// atRest is the course of a heater that rests at the level with the first
-// input held, without noise and loads.
-func (c *course) atRest(level float64) *course {
+// atRest is the course of a heater that rests at the level with the input u,
+// phi(u) being given, without noise and loads.
+func (c *course) atRest(level, u, phi float64) *course {
 	q := *c
 	q.y, q.u, q.phi, q.log = make([]float64, len(c.y)), make([]float64, len(c.u)), make([]float64, len(c.phi)), make([]float64, len(c.log))
-	fill(q.u, c.u[0])
-	fill(q.phi, c.phi[0])
 	fill(q.y, level)
 	fill(q.log, level)
+	fill(q.u, u)
+	fill(q.phi, phi)
 	return &q
 }
 
 // on returns the quiet course for plant g. A run that starts away from its
 // setpoint, as when it heats up, is not at rest in its first row: what is left
-// then of its past depends on the plant, and is found from the whole log c.
+// then of its past depends on the plant, and is found from the whole log c. So
+// does where a P controller rests, which stands off its setpoint.
 func (p *plan) on(g ident.Plant, quiet, c *course) *course {
-	if c.rest == c.before || c.stepped != 0 {
+	away := c.rest != c.before && c.stepped == 0
+	if !away && p.gains.Ti != nil {
 		return quiet
 	}
-	q := *quiet
-	s := p.startOf(c, g)
-	q.y = s.at(c.t)
-	if len(c.log) > 0 {
-		steps := make([]float64, len(c.log))
-		for k := range steps {
-			steps[k] = c.t[0] + float64(k)*c.lattice.step
-		}
-		q.log = s.at(steps)
+	q, held := *quiet, startLevel(c.y) // temperature with the first input held
+	if c.stepped != 0 {
+		held = c.before
 	}
+	if away {
+		s := p.startOf(c, g)
+		held = s.level
+		q.y, q.log = s.at(c.t), s.at(c.steps())
+	}
+	if p.gains.Ti != nil {
+		return &q
+	}
+	rest := func(r float64) (y, u float64) { return p.restUnder(g, r, held, c.u[0]) }
+	if !away {
+		y, u := rest(c.before)
+		q = *q.atRest(y, u, p.law.Apply(u))
+	}
+	q.final = func(r float64) float64 { y, _ := rest(r); return y }
 	return &q
+}
+
+// restUnder is where plant g comes to rest under the P controller with the
+// setpoint r, given that it rests at held with the input u0.
+func (p *plan) restUnder(g ident.Plant, r, held, u0 float64) (y, u float64) {
+	k, limits := p.gains, p.gains.Limits
+	at := func(u float64) float64 { return held + g.Gain*(p.law.Apply(u)-p.law.Apply(u0)) }
+	more := func(u float64) bool { return k.Kc*(k.SetpointWeight*r-at(u))+k.Bias > u } // asks for more than u
+	low, high := math.Inf(-1), math.Inf(1)
+	if limits.Min != nil {
+		low = *limits.Min
+	}
+	if limits.Max != nil {
+		high = *limits.Max
+	}
+	size := max(1, math.Abs(u0), math.Abs(k.Bias))
+	from, to := max(low, u0-size), min(high, u0+size)
+	for range 60 {
+		if more(from) || from <= low {
+			break
+		}
+		size *= 2
+		from = max(low, u0-size)
+	}
+	for range 60 {
+		if !more(to) || to >= high {
+			break
+		}
+		size *= 2
+		to = min(high, u0+size)
+	}
+	for range 100 {
+		if u = (from + to) / 2; more(u) {
+			from = u
+		} else {
+			to = u
+		}
+	}
+	return at(u), u
+}
+
+// steps are the times of the lattice's steps.
+func (c *course) steps() []float64 {
+	out := make([]float64, len(c.log))
+	for k := range out {
+		out[k] = c.t[0] + float64(k)*c.lattice.step
+	}
+	return out
 }
 
 // A start is the temperature of a plant whose input is held from the first
@@ -79,6 +130,9 @@ type start struct {
 
 // at returns the temperature at ascending times.
 func (s start) at(times []float64) []float64 {
+	if len(times) == 0 {
+		return nil
+	}
 	out := s.columns(times)[2]
 	for i, t := range times {
 		out[i] = s.level + s.above*math.Exp(-(t-s.t0)/s.fade) + s.rise*out[i]
@@ -130,5 +184,5 @@ func (m yardstick) quiet() yardstick {
 func (f *figures) judgeQuiet(q figures) {
 	f.noisy.settling, f.noisy.overshoot = f.settling, f.overshoot
 	f.settling, f.overshoot = q.settling, q.overshoot
-	f.cut, f.unsettled = q.cut, q.unsettled
+	f.cut, f.unsettled, f.offset = q.cut, q.unsettled, q.offset
 }

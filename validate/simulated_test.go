@@ -16,6 +16,8 @@ import (
 func TestReplayAgreesWithTheStepOfTune(t *testing.T) {
 	pid := piGains(0.35, 11, 0.2)
 	pid.Controller, pid.Td, pid.Filter = "pid", ptr(1.2), 0.3
+	p := piGains(0.3, 0, 0.2)
+	p.Controller, p.Ti, p.Bias = "p", nil, 5
 	hot := piGains(0.9, 12, 0.2)
 	hot.Limits.Max = ptr(7.5)
 	for _, c := range []struct {
@@ -27,6 +29,7 @@ func TestReplayAgreesWithTheStepOfTune(t *testing.T) {
 		{"pi with overshoot", mustPlant(t, "chain2", 8, []float64{10, 3}, 1.5), piGains(0.45, 7, 0.2)},
 		{"pid", mustPlant(t, "equal3", 8, []float64{4}, 0.5), pid},
 		{"at a limit", mustPlant(t, "fopdt", 8, []float64{12}, 1), hot},
+		{"p", mustPlant(t, "chain2", 8, []float64{10, 3}, 1.5), p},
 	} {
 		const step = 10
 		want, err := tune.Evaluate(c.plant, c.gains, tune.Requirement{

@@ -23,6 +23,9 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 	} else if f.moves > 0 && f.allowance > 0 {
 		warn("settling and overshoot are judged on the setpoint moves alone; those with noise, and those logged, are measured past %s granted to noise and resolution, and so told rather too small", quantity(f.allowance, p.units.difference))
 	}
+	if f.offset > 0 {
+		warn("P control stands %s off the setpoint after a move: settling and overshoot are told from there", quantity(f.offset, p.units.difference))
+	}
 	if f.cut > 0 {
 		warn("the record of %s ends before it shows whether the temperature settles in the time asked: that is not judged", counted(f.cut, "setpoint move"))
 	}

@@ -68,8 +68,8 @@ func backTests(r *validate.Replay) []item {
 func replayTable(r *validate.Replay) *table {
 	unit := kelvin(r.Gains.Units.Temperature)
 	t := &table{
-		Caption: "Run by run: logged → proposed (median; below it the band over the plausible plants)",
-		Head:    []string{"Run", "Largest deviation", "IAE", "Peak temperature", "Peak input", "Holds on", "Meets"},
+		Caption: "Run by run: logged → proposed (median; below it the band over the plausible plants); proposed settling and overshoot without noise and loads",
+		Head:    []string{"Run", "Settling", "Overshoot", "Largest deviation", "IAE", "Peak temperature", "Peak input", "Holds on", "Meets"},
 	}
 	for i := range r.Runs {
 		if i == longestList {
@@ -82,6 +82,8 @@ func replayTable(r *validate.Replay) *table {
 			unit string
 			pick func(*validate.RunMetrics) *float64
 		}{
+			{"s", func(m *validate.RunMetrics) *float64 { return m.Settling }},
+			{"%", func(m *validate.RunMetrics) *float64 { return m.Overshoot }},
 			{unit, func(m *validate.RunMetrics) *float64 { return m.Deviation }},
 			{unit + "·s", func(m *validate.RunMetrics) *float64 { return m.IAE }},
 			{r.Gains.Units.Temperature, func(m *validate.RunMetrics) *float64 { return m.PeakTemp }},
