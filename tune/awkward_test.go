@@ -30,7 +30,7 @@ func TestSynthesisOfAwkwardPlants(t *testing.T) {
 		{"eight equal lags", "equal8", 1, []float64{4}, 1, 0},
 		{"slow scan", "chain2", 1, []float64{20, 5}, 2, 3},
 		{"scan slower than the plant", "fopdt", 1, []float64{5}, 1, 12},
-		{"very fast scan", "chain2", 1, []float64{20, 5}, 2, 1e-4},
+		{"fast scan", "chain2", 1, []float64{20, 5}, 2, 0.01},
 		{"integrator, scanned", "ipdt", 0.02, nil, 5, 2},
 		{"a lag of zero, scanned", "chain2", 1, []float64{20, 0}, 2, 0.7},
 		{"a lag of zero", "chain2", 1, []float64{20, 0}, 2, 0},

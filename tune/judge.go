@@ -139,7 +139,7 @@ func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine, d
 	if fine < searchStep {
 		plan.rest /= 20
 	}
-	sim, err := s.loop(plan.step)
+	sim, err := s.loop(c, plan.step)
 	if err != nil {
 		return stepFigures{}, err
 	}
@@ -151,7 +151,7 @@ func (t *task) load(s *scenario, c law, f quickFigures, fine float64) (stepFigur
 	l := newOpenLoop(s.p, c, s.scan)
 	plan := l.planAt(f.crossover, fine)
 	plan.rest = 1e-4
-	sim, err := s.loop(plan.step)
+	sim, err := s.loop(c, plan.step)
 	if err != nil {
 		return stepFigures{}, err
 	}

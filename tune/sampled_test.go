@@ -202,3 +202,30 @@ func TestFastScanIsContinuous(t *testing.T) {
 		near(t, "damping", got.Damping, want.Damping, 5e-3)
 	}
 }
+
+// Short scans run as a continuous controller give the figures of scans run one
+// by one.
+func TestShortScansInTime(t *testing.T) {
+	p := plant(t, "chain2", 3, []float64{20, 8}, 5)
+	for _, c := range []law{piLaw(0.5, 24), {kc: 0.7, ti: 24, td: 5, tf: 2, b: 1}} {
+		task := newTask(Requirement{Overshoot: ptr(10), Scan: 0.1, InputMax: ptr(1.5), InputRate: ptr(0.2)}, 0, 0)
+		s := newScenario(p, &task, 0)
+		l := newOpenLoop(p, c, task.scan)
+		quick, err := task.setpoint(s, c, &l, s.quick(c), reportStep, math.Inf(1))
+		if err != nil {
+			t.Fatal(err)
+		}
+		plan := l.planAt(s.quick(c).crossover, reportStep)
+		sim, err := newLoopSim(p, task.scan, task.scan)
+		if err != nil {
+			t.Fatal(err)
+		}
+		exact := setpointStep(sim.under(c, task.limits), p, c, task.step, task.band, plan)
+		if shortScan*task.scan >= plan.step {
+			t.Fatalf("a step of %g s is not long", plan.step)
+		}
+		near(t, "overshoot", quick.overshoot, exact.overshoot, 2e-3)
+		near(t, "settling", quick.settling, exact.settling, 5e-3*exact.settling)
+		near(t, "highest input", quick.inputHigh, exact.inputHigh, 1e-2*exact.inputHigh)
+	}
+}

@@ -267,17 +267,32 @@ func (s *scenario) peak(c law, i int, least float64) float64 {
 	return max(1, 1/math.Sqrt(least))
 }
 
-// loop returns a simulation of the plant with about the given step; steps are
-// powers of two, so that steppers can be kept.
-func (s *scenario) loop(step float64) (*loopSim, error) {
+// loop returns a simulation of the plant under c with about the given step;
+// steps are powers of two, so that simulations can be kept. Scans that are
+// much shorter than the step are not run one by one: a continuous controller
+// with half a scan of dead time more differs by (w·scan)²/24 at most, see
+// simulate.go, unless it is the scans that make the derivative's filter.
+func (s *scenario) loop(c law, step float64) (*loopSim, error) {
+	p, scan := s.p, s.scan
 	octave := int(math.Floor(math.Log2(step)))
-	if l := s.loops[octave]; l != nil {
+	key := octave
+	if shortScan*scan < step && (c.td == 0 || shortScan*scan < c.tf) {
+		p.DeadTime += scan / 2
+		scan = 0
+		key += continuous
+	}
+	if l := s.loops[key]; l != nil {
 		return l, nil
 	}
-	l, err := newLoopSim(s.p, s.scan, math.Ldexp(1, octave))
+	l, err := newLoopSim(p, scan, math.Ldexp(1, octave))
 	if err != nil {
 		return nil, err
 	}
-	s.loops[octave] = l
+	s.loops[key] = l
 	return l, nil
 }
+
+const (
+	shortScan  = 4       // scans in a step or in a filter's lag that need not be told apart
+	continuous = 1 << 20 // sets apart the keys of loops run without scans
+)
