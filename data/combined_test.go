@@ -99,12 +99,14 @@ var clockForms = map[string]clockForm{
 	"month's name": stampForm("02-Jan-06 15:04:05.000"),
 	"time of day":  stampForm("15:04:05.000"),
 	"half days":    stampForm("3:04:05.000 PM"),
-	"colon":        stampForm("2006-01-02 15:04:05:000"),
-	"zone's name":  stampForm("2006-01-02 15:04:05.000 CET"),
-	"offset":       stampForm("2006-01-02 15:04:05.000 -0700"),
-	"day's name":   stampForm("Mon 02 Jan 2006 15:04:05.000"),
-	"basic":        stampForm("20060102T150405.000"),
-	"comma":        stampForm("02.01.2006 15:04:05,000"),
+	"colon": {blank: true, cells: func(at time.Time, _ float64) []string {
+		return []string{strings.Replace(at.Format("2006-01-02 15:04:05.000"), ".", ":", 1)}
+	}},
+	"zone's name": stampForm("2006-01-02 15:04:05.000 CET"),
+	"offset":      stampForm("2006-01-02 15:04:05.000 -0700"),
+	"day's name":  stampForm("Mon 02 Jan 2006 15:04:05.000"),
+	"basic":       stampForm("20060102T150405.000"),
+	"comma":       stampForm("02.01.2006 15:04:05,000"),
 	"spelt": {blank: true, cells: func(at time.Time, _ float64) []string {
 		half := map[bool]string{true: " a. m.", false: " p.\u00a0m."}[at.Hour() < 12]
 		return []string{at.Format("02/01/06 03:04:05.000") + half}

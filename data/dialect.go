@@ -146,11 +146,12 @@ func findDelimiter(lines []line) (delim byte, fields int) {
 				byCount[len(cells)] = t
 			}
 			for _, c := range cells {
-				if k := looseClass(c); k == numbers || k == stamps {
+				k := looseClass(c)
+				if k == numbers || k == stamps {
 					t.good++
 					t.goodBytes += float64(len(c))
 				}
-				if len(c) > 0 {
+				if len(c) > 0 && !(k == texts && isTerm(c)) {
 					t.all++
 				}
 			}
@@ -170,6 +171,14 @@ func findDelimiter(lines []line) (delim byte, fields int) {
 		}
 	}
 	return delim, fields
+}
+
+// isTerm tells text that logs hold beside numbers: a word for a value or for no
+// value, a status, a unit.
+func isTerm(cell []byte) bool {
+	_, missing := missingKind(cell)
+	_, unit := canonicalUnit(decodeName(cell))
+	return missing || unit || isWord(cell) || isBadStatus(cell) || isGoodStatus(cell)
 }
 
 // plausibleDelimiters are those of tab, semicolon and bar that stand twice or

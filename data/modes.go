@@ -34,6 +34,13 @@ var badStatus = []string{
 	"SENSOR FAULT", "NO DATA", "SUSPECT", "FEHLER", "UNGÜLTIG", "SCHLECHT", "MAUVAIS", "MALO", "FALSE",
 }
 
+// goodStatus are the words of a status column that say nothing.
+var goodStatus = []string{"GOOD", "OK", "VALID", "NORMAL", "GUT", "BON", "BUENO", "BUONO", "GOED", "BOM", "DOBRY", "BRA"}
+
+func isGoodStatus(cell []byte) bool {
+	return slices.Contains(goodStatus, strings.ToUpper(decodeName(trimBlanks(cell))))
+}
+
 // goodQuality is the quality of a good value in open process control data
 // (OPC data access: 192 to 255 good, 64 to 127 uncertain, below bad; from
 // memory).
