@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"slices"
 	"sort"
 	"strings"
 
@@ -65,12 +66,42 @@ func backTests(r *validate.Replay) []item {
 	return out
 }
 
-func replayTable(r *validate.Replay) *table {
+// A replayColumn is a figure of the table of runs.
+type replayColumn struct {
+	name, unit string
+	pick       func(*validate.RunMetrics) *float64
+}
+
+// replayColumns are the first four that some run has, as many as paper is wide:
+// settling and overshoot need a setpoint move.
+func replayColumns(r *validate.Replay) []replayColumn {
 	unit := kelvin(r.Gains.Units.Temperature)
-	t := &table{
-		Caption: "Run by run: logged → proposed (median; below it the band over the plausible plants); proposed settling and overshoot without noise and loads",
-		Head:    []string{"Run", "Settling", "Overshoot", "Largest deviation", "IAE", "Peak temperature", "Peak input", "Holds on", "Meets"},
+	all := []replayColumn{
+		{"Settling", "s", func(m *validate.RunMetrics) *float64 { return m.Settling }},
+		{"Overshoot", "%", func(m *validate.RunMetrics) *float64 { return m.Overshoot }},
+		{"Largest deviation", unit, func(m *validate.RunMetrics) *float64 { return m.Deviation }},
+		{"Peak temperature", r.Gains.Units.Temperature, func(m *validate.RunMetrics) *float64 { return m.PeakTemp }},
+		{"IAE", unit + "·s", func(m *validate.RunMetrics) *float64 { return m.IAE }},
+		{"Peak input", r.Gains.Units.Input, func(m *validate.RunMetrics) *float64 { return m.PeakInput }},
 	}
+	all = slices.DeleteFunc(all, func(c replayColumn) bool {
+		return !slices.ContainsFunc(r.Runs, func(run validate.RunReplay) bool {
+			return c.pick(&run.Proposed.Median) != nil || c.pick(&run.Logged) != nil
+		})
+	})
+	return all[:min(4, len(all))]
+}
+
+func replayTable(r *validate.Replay) *table {
+	columns := replayColumns(r)
+	t := &table{Caption: "Run by run: logged → proposed (median; below it the band over the plausible plants)", Head: []string{"Run"}}
+	for _, c := range columns {
+		t.Head = append(t.Head, c.name)
+	}
+	if len(columns) > 0 && columns[0].name == "Settling" {
+		t.Caption += "; settling and overshoot as proposed are those of the setpoint moves, without noise and loads"
+	}
+	t.Head = append(t.Head, "Holds on", "Meets")
 	for i := range r.Runs {
 		if i == longestList {
 			t.More = len(r.Runs) - longestList
@@ -78,18 +109,8 @@ func replayTable(r *validate.Replay) *table {
 		}
 		run := &r.Runs[i]
 		row := []cell{head(runName(run))}
-		for _, f := range []struct {
-			unit string
-			pick func(*validate.RunMetrics) *float64
-		}{
-			{"s", func(m *validate.RunMetrics) *float64 { return m.Settling }},
-			{"%", func(m *validate.RunMetrics) *float64 { return m.Overshoot }},
-			{unit, func(m *validate.RunMetrics) *float64 { return m.Deviation }},
-			{unit + "·s", func(m *validate.RunMetrics) *float64 { return m.IAE }},
-			{r.Gains.Units.Temperature, func(m *validate.RunMetrics) *float64 { return m.PeakTemp }},
-			{r.Gains.Units.Input, func(m *validate.RunMetrics) *float64 { return m.PeakInput }},
-		} {
-			row = append(row, beforeAfter(run, f.pick, f.unit))
+		for _, c := range columns {
+			row = append(row, beforeAfter(run, c.pick, c.unit))
 		}
 		share := "-"
 		if run.Judged {
