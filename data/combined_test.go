@@ -300,6 +300,8 @@ func (m *mess) write(start time.Time) {
 	})()
 	cols := []col{drive, outlet,
 		one(lang.names[3], "°C", func(i int) string { return short(m.sp[i]) })}
+	at := m.rng.IntN(2) // the clock stands first or last
+	var before []col
 	extras := map[string]func(){
 		"none":   func() {},
 		"room":   func() { cols = append(cols, one(lang.names[4], "°C", func(int) string { return short(21.5) })) },
@@ -307,6 +309,11 @@ func (m *mess) write(start time.Time) {
 		"blank": func() {
 			if delim != ' ' {
 				cols = append(cols, one("", "", func(int) string { return "" }))
+			}
+		},
+		"index": func() {
+			if delim != ' ' && at == 0 {
+				before = append(before, one("", "", func(i int) string { return strconv.Itoa(i) }))
 			}
 		},
 		"mode": func() { cols = append(cols, one("Mode", "", func(int) string { return "MAN" })) },
@@ -321,8 +328,7 @@ func (m *mess) write(start time.Time) {
 		pick(m, "extra", extras)()
 	}
 	m.rng.Shuffle(len(cols), func(i, j int) { cols[i], cols[j] = cols[j], cols[i] })
-	at := m.rng.IntN(2) * len(cols) // the clock stands first or last
-	cols = slices.Insert(cols, at, clock)
+	cols = append(before[:min(1, len(before))], slices.Insert(cols, at*len(cols), clock)...)
 
 	trailing := delim != ' ' && m.rng.IntN(5) == 0
 	line := func(cells []string) string {
@@ -371,19 +377,28 @@ func (m *mess) write(start time.Time) {
 		gap = len(m.t) / 3
 		m.how = append(m.how, "blank line")
 	}
+	var rows []string
 	for i := range m.t {
 		if i == restart {
-			lines = append(lines, header...)
+			rows = append(rows, header...)
 		}
 		if i == gap {
-			lines = append(lines, "")
+			rows = append(rows, "")
 		}
 		var cells []string
 		for _, c := range cols {
 			cells = append(cells, c.cells(i)...)
 		}
-		lines = append(lines, line(cells))
+		rows = append(rows, line(cells))
 	}
+	switch order := pick(m, "order", map[string]int{"plain": 0, "as it was": 0, "newest first": 1, "five sent again": 2}); {
+	case order == 1 && restart < 0:
+		slices.Reverse(rows)
+	case order == 2 && restart < 0 && gap < 0:
+		k := 6 + m.rng.IntN(len(rows)-6)
+		rows = slices.Insert(rows, k, slices.Clone(rows[k-5:k])...)
+	}
+	lines = append(lines, rows...)
 	lines = append(lines, pick(m, "end", map[string][]string{"none": nil, "blank": {"", ""}, "words": {"", "End of log"}, "NUL": {strings.Repeat("\x00", 40)}})...)
 	for i := range missing {
 		m.y[i] = nan

@@ -68,11 +68,16 @@ func strictlyAscending(t []int64) bool {
 // turnRound reverses rows that stand newest first.
 func (s *stampSeries) turnRound() {
 	rising, falling := 0, 0
+	half := int64(12 * time.Hour)
 	for i := 1; i < len(s.t); i++ {
+		d := s.t[i] - s.t[i-1]
+		if s.tod && (d > half || d < -half) { // past midnight, one way or the other
+			d = -d
+		}
 		switch {
-		case s.t[i] > s.t[i-1]:
+		case d > 0:
 			rising++
-		case s.t[i] < s.t[i-1]:
+		case d < 0:
 			falling++
 		}
 	}
@@ -132,14 +137,19 @@ func (s *stampSeries) runOn() error {
 	step := s.typicalStep()
 	var offset, last int64 // last: the latest stamp kept
 	hourly := func(back int64) bool {
-		return s.wall && back <= hour && hour-back <= max(4*step, int64(2*time.Second))
+		return s.wall && back <= hour && hour-back <= min(max(4*step, int64(2*time.Second)), int64(10*time.Minute))
 	}
 	midnights, first := 0, 0
 	for i, t := range s.t {
 		t += offset
 		back := last - t
 		switch {
-		case i == 0 || back <= 0:
+		case i == 0:
+		case midnights > 0 && -back > day/2 && s.resent(i, t-day, offset-day, false): // from before midnight
+			s.dropRow(i, "repeated row")
+			s.t[i] = last
+			continue
+		case back <= 0:
 		case s.tod && day-back >= 0 && day-back < day/2:
 			offset += day
 			t += day

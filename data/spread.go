@@ -31,7 +31,10 @@ func (s *stampSeries) spreadOrDrop() {
 	if equal == 0 {
 		return
 	}
-	rule := 3*equal > len(rows) || equal >= 3 && float64(equal) > evenShare*float64(len(rows)) && 2*alike <= equal
+	rule := 3*equal > len(rows)
+	if !rule && equal >= 3 && 2*alike <= equal {
+		rule = float64(equal) > evenShare*float64(len(rows)) || s.isEven(rows)
+	}
 	if rule && !s.copied() {
 		s.spread(rows)
 		if strictlyAscending(s.t) {
@@ -170,14 +173,39 @@ func (s *stampSeries) divide(rows []int, groups []group, whole, width int64) {
 // evenRows is how many rows it takes to tell an even sampling.
 const evenRows = 20
 
-// even gives the rows the times of an even sampling, if there is one that
-// falls into every stamp, which then means width from its time on. A tenth of
-// a width is allowed for jitter. Of the intervals that fit without jitter the
-// one of fewest digits is taken, as a logger is set to one.
+// isEven tells that an even sampling fits all stamps.
+func (s *stampSeries) isEven(rows []int) bool {
+	width := int64(math.MaxInt64)
+	for k := 1; k < len(rows); k++ {
+		if d := s.t[rows[k]] - s.t[rows[k-1]]; d > 0 {
+			width = min(width, d)
+		}
+	}
+	_, _, ok := s.evenFit(rows, width)
+	return ok
+}
+
+// even gives the rows the times of an even sampling, if there is one.
 func (s *stampSeries) even(rows []int, width int64) (period time.Duration, ok bool) {
+	start, step, ok := s.evenFit(rows, width)
+	if !ok {
+		return 0, false
+	}
+	first := s.t[rows[0]]
+	for k, i := range rows {
+		s.t[i] = first + int64(math.Round(start+step*float64(k)))
+	}
+	return time.Duration(math.Round(step)), true
+}
+
+// evenFit looks for an even sampling that falls into every stamp, which then
+// means width from its time on: start from the first stamp, and step, ns. A
+// tenth of a width is allowed for jitter. Of the steps that fit without jitter
+// the one of fewest digits is taken, as a logger is set to one.
+func (s *stampSeries) evenFit(rows []int, width int64) (start, step float64, ok bool) {
 	n := len(rows)
 	if n < evenRows {
-		return 0, false
+		return 0, 0, false
 	}
 	first := s.t[rows[0]]
 	slope := slopeOf(n, func(k int) float64 { return float64(s.t[rows[k]] - first) })
@@ -190,20 +218,16 @@ func (s *stampSeries) even(rows []int, width int64) (period time.Duration, ok bo
 	}
 	lo, hi := reach(slope)
 	if slope < 1 || hi-lo > 1.1*float64(width) {
-		return 0, false
+		return 0, 0, false
 	}
-	step := slope
+	step = slope
 	for digits := 1; digits < 9; digits++ {
 		if a, b := reach(rounded(slope, digits)); b-a < float64(width) {
 			step, lo, hi = rounded(slope, digits), a, b
 			break
 		}
 	}
-	start := (lo + hi + float64(width)) / 2 // the stamps allow hi to lo+width
-	for k, i := range rows {
-		s.t[i] = first + int64(math.Round(start+step*float64(k)))
-	}
-	return time.Duration(math.Round(step)), true
+	return (lo + hi + float64(width)) / 2, step, true // the stamps allow hi to lo+width
 }
 
 // rounded gives v > 0 to so many significant digits.
@@ -252,9 +276,9 @@ func (s *stampSeries) noteRounded() {
 	if 20*two < n {
 		return
 	}
-	probe := stampSeries{t: slices.Clone(s.t[:n])}
-	if period, ok := probe.even(probe.kept(), unit); ok {
+	probe := stampSeries{t: s.t[:n]}
+	if _, step, ok := probe.evenFit(probe.kept(), unit); ok {
 		s.note("clock-coarse", -1, "rows come every %v but are stamped to %v: each time can be wrong by up to %v, and the dead time with it; log a finer time",
-			period, time.Duration(unit), time.Duration(unit))
+			time.Duration(math.Round(step)), time.Duration(unit), time.Duration(unit))
 	}
 }
