@@ -3,6 +3,9 @@ package validate
 import (
 	"math"
 
+	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/stat/distuv"
+
 	"lagwright/ident"
 )
 
@@ -153,8 +156,9 @@ func (s start) columns(times []float64) [][]float64 {
 
 // startOf finds how the log starts, seen from plant g: least squares on what
 // the response to the logged input leaves, whitened by the card's correlation.
-// The level is set by the median in the end, so that a load in a part of the
-// run does not shift the rest.
+// What noise explains in 99% of logs counts as a start at rest. The level is
+// set by the median in the end, so that a load in a part of the run does not
+// shift the rest.
 func (p *plan) startOf(c *course, g ident.Plant) start {
 	s := start{plant: g, t0: c.t[0], fade: p.longest()}
 	left := ident.NewSimulator(c.t, ident.HeldInput(c.t, c.u, p.law)).Response(nil, g.Structure, g.Lags, g.DeadTime)
@@ -163,7 +167,7 @@ func (p *plan) startOf(c *course, g ident.Plant) start {
 	}
 	step := medianInterval(c.t)
 	columns := s.columns(c.t)
-	if beta, _, ok := instrumental(c.t, step, p.cardCorrelation(step), left, columns, columns); ok {
+	if beta, cov, ok := instrumental(c.t, step, p.cardCorrelation(step), left, columns, columns); ok && stands(beta[1:], cov.Slice(1, 3, 1, 3)) {
 		s.level, s.above, s.rise = beta[0], beta[1], beta[2]
 	}
 	for i, v := range s.at(c.t) {
@@ -171,6 +175,17 @@ func (p *plan) startOf(c *course, g ident.Plant) start {
 	}
 	s.level += median(left)
 	return s
+}
+
+// stands tells whether estimates of that covariance differ from zero by more
+// than chance explains in 99%.
+func stands(beta []float64, cov mat.Matrix) bool {
+	v := mat.NewVecDense(len(beta), beta)
+	var solved mat.VecDense
+	if solved.SolveVec(cov, v) != nil {
+		return false
+	}
+	return mat.Dot(v, &solved) > distuv.ChiSquared{K: float64(len(beta))}.Quantile(0.99)
 }
 
 // quiet measures as m does, but grants nothing to noise: there is none.
