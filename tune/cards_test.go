@@ -138,3 +138,26 @@ func TestUnlimitedInputIsSaid(t *testing.T) {
 		}
 	}
 }
+
+// A P controller's gains for two cards are those that do on both.
+func TestPoleRegionOfSeveralCards(t *testing.T) {
+	q := Requirement{Settling: ptr(170), Damping: ptr(0.4)}
+	region := func(cards ...*fit.Card) *RegionDesign {
+		tu, err := newTuning(cards, q, Options{Controller: "p"})
+		if err != nil {
+			t.Fatal(err)
+		}
+		g := &Gains{}
+		tu.poleRegion(g)
+		return g.PoleRegion
+	}
+	low, high := scaledCard(t, 3, 1, "low.csv"), scaledCard(t, 3, 1.3, "high.csv")
+	a, b, both := region(low), region(high), region(low, high)
+	if len(a.Plausible) != 1 || len(b.Plausible) != 1 || len(both.Plausible) != 1 {
+		t.Fatalf("gains %v, %v, together %v", a.Plausible, b.Plausible, both.Plausible)
+	}
+	want := GainInterval{max(a.Plausible[0].Low, b.Plausible[0].Low), min(a.Plausible[0].High, b.Plausible[0].High)}
+	if both.Plausible[0] != want {
+		t.Errorf("gains %v, want %v", both.Plausible[0], want)
+	}
+}

@@ -47,7 +47,7 @@ type GainInterval struct {
 type RegionDesign struct {
 	Region    PoleRegion     `json:"region"`
 	Nominal   []GainInterval `json:"nominal"`   // on the best fit; none, one or several
-	Plausible []GainInterval `json:"plausible"` // on the assurance share of the plausible plants
+	Plausible []GainInterval `json:"plausible"` // on the assurance share of the plausible plants, of every card
 	Assurance float64        `json:"assurance"`
 
 	// The gain that misses least on the best fit where Nominal is empty, else
@@ -245,6 +245,21 @@ func sharedGains(sets [][]GainInterval, share float64) ([]GainInterval, float64)
 		return out, 0
 	}
 	return out, float64(most) / float64(len(sets))
+}
+
+// inBoth returns the gains that lie in both of two sets.
+func inBoth(a, b []GainInterval) []GainInterval {
+	var out []GainInterval
+	for _, x := range a {
+		for _, y := range b {
+			lo := max(min(x.Low, x.High), min(y.Low, y.High))
+			hi := min(max(x.Low, x.High), max(y.Low, y.High))
+			if lo < hi {
+				out = append(out, GainInterval{lo, hi})
+			}
+		}
+	}
+	return out
 }
 
 // nearest sets the gain that misses the region least on the nominal plant and

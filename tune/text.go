@@ -226,7 +226,7 @@ func (d *RegionDesign) writeText(b *bufio.Writer, unit string) {
 		fmt.Fprintf(b, "  %s: %s\n", where, strings.Join(parts, ", "))
 	}
 	list("on the best fit", d.Nominal)
-	list(fmt.Sprintf("on %.4g %% of the plausible plants", 100*d.Assurance), d.Plausible)
+	list("on "+percent(d.Assurance)+" of the plausible plants", d.Plausible)
 	if len(d.Nominal) == 0 {
 		fmt.Fprintf(b, "  nearest: gain %s, which settles in about %s with a damping ratio of %.2g\n", quantity(d.Best, unit, 3), quantity(d.BestSettling, "s", 3), d.BestDamping)
 	}
@@ -236,12 +236,12 @@ func (d *RegionDesign) writeText(b *bufio.Writer, unit string) {
 func (r PoleRegion) String() string {
 	var parts []string
 	if sigma := r.sigma(); sigma > 0 {
-		parts = append(parts, fmt.Sprintf("poles left of %.3g 1/s", -sigma))
+		parts = append(parts, fmt.Sprintf("poles left of %.3g 1/s, for settling within %s", -sigma, quantity(r.Settling, "s", 3)))
 	}
 	if r.Damping > 0 {
 		parts = append(parts, fmt.Sprintf("damping ratio of %.3g or more", r.Damping))
 	}
-	return strings.Join(parts, " and ")
+	return strings.Join(parts, ", and ")
 }
 
 // Words says the requirement in a few words.

@@ -445,9 +445,24 @@ func (t *tuning) poleRegion(g *Gains) {
 	if q.Damping != nil {
 		r.Damping = *q.Damping
 	}
-	var plants []ident.Plant
-	for _, s := range t.plausible.scenarios {
-		plants = append(plants, s.p)
+	of := func(o operation) *RegionDesign {
+		plants := make([]ident.Plant, len(o.plants))
+		for i, p := range o.plants {
+			plants[i] = held(p, q.Scan)
+		}
+		return DesignPoleRegion(held(o.nominal, q.Scan), plants, r, t.options.Assurance)
 	}
-	g.PoleRegion = DesignPoleRegion(t.ops[0].nominal, plants, r, t.options.Assurance)
+	d := of(t.ops[0])
+	for _, o := range t.ops[1:] {
+		other := of(o)
+		d.Plausible = inBoth(d.Plausible, other.Plausible)
+		d.BestShare = min(d.BestShare, other.BestShare)
+	}
+	g.PoleRegion = d
+}
+
+// held is a plant with half a scan of dead time more, see newOpenLoop.
+func held(p ident.Plant, scan float64) ident.Plant {
+	p.DeadTime += scan / 2
+	return p
 }
