@@ -1,0 +1,127 @@
+package data
+
+import "bytes"
+
+// delimiters in the order in which they are preferred when two fit equally.
+var delimiters = []byte{'\t', ';', '|', ',', ' '}
+
+// findDelimiter takes the delimiter that makes most of the text numbers and
+// times: the bytes in such cells, times the squared share of such cells.
+func findDelimiter(lines []line) (delim byte, fields int) {
+	best := 0.0
+	lines = lines[max(len(lines)/2, len(lines)-400):] // the header is no measure
+	for _, d := range plausibleDelimiters(lines) {
+		type tally struct{ goodBytes, good, all float64 }
+		byCount := map[int]*tally{}
+		for _, l := range lines {
+			if isComment(l.text, d) {
+				continue
+			}
+			cells := splitCells(nil, l.text, d)
+			t := byCount[len(cells)]
+			if t == nil {
+				t = &tally{}
+				byCount[len(cells)] = t
+			}
+			for _, c := range cells {
+				k := looseClass(c)
+				if k == numbers || k == stamps {
+					t.good++
+					t.goodBytes += float64(len(c))
+				}
+				if len(c) > 0 && !(k == texts && isTerm(c)) {
+					t.all++
+				}
+			}
+		}
+		for n, t := range byCount {
+			if n < 2 || t.good == 0 {
+				continue
+			}
+			share := t.good / t.all
+			score := t.goodBytes * share * share
+			if d == ' ' { // blanks stand in stamps and words too
+				score /= 2
+			}
+			if score > best || score == best && d == delim && n > fields {
+				best, delim, fields = score, d, n
+			}
+		}
+	}
+	return delim, fields
+}
+
+// isTerm tells text that logs hold beside numbers: a word for a value or for no
+// value, a status, a unit.
+func isTerm(cell []byte) bool {
+	_, missing := missingKind(cell)
+	_, unit := canonicalUnit(decodeName(cell))
+	return missing || unit || isWord(cell) || isBadStatus(cell) || isGoodStatus(cell)
+}
+
+// plausibleDelimiters are those of tab, semicolon and bar that stand twice or
+// more, and equally often, in nine lines of ten: no text does that by chance.
+// Where there is none, all are.
+func plausibleDelimiters(lines []line) []byte {
+	var found []byte
+	for _, d := range []byte{'\t', ';', '|'} {
+		times := map[int]int{}
+		for _, l := range lines {
+			times[bytes.Count(l.text, []byte{d})]++
+		}
+		for n, k := range times {
+			if n >= 2 && 10*k >= 9*len(lines) {
+				found = append(found, d)
+			}
+		}
+	}
+	if len(found) == 0 {
+		return delimiters
+	}
+	return found
+}
+
+// looseClass classes a cell before the decimal mark is known.
+func looseClass(cell []byte) class {
+	cell = trimBlanks(cell)
+	if len(cell) == 0 {
+		return blankCells
+	}
+	for _, point := range []byte{'.', ','} {
+		if _, n, ok := scanDecimal(cell, point); ok && (n == len(cell) || isUnitSuffix(cell[n:])) {
+			return numbers
+		}
+	}
+	if _, ok := (numberFormat{'.'}).parse(cell); ok && bytes.IndexByte(cell, ' ') < 0 {
+		return numbers
+	}
+	if _, ok := (numberFormat{','}).parse(cell); ok && bytes.IndexByte(cell, ' ') < 0 {
+		return numbers
+	}
+	if isStamp(cell) {
+		return stamps
+	}
+	return texts
+}
+
+// isStamp tells that a cell is a date, a time of day, or both.
+func isStamp(cell []byte) bool {
+	var c clock
+	if _, _, ok := c.parseCalendar(cell); ok && bytes.ContainsAny(cell, "/.-: T") {
+		return true
+	}
+	_, ok := parseTimeOfDay(cell, false)
+	return ok
+}
+
+func isUnitSuffix(rest []byte) bool {
+	if len(rest) > 12 {
+		return false
+	}
+	rest = trimBlanks(rest)
+	if len(rest) == 0 {
+		return false
+	}
+	_, known := canonicalUnit(decodeName(rest))
+	return known
+}
