@@ -96,7 +96,8 @@ func (r rowMoments) doubled(phi, one float64) rowMoments {
 // kalman walks over the rows of a record and gives the filter's coefficients
 // row by row.
 type kalman struct {
-	s shape
+	s     shape
+	usual float64 // s, what intervals close to it count as; 0: each counts as it is
 
 	p                float64 // variance of the correlated part at the last sample, given the past
 	lastGap, lastPhi float64
@@ -114,12 +115,22 @@ func newKalman(s shape) *kalman {
 	return k
 }
 
+// interval is what an interval counts as: jitter that scatters about the usual
+// one changes the correlation by (jitter/tc)²/2, and spares a log with ten
+// thousands of rows as many exponentials.
+func (k *kalman) interval(gap float64) float64 {
+	if math.Abs(gap-k.usual) <= jitterShare*k.usual {
+		return k.usual
+	}
+	return gap
+}
+
 // next passes the row r.
 func (k *kalman) next(r ident.Row) {
 	m := max(r.M, 1)
 	phi0 := 0.0
 	if k.started {
-		gap := r.T - k.prevEnd
+		gap := k.interval(r.T - k.prevEnd)
 		// Equally spaced stamps differ by their rounding.
 		if math.Abs(gap-k.lastGap) > 1e-7*k.lastGap || k.lastGap < 0 {
 			k.lastGap, k.lastPhi, k.steady = gap, math.Exp(-gap/k.s.tc), false
@@ -185,14 +196,16 @@ func (f *filter) set(rows []ident.Row, s shape) {
 // keeping coefficients: the rows come in pieces, one after the other.
 type whitener struct {
 	k    *kalman
-	even bool // the whole log is evenly sampled
+	even bool // the log is evenly sampled, without gaps
 
 	a           float64 // predicted correlated part at the last sample
 	sum, logdet float64 // of squares; of the correlation matrix
 }
 
-func newWhitener(s shape, even bool) *whitener {
-	return &whitener{k: newKalman(s), even: even}
+func (r *record) whitener(s shape) *whitener {
+	w := &whitener{k: newKalman(s), even: r.even}
+	w.k.usual = r.usual
+	return w
 }
 
 // pass filters the next rows x at the times t.
@@ -248,35 +261,10 @@ func (w *whitener) steadily(x []float64) {
 	w.sum += sum
 }
 
-// newWhitenAll returns one whitener for each of n columns of the same rows.
-func newWhitenAll(s shape, even bool, n int) whitenAll {
-	w := make(whitenAll, n)
-	for j := range w {
-		w[j] = newWhitener(s, even)
-	}
-	return w
-}
-
-type whitenAll []*whitener
-
-func (w whitenAll) pass(cols [][]float64, t []float64) {
-	for j, c := range cols {
-		w[j].pass(c, t)
-	}
-}
-
-// whitenTimes filters x, one sample a row at the times t, in place; it returns
-// the sum of squares and the log determinant.
-func whitenTimes(x, t []float64, s shape) (sum, logdet float64) {
-	w := newWhitener(s, false)
-	w.pass(x, t)
-	return w.sum, w.logdet
-}
-
 // evenUntil passes the rows after row i that keep its distance, and returns
 // the first that does not.
 func (k *kalman) evenUntil(t []float64, i int) int {
-	for i++; i < len(t) && math.Abs(t[i]-k.prevEnd-k.lastGap) <= 1e-7*k.lastGap; i++ {
+	for i++; i < len(t) && math.Abs(k.interval(t[i]-k.prevEnd)-k.lastGap) <= 1e-7*k.lastGap; i++ {
 		k.prevEnd = t[i]
 	}
 	return i

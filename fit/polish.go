@@ -163,7 +163,10 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 	if r.rest == earlier {
 		started = root.sim.WithInput(r.fromFirstRow()).Pieces(e.st, lags, dead, true)
 	}
-	w := newWhitenAll(r.shape, r.even, m)
+	white := make([]*whitener, m)
+	for j := range white {
+		white[j] = r.whitener(r.shape)
+	}
 	size := min(pieceRows, len(root.t))
 	raw, start, cols := columns(nl+2, size), columns(nl+2, size), columns(m, size)
 	upper := columns(m, m)
@@ -173,7 +176,9 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 			started(start)
 		}
 		b.directions(cut(cols, n), cut(raw, n), cut(start, n), at.gain, beta, r, lo)
-		w.pass(cut(cols, n), root.t[lo:lo+n])
+		for j, c := range cols {
+			white[j].pass(c[:n], root.t[lo:lo+n])
+		}
 		addProducts(upper, cut(cols, n))
 		lo += n
 	}

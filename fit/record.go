@@ -25,6 +25,7 @@ type record struct {
 
 	root  *record // the record at full resolution; itself when nothing is averaged
 	even  bool    // the full log is evenly sampled
+	usual float64 // s, interval of a log that is so but for jitter, else 0
 	parts []part  // of the full log, on which its noise is judged
 
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
@@ -80,6 +81,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
 	r.even = isEven(r.t, r.step)
+	r.usual = usualStep(r.t, r.step)
 	r.sim = ident.NewSimulator(r.t, r.input)
 	r.parts = r.noiseParts()
 	return r, nil
@@ -237,13 +239,34 @@ func medianInterval(t []float64) float64 {
 
 // evenStep is the median interval freed of the rounding of two stamps: where all
 // rows lie on one even series, rows missing or not, it is the span over the number of
-// steps.
+// steps; elsewhere the mean of the intervals near the median.
 func evenStep(t []float64, median float64) float64 {
 	span := t[len(t)-1] - t[0]
 	last := math.Max(math.Abs(t[0]), math.Abs(t[len(t)-1]))
 	step := span / math.Round(span/median)
-	if math.Abs(step-median) > 4*(math.Nextafter(last, math.Inf(1))-last) {
-		return median
+	if math.Abs(step-median) <= 4*(math.Nextafter(last, math.Inf(1))-last) {
+		return step
+	}
+	sum, n := 0.0, 0
+	for k := 1; k < len(t); k++ {
+		if d := t[k] - t[k-1]; math.Abs(d-median) <= jitterShare*median {
+			sum += d
+			n++
+		}
+	}
+	return sum / float64(n)
+}
+
+// usualStep is the step when nine in ten intervals are near it, else 0.
+func usualStep(t []float64, step float64) float64 {
+	near := 0
+	for k := 1; k < len(t); k++ {
+		if math.Abs(t[k]-t[k-1]-step) <= jitterShare*step {
+			near++
+		}
+	}
+	if float64(near) < 0.9*float64(len(t)-1) {
+		return 0
 	}
 	return step
 }

@@ -212,7 +212,7 @@ func (t *tangent) evaluate(s shape) node {
 func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
 	t.buf = resize(t.buf, len(t.rest))
 	copy(t.buf, t.rest)
-	w := newWhitener(s, t.rec.even)
+	w := t.rec.whitener(s)
 	for lo := 0; lo < len(t.rest); {
 		hi := lo + t.piece
 		w.pass(t.buf[lo:hi], t.noise[lo:hi])

@@ -55,7 +55,7 @@ func (b *bounded) residualFigures() []*residualFigures {
 // walkResiduals passes the residuals of x on every row of the full log, and
 // returns their whitener too.
 func (r *record) walkResiduals(x explained) (*residualFigures, *whitener) {
-	f, w := r.newResidualFigures(), newWhitener(r.shape, r.even)
+	f, w := r.newResidualFigures(), r.whitener(r.shape)
 	r.everyRow(x, func(lo int, left []float64) {
 		f.add(left)
 		w.pass(left, r.root.t[lo:lo+len(left)])
