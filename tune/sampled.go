@@ -177,10 +177,10 @@ func (g *sampledGrid) between(f *LoopFigures, l *sampledLoop, i int, a, b comple
 	}
 }
 
-// bisectSome is bisect to about 1e-6 of the bracket.
+// bisectSome is bisect to less than 1e-4 of the bracket.
 func bisectSome(f func(float64) float64, lo, hi float64) float64 {
 	positive := f(lo) > 0
-	for range 20 {
+	for range 14 {
 		if mid := (lo + hi) / 2; (f(mid) > 0) == positive {
 			lo = mid
 		} else {
