@@ -232,6 +232,7 @@ var quirks = []quirk{
 	{file: "clock-digits.csv", o: Options{TimeFormat: "HHmmss"}, t: ramp(8, func(i int) float64 { return float64(i) })},
 	{file: "two-clocks.csv", wrong: `columns "time (ms)" and "timestamp" are both clocks, but over the first 8 rows one goes on by 583.333µs and the other by 35s: say which to use with --time-col`},
 	{file: "two-clocks.csv", o: Options{TimeCol: "timestamp"}, t: ramp(8, func(i int) float64 { return 5 * float64(i) }), start: "2026-01-25T10:00:00Z", notes: []string{local}},
+	{file: "two-clocks-minutes.csv", t: ramp(8, func(i int) float64 { return 5 * float64(i) })},
 	{file: "compact-stamp.csv", start: "2026-01-25T10:00:58Z", notes: []string{local}},
 	{file: "zone-name.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "am-pm-spanish.csv", start: "2026-01-25T11:59:58Z", notes: []string{local}},

@@ -7,8 +7,9 @@ import (
 	"time"
 )
 
-// Two clocks in a log may differ by a hundredth of what they advance, and by
-// two seconds, as one of whole seconds does from a finer one.
+// Two clocks in a log may differ by a hundredth of what they advance, by two
+// seconds, as one of whole seconds does from a finer one, and by a step of the
+// coarser.
 const (
 	clocksApart  = 0.01
 	clocksCoarse = 2 * float64(time.Second)
@@ -36,9 +37,10 @@ func (c *csvReader) compareClocks() error {
 		if err != nil {
 			continue
 		}
-		mine, theirs := c.advance(at, c.clock), c.advance(i, other)
+		mine, _ := c.advance(at, c.clock)
+		theirs, step := c.advance(i, other)
 		// a stamp that stands still says when the test began
-		if theirs != 0 && math.Abs(mine-theirs) > max(clocksCoarse, clocksApart*theirs) {
+		if theirs != 0 && math.Abs(mine-theirs) > max(clocksCoarse, clocksApart*theirs, step) {
 			return fmt.Errorf("columns %q and %q are both clocks, but over the first %d rows one goes on by %v and the other by %v: say which to use with %s",
 				c.d.cols[at].label, col.label, len(c.d.rows), time.Duration(mine), time.Duration(theirs), flags[roleTime])
 		}
@@ -47,10 +49,11 @@ func (c *csvReader) compareClocks() error {
 }
 
 // advance is how far a clock goes on from the first to the last row of the
-// sample that it can be read in, ns.
-func (c *csvReader) advance(i int, k *clock) float64 {
+// sample that it can be read in, and its least step, ns.
+func (c *csvReader) advance(i int, k *clock) (total, step float64) {
 	var first, last int64
 	seen := false
+	step = math.Inf(1)
 	for _, l := range c.d.rows {
 		if i >= len(l.cells) {
 			continue
@@ -60,9 +63,12 @@ func (c *csvReader) advance(i int, k *clock) float64 {
 			continue
 		}
 		if !seen {
-			first, seen = t, true
+			first, last, seen = t, t, true
+		}
+		if t > last {
+			step = min(step, float64(t)-float64(last))
 		}
 		last = t
 	}
-	return float64(last) - float64(first)
+	return float64(last) - float64(first), step
 }
