@@ -167,6 +167,7 @@ func Check(ctx context.Context, run *data.Run, o Options) (*CheckReport, error) 
 // quickFit fits two lags and, where the second cannot be told from zero, one. The
 // card holds what the verdict needs, not the warnings of a whole fit.
 func quickFit(ctx context.Context, run *data.Run, o Options) (*Card, error) {
+	o.quick = true
 	o.Plants, o.Progress = 48, nil
 	o, err := o.withDefaults()
 	if err != nil {

@@ -157,6 +157,9 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	out.choose()
 	out.widen()
 	for i, m := range out.models {
+		if o.quick && m.rows() > polishAll {
+			continue
+		}
 		if i == out.selected || s.white && m.rows() <= polishAll {
 			m.refine(s.white)
 		}

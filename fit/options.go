@@ -24,6 +24,10 @@ type Options struct {
 
 	// Progress, when not nil, is told how many of the structures are done.
 	Progress func(done, total int)
+
+	// quick leaves out what brings a long log's optimum to every row: a verdict
+	// does not need it.
+	quick bool
 }
 
 func (o Options) withDefaults() (Options, error) {
