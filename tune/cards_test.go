@@ -92,7 +92,7 @@ func TestPowerLawOfSeveralCards(t *testing.T) {
 	if one := *g.SquareRoot; !(one.Kc > 0) || one.Unit != "V²/K" {
 		t.Errorf("behind a square root: %+v", one)
 	}
-	if !strings.Contains(strings.Join(g.Cautions, "\n"), "hold the requirement between") {
+	if !strings.Contains(strings.Join(g.Cautions, "\n"), "hold the requirement") {
 		t.Errorf("not said in the cautions: %q", g.Cautions)
 	}
 }

@@ -25,7 +25,11 @@ func (t *tuning) powerLaw(g *Gains) {
 		g.Cautions = append([]string{"The gain grows with the input, and there is no input at which these gains hold the requirement on every card: each card's figures hold about its own operating input."}, g.Cautions...)
 		return
 	}
-	words := fmt.Sprintf("The gain grows with the input: these gains hold the requirement between %s and %s.", figure(&g.HoldsOver[0], 3), quantity(g.HoldsOver[1], g.Units.Input, 3))
+	over := "up to " + quantity(g.HoldsOver[1], g.Units.Input, 3)
+	if g.HoldsOver[0] > 0.1*g.HoldsOver[1] {
+		over = "between " + figure(&g.HoldsOver[0], 3) + " and " + quantity(g.HoldsOver[1], g.Units.Input, 3)
+	}
+	words := fmt.Sprintf("The gain grows with the input: these gains hold the requirement %s.", over)
 	if g.SquareRoot != nil {
 		words += " Behind a square root of the controller's output one set holds everywhere."
 	}

@@ -202,13 +202,17 @@ func (g *Gains) writeMore(b *bufio.Writer) {
 	}
 	fmt.Fprintln(b, "\nA set for each card (ideal form)")
 	t := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
-	fmt.Fprintf(t, "  card\tinput %s\tKc\tTi s\tTd s\tload IAE of the common set\n", unitWords(g.Units.Input))
+	in := unitWords(g.Units.Input)
+	fmt.Fprintf(t, "  card\tinput %s\tKc %s/%s\tTi s\tTd s\tmet\tload IAE of the common set\n", in, in, unitWords(perKelvin(g.Units.Temperature)))
 	for _, e := range g.Schedule {
-		cost := "-"
+		cost, met := "-", "no"
 		if e.Cost != nil {
 			cost = fmt.Sprintf("%.2f times", *e.Cost)
 		}
-		fmt.Fprintf(t, "  %s\t%.4g to %.4g\t%.4g\t%s\t%s\t%s\n", plain(e.Card), e.Input[0], e.Input[1], e.Kc, figure(e.Ti, 4), figure(e.Td, 4), cost)
+		if e.Meets {
+			met = "yes"
+		}
+		fmt.Fprintf(t, "  %s\t%.4g to %.4g\t%.4g\t%s\t%s\t%s\t%s\n", plain(e.Card), e.Input[0], e.Input[1], e.Kc, figure(e.Ti, 4), figure(e.Td, 4), met, cost)
 	}
 	t.Flush()
 }

@@ -30,7 +30,7 @@ func TestWriteText(t *testing.T) {
 	g.Cures = []string{"allow an overshoot of 6.5 % in place of 5 %", "cut the dead time from 5 s to 4 s (sensor nearer the heater, measurement less filtered)"}
 	g.SquareRoot = &SquareRoot{Kc: 2.3, Unit: "V²/K"}
 	g.PoleRegion = &RegionDesign{Region: PoleRegion{Damping: 0.7}, Plausible: nil, Assurance: 0.95, Best: 0.3, BestSettling: 120, BestDamping: 0.65}
-	g.Schedule = []ScheduleEntry{{Card: "low\x1b[31m.csv", Input: [2]float64{2, 4}, Kc: 0.3, Ti: ptr(55), Cost: ptr(1.7)}}
+	g.Schedule = []ScheduleEntry{{Card: "low\x1b[31m.csv", Input: [2]float64{2, 4}, Kc: 0.3, Ti: ptr(55), Meets: true, Cost: ptr(1.7)}}
 	g.Cautions = []string{"be ready to switch to manual"}
 	var b bytes.Buffer
 	if err := g.WriteText(&b); err != nil {
