@@ -202,8 +202,9 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 		cols, beta, left := r.solveLinear(w, p.gain)
 		all := append(cols, b.tangentColumns(i)...)
 		var ms []member
+		white := columns(len(all)+1, len(r.t))
 		for _, n := range b.nodes[i] {
-			ms = append(ms, r.linearMember(n, all, left))
+			ms = append(ms, r.linearMember(n, all, left, white))
 		}
 		for j := range r.fixed {
 			e := estimate{value: beta[j], se: math.Sqrt(pooled(ms)[j][j])}
@@ -216,12 +217,11 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 }
 
 // linearMember is the posterior of the coefficients of cols under the noise
-// shape of a node, given what the model leaves.
-func (r *record) linearMember(n node, cols [][]float64, left []float64) member {
-	var f filter
+// shape of a node, given what the model leaves; white is scratch for all of them.
+func (r *record) linearMember(n node, cols [][]float64, left []float64, white [][]float64) member {
+	f := &r.scratch
 	f.set(r.rows, n.shape)
 	m := len(cols)
-	white := columns(m+1, len(r.t))
 	for j, c := range cols {
 		copy(white[j], c)
 	}

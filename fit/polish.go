@@ -168,7 +168,11 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 		white[j] = r.whitener(r.shape)
 	}
 	size := min(pieceRows, len(root.t))
-	raw, start, cols := columns(nl+2, size), columns(nl+2, size), columns(m, size)
+	raw, cols := columns(nl+2, size), columns(m, size)
+	var start [][]float64
+	if started != nil {
+		start = columns(nl+2, size)
+	}
 	upper := columns(m, m)
 	for lo := 0; lo < len(root.t); {
 		n := response(raw)

@@ -31,12 +31,13 @@ type record struct {
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
 
 	// Under the noise shape in force:
-	shape  shape
-	filter filter
-	yw     []float64   // whitened temperature, free of the fixed columns
-	basis  [][]float64 // whitened fixed columns, orthonormal
-	weight float64     // 1/variance relative to the first record
-	sigma2 float64     // variance of a whitened row
+	shape   shape
+	filter  filter
+	scratch filter      // of other shapes
+	yw      []float64   // whitened temperature, free of the fixed columns
+	basis   [][]float64 // whitened fixed columns, orthonormal
+	weight  float64     // 1/variance relative to the first record
+	sigma2  float64     // variance of a whitened row
 }
 
 // initial says what is known of the state at the first row.
@@ -114,7 +115,7 @@ func (r *record) whole() *record {
 
 // adopt gives c, a fresh set of rows of the same log, what r has been told.
 func (r *record) adopt(c *record) *record {
-	c.start, c.filter, c.yw, c.basis, c.fixed = nil, filter{}, nil, nil, nil
+	c.start, c.filter, c.scratch, c.yw, c.basis, c.fixed = nil, filter{}, filter{}, nil, nil, nil
 	c.shape, c.weight, c.sigma2 = r.shape, r.weight, r.sigma2
 	c.model(r.rest, r.drift)
 	return c
@@ -166,7 +167,7 @@ func (r *record) clone() *record {
 	if r.start != nil {
 		c.start = r.start.Clone()
 	}
-	c.filter = filter{}
+	c.filter, c.scratch = filter{}, filter{}
 	c.yw, c.basis = nil, nil
 	c.setShape(r.shape)
 	return &c

@@ -22,7 +22,6 @@ type tangent struct {
 	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
 
-	filter filter      // scratch of evaluate
 	buf    []float64   // scratch: rest whitened
 	logdet float64     // of the noise rows under the shape last evaluated
 	white  [][]float64 // scratch: whitened cols, and left
@@ -137,7 +136,7 @@ type node struct {
 // with rss the generalised least-squares sum over all directions X of the
 // tangent, and the quadratic form of the parameters.
 func (t *tangent) evaluate(s shape) node {
-	f := &t.filter
+	f := &t.rec.scratch
 	f.set(t.rec.rows, s)
 	t.logdet = f.logdet
 	n, p := len(t.left), len(t.cols)

@@ -161,8 +161,8 @@ func (s *blockCache) clear() { s.used, s.oneH, s.filled = 0, -1, 0 }
 // doubled returns the block of 2^k samples: its transition is the square of
 // that of half as many, its mean the mean of the two halves.
 func (s *blockCache) doubled(c *chain, h float64, k int) *block {
-	if s.power == nil {
-		s.power = make([]block, doublings)
+	if len(s.power) <= k {
+		s.power = append(s.power, make([]block, k+1-len(s.power))...)
 	}
 	for s.filled <= k {
 		b := &s.power[s.filled]
