@@ -10,9 +10,9 @@ import (
 	"strings"
 	"time"
 
-	"github.com/apache/arrow/go/v17/arrow/memory"
 	"github.com/apache/arrow/go/v17/parquet"
 	"github.com/apache/arrow/go/v17/parquet/file"
+	"github.com/apache/arrow/go/v17/parquet/metadata"
 )
 
 // maxHeld bounds a Parquet file that has to be held in memory because it
@@ -33,17 +33,34 @@ func readParquet(ctx context.Context, s *source, o *Options) (tables []*table, i
 			err = fmt.Errorf("%s: damaged or unsupported Parquet file: %s", s.path, firstLine(fmt.Sprint(p)))
 		}
 	}()
-	props := parquet.NewReaderProperties(memory.DefaultAllocator)
+	pages := newPageMemory()
+	props := parquet.NewReaderProperties(pages)
 	props.BufferedStreamEnabled = true
 	f, err := file.NewParquetReader(in, file.WithReadProps(props))
 	if err != nil {
 		return nil, nil, fmt.Errorf("%s: damaged Parquet file: %s", s.path, firstLine(err.Error()))
 	}
-	p := &parquetReader{path: s.path, f: f, size: size}
+	p := &parquetReader{path: s.path, f: f, in: in, size: size}
 	if err := p.checkFooter(); err != nil {
 		return nil, nil, fmt.Errorf("%s: damaged Parquet file: %w", s.path, err)
 	}
+	pages.allow(p.largestGroup(), size)
 	return p.read(ctx, o)
+}
+
+// largestGroup is the number of bytes that the largest row group unpacks to.
+func (p *parquetReader) largestGroup() (most int64) {
+	meta := p.f.MetaData()
+	for g := range meta.RowGroups {
+		var sum int64
+		for i := range meta.Schema.NumColumns() {
+			if c, err := meta.RowGroup(g).ColumnChunk(i); err == nil {
+				sum += c.TotalUncompressedSize()
+			}
+		}
+		most = max(most, sum)
+	}
+	return most
 }
 
 func firstLine(s string) string {
@@ -73,6 +90,7 @@ func (s *source) seekable() (parquet.ReaderAtSeeker, int64, error) {
 type parquetReader struct {
 	path string
 	f    *file.Reader
+	in   io.ReaderAt
 	size int64
 
 	columns []*parquetColumn // those that can be read, in file order
@@ -100,11 +118,7 @@ func (p *parquetReader) checkFooter() error {
 			if err != nil {
 				return err
 			}
-			start := c.DataPageOffset()
-			if c.HasDictionaryPage() && c.DictionaryPageOffset() > 0 {
-				start = min(start, c.DictionaryPageOffset())
-			}
-			n := c.TotalCompressedSize()
+			start, n := extentOf(c)
 			flat := meta.Schema.Column(i).MaxRepetitionLevel() == 0
 			switch {
 			case rg.NumRows() == 0:
@@ -121,6 +135,29 @@ func (p *parquetReader) checkFooter() error {
 		return fmt.Errorf("the row groups hold %d rows, the footer says %d", rows, p.f.NumRows())
 	}
 	return nil
+}
+
+// extentOf is where the pages of a column of a row group stand.
+func extentOf(c *metadata.ColumnChunkMetaData) (start, n int64) {
+	start = c.DataPageOffset()
+	if c.HasDictionaryPage() && c.DictionaryPageOffset() > 0 {
+		start = min(start, c.DictionaryPageOffset())
+	}
+	return start, c.TotalCompressedSize()
+}
+
+// open starts reading a column's part of row group g, after a look at its pages.
+func (p *parquetReader) open(c *parquetColumn, g int) error {
+	rg := p.f.MetaData().RowGroup(g)
+	chunk, err := rg.ColumnChunk(c.index)
+	if err != nil {
+		return err
+	}
+	start, n := extentOf(chunk)
+	if err := checkPages(p.in, start, n, rg.NumRows()); err != nil {
+		return err
+	}
+	return c.open(p.f.RowGroup(g))
 }
 
 func (p *parquetReader) read(ctx context.Context, o *Options) ([]*table, *reading, error) {
@@ -220,8 +257,8 @@ func (p *parquetReader) sample(o *Options) (*dialect, error) {
 		if r, _ := roleOf(col); len(p.columns) > wide && r == roleNone && !named(o, c.name) {
 			continue
 		}
-		if err := c.open(p.f.RowGroup(g)); err != nil {
-			return nil, err
+		if err := p.open(c, g); err != nil {
+			return nil, fmt.Errorf("damaged Parquet file: row group %d, column %q: %w", g, c.name, err)
 		}
 		if err := c.fill(n); err != nil {
 			return nil, fmt.Errorf("column %q: %w", c.name, err)
@@ -282,7 +319,7 @@ func (p *parquetReader) readRows(ctx context.Context) error {
 			continue
 		}
 		for _, col := range used {
-			if err := col.open(rg); err != nil {
+			if err := p.open(col, g); err != nil {
 				return fmt.Errorf("row group %d, column %q: %w", g, col.name, err)
 			}
 		}
