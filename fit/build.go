@@ -301,10 +301,11 @@ func finite(v, other float64) float64 {
 // noise pools the records' noise: variances by their mean, the correlation
 // time by its logarithm.
 func (out *outcome) noise(b *bounded) Noise {
-	var total, white, logTC, weight float64
+	var total, white, walk, logTC, weight float64
 	for i, s := range b.shapes {
 		v := b.sigma2[i]
 		total += v
+		walk += v * s.walk * b.e.recs[i].span
 		white += v * s.white
 		if s.white < 1 {
 			logTC += (1 - s.white) * math.Log(s.tc)
@@ -312,7 +313,7 @@ func (out *outcome) noise(b *bounded) Noise {
 		}
 	}
 	n := float64(len(b.e.recs))
-	out2 := Noise{SD: math.Sqrt(total / n), WhiteSD: math.Sqrt(white / n)}
+	out2 := Noise{SD: math.Sqrt(total / n), WhiteSD: math.Sqrt(white / n), WanderSD: math.Sqrt(walk / n)}
 	if weight > 0 {
 		out2.CorrelationTime = math.Exp(logTC / weight)
 	}

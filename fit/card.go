@@ -98,6 +98,7 @@ type Noise struct {
 	SD              float64 `json:"sd"`                 // of the whole, temperature units
 	CorrelationTime float64 `json:"correlation_time_s"` // of the correlated part; 0 when white
 	WhiteSD         float64 `json:"white_sd"`
+	WanderSD        float64 `json:"wander_sd,omitempty"` // of a random walk on top of it, over the log
 }
 
 // Residuals are the checks of what is left.

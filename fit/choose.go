@@ -303,6 +303,16 @@ func (out *outcome) settle(s *study) error {
 			}
 		}
 	}
+	if !s.white {
+		out.two.activate()
+		for i, t := range out.two.tangents() {
+			w := t.bestWalk(nil)
+			s.walks = append(s.walks, t.walkNodes(w))
+			if w.dev < t.evaluate(shapes[i]).dev-walkBonus {
+				shapes[i] = w.shape
+			}
+		}
+	}
 	for i, r := range s.recs {
 		r.shape, r.weight = shapes[i], weights[i]
 	}
@@ -369,6 +379,10 @@ const (
 	// drift, in 95 % without, on closed-loop logs that do not drift).
 	driftClosed = -4
 )
+
+// walkBonus is what a walk in the noise must gain in -2L to be in force: twice
+// what AIC asks for its parameter. The intervals weigh both in any case.
+const walkBonus = 4
 
 // set puts the linear columns of every record in place.
 func (s *study) set(in initial, drift bool) {

@@ -33,10 +33,11 @@ type family struct {
 	drift     float64 // K/s
 	jitter    float64 // of the sampling, as a fraction of the step
 	gaps      bool
-	closed    bool // PI control during the log
-	boundary  bool // a parameter sits on the edge of its range
-	auto      bool // structure chosen by the fit: only the gain is held to the truth
-	wide      bool // few effective samples: the width is not held to the bound
+	closed    bool    // PI control during the log
+	boundary  bool    // a parameter sits on the edge of its range
+	auto      bool    // structure chosen by the fit: only the gain is held to the truth
+	wander    float64 // sd of a random walk over the log: noise that the log alone cannot always tell
+	wide      bool    // few effective samples: the width is not held to the bound
 }
 
 func families() []family {
@@ -72,6 +73,8 @@ func families() []family {
 		with("auto, one bump, ar 0.95", func(f *family) {
 			f.n, f.bumps, f.ar, f.white, f.auto = 400, []float64{10}, 0.95, 0, true
 		}),
+		with("ar 0.7, wanders", func(f *family) { f.ar, f.white, f.wander, f.wide = 0.7, 0, 0.3, true }),
+		with("ar 0.7, quantum, wanders more", func(f *family) { f.ar, f.white, f.quantum, f.wander, f.wide = 0.7, 0, 0.1, 0.8, true }),
 		with("equal3 ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "equal3", []float64{0.9}, 0.8, 0 }),
 	}
 }
@@ -134,6 +137,10 @@ func (f family) noise(t []float64, r *rand.Rand) []float64 {
 			c = phi*c + math.Sqrt(1-phi*phi)*r.NormFloat64()
 		}
 		out[k] = f.sd * (math.Sqrt(1-f.white)*c + math.Sqrt(f.white)*r.NormFloat64())
+	}
+	for k, walk := 1, 0.0; f.wander > 0 && k < len(t); k++ {
+		walk += f.wander * math.Sqrt((t[k]-t[k-1])/t[len(t)-1]) * r.NormFloat64()
+		out[k] += walk
 	}
 	return out
 }
@@ -321,6 +328,12 @@ func TestCoverage(t *testing.T) {
 			switch {
 			case f.auto:
 				hi = 1
+			case f.wander > 0 && j == 0:
+				// Where a walk hides in the rest, the gain's interval misses it: 60 %
+				// without a walk in the mixture. What is held here is that it is looked for.
+				lo = 0.75
+			case f.wander > 0:
+				lo, hi = 0.85, 0.99
 			case f.boundary:
 				hi = 0.985
 			}

@@ -165,12 +165,26 @@ func mixtureQuantile(ms []member, i int, p float64) float64 {
 		}
 		hi *= 1.5
 	}
-	for range 36 {
-		mid := (lo + hi) / 2
-		if cdf(mid) < p {
-			lo = mid
+	// Regula falsi with the Illinois modification.
+	fl, fh, side := cdf(lo)-p, cdf(hi)-p, 0
+	for range 50 {
+		x := hi - fh*(hi-lo)/(fh-fl)
+		f := cdf(x) - p
+		if math.Abs(f) < 1e-9 || hi-lo < 1e-9*scale {
+			return x
+		}
+		if f > 0 {
+			hi, fh = x, f
+			if side == 1 {
+				fl /= 2
+			}
+			side = 1
 		} else {
-			hi = mid
+			lo, fl = x, f
+			if side == -1 {
+				fh /= 2
+			}
+			side = -1
 		}
 	}
 	return (lo + hi) / 2

@@ -14,11 +14,18 @@ import (
 //	rho(t) = (1 - white)·exp(-|t|/tc) for t ≠ 0, and 1 at 0
 //
 // In continuous time the correlated part is exact for uneven sampling and
-// gaps. white = 1 is white noise, whatever tc.
+// gaps. white = 1 is white noise, whatever tc. On top of it the temperature may
+// wander: a random walk (Wiener process) from 0 at the first row, of the
+// variance walk·t relative to that of the rest, for what is slower than the log
+// can tell the time of: ambient air, supply voltage.
 type shape struct {
 	tc    float64 // s
 	white float64 // fraction of the variance, 0..1
+	walk  float64 // 1/s
 }
+
+// unfiltered reports whether rows are independent under the shape.
+func (s shape) unfiltered() bool { return s.white >= 1 && s.walk == 0 }
 
 var whiteShape = shape{tc: 1, white: 1}
 
@@ -28,13 +35,19 @@ var whiteShape = shape{tc: 1, white: 1}
 //
 //	out[k] = (x[k] - a2[k]·a)·isd[k],  a ← decay[k]·a + gain[k]·x[k]
 //
-// where a is the predicted correlated part at the last sample seen. A row that
-// is the mean of M samples is treated exactly (see rowMoments).
+// where a is the predicted correlated part at the last sample seen. With a walk
+// b of predicted value b,
+//
+//	e = x[k] - a2[k]·a - b,  out[k] = e·isd[k]
+//	a ← decay[k]·a + gain[k]·(x[k] - b),  b ← b + follow[k]·e
+//
+// A row that is the mean of M samples is treated exactly (see rowMoments).
 type filter struct {
 	decay, a2, gain, isd []float64
-	logdet               float64 // log determinant of the correlation matrix of the rows
-	white                bool    // nothing to do apart from the weights isd
-	plain                bool    // white and every weight 1
+	follow               []float64 // nil without a walk
+	logdet               float64   // log determinant of the correlation matrix of the rows
+	white                bool      // nothing to do apart from the weights isd
+	plain                bool      // white and every weight 1
 }
 
 // rowMoments are the moments of a row that is the mean of m samples spaced h:
@@ -93,13 +106,26 @@ func (r rowMoments) doubled(phi, one float64) rowMoments {
 	}
 }
 
+// walkMoments are those of a random walk of variance 1 a second over a row of m
+// samples h apart that comes gap after the last sample seen, counted from its
+// value there: the variance of the last sample and of the mean, and their
+// covariance. The j-th step inside the row stands in m-j of its m samples, and
+// Σ(m-j) = m(m-1)/2, Σ(m-j)² = m(m-1)(2m-1)/6.
+func walkMoments(gap, h float64, m int) (last, cross, mean float64) {
+	n := float64(m)
+	return gap + (n-1)*h, gap + h*(n-1)/2, gap + h*(n-1)*(2*n-1)/(6*n)
+}
+
 // kalman walks over the rows of a record and gives the filter's coefficients
 // row by row.
 type kalman struct {
 	s     shape
 	usual float64 // s, what intervals close to it count as; 0: each counts as it is
 
-	p                float64 // variance of the correlated part at the last sample, given the past
+	// Covariance, given the past, of the correlated part and of the walk at the
+	// last sample.
+	p, pw, w float64
+
 	lastGap, lastPhi float64
 	lastH            float64
 	lastM            int
@@ -107,11 +133,12 @@ type kalman struct {
 	prevEnd          float64
 	started, steady  bool
 
-	decay, a2, gain, isd, log float64 // of the row just passed; log is that of the variance
+	// Of the row just passed, variance its.
+	decay, a2, gain, follow, isd, variance float64
 }
 
 func newKalman(s shape) *kalman {
-	k := &kalman{s: s, p: 1 - s.white, lastGap: -1, lastH: -1, lastM: -1}
+	k := &kalman{s: s, p: math.Max(1-s.white, 0), lastGap: -1, lastH: -1, lastM: -1}
 	return k
 }
 
@@ -128,9 +155,9 @@ func (k *kalman) interval(gap float64) float64 {
 // next passes the row r.
 func (k *kalman) next(r ident.Row) {
 	m := max(r.M, 1)
-	phi0 := 0.0
+	phi0, gap := 0.0, 0.0
 	if k.started {
-		gap := k.interval(r.T - k.prevEnd)
+		gap = k.interval(r.T - k.prevEnd)
 		// Equally spaced stamps differ by their rounding.
 		if math.Abs(gap-k.lastGap) > 1e-7*k.lastGap || k.lastGap < 0 {
 			k.lastGap, k.lastPhi, k.steady = gap, math.Exp(-gap/k.s.tc), false
@@ -148,27 +175,40 @@ func (k *kalman) next(r ident.Row) {
 	if k.steady {
 		return
 	}
-	v, w, before := 1-k.s.white, k.s.white, k.p
+	v, w := math.Max(1-k.s.white, 0), k.s.white
+	before, beforeW := k.p, k.w
 	one := v * (1 - phi0*phi0)
 	a1 := k.mom.phiM * phi0
 	k.a2 = k.mom.g * phi0
 	vLL := k.mom.phiM*k.mom.phiM*one + v*k.mom.vLL
 	vLM := k.mom.phiM*k.mom.g*one + v*k.mom.vLM
 	vMM := k.mom.g*k.mom.g*one + v*k.mom.vMM
-	sv := k.a2*k.a2*k.p + vMM + w/float64(m)
-	k.gain = (a1*k.a2*k.p + vLM) / sv
+	var last, cross, mean float64
+	settled := 1e-15
+	if k.s.walk > 0 {
+		settled = 1e-10
+		last, cross, mean = walkMoments(gap, r.H, m)
+		last, cross, mean = last*k.s.walk, cross*k.s.walk, mean*k.s.walk
+	}
+	sv := k.a2*k.a2*k.p + 2*k.a2*k.pw + k.w + vMM + mean + w/float64(m)
+	k.gain = (a1*(k.a2*k.p+k.pw) + vLM) / sv
+	k.follow = (k.a2*k.pw + k.w + cross) / sv
 	k.p = math.Max(a1*a1*k.p+vLL-k.gain*k.gain*sv, 0)
+	k.pw = a1*k.pw - k.gain*k.follow*sv
+	k.w = math.Max(k.w+last-k.follow*k.follow*sv, 0)
 	k.decay = a1 - k.gain*k.a2
-	k.isd, k.log = 1/math.Sqrt(sv), math.Log(sv)
-	// Equal rows bring the filter to a steady state; then its figures repeat.
-	k.steady = k.started && math.Abs(k.p-before) <= 1e-15*v
+	k.isd, k.variance = 1/math.Sqrt(sv), sv
+	// Equal rows bring the filter to a steady state; then its figures repeat. The
+	// walk nears it by a part 2·follow a row, so that what is left of w is 1e-8/(2·follow)
+	// of it, and 1e-8 of the variance of a row.
+	k.steady = k.started && math.Abs(k.p-before) <= settled*v && math.Abs(k.w-beforeW) <= 1e-8*k.w
 	k.started = true
 }
 
 // set makes f the filter for rows under the shape s, in the memory it has.
 func (f *filter) set(rows []ident.Row, s shape) {
 	n := len(rows)
-	f.logdet, f.white, f.plain = 0, s.white >= 1, s.white >= 1
+	f.logdet, f.white, f.plain = 0, s.unfiltered(), s.unfiltered()
 	if f.white {
 		for _, r := range rows {
 			f.plain = f.plain && r.M <= 1
@@ -184,13 +224,39 @@ func (f *filter) set(rows []ident.Row, s shape) {
 		return
 	}
 	f.decay, f.a2, f.gain, f.isd = resize(f.decay, n), resize(f.a2, n), resize(f.gain, n), resize(f.isd, n)
+	f.follow = f.follow[:0]
 	k := newKalman(s)
+	product := newLogProduct()
 	for i, r := range rows {
 		k.next(r)
 		f.decay[i], f.a2[i], f.gain[i], f.isd[i] = k.decay, k.a2, k.gain, k.isd
-		f.logdet += k.log
+		if s.walk > 0 {
+			f.follow = append(f.follow, k.follow)
+		}
+		product.times(k.variance)
+	}
+	f.logdet = product.log()
+}
+
+// logDeterminant is that of the correlation matrix of the rows passed.
+func (w *whitener) logDeterminant() float64 { return w.variances.log() }
+
+// logProduct is the logarithm of a product of many factors, taken now and then.
+type logProduct struct{ sum, product float64 }
+
+func newLogProduct() logProduct { return logProduct{product: 1} }
+
+func (l *logProduct) times(x float64) {
+	l.product *= x
+	if l.product < 1e-250 || l.product > 1e250 {
+		l.sum += math.Log(l.product)
+		l.product = 1
 	}
 }
+
+func (l *logProduct) power(x float64, n int) { l.sum += float64(n) * math.Log(x) }
+
+func (l *logProduct) log() float64 { return l.sum + math.Log(l.product) }
 
 // whitener filters the rows of a log in place, one sample a row, without
 // keeping coefficients: the rows come in pieces, one after the other.
@@ -198,12 +264,13 @@ type whitener struct {
 	k    *kalman
 	even bool // the log is evenly sampled, without gaps
 
-	a           float64 // predicted correlated part at the last sample
-	sum, logdet float64 // of squares; of the correlation matrix
+	a, b      float64 // predicted correlated part at the last sample, and walk
+	sum       float64 // of squares
+	variances logProduct
 }
 
 func (r *record) whitener(s shape) *whitener {
-	w := &whitener{k: newKalman(s), even: r.even}
+	w := &whitener{k: newKalman(s), even: r.even, variances: newLogProduct()}
 	w.k.usual = r.usual
 	return w
 }
@@ -211,7 +278,7 @@ func (r *record) whitener(s shape) *whitener {
 // pass filters the next rows x at the times t.
 func (w *whitener) pass(x, t []float64) {
 	k := w.k
-	if k.s.white >= 1 {
+	if k.s.unfiltered() {
 		w.sum += dot(x, x)
 		return
 	}
@@ -225,8 +292,16 @@ func (w *whitener) pass(x, t []float64) {
 		case k.steady:
 			end = k.evenUntil(t, i)
 		}
-		w.logdet += float64(end-i) * k.log
-		w.steadily(x[i:end])
+		if end == i+1 {
+			w.variances.times(k.variance)
+		} else {
+			w.variances.power(k.variance, end-i)
+		}
+		if k.s.walk > 0 {
+			w.following(x[i:end])
+		} else {
+			w.steadily(x[i:end])
+		}
 		i = end
 	}
 }
@@ -261,6 +336,24 @@ func (w *whitener) steadily(x []float64) {
 	w.sum += sum
 }
 
+// following is steadily for noise that wanders.
+func (w *whitener) following(x []float64) {
+	k := w.k
+	a2, isd, d, g, f := k.a2, k.isd, k.decay, k.gain, k.follow
+	a, b, sum := w.a, w.b, 0.0
+	for i, v := range x {
+		v -= b
+		e := v - a2*a
+		a = d*a + g*v
+		b += f * e
+		e *= isd
+		x[i] = e
+		sum += e * e
+	}
+	w.a, w.b = a, b
+	w.sum += sum
+}
+
 // evenUntil passes the rows after row i that keep its distance, and returns
 // the first that does not.
 func (k *kalman) evenUntil(t []float64, i int) int {
@@ -279,6 +372,8 @@ func (f *filter) apply(dst, src []float64) {
 		for k, w := range f.isd {
 			dst[k] = src[k] * w
 		}
+	case len(f.follow) > 0:
+		f.applyFollowing(dst, src)
 	default:
 		n := len(src)
 		decay, a2, g, isd := f.decay[:n], f.a2[:n], f.gain[:n], f.isd[:n]
@@ -291,14 +386,30 @@ func (f *filter) apply(dst, src []float64) {
 	}
 }
 
+// applyFollowing is apply for noise that wanders.
+func (f *filter) applyFollowing(dst, src []float64) {
+	n := len(src)
+	decay, a2, g, isd, follow := f.decay[:n], f.a2[:n], f.gain[:n], f.isd[:n], f.follow[:n]
+	dst = dst[:n]
+	a, b := 0.0, 0.0
+	for k, x := range src {
+		x -= b
+		e := x - a2[k]*a
+		dst[k] = e * isd[k]
+		a = decay[k]*a + g[k]*x
+		b += follow[k] * e
+	}
+}
+
 // applyAll filters columns in place, four side by side: one recursion alone
 // waits for its own last value most of the time.
 func (f *filter) applyAll(cols [][]float64) {
-	for !f.white && len(cols) >= 4 {
+	single := f.white || len(f.follow) > 0
+	for !single && len(cols) >= 4 {
 		f.applyFour(cols[0], cols[1], cols[2], cols[3])
 		cols = cols[4:]
 	}
-	if !f.white && len(cols) >= 2 {
+	if !single && len(cols) >= 2 {
 		f.applyTwo(cols[0], cols[1])
 		cols = cols[2:]
 	}

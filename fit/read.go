@@ -185,6 +185,7 @@ func (m *Model) check() error {
 	}{
 		{"samples", float64(m.Samples)}, {"sse", m.SSE}, {"rmse", m.RMSE},
 		{"noise.sd", m.Noise.SD}, {"noise.correlation_time_s", m.Noise.CorrelationTime}, {"noise.white_sd", m.Noise.WhiteSD},
+		{"noise.wander_sd", m.Noise.WanderSD},
 	} {
 		if !(f.value >= 0) {
 			return fmt.Errorf("%s is %g, want 0 or more", f.field, f.value)

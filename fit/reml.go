@@ -1,9 +1,6 @@
 package fit
 
-import (
-	"math"
-	"sort"
-)
+import "math"
 
 // tangent is a fitted model near its optimum on one record: what is left of
 // the log and an orthonormal basis of the directions in which the model can
@@ -218,7 +215,7 @@ func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
 		lo = hi
 	}
 	sum := w.sum
-	t.logdet = w.logdet
+	t.logdet = w.logDeterminant()
 	taken := (dot(white, white) - least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
 	return math.Max(sum-taken, 1e-3*sum)
 }
@@ -228,15 +225,16 @@ func (t *tangent) tcRange() (lo, hi float64) {
 	return 0.2 * t.rec.step, math.Max(0.7*t.rec.span, 2*t.rec.step)
 }
 
-// bestShape finds the noise shape of greatest restricted likelihood, from a
-// coarse grid and a pattern search; near narrows the grid to a neighbourhood.
+// bestShape finds the noise shape without a walk of greatest restricted
+// likelihood, from a coarse grid and a pattern search; near narrows the grid to a
+// neighbourhood.
 func (t *tangent) bestShape(near *shape) node {
 	lo, hi := t.tcRange()
 	best := t.evaluate(whiteShape)
 	better := func(tc, w float64) (up bool, dev float64) {
 		tc = math.Min(math.Max(tc, lo), hi)
 		w = math.Min(math.Max(w, 0), 0.995)
-		n := t.evaluate(shape{tc, w})
+		n := t.evaluate(shape{tc: tc, white: w})
 		if up = n.dev < best.dev-1e-9; up {
 			best = n
 		}
@@ -260,7 +258,7 @@ func (t *tangent) bestShape(near *shape) node {
 	for da > 0.05 {
 		c, centre := best.shape, best.dev
 		if c.white >= 1 {
-			c = shape{lo * 3, 0.97}
+			c = shape{tc: lo * 3, white: 0.97}
 		}
 		var dev [8]float64
 		moved := false
@@ -300,82 +298,4 @@ func bottom(centre float64, dev [8]float64) (x, y float64, ok bool) {
 	}
 	x, y = (xy*gy-yy*gx)/det, (xy*gx-xx*gy)/det
 	return x, y, math.Abs(x) <= 1 && math.Abs(y) <= 1
-}
-
-// grid spreads nodes over the noise shapes that the record does not rule out,
-// with weights proportional to their restricted likelihood under a prior flat
-// in log tc and in the white fraction. It is a flood fill on a lattice whose
-// spacing follows the curvature at the best shape.
-func (t *tangent) grid(best node) []node {
-	lo, hi := t.tcRange()
-	c := best.shape
-	if c.white >= 1 {
-		c = shape{math.Sqrt(lo * hi), 0.995}
-	}
-	at := func(a, w float64) (node, bool) {
-		tc := c.tc * math.Exp(a)
-		if tc < lo*0.999 || tc > hi*1.001 || w < -1e-9 || w > 1 {
-			return node{}, false
-		}
-		return t.evaluate(shape{tc, math.Min(math.Max(w, 0), 0.9999)}), true
-	}
-	spacing := func(d0, dMax float64, f func(d float64) (node, bool)) float64 {
-		// The distance at which -2L rises by about 1.
-		d := d0
-		for range 6 {
-			rise, ok := 0.0, false
-			for _, s := range []float64{1, -1} {
-				if n, in := f(s * d); in {
-					rise, ok = math.Max(rise, n.dev-best.dev), true
-				}
-			}
-			if ok && rise > 2.5 {
-				d /= 2
-			} else if ok && rise < 0.4 && d < dMax {
-				d *= 1.7
-			} else {
-				break
-			}
-		}
-		return math.Min(d, dMax)
-	}
-	da := spacing(0.4, math.Log(hi/lo)/5, func(d float64) (node, bool) { return at(d, c.white) })
-	db := spacing(0.1, 0.25, func(d float64) (node, bool) { return at(0, c.white+d) })
-	type key struct{ i, j int }
-	seen := map[key]bool{{0, 0}: true}
-	queue := []key{{0, 0}}
-	var nodes []node
-	for len(queue) > 0 && len(nodes) < 90 {
-		k := queue[0]
-		queue = queue[1:]
-		n, ok := at(float64(k.i)*da, c.white+float64(k.j)*db)
-		if !ok || n.dev > best.dev+9 {
-			continue
-		}
-		nodes = append(nodes, n)
-		for _, d := range []key{{1, 0}, {-1, 0}, {0, 1}, {0, -1}} {
-			q := key{k.i + d.i, k.j + d.j}
-			if !seen[q] {
-				seen[q] = true
-				queue = append(queue, q)
-			}
-		}
-	}
-	if len(nodes) == 0 {
-		nodes = []node{best}
-	}
-	low := nodes[0].dev
-	for _, n := range nodes {
-		low = math.Min(low, n.dev)
-	}
-	total := 0.0
-	for i := range nodes {
-		nodes[i].weight = math.Exp(-0.5 * (nodes[i].dev - low))
-		total += nodes[i].weight
-	}
-	for i := range nodes {
-		nodes[i].weight /= total
-	}
-	sort.SliceStable(nodes, func(i, j int) bool { return nodes[i].weight > nodes[j].weight })
-	return nodes
 }

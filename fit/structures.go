@@ -55,6 +55,9 @@ type study struct {
 	dead float64
 	// coarse are the starts of a single lag, when they are known already.
 	coarse [][]float64
+	// walks are the noise shapes with a walk, per record, that the chain of two
+	// lags does not rule out.
+	walks []*walkNodes
 	// rival is the AICc of the chain of two lags, infinite while there is none.
 	rival float64
 }
@@ -85,6 +88,14 @@ func (s *study) fit(st ident.Structure, shorter *fitted) *fitted {
 		from = shorter.p.eta
 	}
 	return s.fitFrom(e, e.starts(s.tau, s.dead, from))
+}
+
+// walk is those of a record; nil when none are known.
+func (s *study) walk(record int) *walkNodes {
+	if record >= len(s.walks) {
+		return nil
+	}
+	return s.walks[record]
 }
 
 // survey averages the records for the search among structures: the single lag
@@ -326,7 +337,12 @@ func (s *study) whiten(f *fitted) {
 		if s.recs[i].shape.white < 1 {
 			from = &s.recs[i].shape
 		}
-		n := t.bestShape(from)
+		var n node
+		if from != nil && from.walk > 0 {
+			n = t.bestWalk(from)
+		} else {
+			n = t.bestShape(from)
+		}
 		s.recs[i].setShape(n.shape)
 		s.recs[i].sigma2 = n.s2
 	}
@@ -351,6 +367,12 @@ func (s *study) hopeless(f *fitted) bool {
 }
 
 func alike(a, b shape) bool {
+	if (a.walk > 0) != (b.walk > 0) {
+		return false
+	}
+	if a.walk > 0 && math.Abs(math.Log(a.walk/b.walk)) > 0.1 {
+		return false
+	}
 	if a.white >= 1 && b.white >= 1 {
 		return true
 	}
@@ -416,6 +438,9 @@ func (s *study) score(f *fitted) {
 		if !s.white {
 			f.params += 2
 		}
+		if r.shape.walk > 0 {
+			f.params++
+		}
 	}
 	f.params += f.mean
 	k, m := float64(f.params), float64(n)
@@ -444,5 +469,5 @@ func (f *fitted) likelihood(i int, t *tangent) float64 {
 	if !r.averagesRows() {
 		return logLikelihood(f.p.part[i], r.filter.logdet, len(r.t))
 	}
-	return logLikelihood(w.sum, w.logdet, len(r.root.t))
+	return logLikelihood(w.sum, w.logDeterminant(), len(r.root.t))
 }

@@ -151,14 +151,18 @@ func (c *Card) writeFit(p *page, m *Model) {
 
 func noiseWords(n Noise, unit string) string {
 	s := "sd " + quantity(n.SD, unit, 2)
-	if n.CorrelationTime <= 0 {
-		return s + ", white"
+	switch {
+	case n.CorrelationTime <= 0:
+		s += ", white"
+	case n.WhiteSD < 0.01*n.SD:
+		s += ", correlated over " + duration(n.CorrelationTime)
+	default:
+		s += ", correlated over " + duration(n.CorrelationTime) + ", its white part sd " + quantity(n.WhiteSD, unit, 2)
 	}
-	s += ", correlated over " + duration(n.CorrelationTime)
-	if n.WhiteSD < 0.01*n.SD {
-		return s
+	if n.WanderSD > 0 {
+		s += "; wanders by sd " + quantity(n.WanderSD, unit, 2) + " over the log"
 	}
-	return s + ", its white part sd " + quantity(n.WhiteSD, unit, 2)
+	return s
 }
 
 func (c *Card) writeStructures(p *page) {

@@ -3,6 +3,7 @@ package fit
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"lagwright/data"
@@ -111,6 +112,11 @@ func (j *judgement) limitations() []limitation {
 	return out
 }
 
+// noted reports whether reading the log left a note of the code.
+func (j *judgement) noted(code string) bool {
+	return slices.ContainsFunc(j.run.Quality.Notes, func(n data.Note) bool { return n.Code == code })
+}
+
 // largestRise is that of the bumps, without bumps the swing of the temperature.
 func (j *judgement) largestRise() float64 {
 	largest := 0.0
@@ -137,6 +143,9 @@ func (j *judgement) cap(verdicts []Verdict) {
 		all := spoilt
 		if v.Verdict == good && v.Parameter == "dead_time" && j.open != closedEnds {
 			all = append([]limitation{{"so short a rise does not tell dead time from lag", j.cures("dead_time", math.Inf(1), 0)[0]}}, all...)
+		}
+		if v.Parameter == "dead_time" && j.noted("clock-coarse") {
+			all = append(all[:len(all):len(all)], limitation{"the clock is coarser than the sampling", "log the time with at least one more digit"})
 		}
 		for _, l := range all {
 			if v.Verdict == good {

@@ -131,5 +131,8 @@ func noiseWords(n fit.Noise, unit string) string {
 	if n.CorrelationTime > 0 {
 		s += fmt.Sprintf(", correlated over %s, white part %s", format.Duration(n.CorrelationTime), format.Amount(n.WhiteSD, unit, 2))
 	}
+	if n.WanderSD > 0 {
+		s += fmt.Sprintf("; wanders by sd %s over the log", format.Amount(n.WanderSD, unit, 2))
+	}
 	return s
 }

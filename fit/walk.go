@@ -1,0 +1,76 @@
+package fit
+
+import "math"
+
+// walkRange is the range of the walk, per s, that a record can speak about:
+// over its span it adds from a tenth of the standard deviation of the rest, which
+// hardly matters, to thirty times.
+func (t *tangent) walkRange() (lo, hi float64) {
+	return 0.1 * 0.1 / t.rec.span, 30 * 30 / t.rec.span
+}
+
+// bestWalk finds the noise shape of greatest restricted likelihood among those
+// that wander: near, when it does already, or else from a coarse grid, since what
+// looked like long correlation may be a walk under a short one.
+func (t *tangent) bestWalk(near *shape) node {
+	low, high := t.tcRange()
+	least, most := t.walkRange()
+	best := node{dev: math.Inf(1)}
+	better := func(s shape) bool {
+		s.tc = math.Min(math.Max(s.tc, low), high)
+		s.white = math.Min(math.Max(s.white, 0), 0.9999)
+		s.walk = math.Min(math.Max(s.walk, least), most)
+		n := t.evaluate(s)
+		if n.dev < best.dev-1e-9 {
+			best = n
+			return true
+		}
+		return false
+	}
+	step := [3]float64{0.3, 0.1, 0.4}
+	if near != nil && near.walk > 0 {
+		better(*near)
+	} else {
+		for _, sd := range []float64{0.3, 1.5, 8} {
+			for _, tc := range []float64{1, 3, 10} {
+				for _, white := range []float64{0.1, 0.6, 0.97} {
+					better(shape{tc: tc * t.rec.step, white: white, walk: sd * sd / t.rec.span})
+				}
+			}
+		}
+		step = [3]float64{0.8, 0.2, 1}
+	}
+	for step[0] > 0.05 {
+		c, moved := best.shape, false
+		for axis := range 3 {
+			for _, sign := range []float64{1, -1} {
+				if better(c.moved(axis, sign*step[axis])) {
+					moved = true
+					break
+				}
+			}
+		}
+		if moved { // on in the direction that all the moves together took
+			d := best.shape
+			better(shape{tc: d.tc * d.tc / c.tc, white: 2*d.white - c.white, walk: d.walk * d.walk / c.walk})
+			continue
+		}
+		for axis := range step {
+			step[axis] /= 2
+		}
+	}
+	return best
+}
+
+// moved is the shape a step further along an axis: log tc, white, log walk.
+func (s shape) moved(axis int, d float64) shape {
+	switch axis {
+	case 0:
+		s.tc *= math.Exp(d)
+	case 1:
+		s.white += d
+	default:
+		s.walk *= math.Exp(d)
+	}
+	return s
+}
