@@ -306,7 +306,7 @@ func (out *outcome) settle(s *study) error {
 	if !s.white {
 		out.two.activate()
 		for i, t := range out.two.tangents() {
-			w := t.bestWalk(nil)
+			w := t.bestWalk(shapes[i])
 			s.walks = append(s.walks, t.walkNodes(w))
 			if w.dev < t.evaluate(shapes[i]).dev-walkBonus {
 				shapes[i] = w.shape
@@ -380,9 +380,9 @@ const (
 	driftClosed = -4
 )
 
-// walkBonus is what a walk in the noise must gain in -2L to be in force: twice
-// what AIC asks for its parameter. The intervals weigh both in any case.
-const walkBonus = 4
+// walkBonus is what a walk in the noise must gain in -2L to be in force, a
+// factor of 20 in likelihood. The intervals weigh both in any case.
+const walkBonus = 6
 
 // set puts the linear columns of every record in place.
 func (s *study) set(in initial, drift bool) {

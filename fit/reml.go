@@ -19,9 +19,9 @@ type tangent struct {
 	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
 
-	buf    []float64   // scratch: rest whitened
-	logdet float64     // of the noise rows under the shape last evaluated
-	white  [][]float64 // scratch: whitened cols, and left
+	buf   []float64      // scratch: rest whitened
+	white [][]float64    // scratch: whitened cols, and left
+	plain map[shape]node // remembered by evaluateWalk
 }
 
 // tangents linearises the model at p on every record.
@@ -133,9 +133,67 @@ type node struct {
 // with rss the generalised least-squares sum over all directions X of the
 // tangent, and the quadratic form of the parameters.
 func (t *tangent) evaluate(s shape) node {
+	if s.walk > 0 && t.sampled() {
+		return t.evaluateWalk(s)
+	}
+	nd, r := t.onRows(s)
+	rss, n, p := r.least, len(t.left), len(t.cols)
+	if t.noise != nil {
+		rss, r.logdet = t.fullSum(s, r)
+		n = len(t.rest)
+		nd.dof = max(len(t.rec.root.t)-p, 1)
+	}
+	nd.s2 = t.rounded(rss / float64(n-p))
+	nd.dev = float64(n-p)*math.Log(rss) + r.logdet + r.directions
+	return nd
+}
+
+// sampled reports whether the noise is judged on a part of the log's rows.
+func (t *tangent) sampled() bool { return t.noise != nil && len(t.rest) < len(t.rec.root.t) }
+
+// evaluateWalk is evaluate for a log whose noise is judged on pieces of it. A
+// walk is slow: what it adds to -2L is told by the averaged rows, which cover the
+// whole log, with the variance and the rest of the shape as the pieces tell them.
+// (On the pieces alone a walk would take credit for the baseline of the whole
+// log being known less well than the pieces say.)
+func (t *tangent) evaluateWalk(s shape) node {
+	without := s
+	without.walk = 0
+	plain, ok := t.plain[without]
+	if !ok {
+		plain = t.evaluate(without)
+		if t.plain == nil {
+			t.plain = map[shape]node{}
+		}
+		t.plain[without] = plain
+	}
+	_, r0 := t.onRows(without)
+	nd, r := t.onRows(s)
+	nd.s2, nd.dof = plain.s2, plain.dof
+	nd.dev = plain.dev + (r.least-r0.least)/plain.s2 + r.logdet - r0.logdet + r.directions - r0.directions
+	return nd
+}
+
+// rounded is a variance of readings of the logged resolution: a rounded reading
+// is never better than its rounding, Δ²/12 (GUM, rectangular distribution),
+// however well the steps are met.
+func (t *tangent) rounded(variance float64) float64 {
+	q := t.rec.run.Quality.Quantum
+	return math.Max(variance, q*q/12)
+}
+
+// onRowsSums are what the rows in use say under a noise shape.
+type onRowsSums struct {
+	all, least float64 // whitened sum of squares: of what is left, and less what the directions take
+	logdet     float64 // ln|R|
+	directions float64 // ln|XᵀR⁻¹X|
+}
+
+// onRows whitens the directions and what is left on the rows in use; the node
+// has the quadratic form of the parameters.
+func (t *tangent) onRows(s shape) (node, onRowsSums) {
 	f := &t.rec.scratch
 	f.set(t.rec.rows, s)
-	t.logdet = f.logdet
 	n, p := len(t.left), len(t.cols)
 	if t.white == nil {
 		t.white = columns(p+1, n)
@@ -146,12 +204,15 @@ func (t *tangent) evaluate(s shape) node {
 	}
 	copy(white[p], t.left)
 	f.applyAll(white)
+	sums := onRowsSums{logdet: f.logdet}
 	// Cholesky of the Gram matrix, columns in order, the residual last.
 	l := columns(p+1, p+1)
-	logdet := 0.0
 	for i := 0; i <= p; i++ {
 		for j := 0; j <= i; j++ {
 			s := dot(white[i], white[j])
+			if i == p && j == p {
+				sums.all = s
+			}
 			for k := range j {
 				s -= l[i][k] * l[j][k]
 			}
@@ -162,26 +223,21 @@ func (t *tangent) evaluate(s shape) node {
 			}
 		}
 		if i < p {
-			logdet += 2 * math.Log(l[i][i])
+			sums.directions += 2 * math.Log(l[i][i])
 		}
 	}
+	sums.least = l[p][p] * l[p][p]
 	nd := node{shape: s, dof: n - p}
-	rss := l[p][p] * l[p][p]
-	if t.noise != nil {
-		rss = t.fullSum(s, white[p], rss)
-		n = len(t.rest)
-		nd.dof = max(len(t.rec.root.t)-p, 1)
-	}
-	// A rounded reading is never better than its rounding, Δ²/12 (GUM, rectangular
-	// distribution), however well the steps are met.
-	q := t.rec.run.Quality.Quantum
-	nd.s2 = math.Max(rss/float64(n-p), q*q/12)
-	nd.dev = float64(n-p)*math.Log(rss) + t.logdet + logdet
-	// The parameter block: a in the orthonormal coordinates is lp·lpᵀ, with lp
-	// the trailing block of l; in parameters a = triᵀ·lp·lpᵀ·tri.
-	np := len(t.param)
-	nd.a = columns(t.nparam, t.nparam)
-	nd.b = make([]float64, t.nparam)
+	nd.a, nd.b = t.quadratic(l)
+	return nd, sums
+}
+
+// quadratic is the quadratic form of the parameters. In the orthonormal
+// coordinates a is lp·lpᵀ, with lp the trailing block of the factor l; in
+// parameters a = triᵀ·lp·lpᵀ·tri.
+func (t *tangent) quadratic(l [][]float64) (a [][]float64, b []float64) {
+	np, p := len(t.param), len(t.cols)
+	a, b = columns(t.nparam, t.nparam), make([]float64, t.nparam)
 	m := columns(np, t.nparam) // lpᵀ·tri
 	for i := range np {
 		for _, j := range t.param {
@@ -192,20 +248,20 @@ func (t *tangent) evaluate(s shape) node {
 	}
 	for _, i := range t.param {
 		for k := range np {
-			nd.b[i] += m[k][i] * l[p][t.first+k]
+			b[i] += m[k][i] * l[p][t.first+k]
 			for _, j := range t.param {
-				nd.a[i][j] += m[k][i] * m[k][j]
+				a[i][j] += m[k][i] * m[k][j]
 			}
 		}
 	}
-	return nd
+	return a, b
 }
 
 // fullSum is the generalised least-squares sum over the noise rows: their
 // whitened sum of squares less what the model's directions would still take
 // from it, which the averaged rows tell (whitened sum minus least, scaled to
 // the number of rows).
-func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
+func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
 	t.buf = resize(t.buf, len(t.rest))
 	copy(t.buf, t.rest)
 	w := t.rec.whitener(s)
@@ -214,10 +270,8 @@ func (t *tangent) fullSum(s shape, white []float64, least float64) float64 {
 		w.pass(t.buf[lo:hi], t.noise[lo:hi])
 		lo = hi
 	}
-	sum := w.sum
-	t.logdet = w.logDeterminant()
-	taken := (dot(white, white) - least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
-	return math.Max(sum-taken, 1e-3*sum)
+	taken := (r.all - r.least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
+	return math.Max(w.sum-taken, 1e-3*w.sum), w.logDeterminant()
 }
 
 // tcRange is the range of correlation times that a record can speak about.

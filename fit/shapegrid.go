@@ -24,7 +24,7 @@ func (t *tangent) mixture(here node, walks *walkNodes) []node {
 		wandering, cell3 = t.grid(here, 3, 7)
 	case walks == nil:
 		plain, cell = t.grid(here, 2, 9)
-		wandering, cell3 = t.grid(t.bestWalk(nil), 3, 7)
+		wandering, cell3 = t.grid(t.bestWalk(here.shape), 3, 7)
 	default:
 		plain, cell = t.grid(here, 2, 9)
 		cell3 = walks.cell
@@ -145,10 +145,10 @@ func (t *tangent) grid(best node, axes int, reach float64) (nodes []node, cell f
 }
 
 // spacing is the distance along an axis at which -2L rises by about 1, by about
-// 2 where the lattice has three axes.
+// 3 where the lattice has three axes.
 func spacing(d, widest float64, axes int, dev float64, at func(d float64) (node, bool)) float64 {
-	scale := float64(axes - 1)
-	for range 6 {
+	scale := []float64{2: 1, 3: 3}[axes]
+	for range 5 {
 		rise, ok := 0.0, false
 		for _, sign := range []float64{1, -1} {
 			if n, in := at(sign * d); in {

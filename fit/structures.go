@@ -339,7 +339,7 @@ func (s *study) whiten(f *fitted) {
 		}
 		var n node
 		if from != nil && from.walk > 0 {
-			n = t.bestWalk(from)
+			n = t.bestWalk(*from)
 		} else {
 			n = t.bestShape(from)
 		}

@@ -10,9 +10,9 @@ func (t *tangent) walkRange() (lo, hi float64) {
 }
 
 // bestWalk finds the noise shape of greatest restricted likelihood among those
-// that wander: near, when it does already, or else from a coarse grid, since what
-// looked like long correlation may be a walk under a short one.
-func (t *tangent) bestWalk(near *shape) node {
+// that wander: from near, when it does already, or else from a coarse grid, since
+// what looked like long correlation may be a walk under a short one.
+func (t *tangent) bestWalk(near shape) node {
 	low, high := t.tcRange()
 	least, most := t.walkRange()
 	best := node{dev: math.Inf(1)}
@@ -28,19 +28,19 @@ func (t *tangent) bestWalk(near *shape) node {
 		return false
 	}
 	step := [3]float64{0.3, 0.1, 0.4}
-	if near != nil && near.walk > 0 {
-		better(*near)
+	if near.walk > 0 {
+		better(near)
 	} else {
-		for _, sd := range []float64{0.3, 1.5, 8} {
-			for _, tc := range []float64{1, 3, 10} {
-				for _, white := range []float64{0.1, 0.6, 0.97} {
-					better(shape{tc: tc * t.rec.step, white: white, walk: sd * sd / t.rec.span})
-				}
+		h := t.rec.step
+		for _, sd := range []float64{0.2, 1, 5} {
+			for _, s := range []shape{near, {tc: near.tc / 4, white: near.white}, {tc: h, white: 0.6}, {tc: 3 * h, white: 0.1}} {
+				s.walk = sd * sd / t.rec.span
+				better(s)
 			}
 		}
-		step = [3]float64{0.8, 0.2, 1}
+		step = [3]float64{0.6, 0.2, 0.8}
 	}
-	for step[0] > 0.05 {
+	for step[0] > 0.1 {
 		c, moved := best.shape, false
 		for axis := range 3 {
 			for _, sign := range []float64{1, -1} {
