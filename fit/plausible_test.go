@@ -12,29 +12,27 @@ import (
 	"lagwright/data"
 )
 
-// TestPlantsFollowThePosterior holds the plausible plants, pooled over many
-// seeds, to one long walk of the ensemble, in quantiles of every lag and the
-// dead time, on logs where rejection serves and where it does not: lags that
-// coincide, more lags than the heater has, no dead time, a record cut short.
-// Only a long study (LAGWRIGHT_LONG) looks at every structure.
+// TestPlantsFollowThePosterior holds the plausible plants of a chain of two lags,
+// pooled over many seeds, to one long walk of the ensemble, in quantiles of every
+// parameter, on logs where rejection serves and where it does not: lags that
+// coincide, no dead time, a record cut short. (Of more lags than a log can tell,
+// the walk itself takes too long to forget its start for such a comparison.)
 func TestPlantsFollowThePosterior(t *testing.T) {
-	long := os.Getenv("LAGWRIGHT_LONG") != ""
-	names := []string{"ar 0.8", "equal lags", "no dead time", "short record"}
-	structures := []string{"chain2"}
-	if long {
-		structures = []string{"fopdt", "chain2", "chain3", "chain4"}
+	seeds := 1
+	if os.Getenv("LAGWRIGHT_LONG") != "" {
+		seeds = 5
 	}
 	for _, f := range families() {
-		if !slices.Contains(names, f.name) {
+		if !slices.Contains([]string{"ar 0.8", "equal lags", "no dead time", "short record"}, f.name) {
 			continue
 		}
-		for _, st := range structures {
-			t.Run(fmt.Sprintf("%s %s", f.name, st), func(t *testing.T) {
-				o, err := Options{Structure: st}.withDefaults()
+		for seed := range seeds {
+			t.Run(fmt.Sprintf("%s/%d", f.name, seed), func(t *testing.T) {
+				o, err := Options{Structure: "chain2"}.withDefaults()
 				if err != nil {
 					t.Fatal(err)
 				}
-				recs, err := prepare([]*data.Run{f.make(5)}, o.Law)
+				recs, err := prepare([]*data.Run{f.make(uint64(5 + seed))}, o.Law)
 				if err != nil {
 					t.Fatal(err)
 				}
