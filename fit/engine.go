@@ -135,7 +135,7 @@ func (e *engine) eval(eta []float64, full bool) point {
 	}
 	p.gain, p.gg = e.gain, gg
 	if !e.gainFix {
-		if gg > 0 {
+		if gg > leastResponse*leastResponse*e.unity() {
 			p.gain = gy / gg
 		} else {
 			p.gain = 0
@@ -157,6 +157,21 @@ func (e *engine) eval(eta []float64, full bool) point {
 		e.gaussNewton(&p)
 	}
 	return p
+}
+
+// leastResponse is the part of its final value that a response must reach within
+// the log, in the mean of the rows, for a gain to be read from it: below, a fit
+// could explain the rounding of the response.
+const leastResponse = 1e-7
+
+// unity is the weighted square of a response that is at its final value in every
+// row.
+func (e *engine) unity() float64 {
+	sum := 0.0
+	for _, r := range e.recs {
+		sum += r.weight * r.swing * r.swing * float64(len(r.t))
+	}
+	return sum
 }
 
 // simulate fills the raw columns and the basis of the record's linear columns.

@@ -31,6 +31,7 @@ type posterior struct {
 	spreads []spread
 	heights []float64 // density of each at the optimum, up to a constant
 	s2, dof float64
+	floor   float64     // least square of the response, see plausibleResponse
 	root    [][]float64 // square root of a covariance to begin with
 	rng     *rand.Rand
 }
@@ -40,6 +41,11 @@ type plantAt struct {
 	p       point
 	density float64
 }
+
+// plausibleResponse is the part of its final value that a plausible plant's
+// response must reach within the log, in the mean of the rows. What comes later,
+// and so small, could be of any gain.
+const plausibleResponse = 1e-3
 
 func (b *bounded) posterior(rng *rand.Rand) *posterior {
 	q := &posterior{b: b, spreads: b.spreads(), s2: b.s2(), dof: float64(max(b.rows()-b.mean, 1)), rng: rng}
@@ -53,7 +59,9 @@ func (b *bounded) posterior(rng *rand.Rand) *posterior {
 	}
 	q.root = b.starts(q.free)
 	q.e = b.sketch()
-	q.least = q.e.eval(b.p.eta, false).s
+	optimum := q.e.eval(b.p.eta, false)
+	q.least = optimum.s
+	q.floor = math.Min(plausibleResponse*plausibleResponse*q.e.unity(), optimum.gg)
 	return q
 }
 
@@ -78,25 +86,44 @@ func (q *posterior) at(eta []float64) plantAt {
 		}
 	}
 	p := e.eval(eta, false)
+	if p.gg < q.floor {
+		return plantAt{density: math.Inf(-1)}
+	}
 	r2 := math.Max(p.s-q.least, 0) / q.s2
 	t := 0.0
 	for i, sp := range q.spreads {
 		t += q.heights[i] * math.Exp(-0.5*(q.dof+d)*math.Log1p(r2/(sp.k2*q.dof)))
 	}
 	density := math.Log(t)
-	if !e.gainFix {
-		density -= 0.5 * math.Log(p.gg) // the gain integrated out
+	if !e.gainFix { // the gain integrated out, over its own sign
+		density += math.Log(q.rightSign(p)) - 0.5*math.Log(p.gg)
+	}
+	if math.IsNaN(density) {
+		density = math.Inf(-1)
 	}
 	return plantAt{p, density}
 }
 
-// plant draws the gain of a place and returns the whole plant.
+// rightSign is the probability that the gain at p has the sign of the estimate: a
+// heater does not cool.
+func (q *posterior) rightSign(p point) float64 {
+	return studentCDF(math.Copysign(p.gain, p.gain*q.b.p.gain)*math.Sqrt(p.gg/q.s2), q.dof)
+}
+
+// plant draws the gain of a place, of the estimate's sign, and returns the whole
+// plant.
 func (q *posterior) plant(w plantAt) draw {
-	k2 := q.spreads[pickSpread(q.spreads, q.rng.Float64())].gain
 	g := w.p.gain
-	if !q.b.e.gainFix {
+	for range 200 {
+		if q.b.e.gainFix {
+			break
+		}
+		k2 := q.spreads[pickSpread(q.spreads, q.rng.Float64())].gain
 		t := distuv.StudentsT{Sigma: 1, Nu: q.dof, Src: q.rng}.Rand()
-		g += t * math.Sqrt(k2*q.s2/w.p.gg)
+		if g = w.p.gain + t*math.Sqrt(k2*q.s2/w.p.gg); g*q.b.p.gain > 0 {
+			break
+		}
+		g = w.p.gain
 	}
 	eta := append([]float64(nil), w.p.eta...)
 	if !slices.Contains(q.b.e.held, true) {

@@ -17,6 +17,7 @@ type record struct {
 	t, y  []float64   // rows with a temperature, or means of some (t their middle)
 	rows  []ident.Row // the same rows
 	span  float64     // s, first to last row
+	swing float64     // of the input
 	step  float64     // s, median interval
 	sim   *ident.Simulator
 	start *ident.Simulator // response to a unit change at the first row, for an earlier rest
@@ -79,6 +80,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
 	}
 	r.span = r.t[len(r.t)-1] - r.t[0]
+	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
 	r.even = isEven(r.t, r.step)

@@ -316,7 +316,7 @@ func (t *tangent) bestShape(near *shape) node {
 		}
 		var dev [8]float64
 		moved := false
-		for i, d := range lattice {
+		for i, d := range neighbours {
 			if i >= 4 && moved {
 				break // the diagonals are for ridges
 			}
@@ -337,8 +337,8 @@ func (t *tangent) bestShape(near *shape) node {
 	return best
 }
 
-// lattice are the neighbours of a shape, in steps of log tc and of white.
-var lattice = [8][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}}
+// neighbours are those of a shape on a lattice, in steps of log tc and of white.
+var neighbours = [8][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}}
 
 // bottom is the lowest point of the parabola through the centre of a lattice and
 // its neighbours, in steps; ok is false where it has none within reach.

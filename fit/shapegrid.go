@@ -14,87 +14,122 @@ const likeWalk = 0.15
 // out, without a walk and with one, weighted by their restricted likelihood under
 // a prior flat in log tc, in the white fraction and, where there is one, in log
 // walk. The shape in force has nodes around it; those of the other kind lie around
-// the best of it, or for the walk where the chain of two lags has them.
-func (t *tangent) mixture(here node, walks *walkNodes) []node {
-	var plain, wandering []node
-	var cell, cell3 float64
+// the best of it, or for the walk where the chain of two lags has them. It holds
+// enough of the weight for intervals at the level.
+func (t *tangent) mixture(here node, walks *walkNodes, level float64) []node {
+	var plain, wandering lattice
 	switch {
 	case here.shape.walk > 0:
-		plain, cell = t.grid(t.bestShape(nil), 2, 9)
-		wandering, cell3 = t.grid(here, 3, 7)
+		plain, wandering = t.grid(t.bestShape(nil), 2, plainReach), t.grid(here, 3, walkReach)
 	case walks == nil:
-		plain, cell = t.grid(here, 2, 9)
-		wandering, cell3 = t.grid(t.bestWalk(here.shape), 3, 7)
+		plain, wandering = t.grid(here, 2, plainReach), t.grid(t.bestWalk(here.shape), 3, walkReach)
 	default:
-		plain, cell = t.grid(here, 2, 9)
-		cell3 = walks.cell
-		for _, s := range walks.shapes {
-			wandering = append(wandering, t.evaluate(s))
-		}
+		plain, wandering = t.grid(here, 2, plainReach), walks.at(t)
 	}
 	least, most := t.walkRange()
-	weigh(plain, here.dev, (1-likeWalk)*cell)
-	weigh(wandering, here.dev, likeWalk*cell3/math.Log(most/least))
-	return heaviest(append(plain, wandering...), 0.998)
+	low := math.Min(plain.least(), wandering.least())
+	plain.weigh(low, 1-likeWalk)
+	wandering.weigh(low, likeWalk/math.Log(most/least))
+	return heaviest(append(plain.nodes, wandering.nodes...), 1-(1-level)/25)
 }
 
-// weigh gives nodes the weight of their likelihood over that at dev, times scale.
-func weigh(nodes []node, dev, scale float64) {
-	for i := range nodes {
-		nodes[i].weight = scale * math.Exp(-0.5*(nodes[i].dev-dev))
+// The rise of -2L up to which nodes are spread: without a walk and with one,
+// whose tail is the longer.
+const (
+	plainReach = 9
+	walkReach  = 10
+)
+
+// lattice are nodes and the volume that each stands for.
+type lattice struct {
+	nodes []node
+	cell  []float64
+}
+
+// least is the least deviance.
+func (l lattice) least() float64 {
+	low := math.Inf(1)
+	for _, n := range l.nodes {
+		low = math.Min(low, n.dev)
+	}
+	return low
+}
+
+// weigh gives every node the weight of its likelihood, over that at the deviance
+// low, times its cell and the scale.
+func (l lattice) weigh(low, scale float64) {
+	for i := range l.nodes {
+		l.nodes[i].weight = scale * l.cell[i] * math.Exp(-0.5*(l.nodes[i].dev-low))
 	}
 }
 
-// heaviest scales the weights to a sum of 1 and keeps the nodes of most weight,
-// heaviest first, until they hold the share.
+// heaviest keeps the nodes of most weight, heaviest first, until they hold the
+// share of it, and scales what is kept to a sum of 1.
 func heaviest(nodes []node, share float64) []node {
 	total := 0.0
 	for _, n := range nodes {
 		total += n.weight
 	}
 	sort.SliceStable(nodes, func(i, j int) bool { return nodes[i].weight > nodes[j].weight })
-	sum, keep := 0.0, len(nodes)
-	for i := range nodes {
-		nodes[i].weight /= total
-		if sum += nodes[i].weight; sum > share {
-			keep = min(keep, i+1)
+	sum := 0.0
+	for i, n := range nodes {
+		if sum += n.weight; sum > share*total {
+			nodes = nodes[:i+1]
+			break
 		}
 	}
-	return nodes[:keep]
+	for i := range nodes {
+		nodes[i].weight /= sum
+	}
+	return nodes
 }
 
 // walkNodes are noise shapes with a walk that a record does not rule out, and the
 // volume that each stands for.
 type walkNodes struct {
 	shapes []shape
-	cell   float64
+	cell   []float64
 }
 
 // walkNodes spreads them around the best shape with a walk.
 func (t *tangent) walkNodes(best node) *walkNodes {
-	nodes, cell := t.grid(best, 3, 7)
-	weigh(nodes, best.dev, 1)
-	out := &walkNodes{cell: cell}
-	for _, n := range heaviest(nodes, 0.98) {
-		out.shapes = append(out.shapes, n.shape)
+	l := t.grid(best, 3, walkReach)
+	l.weigh(l.least(), 1)
+	cells := map[shape]float64{}
+	for i, n := range l.nodes {
+		cells[n.shape] = l.cell[i]
+	}
+	out := &walkNodes{}
+	for _, n := range heaviest(l.nodes, 0.995) {
+		out.shapes, out.cell = append(out.shapes, n.shape), append(out.cell, cells[n.shape])
 	}
 	return out
 }
 
-// mostNodes is the largest number of nodes of a grid.
+// at evaluates them for a tangent.
+func (w *walkNodes) at(t *tangent) lattice {
+	l := lattice{cell: w.cell}
+	for _, s := range w.shapes {
+		l.nodes = append(l.nodes, t.evaluate(s))
+	}
+	return l
+}
+
+// mostNodes is the largest number of nodes of a grid; where it does not suffice
+// the nodes are spread more widely.
 const mostNodes = 90
 
 // grid spreads nodes around a shape along the first two or all three axes (log
-// tc, white, log walk), up to where -2L has risen by reach, and returns the volume
-// that each stands for. It is a flood fill on a lattice whose spacing follows the
-// curvature at the shape.
-func (t *tangent) grid(best node, axes int, reach float64) (nodes []node, cell float64) {
+// tc, white, log walk), up to where -2L has risen by reach. It is a flood fill on a
+// lattice whose spacing follows the curvature at the shape.
+func (t *tangent) grid(best node, axes int, reach float64) lattice {
 	lo, hi := t.tcRange()
 	least, most := t.walkRange()
 	c := best.shape
 	if c.white >= 1 {
-		c = shape{tc: math.Sqrt(lo * hi), white: 0.995}
+		c.tc, c.white = math.Sqrt(lo*hi), 0.995
 	}
+	box := [3][2]float64{{math.Log(lo), math.Log(hi)}, {0, 1}, {math.Log(least), math.Log(most)}}
 	at := func(s shape) (node, bool) {
 		if s.tc < lo*0.999 || s.tc > hi*1.001 || s.white < -1e-9 || s.white > 1 {
 			return node{}, false
@@ -107,26 +142,49 @@ func (t *tangent) grid(best node, axes int, reach float64) (nodes []node, cell f
 	}
 	first, widest := [3]float64{0.4, 0.1, 0.8}, [3]float64{math.Log(hi/lo) / 5, 0.25, 1.5}
 	var d [3]float64
-	cell = 1
 	for axis := range axes {
 		d[axis] = spacing(first[axis], widest[axis], axes, best.dev, func(x float64) (node, bool) { return at(c.moved(axis, x)) })
-		cell *= d[axis]
 	}
+	var l lattice
+	for range 4 {
+		var all bool
+		if l, all = flood(c, d, axes, best.dev+reach, box, at); all {
+			break
+		}
+		for axis := range axes {
+			d[axis] *= 1.4
+		}
+	}
+	if len(l.nodes) == 0 {
+		l = lattice{nodes: []node{best}, cell: []float64{d[0] * d[1]}}
+	}
+	return l
+}
+
+// flood fills the lattice of spacing d around c up to the deviance highest; all is
+// false when there are more nodes than a grid may have. A cell is cut off where the
+// box of the axes ends.
+func flood(c shape, d [3]float64, axes int, highest float64, box [3][2]float64, at func(shape) (node, bool)) (l lattice, all bool) {
 	type key [3]int
 	seen := map[key]bool{{}: true}
 	queue := []key{{}}
-	for len(queue) > 0 && len(nodes) < mostNodes {
+	for ; len(queue) > 0; queue = queue[1:] {
+		if len(l.nodes) == mostNodes {
+			return l, false
+		}
 		k := queue[0]
-		queue = queue[1:]
-		s := c
+		s, cell := c, 1.0
 		for axis := range axes {
 			s = s.moved(axis, float64(k[axis])*d[axis])
 		}
+		for axis, x := range []float64{math.Log(s.tc), s.white, math.Log(s.walk)}[:axes] {
+			cell *= math.Max(math.Min(x+d[axis]/2, box[axis][1])-math.Max(x-d[axis]/2, box[axis][0]), 0)
+		}
 		n, ok := at(s)
-		if !ok || n.dev > best.dev+reach {
+		if !ok || n.dev > highest {
 			continue
 		}
-		nodes = append(nodes, n)
+		l.nodes, l.cell = append(l.nodes, n), append(l.cell, cell)
 		for axis := range axes {
 			for _, sign := range []int{1, -1} {
 				q := k
@@ -138,10 +196,7 @@ func (t *tangent) grid(best node, axes int, reach float64) (nodes []node, cell f
 			}
 		}
 	}
-	if len(nodes) == 0 {
-		nodes = []node{best}
-	}
-	return nodes, cell
+	return l, true
 }
 
 // spacing is the distance along an axis at which -2L rises by about 1, by about
