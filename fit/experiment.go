@@ -28,7 +28,7 @@ func (e experiment) covariance(p ident.Plant, n Noise, held []bool) [][]float64 
 	st := p.Structure
 	lags := st.NumLags()
 	var f filter
-	f.set(sampleRows(e.t), n.shape())
+	f.set(sampleRows(e.t), n.shape(0))
 	sens := columns(lags+2, len(e.t))
 	ident.NewSimulator(e.t, e.in).Sensitivities(sens, st, p.Lags, p.DeadTime)
 	one := make([]float64, len(e.t))

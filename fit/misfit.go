@@ -54,7 +54,7 @@ func (m misfit) scenes(runs []*data.Run) []*scene {
 				s.t, y = append(s.t, run.T[k]), append(y, run.Y[k])
 			}
 		}
-		s.out = newModelOutput(s.t, y, s.in, m.start, m.drift, m.noise.shape())
+		s.out = newModelOutput(s.t, y, s.in, m.start, m.drift, m.noise.shape(spanOf(s.t)))
 		s.misfit = s.out.of(m.plant)
 		for k := range s.misfit {
 			s.misfit[k] = y[k] - s.misfit[k]

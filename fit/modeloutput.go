@@ -108,14 +108,29 @@ func (c *Card) output(run *data.Run, t, y []float64) (*modelOutput, *Model, erro
 		}
 	}
 	in := ident.HeldInput(run.T, run.U, c.Law())
-	return newModelOutput(t, y, in, start, c.Drift == "linear", m.Noise.shape()), m, nil
+	return newModelOutput(t, y, in, start, c.Drift == "linear", m.Noise.shape(spanOf(t))), m, nil
 }
 
-// shape is the shape of the card's noise.
-func (n Noise) shape() shape {
-	if n.CorrelationTime <= 0 || n.SD <= 0 {
-		return whiteShape
+// spanOf is the time from the first row to the last, s.
+func spanOf(t []float64) float64 {
+	if len(t) == 0 {
+		return 0
 	}
-	w := n.WhiteSD / n.SD
-	return shape{tc: n.CorrelationTime, white: math.Min(w*w, 1)}
+	return t[len(t)-1] - t[0]
+}
+
+// shape is the shape of the card's noise, for a log of the given span in s.
+func (n Noise) shape(span float64) shape {
+	s := whiteShape
+	if n.SD <= 0 {
+		return s
+	}
+	if n.CorrelationTime > 0 {
+		w := n.WhiteSD / n.SD
+		s = shape{tc: n.CorrelationTime, white: math.Min(w*w, 1)}
+	}
+	if span > 0 {
+		s.walk = n.WanderSD * n.WanderSD / (n.SD * n.SD * span)
+	}
+	return s
 }

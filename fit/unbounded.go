@@ -101,6 +101,10 @@ func (j *judgement) limitations() []limitation {
 				"log the temperature with more digits, or make a larger bump"})
 		}
 	}
+	if switched(j.run) {
+		out = append(out, limitation{"the input is switched on and off, and no model of it at every switching is to be trusted",
+			"give the length of the switching cycle with --cycle, and log fifty rows a cycle or more"})
+	}
 	for _, n := range j.run.Quality.Notes {
 		switch n.Code {
 		case "temperature-clipped":
@@ -110,6 +114,30 @@ func (j *judgement) limitations() []limitation {
 		}
 	}
 	return out
+}
+
+// manySwitchings is the number of changes of an ON and OFF input from which it is
+// taken for a drive that switches all the time, not for a test by hand.
+const manySwitchings = 12
+
+// switched reports whether the input is ON and OFF in words, as of a drive that
+// switches all the time, and was not averaged over its cycle.
+func switched(run *data.Run) bool {
+	words, changes := false, 0
+	for _, n := range run.Quality.Notes {
+		switch n.Code {
+		case "input-switched":
+			words = true
+		case "cycle-mean":
+			return false
+		}
+	}
+	for k := 1; words && k < len(run.U); k++ {
+		if run.U[k] != run.U[k-1] {
+			changes++
+		}
+	}
+	return changes >= manySwitchings
 }
 
 // noted reports whether reading the log left a note of the code.

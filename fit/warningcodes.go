@@ -25,6 +25,8 @@ func WarningCodes() []CodeDoc {
 		{"up-down-differ", "gain or lags of steps up differ from those of steps down (p below 0.001 and more than 3 %)", "heating and cooling differ; the model is an average of both", "bump both ways about the working point, or fit the bumps one by one"},
 		{"curvature", "the gain changes over the range of the input (p below 0.001 and more than 6 %)", "one straight line does not hold everywhere", "fit with --input-law power if it grows with the input, else bump about the working point only"},
 		{"logs-differ", "logs of a joint fit do not share one plant (p below 0.001)", "the joint model describes none of them well", "fit them apart; look for what changed: airflow, filter, load, sensor"},
+		{"little-explained", "the plant alone explains little of the temperature (fit below 40 %)", "drift and noise were given the rest; the model may be far from the heater", "look at the figure; make a larger bump, settle before it"},
+		{"switched-input", "the input is ON and OFF in words and changes all the time", "a model of every switching is easily wrong by whole cycles", "read the log with --cycle, logged fifty times a cycle or faster"},
 		{"not-at-rest", "the log begins on the way from an earlier input", "that input was fitted along, which costs width", "start the next test from a steady state"},
 		{"drift", "the baseline drifts over the log", "the drift was fitted along, which costs width", "let the heater settle before the bump"},
 		{"bump-instant", "the fit was told that the instant of the bump inside its sampling interval is not known", "the dead time is stated one sampling interval wider", "log faster, or log the input at the instant it changes"},

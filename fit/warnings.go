@@ -26,6 +26,14 @@ func (out *outcome) warnings(ctx context.Context, runs []*data.Run) []Warning {
 	out.warnNoise(&m, add)
 	out.warnMisfit(ctx, runs, b, &m, add)
 	out.warnTest(runs, b, &m, add)
+	if m.FitPercent < littleExplained {
+		add("little-explained", "", "the plant alone explains little of the temperature (fit %s %%), the rest is taken for drift and noise: the model may be far from the heater; look at the figure before anything else", figure(m.FitPercent, 3))
+	}
+	for _, run := range runs {
+		if switched(run) {
+			add("switched-input", "", "%s: the input is switched on and off and was not averaged: a model of every switching is easily wrong by whole cycles; read the log with --cycle and the length of the cycle", run.Source.File)
+		}
+	}
 	for _, run := range runs {
 		for _, n := range run.Quality.Notes {
 			add(n.Code, "", "%s: %s", run.Source.File, n.Text)
@@ -33,6 +41,10 @@ func (out *outcome) warnings(ctx context.Context, runs []*data.Run) []Warning {
 	}
 	return list
 }
+
+// littleExplained is the fit, in percent, below which a plant that is said to be
+// known to a few percent deserves doubt (common practice, no source).
+const littleExplained = 40
 
 // warnNoise warns of noise that the noise model does not describe.
 func (out *outcome) warnNoise(m *Model, add warn) {

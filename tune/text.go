@@ -154,7 +154,7 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 		fmt.Fprintln(b, "  -", plain(r))
 	}
 	if len(g.Cures) > 0 {
-		fmt.Fprintln(b, "What would let it be met, any one of these")
+		fmt.Fprintln(b, "What would let it be met, each by itself unless it says otherwise")
 		for _, c := range g.Cures {
 			fmt.Fprintln(b, "  -", plain(c))
 		}

@@ -153,7 +153,7 @@ func (p *plan) controllerHint(courses []*course) (string, error) {
 	if ratio := product / square; square > 0 && math.Abs(ratio-1) > 0.1 {
 		return fmt.Sprintf("the logged moves of the input are about %s times those the gains ask for: look at the gain and its units", number(ratio)), nil
 	}
-	return "look at integral time, scan time, limits and moves by hand", nil
+	return "look at integral time, scan time, limits and moves by hand; where the run does not start at rest, leave its beginning out with --from", nil
 }
 
 // moveRatio runs the controller on the logged temperature and returns the
