@@ -224,6 +224,9 @@ func (m misfit) curved(scenes []*scene, e [2]float64, units CardUnits, add warn)
 	if !clearOf(change, seChange) || math.Abs(change) < 2*misfitSize {
 		return
 	}
+	if math.Abs(change) >= 2 {
+		return // half the range would cool: it was read from flicker of the logged input, not from bumps
+	}
 	lower, upper := m.plant.Gain*(1-change/2), m.plant.Gain*(1+change/2)
 	hint := "bump about the working point only, and tune for the larger gain"
 	if squared := (e[0] + 3*e[1]) / (3*e[0] + e[1]); m.law == ident.Linear && e[0] >= 0 && math.Abs(math.Log(upper/lower/squared)) < 0.5*math.Log(squared) {
