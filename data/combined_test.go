@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"context"
 	"fmt"
+	"io"
 	"math"
 	"math/rand/v2"
 	"os"
@@ -442,16 +443,22 @@ func TestCombined(t *testing.T) {
 	}
 	for seed := range draws {
 		m := newMess(t, seed)
-		runs, err := Read(context.Background(), "-", Options{Stdin: bytes.NewReader(m.text)})
-		bad := ""
-		if err != nil {
-			bad = err.Error()
-		} else {
-			bad = m.compare(runs[0])
-		}
-		if bad != "" {
-			t.Errorf("draw %d (%s): %s", seed, strings.Join(m.how, ", "), bad)
-		}
+		m.check(t, seed, bytes.NewReader(m.text))
+	}
+}
+
+// check reads what draw seed wrote and compares it with what it stands for.
+func (m *mess) check(t *testing.T, seed uint64, file io.Reader) {
+	t.Helper()
+	runs, err := Read(context.Background(), "-", Options{Stdin: file})
+	bad := ""
+	if err != nil {
+		bad = err.Error()
+	} else {
+		bad = m.compare(runs[0])
+	}
+	if bad != "" {
+		t.Errorf("draw %d (%s): %s", seed, strings.Join(m.how, ", "), bad)
 	}
 }
 

@@ -2,7 +2,6 @@ package data
 
 import (
 	"bytes"
-	"context"
 	"math"
 	"strings"
 	"testing"
@@ -113,15 +112,6 @@ func TestCombinedParquet(t *testing.T) {
 			m.t[i] *= scale
 		}
 		m.input = "V"
-		runs, err := Read(context.Background(), "-", Options{Stdin: &buf})
-		bad := ""
-		if err != nil {
-			bad = err.Error()
-		} else {
-			bad = m.compare(runs[0])
-		}
-		if bad != "" {
-			t.Errorf("draw %d (%s): %s", seed, strings.Join(m.how, ", "), bad)
-		}
+		m.check(t, seed, &buf)
 	}
 }

@@ -37,14 +37,22 @@ func isLong(cols []column, o *Options) bool {
 
 // tagColumns lists the columns of text that can be the tag; of several those
 // whose name says so best.
-func tagColumns(cols []column) (found []int) {
+func tagColumns(cols []column) []int {
+	return bestNamed(cols, roleTag, func(_ int, c column) bool {
+		r, _ := roleOf(c)
+		return c.class == texts && r != roleStatus && r != roleMode && c.repeats && !c.switched && !c.units
+	})
+}
+
+// bestNamed returns the columns whose names fit the role best, among those that
+// may have it.
+func bestNamed(cols []column, r role, may func(i int, c column) bool) (found []int) {
 	best := -1
 	for i, c := range cols {
-		r, _ := roleOf(c)
-		if c.class != texts || r == roleStatus || r == roleMode || !c.repeats || c.switched || c.units {
+		if !may(i, c) {
 			continue
 		}
-		score := words[roleTag].hit(c.name, wordsOf(c.name))
+		score := words[r].hit(c.name, wordsOf(c.name))
 		if score > best {
 			best, found = score, nil
 		}
@@ -102,21 +110,7 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 // bestByWords lists the columns that can be the tag or the value, those whose
 // name says so before others.
 func bestByWords(cols []column, taken map[int]bool, r role) []int {
-	var found []int
-	best := -1
-	for i, col := range cols {
-		if taken[i] || !fits(col.class, r) {
-			continue
-		}
-		score := words[r].hit(col.name, wordsOf(col.name))
-		if score > best {
-			best, found = score, nil
-		}
-		if score == best {
-			found = append(found, i)
-		}
-	}
-	return found
+	return bestNamed(cols, r, func(i int, c column) bool { return !taken[i] && fits(c.class, r) })
 }
 
 // longReader collects the records of a log in long form, tag by tag.

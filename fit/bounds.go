@@ -60,7 +60,7 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	b.members = []member{here}
 	if !s.white && !s.refuted {
 		for i, t := range ts {
-			nodes[i] = t.mixture(nodes[i][0], s.walk(i), level)
+			nodes[i] = t.mixture(nodes[i][0], s.walks[i], level)
 		}
 		b.members = members(nodes, rng)
 	}

@@ -22,110 +22,85 @@ type explained struct {
 	beta []float64 // baseline, drift, initial state
 }
 
-// everyRow visits what x leaves of the full log, piece by piece: row lo and
-// those after it. The slice may be written to.
-func (r *record) everyRow(x explained, visit func(lo int, left []float64)) {
-	root := r.root
-	response := root.sim.Clone().Pieces(x.st, x.lags, x.dead, false)
-	size := min(pieceRows, len(root.t))
-	y, state := make([]float64, size), make([]float64, size)
-	initial := r.initialRows(x)
-	for lo := 0; lo < len(root.t); {
-		n := response([][]float64{y})
-		out := y[:n]
-		t, logged := root.t[lo:lo+n], root.y[lo:lo+n]
-		base, slope := x.beta[0], 0.0
-		if r.drift {
-			slope = x.beta[1]
-		}
-		for k, v := range out {
-			out[k] = logged[k] - x.gain*v - base - slope*t[k]
-		}
-		if initial != nil {
-			initial(state[:n])
-			for k, v := range state[:n] {
-				out[k] -= v
-			}
-		}
-		visit(lo, out)
-		lo += n
-	}
-}
-
-// initialRows returns a function that writes what the initial state adds to
-// the next rows of the full log; nil at rest.
-func (r *record) initialRows(x explained) func(dst []float64) {
-	root, beta := r.root, x.beta[1:]
-	if r.drift {
-		beta = beta[1:]
-	}
-	switch r.rest {
-	case earlier:
-		next := root.sim.WithInput(r.fromFirstRow()).Pieces(x.st, x.lags, x.dead, false)
-		return func(dst []float64) {
-			next([][]float64{dst})
-			for k := range dst {
-				dst[k] *= beta[0]
-			}
-		}
-	case free:
-		cols := columns(max(x.st.Order(), 1), len(root.t))
-		root.sim.Clone().FreeStates(cols, x.st, x.lags, x.dead)
-		lo := 0
-		return func(dst []float64) {
-			clear(dst)
-			for i, b := range beta {
-				for k := range dst {
-					dst[k] += b * cols[i][lo+k]
-				}
-			}
-			lo += len(dst)
-		}
-	}
-	return nil
-}
-
-// fromFirstRow is an input that changes by one at the first row.
-func (r *record) fromFirstRow() ident.Input {
-	return ident.Input{At: []float64{r.root.t[0]}, Value: []float64{1}}
-}
-
-// part is a range of rows of a full log on which its noise is judged.
+// part is a range of rows of a full log.
 type part struct {
 	lo, hi int
 	sim    *ident.Simulator // of these rows
 }
 
+// everyRow visits what x leaves of the full log, piece by piece: row lo and
+// those after it. The slice may be written to.
+func (r *record) everyRow(x explained, visit func(lo int, left []float64)) {
+	r.rowsOf(x, part{0, len(r.root.t), r.root.sim.Clone()}, visit)
+}
+
 // residual returns what x leaves of a part of the full log.
 func (r *record) residual(x explained, p part) []float64 {
-	t, y := r.root.t[p.lo:p.hi], r.root.y[p.lo:p.hi]
-	out := p.sim.Response(nil, x.st, x.lags, x.dead)
-	for k, v := range out {
-		out[k] = y[k] - x.gain*v - x.beta[0]
-	}
-	j := 1
+	out := make([]float64, 0, p.hi-p.lo)
+	r.rowsOf(x, p, func(_ int, left []float64) { out = append(out, left...) })
+	return out
+}
+
+// rowsOf is everyRow for a part of the log.
+func (r *record) rowsOf(x explained, p part, visit func(lo int, left []float64)) {
+	takeInitial := r.initialRows(x, p)
+	response := p.sim.Pieces(x.st, x.lags, x.dead, false)
+	size := min(pieceRows, p.hi-p.lo)
+	y := make([]float64, size)
+	base, slope := x.beta[0], 0.0
 	if r.drift {
-		for k, v := range t {
-			out[k] -= x.beta[1] * v
+		slope = x.beta[1]
+	}
+	for lo := p.lo; lo < p.hi; {
+		n := response([][]float64{y})
+		out := y[:n]
+		t, logged := r.root.t[lo:lo+n], r.root.y[lo:lo+n]
+		for k, v := range out {
+			out[k] = logged[k] - x.gain*v - base - slope*t[k]
 		}
-		j = 2
+		takeInitial(out)
+		visit(lo, out)
+		lo += n
+	}
+}
+
+// initialRows returns a function that takes what the initial state adds out of
+// the next rows of a part.
+func (r *record) initialRows(x explained, p part) func(rows []float64) {
+	beta := x.beta[1:]
+	if r.drift {
+		beta = beta[1:]
+	}
+	take := func(rows, column []float64, times float64) {
+		for k, v := range column[:len(rows)] {
+			rows[k] -= times * v
+		}
 	}
 	switch r.rest {
 	case earlier:
-		s := p.sim.WithInput(r.fromFirstRow()).Response(nil, x.st, x.lags, x.dead)
-		for k, v := range s {
-			out[k] -= x.beta[j] * v
+		next := p.sim.WithInput(r.fromFirstRow()).Pieces(x.st, x.lags, x.dead, false)
+		buf := make([]float64, min(pieceRows, p.hi-p.lo))
+		return func(rows []float64) {
+			next([][]float64{buf[:len(rows)]})
+			take(rows, buf, beta[0])
 		}
-	case free:
+	case free: // from the first row of the log, whatever the part
 		cols := columns(max(x.st.Order(), 1), len(r.root.t))
 		r.root.sim.Clone().FreeStates(cols, x.st, x.lags, x.dead)
-		for i, b := range x.beta[j:] {
-			for k := range out {
-				out[k] -= b * cols[i][p.lo+k]
+		lo := p.lo
+		return func(rows []float64) {
+			for i, b := range beta {
+				take(rows, cols[i][lo:], b)
 			}
+			lo += len(rows)
 		}
 	}
-	return out
+	return func([]float64) {}
+}
+
+// fromFirstRow is an input that changes by one at the first row.
+func (r *record) fromFirstRow() ident.Input {
+	return ident.Input{At: []float64{r.root.t[0]}, Value: []float64{1}}
 }
 
 // isEven reports whether all rows lie at the step from one another, apart

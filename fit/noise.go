@@ -264,8 +264,7 @@ type whitener struct {
 	k    *kalman
 	even bool // the log is evenly sampled, without gaps
 
-	a, b      float64 // predicted correlated part at the last sample, and walk
-	sum       float64 // of squares
+	carried   // of a column passed alone
 	variances logProduct
 }
 
@@ -275,19 +274,34 @@ func (r *record) whitener(s shape) *whitener {
 	return w
 }
 
+// carried is what one column carries from row to row.
+type carried struct {
+	a, b float64 // predicted correlated part at the last sample, and walk
+	sum  float64 // of squares
+}
+
 // pass filters the next rows x at the times t.
 func (w *whitener) pass(x, t []float64) {
+	own := [1]carried{w.carried}
+	w.passAll([][]float64{x}, own[:], t)
+	w.carried = own[0]
+}
+
+// passAll filters the next rows of several columns, each with what it carries.
+func (w *whitener) passAll(cols [][]float64, carry []carried, t []float64) {
 	k := w.k
 	if k.s.unfiltered() {
-		w.sum += dot(x, x)
+		for j, x := range cols {
+			carry[j].sum += dot(x, x)
+		}
 		return
 	}
-	for i := 0; i < len(x); {
+	for i := 0; i < len(t); {
 		k.next(ident.Row{T: t[i], M: 1})
 		end := i + 1
 		switch {
 		case k.steady && w.even:
-			end = len(x)
+			end = len(t)
 			k.prevEnd = t[end-1]
 		case k.steady:
 			end = k.evenUntil(t, i)
@@ -297,10 +311,12 @@ func (w *whitener) pass(x, t []float64) {
 		} else {
 			w.variances.power(k.variance, end-i)
 		}
-		if k.s.walk > 0 {
-			w.following(x[i:end])
-		} else {
-			w.steadily(x[i:end])
+		for j, x := range cols {
+			if k.s.walk > 0 {
+				carry[j].following(k, x[i:end])
+			} else {
+				carry[j].steadily(k, x[i:end])
+			}
 		}
 		i = end
 	}
@@ -308,9 +324,9 @@ func (w *whitener) pass(x, t []float64) {
 
 // steadily filters rows under the coefficients in force. The recursion
 // a ← decay·a + gain·x waits for itself; four rows at a time it waits once.
-func (w *whitener) steadily(x []float64) {
-	a2, isd, d, g := w.k.a2, w.k.isd, w.k.decay, w.k.gain
-	a, sum := w.a, 0.0
+func (c *carried) steadily(k *kalman, x []float64) {
+	a2, isd, d, g := k.a2, k.isd, k.decay, k.gain
+	a, sum := c.a, 0.0
 	d2, d3, d4 := d*d, d*d*d, d*d*d*d
 	for ; len(x) >= 4; x = x[4:] {
 		v0, v1, v2, v3 := x[0], x[1], x[2], x[3]
@@ -332,15 +348,14 @@ func (w *whitener) steadily(x []float64) {
 		x[i] = r
 		sum += r * r
 	}
-	w.a = a
-	w.sum += sum
+	c.a = a
+	c.sum += sum
 }
 
 // following is steadily for noise that wanders.
-func (w *whitener) following(x []float64) {
-	k := w.k
+func (c *carried) following(k *kalman, x []float64) {
 	a2, isd, d, g, f := k.a2, k.isd, k.decay, k.gain, k.follow
-	a, b, sum := w.a, w.b, 0.0
+	a, b, sum := c.a, c.b, 0.0
 	for i, v := range x {
 		v -= b
 		e := v - a2*a
@@ -350,8 +365,8 @@ func (w *whitener) following(x []float64) {
 		x[i] = e
 		sum += e * e
 	}
-	w.a, w.b = a, b
-	w.sum += sum
+	c.a, c.b = a, b
+	c.sum += sum
 }
 
 // evenUntil passes the rows after row i that keep its distance, and returns

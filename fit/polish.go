@@ -163,10 +163,7 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 	if r.rest == earlier {
 		started = root.sim.WithInput(r.fromFirstRow()).Pieces(e.st, lags, dead, true)
 	}
-	white := make([]*whitener, m)
-	for j := range white {
-		white[j] = r.whitener(r.shape)
-	}
+	white, carry := r.whitener(r.shape), make([]carried, m)
 	size := min(pieceRows, len(root.t))
 	raw, cols := columns(nl+2, size), columns(m, size)
 	var start [][]float64
@@ -179,11 +176,10 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 		if started != nil {
 			started(start)
 		}
-		b.directions(cut(cols, n), cut(raw, n), cut(start, n), at.gain, beta, r, lo)
-		for j, c := range cols {
-			white[j].pass(c[:n], root.t[lo:lo+n])
-		}
-		addProducts(upper, cut(cols, n))
+		rows := cut(cols, n)
+		b.directions(rows, raw, start, at.gain, beta, r, lo)
+		white.passAll(rows, carry, root.t[lo:lo+n])
+		addProducts(upper, rows)
 		lo += n
 	}
 	for a := range m {

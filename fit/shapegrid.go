@@ -18,12 +18,9 @@ const likeWalk = 0.15
 // enough of the weight for intervals at the level.
 func (t *tangent) mixture(here node, walks *walkNodes, level float64) []node {
 	var plain, wandering lattice
-	switch {
-	case here.shape.walk > 0:
+	if here.shape.walk > 0 {
 		plain, wandering = t.grid(t.bestShape(nil), 2, plainReach), t.grid(here, 3, walkReach)
-	case walks == nil:
-		plain, wandering = t.grid(here, 2, plainReach), t.grid(t.bestWalk(here.shape), 3, walkReach)
-	default:
+	} else {
 		plain, wandering = t.grid(here, 2, plainReach), walks.at(t)
 	}
 	least, most := t.walkRange()

@@ -90,14 +90,6 @@ func (s *study) fit(st ident.Structure, shorter *fitted) *fitted {
 	return s.fitFrom(e, e.starts(s.tau, s.dead, from))
 }
 
-// walk is those of a record; nil when none are known.
-func (s *study) walk(record int) *walkNodes {
-	if record >= len(s.walks) {
-		return nil
-	}
-	return s.walks[record]
-}
-
 // survey averages the records for the search among structures: the single lag
 // has the longest dead time of all, being late for all the lags it lacks.
 func (s *study) survey() {

@@ -123,16 +123,11 @@ const manySwitchings = 12
 // switched reports whether the input is ON and OFF in words, as of a drive that
 // switches all the time, and was not averaged over its cycle.
 func switched(run *data.Run) bool {
-	words, changes := false, 0
-	for _, n := range run.Quality.Notes {
-		switch n.Code {
-		case "input-switched":
-			words = true
-		case "cycle-mean":
-			return false
-		}
+	if !noted(run, "input-switched") || noted(run, "cycle-mean") {
+		return false
 	}
-	for k := 1; words && k < len(run.U); k++ {
+	changes := 0
+	for k := 1; k < len(run.U); k++ {
 		if run.U[k] != run.U[k-1] {
 			changes++
 		}
@@ -141,8 +136,8 @@ func switched(run *data.Run) bool {
 }
 
 // noted reports whether reading the log left a note of the code.
-func (j *judgement) noted(code string) bool {
-	return slices.ContainsFunc(j.run.Quality.Notes, func(n data.Note) bool { return n.Code == code })
+func noted(run *data.Run, code string) bool {
+	return slices.ContainsFunc(run.Quality.Notes, func(n data.Note) bool { return n.Code == code })
 }
 
 // largestRise is that of the bumps, without bumps the swing of the temperature.
@@ -172,7 +167,7 @@ func (j *judgement) cap(verdicts []Verdict) {
 		if v.Verdict == good && v.Parameter == "dead_time" && j.open != closedEnds {
 			all = append([]limitation{{"so short a rise does not tell dead time from lag", j.cures("dead_time", math.Inf(1), 0)[0]}}, all...)
 		}
-		if v.Parameter == "dead_time" && j.noted("clock-coarse") {
+		if v.Parameter == "dead_time" && noted(j.run, "clock-coarse") {
 			all = append(all[:len(all):len(all)], limitation{"the clock is coarser than the sampling", "log the time with at least one more digit"})
 		}
 		for _, l := range all {

@@ -255,10 +255,15 @@ func highest(grid []float64, f func(float64) float64) (best, at float64) {
 // goldenMax returns the maximum of a function with one peak between a and b
 // by golden sections.
 func goldenMax(f func(float64) float64, a, b float64) (x, y float64) {
+	return goldenSections(f, a, b, 60)
+}
+
+// goldenSections is goldenMax with at most so many sections.
+func goldenSections(f func(float64) float64, a, b float64, sections int) (x, y float64) {
 	const g = 0.6180339887498949
 	c, d := b-g*(b-a), a+g*(b-a)
 	fc, fd := f(c), f(d)
-	for range 60 {
+	for range sections {
 		if b-a <= 1e-10*b {
 			break
 		}
