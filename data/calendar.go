@@ -14,12 +14,16 @@ import (
 //	5/1/2026 10:00:00 PM           slashes or dashes: in the clock's order
 //	05-Jan-2026 10:00              month by name
 //	20260105T100000Z               ISO 8601 basic format
+//	Mon Jan  5 10:00:00 2026       the year last, as ctime of ISO C writes it
 func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
 	alt = noTime
 	rest, hit := c.cachedDate(b)
 	day := c.day
 	if !hit {
 		if ns, ok := compactStamp(b); ok {
+			return ns, noTime, true
+		}
+		if ns, ok := c.parseYearLast(b); ok {
 			return ns, noTime, true
 		}
 		var first, second int64
@@ -64,6 +68,41 @@ func withoutWeekday(b []byte) []byte {
 		return nil
 	}
 	return bytes.TrimLeft(b[n:], "., ")
+}
+
+// parseYearLast reads a month by name, a day, a time of day and the year, with
+// or without a zone in front of the year.
+func (c *clock) parseYearLast(b []byte) (ns int64, ok bool) {
+	if len(b) < len("Jan 5 10:00 2026") || b[len(b)-5] != ' ' {
+		return 0, false
+	}
+	year, _, n := dateField(b[len(b)-4:])
+	if n != 4 {
+		return 0, false
+	}
+	if ns, ok = c.parseMonthFirst(b[:len(b)-5], year); !ok { // mar is a month, and a day of the week
+		ns, ok = c.parseMonthFirst(withoutWeekday(b[:len(b)-5]), year)
+	}
+	return ns, ok
+}
+
+// parseMonthFirst reads the name of a month, a day, a time of day and a zone.
+func (c *clock) parseMonthFirst(b []byte, year int) (ns int64, ok bool) {
+	month, named, w := dateField(b)
+	if !named {
+		return 0, false
+	}
+	b = bytes.TrimLeft(b[w:], " ")
+	d, named, w := dateField(b)
+	if w == 0 || named || w == len(b) || b[w] != ' ' {
+		return 0, false
+	}
+	day, ok := dayStart(year, month, d)
+	if !ok {
+		return 0, false
+	}
+	tod, east, ok := c.parseTimeAndZone(bytes.Trim(b[w:], " "))
+	return day + tod - east, ok
 }
 
 // isStampGap tells the characters between a date and a time of day.

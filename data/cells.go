@@ -33,11 +33,15 @@ func cutCell(line []byte, delim byte) (cell, rest []byte, more bool) {
 			return cell, nil, false
 		}
 	}
-	i := bytes.IndexByte(line, delim)
-	if i < 0 {
-		return trimBlanks(line), nil, false
+	from := protectedLength(trimmed, delim)
+	if from > 0 {
+		line = trimmed
 	}
-	return trimBlanks(line[:i]), line[i+1:], true
+	i := bytes.IndexByte(line[from:], delim)
+	if i < 0 {
+		return unprotect(trimBlanks(line)), nil, false
+	}
+	return unprotect(trimBlanks(line[:from+i])), line[from+i+1:], true
 }
 
 func splitBlanks(dst [][]byte, line []byte) [][]byte {
@@ -55,9 +59,9 @@ func splitBlanks(dst [][]byte, line []byte) [][]byte {
 			}
 		}
 		if n < 0 {
-			return append(dst, line)
+			return append(dst, unprotect(line))
 		}
-		dst = append(dst, line[:n])
+		dst = append(dst, unprotect(line[:n]))
 		line = line[n:]
 	}
 }
@@ -67,5 +71,34 @@ func unquote(b []byte) []byte {
 	if bytes.Contains(b, []byte(`""`)) {
 		b = bytes.ReplaceAll(b, []byte(`""`), []byte(`"`))
 	}
-	return trimBlanks(b)
+	return unprotect(trimBlanks(b))
+}
+
+// protectedLength is the length of ="…" at the start of b, 0 when b begins
+// with anything else: a delimiter may stand inside.
+func protectedLength(b []byte, delim byte) int {
+	if len(b) < 3 || b[0] != '=' || b[1] != '"' {
+		return 0
+	}
+	return 1 + max(quotedLength(b[1:], delim), 0)
+}
+
+// unprotect takes away what keeps a spreadsheet from turning a cell into
+// something else (="007", '1.5) and quotes of one stroke ('1.5').
+func unprotect(cell []byte) []byte {
+	if len(cell) < 2 || cell[0] != '=' && cell[0] != '\'' {
+		return cell
+	}
+	last := cell[len(cell)-1]
+	switch inside := cell[1:]; {
+	case cell[0] == '\'' && last == '\'':
+		return trimBlanks(inside[:len(inside)-1])
+	case cell[0] == '\'':
+		return trimBlanks(inside)
+	case len(inside) > 1 && inside[0] == '"' && last == '"':
+		return trimBlanks(inside[1 : len(inside)-1])
+	case inside[0]-'0' <= 9 || bytes.IndexByte([]byte("+-."), inside[0]) >= 0:
+		return inside
+	}
+	return cell
 }

@@ -71,7 +71,7 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 		c.expect = s.expectedRows(sample)
 	}
 	lines := newLineReader(s.path, io.MultiReader(bytes.NewReader(sample), text))
-	lines.onlyCR, lines.delim = d.onlyCR, d.delim
+	lines.onlyCR, lines.whole, lines.delim = d.onlyCR, d.whole, d.delim
 	if err := c.readRows(ctx, lines); err != nil {
 		return nil, nil, err
 	}

@@ -13,6 +13,7 @@ type dialect struct {
 	delim  byte
 	format numberFormat
 	onlyCR bool // lines end with CR alone
+	whole  bool // each line is one quoted cell that holds a row
 
 	fields int // cells in a row of data
 	first  int // line of the first row of data
@@ -72,6 +73,11 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	if len(physical) == 0 {
 		return nil, fmt.Errorf("%s: is empty", path)
 	}
+	if d.whole = areWrapped(physical); d.whole {
+		if physical, err = d.lines(path, sample, whole, 0); err != nil {
+			return nil, err
+		}
+	}
 	d.delim, d.fields = findDelimiter(physical)
 	if d.fields < 2 {
 		return nil, fmt.Errorf("%s: no rows of two or more numbers found: is this a log of columns with a delimiter?", path)
@@ -88,7 +94,7 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 // lines are left out, and the last line when the sample ends within it.
 func (d *dialect) lines(path string, sample []byte, whole bool, delim byte) ([]line, error) {
 	r := newLineReader(path, bytes.NewReader(sample))
-	r.onlyCR, r.delim = d.onlyCR, delim
+	r.onlyCR, r.whole, r.delim = d.onlyCR, d.whole, delim
 	if delim == 0 { // before the delimiter is known quotes mean nothing
 		r.quoted = false
 	}

@@ -40,7 +40,7 @@ func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 	}
 	d.header = append(d.header, rows[0].text)
 	names = cellNames(rows[0].cells)
-	if len(names) == d.fields-1 && names[len(names)-1] != "" && isRowName(data, names, d) {
+	if len(names) == d.fields-1 && names[len(names)-1] != "" && (isRowName(data, names, d) || isWeekday(data.cells)) {
 		d.shift = 1
 		return names, units
 	}
@@ -117,6 +117,12 @@ func isRowName(data line, names []string, d *dialect) bool {
 	last := data.cells[len(data.cells)-1]
 	v, _, ok := d.number(data.cells[0])
 	return len(data.cells) == len(names)+1 && len(last) > 0 && ok && v == math.Trunc(v)
+}
+
+// isWeekday tells that a row has one cell more because its stamp has a comma
+// behind the day of the week (Tue, 01 Dec 2026 20:20:05).
+func isWeekday(cells [][]byte) bool {
+	return len(cells) > 2 && len(withoutWeekday(cells[0])) == 0 && withoutWeekday(append(slices.Clone(cells[0]), ' ', '1')) != nil && isStamp(cells[1])
 }
 
 // commentHeader takes the last comment above the data for the header when it

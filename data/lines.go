@@ -24,6 +24,7 @@ type lineReader struct {
 
 	onlyCR bool // lines end with CR alone
 	quoted bool // a quote was seen: a record may hold line ends
+	whole  bool // each line is one quoted cell that holds a row
 	delim  byte // delimiter, for the end of quoted cells
 	lastNL bool // the text read so far ends with a line end
 
@@ -44,11 +45,15 @@ func (l *lineReader) read() ([]byte, error) {
 			line := l.buf[l.lo : l.lo+n]
 			l.line = l.next
 			l.next++
-			if l.quoted {
+			if l.quoted && !l.whole {
 				l.next += bytes.Count(line, []byte{'\n'})
 			}
 			l.lo += end
-			return bytes.TrimRight(line, "\r"), nil
+			line = bytes.TrimRight(line, "\r")
+			if l.whole {
+				line = unwrapLine(line)
+			}
+			return line, nil
 		}
 		if l.eof {
 			if l.err != nil {
@@ -57,7 +62,7 @@ func (l *lineReader) read() ([]byte, error) {
 			return nil, io.EOF
 		}
 		from = l.hi - l.lo
-		if l.quoted {
+		if l.quoted && !l.whole {
 			from = 0
 		}
 		if err := l.fill(); err != nil {
@@ -70,7 +75,7 @@ func (l *lineReader) read() ([]byte, error) {
 // the line end. At the end of the text the rest is a line.
 func (l *lineReader) find(from int) (n, end int, ok bool) {
 	rest := l.buf[l.lo:l.hi]
-	if l.quoted {
+	if l.quoted && !l.whole {
 		n = recordEnd(rest, l.delim, l.eof)
 	} else if n = bytes.IndexByte(rest[from:], '\n'); n >= 0 {
 		n += from
