@@ -86,11 +86,18 @@ func (c *Controller) limit(l Limits) {
 // so that setpoint r and temperature y, held, give the output u. A P
 // controller has no integral to set: it starts from its bias, and u only says
 // where its rate limit begins.
-func (c *Controller) Start(r, y, u float64) {
-	c.yf, c.y, c.slope, c.e, c.u = y, y, 0, r-y, u
+func (c *Controller) Start(r, y, u float64) { c.StartAt(r, y, u, u, 0) }
+
+// StartAt starts a controller in the middle of its work, from what a log shows
+// of it: the filtered temperature moves by slope per second, the output is u,
+// and setpoint and temperature would give want if nothing limited it. Where u
+// sits at no limit the two are the same.
+func (c *Controller) StartAt(r, y, u, want, slope float64) {
+	c.yf, c.y, c.slope, c.u = y-c.tf*slope, y, slope, u
+	c.e = r - c.yf
 	c.i = c.bias
 	if c.integral() {
-		c.i = u - c.kc*(c.b*r-y)
+		c.i = want - c.kc*(c.b*r-c.yf-c.td*slope)
 	}
 }
 

@@ -74,6 +74,12 @@ func (p *plan) automatic(run *data.Run) ([]*course, error) {
 		if err != nil {
 			return nil, err
 		}
+		if late := c.firstScan(); late > 0 {
+			s.lo += late
+			if c, err = newCourse(&only, s, &q); err != nil {
+				return nil, err
+			}
+		}
 		out = append(out, c)
 	}
 	return out, nil
@@ -118,6 +124,10 @@ func (p *plan) compareInputs(gains *tune.Gains, courses []*course) (match, error
 	var sumU, sumY float64
 	for _, c := range courses {
 		y, u := r.buffers(len(c.t))
+		var err error
+		if r.begin, err = p.beginningOf(gains, c); err != nil {
+			return m, err
+		}
 		if err := r.replay(c, 0, y, u); err != nil {
 			return m, err
 		}
@@ -153,7 +163,7 @@ func (p *plan) controllerHint(courses []*course) (string, error) {
 	if ratio := product / square; square > 0 && math.Abs(ratio-1) > 0.1 {
 		return fmt.Sprintf("the logged moves of the input are about %s times those the gains ask for: look at the gain and its units", number(ratio)), nil
 	}
-	return "look at integral time, scan time, limits and moves by hand; where the run does not start at rest, leave its beginning out with --from", nil
+	return "look at integral time, scan time, limits and moves by hand", nil
 }
 
 // moveRatio runs the controller on the logged temperature and returns the
@@ -166,7 +176,11 @@ func (p *plan) moveRatio(c *course) (product, square float64, err error) {
 	if err != nil {
 		return 0, 0, err
 	}
-	control.Start(c.before, c.y[0], c.u[0])
+	begin, err := p.beginningOf(p.logged, c)
+	if err != nil {
+		return 0, 0, err
+	}
+	begin.start(control, c)
 	last := c.u[0]
 	for i := 1; i < len(c.t); i++ {
 		u := last
@@ -230,71 +244,59 @@ type departure struct{ size, at float64 }
 const maxTested = 5000
 
 // insideBand counts rows whose temperature lies in the middle share of the
-// distribution that plants and noise give it, each plant starting from the
-// level of the log's first rows.
+// distribution that plants and noise give it, each plant starting in whatever
+// state the log speaks for.
 func (p *plan) insideBand(c *course) (rows, inside int, far departure) {
 	stride := 1 + len(c.t)/maxTested
 	simulator := ident.NewSimulator(c.t, ident.HeldInput(c.t, c.u, p.law))
-	below := make([]float64, len(c.t))
-	unit := make([]float64, len(c.t))
+	_, far = p.unexplained(c, p.best, simulator)
+	below, seen := make([]float64, len(c.t)), make([]int, len(c.t)) // by how many plants
 	sd := math.Hypot(p.noise.SD, 1e-9*max(1, math.Abs(c.y[0])))
-	for k, g := range append([]ident.Plant{p.best}, p.plants...) {
-		simulator.Response(unit, g.Structure, g.Lags, g.DeadTime)
-		if k == 0 {
-			far = farthest(c, g.Gain, unit)
-			continue
-		}
-		left := p.unexplained(c, g, unit)
-		for i := 0; i < len(left); i += stride {
-			below[i] += distuv.UnitNormal.CDF(left[i] / sd)
+	for _, g := range p.plants {
+		left, _ := p.unexplained(c, g, simulator)
+		for i := 0; i < len(c.t); i += stride {
+			if !math.IsNaN(left[i]) {
+				below[i] += distuv.UnitNormal.CDF(left[i] / sd)
+				seen[i]++
+			}
 		}
 	}
 	tail := (1 - p.options.Confidence) / 2
 	for i := 0; i < len(below); i += stride {
+		if seen[i] == 0 {
+			continue
+		}
 		rows++
-		if f := below[i] / float64(len(p.plants)); f >= tail && f <= 1-tail {
+		if f := below[i] / float64(seen[i]); f >= tail && f <= 1-tail {
 			inside++
 		}
 	}
 	return rows, inside, far
 }
 
-// farthest returns where the log goes farthest from the plant's response,
-// from how it stood in the first rows.
-func farthest(c *course, gain float64, unit []float64) (far departure) {
-	left := make([]float64, len(unit))
+// unexplained returns what plant g leaves of the logged temperature after a
+// level and a free start are fitted along, NaN in the rows of the first dead
+// time, whose input came before the log; and where the log goes farthest from
+// the plant, seen from how it stood in the first rows. The level is set by the
+// median in the end, so that a load in a part of the run does not shift the
+// rest.
+func (p *plan) unexplained(c *course, g ident.Plant, simulator *ident.Simulator) (left []float64, far departure) {
+	left = simulator.Response(nil, g.Structure, g.Lags, g.DeadTime)
 	for i := range left {
-		left[i] = c.y[i] - gain*unit[i]
+		left[i] = c.y[i] - g.Gain*left[i]
 	}
-	level := startLevel(left)
-	for i, v := range left {
-		if math.Abs(v-level) > math.Abs(far.size) {
-			far = departure{v - level, c.t[i]}
+	first := p.firstKnown(c.t, g)
+	p.takeStart(c.t[first:], left[first:], g)
+	level := startLevel(left[first:])
+	for i := first; i < len(left); i++ {
+		if v := left[i] - level; math.Abs(v) > math.Abs(far.size) {
+			far = departure{v, c.t[i]}
 		}
 	}
-	return far
-}
-
-// unexplained returns what plant g, of unit response unit, leaves of the
-// logged temperature after a level and a start off rest, fading with the
-// longest lag, are fitted along. The level is set by the median in the end, so
-// that a load in a part of the run does not shift the rest.
-func (p *plan) unexplained(c *course, g ident.Plant, unit []float64) []float64 {
-	left := make([]float64, len(unit))
-	for i := range left {
-		left[i] = c.y[i] - g.Gain*unit[i]
-	}
-	ones, fading := p.startColumns(c.t)
-	columns := [][]float64{ones, fading}
-	step := medianInterval(c.t)
-	if beta, _, ok := instrumental(c.t, step, p.cardCorrelation(step), left, columns, columns); ok {
-		for i := range left {
-			left[i] -= beta[0] + beta[1]*fading[i]
-		}
-	}
-	level := median(left)
+	level = median(left[first:])
 	for i := range left {
 		left[i] -= level
 	}
-	return left
+	fill(left[:first], math.NaN())
+	return left, far
 }

@@ -17,7 +17,8 @@ type runner struct {
 	steppers []*tune.PlantStepper
 	scan     float64 // of the controller
 	control  *tune.Controller
-	y, u     []float64 // buffers
+	begin    *beginning // of the controller; nil: at rest
+	y, u     []float64  // buffers
 }
 
 func newRunner(law ident.Law, gains *tune.Gains, plants []ident.Plant) *runner {
@@ -66,13 +67,14 @@ func (r *runner) ready(c *course, k int) (*tune.PlantStepper, *tune.Controller, 
 //
 // The controller starts without a bump at the first row: there it holds the
 // logged input, and its next scan is one scan time later. A setpoint that
-// steps at the first row acts at once.
+// steps at the first row acts at once. With a beginning set it starts in the
+// middle of its work.
 func (r *runner) replay(c *course, k int, y, u []float64) error {
 	plant, control, err := r.ready(c, k)
 	if err != nil {
 		return err
 	}
-	control.Start(c.before, c.y[0], c.u[0])
+	r.begin.start(control, c)
 	held := c.u[0]
 	if c.r[0] != c.before {
 		held = control.Next(c.r[0], c.y[0])
