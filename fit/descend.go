@@ -5,31 +5,48 @@ import (
 	"sort"
 )
 
-// solveDamped solves (A + lambda·diag A)·x = b over the indices in free by
-// Cholesky; ok is false when the matrix is not positive definite.
-func solveDamped(a [][]float64, b []float64, free []int, lambda float64) (x []float64, ok bool) {
+// damped solves systems of a few unknowns in memory of its own; the zero value is
+// ready to use.
+type damped struct {
+	l [][]float64 // Cholesky factor
+	x []float64
+}
+
+// factor factors (A + lambda·diag A) over the indices in free; ok is false when
+// the matrix is not positive definite.
+func (d *damped) factor(a [][]float64, free []int, lambda float64) (ok bool) {
 	m := len(free)
-	l := columns(m, m)
+	if len(d.l) < m {
+		d.l, d.x = columns(m, m), make([]float64, m)
+	}
 	for i := range m {
+		row := d.l[i]
 		for j := 0; j <= i; j++ {
 			s := a[free[i]][free[j]]
 			if i == j {
 				s *= 1 + lambda
 			}
 			for k := range j {
-				s -= l[i][k] * l[j][k]
+				s -= row[k] * d.l[j][k]
 			}
 			if i == j {
 				if !(s > 1e-14*a[free[i]][free[i]]) {
-					return nil, false
+					return false
 				}
-				l[i][i] = math.Sqrt(s)
+				row[i] = math.Sqrt(s)
 			} else {
-				l[i][j] = s / l[j][j]
+				row[j] = s / d.l[j][j]
 			}
 		}
 	}
-	x = make([]float64, m)
+	return true
+}
+
+// solve returns the solution for the right-hand side b, of which it takes the
+// indices in free. It is valid until the next call.
+func (d *damped) solve(b []float64, free []int) []float64 {
+	m, l := len(free), d.l
+	x := d.x[:m]
 	for i := range m {
 		s := b[free[i]]
 		for k := range i {
@@ -44,14 +61,18 @@ func solveDamped(a [][]float64, b []float64, free []int, lambda float64) (x []fl
 		}
 		x[i] = s / l[i][i]
 	}
-	return x, true
+	return x
 }
 
 // reduced returns the Gauss-Newton matrix of eta with the gain eliminated
 // (Kaufman's form of variable projection; from memory).
+// It is valid until the next call.
 func (e *engine) reduced(p *point) [][]float64 {
 	n := len(p.eta)
-	a := columns(n, n)
+	if len(e.square) != n {
+		e.square = columns(n, n)
+	}
+	a := e.square
 	for i := range n {
 		for j := range n {
 			a[i][j] = p.normal[i+1][j+1]
@@ -64,22 +85,25 @@ func (e *engine) reduced(p *point) [][]float64 {
 }
 
 // movable lists the parameters that may move from p: not held, and not
-// pressed against a bound.
+// pressed against a bound. The list is valid until the next call.
 func (e *engine) movable(p *point, a [][]float64) []int {
-	var free []int
+	free := e.free[:0]
 	for j := range p.eta {
 		out := (p.eta[j] <= e.lower[j] && p.grad[j] < 0) || (p.eta[j] >= e.upper[j] && p.grad[j] > 0)
 		if !e.held[j] && !out && a[j][j] > 0 {
 			free = append(free, j)
 		}
 	}
+	e.free = free
 	return free
 }
 
 // advance takes the step x of the parameters in free from p, kept inside the
-// bounds, and returns the new eta with the reduction the gradient promises.
+// bounds, and returns the new eta, valid until the next call, with the reduction
+// the gradient promises.
 func (e *engine) advance(p *point, free []int, x []float64) (next []float64, predicted float64) {
-	next = append([]float64(nil), p.eta...)
+	e.next = append(e.next[:0], p.eta...)
+	next = e.next
 	for i, j := range free {
 		v := p.eta[j] + x[i]
 		if j < e.ng { // a lag changes by at most a factor in one step, but can leave zero
@@ -94,7 +118,8 @@ func (e *engine) advance(p *point, free []int, x []float64) (next []float64, pre
 // descend runs a damped Gauss-Newton iteration with bounds from eta until the
 // sum of squares changes by less than tol, relative.
 func (e *engine) descend(eta []float64, tol float64) point {
-	start := append([]float64(nil), eta...)
+	e.next = append(e.next[:0], eta...)
+	start := e.next
 	for j := range start {
 		start[j] = math.Min(math.Max(start[j], e.lower[j]), e.upper[j])
 	}
@@ -108,12 +133,11 @@ func (e *engine) descend(eta []float64, tol float64) point {
 		}
 		improved := false
 		for lambda < 1e12 {
-			x, ok := solveDamped(a, p.grad, free, lambda)
-			if !ok {
+			if !e.damped.factor(a, free, lambda) {
 				lambda = math.Max(10*lambda, 1e-9)
 				continue
 			}
-			next, predicted := e.advance(&p, free, x)
+			next, predicted := e.advance(&p, free, e.damped.solve(p.grad, free))
 			if predicted <= 0.1*tol*p.s {
 				return p
 			}

@@ -3,6 +3,8 @@ package fit
 import (
 	"math"
 
+	"gonum.org/v1/gonum/floats"
+
 	"lagwright/ident"
 )
 
@@ -25,6 +27,14 @@ type engine struct {
 	gainFix bool
 
 	work []workspace
+
+	// Memory of a step of the descent.
+	spread []float64
+	inner  [][]float64
+	square [][]float64
+	free   []int
+	next   []float64
+	damped damped
 }
 
 // workspace holds the columns of one record.
@@ -36,6 +46,7 @@ type workspace struct {
 	extra [][]float64 // orthonormal columns of the initial state
 	basis [][]float64 // the record's and extra
 	spare [][]float64 // memory of extra
+	state [][]float64 // derivatives of the initial state's part
 }
 
 // point is an evaluated set of parameters.
@@ -112,18 +123,46 @@ func (e *engine) setGroups(groups []int) {
 }
 
 // lags spreads the fitted lags over the elements of the structure.
-func (e *engine) lags(eta []float64) []float64 {
-	out := make([]float64, e.nl)
-	for i, g := range e.groups {
-		out[i] = eta[g]
+func (e *engine) lags(eta []float64) []float64 { return e.spreadTo(make([]float64, 0, e.nl), eta) }
+
+func (e *engine) spreadTo(out, eta []float64) []float64 {
+	for _, g := range e.groups {
+		out = append(out, eta[g])
 	}
 	return out
 }
 
+// newPoint is the point at eta, to be evaluated: all its numbers lie together,
+// since thousands are made.
+func (e *engine) newPoint(eta []float64, full bool) point {
+	n, m := len(eta), len(e.recs)
+	size := n + m
+	if full {
+		size += n + (n+1)*(n+1)
+	}
+	buf := make([]float64, size)
+	cut := func(k int) []float64 {
+		part := buf[:k:k]
+		buf = buf[k:]
+		return part
+	}
+	p := point{eta: cut(n), part: cut(m)}
+	copy(p.eta, eta)
+	if full {
+		p.grad = cut(n)
+		p.normal = make([][]float64, n+1)
+		for i := range p.normal {
+			p.normal[i] = cut(n + 1)
+		}
+	}
+	return p
+}
+
 // eval evaluates eta; with full, the Gauss-Newton figures too.
 func (e *engine) eval(eta []float64, full bool) point {
-	p := point{eta: append([]float64(nil), eta...)}
-	lags, dead := e.lags(eta), eta[e.ng]
+	p := e.newPoint(eta, full)
+	e.spread = e.spreadTo(e.spread[:0], eta)
+	lags, dead := e.spread, eta[e.ng]
 	var gg, gy float64
 	for i, r := range e.recs {
 		w := &e.work[i]
@@ -143,14 +182,12 @@ func (e *engine) eval(eta []float64, full bool) point {
 	}
 	for i, r := range e.recs {
 		w := &e.work[i]
-		for k, v := range r.yw {
-			w.r[k] = v - p.gain*w.g[k]
-		}
+		floats.AddScaledTo(w.r, r.yw, -p.gain, w.g)
 		if len(w.extra) > 0 {
 			project(w.r, w.extra)
 		}
 		ss := dot(w.r, w.r)
-		p.part = append(p.part, ss)
+		p.part[i] = ss
 		p.s += r.weight * ss
 	}
 	if full {
@@ -214,8 +251,6 @@ func (e *engine) addExtra(r *record, w *workspace, c []float64) {
 // gaussNewton fills normal and grad of p from the sensitivities.
 func (e *engine) gaussNewton(p *point) {
 	n := e.ng + 1
-	p.normal = columns(n+1, n+1)
-	p.grad = make([]float64, n)
 	for i, r := range e.recs {
 		w := &e.work[i]
 		states := e.stateDerivatives(r, w, p)
@@ -226,21 +261,19 @@ func (e *engine) gaussNewton(p *point) {
 				if (l < e.nl && e.groups[l] != j) || (l == e.nl && j != e.ng) {
 					continue
 				}
-				d := w.raw[l+1]
-				for k, v := range d {
-					c[k] += p.gain * v
-				}
+				floats.AddScaled(c, p.gain, w.raw[l+1])
 				if states != nil {
-					for k, v := range states[l] {
-						c[k] += v
-					}
+					floats.Add(c, states[l])
 				}
 			}
 		}
 		r.filter.applyAll(w.jac[:n])
 		// The residual and g are free of the basis already; the columns are
 		// freed of it in their products, which saves passes over the rows.
-		in := columns(n, len(w.basis))
+		if len(e.inner) < n || len(e.inner[0]) != len(w.basis) {
+			e.inner = columns(n, len(w.basis))
+		}
+		in := e.inner[:n]
 		for j := range n {
 			for l, q := range w.basis {
 				in[j][l] = dot(q, w.jac[j])
@@ -269,16 +302,20 @@ func (e *engine) stateDerivatives(r *record, w *workspace, p *point) [][]float64
 		return nil
 	}
 	coef := e.stateCoefficients(r, w, p)
-	out := columns(e.nl+1, len(r.t))
+	if w.state == nil {
+		w.state = columns(e.nl+1, len(r.t))
+	}
+	out := w.state
 	if r.rest == earlier {
 		for l := range e.nl + 1 {
-			for k, v := range w.start[l+1] {
-				out[l][k] = coef[0] * v
-			}
+			floats.ScaleTo(out[l], coef[0], w.start[l+1])
 		}
 		return out
 	}
 	// Free states: central differences of their columns, which are smooth in the lags.
+	for l := range out {
+		clear(out[l])
+	}
 	lags, dead := e.lags(p.eta), p.eta[e.ng]
 	up, down := columns(len(w.start), len(r.t)), columns(len(w.start), len(r.t))
 	for l := range e.nl {
@@ -317,14 +354,10 @@ func (r *record) solveLinear(w *workspace, gain float64) (cols [][]float64, beta
 		cols = append(cols, w.start...)
 	}
 	left = make([]float64, len(r.t))
-	for k := range left {
-		left[k] = r.y[k] - gain*w.raw[0][k]
-	}
+	floats.AddScaledTo(left, r.y, -gain, w.raw[0])
 	beta = weightedSolve(&r.filter, cols, left)
 	for j, c := range cols {
-		for k, v := range c {
-			left[k] -= beta[j] * v
-		}
+		floats.AddScaled(left, -beta[j], c)
 	}
 	return cols, beta, left
 }
@@ -350,23 +383,17 @@ func weightedSolve(f *filter, cols [][]float64, rhs []float64) []float64 {
 				}
 				s := dot(q[i], x)
 				rr[i][j] += s
-				for k, v := range q[i] {
-					x[k] -= s * v
-				}
+				floats.AddScaled(x, -s, q[i])
 			}
 		}
 		after := math.Sqrt(dot(x, x))
 		if !(after > 1e-10*before) {
 			continue
 		}
-		for k := range x {
-			x[k] /= after
-		}
+		floats.Scale(1/after, x)
 		q[j], rr[j][j] = x, after
 		z[j] = dot(x, y)
-		for k, v := range x {
-			y[k] -= z[j] * v
-		}
+		floats.AddScaled(y, -z[j], x)
 	}
 	beta := make([]float64, m)
 	for j := m - 1; j >= 0; j-- {

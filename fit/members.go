@@ -78,31 +78,29 @@ func invert(a [][]float64) [][]float64 {
 			idx = append(idx, i)
 		}
 	}
-	out := columns(len(a), len(a))
-	for ridge := 0.0; ; ridge = math.Max(10*ridge, 1e-12) {
-		ok := true
-		scaled := columns(len(a), len(a))
-		for _, i := range idx {
-			for _, j := range idx {
-				scaled[i][j] = a[i][j] / math.Sqrt(a[i][i]*a[j][j])
-			}
-		}
+	both := columns(2*len(a), len(a))
+	out, scaled := both[:len(a):len(a)], both[len(a):]
+	for _, i := range idx {
 		for _, j := range idx {
-			unit := make([]float64, len(a))
-			unit[j] = 1
-			x, good := solveDamped(scaled, unit, idx, ridge)
-			if !good {
-				ok = false
-				break
-			}
-			for k, i := range idx {
-				out[i][j] = x[k] / math.Sqrt(a[i][i]*a[j][j])
-			}
+			scaled[i][j] = a[i][j] / math.Sqrt(a[i][i]*a[j][j])
 		}
-		if ok || ridge > 1 {
+	}
+	var d damped
+	for ridge := 0.0; !d.factor(scaled, idx, ridge); ridge = math.Max(10*ridge, 1e-12) {
+		if ridge > 1 {
 			return out
 		}
 	}
+	unit := make([]float64, len(a))
+	for _, j := range idx {
+		unit[j] = 1
+		for k, x := range d.solve(unit, idx) {
+			i := idx[k]
+			out[i][j] = x / math.Sqrt(a[i][i]*a[j][j])
+		}
+		unit[j] = 0
+	}
+	return out
 }
 
 func multiply(a [][]float64, b []float64) []float64 {

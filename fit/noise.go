@@ -126,20 +126,28 @@ type kalman struct {
 	// last sample.
 	p, pw, w float64
 
-	lastGap, lastPhi float64
-	lastH            float64
-	lastM            int
-	mom              rowMoments
-	prevEnd          float64
-	started, steady  bool
+	// Of rows like the last one: the decay over the gap before them, and their
+	// moments.
+	lastGap, phi float64
+	lastH        float64
+	lastM        int
+	mom          rowMoments
+
+	// What follows from these for the update: the last sample and the mean against
+	// the last sample seen, and the variances that the row itself brings.
+	a1, a2                 float64
+	ownLast, ownCross, own float64
+	walkLast, walkCross    float64
+
+	prevEnd         float64
+	started, steady bool
 
 	// Of the row just passed, variance its.
-	decay, a2, gain, follow, isd, variance float64
+	decay, gain, follow, isd, variance float64
 }
 
-func newKalman(s shape) *kalman {
-	k := &kalman{s: s, p: math.Max(1-s.white, 0), lastGap: -1, lastH: -1, lastM: -1}
-	return k
+func newKalman(s shape) kalman {
+	return kalman{s: s, p: max(1-s.white, 0), lastGap: -1, lastH: -1, lastM: -1}
 }
 
 // interval is what an interval counts as: jitter that scatters about the usual
@@ -155,54 +163,69 @@ func (k *kalman) interval(gap float64) float64 {
 // next passes the row r.
 func (k *kalman) next(r ident.Row) {
 	m := max(r.M, 1)
-	phi0, gap := 0.0, 0.0
+	gap, known := 0.0, k.started
 	if k.started {
 		gap = k.interval(r.T - k.prevEnd)
 		// Equally spaced stamps differ by their rounding.
 		if math.Abs(gap-k.lastGap) > 1e-7*k.lastGap || k.lastGap < 0 {
-			k.lastGap, k.lastPhi, k.steady = gap, math.Exp(-gap/k.s.tc), false
+			k.lastGap, k.phi, known = gap, math.Exp(-gap/k.s.tc), false
 		}
-		phi0 = k.lastPhi
 	}
 	if m != k.lastM || (m > 1 && r.H != k.lastH) {
 		k.mom = momentsOf(r.H, k.s.tc, m)
-		k.lastM, k.lastH, k.steady = m, r.H, false
+		k.lastM, k.lastH, known = m, r.H, false
 	}
 	k.prevEnd = r.T
 	if m > 1 {
 		k.prevEnd += float64(m-1) * r.H
 	}
+	if !known {
+		k.prepare(gap, r.H, m)
+	}
+	k.again()
+	k.started = true
+}
+
+// prepare finds what the rows from now on have in common.
+func (k *kalman) prepare(gap, h float64, m int) {
+	phi, w := k.phi, k.s.white // phi is 0 before the first row
+	v := max(1-w, 0)
+	one := v * (1 - phi*phi)
+	k.a1, k.a2 = k.mom.phiM*phi, k.mom.g*phi
+	k.ownLast = k.mom.phiM*k.mom.phiM*one + v*k.mom.vLL
+	k.ownCross = k.mom.phiM*k.mom.g*one + v*k.mom.vLM
+	k.own = k.mom.g*k.mom.g*one + v*k.mom.vMM + w/float64(m)
+	if k.s.walk > 0 {
+		last, cross, mean := walkMoments(gap, h, m)
+		k.walkLast, k.walkCross = last*k.s.walk, cross*k.s.walk
+		k.own += mean * k.s.walk
+	}
+	k.steady = false
+}
+
+// again passes a row like the last one.
+func (k *kalman) again() {
 	if k.steady {
 		return
 	}
-	v, w := math.Max(1-k.s.white, 0), k.s.white
-	before, beforeW := k.p, k.w
-	one := v * (1 - phi0*phi0)
-	a1 := k.mom.phiM * phi0
-	k.a2 = k.mom.g * phi0
-	vLL := k.mom.phiM*k.mom.phiM*one + v*k.mom.vLL
-	vLM := k.mom.phiM*k.mom.g*one + v*k.mom.vLM
-	vMM := k.mom.g*k.mom.g*one + v*k.mom.vMM
-	var last, cross, mean float64
-	settled := 1e-15
-	if k.s.walk > 0 {
-		settled = 1e-10
-		last, cross, mean = walkMoments(gap, r.H, m)
-		last, cross, mean = last*k.s.walk, cross*k.s.walk, mean*k.s.walk
-	}
-	sv := k.a2*k.a2*k.p + 2*k.a2*k.pw + k.w + vMM + mean + w/float64(m)
-	k.gain = (a1*(k.a2*k.p+k.pw) + vLM) / sv
-	k.follow = (k.a2*k.pw + k.w + cross) / sv
-	k.p = math.Max(a1*a1*k.p+vLL-k.gain*k.gain*sv, 0)
-	k.pw = a1*k.pw - k.gain*k.follow*sv
-	k.w = math.Max(k.w+last-k.follow*k.follow*sv, 0)
-	k.decay = a1 - k.gain*k.a2
-	k.isd, k.variance = 1/math.Sqrt(sv), sv
+	p, pw, w := k.p, k.pw, k.w
+	sv := k.a2*k.a2*p + 2*k.a2*pw + w + k.own
+	inverse := 1 / sv
+	k.gain = (k.a1*(k.a2*p+pw) + k.ownCross) * inverse
+	k.follow = (k.a2*pw + w + k.walkCross) * inverse
+	k.p = max(k.a1*k.a1*p+k.ownLast-k.gain*k.gain*sv, 0)
+	k.pw = k.a1*pw - k.gain*k.follow*sv
+	k.w = max(w+k.walkLast-k.follow*k.follow*sv, 0)
+	k.decay = k.a1 - k.gain*k.a2
+	k.isd, k.variance = math.Sqrt(inverse), sv
 	// Equal rows bring the filter to a steady state; then its figures repeat. The
 	// walk nears it by a part 2·follow a row, so that what is left of w is 1e-8/(2·follow)
 	// of it, and 1e-8 of the variance of a row.
-	k.steady = k.started && math.Abs(k.p-before) <= settled*v && math.Abs(k.w-beforeW) <= 1e-8*k.w
-	k.started = true
+	settled := 1e-15
+	if k.s.walk > 0 {
+		settled = 1e-10
+	}
+	k.steady = k.started && math.Abs(k.p-p) <= settled*(1-k.s.white) && math.Abs(k.w-w) <= 1e-8*k.w
 }
 
 // set makes f the filter for rows under the shape s, in the memory it has.
@@ -261,15 +284,15 @@ func (l *logProduct) log() float64 { return l.sum + math.Log(l.product) }
 // whitener filters the rows of a log in place, one sample a row, without
 // keeping coefficients: the rows come in pieces, one after the other.
 type whitener struct {
-	k    *kalman
+	k    kalman
 	even bool // the log is evenly sampled, without gaps
 
 	carried   // of a column passed alone
 	variances logProduct
 }
 
-func (r *record) whitener(s shape) *whitener {
-	w := &whitener{k: newKalman(s), even: r.even, variances: newLogProduct()}
+func (r *record) whitener(s shape) whitener {
+	w := whitener{k: newKalman(s), even: r.even, variances: newLogProduct()}
 	w.k.usual = r.usual
 	return w
 }
@@ -289,7 +312,7 @@ func (w *whitener) pass(x, t []float64) {
 
 // passAll filters the next rows of several columns, each with what it carries.
 func (w *whitener) passAll(cols [][]float64, carry []carried, t []float64) {
-	k := w.k
+	k := &w.k
 	if k.s.unfiltered() {
 		for j, x := range cols {
 			carry[j].sum += dot(x, x)
@@ -297,7 +320,12 @@ func (w *whitener) passAll(cols [][]float64, carry []carried, t []float64) {
 		return
 	}
 	for i := 0; i < len(t); {
-		k.next(ident.Row{T: t[i], M: 1})
+		if w.even && i >= 2 { // the gap is that of the row before
+			k.again()
+			k.prevEnd = t[i]
+		} else {
+			k.next(ident.Row{T: t[i], M: 1})
+		}
 		end := i + 1
 		switch {
 		case k.steady && w.even:

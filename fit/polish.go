@@ -279,14 +279,14 @@ func (b *bounded) step(at *polished, gram [][]float64) (next *polished, promised
 			scaled[i][j] = gram[i][j] / math.Sqrt(gram[i][i]*gram[j][j])
 		}
 	}
-	x, ok := solveDamped(scaled, rhs, free, 0)
-	if !ok {
+	if !e.damped.factor(scaled, free, 0) {
 		return nil, 0, false
 	}
 	move := make([]float64, n)
-	for k, j := range free {
-		move[j] = x[k] / math.Sqrt(gram[j][j])
-		promised += x[k] * rhs[j]
+	for k, x := range e.damped.solve(rhs, free) {
+		j := free[k]
+		move[j] = x / math.Sqrt(gram[j][j])
+		promised += x * rhs[j]
 	}
 	next = &polished{gain: at.gain + move[0], eta: append([]float64(nil), at.eta...)}
 	for l := range next.eta {

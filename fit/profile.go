@@ -95,9 +95,10 @@ func (q *profiler) predict(i int, v float64, from point) []float64 {
 			rhs[l] = -a[l][i-1] * (v - value)
 		}
 	}
-	if x, ok := solveDamped(a, rhs, free, 1e-6); ok {
-		for k, l := range free {
-			out[l] = q.near(out[l]+x[k], out[l], l)
+	if e.damped.factor(a, free, 1e-6) {
+		for k, x := range e.damped.solve(rhs, free) {
+			l := free[k]
+			out[l] = q.near(out[l]+x, out[l], l)
 		}
 	}
 	return out

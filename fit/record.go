@@ -5,6 +5,8 @@ import (
 	"math"
 	"slices"
 
+	"gonum.org/v1/gonum/floats"
+
 	"lagwright/data"
 	"lagwright/ident"
 )
@@ -185,9 +187,7 @@ func addToBasis(basis *[][]float64, w []float64) bool {
 	if !(after > 1e-9*before) {
 		return false
 	}
-	for i := range w {
-		w[i] /= after
-	}
+	floats.Scale(1/after, w)
 	*basis = append(*basis, w)
 	return true
 }
@@ -195,28 +195,12 @@ func addToBasis(basis *[][]float64, w []float64) bool {
 // project takes the part of x that lies in the basis out of x.
 func project(x []float64, basis [][]float64) {
 	for _, q := range basis {
-		c := dot(q, x)
-		for i, v := range q {
-			x[i] -= c * v
-		}
+		floats.AddScaled(x, -dot(q, x), q)
 	}
 }
 
-func dot(a, b []float64) float64 {
-	b = b[:len(a)]
-	var s0, s1, s2, s3 float64
-	i := 0
-	for ; i+4 <= len(a); i += 4 {
-		s0 += a[i] * b[i]
-		s1 += a[i+1] * b[i+1]
-		s2 += a[i+2] * b[i+2]
-		s3 += a[i+3] * b[i+3]
-	}
-	for ; i < len(a); i++ {
-		s0 += a[i] * b[i]
-	}
-	return (s0 + s1) + (s2 + s3)
-}
+// dot is the inner product of a and as many elements of b.
+func dot(a, b []float64) float64 { return floats.Dot(a, b[:len(a)]) }
 
 func resize(x []float64, n int) []float64 {
 	if cap(x) < n {

@@ -1,6 +1,10 @@
 package fit
 
-import "math"
+import (
+	"math"
+
+	"gonum.org/v1/gonum/floats"
+)
 
 // tangent is a fitted model near its optimum on one record: what is left of
 // the log and an orthonormal basis of the directions in which the model can
@@ -61,13 +65,9 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			if (l < e.nl && e.groups[l] != j) || (l == e.nl && j != e.ng) {
 				continue
 			}
-			for k, v := range w.raw[l+1] {
-				c[k] += p.gain * v
-			}
+			floats.AddScaled(c, p.gain, w.raw[l+1])
 			if states != nil {
-				for k, v := range states[l] {
-					c[k] += v
-				}
+				floats.Add(c, states[l])
 			}
 		}
 		dirs = append(dirs, c)
@@ -87,9 +87,7 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			for i, q := range params {
 				s := dot(q, c)
 				t.tri[i][j] += s
-				for k, v := range q {
-					c[k] -= s * v
-				}
+				floats.AddScaled(c, -s, q)
 			}
 		}
 		after := math.Sqrt(dot(c, c))
@@ -100,9 +98,7 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			t.scale[j] = 0
 			continue
 		}
-		for k := range c {
-			c[k] /= after
-		}
+		floats.Scale(1/after, c)
 		t.tri[len(params)][j] = after
 		t.param = append(t.param, j)
 		params = append(params, c)

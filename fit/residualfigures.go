@@ -61,7 +61,7 @@ func (r *record) walkResiduals(x explained) (*residualFigures, *whitener) {
 		w.pass(left, r.root.t[lo:lo+len(left)])
 		f.addWhite(left, lo, len(r.root.t))
 	})
-	return f, w
+	return f, &w
 }
 
 // testRows is the number of rows above which the misfit is compared with the

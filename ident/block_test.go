@@ -7,15 +7,21 @@ import (
 	"testing"
 )
 
-// TestBlockMeans compares rows that are means with the means of single samples.
+// TestBlockMeans compares rows that are means with the means of single samples,
+// of any number of them and of powers of two, which are walked rung by rung.
 func TestBlockMeans(t *testing.T) {
+	t.Run("any", func(t *testing.T) { testBlockMeans(t, []int{1, 1, 7, 64, 64, 301}, false) })
+	t.Run("rungs", func(t *testing.T) { testBlockMeans(t, []int{1, 1, 2, 8, 64, 256}, true) })
+}
+
+func testBlockMeans(t *testing.T, sizes []int, rungs bool) {
 	const h = 0.05
 	rng := rand.New(rand.NewPCG(3, 1))
 	var rows []Row
 	var times []float64
 	for sample := 0; sample < 4000; {
-		m := []int{1, 1, 7, 64, 64, 301}[rng.IntN(6)]
-		for range 1 + rng.IntN(4) {
+		m := sizes[rng.IntN(len(sizes))]
+		for range 1 + rng.IntN(8) {
 			rows = append(rows, Row{T: float64(sample) * h, H: h, M: m})
 			for i := range m {
 				times = append(times, float64(sample+i)*h)
@@ -32,6 +38,9 @@ func TestBlockMeans(t *testing.T) {
 		in.Value = append(in.Value, rng.NormFloat64())
 	}
 	plain, means := NewSimulator(times, in), NewBlockSimulator(rows, in)
+	if got := means.rungs != nil; got != rungs {
+		t.Fatalf("rungs: %v", got)
+	}
 	for _, c := range []struct {
 		structure string
 		lags      []float64
@@ -78,10 +87,15 @@ func TestBlockMeans(t *testing.T) {
 // other numbers of samples, with the mean of the closed form of a geometric
 // series.
 func TestLongBlocks(t *testing.T) {
+	testLongBlocks(t, []int{1 << 20, 1 << 9, 1 << 23, 1 << 14, 777_777, 1 << 23})
+	testLongBlocks(t, []int{1 << 20, 1 << 9, 1 << 9, 1 << 9, 1 << 23, 1 << 14, 1, 1, 1 << 23, 1 << 23})
+}
+
+func testLongBlocks(t *testing.T, sizes []int) {
 	const h, tau = 0.001, 9000.0
 	var rows []Row
 	sample := 1
-	for _, m := range []int{1 << 20, 1 << 9, 1 << 23, 1 << 14, 777_777, 1 << 23} {
+	for _, m := range sizes {
 		rows = append(rows, Row{T: float64(sample) * h, H: h, M: m})
 		sample += m
 	}

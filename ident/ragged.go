@@ -141,15 +141,19 @@ func (s *kickCache) after(c *chain, since, tolerance float64) *state {
 
 func (s *kickCache) place(since float64) int { return int(spanKey(since) % uint64(len(s.table))) }
 
+// overStep carries the state over h s.
+func (s *Simulator) overStep(h float64) {
+	if s.steps == nil { // as large as all the rest of a simulator, and seldom needed by blocks
+		s.steps = &stepCache{evaluation: s.evaluation}
+	}
+	s.steps.over(&s.chain, &s.x, h, s.tolerance)
+}
+
 // runRagged is run for rows of a ragged stretch, which may follow changes of the
 // input.
 func (s *Simulator) runRagged(o *outputs, lo, hi int) {
 	for k := lo; k < hi; k++ {
-		if b := s.departed(k, s.t[k]-s.t[k-1]); b != nil {
-			s.chain.advance(&b.over, &s.x)
-		} else {
-			s.steps.over(&s.chain, &s.x, s.t[k]-s.t[k-1], s.tolerance)
-		}
+		s.overStep(s.t[k] - s.t[k-1])
 		s.arrive(k)
 		s.emitRow(o, k)
 	}

@@ -22,27 +22,29 @@ const longStretch = 16 * runRows
 // enter, and keeps the recursion away from denormal numbers, which are slow.
 const settledState = 1e-100
 
-// setStep prepares the transition over the step of a uniform stretch.
-func (s *Simulator) setStep(r stretch) {
-	s.stepLength = r.step
-	if s.long = r.hi-r.lo >= longStretch; s.long {
-		s.chain.transition(&s.leap, runRows*r.step)
+// setStep puts the transition over length s, the step of a uniform stretch of
+// rows, in place.
+func (s *Simulator) setStep(step *matrix, length float64, rows int) {
+	s.step, s.stepLength = step, length
+	if s.long = rows >= longStretch; s.long {
+		s.chain.transition(&s.leap, runRows*length)
 	}
-	if b := s.departed(r.lo, r.step); b != nil {
-		s.step = b.over
-		return
-	}
-	s.chain.transition(&s.step, r.step)
 }
 
 // run carries the state through the rows lo ≤ k < hi of a uniform stretch,
 // which no change precedes, and writes their outputs.
 func (s *Simulator) run(o *outputs, lo, hi int) {
-	if s.rows != nil && lo < hi && s.rows[lo].M > 1 {
-		s.runMeans(o, lo, hi)
+	if s.rows == nil || lo == hi || s.rows[lo].M == 1 {
+		s.runSamples(o, lo, hi)
 		return
 	}
-	s.runSamples(o, lo, hi)
+	b := s.blocks.get(&s.chain, s.rows[lo].H, s.rows[lo].M)
+	for k := lo; k < hi; k++ {
+		s.chain.advance(s.step, &s.x)
+		x := s.x
+		s.chain.advance(&b.mean, &x)
+		s.emit(o, k, &x, s.level)
+	}
 }
 
 // runSamples carries the state step by step, what it stands at being the output.
@@ -123,7 +125,7 @@ func (s *Simulator) runPiece(o *outputs, lo, hi int) {
 		}
 	}
 	for k := range y {
-		s.chain.advance(&s.step, &s.x)
+		s.chain.advance(s.step, &s.x)
 		s.emit(o, from+k, &s.x, s.level)
 	}
 }
@@ -131,7 +133,7 @@ func (s *Simulator) runPiece(o *outputs, lo, hi int) {
 // runResponse runs up to four elements without sensitivities: a shorter
 // chain is one of four whose first elements are at rest.
 func (s *Simulator) runResponse(y []float64) {
-	f, n, level := &s.step, s.chain.n, s.level
+	f, n, level := s.step, s.chain.n, s.level
 	var a [4][4]float64
 	var x [4]float64
 	for i := range n {
@@ -157,7 +159,7 @@ func (s *Simulator) runResponse(y []float64) {
 // run1 runs one element. Even and odd rows are carried by two recursions of
 // two steps each, which do not wait for one another.
 func (s *Simulator) run1(y, dtheta, v []float64) {
-	f, level, rate := &s.step, s.level, 1/s.chain.last()
+	f, level, rate := s.step, s.level, 1/s.chain.last()
 	p, c := f[0], f[maxStates]
 	pp, pc := p*p, 2*p*c
 	e, w := s.x[0], s.x[1]
@@ -183,7 +185,7 @@ func (s *Simulator) run1(y, dtheta, v []float64) {
 
 // run2 runs two distinct elements.
 func (s *Simulator) run2(y, dtheta, v1, v2 []float64) {
-	f, level, rate := &s.step, s.level, 1/s.chain.last()
+	f, level, rate := s.step, s.level, 1/s.chain.last()
 	a11, a21, a22 := f[0], f[maxStates], f[maxStates+1]
 	b11, b12 := f[2*maxStates], f[2*maxStates+1]
 	b21, b22 := f[3*maxStates], f[3*maxStates+1]
@@ -204,7 +206,7 @@ func (s *Simulator) run2(y, dtheta, v1, v2 []float64) {
 
 // run3 runs three distinct elements.
 func (s *Simulator) run3(y, dtheta, v1, v2, v3 []float64) {
-	f, level, rate := &s.step, s.level, 1/s.chain.last()
+	f, level, rate := s.step, s.level, 1/s.chain.last()
 	a11 := f[0]
 	a21, a22 := f[maxStates], f[maxStates+1]
 	a31, a32, a33 := f[2*maxStates], f[2*maxStates+1], f[2*maxStates+2]
@@ -231,7 +233,7 @@ func (s *Simulator) run3(y, dtheta, v1, v2, v3 []float64) {
 
 // run4 runs four distinct elements.
 func (s *Simulator) run4(y, dtheta, v1, v2, v3, v4 []float64) {
-	f, level, rate := &s.step, s.level, 1/s.chain.last()
+	f, level, rate := s.step, s.level, 1/s.chain.last()
 	a11 := f[0]
 	a21, a22 := f[maxStates], f[maxStates+1]
 	a31, a32, a33 := f[2*maxStates], f[2*maxStates+1], f[2*maxStates+2]

@@ -1,9 +1,6 @@
 package ident
 
-import (
-	"math"
-	"slices"
-)
+import "math"
 
 // A Simulator computes the responses of lag chains of unit gain to one input
 // at the rows of one log. It is exact at the rows for an input held between
@@ -35,14 +32,17 @@ type Simulator struct {
 	area        float64
 	areaUntil   float64 // of the delayed input, up to its last change
 
-	step       matrix // transition over stepLength, the step of the stretch
+	step       *matrix // transition over stepLength, the step of the stretch
 	stepLength float64
 	long       bool   // the stretch leaps
 	leap       matrix // transition over runRows steps, when it does
+	own        matrix // where step points to unless it is one of the powers
 
-	steps  *stepCache // of ragged rows
+	steps  *stepCache // of ragged rows, nil before the first
 	kicks  kickCache
 	blocks *blockCache // of rows that are means
+	rungs  []rung      // these rows as rungs, none when they are not like that
+	powers powers      // of the rungs
 }
 
 // NewSimulator returns a simulator for the rows at t in s, strictly
@@ -51,9 +51,6 @@ type Simulator struct {
 func NewSimulator(t []float64, in Input) *Simulator {
 	s := &Simulator{t: t, tolerance: timeTolerance(t)}
 	s.stretches = stretches(t, s.tolerance)
-	if slices.ContainsFunc(s.stretches, func(r stretch) bool { return r.ragged }) {
-		s.steps = new(stepCache)
-	}
 	s.setInput(in)
 	return s
 }
@@ -79,9 +76,8 @@ func (s *Simulator) Clone() *Simulator {
 	if s.blocks != nil {
 		clone.blocks = new(blockCache)
 	}
-	if s.steps != nil {
-		clone.steps = new(stepCache)
-	}
+	clone.steps, clone.step = nil, nil
+	clone.powers.over = nil
 	return &clone
 }
 
@@ -208,6 +204,10 @@ func (s *Simulator) walkTo(o *outputs, end int) {
 		s.walkWithoutLags(o, end)
 		return
 	}
+	if s.rungs != nil && s.row == 0 && end == len(s.t) {
+		s.climb(o)
+		return
+	}
 	if s.row == 0 && end > 0 {
 		s.arrive(0)
 		s.emitRow(o, 0)
@@ -231,14 +231,15 @@ func (s *Simulator) walkStretch(o *outputs, r stretch, end int) {
 		return
 	}
 	if s.row == r.lo {
-		s.setStep(r)
+		s.chain.transition(&s.own, r.step)
+		s.setStep(&s.own, r.step, r.hi-r.lo)
 	}
 	for k := s.row; k < end; {
 		free := min(s.freeRows(k, r), end-k)
 		s.run(o, k, k+free)
 		k += free
 		if k < end {
-			s.chain.advance(&s.step, &s.x)
+			s.chain.advance(s.step, &s.x)
 			s.arrive(k)
 			s.emitRow(o, k)
 			k++
@@ -302,11 +303,13 @@ func (s *Simulator) takeChanges(x *state, next int, level, time float64) (int, f
 
 // emitRow writes the outputs of row k from the state at its first sample.
 func (s *Simulator) emitRow(o *outputs, k int) {
-	if s.rows != nil {
-		s.emitMean(o, k)
+	if s.rows == nil || s.rows[k].M == 1 {
+		s.emit(o, k, &s.x, s.level)
 		return
 	}
-	s.emit(o, k, &s.x, s.level)
+	x, next, level := s.x, s.next, s.level
+	s.emitMean(o, k, &x)
+	s.next, s.level = next, level
 }
 
 // emit writes the outputs of row k that a state and an input level make.
