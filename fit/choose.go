@@ -308,7 +308,7 @@ func (out *outcome) settle(s *study) error {
 		for i, t := range out.two.tangents() {
 			w := t.bestWalk(shapes[i])
 			s.walks = append(s.walks, t.walkNodes(w))
-			if w.dev < t.evaluate(shapes[i]).dev-walkBonus {
+			if w.dev < t.judge(shapes[i]).dev-walkBonus {
 				shapes[i] = w.shape
 			}
 		}

@@ -47,6 +47,8 @@ type workspace struct {
 	basis [][]float64 // the record's and extra
 	spare [][]float64 // memory of extra
 	state [][]float64 // derivatives of the initial state's part
+
+	tangent tangentMemory
 }
 
 // point is an evaluated set of parameters.

@@ -31,36 +31,47 @@ type part struct {
 // everyRow visits what x leaves of the full log, piece by piece: row lo and
 // those after it. The slice may be written to.
 func (r *record) everyRow(x explained, visit func(lo int, left []float64)) {
-	r.rowsOf(x, part{0, len(r.root.t), r.root.sim.Clone()}, visit)
+	n := len(r.root.t)
+	next := r.leaving(x, part{0, n, r.root.sim.Clone()})
+	left := make([]float64, min(pieceRows, n))
+	for lo := 0; lo < n; {
+		rows := left[:min(len(left), n-lo)]
+		next(rows)
+		visit(lo, rows)
+		lo += len(rows)
+	}
 }
 
-// residual returns what x leaves of a part of the full log.
-func (r *record) residual(x explained, p part) []float64 {
-	out := make([]float64, 0, p.hi-p.lo)
-	r.rowsOf(x, p, func(_ int, left []float64) { out = append(out, left...) })
-	return out
+// residual sets left to what x leaves of a part of the full log.
+func (r *record) residual(left []float64, x explained, p part) {
+	next := r.leaving(x, p)
+	for len(left) > 0 {
+		n := min(pieceRows, len(left))
+		next(left[:n])
+		left = left[n:]
+	}
 }
 
-// rowsOf is everyRow for a part of the log.
-func (r *record) rowsOf(x explained, p part, visit func(lo int, left []float64)) {
+// leaving returns a function that sets rows, at most pieceRows of them, to what x
+// leaves of the next rows of a part of the full log.
+func (r *record) leaving(x explained, p part) func(rows []float64) {
 	takeInitial := r.initialRows(x, p)
 	response := p.sim.Pieces(x.st, x.lags, x.dead, false)
-	size := min(pieceRows, p.hi-p.lo)
-	y := make([]float64, size)
 	base, slope := x.beta[0], 0.0
 	if r.drift {
 		slope = x.beta[1]
 	}
-	for lo := p.lo; lo < p.hi; {
-		n := response([][]float64{y})
-		out := y[:n]
-		t, logged := r.root.t[lo:lo+n], r.root.y[lo:lo+n]
-		for k, v := range out {
-			out[k] = logged[k] - x.gain*v - base - slope*t[k]
+	lo := p.lo
+	var dst [1][]float64
+	return func(rows []float64) {
+		dst[0] = rows
+		response(dst[:])
+		t, logged := r.root.t[lo:lo+len(rows)], r.root.y[lo:lo+len(rows)]
+		for k, v := range rows {
+			rows[k] = logged[k] - x.gain*v - base - slope*t[k]
 		}
-		takeInitial(out)
-		visit(lo, out)
-		lo += n
+		takeInitial(rows)
+		lo += len(rows)
 	}
 }
 

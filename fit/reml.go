@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/floats"
 )
@@ -12,9 +13,7 @@ import (
 type tangent struct {
 	rec    *record
 	left   []float64   // log minus model, unwhitened
-	noise  []float64   // times on which the noise is judged when rec averages rows, else nil
-	rest   []float64   // log minus model at them
-	piece  int         // length of the parts that they are made of
+	rest   []float64   // the same of the parts of the log on which the noise is judged, when rec averages rows, else nil
 	model  explained   // the model itself
 	cols   [][]float64 // orthonormal (unwhitened) directions
 	first  int         // how many of cols are linear columns
@@ -23,12 +22,20 @@ type tangent struct {
 	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
 
-	buf   []float64      // scratch: rest whitened
-	white [][]float64    // scratch: whitened cols, and left
-	plain map[shape]node // remembered by evaluateWalk
+	memory *tangentMemory
+	still  map[shape]judged // remembered by judgeWalk
 }
 
-// tangents linearises the model at p on every record.
+// tangentMemory is what the tangents of a record use one after the other.
+type tangentMemory struct {
+	rest   []float64   // of the tangent
+	spare  []float64   // rest whitened
+	white  [][]float64 // its directions and left, whitened
+	factor [][]float64 // Cholesky factor of their products
+}
+
+// tangents linearises the model at p on every record. They are valid until the
+// next call.
 func (e *engine) tangents(p point) []*tangent {
 	p = e.eval(p.eta, true)
 	out := make([]*tangent, len(e.recs))
@@ -40,16 +47,18 @@ func (e *engine) tangents(p point) []*tangent {
 
 func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	n := len(r.t)
-	t := &tangent{rec: r, nparam: e.ng + 2}
+	t := &tangent{rec: r, nparam: e.ng + 2, memory: &w.tangent}
 	linear, beta, left := r.solveLinear(w, p.gain)
 	t.left = left
 	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
+		t.rest = t.memory.rest[:0]
 		for _, c := range r.parts {
-			t.piece = c.hi - c.lo
-			t.noise = append(t.noise, r.root.t[c.lo:c.hi]...)
-			t.rest = append(t.rest, r.residual(t.model, c)...)
+			n := len(t.rest)
+			t.rest = slices.Grow(t.rest, c.hi-c.lo)[:n+c.hi-c.lo]
+			r.residual(t.rest[n:], t.model, c)
 		}
+		t.memory.rest = t.rest
 	}
 	for _, c := range linear {
 		addToBasis(&t.cols, append([]float64(nil), c...))
@@ -121,53 +130,71 @@ type node struct {
 	dev    float64 // -2 restricted log likelihood, up to a constant
 }
 
-// evaluate computes the restricted likelihood (REML: Patterson and Thompson
+// evaluate judges a noise shape and has the quadratic form of the parameters too.
+func (t *tangent) evaluate(s shape) node {
+	nd := t.judge(s)
+	nd.a, nd.b = t.quadratic()
+	return nd
+}
+
+// judge computes the restricted likelihood (REML: Patterson and Thompson
 // 1971; Harville 1977, from memory) of a noise shape,
 //
 //	-2·L = (n-p)·ln rss + ln|R| + ln|XᵀR⁻¹X|
 //
 // with rss the generalised least-squares sum over all directions X of the
-// tangent, and the quadratic form of the parameters.
-func (t *tangent) evaluate(s shape) node {
+// tangent.
+func (t *tangent) judge(s shape) node {
 	if s.walk > 0 && t.sampled() {
-		return t.evaluateWalk(s)
+		return t.judgeWalk(s)
 	}
-	nd, r := t.onRows(s)
-	rss, n, p := r.least, len(t.left), len(t.cols)
-	if t.noise != nil {
-		rss, r.logdet = t.fullSum(s, r)
+	nd, _ := t.judgeRows(s)
+	return nd
+}
+
+func (t *tangent) judgeRows(s shape) (node, onRowsSums) {
+	sums := t.onRows(s)
+	rss, logdet, n, p := sums.least, sums.logdet, len(t.left), len(t.cols)
+	nd := node{shape: s, dof: n - p}
+	if t.rest != nil {
+		rss, logdet = t.fullSum(s, sums)
 		n = len(t.rest)
 		nd.dof = max(len(t.rec.root.t)-p, 1)
 	}
 	nd.s2 = t.rounded(rss / float64(n-p))
-	nd.dev = float64(n-p)*math.Log(rss) + r.logdet + r.directions
-	return nd
+	nd.dev = float64(n-p)*math.Log(rss) + logdet + sums.directions
+	return nd, sums
 }
 
 // sampled reports whether the noise is judged on a part of the log's rows.
-func (t *tangent) sampled() bool { return t.noise != nil && len(t.rest) < len(t.rec.root.t) }
+func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < len(t.rec.root.t) }
 
-// evaluateWalk is evaluate for a log whose noise is judged on pieces of it. A
+// judgeWalk is judge for a log whose noise is judged on pieces of it. A
 // walk is slow: what it adds to -2L is told by the averaged rows, which cover the
 // whole log, with the variance and the rest of the shape as the pieces tell them.
 // (On the pieces alone a walk would take credit for the baseline of the whole
 // log being known less well than the pieces say.)
-func (t *tangent) evaluateWalk(s shape) node {
+func (t *tangent) judgeWalk(s shape) node {
 	without := s
 	without.walk = 0
-	plain, ok := t.plain[without]
+	still, ok := t.still[without]
 	if !ok {
-		plain = t.evaluate(without)
-		if t.plain == nil {
-			t.plain = map[shape]node{}
+		still.node, still.sums = t.judgeRows(without)
+		if t.still == nil {
+			t.still = map[shape]judged{}
 		}
-		t.plain[without] = plain
+		t.still[without] = still
 	}
-	_, r0 := t.onRows(without)
-	nd, r := t.onRows(s)
-	nd.s2, nd.dof = plain.s2, plain.dof
-	nd.dev = plain.dev + (r.least-r0.least)/plain.s2 + r.logdet - r0.logdet + r.directions - r0.directions
+	r, r0, nd := t.onRows(s), still.sums, still.node
+	nd.shape = s
+	nd.dev += (r.least-r0.least)/nd.s2 + r.logdet - r0.logdet + r.directions - r0.directions
 	return nd
+}
+
+// judged is a noise shape without a walk with the sums on the rows in use.
+type judged struct {
+	node node
+	sums onRowsSums
 }
 
 // rounded is a variance of readings of the logged resolution: a rounded reading
@@ -185,16 +212,17 @@ type onRowsSums struct {
 	directions float64 // ln|XᵀR⁻¹X|
 }
 
-// onRows whitens the directions and what is left on the rows in use; the node
-// has the quadratic form of the parameters.
-func (t *tangent) onRows(s shape) (node, onRowsSums) {
+// onRows whitens the directions and what is left on the rows in use, and leaves the
+// factor of their products in memory.
+func (t *tangent) onRows(s shape) onRowsSums {
 	f := &t.rec.scratch
 	f.set(t.rec.rows, s)
 	n, p := len(t.left), len(t.cols)
-	if t.white == nil {
-		t.white = columns(p+1, n)
+	m := t.memory
+	if len(m.white) < p+1 {
+		m.white, m.factor = columns(p+1, n), columns(p+1, p+1)
 	}
-	white := t.white
+	white, l := m.white[:p+1], m.factor
 	for j, c := range t.cols {
 		copy(white[j], c)
 	}
@@ -202,7 +230,6 @@ func (t *tangent) onRows(s shape) (node, onRowsSums) {
 	f.applyAll(white)
 	sums := onRowsSums{logdet: f.logdet}
 	// Cholesky of the Gram matrix, columns in order, the residual last.
-	l := columns(p+1, p+1)
 	for i := 0; i <= p; i++ {
 		for j := 0; j <= i; j++ {
 			s := dot(white[i], white[j])
@@ -223,18 +250,17 @@ func (t *tangent) onRows(s shape) (node, onRowsSums) {
 		}
 	}
 	sums.least = l[p][p] * l[p][p]
-	nd := node{shape: s, dof: n - p}
-	nd.a, nd.b = t.quadratic(l)
-	return nd, sums
+	return sums
 }
 
-// quadratic is the quadratic form of the parameters. In the orthonormal
-// coordinates a is lp·lpᵀ, with lp the trailing block of the factor l; in
+// quadratic is the quadratic form of the parameters under the noise shape last
+// judged. In the orthonormal coordinates a is lp·lpᵀ, with lp the trailing block of the factor l; in
 // parameters a = triᵀ·lp·lpᵀ·tri.
-func (t *tangent) quadratic(l [][]float64) (a [][]float64, b []float64) {
-	np, p := len(t.param), len(t.cols)
-	a, b = columns(t.nparam, t.nparam), make([]float64, t.nparam)
-	m := columns(np, t.nparam) // lpᵀ·tri
+func (t *tangent) quadratic() (a [][]float64, b []float64) {
+	np, p, l := len(t.param), len(t.cols), t.memory.factor
+	all := columns(t.nparam+1+np, t.nparam)
+	a, b = all[:t.nparam:t.nparam], all[t.nparam]
+	m := all[t.nparam+1:] // lpᵀ·tri
 	for i := range np {
 		for _, j := range t.param {
 			for k := i; k < np; k++ {
@@ -258,13 +284,14 @@ func (t *tangent) quadratic(l [][]float64) (a [][]float64, b []float64) {
 // from it, which the averaged rows tell (whitened sum minus least, scaled to
 // the number of rows).
 func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
-	t.buf = resize(t.buf, len(t.rest))
-	copy(t.buf, t.rest)
+	m := t.memory
+	m.spare = append(m.spare[:0], t.rest...)
 	w := t.rec.whitener(s)
-	for lo := 0; lo < len(t.rest); {
-		hi := lo + t.piece
-		w.pass(t.buf[lo:hi], t.noise[lo:hi])
-		lo = hi
+	left := m.spare
+	for _, c := range t.rec.parts {
+		n := c.hi - c.lo
+		w.pass(left[:n], t.rec.root.t[c.lo:c.hi])
+		left = left[n:]
 	}
 	taken := (r.all - r.least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
 	return math.Max(w.sum-taken, 1e-3*w.sum), w.logDeterminant()
@@ -280,11 +307,11 @@ func (t *tangent) tcRange() (lo, hi float64) {
 // neighbourhood.
 func (t *tangent) bestShape(near *shape) node {
 	lo, hi := t.tcRange()
-	best := t.evaluate(whiteShape)
+	best := t.judge(whiteShape)
 	better := func(tc, w float64) (up bool, dev float64) {
 		tc = math.Min(math.Max(tc, lo), hi)
 		w = math.Min(math.Max(w, 0), 0.995)
-		n := t.evaluate(shape{tc: tc, white: w})
+		n := t.judge(shape{tc: tc, white: w})
 		if up = n.dev < best.dev-1e-9; up {
 			best = n
 		}

@@ -127,7 +127,7 @@ func (t *tangent) grid(best node, axes int, reach float64) lattice {
 		c.tc, c.white = math.Sqrt(lo*hi), 0.995
 	}
 	box := [3][2]float64{{math.Log(lo), math.Log(hi)}, {0, 1}, {math.Log(least), math.Log(most)}}
-	at := func(s shape) (node, bool) {
+	at := func(s shape, look func(shape) node) (node, bool) {
 		if s.tc < lo*0.999 || s.tc > hi*1.001 || s.white < -1e-9 || s.white > 1 {
 			return node{}, false
 		}
@@ -135,17 +135,17 @@ func (t *tangent) grid(best node, axes int, reach float64) lattice {
 			return node{}, false
 		}
 		s.white = math.Min(math.Max(s.white, 0), 0.9999)
-		return t.evaluate(s), true
+		return look(s), true
 	}
 	first, widest := [3]float64{0.4, 0.1, 0.8}, [3]float64{math.Log(hi/lo) / 5, 0.25, 1.5}
 	var d [3]float64
 	for axis := range axes {
-		d[axis] = spacing(first[axis], widest[axis], axes, best.dev, func(x float64) (node, bool) { return at(c.moved(axis, x)) })
+		d[axis] = spacing(first[axis], widest[axis], axes, best.dev, func(x float64) (node, bool) { return at(c.moved(axis, x), t.judge) })
 	}
 	var l lattice
 	for range 4 {
 		var all bool
-		if l, all = flood(c, d, axes, best.dev+reach, box, at); all {
+		if l, all = flood(c, d, axes, best.dev+reach, box, func(s shape) (node, bool) { return at(s, t.evaluate) }); all {
 			break
 		}
 		for axis := range axes {
@@ -153,7 +153,7 @@ func (t *tangent) grid(best node, axes int, reach float64) lattice {
 		}
 	}
 	if len(l.nodes) == 0 {
-		l = lattice{nodes: []node{best}, cell: []float64{d[0] * d[1]}}
+		l = lattice{nodes: []node{t.evaluate(best.shape)}, cell: []float64{d[0] * d[1]}}
 	}
 	return l
 }

@@ -155,7 +155,7 @@ func (f *fitted) zone() float64 {
 // shape in force, and the weights from the variances.
 func (s *study) measure(f *fitted) {
 	for i, t := range f.tangents() {
-		s.recs[i].sigma2 = t.evaluate(s.recs[i].shape).s2
+		s.recs[i].sigma2 = t.judge(s.recs[i].shape).s2
 	}
 	for _, r := range s.recs {
 		r.weight = s.recs[0].sigma2 / r.sigma2

@@ -20,7 +20,7 @@ func (t *tangent) bestWalk(near shape) node {
 		s.tc = math.Min(math.Max(s.tc, low), high)
 		s.white = math.Min(math.Max(s.white, 0), 0.9999)
 		s.walk = math.Min(math.Max(s.walk, least), most)
-		n := t.evaluate(s)
+		n := t.judge(s)
 		if n.dev < best.dev-1e-9 {
 			best = n
 			return true

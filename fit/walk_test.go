@@ -36,8 +36,8 @@ func TestWalkIsToldByAveragedRows(t *testing.T) {
 			for _, sd := range []float64{0.3, 1, 4} {
 				s := plain
 				s.walk = sd * sd / r.span
-				want := tan.evaluate(s).dev - tan.evaluate(plain).dev
-				got := tan.evaluateWalk(s).dev - tan.evaluate(plain).dev
+				want := tan.judge(s).dev - tan.judge(plain).dev
+				got := tan.judgeWalk(s).dev - tan.judge(plain).dev
 				if math.Abs(got-want) > 1+0.1*math.Abs(want) {
 					t.Errorf("wander %g, seed %d, walk of sd %g: the averaged rows say %.2f, every row %.2f", wander, seed, sd, got, want)
 				}
