@@ -16,8 +16,10 @@ type clock struct {
 	unit   uint64         // ns in one unit of a number
 	order  dateOrder      // of dates with slashes or dashes
 	layout string         // of --time-format, as package time writes it
+	pad    bool           // the layout is hhmmss, and numbers may lack the zeros in front
 	zone   *time.Location // zone of the last stamp that named one
 	days   dayCount       // of day numbers
+	held   *heldDate      // of calendar stamps that leave out the date; nil where all have one
 
 	cached [10]byte // the date read last, as written …
 	day    int64    // … and its beginning
@@ -85,8 +87,15 @@ func (c *clock) parse(b []byte, point byte) (ns, alt int64, ok bool) {
 	case sexagesimal, hourMinute:
 		ns, ok = parseTimeOfDay(b, c.kind == hourMinute)
 	case calendar:
-		return c.parseCalendar(b)
+		ns, alt, ok = c.parseCalendar(b)
+		if c.held != nil {
+			return c.held.stamp(b, ns, alt, ok)
+		}
+		return ns, alt, ok
 	case custom:
+		if c.pad {
+			b = padded(b)
+		}
 		t, err := time.Parse(c.layout, string(b))
 		if err != nil {
 			return 0, alt, false

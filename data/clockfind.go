@@ -14,6 +14,9 @@ import (
 func findClock(cells [][]byte, c column, dated bool, o *Options, point byte) (*clock, []Note, error) {
 	if o.TimeFormat != "" {
 		k, err := clockOfFormat(o.TimeFormat)
+		if err == nil {
+			k.pad = k.layout == bareTime
+		}
 		return k, nil, err
 	}
 	switch {

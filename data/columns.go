@@ -22,6 +22,7 @@ type column struct {
 
 	halves   bool     // text of nothing but AM and PM
 	units    bool     // text of nothing but units
+	part     partOf   // of a clock in several columns
 	switched bool     // nothing but words such as ON and OFF, or logged as true and false
 	words    []string // some of these words
 }
@@ -90,6 +91,11 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 			return l, nil, err
 		}
 		l[r], taken[i] = i, true
+	}
+	for i, c := range cols {
+		if c.part != noPart {
+			taken[i] = true
+		}
 	}
 	if !tags {
 		if err := assignTime(cols, &l, taken); err != nil {
@@ -194,6 +200,10 @@ func findColumn(cols []column, name, flag string) (int, error) {
 // assignTime finds the clock: one column of stamps, a date and a time of day
 // side by side, or numbers by their name; else the first numbers that only rise.
 func assignTime(cols []column, l *layout, taken map[int]bool) error {
+	if i := slices.IndexFunc(cols, func(c column) bool { return c.part == mainPart }); i >= 0 {
+		l[roleTime] = i
+		return nil
+	}
 	if l[roleTime] >= 0 {
 		pairDate(cols, l, taken)
 		return nil

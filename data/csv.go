@@ -27,9 +27,11 @@ type csvReader struct {
 	fields  []field
 	last    int // index of the last field
 	at      layout
-	pair    bool // date and time of day have a column each
-	quality bool // the status is a number, good from 192 on
-	single  bool // cells can be read in place: no blanks as delimiter
+	spread  *spreadClock // the clock is the sum of several columns
+	digits  clockDigits  // of a time of day without colons
+	pair    bool         // date and time of day have a column each
+	quality bool         // the status is a number, good from 192 on
+	single  bool         // cells can be read in place: no blanks as delimiter
 
 	tables []*table
 	byName map[string]*table
@@ -58,10 +60,12 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 	}
 	c := &csvReader{path: s.path, d: d, byName: map[string]*table{}, firstNo: map[string]int{}}
 	info := &reading{cols: d.cols}
-	if isLong(d.cols, o) {
-		err = c.planLong(o, info)
-	} else {
-		err = c.plan(o, info)
+	if err = c.planStamps(o, info); err == nil {
+		if isLong(d.cols, o) {
+			err = c.planLong(o, info)
+		} else {
+			err = c.plan(o, info)
+		}
 	}
 	if err != nil {
 		return nil, nil, fmt.Errorf("%s: %w", s.path, err)
@@ -91,6 +95,7 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 		}
 		return tables, info, nil
 	}
+	c.clock.held.say(info)
 	info.clock, info.at, info.open = c.clock, c.at, c.open
 	return c.tables, info, c.refuse()
 }
@@ -101,6 +106,17 @@ func (c *csvReader) refuse() error {
 		return err
 	}
 	return c.word.err(c.path)
+}
+
+// planStamps looks for clocks of plain numbers that one column alone does not
+// show: digits of a date and a time, and a clock in parts.
+func (c *csvReader) planStamps(o *Options, info *reading) (err error) {
+	if c.digits, info.notes, err = markDigits(c.d, o); err != nil {
+		return err
+	}
+	spread, notes := findSpreadClock(c.d, o)
+	c.spread, info.notes = spread, append(info.notes, notes...)
+	return nil
 }
 
 // plan decides which columns are read and how.
@@ -149,6 +165,9 @@ func markStamps(d *dialect, format string) error {
 }
 
 func (c *csvReader) planClock(o *Options, info *reading) error {
+	if c.spread != nil && c.spread.stamp >= 0 {
+		c.at[roleDate] = c.spread.stamp
+	}
 	c.pair = c.at[roleDate] >= 0
 	var cells [][]byte
 	for _, l := range c.d.rows {
@@ -156,7 +175,7 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 			cells = append(cells, bytes.Clone(cell))
 		}
 	}
-	k, notes, err := findClock(cells, c.d.cols[c.at[roleTime]], c.pair, o, c.d.format.point)
+	k, notes, err := c.findClock(cells, o)
 	if err != nil {
 		return err
 	}
@@ -166,19 +185,49 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 	if k.kind == calendar && k.order == openOrder && !c.open {
 		k.dayFirst, k.monthFirst = false, false
 	}
+	if k.kind == calendar && c.long == nil { // the tags of a long log may stand one below the other
+		k.held = newHeldDate(k, cells)
+	}
 	for r, i := range c.at {
 		if i >= 0 {
 			c.fields = append(c.fields, field{index: i, role: role(r), unit: c.d.cols[i].unit, switched: c.d.cols[i].switched})
 			c.last = max(c.last, i)
 		}
 	}
+	if c.spread != nil {
+		c.last = max(c.last, c.spread.last())
+	}
 	slices.SortFunc(c.fields, func(a, b field) int { return a.index - b.index })
 	c.single = c.d.delim != ' '
 	c.quality = isQuality(c.d.rows, c.at[roleStatus])
-	if o.TimeCol == "" && o.TimeFormat == "" {
+	if o.TimeCol == "" && o.TimeFormat == "" && c.spread == nil {
 		return c.compareClocks()
 	}
 	return nil
+}
+
+// findClock finds the clock of the stamps; one in parts without a stamp among
+// them is known already.
+func (c *csvReader) findClock(cells [][]byte, o *Options) (*clock, []Note, error) {
+	col := c.at[roleTime]
+	switch {
+	case c.spread == nil || c.spread.stamp == ownStamp:
+	case c.spread.stamp < 0:
+		return &clock{kind: c.spread.kind}, nil, nil
+	default:
+		col = c.spread.stamp
+	}
+	return findClock(cells, c.d.cols[col], c.pair, o, c.d.format.point)
+}
+
+// instant is the time of a row.
+func (c *csvReader) instant() (t, alt int64, ok bool) {
+	stamp, _ := c.stampOf(c.cells)
+	t, alt, ok = c.clock.parse(stamp, c.d.format.point)
+	if c.spread != nil {
+		t, alt, ok = c.spread.add(t, alt, ok, c.cells)
+	}
+	return t, alt, ok
 }
 
 // hasAlternative tells that some stamps can be read both day and month first.
@@ -194,20 +243,28 @@ func hasAlternative(k *clock, cells [][]byte) bool {
 
 // stampOf puts the stamp of a row together, from one cell to three.
 func (c *csvReader) stampOf(cells [][]byte) ([]byte, bool) {
+	if c.spread != nil && c.spread.stamp >= 0 {
+		if c.spread.stamp >= len(cells) {
+			return nil, false
+		}
+		return cells[c.spread.stamp], true
+	}
 	i, j, h := c.at[roleTime], c.at[roleDate], c.at[roleHalf]
 	if i >= len(cells) || j >= len(cells) || h >= len(cells) {
 		return nil, false
 	}
-	if j < 0 && h < 0 {
+	if j < 0 && h < 0 || len(cells[i]) == 0 { // a date alone is no instant
 		return cells[i], true
 	}
 	c.stamp = c.stamp[:0]
-	for _, k := range []int{j, i, h} {
-		if k >= 0 {
-			c.stamp = append(append(c.stamp, cells[k]...), ' ')
-		}
+	if j >= 0 && !isNoDate(cells[j]) {
+		c.stamp = append(append(c.stamp, cells[j]...), ' ')
 	}
-	return c.stamp[:len(c.stamp)-1], true
+	c.stamp = appendClock(c.stamp, cells[i], c.digits)
+	if h >= 0 {
+		c.stamp = append(append(c.stamp, ' '), cells[h]...)
+	}
+	return c.stamp, true
 }
 
 // checkEvery is how many rows pass between looks at the context.
@@ -241,7 +298,7 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 // fast reads a row whose cells are plain numbers in place. It gives up, and
 // adds nothing, at anything out of the ordinary.
 func (c *csvReader) fast(text []byte, line int) bool {
-	if c.long != nil || c.pair || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
+	if c.long != nil || c.pair || c.spread != nil || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
 		return false
 	}
 	i, col := 0, 0
@@ -349,9 +406,9 @@ func (c *csvReader) cellRow(line int) {
 		c.drop(run, reason, line)
 		return
 	}
-	stamp, _ := c.stampOf(c.cells)
-	t, alt, ok := c.clock.parse(stamp, c.d.format.point)
+	t, alt, ok := c.instant()
 	if !ok {
+		stamp, _ := c.stampOf(c.cells)
 		reason := "no usable time"
 		if kind, _ := missingKind(stamp); kind == "blank" {
 			reason = "no time"

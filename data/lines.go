@@ -187,6 +187,9 @@ func quotedLength(b []byte, delim byte) int {
 			i++
 			continue
 		}
+		if b[1] == delim && b[i-1] == '\n' { // two ditto marks, a line apart
+			return -1
+		}
 		rest := bytes.TrimLeft(b[i+1:], " \r")
 		if len(rest) == 0 || rest[0] == delim || rest[0] == '\n' || delim == ' ' && i+1 < len(b) && b[i+1] == ' ' {
 			return i + 1

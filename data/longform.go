@@ -26,6 +26,7 @@ func isLong(cols []column, o *Options) bool {
 	for _, c := range cols {
 		r, _ := roleOf(c)
 		switch {
+		case c.part != noPart:
 		case c.switched && r == roleInput:
 			return false
 		case c.class == numbers && r != roleTime && r != roleStatus && r != roleOther:
