@@ -92,6 +92,9 @@ type Candidate struct {
 	Selected   bool     `json:"selected"`
 	Note       string   `json:"note"`
 
+	SetpointWeight *float64 `json:"setpoint_weight,omitempty"` // b; absent in files of earlier versions
+	Missed         string   `json:"missed,omitempty"`          // what most of the plants that fail miss most
+
 	InputNoise float64 `json:"input_noise"` // standard deviation at the output from the measurement's noise, input units
 }
 

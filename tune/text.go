@@ -10,14 +10,20 @@ import (
 	"unicode"
 )
 
-// WriteText writes the gains for people: the table of what was tried with the
-// recommended row marked, what to enter, what fails, the cautions.
-func (g *Gains) WriteText(w io.Writer) error {
+// WriteText writes the gains for people, the answer first: what to enter,
+// whether it meets the requirement, what fails; then the best of what else was
+// tried, and the cautions.
+func (g *Gains) WriteText(w io.Writer) error { return g.write(w, g.writeBest) }
+
+// WriteWholeText is WriteText with everything that was tried.
+func (g *Gains) WriteWholeText(w io.Writer) error { return g.write(w, g.writeAll) }
+
+func (g *Gains) write(w io.Writer, table func(*bufio.Writer)) error {
 	b := bufio.NewWriter(w)
-	g.writeTable(b)
 	g.writeEntries(b)
 	g.writeJudgement(b)
 	g.writeMore(b)
+	table(b)
 	if len(g.Cautions) > 0 {
 		fmt.Fprintln(b, "\nCautions")
 		for _, c := range g.Cautions {
@@ -28,31 +34,6 @@ func (g *Gains) WriteText(w io.Writer) error {
 		return fmt.Errorf("write gains: %w", err)
 	}
 	return nil
-}
-
-// writeTable lists what was tried in 80 columns.
-func (g *Gains) writeTable(b *bufio.Writer) {
-	if len(g.Candidates) == 0 {
-		return
-	}
-	fmt.Fprintf(b, "Candidates (ideal form). Ms, settling and overshoot are those of the plausible plant at %s, IAE after a unit load that of the best fit.\n\n", percent(g.Assurance))
-	const line = "%-2s%-16s %-3s %7s %5s %5s %4s %7s %7s %5s %5s %3s\n"
-	gain := unitWords(g.Units.Input) + "/" + unitWords(perKelvin(g.Units.Temperature))
-	fmt.Fprintf(b, line, "", "rule", "", "Kc", "Ti", "Td", "Ms", "settled", "over-", "IAE", "share", "met")
-	fmt.Fprint(b, strings.TrimRight(fmt.Sprintf(line, "", "", "", gain, "s", "s", "", "s", "shoot %", "", "", ""), " \n"), "\n")
-	for _, c := range g.Candidates {
-		mark, meets := "", "no"
-		if c.Selected {
-			mark = "*"
-		}
-		if c.Meets {
-			meets = "yes"
-		}
-		n, w := orNone(c.Nominal), orNone(c.Worst)
-		fmt.Fprintf(b, line, mark, plain(c.Rule), plain(c.Controller), figure(&c.Kc, 3), figure(c.Ti, 3), figure(c.Td, 3),
-			figure(w.Ms, 3), figure(w.Settling, 3), figure(w.Overshoot, 3), figure(n.IAE, 3), percent(c.Share), meets)
-	}
-	fmt.Fprintln(b)
 }
 
 // percent writes a share; it never rounds one that is short of everything up
@@ -104,8 +85,7 @@ func unitWords(unit string) string {
 }
 
 func (g *Gains) writeEntries(b *bufio.Writer) {
-	name := map[string]string{"p": "P", "pi": "PI", "pid": "PID"}[g.Controller]
-	fmt.Fprintf(b, "Enter at the controller: %s, %s form, %s acting\n", name, plain(g.Form), plain(g.Action))
+	fmt.Fprintf(b, "%s: %s, %s form, %s acting\n", g.heading(), kindWords(g.Controller), plain(g.Form), plain(g.Action))
 	t := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
 	entries := g.Entry
 	if len(entries) == 0 {
@@ -136,6 +116,17 @@ func (g *Gains) writeEntries(b *bufio.Writer) {
 	}
 }
 
+// heading says what the gains are for.
+func (g *Gains) heading() string {
+	switch {
+	case !g.Judged() || g.Meets:
+		return "Enter at the controller"
+	case g.Rule == synthesised:
+		return "Requirement NOT met; the nearest"
+	}
+	return "Requirement NOT met; the gains of " + plain(g.Rule)
+}
+
 // Judged tells gains whose loop was looked at from gains that someone wrote
 // down.
 func (g *Gains) Judged() bool { return g.Nominal != nil || g.Worst != nil }
@@ -153,11 +144,42 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 	for _, r := range g.Reasons {
 		fmt.Fprintln(b, "  -", plain(r))
 	}
+	g.writeFigures(b, "Worst over "+percent(g.Assurance)+" of the plausible plants", g.Worst)
+	g.writeFigures(b, "On the best fit", g.Nominal)
 	if len(g.Cures) > 0 {
 		fmt.Fprintln(b, "What would let it be met, each by itself unless it says otherwise")
 		for _, c := range g.Cures {
 			fmt.Fprintln(b, "  -", plain(c))
 		}
+	}
+}
+
+// writeFigures writes the figures of the loop on one plant.
+func (g *Gains) writeFigures(b *bufio.Writer, where string, m *Metrics) {
+	if m == nil {
+		return
+	}
+	if !m.Stable {
+		fmt.Fprintf(b, "%s the loop is unstable.\n", where)
+		return
+	}
+	var parts []string
+	say := func(format string, v *float64, unit string) {
+		if v != nil {
+			parts = append(parts, fmt.Sprintf(format, quantity(*v, unit, 3)))
+		}
+	}
+	in, temp := g.Units.Input, perKelvin(g.Units.Temperature)
+	say("Ms %s", m.Ms, "")
+	say("settled after %s", m.Settling, "s")
+	say("overshoot %s", m.Overshoot, "%")
+	say("input up to %s", m.PeakInput, in)
+	say("load IAE %s", m.IAE, strings.TrimPrefix(temp+"·s/"+in, "·"))
+	if m.SteadyOffset != nil && *m.SteadyOffset != 0 {
+		say("offset %s", m.SteadyOffset, temp)
+	}
+	if len(parts) > 0 {
+		fmt.Fprintf(b, "%s: %s.\n", where, strings.Join(parts, ", "))
 	}
 }
 
@@ -194,7 +216,7 @@ func (g *Gains) writeMore(b *bufio.Writer) {
 	if s := g.SquareRoot; s != nil {
 		fmt.Fprintf(b, "\nBehind a square root of the output: gain %s, the times as above.\n", quantity(s.Kc, s.Unit, 4))
 	}
-	if g.PoleRegion != nil {
+	if g.PoleRegion != nil && g.Controller == "p" { // it is about P control alone
 		g.PoleRegion.writeText(b, g.Units.Input+"/"+perKelvin(g.Units.Temperature))
 	}
 	if len(g.Schedule) == 0 {

@@ -3,14 +3,17 @@ package tune
 import (
 	"bytes"
 	"flag"
+	"fmt"
 	"os"
+	"strings"
 	"testing"
 )
 
 var update = flag.Bool("update", false, "write the golden files anew")
 
-// A written-out example of everything the text can show; the numbers are
-// invented, so that no arithmetic decides the digits.
+// A written-out example of everything the text can show, with the best of what
+// was tried and with all of it; the numbers are invented, so that no arithmetic
+// decides the digits.
 func TestWriteText(t *testing.T) {
 	figures := func(ms, overshoot float64) *Metrics {
 		return &Metrics{Stable: true, Ms: ptr(ms), GainMargin: ptr(3.1), PhaseMargin: ptr(58), DelayMargin: ptr(6), Settling: ptr(140),
@@ -24,7 +27,10 @@ func TestWriteText(t *testing.T) {
 	g.Requirement = Requirement{Ms: ptr(1.6), Overshoot: ptr(5)}
 	g.Candidates = []Candidate{
 		{Rule: "synthesis", Controller: "pid", Kc: 0.19, Ti: ptr(60), Td: ptr(7), Filter: 0.7, Nominal: figures(1.5, 3), Worst: figures(1.7, 6), Share: 0.84, Selected: true, InputNoise: 0.12},
-		{Rule: "zn-step", Controller: "pi", Kc: 0.4, Ti: ptr(50), Nominal: figures(2.4, 28), Worst: &Metrics{}, InputNoise: 0.06},
+		{Rule: "zn-step", Controller: "pi", Kc: 0.4, Ti: ptr(50), Nominal: figures(2.4, 28), Worst: &Metrics{}, InputNoise: 0.06, Missed: "overshoot"},
+		{Rule: "cohen-coon", Controller: "pi", Kc: 0.3, Ti: ptr(50), SetpointWeight: ptr(1), Nominal: figures(2.4, 28), Worst: &Metrics{}, Missed: "overshoot"},
+		{Rule: "dahlin", Controller: "pi", Kc: 0.3, Ti: ptr(50), SetpointWeight: ptr(1), Nominal: figures(1.7, 8), Worst: &Metrics{}},
+		{Rule: "simc", Controller: "pi", Kc: 0.05, Ti: ptr(50), SetpointWeight: ptr(0.76), Nominal: figures(1.2, 0), Worst: figures(1.3, 2), Share: 1, Meets: true},
 	}
 	g.Reasons = []string{"overshoot: up to 6 % on 95 % of the plausible plants; asked is 5 %"}
 	g.Cures = []string{"allow an overshoot of 6.5 % in place of 5 %", "cut the dead time from 5 s to 4 s (sensor nearer the heater, measurement less filtered)"}
@@ -36,9 +42,18 @@ func TestWriteText(t *testing.T) {
 	if err := g.WriteText(&b); err != nil {
 		t.Fatal(err)
 	}
-	const file = "testdata/gains.golden"
+	compareGolden(t, "testdata/gains.golden", b.Bytes())
+	b.Reset()
+	if err := g.WriteWholeText(&b); err != nil {
+		t.Fatal(err)
+	}
+	compareGolden(t, "testdata/gains-whole.golden", b.Bytes())
+}
+
+func compareGolden(t *testing.T, file string, got []byte) {
+	t.Helper()
 	if *update {
-		if err := os.WriteFile(file, b.Bytes(), 0o644); err != nil {
+		if err := os.WriteFile(file, got, 0o644); err != nil {
 			t.Fatal(err)
 		}
 	}
@@ -46,7 +61,49 @@ func TestWriteText(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	if !bytes.Equal(b.Bytes(), want) {
-		t.Errorf("text differs from %s (-update writes it anew):\n%s", file, b.String())
+	if !bytes.Equal(got, want) {
+		t.Errorf("text differs from %s (-update writes it anew):\n%s", file, got)
+	}
+}
+
+// The pole region is about P control: it stands with P gains alone.
+func TestPoleRegionOnlyWithP(t *testing.T) {
+	for kind, want := range map[string]bool{"p": true, "pi": false, "pid": false} {
+		g := &Gains{Controller: kind, Form: Ideal, Kc: 1, SetpointWeight: 1, PoleRegion: &RegionDesign{Region: PoleRegion{Damping: 0.7}}}
+		var b bytes.Buffer
+		if err := g.WriteText(&b); err != nil {
+			t.Fatal(err)
+		}
+		if got := strings.Contains(b.String(), "P control:"); got != want {
+			t.Errorf("%s: pole region shown: %v", kind, got)
+		}
+	}
+}
+
+// What was tried comes after the answer: of the published rules the best that
+// meet, and for the others what they miss.
+func TestBestOfTheRules(t *testing.T) {
+	g := &Gains{Controller: "pi", Form: Ideal, Kc: 1, Ti: ptr(9), SetpointWeight: 1, Rule: synthesised}
+	g.Candidates = []Candidate{{Rule: synthesised, Controller: "pi", Kc: 1, Selected: true, Meets: true}}
+	for i := range 7 {
+		g.Candidates = append(g.Candidates, Candidate{Rule: fmt.Sprintf("rule%d", i), Controller: "pi", Kc: 1, Meets: i < 6, Nominal: &Metrics{IAE: ptr(float64(9 - i))}, Missed: "Ms"})
+	}
+	var b bytes.Buffer
+	if err := g.WriteText(&b); err != nil {
+		t.Fatal(err)
+	}
+	text := b.String()
+	for _, want := range []string{"rule2 ", "rule5 ", "6 of 7 published rules meet the requirement (listed: the 4 with the smallest load IAE); the others miss it, most of all in Ms (1)"} {
+		if !strings.Contains(text, want) {
+			t.Errorf("no %q in\n%s", want, text)
+		}
+	}
+	for _, never := range []string{"rule0", "rule1 ", "rule6"} {
+		if strings.Contains(text, never) {
+			t.Errorf("%q in\n%s", never, text)
+		}
+	}
+	if strings.Index(text, "Enter at the controller") != 0 {
+		t.Errorf("the answer does not come first:\n%s", text)
 	}
 }

@@ -7,6 +7,7 @@ import (
 	"math"
 	"runtime"
 	"slices"
+	"strings"
 
 	"lagwright/data"
 	"lagwright/fit"
@@ -394,7 +395,11 @@ func (t *tuning) inputNoise(c law) float64 {
 // candidate is the table's row.
 func (t *tuning) candidate(r row, selected bool) Candidate {
 	c := Candidate{Rule: r.rule, Controller: r.kind, Kc: r.law.kc, Filter: r.law.tf, Form: Ideal, Nominal: r.nominal, Worst: r.worst,
-		Share: r.share, Meets: t.meets(r), Selected: selected, Note: r.note, InputNoise: t.inputNoise(r.law)}
+		Share: r.share, Meets: t.meets(r), Selected: selected, Note: r.note, InputNoise: t.inputNoise(r.law), SetpointWeight: finite(r.law.b)}
+	if !c.Meets {
+		words, _ := r.binding()
+		c.Missed = strings.TrimPrefix(words, "the ")
+	}
 	if r.law.integral() {
 		c.Ti = finite(r.law.ti)
 	}

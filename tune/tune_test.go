@@ -70,7 +70,7 @@ func TestTuneDefault(t *testing.T) {
 		t.Fatal(err)
 	}
 	t.Log(b.String())
-	for _, want := range []string{"Enter at the controller", "simc", "Cautions", "cut-out", "meets the requirement"} {
+	for _, want := range []string{"Enter at the controller", "amigo", "published rules meet", "Cautions", "cut-out", "meets the requirement"} {
 		if !strings.Contains(b.String(), want) {
 			t.Errorf("text lacks %q", want)
 		}

@@ -5,6 +5,7 @@ import (
 	"path/filepath"
 	"strings"
 
+	"lagwright/tune"
 	"lagwright/validate"
 )
 
@@ -43,7 +44,10 @@ func (o *validateOptions) compare(ctx context.Context, c *console, cards, files 
 
 // columnLabel names what differs between the columns.
 func columnLabel(card, gains string, cards, sets int) string {
-	card, gains = filepath.Base(card), filepath.Base(gains)
+	card = filepath.Base(card)
+	if !tune.WrittenOut(gains) {
+		gains = filepath.Base(gains)
+	}
 	switch {
 	case cards == 1:
 		return gains

@@ -18,6 +18,7 @@ type tuneOptions struct {
 	tune  tuneFlags
 	spans logFlags // --input-span and --temp-span only
 	plot  plotFlag
+	whole bool
 }
 
 func newTune(c *console) *cobra.Command {
@@ -40,6 +41,7 @@ that is exit code 4.
 	}
 	o.tune.add(cmd)
 	o.spans.addSpans(cmd)
+	cmd.Flags().BoolVar(&o.whole, "verbose", false, "list everything that was tried, all published rules too")
 	o.plot.add(cmd, "the loop's answer to a setpoint step over the plausible plants")
 	return cmd
 }
@@ -63,7 +65,11 @@ func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) err
 	if err != nil {
 		return tuneError(err)
 	}
-	if err := c.deliver(gains); err != nil {
+	var out result = gains
+	if o.whole {
+		out = wholeGains{gains}
+	}
+	if err := c.deliver(out); err != nil {
 		return err
 	}
 	if err := o.plot.write(c, func() (*report.Figure, error) { return stepFigure(cards[0], gains) }); err != nil {
@@ -71,6 +77,11 @@ func runTune(ctx context.Context, c *console, o *tuneOptions, args []string) err
 	}
 	return gainsVerdict(gains)
 }
+
+// wholeGains show everything that was tried.
+type wholeGains struct{ *tune.Gains }
+
+func (g wholeGains) WriteText(w io.Writer) error { return g.WriteWholeText(w) }
 
 // cardError says what to do with a file that is no model card.
 func cardError(path string, err error) error {

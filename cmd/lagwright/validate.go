@@ -16,6 +16,7 @@ import (
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/data"
+	"lagwright/fit"
 	"lagwright/tune"
 	"lagwright/validate"
 )
@@ -40,22 +41,28 @@ plant with that disturbance. Logs are files, folders and globs. A log that
 cannot be replayed is listed and does not stop the others.
 
 With --logged-gains each run is first replayed under the gains it was made
-with; one that is not reproduced says: do not trust this model here.
+with; one that is not reproduced says: do not trust this model here. A run may
+begin in the middle of a move: its controller starts as the log shows it.
+Gains are a file, or written out with their units: kc=0.4V/K,ti=12s and, where
+they differ from the defaults of a gains file, td, filter, form, weight, scan,
+min, max, rate, resolution; for P control kc and bias.
 With -o, a journal beside the output keeps what is done; after a break, the
 same command with --resume goes on. Several cards, or several --gains, give a
 table of the runs with the results side by side.
 ` + exitHelp,
 		Example: `  lagwright validate card.json runs/ --gains gains.json -o replay.json
   lagwright validate card.json may.csv --gains new.json --logged-gains old.json
+  lagwright validate card.json may.csv --gains new.json \
+    --logged-gains kc=0.4V/K,ti=12s,scan=100ms,max=10V
   lagwright validate card.json "runs/*.parquet" --gains new.json -o t.parquet
   lagwright validate card.json runs/ --gains pi.json --gains pid.json`,
 		Args: needArgs(2, -1, "lagwright validate card.json runs/ --gains gains.json"),
 		RunE: func(cmd *cobra.Command, args []string) error { return runValidate(cmd.Context(), c, &o, args) },
 	}
 	fs := cmd.Flags()
-	fs.StringArrayVar(&o.gains, "gains", nil, "`FILE` of the proposed gains; may be repeated to compare")
+	fs.StringArrayVar(&o.gains, "gains", nil, "`FILE` of the proposed gains, or the gains written out; may be repeated to compare")
 	_ = cmd.MarkFlagRequired("gains")
-	fs.StringVar(&o.loggedGains, "logged-gains", "", "`FILE` of the gains in force when the logs were made")
+	fs.StringVar(&o.loggedGains, "logged-gains", "", "`FILE` of the gains in force when the logs were made, or these gains written out")
 	optionalFlag(fs, &o.options.Setpoint, "setpoint", "NUMBER", "setpoint of the whole run, where the log has none", number)
 	fs.BoolVar(&o.options.Resume, "resume", false, "go on after a break: runs already in the output are taken over")
 	valueFlag(fs, &o.options.Confidence, "confidence", "PERCENT", "95%", "level of the bands", share)
@@ -122,11 +129,11 @@ func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gain
 	if err != nil {
 		return nil, err
 	}
-	gains, err := c.readGains(gainsPath)
+	gains, err := c.gainsOf("--gains", gainsPath, card)
 	if err != nil {
 		return nil, err
 	}
-	options, err := o.with(c, gains)
+	options, err := o.with(c, card, gains)
 	if err != nil {
 		return nil, err
 	}
@@ -154,6 +161,20 @@ func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gain
 	return replay, nil
 }
 
+// gainsOf reads a file of gains, or gains written out in the units of the card.
+// These are said again in full, with what was left to the defaults.
+func (c *console) gainsOf(flag, text string, card *fit.Card) (*tune.Gains, error) {
+	if _, err := os.Stat(text); err == nil || !tune.WrittenOut(text) {
+		return c.readGains(text)
+	}
+	g, err := tune.ParseGains(text, tune.GainUnits{Input: card.Units.Input, Temperature: card.Units.Temperature})
+	if err != nil {
+		return nil, usageErrorf("%s: %w", flag, err)
+	}
+	c.note("%s: %s", flag, g.InWords())
+	return g, nil
+}
+
 func (o *validateOptions) check(c *console) error {
 	if o.options.Resume && len(o.gains) > 1 {
 		return usageErrorf("--resume goes on with one card and one set of gains, not with a comparison")
@@ -165,7 +186,7 @@ func (o *validateOptions) check(c *console) error {
 }
 
 // with completes the options by what the other flags say.
-func (o *validateOptions) with(c *console, gains *tune.Gains) (validate.Options, error) {
+func (o *validateOptions) with(c *console, card *fit.Card, gains *tune.Gains) (validate.Options, error) {
 	v := o.options
 	v.Workers, v.Tool = c.workers, tool()
 	v.SetpointStep = o.requirement.requirement.SetpointStep
@@ -175,7 +196,7 @@ func (o *validateOptions) with(c *console, gains *tune.Gains) (validate.Options,
 		return v, nil
 	}
 	var err error
-	v.LoggedGains, err = c.readGains(o.loggedGains)
+	v.LoggedGains, err = c.gainsOf("--logged-gains", o.loggedGains, card)
 	return v, err
 }
 
