@@ -16,6 +16,16 @@ import (
 //	20260105T100000Z               ISO 8601 basic format
 //	Mon Jan  5 10:00:00 2026       the year last, as ctime of ISO C writes it
 func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
+	if ns, alt, ok = c.parseUsual(b); ok || len(b) < 8 {
+		return ns, alt, ok
+	}
+	if plain := plainStamp(b); !bytes.Equal(plain, b) {
+		return c.parseUsual(plain)
+	}
+	return ns, alt, ok
+}
+
+func (c *clock) parseUsual(b []byte) (ns, alt int64, ok bool) {
 	alt = noTime
 	rest, hit := c.cachedDate(b)
 	day := c.day

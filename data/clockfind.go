@@ -156,6 +156,11 @@ func findTimeOfDay(cells [][]byte, c column) (*clock, error) {
 	for k, b := range cells {
 		b = trimBlanks(b)
 		_, n, fields := scanTime(b, true)
+		if fields == 0 {
+			if _, ok := parseElapsed(b); ok {
+				return &clock{kind: sexagesimal}, nil
+			}
+		}
 		switch {
 		case fields == 3:
 			return &clock{kind: sexagesimal}, nil

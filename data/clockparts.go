@@ -162,18 +162,19 @@ func (s *spreadClock) mark(d *dialect) Note {
 
 // partNames are the names of parts that are no units of time.
 var partNames = map[string][]string{
-	"year":  {"year", "yr", "yyyy", "jahr", "année", "annee", "año", "ano", "anno", "jaar"},
-	"month": {"month", "mon", "mth", "monat", "mois", "mes", "mês", "mese", "maand"},
-	"d":     {"dd", "doy", "day of year", "dayofyear", "day_of_year", "julian day", "jday", "tag", "jour", "día", "dia", "giorno", "dag"},
-	"date":  {"date", "datum", "fecha", "data"},
-	"h":     {"hh", "stunde", "heure", "hora", "uur"},
-	"hhmm":  {"hhmm", "time hhmm", "hourminute", "hour_minute", "time (hhmm)"},
-	"epoch": {"epoch", "epoch time", "unix", "unixtime", "unix time", "unix timestamp", "timestamp"},
-	"min":   {"mi", "minuto"},
-	"s":     {"ss", "sekunde", "seconde", "segundo", "secondo", "tv_sec", "seconds of day", "second of day", "sec of day"},
-	"ms":    {"millitm", "time ms", "time_ms", "ms", "msec", "millis", "millisecond", "milliseconds"},
-	"us":    {"usecs", "tv_usec", "micros", "microsecond", "microseconds"},
-	"ns":    {"nsec", "nsecs", "nanos", "nanosecond", "nanoseconds", "tv_nsec"},
+	"year":     {"year", "yr", "yyyy", "jahr", "année", "annee", "año", "ano", "anno", "jaar"},
+	"month":    {"month", "mon", "mth", "monat", "mois", "mes", "mês", "mese", "maand"},
+	"d":        {"dd", "doy", "day of year", "dayofyear", "day_of_year", "julian day", "jday", "tag", "jour", "día", "dia", "giorno", "dag"},
+	"date":     {"date", "datum", "fecha", "data"},
+	"h":        {"hh", "stunde", "heure", "hora", "uur"},
+	"hhmm":     {"hhmm", "time hhmm", "hourminute", "hour_minute", "time (hhmm)"},
+	"epoch":    {"epoch", "epoch time", "unix", "unixtime", "unix time", "unix timestamp", "timestamp"},
+	"min":      {"mi", "minuto"},
+	"fraction": {"time", "zeit", "uhrzeit", "clock", "time of day"},
+	"s":        {"ss", "sekunde", "seconde", "segundo", "secondo", "tv_sec", "seconds of day", "second of day", "sec of day"},
+	"ms":       {"millitm", "time ms", "time_ms", "ms", "msec", "millis", "millisecond", "milliseconds"},
+	"us":       {"usecs", "tv_usec", "micros", "microsecond", "microseconds"},
+	"ns":       {"nsec", "nsecs", "nanos", "nanosecond", "nanoseconds", "tv_nsec"},
 }
 
 // partFinder collects the columns that can be parts: one of each kind.
@@ -260,12 +261,28 @@ func (f *partFinder) clock() bool {
 		f.scaled("s", nsSecond)
 	case !secOK && f.has("ms", 0, 86401e3) && f.addDays(f.found["ms"], 1e6):
 		f.scaled("ms", 1e6)
+	case f.spreadsheetDay():
+		return true
 	default:
 		return f.secondsAndFraction()
 	}
 	if secOK {
 		f.addFraction(sec)
 	}
+	return true
+}
+
+// spreadsheetDay adds the day number of a spreadsheet and the fraction of the
+// day that stands in another column.
+func (f *partFinder) spreadsheetDay() bool {
+	at, ok := f.found["fraction"]
+	if !ok || !f.has("date", 36526, 73050) || !f.d.holds(at, 0, 1-1e-9, false) || f.d.holds(at, 0, 1, true) {
+		return false
+	}
+	f.scaled("date", nsDay)
+	f.scaled("fraction", nsDay)
+	f.s.kind = calendar
+	f.s.parts = append(f.s.parts, clockPart{[]int{at}, func([][]byte) (int64, bool) { return -spreadsheetEpoch, true }})
 	return true
 }
 

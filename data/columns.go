@@ -228,6 +228,10 @@ func assignTime(cols []column, l *layout, taken map[int]bool) error {
 		found = clockAmong(cols, found)
 	}
 	switch {
+	case len(found) == 0 && unreadable(cols, taken, roleTime) >= 0:
+		c := cols[unreadable(cols, taken, roleTime)]
+		return fmt.Errorf("column %q is the time by its name, but its stamps (%s) are in no form that is known: say how to read them with --time-format, such as --time-format 'dd.MM.yyyy HH:mm:ss', or name another column with %s",
+			c.label, strings.Join(c.sample[:min(2, len(c.sample))], ", "), flags[roleTime])
 	case len(found) == 0:
 		return fmt.Errorf("no column is a clock: say which with %s; the columns are %s", flags[roleTime], listColumns(cols, every(cols)))
 	case len(found) > 1:
@@ -329,8 +333,9 @@ func fits(c class, r role) bool {
 func roleOf(c column) (role, int) {
 	parts := wordsOf(c.name)
 	hit := func(r role) int { return words[r].hit(c.name, parts) }
-	degrees := c.unit == "degC" || c.unit == "degF" || c.unit == "K" || c.unit == "mV"
-	electric := slices.Contains([]string{"V", "%", "mA", "W", "kW"}, c.unit)
+	millivolts := c.unit == "mV" && (hit(roleInput) == 0 || hit(roleTemp) > 0) // of a thermocouple, else of a drive
+	degrees := c.unit == "degC" || c.unit == "degF" || c.unit == "K" || millivolts
+	electric := slices.Contains([]string{"V", "%", "mA", "W", "kW", "kV"}, c.unit) || c.unit == "mV" && !millivolts
 	_, clocked := timeUnits[c.unit]
 	switch {
 	case c.switched && hit(roleInput) > 0 && hit(roleInput) >= hit(roleOther) && hit(roleMode) < 2:
@@ -420,7 +425,10 @@ func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, erro
 				fit = words
 			}
 		}
-		switch {
+		switch bad := unreadable(cols, taken, r); {
+		case len(fit) == 0 && bad >= 0:
+			return nil, fmt.Errorf("column %q is the %s by its name, but most of its cells (%s) are no numbers: mend the export, or name another column with %s",
+				cols[bad].label, roleNames[r], strings.Join(cols[bad].sample[:min(3, len(cols[bad].sample))], ", "), flags[r])
 		case len(fit) == 0:
 			return nil, fmt.Errorf("no column is the %s: say which with %s; the columns are %s", roleNames[r], flags[r], listColumns(cols, every(cols)))
 		case len(fit) > 1:
@@ -431,6 +439,15 @@ func assignByContent(cols []column, l *layout, taken map[int]bool) ([]Note, erro
 		notes = append(notes, contentNote(cols[fit[0]], r))
 	}
 	return notes, nil
+}
+
+// unreadable finds the one column of text that is called as the role asks; -1
+// where there is none, or several.
+func unreadable(cols []column, taken map[int]bool, r role) int {
+	if found := best(cols, taken, r, func(c column) bool { return c.class == texts && !c.switched && len(c.sample) > 0 }); len(found) == 1 {
+		return found[0]
+	}
+	return -1
 }
 
 func isNumeric(c column) bool { return c.class == numbers && !c.switched }

@@ -43,6 +43,9 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 	case unit == "mV":
 		scale(u, 0, 1000, 0, 1)
 		run.Units.Input = "V"
+	case unit == "kV":
+		scale(u, 0, 1, 0, 1000)
+		run.Units.Input = "V"
 	case unit == "":
 		run.Units.Input = unitless
 		r.notes = append(r.notes, Note{Code: "input-unit-unknown",

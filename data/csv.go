@@ -75,9 +75,12 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 		c.expect = s.expectedRows(sample)
 	}
 	lines := newLineReader(s.path, io.MultiReader(bytes.NewReader(sample), text))
-	lines.onlyCR, lines.whole, lines.delim = d.onlyCR, d.whole, d.delim
+	lines.onlyCR, lines.rewrite, lines.delim = d.onlyCR, d.rewrite, d.delim
 	if err := c.readRows(ctx, lines); err != nil {
 		return nil, nil, err
+	}
+	if d.keys != nil {
+		info.note("rows-of-pairs", 0, "each row holds names and values, of %d names", len(d.keys))
 	}
 	if c.repeats > 0 {
 		info.note("header-repeated", 0, "the header is repeated %s inside the data (the logger was restarted)", times(c.repeats))
@@ -376,6 +379,7 @@ func (c *csvReader) table(name string) *table {
 
 // slow reads any other row.
 func (c *csvReader) slow(text []byte, line int) {
+	text = bytes.TrimPrefix(text, []byte("\xEF\xBB\xBF")) // of a file joined to another
 	trimmed := bytes.Trim(text, " \t")
 	if len(trimmed) == 0 || c.isHeader(text) || isComment(text, c.d.delim) {
 		return

@@ -8,9 +8,21 @@ var delimiters = []byte{'\t', ';', '|', ',', ' '}
 // findDelimiter takes the delimiter that makes most of the text numbers and
 // times: the bytes in such cells, times the squared share of such cells.
 func findDelimiter(lines []line) (delim byte, fields int) {
-	best := 0.0
 	lines = lines[max(len(lines)/2, len(lines)-400):] // the header is no measure
-	for _, d := range plausibleDelimiters(lines) {
+	delim, fields, share := bestDelimiter(lines, plausibleDelimiters(lines))
+	if share < goodShare { // a tab behind every comma, say
+		delim, fields, _ = bestDelimiter(lines, delimiters)
+	}
+	return delim, fields
+}
+
+// goodShare is the least share of numbers and times among the cells for which
+// a delimiter is taken because it stands equally often in all lines.
+const goodShare = 0.5
+
+func bestDelimiter(lines []line, among []byte) (delim byte, fields int, goodest float64) {
+	best := 0.0
+	for _, d := range among {
 		type tally struct{ goodBytes, good, all float64 }
 		byCount := map[int]*tally{}
 		for _, l := range lines {
@@ -44,11 +56,11 @@ func findDelimiter(lines []line) (delim byte, fields int) {
 				score /= 2
 			}
 			if score > best || score == best && d == delim && n > fields {
-				best, delim, fields = score, d, n
+				best, delim, fields, goodest = score, d, n, share
 			}
 		}
 	}
-	return delim, fields
+	return delim, fields, goodest
 }
 
 // isTerm tells text that logs hold beside numbers: a word for a value or for no

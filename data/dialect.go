@@ -13,7 +13,9 @@ type dialect struct {
 	delim  byte
 	format numberFormat
 	onlyCR bool // lines end with CR alone
-	whole  bool // each line is one quoted cell that holds a row
+
+	rewrite func(line []byte) []byte // as of the lineReader
+	keys    []string                 // names that stand in every row, in place of a header
 
 	fields int // cells in a row of data
 	first  int // line of the first row of data
@@ -73,7 +75,12 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	if len(physical) == 0 {
 		return nil, fmt.Errorf("%s: is empty", path)
 	}
-	if d.whole = areWrapped(physical); d.whole {
+	if areWrapped(physical) {
+		d.rewrite = unwrapLine
+	} else if k := findKeys(physical); k != nil {
+		d.rewrite, d.keys = k.row, k.names
+	}
+	if d.rewrite != nil {
 		if physical, err = d.lines(path, sample, whole, 0); err != nil {
 			return nil, err
 		}
@@ -94,7 +101,7 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 // lines are left out, and the last line when the sample ends within it.
 func (d *dialect) lines(path string, sample []byte, whole bool, delim byte) ([]line, error) {
 	r := newLineReader(path, bytes.NewReader(sample))
-	r.onlyCR, r.whole, r.delim = d.onlyCR, d.whole, delim
+	r.onlyCR, r.rewrite, r.delim = d.onlyCR, d.rewrite, delim
 	if delim == 0 { // before the delimiter is known quotes mean nothing
 		r.quoted = false
 	}
@@ -155,7 +162,10 @@ func (d *dialect) findColumns(path string, lines []line) error {
 		return fmt.Errorf("%s: no rows of data found", path)
 	}
 	d.first = lines[start].number
-	names, units := d.findHeader(lines[:start], lines[start])
+	names, units := d.keys, []string(nil)
+	if names == nil {
+		names, units = d.findHeader(lines[:start], lines[start])
+	}
 	if err := d.checkNames(names, lines[start:]); err != nil {
 		return fmt.Errorf("%s:%d: %w", path, max(1, d.first-1), err)
 	}

@@ -13,7 +13,7 @@ import (
 func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 	var rows []line
 	for k := len(above) - 1; k >= 0 && len(rows) < 2; k-- {
-		if isComment(above[k].text, d.delim) {
+		if isComment(above[k].text, d.delim) || isRule(above[k].text) {
 			continue
 		}
 		if len(above[k].cells) < 2 {
@@ -45,6 +45,11 @@ func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 		return names, units
 	}
 	return d.fitNames(rows[0].text, names), units
+}
+
+// isRule tells a line drawn under or over a header: dashes and the like.
+func isRule(text []byte) bool {
+	return bytes.Count(text, []byte{'-'})+bytes.Count(text, []byte{'='}) >= 3 && len(bytes.Trim(text, "-=+_|: \t\r")) == 0
 }
 
 // fitNames makes as many names of a header as the rows have cells, where it

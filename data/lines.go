@@ -24,9 +24,10 @@ type lineReader struct {
 
 	onlyCR bool // lines end with CR alone
 	quoted bool // a quote was seen: a record may hold line ends
-	whole  bool // each line is one quoted cell that holds a row
 	delim  byte // delimiter, for the end of quoted cells
-	lastNL bool // the text read so far ends with a line end
+
+	rewrite func(line []byte) []byte // makes a row of a line that holds it in another form; nil where lines are rows
+	lastNL  bool                     // the text read so far ends with a line end
 
 	line int // number of the line handed out last, from 1
 	next int // number of the line that follows it
@@ -45,13 +46,13 @@ func (l *lineReader) read() ([]byte, error) {
 			line := l.buf[l.lo : l.lo+n]
 			l.line = l.next
 			l.next++
-			if l.quoted && !l.whole {
+			if l.quoted && l.rewrite == nil {
 				l.next += bytes.Count(line, []byte{'\n'})
 			}
 			l.lo += end
 			line = bytes.TrimRight(line, "\r")
-			if l.whole {
-				line = unwrapLine(line)
+			if l.rewrite != nil {
+				line = l.rewrite(line)
 			}
 			return line, nil
 		}
@@ -62,7 +63,7 @@ func (l *lineReader) read() ([]byte, error) {
 			return nil, io.EOF
 		}
 		from = l.hi - l.lo
-		if l.quoted && !l.whole {
+		if l.quoted && l.rewrite == nil {
 			from = 0
 		}
 		if err := l.fill(); err != nil {
@@ -75,7 +76,7 @@ func (l *lineReader) read() ([]byte, error) {
 // the line end. At the end of the text the rest is a line.
 func (l *lineReader) find(from int) (n, end int, ok bool) {
 	rest := l.buf[l.lo:l.hi]
-	if l.quoted && !l.whole {
+	if l.quoted && l.rewrite == nil {
 		n = recordEnd(rest, l.delim, l.eof)
 	} else if n = bytes.IndexByte(rest[from:], '\n'); n >= 0 {
 		n += from

@@ -16,6 +16,8 @@ var badWords = []string{
 	"BAD", "BAD INPUT", "BAD DATA", "BAD QUALITY", "INVALID", "ERR", "ERROR", "#ERR", "#VALUE!", "#DIV/0!", "#REF!", "#NUM!", "#NAME?",
 	"FAIL", "FAILED", "FAULT", "BURNOUT", "BURN-OUT", "BREAK", "SENSOR BREAK", "SHORT", "NO DATA", "NODATA", "NO SIGNAL", "I/O TIMEOUT",
 	"COMM FAIL", "OFFLINE", "OFF-SCAN", "PT CREATED", "SHUTDOWN", "CONFIGURE", "MISSING", "?", "*", "UNCERTAIN",
+	"N/C", "NC", "OVRFLW", "OVFL", "OVERLOAD", "UNDERFLOW", "LIMIT", "BURN", "B.OUT", "BOUT", "TC OPEN", "OPEN TC", "OPEN CIRCUIT", "NO SENSOR", "NOT CONNECTED",
+	"DISCONNECTED", "UNPLUGGED", "SENSOR ERROR", "SENSOR ERR", "SENSOR FAULT", "INPUT ERROR", "BAD VALUE", "BADVAL", "NOT AVAILABLE", "HHHH", "LLLL", "UUUU", "1.#IND", "-1.#IND", "-1.#QNAN",
 	"FEHLER", "OFFEN", "BRUCH", "ERREUR", "ABIERTO", "APERTO", "OUVERT", "ERRORE", "FOUT", "OUT OF RANGE", "+OVER", "-OVER", "+OL", "-OL",
 }
 
@@ -27,7 +29,7 @@ func missingKind(cell []byte) (kind string, known bool) {
 	if len(cell) == 0 {
 		return "blank", true
 	}
-	if dashes := bytes.Trim(cell, "-_."); len(dashes) == 0 {
+	if dashes := bytes.Trim(cell, "-_.*+#"); len(dashes) == 0 && !bytes.Equal(cell, []byte("*")) {
 		return "----", true
 	}
 	if len(cell) > 40 {

@@ -32,3 +32,14 @@ func ownFile(head []byte) string {
 	}
 	return "is a result of lagwright (" + string(m[1]) + "), not a log: give a CSV or Parquet log"
 }
+
+// isMarkup tells HTML and XML, which some exports hide behind another ending.
+func isMarkup(head []byte) bool {
+	head = bytes.ToLower(bytes.TrimLeft(bytes.TrimPrefix(head, []byte("\xEF\xBB\xBF")), " \t\r\n"))
+	for _, tag := range []string{"<html", "<!doctype", "<?xml", "<table", "<meta", "<head", "<body"} {
+		if bytes.HasPrefix(head, []byte(tag)) {
+			return true
+		}
+	}
+	return false
+}

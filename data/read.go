@@ -52,6 +52,9 @@ func readTables(ctx context.Context, s *source, o *Options) ([]*table, *reading,
 	if use := ownFile(s.head); use != "" {
 		return nil, nil, fmt.Errorf("%s: %s", s.path, use)
 	}
+	if isMarkup(s.head) {
+		return nil, nil, fmt.Errorf("%s: is a page of HTML or XML, whatever its name says, not a log: open it in a spreadsheet and save it as CSV", s.path)
+	}
 	if bytes.HasPrefix(s.head, []byte("PAR1")) {
 		return readParquet(ctx, s, o)
 	}

@@ -10,7 +10,7 @@ import (
 func parseTimeOfDay(b []byte, hourMinute bool) (ns int64, ok bool) {
 	ns, n, fields := scanTime(b, hourMinute)
 	if fields == 0 {
-		return 0, false
+		return parseElapsed(b)
 	}
 	ns, rest, ok := halfDay(ns, b[n:])
 	return ns, ok && len(rest) == 0
@@ -129,7 +129,10 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 		return 0, 0, false
 	}
 	rest = skipSpaces(rest)
-	if len(rest) == 0 || isZoneName(rest) {
+	if i := bytes.IndexByte(rest, '['); i >= 0 && rest[len(rest)-1] == ']' && isPlace(rest[i+1:len(rest)-1]) {
+		rest = rest[:i] // the offset in front says it all
+	}
+	if len(rest) == 0 || isZoneName(rest) || isPlace(rest) {
 		return tod, 0, true
 	}
 	east, ok = zoneOffset(rest)
@@ -166,6 +169,21 @@ func isZoneName(b []byte) bool {
 	}
 	for _, c := range b {
 		if c < 'A' || c > 'Z' {
+			return false
+		}
+	}
+	return true
+}
+
+// isPlace tells the name of a zone such as Europe/Paris, whose offset from
+// Greenwich is not looked up: the clock stays a local one.
+func isPlace(b []byte) bool {
+	slash := bytes.IndexByte(b, '/')
+	if slash < 3 || slash == len(b)-1 || len(b) > 40 {
+		return false
+	}
+	for _, c := range b {
+		if !isLetter(c) && c != '/' && c != '_' && c != '-' {
 			return false
 		}
 	}

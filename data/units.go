@@ -13,12 +13,13 @@ const unitless = "unit"
 var unitNames = map[string][]string{
 	"V":    {"v", "volt", "volts", "vdc", "vac", "vrms", "v rms", "v dc", "v ac", "v(rms)"},
 	"mV":   {"mv", "millivolt", "millivolts"},
+	"kV":   {"kv", "kilovolt", "kilovolts"},
 	"%":    {"%", "pct", "percent", "prozent", "perc", "% duty", "pourcent"},
 	"mA":   {"ma", "milliamp", "milliamps", "milliampere"},
 	"W":    {"w", "watt", "watts"},
 	"kW":   {"kw", "kilowatt"},
-	"degC": {"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c"},
-	"degF": {"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f"},
+	"degC": {"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c", "øc", "â°c", "\ufffdc", "?c"},
+	"degF": {"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f", "øf", "â°f", "\ufffdf", "?f"},
 	"K":    {"k", "kelvin"},
 
 	"ns":  {"ns"},
