@@ -161,6 +161,7 @@ func (d *dialect) findColumns(path string, lines []line) error {
 	if start < 0 {
 		return fmt.Errorf("%s: no rows of data found", path)
 	}
+	start += d.belowNames(lines[start:], start == 0)
 	d.first = lines[start].number
 	names, units := d.keys, []string(nil)
 	if names == nil {
@@ -189,6 +190,28 @@ func (d *dialect) findColumns(path string, lines []line) error {
 	}
 	d.inspect(d.rows)
 	return nil
+}
+
+// numberedLines is how far below a row of numbers at the top of a file the names
+// are looked for.
+const numberedLines = 10
+
+// belowNames tells how many lines stand in front of the first row of data where
+// the file begins with numbers that are none: of columns, of channels.
+func (d *dialect) belowNames(lines []line, atTop bool) int {
+	if !atTop {
+		return 0
+	}
+	names := 0
+	for k, l := range lines[:min(numberedLines, len(lines))] {
+		if len(l.cells) == d.fields && !isComment(l.text, d.delim) && len(nonBlank(l.cells)) == d.fields &&
+			!slices.ContainsFunc(l.cells, func(c []byte) bool { return d.classOf(c) != texts }) {
+			names = k
+		} else if names > 0 && d.isData(l) {
+			return k
+		}
+	}
+	return 0
 }
 
 // describe classes the columns by the majority of their cells.

@@ -81,6 +81,7 @@ func finish(path string, tb *table, info *reading, o *Options) (*Run, error) {
 	if tb.auto != nil {
 		r.auto = tb.auto.flat()
 	}
+	r.joinComplements()
 	if err := r.mendClock(info.clock); err != nil {
 		return nil, fail(err)
 	}

@@ -13,7 +13,7 @@ import (
 func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 	var rows []line
 	for k := len(above) - 1; k >= 0 && len(rows) < 2; k-- {
-		if isComment(above[k].text, d.delim) || isRule(above[k].text) {
+		if isComment(above[k].text, d.delim) || isRule(above[k].text) || isTypeRow(above[k].cells) {
 			continue
 		}
 		if len(above[k].cells) < 2 {
@@ -50,6 +50,30 @@ func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 // isRule tells a line drawn under or over a header: dashes and the like.
 func isRule(text []byte) bool {
 	return bytes.Count(text, []byte{'-'})+bytes.Count(text, []byte{'='}) >= 3 && len(bytes.Trim(text, "-=+_|: \t\r")) == 0
+}
+
+// typeWords are what databases and analysis programs call kinds of columns.
+var typeWords = []string{"float", "float32", "float64", "double", "real", "lreal", "single", "int", "integer", "int16", "int32", "int64", "dint", "uint", "long",
+	"string", "text", "varchar", "char", "bool", "boolean", "date", "time", "datetime", "timestamp", "number", "numeric", "decimal"}
+
+// isTypeRow tells a row that says of what kind the columns are.
+func isTypeRow(cells [][]byte) bool {
+	n, kinds := 0, 0
+	for _, c := range cells {
+		if len(c) == 0 {
+			continue
+		}
+		n++
+		word := strings.ToLower(decodeName(c))
+		if slices.Contains(typeWords, word) {
+			kinds++
+		}
+		if word == "date" || word == "time" || word == "timestamp" || word == "number" { // names as well
+			n--
+			kinds--
+		}
+	}
+	return n > 0 && kinds == n
 }
 
 // fitNames makes as many names of a header as the rows have cells, where it

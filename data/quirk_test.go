@@ -183,6 +183,10 @@ var quirks = []quirk{
 	{file: "header-wide.csv", wrong: "the header names 4 columns (Time | local | Drive_V | Outlet_C), but the rows hold 3"},
 	{file: "header-two-words.txt"},
 	{file: "header-rule.tsv"},
+	{file: "numbers-above-names.csv"},
+	{file: "types-below-names.csv"},
+	{file: "brackets-full-width.csv"},
+	{file: "sample-number-only.csv", wrong: "no column is a clock: say which with --time-col"},
 	{file: "rule-blanks.txt"},
 	{file: "rule-frame.txt", dropped: map[string]int{"row too short": 1}},
 	{file: "rule-bars.txt"},
@@ -410,6 +414,9 @@ var quirks = []quirk{
 			}
 		}},
 	{file: "long-historian.csv", y: with(baseY, 4, nan), start: "2026-01-25T10:00:00Z", notes: []string{"long-form", local}, missing: map[string]int{"status Bad": 1}},
+	{file: "line-for-each-value.csv", start: "2026-01-25T10:00:00Z", notes: []string{"rows-joined", local}, dropped: map[string]int{"joined to the row before": 8}},
+	{file: "pairs-line-for-each-value.txt", start: "2026-01-25T10:00:00Z", notes: []string{"rows-of-pairs", "rows-joined", local},
+		dropped: map[string]int{"joined to the row before": 8}},
 	{file: "exception-wide.csv", t: []float64{0, 0.7, 1, 1.3, 2.9, 3.5}, u: []float64{0, 0, 1.5, 1.5, 1.5, 1.5},
 		y: []float64{24.1, 24.1, nan, 24.3, 26.7, 28}, notes: []string{"input-held"}, missing: map[string]int{"blank": 5}},
 }

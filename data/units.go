@@ -24,9 +24,9 @@ var unitNames = map[string][]string{
 
 	"ns":  {"ns"},
 	"us":  {"us", "µs", "μs", "usec", "micros", "microsecond", "microseconds"},
-	"ms":  {"ms", "msec", "msecs", "millis", "millisecond", "milliseconds", "millisekunden"},
-	"s":   {"s", "sec", "secs", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"},
-	"min": {"min", "mins", "minute", "minutes", "minuten", "minutos", "minuti"},
+	"ms":  {"ms", "msec", "msecs", "毫秒", "ミリ秒", "millis", "millisecond", "milliseconds", "millisekunden"},
+	"s":   {"s", "sec", "secs", "秒", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"},
+	"min": {"min", "mins", "分", "分钟", "minute", "minutes", "minuten", "minutos", "minuti"},
 	"h":   {"h", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"},
 	"d":   {"d", "day", "days", "tage", "jours"},
 }
@@ -48,11 +48,14 @@ func canonicalUnit(written string) (name string, known bool) {
 	return w, false
 }
 
+// fullWidth writes the brackets of Chinese and Japanese names as usual ones.
+var fullWidth = strings.NewReplacer("（", "(", "）", ")", "［", "[", "］", "]", "【", "[", "】", "]", "％", "%")
+
 // splitNameUnit separates the unit from the name of a column: "Outlet (°C)",
 // "u [V]", "T/degC", "t_s", "Voltage, V", "Temp °C". unit is canonical when
 // it is known, as written in brackets when not, "" when there is none.
 func splitNameUnit(label string) (name, unit string) {
-	label = strings.TrimSpace(label)
+	label = strings.TrimSpace(fullWidth.Replace(label))
 	if u, known := canonicalUnit(label); known && !isSymbol(label) {
 		return label, u
 	}

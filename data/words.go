@@ -117,6 +117,8 @@ var words = [numRoles]vocabulary{
 		words: []string{"value", "reading", "val", "wert", "messwert", "valeur", "valor", "valore", "waarde", "wartość", "värde"},
 	},
 	roleOther: {
+		whole: []string{"sample", "samples", "sample no", "sample no.", "sample number", "sample #", "scan", "scan no", "scan no.", "scan number", "count", "counter",
+			"number", "nummer", "#", "point no", "point no.", "messung", "lfd", "lfd.", "numéro", "número", "numero"},
 		words: []string{"battery", "ambient", "room", "sheath", "element", "board", "cpu", "panel", "supply_voltage", "mains", "humidity",
 			"pressure", "raum", "umgebung", "batterie", "feuchte", "druck", "index", "row", "record", "nr", "no", "serial", "current", "ampere",
 			"error", "deviation", "alarm", "fault", "trip", "interlock", "fan", "blower", "pump", "lamp", "door", "rh"},
