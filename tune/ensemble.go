@@ -154,9 +154,33 @@ func (e *ensemble) worstCard(figure func(i int) float64, of func(v []float64) fl
 
 // miss is the worst violation on as many of the scenarios as a design must hold
 // on (see toHold), of the worst card: ≤ 0 (but for a hair) where holds is true.
-func (e *ensemble) miss(c law, share float64) float64 {
-	out := e.outcomes(c, searchStep)
-	worst, _ := e.worstCard(func(i int) float64 { return out[i].violation }, func(v []float64) float64 {
+func (e *ensemble) miss(c law, share float64) float64 { return e.missBelow(c, share, math.Inf(1)) }
+
+// missBelow is miss where that is below bound; where it is not, +Inf, which is
+// known as soon as too many scenarios miss by as much.
+func (e *ensemble) missBelow(c law, share, bound float64) float64 {
+	counts := e.counts()
+	beyond := make([]atomic.Int64, e.cards)
+	violations, failed := make([]float64, len(e.scenarios)), make([]bool, len(e.scenarios))
+	var out atomic.Bool
+	e.each(func(i int, s *scenario) {
+		if out.Load() {
+			return
+		}
+		violations[i] = s.task.violation(s, c, bound)
+		if violations[i] < bound {
+			return
+		}
+		failed[i] = true
+		if n := counts[s.card]; int(beyond[s.card].Add(1)) > n-toHold(n, share) {
+			out.Store(true)
+		}
+	})
+	e.promote(failed)
+	if out.Load() {
+		return math.Inf(1)
+	}
+	worst, _ := e.worstCard(func(i int) float64 { return violations[i] }, func(v []float64) float64 {
 		return quantile(v, float64(toHold(len(v), share))/float64(len(v)))
 	})
 	return worst

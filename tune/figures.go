@@ -30,7 +30,7 @@ func (t *task) metrics(s *scenario, c law, input float64) *Metrics {
 	m := &Metrics{Stable: true, Ms: finite(f.Ms), GainMargin: finite(f.GainMargin), PhaseMargin: finite(f.PhaseMargin), DelayMargin: finite(f.DelayMargin)}
 	if s.sampled != nil {
 		cross := s.phaseCross(&l)
-		m.Damping = finite(dampingBelow(1, 14, func(zeta float64) bool { return s.damped(c, &l, zeta, cross) }))
+		m.Damping = finite(dampingBelow(1, 14, math.Inf(1), 0, func(zeta float64) bool { return s.damped(c, &l, zeta, cross) }))
 	} else if poles := l.poles(); poles != nil {
 		m.Damping = finite(dominantDamping(poles, f.PhaseCross))
 	}

@@ -172,17 +172,14 @@ func (t *task) judge(s *scenario, c law, fine float64) outcome {
 		}
 	}
 	if !math.IsInf(t.ms, 1) {
-		note((o.quick.ms-t.ms)/max(t.ms-1, 0.05), "ms")
-		if o.quick.ms <= t.ms*(1+hair) {
-			o.violation = min(o.violation, 0)
-		}
+		note(t.msViolation(o.quick.ms), "ms")
 	}
 	l := newOpenLoop(s.p, c, s.scan)
 	if o.dampingHeld = true; t.damping > 0 {
 		cross := s.phaseCross(&l)
 		held := func(zeta float64) bool { return s.damped(c, &l, zeta, cross) }
 		if o.dampingHeld = held(t.damping); !o.dampingHeld {
-			note(1-dampingBelow(t.damping, 8, held)/t.damping, "damping")
+			note(1-dampingBelow(t.damping, dampingSteps, math.Inf(1), 0, held)/t.damping, "damping")
 		} else {
 			note(0, "damping")
 		}
@@ -196,6 +193,64 @@ func (t *task) judge(s *scenario, c law, fine float64) outcome {
 		note(v, what)
 	}
 	return o
+}
+
+// msViolation is by how much Ms is passed; none within a hair.
+func (t *task) msViolation(ms float64) float64 {
+	v := (ms - t.ms) / max(t.ms-1, 0.05)
+	if ms <= t.ms*(1+hair) {
+		v = min(v, 0)
+	}
+	return v
+}
+
+// dampingSteps is how often the damping ratio of a loop that misses it is halved in on.
+const dampingSteps = 8
+
+// violation is that of judge for a search that asks only for values below
+// bound: where it is not below, any value that is not either. What cannot
+// change the answer any more is left out, the costly last.
+func (t *task) violation(s *scenario, c law, bound float64) float64 {
+	f := s.quick(c)
+	if !f.stable {
+		return 1000
+	}
+	worst := math.Inf(-1)
+	if !math.IsInf(t.ms, 1) {
+		worst = t.msViolation(f.ms)
+	}
+	if worst >= bound {
+		return worst
+	}
+	l := newOpenLoop(s.p, c, s.scan)
+	if t.simulates() {
+		deadline := t.settling
+		if !math.IsInf(deadline, 1) {
+			deadline *= min(patience, 1+bound)
+		}
+		fig, err := t.setpoint(s, c, &l, f, searchStep, deadline)
+		if err != nil {
+			return 1000
+		}
+		if v := t.stepViolation(fig); v > hair || v > worst {
+			worst = max(worst, v)
+		}
+	}
+	if t.damping == 0 || worst >= min(bound, 1) { // damping is never missed by more than 1
+		return worst
+	}
+	return max(worst, t.dampingViolation(s, c, &l, worst, bound))
+}
+
+// dampingViolation is by how much the damping ratio is missed, 0 where it is
+// held; known between worst and bound, where it makes a difference.
+func (t *task) dampingViolation(s *scenario, c law, l *openLoop, worst, bound float64) float64 {
+	cross := s.phaseCross(l)
+	held := func(zeta float64) bool { return s.damped(c, l, zeta, cross) }
+	if held(t.damping) {
+		return 0
+	}
+	return 1 - dampingBelow(t.damping, dampingSteps, t.damping*(1-worst), t.damping*(1-bound), held)/t.damping
 }
 
 // met tells whether the requirement held.

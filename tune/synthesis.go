@@ -320,7 +320,7 @@ func (s *search) coarse(on *ensemble, kind string) []float64 {
 			if cancelled(s.ctx) {
 				return at
 			}
-			if m := on.miss(s.build(kind, x), s.assurance); m < best {
+			if m := on.missBelow(s.build(kind, x), s.assurance, best); m < best {
 				best, at = m, x
 			}
 		}

@@ -79,10 +79,14 @@ func (l *openLoop) sectorEmpty(of transfer, zeta, radius float64) bool {
 }
 
 // dampingBelow returns the damping ratio of the least damped dominant pole,
-// known to be less than zeta, to zeta/2^steps.
-func dampingBelow(zeta float64, steps int, held func(zeta float64) bool) float64 {
+// known to be less than zeta, to zeta/2^steps. It need not be told apart from
+// others that reach enough, nor from others that stay below little.
+func dampingBelow(zeta float64, steps int, enough, little float64, held func(zeta float64) bool) float64 {
 	lo, hi := 0.0, zeta
 	for range steps {
+		if lo >= enough || hi <= little {
+			break
+		}
 		if mid := (lo + hi) / 2; held(mid) {
 			lo = mid
 		} else {
