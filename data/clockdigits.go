@@ -60,7 +60,7 @@ func namesTime(c column) bool {
 func (d *dialect) areDateDigits(i int) bool {
 	n := 0
 	for _, l := range d.rows {
-		if i >= len(l.cells) || len(l.cells[i]) == 0 {
+		if len(l.cells) < d.fields || len(l.cells[i]) == 0 { // words below the data, a row cut off
 			continue
 		}
 		y, m, day, w := basicDate(l.cells[i])
@@ -79,7 +79,7 @@ func (d *dialect) findClockDigits(i int) (width clockDigits, sure bool) {
 	var v []float64
 	broken := false
 	for _, l := range d.rows {
-		if i >= len(l.cells) {
+		if len(l.cells) < d.fields {
 			continue
 		}
 		if x, ok := d.format.parse(l.cells[i]); ok {

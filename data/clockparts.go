@@ -220,7 +220,7 @@ func (f *partFinder) has(part string, lo, hi float64) bool {
 func (d *dialect) holds(i int, lo, hi float64, whole bool) bool {
 	n := 0
 	for _, l := range d.rows {
-		if i >= len(l.cells) {
+		if len(l.cells) < d.fields {
 			continue
 		}
 		v, ok := d.format.parse(l.cells[i])

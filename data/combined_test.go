@@ -5,6 +5,7 @@ import (
 	"context"
 	"fmt"
 	"io"
+	"maps"
 	"math"
 	"math/rand/v2"
 	"os"
@@ -70,7 +71,8 @@ type clockForm struct {
 	columns []string // names, where there are two
 	cells   func(at time.Time, s float64) []string
 	number  bool // its decimal mark is that of the file
-	blank   bool // holds blanks
+	blank   bool // holds blanks, or can be blank
+	held    bool // leaves out the date
 }
 
 func stampForm(layout string) clockForm {
@@ -117,6 +119,49 @@ var clockForms = map[string]clockForm{
 	"compact":     stampForm("20060102150405.000"),
 	"two columns": twoForms("02.01.2006", "15:04:05.000"),
 	"two, AM/PM":  twoForms("01/02/2006", "03:04:05.000 PM"),
+	"ctime":       stampForm("Mon Jan _2 15:04:05.000 2006"),
+	"ctime, zone": stampForm("Mon Jan 2 15:04:05.000 UTC 2006"),
+	"RFC 1123":    stampForm("Mon, 02 Jan 2006 15:04:05.000 GMT"),
+	"day of year": stampForm("2006-002T15:04:05.000"),
+	"brackets":    stampForm("[2006-01-02 15:04:05.000]"),
+	"literal":     stampForm("DT#2006-01-02-15:04:05.000"),
+	"dashes":      stampForm("2006-01-02-15-04-05.000"),
+	"signs":       stampForm("2006年01月02日 15:04:05.000"),
+	"place":       stampForm("2006-01-02 15:04:05.000 Europe/Madrid"),
+	"days in front": {blank: true, cells: func(_ time.Time, s float64) []string {
+		s += 86390
+		return []string{fmt.Sprintf("%d days %s", int(s)/86400, time.UnixMilli(int64(1000*s)).UTC().Format("15:04:05.000"))}
+	}},
+	"bare digits": {columns: []string{"Date", "Time"}, cells: func(at time.Time, _ float64) []string {
+		return []string{at.Format("20060102"), strings.TrimLeft(strings.Replace(at.Format("150405.000"), ".", "", 1), "0") + map[bool]string{true: "0"}[at.Format("150405.000") == "000000.000"]}
+	}},
+	"seven columns": {columns: []string{"Year", "Month", "Day", "Hour", "Minute", "Second", "ms"}, cells: func(at time.Time, _ float64) []string {
+		return strings.Fields(fmt.Sprint(at.Year(), " ", int(at.Month()), at.Day(), at.Hour(), at.Minute(), at.Second(), at.Nanosecond()/1e6))
+	}},
+	"milliseconds apart": {columns: []string{"Date", "Time", "Millis"}, cells: func(at time.Time, _ float64) []string {
+		return []string{at.Format("2006-01-02"), at.Format("15:04:05"), strconv.Itoa(at.Nanosecond() / 1e6)}
+	}},
+	"day and milliseconds": {columns: []string{"Day", "ms"}, cells: func(at time.Time, _ float64) []string {
+		return []string{strconv.Itoa(at.YearDay()), strconv.Itoa((at.Hour()*3600+at.Minute()*60+at.Second())*1000 + at.Nanosecond()/1e6)}
+	}},
+}
+
+// heldForms write the date in some rows only: they are no forms for a log
+// whose tags stand one below the other.
+var heldForms = map[string]clockForm{
+	"date in the first row": {blank: true, columns: []string{"Date", "Time"}, cells: func(at time.Time, s float64) []string {
+		return []string{map[bool]string{true: at.Format("02.01.2006")}[s == 0], at.Format("15:04:05.000")}
+	}},
+	"date where it changes": {blank: true, held: true, cells: func(at time.Time, s float64) []string {
+		return []string{map[bool]string{true: at.Format("2006-01-02 ")}[s == 0 || at.Hour() == 0 && at.Minute() == 0 && at.Second() == 0 && at.Nanosecond() == 0] + at.Format("15:04:05.000")}
+	}},
+}
+
+// wideForms are all forms of a clock.
+func wideForms() map[string]clockForm {
+	all := maps.Clone(clockForms)
+	maps.Copy(all, heldForms)
+	return all
 }
 
 // dayNumberOf is a spreadsheet's number of an instant, with twelve decimals.
@@ -223,7 +268,7 @@ func (m *mess) writeLong(start time.Time) {
 func (m *mess) write(start time.Time) {
 	delim := pick(m, "delimiter", map[string]byte{"comma": ',', "semicolon": ';', "tab": '\t', "pipe": '|', "blanks": ' '})
 	comma := pick(m, "decimal mark", map[string]bool{"point": false, "comma": true})
-	form := pick(m, "clock", clockForms)
+	form := pick(m, "clock", wideForms())
 	if form.blank && delim == ' ' {
 		delim = '\t'
 	}
@@ -331,10 +376,17 @@ func (m *mess) write(start time.Time) {
 	m.rng.Shuffle(len(cols), func(i, j int) { cols[i], cols[j] = cols[j], cols[i] })
 	cols = append(before[:min(1, len(before))], slices.Insert(cols, at*len(cols), clock)...)
 
+	around := "%s"
+	if quoted {
+		around = pick(m, "quotes", map[string]string{"plain": `"%s"`, "protected": `="%s"`, "protected in quotes": `"=""%s"""`})
+	}
 	trailing := delim != ' ' && m.rng.IntN(5) == 0
 	line := func(cells []string) string {
 		for i, c := range cells {
-			if quoted || delim != ' ' && strings.IndexByte(c, delim) >= 0 {
+			switch {
+			case quoted:
+				cells[i] = fmt.Sprintf(around, c)
+			case delim != ' ' && strings.IndexByte(c, delim) >= 0:
 				cells[i] = `"` + c + `"`
 			}
 			if delim == ' ' {
@@ -395,11 +447,16 @@ func (m *mess) write(start time.Time) {
 	switch order := pick(m, "order", map[string]int{"plain": 0, "as it was": 0, "newest first": 1, "five sent again": 2}); {
 	case order == 1 && restart < 0:
 		slices.Reverse(rows)
-	case order == 2 && restart < 0 && gap < 0:
+	case order == 2 && restart < 0 && gap < 0 && !form.held: // where the date changes in its own row, rows sent again from before it cannot be told from a gap
 		k := 6 + m.rng.IntN(len(rows)-6)
 		rows = slices.Insert(rows, k, slices.Clone(rows[k-5:k])...)
 	}
 	lines = append(lines, rows...)
+	if delim != ' ' && pick(m, "rows", map[string]bool{"plain": false, "as they are": false, "each in quotes": true}) {
+		for i, l := range lines {
+			lines[i] = `"` + strings.ReplaceAll(l, `"`, `""`) + `"`
+		}
+	}
 	lines = append(lines, pick(m, "end", map[string][]string{"none": nil, "blank": {"", ""}, "words": {"", "End of log"}, "NUL": {strings.Repeat("\x00", 40)}})...)
 	for i := range missing {
 		m.y[i] = nan
@@ -421,7 +478,7 @@ func (m *mess) pack(text string, latin bool) {
 			return unicode.UTF16(unicode.BigEndian, unicode.UseBOM).NewEncoder().Bytes([]byte(s))
 		},
 	}
-	if latin {
+	if latin && !strings.Contains(text, "年") {
 		encodings["Windows-1252"] = func(s string) ([]byte, error) { return charmap.Windows1252.NewEncoder().Bytes([]byte(s)) }
 	}
 	b, err := pick(m, "encoding", encodings)(text)

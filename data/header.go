@@ -180,6 +180,7 @@ func cellNames(cells [][]byte) []string {
 // unitRow reads a row whose cells are all units or blank.
 func unitRow(cells [][]byte) (units []string, ok bool) {
 	known, written := 0, 0
+	clock := ""
 	for _, c := range cells {
 		if len(c) == 0 || bytes.Equal(c, []byte("-")) {
 			units = append(units, "")
@@ -188,6 +189,11 @@ func unitRow(cells [][]byte) (units []string, ok bool) {
 		written++
 		text := decodeName(c)
 		u, is := unitCell(text)
+		if _, ofTime := timeUnits[u]; ofTime && clock != "" && clock != u { // Hour, Minute: these are names
+			return nil, false
+		} else if ofTime {
+			clock = u
+		}
 		if is {
 			known++
 		} else if len([]rune(text)) > 12 {

@@ -9,7 +9,7 @@ import "time"
 type heldDate struct {
 	newestFirst bool
 	t, alt      int64 // of the row before, as clock.parse returns them
-	midnights   int   // passed without a date
+	midnights   int   // passed without a date, less those gone back over
 }
 
 // isNoDate tells a cell that leaves out the date: blank, a dash, a ditto mark.
@@ -95,16 +95,23 @@ func (h *heldDate) stamp(b []byte, t, alt int64, ok bool) (int64, int64, bool) {
 	return h.t, h.alt, true
 }
 
-// step goes on to a row that shows a time of day only.
+// step goes on to a row that shows a time of day only. Behind a midnight, a
+// leap against the order of the rows goes back over it, as rows sent again do.
 func (h *heldDate) step(tod int64) {
 	d := tod - timeOfDay(h.t)
+	if h.newestFirst {
+		d = -d
+	}
 	switch {
-	case !h.newestFirst && d < -halfDayLong:
+	case d < -halfDayLong:
 		d += int64(nsDay)
 		h.midnights++
-	case h.newestFirst && d > halfDayLong:
+	case d > halfDayLong && h.midnights > 0:
 		d -= int64(nsDay)
-		h.midnights++
+		h.midnights--
+	}
+	if h.newestFirst {
+		d = -d
 	}
 	h.t += d
 	if h.alt != noTime {

@@ -74,6 +74,9 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 	cols := c.d.cols
 	at := noLayout()
 	taken := map[int]bool{}
+	for i, c := range cols {
+		taken[i] = c.part == somePart
+	}
 	take := func(r role, i int) { at[r], taken[i] = i, true }
 	for _, r := range []role{roleTime, roleRun} {
 		name := o.column(r)
