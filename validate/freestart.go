@@ -39,13 +39,24 @@ func freeStart(t []float64, g ident.Plant) [][]float64 {
 	return out
 }
 
-// takeStart takes the start that fits best, level aside, out of left. Where the
-// log cannot tell the states of all lags apart, those of the shortest are left
-// out.
+// fadeResponses is how many response times a start is seen for: after them less
+// than a hundredth of it is left.
+const fadeResponses = 5
+
+// takeStart takes the start that fits best, level aside, out of left. It is
+// found in the rows that it can be seen in, so that a load later on does not
+// pass for it. Where these cannot tell the states of all lags apart, those of
+// the shortest are left out.
 func (p *plan) takeStart(t, left []float64, g ident.Plant) {
 	step := medianInterval(t)
+	end, _ := slices.BinarySearch(t, t[0]+fadeResponses*response(g))
+	end = max(end, min(minSegment, len(t)))
 	for columns := freeStart(t, g); len(columns) > 1; columns = columns[:len(columns)-1] {
-		beta, _, ok := instrumental(t, step, p.cardCorrelation(step), left, columns, columns)
+		seen := make([][]float64, len(columns))
+		for j := range columns {
+			seen[j] = columns[j][:end]
+		}
+		beta, _, ok := instrumental(t[:end], step, p.cardCorrelation(step), left[:end], seen, seen)
 		if !ok {
 			continue
 		}

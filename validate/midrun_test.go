@@ -2,6 +2,7 @@ package validate
 
 import (
 	"context"
+	"math"
 	"math/rand/v2"
 	"strings"
 	"testing"
@@ -121,5 +122,35 @@ func TestBackTestFromTheMiddle(t *testing.T) {
 				t.Errorf("right in %d of %d recordings", right, n)
 			}
 		})
+	}
+}
+
+// What an unknown start is given does not take from a load that comes later:
+// its size and time are told, from rest and from the middle of a move.
+func TestLoadBesideTheStart(t *testing.T) {
+	const rows, at, load = 500, 330, -6.0
+	noise := fit.Noise{SD: 0.15, CorrelationTime: 2, WhiteSD: 0.1}
+	best := mustPlant(t, "chain2", 8, []float64{6, 2}, 1.2)
+	gains := piGains(0.15, 8, 0.5)
+	p, err := newPlan(cardOf(t, "linear", noise, best), gains, Options{LoggedGains: gains})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, move := range []float64{0, 8} {
+		for _, begin := range []int{0, 62, 70} {
+			d := noisy(rand.New(rand.NewPCG(3, 5)), rows, 0.5, noise)
+			d[0] = 0
+			for i := at; i < rows; i++ {
+				d[i] += load
+			}
+			run := loggedLoop(t, best, ident.Linear, gains, stepsAt(rows, 60, map[int]float64{60: move}), d, 4)
+			courses, err := p.automatic(beginAt(run, begin))
+			if err != nil {
+				t.Fatal(err)
+			}
+			if _, _, far := p.insideBand(courses[0]); math.Abs(far.size-load) > 1 || far.at < run.T[at] {
+				t.Errorf("move of %g K, from row %d: %.2f K at %g s, want %g K from %g s on", move, begin, far.size, far.at, load, run.T[at])
+			}
+		}
 	}
 }
