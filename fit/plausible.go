@@ -135,7 +135,7 @@ func (q *posterior) plant(w plantAt) draw {
 // sample draws count plausible plants of a bounded structure. Where the
 // posterior is close to its linearisation, they are taken from proposals by
 // rejection, each independent of the others; where lags are nearly exchangeable
-// or pressed against zero, an ensemble of walkers finds them.
+// or pressed against zero, from proposals that adapt to it (see adapt).
 func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 	b.activate()
 	q := b.posterior(rng)
@@ -147,9 +147,10 @@ func (b *bounded) sample(count int, rng *rand.Rand) []draw {
 		}
 		return out
 	}
-	taken, ok := q.reject(q.propose(firstProposals), count)
+	first := q.propose(firstProposals)
+	taken, ok := q.reject(first, count)
 	if !ok {
-		taken = q.walk(count)
+		taken = q.adapt(first, count)
 	}
 	for _, w := range taken {
 		out = append(out, q.plant(w))

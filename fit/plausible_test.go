@@ -13,35 +13,38 @@ import (
 )
 
 // TestPlantsFollowThePosterior holds the plausible plants of a chain of two lags,
-// pooled over many seeds, to one long walk of the ensemble, in quantiles of every
+// pooled over many seeds, to one long walk of an ensemble, in quantiles of every
 // parameter, on logs where rejection serves and where it does not: lags that
-// coincide, no dead time, a record cut short. (Of more lags than a log can tell,
-// the walk itself takes too long to forget its start for such a comparison.)
+// coincide, no dead time, a record cut short. Of three lags it does so where the log
+// can tell them; elsewhere quantiles of some sixty plants are off by up to a third
+// of the spread.
 func TestPlantsFollowThePosterior(t *testing.T) {
 	seeds := 1
 	if os.Getenv("LAGWRIGHT_LONG") != "" {
 		seeds = 5
 	}
+	structures := map[string][]string{
+		"ar 0.8": {"chain2", "chain3"}, "equal lags": {"chain2"}, "no dead time": {"chain2"}, "short record": {"chain2"},
+	}
 	for _, f := range families() {
-		if !slices.Contains([]string{"ar 0.8", "equal lags", "no dead time", "short record"}, f.name) {
-			continue
-		}
-		for seed := range seeds {
-			t.Run(fmt.Sprintf("%s/%d", f.name, seed), func(t *testing.T) {
-				o, err := Options{Structure: "chain2"}.withDefaults()
-				if err != nil {
-					t.Fatal(err)
-				}
-				recs, err := prepare([]*data.Run{f.make(uint64(5 + seed))}, o.Law)
-				if err != nil {
-					t.Fatal(err)
-				}
-				out, err := find(context.Background(), recs, o)
-				if err != nil {
-					t.Fatal(err)
-				}
-				comparePlants(t, out.models[0])
-			})
+		for _, structure := range structures[f.name] {
+			for seed := range seeds {
+				t.Run(fmt.Sprintf("%s/%s/%d", f.name, structure, seed), func(t *testing.T) {
+					o, err := Options{Structure: structure}.withDefaults()
+					if err != nil {
+						t.Fatal(err)
+					}
+					recs, err := prepare([]*data.Run{f.make(uint64(5 + seed))}, o.Law)
+					if err != nil {
+						t.Fatal(err)
+					}
+					out, err := find(context.Background(), recs, o)
+					if err != nil {
+						t.Fatal(err)
+					}
+					comparePlants(t, out.models[0])
+				})
+			}
 		}
 	}
 }
@@ -49,7 +52,7 @@ func TestPlantsFollowThePosterior(t *testing.T) {
 func comparePlants(t *testing.T, b *bounded) {
 	b.activate()
 	q := b.posterior(rng(1, "reference", 0))
-	ws := q.walkers(2 * max(8, 2*len(q.free)))
+	ws := q.walkers(8 * len(q.free))
 	_, regular := q.reject(q.propose(firstProposals), 60)
 	var want []draw
 	for sweep := range 2500 {

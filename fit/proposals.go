@@ -62,13 +62,7 @@ func (q *posterior) reject(pool proposals, count int) (out []plantAt, ok bool) {
 		for len(u) < len(pool.at) {
 			u = append(u, math.Log(q.rng.Float64()))
 		}
-		top := slices.Max(pool.weight)
-		out = out[:0]
-		for i, w := range pool.weight {
-			if u[i] < w-top {
-				out = append(out, pool.at[i])
-			}
-		}
+		out = pool.accepted(u)
 		tried := len(pool.at)
 		switch {
 		case len(out) >= count:
@@ -79,4 +73,16 @@ func (q *posterior) reject(pool proposals, count int) (out []plantAt, ok bool) {
 		more := q.propose((count-len(out))*tried/max(len(out), 1) + 8)
 		pool.at, pool.weight = append(pool.at, more.at...), append(pool.weight, more.weight...)
 	}
+}
+
+// accepted are the places that the uniform draws of logarithm u accept, held
+// against the greatest weight.
+func (p proposals) accepted(u []float64) (out []plantAt) {
+	top := slices.Max(p.weight)
+	for i, w := range p.weight {
+		if u[i] < w-top {
+			out = append(out, p.at[i])
+		}
+	}
+	return out
 }

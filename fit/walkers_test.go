@@ -2,30 +2,8 @@ package fit
 
 import "math"
 
-const (
-	burnIn   = 60 // sweeps before the first plants are taken
-	thinning = 5  // sweeps between plants taken
-)
-
-// walk takes count places by the affine-invariant ensemble (Goodman and Weare
-// 2010, from memory), which needs no tuning where lags are nearly exchangeable or
-// pressed against zero.
-func (q *posterior) walk(count int) []plantAt {
-	ws := q.walkers(2 * max(8, 2*len(q.free)))
-	var out []plantAt
-	for sweep := 0; len(out) < count; sweep++ {
-		q.sweep(ws)
-		if sweep < burnIn || (sweep-burnIn)%thinning != 0 {
-			continue
-		}
-		for _, k := range q.rng.Perm(len(ws)) {
-			if len(out) < count {
-				out = append(out, ws[k])
-			}
-		}
-	}
-	return out
-}
+// The affine-invariant ensemble (Goodman and Weare 2010, from memory): a slow but
+// different way to the plausible plants, to hold them against.
 
 // walkers are n places spread as widely as the starting covariance, drawn in
 // where the density there is next to nothing.

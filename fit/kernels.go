@@ -1,0 +1,240 @@
+package fit
+
+import (
+	"math"
+	"slices"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+const (
+	// kernelCentres is the number of kernels of a proposal.
+	kernelCentres = 32
+
+	// roundSize is the number of proposals between two adaptations.
+	roundSize = 64
+
+	// leastEffective is the share of a pool that its effective number of draws must
+	// reach before it counts as it is; below, its weights are evened out.
+	leastEffective = 0.2
+
+	// lessons are the rounds that only teach, from kernels wider by lessonWidth, so
+	// that what lies further out is found.
+	lessons     = 3
+	lessonWidth = 2
+
+	// enoughEffective is how many effective draws there must be for each plant taken,
+	// unless mostRounds come before.
+	enoughEffective = 1.5
+	mostRounds      = 24
+)
+
+// kernels are proposals from equal Student's t densities around some places: a
+// picture of the posterior drawn by the places that it is known at.
+type kernels struct {
+	q       *posterior
+	centres [][]float64 // free parameters
+	root    [][]float64 // of the covariance of a kernel
+	seen    [][]float64 // the centres, in units of root
+	logdet  float64     // of root
+}
+
+// adapt takes count places where lags are nearly exchangeable or pressed against
+// zero, and one Student's t is no picture of the posterior: from a mixture of kernels
+// around the places known so far, weighted by posterior over proposal density, in
+// rounds (population Monte Carlo: Cappé, Guillin, Marin and Robert 2004, from
+// memory). The places are drawn in proportion to their weights, so that some come
+// twice.
+func (q *posterior) adapt(pool proposals, count int) []plantAt {
+	optimum := q.at(q.b.p.eta)
+	pool.at, pool.weight = append(pool.at, optimum), append(pool.weight, optimum.density)
+	for range lessons {
+		pool = q.around(pool, lessonWidth).propose(roundSize)
+		if effective(pool.shares(1)) < 1.5 { // one place, or none, has it all
+			pool.at, pool.weight = append(pool.at, optimum), append(pool.weight, slices.Max(pool.weight))
+		}
+	}
+	var kept proposals
+	for range mostRounds - lessons {
+		fresh := q.around(pool, 1).propose(roundSize)
+		kept.at, kept.weight = append(kept.at, fresh.at...), append(kept.weight, fresh.weight...)
+		if effective(kept.shares(1)) > enoughEffective*float64(count) {
+			break
+		}
+		pool = kept
+	}
+	return kept.drawn(count, q.rng.Float64())
+}
+
+// drawn are count places in proportion to their weights, evenly spaced in their sum
+// from the start u on; the same place may come twice.
+func (p proposals) drawn(count int, u float64) []plantAt {
+	shares := p.shares(1)
+	out := make([]plantAt, 0, count)
+	sum, i := 0.0, -1
+	for k := range count {
+		for at := (float64(k) + u) / float64(count); i < 0 || sum < at && i < len(shares)-1; {
+			i++
+			sum += shares[i]
+		}
+		out = append(out, p.at[i])
+	}
+	return out
+}
+
+// shares are the weights to a power, scaled to a sum of 1.
+func (p proposals) shares(power float64) []float64 {
+	top := slices.Max(p.weight)
+	out := make([]float64, len(p.weight))
+	sum := 0.0
+	for i, w := range p.weight {
+		if w > math.Inf(-1) {
+			out[i] = math.Exp(power * (w - top))
+		}
+		sum += out[i]
+	}
+	for i := range out {
+		out[i] /= sum
+	}
+	return out
+}
+
+// effective is the number of equal draws that weighted ones are worth, 1/Σw²
+// (Kong 1992, from memory).
+func effective(shares []float64) float64 { return 1 / dot(shares, shares) }
+
+// around lays kernels around the places of a pool. Their width is that of a normal
+// reference (Silverman 1986, from memory) for as many draws as the pool is worth,
+// or wider.
+func (q *posterior) around(pool proposals, wider float64) *kernels {
+	d := len(q.free)
+	power := 1.0
+	shares := pool.shares(power)
+	for effective(shares) < leastEffective*float64(len(shares)) && power > 0.01 {
+		power /= 2
+		shares = pool.shares(power)
+	}
+	worth := effective(shares)
+	k := &kernels{q: q, root: q.root}
+	if spread := q.covariance(pool, shares); spread != nil {
+		width := wider * math.Pow(4/(float64(d+2)*worth), 1/float64(d+4))
+		for i := range spread {
+			for j := range spread[i] {
+				spread[i][j] *= width
+			}
+		}
+		k.root = spread
+	}
+	for i := range d {
+		k.logdet += math.Log(k.root[i][i])
+	}
+	tempered := proposals{at: pool.at, weight: make([]float64, len(shares))}
+	for i, s := range shares {
+		tempered.weight[i] = math.Log(s)
+	}
+	for _, c := range tempered.drawn(kernelCentres, q.rng.Float64()) {
+		x := make([]float64, d)
+		for i, j := range q.free {
+			x[i] = c.p.eta[j]
+		}
+		k.centres = append(k.centres, x)
+		k.seen = append(k.seen, k.units(slices.Clone(x)))
+	}
+	return k
+}
+
+// covariance is the square root of that of the free parameters in a pool, nil
+// where it has none.
+func (q *posterior) covariance(pool proposals, shares []float64) [][]float64 {
+	d := len(q.free)
+	mean, cov := make([]float64, d), columns(d, d)
+	for pass := range 2 {
+		for n, s := range shares {
+			if s == 0 {
+				continue
+			}
+			eta := pool.at[n].p.eta
+			for i, j := range q.free {
+				if pass == 0 {
+					mean[i] += s * eta[j]
+					continue
+				}
+				for l, m := range q.free[:i+1] {
+					cov[i][l] += s * (eta[j] - mean[i]) * (eta[m] - mean[l])
+				}
+			}
+		}
+	}
+	for i := range d {
+		for l := range i {
+			cov[l][i] = cov[i][l]
+		}
+	}
+	all := make([]int, d)
+	for i := range all {
+		all[i] = i
+	}
+	var ch damped
+	if !ch.factor(cov, all, 1e-9) {
+		return nil
+	}
+	return ch.l
+}
+
+// units turns free parameters into multiples of the kernels' width, in place.
+func (k *kernels) units(x []float64) []float64 {
+	for i := range x {
+		for j := range i {
+			x[i] -= k.root[i][j] * x[j]
+		}
+		x[i] /= k.root[i][i]
+	}
+	return x
+}
+
+// propose draws n proposals, from every kernel as many.
+func (k *kernels) propose(n int) proposals {
+	q, d := k.q, len(k.q.free)
+	var out proposals
+	x := make([]float64, d)
+	for i := range n {
+		centre := k.centres[i%len(k.centres)]
+		eta := append([]float64(nil), q.b.p.eta...)
+		scale := math.Sqrt(proposalFreedom / distuv.ChiSquared{K: proposalFreedom, Src: q.rng}.Rand())
+		for a := range x {
+			x[a] = q.rng.NormFloat64() * scale
+		}
+		for a, j := range q.free {
+			eta[j] = centre[a]
+			for l := range a + 1 {
+				eta[j] += k.root[a][l] * x[l]
+			}
+		}
+		w := q.at(eta)
+		weight := w.density
+		if weight > math.Inf(-1) {
+			weight -= k.density(eta)
+		}
+		out.at, out.weight = append(out.at, w), append(out.weight, weight)
+	}
+	return out
+}
+
+// density is the logarithm of that of the proposals at eta, up to a constant.
+func (k *kernels) density(eta []float64) float64 {
+	d := len(k.q.free)
+	x := make([]float64, d)
+	for i, j := range k.q.free {
+		x[i] = eta[j]
+	}
+	k.units(x)
+	sum := 0.0
+	for _, c := range k.seen {
+		r2 := 0.0
+		for i, v := range c {
+			r2 += (x[i] - v) * (x[i] - v)
+		}
+		sum += math.Pow(1+r2/proposalFreedom, -0.5*(proposalFreedom+float64(d)))
+	}
+	return math.Log(sum) - k.logdet
+}
