@@ -26,6 +26,9 @@ import (
 //     the moves of the setpoint (in manual, of the input) speak for another
 //     gain, dead time or lags, or is it a load, which a replay takes over?
 //
+// A recording may begin in the middle of a move: the controller starts as the
+// log shows it (beginning.go), the plant in a free state (freestart.go).
+//
 // A run is reproduced when the controller holds and nothing speaks against
 // the plant; then any replay of it is as good as the model.
 func (p *plan) backTest(ctx context.Context, run *data.Run, all []*course) (*BackTest, error) {
