@@ -20,7 +20,7 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 			whitened = append(whitened, v*scale)
 		}
 		reach := max(4, crossLags(r.root, b)/groupSize(n))
-		pIn = math.Min(pIn, finite(crossCorrelationP(f.grouped, c.changes, reach), 1))
+		pIn = math.Min(pIn, finite(crossCorrelationP(f.grouped, c.basis(windowsTo(reach))), 1))
 	}
 	n := float64(m.Samples)
 	m.SSE, m.RMSE = sse, math.Sqrt(sse/n)
@@ -75,6 +75,18 @@ func groupSize(n int) int { return max(1, (n+testRows-1)/testRows) }
 type yardstick struct {
 	sst     float64   // of the temperature about its mean
 	changes []float64 // of the input, added up in groups of rows
+	bases   map[int][][]float64
+}
+
+// basis is the changeBasis for so many windows, made once: the structures of a log
+// ask for the same few.
+func (y *yardstick) basis(windows int) [][]float64 {
+	b, ok := y.bases[windows]
+	if !ok {
+		b = changeBasis(y.changes, windows)
+		y.bases[windows] = b
+	}
+	return b
 }
 
 // yardstick returns that of record i, made once.
@@ -87,7 +99,7 @@ func (out *outcome) yardstick(i int) *yardstick {
 	}
 	r := out.recs[i].root
 	n := len(r.t)
-	c := &yardstick{changes: groupedChanges(r, groupSize(n))}
+	c := &yardstick{changes: groupedChanges(r, groupSize(n)), bases: map[int][][]float64{}}
 	mean := total(r.y) / float64(n)
 	for _, v := range r.y {
 		c.sst += (v - mean) * (v - mean)

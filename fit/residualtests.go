@@ -1,8 +1,10 @@
 package fit
 
 import (
+	"cmp"
 	"math"
-	"sort"
+	"math/bits"
+	"slices"
 
 	"gonum.org/v1/gonum/floats"
 	"gonum.org/v1/gonum/stat"
@@ -91,34 +93,20 @@ func effectiveSampleSize(n int, rho float64) float64 {
 }
 
 // crossCorrelationP returns the p-value of a test whether r, the whitened
-// residuals of a model, still depends on the present and past changes du of
-// the input, du[t] = u[t] − u[t−1], both by rows, up to a lag in rows. A small p
-// says that the model has not explained all the input does.
+// residuals of a model, still depends on the present and past changes of the
+// input, whose basis is that of changeBasis for the same rows. A small p says
+// that the model has not explained all the input does.
 //
-// A log has few changes of the input, so single lags would rest on a handful
-// of residuals and a misfit that lasts would hide among them. The lags
-// are therefore taken in windows that double, 0, 1–2, 3–6, 7–14, …, and for each
-// window the residuals are compared with the changes that lie in it. Outliers
-// are tamed first: each residual is replaced by the normal score of its rank
-// (van der Waerden 1952, from memory). Q is the squared length of the scores'
+// Outliers are tamed first: each residual is replaced by the normal score of its
+// rank (van der Waerden 1952, from memory). Q is the squared length of the scores'
 // projection on the windowed changes over the scores' variance, which under
 // exchangeable residuals follows χ² with as many degrees of freedom as there
 // are independent windows. Parameters fitted to the same residuals make the
 // test lose a little of its size, never gain.
 //
-// NaN where the input does not change or there are too few rows. It panics
-// where r and du differ in length.
-func crossCorrelationP(r, du []float64, lags int) float64 {
+// NaN where the input does not change or there are too few rows.
+func crossCorrelationP(r []float64, basis [][]float64) float64 {
 	n := len(r)
-	if len(du) != n {
-		panic("fit: residuals and input changes differ in length")
-	}
-	if n == 0 {
-		return math.NaN()
-	}
-	ones := make([]float64, n)
-	floats.AddConst(1, ones)
-	basis := orthonormal(append([][]float64{ones}, windowedChanges(du, lags)...), 1e-8)[1:] // less the mean
 	if len(basis) == 0 || n < 2*len(basis)+2 {
 		return math.NaN()
 	}
@@ -135,23 +123,40 @@ func crossCorrelationP(r, du []float64, lags int) float64 {
 	return chi2Tail(q/variance, float64(len(basis)))
 }
 
-// windowedChanges returns, for the windows 0, 1–2, 3–6, … of lags up to the
-// given one, the sum of du over the window before each row.
-func windowedChanges(du []float64, lags int) [][]float64 {
+// changeBasis is an orthonormal basis, free of the mean, of the changes du of the
+// input by rows, du[t] = u[t] − u[t−1], in so many windows of past rows.
+//
+// A log has few changes of the input, so single lags would rest on a handful
+// of residuals and a misfit that lasts would hide among them. The lags
+// are therefore taken in windows that double, 0, 1–2, 3–6, 7–14, …, and in each
+// window the residuals are compared with the changes that lie in it.
+func changeBasis(du []float64, windows int) [][]float64 {
+	if len(du) == 0 {
+		return nil
+	}
+	ones := make([]float64, len(du))
+	floats.AddConst(1, ones)
+	return orthonormal(append([][]float64{ones}, windowedChanges(du, windows)...), 1e-8)[1:]
+}
+
+// windowsTo is the number of windows that hold the lags 0 to the given one.
+func windowsTo(lag int) int { return bits.Len(uint(lag + 1)) }
+
+// windowedChanges returns, for so many of the windows 0, 1–2, 3–6, … of lags, the
+// sum of du over the window before each row.
+func windowedChanges(du []float64, windows int) [][]float64 {
 	level := make([]float64, len(du)+1) // level[t] = Σ du[:t]
 	for t, d := range du {
 		level[t+1] = level[t] + d
 	}
-	var columns [][]float64
-	for first, width := 0, 1; first <= lags; first, width = first+width, 2*width {
-		last := min(first+width-1, lags)
-		column := make([]float64, len(du))
+	out := columns(windows, len(du))
+	for w, column := range out {
+		first, next := 1<<w-1, 1<<(w+1)-1
 		for t := range column {
-			column[t] = level[max(t-first+1, 0)] - level[max(t-last, 0)]
+			column[t] = level[max(t-first+1, 0)] - level[max(t-next+1, 0)]
 		}
-		columns = append(columns, column)
 	}
-	return columns
+	return out
 }
 
 // normalScores replaces each value by the normal quantile of rank/(n+1), ties
@@ -162,7 +167,7 @@ func normalScores(r []float64) []float64 {
 	for t := range order {
 		order[t] = t
 	}
-	sort.SliceStable(order, func(a, b int) bool { return r[order[a]] < r[order[b]] })
+	slices.SortFunc(order, func(a, b int) int { return cmp.Compare(r[a], r[b]) })
 	scores := make([]float64, n)
 	for a := 0; a < n; {
 		b := a + 1

@@ -132,7 +132,7 @@ func TestCrossCorrelationSize(t *testing.T) {
 			for k := range r {
 				r[k] = draw(random)
 			}
-			p := crossCorrelationP(r, bumps(len(r)), 50)
+			p := crossCorrelationP(r, changeBasis(bumps(len(r)), 6))
 			for limit := range below {
 				if p < limit {
 					below[limit]++
@@ -162,7 +162,7 @@ func TestCrossCorrelationPower(t *testing.T) {
 			misfit = 0.95*misfit + du[k]/2
 			r[k] = misfit + random.NormFloat64()
 		}
-		if crossCorrelationP(r, du, 50) < 0.01 {
+		if crossCorrelationP(r, changeBasis(du, 6)) < 0.01 {
 			found++
 		}
 	}
@@ -173,14 +173,14 @@ func TestCrossCorrelationPower(t *testing.T) {
 
 func TestCrossCorrelationWithout(t *testing.T) {
 	r := luteinisingHormone
-	if p := crossCorrelationP(r, make([]float64, len(r)), 10); !math.IsNaN(p) {
+	if p := crossCorrelationP(r, changeBasis(make([]float64, len(r)), 4)); !math.IsNaN(p) {
 		t.Errorf("an input that never changes: p = %g", p)
 	}
 	steady := make([]float64, len(r))
-	if p := crossCorrelationP(steady, bumps(len(r)), 10); p != 1 {
+	if p := crossCorrelationP(steady, changeBasis(bumps(len(r)), 4)); p != 1 {
 		t.Errorf("residuals that are all 0: p = %g", p)
 	}
-	if p := crossCorrelationP(nil, nil, 3); !math.IsNaN(p) {
+	if p := crossCorrelationP(nil, changeBasis(nil, 2)); !math.IsNaN(p) {
 		t.Errorf("no rows: p = %g", p)
 	}
 }
