@@ -25,6 +25,17 @@ func (c *clock) parseCalendar(b []byte) (ns, alt int64, ok bool) {
 	return ns, alt, ok
 }
 
+// parseHeld reads a stamp of any form, or one that leaves out its date.
+func (c *clock) parseHeld(b []byte) (ns, alt int64, ok bool) {
+	ns, alt, ok = c.parseCalendar(b)
+	if c.held != nil {
+		return c.held.stamp(b, ns, alt, ok)
+	}
+	return ns, alt, ok
+}
+
+// parseUsual reads the forms listed, parseCalendar those that plainStamp
+// rewrites as well.
 func (c *clock) parseUsual(b []byte) (ns, alt int64, ok bool) {
 	alt = noTime
 	rest, hit := c.cachedDate(b)

@@ -87,11 +87,10 @@ func (c *clock) parse(b []byte, point byte) (ns, alt int64, ok bool) {
 	case sexagesimal, hourMinute:
 		ns, ok = parseTimeOfDay(b, c.kind == hourMinute)
 	case calendar:
-		ns, alt, ok = c.parseCalendar(b)
-		if c.held != nil {
-			return c.held.stamp(b, ns, alt, ok)
+		if ns, alt, ok = c.parseUsual(b); ok && c.held == nil {
+			return ns, alt, ok
 		}
-		return ns, alt, ok
+		return c.parseHeld(b)
 	case custom:
 		if c.pad {
 			b = padded(b)

@@ -164,8 +164,8 @@ func (s *spreadClock) mark(d *dialect) Note {
 var partNames = map[string][]string{
 	"year":     {"year", "yr", "yyyy", "jahr", "année", "annee", "año", "ano", "anno", "jaar"},
 	"month":    {"month", "mon", "mth", "monat", "mois", "mes", "mês", "mese", "maand"},
-	"d":        {"dd", "doy", "day of year", "dayofyear", "day_of_year", "julian day", "jday", "tag", "jour", "día", "dia", "giorno", "dag"},
-	"date":     {"date", "datum", "fecha", "data"},
+	"d":        {"dd", "doy", "day of year", "dayofyear", "day_of_year", "julian day", "jday", "jour", "día", "dia", "giorno", "dag"},
+	"date":     {"date", "datum", "fecha"},
 	"h":        {"hh", "stunde", "heure", "hora", "uur"},
 	"hhmm":     {"hhmm", "time hhmm", "hourminute", "hour_minute", "time (hhmm)"},
 	"epoch":    {"epoch", "epoch time", "unix", "unixtime", "unix time", "unix timestamp", "timestamp"},
@@ -244,7 +244,7 @@ func (f *partFinder) clock() bool {
 	hour, minute, hhmm := f.has("h", 0, 23), f.has("min", 0, 59), f.has("hhmm", 0, 2359)
 	f.s = spreadClock{kind: elapsed, stamp: noStamp}
 	switch {
-	case hour && minute, minute && minuteSecond, hhmm:
+	case (hour && minute || hhmm) && (minuteSecond || !secOK), minute && minuteSecond: // seconds beyond 60 are a clock of their own
 		f.addDate(hour || hhmm)
 		if hour {
 			f.scaled("h", nsHour)
@@ -379,7 +379,7 @@ func (f *partFinder) addDays(sec int, unit uint64) bool {
 	if !ok {
 		at, ok = f.found["d"]
 	}
-	if !ok {
+	if !ok || f.d.cols[at].class == numbers && !f.d.holds(at, 0, 1e6, true) {
 		return false
 	}
 	day := f.dayOf(at)
@@ -392,7 +392,7 @@ func (f *partFinder) addDays(sec int, unit uint64) bool {
 		if !ok || !is {
 			return 0, false
 		}
-		if passed := d - lastDay; warm && (passed > 0 && s < lastSecond || passed < 0 && s > lastSecond) {
+		if passed := d - lastDay; warm && (passed > 0 && lastSecond-s > halfDayLong || passed < 0 && s-lastSecond > halfDayLong) {
 			offset += passed
 		}
 		lastDay, lastSecond, warm = d, s, true

@@ -31,7 +31,7 @@ type csvReader struct {
 	digits  clockDigits  // of a time of day without colons
 	pair    bool         // date and time of day have a column each
 	quality bool         // the status is a number, good from 192 on
-	single  bool         // cells can be read in place: no blanks as delimiter
+	single  bool         // cells can be read in place: no blanks as delimiter, the clock in one
 
 	tables []*table
 	byName map[string]*table
@@ -201,7 +201,7 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 		c.last = max(c.last, c.spread.last())
 	}
 	slices.SortFunc(c.fields, func(a, b field) int { return a.index - b.index })
-	c.single = c.d.delim != ' '
+	c.single = c.d.delim != ' ' && c.spread == nil
 	c.quality = isQuality(c.d.rows, c.at[roleStatus])
 	if o.TimeCol == "" && o.TimeFormat == "" && c.spread == nil {
 		return c.compareClocks()
@@ -301,7 +301,7 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 // fast reads a row whose cells are plain numbers in place. It gives up, and
 // adds nothing, at anything out of the ordinary.
 func (c *csvReader) fast(text []byte, line int) bool {
-	if c.long != nil || c.pair || c.spread != nil || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
+	if c.long != nil || c.pair || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
 		return false
 	}
 	i, col := 0, 0

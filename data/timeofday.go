@@ -129,10 +129,10 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 		return 0, 0, false
 	}
 	rest = skipSpaces(rest)
-	if i := bytes.IndexByte(rest, '['); i >= 0 && rest[len(rest)-1] == ']' && isPlace(rest[i+1:len(rest)-1]) {
-		rest = rest[:i] // the offset in front says it all
+	if len(rest) > shortestPlace {
+		rest = withoutPlace(rest)
 	}
-	if len(rest) == 0 || isZoneName(rest) || isPlace(rest) {
+	if len(rest) == 0 || isZoneName(rest) {
 		return tod, 0, true
 	}
 	east, ok = zoneOffset(rest)
@@ -173,6 +173,20 @@ func isZoneName(b []byte) bool {
 		}
 	}
 	return true
+}
+
+const shortestPlace = len("Asia/Ho")
+
+// withoutPlace takes away the name of a place, alone or in brackets behind the
+// offset that says it all.
+func withoutPlace(zone []byte) []byte {
+	if isPlace(zone) {
+		return nil
+	}
+	if i := bytes.IndexByte(zone, '['); i >= 0 && zone[len(zone)-1] == ']' && isPlace(zone[i+1:len(zone)-1]) {
+		return zone[:i]
+	}
+	return zone
 }
 
 // isPlace tells the name of a zone such as Europe/Paris, whose offset from
