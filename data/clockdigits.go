@@ -15,6 +15,31 @@ import (
 // hhmmss, 9 of hhmmssmmm, 0 for a column that holds none.
 type clockDigits int
 
+// dotted is the width of a time of day with points in place of colons,
+// 20.20.05: alone it could be a date.
+const dotted clockDigits = -1
+
+// areDotted tells that all cells are such times of day.
+func (d *dialect) areDotted(i int) bool {
+	n := 0
+	for _, l := range d.rows {
+		if len(l.cells) < d.fields || len(l.cells[i]) == 0 {
+			continue
+		}
+		c := l.cells[i]
+		if n++; len(c) < 8 || c[2] != '.' || c[5] != '.' || len(c) > 8 && c[8] != ',' && c[8] != '.' || !isClock(c) {
+			return false
+		}
+	}
+	return n > 0
+}
+
+// isClock tells that the digits of a dotted time of day are in range.
+func isClock(c []byte) bool {
+	tod, ok := parseTimeOfDay(appendClock(nil, c, dotted), false)
+	return ok && isPairOf(c, 0) && isPairOf(c, 3) && isPairOf(c, 6) && tod < int64(nsDay) && c[3] < '6' && c[6] < '6'
+}
+
 // markDigits makes stamps of the columns of numbers that are such a date, or
 // such a time of day beside a date. What could be seconds as well is an error.
 func markDigits(d *dialect, o *Options) (width clockDigits, notes []Note, err error) {
@@ -32,6 +57,12 @@ func markDigits(d *dialect, o *Options) (width clockDigits, notes []Note, err er
 	}
 	if !dated || timed {
 		return 0, nil, nil
+	}
+	for i := range d.cols {
+		if c := &d.cols[i]; namesTime(*c) && d.areDotted(i) {
+			c.class, c.dated, c.timed = stamps, false, true
+			return dotted, nil, nil
+		}
 	}
 	for i := range d.cols {
 		c := &d.cols[i]
@@ -146,11 +177,16 @@ func padded(b []byte) []byte {
 // appendClock appends a time of day of such digits, with colons; anything else
 // as it is.
 func appendClock(dst, cell []byte, width clockDigits) []byte {
+	if width == dotted && len(cell) >= 8 && cell[2] == '.' && cell[5] == '.' {
+		dst = append(append(dst, cell[:2]...), ':')
+		dst = append(append(dst, cell[3:5]...), ':')
+		return append(dst, cell[6:]...)
+	}
 	n := 0
 	for n < len(cell) && cell[n]-'0' <= 9 {
 		n++
 	}
-	if n == 0 || n > int(width) {
+	if width <= 0 || n == 0 || n > int(width) {
 		return append(dst, cell...)
 	}
 	digits := append(bytes.Repeat([]byte{'0'}, int(width)-n), cell...)

@@ -281,6 +281,8 @@ var quirks = []quirk{
 	{file: "date-digits-early.csv", t: ramp(8, func(i int) float64 { return float64(i) }), start: "2026-01-25T00:00:58Z", notes: []string{"clock-digits", local}},
 	{file: "date-digits-open.csv", wrong: `column "Time" (80005, 80006, 80007) beside a date could be hours, minutes and seconds without colons, or a number of seconds: say --time-col "Time" with --time-format HHmmss or with --time-format seconds`},
 	{file: "date-digits-open.csv", o: Options{TimeCol: "Time", TimeFormat: "HHmmss"}, t: ramp(8, func(i int) float64 { return float64(i) })},
+	{file: "date-and-dotted-time.csv", start: "2026-01-25T10:10:00Z", notes: []string{local}},
+	{file: "hours-beside-elapsed.csv"},
 	{file: "date-digits-colons.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "day-and-seconds.csv", notes: []string{"clock-columns"}},
 	{file: "day-and-elapsed.csv", notes: []string{"clock-columns"}},
