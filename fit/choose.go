@@ -279,7 +279,7 @@ func (out *outcome) settle(s *study) error {
 			r.shape, r.weight = whiteShape, 1
 		}
 		s.set(in, drifts[0])
-		plain := &study{recs: slices.Clone(s.recs), white: true, coarse: s.coarse, rival: math.Inf(1)}
+		plain := &study{recs: slices.Clone(s.recs), white: true, unscored: true, coarse: s.coarse, rival: math.Inf(1)}
 		start := plain.fit(one, nil)
 		s.coarse = plain.coarse
 		for _, dr := range drifts {

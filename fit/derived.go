@@ -4,6 +4,8 @@ import (
 	"math"
 	"sort"
 
+	"gonum.org/v1/gonum/floats"
+
 	"lagwright/ident"
 )
 
@@ -74,19 +76,7 @@ func halfRuleDelay(lags []float64, deadTime float64) float64 {
 	return deadTime
 }
 
-func total(x []float64) float64 {
-	var s0, s1, s2, s3 float64
-	for ; len(x) >= 4; x = x[4:] {
-		s0 += x[0]
-		s1 += x[1]
-		s2 += x[2]
-		s3 += x[3]
-	}
-	for _, v := range x {
-		s0 += v
-	}
-	return (s0 + s1) + (s2 + s3)
-}
+func total(x []float64) float64 { return floats.Sum(x) }
 
 // elements lists every first-order element's lag, longest first.
 func elements(st ident.Structure, eta []float64) []float64 {

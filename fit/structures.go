@@ -44,7 +44,9 @@ func (f *fitted) s2() float64 { return f.e.recs[0].sigma2 }
 type study struct {
 	recs  []*record
 	white bool // plain least squares on the simulated output
-	fix   map[string]float64
+
+	unscored bool // only the place of the optimum is wanted
+	fix      map[string]float64
 
 	// refuted says that the log speaks clearly for another structure: the
 	// intervals are then Wald intervals at the best noise shape, which is all
@@ -105,10 +107,12 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 	f.p = e.search(starts)
 	s.focus(f)
 	s.coincide(f)
-	if s.white {
+	switch {
+	case s.unscored:
+	case s.white:
 		s.measure(f)
 		s.score(f)
-	} else {
+	default:
 		s.alternate(f)
 	}
 	if st.Order() == 1 {
