@@ -43,6 +43,17 @@ func rowsBetweenScans(run *data.Run, p ident.Plant, every int) *data.Run {
 	return &out
 }
 
+// everyRow is the run logged at every so many rows only.
+func everyRow(run *data.Run, n int) *data.Run {
+	out := *run
+	out.T, out.U, out.Y, out.Setpoint = nil, nil, nil, nil
+	for i := 0; i < len(run.T); i += n {
+		out.T, out.U = append(out.T, run.T[i]), append(out.U, run.U[i])
+		out.Y, out.Setpoint = append(out.Y, run.Y[i]), append(out.Setpoint, run.Setpoint[i])
+	}
+	return &out
+}
+
 // A recording that begins in the middle of a move, at a limit or off it, is
 // reproduced by the plant and the gains that made it, whatever the controller
 // remembers; made by others it is not.
@@ -72,7 +83,7 @@ func TestBackTestFromTheMiddle(t *testing.T) {
 		card, plant     ident.Plant
 		stated, inForce *tune.Gains
 		size            float64 // of the move
-		every           int     // rows a scan
+		every           int     // rows a scan; negative: scans a row
 		begin           []int   // rows, of a move made at 60 and one back at 260
 		reproduced      bool
 		says            string
@@ -89,6 +100,7 @@ func TestBackTestFromTheMiddle(t *testing.T) {
 		{"four lags", plant("chain4", 8, 4, 2, 1, 0.5), plant("chain4", 8, 4, 2, 1, 0.5), pi, pi, 8, 1, []int{62, 264}, true, ""},
 		{"equal lags", plant("equal3", 8, 2.5), plant("equal3", 8, 2.5), pi, pi, 8, 1, []int{62, 264}, true, ""},
 		{"between two scans", best, best, pi, pi, 20, 4, []int{63, 67, 262}, true, ""},
+		{"two scans a row", best, best, pi, pi, 20, -2, []int{62, 68}, true, ""},
 		{"twice the gain in force", best, best, pi, other(0.3, 8), 8, 1, []int{62, 70}, false, "times those the gains ask for"},
 		{"another integral time", best, best, pi, other(0.15, 16), 8, 1, []int{62, 70}, false, "look at integral time"},
 		{"another integral time, at a limit", best, best, pi, other(0.15, 16), 60, 1, []int{62}, false, "look at integral time"},
@@ -105,7 +117,10 @@ func TestBackTestFromTheMiddle(t *testing.T) {
 					run = rowsBetweenScans(run, c.plant, c.every)
 				}
 				for _, row := range c.begin {
-					from := beginAt(run, row*c.every+c.every/2)
+					from := beginAt(run, row*max(1, c.every)+max(0, c.every/2))
+					if c.every < 0 {
+						from = everyRow(from, -c.every)
+					}
 					r, err := ReplayRuns(context.Background(), card, []*data.Run{from}, piGains(0.3, 7, 0.5), Options{LoggedGains: c.stated})
 					if err != nil {
 						t.Fatal(err)
