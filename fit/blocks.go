@@ -40,29 +40,71 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 	n := len(root.t)
 	c := *r
 	c.rows, c.t, c.y = nil, nil, nil
+	var samples []ident.Row // of the response
+	ragged := false
 	for k := 0; k < n; {
-		m, exact := root.uniform(k, ladder(allowed(root.t[k])))
-		row := ident.Row{T: root.t[k], H: root.step, M: m}
-		if m > 1 && !exact {
-			row.T = total(root.t[k:k+m])/float64(m) - float64(m-1)/2*root.step
+		longest := ladder(allowed(root.t[k]))
+		m, exact := root.uniform(k, longest)
+		var row, response ident.Row
+		if few := root.within(k, longest); few > m {
+			m, ragged = few, true
+			row, response = raggedBlock(root.t[k : k+m])
+		} else {
+			row = ident.Row{T: root.t[k], H: root.step, M: m}
+			if m > 1 && !exact {
+				row.T = total(root.t[k:k+m])/float64(m) - float64(m-1)/2*root.step
+			}
+			response = row
 		}
-		c.rows = append(c.rows, row)
-		c.t = append(c.t, row.T+float64(m-1)/2*row.H)
+		c.rows, samples = append(c.rows, row), append(samples, response)
+		c.t = append(c.t, response.T+float64(response.M-1)/2*response.H)
 		c.y = append(c.y, total(root.y[k:k+m])/float64(m))
 		k += m
 	}
 	if float64(len(c.rows)) > 0.7*float64(n) {
 		return r.whole()
 	}
-	c.sim = ident.NewBlockSimulator(c.rows, r.input)
+	if !ragged {
+		samples = c.rows
+	}
+	c.sim = ident.NewBlockSimulator(samples, r.input)
 	return r.adopt(&c)
+}
+
+// within is the longest ladder length of rows from k on that span no more than m
+// samples at the step would.
+func (r *record) within(k, m int) int {
+	if r.even || m < 2 {
+		return 1
+	}
+	end := r.t[k] + float64(m-1)*r.step*(1+1e-9)
+	n := 1
+	for n < m && k+n < len(r.t) && r.t[k+n] <= end {
+		n++
+	}
+	return ladder(n)
+}
+
+// raggedBlock is the mean of rows at uneven times: for the noise as many samples
+// evenly spread over the same span, for the response two samples about the same mean
+// time and of the same scatter of times, which give the mean of the response up to
+// its third derivative.
+func raggedBlock(t []float64) (noise, response ident.Row) {
+	n := float64(len(t))
+	mean, scatter := total(t)/n, 0.0
+	for _, v := range t {
+		scatter += (v - mean) * (v - mean) / n
+	}
+	sd := math.Sqrt(scatter)
+	noise = ident.Row{T: t[0], H: (t[len(t)-1] - t[0]) / (n - 1), M: len(t)}
+	return noise, ident.Row{T: mean - sd, H: 2 * sd, M: 2}
 }
 
 // jitterShare is the part of a sampling interval by which the rows of a block
 // may lie off an even series. The block is taken as even, at their mean time: what
 // is lost is of second order, the curvature of the response times the block's
 // length times the scatter of the times, a small part of the noise of a row (see
-// TestJitteredBlocks), and nothing in what is confirmed on every row.
+// TestBlocks), and nothing in what is confirmed on every row.
 const jitterShare = 0.45
 
 // uniform returns the longest ladder length up to m of rows from k on that are
@@ -164,17 +206,23 @@ func (r *record) focusOn(first, last, zone, least, growth float64) *record {
 
 // noiseRows is the largest number of rows on which a noise shape is judged: of
 // a longer log, equal pieces spread over it. The shape is then known to about
-// a percent.
-const noiseRows = 24000
+// a percent. Uneven rows cost the noise filter ten times as much.
+const (
+	noiseRows       = 24000
+	unevenNoiseRows = 8000
+)
 
 // noiseParts are the parts of a log on which its noise is judged.
 func (r *record) noiseParts() []part {
-	n := len(r.t)
-	if n <= noiseRows {
+	n, most := len(r.t), noiseRows
+	if !r.even && r.usual == 0 {
+		most = unevenNoiseRows
+	}
+	if n <= most {
 		return []part{{0, n, r.sim.Clone()}}
 	}
 	const count = 8
-	size := noiseRows / count
+	size := most / count
 	var out []part
 	for i := range count {
 		lo := i * (n - size) / (count - 1)

@@ -107,3 +107,37 @@ func testLongBlocks(t *testing.T, sizes []int) {
 		near(t, fmt.Sprintf("block of %d", r.M), y, want, 1e-12)
 	}
 }
+
+// TestPairs compares rows that are the mean of two samples at any distance, at
+// uneven times, with single samples.
+func TestPairs(t *testing.T) {
+	rng := rand.New(rand.NewPCG(8, 2))
+	var rows []Row
+	var times []float64
+	for at := 0.0; at < 100; {
+		h := 0.01 + rng.ExpFloat64()*0.3
+		rows = append(rows, Row{T: at, H: h, M: 2})
+		times = append(times, at, at+h)
+		at += h + 0.01 + rng.ExpFloat64()*0.2
+	}
+	in := Input{Before: 1, At: []float64{3.3, 20.123, 20.2, 61}, Value: []float64{2, 1, 3, 0}}
+	plain, means := NewSimulator(times, in), NewBlockSimulator(rows, in)
+	for _, c := range []struct {
+		structure string
+		lags      []float64
+	}{{"fopdt", []float64{2}}, {"chain2", []float64{2, 2.01}}, {"chain3", []float64{2.1, 0.65, 0.05}}, {"chain4", []float64{30, 3, 0, 0.4}}, {"equal5", []float64{0.7}}} {
+		st := structure(t, c.structure)
+		all, got := columnsFor(st, len(times)), columnsFor(st, len(rows))
+		plain.Sensitivities(all, st, c.lags, 0.22)
+		means.Sensitivities(got, st, c.lags, 0.22)
+		for i := range all {
+			want := make([]float64, len(rows))
+			for k := range rows {
+				want[k] = (all[i][2*k] + all[i][2*k+1]) / 2
+			}
+			if d := greatestDifference(got[i], want); !(d <= 1e-12*span(all[i])) {
+				t.Errorf("%s %v column %d: mean is off by %.2g of the span", c.structure, c.lags, i, d/span(all[i]))
+			}
+		}
+	}
+}

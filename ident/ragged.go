@@ -158,3 +158,17 @@ func (s *Simulator) runRagged(o *outputs, lo, hi int) {
 		s.emitRow(o, k)
 	}
 }
+
+// emitPair writes the outputs of row k, the mean of two samples, from the state at
+// the first. The state stays where it is.
+func (s *Simulator) emitPair(o *outputs, k int) {
+	c, r := &s.chain, s.rows[k]
+	x, next, level := s.x, s.next, s.level
+	s.overStep(r.H)
+	_, second := s.takeChanges(&s.x, next, level, r.sample(1))
+	for i := range c.n + c.q {
+		s.x[i] = (x[i] + s.x[i]) / 2
+	}
+	s.emit(o, k, &s.x, (level+second)/2)
+	s.x = x
+}

@@ -307,6 +307,10 @@ func (s *Simulator) emitRow(o *outputs, k int) {
 		s.emit(o, k, &s.x, s.level)
 		return
 	}
+	if s.rows[k].M == 2 {
+		s.emitPair(o, k)
+		return
+	}
 	x, next, level := s.x, s.next, s.level
 	s.emitMean(o, k, &x)
 	s.next, s.level = next, level
