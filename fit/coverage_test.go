@@ -33,6 +33,7 @@ type family struct {
 	drift     float64 // K/s
 	jitter    float64 // of the sampling, as a fraction of the step
 	gaps      bool
+	missing   float64 // share of the rows that are missing here and there
 	closed    bool    // PI control during the log
 	boundary  bool    // a parameter sits on the edge of its range
 	auto      bool    // structure chosen by the fit: only the gain is held to the truth
@@ -76,6 +77,9 @@ func families() []family {
 		with("ar 0.7, wanders", func(f *family) { f.ar, f.white, f.wander, f.wide = 0.7, 0, 0.3, true }),
 		with("ar 0.7, quantum, wanders more", func(f *family) { f.ar, f.white, f.quantum, f.wander, f.wide = 0.7, 0, 0.1, 0.8, true }),
 		with("equal3 ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "equal3", []float64{0.9}, 0.8, 0 }),
+		with("rows missing", func(f *family) {
+			f.n, f.step, f.ar, f.white, f.missing = 2400, 0.04, 0.91, 0, 0.33
+		}),
 	}
 }
 
@@ -93,6 +97,9 @@ func (f family) make(seed uint64) *data.Run {
 			tk += f.step * f.jitter * (r.Float64() - 0.5)
 		}
 		if f.gaps && (k%200 > 150 && k%200 < 185) {
+			continue
+		}
+		if f.missing > 0 && k > 0 && r.Float64() < f.missing {
 			continue
 		}
 		run.T = append(run.T, tk)
