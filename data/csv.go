@@ -50,7 +50,7 @@ type csvReader struct {
 // readText reads a log in text form.
 func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, error) {
 	text := utf8Reader(s.head, s.r)
-	sample, whole, err := readSample(text)
+	sample, whole, err := readSample(text, s.textSize())
 	if err != nil {
 		return nil, nil, err
 	}
@@ -74,8 +74,12 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 	if c.at[roleRun] < 0 && c.long == nil {
 		c.expect = s.expectedRows(sample)
 	}
-	lines := newLineReader(s.path, io.MultiReader(bytes.NewReader(sample), text))
+	if whole {
+		text = nil
+	}
+	lines := newLineReader(s.path, sample, text)
 	lines.onlyCR, lines.rewrite, lines.delim = d.onlyCR, d.rewrite, d.delim
+	lines.start()
 	if err := c.readRows(ctx, lines); err != nil {
 		return nil, nil, err
 	}
@@ -175,7 +179,10 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 	var cells [][]byte
 	for _, l := range c.d.rows {
 		if cell, ok := c.stampOf(l.cells); ok && len(trimBlanks(cell)) > 0 {
-			cells = append(cells, bytes.Clone(cell))
+			if c.pair || c.at[roleHalf] >= 0 { // put together in memory that is used again
+				cell = bytes.Clone(cell)
+			}
+			cells = append(cells, cell)
 		}
 	}
 	k, notes, err := c.findClock(cells, o)

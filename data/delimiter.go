@@ -25,11 +25,14 @@ func bestDelimiter(lines []line, among []byte) (delim byte, fields int, goodest 
 	for _, d := range among {
 		type tally struct{ goodBytes, good, all float64 }
 		byCount := map[int]*tally{}
+		var cells [][]byte
 		for _, l := range lines {
 			if isComment(l.text, d) {
 				continue
 			}
-			cells := splitCells(nil, l.text, d)
+			if cells = splitCells(cells[:0], l.text, d); len(cells) < 2 {
+				continue
+			}
 			t := byCount[len(cells)]
 			if t == nil {
 				t = &tally{}
@@ -47,7 +50,7 @@ func bestDelimiter(lines []line, among []byte) (delim byte, fields int, goodest 
 			}
 		}
 		for n, t := range byCount {
-			if n < 2 || t.good == 0 {
+			if t.good == 0 {
 				continue
 			}
 			share := t.good / t.all
@@ -66,7 +69,7 @@ func bestDelimiter(lines []line, among []byte) (delim byte, fields int, goodest 
 // isTerm tells text that logs hold beside numbers: a word for a value or for no
 // value, a status, a unit.
 func isTerm(cell []byte) bool {
-	_, missing := missingKind(cell)
+	_, missing := knownMissing(cell)
 	_, unit := canonicalUnit(decodeName(cell))
 	return missing || unit || isWord(cell) || isBadStatus(cell) || isGoodStatus(cell)
 }

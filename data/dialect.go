@@ -36,11 +36,15 @@ const (
 )
 
 // readSample reads the beginning of a text; whole tells that it is all of it.
-func readSample(r io.Reader) (sample []byte, whole bool, err error) {
-	want := sampleSize
+// size is that of the text, 0 where it is not known.
+func readSample(r io.Reader, size int64) (sample []byte, whole bool, err error) {
+	want := sampleSize / 16
+	if size > 0 {
+		want = int(min(size+1, sampleSize))
+	}
 	for {
 		old := len(sample)
-		sample = append(sample, make([]byte, want-old)...)
+		sample = slices.Grow(sample, want-old)[:want]
 		n, err := io.ReadFull(r, sample[old:])
 		sample = sample[:old+n]
 		if err == io.EOF || err == io.ErrUnexpectedEOF {
@@ -48,6 +52,10 @@ func readSample(r io.Reader) (sample []byte, whole bool, err error) {
 		}
 		if err != nil {
 			return sample, false, err
+		}
+		if want < sampleSize {
+			want = min(2*want, sampleSize)
+			continue
 		}
 		lines := bytes.Count(sample, []byte{'\n'}) + bytes.Count(sample, []byte{'\r'})
 		if lines >= sampleLines || want >= sampleMost {
@@ -68,7 +76,7 @@ type line struct {
 func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	d := &dialect{}
 	d.onlyCR = bytes.IndexByte(sample, '\n') < 0 && bytes.IndexByte(sample, '\r') >= 0
-	physical, err := d.lines(path, sample, whole, 0)
+	physical, err := d.lines(path, sample, whole)
 	if err != nil {
 		return nil, err
 	}
@@ -81,7 +89,7 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 		d.rewrite, d.keys = k.row, k.names
 	}
 	if d.rewrite != nil {
-		if physical, err = d.lines(path, sample, whole, 0); err != nil {
+		if physical, err = d.lines(path, sample, whole); err != nil {
 			return nil, err
 		}
 	}
@@ -89,23 +97,26 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	if d.fields < 2 {
 		return nil, fmt.Errorf("%s: no rows of two or more numbers found: is this a log of columns with a delimiter?", path)
 	}
-	records, err := d.lines(path, sample, whole, d.delim)
-	if err != nil {
+	records := physical
+	if bytes.IndexByte(sample, '"') >= 0 { // now it is known which quotes enclose cells
+		if records, err = d.lines(path, sample, whole); err != nil {
+			return nil, err
+		}
+	}
+	if err := cutLines(path, records, d.delim); err != nil {
 		return nil, err
 	}
 	d.format.point = findPoint(records, d.delim, d.fields)
 	return d, d.findColumns(path, records)
 }
 
-// lines cuts the sample into lines and, with a delimiter, into cells. Blank
-// lines are left out, and the last line when the sample ends within it.
-func (d *dialect) lines(path string, sample []byte, whole bool, delim byte) ([]line, error) {
-	r := newLineReader(path, bytes.NewReader(sample))
-	r.onlyCR, r.rewrite, r.delim = d.onlyCR, d.rewrite, delim
-	if delim == 0 { // before the delimiter is known quotes mean nothing
-		r.quoted = false
-	}
-	var out []line
+// lines cuts the sample into lines. Blank lines are left out, and the last line
+// when the sample ends within it.
+func (d *dialect) lines(path string, sample []byte, whole bool) ([]line, error) {
+	r := newLineReader(path, bytes.Clone(sample), nil)
+	r.onlyCR, r.rewrite, r.delim = d.onlyCR, d.rewrite, d.delim
+	r.start()
+	out := make([]line, 0, min(bytes.Count(r.buf[:r.hi], []byte{'\n'})+1, sampleRows))
 	for len(out) < sampleRows {
 		text, err := r.read()
 		if err == io.EOF {
@@ -117,22 +128,28 @@ func (d *dialect) lines(path string, sample []byte, whole bool, delim byte) ([]l
 		if len(bytes.Trim(text, " \t\x00")) == 0 {
 			continue
 		}
-		l := line{number: r.line, text: bytes.Clone(text)}
-		if l.number == 1 {
-			l.text = bytes.TrimPrefix(l.text, []byte("\xEF\xBB\xBF"))
+		if r.line == 1 {
+			text = bytes.TrimPrefix(text, []byte("\xEF\xBB\xBF"))
 		}
-		if delim != 0 {
-			l.cells = splitCells(nil, l.text, delim)
-			if len(l.cells) > maxColumns {
-				return nil, fmt.Errorf("%s:%d: %d columns, at most %d can be read", path, l.number, len(l.cells), maxColumns)
-			}
-		}
-		out = append(out, l)
+		out = append(out, line{number: r.line, text: text})
 	}
 	if !whole && len(out) > 1 && len(out) < sampleRows {
 		out = out[:len(out)-1]
 	}
 	return out, nil
+}
+
+// cutLines cuts lines into cells.
+func cutLines(path string, lines []line, delim byte) error {
+	usual := 0
+	for i := range lines {
+		l := &lines[i]
+		l.cells = splitCells(make([][]byte, 0, usual), l.text, delim)
+		if usual = len(l.cells); usual > maxColumns {
+			return fmt.Errorf("%s:%d: %d columns, at most %d can be read", path, l.number, usual, maxColumns)
+		}
+	}
+	return nil
 }
 
 const maxColumns = 100000
@@ -187,6 +204,9 @@ func (d *dialect) findColumns(path string, lines []line) error {
 		if !slices.ContainsFunc(d.header, func(h []byte) bool { return bytes.Equal(h, l.text) }) {
 			d.rows = append(d.rows, l)
 		}
+	}
+	for k, h := range d.header {
+		d.header[k] = bytes.Clone(h) // kept when the sample is not
 	}
 	d.inspect(d.rows)
 	return nil
@@ -253,7 +273,7 @@ func (d *dialect) classOf(cell []byte) class {
 	if isStamp(cell) {
 		return stamps
 	}
-	if _, known := missingKind(cell); known {
+	if _, known := knownMissing(cell); known {
 		return blankCells
 	}
 	return texts

@@ -17,7 +17,7 @@ func isNoDate(cell []byte) bool {
 	if len(cell) > 0 && cell[0]-'0' <= 9 {
 		return false
 	}
-	_, known := missingKind(cell)
+	_, known := knownMissing(cell)
 	return known
 }
 

@@ -35,7 +35,13 @@ func findKeys(lines []line) *keyed {
 	for _, sign := range []byte{'=', ':'} {
 		k := &keyed{sign: sign}
 		n := 0
-		for _, l := range lines {
+		for i, l := range lines {
+			if 2*(n+len(lines)-i) <= len(lines) { // too few are left
+				break
+			}
+			if bytes.IndexByte(l.text, sign) < 0 {
+				continue
+			}
 			pairs := k.pairs(l.text)
 			if len(pairs) < 2 || len(k.names) > maxKeys {
 				continue

@@ -33,9 +33,15 @@ type lineReader struct {
 	next int // number of the line that follows it
 }
 
-func newLineReader(path string, r io.Reader) *lineReader {
-	return &lineReader{path: path, r: r, buf: make([]byte, 1<<18), next: 1}
+// newLineReader reads the lines of a text whose beginning, head, was read
+// already; r holds the rest, nil where there is none. The memory of head is the
+// reader's from then on. start must be called before the first line is read.
+func newLineReader(path string, head []byte, r io.Reader) *lineReader {
+	return &lineReader{path: path, r: r, buf: head, next: 1, eof: r == nil}
 }
+
+// start makes ready what was read before.
+func (l *lineReader) start() { l.take(len(l.buf)) }
 
 // read returns the next line without its end, valid until the next call, and
 // io.EOF after the last.
@@ -43,6 +49,9 @@ func (l *lineReader) read() ([]byte, error) {
 	from := 0 // in buf[lo:], searched already
 	for {
 		if n, end, ok := l.find(from); ok {
+			if n >= maxLine {
+				return nil, l.tooLong()
+			}
 			line := l.buf[l.lo : l.lo+n]
 			l.line = l.next
 			l.next++
@@ -96,13 +105,28 @@ func (l *lineReader) fill() error {
 		copy(l.buf, l.buf[l.lo:l.hi])
 		l.lo, l.hi = 0, l.hi-l.lo
 	}
+	if l.hi >= maxLine {
+		return l.tooLong()
+	}
 	if l.hi == len(l.buf) {
-		if len(l.buf) >= maxLine {
-			return fmt.Errorf("%s:%d: line is longer than %d MiB, this is not a log", l.path, l.next, maxLine>>20)
-		}
-		l.buf = append(l.buf, make([]byte, len(l.buf))...)
+		l.buf = append(l.buf, make([]byte, max(len(l.buf), bufferSize))...)
 	}
 	n, err := l.r.Read(l.buf[l.hi:])
+	l.take(n)
+	if err == io.EOF {
+		l.eof = true
+	} else if err != nil {
+		l.eof, l.err = true, err
+	}
+	return nil
+}
+
+func (l *lineReader) tooLong() error {
+	return fmt.Errorf("%s:%d: line is longer than %d MiB, this is not a log", l.path, l.next, maxLine>>20)
+}
+
+// take adds the n bytes behind the unread part to it.
+func (l *lineReader) take(n int) {
 	fresh := l.buf[l.hi : l.hi+n]
 	if bytes.IndexByte(fresh, 0) >= 0 {
 		fresh = squeezeNULs(fresh, l.hi > l.lo && l.buf[l.hi-1] == 0)
@@ -121,12 +145,6 @@ func (l *lineReader) fill() error {
 	if len(fresh) > 0 {
 		l.lastNL = fresh[len(fresh)-1] == '\n'
 	}
-	if err == io.EOF {
-		l.eof = true
-	} else if err != nil {
-		l.eof, l.err = true, err
-	}
-	return nil
 }
 
 // squeezeNULs shortens every run of NUL bytes to one, in place; open tells

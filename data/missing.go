@@ -10,7 +10,7 @@ import (
 )
 
 // badWords are what loggers and historians write in place of a number.
-var badWords = []string{
+var badWords = setOf(
 	"OPEN", "OL", "OVER", "OVERRANGE", "OVER RANGE", "OVERFLOW", "OVLD", "OVRNG", "UNDER", "UNDERRANGE", "UNDER RANGE",
 	"NAN", "-NAN", "NA", "N/A", "#N/A", "#NA", "NULL", "NONE", "NIL", "(NULL)", "INF", "+INF", "-INF", "INFINITY", "1.#INF", "1.#QNAN",
 	"BAD", "BAD INPUT", "BAD DATA", "BAD QUALITY", "INVALID", "ERR", "ERROR", "#ERR", "#VALUE!", "#DIV/0!", "#REF!", "#NUM!", "#NAME?",
@@ -18,13 +18,34 @@ var badWords = []string{
 	"COMM FAIL", "OFFLINE", "OFF-SCAN", "PT CREATED", "SHUTDOWN", "CONFIGURE", "MISSING", "?", "*", "UNCERTAIN",
 	"N/C", "NC", "OVRFLW", "OVFL", "OVERLOAD", "UNDERFLOW", "LIMIT", "BURN", "B.OUT", "BOUT", "TC OPEN", "OPEN TC", "OPEN CIRCUIT", "NO SENSOR", "NOT CONNECTED",
 	"DISCONNECTED", "UNPLUGGED", "SENSOR ERROR", "SENSOR ERR", "SENSOR FAULT", "INPUT ERROR", "BAD VALUE", "BADVAL", "NOT AVAILABLE", "HHHH", "LLLL", "UUUU", "1.#IND", "-1.#IND", "-1.#QNAN",
-	"FEHLER", "OFFEN", "BRUCH", "ERREUR", "ABIERTO", "APERTO", "OUVERT", "ERRORE", "FOUT", "OUT OF RANGE", "+OVER", "-OVER", "+OL", "-OL",
+	"FEHLER", "OFFEN", "BRUCH", "ERREUR", "ABIERTO", "APERTO", "OUVERT", "ERRORE", "FOUT", "OUT OF RANGE", "+OVER", "-OVER", "+OL", "-OL")
+
+func setOf(words ...string) map[string]bool {
+	set := make(map[string]bool, len(words))
+	for _, w := range words {
+		set[w] = true
+	}
+	return set
 }
 
 // missingKind tells what stands in a cell in place of a number: "blank", a
 // known word in capitals, dashes, or the text itself. known is false for text
 // that is none of the usual words.
 func missingKind(cell []byte) (kind string, known bool) {
+	if kind, known = knownMissing(cell); known {
+		return kind, true
+	}
+	if cell = bytes.Trim(trimBlanks(cell), `"`); len(cell) > longestWord {
+		return "other text", false
+	}
+	return fmt.Sprintf("text %q", decodeName(cell)), false
+}
+
+// longestWord bounds the words that are looked up and shown, bytes.
+const longestWord = 40
+
+// knownMissing is missingKind for the usual words; kind is "" for other text.
+func knownMissing(cell []byte) (kind string, known bool) {
 	cell = bytes.Trim(trimBlanks(cell), `"`)
 	if len(cell) == 0 {
 		return "blank", true
@@ -32,17 +53,17 @@ func missingKind(cell []byte) (kind string, known bool) {
 	if dashes := bytes.Trim(cell, "-_.*+#"); len(dashes) == 0 && !bytes.Equal(cell, []byte("*")) {
 		return "----", true
 	}
-	if len(cell) > 40 {
-		return "other text", false
+	if len(cell) > longestWord {
+		return "", false
 	}
 	word := strings.ToUpper(decodeName(cell))
-	if slices.Contains(badWords, word) {
+	if badWords[word] {
 		return word, true
 	}
-	if word = strings.Trim(word, "[]()<>*! "); slices.Contains(badWords, word) {
+	if word = strings.Trim(word, "[]()<>*! "); badWords[word] {
 		return word, true
 	}
-	return fmt.Sprintf("text %q", decodeName(cell)), false
+	return "", false
 }
 
 // maxKinds bounds how many kinds of missing values are told apart.

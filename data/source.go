@@ -34,6 +34,10 @@ type source struct {
 // headSize is how many bytes are enough to tell the kind of file.
 const headSize = 4096
 
+// bufferSize is how much is read at once of a large file, or of one whose size
+// is not known.
+const bufferSize = 1 << 18
+
 // openSource opens path, or stdin for "-", and unpacks gzip and zstd.
 func openSource(path string, stdin io.Reader) (*source, error) {
 	s := &source{path: path, file: "-"}
@@ -60,25 +64,25 @@ func openSource(path string, stdin io.Reader) (*source, error) {
 }
 
 func (s *source) unpack() error {
-	raw := bufio.NewReaderSize(s.stored, 1<<18)
+	raw := bufio.NewReaderSize(s.stored, headSize) // larger reads pass it by
 	magic, err := raw.Peek(4)
 	if err != nil && len(magic) == 0 && !errors.Is(err, io.EOF) {
 		return fmt.Errorf("%s: %w", s.path, err)
 	}
 	switch {
 	case bytes.HasPrefix(magic, []byte{0x1F, 0x8B}):
-		z, err := gzip.NewReader(raw)
+		z, err := gzip.NewReader(bufio.NewReaderSize(raw, s.bufferSize()))
 		if err != nil {
 			return fmt.Errorf("%s: damaged gzip file: %w", s.path, err)
 		}
-		s.packed, s.r = "gzip", bufio.NewReaderSize(&unpacked{r: z, s: s}, 1<<18)
+		s.packed, s.r = "gzip", bufio.NewReaderSize(&unpacked{r: z, s: s}, headSize)
 	case bytes.HasPrefix(magic, []byte{0x28, 0xB5, 0x2F, 0xFD}):
 		z, err := zstd.NewReader(raw, zstd.WithDecoderConcurrency(1), zstd.WithDecoderMaxWindow(128<<20))
 		if err != nil {
 			return fmt.Errorf("%s: damaged zstd file: %w", s.path, err)
 		}
 		s.unpacker = z
-		s.packed, s.r = "zstd", bufio.NewReaderSize(&unpacked{r: z, s: s}, 1<<18)
+		s.packed, s.r = "zstd", bufio.NewReaderSize(&unpacked{r: z, s: s}, headSize)
 	case bytes.HasPrefix(magic, []byte("PK\x03\x04")):
 		return fmt.Errorf("%s: is a zip archive or a spreadsheet, not a log: export it as CSV", s.path)
 	default:
@@ -93,7 +97,8 @@ func (s *source) unpack() error {
 
 // sum is the SHA-256 of all stored bytes, hex; what was not read yet is read.
 func (s *source) sum() (string, error) {
-	if _, err := io.Copy(io.Discard, s.stored); err != nil {
+	rest := struct{ io.Writer }{io.Discard} // without the small pieces in which Discard itself reads
+	if _, err := io.CopyBuffer(rest, s.stored, make([]byte, s.bufferSize())); err != nil {
 		return "", fmt.Errorf("%s: %w", s.path, err)
 	}
 	return hex.EncodeToString(s.stored.hash.Sum(nil)), nil
@@ -111,26 +116,37 @@ func (s *source) expectedRows(sample []byte) int {
 	return int(1.02*float64(size)/perLine) + firstBlock
 }
 
+// bufferSize is how much of the stored bytes is worth reading at once.
+func (s *source) bufferSize() int {
+	if n := s.storedSize(); n > 0 {
+		return int(min(max(n, headSize), bufferSize))
+	}
+	return bufferSize
+}
+
+// storedSize is the size of a file, 0 of anything else.
+func (s *source) storedSize() int64 {
+	if f, ok := s.closer.(*os.File); ok {
+		if info, err := f.Stat(); err == nil && info.Mode().IsRegular() {
+			return info.Size()
+		}
+	}
+	return 0
+}
+
 // textSize is the number of bytes of the text as far as the file shows it
 // without being read; 0 where it does not.
 func (s *source) textSize() int64 {
-	f, ok := s.closer.(*os.File)
-	if !ok {
-		return 0
-	}
-	info, err := f.Stat()
-	if err != nil || !info.Mode().IsRegular() {
-		return 0
-	}
-	switch s.packed {
-	case "":
-		return info.Size()
-	case "gzip": // the last four bytes, modulo 2^32 (RFC 1952)
+	size := s.storedSize()
+	switch {
+	case size == 0 || s.packed == "":
+		return size
+	case s.packed == "gzip": // the last four bytes, modulo 2^32 (RFC 1952)
 		var b [4]byte
-		if _, err := f.ReadAt(b[:], info.Size()-4); err != nil {
+		if _, err := s.closer.(*os.File).ReadAt(b[:], size-4); err != nil {
 			return 0
 		}
-		if n := int64(binary.LittleEndian.Uint32(b[:])); n < 50*info.Size() {
+		if n := int64(binary.LittleEndian.Uint32(b[:])); n < 50*size {
 			return n
 		}
 	}

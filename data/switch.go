@@ -45,7 +45,7 @@ type switchTally struct {
 
 func (s *switchTally) add(cell []byte) {
 	_, ok := switchOf(cell)
-	if kind, known := missingKind(cell); known && kind != "OPEN" {
+	if kind, known := knownMissing(cell); known && kind != "OPEN" {
 		return
 	}
 	if !ok {

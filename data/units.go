@@ -31,6 +31,17 @@ var unitNames = map[string][]string{
 	"d":   {"d", "day", "days", "tage", "jours"},
 }
 
+// unitOfName is unitNames turned round.
+var unitOfName = func() map[string]string {
+	names := map[string]string{}
+	for unit, ways := range unitNames {
+		for _, way := range ways {
+			names[way] = unit
+		}
+	}
+	return names
+}()
+
 // timeUnits gives the nanoseconds in a unit of time.
 var timeUnits = map[string]uint64{
 	"ns": 1, "us": 1e3, "ms": 1e6, "s": nsSecond, "min": nsMinute, "h": nsHour, "d": nsDay,
@@ -40,10 +51,8 @@ var timeUnits = map[string]uint64{
 // false when it is none of the units this package converts.
 func canonicalUnit(written string) (name string, known bool) {
 	w := strings.TrimSpace(written)
-	for n, ways := range unitNames {
-		if slices.Contains(ways, strings.ToLower(w)) && w != "MV" && w != "S" && w != "MS" {
-			return n, true
-		}
+	if name, known = unitOfName[strings.ToLower(w)]; known && w != "MV" && w != "S" && w != "MS" {
+		return name, true
 	}
 	return w, false
 }

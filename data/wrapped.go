@@ -30,6 +30,9 @@ func unwrapLine(line []byte) []byte {
 func areWrapped(lines []line) bool {
 	n := 0
 	for _, l := range lines {
+		if bytes.IndexByte(l.text, '"') < 0 {
+			continue
+		}
 		row := unwrapLine(bytes.Clone(l.text))
 		if len(row) < len(l.text) && bytes.ContainsAny(row, ",;\t|") {
 			n++
