@@ -20,9 +20,12 @@ const (
 func clippedNote(y []float64) (n Note, ok bool) {
 	lo, hi := math.Inf(1), math.Inf(-1)
 	for _, v := range y {
-		if v == v {
-			lo, hi = math.Min(lo, v), math.Max(hi, v)
+		if v <= lo || v >= hi {
+			lo, hi = min(lo, v), max(hi, v)
 		}
+	}
+	if !mayClip(y, lo, hi) {
+		return Note{}, false
 	}
 	atLo, atHi, other := 0, 0, 0 // longest stretches of one value
 	start := 0
@@ -48,6 +51,17 @@ func clippedNote(y []float64) (n Note, ok bool) {
 		return Note{}, false
 	}
 	return Note{Code: "temperature-clipped", Text: fmt.Sprintf("the temperature stands at exactly %.6g, its %s, for %d rows in a row: the instrument or its range ends there, and what it cut off cannot be fitted; keep the part before with --to, or widen the range and repeat the test", value, end, rows)}, true
+}
+
+// mayClip tells that a value at one end of the range stands where every
+// stretch of clippedRows has a row: without one no stretch is that long.
+func mayClip(y []float64, lo, hi float64) bool {
+	for i := 0; i+1 < len(y); i += clippedRows / 2 {
+		if v := y[i]; v == y[i+1] && (v == lo || v == hi) {
+			return true
+		}
+	}
+	return false
 }
 
 // noisy tells that the readings other than value go up and down from row to

@@ -33,7 +33,7 @@ func findClock(cells [][]byte, c column, dated bool, o *Options, point byte) (*c
 // findNumberClock tells elapsed time, time since 1970 and day numbers of
 // spreadsheets apart by size: a date of our days is a large number in any unit.
 func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, error) {
-	var v []float64
+	v := make([]float64, 0, len(cells))
 	for _, b := range cells {
 		if d, n, ok := scanDecimal(trimBlanks(b), point); ok {
 			if x, ok := d.float(trimBlanks(b)[:n], point); ok {

@@ -301,8 +301,11 @@ func best(cols []column, taken map[int]bool, want role, usable func(c column) bo
 	best := 0
 	var found []int
 	for i, c := range cols {
+		if taken[i] || !usable(c) {
+			continue
+		}
 		r, score := roleOf(c)
-		if r != want || taken[i] || !usable(c) {
+		if r != want {
 			continue
 		}
 		if score > best {

@@ -31,9 +31,10 @@ type csvReader struct {
 	digits  clockDigits  // of a time of day without colons
 	pair    bool         // date and time of day have a column each
 	quality bool         // the status is a number, good from 192 on
-	single  bool         // cells can be read in place: no blanks as delimiter, the clock in one
+	inPlace bool         // cells can be read in place
 
 	tables []*table
+	only   *table // of a log whose rows are read in place
 	byName map[string]*table
 	long   *longReader // rows are (time, tag, value)
 	expect int         // rows of a file of one run, 0 when nobody knows
@@ -176,7 +177,7 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 		c.at[roleDate] = c.spread.stamp
 	}
 	c.pair = c.at[roleDate] >= 0
-	var cells [][]byte
+	cells := make([][]byte, 0, len(c.d.rows))
 	for _, l := range c.d.rows {
 		if cell, ok := c.stampOf(l.cells); ok && len(trimBlanks(cell)) > 0 {
 			if c.pair || c.at[roleHalf] >= 0 { // put together in memory that is used again
@@ -208,7 +209,7 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 		c.last = max(c.last, c.spread.last())
 	}
 	slices.SortFunc(c.fields, func(a, b field) int { return a.index - b.index })
-	c.single = c.d.delim != ' ' && c.spread == nil
+	c.inPlace = c.canReadInPlace()
 	c.quality = isQuality(c.d.rows, c.at[roleStatus])
 	if o.TimeCol == "" && o.TimeFormat == "" && c.spread == nil {
 		return c.compareClocks()
@@ -298,76 +299,11 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 		if lines.line == 1 {
 			text = bytes.TrimPrefix(text, []byte("\xEF\xBB\xBF"))
 		}
-		if c.single && !lines.quoted && c.fast(text, lines.line) {
+		if c.inPlace && !lines.quoted && c.fast(text, lines.line) {
 			continue
 		}
 		c.slow(text, lines.line)
 	}
-}
-
-// fast reads a row whose cells are plain numbers in place. It gives up, and
-// adds nothing, at anything out of the ordinary.
-func (c *csvReader) fast(text []byte, line int) bool {
-	if c.long != nil || c.pair || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(text) == 0 || mayComment(text[0]) {
-		return false
-	}
-	i, col := 0, 0
-	for _, f := range c.fields {
-		if f.switched && f.role == roleInput {
-			return false
-		}
-		for ; col < f.index; col++ {
-			n := bytes.IndexByte(text[i:], c.d.delim)
-			if n < 0 {
-				return false
-			}
-			i += n + 1
-		}
-		n, ok := c.inPlace(text[i:], f.role)
-		if !ok {
-			return false
-		}
-		i += n
-	}
-	if rest := text[i:]; len(rest) > 0 {
-		extra := bytes.Count(rest, []byte{c.d.delim})
-		if col+extra >= c.d.fields || bytes.IndexByte(rest, 0) >= 0 {
-			return false
-		}
-	}
-	c.rec.line = line
-	c.table("").take(&c.rec, c.open)
-	return true
-}
-
-// inPlace reads the cell that text begins with into the record and returns
-// its length.
-func (c *csvReader) inPlace(text []byte, r role) (n int, ok bool) {
-	switch r {
-	case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
-		d, n, ok := scanDecimal(text, c.d.format.point)
-		if !ok || n < len(text) && text[n] != c.d.delim {
-			return 0, false
-		}
-		c.rec.v[r], ok = d.float(text[:n], c.d.format.point)
-		return n, ok
-	case roleTime:
-		if n = bytes.IndexByte(text, c.d.delim); n < 0 {
-			n = len(text)
-		}
-		c.rec.t, c.rec.alt, ok = c.clock.parse(text[:n], c.d.format.point)
-		return n, ok
-	}
-	return 0, false
-}
-
-// mayComment tells the characters that a comment can begin with.
-func mayComment(c byte) bool { return c == '#' || c == '%' || c == '!' || c == '/' || c == ';' }
-
-// take counts and adds a complete row.
-func (tb *table) take(r *record, open bool) {
-	tb.counts.read++
-	tb.add(r, open)
 }
 
 // table returns the table of a run, by its name.

@@ -139,18 +139,27 @@ func (d *dialect) lines(path string, sample []byte, whole bool) ([]line, error) 
 	return out, nil
 }
 
-// cutLines cuts lines into cells.
+// cutLines cuts lines into cells, those of many lines in one piece of memory.
 func cutLines(path string, lines []line, delim byte) error {
+	var room [][]byte
 	usual := 0
 	for i := range lines {
 		l := &lines[i]
-		l.cells = splitCells(make([][]byte, 0, usual), l.text, delim)
-		if usual = len(l.cells); usual > maxColumns {
-			return fmt.Errorf("%s:%d: %d columns, at most %d can be read", path, l.number, usual, maxColumns)
+		if usual > cap(room) {
+			room = make([][]byte, 0, max(usual, cellBlock))
 		}
+		l.cells = splitCells(room[:0:usual], l.text, delim)
+		if len(l.cells) > maxColumns {
+			return fmt.Errorf("%s:%d: %d columns, at most %d can be read", path, l.number, len(l.cells), maxColumns)
+		}
+		room = room[usual:usual]
+		usual = len(l.cells)
 	}
 	return nil
 }
+
+// cellBlock is how many cells of the sample share a piece of memory.
+const cellBlock = 1 << 10
 
 const maxColumns = 100000
 
@@ -200,11 +209,9 @@ func (d *dialect) findColumns(path string, lines []line) error {
 			c.unit = units[k]
 		}
 	}
-	for _, l := range lines[start:] {
-		if !slices.ContainsFunc(d.header, func(h []byte) bool { return bytes.Equal(h, l.text) }) {
-			d.rows = append(d.rows, l)
-		}
-	}
+	d.rows = slices.DeleteFunc(lines[start:], func(l line) bool {
+		return slices.ContainsFunc(d.header, func(h []byte) bool { return bytes.Equal(h, l.text) })
+	})
 	for k, h := range d.header {
 		d.header[k] = bytes.Clone(h) // kept when the sample is not
 	}

@@ -167,7 +167,7 @@ func FuzzRow(f *testing.F) {
 			point = ','
 		}
 		read := func(fast bool) (*table, bool) {
-			c := &csvReader{d: &dialect{delim: delim, format: numberFormat{point}, fields: 4, cols: make([]column, 4)}, single: true,
+			c := &csvReader{d: &dialect{delim: delim, format: numberFormat{point}, fields: 4, cols: make([]column, 4)},
 				clock: &clock{kind: elapsed, unit: nsSecond}, byName: map[string]*table{}, firstNo: map[string]int{}}
 			c.at = noLayout()
 			c.at[roleTime], c.at[roleInput], c.at[roleTemp] = 0, 1, 2

@@ -46,6 +46,15 @@ func (l *lineReader) start() { l.take(len(l.buf)) }
 // read returns the next line without its end, valid until the next call, and
 // io.EOF after the last.
 func (l *lineReader) read() ([]byte, error) {
+	if !l.quoted && l.rewrite == nil {
+		if n := bytes.IndexByte(l.buf[l.lo:l.hi], '\n'); 0 <= n && n < maxLine {
+			line := l.buf[l.lo : l.lo+n]
+			l.line = l.next
+			l.next++
+			l.lo += n + 1
+			return withoutCR(line), nil
+		}
+	}
 	from := 0 // in buf[lo:], searched already
 	for {
 		if n, end, ok := l.find(from); ok {
@@ -59,7 +68,7 @@ func (l *lineReader) read() ([]byte, error) {
 				l.next += bytes.Count(line, []byte{'\n'})
 			}
 			l.lo += end
-			line = bytes.TrimRight(line, "\r")
+			line = withoutCR(line)
 			if l.rewrite != nil {
 				line = l.rewrite(line)
 			}
@@ -79,6 +88,14 @@ func (l *lineReader) read() ([]byte, error) {
 			return nil, err
 		}
 	}
+}
+
+// withoutCR takes away what stands in front of the line end.
+func withoutCR(line []byte) []byte {
+	for len(line) > 0 && line[len(line)-1] == '\r' {
+		line = line[:len(line)-1]
+	}
+	return line
 }
 
 // find looks for the end of the line at lo: its length, and the length with

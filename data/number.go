@@ -17,31 +17,39 @@ type decimal struct {
 	dropped bool
 }
 
+// mostDigits is how many digits always fit in 64 bits.
+const mostDigits = 19
+
 // scanDecimal reads [+-]digits[point digits][e[+-]digits] from the start of b
 // and returns the index of the first byte after it. ok is false when there is
 // no digit. Anything that only a programming language would call a number
 // (0x10, 1_000, Inf, NaN) is not one here.
 func scanDecimal(b []byte, point byte) (d decimal, next int, ok bool) {
 	i := 0
-	if i < len(b) && (b[i] == '-' || b[i] == '+') {
-		d.neg = b[i] == '-'
-		i++
+	if len(b) > 0 && (b[0] == '-' || b[0] == '+') {
+		d.neg = b[0] == '-'
+		i = 1
 	}
 	first := i
 	for ; i < len(b) && b[i]-'0' <= 9; i++ {
-		d.digit(b[i]-'0', 0)
+		d.mant = d.mant*10 + uint64(b[i]-'0')
 	}
-	seen := i - first
+	digits := i - first
 	if i < len(b) && b[i] == point {
 		i++
 		first = i
 		for ; i < len(b) && b[i]-'0' <= 9; i++ {
-			d.digit(b[i]-'0', 1)
+			d.mant = d.mant*10 + uint64(b[i]-'0')
 		}
-		seen += i - first
+		d.exp = first - i
+		digits -= d.exp
 	}
-	if seen == 0 {
+	if digits == 0 {
 		return decimal{}, 0, false
+	}
+	if digits > mostDigits {
+		d.mant, d.exp = 0, 0
+		d.digits(b[:i], point)
 	}
 	if i < len(b) && b[i]|0x20 == 'e' {
 		if e, n := scanExponent(b[i:]); n > 0 {
@@ -50,6 +58,20 @@ func scanDecimal(b []byte, point byte) (d decimal, next int, ok bool) {
 		}
 	}
 	return d, i, true
+}
+
+// digits reads the digits of a long number again, and drops those beyond 64
+// bits.
+func (d *decimal) digits(b []byte, point byte) {
+	decimals := 0
+	for _, c := range b {
+		switch {
+		case c == point:
+			decimals = 1
+		case c-'0' <= 9:
+			d.digit(c-'0', decimals)
+		}
+	}
 }
 
 // digit appends one digit; decimals is 1 after the decimal point, else 0.
@@ -94,13 +116,14 @@ var pow10 = [...]float64{1e0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10,
 // float returns the nearest float64, with text (the digits d was read from)
 // for the cases where one rounding would not be enough. An integer below 2^53
 // and a power of ten up to 10^22 are both exact, so their product or quotient
-// is rounded once. ok is false when the number is too large for a float64.
+// is rounded once (W. D. Clinger, How to read floating point numbers
+// accurately, 1990). ok is false when the number is too large for a float64.
 func (d decimal) float(text []byte, point byte) (v float64, ok bool) {
 	switch {
-	case !d.dropped && d.mant < 1<<53 && 0 <= d.exp && d.exp < len(pow10):
-		v = float64(d.mant) * pow10[d.exp]
-	case !d.dropped && d.mant < 1<<53 && -len(pow10) < d.exp && d.exp < 0:
+	case !d.dropped && d.mant < 1<<53 && -len(pow10) < d.exp && d.exp <= 0:
 		v = float64(d.mant) / pow10[-d.exp]
+	case !d.dropped && d.mant < 1<<53 && 0 < d.exp && d.exp < len(pow10):
+		v = float64(d.mant) * pow10[d.exp]
 	default:
 		if point != '.' {
 			text = bytes.Replace(text, []byte{point}, []byte{'.'}, 1)

@@ -97,6 +97,9 @@ func (s *source) unpack() error {
 
 // sum is the SHA-256 of all stored bytes, hex; what was not read yet is read.
 func (s *source) sum() (string, error) {
+	if s.stored.ended {
+		return hex.EncodeToString(s.stored.hash.Sum(nil)), nil
+	}
 	rest := struct{ io.Writer }{io.Discard} // without the small pieces in which Discard itself reads
 	if _, err := io.CopyBuffer(rest, s.stored, make([]byte, s.bufferSize())); err != nil {
 		return "", fmt.Errorf("%s: %w", s.path, err)
@@ -167,12 +170,15 @@ type hashReader struct {
 	r    io.Reader
 	hash hash.Hash
 	n    int64
+
+	ended bool // there is no more
 }
 
 func (h *hashReader) Read(p []byte) (int, error) {
 	n, err := h.r.Read(p)
 	h.hash.Write(p[:n])
 	h.n += int64(n)
+	h.ended = err == io.EOF
 	return n, err
 }
 

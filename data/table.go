@@ -10,6 +10,7 @@ type table struct {
 	t      growing[int64] // ns
 	alt    growing[int64] // the same stamps read month first, while that is open
 	cols   [numRoles]*growing[float64]
+	values []role         // those that have a column
 	auto   *growing[int8] // 1 automatic, 0 manual, -1 not known
 	lines  lineMap
 	counts counts
@@ -36,6 +37,7 @@ func newTable(name string, logged layout, rows int) *table {
 		case roleInput, roleTemp, roleSetpoint, roleAirflow, roleInlet, roleCold:
 			tb.cols[r] = &growing[float64]{}
 			tb.cols[r].reserve(rows)
+			tb.values = append(tb.values, r)
 		case roleMode:
 			tb.auto = &growing[int8]{}
 		}
@@ -146,10 +148,8 @@ func (tb *table) add(r *record, open bool) {
 	if open {
 		tb.alt.add(r.alt)
 	}
-	for i, c := range tb.cols {
-		if c != nil {
-			c.add(r.v[i])
-		}
+	for _, i := range tb.values {
+		tb.cols[i].add(r.v[i])
 	}
 	if tb.auto != nil {
 		tb.auto.add(r.auto)

@@ -22,6 +22,9 @@ func parseTimeOfDay(b []byte, hourMinute bool) (ns int64, ok bool) {
 func scanTime(b []byte, hourMinute bool) (ns int64, n, fields int) {
 	var f [3]uint64
 	i := 0
+	if h, m, s, ok := eightOfTime(b); ok {
+		f, fields, i = [3]uint64{h, m, s}, 3, 8
+	}
 	for fields < 3 {
 		first := i
 		for i < len(b) && i-first < 6 && b[i]-'0' <= 9 {
@@ -54,6 +57,21 @@ func scanTime(b []byte, hourMinute bool) (ns int64, n, fields int) {
 	return ns, i, fields
 }
 
+// eightOfTime reads hh:mm:ss, the form of most logs.
+func eightOfTime(b []byte) (h, m, s uint64, ok bool) {
+	if len(b) < 8 || b[2] != ':' || b[5] != ':' || len(b) > 8 && b[8]-'0' <= 9 {
+		return 0, 0, 0, false
+	}
+	for _, i := range [...]int{0, 1, 3, 4, 6, 7} {
+		if b[i]-'0' > 9 {
+			return 0, 0, 0, false
+		}
+	}
+	two := func(i int) uint64 { return 10*uint64(b[i]-'0') + uint64(b[i+1]-'0') }
+	h, m, s = two(0), two(3), two(6)
+	return h, m, s, m <= 60 && s <= 60
+}
+
 // digitsOfTime reads hhmmss and a fraction of the second.
 func digitsOfTime(b []byte) (ns int64, n int) {
 	if len(b) < 6 {
@@ -81,10 +99,12 @@ func digitsOfTime(b []byte) (ns int64, n int) {
 // fraction reads the digits of a decimal fraction of a second. Digits beyond
 // the ninth are cut off.
 func fraction(b []byte) (ns int64, n int) {
-	unit := int64(time.Second)
+	for n < len(b) && n < 9 && b[n]-'0' <= 9 {
+		ns = 10*ns + int64(b[n]-'0')
+		n++
+	}
+	ns *= int64(pow10u[9-n])
 	for n < len(b) && b[n]-'0' <= 9 {
-		unit /= 10
-		ns += unit * int64(b[n]-'0')
 		n++
 	}
 	return ns, n
@@ -92,6 +112,9 @@ func fraction(b []byte) (ns int64, n int) {
 
 // halfDay applies AM or PM, with or without dots and blanks.
 func halfDay(ns int64, rest []byte) (int64, []byte, bool) {
+	if len(rest) == 0 {
+		return ns, rest, true
+	}
 	r := skipSpaces(rest)
 	n := 1
 	if len(r) > 1 && r[1] == '.' {
@@ -125,7 +148,7 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 		}
 	}
 	tod, rest, ok := halfDay(tod, b[n:])
-	if !ok || tod >= int64(nsDay)+int64(nsSecond) {
+	if !ok || tod >= int64(nsDay+nsSecond) {
 		return 0, 0, false
 	}
 	rest = skipSpaces(rest)
