@@ -32,17 +32,27 @@ func ladder(w int) int {
 	return p
 }
 
+// Where the input never rests nothing can be averaged. Of a long log of that kind the
+// search, the noise and the shape of the intervals are left to its beginning, and
+// every structure is brought to its optimum on all rows, which then also give the
+// widths (see excerpt.go).
+const (
+	mostRows    = 12000 // rows in use at a time
+	mostChanges = 12000 // changes of the input in them
+)
+
 // averaged returns r with blocks in place of rows: allowed gives the longest
-// block, in samples, that may start at a time. It returns the whole log when
+// block, in samples, that may start at a time. It returns rows as they are when
 // little would be saved.
 func (r *record) averaged(allowed func(t float64) int) *record {
 	root := r.root
-	n := len(root.t)
+	n := root.reach
 	c := *r
 	c.rows, c.t, c.y = nil, nil, nil
 	var samples []ident.Row // of the response
 	ragged := false
-	for k := 0; k < n; {
+	k := 0
+	for k < n && len(c.rows) < mostRows {
 		longest := ladder(allowed(root.t[k]))
 		m, exact := root.uniform(k, longest)
 		var row, response ident.Row
@@ -61,8 +71,11 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 		c.y = append(c.y, total(root.y[k:k+m])/float64(m))
 		k += m
 	}
-	if float64(len(c.rows)) > 0.7*float64(n) {
-		return r.whole()
+	if float64(len(c.rows)) > 0.7*float64(k) {
+		return r.window(min(k, mostRows))
+	}
+	if c.used = k; c.excerpt() {
+		c.parts = root.noiseParts(k)
 	}
 	if !ragged {
 		samples = c.rows
@@ -134,7 +147,7 @@ const searchRows = 250
 
 // coarse averages a long log into about rows equal blocks, for the search.
 func (r *record) coarse(rows int) *record {
-	w := len(r.root.t) / rows
+	w := r.root.reach / rows
 	if w < 2 {
 		return r.whole()
 	}
@@ -212,14 +225,14 @@ const (
 	unevenNoiseRows = 8000
 )
 
-// noiseParts are the parts of a log on which its noise is judged.
-func (r *record) noiseParts() []part {
-	n, most := len(r.t), noiseRows
+// noiseParts are the parts of the first n rows of a log on which its noise is judged.
+func (r *record) noiseParts(n int) []part {
+	most := noiseRows
 	if !r.even && r.usual == 0 {
 		most = unevenNoiseRows
 	}
 	if n <= most {
-		return []part{{0, n, r.sim.Clone()}}
+		return []part{{0, n, ident.NewSimulator(r.t[:n], r.input)}}
 	}
 	const count = 8
 	size := most / count

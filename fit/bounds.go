@@ -37,6 +37,7 @@ func (s *study) bound(f *fitted, level float64, rng *rand.Rand) *bounded {
 		}
 		f.p = f.e.descend(better.eta, finalTol)
 		s.coincide(f)
+		s.complete(f)
 		s.score(f)
 	}
 	b, _ := s.tryBound(f, level, rng)
@@ -67,6 +68,10 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	b.reference, b.nodes = here.cov, nodes
 	cov := pooled(b.members)
 
+	if f.regular() {
+		b.fromEveryRow(here, cov, level)
+		return b, nil
+	}
 	q := &profiler{e: e, best: f.p, s2: f.s2()}
 	n := e.nl + 2
 	b.est = make([]estimate, n)
@@ -101,6 +106,9 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 		}
 	}
 	b.lin = f.linear(b, level)
+	if f.full != nil && q.found == nil {
+		b.around(f.full)
+	}
 	return b, q.found
 }
 

@@ -423,6 +423,9 @@ func (out *outcome) choose() {
 			continue
 		}
 		w := math.Exp(-0.5 * (m.aicc - low))
+		if m.full != nil && !m.regular() && out.anyRegular() {
+			continue // an excerpt would scatter its plants too widely
+		}
 		if w > 0.02 {
 			out.weights[i] = w
 			total += w
@@ -458,6 +461,9 @@ func (out *outcome) widen() {
 	}
 	g := &sel.est[0]
 	for _, m := range out.models {
+		if m.full != nil && !m.regular() {
+			continue // its interval is that of an excerpt
+		}
 		if m == sel || m.st.Integrating() || m.aicc > low+4 || m.est[0].value*g.value < 0 {
 			continue
 		}

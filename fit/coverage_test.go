@@ -77,6 +77,13 @@ func families() []family {
 		with("ar 0.7, wanders", func(f *family) { f.ar, f.white, f.wander, f.wide = 0.7, 0, 0.3, true }),
 		with("ar 0.7, quantum, wanders more", func(f *family) { f.ar, f.white, f.quantum, f.wander, f.wide = 0.7, 0, 0.1, 0.8, true }),
 		with("equal3 ar 0.8", func(f *family) { f.structure, f.lags, f.ar, f.white = "equal3", []float64{0.9}, 0.8, 0 }),
+		with("telegraph, beyond one excerpt", func(f *family) {
+			f.n, f.ar, f.white, f.bumps = 16000, 0.8, 0, nil
+			for at, i := 10.0, 0; at < 1600; i++ {
+				f.bumps = append(f.bumps, at)
+				at += 0.5 + 0.1*float64((i*7)%31)
+			}
+		}),
 		with("rows missing", func(f *family) {
 			f.n, f.step, f.ar, f.white, f.missing = 2400, 0.04, 0.91, 0, 0.33
 		}),

@@ -137,6 +137,9 @@ func (q *posterior) plant(w plantAt) draw {
 // rejection, each independent of the others; where lags are nearly exchangeable
 // or pressed against zero, from proposals that adapt to it (see adapt).
 func (b *bounded) sample(count int, rng *rand.Rand) []draw {
+	if b.regular() {
+		return b.sampleEveryRow(count, rng)
+	}
 	b.activate()
 	q := b.posterior(rng)
 	var out []draw

@@ -16,11 +16,10 @@ type polished struct {
 	cov  [][]float64 // of gain, eta (coinciding lags as one) and the linear columns, for unit variance
 }
 
-// polish improves the optimum of b on the full logs, nil when nothing was
-// averaged or the initial state is free.
-func (b *bounded) polish() *polished {
-	b.activate()
-	e := b.e
+// polish improves the optimum of b on the full logs, under the noise shapes in
+// force; nil when nothing was averaged or the initial state is free.
+func (f *fitted) polish() *polished {
+	e := f.e
 	averaged := false
 	for _, r := range e.recs {
 		if r.rest == free {
@@ -31,47 +30,56 @@ func (b *bounded) polish() *polished {
 	if !averaged {
 		return nil
 	}
-	p := e.eval(b.p.eta, true)
+	p := e.eval(f.p.eta, true)
 	at := polished{eta: append([]float64(nil), p.eta...), gain: p.gain}
 	for i, r := range e.recs {
 		_, beta, _ := r.solveLinear(&e.work[i], p.gain)
 		at.beta = append(at.beta, beta)
 	}
 	var sum float64
-	gram := b.normal(&at, &sum)
-	for range 4 {
-		next, promised, ok := b.step(&at, gram)
-		if !ok {
-			break
-		}
-		if promised < 1e-15*sum { // nothing left that a sum of squares could show
+	gram := f.normal(&at, &sum)
+	damping := 0.0
+	for range 12 {
+		next, promised, ok := f.step(&at, gram, damping)
+		if ok && promised < 1e-15*sum { // nothing left that a sum of squares could show
 			at = *next
 			break
 		}
-		var s float64
-		g := b.normal(next, &s)
-		if !(s < sum) {
+		s := math.Inf(1)
+		var g [][]float64
+		if ok {
+			g = f.normal(next, &s)
+		}
+		if s < sum {
+			done := damping == 0 && sum-s < 1e-13*sum
+			at, gram, sum, damping = *next, g, s, 0
+			if done {
+				break
+			}
+			continue
+		}
+		if ok && promised < 1e-9*sum || damping > 1 {
 			break
 		}
-		at, gram, sum = *next, g, s
+		damping = math.Max(100*damping, 1e-6) // lags near zero or near one another
 	}
-	at.cov = b.unitCovariance(gram)
+	at.cov = f.unitCovariance(gram)
 	return &at
 }
 
 // unitCovariance inverts the normal equations of the parameters that are free.
-func (b *bounded) unitCovariance(gram [][]float64) [][]float64 {
+func (f *fitted) unitCovariance(gram [][]float64) [][]float64 {
 	n := len(gram) - 1
 	a := columns(n, n)
 	for i := range n {
 		copy(a[i], gram[i][:n])
 	}
-	if b.e.gainFix {
+	if f.e.gainFix {
 		a[0][0] = 0
 	}
-	for l, held := range b.e.held {
+	for l, held := range f.e.held {
 		if held {
-			d := b.direction(l + 1)
+			d := f.direction(l + 1)
 			a[d][d] = 0
 		}
 	}
@@ -81,6 +89,10 @@ func (b *bounded) unitCovariance(gram [][]float64) [][]float64 {
 // refine polishes b and moves its values to the optimum found. Under a known
 // noise shape (exact) the standard errors are those of every row, too.
 func (b *bounded) refine(exact bool) {
+	if b.full != nil { // done
+		return
+	}
+	b.activate()
 	b.fine = b.polish()
 	if b.fine == nil {
 		return
@@ -111,9 +123,9 @@ func (b *bounded) refine(exact bool) {
 
 // unknowns is the number of parameters polished: gain, eta with coinciding
 // lags as one, and the linear columns of every record.
-func (b *bounded) unknowns() int {
-	n := b.direction(b.e.nl+1) + 1
-	for _, r := range b.e.recs {
+func (f *fitted) unknowns() int {
+	n := f.direction(f.e.nl+1) + 1
+	for _, r := range f.e.recs {
 		n += r.linearColumns()
 	}
 	return n
@@ -133,11 +145,11 @@ func (r *record) linearColumns() int {
 
 // normal accumulates the normal equations of all unknowns, the residual last,
 // over every row of the logs.
-func (b *bounded) normal(at *polished, sum *float64) [][]float64 {
-	n := b.unknowns()
+func (f *fitted) normal(at *polished, sum *float64) [][]float64 {
+	n := f.unknowns()
 	gram := columns(n+1, n+1)
-	base := b.direction(b.e.nl+1) + 1
-	for i, r := range b.e.recs {
+	base := f.direction(f.e.nl+1) + 1
+	for i, r := range f.e.recs {
 		idx := []int{}
 		for k := range base {
 			idx = append(idx, k)
@@ -146,7 +158,7 @@ func (b *bounded) normal(at *polished, sum *float64) [][]float64 {
 			idx = append(idx, base+k)
 		}
 		idx = append(idx, n)
-		b.accumulate(r, at, at.beta[i], idx, gram)
+		f.accumulate(r, at, at.beta[i], idx, gram)
 		base += r.linearColumns()
 	}
 	*sum = gram[n][n]
@@ -154,8 +166,8 @@ func (b *bounded) normal(at *polished, sum *float64) [][]float64 {
 }
 
 // accumulate adds one record; idx says where its columns stand in gram.
-func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int, gram [][]float64) {
-	e, root := b.e, r.root
+func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, gram [][]float64) {
+	e, root := f.e, r.root
 	nl, m := e.nl, len(idx)
 	lags, dead := e.lags(at.eta), at.eta[nl]
 	response := root.sim.Clone().Pieces(e.st, lags, dead, true)
@@ -177,7 +189,7 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 			started(start)
 		}
 		rows := cut(cols, n)
-		b.directions(rows, raw, start, at.gain, beta, r, lo)
+		f.directions(rows, raw, start, at.gain, beta, r, lo)
 		white.passAll(rows, carry, root.t[lo:lo+n])
 		addProducts(upper, rows)
 		lo += n
@@ -194,15 +206,15 @@ func (b *bounded) accumulate(r *record, at *polished, beta []float64, idx []int,
 
 // directions fills cols, rows lo and after of the record: gain, lags and dead
 // time (coinciding lags as one), the linear columns, what is left.
-func (b *bounded) directions(cols, raw, start [][]float64, gain float64, beta []float64, r *record, lo int) {
-	nl := b.e.nl
+func (f *fitted) directions(cols, raw, start [][]float64, gain float64, beta []float64, r *record, lo int) {
+	nl := f.e.nl
 	state := beta[len(beta)-1]
 	copy(cols[0], raw[0])
 	for l := range nl + 1 {
-		clear(cols[b.direction(l+1)])
+		clear(cols[f.direction(l+1)])
 	}
 	for l := range nl + 1 {
-		c := cols[b.direction(l+1)]
+		c := cols[f.direction(l+1)]
 		for i, v := range raw[l+1][:len(c)] {
 			c[i] += gain * v
 		}
@@ -212,7 +224,7 @@ func (b *bounded) directions(cols, raw, start [][]float64, gain float64, beta []
 			}
 		}
 	}
-	c := b.direction(nl+1) + 1
+	c := f.direction(nl+1) + 1
 	left := cols[len(cols)-1]
 	one, y := cols[c][:len(left)], r.root.y[lo:lo+len(left)]
 	for i, v := range raw[0][:len(left)] {
@@ -252,10 +264,10 @@ func cut(cols [][]float64, n int) [][]float64 {
 	return out
 }
 
-// step solves the normal equations and returns the point they lead to, inside
+// step solves the damped normal equations and returns the point they lead to, inside
 // the bounds, and by how much they promise to lower the sum of squares.
-func (b *bounded) step(at *polished, gram [][]float64) (next *polished, promised float64, ok bool) {
-	e := b.e
+func (f *fitted) step(at *polished, gram [][]float64, damping float64) (next *polished, promised float64, ok bool) {
+	e := f.e
 	n := len(gram) - 1
 	var free []int
 	for j := range n {
@@ -264,7 +276,7 @@ func (b *bounded) step(at *polished, gram [][]float64) (next *polished, promised
 		}
 		pinned := false
 		for l := 1; l <= e.nl+1; l++ {
-			if b.direction(l) == j && j > 0 && (e.held[l-1] || at.eta[l-1] <= e.lower[l-1] || at.eta[l-1] >= e.upper[l-1]) {
+			if f.direction(l) == j && j > 0 && (e.held[l-1] || at.eta[l-1] <= e.lower[l-1] || at.eta[l-1] >= e.upper[l-1]) {
 				pinned = true
 			}
 		}
@@ -279,7 +291,7 @@ func (b *bounded) step(at *polished, gram [][]float64) (next *polished, promised
 			scaled[i][j] = gram[i][j] / math.Sqrt(gram[i][i]*gram[j][j])
 		}
 	}
-	if !e.damped.factor(scaled, free, 0) {
+	if !e.damped.factor(scaled, free, damping) {
 		return nil, 0, false
 	}
 	move := make([]float64, n)
@@ -290,9 +302,9 @@ func (b *bounded) step(at *polished, gram [][]float64) (next *polished, promised
 	}
 	next = &polished{gain: at.gain + move[0], eta: append([]float64(nil), at.eta...)}
 	for l := range next.eta {
-		next.eta[l] = math.Min(math.Max(next.eta[l]+move[b.direction(l+1)], e.lower[l]), e.upper[l])
+		next.eta[l] = math.Min(math.Max(next.eta[l]+move[f.direction(l+1)], e.lower[l]), e.upper[l])
 	}
-	base := b.direction(e.nl+1) + 1
+	base := f.direction(e.nl+1) + 1
 	for i := range at.beta {
 		beta := append([]float64(nil), at.beta[i]...)
 		for k := range beta {

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"sort"
 
 	"gonum.org/v1/gonum/floats"
 
@@ -27,6 +28,8 @@ type record struct {
 	drift bool
 
 	root  *record // the record at full resolution; itself when nothing is averaged
+	used  int     // rows of the full log that these rows stand for, from its first on
+	reach int     // rows of the full log that may be used: not beyond mostChanges
 	even  bool    // the full log is evenly sampled
 	usual float64 // s, interval of a log that is so but for jitter, else 0
 	parts []part  // of the full log, on which its noise is judged
@@ -85,10 +88,14 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
+	r.used, r.reach = len(r.t), len(r.t)
+	if len(r.input.At) > mostChanges {
+		r.reach = sort.SearchFloat64s(r.t, r.input.At[mostChanges])
+	}
 	r.even = isEven(r.t, r.step)
 	r.usual = usualStep(r.t, r.step)
 	r.sim = ident.NewSimulator(r.t, r.input)
-	r.parts = r.noiseParts()
+	r.parts = r.noiseParts(len(r.t))
 	return r, nil
 }
 
@@ -106,14 +113,24 @@ func present(t, y []float64) (pt, py []float64) {
 	return pt, py
 }
 
-// whole is the record with every row of the log, ready for fitting.
-func (r *record) whole() *record {
+// whole is the record with every row of the log, or as many as may be used at a
+// time, ready for fitting.
+func (r *record) whole() *record { return r.window(min(r.root.reach, mostRows)) }
+
+// window is the record with the first n rows of the log.
+func (r *record) window(n int) *record {
 	c := *r.root
-	c.rows = make([]ident.Row, len(c.t))
+	c.t, c.y, c.used = c.t[:n], c.y[:n], n
+	c.rows = make([]ident.Row, n)
 	for i, t := range c.t {
 		c.rows[i] = ident.Row{T: t, H: c.step, M: 1}
 	}
-	c.sim = r.root.sim.Clone()
+	if n == len(r.root.t) {
+		c.sim = r.root.sim.Clone()
+	} else {
+		c.sim = ident.NewSimulator(c.t, c.input)
+		c.parts = r.root.noiseParts(n)
+	}
 	return r.adopt(&c)
 }
 
@@ -258,5 +275,8 @@ func usualStep(t []float64, step float64) float64 {
 	return step
 }
 
-// averagesRows reports whether rows of the log are averaged.
+// averagesRows reports whether rows of the log are averaged, or left out.
 func (r *record) averagesRows() bool { return len(r.t) < len(r.root.t) }
+
+// excerpt reports whether rows of the log are left out.
+func (r *record) excerpt() bool { return r.used < len(r.root.t) }

@@ -159,7 +159,7 @@ func (t *tangent) judgeRows(s shape) (node, onRowsSums) {
 	if t.rest != nil {
 		rss, logdet = t.fullSum(s, sums)
 		n = len(t.rest)
-		nd.dof = max(len(t.rec.root.t)-p, 1)
+		nd.dof = max(t.rec.used-p, 1)
 	}
 	nd.s2 = t.rounded(rss / float64(n-p))
 	nd.dev = float64(n-p)*math.Log(rss) + logdet + sums.directions
@@ -167,7 +167,7 @@ func (t *tangent) judgeRows(s shape) (node, onRowsSums) {
 }
 
 // sampled reports whether the noise is judged on a part of the log's rows.
-func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < len(t.rec.root.t) }
+func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < t.rec.used }
 
 // judgeWalk is judge for a log whose noise is judged on pieces of it. A
 // walk is slow: what it adds to -2L is told by the averaged rows, which cover the
@@ -293,7 +293,7 @@ func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
 		w.pass(left[:n], t.rec.root.t[c.lo:c.hi])
 		left = left[n:]
 	}
-	taken := (r.all - r.least) * float64(len(t.rest)) / float64(len(t.rec.root.t))
+	taken := (r.all - r.least) * float64(len(t.rest)) / float64(t.rec.used)
 	return math.Max(w.sum-taken, 1e-3*w.sum), w.logDeterminant()
 }
 

@@ -40,13 +40,12 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 // residualFigures are those of the optimum, on every row where it was brought
 // there, per record.
 func (b *bounded) residualFigures() []*residualFigures {
-	if b.fine == nil {
+	if b.fine == nil || b.full != nil {
 		return b.figures
 	}
 	var out []*residualFigures
-	n := len(b.fine.eta) - 1
 	for i, r := range b.e.recs {
-		f, _ := r.walkResiduals(explained{b.st, b.fine.gain, b.fine.eta[:n], b.fine.eta[n], b.fine.beta[i]})
+		f, _ := r.walkResiduals(b.fine.explained(b.st, i))
 		out = append(out, f)
 	}
 	return out

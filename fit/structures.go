@@ -19,6 +19,7 @@ type fitted struct {
 	sigma2 []float64
 
 	figures []*residualFigures // of every record
+	full    *polished          // optimum on every row, when the records are excerpts
 
 	mean   int // parameters of the mean: gain, lags, dead time, linear columns
 	params int // mean and noise parameters
@@ -111,6 +112,7 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 	case s.unscored:
 	case s.white:
 		s.measure(f)
+		s.complete(f)
 		s.score(f)
 	default:
 		s.alternate(f)
@@ -322,6 +324,7 @@ func (s *study) alternate(f *fitted) {
 		}
 	}
 	s.measure(f)
+	s.complete(f)
 	s.score(f)
 }
 
@@ -460,7 +463,11 @@ func (f *fitted) rows() int {
 // at the model's tangent. It keeps the figures of the residuals it passes.
 func (f *fitted) likelihood(i int, t *tangent) float64 {
 	r := f.e.recs[i]
-	figures, w := r.walkResiduals(t.model)
+	model := t.model
+	if f.full != nil {
+		model = f.full.explained(f.st, i)
+	}
+	figures, w := r.walkResiduals(model)
 	f.figures = append(f.figures, figures)
 	if !r.averagesRows() {
 		return logLikelihood(f.p.part[i], r.filter.logdet, len(r.t))

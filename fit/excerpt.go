@@ -1,0 +1,171 @@
+package fit
+
+import (
+	"math"
+	"math/rand/v2"
+	"slices"
+	"sort"
+
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"lagwright/ident"
+)
+
+// A long log whose input never rests holds so much that every parameter is known
+// far better than it takes for the sum of squares to be a parabola: its intervals are
+// those of the linearised model on every row, and only the noise, and how not
+// knowing it widens them, comes from the excerpt in use.
+
+// complete brings f to its optimum on every row where its records are excerpts.
+func (s *study) complete(f *fitted) {
+	f.full = nil
+	if slices.ContainsFunc(s.recs, (*record).excerpt) {
+		f.full = f.polish()
+	}
+}
+
+// regular reports whether f is known from every row, with all its parameters so far
+// from their bounds and its lags from one another that the linearised model serves.
+func (f *fitted) regular() bool {
+	if f.full == nil {
+		return false
+	}
+	const far = 4 // standard errors
+	se := func(i int) float64 { return math.Sqrt(f.s2() * f.full.cov[f.direction(i)][f.direction(i)]) }
+	for l, v := range f.full.eta {
+		if f.e.held[l] {
+			continue
+		}
+		s := se(l + 1)
+		if !(s > 0) || !f.alone(l+1) || v-f.e.lower[l] < far*s || f.e.upper[l]-v < far*s {
+			return false
+		}
+		if l+1 < f.e.nl && v-f.full.eta[l+1] < far*(s+se(l+2)) {
+			return false
+		}
+	}
+	return true
+}
+
+// anyRegular reports whether one of the models is.
+func (out *outcome) anyRegular() bool {
+	return slices.ContainsFunc(out.models, func(m *bounded) bool { return m.regular() })
+}
+
+// around takes the values of the optimum on every row and keeps the intervals that the
+// excerpt gives, which are wider: where a parameter presses against its bound or
+// another, every row may say more than this.
+func (b *bounded) around(full *polished) {
+	b.fine = full
+	for i := range b.est {
+		v := &b.est[i]
+		if v.value = full.gain; i > 0 {
+			v.value = full.eta[i-1]
+		}
+		v.low, v.high = math.Min(v.low, v.value), math.Max(v.high, v.value) // NaN, an open end, stays
+	}
+	for i, lin := range b.lin {
+		for j := range lin {
+			shift := full.beta[i][j] - lin[j].value
+			lin[j].value, lin[j].low, lin[j].high = full.beta[i][j], lin[j].low+shift, lin[j].high+shift
+		}
+	}
+}
+
+// explained is the model on record i.
+func (p *polished) explained(st ident.Structure, i int) explained {
+	n := len(p.eta) - 1
+	return explained{st, p.gain, p.eta[:n], p.eta[n], p.beta[i]}
+}
+
+// fromEveryRow sets values and intervals from the optimum on every row: the quantiles
+// of the noise mixture, in standard errors of the excerpt at the shapes in force, times
+// the standard errors of every row.
+func (b *bounded) fromEveryRow(here member, cov [][]float64, level float64) {
+	n := b.e.nl + 2
+	b.fine = b.full
+	b.est, b.trails, b.cov = make([]estimate, n), make([][][2]float64, n), columns(n, n)
+	narrower := make([]float64, n) // standard error of every row over that of the excerpt
+	for i := range n {
+		g := b.direction(i)
+		if c := here.cov[g][g]; c > 0 {
+			narrower[i] = math.Min(math.Sqrt(b.s2()*b.full.cov[g][g]/c), 1)
+		}
+	}
+	for i := range n {
+		v := &b.est[i]
+		g := b.direction(i)
+		if v.value = b.full.gain; i > 0 {
+			v.value = b.full.eta[i-1]
+		}
+		if (i == 0 && b.e.gainFix) || (i > 0 && b.e.held[i-1]) {
+			v.fixed, v.se, v.low, v.high = true, 0, v.value, v.value
+			continue
+		}
+		v.se = math.NaN()
+		if c := cov[g][g]; c > 0 && b.alone(i) {
+			v.se = math.Sqrt(c) * narrower[i]
+		}
+		lo, hi := b.quantiles(here, g, level)
+		scale := math.Sqrt(here.cov[g][g]) * narrower[i]
+		lowEnd, highEnd := b.reach(i, v.value)
+		v.low, v.high = inside(v.value-lo*scale, lowEnd, highEnd), inside(v.value+hi*scale, lowEnd, highEnd)
+	}
+	for i := range n {
+		for j := range n {
+			b.cov[i][j] = cov[b.direction(i)][b.direction(j)] * narrower[i] * narrower[j]
+		}
+	}
+	b.lin = b.linear(b, level)
+	base := b.direction(b.e.nl+1) + 1
+	for i, lin := range b.lin {
+		for j := range lin {
+			e := &lin[j]
+			narrow := math.Sqrt(b.s2()*b.full.cov[base+j][base+j]) / e.se
+			value := b.full.beta[i][j]
+			e.low, e.high = value-narrow*(e.value-e.low), value+narrow*(e.high-e.value)
+			e.value, e.se = value, narrow*e.se
+		}
+		base += b.e.recs[i].linearColumns()
+	}
+}
+
+// sampleEveryRow draws plausible plants around the optimum on every row, from a
+// multivariate Student's t, spread as the noise mixture says.
+func (b *bounded) sampleEveryRow(count int, rng *rand.Rand) []draw {
+	n := b.direction(b.e.nl+1) + 1
+	var free []int
+	for g := range n {
+		if b.full.cov[g][g] > 0 {
+			free = append(free, g)
+		}
+	}
+	var root damped
+	if !root.factor(b.full.cov, free, 1e-12) {
+		free = nil
+	}
+	spreads, dof := b.spreads(), float64(max(b.rows()-b.mean, 1))
+	out := make([]draw, 0, count)
+	for range count {
+		size := math.Sqrt(spreads[pickSpread(spreads, rng.Float64())].k2 * b.s2() * dof / distuv.ChiSquared{K: dof, Src: rng}.Rand())
+		z, move := make([]float64, len(free)), make([]float64, n)
+		for i, g := range free {
+			z[i] = size * rng.NormFloat64()
+			for l := range i + 1 {
+				move[g] += root.l[i][l] * z[l]
+			}
+		}
+		d := draw{gain: b.full.gain + move[0], eta: slices.Clone(b.full.eta)}
+		if d.gain*b.full.gain <= 0 {
+			d.gain = b.full.gain
+		}
+		for l := range d.eta {
+			d.eta[l] = math.Min(math.Max(d.eta[l]+move[b.direction(l+1)], b.e.lower[l]), b.e.upper[l])
+		}
+		if !slices.Contains(b.e.held, true) {
+			sort.Sort(sort.Reverse(sort.Float64Slice(d.eta[:b.e.nl])))
+		}
+		out = append(out, d)
+	}
+	return out
+}
