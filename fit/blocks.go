@@ -32,26 +32,17 @@ func ladder(w int) int {
 	return p
 }
 
-// Where the input never rests nothing can be averaged. Of a long log of that kind the
-// search, the noise and the shape of the intervals are left to its beginning, and
-// every structure is brought to its optimum on all rows, which then also give the
-// widths (see excerpt.go).
-const (
-	mostRows    = 12000 // rows in use at a time
-	mostChanges = 12000 // changes of the input in them
-)
-
 // averaged returns r with blocks in place of rows: allowed gives the longest
 // block, in samples, that may start at a time. It returns rows as they are when
 // little would be saved.
 func (r *record) averaged(allowed func(t float64) int) *record {
 	root := r.root
-	n := root.reach
+	from, n := root.scope.lo, root.scope.hi
 	c := *r
 	c.rows, c.t, c.y = nil, nil, nil
 	var samples []ident.Row // of the response
 	ragged := false
-	k := 0
+	k := from
 	for k < n && len(c.rows) < mostRows {
 		longest := ladder(allowed(root.t[k]))
 		m, exact := root.uniform(k, longest)
@@ -71,16 +62,16 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 		c.y = append(c.y, total(root.y[k:k+m])/float64(m))
 		k += m
 	}
-	if float64(len(c.rows)) > 0.7*float64(k) {
-		return r.window(min(k, mostRows))
+	if float64(len(c.rows)) > 0.7*float64(k-from) {
+		return r.window(min(k-from, mostRows))
 	}
-	if c.used = k; c.excerpt() {
-		c.parts = root.noiseParts(k)
+	if c.used = k - from; c.excerpt() {
+		c.parts, c.span = root.noiseParts(c.used), c.t[len(c.t)-1]-c.t[0]
 	}
 	if !ragged {
 		samples = c.rows
 	}
-	c.sim = ident.NewBlockSimulator(samples, r.input)
+	c.sim = ident.NewBlockSimulator(samples, root.scope.input)
 	return r.adopt(&c)
 }
 
@@ -147,7 +138,7 @@ const searchRows = 250
 
 // coarse averages a long log into about rows equal blocks, for the search.
 func (r *record) coarse(rows int) *record {
-	w := r.root.reach / rows
+	w := r.root.scope.rows() / rows
 	if w < 2 {
 		return r.whole()
 	}
@@ -225,21 +216,28 @@ const (
 	unevenNoiseRows = 8000
 )
 
-// noiseParts are the parts of the first n rows of a log on which its noise is judged.
+// noiseParts are the parts of the first n rows of the scope on which the noise is
+// judged.
 func (r *record) noiseParts(n int) []part {
 	most := noiseRows
 	if !r.even && r.usual == 0 {
 		most = unevenNoiseRows
 	}
 	if n <= most {
-		return []part{{0, n, ident.NewSimulator(r.t[:n], r.input)}}
+		return []part{r.part(0, n)}
 	}
 	const count = 8
 	size := most / count
 	var out []part
 	for i := range count {
 		lo := i * (n - size) / (count - 1)
-		out = append(out, part{lo, lo + size, ident.NewSimulator(r.t[lo:lo+size], r.input)})
+		out = append(out, r.part(lo, lo+size))
 	}
 	return out
+}
+
+// part is the rows lo to hi of the scope.
+func (r *record) part(lo, hi int) part {
+	lo, hi = lo+r.scope.lo, hi+r.scope.lo
+	return part{lo, hi, ident.NewSimulator(r.t[lo:hi], r.scope.input)}
 }

@@ -78,6 +78,12 @@ func sameReading(a, b float64) bool { return a == b || math.IsNaN(a) && math.IsN
 func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	out := &outcome{opt: o, recs: recs}
 	s := &study{recs: recs, white: o.Noise == "white", fix: o.Fix, rival: math.Inf(1)}
+	if o.Initial == free.String() { // the states are those at the first row of the log
+		for i, r := range recs {
+			r.root.scope = r.root.wholeScope()
+			s.recs[i] = r.coarse(searchRows)
+		}
+	}
 	if err := out.settle(s); err != nil {
 		return nil, err
 	}

@@ -11,10 +11,73 @@ import (
 	"lagwright/ident"
 )
 
-// A long log whose input never rests holds so much that every parameter is known
-// far better than it takes for the sum of squares to be a parabola: its intervals are
-// those of the linearised model on every row, and only the noise, and how not
-// knowing it widens them, comes from the excerpt in use.
+// Where the input never rests nothing can be averaged. Of a long log of that kind the
+// search is left to an excerpt, and every structure is then brought to its optimum on
+// all rows. Such a log holds so much that every parameter is known far better than it
+// takes for the sum of squares to be a parabola: its intervals are those of the
+// linearised model on every row, and only the noise, and how not knowing it widens
+// them, comes from the excerpt.
+const (
+	mostRows    = 12000 // rows in use at a time
+	mostChanges = 12000 // changes of the input in them
+	runIn       = 3000  // changes before them that the response still heeds
+)
+
+// scope is where in the full log an excerpt may lie.
+type scope struct {
+	lo, hi int         // rows
+	input  ident.Input // without what is long before them
+}
+
+func (s scope) rows() int { return s.hi - s.lo }
+
+func (r *record) wholeScope() scope { return scope{0, len(r.t), r.input} }
+
+// choosePlace moves the scope of a log of which only an excerpt can be used to where
+// the input moves most: its beginning may hold no more than the flicker of a read-back.
+func (r *record) choosePlace() {
+	if len(r.input.At) <= blockGrowth || !r.survey(0, 3*r.step).excerpt() {
+		return
+	}
+	u := r.inputAtRows()
+	sum, square := make([]float64, len(u)+1), make([]float64, len(u)+1)
+	for k, v := range u {
+		v -= u[0]
+		sum[k+1], square[k+1] = sum[k]+v, square[k]+v*v
+	}
+	moves := func(lo int) float64 { // Σ(u - mean)² from row lo on
+		hi := lo + mostRows
+		s := sum[hi] - sum[lo]
+		return square[hi] - square[lo] - s*s/mostRows
+	}
+	best, most := 0, 1.2*moves(0) // the beginning needs no run-in
+	for lo := mostRows / 4; lo+mostRows <= len(u); lo += mostRows / 4 {
+		if m := moves(lo); m > most {
+			best, most = lo, m
+		}
+	}
+	first := sort.SearchFloat64s(r.input.At, r.t[best]) // change in the scope
+	r.scope.lo = best
+	if last := first + mostChanges; last < len(r.input.At) {
+		r.scope.hi = sort.SearchFloat64s(r.t, r.input.At[last])
+	}
+	cut := max(first-runIn, 0)
+	r.scope.input = ident.Input{Before: r.input.Before, At: r.input.At[cut:], Value: r.input.Value[cut:]}
+}
+
+// inputAtRows is the input at every row with a temperature.
+func (r *record) inputAtRows() []float64 {
+	out := make([]float64, len(r.t))
+	u, next := r.input.Before, 0
+	for k, t := range r.t {
+		for next < len(r.input.At) && r.input.At[next] <= t {
+			u = r.input.Value[next]
+			next++
+		}
+		out[k] = u
+	}
+	return out
+}
 
 // complete brings f to its optimum on every row where its records are excerpts.
 func (s *study) complete(f *fitted) {

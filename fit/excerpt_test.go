@@ -3,6 +3,7 @@ package fit
 import (
 	"context"
 	"math"
+	"math/rand/v2"
 	"testing"
 
 	"lagwright/data"
@@ -52,6 +53,38 @@ func TestExcerpt(t *testing.T) {
 			if r := m.est[i].se / se; math.Abs(r-1) > 0.03 { // the variance is that of the excerpt
 				t.Errorf("parameter %d: standard error %.3f of that on all rows", i, r)
 			}
+		}
+	}
+}
+
+// TestExcerptHoldsTheBump looks for the excerpt where the bump is, when the input
+// flickers at every row and the bump comes late.
+func TestExcerptHoldsTheBump(t *testing.T) {
+	f := families()[1] // ar 0.5
+	f.n, f.bumps = 30000, []float64{2500}
+	run := f.make(2)
+	r := rand.New(rand.NewPCG(4, 4))
+	for k := range run.U {
+		run.U[k] += 0.004 * r.NormFloat64()
+	}
+	o, err := Options{Structure: "chain2"}.withDefaults()
+	if err != nil {
+		t.Fatal(err)
+	}
+	recs, err := prepare([]*data.Run{run}, o.Law)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if s := recs[0].root.scope; run.T[s.lo] > 2480 || run.T[min(s.lo+mostRows, s.hi)-1] < 2600 {
+		t.Fatalf("the excerpt reaches from %g s to %g s", run.T[s.lo], run.T[s.hi-1])
+	}
+	out, err := find(context.Background(), recs, o)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i, e := range out.models[0].est {
+		if want := f.truth(i, 4); math.Abs(e.value-want) > 4*e.se {
+			t.Errorf("parameter %d: %g ± %g, true %g", i, e.value, e.se, want)
 		}
 	}
 }

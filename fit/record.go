@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"math"
 	"slices"
-	"sort"
 
 	"gonum.org/v1/gonum/floats"
 
@@ -28,8 +27,8 @@ type record struct {
 	drift bool
 
 	root  *record // the record at full resolution; itself when nothing is averaged
-	used  int     // rows of the full log that these rows stand for, from its first on
-	reach int     // rows of the full log that may be used: not beyond mostChanges
+	used  int     // rows of the full log that these rows stand for, see excerpt.go
+	scope scope   // where they may lie
 	even  bool    // the full log is evenly sampled
 	usual float64 // s, interval of a log that is so but for jitter, else 0
 	parts []part  // of the full log, on which its noise is judged
@@ -88,14 +87,13 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
-	r.used, r.reach = len(r.t), len(r.t)
-	if len(r.input.At) > mostChanges {
-		r.reach = sort.SearchFloat64s(r.t, r.input.At[mostChanges])
-	}
+	r.used = len(r.t)
 	r.even = isEven(r.t, r.step)
 	r.usual = usualStep(r.t, r.step)
 	r.sim = ident.NewSimulator(r.t, r.input)
+	r.scope = r.wholeScope()
 	r.parts = r.noiseParts(len(r.t))
+	r.choosePlace()
 	return r, nil
 }
 
@@ -115,12 +113,13 @@ func present(t, y []float64) (pt, py []float64) {
 
 // whole is the record with every row of the log, or as many as may be used at a
 // time, ready for fitting.
-func (r *record) whole() *record { return r.window(min(r.root.reach, mostRows)) }
+func (r *record) whole() *record { return r.window(min(r.root.scope.rows(), mostRows)) }
 
-// window is the record with the first n rows of the log.
+// window is the record with the first n rows of the scope.
 func (r *record) window(n int) *record {
 	c := *r.root
-	c.t, c.y, c.used = c.t[:n], c.y[:n], n
+	from := c.scope.lo
+	c.t, c.y, c.used = c.t[from:from+n], c.y[from:from+n], n
 	c.rows = make([]ident.Row, n)
 	for i, t := range c.t {
 		c.rows[i] = ident.Row{T: t, H: c.step, M: 1}
@@ -128,8 +127,8 @@ func (r *record) window(n int) *record {
 	if n == len(r.root.t) {
 		c.sim = r.root.sim.Clone()
 	} else {
-		c.sim = ident.NewSimulator(c.t, c.input)
-		c.parts = r.root.noiseParts(n)
+		c.sim = ident.NewSimulator(c.t, c.scope.input)
+		c.parts, c.span = r.root.noiseParts(n), c.t[n-1]-c.t[0]
 	}
 	return r.adopt(&c)
 }
