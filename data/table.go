@@ -47,7 +47,7 @@ func newTable(name string, logged layout, rows int) *table {
 
 // growing is a column that grows in blocks, so that growing never copies what
 // is there and a finished column costs one block at a time more than itself.
-type growing[T any] struct {
+type growing[T int8 | int64 | float64] struct {
 	full [][]T
 	last []T
 }
@@ -62,6 +62,7 @@ const (
 func (g *growing[T]) reserve(n int) {
 	if n > 0 {
 		g.last = make([]T, 0, min(n, mostReserved))
+		inHugePages(g.last)
 	}
 }
 
