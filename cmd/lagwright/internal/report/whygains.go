@@ -160,8 +160,8 @@ const mostCandidates = 12
 // and those that come nearest.
 func candidateTable(g *tune.Gains) *table {
 	t := &table{
-		Caption: "Controllers tried: the chosen one, those that meet the requirement, those that come near it; settling, overshoot, Ms and IAE at the worst over the assured share of plants",
-		Head:    []string{"Rule", "Kc", "Ti", "Td", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets"},
+		Caption: "Controllers tried: the chosen one, those that meet the requirement, those that come near it; settling, overshoot, Ms and IAE at the worst over the assured share of plants; b is the setpoint weight",
+		Head:    []string{"Rule", "Kc", "Ti", "Td", "b", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets"},
 	}
 	best := slices.Clone(g.Candidates)
 	slices.SortStableFunc(best, func(a, b tune.Candidate) int { return cmp.Compare(rank(b), rank(a)) })
@@ -202,7 +202,7 @@ func candidateRow(c *tune.Candidate, u tune.GainUnits) []cell {
 	return []cell{
 		{Text: name, Small: c.Note, Header: true}, num(format.Amount(c.Kc, u.Input+"/"+kelvin(u.Temperature), 3)),
 		num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
-		num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
+		num(format.Optional(c.SetpointWeight, "", 3)), num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
 		num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets),
 	}
 }
