@@ -8,6 +8,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"runtime"
 	"strconv"
 	"testing"
 	"time"
@@ -77,6 +78,37 @@ func BenchmarkReadCSV(b *testing.B) {
 			b.Fatal(err)
 		}
 		b.Run(c.name, func(b *testing.B) { benchFile(b, path, benchRows) })
+	}
+}
+
+// BenchmarkReadSmall reads a log of a short test, as most logs are: what counts
+// is finding out how it is written.
+func BenchmarkReadSmall(b *testing.B) {
+	t, u, y := dryerLog(1000)
+	path := filepath.Join(b.TempDir(), "small.csv")
+	if err := os.WriteFile(path, csvText(t, u, y, plainSeconds), 0o600); err != nil {
+		b.Fatal(err)
+	}
+	benchFile(b, path, len(t))
+}
+
+// TestSmallLogTakesLittle bounds what reading a short log allocates: no buffer
+// is larger than the file needs it.
+func TestSmallLogTakesLittle(t *testing.T) {
+	at, u, y := dryerLog(1000)
+	text := csvText(at, u, y, plainSeconds)
+	path := filepath.Join(t.TempDir(), "small.csv")
+	if err := os.WriteFile(path, text, 0o600); err != nil {
+		t.Fatal(err)
+	}
+	var before, after runtime.MemStats
+	runtime.ReadMemStats(&before)
+	if _, err := Read(context.Background(), path, Options{}); err != nil {
+		t.Fatal(err)
+	}
+	runtime.ReadMemStats(&after)
+	if took := after.TotalAlloc - before.TotalAlloc; took > 40*uint64(len(text)) {
+		t.Errorf("%d bytes of text took %d bytes of memory", len(text), took)
 	}
 }
 

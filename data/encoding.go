@@ -1,6 +1,7 @@
 package data
 
 import (
+	"bufio"
 	"bytes"
 	"io"
 
@@ -14,13 +15,16 @@ import (
 // One-byte encodings pass as they are: digits and delimiters are the same in
 // all of them, and names go through decodeName.
 func utf8Reader(head []byte, r io.Reader) io.Reader {
+	wide := func(order unicode.Endianness, mark unicode.BOMPolicy) io.Reader {
+		return transform.NewReader(bufio.NewReaderSize(r, bufferSize/8), unicode.UTF16(order, mark).NewDecoder())
+	}
 	switch {
 	case bytes.HasPrefix(head, []byte{0xFF, 0xFE}), bytes.HasPrefix(head, []byte{0xFE, 0xFF}):
-		return transform.NewReader(r, unicode.UTF16(unicode.LittleEndian, unicode.ExpectBOM).NewDecoder())
+		return wide(unicode.LittleEndian, unicode.ExpectBOM)
 	case zeroShare(head, 1) > 0.8 && zeroShare(head, 0) < 0.2:
-		return transform.NewReader(r, unicode.UTF16(unicode.LittleEndian, unicode.IgnoreBOM).NewDecoder())
+		return wide(unicode.LittleEndian, unicode.IgnoreBOM)
 	case zeroShare(head, 0) > 0.8 && zeroShare(head, 1) < 0.2:
-		return transform.NewReader(r, unicode.UTF16(unicode.BigEndian, unicode.IgnoreBOM).NewDecoder())
+		return wide(unicode.BigEndian, unicode.IgnoreBOM)
 	}
 	return r
 }

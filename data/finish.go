@@ -208,8 +208,9 @@ func (r *rows) holdInput() error {
 	if first < 0 {
 		return fmt.Errorf("the input column holds no value%s: an input is numbers, or ON and OFF", commonest(r.missing))
 	}
-	unseen := r.unseenChange(first)
-	if held := hold(u); held > 0 {
+	if slices.ContainsFunc(u[first:], func(v float64) bool { return v != v }) {
+		unseen := r.unseenChange(first)
+		held := hold(u)
 		r.notes = append(r.notes, Note{Code: "input-held", Text: fmt.Sprintf("%d rows without an input were given the input before them", held)})
 		if float64(held) < lostShare*float64(len(u)) && unseen != "" {
 			r.notes = append(r.notes, Note{Code: "input-change-unseen", Text: unseen})

@@ -6,11 +6,12 @@ import (
 	"math"
 	"slices"
 	"strings"
+	"sync"
 	"unicode/utf8"
 )
 
 // badWords are what loggers and historians write in place of a number.
-var badWords = setOf(
+var badWords = []string{
 	"OPEN", "OL", "OVER", "OVERRANGE", "OVER RANGE", "OVERFLOW", "OVLD", "OVRNG", "UNDER", "UNDERRANGE", "UNDER RANGE",
 	"NAN", "-NAN", "NA", "N/A", "#N/A", "#NA", "NULL", "NONE", "NIL", "(NULL)", "INF", "+INF", "-INF", "INFINITY", "1.#INF", "1.#QNAN",
 	"BAD", "BAD INPUT", "BAD DATA", "BAD QUALITY", "INVALID", "ERR", "ERROR", "#ERR", "#VALUE!", "#DIV/0!", "#REF!", "#NUM!", "#NAME?",
@@ -18,15 +19,17 @@ var badWords = setOf(
 	"COMM FAIL", "OFFLINE", "OFF-SCAN", "PT CREATED", "SHUTDOWN", "CONFIGURE", "MISSING", "?", "*", "UNCERTAIN",
 	"N/C", "NC", "OVRFLW", "OVFL", "OVERLOAD", "UNDERFLOW", "LIMIT", "BURN", "B.OUT", "BOUT", "TC OPEN", "OPEN TC", "OPEN CIRCUIT", "NO SENSOR", "NOT CONNECTED",
 	"DISCONNECTED", "UNPLUGGED", "SENSOR ERROR", "SENSOR ERR", "SENSOR FAULT", "INPUT ERROR", "BAD VALUE", "BADVAL", "NOT AVAILABLE", "HHHH", "LLLL", "UUUU", "1.#IND", "-1.#IND", "-1.#QNAN",
-	"FEHLER", "OFFEN", "BRUCH", "ERREUR", "ABIERTO", "APERTO", "OUVERT", "ERRORE", "FOUT", "OUT OF RANGE", "+OVER", "-OVER", "+OL", "-OL")
+	"FEHLER", "OFFEN", "BRUCH", "ERREUR", "ABIERTO", "APERTO", "OUVERT", "ERRORE", "FOUT", "OUT OF RANGE", "+OVER", "-OVER", "+OL", "-OL",
+}
 
-func setOf(words ...string) map[string]bool {
-	set := make(map[string]bool, len(words))
-	for _, w := range words {
+// isBadWord tells them quickly.
+var isBadWord = sync.OnceValue(func() map[string]bool {
+	set := make(map[string]bool, len(badWords))
+	for _, w := range badWords {
 		set[w] = true
 	}
 	return set
-}
+})
 
 // missingKind tells what stands in a cell in place of a number: "blank", a
 // known word in capitals, dashes, or the text itself. known is false for text
@@ -57,10 +60,10 @@ func knownMissing(cell []byte) (kind string, known bool) {
 		return "", false
 	}
 	word := strings.ToUpper(decodeName(cell))
-	if badWords[word] {
+	if isBadWord()[word] {
 		return word, true
 	}
-	if word = strings.Trim(word, "[]()<>*! "); badWords[word] {
+	if word = strings.Trim(word, "[]()<>*! "); isBadWord()[word] {
 		return word, true
 	}
 	return "", false

@@ -3,6 +3,7 @@ package data
 import (
 	"slices"
 	"strings"
+	"sync"
 )
 
 // unitless is the unit of a column that nobody knows the unit of.
@@ -10,37 +11,40 @@ const unitless = "unit"
 
 // unitNames holds the ways a unit is written, in lower case, by its
 // canonical name.
-var unitNames = map[string][]string{
-	"V":    {"v", "volt", "volts", "vdc", "vac", "vrms", "v rms", "v dc", "v ac", "v(rms)"},
-	"mV":   {"mv", "millivolt", "millivolts"},
-	"kV":   {"kv", "kilovolt", "kilovolts"},
-	"%":    {"%", "pct", "percent", "prozent", "perc", "% duty", "pourcent"},
-	"mA":   {"ma", "milliamp", "milliamps", "milliampere"},
-	"W":    {"w", "watt", "watts"},
-	"kW":   {"kw", "kilowatt"},
-	"degC": {"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c", "øc", "â°c", "\ufffdc", "?c"},
-	"degF": {"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f", "øf", "â°f", "\ufffdf", "?f"},
-	"K":    {"k", "kelvin"},
+var unitNames = []struct {
+	unit string
+	ways []string
+}{
+	{"V", []string{"v", "volt", "volts", "vdc", "vac", "vrms", "v rms", "v dc", "v ac", "v(rms)"}},
+	{"mV", []string{"mv", "millivolt", "millivolts"}},
+	{"kV", []string{"kv", "kilovolt", "kilovolts"}},
+	{"%", []string{"%", "pct", "percent", "prozent", "perc", "% duty", "pourcent"}},
+	{"mA", []string{"ma", "milliamp", "milliamps", "milliampere"}},
+	{"W", []string{"w", "watt", "watts"}},
+	{"kW", []string{"kw", "kilowatt"}},
+	{"degC", []string{"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c", "øc", "â°c", "\ufffdc", "?c"}},
+	{"degF", []string{"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f", "øf", "â°f", "\ufffdf", "?f"}},
+	{"K", []string{"k", "kelvin"}},
 
-	"ns":  {"ns"},
-	"us":  {"us", "µs", "μs", "usec", "micros", "microsecond", "microseconds"},
-	"ms":  {"ms", "msec", "msecs", "毫秒", "ミリ秒", "millis", "millisecond", "milliseconds", "millisekunden"},
-	"s":   {"s", "sec", "secs", "秒", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"},
-	"min": {"min", "mins", "分", "分钟", "minute", "minutes", "minuten", "minutos", "minuti"},
-	"h":   {"h", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"},
-	"d":   {"d", "day", "days", "tage", "jours"},
+	{"ns", []string{"ns"}},
+	{"us", []string{"us", "µs", "μs", "usec", "micros", "microsecond", "microseconds"}},
+	{"ms", []string{"ms", "msec", "msecs", "毫秒", "ミリ秒", "millis", "millisecond", "milliseconds", "millisekunden"}},
+	{"s", []string{"s", "sec", "secs", "秒", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"}},
+	{"min", []string{"min", "mins", "分", "分钟", "minute", "minutes", "minuten", "minutos", "minuti"}},
+	{"h", []string{"h", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"}},
+	{"d", []string{"d", "day", "days", "tage", "jours"}},
 }
 
 // unitOfName is unitNames turned round.
-var unitOfName = func() map[string]string {
-	names := map[string]string{}
-	for unit, ways := range unitNames {
-		for _, way := range ways {
-			names[way] = unit
+var unitOfName = sync.OnceValue(func() map[string]string {
+	names := make(map[string]string, 10*len(unitNames))
+	for _, u := range unitNames {
+		for _, way := range u.ways {
+			names[way] = u.unit
 		}
 	}
 	return names
-}()
+})
 
 // timeUnits gives the nanoseconds in a unit of time.
 var timeUnits = map[string]uint64{
@@ -51,7 +55,7 @@ var timeUnits = map[string]uint64{
 // false when it is none of the units this package converts.
 func canonicalUnit(written string) (name string, known bool) {
 	w := strings.TrimSpace(written)
-	if name, known = unitOfName[strings.ToLower(w)]; known && w != "MV" && w != "S" && w != "MS" {
+	if name, known = unitOfName()[strings.ToLower(w)]; known && w != "MV" && w != "S" && w != "MS" {
 		return name, true
 	}
 	return w, false
