@@ -295,7 +295,7 @@ func (f family) bound(t testing.TB) []float64 {
 	if err != nil {
 		t.Fatal(err)
 	}
-	r := recs[0].whole()
+	r := recs[0].window(len(recs[0].root.t))
 	r.model(rest, true)
 	s := shape{tc: 1, white: 1}
 	if f.ar > 0 {
