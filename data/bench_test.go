@@ -50,6 +50,10 @@ func rfc3339(b []byte, t float64) []byte {
 	return time.Unix(1767607200, int64(math.Round(t*1e9))).UTC().AppendFormat(b, "2006-01-02T15:04:05.000Z")
 }
 
+func quotedStamp(b []byte, t float64) []byte {
+	return append(rfc3339(append(b, '"'), t), '"')
+}
+
 // benchFile reads a file and reports rows a second and bytes allocated a row.
 func benchFile(b *testing.B, path string, rows int) {
 	b.ReportAllocs()
@@ -72,7 +76,7 @@ func BenchmarkReadCSV(b *testing.B) {
 	for _, c := range []struct {
 		name  string
 		stamp func([]byte, float64) []byte
-	}{{"seconds", plainSeconds}, {"rfc3339", rfc3339}} {
+	}{{"seconds", plainSeconds}, {"rfc3339", rfc3339}, {"quoted", quotedStamp}} {
 		path := filepath.Join(b.TempDir(), c.name+".csv")
 		if err := os.WriteFile(path, csvText(t, u, y, c.stamp), 0o600); err != nil {
 			b.Fatal(err)

@@ -299,7 +299,7 @@ func (c *csvReader) readRows(ctx context.Context, lines *lineReader) error {
 		if lines.line == 1 {
 			text = bytes.TrimPrefix(text, []byte("\xEF\xBB\xBF"))
 		}
-		if c.inPlace && !lines.quoted && c.fast(text, lines.line) {
+		if c.inPlace && c.fast(text, lines.line, lines.quoted) {
 			continue
 		}
 		c.slow(text, lines.line)
@@ -346,7 +346,7 @@ func (c *csvReader) cellRow(line int) {
 	if i := c.at[roleRun]; i >= 0 && i < len(c.cells) {
 		run = decodeName(c.cells[i])
 	}
-	if len(bytes.Join(c.cells, nil)) == 0 {
+	if !slices.ContainsFunc(c.cells, func(cell []byte) bool { return len(cell) > 0 }) {
 		return
 	}
 	if reason := c.misfit(); reason != "" {

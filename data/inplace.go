@@ -29,9 +29,9 @@ func isValue(r role) bool {
 }
 
 // fast reads a row in place. It gives up, and adds nothing, at anything out of
-// the ordinary.
-func (c *csvReader) fast(text []byte, line int) bool {
-	if len(text) == 0 || mayComment(text[0]) {
+// the ordinary. quoted tells that the text has quotes, though not where.
+func (c *csvReader) fast(text []byte, line int, quoted bool) bool {
+	if len(text) == 0 || mayComment(text[0]) || quoted && !c.fits(text) {
 		return false
 	}
 	delim := c.d.delim
@@ -44,25 +44,30 @@ func (c *csvReader) fast(text []byte, line int) bool {
 				continue
 			}
 			n := bytes.IndexByte(text[i:], delim)
-			if n < 0 {
+			if n < 0 || quoted && bytes.IndexByte(text[i:i+n], '"') >= 0 {
 				return false
 			}
 			i += n + 1
 		}
-		n, ok := 0, false
-		if f.role == roleTime {
-			n, ok = c.stampInPlace(text[i:])
-		} else {
-			n, ok = c.valueInPlace(text[i:], &c.rec.v[f.role])
+		cell, n := text[i:], 0
+		if quoted {
+			cell, n = insideQuotes(cell, delim)
 		}
-		if !ok {
+		m, ok := 0, false
+		if f.role == roleTime {
+			m, ok = c.stampInPlace(cell)
+		} else {
+			m, ok = c.valueInPlace(cell, &c.rec.v[f.role])
+		}
+		if !ok || n > 0 && m < len(cell) {
 			return false
 		}
-		i += n
+		i += max(n, m)
 	}
 	if rest := text[i:]; len(rest) > 0 {
 		extra := bytes.Count(rest, []byte{delim})
-		if col+extra >= c.d.fields || bytes.IndexByte(rest, 0) >= 0 {
+		if col+extra >= c.d.fields || bytes.IndexByte(rest, 0) >= 0 ||
+			quoted && bytes.IndexByte(rest, '"') >= 0 {
 			return false
 		}
 	}
@@ -72,6 +77,26 @@ func (c *csvReader) fast(text []byte, line int) bool {
 	c.rec.line = line
 	c.only.take(&c.rec, c.open)
 	return true
+}
+
+// fits tells that a row has as many cells as it should, delimiters in quotes
+// counted, and no NUL bytes.
+func (c *csvReader) fits(text []byte) bool {
+	n := bytes.Count(text, []byte{c.d.delim})
+	return c.last <= n && n < c.d.fields && bytes.IndexByte(text, 0) < 0
+}
+
+// insideQuotes returns what stands between the quotes around the cell that text
+// begins with, and the length with them; text itself and 0 where there are none.
+func insideQuotes(text []byte, delim byte) (inside []byte, n int) {
+	if len(text) == 0 || text[0] != '"' {
+		return text, 0
+	}
+	n = bytes.IndexByte(text[1:], '"') + 2
+	if n < 2 || n < len(text) && text[n] != delim {
+		return text, 0
+	}
+	return text[1 : n-1], n
 }
 
 // valueInPlace reads the number that text begins with and returns its length.

@@ -187,6 +187,9 @@ const maxQuoted = 1 << 16
 // a cell, and only if its partner follows within maxQuoted bytes; any other
 // quote is a character.
 func recordEnd(b []byte, delim byte, eof bool) int {
+	if n := bytes.IndexByte(b, '\n'); n >= 0 && bytes.IndexByte(b[:n], '"') < 0 {
+		return n
+	}
 	start := true // of a cell
 	for i := 0; i < len(b); i++ {
 		switch c := b[i]; {

@@ -109,13 +109,25 @@ type lineMap struct {
 	breaks []lineBreak
 }
 
-type lineBreak struct{ row, line int }
+// lineBreak is where rows begin to stand so many lines apart: more than one
+// where several lines make a row.
+type lineBreak struct{ row, line, step int }
+
+func (b lineBreak) at(row int) int { return b.line + (row-b.row)*b.step }
 
 func (m *lineMap) add(row, line int) {
-	if n := len(m.breaks); n > 0 && m.breaks[n-1].line+row-m.breaks[n-1].row == line {
+	if n := len(m.breaks); n > 0 && m.breaks[n-1].at(row) == line {
 		return
 	}
-	m.breaks = append(m.breaks, lineBreak{row, line})
+	m.change(row, line)
+}
+
+func (m *lineMap) change(row, line int) {
+	if n := len(m.breaks); n > 0 && m.breaks[n-1].row == row-1 { // of the last break only one row is known
+		m.breaks[n-1].step = line - m.breaks[n-1].line
+		return
+	}
+	m.breaks = append(m.breaks, lineBreak{row, line, 1})
 }
 
 func (m *lineMap) line(row int) int {
@@ -131,7 +143,7 @@ func (m *lineMap) line(row int) int {
 	if lo == 0 {
 		return 0
 	}
-	return m.breaks[lo-1].line + row - m.breaks[lo-1].row
+	return m.breaks[lo-1].at(row)
 }
 
 // record is one row on its way into a table.
