@@ -178,7 +178,7 @@ func (r *record) focusOn(first, last, zone, least, growth float64) *record {
 		return r.whole()
 	}
 	var onset []float64
-	for _, at := range r.input.At {
+	for _, at := range r.root.changesInScope() {
 		onset = append(onset, at+first)
 	}
 	start := r.root.t[0]

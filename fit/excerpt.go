@@ -65,6 +65,15 @@ func (r *record) choosePlace() {
 	r.scope.input = ident.Input{Before: r.input.Before, At: r.input.At[cut:], Value: r.input.Value[cut:]}
 }
 
+// changesInScope are the times of the changes of the input that rows of the scope
+// lie behind.
+func (r *record) changesInScope() []float64 {
+	at := r.input.At
+	lo, _ := slices.BinarySearch(at, r.t[r.scope.lo])
+	hi, _ := slices.BinarySearch(at, r.t[r.scope.hi-1])
+	return at[max(lo-1, 0):min(hi+1, len(at))]
+}
+
 // inputAtRows is the input at every row with a temperature.
 func (r *record) inputAtRows() []float64 {
 	out := make([]float64, len(r.t))
