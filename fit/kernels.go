@@ -22,6 +22,7 @@ const (
 	// that what lies further out is found.
 	lessons     = 3
 	lessonWidth = 2
+	keptWidth   = 1.4 // of the rounds that are kept: wide enough that no weight stands out
 
 	// enoughEffective is how many effective draws there must be for each plant taken,
 	// unless mostRounds come before.
@@ -56,7 +57,7 @@ func (q *posterior) adapt(pool proposals, count int) []plantAt {
 	}
 	var kept proposals
 	for range mostRounds - lessons {
-		fresh := q.around(pool, 1).propose(roundSize)
+		fresh := q.around(pool, keptWidth).propose(roundSize)
 		kept.at, kept.weight = append(kept.at, fresh.at...), append(kept.weight, fresh.weight...)
 		if effective(kept.shares(1)) > enoughEffective*float64(count) {
 			break
