@@ -82,6 +82,10 @@ func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 			r.setFullScaleAside(y, o.TempSpan)
 		}
 		run.Units.Temperature = toCelsius(y, unit)
+		if unit == "degF" {
+			r.notes = append(r.notes, Note{Code: "fahrenheit",
+				Text: "the temperature is logged in °F; everything is told in °C and K, gains too: a controller that works in °F needs 5/9 of a gain in V/K"})
+		}
 		if unit != "degC" && unit != "degF" && unit != "K" {
 			r.notes = append(r.notes, Note{Code: "unit-unknown",
 				Text: fmt.Sprintf("the unit of column %q is not known as a unit of temperature; its values stay as they are (say C, F or K with --temp-unit)", info.label(roleTemp))})

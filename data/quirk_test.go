@@ -134,8 +134,8 @@ var quirks = []quirk{
 	{file: "preamble-same-width.csv"},
 	{file: "unit-row.csv"},
 	{file: "unit-row-brackets.csv"},
-	{file: "unit-row-parens-f.csv", within: 1e-12},
-	{file: "unit-suffix-f.csv", within: 1e-12},
+	{file: "unit-row-parens-f.csv", within: 1e-12, notes: []string{"fahrenheit"}},
+	{file: "unit-suffix-f.csv", within: 1e-12, notes: []string{"fahrenheit"}},
 	{file: "unit-kelvin.csv", within: 1e-12},
 	{file: "unit-in-cell.csv"},
 	{file: "unit-row-dashes.csv", also: func(t *testing.T, r *Run) {
@@ -151,7 +151,7 @@ var quirks = []quirk{
 	{file: "no-header.csv", t: ramp(24, half), u: headless, y: headlessY, input: "unit", temp: "unit",
 		notes: []string{"column-by-content", "time-unit-assumed", "input-unit-unknown", "unit-unknown"}},
 	{file: "unknown-unit.csv", temp: "unit", notes: []string{"unit-unknown"}},
-	{file: "unknown-unit.csv", o: Options{TempUnit: "F"}, y: fahrenheit(baseY), within: 1e-12},
+	{file: "unknown-unit.csv", o: Options{TempUnit: "F"}, y: fahrenheit(baseY), within: 1e-12, notes: []string{"fahrenheit"}},
 	{file: "other-columns.csv", also: func(t *testing.T, r *Run) {
 		if r.Source.Columns.Input != "drive_V" || r.Source.Columns.Temperature != "outlet_degC" {
 			t.Errorf("columns %+v", r.Source.Columns)

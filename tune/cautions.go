@@ -18,7 +18,13 @@ const soundMs = 2.0
 
 // cautions go with every set of gains.
 func (t *tuning) cautions(g *Gains) []string {
-	c := []string{fit.CautionCutOut, fit.CautionSheath, CautionStart}
+	var c []string
+	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs { // first, since the answer above may sound better than it is
+		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.0f %%; up to %.0f is usual. Ask for --ms %.1f.",
+			figure(w.Ms, 3), 100*g.Assurance, soundMs, usualMs))
+	}
+	c = append(c, t.inFahrenheit(g)...)
+	c = append(c, fit.CautionCutOut, fit.CautionSheath, CautionStart)
 	for _, o := range t.ops {
 		if words := o.card.CautionRange(); !slices.Contains(c, words) {
 			c = append(c, words)
@@ -46,10 +52,6 @@ func (t *tuning) cautions(g *Gains) []string {
 		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",
 			quantity(*g.Requirement.SetpointStep, perKelvin(unit), 2), quantity(math.Abs(*n.SteadyOffset), perKelvin(unit), 2)))
 	}
-	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs {
-		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.0f %%; up to %.0f is usual. Ask for --ms %.1f.",
-			figure(w.Ms, 3), 100*g.Assurance, soundMs, usualMs))
-	}
 	if len(o.plants) < 20 {
 		c = append(c, fmt.Sprintf("The card holds %d plausible plants: the spread of the figures is not known.", len(o.plants)))
 	}
@@ -59,6 +61,18 @@ func (t *tuning) cautions(g *Gains) []string {
 		}
 	}
 	return append(c, fit.CautionCodes)
+}
+
+// inFahrenheit gives the gain in the degrees of a log in °F.
+func (t *tuning) inFahrenheit(g *Gains) []string {
+	for _, o := range t.ops {
+		if slices.ContainsFunc(o.card.Warnings, func(w fit.Warning) bool { return w.Code == "fahrenheit" }) {
+			gain := g.Kc / 1.8
+			return []string{fmt.Sprintf("The log is in °F, and these gains are for a controller that works in °C: one that works in °F needs a gain of %s %s/°F.",
+				figure(&gain, 4), unitWords(g.Units.Input))}
+		}
+	}
+	return nil
 }
 
 // unlimited says that a step drives the input to where the log has not been

@@ -3,17 +3,31 @@ package tune
 import (
 	"errors"
 	"fmt"
+	"regexp"
 	"strconv"
 	"strings"
 	"time"
 )
 
 // WrittenOut tells gains written out, as [ParseGains] reads them, from the
-// name of a file: they begin with a setting, such as kc=.
+// name of a file: they begin with a word and an equals sign, such as kc=.
 func WrittenOut(text string) bool {
-	key, _, ok := strings.Cut(text, "=")
-	_, known := settings[settingName(key)]
-	return ok && known
+	return settingFirst.MatchString(text) && !strings.HasSuffix(text, ".json")
+}
+
+var (
+	settingFirst = regexp.MustCompile(`^\s*[A-Za-z]+\s*=`)
+	decimalComma = regexp.MustCompile(`=\s*[-+]?\d+,\d`)
+)
+
+// perFahrenheit is the text of a gain per °F without its /°F.
+func perFahrenheit(text string) (string, bool) {
+	for _, unit := range []string{"/°F", "/degF", "/F"} {
+		if number, ok := strings.CutSuffix(strings.TrimSpace(text), unit); ok {
+			return number, true
+		}
+	}
+	return "", false
 }
 
 // ParseGains reads gains written out for a heater with the units u, such as
@@ -29,6 +43,9 @@ func WrittenOut(text string) bool {
 func ParseGains(text string, u GainUnits) (*Gains, error) {
 	g := &Gains{Schema: GainsSchema, Form: Ideal, SetpointWeight: 1, Units: u}
 	given := map[string]bool{}
+	if decimalComma.MatchString(text) {
+		return nil, fmt.Errorf("write decimals with a point, as in %s: a comma parts the settings", u.example())
+	}
 	for part := range strings.SplitSeq(text, ",") {
 		key, value, ok := strings.Cut(part, "=")
 		name := settingName(key)
@@ -64,6 +81,11 @@ func settingName(key string) string {
 // settings read the value of each setting.
 var settings = map[string]func(g *Gains, value string) error{
 	"kc": func(g *Gains, s string) (err error) {
+		if number, ok := perFahrenheit(s); ok && strings.HasSuffix(g.Units.gain(), "/K") {
+			g.Kc, err = inUnit(number+"/K", g.Units.gain(), true)
+			g.Kc *= 1.8 // a kelvin is 1.8 °F
+			return err
+		}
 		g.Kc, err = inUnit(s, g.Units.gain(), true)
 		return err
 	},

@@ -22,6 +22,8 @@ func TestParseGains(t *testing.T) {
 		{"kc=0.4V/K,ti=12s,td=3s,filter=0s,form=parallel", `"kc":0.4,"ti_s":12,"td_s":3,"form":"parallel"`, volts},
 		{"kc=0.4V/K,bias=4V", `"kc":0.4,"bias":4`, volts},
 		{"kc=2%/K,ti=2m,min=0,max=90%,rate=1.5%/s,resolution=0.1", `"kc":2,"ti_s":120,"limits":{"min":0,"max":90,"rate":1.5,"resolution":0.1}`, GainUnits{"%", "degC"}},
+		{"kc=-0.25 V/°F,ti=12s", `"kc":-0.45,"ti_s":12`, volts},
+		{"kc=0.5V/F,ti=12s", `"kc":0.9,"ti_s":12`, volts},
 		{"kc=2,ti=120s", `"kc":2,"ti_s":120`, GainUnits{}},
 	} {
 		got, err := ParseGains(c.text, c.u)
@@ -59,6 +61,9 @@ func TestParseGainsRefuses(t *testing.T) {
 		"kc=0.4V/K,ti=12s,wind=up":          "use kc, ti",
 		"kc=0.4V/K,ki=0.1V/K":               "kp/ki",
 		"kc=0.4V/K,ti=12s,12":               "no setting",
+		"kc=0,05V/K,ti=150s":                "decimals with a point",
+		"gain=0.05V/K,ti=150s":              "use kc, ti",
+		"pb=20%,ti=150s":                    "100/pb",
 		"kc=0.4V/K,ti=12s,form=fast":        "ideal",
 		"kc=0V/K,ti=12s":                    "other than 0",
 		"kc=infV/K,ti=12s":                  "no number",

@@ -80,6 +80,54 @@ func number(s string) (float64, error) {
 	return v, nil
 }
 
+// temperature reads 300, 300C, 572F or 573K as °C.
+func temperature(s string) (float64, error) {
+	text, unit := cutDegrees(s)
+	v, err := number(text)
+	if err != nil {
+		return 0, errors.New("want a temperature such as 95, 95C or 203F")
+	}
+	switch unit {
+	case "F":
+		v = (v - 32) / 1.8
+	case "K":
+		v -= 273.15
+	}
+	return v, nil
+}
+
+// difference reads 5, 5K, 5C or 9F as a difference in K.
+func difference(s string) (float64, error) {
+	text, unit := cutDegrees(s)
+	v, err := number(text)
+	if err != nil {
+		return 0, errors.New("want a difference of temperature such as 5, 5K or 9F")
+	}
+	if unit == "F" {
+		v /= 1.8
+	}
+	return v, nil
+}
+
+func positiveDifference(s string) (float64, error) {
+	v, err := difference(s)
+	if err == nil && v <= 0 {
+		err = errors.New("want a difference above zero")
+	}
+	return v, err
+}
+
+// cutDegrees takes the unit of a temperature off: C, F, K or none.
+func cutDegrees(s string) (number, unit string) {
+	s = strings.TrimSpace(s)
+	for _, u := range []string{"C", "F", "K"} {
+		if text, ok := strings.CutSuffix(strings.ToUpper(s), u); ok {
+			return strings.TrimSpace(strings.TrimSuffix(strings.TrimSuffix(text, "DEG"), "°")), u
+		}
+	}
+	return s, ""
+}
+
 func positiveNumber(s string) (float64, error) {
 	v, err := number(s)
 	if err == nil && v <= 0 {

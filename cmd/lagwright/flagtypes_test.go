@@ -140,3 +140,38 @@ func FuzzFlagTypes(f *testing.F) {
 		}
 	})
 }
+
+func TestTemperature(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want float64
+		err  string
+	}{
+		{"95", 95, ""},
+		{"-4.5 C", -4.5, ""},
+		{"95°C", 95, ""},
+		{"212F", 100, ""},
+		{"32 degF", 0, ""},
+		{"273.15K", 0, ""},
+		{"hot", 0, "such as 95, 95C or 203F"},
+		{"F", 0, "such as 95"},
+	} {
+		checkParsed(t, "temperature", tt.in, temperature, tt.want, tt.err)
+	}
+}
+
+func TestDifference(t *testing.T) {
+	for _, tt := range []struct {
+		in   string
+		want float64
+		err  string
+	}{
+		{"5", 5, ""},
+		{"-5K", -5, ""},
+		{"5 °C", 5, ""},
+		{"9F", 5, ""},
+		{"some", 0, "such as 5, 5K or 9F"},
+	} {
+		checkParsed(t, "difference", tt.in, difference, tt.want, tt.err)
+	}
+}

@@ -32,7 +32,7 @@ func (f *jobFlags) add(cmd *cobra.Command) {
 	f.log.add(cmd)
 	f.fit.add(cmd)
 	f.tune.add(cmd)
-	optionalFlag(cmd.Flags(), &f.setpoint, "setpoint", "NUMBER", "setpoint of the replay, where the log has none", number)
+	optionalFlag(cmd.Flags(), &f.setpoint, "setpoint", "TEMP", "setpoint of the replay, where the log has none, °C (or 203F)", temperature)
 }
 
 // job is the whole way from a log to a page.

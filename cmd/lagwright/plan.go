@@ -46,13 +46,13 @@ temperature then allows for a gain half as large again as guessed.
 	optionalFlag(fs, &p.Input, "operating-input", "NUMBER", "input to bump from; the middle of the card's range where not given", number)
 	optionalFlag(fs, &p.InputMin, "input-min", "NUMBER", "lowest input allowed", number)
 	optionalFlag(fs, &p.InputMax, "input-max", "NUMBER", "highest input allowed", number)
-	optionalFlag(fs, &p.TempMax, "temp-max", "NUMBER", "temperature that must never be passed", number)
+	optionalFlag(fs, &p.TempMax, "temp-max", "TEMP", "temperature that must never be passed, °C (or 203F)", temperature)
 	valueFlag(fs, &p.Sampling, "sampling", "DURATION", "", "the logger's shortest interval", positiveSeconds)
-	valueFlag(fs, &g.Gain, "gain", "NUMBER", "", "without a card: guessed gain, degrees per unit of input", guessedGain)
+	valueFlag(fs, &g.Gain, "gain", "NUMBER", "", "without a card: guessed gain, K per unit of input", guessedGain)
 	valueFlag(fs, &g.Lag, "lag", "DURATION", "", "without a card: guessed lag", positiveSeconds)
 	valueFlag(fs, &g.DeadTime, "dead-time", "DURATION", "", "without a card: guessed dead time", seconds)
-	valueFlag(fs, &g.Noise, "noise", "NUMBER", "", "without a card: scatter of the temperature at rest, one standard deviation", positiveNumber)
-	valueFlag(fs, &g.Temperature, "operating-temp", "NUMBER", "", "without a card: temperature at the operating input", number)
+	valueFlag(fs, &g.Noise, "noise", "DEGREES", "", "without a card: scatter of the temperature at rest, one standard deviation, K (or 0.3F)", positiveDifference)
+	valueFlag(fs, &g.Temperature, "operating-temp", "TEMP", "", "without a card: temperature at the operating input, °C (or 203F)", temperature)
 	choiceFlag(cmd, &o.inputUnit, "input-unit", "V", "without a card: unit of the input", "V", "%", "mA")
 	return cmd
 }

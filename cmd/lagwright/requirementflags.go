@@ -24,8 +24,8 @@ func (r *requirementFlags) add(cmd *cobra.Command) {
 	optionalFlag(fs, &q.InputMin, "input-min", "NUMBER", "lowest input the controller may give", number)
 	optionalFlag(fs, &q.InputMax, "input-max", "NUMBER", "highest input the controller may give", number)
 	optionalFlag(fs, &q.InputRate, "input-rate", "NUMBER", "fastest change of the input, per second", positiveNumber)
-	optionalFlag(fs, &q.TempMax, "temp-max", "NUMBER", "temperature that must never be passed", number)
-	optionalFlag(fs, &q.SetpointStep, "setpoint-step", "NUMBER", "size of the setpoint step judged", number)
+	optionalFlag(fs, &q.TempMax, "temp-max", "TEMP", "temperature that must never be passed, °C (or 203F)", temperature)
+	optionalFlag(fs, &q.SetpointStep, "setpoint-step", "DEGREES", "size of the setpoint step judged, K (or 9F)", difference)
 	valueFlag(fs, &q.Scan, "scan", "DURATION", "", "the controller's scan time (continuous where not given)", positiveSeconds)
 }
 
