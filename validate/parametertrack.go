@@ -22,6 +22,7 @@ type track struct {
 	sign       float64 // of all values, when log
 	history    history
 	at         []int // history's runs
+	found      levels
 }
 
 // tracks collects gain, lags and dead time run by run. A parameter that was
@@ -152,6 +153,7 @@ func (tr *track) judge(d *Drift, tests int, rng *rand.Rand) DriftParameter {
 	case p.Alarm:
 		found.slope = &slope
 	}
+	tr.found = found
 	p.Scatter = tr.chart(p.Points, found)
 	p.Text = tr.text(p, found, d, tests)
 	return p
