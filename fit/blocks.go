@@ -43,7 +43,7 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 	var samples []ident.Row // of the response
 	ragged := false
 	k := from
-	for k < n && len(c.rows) < mostRows {
+	for k < n && len(c.rows) < root.most {
 		longest := ladder(allowed(root.t[k]))
 		m, exact := root.uniform(k, longest)
 		var row, response ident.Row
@@ -63,7 +63,7 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 		k += m
 	}
 	if float64(len(c.rows)) > 0.7*float64(k-from) {
-		return r.window(min(k-from, mostRows))
+		return r.window(min(k-from, root.most))
 	}
 	if c.used = k - from; c.excerpt() {
 		c.parts, c.span = root.noiseParts(c.used), c.t[len(c.t)-1]-c.t[0]

@@ -107,9 +107,18 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	}
 	b.lin = f.linear(b, level)
 	if f.full != nil && q.found == nil {
-		b.around(f.full)
+		b.around(f.full, here, cov, level)
 	}
 	return b, q.found
+}
+
+// eta are lags and dead time as stated.
+func (b *bounded) eta() []float64 {
+	out := make([]float64, 0, len(b.est)-1)
+	for _, e := range b.est[1:] {
+		out = append(out, e.value)
+	}
+	return out
 }
 
 // reach is the range that parameter i may take: the gain keeps its sign.

@@ -80,7 +80,11 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	s := &study{recs: recs, white: o.Noise == "white", fix: o.Fix, rival: math.Inf(1)}
 	if o.Initial == free.String() { // the states are those at the first row of the log
 		for i, r := range recs {
-			r.root.scope = r.root.wholeScope()
+			r.root.scope, r.root.most = r.root.wholeScope(), mostFree
+			if r.survey(0, 3*r.step).excerpt() {
+				return nil, fmt.Errorf("%w: --initial free serves logs of up to %d rows where the input never rests, and %s is longer: leave --initial out, or cut the log with --from and --to",
+					ErrOption, mostFree, r.run.Source.File)
+			}
 			s.recs[i] = r.coarse(searchRows)
 		}
 	}

@@ -17,8 +17,9 @@ func (out *outcome) derived() []Derived {
 	st := b.st
 	unit := out.gainUnit(st)
 	var list []Derived
+	eta := b.eta()
 	add := func(name, unit string, f func(gain float64, elements []float64, dead float64) float64) {
-		best := f(b.p.gain, elements(st, b.p.eta), b.p.eta[len(b.p.eta)-1])
+		best := f(b.est[0].value, elements(st, eta), eta[len(eta)-1])
 		d := Derived{Name: name, Unit: unit, Value: best}
 		var v []float64
 		for _, p := range out.draws {

@@ -19,6 +19,7 @@ import (
 // them, comes from the excerpt.
 const (
 	mostRows    = 12000 // rows in use at a time
+	mostFree    = 60000 // the same when the states at the first row are free: there is no excerpt then
 	mostChanges = 12000 // changes of the input in them
 	runIn       = 3000  // changes before them that the response still heeds
 )
@@ -46,12 +47,12 @@ func (r *record) choosePlace() {
 		sum[k+1], square[k+1] = sum[k]+v, square[k]+v*v
 	}
 	moves := func(lo int) float64 { // Σ(u - mean)² from row lo on
-		hi := lo + mostRows
+		hi := lo + r.most
 		s := sum[hi] - sum[lo]
-		return square[hi] - square[lo] - s*s/mostRows
+		return square[hi] - square[lo] - s*s/float64(r.most)
 	}
 	best, most := 0, 1.2*moves(0) // the beginning needs no run-in
-	for lo := mostRows / 4; lo+mostRows <= len(u); lo += mostRows / 4 {
+	for lo := r.most / 4; lo+r.most <= len(u); lo += r.most / 4 {
 		if m := moves(lo); m > most {
 			best, most = lo, m
 		}
@@ -94,6 +95,9 @@ func (s *study) complete(f *fitted) {
 	if slices.ContainsFunc(s.recs, (*record).excerpt) {
 		f.full = f.polish()
 	}
+	if f.full != nil && len(s.fix) == 0 {
+		sort.Sort(sort.Reverse(sort.Float64Slice(f.full.eta[:f.e.nl]))) // they may have crossed
+	}
 }
 
 // regular reports whether f is known from every row, with all its parameters so far
@@ -127,7 +131,7 @@ func (out *outcome) anyRegular() bool {
 // around takes the values of the optimum on every row and keeps the intervals that the
 // excerpt gives, which are wider: where a parameter presses against its bound or
 // another, every row may say more than this.
-func (b *bounded) around(full *polished) {
+func (b *bounded) around(full *polished, here member, cov [][]float64, level float64) {
 	b.fine = full
 	for i := range b.est {
 		v := &b.est[i]
@@ -136,12 +140,7 @@ func (b *bounded) around(full *polished) {
 		}
 		v.low, v.high = math.Min(v.low, v.value), math.Max(v.high, v.value) // NaN, an open end, stays
 	}
-	for i, lin := range b.lin {
-		for j := range lin {
-			shift := full.beta[i][j] - lin[j].value
-			lin[j].value, lin[j].low, lin[j].high = full.beta[i][j], lin[j].low+shift, lin[j].high+shift
-		}
-	}
+	b.linearFromEveryRow(here, cov, level)
 }
 
 // explained is the model on record i.
@@ -188,17 +187,26 @@ func (b *bounded) fromEveryRow(here member, cov [][]float64, level float64) {
 			b.cov[i][j] = cov[b.direction(i)][b.direction(j)] * narrower[i] * narrower[j]
 		}
 	}
-	b.lin = b.linear(b, level)
+	b.linearFromEveryRow(here, cov, level)
+}
+
+// linearFromEveryRow sets baselines and drifts, widened by the noise mixture as the
+// gain is: of an excerpt far from the first row a baseline and an earlier input are
+// hard to tell apart.
+func (b *bounded) linearFromEveryRow(here member, cov [][]float64, level float64) {
+	lo, hi := b.quantiles(here, 0, level)
+	wider := 1.0
+	if c := here.cov[0][0]; c > 0 {
+		wider = math.Max(math.Sqrt(cov[0][0]/c), 1)
+	}
 	base := b.direction(b.e.nl+1) + 1
-	for i, lin := range b.lin {
-		for j := range lin {
-			e := &lin[j]
-			narrow := math.Sqrt(b.s2()*b.full.cov[base+j][base+j]) / e.se
-			value := b.full.beta[i][j]
-			e.low, e.high = value-narrow*(e.value-e.low), value+narrow*(e.high-e.value)
-			e.value, e.se = value, narrow*e.se
+	b.lin = make([][]estimate, len(b.e.recs))
+	for i, r := range b.e.recs {
+		for j := range r.fixed {
+			value, se := b.full.beta[i][j], math.Sqrt(b.s2()*b.full.cov[base+j][base+j])
+			b.lin[i] = append(b.lin[i], estimate{value: value, se: se * wider, low: value - lo*se, high: value + hi*se})
 		}
-		base += b.e.recs[i].linearColumns()
+		base += r.linearColumns()
 	}
 }
 

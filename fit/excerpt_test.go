@@ -88,3 +88,62 @@ func TestExcerptHoldsTheBump(t *testing.T) {
 		}
 	}
 }
+
+// TestExcerptJoint fits two long logs together: the order of the logs does not matter,
+// holding the gain never lowers the sum of squares, and every value lies in its
+// interval, derived ones too.
+func TestExcerptJoint(t *testing.T) {
+	for _, f := range families() {
+		if f.name != "telegraph, beyond one excerpt" {
+			continue
+		}
+		a, b := f.make(1), f.make(2)
+		for k := range b.Y {
+			b.Y[k] += 7
+		}
+		fitted := func(o Options, runs ...*data.Run) *Model {
+			o.Structure, o.Drift = "chain2", "none"
+			card, err := Fit(context.Background(), runs, o)
+			if err != nil {
+				t.Fatal(err)
+			}
+			return heldInside(t, card)
+		}
+		one, other := fitted(Options{}, a, b), fitted(Options{}, b, a)
+		held := fitted(Options{Fix: map[string]float64{"gain": f.gain}}, a, b)
+		if math.Abs(one.SSE/other.SSE-1) > 1e-9 {
+			t.Errorf("sum of squares %.10g, of the logs in the other order %.10g", one.SSE, other.SSE)
+		}
+		for i, p := range one.Parameters[:4] {
+			if d := math.Abs(p.Value-other.Parameters[i].Value) / *p.SE; d > 0.01 {
+				t.Errorf("%s moves by %.2g standard errors with the order of the logs", p.Name, d)
+			}
+		}
+		if held.LogLik > one.LogLik+1e-3 {
+			t.Errorf("log likelihood %.6f with the true gain held, %.6f with it free", held.LogLik, one.LogLik)
+		}
+	}
+}
+
+// heldInside returns the selected model of a card whose values all lie in their
+// intervals.
+func heldInside(t *testing.T, card *Card) *Model {
+	t.Helper()
+	outside := func(value float64, low, high *float64) bool {
+		return low != nil && value < *low || high != nil && value > *high
+	}
+	for _, m := range card.Models {
+		for _, p := range m.Parameters {
+			if outside(p.Value, p.Low, p.High) {
+				t.Errorf("%s of %s: %g lies outside its interval", p.Name, m.Structure, p.Value)
+			}
+		}
+	}
+	for _, d := range card.Derived {
+		if outside(d.Value, d.Low, d.High) {
+			t.Errorf("%s: %g lies outside its interval", d.Name, d.Value)
+		}
+	}
+	m, _ := card.Model(card.Selected)
+	return m
+}

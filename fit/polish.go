@@ -101,6 +101,10 @@ func (b *bounded) refine(exact bool) {
 	for i, v := range b.fine.eta {
 		b.est[i+1].value = v
 	}
+	for i := range b.est { // a move of a small part of the interval; NaN, an open end, stays
+		v := &b.est[i]
+		v.low, v.high = math.Min(v.low, v.value), math.Max(v.high, v.value)
+	}
 	if exact {
 		for i := range b.est {
 			for j := range b.est {
@@ -148,10 +152,11 @@ func (r *record) linearColumns() int {
 func (f *fitted) normal(at *polished, sum *float64) [][]float64 {
 	n := f.unknowns()
 	gram := columns(n+1, n+1)
-	base := f.direction(f.e.nl+1) + 1
+	shared := f.direction(f.e.nl+1) + 1 // gain, lags, dead time
+	base := shared
 	for i, r := range f.e.recs {
 		idx := []int{}
-		for k := range base {
+		for k := range shared {
 			idx = append(idx, k)
 		}
 		for k := range r.linearColumns() {

@@ -29,6 +29,7 @@ type record struct {
 	root  *record // the record at full resolution; itself when nothing is averaged
 	used  int     // rows of the full log that these rows stand for, see excerpt.go
 	scope scope   // where they may lie
+	most  int     // how many there may be, of a log whose input never rests
 	even  bool    // the full log is evenly sampled
 	usual float64 // s, interval of a log that is so but for jitter, else 0
 	parts []part  // of the full log, on which its noise is judged
@@ -78,7 +79,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		lo, hi = math.Min(lo, v), math.Max(hi, v)
 	}
 	if lo == hi {
-		return nil, fmt.Errorf("%s: %w: it is %g in every row; check the sensor and the column", name, ErrConstant, lo)
+		return nil, fmt.Errorf("%s: %w: %sit is %.6g in every row; check the sensor, or name the right column with --temp-col", name, ErrConstant, columnNamed(run.Source.Columns.Temperature), lo)
 	}
 	if len(r.input.At) == 0 {
 		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
@@ -87,7 +88,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
-	r.used = len(r.t)
+	r.used, r.most = len(r.t), mostRows
 	r.even = isEven(r.t, r.step)
 	r.usual = usualStep(r.t, r.step)
 	r.sim = ident.NewSimulator(r.t, r.input)
@@ -95,6 +96,15 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.parts = r.noiseParts(len(r.t))
 	r.choosePlace()
 	return r, nil
+}
+
+// columnNamed begins a sentence on a column of a log; a run that was not read
+// from one has no names.
+func columnNamed(name string) string {
+	if name == "" {
+		return ""
+	}
+	return fmt.Sprintf("column %q was read, ", name)
 }
 
 // present returns the rows that hold a temperature; the columns themselves when
@@ -113,7 +123,7 @@ func present(t, y []float64) (pt, py []float64) {
 
 // whole is the record with every row of the log, or as many as may be used at a
 // time, ready for fitting.
-func (r *record) whole() *record { return r.window(min(r.root.scope.rows(), mostRows)) }
+func (r *record) whole() *record { return r.window(min(r.root.scope.rows(), r.root.most)) }
 
 // window is the record with the first n rows of the scope.
 func (r *record) window(n int) *record {

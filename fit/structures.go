@@ -361,6 +361,7 @@ func (s *study) hopeless(f *fitted) bool {
 		return false
 	}
 	s.measure(f)
+	s.complete(f)
 	s.score(f)
 	return f.aicc > s.rival+hopelessBy
 }

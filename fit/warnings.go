@@ -68,7 +68,7 @@ func (out *outcome) warnMisfit(ctx context.Context, runs []*data.Run, b *bounded
 	if err != nil {
 		return
 	}
-	plant.DeadTime = b.p.eta[len(b.p.eta)-1] // on the clock of the rows
+	plant.DeadTime = b.est[len(b.est)-1].value // on the clock of the rows
 	fit := misfit{plant: plant, noise: m.Noise, start: out.initial, drift: out.drift, law: out.opt.Law}
 	for _, e := range b.est {
 		fit.held = append(fit.held, e.fixed)
@@ -151,7 +151,7 @@ func (out *outcome) openEnds(b *bounded, add warn) {
 		case i == 0 && high && b.st.Integrating():
 			add("weak-bump", names[i], "the log sets no upper bound on the slope: the answer is lost in the noise; make a larger bump")
 		case i == 0 && high:
-			hold := 4*total(elements(b.st, b.p.eta)) + b.p.eta[len(b.p.eta)-1]
+			hold := 4*total(elements(b.st, b.eta())) + b.est[len(b.est)-1].value
 			add("short-record", names[i], "the record shows no plateau: it sets no upper bound on the gain; hold the next bump at least %s", duration(roundUp(hold)))
 		case i == 0 && low:
 			add("weak-bump", names[i], "the log does not tell the gain from zero: the answer is lost in the noise; make a larger bump")
