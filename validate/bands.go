@@ -9,7 +9,7 @@ func runawayFigures() figures {
 	inf := math.Inf(1)
 	f := figures{
 		settling: inf, overshoot: inf, iae: inf, deviation: inf, peakTemp: inf,
-		peakInput: inf, lowInput: -inf, travel: inf, moves: runaway,
+		peakInput: inf, lowInput: -inf, travel: inf, handOver: inf, moves: runaway,
 	}
 	f.noisy.settling, f.noisy.overshoot = inf, inf
 	return f

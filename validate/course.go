@@ -23,9 +23,8 @@ import (
 type course struct {
 	t, y, u, r []float64               // time s, temperature with short holes bridged, input, setpoint
 	before     float64                 // setpoint the controller starts from
-	rest       float64                 // level from which the first setpoint move is measured
+	rest       float64                 // level from which the way to the first setpoint is measured
 	stepped    float64                 // size of the step made up for a log without setpoint, 0 when none
-	resumed    bool                    // starts after a hole in the run
 	final      func(r float64) float64 // quiet courses under a P controller: where it comes to rest; else nil
 
 	scan    float64 // s
@@ -48,10 +47,9 @@ func newCourse(run *data.Run, s segment, p *plan) (*course, error) {
 // newCourseAt is newCourse; a segment that resumes after a hole makes up no step.
 func newCourseAt(run *data.Run, s segment, p *plan, resumed bool) (*course, error) {
 	c := &course{
-		resumed: resumed,
-		t:       run.T[s.lo:s.hi],
-		y:       slices.Clone(run.Y[s.lo:s.hi]),
-		u:       run.U[s.lo:s.hi],
+		t: run.T[s.lo:s.hi],
+		y: slices.Clone(run.Y[s.lo:s.hi]),
+		u: run.U[s.lo:s.hi],
 	}
 	bridge(c.t, c.y)
 	var logged []float64
@@ -153,5 +151,5 @@ func interpolate(at, t, y []float64, f func(k int, v float64)) {
 // signal returns the course with another temperature and input as a signal to
 // be measured.
 func (c *course) signal(y, u []float64) signal {
-	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest, resumed: c.resumed, final: c.final}
+	return signal{t: c.t, y: y, u: u, r: c.r, r0: c.rest, midway: c.stepped == 0, final: c.final}
 }

@@ -36,7 +36,7 @@ func (p *plan) setpointGiven() bool {
 
 // unfollowed says why a run shows nothing of the requirement, "" where it does.
 func (p *plan) unfollowed(run *data.Run) string {
-	const cure = "; --setpoint-step or --setpoint gives one to judge by"
+	const cure = "; --setpoint-step makes a step to judge by"
 	switch {
 	case p.setpointGiven():
 		return ""

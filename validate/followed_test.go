@@ -9,7 +9,7 @@ import (
 )
 
 // A setpoint that no controller followed judges nothing, unless the caller
-// gives one to judge by.
+// makes a step to judge by; a setpoint to hold is no step.
 func TestUnfollowedSetpointIsNotJudged(t *testing.T) {
 	mode := func(auto bool) func(*data.Run) {
 		return func(r *data.Run) {
@@ -39,7 +39,8 @@ func TestUnfollowedSetpointIsNotJudged(t *testing.T) {
 		{"automatic", mode(true), Options{}, true, ""},
 		{"manual", mode(false), Options{}, false, "not judged: logged in manual"},
 		{"manual, step given", mode(false), Options{SetpointStep: ptr(5)}, true, ""},
-		{"manual, setpoint given", mode(false), Options{Setpoint: ptr(80)}, true, ""},
+		{"manual, setpoint given", mode(false), Options{Setpoint: ptr(80)}, false, "not judged on this run: settling"},
+		{"manual, setpoint given, area asked", mode(false), Options{Setpoint: ptr(80), RunLimits: RunLimits{IAE: ptr(1e9)}}, true, ""},
 		{"set by hand", byHand, Options{}, false, "not judged: the input was set by hand"},
 		{"set by hand, gains in force known", byHand, Options{LoggedGains: piGains(0.15, 8, 0.5)}, true, ""},
 		{"no setpoint", none, Options{}, false, "not judged: the log has no setpoint"},

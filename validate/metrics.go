@@ -11,9 +11,10 @@ type signal struct {
 	u  []float64 // input, holds from its row on
 	r  []float64 // setpoint, holds from its row on; nil when there is none
 	r0 float64   // setpoint (or level) in force before the first row
-	// resumed: the segment starts where a hole in the log has put it; its way
-	// to the setpoint is nobody's move
-	resumed bool
+	// midway: no setpoint step is made in the first row. If r0 differs from its
+	// setpoint, the signal starts in the middle of a move, or of heating up: the
+	// way that is left is a hand-over, not the answer to a step
+	midway bool
 	// final is where the temperature comes to rest under a P controller with the
 	// setpoint r: settling and overshoot are told from there, as tune tells them;
 	// nil: at the setpoint
@@ -46,6 +47,7 @@ type figures struct {
 	travel    float64 // Σ|Δu|
 	allowance float64 // widest noise allowance used, temperature units
 	moves     int     // setpoint moves judged
+	handOver  float64 // s, the slowest way to the setpoint from where a segment starts in mid-move
 	offset    float64 // largest distance from the setpoint at which P control comes to rest
 	small     int     // setpoint moves too small against the noise to judge
 	cut       int     // setpoint moves whose record ends before it shows whether they settle in time
@@ -56,7 +58,7 @@ type figures struct {
 
 func noFigures() figures {
 	nan := math.NaN()
-	f := figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, travel: nan}
+	f := figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, travel: nan, handOver: nan}
 	f.noisy.settling, f.noisy.overshoot = nan, nan
 	return f
 }
@@ -71,16 +73,30 @@ func (f *figures) add(s signal, m yardstick) {
 		return
 	}
 	f.iae = plus(f.iae, absoluteError(s))
-	quiet := 0 // first row not yet given to a move
-	for _, mv := range moves(s, m) {
+	all := moves(s, m)
+	quiet := f.takeOver(s, m, all) // first row not yet given to a move
+	for _, mv := range all {
 		f.deviation = larger(f.deviation, deviation(s, quiet, mv.from))
-		if mv.from == 0 && s.resumed {
-			_, quiet = settled(s, mv, m.band*math.Abs(mv.size)+m.allowance(s.t[mv.to-1]-s.t[0]), m.response)
-			continue
-		}
 		quiet = f.follow(s, m, mv)
 	}
 	f.deviation = larger(f.deviation, deviation(s, quiet, len(s.t)))
+}
+
+// takeOver measures the way to the setpoint that a signal starting in mid-move
+// has left, up to the first setpoint move, and returns the first row that no
+// longer belongs to it. Nothing is asked of it.
+func (f *figures) takeOver(s signal, m yardstick, all []move) (rest int) {
+	way := move{to: len(s.t), target: s.r[0], size: s.r[0] - s.r0}
+	if len(all) > 0 {
+		way.to = all[0].from
+	}
+	allowance := m.allowance(s.t[len(s.t)-1] - s.t[0])
+	if !s.midway || way.to == 0 || math.Abs(way.size) <= allowance {
+		return 0
+	}
+	at, rest := settled(s, way, m.band*math.Abs(way.size)+allowance, m.response)
+	f.handOver = larger(f.handOver, at)
+	return rest
 }
 
 // follow measures settling and overshoot of one setpoint move and returns the

@@ -128,7 +128,7 @@ func TestMeasureMoves(t *testing.T) {
 // A segment that a hole in the log starts far from its setpoint is not judged
 // on its way back, nor is that way a deviation.
 func TestResumedSegment(t *testing.T) {
-	s := signal{r0: 50, resumed: true}
+	s := signal{r0: 50, midway: true}
 	for i := range 1000 {
 		at := float64(i) * 0.1
 		s.t, s.u, s.r = append(s.t, at), append(s.u, 1), append(s.r, 60)

@@ -13,10 +13,14 @@ type move struct {
 // moves finds the setpoint moves of a segment. Changes that follow each other
 // within one response time (a ramp, or a setpoint typed in digit by digit)
 // are one move, counted from its first change. A segment that starts away
-// from its setpoint, as at start-up in automatic, starts with a move.
+// from its setpoint starts with a move only if that step is made there: what
+// is left of an earlier move, or of heating up, is none.
 func moves(s signal, m yardstick) []move {
 	var out []move
 	before := s.r0
+	if s.midway {
+		before = s.r[0]
+	}
 	changed := math.Inf(-1) // time of the last change seen
 	for i, r := range s.r {
 		if r == before || math.IsNaN(r) {

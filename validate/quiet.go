@@ -30,7 +30,11 @@ func (p *plan) quietCourses(courses []*course, m yardstick) []*course {
 }
 
 // quietCourse rests at the setpoint, with the first input held.
-func (p *plan) quietCourse(c *course) *course { return c.atRest(c.before, c.u[0], c.phi[0]) }
+func (p *plan) quietCourse(c *course) *course {
+	q := c.atRest(c.before, c.u[0], c.phi[0])
+	q.rest = q.before
+	return q
+}
 
 // atRest is the course of a heater that rests at the level with the input u,
 // phi(u) being given, without noise and loads.
@@ -44,34 +48,48 @@ func (c *course) atRest(level, u, phi float64) *course {
 	return &q
 }
 
-// on returns the quiet course for plant g. A run that starts away from its
-// setpoint, as when it heats up, is not at rest in its first row: what is left
-// then of its past depends on the plant, and is found from the whole log c. So
-// does where a P controller rests, which stands off its setpoint.
+// on returns the quiet course for plant g. A run that starts in mid-move is not
+// at rest in its first row: the input with which the plant would rest at the
+// first setpoint is found from the whole log c, so that the moves start there
+// with as much of the input's range left as they have. So does where a P
+// controller rests, which stands off its setpoint.
 func (p *plan) on(g ident.Plant, quiet, c *course) *course {
-	away := c.rest != c.before && c.stepped == 0
-	if !away && p.gains.Ti != nil {
+	midway := c.rest != c.before && c.stepped == 0
+	if !midway && p.gains.Ti != nil {
 		return quiet
 	}
-	q, held := *quiet, startLevel(c.y) // temperature with the first input held
-	if c.stepped != 0 {
+	held := startLevel(c.y) // temperature with the first input held
+	switch {
+	case c.stepped != 0:
 		held = c.before
-	}
-	if away {
-		s := p.startOf(c, g)
-		held = s.level
-		q.y, q.log = s.at(c.t), s.at(c.steps())
+	case midway:
+		held = p.startOf(c, g).level
 	}
 	if p.gains.Ti != nil {
-		return &q
+		u := p.inputFor(g, c.before, held, c.u[0])
+		return quiet.atRest(c.before, u, p.law.Apply(u))
 	}
 	rest := func(r float64) (y, u float64) { return p.restUnder(g, r, held, c.u[0]) }
-	if !away {
-		y, u := rest(c.before)
-		q = *q.atRest(y, u, p.law.Apply(u))
-	}
+	y, u := rest(c.before)
+	q := *quiet.atRest(y, u, p.law.Apply(u))
 	q.final = func(r float64) float64 { y, _ := rest(r); return y }
 	return &q
+}
+
+// inputFor is the input, within the limits, with which plant g rests at the
+// level, given that it rests at held with the input u0.
+func (p *plan) inputFor(g ident.Plant, level, held, u0 float64) float64 {
+	u := p.law.Apply(u0) + (level-held)/g.Gain
+	if p.law == ident.Power {
+		u = math.Sqrt(max(0, u))
+	}
+	if most := p.gains.Limits.Max; most != nil {
+		u = min(u, *most)
+	}
+	if least := p.gains.Limits.Min; least != nil {
+		u = max(u, *least)
+	}
+	return u
 }
 
 // restUnder is where plant g comes to rest under the P controller with the
@@ -111,15 +129,6 @@ func (p *plan) restUnder(g ident.Plant, r, held, u0 float64) (y, u float64) {
 		}
 	}
 	return at(u), u
-}
-
-// steps are the times of the lattice's steps.
-func (c *course) steps() []float64 {
-	out := make([]float64, len(c.log))
-	for k := range out {
-		out[k] = c.t[0] + float64(k)*c.lattice.step
-	}
-	return out
 }
 
 // A start is the temperature of a plant whose input is held from the first

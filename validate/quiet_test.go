@@ -63,59 +63,6 @@ func ownFigures(t testing.TB, card *fit.Card, gains *tune.Gains, clean *data.Run
 	return f
 }
 
-// A run that heats up from an earlier input, not at rest in its first row, is
-// judged as the heater itself would have done without noise: its start is
-// found from the log.
-func TestQuietStartAwayFromTheSetpoint(t *testing.T) {
-	const rows, scan = 900, 0.5
-	plant := mustPlant(t, "chain2", 8, []float64{20, 6}, 2)
-	noise := fit.Noise{SD: 0.1, CorrelationTime: 2, WhiteSD: 0.05}
-	gains := piGains(0.25, 24, scan)
-	gains.Limits = tune.Limits{Min: ptr(0), Max: ptr(9)}
-	// the heater off at 20 °C until the log begins in automatic at full input
-	whole := func(g *tune.Gains, d []float64) *data.Run {
-		setpoint := stepsAt(rows, 20, map[int]float64{100: 50})
-		run := loggedLoop(t, plant, ident.Linear, g, setpoint, d, 0)
-		const cut = 101
-		run.T, run.U, run.Y, run.Setpoint = run.T[cut:], run.U[cut:], run.Y[cut:], run.Setpoint[cut:]
-		return run
-	}
-	d := noisy(rand.New(rand.NewPCG(5, 9)), rows, scan, noise)
-	d[0] = 0
-	hot := piGains(0.6, 20, scan)
-	hot.Limits = gains.Limits
-	log := whole(hot, d)
-	if log.U[0] < 8.9 {
-		t.Fatalf("the log begins at %g V, want full input", log.U[0])
-	}
-	card := cardOf(t, "linear", noise, plant)
-	asked := Options{Requirement: tune.Requirement{Settling: ptr(1), InputMax: ptr(9), InputMin: ptr(0)}}
-	quiet, err := ReplayRuns(context.Background(), card, []*data.Run{log}, gains, asked)
-	if err != nil {
-		t.Fatal(err)
-	}
-	p, err := newPlan(cardOf(t, "linear", fit.Noise{}, plant), gains, asked)
-	if err != nil {
-		t.Fatal(err)
-	}
-	// the same heater and history without noise, replayed exactly
-	clean := whole(hot, make([]float64, rows))
-	c, err := newCourse(clean, segment{0, len(clean.T), 0}, p)
-	if err != nil {
-		t.Fatal(err)
-	}
-	y, u := make([]float64, len(c.t)), make([]float64, len(c.t))
-	if err := newRunner(p.law, p.gains, p.plants).replay(c, 0, y, u); err != nil {
-		t.Fatal(err)
-	}
-	truth := noFigures()
-	truth.add(c.signal(y, u), p.yardstick(clean).quiet())
-	got := quiet.Runs[0].Proposed.Median
-	if got.Settling == nil || math.Abs(*got.Settling-truth.settling) > 0.02*truth.settling || math.Abs(*got.Overshoot-truth.overshoot) > 0.2 {
-		t.Errorf("settling %s, overshoot %s; the heater itself %g and %g", optional(got.Settling), optional(got.Overshoot), truth.settling, truth.overshoot)
-	}
-}
-
 // A bump in manual with a step put on it is judged like the step alone.
 func TestStepOnABumpLog(t *testing.T) {
 	const rows, scan = 900, 0.5

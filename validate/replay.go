@@ -38,6 +38,11 @@ type RunReplay struct {
 	WithNoise StepMetrics `json:"with_noise"`
 	Logged    RunMetrics  `json:"logged"`
 
+	// HandOver is the way to the setpoint that a run beginning in mid-move had
+	// left: told, not judged, since no setpoint step is made there. Null where it
+	// begins at its setpoint, or nearer than noise lets see.
+	HandOver *HandOver `json:"hand_over,omitempty"`
+
 	Judged      bool     `json:"judged"`      // the run shows something that the requirement asks for
 	Meets       bool     `json:"meets"`       // probability not below the assurance of the gains by more than twice its sampling error; false when nothing could be judged
 	Probability float64  `json:"probability"` // share of plausible plants on which it meets
@@ -53,6 +58,13 @@ type RunReplay struct {
 type StepMetrics struct {
 	Settling  *float64 `json:"settling_s"`
 	Overshoot *float64 `json:"overshoot_percent"`
+}
+
+// HandOver is a start off the setpoint, and how long the way there takes.
+type HandOver struct {
+	Away     float64  `json:"away"`              // setpoint less temperature in the first rows
+	Settling *float64 `json:"settling_s"`        // median over the plausible plants; null where it does not settle
+	Logged   *float64 `json:"logged_settling_s"` // of the log; null also where no setpoint was followed
 }
 
 // RunMetrics of one signal; null where the figure does not exist.

@@ -34,8 +34,8 @@ func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) 
 		return out, err
 	}
 	p.conclude(&out, run, e)
-	out.Logged = logged.metrics()
-	out.Warnings = append(append(out.Warnings, warnings...), p.warnings(run, courses, e)...)
+	out.Logged, out.HandOver = logged.metrics(), handOverOf(courses, e.figures, logged)
+	out.Warnings = append(append(out.Warnings, warnings...), p.warnings(run, courses, e, out.HandOver)...)
 	if p.traces {
 		out.Trace = e.trace(courses, p.options.Confidence)
 	}

@@ -4,6 +4,8 @@ import (
 	"errors"
 	"math"
 	"slices"
+
+	"gonum.org/v1/gonum/stat"
 )
 
 // ErrNoSetpoint is wrapped when a run has no setpoint and none was given.
@@ -32,7 +34,7 @@ func (c *course) setSetpoint(logged []float64, given, step *float64) error {
 	}
 	c.before, c.rest = c.r[0], c.r[0]
 	if math.Abs(c.r[0]-level) > startBand(c.y) && (!hasValue(logged) || goesHalfway(c.y, level, c.r[0])) {
-		c.rest = level // it starts away from its setpoint, which is a move
+		c.rest = level // it starts in the middle of a move
 	}
 	return nil
 }
@@ -49,9 +51,18 @@ func goesHalfway(y []float64, level, setpoint float64) bool {
 func startLevel(y []float64) float64 { return median(y[:min(startRows, len(y))]) }
 
 // startBand is how far from its setpoint a segment may start and still count
-// as being at it: four times the scatter of its first rows.
+// as being at it: four times the scatter of its first rows about a straight
+// line, since in mid-move they climb.
 func startBand(y []float64) float64 {
-	first := y[:min(startRows, len(y))]
+	first := slices.Clone(y[:min(startRows, len(y))])
+	rows := make([]float64, len(first))
+	for i := range rows {
+		rows[i] = float64(i)
+	}
+	level, climb := stat.LinearRegression(rows, first, nil, false)
+	for i := range first {
+		first[i] -= level + climb*rows[i]
+	}
 	return 4 * (slices.Max(first) - slices.Min(first))
 }
 

@@ -9,7 +9,7 @@ import (
 )
 
 // warnings says what limits the replay of a run.
-func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string {
+func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble, handOver *HandOver) []string {
 	var out []string
 	warn := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
 
@@ -17,6 +17,9 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble) []string 
 	f := p.typical(e.figures)
 	if f.moves == 0 && p.options.Requirement.Settling != nil {
 		warn("no setpoint move in this run: settling and overshoot are not judged")
+	}
+	if handOver != nil {
+		out = append(out, handOver.words(p.units.difference))
 	}
 	if f.small > 0 {
 		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.difference))
