@@ -90,6 +90,9 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 		if err != nil {
 			return l, nil, err
 		}
+		if taken[i] {
+			return l, nil, twiceNamed(cols[i], &l, r)
+		}
 		l[r], taken[i] = i, true
 	}
 	for i, c := range cols {
@@ -103,6 +106,7 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 		}
 	}
 	var notes []Note
+	var chosen []role // by name
 	for _, r := range []role{roleInput, roleTemp} {
 		if l[r] >= 0 {
 			continue
@@ -114,23 +118,33 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 		if r == roleInput && len(found) > 1 {
 			found = leaveOthers(cols, found)
 		}
+		named := true
 		if r == roleInput && len(found) > 1 {
 			if only := stepwiseAmong(cols, found); only >= 0 {
-				found = []int{only}
+				found, named = []int{only}, false
 				notes = append(notes, contentNote(cols[only], r))
 			}
+		}
+		if r == roleTemp {
+			found = actualOverAir(cols, taken, found)
 		}
 		if len(found) > 1 {
 			return l, nil, ambiguous(cols, found, r)
 		}
 		if len(found) == 1 {
 			l[r], taken[found[0]] = found[0], true
+			if named {
+				chosen = append(chosen, r)
+			}
 		}
 	}
 	notes = append(notes, assignOptional(cols, &l, taken)...)
 	more, err := assignByContent(cols, &l, taken)
 	if err == nil && cols[l[roleInput]].switched {
 		more = append(more, readSwitched(&cols[l[roleInput]]))
+	}
+	for _, r := range chosen {
+		more = append(more, passedOver(cols, taken, l[r], r)...)
 	}
 	return l, append(notes, more...), err
 }
@@ -139,12 +153,19 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 // such as the voltage of the supply, if that leaves any.
 func leaveOthers(cols []column, found []int) []int {
 	rest := slices.DeleteFunc(slices.Clone(found), func(i int) bool {
-		return words[roleOther].hit(cols[i].name, wordsOf(cols[i].name)) > 1
+		return words[roleOther].in(cols[i])
 	})
 	if len(rest) == 0 {
 		return found
 	}
 	return rest
+}
+
+// twiceNamed is the error of a column that the flags give two roles.
+func twiceNamed(c column, l *layout, second role) error {
+	first := role(slices.Index(l[:], c.index))
+	return fmt.Errorf("column %q cannot be both the %s (%s) and the %s (%s): name two columns",
+		c.label, roleNames[first], flags[first], roleNames[second], flags[second])
 }
 
 func isSwitched(c column) bool { return c.switched }

@@ -178,6 +178,15 @@ func (r *rows) setFullScaleAside(y []float64, s *Span) {
 	}
 }
 
+// spanCure says that a span set readings aside, for a log that lost them all.
+func spanCure(missing map[string]int, o *Options) string {
+	if o.TempSpan == nil || missing["full scale"]+missing["below scale"] == 0 {
+		return ""
+	}
+	return fmt.Sprintf(": --temp-span %g..%g sets aside what lies at its upper end or outside; give the span of the instrument in the unit of the column, or leave --temp-span out",
+		o.TempSpan.Low, o.TempSpan.High)
+}
+
 // convertThermocouple turns the voltage of a thermocouple into temperature:
 // the voltage its reference junction would give is added, and the reference
 // function of its type is solved for the sum.

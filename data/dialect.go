@@ -95,7 +95,7 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	}
 	d.delim, d.fields = findDelimiter(physical)
 	if d.fields < 2 {
-		return nil, fmt.Errorf("%s: no rows of two or more numbers found: is this a log of columns with a delimiter?", path)
+		return nil, fmt.Errorf("%s: no rows of two or more numbers found: %s", path, logWanted)
 	}
 	records := physical
 	if bytes.IndexByte(sample, '"') >= 0 { // now it is known which quotes enclose cells
@@ -109,6 +109,9 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	d.format.point = findPoint(records, d.delim, d.fields)
 	return d, d.findColumns(path, records)
 }
+
+// logWanted is what to do with a file that is no log.
+const logWanted = "a log has a row of numbers for every time, in columns with a delimiter; give a CSV or Parquet file, or export the log as CSV"
 
 // lines cuts the sample into lines. Blank lines are left out, and the last line
 // when the sample ends within it.
@@ -185,7 +188,7 @@ func (d *dialect) findColumns(path string, lines []line) error {
 		}
 	}
 	if start < 0 {
-		return fmt.Errorf("%s: no rows of data found", path)
+		return fmt.Errorf("%s: no rows of data found: %s", path, logWanted)
 	}
 	start += d.belowNames(lines[start:], start == 0)
 	d.first = lines[start].number

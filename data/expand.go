@@ -72,7 +72,7 @@ func logsIn(dir string) ([]string, error) {
 		switch {
 		case hidden && d.IsDir():
 			return filepath.SkipDir
-		case !hidden && !d.IsDir() && isLogName(d.Name()):
+		case !hidden && !d.IsDir() && IsLogName(d.Name()):
 			out = append(out, path)
 		}
 		return nil
@@ -88,7 +88,9 @@ func logsIn(dir string) ([]string, error) {
 	return out, nil
 }
 
-func isLogName(name string) bool {
+// IsLogName tells a name that ends as logs do, packed or not. What a user
+// calls a log may be the only record of a run and is not to be written over.
+func IsLogName(name string) bool {
 	name = strings.ToLower(name)
 	name = strings.TrimSuffix(strings.TrimSuffix(name, ".gz"), ".zst")
 	return slices.Contains(logEndings, filepath.Ext(name))

@@ -99,7 +99,7 @@ func finish(path string, tb *table, info *reading, o *Options) (*Run, error) {
 	r.cycleMean(o.Cycle)
 	r.fill(run, tb.name, info)
 	if !slices.ContainsFunc(run.Y, func(y float64) bool { return y == y }) {
-		return nil, fail(fmt.Errorf("column %q holds no temperature%s", info.label(roleTemp), commonest(r.missing)))
+		return nil, fail(fmt.Errorf("column %q holds no temperature%s%s", info.label(roleTemp), commonest(r.missing), spanCure(r.missing, o)))
 	}
 	assess(run, o)
 	return run, nil

@@ -136,8 +136,25 @@ func (d *dialect) checkNames(names []string, lines []line) error {
 	case !slices.ContainsFunc(d.cols[len(names):], func(c column) bool { return c.class == numbers || c.class == stamps }):
 		return nil
 	}
+	if d.commaTwice(names, lines) {
+		return fmt.Errorf("the header names %d columns (%s), but the rows hold %d (%s): the comma seems to be both the delimiter and the decimal mark: export again with semicolons or tabs between the columns, or with decimal points",
+			len(names), strings.Join(names, " | "), d.fields, bytes.TrimSpace(lines[0].text[:min(len(lines[0].text), 60)]))
+	}
 	return fmt.Errorf("the header names %d columns (%s), but the rows hold %d (%s): quote the cells that hold the delimiter %q, or name every column once",
 		len(names), strings.Join(names, " | "), d.fields, bytes.TrimSpace(lines[0].text[:min(len(lines[0].text), 60)]), d.delim)
+}
+
+// commaTwice tells rows cut at their decimal commas too: more cells than the
+// header names, between commas, and no number with a decimal point.
+func (d *dialect) commaTwice(names []string, lines []line) bool {
+	if d.delim != ',' || d.fields <= len(names) {
+		return false
+	}
+	return !slices.ContainsFunc(lines, func(l line) bool {
+		return slices.ContainsFunc(l.cells, func(c []byte) bool {
+			return bytes.IndexByte(c, '.') >= 0 && d.classOf(c) == numbers
+		})
+	})
 }
 
 // isRowName tells that a row of data has one cell more than the header

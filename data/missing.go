@@ -32,7 +32,8 @@ var isBadWord = sync.OnceValue(func() map[string]bool {
 })
 
 // missingKind tells what stands in a cell in place of a number: "blank", a
-// known word in capitals, dashes, or the text itself. known is false for text
+// known word in capitals, dashes and the like as
+// written, or the text itself. known is false for text
 // that is none of the usual words.
 func missingKind(cell []byte) (kind string, known bool) {
 	if kind, known = knownMissing(cell); known {
@@ -53,10 +54,13 @@ func knownMissing(cell []byte) (kind string, known bool) {
 	if len(cell) == 0 {
 		return "blank", true
 	}
-	if dashes := bytes.Trim(cell, "-_.*+#"); len(dashes) == 0 && !bytes.Equal(cell, []byte("*")) {
+	marks := len(bytes.Trim(cell, "-_.*+#")) == 0 && !bytes.Equal(cell, []byte("*"))
+	switch {
+	case marks && len(cell) > longestWord:
 		return "----", true
-	}
-	if len(cell) > longestWord {
+	case marks:
+		return string(cell), true
+	case len(cell) > longestWord:
 		return "", false
 	}
 	word := strings.ToUpper(decodeName(cell))

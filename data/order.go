@@ -28,7 +28,7 @@ func settleOrder(tb *table, info *reading) ([]int64, error) {
 	k := info.clock
 	switch {
 	case k.dayFirst && k.monthFirst:
-		return nil, fmt.Errorf("column %q has days above 12 both in front and behind: say how to read it with --time-format day-first or month-first", info.label(roleTime))
+		return nil, fmt.Errorf("column %q has days above 12 both in front and behind: say how to read it with --time-format day-first or month-first", info.cols[info.dateColumn()].label)
 	case k.dayFirst:
 		return dayFirst, nil
 	case k.monthFirst:
@@ -47,16 +47,22 @@ func settleOrder(tb *table, info *reading) ([]int64, error) {
 		info.note("date-order", 0, "the dates were read month first, because the clock would jump otherwise")
 		return monthFirst, nil
 	}
-	first := info.cols[info.at[roleTime]].sample
-	if i := info.at[roleDate]; i >= 0 {
-		first = info.cols[i].sample
-	}
+	dates := info.cols[info.dateColumn()]
 	show := ""
-	if len(first) > 0 {
-		show = fmt.Sprintf(" (%s)", first[0])
+	if len(dates.sample) > 0 {
+		show = fmt.Sprintf(" (%s)", dates.sample[0])
 	}
 	return nil, fmt.Errorf("column %q%s can be read day first or month first: say which with --time-format day-first or --time-format month-first",
-		info.label(roleTime), show)
+		dates.label, show)
+}
+
+// dateColumn is the column that the dates stand in: that of the clock, or one
+// of their own.
+func (r *reading) dateColumn() int {
+	if i := r.at[roleDate]; i >= 0 {
+		return i
+	}
+	return r.at[roleTime]
 }
 
 // roughness counts the steps back of more than two hours (smaller ones may be
