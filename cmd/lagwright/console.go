@@ -6,7 +6,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"os"
 	"strings"
 
 	"github.com/spf13/pflag"
@@ -102,22 +101,6 @@ func (c *console) complain(ctx context.Context, err error) {
 		err = errors.New(message)
 	}
 	fmt.Fprintln(c.errOut, "lagwright: "+oneLine(err.Error()))
-}
-
-// refuseOverwriting stops an output from taking the place of an input.
-func (c *console) refuseOverwriting(inputs []string, outputs ...string) error {
-	for _, output := range outputs {
-		out, err := os.Stat(output)
-		if err != nil || !out.Mode().IsRegular() {
-			continue // not there yet, or not replaced
-		}
-		for _, path := range inputs {
-			if in, err := os.Stat(path); err == nil && os.SameFile(in, out) {
-				return usageErrorf("%s is both input and output; write to another name", path)
-			}
-		}
-	}
-	return nil
 }
 
 // commandLine is what was typed, quoted for a shell.

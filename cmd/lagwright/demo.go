@@ -33,11 +33,15 @@ gains.json, replay.json, report.html and the figures.
 }
 
 func runDemo(ctx context.Context, c *console) error {
-	folder, err := c.outputFolder(demoFolder)
+	logs, err := demo.Logs()
 	if err != nil {
 		return err
 	}
-	logs, err := demo.Logs()
+	more := []string{"gains-in-force.json"}
+	for _, l := range logs {
+		more = append(more, l.Name+".csv")
+	}
+	folder, err := c.outputFolder(demoFolder, more...)
 	if err != nil {
 		return err
 	}

@@ -38,10 +38,34 @@ func readFile[T any](c *console, path string, read func(r io.Reader, name string
 	return v, nil
 }
 
-func (c *console) readCard(path string) (*fit.Card, error) { return readFile(c, path, fit.ReadCard) }
+func (c *console) readCard(path string) (*fit.Card, error) {
+	card, err := readFile(c, path, fit.ReadCard)
+	if err != nil {
+		return nil, cardError(path, err)
+	}
+	return card, nil
+}
 
 func (c *console) readGains(path string) (*tune.Gains, error) {
-	return readFile(c, path, tune.ReadGains)
+	gains, err := readFile(c, path, tune.ReadGains)
+	if err != nil {
+		return nil, gainsError(path, err)
+	}
+	return gains, nil
+}
+
+// gainsError says what to do with a file that is no gains.
+func gainsError(path string, err error) error {
+	name := filepath.Base(path)
+	switch kind, _, _ := lagwrightFile(path); {
+	case kind == "card":
+		return inputErrorf("%s is a model card, not gains; make gains with lagwright tune %s -o gains.json", name, shellQuote(name))
+	case kind != "" && kind != "gains":
+		return inputErrorf("%s is a file of %s, not gains: give the gains that lagwright tune wrote", name, kind)
+	case kind == "" && table(path):
+		return inputErrorf("%s is not a file of gains: give the gains that lagwright tune wrote, or write them out: kc=0.4V/K,ti=12s", name)
+	}
+	return err
 }
 
 func (c *console) readReplay(path string) (*validate.Replay, error) {

@@ -122,8 +122,8 @@ func (j *job) check(ctx context.Context, o fit.Options) error {
 }
 
 // outputFolder is the folder that a whole job writes; that it can be one is
-// found out before the work.
-func (c *console) outputFolder(usual string) (string, error) {
+// found out before the work. more are names it holds besides the usual ones.
+func (c *console) outputFolder(usual string, more ...string) (string, error) {
 	folder := cmp.Or(c.output, usual)
 	if folder == "-" {
 		return "", usageErrorf("-o names the folder to write; a folder cannot go to standard output")
@@ -131,7 +131,7 @@ func (c *console) outputFolder(usual string) (string, error) {
 	if info, err := os.Stat(folder); err == nil && !info.IsDir() {
 		return "", fmt.Errorf("%s exists and is not a folder; name another with -o", folder)
 	}
-	return folder, nil
+	return folder, c.refuseSpreading(folder, more...)
 }
 
 // writeFolder puts everything the job made into a folder, whole or not at all.

@@ -61,7 +61,6 @@ table of the runs with the results side by side.
 	}
 	fs := cmd.Flags()
 	fs.StringArrayVar(&o.gains, "gains", nil, "`FILE` of the proposed gains, or the gains written out; may be repeated to compare")
-	_ = cmd.MarkFlagRequired("gains")
 	fs.StringVar(&o.loggedGains, "logged-gains", "", "`FILE` of the gains in force when the logs were made, or these gains written out")
 	optionalFlag(fs, &o.options.Setpoint, "setpoint", "TEMP", "setpoint of the whole run, where the log has none, °C (or 203F)", temperature)
 	fs.BoolVar(&o.options.Resume, "resume", false, "go on after a break: runs already in the output are taken over")
@@ -79,7 +78,7 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, args []str
 		return err
 	}
 	inputs := append(append([]string{o.loggedGains}, o.gains...), args...)
-	if err := c.refuseOverwriting(inputs, c.output, o.plot.path); err != nil {
+	if err := o.refuseOverwriting(c, inputs); err != nil {
 		return err
 	}
 	cardPaths, logs, err := splitCards(args)
@@ -107,6 +106,15 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, args []str
 		return err
 	}
 	return replayVerdict(replay)
+}
+
+// refuseOverwriting spares inputs and logs; only this command writes Parquet,
+// over an older table if need be.
+func (o *validateOptions) refuseOverwriting(c *console, inputs []string) error {
+	if isTable(c.output) {
+		return refuseInputs(inputs, c.output, o.plot.path)
+	}
+	return c.refuseOverwriting(inputs, c.output, o.plot.path)
 }
 
 // splitCards parts the cards, which come first, from the logs.
@@ -176,6 +184,9 @@ func (c *console) gainsOf(flag, text string, card *fit.Card) (*tune.Gains, error
 }
 
 func (o *validateOptions) check(c *console) error {
+	if len(o.gains) == 0 {
+		return usageErrorf("validate needs the gains to replay the runs with: --gains gains.json, or written out: --gains kc=0.4V/K,ti=12s")
+	}
 	if o.options.Resume && len(o.gains) > 1 {
 		return usageErrorf("--resume goes on with one card and one set of gains, not with a comparison")
 	}
