@@ -161,7 +161,7 @@ const mostCandidates = 12
 func candidateTable(g *tune.Gains) *table {
 	t := &table{
 		Caption: "Controllers tried: the chosen one, those that meet the requirement, those that come near it; settling, overshoot, Ms and IAE at the worst over the assured share of plants; b is the setpoint weight",
-		Head:    []string{"Rule", "Kc", "Ti", "Td", "b", "Settling", "Overshoot", "Ms", "IAE", "Share", "Meets"},
+		Head:    []string{"Rule", "Kc, " + g.Units.Input + "/" + kelvin(g.Units.Temperature), "Ti, s", "Td, s", "b", "Settles, s", "Over, %", "Ms", "IAE", "Share", "Meets"},
 	}
 	best := slices.Clone(g.Candidates)
 	slices.SortStableFunc(best, func(a, b tune.Candidate) int { return cmp.Compare(rank(b), rank(a)) })
@@ -170,7 +170,7 @@ func candidateTable(g *tune.Gains) *table {
 		best = best[:mostCandidates]
 	}
 	for i := range best {
-		t.Rows = append(t.Rows, candidateRow(&best[i], g.Units))
+		t.Rows = append(t.Rows, candidateRow(&best[i]))
 	}
 	return t
 }
@@ -187,7 +187,7 @@ func rank(c tune.Candidate) float64 {
 	return r
 }
 
-func candidateRow(c *tune.Candidate, u tune.GainUnits) []cell {
+func candidateRow(c *tune.Candidate) []cell {
 	m := c.Worst
 	if m == nil {
 		m = c.Nominal
@@ -200,9 +200,9 @@ func candidateRow(c *tune.Candidate, u tune.GainUnits) []cell {
 		name += " (chosen)"
 	}
 	return []cell{
-		{Text: name, Small: c.Note, Header: true}, num(format.Amount(c.Kc, u.Input+"/"+kelvin(u.Temperature), 3)),
-		num(format.Optional(c.Ti, "s", 3)), num(format.Optional(c.Td, "s", 3)),
-		num(format.Optional(c.SetpointWeight, "", 3)), num(format.Optional(m.Settling, "s", 3)), num(format.Optional(m.Overshoot, "%", 3)), num(format.Optional(m.Ms, "", 3)),
+		{Text: name, Small: c.Note, Header: true}, num(format.Amount(c.Kc, "", 3)),
+		num(format.Optional(c.Ti, "", 3)), num(format.Optional(c.Td, "", 3)), num(format.Optional(c.SetpointWeight, "", 3)),
+		num(format.Optional(m.Settling, "", 3)), num(format.Optional(m.Overshoot, "", 3)), num(format.Optional(m.Ms, "", 3)),
 		num(format.Optional(m.IAE, "", 3)), num(format.Percent(c.Share)), yesNo(c.Meets),
 	}
 }
