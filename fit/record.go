@@ -107,15 +107,6 @@ func columnNamed(name string) string {
 	return fmt.Sprintf("column %q was read, ", name)
 }
 
-// columnNamed begins a sentence on a column of a log; a run that was not read
-// from one has no names.
-func columnNamed(name string) string {
-	if name == "" {
-		return ""
-	}
-	return fmt.Sprintf("column %q was read, ", name)
-}
-
 // present returns the rows that hold a temperature; the columns themselves when
 // all do.
 func present(t, y []float64) (pt, py []float64) {
