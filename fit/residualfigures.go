@@ -175,7 +175,9 @@ func groupedChanges(r *record, group int) []float64 {
 		for k < len(r.t)-1 && r.t[k] <= at {
 			k++
 		}
-		out[k/group] += r.input.Value[i] - last
+		if g := (k + group - 1) / group; g < len(out) { // the first group all of whose rows come after it
+			out[g] += r.input.Value[i] - last
+		}
 		last = r.input.Value[i]
 	}
 	return out
