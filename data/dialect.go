@@ -85,7 +85,9 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	}
 	if areWrapped(physical) {
 		d.rewrite = unwrapLine
-	} else if k := findKeys(physical); k != nil {
+	} else if k, err := findKeys(path, physical); err != nil {
+		return nil, err
+	} else if k != nil {
 		d.rewrite, d.keys = k.row, k.names
 	}
 	if d.rewrite != nil {
