@@ -78,15 +78,20 @@ func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 		scale(y, lo, hi, o.TempSpan.Low, o.TempSpan.High)
 		run.Units.Temperature = toCelsius(y, spanUnit(o.TempSpan, "degC"))
 	default:
-		if o.TempSpan != nil {
-			r.setFullScaleAside(y, o.TempSpan)
-		}
+		degrees := unit == "degC" || unit == "degF" || unit == "K"
 		run.Units.Temperature = toCelsius(y, unit)
+		if o.TempSpan != nil {
+			ends := []float64{o.TempSpan.Low, o.TempSpan.High}
+			if degrees { // else in whatever the column is in
+				toCelsius(ends, spanUnit(o.TempSpan, unit))
+			}
+			r.setFullScaleAside(y, ends[0], ends[1])
+		}
 		if unit == "degF" {
 			r.notes = append(r.notes, Note{Code: "fahrenheit",
 				Text: "the temperature is logged in °F; everything is told in °C and K, gains too: a controller that works in °F needs 5/9 of a gain in V/K"})
 		}
-		if unit != "degC" && unit != "degF" && unit != "K" {
+		if !degrees {
 			r.notes = append(r.notes, Note{Code: "unit-unknown",
 				Text: fmt.Sprintf("the unit of column %q is not known as a unit of temperature; its values stay as they are (say C, F or K with --temp-unit)", info.label(roleTemp))})
 		}
@@ -165,11 +170,11 @@ func (r *rows) setFaultCurrentsAside(v []float64) {
 
 // setFullScaleAside makes missing the readings at or beyond the ends of the
 // instrument's range, where it shows its limit and no temperature.
-func (r *rows) setFullScaleAside(y []float64, s *Span) {
+func (r *rows) setFullScaleAside(y []float64, low, high float64) {
 	for i, x := range y {
-		if x >= s.High || x < s.Low {
+		if x >= high || x < low {
 			kind := "full scale"
-			if x < s.Low {
+			if x < low {
 				kind = "below scale"
 			}
 			count(r.missing, kind, 1)
@@ -183,8 +188,8 @@ func spanCure(missing map[string]int, o *Options) string {
 	if o.TempSpan == nil || missing["full scale"]+missing["below scale"] == 0 {
 		return ""
 	}
-	return fmt.Sprintf(": --temp-span %g..%g sets aside what lies at its upper end or outside; give the span of the instrument in the unit of the column, or leave --temp-span out",
-		o.TempSpan.Low, o.TempSpan.High)
+	return fmt.Sprintf(": --temp-span %g..%g%s sets aside what lies at its upper end or outside; give the span that the instrument really has, or leave --temp-span out",
+		o.TempSpan.Low, o.TempSpan.High, o.TempSpan.Unit)
 }
 
 // convertThermocouple turns the voltage of a thermocouple into temperature:

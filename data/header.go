@@ -124,6 +124,9 @@ var remarks = []string{"comment", "comments", "remark", "remarks", "note", "note
 // remarks may be left out, and columns without a name may hold text.
 func (d *dialect) checkNames(names []string, lines []line) error {
 	switch {
+	case d.shift > 0 && d.commaInLast(lines):
+		return fmt.Errorf("the header names %d columns (%s), but the rows hold %d (%s): is the comma both the delimiter and the decimal mark? then export again with semicolons or tabs between the columns, or with decimal points; if every row begins with its number, name that column too",
+			len(names), strings.Join(names, " | "), d.fields, bytes.TrimSpace(lines[0].text[:min(len(lines[0].text), 60)]))
 	case len(names) == 0 || d.shift > 0:
 		return nil
 	case len(names) > d.fields:
@@ -147,10 +150,34 @@ func (d *dialect) checkNames(names []string, lines []line) error {
 // commaTwice tells rows cut at their decimal commas too: more cells than the
 // header names, between commas, and no number with a decimal point.
 func (d *dialect) commaTwice(names []string, lines []line) bool {
-	if d.delim != ',' || d.fields <= len(names) {
+	return d.delim == ',' && d.fields > len(names) && !d.pointed(lines)
+}
+
+// commaInLast tells rows of one cell too many whose last cell may be the
+// decimals of the one before: of many values, single digits or more with
+// zeros in front, and no decimal point in sight.
+func (d *dialect) commaInLast(lines []line) bool {
+	if d.delim != ',' || isWeekday(lines[0].cells) || d.pointed(lines) {
 		return false
 	}
-	return !slices.ContainsFunc(lines, func(l line) bool {
+	width, zeros, seen := 0, false, map[string]bool{}
+	for _, l := range lines {
+		last := l.cells[len(l.cells)-1]
+		if len(l.cells) != d.fields || len(last) == 0 {
+			continue
+		}
+		if len(bytes.Trim(last, "0123456789")) > 0 || len(last) > 3 || width > 0 && len(last) != width {
+			return false
+		}
+		width, seen[string(last)] = len(last), true
+		zeros = zeros || last[0] == '0'
+	}
+	return (width == 1 || zeros) && len(seen) > 2 // two may be a switch, or a mode
+}
+
+// pointed tells rows with a decimal point in some number.
+func (d *dialect) pointed(lines []line) bool {
+	return slices.ContainsFunc(lines, func(l line) bool {
 		return slices.ContainsFunc(l.cells, func(c []byte) bool {
 			return bytes.IndexByte(c, '.') >= 0 && d.classOf(c) == numbers
 		})

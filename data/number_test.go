@@ -104,7 +104,7 @@ func TestScaled(t *testing.T) {
 
 func TestMissingKind(t *testing.T) {
 	for cell, want := range map[string]string{
-		"": "blank", "  ": "blank", "OPEN": "OPEN", "open": "OPEN", "----": "----", "#N/A": "#N/A", "[OL]": "OL", "nan": "NAN",
+		"": "blank", "  ": "blank", "OPEN": "OPEN", "open": "OPEN", "----": "----", "---": "---", "#N/A": "#N/A", "[OL]": "OL", "nan": "NAN",
 		"Sensor Break": "SENSOR BREAK", "warm up": `text "warm up"`, strings.Repeat("x", 100): "other text",
 	} {
 		if got, _ := missingKind([]byte(cell)); got != want {
