@@ -1,6 +1,8 @@
 package main
 
 import (
+	"bytes"
+	"io"
 	"os"
 	"path/filepath"
 	"regexp"
@@ -59,6 +61,26 @@ func refuseLog(output string) error {
 	}
 	return usageErrorf("%s exists and is a log by its name, which the result would replace; write to another name, such as %s",
 		output, bareName(output)+".json")
+}
+
+// footerSize is how much of the end of a Parquet file surely holds the names
+// of the columns of a table of runs.
+const footerSize = 1 << 20
+
+// holdsRuns tells a table of runs that validate wrote from a log in Parquet,
+// by columns that no log has.
+func holdsRuns(path string) bool {
+	f, err := os.Open(path)
+	if err != nil {
+		return false
+	}
+	defer f.Close()
+	info, err := f.Stat()
+	if err != nil || !info.Mode().IsRegular() {
+		return false
+	}
+	end, err := io.ReadAll(io.NewSectionReader(f, max(0, info.Size()-footerSize), footerSize))
+	return err == nil && bytes.Contains(end, []byte("sha256")) && bytes.Contains(end, []byte("probability"))
 }
 
 // bareName takes the endings off the name of a log, that of its packing too.

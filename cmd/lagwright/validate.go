@@ -108,10 +108,10 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, args []str
 	return replayVerdict(replay)
 }
 
-// refuseOverwriting spares inputs and logs; only this command writes Parquet,
-// over an older table if need be.
+// refuseOverwriting spares inputs and logs. An older table of runs has the
+// ending of a log, and may be written again.
 func (o *validateOptions) refuseOverwriting(c *console, inputs []string) error {
-	if isTable(c.output) {
+	if isTable(c.output) && holdsRuns(c.output) {
 		return refuseInputs(inputs, c.output, o.plot.path)
 	}
 	return c.refuseOverwriting(inputs, c.output, o.plot.path)
