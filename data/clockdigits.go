@@ -71,6 +71,9 @@ func markDigits(d *dialect, o *Options) (width clockDigits, notes []Note, err er
 		}
 		w, sure := d.findClockDigits(i)
 		switch {
+		case w == 0 && d.couldBeMilliseconds(i):
+			return 0, nil, fmt.Errorf("column %q (%s) beside a date could be a number of milliseconds or of seconds: say --time-col %q with --time-format ms or with --time-format seconds",
+				c.label, strings.Join(c.sample[:min(3, len(c.sample))], ", "), c.label)
 		case w == 0:
 			continue
 		case !sure:
@@ -81,6 +84,25 @@ func markDigits(d *dialect, o *Options) (width clockDigits, notes []Note, err er
 		return w, []Note{{Code: "clock-digits", Text: fmt.Sprintf("column %q was read as hours, minutes and seconds without colons; --time-col with --time-format seconds says otherwise", c.label)}}, nil
 	}
 	return 0, nil, nil
+}
+
+// couldBeMilliseconds tells whole numbers in the steps of a logger that counts
+// milliseconds: by 50 or a multiple of it that is no whole number of minutes.
+func (d *dialect) couldBeMilliseconds(i int) bool {
+	if !d.holds(i, 0, math.MaxInt32, true) {
+		return false
+	}
+	var v []float64
+	for _, l := range d.rows {
+		if len(l.cells) < d.fields {
+			continue
+		}
+		if x, ok := d.format.parse(l.cells[i]); ok {
+			v = append(v, x)
+		}
+	}
+	step := typicalStep(v)
+	return step >= 50 && math.Mod(step, 50) == 0 && math.Mod(step, 60) != 0
 }
 
 func namesTime(c column) bool {

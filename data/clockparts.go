@@ -81,63 +81,11 @@ func findSpreadClock(d *dialect, o *Options) (*spreadClock, []Note) {
 	for i, c := range d.cols {
 		f.look(i, c)
 	}
-	if !f.clock() || o.TimeCol != "" && !strings.EqualFold(o.TimeCol, d.cols[f.s.main].label) {
-		return nil, nil
+	f.settleMM()
+	if !f.clock() || !f.goesOn() || o.TimeCol != "" && !strings.EqualFold(o.TimeCol, d.cols[f.s.main].label) {
+		return nil, f.notes
 	}
-	return &f.s, []Note{f.s.mark(d)}
-}
-
-// findFractionOfStamps looks for the milliseconds beside stamps of whole
-// seconds: added to them the rows must go one way.
-func findFractionOfStamps(d *dialect) (*spreadClock, []Note) {
-	at, unit, ok := findFraction(d)
-	if !ok {
-		return nil, nil
-	}
-	s := &spreadClock{stamp: ownStamp, main: at}
-	s.parts = []clockPart{{[]int{at}, scaledCell(at, unit, d.format.point)}}
-	for i, c := range d.cols {
-		if c.class != stamps || !c.timed {
-			continue
-		}
-		if !s.sharpens(d, i) {
-			return nil, nil
-		}
-		d.cols[at].part = somePart
-		return s, []Note{{Code: "clock-columns", Text: fmt.Sprintf("column %q was added to the clock as its fraction of a second; --time-format with the layout of the clock alone leaves it out",
-			d.cols[at].label)}}
-	}
-	return nil, nil
-}
-
-// sharpens tells that a column of stamps shows whole seconds only, and that
-// rows in which it stands still go on by the parts added to it.
-func (s *spreadClock) sharpens(d *dialect, stamp int) bool {
-	var k clock
-	var last, before int64
-	up, down := 0, 0
-	for n, l := range d.rows {
-		if stamp >= len(l.cells) || s.main >= len(l.cells) {
-			continue
-		}
-		t, _, ok := k.parseCalendar(l.cells[stamp])
-		if !ok {
-			t, ok = parseTimeOfDay(l.cells[stamp], true)
-		}
-		sub, is := s.parts[0].read(l.cells)
-		switch {
-		case !ok || !is:
-			continue
-		case t%int64(nsSecond) != 0:
-			return false
-		case n > 0 && t == last && sub > before:
-			up++
-		case n > 0 && t == last && sub < before:
-			down++
-		}
-		last, before = t, sub
-	}
-	return up == 0 || down == 0
+	return &f.s, append(f.notes, f.s.mark(d))
 }
 
 // mark marks the columns as parts of the clock and says so.
@@ -182,8 +130,11 @@ type partFinder struct {
 	d     *dialect
 	point byte
 	found map[string]int // column by the name of the part
+	mm    []int          // columns called so: months or minutes
 	twice bool
 	s     spreadClock
+	probe []clockPart // those of the parts that must go on from row to row
+	notes []Note
 }
 
 func (f *partFinder) look(i int, c column) {
@@ -195,6 +146,8 @@ func (f *partFinder) look(i int, c column) {
 	case c.class != numbers:
 	case isTime && c.name == c.label:
 		f.put(c.unit, i)
+	case name == "mm":
+		f.mm = append(f.mm, i)
 	default:
 		for part, names := range partNames {
 			if slices.Contains(names, name) {
@@ -208,6 +161,52 @@ func (f *partFinder) put(part string, i int) {
 	_, seen := f.found[part]
 	f.twice = f.twice || seen
 	f.found[part] = i
+}
+
+// settleMM tells months from minutes where both are written mm: months stand
+// beside a year or a day and in front of the hours.
+func (f *partFinder) settleMM() {
+	for _, i := range f.mm {
+		hour, hours := f.found["h"]
+		_, years := f.found["year"]
+		_, days := f.found["d"]
+		_, months := f.found["month"]
+		if (years || days) && !months && !(hours && hour < i) {
+			f.put("month", i)
+		} else if hours {
+			f.put("min", i)
+		}
+	}
+}
+
+// goesOn tells that the parts go one way from row to row, but for a midnight
+// and the like: minima and seconds of something else stand still or leap.
+func (f *partFinder) goesOn() bool {
+	up, down := 0, 0
+	t := f.d.instants(f.probe)
+	for i := 1; i < len(t); i++ {
+		if t[i] > t[i-1] {
+			up++
+		} else if t[i] < t[i-1] {
+			down++
+		}
+	}
+	return up+down > 0 && (4*down <= up || 4*up <= down)
+}
+
+// instants are the sums of some parts in the rows of the sample that have them
+// all.
+func (d *dialect) instants(parts []clockPart) (t []int64) {
+	s := spreadClock{stamp: noStamp, parts: parts}
+	for _, l := range d.rows {
+		if len(l.cells) < d.fields {
+			continue
+		}
+		if ns, _, ok := s.add(0, noTime, true, l.cells); ok {
+			t = append(t, ns)
+		}
+	}
+	return t
 }
 
 // has tells that a part is there and holds whole numbers in a range.
@@ -257,11 +256,15 @@ func (f *partFinder) clock() bool {
 		if minuteSecond {
 			f.scaled("s", nsSecond)
 		}
+		f.probe = f.s.parts
 	case secOK && f.d.holds(sec, 0, 86401, false) && f.addDays(sec, nsSecond):
 		f.scaled("s", nsSecond)
+		f.probe = f.s.parts[1:]
 	case !secOK && f.has("ms", 0, 86401e3) && f.addDays(f.found["ms"], 1e6):
 		f.scaled("ms", 1e6)
+		f.probe = f.s.parts[1:]
 	case f.spreadsheetDay():
+		f.probe = f.s.parts
 		return true
 	default:
 		return f.secondsAndFraction()
@@ -273,10 +276,15 @@ func (f *partFinder) clock() bool {
 }
 
 // spreadsheetDay adds the day number of a spreadsheet and the fraction of the
-// day that stands in another column.
+// day that stands in another column. A fraction that begins at zero, or goes on
+// by seven minutes a row, is more likely a time in seconds.
 func (f *partFinder) spreadsheetDay() bool {
 	at, ok := f.found["fraction"]
 	if !ok || !f.has("date", 36526, 73050) || !f.d.holds(at, 0, 1-1e-9, false) || f.d.holds(at, 0, 1, true) {
+		return false
+	}
+	t := f.d.instants([]clockPart{{[]int{at}, scaledCell(at, nsDay, f.point)}})
+	if len(t) == 0 || t[0] == 0 || !(typicalStep(inSeconds(t)) < fastestApart*86400) {
 		return false
 	}
 	f.scaled("date", nsDay)
@@ -286,6 +294,18 @@ func (f *partFinder) spreadsheetDay() bool {
 	return true
 }
 
+// fastestApart is the least step between rows, in seconds, that numbers without
+// a unit are taken for; as a fraction of a day it is seven minutes.
+const fastestApart = 0.005
+
+func inSeconds(t []int64) []float64 {
+	v := make([]float64, len(t))
+	for i, ns := range t {
+		v[i] = float64(ns) / float64(nsSecond)
+	}
+	return v
+}
+
 // secondsAndFraction adds the parts of a second to seconds since 1970, or since
 // the logger's zero.
 func (f *partFinder) secondsAndFraction() bool {
@@ -293,7 +313,11 @@ func (f *partFinder) secondsAndFraction() bool {
 	if at, is := f.found["epoch"]; is && f.has("epoch", epochLow/1e9, epochHigh/1e9) {
 		sec, ok = at, !ok
 	}
-	if !ok || !f.addFraction(sec) {
+	if !ok {
+		return false
+	}
+	f.probe = []clockPart{{[]int{sec}, scaledCell(sec, nsSecond, f.point)}}
+	if !f.addFraction(sec) {
 		return false
 	}
 	f.s.stamp, f.s.main = ownStamp, sec
@@ -412,39 +436,4 @@ func (f *partFinder) dayOf(at int) func(cells [][]byte) (ns int64, ok bool) {
 		ns, alt, ok := k.parse(cells[at], f.point)
 		return ns, ok && (alt == noTime || alt == ns)
 	}
-}
-
-// addFraction adds the column of milliseconds (or finer) that stands beside a
-// column whose seconds are whole.
-func (f *partFinder) addFraction(sec int) bool {
-	if !f.d.holds(sec, math.Inf(-1), math.Inf(1), true) {
-		return false
-	}
-	i, unit, ok := findFraction(f.d)
-	if ok {
-		f.s.main = i
-		f.s.parts = append(f.s.parts, clockPart{[]int{i}, scaledCell(i, unit, f.point)})
-	}
-	return ok
-}
-
-// findFraction finds the one column of parts of a second: named so and nothing
-// else, whole numbers below one second.
-func findFraction(d *dialect) (at int, unit uint64, ok bool) {
-	for i, c := range d.cols {
-		if c.class != numbers {
-			continue
-		}
-		name := strings.ToLower(strings.TrimSpace(c.label))
-		for _, sub := range []string{"ms", "us", "ns"} {
-			u := timeUnits[sub]
-			if (slices.Contains(partNames[sub], name) || c.unit == sub && c.name == c.label) && d.holds(i, 0, float64(nsSecond/u-1), true) {
-				if ok {
-					return 0, 0, false
-				}
-				at, unit, ok = i, u, true
-			}
-		}
-	}
-	return at, unit, ok
 }

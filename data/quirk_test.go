@@ -293,7 +293,7 @@ var quirks = []quirk{
 	{file: "clock-date-hour-minute-second.csv", start: "2026-01-25T23:59:58Z", notes: []string{"clock-columns", local}},
 	{file: "milliseconds-beside-time.csv", start: "2026-01-25T10:00:00.1Z", notes: []string{"clock-columns", local}},
 	{file: "nanoseconds-beside-epoch.csv", start: "2026-01-25T10:00:00.000000007Z", notes: []string{"clock-columns"}},
-	{file: "milliseconds-of-loop.csv", start: "2026-01-25T10:00:00Z", notes: []string{"clock-spread", local}},
+	{file: "milliseconds-of-loop.csv", start: "2026-01-25T10:00:00Z", notes: []string{"clock-fraction", "clock-spread", local}},
 	{file: "day-number-and-fraction.csv", within: 1e-7, start: "2026-01-25T10:00:00.000000029Z", notes: []string{"clock-columns", local}}, // twelve decimals of a day
 	{file: "stamp-brackets.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
 	{file: "stamp-dashes.csv", start: "2026-01-25T10:00:00Z", notes: []string{local}},
