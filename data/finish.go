@@ -149,6 +149,19 @@ func (r *rows) reverse() {
 	slices.Reverse(r.auto)
 }
 
+// copyRow moves row i to place n.
+func (r *rows) copyRow(n, i int) {
+	r.t[n] = r.t[i]
+	for _, v := range r.v {
+		if v != nil {
+			v[n] = v[i]
+		}
+	}
+	if r.auto != nil {
+		r.auto[n] = r.auto[i]
+	}
+}
+
 // keep drops the rows for which ok is false, in place.
 func (r *rows) keep(ok func(i int) bool) {
 	n := 0
@@ -156,15 +169,7 @@ func (r *rows) keep(ok func(i int) bool) {
 		if !ok(i) {
 			continue
 		}
-		r.t[n] = r.t[i]
-		for _, v := range r.v {
-			if v != nil {
-				v[n] = v[i]
-			}
-		}
-		if r.auto != nil {
-			r.auto[n] = r.auto[i]
-		}
+		r.copyRow(n, i)
 		n++
 	}
 	r.truncate(0, n)

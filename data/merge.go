@@ -83,16 +83,3 @@ func (r *rows) complement(i, j int) bool {
 	}
 	return true
 }
-
-// copyRow moves row i to place n.
-func (r *rows) copyRow(n, i int) {
-	r.t[n] = r.t[i]
-	for _, v := range r.v {
-		if v != nil {
-			v[n] = v[i]
-		}
-	}
-	if r.auto != nil {
-		r.auto[n] = r.auto[i]
-	}
-}
