@@ -179,19 +179,26 @@ func (f *partFinder) settleMM() {
 	}
 }
 
-// goesOn tells that the parts go one way from row to row, but for a midnight
-// and the like: minima and seconds of something else stand still or leap.
+// goesOn tells that the parts go one way from row to row, but for a midnight (a
+// full hour, where there are no hours) and a restart here and there: minima and
+// seconds of something else stand still or fall again and again.
 func (f *partFinder) goesOn() bool {
+	lap := halfDayLong
+	if _, hours := f.found["h"]; !hours && f.s.kind == elapsed {
+		lap = int64(nsHour / 2)
+	}
 	up, down := 0, 0
 	t := f.d.instants(f.probe)
 	for i := 1; i < len(t); i++ {
-		if t[i] > t[i-1] {
+		switch dt := t[i] - t[i-1]; {
+		case dt > 0 && dt < lap:
 			up++
-		} else if t[i] < t[i-1] {
+		case dt < 0 && dt > -lap:
 			down++
 		}
 	}
-	return up+down > 0 && (4*down <= up || 4*up <= down)
+	up, down = max(up, down), min(up, down)
+	return up > 0 && (20*down <= up || down == 1 && 4*down <= up)
 }
 
 // instants are the sums of some parts in the rows of the sample that have them
@@ -277,14 +284,14 @@ func (f *partFinder) clock() bool {
 
 // spreadsheetDay adds the day number of a spreadsheet and the fraction of the
 // day that stands in another column. A fraction that begins at zero, or goes on
-// by seven minutes a row, is more likely a time in seconds.
+// by a thousandth or more a row, is more likely a time in seconds.
 func (f *partFinder) spreadsheetDay() bool {
 	at, ok := f.found["fraction"]
 	if !ok || !f.has("date", 36526, 73050) || !f.d.holds(at, 0, 1-1e-9, false) || f.d.holds(at, 0, 1, true) {
 		return false
 	}
 	t := f.d.instants([]clockPart{{[]int{at}, scaledCell(at, nsDay, f.point)}})
-	if len(t) == 0 || t[0] == 0 || !(typicalStep(inSeconds(t)) < fastestApart*86400) {
+	if len(t) == 0 || t[0] == 0 || !(typicalStep(inSeconds(t)) < fastest*86400) {
 		return false
 	}
 	f.scaled("date", nsDay)
@@ -293,10 +300,6 @@ func (f *partFinder) spreadsheetDay() bool {
 	f.s.parts = append(f.s.parts, clockPart{[]int{at}, func([][]byte) (int64, bool) { return -spreadsheetEpoch, true }})
 	return true
 }
-
-// fastestApart is the least step between rows, in seconds, that numbers without
-// a unit are taken for; as a fraction of a day it is seven minutes.
-const fastestApart = 0.005
 
 func inSeconds(t []int64) []float64 {
 	v := make([]float64, len(t))
