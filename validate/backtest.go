@@ -37,15 +37,18 @@ func (p *plan) backTest(ctx context.Context, run *data.Run, all []*course) (*Bac
 	if err != nil {
 		return nil, err
 	}
-	controller, manual := true, len(courses) == 0
+	manual, controller := len(courses) == 0, true
 	if manual {
 		courses = all
 		b.Differs = append(b.Differs, "not in automatic with a logged setpoint: only the plant is tested, not the controller")
-	} else if controller, err = p.testController(b, courses); err != nil {
-		return nil, err
+	} else {
+		if controller, err = p.testController(b, run, courses); err != nil {
+			return nil, err
+		}
+		b.Controller = &controller
 	}
-	plant := p.testPlant(b, courses, manual)
-	b.Reproduced = controller && plant
+	b.Plant = p.testPlant(b, courses, manual)
+	b.Reproduced = controller && b.Plant
 	if !b.Reproduced {
 		b.Differs = append(b.Differs, p.saturation(courses)...)
 		b.Differs = append(b.Differs, p.outside(run)...)
@@ -89,13 +92,18 @@ func (p *plan) automatic(run *data.Run) ([]*course, error) {
 }
 
 // inputTolerance is how near the replayed input must come to the logged one,
-// as a fraction of the input's own range in the run (common practice, no source).
+// as a fraction of the input's own range in the run (common practice, no
+// source), besides what the noise of the readings explains.
 const inputTolerance = 0.02
 
 // testController replays the run under the logged gains on the best-fit plant
 // and compares the inputs.
-func (p *plan) testController(b *BackTest, courses []*course) (ok bool, err error) {
-	m, err := p.compareInputs(p.logged, courses)
+func (p *plan) testController(b *BackTest, run *data.Run, courses []*course) (ok bool, err error) {
+	asked, err := p.nearness(run, courses)
+	if err != nil {
+		return false, err
+	}
+	m, err := p.compareInputs(p.logged, courses, asked)
 	if err != nil {
 		return false, err
 	}
@@ -104,26 +112,30 @@ func (p *plan) testController(b *BackTest, courses []*course) (ok bool, err erro
 	if m.near >= p.options.Confidence {
 		return true, nil
 	}
-	text := fmt.Sprintf("the logged gains give another input than was logged: off by up to %s, within %s on %.0f%% of the rows",
-		quantity(m.worst, p.units.input), quantity(m.tolerance, p.units.input), 100*m.near)
-	hint, err := p.controllerHint(courses)
+	within := "within " + quantity(asked.row, p.units.input)
+	if m.inMean {
+		within = fmt.Sprintf("in the mean of %d rows within %s", asked.rows, quantity(asked.mean, p.units.input))
+	}
+	text := fmt.Sprintf("the logged gains give another input than was logged: off by up to %s, %s on %.0f%% of the rows",
+		quantity(m.worst, p.units.input), within, 100*m.near)
+	hint, err := p.controllerHint(courses, asked)
 	b.Differs = append(b.Differs, text+"; "+hint)
 	return false, err
 }
 
 // A match says how near the inputs of a replay come to those logged.
 type match struct {
-	near       float64 // share of the rows within the tolerance
-	tolerance  float64
+	near       float64 // share of the rows near enough, the lesser of rows and means
+	inMean     bool    // it is that of the means
 	worst      float64 // largest difference of the inputs
 	rmsU, rmsY float64 // replayed less logged
 }
 
 // compareInputs closes the loop under the gains on the best-fit plant.
-func (p *plan) compareInputs(gains *tune.Gains, courses []*course) (match, error) {
+func (p *plan) compareInputs(gains *tune.Gains, courses []*course, asked nearness) (match, error) {
 	r := newRunner(p.law, gains, []ident.Plant{p.best})
-	m := match{tolerance: inputTolerance * inputRange(courses), worst: math.NaN()}
-	var rows, near int
+	m := match{worst: math.NaN()}
+	var rows, near, means, nearMeans int
 	var sumU, sumY float64
 	for _, c := range courses {
 		y, u := r.buffers(len(c.t))
@@ -134,67 +146,52 @@ func (p *plan) compareInputs(gains *tune.Gains, courses []*course) (match, error
 		if err := r.replay(c, 0, y, u); err != nil {
 			return m, err
 		}
+		off := make([]float64, len(u))
 		for i := range u {
 			du := u[i] - c.u[i]
+			off[i] = du
 			rows++
-			if math.Abs(du) <= m.tolerance+1e-9 {
+			if math.Abs(du) <= asked.row+1e-9 {
 				near++
 			}
 			m.worst = larger(m.worst, math.Abs(du))
 			sumU += du * du
 			sumY += (y[i] - c.y[i]) * (y[i] - c.y[i])
 		}
+		if asked.rows > 0 {
+			for _, v := range runningMeans(off, asked.rows) {
+				means++
+				if math.Abs(v) <= asked.mean+1e-9 {
+					nearMeans++
+				}
+			}
+		}
 	}
 	m.near = float64(near) / float64(rows)
+	if share := float64(nearMeans) / float64(means); means > 0 && share < m.near {
+		m.near, m.inMean = share, true
+	}
 	m.rmsU, m.rmsY = math.Sqrt(sumU/float64(rows)), math.Sqrt(sumY/float64(rows))
 	return m, nil
 }
 
 // controllerHint says what to look at when the controller is not reproduced.
-func (p *plan) controllerHint(courses []*course) (string, error) {
-	if hint, err := p.limitHint(courses); hint != "" || err != nil {
+func (p *plan) controllerHint(courses []*course, asked nearness) (string, error) {
+	if hint, err := p.limitHint(courses, asked); hint != "" || err != nil {
 		return hint, err
 	}
-	var product, square float64
-	for _, c := range courses {
-		follow, asked, err := p.moveRatio(c)
-		if err != nil {
-			return "", err
-		}
-		product, square = product+follow, square+asked
+	ratio, se, err := p.moveRatio(courses)
+	if err != nil {
+		return "", err
 	}
-	if ratio := product / square; square > 0 && math.Abs(ratio-1) > 0.1 {
+	known := se < ratioKnown*math.Abs(ratio)
+	if known && math.Abs(ratio-1) > 0.1+2*se {
 		return fmt.Sprintf("the logged moves of the input are about %s times those the gains ask for: look at the gain and its units", number(ratio)), nil
 	}
+	if !known {
+		return "look at gain, integral time, scan time, limits and moves by hand", nil
+	}
 	return "look at integral time, scan time, limits and moves by hand", nil
-}
-
-// moveRatio runs the controller on the logged temperature and returns the
-// sums Σ(logged move × asked move) and Σ(asked move²) of the input.
-func (p *plan) moveRatio(c *course) (product, square float64, err error) {
-	if !c.even || c.lattice.scan > 1 {
-		return 0, 0, nil // moves row by row are not the controller's
-	}
-	_, control, err := newRunner(p.law, p.logged, []ident.Plant{p.best}).ready(c, 0)
-	if err != nil {
-		return 0, 0, err
-	}
-	begin, err := p.beginningOf(p.logged, c)
-	if err != nil {
-		return 0, 0, err
-	}
-	begin.start(control, c)
-	last := c.u[0]
-	for i := 1; i < len(c.t); i++ {
-		u := last
-		for k := (i-1)*c.lattice.row + 1; k <= i*c.lattice.row; k++ {
-			u = control.Next(c.r[k/c.lattice.row], c.log[k])
-		}
-		product += (u - last) * (c.u[i] - c.u[i-1])
-		square += (u - last) * (u - last)
-		last = u
-	}
-	return product, square, nil
 }
 
 func inputRange(courses []*course) float64 {

@@ -89,13 +89,15 @@ type BandMetrics struct {
 // gains then in force. Differs says what differs; in a run that is reproduced,
 // what a reader should know of the test.
 type BackTest struct {
-	ShareInside float64  `json:"share_inside"`       // of the temperatures inside the band of plants and noise, given the logged input
-	Stated      float64  `json:"stated"`             // the band's level
-	InputInside *float64 `json:"input_share_inside"` // of the rows at which the replayed input meets the logged one; null in manual
-	InputRMSE   *float64 `json:"input_rmse"`         // replayed less logged input
-	TempRMSE    *float64 `json:"temperature_rmse"`   // replayed less logged temperature
-	Reproduced  bool     `json:"reproduced"`
-	Differs     []string `json:"differs"` // what differs, in words
+	ShareInside float64  `json:"share_inside"`          // of the temperatures inside the band of plants and noise, given the logged input
+	Stated      float64  `json:"stated"`                // the band's level
+	InputInside *float64 `json:"input_share_inside"`    // of the rows at which the replayed input meets the logged one; null in manual
+	InputRMSE   *float64 `json:"input_rmse"`            // replayed less logged input
+	TempRMSE    *float64 `json:"temperature_rmse"`      // replayed less logged temperature
+	Reproduced  bool     `json:"reproduced"`            // by plant and controller
+	Plant       bool     `json:"plant_reproduced"`      // nothing in the temperature speaks against the plant
+	Controller  *bool    `json:"controller_reproduced"` // the logged gains give the logged input; null in manual
+	Differs     []string `json:"differs"`               // what differs, in words
 }
 
 // Trace holds the series of one replay for figures, thinned without losing

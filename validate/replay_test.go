@@ -80,7 +80,7 @@ func TestReplayText(t *testing.T) {
 		t.Fatal(err)
 	}
 	text := b.String()
-	for _, want := range []string{"0 of 2 judged runs meet", "1 not replayed", "do not trust", "settling", "Cautions", "not replayed: dayb.csv: no unbroken part"} {
+	for _, want := range []string{"0 of 2 judged runs meet", "1 not replayed", "the logged gains are not reproduced on 2 runs", "the logged gains are not reproduced here, the temperature speaks for the model", "settling", "Cautions", "not replayed: dayb.csv: no unbroken part"} {
 		if !strings.Contains(text, want) {
 			t.Errorf("no %q in\n%s", want, text)
 		}

@@ -52,8 +52,8 @@ func atEdge(courses []*course, sign, edge float64) (share float64, longest int) 
 // with a limit there the loop comes nearer to what was logged. It is looked for
 // first, since at a limit the input moves less than the gains ask for, which
 // otherwise would look like another gain.
-func (p *plan) limitHint(courses []*course) (string, error) {
-	stated, err := p.compareInputs(p.logged, courses)
+func (p *plan) limitHint(courses []*course, asked nearness) (string, error) {
+	stated, err := p.compareInputs(p.logged, courses, asked)
 	if err != nil {
 		return "", err
 	}
@@ -77,7 +77,7 @@ func (p *plan) limitHint(courses []*course) (string, error) {
 	if len(found) == 0 {
 		return "", nil
 	}
-	limited, err := p.compareInputs(&gains, courses)
+	limited, err := p.compareInputs(&gains, courses, asked)
 	if err != nil || limited.near < p.options.Confidence && limited.rmsU > stated.rmsU/2 {
 		return "", err
 	}

@@ -49,8 +49,12 @@ func (r *Replay) writeHead(b *strings.Builder) {
 		fmt.Fprintf(b, "; %d not replayed", s.Failed)
 	}
 	b.WriteString("\n")
-	if s.Distrusted > 0 {
-		fmt.Fprintf(b, "do not trust this model on %s: replayed under the gains then in force it does not give the log\n", counted(s.Distrusted, "run"))
+	plant, controller := r.notReproduced()
+	if plant > 0 {
+		fmt.Fprintf(b, "do not trust this model on %s: driven by the logged input it does not give the logged temperature\n", counted(plant, "run"))
+	}
+	if controller > 0 {
+		fmt.Fprintf(b, "the logged gains are not reproduced on %s, where the temperature speaks for the model: look at those gains\n", counted(controller, "run"))
 	}
 	b.WriteString("\n")
 }
@@ -149,7 +153,7 @@ func (r *RunReplay) writeNotes(b *strings.Builder) {
 		note("%s", reason)
 	}
 	if t := r.BackTest; t != nil && !t.Reproduced {
-		note("do not trust this model here: %s", strings.Join(t.Differs, "; "))
+		note("%s: %s", t.Failure(), strings.Join(t.Differs, "; "))
 	} else if t != nil && len(t.Differs) > 0 {
 		note("back-test: %s", strings.Join(t.Differs, "; "))
 	}
@@ -173,11 +177,40 @@ func (r *RunReplay) title() string {
 	return r.File + ", run " + r.Name
 }
 
+// notReproduced counts the runs that speak against the model, and those that
+// speak against the logged gains alone.
+func (r *Replay) notReproduced() (plant, controller int) {
+	for i := range r.Runs {
+		switch t := r.Runs[i].BackTest; {
+		case t == nil || t.Reproduced:
+		case t.Plant:
+			controller++
+		default:
+			plant++
+		}
+	}
+	return plant, controller
+}
+
+// Failure says which side of the model and its loop a run speaks against; ""
+// where it is reproduced. A replay needs the model alone.
+func (t *BackTest) Failure() string {
+	switch {
+	case t.Reproduced:
+		return ""
+	case t.Plant:
+		return "the logged gains are not reproduced here, the temperature speaks for the model"
+	case t.Controller != nil && !*t.Controller:
+		return "do not trust this model here, nor the logged gains"
+	}
+	return "do not trust this model here"
+}
+
 // verdict is the word of the table, with the share of plausible plants on
 // which the run meets the requirement.
 func (r *RunReplay) verdict() string {
 	switch {
-	case r.BackTest != nil && !r.BackTest.Reproduced:
+	case r.BackTest != nil && !r.BackTest.Reproduced && !r.BackTest.Plant:
 		return "do not trust"
 	case !r.Judged:
 		return "not judged"

@@ -73,7 +73,7 @@ func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *
 	case !g.Meets:
 		return "These gains do not meet the requirement", &item{"bad", "They do not meet the requirement."}
 	case r != nil && !reproduced(r):
-		return "These gains are not proven on past runs", &item{"bad", "They meet the requirement on the plausible plants, but the model does not reproduce every run logged under known gains."}
+		return "These gains are not proven on past runs", &item{"bad", "They meet the requirement on the plausible plants, but " + unproven(r) + "."}
 	case r != nil && r.Summary.Judged > 0 && !r.Summary.Meets:
 		return "These gains do not hold on every past run", &item{"bad", "They meet the requirement on the plausible plants, but not on every replayed run."}
 	}
@@ -88,6 +88,17 @@ func reproduced(r *validate.Replay) bool {
 		}
 	}
 	return true
+}
+
+// unproven names the side that past runs speak against: the model, which every
+// replay rests on, or only the gains said to be in force then.
+func unproven(r *validate.Replay) string {
+	for i := range r.Runs {
+		if t := r.Runs[i].BackTest; t != nil && !t.Reproduced && !t.Plant {
+			return "the model does not give the temperature of every run logged under known gains"
+		}
+	}
+	return "the gains said to be in force do not give the logged input of every run; the temperatures speak for the model"
 }
 
 func sharePhrase(g *tune.Gains) string {
@@ -146,7 +157,7 @@ func replayAnswer(b *Bundle) answer {
 		a.Verdict = &item{"good", "The requirement holds on every run that can be judged."}
 	case r.Summary.Meets:
 		a.Headline = "These gains are not proven on past runs"
-		a.Verdict = &item{"bad", "The model does not reproduce every run logged under known gains."}
+		a.Verdict = &item{"bad", sentenceCase(unproven(r)) + "."}
 	default:
 		a.Headline = "These gains would not have met the requirement"
 		a.Verdict = &item{"bad", "The requirement does not hold on every run."}

@@ -53,17 +53,36 @@ func backTests(r *validate.Replay) []item {
 			out = append(out, item{"warn", fmt.Sprintf("%s: nothing speaks against it; %s.", runName(run), strings.Join(t.Differs, "; "))})
 			continue
 		}
-		inside := fmt.Sprintf("%s of the samples lie inside the %s band", format.Percent(t.ShareInside), format.Percent(t.Stated))
 		if t.Reproduced {
-			out = append(out, item{"good", fmt.Sprintf("%s: yes, %s.", runName(run), inside)})
+			out = append(out, item{"good", fmt.Sprintf("%s: yes, %s.", runName(run), insideBand(t))})
 			continue
 		}
-		out = append(out, item{"bad", fmt.Sprintf("%s: no, only %s. Do not believe its replay.", runName(run), inside)})
+		out = append(out, item{"bad", fmt.Sprintf("%s: no. %s", runName(run), strings.Join(sides(t), " "))})
 		for _, d := range t.Differs {
 			out = append(out, item{"bad", d})
 		}
 	}
 	return out
+}
+
+func insideBand(t *validate.BackTest) string {
+	return fmt.Sprintf("%s of the samples lie inside the %s band", format.Percent(t.ShareInside), format.Percent(t.Stated))
+}
+
+// sides says of each side that was tested whether the run speaks against it.
+func sides(t *validate.BackTest) []string {
+	temperature := fmt.Sprintf("Temperature side: it fails, %s. Do not believe this replay.", insideBand(t))
+	if t.Plant {
+		temperature = fmt.Sprintf("Temperature side: nothing speaks against the model, %s.", insideBand(t))
+	}
+	if t.Controller == nil || t.InputInside == nil {
+		return []string{temperature}
+	}
+	input := fmt.Sprintf("the input that the logged gains give meets the logged one on %s of the rows", format.Percent(*t.InputInside))
+	if *t.Controller {
+		return []string{temperature, "Controller side: it passes, " + input + "."}
+	}
+	return []string{temperature, "Controller side: it fails, " + input + "; look at the gains said to be in force."}
 }
 
 // A replayColumn is a figure of the table of runs.
