@@ -171,7 +171,7 @@ func replayWords(r *validate.RunReplay, unit string) string {
 		words += ": misses the requirement"
 	}
 	if b := r.BackTest; b != nil && !b.Reproduced {
-		words += "; not reproduced under the logged gains, do not trust the model here"
+		words += "; " + b.Failure()
 	}
 	k := kelvins(unit)
 	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string, beside ...string) {

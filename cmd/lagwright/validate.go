@@ -41,8 +41,9 @@ plant with that disturbance. Logs are files, folders and globs. A log that
 cannot be replayed is listed and does not stop the others.
 
 With --logged-gains each run is first replayed under the gains it was made
-with; one that is not reproduced says: do not trust this model here. A run may
-begin in the middle of a move: its controller starts as the log shows it.
+with; one that is not reproduced names the side that failed: do not trust this
+model here, or the logged gains are not reproduced. A run may begin in the
+middle of a move: what is left of that move is told, not judged.
 Gains are a file, or written out with their units: kc=0.4V/K,ti=12s and, where
 they differ from the defaults of a gains file, td, filter, form, weight, scan,
 min, max, rate, resolution; for P control kc and bias.
