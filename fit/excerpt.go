@@ -40,21 +40,19 @@ func (r *record) choosePlace() {
 	if len(r.input.At) <= blockGrowth || !r.survey(0, 3*r.step).excerpt() {
 		return
 	}
-	u := r.inputAtRows()
-	sum, square := make([]float64, len(u)+1), make([]float64, len(u)+1)
-	for k, v := range u {
-		v -= u[0]
-		sum[k+1], square[k+1] = sum[k]+v, square[k]+v*v
-	}
-	moves := func(lo int) float64 { // Σ(u - mean)² from row lo on
-		hi := lo + r.most
-		s := sum[hi] - sum[lo]
-		return square[hi] - square[lo] - s*s/float64(r.most)
+	const quarters = 4
+	sums := r.inputSums(r.most / quarters)
+	moves := func(i int) float64 { // Σ(u - mean)² over the quarters from i on
+		var all inputSum
+		for _, q := range sums[i : i+quarters] {
+			all.u, all.square = all.u+q.u, all.square+q.square
+		}
+		return all.square - all.u*all.u/float64(r.most)
 	}
 	best, most := 0, 1.2*moves(0) // the beginning needs no run-in
-	for lo := r.most / 4; lo+r.most <= len(u); lo += r.most / 4 {
-		if m := moves(lo); m > most {
-			best, most = lo, m
+	for i := 1; i+quarters <= len(sums); i++ {
+		if m := moves(i); m > most {
+			best, most = i*(r.most/quarters), m
 		}
 	}
 	first := sort.SearchFloat64s(r.input.At, r.t[best]) // change in the scope
@@ -75,16 +73,22 @@ func (r *record) changesInScope() []float64 {
 	return at[max(lo-1, 0):min(hi+1, len(at))]
 }
 
-// inputAtRows is the input at every row with a temperature.
-func (r *record) inputAtRows() []float64 {
-	out := make([]float64, len(r.t))
-	u, next := r.input.Before, 0
-	for k, t := range r.t {
+// inputSum is Σu and Σu² over some rows, u counted from the first input.
+type inputSum struct{ u, square float64 }
+
+// inputSums are those of every n rows with a temperature; what is left at the end is
+// left out.
+func (r *record) inputSums(n int) []inputSum {
+	out := make([]inputSum, len(r.t)/n)
+	u, next := 0.0, 0
+	for k, t := range r.t[:len(out)*n] {
 		for next < len(r.input.At) && r.input.At[next] <= t {
-			u = r.input.Value[next]
+			u = r.input.Value[next] - r.input.Before
 			next++
 		}
-		out[k] = u
+		q := &out[k/n]
+		q.u += u
+		q.square += u * u
 	}
 	return out
 }
