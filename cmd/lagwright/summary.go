@@ -191,7 +191,11 @@ func replayWords(r *validate.RunReplay, unit string) string {
 	if s := r.WithNoise.Settling; s != nil {
 		noisy = append(noisy, "with noise "+format.Amount(*s, "s", 3))
 	}
-	compare("settles in", func(m validate.RunMetrics) *float64 { return m.Settling }, "s", noisy...)
+	settles := "settles in"
+	if !r.Judged {
+		settles = "a step of the setpoint would settle in"
+	}
+	compare(settles, func(m validate.RunMetrics) *float64 { return m.Settling }, "s", noisy...)
 	compare("largest deviation", func(m validate.RunMetrics) *float64 { return m.Deviation }, k)
 	compare("error area", func(m validate.RunMetrics) *float64 { return m.IAE }, k+"*s")
 	compare("peak", func(m validate.RunMetrics) *float64 { return m.PeakTemp }, unit)
