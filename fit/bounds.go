@@ -3,6 +3,7 @@ package fit
 import (
 	"math"
 	"math/rand/v2"
+	"slices"
 )
 
 // estimate is a parameter with its bounds; NaN where there is none.
@@ -68,9 +69,12 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	b.reference, b.nodes = here.cov, nodes
 	cov := pooled(b.members)
 
-	if f.regular() {
-		b.fromEveryRow(here, cov, level)
-		return b, nil
+	// Of a log of which only an excerpt is in use, every row gives the widths where the
+	// linearised model serves.
+	regular := f.regular()
+	shares := slices.Repeat([]float64{1}, e.nl+2)
+	if regular {
+		shares = b.narrower(here)
 	}
 	q := &profiler{e: e, best: f.p, s2: f.s2()}
 	n := e.nl + 2
@@ -79,7 +83,9 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	b.cov = columns(n, n)
 	for i := range n {
 		v := &b.est[i]
-		v.value = q.value(i)
+		if v.value = q.value(i); regular {
+			v.value = f.full.value(i)
+		}
 		if (i == 0 && e.gainFix) || (i > 0 && e.held[i-1]) {
 			v.fixed, v.se, v.low, v.high = true, 0, v.value, v.value
 			continue
@@ -87,12 +93,12 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 		g := f.direction(i)
 		v.se = math.NaN()
 		if c := cov[g][g]; c > 0 && f.alone(i) {
-			v.se = math.Sqrt(c)
+			v.se = math.Sqrt(c) * shares[i]
 		}
 		lo, hi := b.quantiles(here, g, level)
-		scale := math.Sqrt(here.cov[g][g])
+		scale := math.Sqrt(here.cov[g][g]) * shares[i]
 		lowEnd, highEnd := b.reach(i, v.value)
-		if s.refuted {
+		if s.refuted || regular {
 			v.low, v.high = inside(v.value-lo*scale, lowEnd, highEnd), inside(v.value+hi*scale, lowEnd, highEnd)
 			continue
 		}
@@ -102,13 +108,15 @@ func (s *study) tryBound(f *fitted, level float64, rng *rand.Rand) (*bounded, *p
 	}
 	for i := range n {
 		for j := range n {
-			b.cov[i][j] = cov[f.direction(i)][f.direction(j)]
+			b.cov[i][j] = cov[f.direction(i)][f.direction(j)] * shares[i] * shares[j]
 		}
 	}
-	b.lin = f.linear(b, level)
-	if f.full != nil && q.found == nil {
-		b.around(f.full, here, cov, level)
+	if f.full == nil {
+		b.lin = f.linear(b, level)
+		return b, q.found
 	}
+	b.moveTo(f.full)
+	b.linearFromEveryRow(here, cov, level)
 	return b, q.found
 }
 

@@ -433,7 +433,7 @@ func (out *outcome) choose() {
 			continue
 		}
 		w := math.Exp(-0.5 * (m.aicc - low))
-		if m.full != nil && !m.regular() && out.anyRegular() {
+		if m.irregular() && out.anyRegular() {
 			continue // an excerpt would scatter its plants too widely
 		}
 		if w > 0.02 {
@@ -471,7 +471,7 @@ func (out *outcome) widen() {
 	}
 	g := &sel.est[0]
 	for _, m := range out.models {
-		if m.full != nil && !m.regular() {
+		if m.irregular() {
 			continue // its interval is that of an excerpt
 		}
 		if m == sel || m.st.Integrating() || m.aicc > low+4 || m.est[0].value*g.value < 0 {

@@ -127,24 +127,14 @@ func (f *fitted) regular() bool {
 	return true
 }
 
+// irregular reports whether f is known from every row and yet keeps the intervals of
+// its excerpt, which are wider: where a parameter presses against its bound or another,
+// every row may say more than the linearised model does.
+func (f *fitted) irregular() bool { return f.full != nil && !f.regular() }
+
 // anyRegular reports whether one of the models is.
 func (out *outcome) anyRegular() bool {
 	return slices.ContainsFunc(out.models, func(m *bounded) bool { return m.regular() })
-}
-
-// around takes the values of the optimum on every row and keeps the intervals that the
-// excerpt gives, which are wider: where a parameter presses against its bound or
-// another, every row may say more than this.
-func (b *bounded) around(full *polished, here member, cov [][]float64, level float64) {
-	b.fine = full
-	for i := range b.est {
-		v := &b.est[i]
-		if v.value = full.gain; i > 0 {
-			v.value = full.eta[i-1]
-		}
-		v.low, v.high = math.Min(v.low, v.value), math.Max(v.high, v.value) // NaN, an open end, stays
-	}
-	b.linearFromEveryRow(here, cov, level)
 }
 
 // explained is the model on record i.
@@ -153,45 +143,17 @@ func (p *polished) explained(st ident.Structure, i int) explained {
 	return explained{st, p.gain, p.eta[:n], p.eta[n], p.beta[i]}
 }
 
-// fromEveryRow sets values and intervals from the optimum on every row: the quantiles
-// of the noise mixture, in standard errors of the excerpt at the shapes in force, times
-// the standard errors of every row.
-func (b *bounded) fromEveryRow(here member, cov [][]float64, level float64) {
-	n := b.e.nl + 2
-	b.fine = b.full
-	b.est, b.trails, b.cov = make([]estimate, n), make([][][2]float64, n), columns(n, n)
-	narrower := make([]float64, n) // standard error of every row over that of the excerpt
-	for i := range n {
+// narrower are the standard errors of every row over those of the excerpt, at the
+// noise shapes in force, of gain, lags and dead time.
+func (b *bounded) narrower(here member) []float64 {
+	out := make([]float64, b.e.nl+2)
+	for i := range out {
 		g := b.direction(i)
 		if c := here.cov[g][g]; c > 0 {
-			narrower[i] = math.Min(math.Sqrt(b.s2()*b.full.cov[g][g]/c), 1)
+			out[i] = math.Min(math.Sqrt(b.s2()*b.full.cov[g][g]/c), 1)
 		}
 	}
-	for i := range n {
-		v := &b.est[i]
-		g := b.direction(i)
-		if v.value = b.full.gain; i > 0 {
-			v.value = b.full.eta[i-1]
-		}
-		if (i == 0 && b.e.gainFix) || (i > 0 && b.e.held[i-1]) {
-			v.fixed, v.se, v.low, v.high = true, 0, v.value, v.value
-			continue
-		}
-		v.se = math.NaN()
-		if c := cov[g][g]; c > 0 && b.alone(i) {
-			v.se = math.Sqrt(c) * narrower[i]
-		}
-		lo, hi := b.quantiles(here, g, level)
-		scale := math.Sqrt(here.cov[g][g]) * narrower[i]
-		lowEnd, highEnd := b.reach(i, v.value)
-		v.low, v.high = inside(v.value-lo*scale, lowEnd, highEnd), inside(v.value+hi*scale, lowEnd, highEnd)
-	}
-	for i := range n {
-		for j := range n {
-			b.cov[i][j] = cov[b.direction(i)][b.direction(j)] * narrower[i] * narrower[j]
-		}
-	}
-	b.linearFromEveryRow(here, cov, level)
+	return out
 }
 
 // linearFromEveryRow sets baselines and drifts, widened by the noise mixture as the

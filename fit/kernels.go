@@ -3,8 +3,6 @@ package fit
 import (
 	"math"
 	"slices"
-
-	"gonum.org/v1/gonum/stat/distuv"
 )
 
 const (
@@ -34,7 +32,7 @@ const (
 // picture of the posterior drawn by the places that it is known at.
 type kernels struct {
 	q       *posterior
-	centres [][]float64 // free parameters
+	centres [][]float64 // eta
 	root    [][]float64 // of the covariance of a kernel
 	seen    [][]float64 // the centres, in units of root
 	logdet  float64     // of root
@@ -134,12 +132,8 @@ func (q *posterior) around(pool proposals, wider float64) *kernels {
 		tempered.weight[i] = math.Log(s)
 	}
 	for _, c := range tempered.drawn(kernelCentres, q.rng.Float64()) {
-		x := make([]float64, d)
-		for i, j := range q.free {
-			x[i] = c.p.eta[j]
-		}
-		k.centres = append(k.centres, x)
-		k.seen = append(k.seen, k.units(slices.Clone(x)))
+		k.centres = append(k.centres, c.p.eta)
+		k.seen = append(k.seen, k.units(c.p.eta))
 	}
 	return k
 }
@@ -182,11 +176,13 @@ func (q *posterior) covariance(pool proposals, shares []float64) [][]float64 {
 	return ch.l
 }
 
-// units turns free parameters into multiples of the kernels' width, in place.
-func (k *kernels) units(x []float64) []float64 {
-	for i := range x {
-		for j := range i {
-			x[i] -= k.root[i][j] * x[j]
+// units are the free parameters of an eta in multiples of the kernels' width.
+func (k *kernels) units(eta []float64) []float64 {
+	x := make([]float64, len(k.q.free))
+	for i, j := range k.q.free {
+		x[i] = eta[j]
+		for l := range i {
+			x[i] -= k.root[i][l] * x[l]
 		}
 		x[i] /= k.root[i][i]
 	}
@@ -195,22 +191,10 @@ func (k *kernels) units(x []float64) []float64 {
 
 // propose draws n proposals, from every kernel as many.
 func (k *kernels) propose(n int) proposals {
-	q, d := k.q, len(k.q.free)
+	q := k.q
 	var out proposals
-	x := make([]float64, d)
 	for i := range n {
-		centre := k.centres[i%len(k.centres)]
-		eta := append([]float64(nil), q.b.p.eta...)
-		scale := math.Sqrt(proposalFreedom / distuv.ChiSquared{K: proposalFreedom, Src: q.rng}.Rand())
-		for a := range x {
-			x[a] = q.rng.NormFloat64() * scale
-		}
-		for a, j := range q.free {
-			eta[j] = centre[a]
-			for l := range a + 1 {
-				eta[j] += k.root[a][l] * x[l]
-			}
-		}
+		eta, _ := q.scattered(k.centres[i%len(k.centres)], k.root)
 		w := q.at(eta)
 		weight := w.density
 		if weight > math.Inf(-1) {
@@ -223,12 +207,7 @@ func (k *kernels) propose(n int) proposals {
 
 // density is the logarithm of that of the proposals at eta, up to a constant.
 func (k *kernels) density(eta []float64) float64 {
-	d := len(k.q.free)
-	x := make([]float64, d)
-	for i, j := range k.q.free {
-		x[i] = eta[j]
-	}
-	k.units(x)
+	d, x := len(k.q.free), k.units(eta)
 	sum := 0.0
 	for _, c := range k.seen {
 		r2 := 0.0

@@ -93,18 +93,11 @@ func (b *bounded) refine(exact bool) {
 		return
 	}
 	b.activate()
-	b.fine = b.polish()
-	if b.fine == nil {
+	at := b.polish()
+	if at == nil {
 		return
 	}
-	b.est[0].value = b.fine.gain
-	for i, v := range b.fine.eta {
-		b.est[i+1].value = v
-	}
-	for i := range b.est { // a move of a small part of the interval; NaN, an open end, stays
-		v := &b.est[i]
-		v.low, v.high = math.Min(v.low, v.value), math.Max(v.high, v.value)
-	}
+	b.moveTo(at)
 	if exact {
 		for i := range b.est {
 			for j := range b.est {
@@ -123,6 +116,25 @@ func (b *bounded) refine(exact bool) {
 			lin[j].high += shift
 		}
 	}
+}
+
+// moveTo takes the values of p, and widens the intervals where they would not hold
+// them; NaN, an open end, stays.
+func (b *bounded) moveTo(p *polished) {
+	b.fine = p
+	for i := range b.est {
+		v := &b.est[i]
+		v.value = p.value(i)
+		v.low, v.high = math.Min(v.low, v.value), math.Max(v.high, v.value)
+	}
+}
+
+// value is that of parameter i (0 gain, 1… eta).
+func (p *polished) value(i int) float64 {
+	if i == 0 {
+		return p.gain
+	}
+	return p.eta[i-1]
 }
 
 // unknowns is the number of parameters polished: gain, eta with coinciding

@@ -30,26 +30,31 @@ type proposals struct {
 // propose draws n proposals.
 func (q *posterior) propose(n int) proposals {
 	var out proposals
-	d := len(q.free)
-	z := make([]float64, d)
 	for range n {
-		eta := append([]float64(nil), q.b.p.eta...)
-		scale := math.Sqrt(proposalFreedom / distuv.ChiSquared{K: proposalFreedom, Src: q.rng}.Rand())
-		r2 := 0.0
-		for k := range z {
-			z[k] = q.rng.NormFloat64() * scale
-			r2 += z[k] * z[k]
-		}
-		for k, j := range q.free {
-			for l := range k + 1 {
-				eta[j] += q.root[k][l] * z[l]
-			}
-		}
+		eta, r2 := q.scattered(q.b.p.eta, q.root)
 		w := q.at(eta)
 		out.at = append(out.at, w)
-		out.weight = append(out.weight, w.density+0.5*(proposalFreedom+float64(d))*math.Log1p(r2/proposalFreedom))
+		out.weight = append(out.weight, w.density+0.5*(proposalFreedom+float64(len(q.free)))*math.Log1p(r2/proposalFreedom))
 	}
 	return out
+}
+
+// scattered draws an eta from a Student's t around another, root that of its
+// covariance among the free parameters, and returns its squared distance too.
+func (q *posterior) scattered(around []float64, root [][]float64) (eta []float64, r2 float64) {
+	eta = append([]float64(nil), around...)
+	scale := math.Sqrt(proposalFreedom / distuv.ChiSquared{K: proposalFreedom, Src: q.rng}.Rand())
+	z := make([]float64, len(q.free))
+	for k := range z {
+		z[k] = q.rng.NormFloat64() * scale
+		r2 += z[k] * z[k]
+	}
+	for k, j := range q.free {
+		for l := range k + 1 {
+			eta[j] += root[k][l] * z[l]
+		}
+	}
+	return eta, r2
 }
 
 // reject takes count places by rejection, proposing more as needed; ok is false

@@ -197,9 +197,6 @@ func (s *Simulator) runRung(o *outputs, lo, hi, k int) {
 // leapRows carries the state over a number of rows of 2^k samples, a power of two
 // of them at a time.
 func (s *Simulator) leapRows(count, k int) {
-	for ; k >= longestRung && count > 0; count-- {
-		s.chain.advance(s.powers.get(&s.chain, k), &s.x)
-	}
 	for ; count > 0; count >>= 1 {
 		if count&1 == 1 {
 			s.chain.advance(s.powers.get(&s.chain, k), &s.x)
