@@ -29,20 +29,24 @@ func (c *console) refuseOverwriting(inputs []string, outputs ...string) error {
 // refuseInputs stops an output from taking the place of an input: a file, or
 // one of those that a folder or a pattern stands for.
 func refuseInputs(inputs []string, outputs ...string) error {
+	var there []os.FileInfo // outputs that would replace a file
 	for _, output := range outputs {
-		out, err := os.Stat(output)
-		if err != nil || !out.Mode().IsRegular() {
-			continue // not there yet, or not replaced
+		if out, err := os.Stat(output); err == nil && out.Mode().IsRegular() {
+			there = append(there, out)
 		}
-		for _, path := range inputs {
-			files, err := data.Expand([]string{path})
-			if err != nil { // said by who reads it
-				continue
-			}
-			for _, file := range files {
-				if in, err := os.Stat(file); err == nil && os.SameFile(in, out) {
-					return usageErrorf("%s is both input and output; write to another name", file)
-				}
+	}
+	if len(there) == 0 {
+		return nil
+	}
+	for _, path := range inputs {
+		files, err := data.Expand([]string{path})
+		if err != nil { // said by who reads it
+			continue
+		}
+		for _, file := range files {
+			in, err := os.Stat(file)
+			if err == nil && slices.ContainsFunc(there, func(out os.FileInfo) bool { return os.SameFile(in, out) }) {
+				return usageErrorf("%s is both input and output; write to another name", file)
 			}
 		}
 	}
