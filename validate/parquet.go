@@ -52,7 +52,12 @@ func tableColumns() []tableColumn {
 	return append(out,
 		tableColumn{"with_noise_settling_s", parquet.Types.Double, false, func(r *RunReplay) any { return pointed(r.WithNoise.Settling) }},
 		tableColumn{"with_noise_overshoot_percent", parquet.Types.Double, false, func(r *RunReplay) any { return pointed(r.WithNoise.Overshoot) }},
-		tableColumn{"reproduced", parquet.Types.Boolean, false, reproduced},
+		tableColumn{"hand_over_away", parquet.Types.Double, false, handedOver(func(h *HandOver) *float64 { return &h.Away })},
+		tableColumn{"hand_over_settling_s", parquet.Types.Double, false, handedOver(func(h *HandOver) *float64 { return h.Settling })},
+		tableColumn{"hand_over_logged_settling_s", parquet.Types.Double, false, handedOver(func(h *HandOver) *float64 { return h.Logged })},
+		tableColumn{"reproduced", parquet.Types.Boolean, false, tested(func(t *BackTest) any { return t.Reproduced })},
+		tableColumn{"plant_reproduced", parquet.Types.Boolean, false, tested(func(t *BackTest) any { return t.Plant })},
+		tableColumn{"controller_reproduced", parquet.Types.Boolean, false, tested(controllerReproduced)},
 		tableColumn{"reasons", parquet.Types.ByteArray, false, func(r *RunReplay) any { return orNull(strings.Join(r.Reasons, "; ")) }},
 		tableColumn{"warnings", parquet.Types.ByteArray, false, func(r *RunReplay) any { return orNull(strings.Join(r.Warnings, "; ")) }},
 	)
@@ -86,11 +91,32 @@ func pointed(x *float64) any {
 	return *x
 }
 
-func reproduced(r *RunReplay) any {
-	if r.BackTest == nil {
+// handedOver is a figure of the hand-over, null where a run has none.
+func handedOver(figure func(*HandOver) *float64) func(*RunReplay) any {
+	return func(r *RunReplay) any {
+		if r.HandOver == nil {
+			return nil
+		}
+		return pointed(figure(r.HandOver))
+	}
+}
+
+// tested is an answer of the back-test, null where none was made.
+func tested(answer func(*BackTest) any) func(*RunReplay) any {
+	return func(r *RunReplay) any {
+		if r.BackTest == nil {
+			return nil
+		}
+		return answer(r.BackTest)
+	}
+}
+
+// controllerReproduced is null for a run in manual.
+func controllerReproduced(t *BackTest) any {
+	if t.Controller == nil {
 		return nil
 	}
-	return r.BackTest.Reproduced
+	return *t.Controller
 }
 
 func startTime(r *RunReplay) any {

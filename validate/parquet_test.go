@@ -3,6 +3,7 @@ package validate
 import (
 	"bytes"
 	"math"
+	"slices"
 	"testing"
 
 	"github.com/apache/arrow/go/v17/parquet"
@@ -13,8 +14,9 @@ import (
 func TestParquetTable(t *testing.T) {
 	start := "2026-03-14T08:15:00+01:00"
 	r := &Replay{Runs: []RunReplay{
-		{File: "a.csv", SHA256: "aa", Rows: 10, Start: &start, Judged: true, Meets: true, Probability: 1, Proposed: BandMetrics{Median: RunMetrics{Settling: ptr(41.5)}}},
-		{File: "b.csv", Name: "7", SHA256: "bb", Rows: 20, Judged: true, Probability: 0.25, Reasons: []string{"slow", "hot"}, BackTest: &BackTest{}},
+		{File: "a.csv", SHA256: "aa", Rows: 10, Start: &start, Judged: true, Meets: true, Probability: 1, Proposed: BandMetrics{Median: RunMetrics{Settling: ptr(41.5)}},
+			HandOver: &HandOver{Away: -3.25, Settling: ptr(18.5)}},
+		{File: "b.csv", Name: "7", SHA256: "bb", Rows: 20, Judged: true, Probability: 0.25, Reasons: []string{"slow", "hot"}, BackTest: &BackTest{Plant: true, Controller: new(bool)}},
 	}}
 	var b bytes.Buffer
 	if err := r.WriteParquet(&b); err != nil {
@@ -53,11 +55,24 @@ func TestParquetTable(t *testing.T) {
 		}
 		return out
 	}
-	if p := numbers("probability"); p[0] != 1 || p[1] != 0.25 {
-		t.Errorf("probability %v", p)
+	none := math.NaN()
+	for name, want := range map[string][]float64{
+		"probability":                 {1, 0.25},
+		"proposed_settling_s":         {41.5, none},
+		"hand_over_away":              {-3.25, none},
+		"hand_over_settling_s":        {18.5, none},
+		"hand_over_logged_settling_s": {none, none},
+	} {
+		if got := numbers(name); !slices.EqualFunc(got, want, func(a, b float64) bool { return a == b || math.IsNaN(a) && math.IsNaN(b) }) {
+			t.Errorf("%s: %v, want %v", name, got, want)
+		}
 	}
-	if s := numbers("proposed_settling_s"); s[0] != 41.5 || !math.IsNaN(s[1]) {
-		t.Errorf("settling %v", s)
+	for name, want := range map[string]bool{"reproduced": false, "plant_reproduced": true, "controller_reproduced": false} {
+		values, def := make([]bool, 2), make([]int16, 2)
+		n, k, err := column(name).(*file.BooleanColumnChunkReader).ReadBatch(2, values, def, nil)
+		if err != nil || n != 2 || k != 1 || def[0] != 0 || values[0] != want {
+			t.Errorf("%s: %v present %v, want null and %v (%v)", name, values, def, want, err)
+		}
 	}
 	texts, def := make([]parquet.ByteArray, 2), make([]int16, 2)
 	if _, _, err := column("reasons").(*file.ByteArrayColumnChunkReader).ReadBatch(2, texts, def, nil); err != nil || def[0] != 0 || string(texts[0]) != "slow; hot" {
