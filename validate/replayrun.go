@@ -226,7 +226,7 @@ func (p *plan) conclude(out *RunReplay, run *data.Run, e *ensemble) {
 		out.Reasons = append(out.Reasons, "not judged: "+unfollowed)
 	}
 	out.Judged = len(open) < len(asked) || p.loop.fails
-	share, reasons := judge(asked, e.figures, p.loop.misses, p.options.Confidence)
+	share, reasons := judge(asked, e.figures, p.loop.misses, p.assurance())
 	out.Reasons = append(append(out.Reasons, p.loop.reasons...), reasons...)
 	if len(open) > 0 {
 		out.Reasons = append(out.Reasons, fmt.Sprintf("not judged on this run: %s", list(open)))
@@ -234,6 +234,9 @@ func (p *plan) conclude(out *RunReplay, run *data.Run, e *ensemble) {
 	if out.Judged || len(p.asked) == 0 {
 		out.Probability = share
 		out.Meets = p.enough(share) && !p.loop.fails
+	}
+	if short := p.assurance() - share; out.Judged && out.Meets && short > 1e-9 {
+		out.Reasons = append(out.Reasons, fmt.Sprintf("%s are asked: short by no more than twice the sampling error of %d plants, which passes", percent(p.assurance()), len(p.plants)))
 	}
 }
 

@@ -56,8 +56,9 @@ func (d demand) fails(f figures) bool {
 
 // judge returns the share of plants on which a run meets every demand, and
 // for each demand that fails on some plant a sentence with its numbers. A
-// plant whose loop misses what is asked of it meets nothing.
-func judge(ds []demand, all []figures, misses []bool, level float64) (share float64, reasons []string) {
+// plant whose loop misses what is asked of it meets nothing. assurance is the
+// share that is asked.
+func judge(ds []demand, all []figures, misses []bool, assurance float64) (share float64, reasons []string) {
 	failing := slices.Clone(misses)
 	for k, f := range all {
 		failing[k] = failing[k] || f.moves == runaway
@@ -71,7 +72,7 @@ func judge(ds []demand, all []figures, misses []bool, level float64) (share floa
 			}
 		}
 		if count > 0 {
-			reasons = append(reasons, d.reason(all, count, level))
+			reasons = append(reasons, d.reason(all, count, assurance))
 		}
 	}
 	meeting := 0
@@ -83,19 +84,30 @@ func judge(ds []demand, all []figures, misses []bool, level float64) (share floa
 	return float64(meeting) / float64(len(all)), reasons
 }
 
-// reason says what fails, by how much and on how many plants.
-func (d demand) reason(all []figures, count int, level float64) string {
-	s := spreadOf(valuesOf(all, d.figure), level)
-	return fmt.Sprintf("%s %s where at most %s is asked: fails on %d of %d plausible plants",
-		d.name, spreadText(s, d.unit), quantity(d.limit, d.unit), count, len(all))
+// reason says what fails, by how much and on how many plants. Beside the median
+// stands what the assured share of the plants stay below: the figure that the
+// verdict goes by. The ends of the band go further.
+func (d demand) reason(all []figures, count int, assurance float64) string {
+	values := valuesOf(all, d.figure)
+	slices.Sort(values)
+	return fmt.Sprintf("%s where at most %s is asked: fails on %d of %d plausible plants",
+		d.reached(values, assurance), quantity(d.limit, d.unit), count, len(all))
 }
 
-// spreadText writes a median with its band, "62 s (48 to 80 s)".
-func spreadText(s spread, unit string) string {
-	if s.low == s.high {
-		return quantity(s.median, unit)
+// reached writes the figure over sorted values: "settling 62 s, up to 80 s on
+// 95 % of the plausible plants,".
+func (d demand) reached(sorted []float64, assurance float64) string {
+	median, most := quantile(sorted, 0.5), quantile(sorted, assurance)
+	text := d.name + " " + quantity(median, d.unit)
+	finite, _ := slices.BinarySearch(sorted, math.Inf(1))
+	switch upTo := quantity(most, d.unit); {
+	case upTo == quantity(median, d.unit):
+		return text
+	case math.IsInf(most, 1):
+		return fmt.Sprintf("%s, %s on %d of the plausible plants,", text, upTo, len(sorted)-finite)
+	default:
+		return fmt.Sprintf("%s, up to %s on %s of the plausible plants,", text, upTo, percent(assurance))
 	}
-	return fmt.Sprintf("%s (%s to %s)", quantity(s.median, unit), number(s.low), quantity(s.high, unit))
 }
 
 // quantity writes a number and its unit.
