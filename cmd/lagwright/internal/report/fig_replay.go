@@ -22,35 +22,46 @@ func ReplayFigure(r *validate.RunReplay, g *tune.Gains, q tune.Requirement) *Fig
 		trace{name: "setpoint", x: t.T, y: gaps(t.Setpoint), ink: inkOther, dash: true, hold: true},
 		trace{name: "proposed, median", x: t.T, y: gaps(t.Median), ink: inkModel, width: 1.4},
 	}
-	if q.TempMax != nil {
-		temp.marks = append(temp.marks, rule{label: "highest allowed", at: *q.TempMax, ink: inkLimit})
-	}
+	temp.limit("highest allowed", q.TempMax, t.Low, t.High, t.Logged, t.Setpoint)
 	input := &panel{x: x, y: yAxis("Input", g.Units.Input), height: 90}
 	input.marks = []mark{
 		band{x: t.T, low: gaps(t.LowIn), high: gaps(t.HighIn), ink: inkModel, hold: true},
 		trace{name: "logged", x: t.T, y: gaps(t.LoggedIn), ink: inkLogged, width: 1.2, hold: true},
 		trace{name: "proposed, median", x: t.T, y: gaps(t.MedianIn), ink: inkModel, width: 1.4, hold: true},
 	}
-	for _, l := range []*float64{g.Limits.Min, g.Limits.Max} {
-		if l != nil && nearby(*l, t.LowIn, t.HighIn, t.LoggedIn) {
-			input.marks = append(input.marks, rule{at: *l, ink: inkLimit, name: "output limits"})
-		}
-	}
+	input.limit("output from", g.Limits.Min, t.LowIn, t.HighIn, t.LoggedIn)
+	input.limit("output to", g.Limits.Max, t.LowIn, t.HighIn, t.LoggedIn)
 	f := &Figure{Name: "replay", panels: []*panel{temp, input}, Finding: replayFinding(r, g)}
 	f.Alt = "Line charts of temperature and input over time, logged against proposed. " + f.Finding
 	return f
 }
 
-// nearby tells whether a limit is near enough to what it limits to be drawn
-// without flattening it: within half the signals' range of them.
-func nearby(limit float64, signals ...[]*float64) bool {
+// limit draws a limit of the signals in a panel and names it with its value
+// above. Where the line would lie so far off that the axis had to flatten the
+// signals, the name alone says where it is.
+func (p *panel) limit(name string, at *float64, signals ...[]*float64) {
+	if at == nil {
+		return
+	}
+	r := rule{name: name + " " + format.Amount(*at, p.y.unit, 4), at: *at, ink: inkLimit}
+	all := rangeOfAll(signals)
+	switch grace := 0.5 * (all.y1 - all.y0); { // common practice, no source
+	case *at > all.y1+grace:
+		r.name, r.loose = r.name+", above the scale", true
+	case *at < all.y0-grace:
+		r.name, r.loose = r.name+", below the scale", true
+	}
+	p.marks = append(p.marks, r)
+}
+
+// rangeOfAll is the range of signals, times aside.
+func rangeOfAll(signals [][]*float64) box {
 	b := nowhere
 	for _, s := range signals {
 		v := gaps(s)
 		b = b.join(extentOf(v, v))
 	}
-	grace := 0.5 * (b.x1 - b.x0)
-	return limit > b.x0-grace && limit < b.x1+grace
+	return b
 }
 
 func replayTime(r *validate.RunReplay) *axis {
