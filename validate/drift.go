@@ -170,7 +170,8 @@ func (d *Drift) writeTable(b *strings.Builder) {
 }
 
 // words writes the estimate with half the width of its interval, "11.7
-// ±0.07", or the one end that its interval has.
+// ±0.07", or the one end that its interval has. Of an interval wider than the
+// value either way, ± would say nothing: its ends are written.
 func (p DriftPoint) words() string {
 	switch {
 	case p.Value == nil:
@@ -183,6 +184,9 @@ func (p DriftPoint) words() string {
 		return "≥ " + number(*p.Low)
 	}
 	half := (*p.High - *p.Low) / 2
+	if half > math.Abs(*p.Value) {
+		return number(*p.Low) + ".." + number(*p.High)
+	}
 	decimals := 0
 	if half > 0 {
 		decimals = min(max(1-int(math.Floor(math.Log10(half))), 0), 6)

@@ -350,15 +350,11 @@ func (p *plan) words(s plantShift) []string {
 	n := s.covariance.SymmetricDim()
 	card := p.cardCovariance(n)
 	say := []func(float64) string{
-		func(x float64) string {
-			return fmt.Sprintf("the gain here is about %.0f%% %s than the card's", 100*math.Abs(x), side(x, "higher", "lower"))
-		},
+		func(x float64) string { return "the gain here is " + against(x, "higher", "lower") },
 		func(x float64) string {
 			return fmt.Sprintf("the dead time here is about %s %s than the card's", quantity(math.Abs(x), "s"), side(x, "longer", "shorter"))
 		},
-		func(x float64) string {
-			return fmt.Sprintf("the lags here are about %.0f%% %s than the card's", 100*math.Abs(x), side(x, "longer", "shorter"))
-		},
+		func(x float64) string { return "the lags here are " + against(x, "longer", "shorter") },
 	}
 	var out []string
 	largest, most := 0, 0.0
@@ -375,6 +371,18 @@ func (p *plan) words(s plantShift) []string {
 		out = append(out, say[largest](s.by[largest]))
 	}
 	return out
+}
+
+// against compares with the card: in percent, or beyond that as a multiple. A
+// linear estimate of a shift may pass zero, which says no more than far less.
+func against(x float64, more, less string) string {
+	switch {
+	case x > 1:
+		return "about " + number(1+x) + " times the card's"
+	case x <= -1:
+		return "far " + less + " than the card's"
+	}
+	return fmt.Sprintf("about %.0f%% %s than the card's", 100*math.Abs(x), side(x, more, less))
 }
 
 func side(x float64, more, less string) string {

@@ -22,7 +22,7 @@ func (tr *track) text(p DriftParameter, found levels, d *Drift, tests int) strin
 		}
 		return fmt.Sprintf("%s %s %s %s", name, present(p.Slope.rises()), p.Slope.amount(tr.unit), per)
 	}
-	return fmt.Sprintf("%s: no change seen; a step halfway would show in 9 of 10 such histories from about %s on", name, tr.detectable(d, tests))
+	return fmt.Sprintf("%s: no change seen; %s", name, tr.detectable(d, tests))
 }
 
 // detectable is the size of a step in the middle of the history that the
@@ -41,10 +41,16 @@ func (tr *track) detectable(d *Drift, tests int) string {
 	}
 	z := distuv.UnitNormal.Quantile(1-d.FalseAlarm/(2*float64(tests)*float64(n-1))) + distuv.UnitNormal.Quantile(0.9)
 	size := z * math.Sqrt(1/before+1/after)
-	if tr.log {
-		return number(100*math.Expm1(size)) + "%"
+	const shows = "a step halfway would show in 9 of 10 such histories "
+	switch percent := 100 * math.Expm1(size); {
+	case !tr.log:
+		return shows + "from about " + quantity(size, tr.unit) + " on"
+	case percent <= 100:
+		return shows + "from about " + number(percent) + "% on"
+	case percent <= 900:
+		return shows + "only if it is to more than about " + number(math.Exp(size)) + " times the value"
 	}
-	return quantity(size, tr.unit)
+	return "but the runs bound it too widely to see one"
 }
 
 // rises tells the direction of a change in size.

@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"strings"
 
-	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/fit"
 )
 
@@ -21,11 +20,8 @@ func checked(c *fit.CheckReport) []item {
 			sign = "bad"
 		}
 		text := parameterName(v.Parameter) + ": " + v.Verdict
-		if v.Bound != nil && !strings.HasPrefix(v.Reason, "known to") {
-			text += fmt.Sprintf(", known to ±%s %%", format.Short(*v.Bound, 2))
-		}
-		if v.Reason != "" {
-			text += "; " + strings.TrimSuffix(v.Reason, ".")
+		if words := knownWords(v); words != "" {
+			text += "; " + words
 		}
 		text += "."
 		if len(v.Cures) > 0 {
@@ -37,6 +33,20 @@ func checked(c *fit.CheckReport) []item {
 		out = append(out, item{"warn", fmt.Sprintf("The loop was %s while this was logged: %s.", c.Loop.State, strings.TrimSuffix(c.Loop.Reason, "."))})
 	}
 	return out
+}
+
+// knownWords are the reason of a verdict. A bound beyond the value itself is told
+// in words: its percentage says nothing.
+func knownWords(v fit.Verdict) string {
+	reason := strings.TrimSuffix(v.Reason, ".")
+	if v.Bound == nil || *v.Bound <= 100 || !strings.HasPrefix(reason, "known to ±") {
+		return reason
+	}
+	words := "not known, the bound is wider than the value"
+	if _, why, ok := strings.Cut(reason, ": "); ok {
+		words += ": " + why
+	}
+	return words
 }
 
 // verdictWords answers for the log of a single check: the worst verdict.

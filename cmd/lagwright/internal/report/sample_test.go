@@ -284,9 +284,9 @@ func sampleCheck() *fit.CheckReport {
 	return &fit.CheckReport{
 		Loop: fit.Loop{State: "open", Reason: "the input does not follow the temperature"},
 		Verdict: []fit.Verdict{
-			{Parameter: "gain", Verdict: "good", Bound: ptr(1.1), Reason: "both plateaus are in the log"},
-			{Parameter: "lags", Verdict: "good", Bound: ptr(3.6)},
-			{Parameter: "dead_time", Verdict: "doubtful", Bound: ptr(6.2), Reason: "a row every 500 ms is coarse", Cures: []string{"log every 200 ms", "repeat the bump"}},
+			{Parameter: "gain", Verdict: "good", Bound: ptr(1.1), Reason: "known to ±1.1 %"},
+			{Parameter: "lags", Verdict: "good", Bound: ptr(3.6), Reason: "known to ±3.6 % of their sum"},
+			{Parameter: "dead_time", Verdict: "doubtful", Bound: ptr(6.2), Reason: "known to ±6.2 % of dead time and lags only: a row every 500 ms is coarse", Cures: []string{"log every 200 ms", "repeat the bump"}},
 		},
 	}
 }
