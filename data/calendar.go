@@ -316,26 +316,6 @@ func dateSeparator(b []byte, blank bool) (sep byte, n int) {
 	return 0, 0
 }
 
-// monthNames are the first letters that tell the months apart, in English,
-// German, French, Spanish, Italian, Dutch and Portuguese.
-var monthNames = [12][]string{
-	{"jan", "jän", "ene", "gen"}, {"feb", "fev", "fév"}, {"mar", "mär", "mrz", "maa", "mrt"}, {"apr", "avr", "abr"},
-	{"may", "mai", "mag", "mei"}, {"jun", "juin", "giu"}, {"jul", "juil", "lug"}, {"aug", "aoû", "aou", "ago"},
-	{"sep", "set"}, {"oct", "okt", "ott", "out"}, {"nov"}, {"dec", "dez", "déc", "dic"},
-}
-
-func monthByName(b []byte) int {
-	name := bytes.ToLower([]byte(decodeName(b)))
-	for m, starts := range monthNames {
-		for _, s := range starts {
-			if bytes.HasPrefix(name, []byte(s)) {
-				return m + 1
-			}
-		}
-	}
-	return 0
-}
-
 // dayStart is midnight of a date, ns since 1970-01-01; ok is false for a day
 // that is not in the calendar.
 func dayStart(y, m, d int) (ns int64, ok bool) {

@@ -45,6 +45,7 @@ type csvReader struct {
 	repeats int // header lines met again
 	nulRows int
 	word    wordAmongNumbers
+	spelled spellings
 	firstNo map[string]int // line of the first row dropped, by reason
 }
 
@@ -97,12 +98,14 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 		info.note("no-final-newline", lines.line, "the last line does not end; if the file was cut off, its last value may be wrong")
 	}
 	if c.long != nil {
+		c.spelled.say(info)
 		tables, err := c.long.tables(c, o, info)
 		if err != nil {
 			return nil, nil, fmt.Errorf("%s: %w", s.path, err)
 		}
 		return tables, info, nil
 	}
+	c.spelled.say(info)
 	c.clock.held.say(info)
 	info.clock, info.at, info.open = c.clock, c.at, c.open
 	return c.tables, info, c.refuse()
@@ -113,7 +116,11 @@ func (c *csvReader) refuse() error {
 	if err := c.tooManyDropped(); err != nil {
 		return err
 	}
-	return c.word.err(c.path)
+	rows := 0
+	for _, tb := range c.tables {
+		rows += tb.rows
+	}
+	return c.word.err(c.path, rows)
 }
 
 // planStamps looks for clocks of plain numbers that one column alone does not
@@ -399,11 +406,14 @@ func (c *csvReader) values(tb *table, r *record) {
 			}
 			if ok && (unit == "" || unit == f.unit) {
 				r.v[f.role] = v
+				c.spelled.look(cell, r.line)
+			} else if same, known := inUnit(v, unit, f.unit); ok && known {
+				r.v[f.role] = same
 			} else if f.role == roleInput || f.role == roleTemp {
 				kind, _ := missingKind(cell)
 				count(tb.counts.missing, kind, 1)
 			}
-			if f.role == roleInput && !ok {
+			if f.role == roleInput && math.IsNaN(r.v[f.role]) {
 				c.word.look(cell, r.line)
 			}
 		case roleMode:

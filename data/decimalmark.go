@@ -16,6 +16,7 @@ func findPoint(lines []line, delim byte, fields int) byte {
 			continue
 		}
 		for i, c := range l.cells {
+			c, _ = respell(c)
 			if _, stamp := compactStamp(c); stamp || looseClass(c) != numbers {
 				continue
 			}

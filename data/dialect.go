@@ -296,8 +296,12 @@ func (d *dialect) number(cell []byte) (v float64, unit string, ok bool) {
 	if v, ok = d.format.parse(cell); ok {
 		return v, "", true
 	}
-	if dec, n, ok := scanDecimal(cell, d.format.point); ok && isUnitSuffix(cell[n:]) {
-		v, ok = dec.float(cell[:n], d.format.point)
+	if plain, how := respell(cell); how != usualSpelling {
+		v, ok = d.format.parse(plain)
+		return v, "", ok
+	}
+	if n := bytes.LastIndexAny(cell, "0123456789") + 1; n > 0 && isUnitSuffix(cell[n:]) {
+		v, ok = d.format.parse(cell[:n])
 		unit, _ = canonicalUnit(decodeName(trimBlanks(cell[n:])))
 		return v, unit, ok
 	}

@@ -41,7 +41,16 @@ func isLong(cols []column, o *Options) bool {
 func tagColumns(cols []column) []int {
 	return bestNamed(cols, roleTag, func(_ int, c column) bool {
 		r, _ := roleOf(c)
-		return c.class == texts && r != roleStatus && r != roleMode && c.repeats && !c.switched && !c.units
+		return c.class == texts && r != roleStatus && r != roleMode && c.repeats && !c.switched && !c.units && !isSpoiled(c, r)
+	})
+}
+
+// isSpoiled tells a column that is called an input or a temperature and holds
+// what begins like numbers: these are no tags.
+func isSpoiled(c column, r role) bool {
+	return (r == roleInput || r == roleTemp) && slices.ContainsFunc(c.sample, func(cell string) bool {
+		cell = strings.TrimLeft(cell, "+-.,")
+		return cell != "" && cell[0] >= '0' && cell[0] <= '9'
 	})
 }
 
@@ -153,10 +162,18 @@ func (l *longReader) add(c *csvReader, run string, r *record) {
 	if len(s.sample) < 5 {
 		s.sample = append(s.sample, decodeName(bytes.Clone(cell[:min(len(cell), 30)])))
 	}
-	v, _, ok := c.d.number(cell)
+	v, unit, ok := c.d.number(cell)
+	if ok && unit != "" {
+		if same, known := inUnit(v, unit, s.unit); known {
+			v, unit = same, s.unit
+		}
+		s.units = s.units || s.unit != "" && s.unit != unit
+		s.unit = unit
+	}
 	if ok {
 		r.v[roleInput] = v
 		s.stats.add(v)
+		c.spelled.look(cell, r.line)
 	} else {
 		s.onOff.add(cell)
 		kind, _ := missingKind(cell)
@@ -238,7 +255,7 @@ func (l *longReader) columns() []column {
 		}
 		col := column{index: len(cols), label: s.tag, sample: s.sample, stepwise: s.stats.stepwise(), ascending: false}
 		col.name, col.unit = splitNameUnit(s.tag)
-		if col.unit == "" {
+		if _, known := canonicalUnit(s.unit); known || col.unit == "" { // what stands beside the value is said of it
 			col.unit = s.unit
 		}
 		col.class = numbers

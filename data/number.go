@@ -5,7 +5,6 @@ import (
 	"math"
 	"math/bits"
 	"strconv"
-	"unicode/utf8"
 )
 
 // decimal is a number as written: ±mant·10^exp. It is exact unless digits
@@ -188,7 +187,7 @@ type numberFormat struct {
 }
 
 // parse reads a whole cell as a number: plain, with thousands marks, or with
-// a typographic minus. Blanks around it do not matter.
+// a typographic minus. Blanks around it, and behind its sign, do not matter.
 func (f numberFormat) parse(cell []byte) (float64, bool) {
 	cell = trimBlanks(cell)
 	if d, n, ok := scanDecimal(cell, f.point); ok && n == len(cell) {
@@ -203,54 +202,6 @@ func (f numberFormat) parse(cell []byte) (float64, bool) {
 		return 0, false
 	}
 	return d.float(plain, f.point)
-}
-
-// withoutMarks removes thousands marks that stand where they belong, in front
-// of every group of three digits, and turns U+2212 into a hyphen. ok is false
-// when there is nothing to remove or a mark stands anywhere else.
-func (f numberFormat) withoutMarks(cell []byte) (plain []byte, ok bool) {
-	other := byte(',')
-	if f.point == ',' {
-		other = '.'
-	}
-	whole := cell
-	if i := bytes.IndexByte(cell, f.point); i >= 0 {
-		whole = cell[:i]
-	}
-	var mark rune
-	digits := 0 // since the last mark
-	for len(whole) > 0 {
-		r, n := utf8.DecodeRune(whole)
-		whole = whole[n:]
-		switch {
-		case '0' <= r && r <= '9':
-			plain = append(plain, byte(r))
-			digits++
-		case r == '-' || r == '+' || r == '−':
-			if len(plain) > 0 {
-				return nil, false
-			}
-			if r == '−' {
-				r = '-'
-			}
-			plain = append(plain, byte(r))
-		case r == rune(other) || r == ' ' || r == '\'' || r == '’' || r == '\u00a0' || r == '\u202f' || r == '\u2009':
-			late := mark != 0 && (mark != r || digits != 3)
-			if digits == 0 || digits > 3 || late {
-				return nil, false
-			}
-			mark, digits = r, 0
-		default:
-			return nil, false
-		}
-	}
-	if mark != 0 && digits != 3 {
-		return nil, false
-	}
-	if i := bytes.IndexByte(cell, f.point); i >= 0 {
-		plain = append(plain, cell[i:]...)
-	}
-	return plain, true
 }
 
 // trimBlanks removes spaces and tabs, and the no-break space, from both ends.

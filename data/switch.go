@@ -74,22 +74,46 @@ func readSwitched(c *column) Note {
 }
 
 // wordAmongNumbers keeps the first ON or OFF met in an input of numbers: held
-// over as if nothing had been recorded it would leave the drive on.
+// over as if nothing had been recorded it would leave the drive on. Text that
+// begins like a number is kept for the same reason.
 type wordAmongNumbers struct {
 	line int
 	word string
+
+	oddLine, odd int
+	oddText      string
 }
 
 func (w *wordAmongNumbers) look(cell []byte, line int) {
-	if _, is := switchOf(cell); is && w.word == "" && !bytes.EqualFold(trimBlanks(cell), []byte("OPEN")) {
-		w.line, w.word = line, decodeName(bytes.Clone(trimBlanks(cell)))
+	cell = trimBlanks(cell)
+	if _, is := switchOf(cell); is && w.word == "" && !bytes.EqualFold(cell, []byte("OPEN")) {
+		w.line, w.word = line, decodeName(bytes.Clone(cell))
+	}
+	if digits := bytes.TrimLeft(cell, "+-.,"); len(digits) > 0 && digits[0]-'0' <= 9 {
+		if _, known := knownMissing(cell); known {
+			return
+		}
+		if w.odd++; w.odd == 1 {
+			w.oddLine, w.oddText = line, decodeName(bytes.Clone(cell[:min(len(cell), longestWord)]))
+		}
 	}
 }
 
-func (w *wordAmongNumbers) err(path string) error {
-	if w.word == "" {
-		return nil
+// Inputs that cannot be read are held over as long as they are no more than so
+// many, or so large a share of the rows: cells damaged on their way.
+const (
+	damagedCells = 2
+	damagedShare = 0.01
+)
+
+func (w *wordAmongNumbers) err(path string, rows int) error {
+	switch {
+	case w.word != "":
+		return fmt.Errorf("%s:%d: the input is %q among numbers: write 0 where the drive was off, its full value where it was on, and leave the cell blank where nothing was recorded",
+			path, w.line, w.word)
+	case w.odd > damagedCells && float64(w.odd) > damagedShare*float64(rows):
+		return fmt.Errorf("%s:%d: the input is %q, which is no number as the rest of the column writes them, here and in %d more rows: export it with one decimal mark, one unit and nothing behind the number, or leave the cell blank where nothing was recorded",
+			path, w.oddLine, w.oddText, w.odd-1)
 	}
-	return fmt.Errorf("%s:%d: the input is %q among numbers: write 0 where the drive was off, its full value where it was on, and leave the cell blank where nothing was recorded",
-		path, w.line, w.word)
+	return nil
 }

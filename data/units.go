@@ -51,6 +51,25 @@ var timeUnits = map[string]uint64{
 	"ns": 1, "us": 1e3, "ms": 1e6, "s": nsSecond, "min": nsMinute, "h": nsHour, "d": nsDay,
 }
 
+// prefixed are the units that a meter changes by itself, by the thousandths of
+// the base unit that they hold.
+var prefixed = map[string]struct {
+	base       string
+	thousandth float64
+}{"mV": {"V", 1}, "V": {"V", 1e3}, "kV": {"V", 1e6}, "W": {"W", 1e3}, "kW": {"W", 1e6}}
+
+// inUnit is a value given in a unit told in another of the same quantity.
+func inUnit(v float64, from, to string) (same float64, known bool) {
+	a, b := prefixed[from], prefixed[to]
+	if a.base == "" || a.base != b.base {
+		return 0, false
+	}
+	if a.thousandth < b.thousandth { // a quotient of whole powers of ten is rounded once
+		return v / (b.thousandth / a.thousandth), true
+	}
+	return v * (a.thousandth / b.thousandth), true
+}
+
 // canonicalUnit turns a unit as written into its canonical name; known is
 // false when it is none of the units this package converts.
 func canonicalUnit(written string) (name string, known bool) {
