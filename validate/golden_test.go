@@ -42,7 +42,7 @@ func TestReplayTextGolden(t *testing.T) {
 				Proposed: BandMetrics{metrics(31, 1.2, 81, 6.1), metrics(34, 2.4, 81.4, 6.3), metrics(38, 3.9, 82, 6.6)}, Logged: metrics(74, 11, 83.5, 7.2)},
 			{File: "dryer-0302.csv", Name: "night", Judged: true, Probability: 0.42,
 				Proposed: BandMetrics{metrics(39, 1.2, 81, 6.1), metrics(46, 2.4, 81.4, 6.3), RunMetrics{Overshoot: ptr(9)}},
-				Reasons:  []string{"settling 46 s, not reached on 12 of the plausible plants, where at most 45 s is asked: fails on 116 of 200 plausible plants"},
+				Reasons:  []string{"settling 46 s (not reached on 12 plants) where at most 45 s is asked: fails on 116 of 200 plausible plants"},
 				Warnings: []string{"3 missing temperatures are bridged by straight lines (at most 3 in a row)"}},
 			{File: "dryer-0303.csv", Reasons: []string{"not judged on this run: settling and overshoot"}},
 			{File: "dryer-0304.csv", Judged: true, Meets: true, Probability: 1, BackTest: &BackTest{Stated: 0.95, ShareInside: 0.4, Differs: []string{"the gain here is about 25% lower than the card's"}}},

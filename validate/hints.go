@@ -48,7 +48,7 @@ func (tr *track) detectable(d *Drift, tests int) string {
 	case percent <= 100:
 		return shows + "from about " + number(percent) + "% on"
 	case percent <= 900:
-		return shows + "only if it is to more than about " + number(math.Exp(size)) + " times the value"
+		return shows + "only from about " + number(math.Exp(size)) + " times the value on"
 	}
 	return "but the runs bound it too widely to see one"
 }

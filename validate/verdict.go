@@ -84,30 +84,25 @@ func judge(ds []demand, all []figures, misses []bool, assurance float64) (share 
 	return float64(meeting) / float64(len(all)), reasons
 }
 
-// reason says what fails, by how much and on how many plants. Beside the median
-// stands what the assured share of the plants stay below: the figure that the
-// verdict goes by. The ends of the band go further.
+// reason says what fails, by how much and on how many plants: "settling 46 s (up
+// to 52 s on 95 % of the plants) where at most 45 s is asked: fails on …". Beside
+// the median stands what the assured share of the plants stay below, the figure
+// that the verdict goes by; the ends of the band go further.
 func (d demand) reason(all []figures, count int, assurance float64) string {
 	values := valuesOf(all, d.figure)
 	slices.Sort(values)
-	return fmt.Sprintf("%s where at most %s is asked: fails on %d of %d plausible plants",
-		d.reached(values, assurance), quantity(d.limit, d.unit), count, len(all))
-}
-
-// reached writes the figure over sorted values: "settling 62 s, up to 80 s on
-// 95 % of the plausible plants,".
-func (d demand) reached(sorted []float64, assurance float64) string {
-	median, most := quantile(sorted, 0.5), quantile(sorted, assurance)
-	text := d.name + " " + quantity(median, d.unit)
-	finite, _ := slices.BinarySearch(sorted, math.Inf(1))
+	median, most := quantity(quantile(values, 0.5), d.unit), quantile(values, assurance)
+	settled, _ := slices.BinarySearch(values, math.Inf(1))
+	spread := ""
 	switch upTo := quantity(most, d.unit); {
-	case upTo == quantity(median, d.unit):
-		return text
+	case upTo == median || count == len(all):
 	case math.IsInf(most, 1):
-		return fmt.Sprintf("%s, %s on %d of the plausible plants,", text, upTo, len(sorted)-finite)
+		spread = fmt.Sprintf(" (%s on %d plants)", upTo, len(values)-settled)
 	default:
-		return fmt.Sprintf("%s, up to %s on %s of the plausible plants,", text, upTo, percent(assurance))
+		spread = fmt.Sprintf(" (up to %s on %s of the plants)", upTo, percent(assurance))
 	}
+	return fmt.Sprintf("%s %s%s where at most %s is asked: fails on %d of %d plausible plants",
+		d.name, median, spread, quantity(d.limit, d.unit), count, len(all))
 }
 
 // quantity writes a number and its unit.

@@ -48,8 +48,8 @@ func TestReason(t *testing.T) {
 		share float64
 		want  string
 	}{
-		{"a few are slow", from(90, 95, 100), 196. / 199, "settling 45 s, up to 49.5 s on 95 % of the plausible plants, where at most 50 s is asked: fails on 3 of 199 plausible plants"},
-		{"a few never settle", from(never(20)...), 179. / 199, "settling 45 s, not reached on 20 of the plausible plants, where at most 50 s is asked: fails on 20 of 199 plausible plants"},
+		{"a few are slow", from(90, 95, 100), 196. / 199, "settling 45 s (up to 49.5 s on 95 % of the plants) where at most 50 s is asked: fails on 3 of 199 plausible plants"},
+		{"a few never settle", from(never(20)...), 179. / 199, "settling 45 s (not reached on 20 plants) where at most 50 s is asked: fails on 20 of 199 plausible plants"},
 		{"most never settle", from(never(120)...), 79. / 199, "settling not reached where at most 50 s is asked: fails on 120 of 199 plausible plants"},
 	} {
 		share, reasons := judge([]demand{settling}, c.all, make([]bool, 199), 0.95)

@@ -38,7 +38,7 @@ func TestWideBounds(t *testing.T) {
 		scatter float64 // relative standard error of each run
 		want    string
 	}{
-		{0.01, "in 9 of 10 such histories from about "}, {0.4, "only if it is to more than about "}, {2, "but the runs bound it too widely to see one"},
+		{0.01, "in 9 of 10 such histories from about "}, {0.4, "only from about "}, {2, "but the runs bound it too widely to see one"},
 	} {
 		h := &track{log: true, at: make([]int, 12)}
 		for range h.at {

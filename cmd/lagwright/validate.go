@@ -300,7 +300,7 @@ func replayVerdict(r *validate.Replay) error {
 	}
 	reason := ""
 	if len(worst.Reasons) > 0 {
-		reason = fmt.Sprintf("; %s: %s", worst.File, strings.Join(worst.Reasons, ", "))
+		reason = fmt.Sprintf("; %s: %s", worst.File, strings.Join(worst.Reasons, "; "))
 	}
 	return answerNof("the requirement is met in %d of %d runs%s", s.Meeting, s.Judged, reason)
 }
