@@ -256,7 +256,7 @@ func compactStamp(b []byte) (ns int64, ok bool) {
 	return day + tod, ok
 }
 
-// basicDate reads yyyymmdd followed by a T, a blank or nothing.
+// basicDate reads yyyymmdd followed by a T, a blank, a low line or nothing.
 func basicDate(b []byte) (y, m, d, n int) {
 	if len(b) < 8 {
 		return 0, 0, 0, 0
@@ -268,7 +268,7 @@ func basicDate(b []byte) (y, m, d, n int) {
 		}
 		v = v*10 + int(c-'0')
 	}
-	if len(b) > 8 && b[8] != 'T' && b[8] != ' ' {
+	if len(b) > 8 && b[8] != 'T' && b[8] != ' ' && b[8] != '_' {
 		return 0, 0, 0, 0
 	}
 	return v / 10000, v / 100 % 100, v % 100, 8
@@ -305,6 +305,8 @@ func dateSeparator(b []byte, blank bool) (sep byte, n int) {
 		return 0, 0
 	}
 	switch c := b[0]; {
+	case c == '.' && len(b) > 1 && b[1] == ' ': // 14. 3. 2026, 14. März 2026
+		return c, 2
 	case c == '/' || c == '.' || c == '-':
 		return c, 1
 	case blank && (c == ' ' || c == ','):

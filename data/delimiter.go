@@ -122,7 +122,7 @@ func looseClass(cell []byte) class {
 // isStamp tells that a cell is a date, a time of day, or both.
 func isStamp(cell []byte) bool {
 	var c clock
-	if _, _, ok := c.parseCalendar(cell); ok && bytes.ContainsAny(cell, "/.-: T") {
+	if _, _, ok := c.parseCalendar(cell); ok && bytes.ContainsAny(cell, "/.-: T_W") {
 		return true
 	}
 	_, ok := parseTimeOfDay(cell, false)

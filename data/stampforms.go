@@ -3,14 +3,13 @@ package data
 import (
 	"bytes"
 	"slices"
-	"time"
 )
 
 // plainStamp rewrites a stamp of a less usual form in the usual characters:
 // brackets around it, the prefix of a literal of IEC 61131-3 (DT#, from
 // memory), signs for year, month and day in place of marks, the half of the
-// day in front of the time, a word behind it, a day of the year. It returns b
-// itself when there is nothing to rewrite.
+// day in front of the time, words between and behind, a week or a day of the
+// year. It returns b itself when there is nothing to rewrite.
 func plainStamp(b []byte) []byte {
 	if n := len(b); n > 2 && (b[0] == '[' && b[n-1] == ']' || b[0] == '<' && b[n-1] == '>' || b[0] == '(' && b[n-1] == ')') {
 		b = trimBlanks(b[1 : n-1])
@@ -20,8 +19,11 @@ func plainStamp(b []byte) []byte {
 	if slices.ContainsFunc(b, func(c byte) bool { return c >= 0x80 }) {
 		b = withoutSigns(b)
 	}
-	if d, ok := fromDayOfYear(b); ok {
-		return d
+	b = withoutWords(b)
+	for _, read := range []func([]byte) ([]byte, bool){fromWeek, fromDayOfYear, fromHours} {
+		if plain, ok := read(b); ok {
+			return plain
+		}
 	}
 	return dashedTime(b)
 }
@@ -60,35 +62,16 @@ func withoutSigns(b []byte) []byte {
 	return trimBlanks(b)
 }
 
-// fromDayOfYear rewrites an ordinal date of ISO 8601, 2026-335, or 2026:335 as
-// some loggers write it, with what follows.
-func fromDayOfYear(b []byte) ([]byte, bool) {
-	if len(b) < 8 || b[4] != '-' && b[4] != ':' || len(b) > 8 && bytes.IndexByte([]byte("T :"), b[8]) < 0 {
-		return nil, false
-	}
-	year, _, n := dateField(b[:4])
-	day, _, w := dateField(b[5:8])
-	if n != 4 || w != 3 || day < 1 || day > 366 {
-		return nil, false
-	}
-	at := time.Date(year, 1, day, 0, 0, 0, 0, time.UTC)
-	if at.Year() != year {
-		return nil, false
-	}
-	out := at.AppendFormat(nil, time.DateOnly)
-	if len(b) > 9 {
-		out = append(append(out, ' '), b[9:]...)
-	}
-	return out, true
-}
-
 // dashedTime rewrites the time of day behind a date of ten characters, or of
 // eight digits, that is set apart by a dash or has dashes or points in place of
-// colons: 2026-12-01-20-20-05.250, 01/12/2026 20.20.05, 20261201-202005.
+// colons: 2026-12-01-20-20-05.250, 01/12/2026 20.20.05, 20261201-202005. Behind
+// a blank the date may be shorter: 1.12.2026 20.20.05.
 func dashedTime(b []byte) []byte {
 	n := 10
 	if _, _, _, w := basicDate(b[:min(8, len(b))]); w == 8 {
 		n = 8
+	} else if i := bytes.IndexByte(b, ' '); i == 8 || i == 9 {
+		n = i
 	}
 	if len(b) < n+5 || b[n] != '-' && !isStampGap(b[n]) {
 		return b

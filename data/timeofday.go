@@ -12,7 +12,7 @@ func parseTimeOfDay(b []byte, hourMinute bool) (ns int64, ok bool) {
 	if fields == 0 {
 		return parseElapsed(b)
 	}
-	ns, rest, ok := halfDay(ns, b[n:])
+	ns, rest, ok := halfOrLetter(ns, b[n:])
 	return ns, ok && len(rest) == 0
 }
 
@@ -72,7 +72,7 @@ func eightOfTime(b []byte) (h, m, s uint64, ok bool) {
 	return h, m, s, m <= 60 && s <= 60
 }
 
-// digitsOfTime reads hhmmss and a fraction of the second.
+// digitsOfTime reads hhmmss and a fraction of the second, or hhmmssmmm.
 func digitsOfTime(b []byte) (ns int64, n int) {
 	if len(b) < 6 {
 		return 0, 0
@@ -89,9 +89,13 @@ func digitsOfTime(b []byte) (ns int64, n int) {
 		return 0, 0
 	}
 	ns = (f[0]*3600 + f[1]*60 + f[2]) * int64(time.Second)
-	if len(b) > 7 && (b[6] == '.' || b[6] == ',') {
+	switch {
+	case len(b) > 7 && (b[6] == '.' || b[6] == ',' || b[6] == '_'):
 		frac, w := fraction(b[7:])
 		ns, n = ns+frac, 7+w
+	case len(b) == 9 && areDigits(b):
+		frac, w := fraction(b[6:])
+		ns, n = ns+frac, 6+w
 	}
 	return ns, n
 }
@@ -138,6 +142,15 @@ func halfDay(ns int64, rest []byte) (int64, []byte, bool) {
 	return ns, r, true
 }
 
+// halfOrLetter is halfDay that knows a and p as well, which by themselves, in a
+// column of their own, could mean anything.
+func halfOrLetter(ns int64, rest []byte) (int64, []byte, bool) {
+	if r := skipSpaces(rest); len(r) == 1 && (r[0]|0x20 == 'a' || r[0]|0x20 == 'p') {
+		return halfDay(ns, []byte{r[0], 'm'})
+	}
+	return halfDay(ns, rest)
+}
+
 // parseTimeAndZone reads the time of day after a date, and the zone if there
 // is one, as the time east of Greenwich.
 func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
@@ -147,7 +160,7 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 			return 0, 0, false
 		}
 	}
-	tod, rest, ok := halfDay(tod, b[n:])
+	tod, rest, ok := halfOrLetter(tod, b[n:])
 	if !ok || tod >= int64(nsDay+nsSecond) {
 		return 0, 0, false
 	}
