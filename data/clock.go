@@ -12,14 +12,19 @@ import (
 // day, since the logger's zero for elapsed time. Times are kept to the
 // nanosecond; intervals of whole nanoseconds are exact.
 type clock struct {
-	kind   clockKind
-	unit   uint64         // ns in one unit of a number
-	order  dateOrder      // of dates with slashes or dashes
-	layout string         // of --time-format, as package time writes it
-	pad    bool           // the layout is hhmmss, and numbers may lack the zeros in front
-	zone   *time.Location // zone of the last stamp that named one
-	days   dayCount       // of day numbers
-	held   *heldDate      // of calendar stamps that leave out the date; nil where all have one
+	kind     clockKind
+	unit     uint64                // ns in one unit of a number
+	order    dateOrder             // of dates with slashes or dashes
+	layout   string                // of --time-format, as package time writes it
+	pad      bool                  // the layout is hhmmss, and numbers may lack the zeros in front
+	zone     *time.Location        // zone of the last stamp that named one
+	days     dayCount              // of day numbers
+	rewrite  func(b []byte) []byte // of stamps in a form that the whole column settles, nil where none is needed: nil for a stamp of another form
+	yearless bool                  // the stamps name no year
+	yearOpen bool                  // a year of two digits could stand first as well
+	zeroTick uint64                // of a count of ticks
+
+	held *heldDate // of calendar stamps that leave out the date; nil where all have one
 
 	cached [10]byte // the date read last, as written …
 	day    int64    // … and its beginning
@@ -34,6 +39,7 @@ const (
 	elapsed     clockKind = iota // number since the logger's zero
 	epoch                        // number since 1970-01-01
 	dayNumber                    // number of a day and its fraction
+	tickNumber                   // number of steps of 100 ns
 	sexagesimal                  // hh:mm:ss.s or, from minutes on, mm:ss.s
 	hourMinute                   // hh:mm
 	calendar                     // date and time
@@ -61,7 +67,10 @@ const (
 
 // dated tells that the clock knows the date.
 func (c *clock) dated() bool {
-	return c.kind == epoch || c.kind == dayNumber || c.kind == calendar || c.kind == custom && !c.timeOfDay()
+	if c.yearless {
+		return false
+	}
+	return c.kind == epoch || c.kind == dayNumber || c.kind == tickNumber || c.kind == calendar || c.kind == custom && !c.timeOfDay()
 }
 
 // wall tells that the clock is a local clock without a zone, which may be set
@@ -81,8 +90,13 @@ func (c *clock) timeOfDay() bool {
 func (c *clock) parse(b []byte, point byte) (ns, alt int64, ok bool) {
 	b = trimBlanks(b)
 	alt = noTime
+	if c.rewrite != nil {
+		if b = c.rewrite(b); b == nil {
+			return 0, alt, false
+		}
+	}
 	switch c.kind {
-	case elapsed, epoch, dayNumber:
+	case elapsed, epoch, dayNumber, tickNumber:
 		ns, ok = c.parseNumber(b, point)
 	case sexagesimal, hourMinute:
 		ns, ok = parseTimeOfDay(b, c.kind == hourMinute)
@@ -134,6 +148,9 @@ func (c *clock) isOwnUnit(rest []byte) bool {
 // ofDecimal turns a number as written into nanoseconds without a detour
 // through a float64, whose 53 bits cannot hold a date to the nanosecond.
 func (c *clock) ofDecimal(d decimal, b []byte, point byte) (int64, bool) {
+	if c.kind == tickNumber {
+		return c.tickInstant(d)
+	}
 	if c.kind == dayNumber && c.days.zero != 0 && !d.dropped {
 		return c.days.instant(d)
 	}
@@ -160,7 +177,7 @@ func (c *clock) ofFloat(v float64) (int64, bool) {
 	if math.IsNaN(v) || math.IsInf(v, 0) {
 		return 0, false
 	}
-	if ns := v * float64(c.unit); math.Abs(ns) < 1<<50 && c.kind != dayNumber {
+	if ns := v * float64(c.unit); math.Abs(ns) < 1<<50 && c.kind != dayNumber && c.kind != tickNumber {
 		return int64(math.Round(ns)), true
 	}
 	var text [32]byte

@@ -43,7 +43,7 @@ func isClock(c []byte) bool {
 // markDigits makes stamps of the columns of numbers that are such a date, or
 // such a time of day beside a date. What could be seconds as well is an error.
 func markDigits(d *dialect, o *Options) (width clockDigits, notes []Note, err error) {
-	if o.TimeFormat != "" {
+	if _, ordered := orderOf(o.TimeFormat); o.TimeFormat != "" && !ordered {
 		return 0, nil, nil
 	}
 	dated, timed := false, false

@@ -14,20 +14,69 @@ import (
 func findClock(cells [][]byte, c column, dated bool, o *Options, point byte) (*clock, []Note, error) {
 	if o.TimeFormat != "" {
 		k, err := clockOfFormat(o.TimeFormat)
-		if err == nil {
-			k.pad = k.layout == bareTime
+		if err != nil {
+			return nil, nil, err
 		}
-		return k, nil, err
+		k.pad = k.layout == bareTime
+		if k.kind == calendar {
+			notes, err := k.findRewrite(cells, c)
+			return k, notes, err
+		}
+		return k, nil, nil
 	}
 	switch {
 	case c.class == numbers:
 		return findNumberClock(cells, c, point)
 	case c.dated || dated:
-		k, err := findCalendar(cells, c)
-		return k, nil, err
+		return findCalendar(cells, c)
 	}
 	k, err := findTimeOfDay(cells, c)
-	return k, nil, err
+	if err != nil || k.kind != sexagesimal {
+		return k, nil, err
+	}
+	notes, err := k.findPadding(cells, c)
+	return k, notes, err
+}
+
+// findRewrite settles the forms of stamps that only the whole column tells:
+// dates of bare digits, stamps without a year, milliseconds without the zeros
+// in front.
+func (k *clock) findRewrite(cells [][]byte, c column) ([]Note, error) {
+	if len(cells) == 0 {
+		return nil, nil
+	}
+	form, note, found, err := findDateDigits(cells, c.label, k.order)
+	switch {
+	case err != nil:
+		return nil, err
+	case found:
+		var room []byte
+		k.rewrite = func(b []byte) []byte {
+			plain := form.plain(room[:0], b)
+			if plain != nil {
+				room = plain
+			}
+			return plain
+		}
+		if note != nil {
+			return []Note{*note}, nil
+		}
+		return nil, nil
+	}
+	if all, _ := areYearless(cells); all {
+		k.yearless, k.rewrite = true, withYear()
+		return []Note{{Code: "year-unknown", Text: fmt.Sprintf("the stamps of column %q name no year: time counts from the first row, and the log has no date", c.label)}}, nil
+	}
+	return k.findPadding(cells, c)
+}
+
+func (k *clock) findPadding(cells [][]byte, c column) ([]Note, error) {
+	unpadded, err := findUnpadded(cells, c.label)
+	if !unpadded {
+		return nil, err
+	}
+	k.rewrite = padFraction()
+	return []Note{{Code: "clock-milliseconds", Text: fmt.Sprintf("what stands behind the seconds in column %q was read as a number of milliseconds, without the zeros in front", c.label)}}, nil
 }
 
 // findNumberClock tells elapsed time, time since 1970 and day numbers of
@@ -46,6 +95,10 @@ func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, erro
 	}
 	typical := medianOf(slices.Clone(v))
 	unit, known := timeUnits[c.unit]
+	if count, ok := findTicks(typical); ok && !known {
+		k, notes := count.clock(c.label)
+		return k, notes, nil
+	}
 	units := []uint64{unit}
 	if !known {
 		units = []uint64{nsSecond, 1e6, 1e3, 1}
@@ -130,22 +183,29 @@ func areCompact(cells [][]byte) bool {
 
 // findCalendar settles the order of day and month if the cells can: a day
 // above 12 does, and so do dots, a year in front, and months by name.
-func findCalendar(cells [][]byte, c column) (*clock, error) {
+func findCalendar(cells [][]byte, c column) (*clock, []Note, error) {
 	k := &clock{kind: calendar}
+	notes, err := k.findRewrite(cells, c)
+	if err != nil {
+		return nil, nil, err
+	}
 	for _, b := range cells {
 		k.parse(b, '.')
 	}
 	if k.dayFirst && k.monthFirst {
-		return nil, fmt.Errorf("column %q has days above 12 both in front and behind: say how to read it with --time-format", c.label)
+		return nil, nil, fmt.Errorf("column %q has days above 12 both in front and behind: say how to read it with --time-format", c.label)
 	}
-	fresh := &clock{kind: calendar}
+	fresh := &clock{kind: calendar, rewrite: k.rewrite, yearless: k.yearless}
 	if k.dayFirst {
 		fresh.order = dayMonthYear
 	}
 	if k.monthFirst {
 		fresh.order = monthDayYear
 	}
-	return fresh, nil
+	if note := fresh.compareYears(cells); note != nil {
+		notes = append(notes, *note)
+	}
+	return fresh, notes, nil
 }
 
 // errMinutes is the ambiguity of two fields with a colon.
@@ -189,6 +249,11 @@ func clockOfFormat(format string) (*clock, error) {
 	layout, err := goLayout(format)
 	if err != nil {
 		return nil, err
+	}
+	if !strings.Contains(layout, "06") && (strings.Contains(layout, "01") || strings.Contains(layout, "Jan")) { // a date without a year
+		return &clock{kind: custom, layout: "2006 " + layout, yearless: true, rewrite: func(b []byte) []byte {
+			return slices.Concat([]byte(anyYear+" "), b)
+		}}, nil
 	}
 	return &clock{kind: custom, layout: layout}, nil
 }

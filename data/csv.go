@@ -126,6 +126,7 @@ func (c *csvReader) refuse() error {
 // planStamps looks for clocks of plain numbers that one column alone does not
 // show: digits of a date and a time, and a clock in parts.
 func (c *csvReader) planStamps(o *Options, info *reading) (err error) {
+	markDates(c.d)
 	if c.digits, info.notes, err = markDigits(c.d, o); err != nil {
 		return err
 	}
@@ -235,7 +236,11 @@ func (c *csvReader) findClock(cells [][]byte, o *Options) (*clock, []Note, error
 	default:
 		col = c.spread.stamp
 	}
-	return findClock(cells, c.d.cols[col], c.pair, o, c.d.format.point)
+	shown := c.d.cols[col]
+	if c.pair { // what is said of dates is said of theirs
+		shown.label = c.d.cols[c.at[roleDate]].label
+	}
+	return findClock(cells, shown, c.pair, o, c.d.format.point)
 }
 
 // instant is the time of a row.
@@ -250,7 +255,7 @@ func (c *csvReader) instant() (t, alt int64, ok bool) {
 
 // hasAlternative tells that some stamps can be read both day and month first.
 func hasAlternative(k *clock, cells [][]byte) bool {
-	probe := clock{kind: calendar}
+	probe := clock{kind: calendar, rewrite: k.rewrite}
 	for _, b := range cells {
 		if _, alt, ok := probe.parse(b, '.'); ok && alt != noTime {
 			return true

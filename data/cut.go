@@ -53,7 +53,7 @@ func instant(text, flag string, first int64, k *clock) (int64, error) {
 		if k.timeOfDay() {
 			return tod, nil
 		}
-		if k.dated() {
+		if k.dated() || k.yearless {
 			east := int64(0)
 			if k.zone != nil {
 				_, s := time.Unix(0, first).In(k.zone).Zone()

@@ -94,7 +94,7 @@ func longestStamp(value []byte, words []looseWord) (stamp []byte, n int) {
 		parts = append(parts, w.text)
 	}
 	for n := len(parts); n > first; n-- {
-		if stamp := bytes.Join(parts[:n], []byte{' '}); looseClass(stamp) == stamps {
+		if stamp := bytes.Join(parts[:n], []byte{' '}); looseClass(stamp) == stamps || isYearless(stamp) {
 			return stamp, n - first
 		}
 	}

@@ -17,7 +17,8 @@ var (
 // where the other goes on by a row; without any of these it is an error.
 func settleOrder(tb *table, info *reading) ([]int64, error) {
 	if !info.open {
-		return tb.t.flat(), nil
+		t := tb.t.flat()
+		return t, info.yearLeaps(t)
 	}
 	dayFirst, monthFirst := tb.t.flat(), tb.alt.flat()
 	for i, alt := range monthFirst {
@@ -34,6 +35,8 @@ func settleOrder(tb *table, info *reading) ([]int64, error) {
 	case k.monthFirst:
 		return monthFirst, nil
 	case slices.Equal(dayFirst, monthFirst):
+		return dayFirst, nil
+	case k.yearless && goOnAlike(dayFirst, monthFirst):
 		return dayFirst, nil
 	}
 	backD, leapD := roughness(dayFirst)
@@ -54,6 +57,29 @@ func settleOrder(tb *table, info *reading) ([]int64, error) {
 	}
 	return nil, fmt.Errorf("column %q%s can be read day first or month first: say which with --time-format day-first or --time-format month-first",
 		dates.label, show)
+}
+
+// goOnAlike tells two readings that differ by a constant.
+func goOnAlike(a, b []int64) bool {
+	for i := range a {
+		if a[i]-b[i] != a[0]-b[0] {
+			return false
+		}
+	}
+	return true
+}
+
+// yearLeaps refuses dates whose year of two digits could stand first as well,
+// where the clock leaps as it was read.
+func (r *reading) yearLeaps(t []int64) error {
+	if !r.clock.yearOpen {
+		return nil
+	}
+	if back, leap := roughness(t); back > 0 || leap >= int64(28*nsDay) {
+		return fmt.Errorf("the dates of column %q leap when they are read %s: say --time-format year-first if the year stands first, or --time-format %s if they do leap",
+			r.cols[r.dateColumn()].label, orderWords[r.clock.order], orderFlags[r.clock.order])
+	}
+	return nil
 }
 
 // dateColumn is the column that the dates stand in: that of the clock, or one

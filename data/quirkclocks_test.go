@@ -1,9 +1,10 @@
 package data
 
-// noonStart is where logs begin that pass noon.
+// Where logs begin: by themselves, before noon, before midnight.
 const (
 	janStart  = "2026-01-25T10:00:00Z"
 	noonStart = "2026-01-25T11:59:58Z"
+	lateStart = "2026-01-25T23:59:58Z"
 )
 
 // clockQuirks are logs whose stamps are written in a less usual form.
@@ -28,4 +29,43 @@ var clockQuirks = []quirk{
 	{file: "month-russian.csv", start: janStart, notes: []string{local}},
 	{file: "month-polish.csv", start: janStart, notes: []string{local}},
 	{file: "dots-and-blanks.csv", start: janStart, notes: []string{local}},
+
+	// no year
+	{file: "no-year-dashes.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-dots.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-syslog.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-new-year.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-february.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-february-29.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-february-pause.csv", wrong: "no-year-february-pause.csv:6: the stamps name no year, and from 28 February to this row it is a day more in a leap year: export stamps with the year, or cut the log here"},
+	{file: "no-year-open.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-open.csv", o: Options{TimeFormat: "MM/dd hh:mm:ss.S a"}},
+	{file: "no-year-open-days.csv", t: ramp(8, func(i int) float64 { return 86400 * float64(i) }), notes: []string{"year-unknown", "date-order"}},
+	{file: "no-year-open-days.csv", o: Options{TimeFormat: "MM/dd HH:mm:ss"}, t: ramp(8, func(i int) float64 { return 86400 * float64(i) })},
+	{file: "no-year-open-days.csv", o: Options{TimeFormat: "month-first", From: "86400"}, t: ramp(7, func(i int) float64 { return 86400 * float64(i) }), u: baseU[1:], y: baseY[1:],
+		notes: []string{"year-unknown"}, dropped: map[string]int{"outside --from and --to": 1}},
+	{file: "no-year-two-columns.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-syslog-pairs.log", notes: []string{"year-unknown", "rows-of-pairs"}},
+
+	// bare digits
+	{file: "date-digits-day-first.csv", start: lateStart, notes: []string{"clock-digits", local}},
+	{file: "date-digits-month-first.csv", start: lateStart, notes: []string{local}},
+	{file: "date-digits-two-digit-year.csv", start: lateStart, notes: []string{"date-order", local}},
+	{file: "date-digits-both-ways.csv", wrong: `column "date" (05012026 10:00:00.0) can be read as 5 January 2026 or 1 May 2026: say which with --time-format day-first or --time-format month-first`},
+	{file: "date-digits-both-ways.csv", o: Options{TimeFormat: "day-first"}, start: "2026-01-05T10:00:00Z", notes: []string{local}},
+	{file: "date-digits-both-ways.csv", o: Options{TimeFormat: "year-first"}, wrong: "does not hold dates in the order that --time-format names"},
+	{file: "date-digits-one-column.csv", start: janStart, notes: []string{local}},
+	{file: "date-digits-fourteen.csv", t: ramp(8, func(i int) float64 { return float64(i) }), start: janStart, notes: []string{local}},
+	{file: "date-digits-fifteen.csv", start: lateStart, notes: []string{"date-order", local}},
+	{file: "year-two-digits.csv", start: "2025-01-26T10:00:00Z", notes: []string{"date-order", local}},
+	{file: "year-two-digits.csv", o: Options{TimeFormat: "year-first"}, start: janStart, notes: []string{local}},
+	{file: "year-two-digits-midnight.csv", start: lateStart, notes: []string{"date-order", local}},
+	{file: "year-two-digits-late.csv", wrong: `the dates of column "time" leap when they are read day first: say --time-format year-first if the year stands first, or --time-format day-first if they do leap`},
+
+	// fractions and counts
+	{file: "milliseconds-unpadded.csv", t: ramp(8, func(i int) float64 { return float64(5*i) / 100 }), start: janStart, notes: []string{"clock-milliseconds", local}},
+	{file: "milliseconds-unpadded-colon.csv", t: ramp(8, func(i int) float64 { return float64(5*i) / 100 }), notes: []string{"clock-milliseconds"}},
+	{file: "hundredths-behind-colon.csv", wrong: `column "time" (10:00:00:00): the digits behind the last colon could be a decimal fraction of a second, milliseconds, or seconds behind days`},
+	{file: "ticks-year-1.csv", start: janStart, notes: []string{"clock-ticks"}},
+	{file: "ticks-1601.csv", start: janStart, notes: []string{"clock-ticks"}},
 }

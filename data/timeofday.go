@@ -49,7 +49,10 @@ func scanTime(b []byte, hourMinute bool) (ns int64, n, fields int) {
 	ns = int64(f[0]*nsHour + f[1]*nsMinute + f[2]*nsSecond)
 	if i < len(b) && (b[i] == '.' || b[i] == ',' || b[i] == ':') {
 		frac, w := fraction(b[i+1:])
-		if w > 0 && (b[i] != ':' || w == 3) { // hh:mm:ss:mmm: milliseconds after a colon
+		if b[i] == ':' && w <= 3 { // hh:mm:ss:mmm: milliseconds after a colon
+			frac /= int64(pow10u[3-w])
+		}
+		if w > 0 && (b[i] != ':' || fields == 3 && w <= 3) {
 			ns += frac
 			i += 1 + w
 		}

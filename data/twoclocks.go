@@ -33,7 +33,7 @@ func (c *csvReader) compareClocks() error {
 				cells = append(cells, bytes.Clone(l.cells[i]))
 			}
 		}
-		other, err := findCalendar(cells, col)
+		other, _, err := findCalendar(cells, col)
 		if err != nil {
 			continue
 		}
