@@ -200,6 +200,7 @@ func findColumn(cols []column, name, flag string) (int, error) {
 		func(c column) bool { return strings.EqualFold(c.label, name) },
 		func(c column) bool { return c.name == name },
 		func(c column) bool { return strings.EqualFold(c.name, name) },
+		func(c column) bool { return strings.EqualFold(placeName(c), name) },
 	}
 	for _, is := range same {
 		var found []int
@@ -486,8 +487,17 @@ func unnamed(cols []column, taken map[int]bool, usable func(c column) bool) (lef
 	return left
 }
 
+// ambiguousError is the error of several columns that could have a role.
+type ambiguousError struct {
+	role  role
+	found []int
+	text  string
+}
+
+func (e *ambiguousError) Error() string { return e.text }
+
 func ambiguous(cols []column, found []int, r role) error {
-	return fmt.Errorf("%d columns could be the %s: %s; say which with %s", len(found), roleNames[r], listColumns(cols, found), flags[r])
+	return &ambiguousError{r, found, fmt.Sprintf("%d columns could be the %s: %s; say which with %s", len(found), roleNames[r], listColumns(cols, found), flags[r])}
 }
 
 // maxListed bounds a list of columns in a message.
@@ -504,6 +514,9 @@ func listColumns(cols []column, which []int) string {
 		if k > 0 {
 			b.WriteString(", ")
 		}
+		if slices.ContainsFunc(cols, func(c column) bool { return c.index != cols[i].index && c.label == cols[i].label }) {
+			fmt.Fprintf(&b, "%q called ", placeName(cols[i]))
+		}
 		fmt.Fprintf(&b, "%q", cols[i].label)
 		if s := cols[i].sample; len(s) > 0 {
 			fmt.Fprintf(&b, " (%s)", strings.Join(s[:min(3, len(s))], ", "))
@@ -511,6 +524,9 @@ func listColumns(cols []column, which []int) string {
 	}
 	return b.String()
 }
+
+// placeName is a name for a column whose own name another has as well.
+func placeName(c column) string { return fmt.Sprintf("column %d", c.index+1) }
 
 func every(cols []column) []int {
 	all := make([]int, len(cols))

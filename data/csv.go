@@ -46,6 +46,8 @@ type csvReader struct {
 	nulRows int
 	word    wordAmongNumbers
 	spelled spellings
+	twins   [][2]int       // columns of time that are the same as far as the sample goes
+	twinErr error          // they are not
 	firstNo map[string]int // line of the first row dropped, by reason
 }
 
@@ -116,6 +118,9 @@ func (c *csvReader) refuse() error {
 	if err := c.tooManyDropped(); err != nil {
 		return err
 	}
+	if c.twinErr != nil {
+		return fmt.Errorf("%s: %w", c.path, c.twinErr)
+	}
 	rows := 0
 	for _, tb := range c.tables {
 		rows += tb.rows
@@ -140,12 +145,20 @@ func (c *csvReader) plan(o *Options, info *reading) error {
 	if err := markStamps(c.d, o.TimeFormat); err != nil {
 		return err
 	}
+	if o.TimeCol == "" {
+		c.markTwins()
+	}
 	at, notes, err := assign(c.d.cols, o, false)
 	if err != nil {
-		return err
+		return c.channelClocks(err)
 	}
 	info.notes = append(info.notes, notes...)
 	c.at = at
+	if o.TimeCol == "" {
+		if err := c.hiddenClock(); err != nil {
+			return err
+		}
+	}
 	if at[roleTime] >= 0 && c.d.cols[at[roleTime]].class == stamps {
 		c.at[roleHalf] = slices.IndexFunc(c.d.cols, func(c column) bool { return c.halves })
 	}
@@ -375,6 +388,7 @@ func (c *csvReader) cellRow(line int) {
 		c.drop(run, reason, line)
 		return
 	}
+	c.checkTwins(line)
 	r := &c.rec
 	r.clear()
 	r.line, r.t, r.alt = line, t, alt

@@ -8,7 +8,7 @@ import "bytes"
 // canReadInPlace tells that the rows of a log can be read so: one run, no words
 // to read, and the clock in one cell.
 func (c *csvReader) canReadInPlace() bool {
-	if c.d.delim == ' ' || c.spread != nil || c.long != nil || c.pair || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 {
+	if c.d.delim == ' ' || c.spread != nil || c.long != nil || c.pair || c.at[roleHalf] >= 0 || c.at[roleRun] >= 0 || len(c.twins) > 0 {
 		return false
 	}
 	for _, f := range c.fields {

@@ -454,7 +454,7 @@ func setpoint60(t *testing.T, r *Run) {
 }
 
 func TestQuirks(t *testing.T) {
-	for _, q := range slices.Concat(quirks, numberQuirks, clockQuirks) {
+	for _, q := range slices.Concat(quirks, numberQuirks, clockQuirks, tableQuirks) {
 		t.Run(q.file, func(t *testing.T) {
 			runs, err := Read(context.Background(), filepath.Join("..", "testdata", "logs", "quirks", q.file), q.o)
 			if q.wrong != "" {
