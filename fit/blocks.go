@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"slices"
 	"sort"
 
 	"lagwright/ident"
@@ -39,16 +40,19 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 	root := r.root
 	from, n := root.scope.lo, root.scope.hi
 	c := *r
-	c.rows, c.t, c.y = nil, nil, nil
-	var samples []ident.Row // of the response
-	ragged := false
+	c.rows = make([]ident.Row, 0, searchRows)
+	c.t, c.y = make([]float64, 0, searchRows), make([]float64, 0, searchRows)
+	var samples []ident.Row // of the response, where they differ from the rows
 	k := from
 	for k < n && len(c.rows) < root.most {
 		longest := ladder(allowed(root.t[k]))
 		m, exact := root.uniform(k, longest)
 		var row, response ident.Row
 		if few := root.within(k, longest); few > m {
-			m, ragged = few, true
+			if samples == nil {
+				samples = slices.Clone(c.rows)
+			}
+			m = few
 			row, response = raggedBlock(root.t[k : k+m])
 		} else {
 			row = ident.Row{T: root.t[k], H: root.step, M: m}
@@ -57,7 +61,10 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 			}
 			response = row
 		}
-		c.rows, samples = append(c.rows, row), append(samples, response)
+		c.rows = append(c.rows, row)
+		if samples != nil {
+			samples = append(samples, response)
+		}
 		c.t = append(c.t, response.T+float64(response.M-1)/2*response.H)
 		c.y = append(c.y, total(root.y[k:k+m])/float64(m))
 		k += m
@@ -68,7 +75,7 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 	if c.used = k - from; c.excerpt() {
 		c.parts, c.span = root.noiseParts(c.used), c.t[len(c.t)-1]-c.t[0]
 	}
-	if !ragged {
+	if samples == nil {
 		samples = c.rows
 	}
 	c.sim = ident.NewBlockSimulator(samples, root.scope.input)

@@ -227,9 +227,9 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 		cols, beta, left := r.solveLinear(w, p.gain)
 		all := append(cols, b.tangentColumns(i)...)
 		var ms []member
-		white := columns(len(all)+1, len(r.t))
+		m := &linearMembers{white: columns(len(all)+1, len(r.t)), gram: columns(len(all), len(all))}
 		for _, n := range b.nodes[i] {
-			ms = append(ms, r.linearMember(n, all, left, white))
+			ms = append(ms, m.of(r, n, all, left))
 		}
 		for j := range r.fixed {
 			e := estimate{value: beta[j], se: math.Sqrt(pooled(ms)[j][j])}
@@ -241,10 +241,16 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 	return out
 }
 
-// linearMember is the posterior of the coefficients of cols under the noise
-// shape of a node, given what the model leaves; white is scratch for all of them.
-func (r *record) linearMember(n node, cols [][]float64, left []float64, white [][]float64) member {
-	f := &r.scratch
+// linearMembers are the memory that members of one record use one after the other.
+type linearMembers struct {
+	white, gram [][]float64
+	inverse     damped
+}
+
+// of is the posterior of the coefficients of cols under the noise shape of a node,
+// given what the model leaves.
+func (lm *linearMembers) of(r *record, n node, cols [][]float64, left []float64) member {
+	f, white, gram := &r.scratch, lm.white, lm.gram
 	f.set(r.rows, n.shape)
 	m := len(cols)
 	for j, c := range cols {
@@ -252,14 +258,14 @@ func (r *record) linearMember(n node, cols [][]float64, left []float64, white []
 	}
 	copy(white[m], left)
 	f.applyAll(white)
-	gram, b := columns(m, m), make([]float64, m)
+	b := make([]float64, m)
 	for j := range m {
 		b[j] = dot(white[j], white[m])
 		for l := range m {
 			gram[j][l] = dot(white[j], white[l])
 		}
 	}
-	cov := invert(gram)
+	cov := lm.inverse.invert(gram)
 	out := member{weight: n.weight, shift: multiply(cov, b), cov: cov, dof: float64(n.dof)}
 	for j := range cov {
 		for l := range cov {

@@ -5,65 +5,6 @@ import (
 	"sort"
 )
 
-// damped solves systems of a few unknowns in memory of its own; the zero value is
-// ready to use.
-type damped struct {
-	l [][]float64 // Cholesky factor
-	x []float64
-}
-
-// factor factors (A + lambda·diag A) over the indices in free; ok is false when
-// the matrix is not positive definite.
-func (d *damped) factor(a [][]float64, free []int, lambda float64) (ok bool) {
-	m := len(free)
-	if len(d.l) < m {
-		d.l, d.x = columns(m, m), make([]float64, m)
-	}
-	for i := range m {
-		row := d.l[i]
-		for j := 0; j <= i; j++ {
-			s := a[free[i]][free[j]]
-			if i == j {
-				s *= 1 + lambda
-			}
-			for k := range j {
-				s -= row[k] * d.l[j][k]
-			}
-			if i == j {
-				if !(s > 1e-14*a[free[i]][free[i]]) {
-					return false
-				}
-				row[i] = math.Sqrt(s)
-			} else {
-				row[j] = s / d.l[j][j]
-			}
-		}
-	}
-	return true
-}
-
-// solve returns the solution for the right-hand side b, of which it takes the
-// indices in free. It is valid until the next call.
-func (d *damped) solve(b []float64, free []int) []float64 {
-	m, l := len(free), d.l
-	x := d.x[:m]
-	for i := range m {
-		s := b[free[i]]
-		for k := range i {
-			s -= l[i][k] * x[k]
-		}
-		x[i] = s / l[i][i]
-	}
-	for i := m - 1; i >= 0; i-- {
-		s := x[i]
-		for k := i + 1; k < m; k++ {
-			s -= l[k][i] * x[k]
-		}
-		x[i] = s / l[i][i]
-	}
-	return x
-}
-
 // reduced returns the Gauss-Newton matrix of eta with the gain eliminated
 // (Kaufman's form of variable projection; from memory).
 // It is valid until the next call.
@@ -148,10 +89,12 @@ func (e *engine) descend(eta []float64, tol float64) point {
 				} else {
 					small = 0
 				}
+				e.drop(p)
 				p, improved = q, true
 				lambda = math.Max(lambda/8, 1e-10)
 				break
 			}
+			e.drop(q)
 			lambda *= 6
 		}
 		if !improved || small >= 2 {

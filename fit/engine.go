@@ -35,6 +35,7 @@ type engine struct {
 	free   []int
 	next   []float64
 	damped damped
+	spare  []point // whose memory the next points take
 }
 
 // workspace holds the columns of one record.
@@ -49,6 +50,7 @@ type workspace struct {
 	state [][]float64 // derivatives of the initial state's part
 
 	tangent tangentMemory
+	linear  linearMemory
 }
 
 // point is an evaluated set of parameters.
@@ -134,10 +136,19 @@ func (e *engine) spreadTo(out, eta []float64) []float64 {
 	return out
 }
 
-// newPoint is the point at eta, to be evaluated: all its numbers lie together,
-// since thousands are made.
+// newPoint is the point at eta, to be evaluated, in the memory of one that was
+// dropped; all its numbers lie together, since thousands are made.
 func (e *engine) newPoint(eta []float64, full bool) point {
 	n, m := len(eta), len(e.recs)
+	if last := len(e.spare) - 1; last >= 0 && full {
+		p := e.spare[last]
+		e.spare = e.spare[:last]
+		if len(p.eta) == n {
+			p.clear()
+			copy(p.eta, eta)
+			return p
+		}
+	}
 	size := n + m
 	if full {
 		size += n + (n+1)*(n+1)
@@ -158,6 +169,19 @@ func (e *engine) newPoint(eta []float64, full bool) point {
 		}
 	}
 	return p
+}
+
+// drop gives up a full point that nothing refers to any more.
+func (e *engine) drop(p point) { e.spare = append(e.spare, p) }
+
+// clear sets the sums of p to zero.
+func (p *point) clear() {
+	p.gain, p.s, p.gg = 0, 0, 0
+	clear(p.part)
+	clear(p.grad)
+	for _, row := range p.normal {
+		clear(row)
+	}
 }
 
 // eval evaluates eta; with full, the Gauss-Newton figures too.
@@ -346,36 +370,49 @@ func (e *engine) stateCoefficients(r *record, w *workspace, p *point) []float64 
 // solveLinear fits the record's linear columns, the fixed ones first and then
 // those of the initial state, to what the gain's response last simulated leaves:
 // the columns, their coefficients by generalised least squares, and what is
-// then left.
+// then left. Columns and what is left are valid until the next call.
 func (r *record) solveLinear(w *workspace, gain float64) (cols [][]float64, beta, left []float64) {
-	cols = append(cols, r.fixed...)
+	m := &w.linear
+	cols = append(m.cols[:0], r.fixed...)
 	switch r.rest {
 	case earlier:
 		cols = append(cols, w.start[0])
 	case free:
 		cols = append(cols, w.start...)
 	}
-	left = make([]float64, len(r.t))
+	m.cols, m.left = cols, resize(m.left, len(r.t))
+	left = m.left
 	floats.AddScaledTo(left, r.y, -gain, w.raw[0])
-	beta = weightedSolve(&r.filter, cols, left)
+	beta = m.solve(&r.filter, cols, left)
 	for j, c := range cols {
 		floats.AddScaled(left, -beta[j], c)
 	}
 	return cols, beta, left
 }
 
-// weightedSolve is the generalised least-squares solution for a few columns,
-// by modified Gram-Schmidt on the whitened columns; a column that adds nothing
-// gets the coefficient 0.
-func weightedSolve(f *filter, cols [][]float64, rhs []float64) []float64 {
+// linearMemory is what the solutions for a record's linear columns use one after
+// the other; the zero value is ready to use.
+type linearMemory struct {
+	cols  [][]float64
+	left  []float64
+	white [][]float64 // cols and the right-hand side, whitened
+}
+
+// solve is the generalised least-squares solution for a few columns, by modified
+// Gram-Schmidt on the whitened columns; a column that adds nothing gets the
+// coefficient 0.
+func (l *linearMemory) solve(f *filter, cols [][]float64, rhs []float64) []float64 {
 	m, n := len(cols), len(rhs)
+	if len(l.white) < m+1 || len(l.white[0]) != n {
+		l.white = columns(m+1, n)
+	}
 	q := make([][]float64, m)
 	rr := columns(m, m)
-	y := make([]float64, n)
+	y := l.white[m]
 	f.apply(y, rhs)
 	z := make([]float64, m)
 	for j, c := range cols {
-		x := make([]float64, n)
+		x := l.white[j]
 		f.apply(x, c)
 		before := math.Sqrt(dot(x, x))
 		for range 2 {

@@ -46,17 +46,16 @@ type kernels struct {
 // twice.
 func (q *posterior) adapt(pool proposals, count int) []plantAt {
 	optimum := q.at(q.b.p.eta)
-	pool.at, pool.weight = append(pool.at, optimum), append(pool.weight, optimum.density)
+	pool = pool.and(proposals{[]plantAt{optimum}, []float64{optimum.density}})
 	for range lessons {
 		pool = q.around(pool, lessonWidth).propose(roundSize)
 		if effective(pool.shares(1)) < 1.5 { // one place, or none, has it all
-			pool.at, pool.weight = append(pool.at, optimum), append(pool.weight, slices.Max(pool.weight))
+			pool = pool.and(proposals{[]plantAt{optimum}, []float64{slices.Max(pool.weight)}})
 		}
 	}
-	var kept proposals
+	kept := roomFor(4 * roundSize)
 	for range mostRounds - lessons {
-		fresh := q.around(pool, keptWidth).propose(roundSize)
-		kept.at, kept.weight = append(kept.at, fresh.at...), append(kept.weight, fresh.weight...)
+		kept = kept.and(q.around(pool, keptWidth).propose(roundSize))
 		if effective(kept.shares(1)) > enoughEffective*float64(count) {
 			break
 		}
@@ -192,7 +191,7 @@ func (k *kernels) units(eta []float64) []float64 {
 // propose draws n proposals, from every kernel as many.
 func (k *kernels) propose(n int) proposals {
 	q := k.q
-	var out proposals
+	out := roomFor(n)
 	for i := range n {
 		eta, _ := q.scattered(k.centres[i%len(k.centres)], k.root)
 		w := q.at(eta)

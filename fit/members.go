@@ -23,8 +23,9 @@ type member struct {
 func members(nodes [][]node, rng *rand.Rand) []member {
 	if len(nodes) == 1 {
 		out := make([]member, 0, len(nodes[0]))
+		var d damped
 		for _, n := range nodes[0] {
-			cov := invert(n.a)
+			cov := d.invert(n.a)
 			s2 := n.s2
 			m := member{weight: n.weight, cov: cov, shift: multiply(cov, n.b), dof: float64(n.dof)}
 			for i := range cov {
@@ -37,6 +38,7 @@ func members(nodes [][]node, rng *rand.Rand) []member {
 		return out
 	}
 	const draws = 300
+	var inverse damped
 	out := make([]member, draws)
 	for k := range out {
 		d := len(nodes[0][0].b)
@@ -52,7 +54,7 @@ func members(nodes [][]node, rng *rand.Rand) []member {
 				}
 			}
 		}
-		cov := invert(a)
+		cov := inverse.invert(a)
 		out[k] = member{weight: 1.0 / draws, cov: cov, shift: multiply(cov, b), dof: math.Inf(1)}
 	}
 	return out
@@ -65,42 +67,6 @@ func pick(ns []node, u float64) int {
 		}
 	}
 	return 0
-}
-
-// invert inverts a symmetric matrix scaled to a unit diagonal; rows of
-// parameters that the records say nothing about stay zero. A matrix that is
-// singular in double precision is helped by a ridge that grows until it
-// factors.
-func invert(a [][]float64) [][]float64 {
-	var idx []int
-	for i := range a {
-		if a[i][i] > 0 {
-			idx = append(idx, i)
-		}
-	}
-	both := columns(2*len(a), len(a))
-	out, scaled := both[:len(a):len(a)], both[len(a):]
-	for _, i := range idx {
-		for _, j := range idx {
-			scaled[i][j] = a[i][j] / math.Sqrt(a[i][i]*a[j][j])
-		}
-	}
-	var d damped
-	for ridge := 0.0; !d.factor(scaled, idx, ridge); ridge = math.Max(10*ridge, 1e-12) {
-		if ridge > 1 {
-			return out
-		}
-	}
-	unit := make([]float64, len(a))
-	for _, j := range idx {
-		unit[j] = 1
-		for k, x := range d.solve(unit, idx) {
-			i := idx[k]
-			out[i][j] = x / math.Sqrt(a[i][i]*a[j][j])
-		}
-		unit[j] = 0
-	}
-	return out
 }
 
 func multiply(a [][]float64, b []float64) []float64 {

@@ -63,7 +63,7 @@ func (m *modelOutput) of(p ident.Plant) []float64 {
 	for i, k := range m.measured {
 		left[i] -= out[k]
 	}
-	for j, b := range weightedSolve(&m.filter, seen, left) {
+	for j, b := range new(linearMemory).solve(&m.filter, seen, left) {
 		for k, v := range linear[j] {
 			out[k] += b * v
 		}

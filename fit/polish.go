@@ -31,13 +31,14 @@ func (f *fitted) polish() *polished {
 		return nil
 	}
 	p := e.eval(f.p.eta, true)
+	var m everyRowMemory
 	at := polished{eta: append([]float64(nil), p.eta...), gain: p.gain}
 	for i, r := range e.recs {
 		_, beta, _ := r.solveLinear(&e.work[i], p.gain)
 		at.beta = append(at.beta, beta)
 	}
 	var sum float64
-	gram := f.normal(&at, &sum)
+	gram := f.normal(&at, &sum, &m)
 	damping := 0.0
 	for range 12 {
 		next, promised, ok := f.step(&at, gram, damping)
@@ -48,7 +49,7 @@ func (f *fitted) polish() *polished {
 		s := math.Inf(1)
 		var g [][]float64
 		if ok {
-			g = f.normal(next, &s)
+			g = f.normal(next, &s, &m)
 		}
 		if s < sum {
 			done := damping == 0 && sum-s < 1e-13*sum
@@ -161,7 +162,7 @@ func (r *record) linearColumns() int {
 
 // normal accumulates the normal equations of all unknowns, the residual last,
 // over every row of the logs.
-func (f *fitted) normal(at *polished, sum *float64) [][]float64 {
+func (f *fitted) normal(at *polished, sum *float64, memory *everyRowMemory) [][]float64 {
 	n := f.unknowns()
 	gram := columns(n+1, n+1)
 	shared := f.direction(f.e.nl+1) + 1 // gain, lags, dead time
@@ -175,15 +176,26 @@ func (f *fitted) normal(at *polished, sum *float64) [][]float64 {
 			idx = append(idx, base+k)
 		}
 		idx = append(idx, n)
-		f.accumulate(r, at, at.beta[i], idx, gram)
+		f.accumulate(r, at, at.beta[i], idx, gram, memory)
 		base += r.linearColumns()
 	}
 	*sum = gram[n][n]
 	return gram
 }
 
+// everyRowMemory is what the sums over every row use one after the other.
+type everyRowMemory struct{ raw, cols, start [][]float64 }
+
+// atLeast are k columns of n rows, in memory of that shape if it can be.
+func atLeast(memory *[][]float64, k, n int) [][]float64 {
+	if m := *memory; len(m) < k || len(m[0]) < n {
+		*memory = columns(k, n)
+	}
+	return (*memory)[:k]
+}
+
 // accumulate adds one record; idx says where its columns stand in gram.
-func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, gram [][]float64) {
+func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, gram [][]float64, memory *everyRowMemory) {
 	e, root := f.e, r.root
 	nl, m := e.nl, len(idx)
 	lags, dead := e.lags(at.eta), at.eta[nl]
@@ -194,10 +206,10 @@ func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, 
 	}
 	white, carry := r.whitener(r.shape), make([]carried, m)
 	size := min(pieceRows, len(root.t))
-	raw, cols := columns(nl+2, size), columns(m, size)
+	raw, cols := atLeast(&memory.raw, nl+2, size), atLeast(&memory.cols, m, size)
 	var start [][]float64
 	if started != nil {
-		start = columns(nl+2, size)
+		start = atLeast(&memory.start, nl+2, size)
 	}
 	upper := columns(m, m)
 	for lo := 0; lo < len(root.t); {

@@ -27,9 +27,19 @@ type proposals struct {
 	weight []float64
 }
 
+// roomFor is no proposal, and memory for n.
+func roomFor(n int) proposals {
+	return proposals{make([]plantAt, 0, n), make([]float64, 0, n)}
+}
+
+// and are the proposals and more of them.
+func (p proposals) and(more proposals) proposals {
+	return proposals{append(p.at, more.at...), append(p.weight, more.weight...)}
+}
+
 // propose draws n proposals.
 func (q *posterior) propose(n int) proposals {
-	var out proposals
+	out := roomFor(n)
 	for range n {
 		eta, r2 := q.scattered(q.b.p.eta, q.root)
 		w := q.at(eta)
@@ -75,8 +85,7 @@ func (q *posterior) reject(pool proposals, count int) (out []plantAt, ok bool) {
 		case float64(len(out)) < leastAcceptance*float64(tried):
 			return nil, false
 		}
-		more := q.propose((count-len(out))*tried/max(len(out), 1) + 8)
-		pool.at, pool.weight = append(pool.at, more.at...), append(pool.weight, more.weight...)
+		pool = pool.and(q.propose((count-len(out))*tried/max(len(out), 1) + 8))
 	}
 }
 

@@ -42,6 +42,7 @@ type record struct {
 	scratch filter      // of other shapes
 	yw      []float64   // whitened temperature, free of the fixed columns
 	basis   [][]float64 // whitened fixed columns, orthonormal
+	white   [][]float64 // memory of basis
 	weight  float64     // 1/variance relative to the first record
 	sigma2  float64     // variance of a whitened row
 }
@@ -145,7 +146,8 @@ func (r *record) window(n int) *record {
 
 // adopt gives c, a fresh set of rows of the same log, what r has been told.
 func (r *record) adopt(c *record) *record {
-	c.start, c.filter, c.scratch, c.yw, c.basis, c.fixed = nil, filter{}, filter{}, nil, nil, nil
+	c.start, c.filter, c.scratch, c.fixed = nil, filter{}, filter{}, nil
+	c.yw, c.basis, c.white = nil, nil, nil
 	c.shape, c.weight, c.sigma2 = r.shape, r.weight, r.sigma2
 	c.model(r.rest, r.drift)
 	return c
@@ -177,10 +179,12 @@ func (r *record) setShape(s shape) {
 	r.yw = resize(r.yw, n)
 	r.filter.apply(r.yw, r.y)
 	r.basis = r.basis[:0]
-	for _, c := range r.fixed {
-		w := make([]float64, n)
-		r.filter.apply(w, c)
-		addToBasis(&r.basis, w)
+	if len(r.white) < len(r.fixed) {
+		r.white = columns(len(r.fixed), n)
+	}
+	for i, c := range r.fixed {
+		r.filter.apply(r.white[i], c)
+		addToBasis(&r.basis, r.white[i])
 	}
 	project(r.yw, r.basis)
 }
@@ -198,7 +202,7 @@ func (r *record) clone() *record {
 		c.start = r.start.Clone()
 	}
 	c.filter, c.scratch = filter{}, filter{}
-	c.yw, c.basis = nil, nil
+	c.yw, c.basis, c.white = nil, nil, nil
 	c.setShape(r.shape)
 	return &c
 }

@@ -29,9 +29,11 @@ type tangent struct {
 // tangentMemory is what the tangents of a record use one after the other.
 type tangentMemory struct {
 	rest   []float64   // of the tangent
+	room   [][]float64 // of its columns
 	spare  []float64   // rest whitened
 	white  [][]float64 // its directions and left, whitened
 	factor [][]float64 // Cholesky factor of their products
+	turned [][]float64 // a part of that, in terms of the parameters
 }
 
 // tangents linearises the model at p on every record. They are valid until the
@@ -48,7 +50,9 @@ func (e *engine) tangents(p point) []*tangent {
 func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	n := len(r.t)
 	t := &tangent{rec: r, nparam: e.ng + 2, memory: &w.tangent}
+	states := e.stateDerivatives(r, w, p)
 	linear, beta, left := r.solveLinear(w, p.gain)
+	room := t.memory.columns(len(linear)+e.ng+2, n)
 	t.left = left
 	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
@@ -61,15 +65,17 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 		t.memory.rest = t.rest
 	}
 	for _, c := range linear {
-		addToBasis(&t.cols, append([]float64(nil), c...))
+		copy(room[0], c)
+		addToBasis(&t.cols, room[0])
+		room = room[1:]
 	}
 	t.first = len(t.cols)
 	// Directions of the parameters.
-	states := e.stateDerivatives(r, w, p)
-	dirs := make([][]float64, 0, e.ng+2)
-	dirs = append(dirs, append([]float64(nil), w.raw[0]...))
+	dirs := room
+	copy(dirs[0], w.raw[0])
 	for j := range e.ng + 1 {
-		c := make([]float64, n)
+		c := dirs[j+1]
+		clear(c)
 		for l := range e.nl + 1 {
 			if (l < e.nl && e.groups[l] != j) || (l == e.nl && j != e.ng) {
 				continue
@@ -79,7 +85,6 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 				floats.Add(c, states[l])
 			}
 		}
-		dirs = append(dirs, c)
 	}
 	t.tri = columns(len(dirs), len(dirs))
 	t.scale = make([]float64, len(dirs))
@@ -114,6 +119,14 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	}
 	t.cols = append(t.cols, params...)
 	return t
+}
+
+// columns are k columns of n rows, valid until the next call.
+func (m *tangentMemory) columns(k, n int) [][]float64 {
+	if len(m.room) < k || len(m.room[0]) != n {
+		m.room = columns(k, n)
+	}
+	return m.room[:k]
 }
 
 // node is one noise shape with what the record says under it: its weight,
@@ -258,10 +271,14 @@ func (t *tangent) onRows(s shape) onRowsSums {
 // parameters a = triᵀ·lp·lpᵀ·tri.
 func (t *tangent) quadratic() (a [][]float64, b []float64) {
 	np, p, l := len(t.param), len(t.cols), t.memory.factor
-	all := columns(t.nparam+1+np, t.nparam)
+	all := columns(t.nparam+1, t.nparam)
 	a, b = all[:t.nparam:t.nparam], all[t.nparam]
-	m := all[t.nparam+1:] // lpᵀ·tri
+	if len(t.memory.turned) < np || len(t.memory.turned[0]) != t.nparam {
+		t.memory.turned = columns(t.nparam, t.nparam)
+	}
+	m := t.memory.turned // lpᵀ·tri
 	for i := range np {
+		clear(m[i])
 		for _, j := range t.param {
 			for k := i; k < np; k++ {
 				m[i][j] += l[t.first+k][t.first+i] * t.tri[k][j]

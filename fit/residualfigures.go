@@ -5,10 +5,15 @@ import "math"
 // residuals fills the figures of the misfit. The whitened residuals are those
 // of the noise model; the simulated output is what the plant alone explains.
 func (out *outcome) residuals(b *bounded, m *Model) {
-	var whitened []float64
 	var sse, sst, lag1 float64
 	pIn := 1.0
-	for i, f := range b.residualFigures() {
+	figures := b.residualFigures()
+	count := 0
+	for _, f := range figures {
+		count += len(f.white)
+	}
+	whitened := make([]float64, 0, count)
+	for i, f := range figures {
 		r, c := b.e.recs[i], out.yardstick(i)
 		n := len(r.root.t)
 		m.Samples += n
@@ -45,16 +50,17 @@ func (b *bounded) residualFigures() []*residualFigures {
 	}
 	var out []*residualFigures
 	for i, r := range b.e.recs {
-		f, _ := r.walkResiduals(b.fine.explained(b.st, i))
+		f, _ := r.walkResiduals(b.fine.explained(b.st, i), nil)
 		out = append(out, f)
 	}
 	return out
 }
 
 // walkResiduals passes the residuals of x on every row of the full log, and
-// returns their whitener too.
-func (r *record) walkResiduals(x explained) (*residualFigures, *whitener) {
-	f, w := r.newResidualFigures(), r.whitener(r.shape)
+// returns their whitener too. The figures take the memory of some that are no longer
+// needed, unless nil.
+func (r *record) walkResiduals(x explained, old *residualFigures) (*residualFigures, *whitener) {
+	f, w := r.newResidualFigures(old), r.whitener(r.shape)
 	r.everyRow(x, func(lo int, left []float64) {
 		f.add(left)
 		w.pass(left, r.root.t[lo:lo+len(left)])
@@ -118,7 +124,12 @@ type residualFigures struct {
 }
 
 // newResidualFigures begins the sums over a full log.
-func (r *record) newResidualFigures() *residualFigures {
+func (r *record) newResidualFigures(old *residualFigures) *residualFigures {
+	if old != nil {
+		clear(old.grouped)
+		*old = residualFigures{white: old.white[:0], grouped: old.grouped}
+		return old
+	}
 	n := len(r.root.t)
 	group := groupSize(n)
 	return &residualFigures{

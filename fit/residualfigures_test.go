@@ -32,7 +32,7 @@ func TestFeedbackIsNoMisfit(t *testing.T) {
 			r := rec.whole()
 			r.setShape(shape{tc: -f.step / math.Log(f.ar)})
 			truth := explained{st, f.gain, f.lags, f.dead, []float64{60}}
-			sums, _ := r.walkResiduals(truth)
+			sums, _ := r.walkResiduals(truth, nil)
 			group := groupSize(len(rec.t))
 			if group < 2 {
 				t.Fatal("no groups")

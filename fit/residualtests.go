@@ -180,5 +180,6 @@ func normalScores(r []float64) []float64 {
 		}
 		a = b
 	}
-	return centred(scores)
+	floats.AddConst(-stat.Mean(scores, nil), scores)
+	return scores
 }

@@ -410,7 +410,10 @@ func (s *study) score(f *fitted) {
 	n := 0
 	f.mean = f.e.nl + 2
 	f.params = 0
-	f.shapes, f.weight, f.sigma2, f.figures = nil, nil, nil, nil
+	f.shapes, f.weight, f.sigma2 = nil, nil, nil
+	if f.figures == nil {
+		f.figures = make([]*residualFigures, len(s.recs))
+	}
 	ts := f.tangents()
 	if f.e.gainFix {
 		f.mean--
@@ -461,15 +464,16 @@ func (f *fitted) rows() int {
 }
 
 // likelihood is the log likelihood of record i under the shape in force,
-// at the model's tangent. It keeps the figures of the residuals it passes.
+// at the model's tangent. It keeps the figures of the residuals it passes, in place
+// of those it had.
 func (f *fitted) likelihood(i int, t *tangent) float64 {
 	r := f.e.recs[i]
 	model := t.model
 	if f.full != nil {
 		model = f.full.explained(f.st, i)
 	}
-	figures, w := r.walkResiduals(model)
-	f.figures = append(f.figures, figures)
+	figures, w := r.walkResiduals(model, f.figures[i])
+	f.figures[i] = figures
 	if !r.averagesRows() {
 		return logLikelihood(f.p.part[i], r.filter.logdet, len(r.t))
 	}

@@ -27,6 +27,7 @@ func NewBlockSimulator(rows []Row, in Input) *Simulator {
 	if n := len(rows); n > 0 {
 		s.tolerance = timeTolerance([]float64{t[0], rows[n-1].last()})
 		s.rungs, s.powers.h = rungsOf(rows, s.tolerance)
+		s.powers.most = mostPowers(s.rungs)
 	}
 	return s
 }

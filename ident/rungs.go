@@ -79,14 +79,25 @@ const afresh = 10
 // powers are the transitions over 1, 2, 4, … samples.
 type powers struct {
 	h      float64
+	most   int // how many there can be
 	over   []matrix
 	filled int
 }
 
+// mostPowers is the number of powers that walking the rungs may take: a leap over a
+// whole one is of 2^k rows of 2^k samples at most.
+func mostPowers(rungs []rung) int {
+	most := 0
+	for _, r := range rungs {
+		most = max(most, r.k+bits.Len(uint(r.hi-r.lo)))
+	}
+	return most
+}
+
 // get returns F(k).
 func (p *powers) get(c *chain, k int) *matrix {
-	if len(p.over) <= k {
-		p.over = append(p.over, make([]matrix, k+4-len(p.over))...)
+	if p.over == nil {
+		p.over = make([]matrix, p.most)
 	}
 	for ; p.filled <= k; p.filled++ {
 		f := &p.over[p.filled]

@@ -9,6 +9,7 @@ import (
 
 	"github.com/spf13/cobra"
 
+	"lagwright/cmd/lagwright/internal/heap"
 	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/data"
 	"lagwright/fit"
@@ -66,6 +67,7 @@ func runCheck(ctx context.Context, c *console, o *checkOptions, args []string) e
 		}
 		return o.follow(ctx, c, args[0])
 	}
+	heap.Widen()
 	files, err := o.log.expand(args)
 	if err != nil {
 		return err

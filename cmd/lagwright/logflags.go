@@ -9,6 +9,7 @@ import (
 
 	"github.com/spf13/cobra"
 
+	"lagwright/cmd/lagwright/internal/heap"
 	"lagwright/data"
 	"lagwright/fit"
 )
@@ -65,6 +66,7 @@ func (l *logFlags) expand(args []string) ([]string, error) {
 
 // readAll reads every file; the first that cannot be read stops it.
 func (l *logFlags) readAll(ctx context.Context, c *console, args []string) ([]*data.Run, error) {
+	heap.Widen()
 	files, err := l.expand(args)
 	if err != nil {
 		return nil, err
