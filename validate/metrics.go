@@ -94,7 +94,7 @@ func (f *figures) takeOver(s signal, m yardstick, all []move) (rest int) {
 	if !s.midway || way.to == 0 || math.Abs(way.size) <= allowance {
 		return 0
 	}
-	at, rest := settled(s, way, m.band*math.Abs(way.size)+allowance, m.response)
+	at, rest := settled(s, way, m.band*math.Abs(way.size)+allowance, m.response, m.kept())
 	f.handOver = larger(f.handOver, at)
 	return rest
 }
@@ -119,7 +119,7 @@ func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
 		allowance = 0
 	}
 	half := m.band*math.Abs(mv.size) + allowance
-	at, rest := settled(s, mv, half, m.response)
+	at, rest := settled(s, mv, half, m.response, m.kept())
 	switch {
 	case !math.IsInf(at, 1):
 	case m.limit != nil && endsTooSoon(s, mv, half, *m.limit):
@@ -133,6 +133,15 @@ func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
 	return rest
 }
 
+// kept is how long the temperature stays inside the band before what pushes it
+// out again passes for a load: two response times (common practice, no source).
+func (m yardstick) kept() float64 {
+	if m.noiseless || m.response == 0 {
+		return math.Inf(1)
+	}
+	return 2 * m.response
+}
+
 // settled returns the time from the move until the temperature enters
 // ±half around the new setpoint and keeps it, interpolated to the crossing,
 // and the first row that follows the move no longer. Kept means for
@@ -140,9 +149,11 @@ func (f *figures) follow(s signal, m yardstick, mv move) (rest int) {
 // response time; with response 0, to the end. It returns +Inf when the
 // temperature does not settle.
 //
-// A later load that pushes the temperature out again counts as a load
-// deviation, not as slow settling (common practice, no source).
-func settled(s signal, mv move, half, response float64) (at float64, rest int) {
+// A load that pushes the temperature out again later, or once it has been inside
+// for the time kept, counts as a load deviation, not as slow settling (common
+// practice, no source). kept is infinite where there are no loads: what then
+// leaves the band is the loop.
+func settled(s signal, mv move, half, response, kept float64) (at float64, rest int) {
 	entered, last := math.NaN(), -1 // time of entry; last row with a temperature
 	outside := math.Abs(mv.size)    // |error| at that row
 	for i := mv.from; i < mv.to; i++ {
@@ -151,6 +162,8 @@ func settled(s signal, mv move, half, response float64) (at float64, rest int) {
 			continue
 		}
 		switch {
+		case e > half && s.t[i]-entered >= kept:
+			return entered - s.t[mv.from], i
 		case e > half:
 			entered = math.NaN()
 		case math.IsNaN(entered) && last >= 0 && outside > half:

@@ -111,6 +111,13 @@ func TestMeasureMoves(t *testing.T) {
 			}
 			return y
 		}), 2 * math.Log(50), 3, 1},
+		{"a load of 3 K soon after settling", record(step(20, 80, 10), func(t float64) float64 {
+			y := follow(20, 80, 10, 2)(t)
+			if t >= 33 {
+				y -= 3 * math.Exp(-(t-33)/2)
+			}
+			return y
+		}), 2 * math.Log(50), 3 + 10*math.Exp(-13./2), 1},
 		{"never inside the band", record(step(20, 80, 10), follow(20, 80, 9, 2)), math.Inf(1), 0, 1},
 		{"a ramp is one move", record(func(t float64) float64 { return 80 + min(10, max(0, t-20)) }, follow(20, 80, 10, 2)), 2*math.Log(50) - 0.1, 10 * math.Exp(-(2*math.Log(50)+10)/2), 1},
 	} {

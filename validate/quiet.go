@@ -208,5 +208,6 @@ func (m yardstick) quiet() yardstick {
 func (f *figures) judgeQuiet(q figures) {
 	f.noisy.settling, f.noisy.overshoot = f.settling, f.overshoot
 	f.settling, f.overshoot = q.settling, q.overshoot
+	f.moves, f.small = q.moves, q.small
 	f.cut, f.unsettled, f.offset = q.cut, q.unsettled, q.offset
 }

@@ -127,3 +127,25 @@ func TestRunLimits(t *testing.T) {
 		}
 	}
 }
+
+// Under P control a heater moves less than its setpoint. A move that is then too
+// small to show in the noise is not judged, and a warning says why.
+func TestSmallMoveUnderPControl(t *testing.T) {
+	const rows, scan = 700, 0.5
+	plant := mustPlant(t, "chain2", 8, []float64{6, 2}, 1.3)
+	noise := fit.Noise{SD: 0.5, CorrelationTime: 3, WhiteSD: 0.2}
+	d := noisy(rand.New(rand.NewPCG(3, 9)), rows, scan, noise)
+	log := loggedLoop(t, plant, ident.Linear, piGains(0.1, 9, scan), stepsAt(rows, 60, map[int]float64{100: 6}), d, 4)
+	gains := piGains(0.05, 1, scan)
+	gains.Ti, gains.Controller, gains.Bias = nil, "p", 4
+	r, err := ReplayRuns(context.Background(), cardOf(t, "linear", noise, plant), []*data.Run{log}, gains,
+		Options{Requirement: tune.Requirement{Settling: ptr(60), TempMax: ptr(90)}})
+	if err != nil {
+		t.Fatal(err)
+	}
+	run := r.Runs[0]
+	said := strings.Join(run.Warnings, "; ")
+	if run.Proposed.Median.Settling != nil || !strings.Contains(said, "1 setpoint move too small against the noise") || strings.Contains(said, "no setpoint move") {
+		t.Errorf("settling %s, warnings %q", optional(run.Proposed.Median.Settling), run.Warnings)
+	}
+}

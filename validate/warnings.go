@@ -15,19 +15,19 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble, handOver 
 
 	out = append(out, p.outside(run)...)
 	f := p.typical(e.figures)
-	if f.moves == 0 && p.options.Requirement.Settling != nil {
+	if f.moves+f.small == 0 && p.options.Requirement.Settling != nil {
 		warn("no setpoint move in this run: settling and overshoot are not judged")
 	}
 	if handOver != nil {
 		out = append(out, handOver.words(p.units.difference))
 	}
 	if f.small > 0 {
-		warn("%s too small against the noise (%s) to judge settling", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.difference))
+		warn("%s too small against the noise (%s): settling and overshoot of it are not judged", counted(f.small, "setpoint move"), quantity(f.allowance, p.units.difference))
 	} else if f.moves > 0 && f.allowance > 0 {
 		warn("settling and overshoot are judged on the setpoint moves alone; those with noise, and those logged, are measured past %s granted to noise and resolution, and so told rather too small", quantity(f.allowance, p.units.difference))
 	}
-	if f.offset > 0 {
-		warn("P control stands %s off the setpoint after a move: settling and overshoot are told from there", quantity(f.offset, p.units.difference))
+	if offset := median(valuesOf(e.figures, func(f figures) float64 { return f.offset })); offset > 0 {
+		warn("P control stands %s off the setpoint after a move: settling and overshoot are told from there", quantity(offset, p.units.difference))
 	}
 	if f.cut > 0 {
 		warn("the record of %s ends before it shows whether the temperature settles in the time asked: that is not judged", counted(f.cut, "setpoint move"))
@@ -44,10 +44,18 @@ func (p *plan) warnings(run *data.Run, courses []*course, e *ensemble, handOver 
 	if m := manualShare(run); m > 0 {
 		warn("the controller was in manual on %.0f%% of the rows; the replay keeps it in automatic", 100*m)
 	}
-	if lowest(courses) >= 0 && f.lowInput < 0 {
-		warn("the replayed input goes down to %s: a heater cannot cool; give --input-min 0", quantity(f.lowInput, p.units.input))
+	if low := least(valuesOf(e.figures, finiteLowInput)); lowest(courses) >= 0 && low < 0 {
+		warn("the replayed input goes down to %s: a heater cannot cool; give --input-min 0", quantity(low, p.units.input))
 	}
 	return out
+}
+
+// finiteLowInput passes over plants on which the loop runs away.
+func finiteLowInput(f figures) float64 {
+	if f.moves == runaway {
+		return math.NaN()
+	}
+	return f.lowInput
 }
 
 // outside names what the run left the card's range in.
