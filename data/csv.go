@@ -150,7 +150,7 @@ func (c *csvReader) plan(o *Options, info *reading) error {
 	}
 	at, notes, err := assign(c.d.cols, o, false)
 	if err != nil {
-		return c.channelClocks(err)
+		return c.sideways(c.channelClocks(err))
 	}
 	info.notes = append(info.notes, notes...)
 	c.at = at

@@ -108,12 +108,15 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	if err := cutLines(path, records, d.delim); err != nil {
 		return nil, err
 	}
+	if names := d.signalNames(records); names != nil {
+		return nil, fmt.Errorf("%s: %w", path, errTransposed(names))
+	}
 	d.format.point = findPoint(records, d.delim, d.fields)
 	return d, d.findColumns(path, records)
 }
 
 // logWanted is what to do with a file that is no log.
-const logWanted = "a log has a row of numbers for every time, in columns with a delimiter; give a CSV or Parquet file, or export the log as CSV"
+const logWanted = "a log has a row of numbers for every time, in columns parted by commas, semicolons, tabs, bars or blanks; give a CSV or Parquet file, or export the log as CSV"
 
 // lines cuts the sample into lines. Blank lines are left out, and the last line
 // when the sample ends within it.

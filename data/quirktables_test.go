@@ -14,4 +14,10 @@ var tableQuirks = []quirk{
 	{file: "clock-for-each-channel-late.csv", wrong: `are two clocks that differ ("1001.0" and "1001.1" in line 2004)`},
 	{file: "two-names-alike.csv", wrong: `2 columns could be the temperature: "column 3" called "temp_degC" (24.1, 24.1, 24.2), "column 4" called "temp_degC" (25.1, 25.1, 25.2); say which with --temp-col`},
 	{file: "two-names-alike.csv", o: Options{TempCol: "column 3"}},
+
+	// one signal a row
+	{file: "transposed.csv", wrong: `transposed.csv: the table seems to hold one signal in each row ("time_s", "drive_V", "outlet_degC") and one instant in each column: turn it round (in a spreadsheet: copy, paste special, transpose) and save it as CSV`},
+	{file: "transposed-units.csv", wrong: `one signal in each row ("Zeit", "Ansteuerung", "Austritt")`},
+	{file: "transposed-stamps.csv", wrong: `one signal in each row ("time", "drive_V", "outlet_degC")`},
+	{file: "transposed-no-names.csv", wrong: "say which with --input-col; the table has 3 rows and 8 columns: if each row holds a signal, turn it round"},
 }
