@@ -146,6 +146,11 @@ func assign(cols []column, o *Options, tags bool) (layout, []Note, error) {
 	for _, r := range chosen {
 		more = append(more, passedOver(cols, taken, l[r], r)...)
 	}
+	if err == nil {
+		var named []Note
+		named, err = checkNamed(cols, &l, o)
+		more = append(more, named...)
+	}
 	return l, append(notes, more...), err
 }
 

@@ -26,6 +26,9 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 	}
 	run.Units.Input = unit
 	u := r.v[roleInput]
+	if unit == "%" && o.InputUnit == "" && !info.switched() {
+		r.notes = append(r.notes, notePercent(u, info.label(roleInput))...)
+	}
 	switch {
 	case unit == "mA" && o.InputSpan != nil:
 		if err := spanOK(o.InputSpan, "--input-span"); err != nil {
@@ -95,6 +98,9 @@ func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 			r.notes = append(r.notes, Note{Code: "unit-unknown",
 				Text: fmt.Sprintf("the unit of column %q is not known as a unit of temperature; its values stay as they are (say C, F or K with --temp-unit)", info.label(roleTemp))})
 		}
+	}
+	if run.Units.Temperature == "degC" {
+		r.setImpossibleAside(y)
 	}
 	for _, x := range []role{roleSetpoint, roleInlet} {
 		own := info.unit(x)

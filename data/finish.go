@@ -98,8 +98,9 @@ func finish(path string, tb *table, info *reading, o *Options) (*Run, error) {
 	}
 	r.cycleMean(o.Cycle)
 	r.fill(run, tb.name, info)
+	run.Quality.Notes = append(run.Quality.Notes, noteSwapped(run, info)...)
 	if !slices.ContainsFunc(run.Y, func(y float64) bool { return y == y }) {
-		return nil, fail(fmt.Errorf("column %q holds no temperature%s%s", info.label(roleTemp), commonest(r.missing), spanCure(r.missing, o)))
+		return nil, fail(fmt.Errorf("column %q holds no temperature%s%s", info.label(roleTemp), commonest(r.missing), spanCure(r.missing, o)+impossibleCure(r.missing)))
 	}
 	assess(run, o)
 	return run, nil

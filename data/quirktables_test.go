@@ -1,5 +1,7 @@
 package data
 
+import "math"
+
 // tableQuirks are logs whose columns or rows do not stand as in most.
 var tableQuirks = []quirk{
 	// a clock for each channel
@@ -20,4 +22,27 @@ var tableQuirks = []quirk{
 	{file: "transposed-units.csv", wrong: `one signal in each row ("Zeit", "Ansteuerung", "Austritt")`},
 	{file: "transposed-stamps.csv", wrong: `one signal in each row ("time", "drive_V", "outlet_degC")`},
 	{file: "transposed-no-names.csv", wrong: "say which with --input-col; the table has 3 rows and 8 columns: if each row holds a signal, turn it round"},
+
+	// the wrong way round
+	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V"}, wrong: `column "outlet_degC" is named as the input and column "drive_V" as the temperature, but their names or units say the reverse: change over --input-col and --temp-col, or, if it is meant, say the units with --input-unit and --temp-unit`},
+	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V", InputUnit: "%", TempUnit: "C"}, u: baseY, y: baseU, input: "%"},
+	{file: "setpoint-as-temperature.csv", o: Options{TempCol: "setpoint_degC"}, y: ramp(8, func(int) float64 { return 60 }), notes: []string{"column-named-otherwise"}},
+	{file: "columns-look-swapped.csv", t: ramp(40, half), u: swappedU, y: swappedY, input: "unit", temp: "unit", notes: []string{"input-unit-unknown", "unit-unknown", "columns-look-swapped"}},
+
+	// units and readings that cannot be
+	{file: "percent-below-one.csv", u: []float64{0, 0, 0.15, 0.15, 0.15, 0.15, 0.15, 0.15}, within: 1e-15, input: "%", notes: []string{"percent-below-one"}},
+	{file: "temperature-thousands.csv", wrong: `column "outlet_degC" holds no temperature (8 cells are above 3500 °C): is a decimal mark, a factor of ten, the unit or the sign of a 16-bit number lost in the export?`},
+	{file: "temperature-16-bit.csv", y: []float64{nan, nan, nan, nan, nan, 13, 26, 38}, missing: map[string]int{"above 3500 °C": 5}},
+	{file: "temperature-bytes.csv", y: with(baseY, 3, nan), missing: map[string]int{"no reading, below 1e-30": 1}},
 }
+
+var (
+	swappedU = ramp(40, func(i int) float64 {
+		y := 24.1
+		if i >= 10 {
+			y += 20 * (1 - math.Exp(-float64(i-9)/12))
+		}
+		return math.Round(100*y+float64(i*i%7)) / 100
+	})
+	swappedY = ramp(40, func(i int) float64 { return []float64{0, 1.5}[min(1, i/10)] })
+)
