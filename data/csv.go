@@ -233,7 +233,7 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 	c.inPlace = c.canReadInPlace()
 	c.quality = isQuality(c.d.rows, c.at[roleStatus])
 	if o.TimeCol == "" && o.TimeFormat == "" && c.spread == nil {
-		return c.compareClocks()
+		return c.compareClocks(info)
 	}
 	return nil
 }

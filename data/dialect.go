@@ -83,12 +83,14 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	if len(physical) == 0 {
 		return nil, fmt.Errorf("%s: is empty", path)
 	}
-	if areWrapped(physical) {
-		d.rewrite = unwrapLine
-	} else if k, err := findKeys(path, physical); err != nil {
-		return nil, err
-	} else if k != nil {
-		d.rewrite, d.keys = k.row, k.names
+	if d.rewrite = findWrapping(physical); d.rewrite == nil {
+		k, err := findKeys(path, physical)
+		if err != nil {
+			return nil, err
+		}
+		if k != nil {
+			d.rewrite, d.keys = k.row, k.names
+		}
 	}
 	if d.rewrite != nil {
 		if physical, err = d.lines(path, sample, whole); err != nil {

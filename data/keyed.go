@@ -90,6 +90,9 @@ func (k *keyed) row(line []byte) []byte {
 func (k *keyed) pairs(line []byte) (out []pair, doubt error) {
 	var front []looseWord
 	var g gaps
+	if bytes.HasPrefix(bytes.TrimLeft(line, " \t"), []byte("{'")) { // a dictionary as Python prints it
+		line = bytes.ReplaceAll(line, []byte{'\''}, []byte{'"'})
+	}
 	for rest := line; ; {
 		rest = g.skip(rest, len(out) > 0)
 		if len(rest) == 0 {
