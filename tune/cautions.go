@@ -19,9 +19,15 @@ const soundMs = 2.0
 // cautions go with every set of gains.
 func (t *tuning) cautions(g *Gains) []string {
 	var c []string
-	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs { // first, since the answer above may sound better than it is
+	// First what the answer above may hide.
+	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs {
 		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.0f %%; up to %.0f is usual. Ask for --ms %.1f.",
 			figure(w.Ms, 3), 100*g.Assurance, soundMs, usualMs))
+	}
+	if n := g.Nominal; g.Controller == "p" && n != nil && n.SteadyOffset != nil && g.Requirement.SetpointStep != nil {
+		unit := perKelvin(t.units().Temperature)
+		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",
+			quantity(*g.Requirement.SetpointStep, unit, 2), quantity(math.Abs(*n.SteadyOffset), unit, 2)))
 	}
 	c = append(c, t.inFahrenheit(g)...)
 	c = append(c, fit.CautionCutOut, fit.CautionSheath, CautionStart)
@@ -47,10 +53,6 @@ func (t *tuning) cautions(g *Gains) []string {
 	}
 	if words := t.unlimited(g); words != "" {
 		c = append(c, words)
-	}
-	if n := g.Nominal; g.Controller == "p" && n != nil && n.SteadyOffset != nil && g.Requirement.SetpointStep != nil {
-		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",
-			quantity(*g.Requirement.SetpointStep, perKelvin(unit), 2), quantity(math.Abs(*n.SteadyOffset), perKelvin(unit), 2)))
 	}
 	if len(o.plants) < 20 {
 		c = append(c, fmt.Sprintf("The card holds %d plausible plants: the spread of the figures is not known.", len(o.plants)))

@@ -14,7 +14,7 @@ func (t *tuning) reasons(r row) []string {
 	if card, stable := r.on.leastShare(func(i int) bool { return r.out[i].stable }); stable < share {
 		say(card, "the loop is stable on %s of the plausible plants only", percent(stable))
 	}
-	over := func(name, unit string, f func(i int) float64, limit *float64) {
+	over := func(name string, write func(v float64) string, f func(i int) float64, limit *float64) {
 		if limit == nil {
 			return
 		}
@@ -22,14 +22,17 @@ func (t *tuning) reasons(r row) []string {
 		switch v, card := r.on.quantile(f, share); {
 		case !isFinite(v):
 			card, some := r.on.leastShare(func(i int) bool { return isFinite(f(i)) })
-			say(card, "%s: reached on %s of the plausible plants only; asked is %s", name, percent(some), quantity(*limit, unit, 3))
+			say(card, "%s: reached on %s of the plausible plants only; asked is %s", name, percent(some), write(*limit))
 		case v > *limit*(1+hair):
-			say(card, "%s: up to %s on %s; asked is %s", name, quantity(v, unit, 3), most, quantity(*limit, unit, 3))
+			say(card, "%s: up to %s on %s; asked is %s", name, write(v), most, write(*limit))
 		}
 	}
-	over("Ms", "", func(i int) float64 { return r.out[i].quick.ms }, q.Ms)
-	over("settling time", "s", func(i int) float64 { return r.out[i].step.settling }, q.Settling)
-	over("overshoot", "%", func(i int) float64 { return 100 * r.out[i].step.overshoot }, q.Overshoot)
+	in := func(unit string) func(float64) string {
+		return func(v float64) string { return quantity(v, unit, 3) }
+	}
+	over("Ms", in(""), func(i int) float64 { return r.out[i].quick.ms }, q.Ms)
+	over("settling time", func(v float64) string { return duration(v, 3) }, func(i int) float64 { return r.out[i].step.settling }, q.Settling)
+	over("overshoot", in("%"), func(i int) float64 { return 100 * r.out[i].step.overshoot }, q.Overshoot)
 	if card, damped := r.on.leastShare(func(i int) bool { return r.out[i].dampingHeld }); q.Damping != nil && damped < share {
 		say(card, "damping ratio: %.3g is held on %s of the plausible plants only", *q.Damping, percent(damped))
 	}

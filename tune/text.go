@@ -74,6 +74,17 @@ func figure(v *float64, digits int) string {
 	return s
 }
 
+// duration writes seconds in minutes from ten on, in hours from two on.
+func duration(seconds float64, digits int) string {
+	switch {
+	case seconds >= 7200:
+		return quantity(seconds/3600, "h", digits)
+	case seconds >= 600:
+		return quantity(seconds/60, "min", digits)
+	}
+	return quantity(seconds, "s", digits)
+}
+
 // quantity is a number with its unit.
 func quantity(v float64, unit string, digits int) string {
 	return strings.TrimSpace(figure(&v, digits) + " " + unitWords(unit))
@@ -171,7 +182,9 @@ func (g *Gains) writeFigures(b *bufio.Writer, where string, m *Metrics) {
 	}
 	in, temp := g.Units.Input, perKelvin(g.Units.Temperature)
 	say("Ms %s", m.Ms, "")
-	say("settled after %s", m.Settling, "s")
+	if m.Settling != nil {
+		parts = append(parts, "settled after "+duration(*m.Settling, 3))
+	}
 	say("overshoot %s", m.Overshoot, "%")
 	say("input up to %s", m.PeakInput, in)
 	say("load IAE %s", m.IAE, strings.TrimPrefix(temp+"·s/"+in, "·"))
@@ -254,7 +267,7 @@ func (d *RegionDesign) writeText(b *bufio.Writer, unit string) {
 	list("on the best fit", d.Nominal)
 	list("on "+percent(d.Assurance)+" of the plausible plants", d.Plausible)
 	if len(d.Nominal) == 0 {
-		fmt.Fprintf(b, "  nearest: gain %s, which settles in about %s with a damping ratio of %.2g\n", quantity(d.Best, unit, 3), quantity(d.BestSettling, "s", 3), d.BestDamping)
+		fmt.Fprintf(b, "  nearest: gain %s, which settles in about %s with a damping ratio of %.2g\n", quantity(d.Best, unit, 3), duration(d.BestSettling, 3), d.BestDamping)
 	}
 }
 
@@ -262,7 +275,7 @@ func (d *RegionDesign) writeText(b *bufio.Writer, unit string) {
 func (r PoleRegion) String() string {
 	var parts []string
 	if sigma := r.sigma(); sigma > 0 {
-		parts = append(parts, fmt.Sprintf("poles left of %.3g 1/s, for settling within %s", -sigma, quantity(r.Settling, "s", 3)))
+		parts = append(parts, fmt.Sprintf("poles left of %.3g 1/s, for settling within %s", -sigma, duration(r.Settling, 3)))
 	}
 	if r.Damping > 0 {
 		parts = append(parts, fmt.Sprintf("damping ratio of %.3g or more", r.Damping))
@@ -279,7 +292,9 @@ func (q Requirement) Words(u GainUnits) string {
 		}
 	}
 	say("Ms ≤ %s", q.Ms)
-	say("settling ≤ %s s", q.Settling)
+	if q.Settling != nil {
+		parts = append(parts, "settling ≤ "+duration(*q.Settling, 4))
+	}
 	say("overshoot ≤ %s %%", q.Overshoot)
 	say("damping ≥ %s", q.Damping)
 	say("temperature ≤ %s "+strings.ReplaceAll(unitWords(u.Temperature), "%", "%%"), q.TempMax)

@@ -229,7 +229,7 @@ func (p *plan) testPlant(b *BackTest, courses []*course, manual bool) (ok bool) 
 		b.Differs = append(b.Differs, p.words(s)...)
 		return false
 	}
-	load := fmt.Sprintf("%s at %s s that the input did not cause, such as a load: the replay takes it over", quantity(worst.size, p.units.difference), number(worst.at))
+	load := fmt.Sprintf("%s at %s that the input did not cause, such as a load: the replay takes it over", quantity(worst.size, p.units.difference), quantity(worst.at, "s"))
 	if !shown {
 		load += "; no setpoint move shows the plant, so this run does not test it"
 	}

@@ -70,7 +70,10 @@ func (c *Change) amount(unit string) string {
 	if size < 0 {
 		size, low, high = -size, -high, -low
 	}
-	return fmt.Sprintf("%s (%s to %s)", quantity(size, unit), number(low), quantity(high, unit))
+	if unit != "%" {
+		unit = " " + shown(unit)
+	}
+	return fmt.Sprintf("%s%s (%s to %s%s)", number(size), unit, number(low), number(high), unit)
 }
 
 func since(r DriftRun) string {

@@ -87,20 +87,42 @@ func (r *Replay) worstFirst() []*RunReplay {
 	return out
 }
 
-// shownMetrics are the columns of the table of runs.
-func (r *Replay) shownMetrics() (heads []string, pick []func(RunMetrics) *float64) {
+// A shownMetric is a column of the table of runs.
+type shownMetric struct {
+	head, unit string
+	pick       func(RunMetrics) *float64
+}
+
+// shownMetrics are the columns: there is room for five.
+func (r *Replay) shownMetrics() []shownMetric {
 	u := r.Gains.Units
-	add := func(head string, f func(RunMetrics) *float64) { heads, pick = append(heads, head), append(pick, f) }
-	add("settling s", func(m RunMetrics) *float64 { return m.Settling })
-	add("overshoot %", func(m RunMetrics) *float64 { return m.Overshoot })
-	add("deviation "+difference(u.Temperature), func(m RunMetrics) *float64 { return m.Deviation })
-	add("peak "+shown(u.Temperature), func(m RunMetrics) *float64 { return m.PeakTemp })
-	if r.RunLimits.IAE != nil { // there is room for five
-		add("IAE "+difference(u.Temperature)+"·s", func(m RunMetrics) *float64 { return m.IAE })
-	} else {
-		add("peak "+shown(u.Input), func(m RunMetrics) *float64 { return m.PeakInput })
+	columns := []shownMetric{
+		{"settling s", "", func(m RunMetrics) *float64 { return m.Settling }},
+		{"overshoot %", "", func(m RunMetrics) *float64 { return m.Overshoot }},
+		{"deviation " + difference(u.Temperature), "", func(m RunMetrics) *float64 { return m.Deviation }},
+		{"peak " + shown(u.Temperature), u.Temperature, func(m RunMetrics) *float64 { return m.PeakTemp }},
 	}
-	return heads, pick
+	if r.RunLimits.IAE != nil {
+		return append(columns, shownMetric{"IAE " + difference(u.Temperature) + "·s", "", func(m RunMetrics) *float64 { return m.IAE }})
+	}
+	return append(columns, shownMetric{"peak " + shown(u.Input), u.Input, func(m RunMetrics) *float64 { return m.PeakInput }})
+}
+
+// cell writes the metric of a signal.
+func (c shownMetric) cell(m RunMetrics) string {
+	if x := c.pick(m); x != nil {
+		return bare(*x, c.unit)
+	}
+	return "-"
+}
+
+// band writes the metric's band, "48..80"; nothing where there is none.
+func (c shownMetric) band(b BandMetrics) string {
+	low, high := c.pick(b.Low), c.pick(b.High)
+	if low == nil && high == nil || low != nil && high != nil && *low == *high {
+		return ""
+	}
+	return c.cell(b.Low) + ".." + c.cell(b.High)
 }
 
 // writeRuns writes for each run its verdict with the median figures, their
@@ -109,31 +131,32 @@ func (r *Replay) writeRuns(b *strings.Builder, runs []*RunReplay) {
 	if len(runs) == 0 {
 		return
 	}
-	heads, pick := r.shownMetrics()
-	tableRow(b, "", heads)
+	columns := r.shownMetrics()
+	tableRow(b, "", cellsOf(columns, func(c shownMetric) string { return c.head }))
 	for i, run := range runs {
 		if i == mostShown {
 			fmt.Fprintf(b, "and %s more; a file written with -o holds them all\n", counted(len(runs)-mostShown, "run"))
 			break
 		}
 		fmt.Fprintln(b, clean(run.title()))
-		p := run.Proposed
-		median, band, logged := make([]string, len(pick)), make([]string, len(pick)), make([]string, len(pick))
-		wide := false
-		for k, f := range pick {
-			median[k], band[k], logged[k] = optional(f(p.Median)), banded(f(p.Low), f(p.High)), optional(f(run.Logged))
-			wide = wide || band[k] != ""
-		}
-		tableRow(b, "  "+run.verdict(), median)
-		if wide {
-			tableRow(b, "  band", band)
+		tableRow(b, "  "+run.verdict(), cellsOf(columns, func(c shownMetric) string { return c.cell(run.Proposed.Median) }))
+		if bands := cellsOf(columns, func(c shownMetric) string { return c.band(run.Proposed) }); strings.Join(bands, "") != "" {
+			tableRow(b, "  band", bands)
 		}
 		if n := run.WithNoise; n != (StepMetrics{}) {
 			tableRow(b, "  with noise", []string{optional(n.Settling), optional(n.Overshoot)})
 		}
-		tableRow(b, "  logged", logged)
+		tableRow(b, "  logged", cellsOf(columns, func(c shownMetric) string { return c.cell(run.Logged) }))
 		run.writeNotes(b)
 	}
+}
+
+func cellsOf(columns []shownMetric, cell func(shownMetric) string) []string {
+	out := make([]string, len(columns))
+	for i, c := range columns {
+		out[i] = cell(c)
+	}
+	return out
 }
 
 // tableRow writes a label and cells set to the right, 80 columns wide at most
@@ -226,14 +249,6 @@ func percent(share float64) string {
 		return "over 99 %"
 	}
 	return fmt.Sprintf("%.0f %%", 100*share)
-}
-
-// banded writes the ends of a band, "48..80"; nothing where there is none.
-func banded(low, high *float64) string {
-	if low == nil && high == nil || low != nil && high != nil && *low == *high {
-		return ""
-	}
-	return optional(low) + ".." + optional(high)
 }
 
 func optional(x *float64) string {

@@ -114,8 +114,30 @@ func quantity(x float64, unit string) string {
 		return "without bound"
 	case unit == "" || unit == "%":
 		return number(x) + unit
+	case unit == "s":
+		return duration(x)
 	}
-	return number(x) + " " + shown(unit)
+	return bare(x, unit) + " " + shown(unit)
+}
+
+// duration writes seconds in minutes from ten on, in hours from two on.
+func duration(seconds float64) string {
+	switch {
+	case seconds >= 7200:
+		return number(seconds/3600) + " h"
+	case seconds >= 600:
+		return number(seconds/60) + " min"
+	}
+	return number(seconds) + " s"
+}
+
+// bare writes a number without its unit. On a scale of temperature that does not
+// begin at zero three significant digits could hide the tenths that people read.
+func bare(x float64, unit string) string {
+	if size := math.Abs(x); unit != "degC" && unit != "degF" || !(size >= 99.95 && size < 9999.95) {
+		return number(x)
+	}
+	return strings.TrimSuffix(strconv.FormatFloat(x, 'f', 1, 64), ".0")
 }
 
 // number writes three significant digits without an exponent where it can.

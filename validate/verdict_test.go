@@ -19,6 +19,22 @@ func TestNumber(t *testing.T) {
 	}
 }
 
+func TestQuantity(t *testing.T) {
+	for _, c := range []struct {
+		x    float64
+		unit string
+		want string
+	}{
+		{45.04, "s", "45 s"}, {599, "s", "599 s"}, {1500, "s", "25 min"}, {14054, "s", "3.9 h"}, {math.Inf(1), "s", "not reached"},
+		{81.44, "degC", "81.4 °C"}, {123.96, "degC", "124 °C"}, {123.84, "degC", "123.8 °C"}, {1203.26, "degF", "1203.3 °F"}, {-120.26, "degC", "-120.3 °C"},
+		{3.456, "K", "3.46 K"}, {12.04, "%", "12%"}, {0.0503, "V", "0.0503 V"},
+	} {
+		if got := quantity(c.x, c.unit); got != c.want {
+			t.Errorf("quantity(%g, %q) = %q, want %q", c.x, c.unit, got, c.want)
+		}
+	}
+}
+
 // The sentence of a demand names the median and what the assured share of the
 // plants stay below: what the verdict goes by, not the ends of the band.
 func TestReason(t *testing.T) {

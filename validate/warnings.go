@@ -68,7 +68,7 @@ func (p *plan) outside(run *data.Run) []string {
 			return
 		}
 		out = append(out, fmt.Sprintf("%s %s to %s is outside the card's %s to %s: another operating range, where gain, lags and dead time may differ",
-			what, number(lo), quantity(hi, unit), number(limits[0]), quantity(limits[1], unit)))
+			what, bare(lo, unit), quantity(hi, unit), bare(limits[0], unit), quantity(limits[1], unit)))
 	}
 	check("input", p.units.input, run.U, p.card.Range.Input)
 	check("temperature", p.units.temperature, run.Y, p.card.Range.Temperature)

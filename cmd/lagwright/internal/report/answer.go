@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"math"
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
@@ -48,6 +49,9 @@ func gainsAnswer(b *Bundle) answer {
 	a.Headline, a.Verdict = gainsVerdict(g, b.Replay)
 	if g.Judged() {
 		a.Sure = append(a.Sure, "Asked: "+requirementWords(g.Requirement, g.Units)+".", sharePhrase(g))
+	}
+	if words := offsetPhrase(g); words != "" {
+		a.Sure = append(a.Sure, words)
 	}
 	if b.Replay != nil {
 		a.Sure = append(a.Sure, replayPhrase(b.Replay))
@@ -99,6 +103,18 @@ func unproven(r *validate.Replay) string {
 		}
 	}
 	return "the gains said to be in force do not give the logged input of every run; the temperatures speak for the model"
+}
+
+// offsetPhrase says what a requirement of settling and overshoot does not show:
+// where a P controller comes to rest.
+func offsetPhrase(g *tune.Gains) string {
+	m, step := g.Nominal, g.Requirement.SetpointStep
+	if g.Controller != "p" || m == nil || m.SteadyOffset == nil || step == nil || *m.SteadyOffset == 0 {
+		return ""
+	}
+	unit := kelvin(g.Units.Temperature)
+	return fmt.Sprintf("Mind the offset: under P control a setpoint step of %s ends %s away from the setpoint, on the best fit; settling and overshoot are told from there.",
+		format.Amount(*step, unit, 2), format.Amount(math.Abs(*m.SteadyOffset), unit, 2))
 }
 
 func sharePhrase(g *tune.Gains) string {
@@ -267,7 +283,9 @@ func requirementRows(q tune.Requirement, u tune.GainUnits) []setting {
 			rows = append(rows, setting{name, before + format.Amount(*v, unit, 4) + after})
 		}
 	}
-	add("Settling", "within ", q.Settling, "s", fmt.Sprintf(" to ±%s", format.Percent(settlingBand(q))))
+	if q.Settling != nil {
+		rows = append(rows, setting{"Settling", fmt.Sprintf("within %s to ±%s", format.Duration(*q.Settling), format.Percent(settlingBand(q)))})
+	}
 	add("Overshoot", "at most ", q.Overshoot, "%", "")
 	add("Damping ratio", "at least ", q.Damping, "", "")
 	add("Ms", "at most ", q.Ms, "", "")

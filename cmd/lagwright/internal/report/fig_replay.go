@@ -29,8 +29,8 @@ func ReplayFigure(r *validate.RunReplay, g *tune.Gains, q tune.Requirement) *Fig
 		trace{name: "logged", x: t.T, y: gaps(t.LoggedIn), ink: inkLogged, width: 1.2, hold: true},
 		trace{name: "proposed, median", x: t.T, y: gaps(t.MedianIn), ink: inkModel, width: 1.4, hold: true},
 	}
-	input.limit("output from", g.Limits.Min, t.LowIn, t.HighIn, t.LoggedIn)
-	input.limit("output to", g.Limits.Max, t.LowIn, t.HighIn, t.LoggedIn)
+	input.limit("lowest output", g.Limits.Min, t.LowIn, t.HighIn, t.LoggedIn)
+	input.limit("highest output", g.Limits.Max, t.LowIn, t.HighIn, t.LoggedIn)
 	f := &Figure{Name: "replay", panels: []*panel{temp, input}, Finding: replayFinding(r, g)}
 	f.Alt = "Line charts of temperature and input over time, logged against proposed. " + f.Finding
 	return f

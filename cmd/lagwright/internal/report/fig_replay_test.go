@@ -23,9 +23,9 @@ func TestReplayLimits(t *testing.T) {
 		{"near", ptr(79), tune.Limits{}, "highest allowed 79 °C", true, true},
 		{"passed", ptr(77), tune.Limits{}, "highest allowed 77 °C", true, true},
 		{"far", ptr(240), tune.Limits{}, "highest allowed 240 °C, above the scale", false, true},
-		{"outputs", nil, tune.Limits{Min: ptr(0), Max: ptr(10)}, "output to 10 V, above the scale", false, false},
-		{"outputs, below", nil, tune.Limits{Min: ptr(0), Max: ptr(4.2)}, "output from 0 V, below the scale", false, false},
-		{"outputs, near", nil, tune.Limits{Max: ptr(4)}, "output to 4 V", false, false},
+		{"outputs", nil, tune.Limits{Min: ptr(0), Max: ptr(10)}, "highest output 10 V, above the scale", false, false},
+		{"outputs, below", nil, tune.Limits{Min: ptr(0), Max: ptr(4.2)}, "lowest output 0 V, below the scale", false, false},
+		{"outputs, near", nil, tune.Limits{Max: ptr(4)}, "highest output 4 V", false, false},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			g := sampleGains()
@@ -35,7 +35,7 @@ func TestReplayLimits(t *testing.T) {
 			if c.says != "" && !strings.Contains(svg, ">"+c.says+"</text>") {
 				t.Errorf("%q is not in the drawing", c.says)
 			}
-			if c.silentOutput == strings.Contains(svg, ">output ") {
+			if c.silentOutput == strings.Contains(svg, "est output ") {
 				t.Errorf("limits of the output named: %v", !c.silentOutput)
 			}
 			y := f.panels[0].y

@@ -98,6 +98,9 @@ func ruleWords(g *tune.Gains) string {
 	if !g.Judged() {
 		return "They were written down; no requirement has been judged for them."
 	}
+	if (g.Rule == "synthesis" || g.Rule == "") && g.Controller == "p" {
+		return "Of the P gains that keep the requirement on the plausible plants this is the largest: it leaves the smallest offset."
+	}
 	if g.Rule == "synthesis" || g.Rule == "" {
 		return fmt.Sprintf("Of all %s gains that keep the requirement on the plausible plants, these reject a load best (smallest IAE).", strings.ToUpper(g.Controller))
 	}
@@ -111,21 +114,28 @@ func metricsTable(g *tune.Gains) *table {
 		Head:    []string{"Figure", "Asked", "Best fit", "Worst"},
 	}
 	q, u := g.Requirement, g.Units
-	row := func(name, unit string, asked string, pick func(*tune.Metrics) *float64) {
+	add := func(name, asked string, pick func(*tune.Metrics) *float64, write func(*float64) string) {
 		n, w := metric(g.Nominal, pick), metric(g.Worst, pick)
 		if n == nil && w == nil && asked == "" {
 			return
 		}
-		t.Rows = append(t.Rows, []cell{head(name), num(dash(asked)), num(format.Optional(n, unit, 3)), num(format.Optional(w, unit, 3))})
+		t.Rows = append(t.Rows, []cell{head(name), num(dash(asked)), num(write(n)), num(write(w))})
+	}
+	row := func(name, unit, asked string, pick func(*tune.Metrics) *float64) {
+		add(name, asked, pick, func(v *float64) string { return format.Optional(v, unit, 3) })
 	}
 	most := func(v *float64, unit string) string { return bound("at most ", v, unit) }
-	row("Settling", "s", most(q.Settling, "s"), func(m *tune.Metrics) *float64 { return m.Settling })
+	asked := ""
+	if q.Settling != nil {
+		asked = "at most " + format.Duration(*q.Settling)
+	}
+	add("Settling", asked, func(m *tune.Metrics) *float64 { return m.Settling }, durationOrDash)
 	row("Overshoot", "%", most(q.Overshoot, "%"), func(m *tune.Metrics) *float64 { return m.Overshoot })
 	row("Damping ratio", "", bound("at least ", q.Damping, ""), func(m *tune.Metrics) *float64 { return m.Damping })
 	row("Peak sensitivity Ms", "", most(q.Ms, ""), func(m *tune.Metrics) *float64 { return m.Ms })
 	row("Gain margin", "", "", func(m *tune.Metrics) *float64 { return m.GainMargin })
 	row("Phase margin", "°", "", func(m *tune.Metrics) *float64 { return m.PhaseMargin })
-	row("Delay margin", "s", "", func(m *tune.Metrics) *float64 { return m.DelayMargin })
+	add("Delay margin", "", func(m *tune.Metrics) *float64 { return m.DelayMargin }, durationOrDash)
 	row("Peak input", u.Input, most(q.InputMax, u.Input), func(m *tune.Metrics) *float64 { return m.PeakInput })
 	row("Steady offset", kelvin(u.Temperature), "", func(m *tune.Metrics) *float64 { return m.SteadyOffset })
 	row("IAE after a unit load", kelvin(u.Temperature)+"·s", "", func(m *tune.Metrics) *float64 { return m.IAE })
@@ -137,6 +147,13 @@ func metric(m *tune.Metrics, pick func(*tune.Metrics) *float64) *float64 {
 		return nil
 	}
 	return pick(m)
+}
+
+func durationOrDash(seconds *float64) string {
+	if seconds == nil {
+		return "-"
+	}
+	return format.Duration(*seconds)
 }
 
 func bound(word string, v *float64, unit string) string {
