@@ -66,14 +66,14 @@ func (c *csvReader) channelClocks(err error) error {
 	}
 	i, k := open.found[0], open.found[1]
 	row := c.firstApart(i, k)
-	if row < 0 || c.d.cols[i].class != c.d.cols[k].class || !c.isClock(i) || !c.isClock(k) {
+	if row < 0 || c.d.cols[i].class != c.d.cols[k].class || !c.isClock(i) || !c.isClock(k) || c.d.cols[i].class == numbers && !c.keepsPace(i, k) {
 		return err
 	}
 	return c.apart(i, k, c.d.rows[row].number, c.d.rows[row].cells)
 }
 
 func (c *csvReader) apart(i, k, line int, cells [][]byte) error {
-	return fmt.Errorf("columns %s are two clocks that differ (%q and %q in line %d), as where every channel has its own: export the channels on one clock, or as rows of time, tag and value; if the difference does not matter, say which to use with %s",
+	return fmt.Errorf("columns %s are two clocks that differ (%q and %q in line %d): if every channel has its own, export the channels on one clock, or as rows of time, tag and value; else say which to use with %s",
 		listColumns(c.d.cols, []int{i, k}), cells[i], cells[k], line, flags[roleTime])
 }
 

@@ -80,6 +80,15 @@ func (c *clock) wall() bool {
 		c.timeOfDay()
 }
 
+// counts are what a counter of 16, 31 or 32 bits in the clock's unit holds, and
+// the seconds of a day, in ns: there it starts again at zero.
+func (c *clock) counts() []int64 {
+	if c.kind != elapsed || c.unit > nsSecond {
+		return nil
+	}
+	return []int64{int64(c.unit << 16), int64(c.unit << 31), int64(c.unit << 32), int64(nsDay)}
+}
+
 // timeOfDay tells that the clock starts again at midnight.
 func (c *clock) timeOfDay() bool {
 	return c.kind == sexagesimal || c.kind == hourMinute || c.kind == custom && !strings.Contains(c.layout, "06")
@@ -130,7 +139,8 @@ func (c *clock) parseNumber(b []byte, point byte) (int64, bool) {
 		b = b[:n]
 	}
 	if !ok || n != len(b) {
-		v, ok := numberFormat{point}.parse(b)
+		plain, _ := respell(b)
+		v, ok := numberFormat{point}.parse(plain)
 		if !ok {
 			return 0, false
 		}

@@ -45,6 +45,10 @@ func (k *clock) findRewrite(cells [][]byte, c column) ([]Note, error) {
 	if len(cells) == 0 {
 		return nil, nil
 	}
+	if join := joinedZeroDates(cells); join != nil {
+		k.rewrite = join
+		return nil, nil
+	}
 	form, note, found, err := findDateDigits(cells, c.label, k.order)
 	switch {
 	case err != nil:
@@ -114,6 +118,9 @@ func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, erro
 	}
 	if !known && areCompact(cells) {
 		return &clock{kind: calendar}, nil, nil
+	}
+	if err := oddNumbers(v, c); err != nil {
+		return nil, nil, err
 	}
 	if known {
 		return &clock{kind: elapsed, unit: unit}, nil, nil

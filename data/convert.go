@@ -63,6 +63,11 @@ func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 		unit = unitOption(o.TempUnit)
 	}
 	y := r.v[roleTemp]
+	if unit == "K" && o.TempUnit == "" {
+		if err := kelvinOrType(y, info.label(roleTemp)); err != nil {
+			return err
+		}
+	}
 	switch {
 	case unit == "mV":
 		if err := r.convertThermocouple(info, o); err != nil {

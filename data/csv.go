@@ -64,6 +64,11 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 	}
 	c := &csvReader{path: s.path, d: d, byName: map[string]*table{}, firstNo: map[string]int{}}
 	info := &reading{cols: d.cols}
+	defer func() {
+		if v, ok := d.format.parse([]byte(d.thousands)); ok {
+			info.note("thousands-mark", 0, "numbers such as %q were read as %.10g, with a thousands mark, since others beside them have none; if it is a decimal mark, export every number with it", d.thousands, v)
+		}
+	}()
 	if err = c.planStamps(o, info); err == nil {
 		if isLong(d.cols, o) {
 			err = c.planLong(o, info)
@@ -401,7 +406,7 @@ func (c *csvReader) cellRow(line int) {
 
 // misfit tells what is wrong with the number of cells in a row.
 func (c *csvReader) misfit() string {
-	if len(c.cells) <= c.last {
+	if len(c.cells) <= c.last || c.d.delim == ' ' && len(c.cells) < c.d.fields { // a blank cell between blanks is none
 		return "row too short"
 	}
 	for i := c.d.fields; i < len(c.cells); i++ {

@@ -6,11 +6,14 @@ import "bytes"
 // followed by exactly three digits cannot be a thousands mark. Where all marks
 // are followed by three, they are decimal marks if every number of the column
 // has one, since a logger prints a fixed number of decimals, and thousands
-// marks beside whole numbers without.
-func findPoint(lines []line, delim byte, fields int) byte {
+// marks beside whole numbers without: guess is then such a number. Between
+// commas a point is no thousands mark where no cell has a decimal comma.
+func findPoint(lines []line, delim byte, fields int) (point byte, guess []byte) {
 	var decimal [2]int              // cells whose mark can only be a decimal one
 	loose := make([][2]int, fields) // by column, cells whose mark could be either
 	whole := make([]int, fields)    // cells without a mark
+	commas := false
+	examples := make([][]byte, fields)
 	for _, l := range lines {
 		if len(l.cells) != fields {
 			continue
@@ -20,6 +23,7 @@ func findPoint(lines []line, delim byte, fields int) byte {
 			if _, stamp := compactStamp(c); stamp || looseClass(c) != numbers {
 				continue
 			}
+			commas = commas || bytes.IndexByte(c, ',') >= 0
 			switch k, sure := markOf(c); {
 			case k < 0:
 				whole[i]++
@@ -27,24 +31,26 @@ func findPoint(lines []line, delim byte, fields int) byte {
 				decimal[k]++
 			default:
 				loose[i][k]++
+				examples[i] = c
 			}
 		}
 	}
 	if decimal[0]+decimal[1] == 0 {
 		for i, n := range loose {
 			for k := range n {
-				if n[k] > 0 && whole[i] == 0 {
+				if n[k] > 0 && (whole[i] == 0 || delim == ',' && !commas) {
 					decimal[k] += n[k]
 				} else if n[k] > 0 {
 					decimal[1-k] += n[k]
+					guess = examples[i]
 				}
 			}
 		}
 	}
 	if decimal[1] > decimal[0] {
-		return ','
+		return ',', guess
 	}
-	return '.'
+	return '.', guess
 }
 
 // markOf finds the mark that stands last in a number: 0 a point, 1 a comma, -1

@@ -17,6 +17,8 @@ type dialect struct {
 	rewrite func(line []byte) []byte // as of the lineReader
 	keys    []string                 // names that stand in every row, in place of a header
 
+	thousands string // a number whose mark could be a decimal one as well
+
 	fields int // cells in a row of data
 	first  int // line of the first row of data
 	shift  int // 1 when the rows begin with a row name that the header leaves out
@@ -113,7 +115,10 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 	if names := d.signalNames(records); names != nil {
 		return nil, fmt.Errorf("%s: %w", path, errTransposed(names))
 	}
-	d.format.point = findPoint(records, d.delim, d.fields)
+	var guess []byte
+	if d.format.point, guess = findPoint(records, d.delim, d.fields); guess != nil {
+		d.thousands = decodeName(guess)
+	}
 	return d, d.findColumns(path, records)
 }
 
@@ -395,6 +400,9 @@ func (d *dialect) inspect(rows []line) {
 			for w := range words {
 				_, known := canonicalUnit(decodeName([]byte(w)))
 				c.units = c.units && known
+			}
+			if before := i - 1; c.units && len(words) == 1 && before >= 0 && d.cols[before].class == numbers && d.cols[before].unit == "" { // the unit of the numbers beside it
+				d.cols[before].unit, _ = canonicalUnit(c.sample[0])
 			}
 		}
 	}

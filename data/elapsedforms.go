@@ -2,18 +2,27 @@ package data
 
 import (
 	"bytes"
+	"slices"
 	"strings"
 )
 
 // parseElapsed reads elapsed time that has days in front of hours, minutes and
 // seconds (0 days 00:00:01.5, 1.02:03:04, 1d 02:03:04), or units behind the
-// numbers (1h2m3.5s, and T#1s500ms as IEC 61131-3 writes it, from memory).
+// numbers (1h2m3.5s, PT1.5S of ISO 8601, and T#1s500ms as IEC 61131-3 writes it,
+// from memory).
 func parseElapsed(b []byte) (ns int64, ok bool) {
 	if len(b) < 4 {
 		return 0, false
 	}
 	if rest := withoutTimePrefix(b); len(rest) < len(b) {
 		return parseUnits(rest, 1)
+	}
+	if b[0] == 'P' { // a duration of ISO 8601: P1DT2H3M4.5S
+		date, tod, timed := bytes.Cut(b[1:], []byte{'T'})
+		if timed && bytes.IndexAny(date, "MYW") < 0 { // months, not minutes
+			return parseUnits(slices.Concat(date, tod), 1)
+		}
+		return 0, false
 	}
 	if days, rest := leadingDays(b); rest != nil {
 		tod, n, fields := scanTime(rest, true)

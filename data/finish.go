@@ -117,7 +117,7 @@ func (e *lineError) Unwrap() error { return e.err }
 
 // mendClock mends the stamps and drops the rows that go with that.
 func (r *rows) mendClock(k *clock) error {
-	s := &stampSeries{t: r.t, same: r.sameValues, line: r.lines.line, wall: k.wall(), tod: k.timeOfDay(), dated: k.dated() || k.yearless}
+	s := &stampSeries{t: r.t, same: r.sameValues, line: r.lines.line, wall: k.wall(), tod: k.timeOfDay(), dated: k.dated() || k.yearless, counts: k.counts()}
 	if k.yearless {
 		if err := s.mendYears(); err != nil {
 			return err

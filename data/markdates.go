@@ -4,6 +4,7 @@ package data
 // without a year, by their names and by all of their cells. A date alone counts
 // only beside a time of day.
 func markDates(d *dialect) {
+	markZeroDates(d)
 	for i := range d.cols {
 		c := &d.cols[i]
 		if c.class != numbers && c.class != texts || c.unit != "" {

@@ -14,6 +14,7 @@ type stampSeries struct {
 	wall     bool                // local clock without a zone
 	tod      bool                // time of day without a date
 	dated    bool                // date and time
+	counts   []int64             // after which a counter starts again at zero, ns
 	reversed bool                // out: newest row first; the caller turns the rows round
 
 	drop    []bool // out: rows that go; nil when all stay
@@ -156,6 +157,15 @@ func (s *stampSeries) runOn() error {
 			if midnights++; midnights == 1 {
 				first = i
 			}
+		case s.dated && s.wall && day-back >= 0 && day-back <= max(5*step, int64(2*time.Second)):
+			offset += day
+			t += day
+			s.note("clock-midnight", i, "the date did not go on at midnight; the clock was taken to")
+		case s.startsAgain(back, step) > 0:
+			count := s.startsAgain(back, step)
+			offset += count
+			t += count
+			s.note("clock-counter", i, "the clock started again at its largest count, after %v; it was taken to go on", time.Duration(count))
 		case s.resent(i, t, offset, hourly(back)):
 			s.dropRow(i, "repeated row")
 			s.t[i] = last
@@ -184,6 +194,17 @@ func (s *stampSeries) runOn() error {
 		s.note("clock-midnight", first, "the clock started again at midnight (%s); it was taken to go on", times(midnights))
 	}
 	return nil
+}
+
+// startsAgain is the count after which the clock started again, 0 where a jump
+// back is none such: it must end within a few rows of it.
+func (s *stampSeries) startsAgain(back, step int64) int64 {
+	for _, c := range s.counts {
+		if over := c - back; over > 0 && over <= 3*step {
+			return c
+		}
+	}
+	return 0
 }
 
 // resentRows is how many rows are compared to tell rows sent again from a

@@ -68,4 +68,22 @@ var clockQuirks = []quirk{
 	{file: "hundredths-behind-colon.csv", wrong: `column "time" (10:00:00:00): the digits behind the last colon could be a decimal fraction of a second, milliseconds, or seconds behind days`},
 	{file: "ticks-year-1.csv", start: janStart, notes: []string{"clock-ticks"}},
 	{file: "ticks-1601.csv", start: janStart, notes: []string{"clock-ticks"}},
+
+	// clocks that start again, and units
+	{file: "date-at-midnight.csv", start: lateStart, notes: []string{local}},
+	{file: "date-at-midnight-us.csv", start: lateStart, notes: []string{local}},
+	{file: "date-stands-still.csv", start: lateStart, notes: []string{"clock-midnight", local}},
+	{file: "counter-16-bit.csv", notes: []string{"clock-counter"}},
+	{file: "counter-32-bit.csv", notes: []string{"clock-counter"}},
+	{file: "seconds-of-day.csv", notes: []string{"clock-counter"}},
+	{file: "minutes-pointed.csv", wrong: `column "Time (min)" goes on evenly only if what stands behind the point is a number of sixtieths (1.30 for 1:30): export it with a colon, or say --time-format seconds, min or hours`},
+	{file: "minutes-pointed.csv", o: Options{TimeFormat: "min"}, t: []float64{0, 6, 12, 18, 24, 30, 60, 66}},
+	{file: "time-unit-odd.csv", wrong: `column "Time (100 ms)" counts time in "100 ms", which is no unit that is known`},
+	{file: "time-unit-m.csv", wrong: `column "Time (m)" counts time in "m", which is no unit that is known: if its numbers are seconds or another unit, say which with --time-format seconds, ms, min or hours`},
+	{file: "time-unit-m.csv", o: Options{TimeFormat: "seconds"}},
+	{file: "duration-iso.csv"},
+	{file: "browser-date.csv", t: ramp(8, func(i int) float64 { return float64(i) }), start: "2026-01-25T10:00:00+01:00"},
+	{file: "zone-in-brackets.csv", start: "2026-01-25T10:00:00+01:00"},
+	{file: "long-millionths-of-day.csv", t: ramp(8, func(i int) float64 { return float64(i) }), within: 1e-5, // four decimals of 86.4 ms
+		start: "2026-01-25T10:00:00.00000288Z", notes: []string{"clock-day-number", "long-form", local}, dropped: map[string]int{"no time": 1}},
 }

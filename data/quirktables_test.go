@@ -8,7 +8,7 @@ var tableQuirks = []quirk{
 	{file: "clock-for-each-channel-same.csv", notes: []string{"time-unit-assumed"}},
 	{file: "clock-for-each-channel-same-stamps.csv", start: janStart},
 	{file: "clock-for-each-channel-same-name.csv"},
-	{file: "clock-for-each-channel.csv", wrong: `columns "t1" (0, 0.5, 1), "t2" (0.2, 0.7, 1.2) are two clocks that differ ("0" and "0.2" in line 2), as where every channel has its own: export the channels on one clock, or as rows of time, tag and value; if the difference does not matter, say which to use with --time-col`},
+	{file: "clock-for-each-channel.csv", wrong: `columns "t1" (0, 0.5, 1), "t2" (0.2, 0.7, 1.2) are two clocks that differ ("0" and "0.2" in line 2): if every channel has its own, export the channels on one clock, or as rows of time, tag and value; else say which to use with --time-col`},
 	{file: "clock-for-each-channel.csv", o: Options{TimeCol: "t2"}, notes: []string{"time-unit-assumed"}},
 	{file: "clock-for-each-channel-named.csv", wrong: `columns "column 1" called "Time (s)" (0, 0.5, 1), "column 3" called "Time (s)" (0.2, 0.7, 1.2) are two clocks that differ`},
 	{file: "clock-for-each-channel-named.csv", o: Options{TimeCol: "column 3"}},
@@ -16,6 +16,15 @@ var tableQuirks = []quirk{
 	{file: "clock-for-each-channel-late.csv", wrong: `are two clocks that differ ("1001.0" and "1001.1" in line 2004)`},
 	{file: "two-names-alike.csv", wrong: `2 columns could be the temperature: "column 3" called "temp_degC" (24.1, 24.1, 24.2), "column 4" called "temp_degC" (25.1, 25.1, 25.2); say which with --temp-col`},
 	{file: "two-names-alike.csv", o: Options{TempCol: "column 3"}},
+
+	// rows and cells
+	{file: "blanks-cell-missing.txt", t: without(baseT, 3), u: without(baseU, 3), y: without(baseY, 3), dropped: map[string]int{"row too short": 1}},
+	{file: "brackets-round-rows.log"},
+	{file: "brackets-rows.log"},
+	{file: "quotes-single-rows.csv"},
+	{file: "quotes-single-comma.csv"},
+	{file: "dictionary-lines.log", notes: []string{"rows-of-pairs"}},
+	{file: "three-decimals-comma.csv", t: ramp(8, func(i int) float64 { return float64(i) }), y: wholeY},
 
 	// one signal a row
 	{file: "transposed.csv", wrong: `transposed.csv: the table seems to hold one signal in each row ("time_s", "drive_V", "outlet_degC") and one instant in each column: turn it round (in a spreadsheet: copy, paste special, transpose) and save it as CSV`},
@@ -30,6 +39,13 @@ var tableQuirks = []quirk{
 	{file: "columns-look-swapped.csv", t: ramp(40, half), u: swappedU, y: swappedY, input: "unit", temp: "unit", notes: []string{"input-unit-unknown", "unit-unknown", "columns-look-swapped"}},
 
 	// units and readings that cannot be
+	{file: "unit-columns.csv"},
+	{file: "units-russian.csv", t: ramp(8, func(i int) float64 { return 30 * float64(i) })},
+	{file: "units-misspelt.csv"},
+	{file: "degree-alone.csv", temp: "°", notes: []string{"unit-unknown"}},
+	{file: "thermocouple-type-or-kelvin.csv", wrong: `column "outlet_TC_K": K could be kelvin or the type of the thermocouple, and its highest value of 29.8 K would be -243.35 °C: say which unit it is with --temp-unit C, F or K`},
+	{file: "thermocouple-type-or-kelvin.csv", o: Options{TempUnit: "C"}},
+	{file: "kelvin-too-cold.csv", wrong: `column "outlet (K)": K could be kelvin or the type of the thermocouple`},
 	{file: "percent-below-one.csv", u: []float64{0, 0, 0.15, 0.15, 0.15, 0.15, 0.15, 0.15}, within: 1e-15, input: "%", notes: []string{"percent-below-one"}},
 	{file: "temperature-thousands.csv", wrong: `column "outlet_degC" holds no temperature (8 cells are above 3500 °C): is a decimal mark, a factor of ten, the unit or the sign of a 16-bit number lost in the export?`},
 	{file: "temperature-16-bit.csv", y: []float64{nan, nan, nan, nan, nan, 13, 26, 38}, missing: map[string]int{"above 3500 °C": 5}},

@@ -19,7 +19,7 @@ func plainStamp(b []byte) []byte {
 	if slices.ContainsFunc(b, func(c byte) bool { return c >= 0x80 }) {
 		b = withoutSigns(b)
 	}
-	b = withoutWords(b)
+	b = withoutWords(withoutRemark(b))
 	for _, read := range []func([]byte) ([]byte, bool){fromWeek, fromDayOfYear, fromHours} {
 		if plain, ok := read(b); ok {
 			return plain

@@ -31,6 +31,23 @@ func withoutWords(b []byte) []byte {
 	return b
 }
 
+// withoutRemark takes the name of a zone in brackets off the end of a stamp, as
+// browsers print it; an offset in them stays.
+func withoutRemark(b []byte) []byte {
+	i := bytes.LastIndex(b, []byte(" ("))
+	if i < 0 || b[len(b)-1] != ')' {
+		return b
+	}
+	inside := b[i+2 : len(b)-1]
+	if _, ok := zoneOffset(inside); ok {
+		return slices.Concat(b[:i+1], inside)
+	}
+	if len(inside) == 0 || !isLetter(inside[0]) {
+		return b
+	}
+	return b[:i]
+}
+
 // withoutOrdinal takes the letters off behind a day of one or two digits.
 func withoutOrdinal(b []byte) []byte {
 	for _, letters := range []string{"st", "nd", "rd", "th", "er"} {

@@ -15,23 +15,24 @@ var unitNames = []struct {
 	unit string
 	ways []string
 }{
-	{"V", []string{"v", "volt", "volts", "vdc", "vac", "vrms", "v rms", "v dc", "v ac", "v(rms)"}},
+	{"V", []string{"v", "volt", "volts", "vdc", "vac", "в", "вольт", "vrms", "v rms", "v dc", "v ac", "v(rms)"}},
 	{"mV", []string{"mv", "millivolt", "millivolts"}},
 	{"kV", []string{"kv", "kilovolt", "kilovolts"}},
 	{"%", []string{"%", "pct", "percent", "prozent", "perc", "% duty", "pourcent"}},
-	{"mA", []string{"ma", "milliamp", "milliamps", "milliampere"}},
-	{"W", []string{"w", "watt", "watts"}},
-	{"kW", []string{"kw", "kilowatt"}},
-	{"degC", []string{"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c", "øc", "â°c", "\ufffdc", "?c"}},
-	{"degF", []string{"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f", "øf", "â°f", "\ufffdf", "?f"}},
+	{"mA", []string{"ma", "milliamp", "milliamps", "milliampere", "ма"}},
+	{"W", []string{"w", "watt", "watts", "вт"}},
+	{"kW", []string{"kw", "kilowatt", "квт"}},
+	{"degC", []string{"°c", "ºc", "˚c", "℃", "degc", "deg c", "deg. c", "c", "celsius", "grad c", "gradc", "° c", "degrees c", "øc", "â°c", "\ufffdc", "?c", "°с", "oc", "degree c", "deg.c", "celcius", "centigrade", "°celsius", "deg celsius", "degrees celsius", "grad celsius"}},
+	{"degF", []string{"°f", "ºf", "˚f", "℉", "degf", "deg f", "deg. f", "f", "fahrenheit", "° f", "degrees f", "degree f", "deg.f", "°fahrenheit", "degrees fahrenheit", "øf", "â°f", "\ufffdf", "?f"}},
 	{"K", []string{"k", "kelvin"}},
+	{"°", []string{"°", "º", "˚"}}, // of temperature, nobody knows which
 
 	{"ns", []string{"ns"}},
 	{"us", []string{"us", "µs", "μs", "usec", "micros", "microsecond", "microseconds"}},
-	{"ms", []string{"ms", "msec", "msecs", "毫秒", "ミリ秒", "millis", "millisecond", "milliseconds", "millisekunden"}},
-	{"s", []string{"s", "sec", "secs", "秒", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"}},
-	{"min", []string{"min", "mins", "分", "分钟", "minute", "minutes", "minuten", "minutos", "minuti"}},
-	{"h", []string{"h", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"}},
+	{"ms", []string{"ms", "мс", "msec", "msecs", "毫秒", "ミリ秒", "millis", "millisecond", "milliseconds", "millisekunden"}},
+	{"s", []string{"s", "с", "сек", "sec", "secs", "秒", "second", "seconds", "sek", "sekunden", "secondes", "segundos", "secondi", "seconden"}},
+	{"min", []string{"min", "mn", "мин", "mins", "分", "分钟", "minute", "minutes", "minuten", "minutos", "minuti"}},
+	{"h", []string{"h", "ч", "hr", "hrs", "hour", "hours", "std", "stunden", "heures", "horas", "ore"}},
 	{"d", []string{"d", "day", "days", "tage", "jours"}},
 }
 
