@@ -3,6 +3,7 @@ package fit
 import (
 	"fmt"
 	"math"
+	"slices"
 	"sort"
 
 	"lagwright/data"
@@ -131,29 +132,24 @@ func (c *Card) band(v *Curves, run *data.Run, best ident.Plant) error {
 // bump and ever wider from there on.
 func closeRows(run *data.Run, bumps []ident.Bump, most int) []int {
 	n := len(run.T)
-	keep := make([]bool, n)
 	every := max(1, 2*n/most)
+	rows := make([]int, 0, n/every+most)
 	for k := 0; k < n; k += every {
-		keep[k] = true
+		rows = append(rows, k)
 	}
-	keep[n-1] = true
+	rows = append(rows, n-1)
 	if each := most / 2 / max(len(bumps), 1); every > 1 && each > 4 {
 		for _, b := range bumps {
 			// Rows at distances that grow by a fixed ratio fill the hold with about each of them.
 			growth := math.Pow(float64(b.End-b.Row+1), 2/float64(each))
-			keep[max(b.Row-1, 0)] = true
+			rows = append(rows, max(b.Row-1, 0))
 			for d := 1.0; b.Row+int(d)-1 < b.End; d = math.Max(d*growth, d+1) {
-				keep[b.Row+int(d)-1] = true
+				rows = append(rows, b.Row+int(d)-1)
 			}
 		}
 	}
-	var rows []int
-	for k, ok := range keep {
-		if ok {
-			rows = append(rows, k)
-		}
-	}
-	return rows
+	slices.Sort(rows)
+	return slices.Compact(rows)
 }
 
 // rowsOf are the times and temperatures of some rows.

@@ -39,10 +39,10 @@ func (f *fitted) polish() *polished {
 	}
 	var sum float64
 	gram := f.normal(&at, &sum, &m)
-	damping := 0.0
+	damping, share := 0.0, 1.0
 	for range 12 {
-		next, promised, ok := f.step(&at, gram, damping)
-		if ok && promised < 1e-15*sum { // nothing left that a sum of squares could show
+		next, promised, ok := f.step(&at, gram, damping, share)
+		if ok && promised < 1e-13*sum { // nothing left that a sum of squares could show
 			at = *next
 			break
 		}
@@ -53,19 +53,34 @@ func (f *fitted) polish() *polished {
 		}
 		if s < sum {
 			done := damping == 0 && sum-s < 1e-13*sum
-			at, gram, sum, damping = *next, g, s, 0
+			if damping == 0 {
+				share = bend((sum-s)/promised, share)
+			}
+			if at, gram, sum, damping = *next, g, s, damping/10; damping < 1e-4 {
+				damping = 0
+			}
 			if done {
 				break
 			}
 			continue
 		}
-		if ok && promised < 1e-9*sum || damping > 1 {
+		if ok && promised < 1e-9*sum || damping > 10 {
 			break
 		}
-		damping = math.Max(100*damping, 1e-6) // lags near zero or near one another
+		share, damping = 1, math.Max(30*damping, 1e-3) // lags near zero or near one another
 	}
 	at.cov = f.unitCovariance(gram)
 	return &at
+}
+
+// bend is the share of the next Gauss-Newton step to take, given which part of what
+// it promised the last one kept of which this share was taken. Where the residuals
+// are large, the sum of squares bends 1+b times as much as their tangent says: the
+// share x of a step promises x(2−x) of what the whole one does and keeps x(2−x(1+b)),
+// and 1/(1+b) is the share that leads to the bottom.
+func bend(kept, share float64) float64 {
+	curvature := (2 - kept*(2-share)) / share
+	return math.Min(math.Max(1/curvature, 0.5), 1.5)
 }
 
 // unitCovariance inverts the normal equations of the parameters that are free.
@@ -293,9 +308,10 @@ func cut(cols [][]float64, n int) [][]float64 {
 	return out
 }
 
-// step solves the damped normal equations and returns the point they lead to, inside
-// the bounds, and by how much they promise to lower the sum of squares.
-func (f *fitted) step(at *polished, gram [][]float64, damping float64) (next *polished, promised float64, ok bool) {
+// step solves the damped normal equations and returns the point to which a share of
+// their solution leads, inside the bounds, and by how much it promises to lower the
+// sum of squares.
+func (f *fitted) step(at *polished, gram [][]float64, damping, share float64) (next *polished, promised float64, ok bool) {
 	e := f.e
 	n := len(gram) - 1
 	var free []int
@@ -326,8 +342,8 @@ func (f *fitted) step(at *polished, gram [][]float64, damping float64) (next *po
 	move := make([]float64, n)
 	for k, x := range e.damped.solve(rhs, free) {
 		j := free[k]
-		move[j] = x / math.Sqrt(gram[j][j])
-		promised += x * rhs[j]
+		move[j] = share * x / math.Sqrt(gram[j][j])
+		promised += share * (2 - share) * x * rhs[j]
 	}
 	next = &polished{gain: at.gain + move[0], eta: append([]float64(nil), at.eta...)}
 	for l := range next.eta {

@@ -96,6 +96,10 @@ func heldLevels(u []float64) []level {
 	now := level{end: 1, first: u[0]}
 	var out []level
 	for k := 1; k < len(u); k++ {
+		if u[k] == now.first && now.excess == 0 { // held, as nearly every row of a bump test
+			now.end++
+			continue
+		}
 		away := math.Abs(u[k]-now.mean()) > threshold
 		if away && noise > 0 && k+1 < len(u) {
 			away = math.Abs(u[k+1]-now.mean()) > threshold
