@@ -54,6 +54,9 @@ func (t *tuning) cautions(g *Gains) []string {
 	if words := t.unlimited(g); words != "" {
 		c = append(c, words)
 	}
+	if words := g.summing(); words != "" {
+		c = append(c, words)
+	}
 	if len(o.plants) < 20 {
 		c = append(c, fmt.Sprintf("The card holds %d plausible plants: the spread of the figures is not known.", len(o.plants)))
 	}
