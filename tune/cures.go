@@ -26,15 +26,15 @@ func (t *tuning) cures(ctx context.Context, kind string) []string {
 		return t.curesOfReach(ctx, kind)
 	}
 	out := t.otherControllers(ctx, kind)
-	asked, moderate := t.limitsAsked(), false
+	asked, least := t.limitsAsked(), math.Inf(1)
 	for _, l := range asked {
 		if f, ok := t.pull(ctx, kind, l); ok {
 			out = append(out, l.words(l.value(f)))
-			moderate = moderate || f < immoderate
+			least = min(least, f)
 		}
 	}
-	if len(asked) > 1 && !moderate {
-		if f, ok := t.pull(ctx, kind, together(asked)); ok {
+	if len(asked) > 1 && least >= immoderate {
+		if f, ok := t.pull(ctx, kind, together(asked)); ok && f < clearlyLess*least {
 			out = append(out, together(asked).words(f))
 		}
 	}
@@ -51,8 +51,11 @@ func (t *tuning) cures(ctx context.Context, kind string) []string {
 }
 
 // immoderate is the factor by which no limit should be eased alone without
-// offering to ease all that are asked by less.
-const immoderate = 3
+// offering to ease all that are asked by less; clearlyLess is by how much less.
+const (
+	immoderate  = 3
+	clearlyLess = 0.8
+)
 
 // curesOfReach lists what brings a setpoint step within reach of the input.
 func (t *tuning) curesOfReach(ctx context.Context, kind string) []string {

@@ -74,10 +74,10 @@ func figure(v *float64, digits int) string {
 	return s
 }
 
-// duration writes seconds in minutes from ten on, in hours from two on.
+// duration writes seconds in minutes from ten on, in hours from one on.
 func duration(seconds float64, digits int) string {
 	switch {
-	case seconds >= 7200:
+	case seconds >= 3600:
 		return quantity(seconds/3600, "h", digits)
 	case seconds >= 600:
 		return quantity(seconds/60, "min", digits)

@@ -113,7 +113,7 @@ func TestDuration(t *testing.T) {
 		seconds float64
 		digits  int
 		want    string
-	}{{0.3, 3, "0.3 s"}, {56.04, 3, "56 s"}, {599, 4, "599 s"}, {600, 4, "10 min"}, {5400, 3, "90 min"}, {21600, 4, "6 h"}, {15100, 3, "4.19 h"}} {
+	}{{0.3, 3, "0.3 s"}, {56.04, 3, "56 s"}, {599, 4, "599 s"}, {600, 4, "10 min"}, {1800, 3, "30 min"}, {5400, 3, "1.5 h"}, {21600, 4, "6 h"}, {15100, 3, "4.19 h"}} {
 		if got := duration(c.seconds, c.digits); got != c.want {
 			t.Errorf("%g s: %q, want %q", c.seconds, got, c.want)
 		}

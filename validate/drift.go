@@ -120,7 +120,7 @@ func (d *Drift) WriteText(w io.Writer) error {
 		fmt.Fprintf(&b, "\nwarning: %s\n", text)
 	}
 	for _, f := range d.Failed {
-		fmt.Fprintf(&b, "left out: %s: %s\n", clean(f.File), clean(f.Reason))
+		fmt.Fprintf(&b, "left out: %s\n", f.words())
 	}
 	if len(d.Cautions) > 0 {
 		b.WriteString("\nCautions\n")

@@ -37,6 +37,7 @@ func TestReplayTextGolden(t *testing.T) {
 	}
 	r := &Replay{
 		Gains: tune.Gains{Units: tune.GainUnits{Input: "V", Temperature: "degC"}}, Plants: 200,
+		Requirement: tune.Requirement{Settling: ptr(45)},
 		Runs: []RunReplay{
 			{File: "dryer-0301.csv", Judged: true, Meets: true, Probability: 1,
 				Proposed: BandMetrics{metrics(31, 1.2, 81, 6.1), metrics(34, 2.4, 81.4, 6.3), metrics(38, 3.9, 82, 6.6)}, Logged: metrics(74, 11, 83.5, 7.2)},

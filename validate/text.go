@@ -27,7 +27,7 @@ func (r *Replay) WriteText(w io.Writer) error {
 			fmt.Fprintf(&b, "and %d more not replayed\n", len(r.Failed)-mostShown)
 			break
 		}
-		fmt.Fprintf(&b, "not replayed: %s: %s\n", clean(f.File), clean(f.Reason))
+		fmt.Fprintf(&b, "not replayed: %s\n", f.words())
 	}
 	if len(r.Cautions) > 0 {
 		b.WriteString("\nCautions\n")
@@ -41,9 +41,15 @@ func (r *Replay) WriteText(w io.Writer) error {
 
 func (r *Replay) writeHead(b *strings.Builder) {
 	s := r.Summary
-	fmt.Fprintf(b, "%d of %d judged runs meet the requirement on %d plausible plants", s.Meeting, s.Judged, r.Plants)
-	if open := s.Runs - s.Judged; open > 0 {
-		fmt.Fprintf(b, "; %d could not be judged", open)
+	switch open := s.Runs - s.Judged; {
+	case r.Requirement.Words(r.Gains.Units) == "none" && r.RunLimits == (RunLimits{}):
+		fmt.Fprintf(b, "%s replayed on %d plausible plants; no requirement was given to judge by", counted(s.Runs, "run"), r.Plants)
+	case s.Judged == 0:
+		fmt.Fprintf(b, "nothing of the requirement shows in %s, replayed on %d plausible plants", counted(open, "run"), r.Plants)
+	case open > 0:
+		fmt.Fprintf(b, "%d of %d judged runs meet the requirement on %d plausible plants; %d could not be judged", s.Meeting, s.Judged, r.Plants, open)
+	default:
+		fmt.Fprintf(b, "%d of %d judged runs meet the requirement on %d plausible plants", s.Meeting, s.Judged, r.Plants)
 	}
 	if s.Failed > 0 {
 		fmt.Fprintf(b, "; %d not replayed", s.Failed)
@@ -183,6 +189,14 @@ func (r *RunReplay) writeNotes(b *strings.Builder) {
 	for _, warning := range r.Warnings {
 		note("warning: %s", warning)
 	}
+}
+
+// words name the file once.
+func (f FailedRun) words() string {
+	if strings.HasPrefix(f.Reason, f.File) {
+		return clean(f.Reason)
+	}
+	return clean(f.File) + ": " + clean(f.Reason)
 }
 
 // counted writes "1 run", "2 runs".

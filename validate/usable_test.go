@@ -33,7 +33,7 @@ func TestUnusableFits(t *testing.T) {
 		{"open below", []fit.Parameter{open(between("gain", 0, 2, 3.4), true, false), lag}, "no more than one side"},
 		{"reaches zero", []fit.Parameter{between("gain", -0.2, 2, 4), lag}, "not told from zero"},
 		{"known gain", []fit.Parameter{{Name: "gain", Value: 12, Fixed: true}, lag}, ""},
-		{"lag beyond the log", []fit.Parameter{between("gain", 100, 800, 2000), between("lag1", 500, 900, 1500)}, "a lag of 900 s from a log of 300 s"},
+		{"lag beyond the log", []fit.Parameter{between("gain", 100, 800, 2000), between("lag1", 500, 900, 1500)}, "a lag of 15 min from a log of 300 s"},
 	} {
 		if got := (estimate{parameters: c.p, span: 300}).unusable(); c.want == "" && got != "" || !strings.Contains(got, c.want) {
 			t.Errorf("%s: %q, want %q", c.name, got, c.want)

@@ -120,10 +120,10 @@ func quantity(x float64, unit string) string {
 	return bare(x, unit) + " " + shown(unit)
 }
 
-// duration writes seconds in minutes from ten on, in hours from two on.
+// duration writes seconds in minutes from ten on, in hours from one on.
 func duration(seconds float64) string {
 	switch {
-	case seconds >= 7200:
+	case seconds >= 3600:
 		return number(seconds/3600) + " h"
 	case seconds >= 600:
 		return number(seconds/60) + " min"

@@ -54,6 +54,9 @@ func runReport(ctx context.Context, c *console, o *reportOptions, args []string)
 			logs = append(logs, path)
 		}
 	}
+	if err := j.agree(); err != nil {
+		return err
+	}
 	if len(logs) > 0 {
 		if err := j.addLogs(ctx, c, &o.log, logs); err != nil {
 			return err
@@ -64,6 +67,21 @@ func runReport(ctx context.Context, c *console, o *reportOptions, args []string)
 		return page(c.out)
 	}
 	return c.writeFile(c.output, page)
+}
+
+// agree refuses parts of a page that are not about one heater and one set of
+// gains.
+func (j *job) agree() error {
+	if c, g := j.card, j.gains; c != nil && g != nil && g.Units != (tune.GainUnits{Input: c.Units.Input, Temperature: c.Units.Temperature}) {
+		return inputErrorf("the gains are in %s/%s, the card is in %s/%s: these are not of one heater", g.Units.Input, g.Units.Temperature, c.Units.Input, c.Units.Temperature)
+	}
+	if j.replay == nil {
+		return nil
+	}
+	if err := j.replay.Belongs(j.card, j.gains); err != nil {
+		return inputError{err}
+	}
+	return nil
 }
 
 // addLogs reads the logs behind the card, judges them and lays the model
