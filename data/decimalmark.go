@@ -19,8 +19,13 @@ func findPoint(lines []line, delim byte, fields int) (point byte, guess []byte) 
 			continue
 		}
 		for i, c := range l.cells {
-			c, _ = respell(c)
-			if _, stamp := compactStamp(c); stamp || looseClass(c) != numbers {
+			if looseClass(c) != numbers {
+				how := usualSpelling
+				if c, how = respell(c); how == usualSpelling || looseClass(c) != numbers {
+					continue
+				}
+			}
+			if _, stamp := compactStamp(c); stamp {
 				continue
 			}
 			commas = commas || bytes.IndexByte(c, ',') >= 0

@@ -100,7 +100,9 @@ func FuzzCSV(f *testing.F) {
 // is read twice gives the same time twice.
 func FuzzClock(f *testing.F) {
 	for _, s := range []string{"2026-01-05T10:00:00.25+01:00", "05/01/2026 10:00:00 PM", "5.1.26 10:00:00,5", "05-Jan-2026", "20260105T10:00:00Z",
-		"59:58.5", "100:00:00", "1767607200.123456789", "46027.4166667", "-1e18", "1e400", "10:15:30:250", "Jän 5, 2026 1:02", "Tue Dec  1 20:20:05.25 UTC 2026", ""} {
+		"59:58.5", "100:00:00", "1767607200.123456789", "46027.4166667", "-1e18", "1e400", "10:15:30:250", "Jän 5, 2026 1:02", "Tue Dec  1 20:20:05.25 UTC 2026", "",
+		"2026-W11-6T10:22:31", "Mar 14 10:22:31", "14.03. 10:22", "14032026 102231", "260314_102231", "10:22:31:50", "2026073T102231Z", "14 de marzo de 2026 a las 10h22",
+		"639091225510000000", "2026-03-14 00:00:00 1899-12-30 10:22:31", "Sat Mar 14 2026 10:22:31 GMT+0100 (X)", "24.1-", "P1DT2H"} {
 		f.Add(s, "dd.MM.yyyy HH:mm:ss")
 	}
 	f.Add("05/01/2026", "%d/%m/%Y")
@@ -114,6 +116,14 @@ func FuzzClock(f *testing.F) {
 				if ok != ok2 || ok && (ns != ns2 || alt != alt2) {
 					t.Fatalf("%q read as %d, then as %d", s, ns, ns2)
 				}
+			}
+		}
+		found := &clock{kind: calendar}
+		if _, err := found.findRewrite([][]byte{b}, column{label: "time"}); err == nil {
+			ns, _, ok := found.parse(b, '.')
+			again, _, also := found.parse(b, '.')
+			if ok != also || ns != again {
+				t.Fatalf("%q read as %d, then as %d", s, ns, again)
 			}
 		}
 		if k, err := clockOfFormat(format); err == nil {

@@ -163,11 +163,16 @@ func (c *clock) parseTimeAndZone(b []byte) (tod, east int64, ok bool) {
 			return 0, 0, false
 		}
 	}
-	tod, rest, ok := halfOrLetter(tod, b[n:])
+	tod, rest, ok := halfDay(tod, b[n:])
 	if !ok || tod >= int64(nsDay+nsSecond) {
 		return 0, 0, false
 	}
 	rest = skipSpaces(rest)
+	if len(rest) == 1 && rest[0] != 'Z' {
+		if tod, rest, ok = halfOrLetter(tod, rest); !ok {
+			return 0, 0, false
+		}
+	}
 	if len(rest) > shortestPlace {
 		rest = withoutPlace(rest)
 	}
