@@ -131,12 +131,20 @@ func sharePhrase(g *tune.Gains) string {
 
 func replayPhrase(r *validate.Replay) string {
 	n := r.Summary
-	s := fmt.Sprintf("Replayed on %s: the requirement holds on %d", format.Count(n.Runs, "past run", "past runs"), n.Meeting)
+	s := fmt.Sprintf("Replayed on %s: ", format.Count(n.Runs, "past run", "past runs"))
 	switch {
+	case n.Judged == 0 && n.Runs == 1:
+		s += "it shows nothing that the requirement asks for"
 	case n.Judged == 0:
-		s = fmt.Sprintf("Replayed on %s: none shows anything that the requirement asks for", format.Count(n.Runs, "past run", "past runs"))
+		s += "none shows anything that the requirement asks for"
+	case n.Runs == 1 && n.Meeting == 1:
+		s += "the requirement holds"
+	case n.Runs == 1:
+		s += "the requirement does not hold"
 	case n.Judged < n.Runs:
-		s += fmt.Sprintf(" of the %d that can be judged", n.Judged)
+		s += fmt.Sprintf("the requirement holds on %d of the %d that can be judged", n.Meeting, n.Judged)
+	default:
+		s += fmt.Sprintf("the requirement holds on %d", n.Meeting)
 	}
 	if n.Distrusted > 0 {
 		s += fmt.Sprintf("; %s logged under known gains not reproduced", format.Count(n.Distrusted, "run", "runs"))
