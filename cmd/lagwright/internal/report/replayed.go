@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"math"
 	"slices"
 	"sort"
 	"strings"
@@ -151,9 +152,17 @@ func judged(r *validate.RunReplay) cell {
 // the band below.
 func beforeAfter(r *validate.RunReplay, pick func(*validate.RunMetrics) *float64, unit string) cell {
 	p := &r.Proposed
-	c := num(format.Optional(pick(&r.Logged), "", 3) + " → " + format.Optional(pick(&p.Median), unit, 3))
+	write := func(v *float64, unit string) string {
+		digits := 3
+		if v != nil && math.Abs(*v) >= 100 && (unit == "degC" || unit == "degF") {
+			digits = 4 // tenths of a degree
+		}
+		return format.Optional(v, unit, digits)
+	}
+	bare := func(v *float64) string { return strings.TrimSuffix(write(v, unit), " "+format.Unit(unit)) }
+	c := num(bare(pick(&r.Logged)) + " → " + write(pick(&p.Median), unit))
 	if l, h := pick(&p.Low), pick(&p.High); l != nil && h != nil && *l != *h {
-		c.Small = format.Short(*l, 3) + " to " + format.Short(*h, 3)
+		c.Small = bare(l) + " to " + bare(h)
 	}
 	return c
 }

@@ -138,7 +138,7 @@ func metricsTable(g *tune.Gains) *table {
 	add("Delay margin", "", func(m *tune.Metrics) *float64 { return m.DelayMargin }, durationOrDash)
 	row("Peak input", u.Input, most(q.InputMax, u.Input), func(m *tune.Metrics) *float64 { return m.PeakInput })
 	row("Steady offset", kelvin(u.Temperature), "", func(m *tune.Metrics) *float64 { return m.SteadyOffset })
-	row("IAE after a unit load", kelvin(u.Temperature)+"·s", "", func(m *tune.Metrics) *float64 { return m.IAE })
+	row("IAE after a unit load", strings.TrimSuffix(kelvin(u.Temperature)+"·s/"+u.Input, "/"), "", func(m *tune.Metrics) *float64 { return m.IAE })
 	return t
 }
 
