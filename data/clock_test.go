@@ -91,7 +91,7 @@ func TestTimeOfDay(t *testing.T) {
 		{"10:15:30:250", false, 10*time.Hour + 15*time.Minute + 30*time.Second + 250*time.Millisecond, true},
 		{"10:15:99", false, 0, false},
 		{"10", false, 0, false},
-		{"10:15:30 h", false, 0, false},
+		{"10:15:30 x", false, 0, false},
 	} {
 		ns, ok := parseTimeOfDay([]byte(c.text), c.hours)
 		if ok != c.ok || ok && ns != int64(c.want) {

@@ -15,11 +15,17 @@ func oddNumbers(v []float64, c column) error {
 			return fmt.Errorf("column %q counts time in %q, which is no unit that is known: if its numbers are seconds or another unit, say which with --time-format seconds, ms, min or hours; else export time in one of these", c.label, unit)
 		}
 	}
+	if n := len(v); n > 1 && v[n-1] < v[0] && countdown.in(c) {
+		return fmt.Errorf("column %q counts down by its name: export the time that went by, or name another clock with %s", c.label, flags[roleTime])
+	}
 	if c.unit != "s" && c.unit != "ms" && arePointed(v) {
 		return fmt.Errorf("column %q goes on evenly only if what stands behind the point is a number of sixtieths (1.30 for 1:30): export it with a colon, or say --time-format seconds, min or hours if these are decimals", c.label)
 	}
 	return nil
 }
+
+// countdown are words for time that is left.
+var countdown = vocabulary{words: []string{"remaining", "left", "countdown", "remain", "restzeit", "verbleibend", "restant", "restante", "rimanente", "resterend"}}
 
 // oddUnits are what stands in the brackets of a clock in place of a unit; m
 // could be minutes, months or a misprint.

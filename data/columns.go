@@ -19,6 +19,7 @@ type column struct {
 	stepwise     float64 // share of cells equal to the one before; NaN below 5 cells
 	ascending    bool    // numbers that never fall
 	repeats      bool    // text of a few values that keep coming back
+	numbered     bool    // whole numbers of a few values that keep coming back
 
 	halves   bool     // text of nothing but AM and PM
 	units    bool     // text of nothing but units

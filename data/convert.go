@@ -24,6 +24,11 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 				info.label(roleInput), o.InputUnit)
 		}
 	}
+	if unit != "" {
+		if err := refuseFactor(info.label(roleInput), roleInput, o.InputUnit != "" || o.InputSpan != nil); err != nil {
+			return err
+		}
+	}
 	run.Units.Input = unit
 	u := r.v[roleInput]
 	if unit == "%" && o.InputUnit == "" && !info.switched() {
@@ -63,6 +68,11 @@ func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 		unit = unitOption(o.TempUnit)
 	}
 	y := r.v[roleTemp]
+	if unit != "" {
+		if err := refuseFactor(info.label(roleTemp), roleTemp, o.TempUnit != "" || o.TempSpan != nil); err != nil {
+			return err
+		}
+	}
 	if unit == "K" && o.TempUnit == "" {
 		if err := kelvinOrType(y, info.label(roleTemp)); err != nil {
 			return err

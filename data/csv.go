@@ -46,9 +46,11 @@ type csvReader struct {
 	nulRows int
 	word    wordAmongNumbers
 	spelled spellings
-	twins   [][2]int       // columns of time that are the same as far as the sample goes
-	twinErr error          // they are not
-	firstNo map[string]int // line of the first row dropped, by reason
+	twins   [][2]int // columns of time that are the same as far as the sample goes
+	twinErr error    // they are not
+
+	headerErr error          // other names in the data
+	firstNo   map[string]int // line of the first row dropped, by reason
 }
 
 // readText reads a log in text form.
@@ -120,6 +122,9 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 
 // refuse tells what in the rows forbids to use them.
 func (c *csvReader) refuse() error {
+	if c.headerErr != nil {
+		return c.headerErr
+	}
 	if err := c.tooManyDropped(); err != nil {
 		return err
 	}
@@ -386,6 +391,7 @@ func (c *csvReader) cellRow(line int) {
 	t, alt, ok := c.instant()
 	if !ok {
 		stamp, _ := c.stampOf(c.cells)
+		c.lookForHeader(line)
 		reason := "no usable time"
 		if kind, _ := missingKind(stamp); kind == "blank" {
 			reason = "no time"

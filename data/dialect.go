@@ -100,6 +100,9 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 		}
 	}
 	d.delim, d.fields = findDelimiter(physical)
+	if text := bytes.TrimLeft(sample, " \t\r\n\xEF\xBB\xBF"); d.fields < 2 && len(text) > 0 && (text[0] == '{' || text[0] == '[') {
+		return nil, fmt.Errorf("%s: no rows of two or more numbers found: this seems to be JSON, of which only one object or list for every time, in a line of its own, can be read: export it so, or as CSV", path)
+	}
 	if d.fields < 2 {
 		return nil, fmt.Errorf("%s: no rows of two or more numbers found: %s", path, logWanted)
 	}
@@ -352,6 +355,9 @@ func isWord(cell []byte) bool {
 	return is || modeOf(cell) >= 0
 }
 
+// tagRows is how many rows are looked at to tell numbered tags.
+const tagRows = 200
+
 // inspect looks at the rows of the sample: values to show, whether a column
 // moves in steps, whether it only rises, what its stamps hold.
 func (d *dialect) inspect(rows []line) {
@@ -372,6 +378,9 @@ func (d *dialect) inspect(rows []line) {
 			case numbers:
 				if v, unit, ok := d.number(cell); ok {
 					s.add(v)
+					if s.n <= tagRows && v == math.Trunc(v) {
+						words[string(cell)]++
+					}
 					if unit != "" && c.unit == "" {
 						c.unit = unit
 					}
@@ -389,6 +398,10 @@ func (d *dialect) inspect(rows []line) {
 			}
 		}
 		c.stepwise, c.ascending = s.stepwise(), s.ascending()
+		if c.class == numbers {
+			c.numbered = s.fell > 0 && len(words) > 1 && sum(words) == min(s.n, tagRows) && 2*len(words) <= sum(words)
+			continue
+		}
 		c.repeats = len(words) > 0 && 2*len(words) <= sum(words)
 		if c.class == texts {
 			c.switched, c.words = onOff.switched(), onOff.seen

@@ -40,6 +40,9 @@ func (d *dialect) findHeader(above []line, data line) (names, units []string) {
 	}
 	d.header = append(d.header, rows[0].text)
 	names = cellNames(rows[0].cells)
+	if d.delim == ' ' && len(names) == d.fields-1 && areDateAndTime(data.cells) {
+		return append([]string{"date"}, names...), units
+	}
 	if len(names) == d.fields-1 && names[len(names)-1] != "" && (isRowName(data, names, d) || isWeekday(data.cells)) {
 		d.shift = 1
 		return names, units
@@ -190,6 +193,17 @@ func isRowName(data line, names []string, d *dialect) bool {
 	last := data.cells[len(data.cells)-1]
 	v, _, ok := d.number(data.cells[0])
 	return len(data.cells) == len(names)+1 && len(last) > 0 && ok && v == math.Trunc(v)
+}
+
+// areDateAndTime tells a stamp that the blank inside it cuts in two, under one
+// name.
+func areDateAndTime(cells [][]byte) bool {
+	if len(cells) < 2 || !isStamp(cells[0]) || !isStamp(cells[1]) {
+		return false
+	}
+	dated, timed := stampParts(cells[0])
+	behind, also := stampParts(cells[1])
+	return dated && !timed && !behind && also
 }
 
 // isWeekday tells that a row has one cell more because its stamp has a comma

@@ -22,6 +22,9 @@ func isLong(cols []column, o *Options) bool {
 	if o.InputCol != "" && hasColumn(cols, o.InputCol) || o.TempCol != "" && hasColumn(cols, o.TempCol) {
 		return false
 	}
+	if tag, value := namedPair(cols); tag >= 0 && value >= 0 {
+		return true
+	}
 	values := 0
 	for _, c := range cols {
 		r, _ := roleOf(c)
@@ -34,6 +37,37 @@ func isLong(cols []column, o *Options) bool {
 		}
 	}
 	return values == 1 && len(tagColumns(cols)) == 1
+}
+
+// namedPair finds a tag and a value that are called so, in a log that has no
+// column for an input or a temperature: beside them may stand numbers that are
+// neither. A tag may be a number.
+func namedPair(cols []column) (tag, value int) {
+	tag, value = -1, -1
+	state := -1 // the value, where nothing else is called so
+	for i, c := range cols {
+		r, _ := roleOf(c)
+		switch {
+		case r == roleInput || r == roleTemp:
+			return -1, -1
+		case strings.EqualFold(c.name, "state") && c.class == numbers:
+			state = i
+		case words[roleValue].in(c) && c.class == numbers:
+			if value >= 0 {
+				return -1, -1
+			}
+			value = i
+		case words[roleTag].in(c) && (c.class == texts && c.repeats && !c.switched || c.class == numbers && c.numbered):
+			if tag >= 0 {
+				return -1, -1
+			}
+			tag = i
+		}
+	}
+	if value < 0 {
+		value = state
+	}
+	return tag, value
 }
 
 // tagColumns lists the columns of text that can be the tag; of several those
@@ -101,6 +135,10 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 	if err := assignTime(cols, &at, taken); err != nil {
 		return err
 	}
+	if tag, value := namedPair(cols); tag >= 0 && value >= 0 {
+		take(roleTag, tag)
+		take(roleValue, value)
+	}
 	if found := bestByName(cols, taken, roleStatus); len(found) == 1 {
 		take(roleStatus, found[0])
 	}
@@ -108,6 +146,9 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 		take(roleUnit, i)
 	}
 	for _, r := range []role{roleTag, roleValue} {
+		if at[r] >= 0 {
+			continue
+		}
 		found := bestByWords(cols, taken, r)
 		if len(found) != 1 {
 			return fmt.Errorf("the log is read as rows of time, tag and value, but it is not clear which column is the %s among %s",
@@ -213,6 +254,9 @@ func (l *longReader) tables(c *csvReader, o *Options, info *reading) ([]*table, 
 	if err != nil {
 		if !o.Long {
 			tag := c.d.cols[c.at[roleTag]]
+			if tag.class == numbers {
+				return nil, fmt.Errorf("the rows were taken for (time, tag, value) because of the names of their columns; among the tags in column %q, %w", tag.label, err)
+			}
 			return nil, fmt.Errorf("the rows were taken for (time, tag, value) because column %q holds words; among these tags, %w; if it is the input instead, write numbers, or ON and OFF",
 				tag.label, err)
 		}

@@ -5,6 +5,7 @@ import (
 	"math"
 	"math/bits"
 	"strconv"
+	"unicode"
 )
 
 // decimal is a number as written: ±mant·10^exp. It is exact unless digits
@@ -204,7 +205,8 @@ func (f numberFormat) parse(cell []byte) (float64, bool) {
 	return d.float(plain, f.point)
 }
 
-// trimBlanks removes spaces and tabs, and the no-break space, from both ends.
+// trimBlanks removes spaces and tabs, the no-break space and what cannot be seen
+// from both ends.
 func trimBlanks(b []byte) []byte {
 	for len(b) > 0 && (b[0] == ' ' || b[0] == '\t') {
 		b = b[1:]
@@ -213,7 +215,13 @@ func trimBlanks(b []byte) []byte {
 		b = b[:len(b)-1]
 	}
 	if len(b) > 0 && (b[0] >= 0x80 || b[len(b)-1] >= 0x80) {
-		return bytes.TrimSpace(b)
+		return bytes.TrimFunc(b, func(r rune) bool { return unicode.IsSpace(r) || isInvisible(r) })
 	}
 	return b
+}
+
+// isInvisible tells the marks of writing direction and of bytes, which come
+// along when text is copied.
+func isInvisible(r rune) bool {
+	return r == '\u200b' || r == '\u200e' || r == '\u200f' || '\u202a' <= r && r <= '\u202e' || r == '\u2060' || r == '\ufeff'
 }

@@ -8,7 +8,7 @@ import (
 
 var (
 	errNoRows = errors.New("no rows of data with a usable time")
-	errNoTime = errors.New("the clock does not move")
+	errNoTime = errors.New("the clock does not move: name another with --time-col, or export stamps with more digits; where a column holds the time between rows, export the sum")
 )
 
 // settleOrder chooses between the two readings of stamps whose day and month

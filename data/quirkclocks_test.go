@@ -86,4 +86,8 @@ var clockQuirks = []quirk{
 	{file: "zone-in-brackets.csv", start: "2026-01-25T10:00:00+01:00"},
 	{file: "long-millionths-of-day.csv", t: ramp(8, func(i int) float64 { return float64(i) }), within: 1e-5, // four decimals of 86.4 ms
 		start: "2026-01-25T10:00:00.00000288Z", notes: []string{"clock-day-number", "long-form", local}, dropped: map[string]int{"no time": 1}},
+	{file: "year-two-digits-dots.csv", start: lateStart, notes: []string{"date-order", local}},
+	{file: "time-with-h.csv"},
+	{file: "countdown.csv", wrong: `column "remaining_s" counts down by its name: export the time that went by, or name another clock with --time-col`},
+	{file: "clock-still.csv", wrong: "the clock does not move: name another with --time-col, or export stamps with more digits; where a column holds the time between rows, export the sum"},
 }

@@ -25,6 +25,16 @@ var tableQuirks = []quirk{
 	{file: "quotes-single-comma.csv"},
 	{file: "dictionary-lines.log", notes: []string{"rows-of-pairs"}},
 	{file: "three-decimals-comma.csv", t: ramp(8, func(i int) float64 { return float64(i) }), y: wholeY},
+	{file: "header-changes-order.csv", wrong: "header-changes-order.csv:6: the header changes here (time_s | outlet_degC | drive_V): cut the file in two and read each by itself"},
+	{file: "header-changes-unit.csv", wrong: "header-changes-unit.csv:6: the header changes here (time_s | drive_V | outlet_degF)"},
+	{file: "invisible-marks.csv", start: janStart, notes: []string{local}},
+	{file: "blanks-stamp-one-name.txt", start: janStart, notes: []string{local}, dropped: map[string]int{"row too short": 1}},
+	{file: "json-one-line.txt", wrong: "this seems to be JSON, of which only one object or list for every time, in a line of its own, can be read: export it so, or as CSV"},
+	{file: "long-annotated.csv", start: janStart, notes: []string{"long-form"}},
+	{file: "long-states.csv", y: with(baseY, 3, nan), input: "unit", temp: "unit", start: janStart, notes: []string{"long-form", "input-unit-unknown", "unit-unknown"}, missing: map[string]int{"UNAVAILABLE": 1}},
+	{file: "long-numbered-tags.csv", wrong: `because of the names of their columns; among the tags in column "TagIndex", 2 columns could be the input: "0" (0, 0, 1.5), "1" (24.1, 24.1, 24.2); say which with --input-col`},
+	{file: "long-numbered-tags.csv", o: Options{InputCol: "0", TempCol: "1", InputUnit: "V", TempUnit: "C"}, start: janStart, notes: []string{"clock-columns", "long-form", local}},
+	{file: "spreadsheet-date-in-input.csv", wrong: `spreadsheet-date-in-input.csv:7: the input is "01. Mai", which is no number`},
 
 	// one signal a row
 	{file: "transposed.csv", wrong: `transposed.csv: the table seems to hold one signal in each row ("time_s", "drive_V", "outlet_degC") and one instant in each column: turn it round (in a spreadsheet: copy, paste special, transpose) and save it as CSV`},
@@ -37,6 +47,10 @@ var tableQuirks = []quirk{
 	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V", InputUnit: "%", TempUnit: "C"}, u: baseY, y: baseU, input: "%"},
 	{file: "setpoint-as-temperature.csv", o: Options{TempCol: "setpoint_degC"}, y: ramp(8, func(int) float64 { return 60 }), notes: []string{"column-named-otherwise"}},
 	{file: "columns-look-swapped.csv", t: ramp(40, half), u: swappedU, y: swappedY, input: "unit", temp: "unit", notes: []string{"input-unit-unknown", "unit-unknown", "columns-look-swapped"}},
+	{file: "factor-in-name.csv", wrong: `column "outlet x10 (°C)" names a factor beside its unit: export the temperature without it, or, if its values are in that unit as they are, say so with --temp-unit`},
+	{file: "factor-in-name.csv", o: Options{TempUnit: "C"}, y: ramp(8, func(i int) float64 { return math.Round(10 * baseY[i]) })},
+	{file: "factor-tenth.csv", wrong: `column "outlet in 0,1 °C" names a factor beside its unit`},
+	{file: "factor-input.csv", wrong: `column "drive*100 [V]" names a factor beside its unit: export the input without it, or, if its values are in that unit as they are, say so with --input-unit`},
 
 	// units and readings that cannot be
 	{file: "unit-columns.csv"},

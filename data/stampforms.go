@@ -17,7 +17,12 @@ func plainStamp(b []byte) []byte {
 	b = withoutLiteral(b)
 	b = bytes.TrimSuffix(b, []byte(" Uhr"))
 	if slices.ContainsFunc(b, func(c byte) bool { return c >= 0x80 }) {
-		b = withoutSigns(b)
+		b = withoutSigns(bytes.Map(func(r rune) rune {
+			if isInvisible(r) {
+				return -1
+			}
+			return r
+		}, []byte(decodeName(b))))
 	}
 	b = withoutWords(withoutRemark(b))
 	for _, read := range []func([]byte) ([]byte, bool){fromWeek, fromDayOfYear, fromHours} {

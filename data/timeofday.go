@@ -13,7 +13,19 @@ func parseTimeOfDay(b []byte, hourMinute bool) (ns int64, ok bool) {
 		return parseElapsed(b)
 	}
 	ns, rest, ok := halfOrLetter(ns, b[n:])
+	if fields == 3 && ok {
+		rest = withoutHourWord(rest)
+	}
 	return ns, ok && len(rest) == 0
+}
+
+// withoutHourWord takes off a word that only says that hours stand in front.
+func withoutHourWord(rest []byte) []byte {
+	switch string(skipSpaces(rest)) {
+	case "h", "hrs", "hr", "Uhr":
+		return nil
+	}
+	return rest
 }
 
 // scanTime reads two or three fields of digits with colons between them and

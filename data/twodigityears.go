@@ -13,7 +13,11 @@ import (
 // the month. If the year could stand first, the reading is taken in which the
 // clock goes on; where both go on alike, that is noted.
 func (k *clock) compareYears(cells [][]byte) *Note {
-	if k.order != dayMonthYear && k.order != monthDayYear || k.yearless || len(cells) == 0 {
+	if k.order == yearMonthDay || k.yearless || len(cells) == 0 {
+		return nil
+	}
+	dots := len(cells[0]) > 2 && cells[0][2] == '.' // the day stands first, unless the clock would jump
+	if k.order == openOrder && !dots {
 		return nil
 	}
 	first := clock{kind: calendar, order: yearMonthDay, rewrite: k.rewrite}
@@ -44,7 +48,7 @@ func (k *clock) compareYears(cells [][]byte) *Note {
 		k.order = yearMonthDay
 		return &Note{Code: "date-order", Text: "the dates were read year first, because the clock would jump otherwise"}
 	}
-	if backB == 0 && leapB < month && (backA > 0 || leapA >= month) {
+	if dots || backB == 0 && leapB < month && (backA > 0 || leapA >= month) {
 		return nil
 	}
 	k.yearOpen = true
@@ -52,9 +56,8 @@ func (k *clock) compareYears(cells [][]byte) *Note {
 		orderWords[k.order], day(b[0]), day(a[0]))}
 }
 
-// beginsWithTwo tells a date whose first number has two digits, set apart by a
-// slash or a dash: points stand behind days.
+// beginsWithTwo tells a date whose first number has two digits.
 func beginsWithTwo(cell []byte) bool {
 	cell = trimBlanks(cell)
-	return len(cell) > 7 && isPairOf(cell, 0) && (cell[2] == '/' || cell[2] == '-')
+	return len(cell) > 7 && isPairOf(cell, 0) && (cell[2] == '/' || cell[2] == '-' || cell[2] == '.')
 }

@@ -111,7 +111,7 @@ var words = [numRoles]vocabulary{
 	},
 	roleRun: {whole: []string{"run", "run_id", "runid", "test_id", "lauf"}},
 	roleTag: {
-		words: []string{"tag", "tagname", "variable", "channel", "signal", "point", "sensor", "name", "kanal", "messstelle", "voie", "canal", "canale", "kanaal"},
+		words: []string{"tag", "tagname", "variable", "channel", "signal", "point", "sensor", "name", "kanal", "messstelle", "entity", "field", "metric", "voie", "canal", "canale", "kanaal"},
 	},
 	roleValue: {
 		words: []string{"value", "reading", "val", "wert", "messwert", "valeur", "valor", "valore", "waarde", "wartość", "värde"},
