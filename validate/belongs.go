@@ -31,6 +31,10 @@ func (r *Replay) Belongs(card *fit.Card, gains *tune.Gains) error {
 	return err
 }
 
+// asShown is how far two numbers of one controller may lie apart, relatively: gains
+// written out have the four digits that are shown.
+const asShown = 1e-3
+
 // sameLaw tells whether two sets of gains are the same controller, in whatever
 // form each is written.
 func sameLaw(a, b *tune.Gains) (bool, error) {
@@ -43,7 +47,7 @@ func sameLaw(a, b *tune.Gains) (bool, error) {
 		laws[i] = []float64{ideal.Kc, orNone(ideal.Ti), orNone(ideal.Td), ideal.Filter, ideal.SetpointWeight, ideal.Bias, ideal.Scan}
 	}
 	for k, x := range laws[0] {
-		if y := laws[1][k]; math.Abs(x-y) > 1e-6*max(math.Abs(x), math.Abs(y)) {
+		if y := laws[1][k]; math.Abs(x-y) > asShown*max(math.Abs(x), math.Abs(y)) {
 			return false, nil
 		}
 	}

@@ -33,6 +33,7 @@ func TestBelongs(t *testing.T) {
 		{"both", card, gains, ""},
 		{"nothing to compare", nil, nil, ""},
 		{"the same in another form", card, parallel, ""},
+		{"written out", card, piGains(0.30012, 7, 0.5), ""},
 		{"another card", other, gains, "another card"},
 		{"another gain", card, piGains(0.31, 7, 0.5), "other gains"},
 		{"another scan", card, piGains(0.3, 7, 1), "other gains"},
