@@ -412,7 +412,7 @@ func (c *csvReader) cellRow(line int) {
 
 // misfit tells what is wrong with the number of cells in a row.
 func (c *csvReader) misfit() string {
-	if len(c.cells) <= c.last || c.d.delim == ' ' && len(c.cells) < c.d.fields { // a blank cell between blanks is none
+	if len(c.cells) <= c.last || c.d.delim == ' ' && len(c.cells) < c.d.filled { // a blank cell between blanks is none
 		return "row too short"
 	}
 	for i := c.d.fields; i < len(c.cells); i++ {

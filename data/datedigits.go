@@ -54,9 +54,15 @@ func (f dateDigits) split(b []byte) (date time.Time, rest []byte, ok bool) {
 	return time.Unix(0, ns).UTC(), b[f.width:], true
 }
 
-// runs are the digits that a stamp can begin with: of the date, or with hhmm,
-// hhmmss or hhmmssmmm behind it.
-func (f dateDigits) runs() []int { return []int{f.width, f.width + 4, f.width + 6, f.width + 9} }
+// runs are the digits that a stamp can begin with: of the date, or with hhmmss
+// or hhmmssmmm behind it, or with hhmm behind a whole year: ten digits are the
+// seconds since 1970.
+func (f dateDigits) runs() []int {
+	if f.width == 6 {
+		return []int{6, 12, 15}
+	}
+	return []int{8, 12, 14, 17}
+}
 
 // plain writes a stamp in the usual form; nil where it has another.
 func (f dateDigits) plain(dst, b []byte) []byte {

@@ -19,7 +19,8 @@ type dialect struct {
 
 	thousands string // a number whose mark could be a decimal one as well
 
-	fields int // cells in a row of data
+	fields int // cells in a row of data, with those that only the header names
+	filled int // cells that most rows have
 	first  int // line of the first row of data
 	shift  int // 1 when the rows begin with a row name that the header leaves out
 
@@ -100,6 +101,7 @@ func sniff(path string, sample []byte, whole bool) (*dialect, error) {
 		}
 	}
 	d.delim, d.fields = findDelimiter(physical)
+	d.filled = d.fields
 	if text := bytes.TrimLeft(sample, " \t\r\n\xEF\xBB\xBF"); d.fields < 2 && len(text) > 0 && (text[0] == '{' || text[0] == '[') {
 		return nil, fmt.Errorf("%s: no rows of two or more numbers found: this seems to be JSON, of which only one object or list for every time, in a line of its own, can be read: export it so, or as CSV", path)
 	}

@@ -60,7 +60,6 @@ var clockQuirks = []quirk{
 	{file: "year-two-digits.csv", start: "2025-01-26T10:00:00Z", notes: []string{"date-order", local}},
 	{file: "year-two-digits.csv", o: Options{TimeFormat: "year-first"}, start: janStart, notes: []string{local}},
 	{file: "year-two-digits-midnight.csv", start: lateStart, notes: []string{"date-order", local}},
-	{file: "year-two-digits-late.csv", wrong: `the dates of column "time" leap when they are read day first: say --time-format year-first if the year stands first, or --time-format day-first if they do leap`},
 
 	// fractions and counts
 	{file: "milliseconds-unpadded.csv", t: ramp(8, func(i int) float64 { return float64(5*i) / 100 }), start: janStart, notes: []string{"clock-milliseconds", local}},

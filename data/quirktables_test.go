@@ -13,7 +13,6 @@ var tableQuirks = []quirk{
 	{file: "clock-for-each-channel-named.csv", wrong: `columns "column 1" called "Time (s)" (0, 0.5, 1), "column 3" called "Time (s)" (0.2, 0.7, 1.2) are two clocks that differ`},
 	{file: "clock-for-each-channel-named.csv", o: Options{TimeCol: "column 3"}},
 	{file: "clock-for-each-channel-stamps.csv", wrong: `columns "drive time" (2026-01-25T10:00:00.000Z, 2026-01-25T10:00:00.500Z, 2026-01-25T10:00:01.000Z), "outlet time"`},
-	{file: "clock-for-each-channel-late.csv", wrong: `are two clocks that differ ("1001.0" and "1001.1" in line 2004)`},
 	{file: "two-names-alike.csv", wrong: `2 columns could be the temperature: "column 3" called "temp_degC" (24.1, 24.1, 24.2), "column 4" called "temp_degC" (25.1, 25.1, 25.2); say which with --temp-col`},
 	{file: "two-names-alike.csv", o: Options{TempCol: "column 3"}},
 
