@@ -42,6 +42,7 @@ func findClock(cells [][]byte, c column, dated bool, o *Options, point byte) (*c
 // dates of bare digits, stamps without a year, milliseconds without the zeros
 // in front.
 func (k *clock) findRewrite(cells [][]byte, c column) ([]Note, error) {
+	cells = withDigits(cells)
 	if len(cells) == 0 {
 		return nil, nil
 	}

@@ -222,6 +222,9 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 		return err
 	}
 	info.notes = append(info.notes, notes...)
+	if o.TimeCol == "" {
+		info.notes = append(info.notes, noteDateLeft(c.d.cols, &c.at, k)...)
+	}
 	c.clock = k
 	c.open = k.kind == calendar && k.order == openOrder && hasAlternative(k, cells)
 	if k.kind == calendar && k.order == openOrder && !c.open {

@@ -1,5 +1,12 @@
 package data
 
+import (
+	"bytes"
+	"fmt"
+	"slices"
+	"strings"
+)
+
 // markDates makes stamps of the columns that hold dates of bare digits or dates
 // without a year, by their names and by all of their cells. A date alone counts
 // only beside a time of day.
@@ -11,8 +18,8 @@ func markDates(d *dialect) {
 			continue
 		}
 		cells := d.cellsOf(i)
-		if c.class == texts {
-			if all, timed := areYearless(cells); all && (timed || d.besideTime(i)) {
+		if c.class == texts || dateWords.in(*c) { // 14.03 is a number, unless it is called a date
+			if all, timed := areYearless(cells); all && (timed || d.besideTime(i) && fewValues(cells)) {
 				c.class, c.dated, c.timed = stamps, true, timed
 				continue
 			}
@@ -32,15 +39,43 @@ func markDates(d *dialect) {
 	}
 }
 
-// cellsOf lists the cells of a column that hold anything.
+// dateWords are what columns of dates are called.
+var dateWords = vocabulary{words: []string{"date", "datum", "fecha", "data", "tarih", "dato", "dátum", "päivä", "дата", "日期", "日付"}}
+
+// noteDateLeft says that a column called a date is not part of a clock that has
+// only the time of day: a pause of a day or more does not show.
+func noteDateLeft(cols []column, at *layout, k *clock) []Note {
+	if !k.timeOfDay() {
+		return nil
+	}
+	for _, c := range cols {
+		if dateWords.in(c) && c.class != blankCells && c.part == noPart && !slices.Contains(at[:], c.index) {
+			return []Note{{Code: "date-left", Text: fmt.Sprintf("column %q (%s) was not read as a date: time is that of day alone, and a pause of a day or more does not show",
+				c.label, strings.Join(c.sample[:min(2, len(c.sample))], ", "))}}
+		}
+	}
+	return nil
+}
+
+// cellsOf lists the cells of a column that hold a digit.
 func (d *dialect) cellsOf(i int) (cells [][]byte) {
 	for _, l := range d.rows {
-		if len(l.cells) < d.fields || len(l.cells[i]) == 0 { // words below the data, a row cut off
+		if len(l.cells) < d.fields { // words below the data, a row cut off
 			continue
 		}
 		cells = append(cells, l.cells[i])
 	}
-	return cells
+	return withDigits(cells)
+}
+
+// withDigits leaves out what stands in place of a stamp.
+func withDigits(cells [][]byte) (out [][]byte) {
+	for _, b := range cells {
+		if bytes.ContainsAny(b, "0123456789") {
+			out = append(out, b)
+		}
+	}
+	return out
 }
 
 // besideTime tells that another column holds a time of day, or is called by one

@@ -46,6 +46,10 @@ var clockQuirks = []quirk{
 		notes: []string{"year-unknown"}, dropped: map[string]int{"outside --from and --to": 1}},
 	{file: "no-year-two-columns.csv", notes: []string{"year-unknown"}},
 	{file: "no-year-syslog-pairs.log", notes: []string{"year-unknown", "rows-of-pairs"}},
+	{file: "no-year-number.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-month-name.csv", notes: []string{"year-unknown"}},
+	{file: "no-year-cell-missing.csv", t: without(baseT, 3), u: without(baseU, 3), y: without(baseY, 3), notes: []string{"year-unknown"}, dropped: map[string]int{"no usable time": 1}},
+	{file: "date-unknown-form.csv", notes: []string{"date-left"}},
 
 	// bare digits
 	{file: "date-digits-day-first.csv", start: lateStart, notes: []string{"clock-digits", local}},

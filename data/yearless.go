@@ -58,6 +58,9 @@ func dayAndMonth(dst, b []byte) (dated, rest []byte, ok bool) {
 			return nil, nil, false
 		}
 	}
+	if sep == '.' && alsoNamed { // behind a name it would be its own
+		sep = ' '
+	}
 	dst = append(append(dst, date...), sep)
 	return append(dst, anyYear...), rest, true
 }
