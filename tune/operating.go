@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 
 	"lagwright/fit"
 	"lagwright/ident"
@@ -79,6 +80,9 @@ func scaledGain(p ident.Plant, by float64) ident.Plant {
 // serves both.
 func sameAction(ops []operation) error {
 	for _, o := range ops {
+		if gain, open := signOpen(o.card); open {
+			return fmt.Errorf("%w: the log of %s does not tell the sign of the gain (%s): gains for it could act the wrong way; make a larger bump in manual (lagwright plan)", ErrUnusable, label(o.card), gain)
+		}
 		for _, p := range append([]ident.Plant{o.nominal}, o.plants...) {
 			if (p.Gain > 0) != (ops[0].nominal.Gain > 0) {
 				return fmt.Errorf("%w: the gain's sign is not certain (%.3g and %.3g are both plausible): a better test is needed", ErrUnusable, ops[0].nominal.Gain, p.Gain)
@@ -89,4 +93,36 @@ func sameAction(ops []operation) error {
 		}
 	}
 	return nil
+}
+
+// signOpen tells whether the interval of a card's gain reaches zero, or has no end
+// on the side of zero, and writes the interval. The plausible plants alone do not
+// show it: they may all lie on the side of the best fit.
+func signOpen(c *fit.Card) (interval string, open bool) {
+	m, ok := c.Model(c.Selected)
+	if !ok {
+		return "", false
+	}
+	k := slices.IndexFunc(m.Parameters, func(p fit.Parameter) bool { return p.Name == "gain" })
+	if k < 0 {
+		return "", false
+	}
+	p := m.Parameters[k]
+	inner := p.Low // the end on the side of zero
+	if p.Value < 0 {
+		inner = p.High
+	}
+	bounded := p.Low != nil || p.High != nil || p.SE != nil // else nobody set any
+	if p.Fixed || !bounded || inner != nil && *inner*p.Value > 0 {
+		return "", false
+	}
+	switch {
+	case p.Low == nil && p.High == nil:
+		return quantity(p.Value, p.Unit, 3) + ", no bound", true
+	case p.Low == nil:
+		return quantity(p.Value, p.Unit, 3) + ", at most " + figure(p.High, 3), true
+	case p.High == nil:
+		return quantity(p.Value, p.Unit, 3) + ", at least " + figure(p.Low, 3), true
+	}
+	return figure(p.Low, 3) + " to " + quantity(*p.High, p.Unit, 3), true
 }

@@ -124,6 +124,12 @@ func TestTuneRefuses(t *testing.T) {
 	good := card(t, 3, 0.05)
 	mixed := card(t, 3, 0.05)
 	mixed.Plants.Values[5][0] *= -1
+	bounded := func(low, high *float64) []*fit.Card { // plausible plants all of one sign
+		c := card(t, 3, 0.05)
+		gain := &c.Models[0].Parameters[0]
+		gain.Low, gain.High, gain.SE = low, high, ptr(gain.Value)
+		return []*fit.Card{c}
+	}
 	for _, c := range []struct {
 		name  string
 		cards []*fit.Card
@@ -134,6 +140,9 @@ func TestTuneRefuses(t *testing.T) {
 	}{
 		{"no card", nil, Requirement{}, Options{}, "no card", true},
 		{"gain of both signs", []*fit.Card{mixed}, Requirement{}, Options{}, "sign is not certain", true},
+		{"interval of the gain over zero", bounded(ptr(-0.1), ptr(9)), Requirement{}, Options{}, "does not tell the sign of the gain (-0.1 to 9", true},
+		{"gain open to zero", bounded(nil, ptr(9)), Requirement{}, Options{}, "at most 9", true},
+		{"no bound on the gain", bounded(nil, nil), Requirement{}, Options{}, "no bound", true},
 		{"empty card", []*fit.Card{{}}, Requirement{}, Options{}, "selected structure", true},
 		{"Ms", []*fit.Card{good}, Requirement{Ms: ptr(0.9)}, Options{}, "never below 1", false},
 		{"limits", []*fit.Card{good}, Requirement{InputMin: ptr(5), InputMax: ptr(1)}, Options{}, "input limits", false},
@@ -144,6 +153,11 @@ func TestTuneRefuses(t *testing.T) {
 		_, err := Tune(context.Background(), c.cards, c.q, c.o)
 		if err == nil || !strings.Contains(err.Error(), c.says) || errors.Is(err, ErrUnusable) != c.card {
 			t.Errorf("%s: error %v, want one that says %q (unusable card: %v)", c.name, err, c.says, c.card)
+		}
+	}
+	for name, cards := range map[string][]*fit.Card{"no upper end": bounded(ptr(0.5), nil), "both ends above zero": bounded(ptr(0.5), ptr(9))} {
+		if _, err := newTuning(cards, Requirement{}, Options{}); err != nil {
+			t.Errorf("%s: %v", name, err)
 		}
 	}
 }
