@@ -53,9 +53,11 @@ func noteSwapped(run *Run, info *reading) []Note {
 	if len(run.U) < swapRows {
 		return nil
 	}
-	inChanges, inLeap := movement(run.U)
-	tempChanges, tempLeap := movement(run.Y)
-	if tempChanges == 0 || tempChanges > swapChanges || tempLeap < stepShare || 2*inChanges < len(run.U) || inLeap > smoothShare {
+	tempChanges, tempLeap := movement(run.Y, swapChanges)
+	if tempChanges == 0 || tempChanges > swapChanges || tempLeap < stepShare {
+		return nil
+	}
+	if inChanges, inLeap := movement(run.U, len(run.U)); 2*inChanges < len(run.U) || inLeap > smoothShare {
 		return nil
 	}
 	return []Note{{Code: "columns-look-swapped", Text: fmt.Sprintf("column %q, the temperature, moves in steps as a drive does, and column %q, the input, as a temperature does: if they are the wrong way round, name them with %s and %s",
@@ -63,15 +65,17 @@ func noteSwapped(run *Run, info *reading) []Note {
 }
 
 // movement counts the rows in which a column changes, and gives its largest
-// change as a share of its range.
-func movement(v []float64) (changes int, leap float64) {
+// change as a share of its range; beyond so many changes it gives up.
+func movement(v []float64, atMost int) (changes int, leap float64) {
 	lo, hi, before, most := math.Inf(1), math.Inf(-1), math.NaN(), 0.0
 	for _, x := range v {
 		if x != x {
 			continue
 		}
 		if before == before && x != before {
-			changes++
+			if changes++; changes > atMost {
+				return changes, 0
+			}
 			most = max(most, math.Abs(x-before))
 		}
 		lo, hi, before = min(lo, x), max(hi, x), x
