@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"slices"
+	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
 	"lagwright/fit"
@@ -20,9 +21,9 @@ func watch(b *Bundle) *section {
 	if b.Replay != nil {
 		for i := range b.Replay.Runs {
 			run := &b.Replay.Runs[i]
-			sign := "bad"
-			if !run.Judged {
-				sign = "warn"
+			sign := "warn" // what fails on the few plants that the assurance leaves fails no run
+			if run.Judged && !run.Meets {
+				sign = "bad"
 			}
 			for _, r := range run.Reasons {
 				items = append(items, item{sign, runName(run) + ": " + r})
@@ -32,7 +33,7 @@ func watch(b *Bundle) *section {
 			}
 		}
 		for _, f := range b.Replay.Failed {
-			items = append(items, item{"warn", fmt.Sprintf("%s could not be replayed: %s", format.Text(f.File), f.Reason)})
+			items = append(items, item{"warn", fmt.Sprintf("%s could not be replayed: %s", format.Text(f.File), strings.TrimPrefix(f.Reason, f.File+": "))})
 		}
 	}
 	if b.Drift != nil {
@@ -40,7 +41,7 @@ func watch(b *Bundle) *section {
 			items = append(items, item{"warn", sentenceCase(w)})
 		}
 		for _, f := range b.Drift.Failed {
-			items = append(items, item{"warn", fmt.Sprintf("%s could not be fitted: %s", format.Text(f.File), f.Reason)})
+			items = append(items, item{"warn", fmt.Sprintf("%s could not be fitted: %s", format.Text(f.File), strings.TrimPrefix(f.Reason, f.File+": "))})
 		}
 	}
 	s := &section{ID: "watch", Title: "What to watch for"}
