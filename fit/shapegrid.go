@@ -5,10 +5,12 @@ import (
 	"sort"
 )
 
-// likeWalk is the prior probability that the noise wanders. More of it would
-// widen the intervals of logs that do not (the gain's under white noise by 23 % at
-// one half, in place of 16 %), less would miss more of those that do.
-const likeWalk = 0.15
+// likeWalk is the prior probability that the noise wanders. The more of it, the wider
+// the intervals of logs that do not, and the fewer are missed of those that do: at
+// 0.15, 0.3 and 0.7 the gain's interval under white noise is 1.11, 1.14 and 1.27 times
+// as wide as it had to be, and under noise that wanders by twice its deviation holds
+// the truth in 78, 81 and 88 % (250 logs each, see TestCoverage).
+const likeWalk = 0.3
 
 // mixture spreads nodes over the noise shapes that the record does not rule
 // out, without a walk and with one, weighted by their restricted likelihood under
