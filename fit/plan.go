@@ -294,6 +294,14 @@ func (d *design) gainEnd(of func(a, b float64) float64) float64 {
 	return g
 }
 
+// expectedTo is a bound that a plan is expected to give, in percent.
+func expectedTo(percent float64) string {
+	if percent > 100 {
+		return "over ±100 %"
+	}
+	return plusMinus(percent)
+}
+
 // expect fills the bounds that the plan is expected to give.
 func (d *design) expect(p *Plan, heat float64) {
 	unit := d.precision(p)
@@ -301,7 +309,7 @@ func (d *design) expect(p *Plan, heat float64) {
 		w.Expected = d.halfWidth(w.Parameter, unit, heat, p.Repeats)
 		if w.Expected > w.Wanted*(1+1e-9) {
 			p.Meets = false
-			p.Reasons = append(p.Reasons, fmt.Sprintf("%s is expected to %s only, wanted %s", parameterWords(w.Parameter), plusMinus(w.Expected), plusMinus(w.Wanted)))
+			p.Reasons = append(p.Reasons, fmt.Sprintf("%s is expected to %s only, wanted %s", parameterWords(w.Parameter), expectedTo(w.Expected), plusMinus(w.Wanted)))
 		}
 		p.Expected = append(p.Expected, w)
 	}
@@ -357,7 +365,7 @@ func (p *Plan) WriteText(w io.Writer) error {
 	out.heading("What it is expected to give")
 	rows := [][]string{{"", "expected", "wanted"}}
 	for _, e := range p.Expected {
-		rows = append(rows, []string{parameterWords(e.Parameter), plusMinus(e.Expected), plusMinus(e.Wanted)})
+		rows = append(rows, []string{parameterWords(e.Parameter), expectedTo(e.Expected), plusMinus(e.Wanted)})
 	}
 	out.table("  ", rows, 1, 2)
 	for _, r := range p.Reasons {

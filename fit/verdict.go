@@ -110,6 +110,9 @@ func (j *judgement) verdict(name string, value float64, low, high *float64, fixe
 	case math.IsInf(half, 1):
 		v.Verdict = not
 		v.Reason = "the log sets no bound: " + j.why(name)
+	case share > 1:
+		v.Verdict = not
+		v.Reason = fmt.Sprintf("known no better than to ±100 %%%s: %s", of, j.why(name))
 	default:
 		v.Verdict = not
 		v.Reason = fmt.Sprintf("known to %s%s only: %s", plusMinus(100*share), of, j.why(name))

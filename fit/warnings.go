@@ -128,7 +128,10 @@ func (out *outcome) warnClosed(run *data.Run, loop Loop, b *bounded, add warn) {
 		return
 	}
 	known := "the gain has no bound"
-	if !math.IsNaN(half) {
+	switch {
+	case half > math.Abs(g.value):
+		known = "the gain is known no better than to ±100 %"
+	case !math.IsNaN(half):
 		known = fmt.Sprintf("the gain is known to ±%s %% only", figure(100*half/math.Abs(g.value), 2))
 	}
 	add("closed-loop", "gain", "%s: %s and moved the input too little to tell the plant from the noise: %s; make a bump in manual, or a larger step of the setpoint", name, loop.Reason, known)
