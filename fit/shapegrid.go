@@ -9,8 +9,9 @@ import (
 // the intervals of logs that do not, and the fewer are missed of those that do: at
 // 0.15, 0.3 and 0.7 the gain's interval under white noise is 1.11, 1.14 and 1.27 times
 // as wide as it had to be, and under noise that wanders by twice its deviation holds
-// the truth in 78, 81 and 88 % (250 logs each, see TestCoverage).
-const likeWalk = 0.3
+// the truth in 78, 81 and 88 % (250 logs each of families of TestCoverage, whose
+// bound on the widths decides).
+const likeWalk = 0.25
 
 // mixture spreads nodes over the noise shapes that the record does not rule
 // out, without a walk and with one, weighted by their restricted likelihood under
