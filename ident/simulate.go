@@ -239,6 +239,10 @@ func (s *Simulator) walkStretch(o *outputs, r stretch, end int) {
 		s.run(o, k, k+free)
 		k += free
 		if k < end {
+			if driven := s.runDriven(o, k, end, r); driven > k {
+				k = driven
+				continue
+			}
 			s.chain.advance(s.step, &s.x)
 			s.arrive(k)
 			s.emitRow(o, k)
