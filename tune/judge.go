@@ -16,6 +16,7 @@ type task struct {
 	peakTemp  float64 // highest temperature allowed above the operating point
 	step      float64 // of the setpoint
 	limits    Limits
+	curve     curve
 	scan      float64
 }
 
@@ -143,10 +144,12 @@ func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine, d
 	if err != nil {
 		return stepFigures{}, err
 	}
-	return setpointStep(sim.under(c, t.limits), s.p, c, t.step, t.band, plan), nil
+	return setpointStep(sim.under(c, t.limits).through(t.curve), s.p, c, t.step, t.band, plan), nil
 }
 
-// load runs a unit load step, limits aside.
+// load runs a unit load step, limits aside. Its figures are per unit of a small
+// load, so it runs on the straight line under the power law, too; integral
+// action takes a load at the input back unit for unit whatever the law.
 func (t *task) load(s *scenario, c law, f quickFigures, fine float64) (stepFigures, error) {
 	l := newOpenLoop(s.p, c, s.scan)
 	plan := l.planAt(f.crossover, fine)

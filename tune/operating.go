@@ -71,6 +71,24 @@ func temperatureAt(c *fit.Card, p ident.Plant, input float64, in, temp [2]float6
 	return middle + p.Gain*(phi(input)-(phi(in[0])+phi(in[1]))/2)
 }
 
+// task makes a requirement ready to be judged about the operating point.
+func (o operation) task(q Requirement) task {
+	t := newTask(q, o.input, o.temperature)
+	t.on(o.card.Law(), o.input)
+	return t
+}
+
+// moved is the same card at another operating input, without its plants.
+func (o operation) moved(input float64) operation {
+	law, slope := o.card.Law(), o.card.Law().Slope(input)
+	if !o.nominal.Structure.Integrating() {
+		o.temperature += o.nominal.Gain / o.slope * (law.Apply(input) - law.Apply(o.input))
+	}
+	o.nominal = scaledGain(o.nominal, slope/o.slope)
+	o.input, o.slope, o.plants = input, slope, nil
+	return o
+}
+
 func scaledGain(p ident.Plant, by float64) ident.Plant {
 	p.Gain *= by
 	return p

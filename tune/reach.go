@@ -43,7 +43,7 @@ func (t *task) reaches(p ident.Plant) bool {
 	if p.Structure.Integrating() || !t.simulates() {
 		return true
 	}
-	u := t.step / p.Gain
+	u := t.curve.input(t.step / p.Gain)
 	return (t.limits.Min == nil || u >= *t.limits.Min) && (t.limits.Max == nil || u <= *t.limits.Max)
 }
 

@@ -18,6 +18,7 @@ import (
 type loopSim struct {
 	plant     *PlantStepper
 	control   Controller
+	curve     curve   // between the output and the plant
 	step      float64 // of the plant, s
 	every     int     // plant steps per scan
 	lead      float64 // time of the first sample, s
@@ -44,6 +45,13 @@ func newLoopSim(p ident.Plant, scan, step float64) (*loopSim, error) {
 func (s *loopSim) under(c law, l Limits) *loopSim {
 	s.control = newController(c, s.step*float64(s.every))
 	s.control.limit(l)
+	s.curve = curve{}
+	return s
+}
+
+// through puts a curve between the controller and the plant.
+func (s *loopSim) through(k curve) *loopSim {
+	s.curve = k
 	return s
 }
 
@@ -62,13 +70,17 @@ func (s *loopSim) run(r, d float64, seen func(sample) bool) {
 		var y float64
 		if s.immediate {
 			y, u = s.together(r, d, held)
-			held = u + d
+			held = s.curve.heat(u) + d
 		} else {
 			y = s.plant.Output()
 			if k%s.every == 0 {
 				u = s.control.Next(r, y)
 			}
-			s.plant.Step(u + d)
+			if s.curve.bend == 0 {
+				s.plant.Step(u + d)
+			} else {
+				s.plant.Step(s.curve.heat(u) + d)
+			}
 		}
 		if !seen(sample{t: float64(k)*s.step + s.lead, y: y, u: u}) {
 			return
@@ -77,7 +89,7 @@ func (s *loopSim) run(r, d float64, seen func(sample) bool) {
 }
 
 // together moves the plant to the next sample where the output acts on the
-// sample it is computed from: y = free + g·u and u = a − b·y.
+// sample it is computed from: y = free + g·heat(u) and u = a − b·y.
 func (s *loopSim) together(r, d, held float64) (y, u float64) {
 	p, c := s.plant, &s.control
 	n := p.n
@@ -88,8 +100,8 @@ func (s *loopSim) together(r, d, held float64) (y, u float64) {
 	free *= p.gain
 	g := p.gain * p.new[n-1]
 	a, b := c.affine(r)
-	y = free + g*c.limited((a-b*free)/(1+b*g))
+	y = free + g*s.curve.heat(c.limited(s.curve.balance(a-b*free, b*g)))
 	u = c.Next(r, y)
-	p.move(held, u+d)
+	p.move(held, s.curve.heat(u)+d)
 	return y, u
 }

@@ -204,13 +204,16 @@ func bisectCoarse(f func(float64) float64, lo, hi float64) float64 {
 // input keep out of reach does not settle.
 func setpointStep(s *loopSim, p ident.Plant, c law, r, band float64, plan runPlan) stepFigures {
 	target, uEnd := steadyState(p, c, r, 0)
+	if k := s.curve; !k.straight() {
+		target, uEnd = k.steadyState(p, c, r)
+	}
 	// where the limits do not let the temperature come to its target, it ends
 	// where they hold it
 	needed := uEnd
 	uEnd = max(s.control.low, min(s.control.high, needed))
 	end := target
 	if uEnd != needed && !p.Structure.Integrating() {
-		end = p.Gain * uEnd
+		end = p.Gain * s.curve.heat(uEnd)
 		plan.deadline = math.Inf(1) // it comes to rest outside the band
 	}
 	w := newWatch(p, r, end, uEnd, plan)
@@ -250,6 +253,18 @@ func newWatch(p ident.Plant, r, target, uEnd float64, plan runPlan) *watch {
 		w.scale *= plan.quiet
 	}
 	return w
+}
+
+// steadyState is that of a setpoint step through a curve.
+func (k curve) steadyState(p ident.Plant, c law, r float64) (y, u float64) {
+	switch {
+	case p.Structure.Integrating():
+		return steadyState(p, c, r, 0)
+	case c.integral():
+		return r, k.input(r / p.Gain)
+	}
+	u = k.balance(c.kc*c.b*r, p.Gain*c.kc)
+	return p.Gain * k.heat(max(u, k.least())), u
 }
 
 // steadyState returns where temperature and output come to rest under

@@ -138,7 +138,7 @@ func (t *tuning) prepare() error {
 		if err := op.admits(t.requirement); err != nil {
 			return err
 		}
-		task := newTask(t.requirement, op.input, op.temperature)
+		task := op.task(t.requirement)
 		for _, p := range op.plants {
 			list = append(list, newScenario(p, &task, card))
 		}
@@ -283,7 +283,7 @@ func (t *tuning) ruleRows(name, kind string) ([]row, error) {
 // plausible plants from its outcomes.
 func (t *tuning) judged(r row) row {
 	o := t.ops[0]
-	task := newTask(t.requirement, o.input, o.temperature)
+	task := o.task(t.requirement)
 	r.nominal = task.metrics(newScenario(o.nominal, &task, 0), r.law, o.input)
 	inputs := make([]float64, len(t.ops))
 	for i, o := range t.ops {
