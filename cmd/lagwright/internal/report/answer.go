@@ -17,13 +17,11 @@ type answer struct {
 	EnterTitle string
 	Enter      []setting
 	Verdict    *item
+	Doubts     []doubt
 	Sure       []string
 	Reasons    []string // what fails, and by how much
 	Cures      []string // what would let it hold
 }
-
-// setting is one field of a controller as someone types it in.
-type setting struct{ Name, Value string }
 
 func answerOf(b *Bundle) answer {
 	switch {
@@ -43,10 +41,11 @@ func gainsAnswer(b *Bundle) answer {
 	g := b.Gains
 	a := answer{
 		EnterTitle: fmt.Sprintf("%s controller, %s form", strings.ToUpper(g.Controller), g.Form),
-		Enter:      settings(g),
+		Enter:      settings(g, b.fahrenheit()),
 		Reasons:    g.Reasons, Cures: g.Cures,
 	}
 	a.Headline, a.Verdict = gainsVerdict(g, b.Replay)
+	a.withDoubts(b, g)
 	if g.Judged() {
 		a.Sure = append(a.Sure, "Asked: "+requirementWords(g.Requirement, g.Units)+".", sharePhrase(g))
 	}
@@ -67,6 +66,9 @@ func gainsAnswer(b *Bundle) answer {
 	return a
 }
 
+// enterThese is the headline of gains that meet everything.
+const enterThese = "Enter these gains"
+
 // gainsVerdict weighs the plausible plants first, then the past runs.
 func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *item) {
 	switch {
@@ -81,7 +83,7 @@ func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *
 	case r != nil && r.Summary.Judged > 0 && !r.Summary.Meets:
 		return "These gains do not hold on every past run", &item{"bad", "They meet the requirement on the plausible plants, but not on every replayed run."}
 	}
-	return "Enter these gains", &item{"good", "They meet the requirement."}
+	return enterThese, &item{"good", "They meet the requirement."}
 }
 
 // reproduced tells whether every back-test gave the log back.
@@ -170,7 +172,7 @@ func replayAnswer(b *Bundle) answer {
 	r := b.Replay
 	a := answer{
 		EnterTitle: fmt.Sprintf("%s controller, %s form, as replayed", strings.ToUpper(r.Gains.Controller), r.Gains.Form),
-		Enter:      settings(&r.Gains),
+		Enter:      settings(&r.Gains, b.fahrenheit()),
 		Sure:       []string{"Asked: " + requirementWords(r.Requirement, r.Gains.Units) + ".", replayPhrase(r)},
 	}
 	switch {
@@ -218,56 +220,6 @@ func logAnswer(b *Bundle) answer {
 		return answer{Headline: "There is nothing in this report"}
 	}
 	return answer{Headline: "What is in the log", Sure: []string{"No model has been fitted."}}
-}
-
-// entryDigits are the digits of a number that someone types in.
-const entryDigits = 4
-
-// settings are the fields of the controller's face plate, in the order they
-// are usually asked for: the entries of the file where it has them.
-func settings(g *tune.Gains) []setting {
-	var s []setting
-	for _, e := range entries(g) {
-		s = append(s, setting{sentenceCase(e.Name), format.Amount(e.Value, e.Unit, entryDigits)})
-	}
-	if q := g.SquareRoot; q != nil {
-		s = append(s, setting{"Gain with a square root between controller and drive", format.Amount(q.Kc, q.Unit, entryDigits)})
-	}
-	s = append(s, setting{"Action", g.Action})
-	optional := func(name string, v *float64, unit string) {
-		if v != nil {
-			s = append(s, setting{name, format.Amount(*v, unit, entryDigits)})
-		}
-	}
-	if g.Scan > 0 {
-		optional("Scan time", &g.Scan, "s")
-	}
-	optional("Output low limit", g.Limits.Min, g.Units.Input)
-	optional("Output high limit", g.Limits.Max, g.Units.Input)
-	optional("Output rate limit", g.Limits.Rate, g.Units.Input+"/s")
-	return s
-}
-
-// entries are the numbers of the controller itself.
-func entries(g *tune.Gains) []tune.Entry {
-	if len(g.Entry) > 0 {
-		return g.Entry
-	}
-	out := []tune.Entry{{Name: "gain Kc", Value: g.Kc, Unit: g.Units.Input + "/" + kelvin(g.Units.Temperature)}}
-	if g.Ti != nil {
-		out = append(out, tune.Entry{Name: "integral time Ti", Value: *g.Ti, Unit: "s"})
-	}
-	if g.Td != nil {
-		out = append(out, tune.Entry{Name: "derivative time Td", Value: *g.Td, Unit: "s"})
-	}
-	if g.Filter > 0 {
-		out = append(out, tune.Entry{Name: "filter time", Value: g.Filter, Unit: "s"})
-	}
-	out = append(out, tune.Entry{Name: "setpoint weight", Value: g.SetpointWeight})
-	if g.Controller == "p" {
-		out = append(out, tune.Entry{Name: "bias", Value: g.Bias, Unit: g.Units.Input})
-	}
-	return out
 }
 
 // requirementWords says a requirement in one clause.

@@ -12,7 +12,6 @@ import (
 	"fmt"
 	"html/template"
 	"io"
-	"strings"
 	"sync"
 
 	"gonum.org/v1/plot/vg"
@@ -37,12 +36,10 @@ var pageJS = readoutJS + zoomJS
 // maxText is the longest text from a file, in runes, that a page shows whole.
 const maxText = 400
 
-// together keeps a number and its sign on one line.
-var together = strings.NewReplacer(" %", "\u00a0%", " °C", "\u00a0°C", "± ", "±\u00a0", " ±", "\u00a0±")
-
 var pageTemplate = sync.OnceValue(func() *template.Template {
-	clean := func(s string) string { return together.Replace(format.Clip(format.Text(s), maxText)) }
-	return template.Must(template.New("page").Funcs(template.FuncMap{"clean": clean}).Parse(pageHTML))
+	literal := func(s string) string { return format.Clip(format.Text(s), maxText) }
+	clean := func(s string) string { return together(literal(s)) }
+	return template.Must(template.New("page").Funcs(template.FuncMap{"clean": clean, "literal": literal}).Parse(pageHTML))
 })
 
 // view is a page before it is written.
