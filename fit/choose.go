@@ -145,7 +145,7 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	}
 	structures, fits, studies = answered(structures, fits, studies)
 	if len(fits) == 0 {
-		return nil, fmt.Errorf("%s: %w: no row after the bump shows it; record on until the temperature has settled", recs[0].run.Source.File, ErrNoAnswer)
+		return nil, noAnswer(recs)
 	}
 	least := math.Inf(1)
 	for _, f := range fits {
@@ -163,6 +163,11 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 	}
 	if err := together(ctx, o.Workers, bounds, tick); err != nil {
 		return nil, err
+	}
+	// Better optima met on the way may show no answer after all.
+	out.models = slices.DeleteFunc(out.models, func(m *bounded) bool { return !m.shows() })
+	if len(out.models) == 0 {
+		return nil, noAnswer(recs)
 	}
 	out.choose()
 	out.widen()
@@ -183,11 +188,33 @@ func answered(sts []ident.Structure, fits []*fitted, studies []*study) ([]ident.
 	var f []*fitted
 	var d []*study
 	for i := range fits {
-		if p := fits[i].p; p.gg > 0 && p.gain != 0 && !math.IsNaN(fits[i].aicc) && !math.IsInf(fits[i].aicc, 0) {
+		if p := fits[i].p; p.gg > 0 && fits[i].shows() && !math.IsNaN(fits[i].aicc) && !math.IsInf(fits[i].aicc, 0) {
 			s, f, d = append(s, sts[i]), append(f, fits[i]), append(d, studies[i])
 		}
 	}
 	return s, f, d
+}
+
+func noAnswer(recs []*record) error {
+	return fmt.Errorf("%s: %w: no row after the bump shows it; record on until the temperature has settled", recs[0].run.Source.File, ErrNoAnswer)
+}
+
+// leastShown is the part of the temperature's range that the answer to the input must
+// make up; less is rounding.
+const leastShown = 1e-9
+
+// shows reports whether the answer of f to the input can be seen in a log.
+func (f *fitted) shows() bool {
+	for _, r := range f.e.recs {
+		answer := math.Abs(f.p.gain) * r.swing
+		if f.st.Integrating() {
+			answer *= r.root.span
+		}
+		if y := extent([]*data.Run{r.run}, func(x *data.Run) []float64 { return x.Y }); answer > leastShown*(y[1]-y[0]) {
+			return true
+		}
+	}
+	return false
 }
 
 // refutedBy is the difference in AICc beyond which a structure counts as
@@ -281,8 +308,9 @@ func (out *outcome) settle(s *study) error {
 	best := math.Inf(1)
 	var shapes []shape
 	var weights []float64
+	var plainest *fitted // the single lag under white noise
 	for _, in := range ins {
-		if in == earlier && out.one != nil && startsAtRest(s.recs, out.one.p.eta[0]) {
+		if in == earlier && out.one != nil && startsAtRest(s.recs, out.one.p.eta[0]) && !plainest.comesFromElsewhere() {
 			break
 		}
 		for _, r := range s.recs {
@@ -292,6 +320,7 @@ func (out *outcome) settle(s *study) error {
 		plain := &study{recs: slices.Clone(s.recs), white: true, unscored: true, coarse: s.coarse, rival: math.Inf(1)}
 		start := plain.fit(one, nil)
 		s.coarse = plain.coarse
+		plainest = start
 		for _, dr := range drifts {
 			s.set(in, dr)
 			free := &study{recs: slices.Clone(s.recs), white: s.white, tau: start.p.eta[0], dead: start.p.eta[1], rival: math.Inf(1)}
@@ -330,49 +359,6 @@ func (out *outcome) settle(s *study) error {
 	s.tau, s.dead = out.one.p.eta[0], out.one.p.eta[1]
 	s.rival = out.two.aicc
 	return nil
-}
-
-// startsAtRest reports whether every record holds still before its first
-// change of the input, for the few rows it takes to tell: a straight line
-// through them has a slope that is lost in the noise and the resolution, or
-// that over the lag tau amounts to less than a tenth of the swing.
-func startsAtRest(recs []*record, tau float64) bool {
-	for _, r := range recs {
-		n := 0
-		for n < len(r.t) && r.t[n] < r.input.At[0] {
-			n++
-		}
-		if n < 4 {
-			return false
-		}
-		slope, se := lineSlope(r.t[:n], r.y[:n])
-		lost := 2.5*se + r.run.Quality.Quantum/(r.t[n-1]-r.t[0])
-		e := extent([]*data.Run{r.run}, func(x *data.Run) []float64 { return x.Y })
-		if math.Abs(slope) > lost && math.Abs(slope)*tau > 0.1*(e[1]-e[0]) {
-			return false
-		}
-	}
-	return true
-}
-
-// lineSlope is the least-squares slope of y over t and its standard error.
-func lineSlope(t, y []float64) (slope, se float64) {
-	n := float64(len(t))
-	var mt, my, stt, sty, ss float64
-	for i := range t {
-		mt += t[i] / n
-		my += y[i] / n
-	}
-	for i := range t {
-		stt += (t[i] - mt) * (t[i] - mt)
-		sty += (t[i] - mt) * (y[i] - my)
-	}
-	slope = sty / stt
-	for i := range t {
-		d := y[i] - my - slope*(t[i]-mt)
-		ss += d * d
-	}
-	return slope, math.Sqrt(ss / math.Max(n-2, 1) / stt)
 }
 
 const (

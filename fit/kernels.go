@@ -46,11 +46,15 @@ type kernels struct {
 // twice.
 func (q *posterior) adapt(pool proposals, count int) []plantAt {
 	optimum := q.at(q.b.p.eta)
+	alone := slices.Repeat([]plantAt{{p: q.e.eval(q.b.p.eta, false)}}, count)
+	if math.IsInf(optimum.density, -1) { // not even the optimum is plausible: no other place is
+		return alone
+	}
 	pool = pool.and(proposals{[]plantAt{optimum}, []float64{optimum.density}})
 	for range lessons {
 		pool = q.around(pool, lessonWidth).propose(roundSize)
 		if effective(pool.shares(1)) < 1.5 { // one place, or none, has it all
-			pool = pool.and(proposals{[]plantAt{optimum}, []float64{slices.Max(pool.weight)}})
+			pool = pool.and(proposals{[]plantAt{optimum}, []float64{pool.top(optimum.density)}})
 		}
 	}
 	kept := roomFor(4 * roundSize)
@@ -59,7 +63,12 @@ func (q *posterior) adapt(pool proposals, count int) []plantAt {
 		if effective(kept.shares(1)) > enoughEffective*float64(count) {
 			break
 		}
-		pool = kept
+		if !math.IsInf(kept.top(math.Inf(-1)), -1) {
+			pool = kept
+		}
+	}
+	if math.IsInf(kept.top(math.Inf(-1)), -1) {
+		return alone
 	}
 	return kept.drawn(count, q.rng.Float64())
 }
@@ -80,26 +89,47 @@ func (p proposals) drawn(count int, u float64) []plantAt {
 	return out
 }
 
-// shares are the weights to a power, scaled to a sum of 1.
+// shares are the weights to a power, scaled to a sum of 1; places without a finite
+// weight have none.
 func (p proposals) shares(power float64) []float64 {
-	top := slices.Max(p.weight)
+	top := p.top(0)
 	out := make([]float64, len(p.weight))
 	sum := 0.0
 	for i, w := range p.weight {
-		if w > math.Inf(-1) {
+		if isFinite(w) {
 			out[i] = math.Exp(power * (w - top))
 		}
 		sum += out[i]
 	}
 	for i := range out {
-		out[i] /= sum
+		out[i] /= math.Max(sum, 1) // the greatest is 1
 	}
 	return out
 }
 
+// top is the greatest finite weight, or the one given where there is none.
+func (p proposals) top(none float64) float64 {
+	top, found := math.Inf(-1), false
+	for _, w := range p.weight {
+		if isFinite(w) {
+			top, found = math.Max(top, w), true
+		}
+	}
+	if !found {
+		return none
+	}
+	return top
+}
+
 // effective is the number of equal draws that weighted ones are worth, 1/Σw²
-// (Kong 1992, from memory).
-func effective(shares []float64) float64 { return 1 / dot(shares, shares) }
+// (Kong 1992, from memory); 0 where no share is above 0.
+func effective(shares []float64) float64 {
+	squares := dot(shares, shares)
+	if squares == 0 {
+		return 0
+	}
+	return 1 / squares
+}
 
 // around lays kernels around the places of a pool. Their width is that of a normal
 // reference (Silverman 1986, from memory) for as many draws as the pool is worth,

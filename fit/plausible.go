@@ -125,6 +125,9 @@ func (q *posterior) plant(w plantAt) draw {
 		}
 		g = w.p.gain
 	}
+	if !isFinite(g) || g == 0 {
+		g = q.b.p.gain
+	}
 	eta := append([]float64(nil), w.p.eta...)
 	if !slices.Contains(q.b.e.held, true) {
 		sort.Sort(sort.Reverse(sort.Float64Slice(eta[:q.b.e.nl])))
