@@ -62,7 +62,7 @@ func (c *console) toFile() bool { return c.output != "" && c.output != "-" }
 // writeFile puts a whole file in place and says so.
 func (c *console) writeFile(path string, write func(io.Writer) error) error {
 	if err := atomicfile.Write(path, write); err != nil {
-		return err
+		return unwritable(err)
 	}
 	c.note("wrote %s", path)
 	return nil

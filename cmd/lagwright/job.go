@@ -131,7 +131,10 @@ func (c *console) outputFolder(usual string, more ...string) (string, error) {
 	if info, err := os.Stat(folder); err == nil && !info.IsDir() {
 		return "", fmt.Errorf("%s exists and is not a folder; name another with -o", folder)
 	}
-	return folder, c.refuseSpreading(folder, more...)
+	if err := c.refuseSpreading(folder, more...); err != nil {
+		return "", err
+	}
+	return folder, unwritable(atomicfile.CheckFolder(folder))
 }
 
 // writeFolder puts everything the job made into a folder, whole or not at all.

@@ -31,7 +31,7 @@ SOURCE_DATE_EPOCH where it is set, so that the same program gives the same pages
 			if err == nil {
 				c.note("wrote man pages to %s", args[0])
 			}
-			return err
+			return unwritable(err)
 		},
 	}
 }

@@ -13,7 +13,7 @@ import (
 )
 
 // refuseOverwriting stops an output from taking the place of an input, or of
-// anything else that its name says is a log.
+// anything else that its name says is a log, and from failing after the work.
 func (c *console) refuseOverwriting(inputs []string, outputs ...string) error {
 	if err := refuseInputs(inputs, outputs...); err != nil {
 		return err
@@ -23,7 +23,7 @@ func (c *console) refuseOverwriting(inputs []string, outputs ...string) error {
 			return err
 		}
 	}
-	return nil
+	return refuseUnwritable(outputs...)
 }
 
 // refuseInputs stops an output from taking the place of an input: a file, or

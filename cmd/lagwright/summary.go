@@ -8,6 +8,7 @@ import (
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/cmd/lagwright/internal/report"
 	"lagwright/data"
 	"lagwright/fit"
 	"lagwright/tune"
@@ -57,7 +58,7 @@ func (j *job) summary(w io.Writer, folder string) error {
 	for _, warning := range j.card.Warnings {
 		s.add("warning", warning.Text)
 	}
-	s.add("enter", gainsWords(j.gains))
+	s.add("enter", gainsWords(j.gains, report.LoggedInFahrenheit(j.card)))
 	s.add("", requirementWords(j.gains))
 	for _, reason := range j.gains.Reasons {
 		s.add("", reason)
@@ -132,11 +133,16 @@ func modelWords(card *fit.Card) string {
 	return fmt.Sprintf("%s: %s (%s intervals)", model.Structure, strings.Join(parts, ", "), format.Percent(card.Confidence))
 }
 
-// gainsWords are the numbers as they are entered at the controller.
-func gainsWords(g *tune.Gains) string {
+// gainsWords are the numbers as they are entered at the controller; of a log in
+// °F for one that works in °C and for one that works in °F.
+func gainsWords(g *tune.Gains, fahrenheit bool) string {
 	var parts []string
 	for _, e := range g.Entry {
-		parts = append(parts, e.Name+" "+format.Amount(e.Value, e.Unit, 4))
+		words := e.Name + " " + format.Amount(e.Value, e.Unit, 4)
+		if both := report.InBothDegrees(e); fahrenheit && len(both) > 1 {
+			words += " (controller in °C) or " + format.Amount(both[1].Value, both[1].Unit, 4) + " (controller in °F)"
+		}
+		parts = append(parts, words)
 	}
 	return fmt.Sprintf("%s, %s form, %s acting: %s", strings.ToUpper(g.Controller), g.Form, g.Action, strings.Join(parts, ", "))
 }

@@ -113,7 +113,10 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, args []str
 // ending of a log, and may be written again.
 func (o *validateOptions) refuseOverwriting(c *console, inputs []string) error {
 	if isTable(c.output) && holdsRuns(c.output) {
-		return refuseInputs(inputs, c.output, o.plot.path)
+		if err := refuseInputs(inputs, c.output, o.plot.path); err != nil {
+			return err
+		}
+		return refuseUnwritable(c.output, o.plot.path)
 	}
 	return c.refuseOverwriting(inputs, c.output, o.plot.path)
 }

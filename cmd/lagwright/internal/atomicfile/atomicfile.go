@@ -11,6 +11,7 @@ import (
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"syscall"
 )
 
 // Write calls write with the file's content to be and puts the result in
@@ -39,6 +40,66 @@ func Write(path string, write func(io.Writer) error) error {
 	return nil
 }
 
+// Check finds out, before any work, whether [Write] could put a file at path:
+// it makes the temporary file and takes it away again.
+func Check(path string) error {
+	path, special, err := target(path)
+	if err != nil || special {
+		return err
+	}
+	tmp, err := create(path)
+	if err != nil {
+		return err
+	}
+	return errors.Join(tmp.Close(), os.Remove(tmp.Name()))
+}
+
+// CheckFolder is [Check] for [Folder].
+func CheckFolder(path string) error {
+	tmp, err := besideFolder(path)
+	if err != nil {
+		return err
+	}
+	return os.Remove(tmp)
+}
+
+// NoFolder is the error of a path in a folder that is not there, or that is no
+// folder.
+type NoFolder struct {
+	Folder string
+	IsFile bool
+}
+
+func (e *NoFolder) Error() string {
+	if e.IsFile {
+		return fmt.Sprintf("%s is a file, not a folder: write to another folder", e.Folder)
+	}
+	return fmt.Sprintf("the folder %s does not exist: make it first, or write to another", e.Folder)
+}
+
+// folderError names the folder that path was to be made in, and not the
+// temporary file, of which nobody knows.
+func folderError(path string, err error) error {
+	if err == nil {
+		return nil
+	}
+	folder := filepath.Dir(filepath.Clean(path))
+	info, statErr := os.Stat(folder)
+	switch {
+	case errors.Is(statErr, fs.ErrNotExist):
+		return &NoFolder{Folder: folder}
+	case statErr == nil && !info.IsDir(), errors.Is(statErr, syscall.ENOTDIR):
+		return &NoFolder{Folder: folder, IsFile: true}
+	case errors.Is(err, fs.ErrPermission):
+		return fmt.Errorf("the folder %s may not be written into (%w): write to another", folder, fs.ErrPermission)
+	}
+	why := err
+	if path := (*fs.PathError)(nil); errors.As(err, &path) {
+		why = path.Err
+	}
+	return fmt.Errorf("write %s: %w", path, why)
+}
+
 // target follows symbolic links and tells whether what is there cannot be
 // replaced by a rename without harm.
 func target(path string) (real string, special bool, err error) {
@@ -47,7 +108,7 @@ func target(path string) (real string, special bool, err error) {
 		return path, false, nil
 	}
 	if err != nil {
-		return "", false, err
+		return "", false, folderError(path, err)
 	}
 	if info.IsDir() {
 		return "", false, fmt.Errorf("%s is a folder", path)
@@ -67,7 +128,7 @@ func create(path string) (*os.File, error) {
 		name := fmt.Sprintf("%s.%s.%08x.tmp", dir, base, rand.Uint32())
 		f, err := os.OpenFile(name, os.O_CREATE|os.O_EXCL|os.O_WRONLY, 0o666)
 		if !errors.Is(err, fs.ErrExist) {
-			return f, err
+			return f, folderError(path, err)
 		}
 	}
 }
@@ -103,10 +164,7 @@ func writeDirectly(path string, write func(io.Writer) error) error {
 // one and others are left alone.
 func Folder(path string, fill func(dir string) error) error {
 	path = filepath.Clean(path)
-	if info, err := os.Stat(path); err == nil && !info.IsDir() {
-		return fmt.Errorf("%s exists and is not a folder", path)
-	}
-	tmp, err := os.MkdirTemp(filepath.Dir(path), "."+filepath.Base(path)+".*.tmp")
+	tmp, err := besideFolder(path)
 	if err != nil {
 		return err
 	}
@@ -121,6 +179,16 @@ func Folder(path string, fill func(dir string) error) error {
 		return os.Rename(tmp, path)
 	}
 	return moveInto(tmp, path)
+}
+
+// besideFolder makes an empty folder beside path, which must be no file.
+func besideFolder(path string) (string, error) {
+	path = filepath.Clean(path)
+	if info, err := os.Stat(path); err == nil && !info.IsDir() {
+		return "", fmt.Errorf("%s exists and is not a folder", path)
+	}
+	tmp, err := os.MkdirTemp(filepath.Dir(path), "."+filepath.Base(path)+".*.tmp")
+	return tmp, folderError(path, err)
 }
 
 func moveInto(from, to string) error {

@@ -5,6 +5,8 @@ import (
 	"io"
 	"os"
 	"path/filepath"
+	"strings"
+	"syscall"
 	"testing"
 )
 
@@ -120,5 +122,54 @@ func TestFolder(t *testing.T) {
 	}
 	if got := names(t, dir); len(got) != 1 {
 		t.Errorf("left: %q, want only the folder", got)
+	}
+}
+
+// TestCheck: what could not be written is found out beforehand, told with the
+// folder and never with the temporary file, and nothing stays behind.
+func TestCheck(t *testing.T) {
+	dir := t.TempDir()
+	file := filepath.Join(dir, "file")
+	if err := os.WriteFile(file, []byte("old"), 0o666); err != nil {
+		t.Fatal(err)
+	}
+	for _, c := range []struct {
+		name, path, want string
+		noFolder         bool
+	}{
+		{"new", filepath.Join(dir, "new.json"), "", false},
+		{"old", file, "", false},
+		{"device", os.DevNull, "", false},
+		{"no folder", filepath.Join(dir, "nodir", "x.json"), "the folder " + filepath.Join(dir, "nodir") + " does not exist: make it first", true},
+		{"below a file", filepath.Join(file, "x.json"), file + " is a file, not a folder: write to another", true},
+		{"a folder", dir, "is a folder", false},
+	} {
+		err := Check(c.path)
+		if c.want == "" && err != nil || c.want != "" && (err == nil || !strings.Contains(err.Error(), c.want) || strings.Contains(err.Error(), ".tmp")) {
+			t.Errorf("%s: %v, want %q", c.name, err, c.want)
+		}
+		if errors.As(err, new(*NoFolder)) != c.noFolder {
+			t.Errorf("%s: %T", c.name, err)
+		}
+		if c.name == "old" || c.name == "new" || c.name == "a folder" {
+			continue
+		}
+		if late := Write(c.path, text("late", nil)); (late == nil) != (err == nil) || late != nil && late.Error() != err.Error() {
+			t.Errorf("%s: writing says %v, checking %v", c.name, late, err)
+		}
+	}
+	for path, want := range map[string]string{filepath.Join(dir, "job"): "", dir: "", file: "is not a folder", filepath.Join(dir, "nodir", "job"): "does not exist: make it first"} {
+		if err := CheckFolder(path); (want == "") != (err == nil) || err != nil && !strings.Contains(err.Error(), want) {
+			t.Errorf("CheckFolder(%s): %v, want %q", path, err, want)
+		}
+	}
+	if got := names(t, dir); len(got) != 1 || read(t, file) != "old" {
+		t.Errorf("left behind: %q", got)
+	}
+	if err := folderError(filepath.Join(dir, "x"), &os.PathError{Op: "open", Path: ".x.tmp", Err: syscall.EACCES}); !strings.Contains(err.Error(), "the folder "+dir+" may not be written into") {
+		t.Error(err)
+	}
+	if err := folderError(filepath.Join(dir, "x"), &os.PathError{Op: "open", Path: ".x.tmp", Err: syscall.ENOSPC}); strings.Contains(err.Error(), ".tmp") || !errors.Is(err, syscall.ENOSPC) {
+		t.Error(err)
 	}
 }
