@@ -19,7 +19,8 @@ import (
 type console struct {
 	in          io.Reader
 	out, errOut io.Writer
-	args        []string // the command line without the program's name
+	args        []string       // the command line without the program's name
+	flags       *pflag.FlagSet // those of the command that runs
 
 	json    bool
 	output  string

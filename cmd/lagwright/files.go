@@ -43,6 +43,9 @@ func (c *console) readCard(path string) (*fit.Card, error) {
 	if err != nil {
 		return nil, cardError(path, err)
 	}
+	if err := c.agreeOnInput(filepath.Base(path), card.Units.Input); err != nil {
+		return nil, err
+	}
 	return card, nil
 }
 

@@ -50,7 +50,7 @@ func (f *fitFlags) fixOne(s string) error {
 		if !ok || !fixName.MatchString(name) {
 			return errors.New("want NAME=VALUE with gain, lag1, lag2, … or dead_time, such as lag2=0.05")
 		}
-		v, err := number(strings.TrimSuffix(text, "s"))
+		v, err := fixedValue(name, text)
 		if err != nil {
 			return fmt.Errorf("%s: %w", name, err)
 		}
@@ -60,6 +60,15 @@ func (f *fitFlags) fixOne(s string) error {
 		f.options.Fix[name] = v
 	}
 	return nil
+}
+
+// fixedValue reads the value of a parameter: a time without a unit is seconds.
+func fixedValue(name, text string) (float64, error) {
+	v, err := bareNumber(text)
+	if err == nil || name == "gain" {
+		return v, err
+	}
+	return seconds(text)
 }
 
 // with completes the options by what the other flags say.

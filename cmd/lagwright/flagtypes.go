@@ -3,12 +3,10 @@ package main
 import (
 	"errors"
 	"fmt"
-	"math"
 	"regexp"
 	"slices"
 	"strconv"
 	"strings"
-	"time"
 
 	"github.com/spf13/cobra"
 	"github.com/spf13/pflag"
@@ -71,19 +69,10 @@ func choiceFlagFunc(cmd *cobra.Command, dst *string, name, kind, shown, usage st
 	_ = cmd.RegisterFlagCompletionFunc(name, cobra.FixedCompletions(words, cobra.ShellCompDirectiveNoFileComp))
 }
 
-// number reads a finite number.
-func number(s string) (float64, error) {
-	v, err := strconv.ParseFloat(strings.TrimSpace(s), 64)
-	if err != nil || math.IsNaN(v) || math.IsInf(v, 0) || strings.ContainsAny(s, "_xXpP") {
-		return 0, errors.New("want a number such as 0.5")
-	}
-	return v, nil
-}
-
 // temperature reads 300, 300C, 572F or 573K as °C.
 func temperature(s string) (float64, error) {
 	text, unit := cutDegrees(s)
-	v, err := number(text)
+	v, err := bareNumber(text)
 	if err != nil {
 		return 0, errors.New("want a temperature such as 95, 95C or 203F")
 	}
@@ -99,7 +88,7 @@ func temperature(s string) (float64, error) {
 // difference reads 5, 5K, 5C or 9F as a difference in K.
 func difference(s string) (float64, error) {
 	text, unit := cutDegrees(s)
-	v, err := number(text)
+	v, err := bareNumber(text)
 	if err != nil {
 		return 0, errors.New("want a difference of temperature such as 5, 5K or 9F")
 	}
@@ -128,14 +117,6 @@ func cutDegrees(s string) (number, unit string) {
 	return s, ""
 }
 
-func positiveNumber(s string) (float64, error) {
-	v, err := number(s)
-	if err == nil && v <= 0 {
-		err = errors.New("want a number above zero")
-	}
-	return v, err
-}
-
 func wholeNumber(s string) (int64, error) {
 	v, err := strconv.ParseInt(s, 10, 64)
 	if err != nil {
@@ -153,40 +134,11 @@ func count(s string) (int, error) {
 	return v, nil
 }
 
-// duration reads 45s, 250ms, 2m, 1h, 1m30s.
-func duration(s string) (time.Duration, error) {
-	d, err := time.ParseDuration(strings.ReplaceAll(strings.TrimSpace(s), " ", ""))
-	if err != nil {
-		if _, bare := number(s); bare == nil {
-			return 0, fmt.Errorf("want a unit: %ss, %sms or %sm", s, s, s)
-		}
-		return 0, errors.New("want a duration such as 45s, 250ms or 2m")
-	}
-	if d < 0 {
-		return 0, errors.New("want a duration that is not negative")
-	}
-	return d, nil
-}
-
-// seconds reads a duration as seconds.
-func seconds(s string) (float64, error) {
-	d, err := duration(s)
-	return d.Seconds(), err
-}
-
-func positiveSeconds(s string) (float64, error) {
-	v, err := seconds(s)
-	if err == nil && v == 0 {
-		err = errors.New("want a duration above zero")
-	}
-	return v, err
-}
-
 // percent reads 5% as 5. A bare number above 1 is taken for percent; between 0
 // and 1 it could be either.
 func percent(s string) (float64, error) {
 	digits, signed := strings.CutSuffix(strings.TrimSpace(s), "%")
-	v, err := number(digits)
+	v, err := bareNumber(digits)
 	switch {
 	case err != nil || v < 0:
 		return 0, errors.New("want a percentage such as 5%")
@@ -199,7 +151,7 @@ func percent(s string) (float64, error) {
 // share reads 95% or 0.95 as 0.95; it lies strictly between 0 and 1.
 func share(s string) (float64, error) {
 	digits, signed := strings.CutSuffix(strings.TrimSpace(s), "%")
-	v, err := number(digits)
+	v, err := bareNumber(digits)
 	if signed || v > 1 {
 		v /= 100
 	}
@@ -218,8 +170,8 @@ func span(s string) (data.Span, error) {
 	if m == nil {
 		return data.Span{}, bad
 	}
-	low, errLow := number(m[1])
-	high, errHigh := number(m[2])
+	low, errLow := bareNumber(m[1])
+	high, errHigh := bareNumber(m[2])
 	if errLow != nil || errHigh != nil {
 		return data.Span{}, bad
 	}

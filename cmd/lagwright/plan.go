@@ -92,6 +92,9 @@ func (o *planOptions) plan(cmd *cobra.Command, c *console, args []string) (*fit.
 		if len(missing) > 0 {
 			return nil, usageErrorf("give a card, or guess the heater for its first bump: %s missing", strings.Join(missing, ", "))
 		}
+		if err := c.agreeOnInput("the heater guessed (--input-unit)", o.inputUnit); err != nil {
+			return nil, err
+		}
 		o.guess.Units = fit.CardUnits{Time: "s", Input: o.inputUnit, Temperature: "degC"}
 		return fit.PlanFirst(o.guess, o.options)
 	}
@@ -113,7 +116,7 @@ func (o *planOptions) plan(cmd *cobra.Command, c *console, args []string) (*fit.
 
 // guessedGain reads a gain; a heater that answers not at all needs no plan.
 func guessedGain(s string) (float64, error) {
-	v, err := number(s)
+	v, err := inputNumber(s, "K/", "", "12")
 	if err == nil && v == 0 {
 		err = errors.New("want a number other than zero")
 	}

@@ -52,6 +52,10 @@ Start with: lagwright demo`,
 		// Suggestions are made by asUsage, in one line.
 		DisableSuggestions: true,
 	}
+	root.PersistentPreRunE = func(cmd *cobra.Command, _ []string) error {
+		c.flags = cmd.Flags()
+		return checkUnitless(c.flags)
+	}
 	root.SetVersionTemplate("lagwright {{.Version}}\n")
 	root.SetHelpCommand(newHelp())
 	c.addFlags(root.PersistentFlags())

@@ -43,6 +43,11 @@ func runRun(ctx context.Context, c *console, o *runOptions, log string) error {
 	if err != nil {
 		return err
 	}
+	for _, run := range runs {
+		if err := c.agreeOnInput(run.Source.File, run.Units.Input); err != nil {
+			return err
+		}
+	}
 	j, err := c.work(ctx, &o.job, runs, runs, nil)
 	if err != nil {
 		return err

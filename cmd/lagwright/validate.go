@@ -68,10 +68,23 @@ table of the runs with the results side by side.
 	valueFlag(fs, &o.options.Confidence, "confidence", "PERCENT", "95%", "level of the bands", share)
 	o.requirement.add(cmd)
 	optionalFlag(fs, &o.options.RunLimits.Deviation, "deviation", "DEGREES", "largest distance from the setpoint that a run may show, setpoint moves aside, K (or 9F)", positiveDifference)
-	optionalFlag(fs, &o.options.RunLimits.IAE, "iae", "NUMBER", "largest error area of a run: degrees off the setpoint, times seconds", positiveNumber)
+	optionalFlag(fs, &o.options.RunLimits.IAE, "iae", "NUMBER", "largest error area of a run: degrees off the setpoint, times seconds", errorArea)
 	o.log.add(cmd)
 	o.plot.add(cmd, "the judged run furthest from the requirement, logged against proposed")
 	return cmd
+}
+
+// errorArea reads 50 or 50K*s.
+func errorArea(s string) (float64, error) {
+	digits, unit := cutUnit(s)
+	v, err := bareNumber(digits)
+	if unit = strings.NewReplacer("*", "", "·", "", " ", "").Replace(unit); err != nil || unit != "" && unit != "Ks" {
+		return 0, errors.New("want an area in K*s, such as 50")
+	}
+	if v <= 0 {
+		return 0, errors.New("want a number above zero")
+	}
+	return v, nil
 }
 
 func runValidate(ctx context.Context, c *console, o *validateOptions, args []string) error {
