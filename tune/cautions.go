@@ -21,8 +21,12 @@ func (t *tuning) cautions(g *Gains) []string {
 	var c []string
 	// First what the answer above may hide.
 	if w := g.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs {
-		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.0f %%; up to %.0f is usual. Ask for --ms %.1f.",
-			figure(w.Ms, 3), 100*g.Assurance, soundMs, usualMs))
+		share := g.Assurance
+		if g.WorstOver > 0 {
+			share = g.WorstOver
+		}
+		c = append(c, fmt.Sprintf("Small margins: Ms is %s on the plausible plant at %.3g %%; up to %.0f is usual. Ask for --ms %.1f.",
+			figure(w.Ms, 3), 100*share, soundMs, usualMs))
 	}
 	if n := g.Nominal; g.Controller == "p" && n != nil && n.SteadyOffset != nil && g.Requirement.SetpointStep != nil {
 		unit := perKelvin(t.units().Temperature)
@@ -51,7 +55,7 @@ func (t *tuning) cautions(g *Gains) []string {
 		}
 		c = append(c, fmt.Sprintf("A setpoint step of %s from about %s may reach %s.", quantity(*s, perKelvin(unit), 2), quantity(from, unit, 3), quantity(top, unit, 4)))
 	}
-	if words := t.unlimited(g); words != "" {
+	if words := t.beyondTheLog(g); words != "" {
 		c = append(c, words)
 	}
 	if words := g.summing(); words != "" {
@@ -80,9 +84,9 @@ func (t *tuning) inFahrenheit(g *Gains) []string {
 	return nil
 }
 
-// unlimited says that a step drives the input to where the log has not been
-// while no limit was given.
-func (t *tuning) unlimited(g *Gains) string {
+// beyondTheLog says that a step drives the input to where the log has not
+// been, and whether a limit was given that could have kept it from there.
+func (t *tuning) beyondTheLog(g *Gains) string {
 	if g.Worst == nil || g.Worst.PeakInput == nil {
 		return ""
 	}
@@ -91,15 +95,19 @@ func (t *tuning) unlimited(g *Gains) string {
 	for _, o := range t.ops {
 		low, high = min(low, o.card.Range.Input[0]), max(high, o.card.Range.Input[1])
 	}
-	flag := ""
+	flag, limit := "--input-max", g.Limits.Max
+	shown := 0.005 * (high - low) // less does not show in the figures
 	switch {
-	case peak > high && g.Limits.Max == nil:
-		flag = "--input-max"
-	case peak < low && g.Limits.Min == nil:
-		flag = "--input-min"
+	case peak > high+shown:
+	case peak < low-shown:
+		flag, limit = "--input-min", g.Limits.Min
 	default:
 		return ""
 	}
-	return fmt.Sprintf("No %s was given, so the input is taken as unlimited: the setpoint step of %s drives it to %s, the log has it from %s to %s. Give the drive's limits.",
-		flag, quantity(*g.Requirement.SetpointStep, perKelvin(g.Units.Temperature), 2), quantity(peak, unit, 3), figure(&low, 3), quantity(high, unit, 3))
+	step := quantity(*g.Requirement.SetpointStep, perKelvin(g.Units.Temperature), 2)
+	to := fmt.Sprintf("%s, the log has it from %s to %s.", quantity(peak, unit, 3), figure(&low, 3), quantity(high, unit, 3))
+	if limit == nil {
+		return fmt.Sprintf("No %s was given, so the input is taken as unlimited: the setpoint step of %s drives it to %s Give the drive's limits.", flag, step, to)
+	}
+	return fmt.Sprintf("The setpoint step of %s drives the input to %s What the heater does beyond is not known from it.", step, to)
 }

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 
 	"lagwright/ident"
 )
@@ -12,20 +13,46 @@ import (
 // Cures say what would let the requirement be met, one change at a time and in
 // numbers that can be acted on. The size of a change is searched on a few of
 // the plausible plants; it is said only where the synthesis with that change,
-// on all plants and judged like any other, meets the requirement.
+// on all plants and judged like any other, meets the requirement with a
+// controller that brings the temperature to the setpoint.
 
 // curePlants is how many plants of a card a change is sized on.
 const curePlants = 40
 
-// cures lists what would let a controller of this kind do.
+// cures lists what would let a controller of this kind do. What leaves an
+// offset is cured by PI.
 func (t *tuning) cures(ctx context.Context, kind string) []string {
 	if t.options.Rule != "" {
-		return t.cureOfRule(ctx, kind)
-	}
-	if kind != "p" && !t.plausible.reaches(t.options.Assurance) {
-		return t.curesOfReach(ctx, kind)
+		return t.cureOfRule(ctx, t.settling(kind))
 	}
 	out := t.otherControllers(ctx, kind)
+	if cured := t.settling(kind); cured != kind {
+		if len(out) > 0 {
+			return out
+		}
+		for _, words := range t.curesOf(ctx, cured) {
+			out = append(out, "with a PI controller, which leaves no offset (--controller pi): "+words)
+		}
+		return out
+	}
+	return append(out, t.curesOf(ctx, kind)...)
+}
+
+// settling is the kind itself, PI for one that leaves an offset.
+func (t *tuning) settling(kind string) string {
+	leaves := func(o operation) bool { return !o.nominal.Structure.Integrating() }
+	if kind == "p" && slices.ContainsFunc(t.ops, leaves) {
+		return "pi"
+	}
+	return kind
+}
+
+// curesOf lists the changes that let a controller of this kind do.
+func (t *tuning) curesOf(ctx context.Context, kind string) []string {
+	if !t.plausible.reaches(t.options.Assurance) {
+		return t.curesOfReach(ctx, kind)
+	}
+	var out []string
 	asked, least := t.limitsAsked(), math.Inf(1)
 	for _, l := range asked {
 		if f, ok := t.pull(ctx, kind, l); ok {
@@ -57,10 +84,11 @@ const (
 	clearlyLess = 0.8
 )
 
-// curesOfReach lists what brings a setpoint step within reach of the input.
+// curesOfReach lists what brings a setpoint step within reach of the input,
+// with what else it takes then.
 func (t *tuning) curesOfReach(ctx context.Context, kind string) []string {
 	var out []string
-	for _, l := range append(t.supplyLever(), t.stepLever()...) {
+	for _, l := range slices.Concat(t.supplyLever(), t.floorLever(), t.stepLever()) {
 		f, ok := leastFactor(l.most, func(f float64) bool {
 			c := t.pulled(l, f)
 			return c != nil && c.plausible.reaches(t.options.Assurance)
@@ -68,13 +96,35 @@ func (t *tuning) curesOfReach(ctx context.Context, kind string) []string {
 		if !ok {
 			continue
 		}
-		words := l.words(l.value(f))
-		if c := t.pulled(l, f); c != nil && !c.attains(ctx, kind) {
-			words += ", so that the input reaches; that alone is not enough"
+		switch c := t.pulled(l, f); {
+		case c == nil:
+		case c.attains(ctx, kind):
+			out = append(out, l.words(l.value(f)))
+		default:
+			out = append(out, t.curesBeyondReach(ctx, kind, l, f, c)...)
 		}
-		out = append(out, words)
 	}
 	return out
+}
+
+// curesBeyondReach is for a lever that at a factor brings the step within
+// reach, but not more: what is asked of the step has to be eased as well, or
+// the lever is pulled further; what is not known to do is not said.
+func (t *tuning) curesBeyondReach(ctx context.Context, kind string, l lever, f float64, reached *tuning) []string {
+	if further, ok := t.pull(ctx, kind, l); ok {
+		return []string{l.words(l.value(further))}
+	}
+	asked := reached.limitsAsked()
+	if len(asked) > 1 {
+		asked = append(asked, together(asked))
+	}
+	for _, also := range asked {
+		if g, ok := reached.pull(ctx, kind, also); ok {
+			words := also.words(also.value(g))
+			return []string{l.words(l.value(f)) + ", so that the input reaches, and " + strings.TrimSuffix(words, allTogether) + allTogether}
+		}
+	}
+	return nil
 }
 
 // cureOfRule offers the synthesis in place of a published rule.
@@ -82,7 +132,11 @@ func (t *tuning) cureOfRule(ctx context.Context, kind string) []string {
 	own := *t
 	own.options.Rule = ""
 	if own.attains(ctx, kind) {
-		return []string{"leave out --rule: gains made for this requirement meet it"}
+		words := "leave out --rule: gains made for this requirement meet it"
+		if t.options.Controller == "p" && kind != "p" {
+			words = "leave out --rule and take --controller pi: gains made for this requirement meet it, and leave no offset"
+		}
+		return []string{words}
 	}
 	return nil
 }
@@ -238,6 +292,9 @@ func (t *tuning) limitsAsked() []lever {
 	return out
 }
 
+// allTogether ends the words of a cure that takes several changes at once.
+const allTogether = " (together)"
+
 // together pulls several levers by the same factor.
 func together(all []lever) lever {
 	most := math.Inf(1)
@@ -259,13 +316,13 @@ func together(all []lever) lever {
 				}
 				words += l.words(l.value(min(f, l.most)))
 			}
-			return words + " (together)"
+			return words + allTogether
 		}}
 }
 
 // otherLevers are those of the plant and of the limits.
 func (t *tuning) otherLevers() []lever {
-	return slices.Concat(t.deadTimeLever(), t.scanLever(), t.supplyLever(), t.stepLever())
+	return slices.Concat(t.deadTimeLever(), t.scanLever(), t.supplyLever(), t.floorLever(), t.stepLever())
 }
 
 // The largest factors by which plant and limits are changed.
@@ -313,6 +370,21 @@ func (t *tuning) supplyLever() []lever {
 		func(v float64, q *Requirement, _ *operation) { q.InputMax = &v },
 		func(v float64) string {
 			return fmt.Sprintf("more supply: an input up to %s in place of %s", quantity(v, unit, 3), quantity(*q.InputMax, unit, 3))
+		}}}
+}
+
+// floorLever lowers the least input, never below zero.
+func (t *tuning) floorLever() []lever {
+	q, o := t.requirement, t.ops[0]
+	if q.InputMin == nil || !(*q.InputMin > 0) || o.input <= *q.InputMin {
+		return nil
+	}
+	unit := o.card.Units.Input
+	most := min(mostChange, o.input/(o.input-*q.InputMin))
+	return []lever{{most, func(f float64) float64 { return max(0, roundOut(o.input-f*(o.input-*q.InputMin), false)) },
+		func(v float64, q *Requirement, _ *operation) { q.InputMin = &v },
+		func(v float64) string {
+			return fmt.Sprintf("allow an input down to %s in place of %s", quantity(v, unit, 3), quantity(*q.InputMin, unit, 3))
 		}}}
 }
 

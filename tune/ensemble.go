@@ -107,6 +107,19 @@ func (e *ensemble) share(out []outcome) float64 {
 	return share
 }
 
+// meeting is the ensemble of the scenarios on which the task is met, with
+// their outcomes.
+func (e *ensemble) meeting(out []outcome) (*ensemble, []outcome) {
+	var list []*scenario
+	var met []outcome
+	for i, s := range e.scenarios {
+		if out[i].met() {
+			list, met = append(list, s), append(met, out[i])
+		}
+	}
+	return newEnsemble(list, e.workers), met
+}
+
 // leastShare returns the card on which the smallest share of the scenarios
 // has a property, and that share.
 func (e *ensemble) leastShare(has func(i int) bool) (card int, share float64) {

@@ -24,8 +24,9 @@ type Gains struct {
 	Rule        string      `json:"rule"` // name of the rule, "synthesis" for the default
 	Requirement Requirement `json:"requirement"`
 
-	Nominal      *Metrics `json:"nominal"` // on the best-fit plant
-	Worst        *Metrics `json:"worst"`   // the assurance quantile over plausible plants it was not chosen on; of several cards the worst
+	Nominal      *Metrics `json:"nominal"`              // on the best-fit plant
+	Worst        *Metrics `json:"worst"`                // the assurance quantile over plausible plants it was not chosen on; of several cards the worst
+	WorstOver    float64  `json:"worst_over,omitempty"` // where meets rests on the sampling error: the share that meets, and worst is over those plants
 	Assurance    float64  `json:"assurance"`
 	Meets        bool     `json:"meets"`
 	ShareMeeting float64  `json:"share_meeting"`         // of several cards, on the worst
@@ -87,6 +88,7 @@ type Candidate struct {
 	Form       string   `json:"form"`
 	Nominal    *Metrics `json:"nominal"`
 	Worst      *Metrics `json:"worst"`
+	WorstOver  float64  `json:"worst_over,omitempty"` // as in Gains
 	Share      float64  `json:"share_meeting"`
 	Meets      bool     `json:"meets"`
 	Selected   bool     `json:"selected"`

@@ -96,7 +96,11 @@ func unitWords(unit string) string {
 }
 
 func (g *Gains) writeEntries(b *bufio.Writer) {
-	fmt.Fprintf(b, "%s: %s, %s form, %s acting\n", g.heading(), kindWords(g.Controller), plain(g.Form), plain(g.Action))
+	fmt.Fprintf(b, "%s: %s, %s form, %s acting", g.heading(), kindWords(g.Controller), plain(g.Form), plain(g.Action))
+	if g.offset(g.Nominal) > 0 {
+		fmt.Fprint(b, "; leaves a permanent offset")
+	}
+	fmt.Fprintln(b)
 	t := tabwriter.NewWriter(b, 0, 0, 2, ' ', 0)
 	entries := g.Entry
 	if len(entries) == 0 {
@@ -150,19 +154,61 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 	if !g.Meets {
 		verdict = "does NOT meet"
 	}
-	fmt.Fprintf(b, "\nThis %s the requirement (%s): it holds on %s; asked %s%s.\n",
-		verdict, g.Requirement.Words(g.Units), g.countedOn(), percent(g.Assurance), g.scatter())
+	fmt.Fprintf(b, "\nThis %s the requirement (%s)%s: it holds on %s; asked %s%s.\n",
+		verdict, g.Requirement.Words(g.Units), g.offsetWords(), g.countedOn(), percent(g.Assurance), g.scatter())
 	for _, r := range g.Reasons {
 		fmt.Fprintln(b, "  -", plain(r))
 	}
-	g.writeFigures(b, "Worst over "+percent(g.Assurance)+" of the plausible plants", g.Worst)
+	g.writeFigures(b, g.worstWords(), g.Worst)
 	g.writeFigures(b, "On the best fit", g.Nominal)
+	if g.Worst != nil && g.Worst.Stable {
+		fmt.Fprintf(b, "  %s\n", g.oneSided())
+	}
 	if len(g.Cures) > 0 {
 		fmt.Fprintln(b, "What would let it be met, each by itself unless it says otherwise")
 		for _, c := range g.Cures {
 			fmt.Fprintln(b, "  -", plain(c))
 		}
 	}
+}
+
+// offset is how far from the setpoint a P controller comes to rest after the
+// step that is judged, temperature units; 0 where it leaves none.
+func (g *Gains) offset(m *Metrics) float64 {
+	if g.Controller != "p" || m == nil || m.SteadyOffset == nil {
+		return 0
+	}
+	return math.Abs(*m.SteadyOffset)
+}
+
+// offsetWords says what the settling and the overshoot of P control leave out.
+func (g *Gains) offsetWords() string {
+	offset, unit := g.offset(g.Nominal), perKelvin(g.Units.Temperature)
+	if offset == 0 || g.Requirement.SetpointStep == nil {
+		return ""
+	}
+	return fmt.Sprintf(", counted from where P control comes to rest, which after a step of %s is %s away from the setpoint for good (best fit)",
+		quantity(math.Abs(*g.Requirement.SetpointStep), unit, 3), quantity(offset, unit, 3))
+}
+
+// worstWords says what the worst figures are the worst of.
+func (g *Gains) worstWords() string {
+	if g.WorstOver > 0 {
+		return "Worst over the " + exactly(g.WorstOver) + " that meet"
+	}
+	return "Worst over " + percent(g.Assurance) + " of the plausible plants"
+}
+
+// oneSided tells the share of the worst figures from that of a band.
+func (g *Gains) oneSided() string {
+	beyond := "none of those plants"
+	if g.WorstOver == 0 {
+		beyond = exactly(1-g.Assurance) + " of the plants"
+		if g.Assurance == 1 {
+			beyond = "no plant"
+		}
+	}
+	return fmt.Sprintf("(Worst is one-sided, each figure by itself: beyond it lies %s. A 95 %% interval or band has two ends, with 2.5 %% beyond each.)", beyond)
 }
 
 // writeFigures writes the figures of the loop on one plant.

@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"cmp"
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 )
@@ -77,7 +78,11 @@ func (g *Gains) writeTable(b *bufio.Writer, rows []Candidate) {
 	if len(rows) == 0 {
 		return
 	}
-	fmt.Fprintf(b, "\nTried (ideal form, b: setpoint weight). Ms, settling and overshoot are the worst over %s of the plausible plants, IAE after a unit load that of the best fit.\n\n", percent(g.Assurance))
+	within := ""
+	if slices.ContainsFunc(rows, func(c Candidate) bool { return c.WorstOver > 0 }) {
+		within = " (over those that meet where a row meets on fewer, within the sampling error)"
+	}
+	fmt.Fprintf(b, "\nTried (ideal form, b: setpoint weight). Ms, settling and overshoot are the worst over %s of the plausible plants%s, IAE after a unit load that of the best fit.\n\n", percent(g.Assurance), within)
 	const line = "%-2s%-16s %-3s %7s %5s %5s %4s %4s %5s %5s %5s %5s %3s\n"
 	gain := unitWords(g.Units.Input) + "/" + unitWords(perKelvin(g.Units.Temperature))
 	fmt.Fprintf(b, line, "", "rule", "", "Kc", "Ti", "Td", "b", "Ms", "settl", "over", "IAE", "share", "met")
@@ -94,4 +99,21 @@ func (g *Gains) writeTable(b *bufio.Writer, rows []Candidate) {
 		fmt.Fprintf(b, line, mark, plain(c.Rule), plain(c.Controller), figure(&c.Kc, 3), figure(c.Ti, 3), figure(c.Td, 3), figure(c.SetpointWeight, 2),
 			figure(w.Ms, 3), figure(w.Settling, 3), figure(w.Overshoot, 3), figure(n.IAE, 3), percent(c.Share), meets)
 	}
+	g.writeOffset(b, rows)
+}
+
+// writeOffset says why P, listed beside the chosen controller, is no answer
+// though it may meet the requirement.
+func (g *Gains) writeOffset(b *bufio.Writer, rows []Candidate) {
+	i := slices.IndexFunc(rows, func(c Candidate) bool { return c.Rule == synthesised && c.Controller == "p" && !c.Selected })
+	if i < 0 {
+		return
+	}
+	rest := ""
+	if m := orNone(rows[i].Nominal); m.SteadyOffset != nil && *m.SteadyOffset != 0 && g.Requirement.SetpointStep != nil {
+		unit := perKelvin(g.Units.Temperature)
+		rest = fmt.Sprintf(": after a step of %s it comes to rest %s away from the setpoint, and its settling and overshoot are counted from there",
+			quantity(math.Abs(*g.Requirement.SetpointStep), unit, 3), quantity(math.Abs(*m.SteadyOffset), unit, 3))
+	}
+	fmt.Fprintf(b, "\nP leaves a permanent offset%s. It is taken only where it is asked for (--controller p).\n", rest)
 }

@@ -14,9 +14,9 @@ import (
 	"lagwright/ident"
 )
 
-// Options steers [Tune]. The zero value compares P, PI and PID.
+// Options steers [Tune]. The zero value takes the better of PI and PID.
 type Options struct {
-	Controller string   // "p", "pi" or "pid"; "" compares them
+	Controller string   // "p", "pi" or "pid"; "" takes the better of PI and PID, and lists P beside them
 	Rule       string   // a published rule (see Rules) in place of the synthesis
 	TauC       float64  // closed-loop time constant for the rule, s; 0 means its usual choice
 	Assurance  float64  // share of the plausible plants on which the requirement must hold; 0 means 0.95
@@ -201,6 +201,7 @@ type row struct {
 	note       string
 	nominal    *Metrics
 	worst      *Metrics
+	worstOver  float64   // see Gains.WorstOver
 	on         *ensemble // the plants it is judged on
 	out        []outcome // on each of them, not chosen on it
 	share      float64
@@ -289,7 +290,12 @@ func (t *tuning) judged(r row) row {
 	for i, o := range t.ops {
 		inputs[i] = o.input
 	}
-	r.worst = r.on.worst(r.law, r.out, t.options.Assurance, inputs)
+	on, out, share := r.on, r.out, t.options.Assurance
+	if t.meets(r) && r.share < share-1e-9 {
+		on, out = on.meeting(out)
+		share, r.worstOver = 1, r.share
+	}
+	r.worst = on.worst(r.law, out, share, inputs)
 	return r
 }
 
@@ -325,8 +331,8 @@ func (t *tuning) units() GainUnits {
 
 // choose returns the row to recommend: PI where it meets the requirement,
 // PID where only it does or where it rejects loads much better at little
-// noise, P where only P does; where none meets it, the one that is nearest, of
-// those equally near in share one that leaves no offset.
+// noise; where neither meets it, the one that is nearest. P leaves an offset
+// that no requirement asks about, so it is no answer unless it was asked for.
 func (t *tuning) choose(rows []row) int {
 	index := func(kind string) int {
 		return slices.IndexFunc(rows, func(r row) bool { return r.kind == kind && t.meets(r) })
@@ -345,21 +351,23 @@ func (t *tuning) choose(rows []row) int {
 	case pid >= 0:
 		return pid
 	}
-	if p := index("p"); p >= 0 {
-		return p
+	nearest := 0
+	for i, r := range rows {
+		best := rows[nearest]
+		if cmp.Or(t.answers(r)-t.answers(best), cmp.Compare(r.share, best.share), cmp.Compare(best.designed.miss, r.designed.miss)) > 0 {
+			nearest = i
+		}
 	}
-	nearest := slices.MaxFunc(rows, func(a, b row) int {
-		return cmp.Or(cmp.Compare(a.share, b.share), offsets(b)-offsets(a), cmp.Compare(b.designed.miss, a.designed.miss))
-	})
-	return slices.IndexFunc(rows, func(r row) bool { return r.kind == nearest.kind && r.rule == nearest.rule })
+	return nearest
 }
 
-// offsets is 1 for a controller that leaves a steady offset.
-func offsets(r row) int {
-	if r.law.integral() {
-		return 0
+// answers is 1 for a controller that was asked for, or that leaves no offset
+// where none was.
+func (t *tuning) answers(r row) int {
+	if r.law.integral() || t.options.Controller == r.kind {
+		return 1
 	}
-	return 1
+	return 0
 }
 
 // inputNoise is the standard deviation, in input units, that the noise of the
@@ -394,7 +402,7 @@ func (t *tuning) inputNoise(c law) float64 {
 
 // candidate is the table's row.
 func (t *tuning) candidate(r row, selected bool) Candidate {
-	c := Candidate{Rule: r.rule, Controller: r.kind, Kc: r.law.kc, Filter: r.law.tf, Form: Ideal, Nominal: r.nominal, Worst: r.worst,
+	c := Candidate{Rule: r.rule, Controller: r.kind, Kc: r.law.kc, Filter: r.law.tf, Form: Ideal, Nominal: r.nominal, Worst: r.worst, WorstOver: r.worstOver,
 		Share: r.share, Meets: t.meets(r), Selected: selected, Note: r.note, InputNoise: t.inputNoise(r.law), SetpointWeight: finite(r.law.b)}
 	if !c.Meets {
 		words, _ := r.binding()
@@ -420,7 +428,7 @@ func (t *tuning) gains(ctx context.Context, r row) (*Gains, error) {
 	if !r.law.integral() {
 		g.Bias = o.input
 	}
-	g.Nominal, g.Worst, g.Assurance = r.nominal, r.worst, t.options.Assurance
+	g.Nominal, g.Worst, g.WorstOver, g.Assurance = r.nominal, r.worst, r.worstOver, t.options.Assurance
 	g.Meets, g.ShareMeeting, g.ShareError = t.meets(r), r.share, t.shareError(r)
 	g.OperatingInput = finite(o.input)
 	g.Reasons = []string{}
