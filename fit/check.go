@@ -45,6 +45,7 @@ type CheckReport struct {
 	Inlet   *CheckedRange `json:"inlet"`    // null where not logged
 	Judged  *JudgedPart   `json:"judged"`   // null when the whole log was
 	Quick   *QuickFit     `json:"quick"`    // null when nothing could be fitted
+	Warning []Warning     `json:"warnings"` // of the quick fit: what limits a fit of this log
 	Verdict []Verdict     `json:"verdicts"` // gain, lags, dead_time
 	Caution []string      `json:"cautions"`
 }
@@ -160,12 +161,14 @@ func Check(ctx context.Context, run *data.Run, o Options) (*CheckReport, error) 
 	if m.unbounded(part) == atLimit {
 		r.Quick.Parameters, r.Quick.Derived = withoutFalseBounds(m.Parameters, card.Derived)
 	}
+	r.Warning = card.Warnings
 	r.Verdict, err = judge(card, part, r.Loop)
 	return r, err
 }
 
 // quickFit fits two lags and, where the second cannot be told from zero, one. The
-// card holds what the verdict needs, not the warnings of a whole fit.
+// card holds what the verdict needs, and of the warnings of a whole fit those that
+// one more look at the log gives.
 func quickFit(ctx context.Context, run *data.Run, o Options) (*Card, error) {
 	o.quick = true
 	o.Plants, o.Progress = 48, nil
@@ -213,6 +216,16 @@ func quickCard(ctx context.Context, recs []*record, o Options) (*Card, error) {
 	if out.drift {
 		c.Drift = "linear"
 	}
+	c.Warnings = []Warning{}
+	add := func(code, parameter, format string, args ...any) {
+		if code != "input-correlation" { // two lags may be too few, and the misfit follow the input for that
+			c.Warnings = append(c.Warnings, Warning{Code: code, Parameter: parameter, Text: fmt.Sprintf(format, args...)})
+		}
+	}
+	out.warnNonlinear([]*data.Run{recs[0].run}, out.models[0], &c.Models[0], add)
+	if out.initial == earlier {
+		out.warnStart(add)
+	}
 	return c, nil
 }
 
@@ -244,7 +257,7 @@ func recording(run *data.Run, o Options) *CheckReport {
 			Input:       extent([]*data.Run{run}, func(r *data.Run) []float64 { return r.U }),
 			Temperature: extent([]*data.Run{run}, func(r *data.Run) []float64 { return r.Y }),
 		},
-		Bumps: []CheckBump{}, Modes: modeChanges(run), Notes: []CheckNote{}, Verdict: []Verdict{},
+		Bumps: []CheckBump{}, Modes: modeChanges(run), Notes: []CheckNote{}, Verdict: []Verdict{}, Warning: []Warning{},
 	}
 	card := source(run)
 	r.Columns, r.Start = card.Columns, card.Start

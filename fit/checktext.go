@@ -21,6 +21,7 @@ func (r *CheckReport) WriteText(w io.Writer) error {
 	p.heading(name)
 	r.writeVerdicts(p)
 	r.writeRecording(p)
+	r.writeWarnings(p)
 	r.writeMended(p)
 	r.writeBumps(p)
 	if len(r.Caution) > 0 {
@@ -112,6 +113,16 @@ func (r *CheckReport) writeRecording(p *page) {
 	}
 }
 
+func (r *CheckReport) writeWarnings(p *page) {
+	if len(r.Warning) == 0 {
+		return
+	}
+	p.heading("Warnings")
+	for _, w := range r.Warning {
+		w.write(p)
+	}
+}
+
 func (r *CheckReport) writeMended(p *page) {
 	var said []string
 	for _, k := range slices.Sorted(maps.Keys(r.Missing)) {
@@ -170,6 +181,18 @@ func figureOrDash(v *float64, digits int) string {
 	return figure(*v, digits)
 }
 
+// highestRise is the rise that the end of the gain's interval makes of one made by its
+// value; where that end is open there is none to tell, and it is the rise itself.
+func highestRise(gain Parameter, rise float64) float64 {
+	most := rise
+	for _, end := range []*float64{gain.Low, gain.High} {
+		if end != nil {
+			most = math.Max(most, rise**end/gain.Value)
+		}
+	}
+	return most
+}
+
 // checkCautions are the cautions that go with a check, with the numbers of its
 // log.
 func checkCautions(run *data.Run, r *CheckReport, c *Card) []string {
@@ -183,6 +206,9 @@ func checkCautions(run *data.Run, r *CheckReport, c *Card) []string {
 				for _, q := range m.Parameters {
 					if end := q.Value + rise; q.Name == "baseline" && end > high+0.02*math.Abs(rise) {
 						s += fmt.Sprintf("; at the last input it would settle near %s", quantity(end, r.Units.Temperature, 3))
+						if most := q.Value + highestRise(m.Parameters[0], rise); most > end {
+							s += fmt.Sprintf(", or up to %s by the interval of the gain", quantity(most, r.Units.Temperature, 3))
+						}
 					}
 				}
 			}

@@ -209,8 +209,12 @@ func (c *Card) writeWarnings(p *page) {
 			p.heading("Warnings")
 			heading = true
 		}
-		p.paragraph("  - ", sentence(printable(w.Text))+" ["+printable(w.Code)+"]")
+		w.write(p)
 	}
+}
+
+func (w Warning) write(p *page) {
+	p.paragraph("  - ", sentence(printable(w.Text))+" ["+printable(w.Code)+"]")
 }
 
 func (c *Card) writeCautions(p *page) {

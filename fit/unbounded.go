@@ -105,6 +105,14 @@ func (j *judgement) limitations() []limitation {
 		out = append(out, limitation{"the input is switched on and off, and no model of it at every switching is to be trusted",
 			"give the length of the switching cycle with --cycle, and log fifty rows a cycle or more"})
 	}
+	for _, w := range j.card.Warnings {
+		switch w.Code {
+		case "curvature":
+			out = append(out, limitation{"the gain changes over the range of the input", "bump about the working point only, or see --input-law power"})
+		case "up-down-differ":
+			out = append(out, limitation{"steps up and down differ", "bump both ways about the working point"})
+		}
+	}
 	for _, n := range j.run.Quality.Notes {
 		switch n.Code {
 		case "temperature-clipped":

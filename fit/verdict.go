@@ -217,6 +217,9 @@ func (j *judgement) bumpInManual(name string, target float64) string {
 	// Standard errors fall as the step of the heat, here 1, grows.
 	heat := 2 * e.precision(j.plant, j.model.Noise, nil).of(name) / target
 	law, u := j.card.Law(), j.run.U[len(j.run.U)-1]
+	if math.Abs(j.plant.Gain*heat) > mostRise*j.largestRise() {
+		return "the loop was closed: make a bump in manual, and see that the temperature follows it; no size can be foretold from a log whose temperature hardly answers the input (are these the right columns?)"
+	}
 	size := heat
 	if law == ident.Power {
 		size = math.Sqrt(u*u+heat) - math.Abs(u)

@@ -64,9 +64,23 @@ func (out *outcome) warnNoise(m *Model, add warn) {
 
 // warnMisfit warns of what a linear plant shared by all logs cannot follow.
 func (out *outcome) warnMisfit(ctx context.Context, runs []*data.Run, b *bounded, m *Model, add warn) {
+	if !out.warnNonlinear(runs, b, m, add) {
+		return
+	}
+	if n := len(runs); n > 1 && n <= mostApart {
+		c := &Card{Initial: out.initial.String(), Drift: map[bool]string{false: "none", true: "linear"}[out.drift]}
+		if a := compareApart(ctx, runs, out.opt, c, m); a != nil {
+			a.warnDiffer(out.opt.Confidence, add)
+		}
+	}
+}
+
+// warnNonlinear warns of what a linear plant cannot follow in any log; ok is false
+// where there is no plant.
+func (out *outcome) warnNonlinear(runs []*data.Run, b *bounded, m *Model, add warn) (ok bool) {
 	plant, err := m.Plant()
 	if err != nil {
-		return
+		return false
 	}
 	plant.DeadTime = b.est[len(b.est)-1].value // on the clock of the rows
 	fit := misfit{plant: plant, noise: m.Noise, start: out.initial, drift: out.drift, law: out.opt.Law}
@@ -85,18 +99,17 @@ func (out *outcome) warnMisfit(ctx context.Context, runs []*data.Run, b *bounded
 		fit.upDown(scenes, add)
 	}
 	fit.curved(scenes, extent(runs, func(r *data.Run) []float64 { return r.U }), CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
-	if n := len(runs); n > 1 && n <= mostApart {
-		c := &Card{Initial: out.initial.String(), Drift: map[bool]string{false: "none", true: "linear"}[out.drift]}
-		if a := compareApart(ctx, runs, out.opt, c, m); a != nil {
-			a.warnDiffer(out.opt.Confidence, add)
-		}
-	}
+	return true
+}
+
+func (out *outcome) warnStart(add warn) {
+	add("not-at-rest", "", "the log does not start at rest: an earlier input was fitted along and costs width; start the next test from a steady state")
 }
 
 // warnTest warns of how the test was made.
 func (out *outcome) warnTest(runs []*data.Run, b *bounded, m *Model, add warn) {
 	if out.initial == earlier {
-		add("not-at-rest", "", "the log does not start at rest: an earlier input was fitted along and costs width; start the next test from a steady state")
+		out.warnStart(add)
 	}
 	if out.drift && out.opt.Drift == "auto" {
 		lin := b.lin[0]
