@@ -81,10 +81,11 @@ func (c *Comparison) WriteJSON(w io.Writer) error { return writeJSON(w, c) }
 // medians over the plants, 80 columns wide at most.
 func (c *Comparison) WriteText(w io.Writer) error {
 	var b strings.Builder
+	scale := c.settlingScale()
 	row := func(label string, m RunMetrics, verdict string) {
-		fmt.Fprintf(&b, "%-36s %12s %10s %11s %7s\n", short("  "+clean(label), 36), verdict, optional(m.Settling), optional(m.Overshoot), optional(m.IAE))
+		fmt.Fprintf(&b, "%-36s %12s %10s %11s %7s\n", short("  "+clean(label), 36), verdict, scale.cell(m.Settling), optional(m.Overshoot), optional(m.IAE))
 	}
-	fmt.Fprintf(&b, "%-36s %12s %10s %11s %7s\n", "", "meets on", "settling s", "overshoot %", "IAE")
+	fmt.Fprintf(&b, "%-36s %12s %10s %11s %7s\n", "", "meets on", "settling "+scale.unit, "overshoot %", "IAE")
 	for i, run := range c.Rows {
 		if i == mostShown {
 			fmt.Fprintf(&b, "and %s more; a file written with -o holds them all\n", counted(len(c.Rows)-mostShown, "run"))
@@ -113,6 +114,19 @@ func (c *Comparison) WriteText(w io.Writer) error {
 	}
 	_, err := io.WriteString(w, b.String())
 	return err
+}
+
+// settlingScale is the unit of the whole column, that of its longest time.
+func (c *Comparison) settlingScale() timeScale {
+	most := 0.0
+	for _, run := range c.Rows {
+		for _, cell := range run.Cells {
+			if cell != nil {
+				most = max(most, longest(cell.Proposed.Median.Settling))
+			}
+		}
+	}
+	return scaleOf(most)
 }
 
 // short cuts a text to so many characters, the last one then being "…".

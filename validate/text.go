@@ -97,26 +97,41 @@ func (r *Replay) worstFirst() []*RunReplay {
 type shownMetric struct {
 	head, unit string
 	pick       func(RunMetrics) *float64
+	scale      timeScale // of a time
 }
 
 // shownMetrics are the columns: there is room for five.
 func (r *Replay) shownMetrics() []shownMetric {
-	u := r.Gains.Units
+	u, scale := r.Gains.Units, r.settlingScale()
 	columns := []shownMetric{
-		{"settling s", "", func(m RunMetrics) *float64 { return m.Settling }},
-		{"overshoot %", "", func(m RunMetrics) *float64 { return m.Overshoot }},
-		{"deviation " + difference(u.Temperature), "", func(m RunMetrics) *float64 { return m.Deviation }},
-		{"peak " + shown(u.Temperature), u.Temperature, func(m RunMetrics) *float64 { return m.PeakTemp }},
+		{head: "settling " + scale.unit, scale: scale, pick: func(m RunMetrics) *float64 { return m.Settling }},
+		{head: "overshoot %", pick: func(m RunMetrics) *float64 { return m.Overshoot }},
+		{head: "deviation " + difference(u.Temperature), pick: func(m RunMetrics) *float64 { return m.Deviation }},
+		{head: "peak " + shown(u.Temperature), unit: u.Temperature, pick: func(m RunMetrics) *float64 { return m.PeakTemp }},
 	}
 	if r.RunLimits.IAE != nil {
-		return append(columns, shownMetric{"IAE " + difference(u.Temperature) + "·s", "", func(m RunMetrics) *float64 { return m.IAE }})
+		return append(columns, shownMetric{head: "IAE " + difference(u.Temperature) + "·s", pick: func(m RunMetrics) *float64 { return m.IAE }})
 	}
-	return append(columns, shownMetric{"peak " + shown(u.Input), u.Input, func(m RunMetrics) *float64 { return m.PeakInput }})
+	return append(columns, shownMetric{head: "peak " + shown(u.Input), unit: u.Input, pick: func(m RunMetrics) *float64 { return m.PeakInput }})
+}
+
+// settlingScale is the unit of the whole column, that of the longest median:
+// what the words below it are in as well.
+func (r *Replay) settlingScale() timeScale {
+	most := 0.0
+	for i := range r.Runs {
+		most = max(most, longest(r.Runs[i].Proposed.Median.Settling))
+	}
+	return scaleOf(most)
 }
 
 // cell writes the metric of a signal.
 func (c shownMetric) cell(m RunMetrics) string {
-	if x := c.pick(m); x != nil {
+	x := c.pick(m)
+	switch {
+	case c.scale != timeScale{}:
+		return c.scale.cell(x)
+	case x != nil:
 		return bare(*x, c.unit)
 	}
 	return "-"
@@ -150,11 +165,32 @@ func (r *Replay) writeRuns(b *strings.Builder, runs []*RunReplay) {
 			tableRow(b, "  band", bands)
 		}
 		if n := run.WithNoise; n != (StepMetrics{}) {
-			tableRow(b, "  with noise", []string{optional(n.Settling), optional(n.Overshoot)})
+			tableRow(b, "  with noise", []string{columns[0].scale.cell(n.Settling), optional(n.Overshoot)})
 		}
 		tableRow(b, "  logged", cellsOf(columns, func(c shownMetric) string { return c.cell(run.Logged) }))
 		run.writeNotes(b)
 	}
+	r.writeSides(b, runs[:min(len(runs), mostShown)])
+}
+
+// writeSides tells the band, which has two sides, from the figure of a reason,
+// which has one, where both are shown: their ends differ.
+func (r *Replay) writeSides(b *strings.Builder, runs []*RunReplay) {
+	if slices.ContainsFunc(runs, func(run *RunReplay) bool { return run.OneSided() }) {
+		fmt.Fprintf(b, "band: two-sided, from %s to %s of the plants; \"up to\" in a reason is one-sided\n",
+			percentile((1-r.Confidence)/2), percentile((1+r.Confidence)/2))
+	}
+}
+
+// percentile writes a share with the tenths it may have.
+func percentile(share float64) string {
+	return strings.TrimSuffix(fmt.Sprintf("%.1f", 100*share), ".0") + " %"
+}
+
+// OneSided tells a run whose reasons give the figure that a share of the plants
+// stays below, which lies inside the end of the two-sided band.
+func (r *RunReplay) OneSided() bool {
+	return slices.ContainsFunc(r.Reasons, func(s string) bool { return strings.Contains(s, upToWords) })
 }
 
 func cellsOf(columns []shownMetric, cell func(shownMetric) string) []string {

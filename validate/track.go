@@ -28,13 +28,17 @@ var ErrFewRuns = errors.New("a history needs at least two fitted runs")
 // that most runs choose for themselves (of equals the simpler). Runs are
 // ordered by their clock where all have one, else as given. A run that cannot
 // be fitted, or whose fit fixes no gain, is listed in Failed and does not stop
-// the others; so is one that holds the same recording as another.
+// the others; so is one that holds the same recording as another. Runs in
+// different units are refused: the error wraps [fit.ErrUnlike].
 func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions) (*Drift, error) {
 	if o.FalseAlarm == 0 {
 		o.FalseAlarm = 0.05
 	}
 	if !(o.FalseAlarm > 0 && o.FalseAlarm < 1) {
 		return nil, fmt.Errorf("false alarm rate %g: give a share between 0 and 1, such as 0.05", o.FalseAlarm)
+	}
+	if err := alike(runs); err != nil {
+		return nil, err
 	}
 	if o.Workers <= 0 {
 		o.Workers = runtime.GOMAXPROCS(0)
@@ -71,6 +75,22 @@ func Track(ctx context.Context, runs []*data.Run, fo fit.Options, o TrackOptions
 	}
 	d.judge(fitted, uint64(fo.Rand))
 	return d, nil
+}
+
+// alike refuses runs in other units: their parameters cannot stand in one
+// column, and most likely they are of other heaters.
+func alike(runs []*data.Run) error {
+	for _, run := range runs {
+		if a, b := runs[0].Units, run.Units; a.Input != b.Input || a.Temperature != b.Temperature {
+			return fmt.Errorf("%w: %s is in %s and %s, %s in %s and %s; a history is that of one heater: track each heater by itself, or bring its logs to the same units with --input-unit, --temp-unit",
+				fit.ErrUnlike, runTitle(runs[0]), shown(a.Input), shown(a.Temperature), runTitle(run), shown(b.Input), shown(b.Temperature))
+		}
+	}
+	return nil
+}
+
+func runTitle(run *data.Run) string {
+	return DriftRun{File: clean(run.Source.File), Name: clean(run.Source.Name)}.title()
 }
 
 func firstReason(failed []FailedRun) string {

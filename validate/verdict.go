@@ -84,6 +84,9 @@ func judge(ds []demand, all []figures, misses []bool, assurance float64) (share 
 	return float64(meeting) / float64(len(all)), reasons
 }
 
+// upToWords begin the figure that a share of the plants stays below.
+const upToWords = "up to "
+
 // reason says what fails, by how much and on how many plants: "settling 46 s (up
 // to 52 s on 95 % of the plants) where at most 45 s is asked: fails on …". Beside
 // the median stands what the assured share of the plants stay below, the figure
@@ -99,7 +102,7 @@ func (d demand) reason(all []figures, count int, assurance float64) string {
 	case math.IsInf(most, 1):
 		spread = fmt.Sprintf(" (%s on %d plants)", upTo, len(values)-settled)
 	default:
-		spread = fmt.Sprintf(" (up to %s on %s of the plants)", upTo, percent(assurance))
+		spread = fmt.Sprintf(" (%s%s on %s of the plants)", upToWords, upTo, percent(assurance))
 	}
 	return fmt.Sprintf("%s %s%s where at most %s is asked: fails on %d of %d plausible plants",
 		d.name, median, spread, quantity(d.limit, d.unit), count, len(all))
@@ -120,15 +123,10 @@ func quantity(x float64, unit string) string {
 	return bare(x, unit) + " " + shown(unit)
 }
 
-// duration writes seconds in minutes from ten on, in hours from one on.
+// duration writes a time in the unit of its size.
 func duration(seconds float64) string {
-	switch {
-	case seconds >= 3600:
-		return number(seconds/3600) + " h"
-	case seconds >= 600:
-		return number(seconds/60) + " min"
-	}
-	return number(seconds) + " s"
+	s := scaleOf(seconds)
+	return number(seconds/s.seconds) + " " + s.unit
 }
 
 // bare writes a number without its unit. On a scale of temperature that does not
