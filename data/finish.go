@@ -286,8 +286,7 @@ func hold(v []float64) (held int) {
 // fill hands the columns over.
 func (r *rows) fill(run *Run, name string, info *reading) {
 	n := len(r.t)
-	run.T = make([]float64, n)
-	inHugePages(run.T)
+	run.T = roomFor[float64](n)[:n]
 	for i, t := range r.t {
 		run.T[i] = float64(t-r.t[0]) / 1e9
 	}

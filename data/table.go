@@ -61,8 +61,7 @@ const (
 
 func (g *growing[T]) reserve(n int) {
 	if n > 0 {
-		g.last = make([]T, 0, min(n, mostReserved))
-		inHugePages(g.last)
+		g.last = roomFor[T](min(n, mostReserved))
 	}
 }
 
