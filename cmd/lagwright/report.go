@@ -8,6 +8,7 @@ import (
 	"github.com/spf13/cobra"
 
 	"lagwright/cmd/lagwright/internal/report"
+	"lagwright/cmd/lagwright/internal/terminal"
 	"lagwright/fit"
 	"lagwright/tune"
 	"lagwright/validate"
@@ -39,6 +40,9 @@ by the names in the card.
 func runReport(ctx context.Context, c *console, o *reportOptions, args []string) error {
 	if c.json {
 		return usageErrorf("report makes a page, not JSON; leave --json out")
+	}
+	if _, watched := terminal.Width(c.out); watched && c.output == "" {
+		return usageErrorf("report makes a page for a browser, which a terminal cannot show; name a file, such as -o report.html")
 	}
 	if err := c.refuseOverwriting(args, c.output); err != nil {
 		return err

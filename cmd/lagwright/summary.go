@@ -180,30 +180,45 @@ func replayWords(r *validate.RunReplay, unit string) string {
 		words += "; " + b.Failure()
 	}
 	k := kelvins(unit)
-	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string, beside ...string) {
+	compare := func(what string, pick func(validate.RunMetrics) *float64, unit string) {
 		now := pick(r.Proposed.Median)
 		if now == nil {
 			return
 		}
 		words += fmt.Sprintf("; %s %s", what, format.Amount(*now, unit, 3))
 		if was := pick(r.Logged); was != nil {
-			beside = append(beside, "logged "+format.Amount(*was, unit, 3))
-		}
-		if len(beside) > 0 {
-			words += " (" + strings.Join(beside, ", ") + ")"
+			words += fmt.Sprintf(" (logged %s)", format.Amount(*was, unit, 3))
 		}
 	}
-	var noisy []string
-	if s := r.WithNoise.Settling; s != nil {
-		noisy = append(noisy, "with noise "+format.Amount(*s, "s", 3))
-	}
-	settles := "settles in"
-	if !r.Judged {
-		settles = "a step of the setpoint would settle in"
-	}
-	compare(settles, func(m validate.RunMetrics) *float64 { return m.Settling }, "s", noisy...)
+	words += settlingWords(r)
 	compare("largest deviation", func(m validate.RunMetrics) *float64 { return m.Deviation }, k)
 	compare("error area", func(m validate.RunMetrics) *float64 { return m.IAE }, k+"*s")
 	compare("peak", func(m validate.RunMetrics) *float64 { return m.PeakTemp }, unit)
+	return words
+}
+
+// settlingWords give the settling times of a run, in one unit: as proposed,
+// with noise and as logged.
+func settlingWords(r *validate.RunReplay) string {
+	now, noisy, was := r.Proposed.Median.Settling, r.WithNoise.Settling, r.Logged.Settling
+	if now == nil {
+		return ""
+	}
+	unit, size := format.TimeUnit(now, noisy, was)
+	var beside []string
+	if noisy != nil {
+		beside = append(beside, "with noise "+format.Amount(*noisy/size, unit, 3))
+	}
+	if was != nil {
+		beside = append(beside, "logged "+format.Amount(*was/size, unit, 3))
+	}
+	words := "; settles in "
+	if !r.Judged {
+		words = "; a step of the setpoint would settle in "
+	}
+	words += format.Amount(*now/size, unit, 3)
+	if len(beside) > 0 {
+		words += " (" + strings.Join(beside, ", ") + ")"
+	}
 	return words
 }

@@ -89,6 +89,17 @@ func TestDuration(t *testing.T) {
 	}
 }
 
+func TestTimeUnit(t *testing.T) {
+	for longest, want := range map[float64]string{0: "s", 599: "s", 600: "min", 3599: "min", 3600: "h"} {
+		if unit, seconds := TimeUnit(nil, &longest, at(0)); unit != want || longest/seconds >= 600 {
+			t.Errorf("TimeUnit(%v) = %s of %v s, want %s", longest, unit, seconds, want)
+		}
+	}
+	if unit, _ := TimeUnit(nil); unit != "s" {
+		t.Errorf("no time is in %s", unit)
+	}
+}
+
 func TestPercentNeverClaimsAll(t *testing.T) {
 	for share, want := range map[float64]string{
 		1: "100 %", 0: "0 %", 0.9999: "over 99.9 %", 0.0001: "under 0.1 %", 0.975: "97.5 %", 0.95: "95 %",

@@ -61,6 +61,25 @@ func Duration(seconds float64) string {
 	return sign + two(whole/86400, "d", whole%86400/3600, "h")
 }
 
+// TimeUnit is the one unit in which times, of which some may be missing, are
+// written beside each other, and its seconds: minutes where the longest has ten,
+// hours where it has one.
+func TimeUnit(times ...*float64) (unit string, seconds float64) {
+	longest := 0.0
+	for _, t := range times {
+		if t != nil {
+			longest = math.Max(longest, *t)
+		}
+	}
+	switch {
+	case longest >= 3600:
+		return "h", 3600
+	case longest >= 600:
+		return "min", 60
+	}
+	return "s", 1
+}
+
 func two(big int64, bigUnit string, small int64, smallUnit string) string {
 	s := strconv.FormatInt(big, 10) + " " + bigUnit
 	if small > 0 {

@@ -120,7 +120,7 @@ func versionTable(b *Bundle) *table {
 	add("Program", b.Tool)
 	if c := b.Card; c != nil {
 		add("Model card", schemaAndTool(c.Schema, c.Tool))
-		add("Model card dated", c.Created)
+		add("Model card dated", dated(c))
 		if n := len(c.Plants.Values); n > 0 {
 			add("Plausible plants", fmt.Sprintf("%s, structure %s, random seed %d", format.Thousands(n), c.Plants.Structure, c.Plants.Rand))
 		}
@@ -135,6 +135,16 @@ func versionTable(b *Bundle) *table {
 		add("Drift", schemaAndTool(d.Schema, d.Tool))
 	}
 	return t
+}
+
+// dated is the date of a card; one of logs without a date has the epoch for it,
+// which tells nobody anything.
+func dated(c *fit.Card) string {
+	const epoch = "1970-01-01T00:00:00Z"
+	if c.Created == epoch {
+		return "without a date: the log has none"
+	}
+	return c.Created
 }
 
 func schemaAndTool(schema, tool string) string {

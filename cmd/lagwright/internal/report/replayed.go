@@ -114,12 +114,15 @@ func replayColumns(r *validate.Replay) []replayColumn {
 
 func replayTable(r *validate.Replay) *table {
 	columns := replayColumns(r)
-	t := &table{Caption: "Run by run: logged → proposed (median; below it the band over the plausible plants)", Head: []string{"Run"}}
+	t := &table{Caption: fmt.Sprintf("Run by run: logged → proposed (median; below it the two-sided %s band over the plausible plants)", format.Percent(r.Confidence)), Head: []string{"Run"}}
 	for _, c := range columns {
 		t.Head = append(t.Head, c.name)
 	}
 	if len(columns) > 0 && columns[0].name == "Settling" {
 		t.Caption += "; settling and overshoot as proposed are those of the setpoint moves, without noise and loads"
+	}
+	if slices.ContainsFunc(r.Runs, func(run validate.RunReplay) bool { return run.OneSided() }) {
+		t.Caption += "; \"up to\" under what to watch for is one-sided and lies inside the band's end"
 	}
 	t.Head = append(t.Head, "Holds on", "Meets")
 	for i := range r.Runs {
@@ -151,18 +154,25 @@ func judged(r *validate.RunReplay) cell {
 // beforeAfter writes a figure as logged and as proposed, "3.6 → 1.2 K", and
 // the band below.
 func beforeAfter(r *validate.RunReplay, pick func(*validate.RunMetrics) *float64, unit string) cell {
-	p := &r.Proposed
+	logged, median, low, high := pick(&r.Logged), pick(&r.Proposed.Median), pick(&r.Proposed.Low), pick(&r.Proposed.High)
+	size := 1.0
+	if unit == "s" {
+		unit, size = format.TimeUnit(logged, median, high)
+	}
 	write := func(v *float64, unit string) string {
+		if v == nil {
+			return "-"
+		}
 		digits := 3
-		if v != nil && math.Abs(*v) >= 100 && (unit == "degC" || unit == "degF") {
+		if math.Abs(*v) >= 100 && (unit == "degC" || unit == "degF") {
 			digits = 4 // tenths of a degree
 		}
-		return format.Optional(v, unit, digits)
+		return format.Amount(*v/size, unit, digits)
 	}
 	bare := func(v *float64) string { return strings.TrimSuffix(write(v, unit), " "+format.Unit(unit)) }
-	c := num(bare(pick(&r.Logged)) + " → " + write(pick(&p.Median), unit))
-	if l, h := pick(&p.Low), pick(&p.High); l != nil && h != nil && *l != *h {
-		c.Small = bare(l) + " to " + bare(h)
+	c := num(bare(logged) + " → " + write(median, unit))
+	if low != nil && high != nil && *low != *high {
+		c.Small = bare(low) + " to " + bare(high)
 	}
 	return c
 }
