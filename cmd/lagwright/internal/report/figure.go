@@ -65,6 +65,7 @@ type pane struct {
 	*painter
 	rect vg.Rectangle
 	x, y *axis
+	side []vg.Rectangle // where labels stand beside upright lines
 }
 
 func (p *pane) px(v float64) vg.Length {
@@ -185,7 +186,7 @@ func (f *Figure) drawPanel(t *painter, p *panel, cell vg.Rectangle, left vg.Leng
 		Min: vg.Point{X: cell.Min.X + left, Y: top - p.height},
 		Max: vg.Point{X: cell.Max.X - marginSide, Y: top},
 	}
-	pn := &pane{t, rect, p.x, &p.y}
+	pn := &pane{painter: t, rect: rect, x: p.x, y: &p.y}
 	t.text(headingLetters, p.title(), vg.Point{X: cell.Min.X, Y: cell.Max.Y - 11}, alignLeft)
 	for _, k := range keys {
 		t.keySample(k.keyEntry, vg.Point{X: cell.Min.X + k.x, Y: cell.Max.Y - vg.Length(k.line)*lineHeight - 11})

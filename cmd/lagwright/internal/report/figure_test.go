@@ -3,15 +3,18 @@ package report
 import (
 	"bytes"
 	"encoding/xml"
+	"fmt"
 	"image/png"
 	"io"
 	"math"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 
 	"lagwright/data"
+	"lagwright/ident"
 )
 
 func sampleFigures() []*Figure {
@@ -171,6 +174,38 @@ func BenchmarkPage(b *testing.B) {
 	for b.Loop() {
 		if err := Page(io.Discard, bundle); err != nil {
 			b.Fatal(err)
+		}
+	}
+}
+
+// TestSideLabelsApart: labels of upright lines that stand close do not run into
+// each other; the first is written, and all where there is room.
+func TestSideLabelsApart(t *testing.T) {
+	b := sampleBundle()
+	r, c := b.Runs[0], b.Curves[0]
+	last := r.T[len(r.T)-1]
+	for _, tt := range []struct {
+		bumps []float64 // shares of the log
+		want  []string
+	}{
+		{[]float64{0.1, 0.5}, []string{"bump 1", "bump 2"}},
+		{[]float64{0.1, 0.11, 0.5}, []string{"bump 1", "bump 3"}},
+		{[]float64{0.1, 0.999}, []string{"bump 1", "bump 2"}},
+	} {
+		curves := *c
+		curves.Bumps = nil
+		for _, share := range tt.bumps {
+			curves.Bumps = append(curves.Bumps, ident.Bump{Time: share * last, From: 3, To: 4})
+		}
+		svg := string(drawingOf(LogFigure(r, &curves, b.model()), narrowWidth).Body)
+		var got []string
+		for i := range tt.bumps {
+			if label := fmt.Sprintf("bump %d", i+1); strings.Contains(svg, ">"+label+"<") {
+				got = append(got, label)
+			}
+		}
+		if !slices.Equal(got, tt.want) {
+			t.Errorf("bumps at %v: %q, want %q", tt.bumps, got, tt.want)
 		}
 	}
 }

@@ -3,6 +3,7 @@ package report
 import (
 	"html"
 	"math"
+	"slices"
 
 	"gonum.org/v1/plot/vg"
 )
@@ -168,14 +169,26 @@ func (p *pane) clearOf(y vg.Length) vg.Length {
 }
 
 // sideLabel writes beside the top of an upright line, on the side with room.
+// What would run into the label of another line is left out.
 func (p *pane) sideLabel(l lettering, s string, top vg.Point) {
-	at := vg.Point{X: top.X + 4, Y: top.Y - 11}
+	at, align := vg.Point{X: top.X + 4, Y: top.Y - 11}, alignLeft
 	if at.X+l.room(s) > p.rect.Max.X {
-		at.X = top.X - 4
-		p.text(l, s, at, alignRight)
+		at.X, align = top.X-4, alignRight
+	}
+	from := vg.Point{X: at.X, Y: at.Y}
+	if align == alignRight {
+		from.X -= l.room(s)
+	}
+	here := vg.Rectangle{Min: from, Max: vg.Point{X: from.X + l.room(s), Y: at.Y + 11}}
+	if s == "" || slices.ContainsFunc(p.side, func(r vg.Rectangle) bool { return overlap(r, here) }) {
 		return
 	}
-	p.text(l, s, at, alignLeft)
+	p.side = append(p.side, here)
+	p.text(l, s, at, align)
+}
+
+func overlap(a, b vg.Rectangle) bool {
+	return a.Min.X < b.Max.X && b.Min.X < a.Max.X && a.Min.Y < b.Max.Y && b.Min.Y < a.Max.Y
 }
 
 // zone is a shaded region between straight sides; infinite sides run to the

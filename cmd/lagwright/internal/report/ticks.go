@@ -29,7 +29,7 @@ func numberTicks(low, high float64, n int) []tick {
 		step = coarse
 	}
 	if math.Floor(high/step)-math.Ceil(low/step) < 1 { // fewer than two ticks
-		step = niceStep(step * 0.45)
+		step = niceStep(step * 0.4) // the next of 1, 2, 5 below
 	}
 	return multiples(low, high, step, func(v float64) string { return tickLabel(v, step) })
 }
