@@ -21,8 +21,9 @@ type column struct {
 	repeats      bool    // text of a few values that keep coming back
 	numbered     bool    // whole numbers of a few values that keep coming back
 
-	halves   bool     // text of nothing but AM and PM
-	units    bool     // text of nothing but units
+	halves   bool // text of nothing but AM and PM
+	units    bool // text of nothing but units
+	beside   *unitColumn
 	part     partOf   // of a clock in several columns
 	switched bool     // nothing but words such as ON and OFF, or logged as true and false
 	words    []string // some of these words

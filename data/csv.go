@@ -16,6 +16,7 @@ type field struct {
 	unit  string // that cells may carry behind the number
 
 	switched bool // the cells are words: ON, OFF
+	beside   *unitColumn
 }
 
 // csvReader reads the rows of a text into tables, one for each run.
@@ -50,6 +51,7 @@ type csvReader struct {
 	twinErr error    // they are not
 
 	headerErr error          // other names in the data
+	unitErr   error          // another unit beside the numbers
 	firstNo   map[string]int // line of the first row dropped, by reason
 }
 
@@ -124,6 +126,9 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 func (c *csvReader) refuse() error {
 	if c.headerErr != nil {
 		return c.headerErr
+	}
+	if c.unitErr != nil {
+		return c.unitErr
 	}
 	if err := c.tooManyDropped(); err != nil {
 		return err
@@ -243,6 +248,9 @@ func (c *csvReader) planClock(o *Options, info *reading) error {
 		c.last = max(c.last, c.spread.last())
 	}
 	slices.SortFunc(c.fields, func(a, b field) int { return a.index - b.index })
+	if err := c.planUnits(o, info); err != nil {
+		return err
+	}
 	c.inPlace = c.canReadInPlace()
 	c.quality = isQuality(c.d.rows, c.at[roleStatus])
 	if o.TimeCol == "" && o.TimeFormat == "" && c.spread == nil {
@@ -437,6 +445,9 @@ func (c *csvReader) values(tb *table, r *record) {
 				unit = ""
 				v, ok = switchOf(cell)
 			}
+			if ok && unit == "" && f.beside != nil {
+				v = c.sameUnit(f, v, r.line)
+			}
 			if ok && (unit == "" || unit == f.unit) {
 				r.v[f.role] = v
 				c.spelled.look(cell, r.line)
@@ -448,6 +459,10 @@ func (c *csvReader) values(tb *table, r *record) {
 			}
 			if f.role == roleInput && math.IsNaN(r.v[f.role]) {
 				c.word.look(cell, r.line)
+			}
+		case roleTime:
+			if f.beside != nil {
+				c.sameUnit(f, 0, r.line)
 			}
 		case roleMode:
 			r.auto = modeOf(cell)

@@ -416,11 +416,9 @@ func (d *dialect) inspect(rows []line) {
 				_, known := canonicalUnit(decodeName([]byte(w)))
 				c.units = c.units && known
 			}
-			if before := i - 1; c.units && len(words) == 1 && before >= 0 && d.cols[before].class == numbers && d.cols[before].unit == "" { // the unit of the numbers beside it
-				d.cols[before].unit, _ = canonicalUnit(c.sample[0])
-			}
 		}
 	}
+	d.takeUnits()
 }
 
 func sum(counts map[string]int) (n int) {

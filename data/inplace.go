@@ -12,7 +12,7 @@ func (c *csvReader) canReadInPlace() bool {
 		return false
 	}
 	for _, f := range c.fields {
-		if f.switched && f.role == roleInput || f.role != roleTime && !isValue(f.role) {
+		if f.beside != nil || f.switched && f.role == roleInput || f.role != roleTime && !isValue(f.role) {
 			return false
 		}
 	}

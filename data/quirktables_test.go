@@ -52,7 +52,14 @@ var tableQuirks = []quirk{
 	{file: "factor-input.csv", wrong: `column "drive*100 [V]" names a factor beside its unit: export the input without it, or, if its values are in that unit as they are, say so with --input-unit`},
 
 	// units and readings that cannot be
-	{file: "unit-columns.csv"},
+	{file: "unit-columns.csv", notes: []string{"unit-column"}},
+	{file: "unit-columns-named.csv", notes: []string{"unit-column"}},
+	{file: "unit-columns-prefix.csv", notes: []string{"unit-column"}},
+	{file: "unit-columns-change.csv", wrong: `unit-columns-change.csv:8: column "outlet_unit" goes from degC to "degF" here, and column "outlet" with it: cut the log in two, or export it in one unit`},
+	{file: "unit-columns-against-name.csv", wrong: `column "outlet_degC" is in degC by its name and in degF by column "outlet_unit"`},
+	{file: "unit-columns-against-name.csv", o: Options{TempUnit: "C"}},
+	{file: "flag-of-one-letter.csv", temp: "unit", notes: []string{"unit-unknown"}},
+	{file: "phase-of-one-letter.csv", notes: []string{"time-unit-assumed"}},
 	{file: "units-russian.csv", t: ramp(8, func(i int) float64 { return 30 * float64(i) })},
 	{file: "units-misspelt.csv"},
 	{file: "degree-alone.csv", temp: "°", notes: []string{"unit-unknown"}},
