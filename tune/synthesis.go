@@ -275,7 +275,23 @@ func (s *search) derivative() design {
 // holds on those fails on all, on all.
 func (s *search) nearest(kind string) design {
 	few := s.on.thinned(60)
-	at := s.coarse(few, kind)
+	d := s.nearestTo(kind, few, s.coarse(few, kind))
+	if d.found || s.on.scenarios[0].task.curve.straight() {
+		return d
+	}
+	// the curve is not far from its tangent, and what holds there is a good start
+	line := *s
+	line.on = s.on.straightened()
+	if l := line.design(kind); l.found {
+		if near := s.nearestTo(kind, few, s.point(kind, l.law)); near.found || near.miss < d.miss {
+			return near
+		}
+	}
+	return d
+}
+
+// nearestTo is nearest from a point on.
+func (s *search) nearestTo(kind string, few *ensemble, at []float64) design {
 	at = s.simplex(few, kind, at, 0.3, 80)
 	c := s.build(kind, at)
 	miss := s.on.miss(c, s.assurance)
@@ -301,6 +317,18 @@ func (s *search) build(kind string, x []float64) law {
 		td = ti * math.Exp(x[2])
 	}
 	return s.law(math.Exp(x[0]), ti, td)
+}
+
+// point is where build finds a law.
+func (s *search) point(kind string, c law) []float64 {
+	x := []float64{math.Log(math.Abs(c.kc))}
+	if kind != "p" {
+		x = append(x, math.Log(c.ti))
+	}
+	if kind == "pid" {
+		x = append(x, math.Log(c.td/c.ti))
+	}
+	return x
 }
 
 // coarse returns the point of a grid of gains and times that misses least.

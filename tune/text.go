@@ -162,7 +162,7 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 	g.writeFigures(b, g.worstWords(), g.Worst)
 	g.writeFigures(b, "On the best fit", g.Nominal)
 	if g.Worst != nil && g.Worst.Stable {
-		fmt.Fprintf(b, "  %s\n", g.oneSided())
+		fmt.Fprintln(b, g.oneSided())
 	}
 	if len(g.Cures) > 0 {
 		fmt.Fprintln(b, "What would let it be met, each by itself unless it says otherwise")
@@ -208,7 +208,7 @@ func (g *Gains) oneSided() string {
 			beyond = "no plant"
 		}
 	}
-	return fmt.Sprintf("(Worst is one-sided, each figure by itself: beyond it lies %s. A 95 %% interval or band has two ends, with 2.5 %% beyond each.)", beyond)
+	return fmt.Sprintf("(Worst is one-sided, each figure by itself: %s lie beyond. A two-ended 95 %% interval or band leaves 2.5 %% beyond each end.)", beyond)
 }
 
 // writeFigures writes the figures of the loop on one plant.
