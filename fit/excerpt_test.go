@@ -147,3 +147,50 @@ func heldInside(t *testing.T, card *Card) *Model {
 	m, _ := card.Model(card.Selected)
 	return m
 }
+
+// A fit with everything known, and one of two logs of which the second hardly says
+// anything, end in a card.
+func TestNothingToFind(t *testing.T) {
+	for _, o := range []Options{
+		{Structure: "fopdt", Fix: map[string]float64{"gain": 7.4, "lag1": 14, "dead_time": 3}},
+		{Fix: map[string]float64{"gain": 7.4, "lag1": 14, "dead_time": 3}},
+		{Structure: "ipdt", Fix: map[string]float64{"gain": 0.5, "dead_time": 3}},
+		{Structure: "fopdt", Initial: "free", Fix: map[string]float64{"gain": 7.4, "lag1": 14, "dead_time": 3}},
+	} {
+		o.Plants = 20
+		c := fitted1(t, []*data.Run{twoLags().run(3)}, o)
+		m, _ := c.Model(c.Selected)
+		if p := m.Parameters[0]; p.Value != o.Fix["gain"] {
+			t.Errorf("%v: the gain is %v", o, p.Value)
+		}
+	}
+	short := twoLags()
+	short.steps, short.n = []step{{0, 3}, {18, 4.2}}, 30
+	fitted1(t, []*data.Run{twoLags().run(3), short.run(4)}, Options{Plants: 20})
+}
+
+// The best shortest lag of a chain is found on every row also where the search ends
+// with none: there the sum of squares is level.
+func TestOffZero(t *testing.T) {
+	l := twoLags()
+	l.structure, l.lags, l.dead, l.every = "chain3", []float64{11, 3.5, 0.5}, 2.3, 0.1
+	l.n, l.sd, l.steps = 1600, 0.01, []step{{0, 3}, {21, 4.2}, {98, 3}}
+	recs, err := prepare([]*data.Run{l.run(5)}, ident.Linear)
+	if err != nil {
+		t.Fatal(err)
+	}
+	r := recs[0].focus(l.dead, 3*recs[0].step)
+	st, _ := ident.ParseStructure("chain3")
+	f := &fitted{st: st, e: newEngine(st, []*record{r}), groups: []int{0, 1, 2}}
+	best := f.e.descend([]float64{11, 3.5, 0.5, 2.3}, finalTol)
+	f.e.upper[2] = 1e-9 // no third lag
+	f.p = f.e.descend([]float64{11, 3.5, 0, 2.8}, finalTol)
+	f.e.upper[2] = f.e.upper[0]
+	if !(f.p.s > 1.001*best.s) {
+		t.Fatalf("without the third lag %v is left, with it %v: no test", f.p.s, best.s)
+	}
+	p := f.polish()
+	if p == nil || math.Abs(p.eta[2]-best.eta[2]) > 0.02 {
+		t.Errorf("the third lag is %v, want %v", p.eta[2], best.eta[2])
+	}
+}

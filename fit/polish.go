@@ -37,26 +37,59 @@ func (f *fitted) polish() *polished {
 		_, beta, _ := r.solveLinear(&e.work[i], p.gain)
 		at.beta = append(at.beta, beta)
 	}
-	var sum float64
-	gram := f.normal(&at, &sum, &m)
+	sum, gram := f.downhill(&at, &m)
+	if other := f.offZero(&at); other != nil {
+		if s, g := f.downhill(other, &m); s < sum {
+			at, gram = *other, g
+		}
+	}
+	at.cov = f.unitCovariance(gram)
+	return &at
+}
+
+// offZero is a place beside at whose shortest lag, nothing or next to it, has taken
+// half a row from the dead time; nil where there is none. To first order the two are
+// the same to the response, so that at a lag of zero no slope leads to a better one.
+func (f *fitted) offZero(at *polished) *polished {
+	e := f.e
+	last, half := e.nl-1, e.recs[0].step/2
+	if e.nl < 2 || e.held[last] || e.held[e.nl] || !f.alone(last+1) || at.eta[last] > half/25 || at.eta[e.nl]-half < e.lower[e.nl] {
+		return nil
+	}
+	other := *at
+	other.eta = append([]float64(nil), at.eta...)
+	other.eta[last] += half
+	other.eta[e.nl] -= half
+	return &other
+}
+
+// downhill takes steps from at until the sum of squares over every row falls no more,
+// leaves at there, and returns the sum and the normal equations.
+func (f *fitted) downhill(at *polished, m *everyRowMemory) (sum float64, gram [][]float64) {
+	gram = f.normal(at, &sum, m)
 	damping, share := 0.0, 1.0
-	for range 12 {
-		next, promised, ok := f.step(&at, gram, damping, share)
+	for range 20 {
+		next, promised, ok := f.step(at, gram, damping, share)
 		if ok && promised < 1e-13*sum { // nothing left that a sum of squares could show
-			at = *next
+			*at = *next
 			break
 		}
 		s := math.Inf(1)
 		var g [][]float64
 		if ok {
-			g = f.normal(next, &s, &m)
+			g = f.normal(next, &s, m)
 		}
 		if s < sum {
 			done := damping == 0 && sum-s < 1e-13*sum
+			kept := (sum - s) / promised
 			if damping == 0 {
-				share = bend((sum-s)/promised, share)
+				share = bend(kept, share)
 			}
-			if at, gram, sum, damping = *next, g, s, damping/10; damping < 1e-4 {
+			less := 10.0
+			if kept > 0.75 {
+				less = 100
+			}
+			if *at, gram, sum, damping = *next, g, s, damping/less; damping < 1e-6 {
 				damping = 0
 			}
 			if done {
@@ -67,10 +100,9 @@ func (f *fitted) polish() *polished {
 		if ok && promised < 1e-9*sum || damping > 10 {
 			break
 		}
-		share, damping = 1, math.Max(30*damping, 1e-3) // lags near zero or near one another
+		share, damping = 1, math.Max(20*damping, 1e-5) // lags near zero or near one another
 	}
-	at.cov = f.unitCovariance(gram)
-	return &at
+	return sum, gram
 }
 
 // bend is the share of the next Gauss-Newton step to take, given which part of what
@@ -79,8 +111,12 @@ func (f *fitted) polish() *polished {
 // share x of a step promises x(2−x) of what the whole one does and keeps x(2−x(1+b)),
 // and 1/(1+b) is the share that leads to the bottom.
 func bend(kept, share float64) float64 {
+	const least, most = 0.5, 1.5
 	curvature := (2 - kept*(2-share)) / share
-	return math.Min(math.Max(1/curvature, 0.5), 1.5)
+	if curvature*most <= 1 { // it hardly bends, or the other way
+		return most
+	}
+	return math.Max(1/curvature, least)
 }
 
 // unitCovariance inverts the normal equations of the parameters that are free.

@@ -273,7 +273,7 @@ func (t *tangent) quadratic() (a [][]float64, b []float64) {
 	np, p, l := len(t.param), len(t.cols), t.memory.factor
 	all := columns(t.nparam+1, t.nparam)
 	a, b = all[:t.nparam:t.nparam], all[t.nparam]
-	if len(t.memory.turned) < np || len(t.memory.turned[0]) != t.nparam {
+	if len(t.memory.turned) < t.nparam || len(t.memory.turned[0]) != t.nparam { // at least gain and dead time
 		t.memory.turned = columns(t.nparam, t.nparam)
 	}
 	m := t.memory.turned // lpᵀ·tri
