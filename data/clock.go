@@ -24,6 +24,8 @@ type clock struct {
 	yearOpen bool                  // a year of two digits could stand first as well
 	zeroTick uint64                // of a count of ticks
 
+	fraction *fixedFraction // of stamps with as many digits behind the seconds each; nil where none is watched
+
 	held *heldDate // of calendar stamps that leave out the date; nil where all have one
 
 	cached [10]byte // the date read last, as written …
@@ -99,6 +101,9 @@ func (c *clock) timeOfDay() bool {
 func (c *clock) parse(b []byte, point byte) (ns, alt int64, ok bool) {
 	b = trimBlanks(b)
 	alt = noTime
+	if c.fraction != nil && len(b) != c.fraction.length && c.fraction.look(b) && c.rewrite == nil {
+		c.rewrite = padFraction()
+	}
 	if c.rewrite != nil {
 		if b = c.rewrite(b); b == nil {
 			return 0, alt, false

@@ -75,15 +75,6 @@ func (k *clock) findRewrite(cells [][]byte, c column) ([]Note, error) {
 	return k.findPadding(cells, c)
 }
 
-func (k *clock) findPadding(cells [][]byte, c column) ([]Note, error) {
-	unpadded, err := findUnpadded(cells, c.label)
-	if !unpadded {
-		return nil, err
-	}
-	k.rewrite = padFraction()
-	return []Note{{Code: "clock-milliseconds", Text: fmt.Sprintf("what stands behind the seconds in column %q was read as a number of milliseconds, without the zeros in front", c.label)}}, nil
-}
-
 // findNumberClock tells elapsed time, time since 1970 and day numbers of
 // spreadsheets apart by size: a date of our days is a large number in any unit.
 func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, error) {
@@ -203,7 +194,7 @@ func findCalendar(cells [][]byte, c column) (*clock, []Note, error) {
 	if k.dayFirst && k.monthFirst {
 		return nil, nil, fmt.Errorf("column %q has days above 12 both in front and behind: say how to read it with --time-format", c.label)
 	}
-	fresh := &clock{kind: calendar, rewrite: k.rewrite, yearless: k.yearless}
+	fresh := &clock{kind: calendar, rewrite: k.rewrite, fraction: k.fraction, yearless: k.yearless}
 	if k.dayFirst {
 		fresh.order = dayMonthYear
 	}

@@ -108,6 +108,9 @@ func readText(ctx context.Context, s *source, o *Options) ([]*table, *reading, e
 	if !lines.lastNL && c.nulRows == 0 {
 		info.note("no-final-newline", lines.line, "the last line does not end; if the file was cut off, its last value may be wrong")
 	}
+	if err := c.clock.fraction.say(info); err != nil {
+		return nil, nil, fmt.Errorf("%s: %w", s.path, err)
+	}
 	if c.long != nil {
 		c.spelled.say(info)
 		tables, err := c.long.tables(c, o, info)

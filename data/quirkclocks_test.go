@@ -68,7 +68,15 @@ var clockQuirks = []quirk{
 	// fractions and counts
 	{file: "milliseconds-unpadded.csv", t: ramp(8, func(i int) float64 { return float64(5*i) / 100 }), start: janStart, notes: []string{"clock-milliseconds", local}},
 	{file: "milliseconds-unpadded-colon.csv", t: ramp(8, func(i int) float64 { return float64(5*i) / 100 }), notes: []string{"clock-milliseconds"}},
-	{file: "hundredths-behind-colon.csv", wrong: `column "time" (10:00:00:00): the digits behind the last colon could be a decimal fraction of a second, milliseconds, or seconds behind days`},
+	{file: "hundredths-behind-colon.csv", wrong: `column "time" (10:00:00:00): the digits behind the last colon could be a decimal fraction of a second, milliseconds, frames, or seconds behind days`},
+	{file: "colon-days-unpadded.csv", wrong: "the digits behind the last colon could be"},
+	{file: "colon-days-seconds.csv", wrong: "the digits behind the last colon could be"},
+	{file: "colon-frames.csv", wrong: "the digits behind the last colon could be"},
+	{file: "colon-hundredths.csv", wrong: "the digits behind the last colon could be"},
+	{file: "colon-milliseconds-date.csv", start: janStart, notes: []string{"clock-milliseconds", local}},
+	{file: "milliseconds-never-zero.csv", t: ramp(8, func(i int) float64 { return float64(i) / 5 }), notes: []string{"clock-milliseconds"}},
+	{file: "decimals-cut-unevenly.csv", t: ramp(8, func(i int) float64 { return float64(i) / 4 })},
+	{file: "fraction-both-ways.csv", wrong: `column "time" (10:00:00.0): the digits behind the seconds could be decimals or a number of milliseconds: export them with a fixed number of digits`},
 	{file: "ticks-year-1.csv", start: janStart, notes: []string{"clock-ticks"}},
 	{file: "ticks-1601.csv", start: janStart, notes: []string{"clock-ticks"}},
 
