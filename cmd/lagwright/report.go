@@ -94,7 +94,7 @@ func (j *job) addLogs(ctx context.Context, c *console, l *logFlags, logs []strin
 	if j.card != nil {
 		l.columnsOf(j.card)
 	}
-	runs, err := l.readAll(ctx, c, logs)
+	runs, err := l.readAsFitted(ctx, c, j.card, logs)
 	if err != nil {
 		return err
 	}

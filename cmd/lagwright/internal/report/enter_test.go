@@ -47,7 +47,7 @@ func TestBothDegrees(t *testing.T) {
 
 // TestBrowserEntersWhole: in the box to be typed in no number is broken in two
 // at any width, however long the labels are, and nothing sticks out; on a phone
-// the tables of the heater are seen whole.
+// the tables of heater and gains are seen whole.
 func TestBrowserEntersWhole(t *testing.T) {
 	t.Parallel()
 	b := sampleBundle()
@@ -76,7 +76,7 @@ func TestBrowserEntersWhole(t *testing.T) {
 			if (r.getClientRects().length != 1) bad.push(w + ": " + td.textContent + " is broken");
 			if (r.getBoundingClientRect().right > box.right) bad.push(w + ": " + td.textContent + " sticks out");
 		});
-		if (w == 375) d.querySelectorAll("#heater .scroll").forEach(function (s) {
+		if (w == 375) d.querySelectorAll("#heater .scroll, #gains .scroll").forEach(function (s) {
 			if (s.scrollWidth > s.clientWidth) bad.push("a table is cut: " + s.getAttribute("aria-label"));
 		});
 		f.remove();
@@ -94,7 +94,7 @@ func TestTogether(t *testing.T) {
 	for in, want := range map[string]string{
 		"gain = 8.3 ± 1.4 K/V, lag 1":  "gain =~8.3~±~1.4~K/V, lag 1",
 		"known to ±16 % of their sum":  "known to ±16~% of their sum",
-		"0.096 K rms over 2 h 10 min.": "0.096~K rms over 2~h 10~min.",
+		"0.096 K rms over 2 h 10 min.": "0.096~K rms over 2~h~10~min.",
 		"12 000 rows, 3 samples":       "12~000 rows, 3 samples",
 		"about 79.8 °C, 5 V²":          "about 79.8~°C, 5~V²",
 		"1 run, 2 segments, 4 dips":    "1 run, 2 segments, 4 dips",

@@ -119,7 +119,7 @@ func metricsTable(g *tune.Gains) *table {
 		if n == nil && w == nil && asked == "" {
 			return
 		}
-		t.Rows = append(t.Rows, []cell{head(name), num(dash(asked)), num(write(n)), num(write(w))})
+		t.Rows = append(t.Rows, []cell{head(name), text(dash(asked)), num(write(n)), num(write(w))})
 	}
 	row := func(name, unit, asked string, pick func(*tune.Metrics) *float64) {
 		add(name, asked, pick, func(v *float64) string { return format.Optional(v, unit, 3) })
