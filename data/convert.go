@@ -74,9 +74,11 @@ func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 		}
 	}
 	if unit == "K" && o.TempUnit == "" {
-		if err := kelvinOrType(y, info.label(roleTemp)); err != nil {
+		notes, err := kelvinOrType(y, info.label(roleTemp))
+		if err != nil {
 			return err
 		}
+		r.notes = append(r.notes, notes...)
 	}
 	switch {
 	case unit == "mV":

@@ -48,27 +48,6 @@ func impossibleCure(missing map[string]int) string {
 	return ": is a decimal mark, a factor of ten, the unit or the sign of a 16-bit number lost in the export? say the unit with --temp-unit, or export again"
 }
 
-// leastKelvin is colder than any air, K.
-const leastKelvin = 150.0
-
-// kelvinOrType refuses a temperature in K where the letter may be the type of
-// the thermocouple: beside words that say so, and where kelvin would be colder
-// than any air.
-func kelvinOrType(y []float64, label string) error {
-	most := math.Inf(-1)
-	for _, x := range y {
-		if x > most {
-			most = x
-		}
-	}
-	_, typed := typeInName(label)
-	if math.IsInf(most, -1) || !typed && most >= leastKelvin {
-		return nil
-	}
-	return fmt.Errorf("column %q: K could be kelvin or the type of the thermocouple, and its highest value of %.6g K would be %.6g °C: say which unit it is with --temp-unit C, F or K",
-		label, most, most-273.15)
-}
-
 // notePercent says that an input in % may hold fractions of one.
 func notePercent(u []float64, label string) []Note {
 	most := 0.0
