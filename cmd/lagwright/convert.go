@@ -40,7 +40,7 @@ func runConvert(c *console, o *convertOptions, path string) error {
 	if err := c.refuseOverwriting([]string{path}, c.output); err != nil {
 		return err
 	}
-	gains, err := c.readGains(path)
+	gains, err := c.readGains(path, "V")
 	if err != nil {
 		return err
 	}

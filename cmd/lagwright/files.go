@@ -49,16 +49,18 @@ func (c *console) readCard(path string) (*fit.Card, error) {
 	return card, nil
 }
 
-func (c *console) readGains(path string) (*tune.Gains, error) {
+// readGains reads gains for a heater with an input in the unit given; "V" where
+// it is not known.
+func (c *console) readGains(path, input string) (*tune.Gains, error) {
 	gains, err := readFile(c, path, tune.ReadGains)
 	if err != nil {
-		return nil, gainsError(path, err)
+		return nil, gainsError(path, input, err)
 	}
 	return gains, nil
 }
 
 // gainsError says what to do with a file that is no gains.
-func gainsError(path string, err error) error {
+func gainsError(path, input string, err error) error {
 	name := filepath.Base(path)
 	switch kind, _, _ := lagwrightFile(path); {
 	case kind == "card":
@@ -66,7 +68,7 @@ func gainsError(path string, err error) error {
 	case kind != "" && kind != "gains":
 		return inputErrorf("%s is a file of %s, not gains: give the gains that lagwright tune wrote", name, kind)
 	case kind == "" && table(path):
-		return inputErrorf("%s is not a file of gains: give the gains that lagwright tune wrote, or write them out: kc=0.4V/K,ti=12s", name)
+		return inputErrorf("%s is not a file of gains: give the gains that lagwright tune wrote, or write them out: kc=0.4%s/K,ti=12s", name, input)
 	}
 	return err
 }

@@ -63,6 +63,9 @@ func (j *job) summary(w io.Writer, folder string) error {
 	for _, reason := range j.gains.Reasons {
 		s.add("", reason)
 	}
+	for _, doubt := range report.GraveDoubts(j.bundle("")) {
+		s.add("doubt", doubt)
+	}
 	for _, cure := range j.gains.Cures {
 		s.add("try", cure)
 	}

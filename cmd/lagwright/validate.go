@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
@@ -190,7 +191,7 @@ func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gain
 // These are said again in full, with what was left to the defaults.
 func (c *console) gainsOf(flag, text string, card *fit.Card) (*tune.Gains, error) {
 	if _, err := os.Stat(text); err == nil || !tune.WrittenOut(text) {
-		return c.readGains(text)
+		return c.readGains(text, cmp.Or(card.Units.Input, "V"))
 	}
 	g, err := tune.ParseGains(text, tune.GainUnits{Input: card.Units.Input, Temperature: card.Units.Temperature})
 	if err != nil {

@@ -29,6 +29,16 @@ func grave(b *Bundle) []doubt {
 	return out
 }
 
+// GraveDoubts are the words of the doubts that change the headline, for a bundle
+// with gains that were judged.
+func GraveDoubts(b Bundle) []string {
+	var words []string
+	for _, d := range grave(&b) {
+		words = append(words, d.Text)
+	}
+	return words
+}
+
 // light doubts are said as well.
 func light(b *Bundle) []doubt {
 	var out []doubt
