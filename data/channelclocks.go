@@ -77,7 +77,7 @@ func (c *csvReader) apart(i, k, line int, cells [][]byte) error {
 		listColumns(c.d.cols, []int{i, k}), cells[i], cells[k], line, flags[roleTime])
 }
 
-// hiddenClock looks for a column whose name does not say that it is a clock, but
+// hiddenClock looks for a column whose name only hints that it is a clock, but
 // which keeps pace with the one chosen in every row of the sample.
 func (c *csvReader) hiddenClock() error {
 	at := c.at[roleTime]
@@ -88,7 +88,7 @@ func (c *csvReader) hiddenClock() error {
 		if r, _ := roleOf(col); r != roleNone || i == at || slices.Contains(c.at[:], i) || col.class != numbers || !col.ascending || col.part != noPart {
 			continue
 		}
-		if c.isCount(i) && !isNumberedClock(col) || !c.keepsPace(at, i) {
+		if !hintsClock(col) || !c.keepsPace(at, i) {
 			continue
 		}
 		if row := c.firstApart(at, i); row >= 0 {
@@ -99,20 +99,14 @@ func (c *csvReader) hiddenClock() error {
 	return nil
 }
 
-// isCount tells numbers that go on by one a row.
-func (c *csvReader) isCount(i int) bool {
-	before := math.NaN()
-	for _, l := range c.d.rows {
-		if len(l.cells) <= i {
-			continue
-		}
-		v, ok := c.d.format.parse(l.cells[i])
-		if !ok || v != math.Trunc(v) || v-before != 1 && before == before {
-			return false
-		}
-		before = v
+// hintsClock tells names such as t2, time2, uptime and plc_clk. A count of rows,
+// an energy or a distance may keep pace with a clock and is none.
+func hintsClock(col column) bool {
+	if _, ofTime := timeUnits[col.unit]; col.unit != "" && !ofTime {
+		return false
 	}
-	return true
+	lower := strings.ToLower(col.name)
+	return isNumberedClock(col) || slices.ContainsFunc([]string{"time", "zeit", "clk", "stamp", "tick"}, func(part string) bool { return strings.Contains(lower, part) })
 }
 
 // isNumberedClock tells names such as t2 and time2.

@@ -26,9 +26,12 @@ func (c *csvReader) lookForHeader(line int) {
 		if i < 0 || i >= len(names) {
 			continue
 		}
+		if !slices.ContainsFunc(c.d.cols, func(col column) bool { return sameName(names[i], col) }) {
+			return // a remark about a column is no header
+		}
 		if strings.EqualFold(names[i], c.d.cols[f.index].label) {
 			known++
-		} else if changed == "" && slices.ContainsFunc(c.d.cols, func(col column) bool { return sameName(names[i], col) }) {
+		} else if changed == "" {
 			changed = names[i]
 		}
 	}

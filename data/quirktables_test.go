@@ -25,6 +25,8 @@ var tableQuirks = []quirk{
 	{file: "dictionary-lines.log", notes: []string{"rows-of-pairs"}},
 	{file: "three-decimals-comma.csv", t: ramp(8, func(i int) float64 { return float64(i) }), y: wholeY},
 	{file: "header-changes-order.csv", wrong: "header-changes-order.csv:6: the header changes here (time_s | outlet_degC | drive_V): cut the file in two and read each by itself"},
+	{file: "energy-beside-clock.csv"},
+	{file: "remark-row.csv", dropped: map[string]int{"no time": 1}},
 	{file: "header-changes-unit.csv", wrong: "header-changes-unit.csv:6: the header changes here (time_s | drive_V | outlet_degF)"},
 	{file: "invisible-marks.csv", start: janStart, notes: []string{local}},
 	{file: "blanks-stamp-one-name.txt", start: janStart, notes: []string{local}, dropped: map[string]int{"row too short": 1}},
