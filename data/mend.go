@@ -161,15 +161,15 @@ func (s *stampSeries) runOn() error {
 			offset += day
 			t += day
 			s.note("clock-midnight", i, "the date did not go on at midnight; the clock was taken to")
-		case s.startsAgain(back, step) > 0:
-			count := s.startsAgain(back, step)
-			offset += count
-			t += count
-			s.note("clock-counter", i, "the clock started again at its largest count, after %v; it was taken to go on", time.Duration(count))
-		case s.resent(i, t, offset, hourly(back)):
+		case s.resent(i, t, offset, hourly(back) || s.startsAgain(i, back, step) > 0):
 			s.dropRow(i, "repeated row")
 			s.t[i] = last
 			continue
+		case s.startsAgain(i, back, step) > 0:
+			count := s.startsAgain(i, back, step)
+			offset += count
+			t += count
+			s.note("clock-counter", i, "the clock started again at its largest count, after %v; it was taken to go on", time.Duration(count))
 		case s.tod && max12(s.t) && back > 11*hour && back <= 12*hour:
 			offset += 12 * hour
 			t += 12 * hour
@@ -197,10 +197,15 @@ func (s *stampSeries) runOn() error {
 }
 
 // startsAgain is the count after which the clock started again, 0 where a jump
-// back is none such: it must end within a few rows of it.
-func (s *stampSeries) startsAgain(back, step int64) int64 {
+// back is none such: the row must come where it would without, within half a
+// step. One at exactly zero, where every recording begins, must come on time.
+func (s *stampSeries) startsAgain(i int, back, step int64) int64 {
+	late := step / 2
+	if s.t[i] == 0 {
+		late = step / 50
+	}
 	for _, c := range s.counts {
-		if over := c - back; over > 0 && over <= 3*step {
+		if over := c - back; over >= step-late && over <= step+late {
 			return c
 		}
 	}
@@ -212,16 +217,17 @@ func (s *stampSeries) startsAgain(back, step int64) int64 {
 const resentRows = 20
 
 // resent tells that a row with a stamp in the past repeats an earlier row.
-// Where the clock could as well have been set back by an hour, the rows that
-// follow must repeat too, and must not all be alike.
-func (s *stampSeries) resent(i int, t, offset int64, hourly bool) bool {
+// Where the clock could as well have been set back by an hour, or started again
+// at its largest count, the rows that follow must repeat too, and must not all
+// be alike.
+func (s *stampSeries) resent(i int, t, offset int64, doubtful bool) bool {
 	j, found := slices.BinarySearch(s.t[:i], t)
 	for ; found && j < i && s.t[j] == t && !s.same(i, j); j++ {
 	}
 	if !found || j >= i || s.t[j] != t {
 		return false
 	}
-	if !hourly {
+	if !doubtful {
 		return true
 	}
 	varied := false

@@ -85,6 +85,8 @@ var clockQuirks = []quirk{
 	{file: "date-at-midnight-us.csv", start: lateStart, notes: []string{local}},
 	{file: "date-stands-still.csv", start: lateStart, notes: []string{"clock-midnight", local}},
 	{file: "counter-16-bit.csv", notes: []string{"clock-counter"}},
+	{file: "two-runs-near-counter.csv", wrong: "two-runs-near-counter.csv:4: the clock jumps back by 1m5s: these may be two recordings in one file"},
+	{file: "two-runs-far-from-counter.csv", wrong: "two-runs-far-from-counter.csv:6: the clock jumps back by 1m5.49s: these may be two recordings in one file"},
 	{file: "counter-32-bit.csv", notes: []string{"clock-counter"}},
 	{file: "seconds-of-day.csv", notes: []string{"clock-counter"}},
 	{file: "minutes-pointed.csv", wrong: `column "Time (min)" goes on evenly only if what stands behind the point is a number of sixtieths (1.30 for 1:30): export it with a colon, or say --time-format seconds, min or hours`},
