@@ -49,37 +49,6 @@ func expandedT(z, nu float64) float64 {
 	return z + (first+(second+third/nu)/nu)/nu
 }
 
-// limitFreedom is where F's second degrees of freedom count as infinite: the
-// error of the limit, of order 1/d2, is then below that of the inversion.
-const limitFreedom = 1e8
-
-// fQuantile returns f with P(F ≤ f) = p for the F distribution with d1 and d2
-// degrees of freedom, both above 0, whole or not; d1 must be finite. NaN
-// outside of that and for p outside [0, 1]; +Inf at p = 1.
-func fQuantile(p, d1, d2 float64) float64 {
-	switch {
-	case !(d1 > 0) || !(d2 > 0) || math.IsInf(d1, 1) || !(p >= 0 && p <= 1):
-		return math.NaN()
-	case p == 1:
-		return math.Inf(1)
-	case d2 >= limitFreedom:
-		return chi2Quantile(p, d1) / d1
-	}
-	return distuv.F{D1: d1, D2: d2}.Quantile(p)
-}
-
-// chi2Quantile returns x with P(X ≤ x) = p for the χ² distribution with k > 0
-// degrees of freedom, whole or not; +Inf at p = 1, NaN outside of that.
-func chi2Quantile(p, k float64) float64 {
-	switch {
-	case !(k > 0) || math.IsInf(k, 1) || !(p >= 0 && p <= 1):
-		return math.NaN()
-	case p == 1:
-		return math.Inf(1)
-	}
-	return distuv.ChiSquared{K: k}.Quantile(p)
-}
-
 // chi2Tail returns P(X > x), the p-value of a χ² statistic x with k > 0 degrees
 // of freedom; NaN where x is NaN or k is not positive.
 func chi2Tail(x, k float64) float64 {

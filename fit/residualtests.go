@@ -58,21 +58,6 @@ func ljungBox(r []float64, lags, fitted int) (q, p float64) {
 	return q, chi2Tail(q, float64(lags-fitted))
 }
 
-// durbinWatson returns the statistic of Durbin and Watson (Biometrika 37 (1950)
-// and 38 (1951), from memory),
-//
-//	d = Σ_{t>1} (e_t − e_{t−1})² / Σ e_t²,
-//
-// near 2 for white residuals, near 0 for strongly correlated ones, 4 at most.
-// NaN where all residuals are 0.
-func durbinWatson(r []float64) float64 {
-	sum := 0.0
-	for t := 1; t < len(r); t++ {
-		sum += (r[t] - r[t-1]) * (r[t] - r[t-1])
-	}
-	return sum / floats.Dot(r, r)
-}
-
 // effectiveSampleSize returns the number of independent values whose mean is
 // as well known as that of n values with the autocorrelation rho^k at lag k,
 //

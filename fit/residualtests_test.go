@@ -90,10 +90,6 @@ func TestLjungBox(t *testing.T) {
 	}
 }
 
-func TestDurbinWatson(t *testing.T) {
-	within(t, "d", durbinWatson(investmentResiduals(t)), 1.321512, 1e-6) // R; 1.32 printed elsewhere, from memory
-}
-
 func TestEffectiveSampleSize(t *testing.T) {
 	for _, c := range []struct {
 		n         int
