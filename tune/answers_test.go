@@ -82,44 +82,48 @@ func TestProportionalOnlyWhereAsked(t *testing.T) {
 }
 
 // Where the input does not reach and the time is too short as well, every cure
-// is a change with which PI meets the requirement at the setpoint, whoever
-// asked; the input is among what is changed.
+// is a change with which PI meets the requirement at the setpoint; the input is
+// among what is changed. One who asked for P is told the same, and to take PI.
 func TestCuresReachTheSetpoint(t *testing.T) {
 	c, q := halfReach(t)
 	q.Settling = ptr(60)
 	read := regexp.MustCompile(`an input up to (\S+) V|setpoint steps to (\S+) K|settling time of (\S+) s|overshoot of (\S+) %`)
-	for _, kind := range []string{"pi", "p"} {
-		g, _ := tuned(t, c, q, kind)
-		if g.Meets || len(g.Cures) == 0 {
-			t.Fatalf("%s: meets %v, cures %q", kind, g.Meets, g.Cures)
-		}
-		if !strings.Contains(strings.Join(g.Cures, "\n"), "more supply: an input up to") {
-			t.Errorf("%s: the input is not cured: %q", kind, g.Cures)
-		}
-		for _, cure := range g.Cures {
-			changed := q
-			for _, m := range read.FindAllStringSubmatch(cure, -1) {
-				for i, to := range []**float64{&changed.InputMax, &changed.SetpointStep, &changed.Settling, &changed.Overshoot} {
-					if m[i+1] == "" {
-						continue
-					}
-					v, err := strconv.ParseFloat(m[i+1], 64)
-					if err != nil {
-						t.Fatal(err)
-					}
-					*to = &v
+	g, _ := tuned(t, c, q, "pi")
+	if g.Meets || len(g.Cures) == 0 {
+		t.Fatalf("meets %v, cures %q", g.Meets, g.Cures)
+	}
+	if !strings.Contains(strings.Join(g.Cures, "\n"), "more supply: an input up to") {
+		t.Errorf("the input is not cured: %q", g.Cures)
+	}
+	for _, cure := range g.Cures {
+		changed := q
+		for _, m := range read.FindAllStringSubmatch(cure, -1) {
+			for i, to := range []**float64{&changed.InputMax, &changed.SetpointStep, &changed.Settling, &changed.Overshoot} {
+				if m[i+1] == "" {
+					continue
 				}
-			}
-			if kind == "p" && !strings.Contains(cure, "--controller pi") {
-				t.Errorf("a cure that leaves an offset: %s", cure)
-			}
-			if changed == q {
-				t.Errorf("nothing to do in %q", cure)
-			}
-			if g, _ := tuned(t, c, changed, "pi"); !g.Meets || math.Abs(*g.Nominal.SteadyOffset) > 1e-6 {
-				t.Errorf("%q does not do: %v", cure, g.Reasons)
+				v, err := strconv.ParseFloat(m[i+1], 64)
+				if err != nil {
+					t.Fatal(err)
+				}
+				*to = &v
 			}
 		}
+		if changed == q {
+			t.Errorf("nothing to do in %q", cure)
+		}
+		if g, _ := tuned(t, c, changed, "pi"); !g.Meets || math.Abs(*g.Nominal.SteadyOffset) > 1e-6 {
+			t.Errorf("%q does not do: %v", cure, g.Reasons)
+		}
+	}
+	p, _ := tuned(t, c, q, "p")
+	for i, cure := range p.Cures {
+		if len(p.Cures) != len(g.Cures) || cure != "with a PI controller, which leaves no offset (--controller pi): "+g.Cures[i] {
+			t.Errorf("told to one who asked for P: %q", p.Cures)
+		}
+	}
+	if p.Meets || len(p.Cures) == 0 {
+		t.Errorf("P: meets %v, cures %q", p.Meets, p.Cures)
 	}
 }
 

@@ -40,6 +40,9 @@ func (t *tuning) rangeWords(g *Gains, c law) string {
 		return grows + ", and there is no input at which these gains hold the requirement on every card: each card's figures hold about its own operating input."
 	}
 	between := func(r *[2]float64) string {
+		if r[0] == r[1] {
+			return "of " + quantity(r[1], g.Units.Input, 3)
+		}
 		if r[0] > 0.1*r[1] {
 			return "between " + figure(&r[0], 3) + " and " + quantity(r[1], g.Units.Input, 3)
 		}
@@ -47,7 +50,7 @@ func (t *tuning) rangeWords(g *Gains, c law) string {
 	}
 	if task := t.ops[0].task(t.requirement); !task.simulates() {
 		g.HoldsOver = first
-		return fmt.Sprintf("%s: these gains hold the requirement %s.", grows, between(first))
+		return fmt.Sprintf("%s: these gains hold the requirement at an input %s.", grows, between(first))
 	}
 	up, down := "up", "down"
 	if step < 0 {

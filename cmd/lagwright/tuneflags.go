@@ -19,7 +19,7 @@ type tuneFlags struct {
 func (t *tuneFlags) add(cmd *cobra.Command) {
 	t.requirement.add(cmd)
 	fs, o := cmd.Flags(), &t.options
-	choiceFlag(cmd, &o.Controller, "controller", "", "what to tune; compares them where not given", "p", "pi", "pid")
+	choiceFlag(cmd, &o.Controller, "controller", "", "what to tune; the better of pi and pid where not given (p leaves an offset)", "p", "pi", "pid")
 	choiceFlagFunc(cmd, &o.Rule, "rule", "NAME", "", "a published rule instead of the synthesis: "+strings.Join(ruleNames(), ", "), ruleNames())
 	valueFlag(fs, &o.TauC, "tau-c", "DURATION", "", "closed-loop time constant for rules that leave it open", positiveSeconds)
 	valueFlag(fs, &o.Assurance, "assurance", "PERCENT", "95%", "share of plausible plants on which the requirement must hold", share)
