@@ -28,8 +28,14 @@ func (c *Card) WriteText(w io.Writer) error {
 	return p.writeTo(w)
 }
 
+// noDate stands in a card of logs without a date.
+const noDate = "1970-01-01T00:00:00Z"
+
 func (c *Card) writeSource(p *page) {
-	title := "Model card of " + printable(c.Created)
+	title := "Model card"
+	if c.Created != noDate {
+		title += " of " + printable(c.Created)
+	}
 	if c.Tool != "" {
 		title += ", made by " + printable(c.Tool)
 	}
