@@ -97,6 +97,9 @@ func findNumberClock(cells [][]byte, c column, point byte) (*clock, []Note, erro
 	}
 	units := []uint64{unit}
 	if !known {
+		if err := refuseTenDigits(cells, v, c.label); err != nil {
+			return nil, nil, err
+		}
 		units = []uint64{nsSecond, 1e6, 1e3, 1}
 	}
 	for _, u := range units {

@@ -454,6 +454,7 @@ func (c *csvReader) values(tb *table, r *record) {
 			if ok && (unit == "" || unit == f.unit) {
 				r.v[f.role] = v
 				c.spelled.look(cell, r.line)
+				tb.brackets = tb.brackets.add(f.role, tb.rows, cell)
 			} else if same, known := inUnit(v, unit, f.unit); ok && known {
 				r.v[f.role] = same
 			} else if f.role == roleInput || f.role == roleTemp {

@@ -81,6 +81,11 @@ func finish(path string, tb *table, info *reading, o *Options) (*Run, error) {
 	if tb.auto != nil {
 		r.auto = tb.auto.flat()
 	}
+	for x, v := range r.v {
+		if err := tb.brackets.markRatherThanMinus(role(x), v, tb.lines.line, info.label(role(x))); err != nil {
+			return nil, fail(err)
+		}
+	}
 	r.joinComplements()
 	if err := r.mendClock(info.clock); err != nil {
 		return nil, fail(err)

@@ -215,6 +215,7 @@ func (l *longReader) add(c *csvReader, run string, r *record) {
 		r.v[roleInput] = v
 		s.stats.add(v)
 		c.spelled.look(cell, r.line)
+		s.tb.brackets = s.tb.brackets.add(roleInput, s.tb.rows, cell)
 	} else {
 		s.onOff.add(cell)
 		kind, _ := missingKind(cell)
@@ -466,6 +467,9 @@ func (s *series) settled(info *reading) (*rows, error) {
 	}
 	p := &rows{t: t, lines: s.tb.lines, counts: s.tb.counts}
 	p.v[roleInput] = s.tb.cols[roleInput].flat()
+	if err := s.tb.brackets.markRatherThanMinus(roleInput, p.v[roleInput], s.tb.lines.line, s.tag); err != nil {
+		return nil, err
+	}
 	p.auto = s.tb.auto.flat()
 	if len(p.t) == 1 {
 		return p, nil

@@ -77,6 +77,11 @@ var clockQuirks = []quirk{
 	{file: "milliseconds-never-zero.csv", t: ramp(8, func(i int) float64 { return float64(i) / 5 }), notes: []string{"clock-milliseconds"}},
 	{file: "decimals-cut-unevenly.csv", t: ramp(8, func(i int) float64 { return float64(i) / 4 })},
 	{file: "fraction-both-ways.csv", wrong: `column "time" (10:00:00.0): the digits behind the seconds could be decimals or a number of milliseconds: export them with a fixed number of digits`},
+	{file: "ten-digits-year-first.csv", wrong: `column "time" (2601251000) could be seconds since 1970 (6 June 2052 01:43:20), or a date and a time of day (25 January 2026 10:00 or 26 January 2025 10:00): say which with --time-format unix or --time-format yyMMddHHmm or ddMMyyHHmm`},
+	{file: "ten-digits-year-first.csv", o: Options{TimeFormat: "yyMMddHHmm"}, t: ramp(8, func(i int) float64 { return 60 * float64(i) }), start: janStart, notes: []string{local}},
+	{file: "ten-digits-year-first.csv", o: Options{TimeFormat: "unix"}, t: ramp(8, func(i int) float64 { return float64(i) }), start: "2052-06-06T01:43:20Z"},
+	{file: "ten-digits-day-first.csv", wrong: `(26 January 2014 10:57 or 14 January 2026 10:57): say which with --time-format unix or --time-format yyMMddHHmm or ddMMyyHHmm`},
+	{file: "ten-digits-day-first.csv", o: Options{TimeFormat: "ddMMyyHHmm"}, t: ramp(8, func(i int) float64 { return 60 * float64(i) }), start: "2026-01-14T10:57:00Z", notes: []string{local}},
 	{file: "ticks-year-1.csv", start: janStart, notes: []string{"clock-ticks"}},
 	{file: "ticks-1601.csv", start: janStart, notes: []string{"clock-ticks"}},
 

@@ -2,6 +2,11 @@ package data
 
 // numberQuirks are logs whose numbers are spelled in a less usual way.
 var numberQuirks = []quirk{
+	{file: "brackets-mark.csv", wrong: `brackets-mark.csv:5: column "outlet_degC" holds (24.6) beside 24.2: round brackets stand for a minus, or mark a value: export without them, or with the minus in front`},
+	{file: "brackets-mark-input.csv", wrong: `brackets-mark-input.csv:5: column "drive_V" holds (1.5) beside 1.5`},
+	{file: "brackets-mark-long.csv", wrong: `tag "outlet_degC": column "outlet_degC" holds (24.6) beside 24.2`},
+	{file: "brackets-beside-minus.csv", wrong: `column "outlet_degC" holds (5) beside -4`},
+	{file: "brackets-through-zero.csv", y: []float64{-5, -4, -3, -1, 1, 2, 4, 5}, notes: []string{"minus-brackets"}},
 	{file: "minus-behind.csv", y: negative(baseY), notes: []string{"minus-behind"}},
 	{file: "minus-behind-comma.csv", y: around26, notes: []string{"minus-behind"}},
 	{file: "minus-brackets.csv", y: around26, notes: []string{"minus-brackets"}},

@@ -1,6 +1,10 @@
 package data
 
-import "bytes"
+import (
+	"bytes"
+	"fmt"
+	"math"
+)
 
 // spelling is a less usual way to write a number.
 type spelling int
@@ -65,3 +69,62 @@ func (s *spellings) say(info *reading) {
 		info.note("minus-brackets", s.first[bracketedMinus], "%d numbers in round brackets were read as negative, as spreadsheets write amounts; if the brackets mark something else, export without them", n)
 	}
 }
+
+// bracketed are the rows of a column whose number stands in round brackets.
+type bracketed map[role][]int
+
+func (b bracketed) add(r role, row int, cell []byte) bracketed {
+	if cell[len(cell)-1] != ')' {
+		return b
+	}
+	if b == nil {
+		b = bracketed{}
+	}
+	b[r] = append(b[r], row)
+	return b
+}
+
+// What a bracket marks shows beside it (common practice, no source): a number
+// within a quarter of the bare one in the next row did not pass through zero,
+// unless that is no more than three usual steps away.
+const (
+	nearBare  = 0.25
+	usualLeap = 3
+)
+
+// markRatherThanMinus refuses a column in which round brackets mark something
+// else than a minus, as the values beside them show: bare ones of the same
+// magnitude, or with a minus of their own.
+func (b bracketed) markRatherThanMinus(r role, v []float64, line func(row int) int, label string) error {
+	if len(b[r]) == 0 {
+		return nil
+	}
+	inside := make([]bool, len(v))
+	for _, i := range b[r] {
+		inside[i] = true
+	}
+	minus := false
+	var steps []float64 // of which both ends are written alike
+	for i, x := range v {
+		minus = minus || !inside[i] && x < 0 && x > -fillLimit
+		if i > 0 && inside[i] == inside[i-1] && math.Abs(x-v[i-1]) > 0 {
+			steps = append(steps, math.Abs(x-v[i-1]))
+		}
+	}
+	usual := usualLeap * medianOf(steps)
+	for _, i := range b[r] {
+		x := math.Abs(v[i])
+		for _, k := range []int{i - 1, i + 1} {
+			if k < 0 || k >= len(v) || inside[k] || !(x > 0) {
+				continue
+			}
+			if minus || math.Abs(v[k]-x) <= nearBare*x && !(v[k]+x <= usual) {
+				return &lineError{line(i), fmt.Errorf("column %q holds (%g) beside %g: round brackets stand for a minus, or mark a value: export without them, or with the minus in front", label, x, v[k])}
+			}
+		}
+	}
+	return nil
+}
+
+// fillLimit is the least of the large numbers that stand for no value.
+const fillLimit = 9990

@@ -14,6 +14,8 @@ type table struct {
 	auto   *growing[int8] // 1 automatic, 0 manual, -1 not known
 	lines  lineMap
 	counts counts
+
+	brackets bracketed
 }
 
 // counts are the figures of Quality that are known while reading.
