@@ -107,7 +107,7 @@ func (b bracketed) markRatherThanMinus(r role, v []float64, line func(row int) i
 	var steps []float64 // of which both ends are written alike
 	for i, x := range v {
 		minus = minus || !inside[i] && x < 0 && x > -fillLimit
-		if i > 0 && inside[i] == inside[i-1] && math.Abs(x-v[i-1]) > 0 {
+		if i > 0 && inside[i] == inside[i-1] && x-v[i-1] == x-v[i-1] {
 			steps = append(steps, math.Abs(x-v[i-1]))
 		}
 	}
