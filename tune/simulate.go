@@ -66,6 +66,7 @@ func (s *loopSim) run(r, d float64, seen func(sample) bool) {
 	s.plant.Reset()
 	s.control.Start(0, 0, 0)
 	held, u := 0.0, 0.0 // what enters the plant, and the output alone
+	bend := s.curve.bend
 	for k := 0; ; k++ {
 		var y float64
 		if s.immediate {
@@ -76,11 +77,11 @@ func (s *loopSim) run(r, d float64, seen func(sample) bool) {
 			if k%s.every == 0 {
 				u = s.control.Next(r, y)
 			}
-			if s.curve.bend == 0 {
-				s.plant.Step(u + d)
-			} else {
-				s.plant.Step(s.curve.heat(u) + d)
+			in := u + d
+			if bend != 0 {
+				in += bend * u * u
 			}
+			s.plant.Step(in)
 		}
 		if !seen(sample{t: float64(k)*s.step + s.lead, y: y, u: u}) {
 			return
