@@ -52,10 +52,14 @@ func findPoint(lines []line, delim byte, fields int) (point byte, guess []byte) 
 			}
 		}
 	}
+	point = '.'
 	if decimal[1] > decimal[0] {
-		return ',', guess
+		point = ','
 	}
-	return '.', guess
+	if k, _ := markOf(guess); k < 0 || ".,"[k] == point { // other columns had it that the mark is a decimal one
+		guess = nil
+	}
+	return point, guess
 }
 
 // markOf finds the mark that stands last in a number: 0 a point, 1 a comma, -1

@@ -2,6 +2,7 @@ package data
 
 // numberQuirks are logs whose numbers are spelled in a less usual way.
 var numberQuirks = []quirk{
+	{file: "decimals-quoted-beside-whole.csv", t: ramp(8, func(i int) float64 { return float64(i) })},
 	{file: "brackets-mark.csv", wrong: `brackets-mark.csv:5: column "outlet_degC" holds (24.6) beside 24.2: round brackets stand for a minus, or mark a value: export without them, or with the minus in front`},
 	{file: "brackets-mark-input.csv", wrong: `brackets-mark-input.csv:5: column "drive_V" holds (1.5) beside 1.5`},
 	{file: "brackets-mark-long.csv", wrong: `tag "outlet_degC": column "outlet_degC" holds (24.6) beside 24.2`},

@@ -48,6 +48,8 @@ var tableQuirks = []quirk{
 	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V", InputUnit: "%", TempUnit: "C"}, u: baseY, y: baseU, input: "%"},
 	{file: "setpoint-as-temperature.csv", o: Options{TempCol: "setpoint_degC"}, y: ramp(8, func(int) float64 { return 60 }), notes: []string{"column-named-otherwise"}},
 	{file: "columns-look-swapped.csv", t: ramp(40, half), u: swappedU, y: swappedY, input: "unit", temp: "unit", notes: []string{"input-unit-unknown", "unit-unknown", "columns-look-swapped"}},
+	{file: "coarse-closed-loop.csv", t: ramp(40, half), u: ramp(40, func(i int) float64 { return math.Round(100*(5+2*math.Sin(float64(i)/9))+float64(i)) / 100 }),
+		y: ramp(40, func(i int) float64 { return []float64{24, 26}[i/20] })},
 	{file: "factor-in-name.csv", wrong: `column "outlet x10 (°C)" names a factor beside its unit: export the temperature without it, or, if its values are in that unit as they are, say so with --temp-unit`},
 	{file: "factor-in-name.csv", o: Options{TempUnit: "C"}, y: ramp(8, func(i int) float64 { return math.Round(10 * baseY[i]) })},
 	{file: "factor-tenth.csv", wrong: `column "outlet in 0,1 °C" names a factor beside its unit`},

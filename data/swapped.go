@@ -48,9 +48,10 @@ const (
 )
 
 // noteSwapped says that the temperature moves like a drive, and the input like a
-// temperature.
+// temperature. Known units settle it: a controller moves its drive in every row,
+// and a coarse thermometer moves in steps.
 func noteSwapped(run *Run, info *reading) []Note {
-	if len(run.U) < swapRows {
+	if len(run.U) < swapRows || run.Units.Input != unitless && run.Units.Temperature == "degC" {
 		return nil
 	}
 	tempChanges, tempLeap := movement(run.Y, swapChanges)
