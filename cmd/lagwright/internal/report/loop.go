@@ -38,7 +38,8 @@ type looped struct {
 	plants     []ident.Plant // the best fit first, then the plausible ones
 	gains      *tune.Gains   // as given
 	ideal      *tune.Gains   // the same in the ideal form
-	input      float64       // operating input
+	law        ident.Law
+	input      float64 // operating input
 	confidence float64
 }
 
@@ -50,7 +51,7 @@ const (
 )
 
 func newLooped(c *fit.Card, g *tune.Gains) (*looped, error) {
-	l := &looped{gains: g, confidence: c.Confidence, input: (c.Range.Input[0] + c.Range.Input[1]) / 2}
+	l := &looped{gains: g, confidence: c.Confidence, law: c.Law(), input: (c.Range.Input[0] + c.Range.Input[1]) / 2}
 	if c.Law() == ident.Power {
 		l.input = math.Max(math.Abs(c.Range.Input[0]), math.Abs(c.Range.Input[1]))
 	}
@@ -165,7 +166,9 @@ func (l *looped) run(p ident.Plant, setpoint, load, step float64, every, n int) 
 		if k%every == 0 {
 			y, u = append(y, plant.Output()), append(u, out)
 		}
-		plant.Step(out + load)
+		// The plants have the gain at the operating input: what enters them is the
+		// output through the law's curve, by its slope there.
+		plant.Step((l.law.Apply(l.input+out)-l.law.Apply(l.input))/l.law.Slope(l.input) + load)
 	}
 	return y, u, nil
 }

@@ -46,7 +46,7 @@ func operatingWords(g *tune.Gains) string {
 		s = fmt.Sprintf("The figures are judged about an input of %s.", format.Amount(*g.OperatingInput, g.Units.Input, 4))
 	}
 	if h := g.HoldsOver; h != nil {
-		s += fmt.Sprintf(" The requirement holds for inputs from %s to %s.", format.Short(h[0], 4), format.Amount(h[1], g.Units.Input, 4))
+		s += fmt.Sprintf(" The requirement holds for setpoint steps that start at inputs from %s to %s, up and down.", format.Short(h[0], 4), format.Amount(h[1], g.Units.Input, 4))
 	}
 	return strings.TrimSpace(s)
 }
@@ -109,8 +109,12 @@ func ruleWords(g *tune.Gains) string {
 
 // metricsTable sets what was asked beside what the loop does.
 func metricsTable(g *tune.Gains) *table {
+	over := format.Percent(g.Assurance) + " of the plausible plants"
+	if g.WorstOver > 0 { // met within the sampling error
+		over = "the " + format.Percent(g.WorstOver) + " of the plausible plants that meet"
+	}
 	t := &table{
-		Caption: fmt.Sprintf("What the loop does: on the best-fit plant, and at its worst over %s of the plausible plants", format.Percent(g.Assurance)),
+		Caption: "What the loop does: on the best-fit plant, and at its worst over " + over,
 		Head:    []string{"Figure", "Asked", "Best fit", "Worst"},
 	}
 	q, u := g.Requirement, g.Units
