@@ -23,6 +23,7 @@ type column struct {
 
 	halves   bool // text of nothing but AM and PM
 	units    bool // text of nothing but units
+	ofUnits  bool // … and several of them, one of more than a letter
 	beside   *unitColumn
 	part     partOf   // of a clock in several columns
 	switched bool     // nothing but words such as ON and OFF, or logged as true and false

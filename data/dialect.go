@@ -6,6 +6,7 @@ import (
 	"io"
 	"math"
 	"slices"
+	"unicode/utf8"
 )
 
 // dialect is how a text file writes its rows, as its beginning shows.
@@ -415,7 +416,9 @@ func (d *dialect) inspect(rows []line) {
 			for w := range words {
 				_, known := canonicalUnit(decodeName([]byte(w)))
 				c.units = c.units && known
+				c.ofUnits = c.ofUnits || utf8.RuneCountInString(w) > 1
 			}
+			c.ofUnits = c.ofUnits && c.units && len(words) > 1
 		}
 	}
 	d.takeUnits()

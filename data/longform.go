@@ -142,7 +142,7 @@ func (c *csvReader) planLong(o *Options, info *reading) error {
 	if found := bestByName(cols, taken, roleStatus); len(found) == 1 {
 		take(roleStatus, found[0])
 	}
-	if i := slices.IndexFunc(cols, func(c column) bool { return c.units && namesUnit(c) }); i >= 0 {
+	if i := slices.IndexFunc(cols, func(c column) bool { return c.units && (c.ofUnits || namesUnit(c)) }); i >= 0 {
 		take(roleUnit, i)
 	}
 	for _, r := range []role{roleTag, roleValue} {

@@ -62,6 +62,8 @@ var tableQuirks = []quirk{
 	{file: "unit-columns-change.csv", wrong: `unit-columns-change.csv:8: column "outlet_unit" goes from degC to "degF" here, and column "outlet" with it: cut the log in two, or export it in one unit`},
 	{file: "unit-columns-against-name.csv", wrong: `column "outlet_degC" is in degC by its name and in degF by column "outlet_unit"`},
 	{file: "unit-columns-against-name.csv", o: Options{TempUnit: "C"}},
+	{file: "long-units-other-name.csv", notes: []string{"long-form"}},
+	{file: "long-flag-of-one-letter.csv", input: "unit", temp: "unit", notes: []string{"long-form", "input-unit-unknown", "unit-unknown"}},
 	{file: "flag-of-one-letter.csv", temp: "unit", notes: []string{"unit-unknown"}},
 	{file: "phase-of-one-letter.csv", notes: []string{"time-unit-assumed"}},
 	{file: "units-russian.csv", t: ramp(8, func(i int) float64 { return 30 * float64(i) })},

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 	"time"
 )
 
@@ -43,6 +44,9 @@ const (
 
 // refuseTenDigits refuses stamps that could be both.
 func refuseTenDigits(cells [][]byte, v []float64, label string) error {
+	if lower := strings.ToLower(label); strings.Contains(lower, "unix") || strings.Contains(lower, "epoch") {
+		return nil
+	}
 	likely := false
 	var readings, flags []string
 	for _, f := range tenDigitForms {
