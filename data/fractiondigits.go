@@ -112,10 +112,11 @@ func (k *clock) findPadding(cells [][]byte, c column) ([]Note, error) {
 	case f.zeroAhead && f.colon == nil:
 		return nil, nil
 	}
-	decimals, numbers := k.unevenAs(cells, nil), k.unevenAs(cells, padFraction())
+	decimals, numbers := k.secondsAs(cells, nil), k.secondsAs(cells, padFraction())
+	roughly, otherwise := unevenness(stepsOf(decimals)), unevenness(stepsOf(numbers))
 	switch {
-	case f.colon != nil || 2*numbers < decimals:
-	case 2*decimals < numbers:
+	case f.colon != nil || 2*otherwise < roughly && (f.widths[3] > 0 || evenOnlyAs(numbers, decimals)):
+	case 2*roughly < otherwise:
 		return nil, nil
 	case f.zeroBehind && f.widths[3] == 0:
 		return nil, fmt.Errorf("column %q (%s): the digits behind the seconds could be decimals or a number of milliseconds: export them with a fixed number of digits", c.label, cells[0])
@@ -130,23 +131,34 @@ func noteMilliseconds(label string) Note {
 	return Note{Code: "clock-milliseconds", Text: fmt.Sprintf("what stands behind the seconds in column %q was read as a number of milliseconds, without the zeros in front", label)}
 }
 
-// unevenAs is how unevenly a clock goes on if its stamps are rewritten so.
-func (k *clock) unevenAs(cells [][]byte, rewrite func(b []byte) []byte) float64 {
+// secondsAs are the times of a column in seconds from the first, if its stamps
+// are rewritten so.
+func (k *clock) secondsAs(cells [][]byte, rewrite func(b []byte) []byte) []float64 {
 	probe := clock{kind: k.kind, order: k.order, rewrite: rewrite}
-	var steps []float64
-	var last int64
-	seen := false
+	var t []float64
+	var first int64
 	for _, b := range cells {
-		t, _, ok := probe.parse(b, '.')
+		ns, _, ok := probe.parse(b, '.')
 		if !ok {
 			continue
 		}
-		if d := t - last; seen && d != 0 && math.Abs(float64(d)) < float64(halfDayLong) {
-			steps = append(steps, float64(d))
+		if t == nil {
+			first = ns
 		}
-		last, seen = t, true
+		t = append(t, float64(ns-first)/1e9)
 	}
-	return unevenness(steps)
+	return t
+}
+
+// stepsOf are the steps between times in seconds, ns, without those past
+// midnight.
+func stepsOf(t []float64) (steps []float64) {
+	for i := 1; i < len(t); i++ {
+		if d := math.Round((t[i] - t[i-1]) * 1e9); d != 0 && math.Abs(d) < float64(halfDayLong) {
+			steps = append(steps, d)
+		}
+	}
+	return steps
 }
 
 // padFraction is the rewrite that puts the zeros in front.

@@ -76,6 +76,7 @@ var clockQuirks = []quirk{
 	{file: "colon-milliseconds-date.csv", start: janStart, notes: []string{"clock-milliseconds", local}},
 	{file: "milliseconds-never-zero.csv", t: ramp(8, func(i int) float64 { return float64(i) / 5 }), notes: []string{"clock-milliseconds"}},
 	{file: "decimals-cut-unevenly.csv", t: ramp(8, func(i int) float64 { return float64(i) / 4 })},
+	{file: "decimals-one-or-two.csv", t: []float64{0, 1.25, 2.25, 3, 4.25, 5.25, 6, 7.25}},
 	{file: "fraction-both-ways.csv", wrong: `column "time" (10:00:00.0): the digits behind the seconds could be decimals or a number of milliseconds: export them with a fixed number of digits`},
 	{file: "ten-digits-year-first.csv", wrong: `column "time" (2601251000) could be seconds since 1970 (6 June 2052 01:43:20), or a date and a time of day (25 January 2026 10:00 or 26 January 2025 10:00): say which with --time-format unix or --time-format yyMMddHHmm or ddMMyyHHmm`},
 	{file: "ten-digits-year-first.csv", o: Options{TimeFormat: "yyMMddHHmm"}, t: ramp(8, func(i int) float64 { return 60 * float64(i) }), start: janStart, notes: []string{local}},

@@ -58,6 +58,7 @@ var tableQuirks = []quirk{
 	// units and readings that cannot be
 	{file: "unit-columns.csv", notes: []string{"unit-column"}},
 	{file: "unit-columns-named.csv", notes: []string{"unit-column"}},
+	{file: "unit-columns-blank.csv", notes: []string{"unit-column"}},
 	{file: "unit-columns-prefix.csv", notes: []string{"unit-column"}},
 	{file: "unit-columns-change.csv", wrong: `unit-columns-change.csv:8: column "outlet_unit" goes from degC to "degF" here, and column "outlet" with it: cut the log in two, or export it in one unit`},
 	{file: "unit-columns-against-name.csv", wrong: `column "outlet_degC" is in degC by its name and in degF by column "outlet_unit"`},

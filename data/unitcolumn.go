@@ -45,19 +45,30 @@ func isPlainNumber(word string) bool {
 // them.
 func (d *dialect) takeUnits() {
 	for i, c := range d.cols {
-		if c.class != texts || c.switched || len(c.sample) == 0 || !namesUnit(c) {
+		if c.class != texts || c.switched || !namesUnit(c) {
 			continue
 		}
-		unit, known := canonicalUnit(c.sample[0])
+		first := firstUnit(c.sample)
+		unit, known := canonicalUnit(first)
 		at := d.measuredIn(i)
 		if !known || at < 0 || d.cols[at].beside != nil || !canBeIn(d.cols[at], unit) {
 			continue
 		}
-		d.cols[at].beside = &unitColumn{i, c.label, c.sample[0], unit, d.cols[at].unit == ""}
+		d.cols[at].beside = &unitColumn{i, c.label, first, unit, d.cols[at].unit == ""}
 		if d.cols[at].unit == "" {
 			d.cols[at].unit = unit
 		}
 	}
+}
+
+// firstUnit is the first of some cells that holds more than a dash.
+func firstUnit(sample []string) string {
+	for _, cell := range sample {
+		if _, missing := knownMissing([]byte(cell)); !missing {
+			return cell
+		}
+	}
+	return ""
 }
 
 // measuredIn is the column of numbers that a column of units is said of: the
