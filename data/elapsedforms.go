@@ -19,7 +19,7 @@ func parseElapsed(b []byte) (ns int64, ok bool) {
 	}
 	if b[0] == 'P' { // a duration of ISO 8601: P1DT2H3M4.5S
 		date, tod, timed := bytes.Cut(b[1:], []byte{'T'})
-		if timed && bytes.IndexAny(date, "MYW") < 0 { // months, not minutes
+		if timed && !bytes.ContainsAny(date, "MYW") { // months, not minutes
 			return parseUnits(slices.Concat(date, tod), 1)
 		}
 		return 0, false
