@@ -2,10 +2,7 @@ package fit
 
 import (
 	"math"
-
-	"gonum.org/v1/gonum/floats"
-
-	"lagwright/data"
+	"slices"
 )
 
 // startsAtRest reports whether every record holds still before its first
@@ -23,8 +20,7 @@ func startsAtRest(recs []*record, tau float64) bool {
 		}
 		slope, se := lineSlope(r.t[:n], r.y[:n])
 		lost := 2.5*se + r.run.Quality.Quantum/(r.t[n-1]-r.t[0])
-		e := extent([]*data.Run{r.run}, func(x *data.Run) []float64 { return x.Y })
-		if math.Abs(slope) > lost && math.Abs(slope)*tau > 0.1*(e[1]-e[0]) {
+		if math.Abs(slope) > lost && math.Abs(slope)*tau > 0.1*r.rise {
 			return false
 		}
 	}
@@ -64,7 +60,7 @@ func (f *fitted) comesFromElsewhere() bool {
 		_, _, left := r.solveLinear(&f.e.work[i], p.gain)
 		start := r.sim.WithInput(r.fromFirstRow()).Response(nil, f.st, f.e.lags(p.eta), 0)
 		var basis [][]float64
-		for _, c := range append(r.fixed, f.e.work[i].raw...) {
+		for _, c := range slices.Concat(r.fixed, f.e.work[i].raw) {
 			w := make([]float64, len(c))
 			r.filter.apply(w, c)
 			addToBasis(&basis, w)
@@ -72,11 +68,11 @@ func (f *fitted) comesFromElsewhere() bool {
 		white := make([]float64, len(left))
 		r.filter.apply(white, left)
 		r.filter.apply(start, start)
-		before := floats.Dot(start, start)
+		before := dot(start, start)
 		project(start, basis)
 		project(start, basis)
-		after, along := floats.Dot(start, start), floats.Dot(start, white)
-		if after > 1e-8*before && along*along > elsewhereShare*after*floats.Dot(white, white) {
+		after, along := dot(start, start), dot(start, white)
+		if after > 1e-8*before && along*along > elsewhereShare*after*dot(white, white) {
 			return true
 		}
 	}

@@ -136,6 +136,10 @@ type Derived struct {
 	High  *float64 `json:"high"`
 }
 
+// Dated reports whether a log of the card has a date: one of logs without has the
+// epoch for it, which tells nobody anything.
+func (c *Card) Dated() bool { return c.Created != "1970-01-01T00:00:00Z" }
+
 // Warning is one thing that limits the card.
 type Warning struct {
 	Code      string `json:"code"`

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"time"
 
 	"lagwright/data"
@@ -217,14 +218,11 @@ func quickCard(ctx context.Context, recs []*record, o Options) (*Card, error) {
 		c.Drift = "linear"
 	}
 	c.Warnings = []Warning{}
-	add := func(code, parameter, format string, args ...any) {
-		if code != "input-correlation" { // two lags may be too few, and the misfit follow the input for that
-			c.Warnings = append(c.Warnings, Warning{Code: code, Parameter: parameter, Text: fmt.Sprintf(format, args...)})
-		}
-	}
-	out.warnNonlinear([]*data.Run{recs[0].run}, out.models[0], &c.Models[0], add)
+	out.warnNonlinear([]*data.Run{recs[0].run}, out.models[0], &c.Models[0], gather(&c.Warnings))
+	// Two lags may be too few, and the misfit follow the input for that.
+	c.Warnings = slices.DeleteFunc(c.Warnings, func(w Warning) bool { return w.Code == "input-correlation" })
 	if out.initial == earlier {
-		out.warnStart(add)
+		out.warnStart(gather(&c.Warnings))
 	}
 	return c, nil
 }

@@ -81,10 +81,8 @@ func (d *damped) invert(a [][]float64) [][]float64 {
 		}
 	}
 	d.idx = idx
-	if len(d.scaled) != len(a) {
-		d.scaled, d.unit = columns(len(a), len(a)), make([]float64, len(a))
-	}
-	out, scaled, unit := columns(len(a), len(a)), d.scaled, d.unit
+	d.unit = resize(d.unit, len(a))
+	out, scaled, unit := columns(len(a), len(a)), columnsIn(&d.scaled, len(a), len(a)), d.unit
 	for _, i := range idx {
 		for _, j := range idx {
 			scaled[i][j] = a[i][j] / math.Sqrt(a[i][i]*a[j][j])

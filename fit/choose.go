@@ -210,7 +210,7 @@ func (f *fitted) shows() bool {
 		if f.st.Integrating() {
 			answer *= r.root.span
 		}
-		if y := extent([]*data.Run{r.run}, func(x *data.Run) []float64 { return x.Y }); answer > leastShown*(y[1]-y[0]) {
+		if answer > leastShown*r.rise {
 			return true
 		}
 	}

@@ -10,10 +10,7 @@ import (
 // It is valid until the next call.
 func (e *engine) reduced(p *point) [][]float64 {
 	n := len(p.eta)
-	if len(e.square) != n {
-		e.square = columns(n, n)
-	}
-	a := e.square
+	a := columnsIn(&e.square, n, n)
 	for i := range n {
 		for j := range n {
 			a[i][j] = p.normal[i+1][j+1]

@@ -99,6 +99,15 @@ func columns(k, n int) [][]float64 {
 	return out
 }
 
+// columnsIn are k columns of n rows in the memory kept for them, which is made anew
+// where it has another shape. They hold what was left there.
+func columnsIn(memory *[][]float64, k, n int) [][]float64 {
+	if m := *memory; len(m) < k || len(m) > 0 && len(m[0]) != n {
+		*memory = columns(k, n)
+	}
+	return (*memory)[:k]
+}
+
 // setGroups ties lags of the structure together: groups[i] is the index of
 // the fitted lag that element i shares.
 func (e *engine) setGroups(groups []int) {
@@ -296,10 +305,7 @@ func (e *engine) gaussNewton(p *point) {
 		r.filter.applyAll(w.jac[:n])
 		// The residual and g are free of the basis already; the columns are
 		// freed of it in their products, which saves passes over the rows.
-		if len(e.inner) < n || len(e.inner[0]) != len(w.basis) {
-			e.inner = columns(n, len(w.basis))
-		}
-		in := e.inner[:n]
+		in := columnsIn(&e.inner, n, len(w.basis))
 		for j := range n {
 			for l, q := range w.basis {
 				in[j][l] = dot(q, w.jac[j])
@@ -403,16 +409,14 @@ type linearMemory struct {
 // coefficient 0.
 func (l *linearMemory) solve(f *filter, cols [][]float64, rhs []float64) []float64 {
 	m, n := len(cols), len(rhs)
-	if len(l.white) < m+1 || len(l.white[0]) != n {
-		l.white = columns(m+1, n)
-	}
+	white := columnsIn(&l.white, m+1, n)
 	q := make([][]float64, m)
 	rr := columns(m, m)
-	y := l.white[m]
+	y := white[m]
 	f.apply(y, rhs)
 	z := make([]float64, m)
 	for j, c := range cols {
-		x := l.white[j]
+		x := white[j]
 		f.apply(x, c)
 		before := math.Sqrt(dot(x, x))
 		for range 2 {

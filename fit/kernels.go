@@ -46,9 +46,8 @@ type kernels struct {
 // twice.
 func (q *posterior) adapt(pool proposals, count int) []plantAt {
 	optimum := q.at(q.b.p.eta)
-	alone := slices.Repeat([]plantAt{{p: q.e.eval(q.b.p.eta, false)}}, count)
 	if math.IsInf(optimum.density, -1) { // not even the optimum is plausible: no other place is
-		return alone
+		return q.alone(count)
 	}
 	pool = pool.and(proposals{[]plantAt{optimum}, []float64{optimum.density}})
 	for range lessons {
@@ -68,9 +67,14 @@ func (q *posterior) adapt(pool proposals, count int) []plantAt {
 		}
 	}
 	if math.IsInf(kept.top(math.Inf(-1)), -1) {
-		return alone
+		return q.alone(count)
 	}
 	return kept.drawn(count, q.rng.Float64())
+}
+
+// alone is the optimum, so many times.
+func (q *posterior) alone(count int) []plantAt {
+	return slices.Repeat([]plantAt{{p: q.e.eval(q.b.p.eta, false)}}, count)
 }
 
 // drawn are count places in proportion to their weights, evenly spaced in their sum

@@ -237,14 +237,6 @@ func (f *fitted) normal(at *polished, sum *float64, memory *everyRowMemory) [][]
 // everyRowMemory is what the sums over every row use one after the other.
 type everyRowMemory struct{ raw, cols, start [][]float64 }
 
-// atLeast are k columns of n rows, in memory of that shape if it can be.
-func atLeast(memory *[][]float64, k, n int) [][]float64 {
-	if m := *memory; len(m) < k || len(m[0]) < n {
-		*memory = columns(k, n)
-	}
-	return (*memory)[:k]
-}
-
 // accumulate adds one record; idx says where its columns stand in gram.
 func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, gram [][]float64, memory *everyRowMemory) {
 	e, root := f.e, r.root
@@ -257,10 +249,10 @@ func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, 
 	}
 	white, carry := r.whitener(r.shape), make([]carried, m)
 	size := min(pieceRows, len(root.t))
-	raw, cols := atLeast(&memory.raw, nl+2, size), atLeast(&memory.cols, m, size)
+	raw, cols := columnsIn(&memory.raw, nl+2, size), columnsIn(&memory.cols, m, size)
 	var start [][]float64
 	if started != nil {
-		start = atLeast(&memory.start, nl+2, size)
+		start = columnsIn(&memory.start, nl+2, size)
 	}
 	upper := columns(m, m)
 	for lo := 0; lo < len(root.t); {

@@ -20,6 +20,7 @@ type record struct {
 	rows  []ident.Row // the same rows
 	span  float64     // s, first to last row
 	swing float64     // of the input
+	rise  float64     // highest temperature less the lowest
 	step  float64     // s, median interval
 	sim   *ident.Simulator
 	start *ident.Simulator // response to a unit change at the first row, for an earlier rest
@@ -86,6 +87,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
 	}
 	r.span = r.t[len(r.t)-1] - r.t[0]
+	r.rise = hi - lo
 	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
@@ -179,12 +181,10 @@ func (r *record) setShape(s shape) {
 	r.yw = resize(r.yw, n)
 	r.filter.apply(r.yw, r.y)
 	r.basis = r.basis[:0]
-	if len(r.white) < len(r.fixed) {
-		r.white = columns(len(r.fixed), n)
-	}
+	white := columnsIn(&r.white, len(r.fixed), n)
 	for i, c := range r.fixed {
-		r.filter.apply(r.white[i], c)
-		addToBasis(&r.basis, r.white[i])
+		r.filter.apply(white[i], c)
+		addToBasis(&r.basis, white[i])
 	}
 	project(r.yw, r.basis)
 }

@@ -52,7 +52,7 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	t := &tangent{rec: r, nparam: e.ng + 2, memory: &w.tangent}
 	states := e.stateDerivatives(r, w, p)
 	linear, beta, left := r.solveLinear(w, p.gain)
-	room := t.memory.columns(len(linear)+e.ng+2, n)
+	room := columnsIn(&t.memory.room, len(linear)+e.ng+2, n)
 	t.left = left
 	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
@@ -119,14 +119,6 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	}
 	t.cols = append(t.cols, params...)
 	return t
-}
-
-// columns are k columns of n rows, valid until the next call.
-func (m *tangentMemory) columns(k, n int) [][]float64 {
-	if len(m.room) < k || len(m.room[0]) != n {
-		m.room = columns(k, n)
-	}
-	return m.room[:k]
 }
 
 // node is one noise shape with what the record says under it: its weight,
@@ -232,10 +224,7 @@ func (t *tangent) onRows(s shape) onRowsSums {
 	f.set(t.rec.rows, s)
 	n, p := len(t.left), len(t.cols)
 	m := t.memory
-	if len(m.white) < p+1 {
-		m.white, m.factor = columns(p+1, n), columns(p+1, p+1)
-	}
-	white, l := m.white[:p+1], m.factor
+	white, l := columnsIn(&m.white, p+1, n), columnsIn(&m.factor, p+1, p+1)
 	for j, c := range t.cols {
 		copy(white[j], c)
 	}
@@ -273,10 +262,7 @@ func (t *tangent) quadratic() (a [][]float64, b []float64) {
 	np, p, l := len(t.param), len(t.cols), t.memory.factor
 	all := columns(t.nparam+1, t.nparam)
 	a, b = all[:t.nparam:t.nparam], all[t.nparam]
-	if len(t.memory.turned) < t.nparam || len(t.memory.turned[0]) != t.nparam { // at least gain and dead time
-		t.memory.turned = columns(t.nparam, t.nparam)
-	}
-	m := t.memory.turned // lpᵀ·tri
+	m := columnsIn(&t.memory.turned, np, t.nparam) // lpᵀ·tri
 	for i := range np {
 		clear(m[i])
 		for _, j := range t.param {

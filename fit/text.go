@@ -28,12 +28,9 @@ func (c *Card) WriteText(w io.Writer) error {
 	return p.writeTo(w)
 }
 
-// noDate stands in a card of logs without a date.
-const noDate = "1970-01-01T00:00:00Z"
-
 func (c *Card) writeSource(p *page) {
 	title := "Model card"
-	if c.Created != noDate {
+	if c.Dated() {
 		title += " of " + printable(c.Created)
 	}
 	if c.Tool != "" {

@@ -13,12 +13,17 @@ import (
 // and in words what was seen, what it means, what to do.
 type warn func(code, parameter, format string, args ...any)
 
+// gather returns a warn that appends to the list.
+func gather(list *[]Warning) warn {
+	return func(code, parameter, format string, args ...any) {
+		*list = append(*list, Warning{Code: code, Parameter: parameter, Text: fmt.Sprintf(format, args...)})
+	}
+}
+
 // warnings lists what limits the card.
 func (out *outcome) warnings(ctx context.Context, runs []*data.Run) []Warning {
 	list := []Warning{}
-	add := func(code, parameter, format string, args ...any) {
-		list = append(list, Warning{Code: code, Parameter: parameter, Text: fmt.Sprintf(format, args...)})
-	}
+	add := gather(&list)
 	b := out.models[out.selected]
 	m := out.model(b)
 	out.openEnds(b, add)

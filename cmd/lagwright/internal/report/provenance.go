@@ -137,11 +137,9 @@ func versionTable(b *Bundle) *table {
 	return t
 }
 
-// dated is the date of a card; one of logs without a date has the epoch for it,
-// which tells nobody anything.
+// dated is the date of a card.
 func dated(c *fit.Card) string {
-	const epoch = "1970-01-01T00:00:00Z"
-	if c.Created == epoch {
+	if !c.Dated() {
 		return "without a date: the log has none"
 	}
 	return c.Created
