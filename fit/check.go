@@ -182,30 +182,45 @@ func quickFit(ctx context.Context, run *data.Run, o Options) (*Card, error) {
 		return nil, err
 	}
 	if o.Structure != "auto" {
-		return quickCard(ctx, recs, o)
+		return warned(quickCard(ctx, recs, o))
 	}
 	o.Structure = "chain2"
-	two, err := quickCard(ctx, recs, o)
+	two, found, err := quickCard(ctx, recs, o)
 	if err != nil {
 		return nil, err
 	}
 	m := two.Models[0]
 	if lag2 := m.Parameters[2]; lag2.Fixed || (lag2.Low != nil && *lag2.Low > 0) {
-		return two, nil
+		return warned(two, found, nil)
 	}
 	o.Structure = "fopdt"
-	one, err := quickCard(ctx, recs, o)
+	one, foundOne, err := quickCard(ctx, recs, o)
 	if err != nil || m.AICc < one.Models[0].AICc-2 {
-		return two, err
+		return warned(two, found, err)
 	}
-	return one, nil
+	return warned(one, foundOne, nil)
 }
 
-// quickCard fits one structure.
-func quickCard(ctx context.Context, recs []*record, o Options) (*Card, error) {
+// warned adds the warnings to a quick card of one log.
+func warned(c *Card, out *outcome, err error) (*Card, error) {
+	if out == nil {
+		return c, err
+	}
+	c.Warnings = []Warning{}
+	out.warnNonlinear([]*data.Run{out.recs[0].run}, out.models[0], &c.Models[0], gather(&c.Warnings))
+	// Two lags may be too few, and the misfit follow the input for that.
+	c.Warnings = slices.DeleteFunc(c.Warnings, func(w Warning) bool { return w.Code == "input-correlation" })
+	if out.initial == earlier {
+		out.warnStart(gather(&c.Warnings))
+	}
+	return c, err
+}
+
+// quickCard fits one structure; the card has no warnings yet.
+func quickCard(ctx context.Context, recs []*record, o Options) (*Card, *outcome, error) {
 	out, err := find(ctx, recs, o)
 	if err != nil {
-		return nil, err
+		return nil, nil, err
 	}
 	out.sample()
 	u := recs[0].run.Units
@@ -217,14 +232,7 @@ func quickCard(ctx context.Context, recs []*record, o Options) (*Card, error) {
 	if out.drift {
 		c.Drift = "linear"
 	}
-	c.Warnings = []Warning{}
-	out.warnNonlinear([]*data.Run{recs[0].run}, out.models[0], &c.Models[0], gather(&c.Warnings))
-	// Two lags may be too few, and the misfit follow the input for that.
-	c.Warnings = slices.DeleteFunc(c.Warnings, func(w Warning) bool { return w.Code == "input-correlation" })
-	if out.initial == earlier {
-		out.warnStart(gather(&c.Warnings))
-	}
-	return c, nil
+	return c, out, nil
 }
 
 // answers reports whether the temperature follows the input at all: a gain that
