@@ -191,8 +191,9 @@ func (b *bounded) quantiles(here member, g int, level float64) (lo, hi float64) 
 	if len(b.members) == 1 || !(se > 0) {
 		return floor, floor
 	}
-	lo = -mixtureQuantile(b.members, g, (1-level)/2) / se
-	hi = mixtureQuantile(b.members, g, (1+level)/2) / se
+	mix := mixtureOf(b.members, g)
+	lo = -mix.quantile((1-level)/2) / se
+	hi = mix.quantile((1+level)/2) / se
 	return math.Min(math.Max(lo, 0.8*floor), 6*floor), math.Min(math.Max(hi, 0.8*floor), 6*floor)
 }
 
@@ -223,77 +224,16 @@ func (f *fitted) linear(b *bounded, level float64) [][]estimate {
 	out := make([][]estimate, len(f.e.recs))
 	p := f.e.eval(f.p.eta, true)
 	for i, r := range f.e.recs {
-		w := &f.e.work[i]
-		cols, beta, left := r.solveLinear(w, p.gain)
-		all := append(cols, b.tangentColumns(i)...)
-		var ms []member
-		m := &linearMembers{white: columns(len(all)+1, len(r.t)), gram: columns(len(all), len(all))}
-		for _, n := range b.nodes[i] {
-			ms = append(ms, m.of(r, n, all, left))
-		}
+		_, beta, _ := r.solveLinear(&f.e.work[i], p.gain)
 		for j := range r.fixed {
-			e := estimate{value: beta[j], se: math.Sqrt(pooled(ms)[j][j])}
-			e.low = e.value + mixtureQuantile(ms, j, (1-level)/2)
-			e.high = e.value + mixtureQuantile(ms, j, (1+level)/2)
+			e := estimate{value: beta[j], se: math.NaN(), low: math.NaN(), high: math.NaN()}
+			if len(b.nodes[i][0].fixed) > 0 {
+				mix := fixedMixture(b.nodes[i], j)
+				e.se = mix.sd()
+				e.low, e.high = e.value+mix.quantile((1-level)/2), e.value+mix.quantile((1+level)/2)
+			}
 			out[i] = append(out[i], e)
 		}
-	}
-	return out
-}
-
-// linearMembers are the memory that members of one record use one after the other.
-type linearMembers struct {
-	white, gram [][]float64
-	inverse     damped
-}
-
-// of is the posterior of the coefficients of cols under the noise shape of a node,
-// given what the model leaves.
-func (lm *linearMembers) of(r *record, n node, cols [][]float64, left []float64) member {
-	f, white, gram := &r.scratch, lm.white, lm.gram
-	f.set(r.rows, n.shape)
-	m := len(cols)
-	for j, c := range cols {
-		copy(white[j], c)
-	}
-	copy(white[m], left)
-	f.applyAll(white)
-	b := make([]float64, m)
-	for j := range m {
-		b[j] = dot(white[j], white[m])
-		for l := range m {
-			gram[j][l] = dot(white[j], white[l])
-		}
-	}
-	cov := lm.inverse.invert(gram)
-	out := member{weight: n.weight, shift: multiply(cov, b), cov: cov, dof: float64(n.dof)}
-	for j := range cov {
-		for l := range cov {
-			cov[j][l] *= n.s2
-		}
-	}
-	return out
-}
-
-// tangentColumns are the directions of gain, lags and dead time of record i
-// at the optimum, coinciding lags as one.
-func (b *bounded) tangentColumns(i int) [][]float64 {
-	e, w := b.e, &b.e.work[i]
-	ng := b.direction(e.nl+1) - 1
-	out := make([][]float64, 0, ng+2)
-	if !e.gainFix {
-		out = append(out, append([]float64(nil), w.raw[0]...))
-	}
-	for g := 1; g <= ng+1; g++ {
-		c := make([]float64, len(w.raw[0]))
-		for l := 1; l <= e.nl+1; l++ {
-			if b.direction(l) == g && !e.held[l-1] {
-				for k, v := range w.raw[l] {
-					c[k] += b.p.gain * v
-				}
-			}
-		}
-		out = append(out, c)
 	}
 	return out
 }

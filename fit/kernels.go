@@ -240,14 +240,31 @@ func (k *kernels) propose(n int) proposals {
 
 // density is the logarithm of that of the proposals at eta, up to a constant.
 func (k *kernels) density(eta []float64) float64 {
-	d, x := len(k.q.free), k.units(eta)
+	x := k.units(eta)
 	sum := 0.0
 	for _, c := range k.seen {
 		r2 := 0.0
 		for i, v := range c {
 			r2 += (x[i] - v) * (x[i] - v)
 		}
-		sum += math.Pow(1+r2/proposalFreedom, -0.5*(proposalFreedom+float64(d)))
+		sum += studentKernel(r2, len(x))
 	}
 	return math.Log(sum) - k.logdet
+}
+
+// studentKernel is the density of the proposals' Student's t in d dimensions at the
+// squared distance r2, up to a constant: (1 + r2/ν)^(-(ν+d)/2), multiplied out.
+func studentKernel(r2 float64, d int) float64 {
+	x := 1 + r2/proposalFreedom
+	power := 1.0
+	if (proposalFreedom+d)%2 == 1 {
+		power = math.Sqrt(x)
+	}
+	for n := (proposalFreedom + d) / 2; n > 0; n /= 2 {
+		if n%2 == 1 {
+			power *= x
+		}
+		x *= x
+	}
+	return 1 / power
 }

@@ -221,7 +221,7 @@ func (k *kalman) again() {
 	// Equal rows bring the filter to a steady state; then its figures repeat. The
 	// walk nears it by a part 2·follow a row, so that what is left of w is 1e-8/(2·follow)
 	// of it, and 1e-8 of the variance of a row.
-	settled := 1e-15
+	settled := 1e-12
 	if k.s.walk > 0 {
 		settled = 1e-10
 	}

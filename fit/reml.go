@@ -21,6 +21,7 @@ type tangent struct {
 	tri    [][]float64 // parameter block of the triangular factor: direction = Σ tri·parameter
 	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
+	fixed  [][]float64 // coefficients of the record's fixed columns in terms of cols
 
 	memory *tangentMemory
 	still  map[shape]judged // remembered by judgeWalk
@@ -64,9 +65,12 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 		}
 		t.memory.rest = t.rest
 	}
+	var kept [][]float64 // of linear
 	for _, c := range linear {
 		copy(room[0], c)
-		addToBasis(&t.cols, room[0])
+		if addToBasis(&t.cols, room[0]) {
+			kept = append(kept, c)
+		}
 		room = room[1:]
 	}
 	t.first = len(t.cols)
@@ -87,6 +91,7 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 		}
 	}
 	t.tri = columns(len(dirs), len(dirs))
+	cross := columns(t.first, len(dirs)) // directions on the linear columns
 	t.scale = make([]float64, len(dirs))
 	var params [][]float64
 	for j, c := range dirs {
@@ -94,6 +99,9 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			continue
 		}
 		norm := math.Sqrt(dot(c, c))
+		for i, q := range t.cols[:t.first] {
+			cross[i][j] = dot(q, c)
+		}
 		project(c, t.cols[:t.first])
 		project(c, t.cols[:t.first])
 		t.scale[j] = math.Sqrt(dot(c, c))
@@ -118,7 +126,38 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 		params = append(params, c)
 	}
 	t.cols = append(t.cols, params...)
+	t.fixed = t.fixedRows(len(r.fixed), kept, cross)
 	return t
+}
+
+// fixedRows are the first rows of the inverse of the triangular matrix that has the
+// model's own columns, the linear ones and then the directions, in terms of the
+// orthonormal ones: with them a coefficient is read off coordinates. nil where a
+// fixed column is no direction of its own.
+func (t *tangent) fixedRows(n int, kept, cross [][]float64) [][]float64 {
+	if len(kept) < n {
+		return nil
+	}
+	entry := func(i, k int) float64 {
+		switch {
+		case k < t.first:
+			return dot(t.cols[i], kept[k])
+		case i < t.first:
+			return cross[i][t.param[k-t.first]]
+		}
+		return t.tri[i-t.first][t.param[k-t.first]]
+	}
+	rows := columns(n, len(t.cols))
+	for j, row := range rows {
+		row[j] = 1
+		for k := j; k < len(row); k++ {
+			for i := j; i < k; i++ {
+				row[k] -= entry(i, k) * row[i]
+			}
+			row[k] /= entry(k, k)
+		}
+	}
+	return rows
 }
 
 // node is one noise shape with what the record says under it: its weight,
@@ -133,12 +172,15 @@ type node struct {
 	s2     float64   // variance of a whitened row
 	dof    int
 	dev    float64 // -2 restricted log likelihood, up to a constant
+
+	fixed []margin // of the coefficients of the fixed columns, counted from the optimum
 }
 
 // evaluate judges a noise shape and has the quadratic form of the parameters too.
 func (t *tangent) evaluate(s shape) node {
 	nd := t.judge(s)
 	nd.a, nd.b = t.quadratic()
+	nd.fixed = t.fixedMargins(nd.s2, float64(nd.dof))
 	return nd
 }
 
@@ -282,6 +324,22 @@ func (t *tangent) quadratic() (a [][]float64, b []float64) {
 	return a, b
 }
 
+// fixedMargins are the coefficients of the fixed columns under the noise shape last
+// judged. With x solving l·x = row, a coefficient's variance is x·x and its distance
+// from the optimum x·l', l' the last row of the factor l.
+func (t *tangent) fixedMargins(s2, dof float64) []margin {
+	p, l := len(t.cols), t.memory.factor
+	out := make([]margin, len(t.fixed))
+	x := make([]float64, p)
+	for j, row := range t.fixed {
+		for i := range x {
+			x[i] = (row[i] - dot(l[i][:i], x[:i])) / l[i][i]
+		}
+		out[j] = margin{centre: dot(x, l[p][:p]), sd: math.Sqrt(s2 * dot(x, x)), dof: dof}
+	}
+	return out
+}
+
 // fullSum is the generalised least-squares sum over the noise rows: their
 // whitened sum of squares less what the model's directions would still take
 // from it, which the averaged rows tell (whitened sum minus least, scaled to
@@ -306,76 +364,86 @@ func (t *tangent) tcRange() (lo, hi float64) {
 }
 
 // bestShape finds the noise shape without a walk of greatest restricted
-// likelihood, from a coarse grid and a pattern search; near narrows the grid to a
-// neighbourhood.
+// likelihood: from near where that is known, else from the best of a coarse grid,
+// through parabolas over a lattice that narrows around their lowest points.
 func (t *tangent) bestShape(near *shape) node {
 	lo, hi := t.tcRange()
 	best := t.judge(whiteShape)
-	better := func(tc, w float64) (up bool, dev float64) {
+	dev := func(tc, w float64) float64 {
 		tc = math.Min(math.Max(tc, lo), hi)
 		w = math.Min(math.Max(w, 0), 0.995)
 		n := t.judge(shape{tc: tc, white: w})
-		if up = n.dev < best.dev-1e-9; up {
+		if n.dev < best.dev-1e-9 {
 			best = n
 		}
-		return up, n.dev
+		return n.dev
 	}
-	da, db := math.Log(hi/lo)/8, 0.25
-	if near == nil || near.white >= 1 {
+	da, db := 0.067, 0.025 // of the lattice, in log tc and in white
+	if near != nil && near.white < 1 {
+		dev(near.tc, near.white)
+	} else {
+		da, db = math.Log(hi/lo)/8, 0.12
 		for i := range 9 {
 			for _, w := range []float64{0, 0.3, 0.7, 0.93} {
-				better(lo*math.Exp(float64(i)*da), w)
+				dev(lo*math.Exp(float64(i)*da), w)
 			}
 		}
 		da /= 2
-		db = 0.12
-	} else {
-		better(near.tc, near.white)
-		da, db = 0.3, 0.1
 	}
-	// Pattern search (Hooke and Jeeves 1961, from memory): halve when nothing
-	// helps. At the last lattice the nine values give a parabola, and its bottom.
-	for da > 0.05 {
+	looked := false // for a little white
+	for range 40 {
 		c, centre := best.shape, best.dev
 		if c.white >= 1 {
 			c = shape{tc: lo * 3, white: 0.97}
+			centre = dev(c.tc, c.white)
 		}
-		var dev [8]float64
-		moved := false
-		for i, d := range neighbours {
-			if i >= 4 && moved {
-				break // the diagonals are for ridges
+		at := func(x, y float64) float64 { return dev(c.tc*math.Exp(x*da), c.white+y*db) }
+		p, ok := parabola(centre, at)
+		inside := ok && math.Max(math.Abs(p.x), math.Abs(p.y)) <= 1
+		told := ok && math.Abs(at(p.x, p.y)-p.least) < 0.002 && inside
+		far := math.Max(math.Abs(math.Log(best.shape.tc/c.tc))/da, math.Abs(best.shape.white-c.white)/db)
+		switch {
+		case far > 0.9 && !inside:
+			da, db = math.Min(2*da, 0.6), math.Min(2*db, 0.2)
+		case told, far <= 0.6 && da < 0.1:
+			if looked || best.shape.white > 0 {
+				return best
 			}
-			var up bool
-			up, dev[i] = better(c.tc*math.Exp(d[0]*da), c.white+d[1]*db)
-			moved = moved || up
-		}
-		if moved {
-			continue
-		}
-		if da <= 0.1 && best.shape.white < 1 {
-			if x, y, ok := bottom(centre, dev); ok {
-				better(c.tc*math.Exp(x*da), c.white+y*db)
+			// Long correlation leaves a valley of little white that a lattice steps over.
+			looked = true
+			for _, w := range []float64{0.03, 0.01, 0.003, 0.001} {
+				dev(best.shape.tc, w)
 			}
+			if best.shape.white == 0 {
+				return best
+			}
+			da, db = 0.2, best.shape.white/2
+		case far <= 0.6:
+			da, db = da/3, db/3
 		}
-		da, db = da/2, db/2
 	}
 	return best
 }
 
-// neighbours are those of a shape on a lattice, in steps of log tc and of white.
-var neighbours = [8][2]float64{{1, 0}, {-1, 0}, {0, 1}, {0, -1}, {1, 1}, {-1, -1}, {1, -1}, {-1, 1}}
+// bowl is the lowest point of a parabola, in steps, and the value there.
+type bowl struct{ x, y, least float64 }
 
-// bottom is the lowest point of the parabola through the centre of a lattice and
-// its neighbours, in steps; ok is false where it has none within reach.
-func bottom(centre float64, dev [8]float64) (x, y float64, ok bool) {
-	gx, gy := (dev[0]-dev[1])/2, (dev[2]-dev[3])/2
-	xx, yy := dev[0]+dev[1]-2*centre, dev[2]+dev[3]-2*centre
-	xy := (dev[4] + dev[5] - dev[6] - dev[7]) / 4
+// parabola is the one through the values of f at the origin, known already, at its four
+// neighbours and on the diagonal towards the lower ones of them. Its lowest point is
+// taken no further than two steps away; ok is false where it has none.
+func parabola(centre float64, f func(x, y float64) float64) (p bowl, ok bool) {
+	right, left, up, down := f(1, 0), f(-1, 0), f(0, 1), f(0, -1)
+	sx, sy := math.Copysign(1, left-right), math.Copysign(1, down-up)
+	corner := f(sx, sy) - math.Min(right, left) - math.Min(up, down) + centre
+	gx, gy := (right-left)/2, (up-down)/2
+	xx, yy, xy := right+left-2*centre, up+down-2*centre, corner*sx*sy
 	det := xx*yy - xy*xy
 	if !(xx > 0) || !(yy > 0) || !(det > 1e-3*xx*yy) {
-		return 0, 0, false
+		return bowl{}, false
 	}
-	x, y = (xy*gy-yy*gx)/det, (xy*gx-xx*gy)/det
-	return x, y, math.Abs(x) <= 1 && math.Abs(y) <= 1
+	x, y := (xy*gy-yy*gx)/det, (xy*gx-xx*gy)/det
+	if far := math.Max(math.Abs(x), math.Abs(y)) / 2; far > 1 {
+		x, y = x/far, y/far
+	}
+	return bowl{x, y, centre + gx*x + gy*y + xx*x*x/2 + yy*y*y/2 + xy*x*y}, true
 }

@@ -143,7 +143,7 @@ func (t *tangent) grid(best node, axes int, reach float64) lattice {
 	first, widest := [3]float64{0.4, 0.1, 0.8}, [3]float64{math.Log(hi/lo) / 5, 0.25, 1.5}
 	var d [3]float64
 	for axis := range axes {
-		d[axis] = spacing(first[axis], widest[axis], axes, best.dev, func(x float64) (node, bool) { return at(c.moved(axis, x), t.judge) })
+		d[axis] = spacing(first[axis], widest[axis], latticeRise[axes], best.dev, func(x float64) (node, bool) { return at(c.moved(axis, x), t.judge) })
 	}
 	var l lattice
 	for range 4 {
@@ -199,22 +199,28 @@ func flood(c shape, d [3]float64, axes int, highest float64, box [3][2]float64, 
 	return l, true
 }
 
-// spacing is the distance along an axis at which -2L rises by about 1, by about
-// 3 where the lattice has three axes.
-func spacing(d, widest float64, axes int, dev float64, at func(d float64) (node, bool)) float64 {
-	scale := []float64{2: 1, 3: 3}[axes]
-	for range 5 {
-		rise, ok := 0.0, false
+// latticeRise is the rise of -2L from one node to the next along one of two axes, or of
+// three: its root is the spacing in standard deviations where the likelihood is a
+// normal's. Sums over a normal are then off by 1e-4, or by 1 % (2·exp(-2π²/rise):
+// Trefethen and Weideman 2014, from memory).
+var latticeRise = []float64{2: 2, 3: 4}
+
+// spacing is the distance along an axis at which -2L rises by about rise, d a first
+// guess.
+func spacing(d, widest, rise, dev float64, at func(d float64) (node, bool)) float64 {
+	for range 4 {
+		risen, ok := 0.0, false
 		for _, sign := range []float64{1, -1} {
 			if n, in := at(sign * d); in {
-				rise, ok = math.Max(rise, n.dev-dev), true
+				risen, ok = math.Max(risen, n.dev-dev), true
 			}
 		}
-		if ok && rise > 2.5*scale {
-			d /= 2
-		} else if ok && rise < 0.4*scale && d < widest {
-			d *= 1.7
-		} else {
+		if !ok || math.IsNaN(risen) {
+			break
+		}
+		before := d
+		d = math.Min(d*math.Min(math.Max(math.Sqrt(rise/math.Max(risen, 1e-3)), 0.3), 3), widest)
+		if math.Abs(d-before) < 0.5*before {
 			break
 		}
 	}
