@@ -52,14 +52,14 @@ func (q *posterior) adapt(pool proposals, count int) []plantAt {
 	pool = pool.and(proposals{[]plantAt{optimum}, []float64{optimum.density}})
 	for range lessons {
 		pool = q.around(pool, lessonWidth).propose(roundSize)
-		if effective(pool.shares(1)) < 1.5 { // one place, or none, has it all
+		if pool.effective() < 1.5 { // one place, or none, has it all
 			pool = pool.and(proposals{[]plantAt{optimum}, []float64{pool.top(optimum.density)}})
 		}
 	}
 	kept := roomFor(4 * roundSize)
 	for range mostRounds - lessons {
 		kept = kept.and(q.around(pool, keptWidth).propose(roundSize))
-		if effective(kept.shares(1)) > enoughEffective*float64(count) {
+		if kept.effective() > enoughEffective*float64(count) {
 			break
 		}
 		if !math.IsInf(kept.top(math.Inf(-1)), -1) {
@@ -74,7 +74,8 @@ func (q *posterior) adapt(pool proposals, count int) []plantAt {
 
 // alone is the optimum, so many times.
 func (q *posterior) alone(count int) []plantAt {
-	return slices.Repeat([]plantAt{{p: q.e.eval(q.b.p.eta, false)}}, count)
+	p := q.e.eval(q.b.p.eta, false)
+	return slices.Repeat([]plantAt{{eta: p.eta, gain: p.gain, gg: p.gg}}, count)
 }
 
 // drawn are count places in proportion to their weights, evenly spaced in their sum
@@ -135,6 +136,23 @@ func effective(shares []float64) float64 {
 	return 1 / squares
 }
 
+// effective is that number for the weights as they are.
+func (p proposals) effective() float64 {
+	top := p.top(0)
+	sum, squares := 0.0, 0.0
+	for _, w := range p.weight {
+		if isFinite(w) {
+			share := math.Exp(w - top)
+			sum += share
+			squares += share * share
+		}
+	}
+	if squares == 0 {
+		return 0
+	}
+	return sum * sum / squares
+}
+
 // around lays kernels around the places of a pool. Their width is that of a normal
 // reference (Silverman 1986, from memory) for as many draws as the pool is worth,
 // or wider.
@@ -165,8 +183,8 @@ func (q *posterior) around(pool proposals, wider float64) *kernels {
 		tempered.weight[i] = math.Log(s)
 	}
 	for _, c := range tempered.drawn(kernelCentres, q.rng.Float64()) {
-		k.centres = append(k.centres, c.p.eta)
-		k.seen = append(k.seen, k.units(c.p.eta))
+		k.centres = append(k.centres, c.eta)
+		k.seen = append(k.seen, k.units(c.eta))
 	}
 	return k
 }
@@ -181,7 +199,7 @@ func (q *posterior) covariance(pool proposals, shares []float64) [][]float64 {
 			if s == 0 {
 				continue
 			}
-			eta := pool.at[n].p.eta
+			eta := pool.at[n].eta
 			for i, j := range q.free {
 				if pass == 0 {
 					mean[i] += s * eta[j]

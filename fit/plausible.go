@@ -36,10 +36,11 @@ type posterior struct {
 	rng     *rand.Rand
 }
 
-// plantAt is an eta with the logarithm of its density, up to a constant.
+// plantAt is an eta with its gain, the weighted square of the gain's direction there
+// and the logarithm of its density, up to a constant.
 type plantAt struct {
-	p       point
-	density float64
+	eta               []float64
+	gain, gg, density float64
 }
 
 // plausibleResponse is the part of its final value that a plausible plant's
@@ -77,7 +78,7 @@ func (b *bounded) sketch() *engine {
 	return e
 }
 
-// at evaluates eta.
+// at evaluates eta, and keeps it.
 func (q *posterior) at(eta []float64) plantAt {
 	e, d := q.e, float64(len(q.free))
 	for j := range eta {
@@ -101,7 +102,7 @@ func (q *posterior) at(eta []float64) plantAt {
 	if math.IsNaN(density) {
 		density = math.Inf(-1)
 	}
-	return plantAt{p, density}
+	return plantAt{eta, p.gain, p.gg, density}
 }
 
 // rightSign is the probability that the gain at p has the sign of the estimate: a
@@ -113,22 +114,22 @@ func (q *posterior) rightSign(p point) float64 {
 // plant draws the gain of a place, of the estimate's sign, and returns the whole
 // plant.
 func (q *posterior) plant(w plantAt) draw {
-	g := w.p.gain
+	g := w.gain
 	for range 200 {
 		if q.b.e.gainFix {
 			break
 		}
 		k2 := q.spreads[pickSpread(q.spreads, q.rng.Float64())].gain
 		t := distuv.StudentsT{Sigma: 1, Nu: q.dof, Src: q.rng}.Rand()
-		if g = w.p.gain + t*math.Sqrt(k2*q.s2/w.p.gg); g*q.b.p.gain > 0 {
+		if g = w.gain + t*math.Sqrt(k2*q.s2/w.gg); g*q.b.p.gain > 0 {
 			break
 		}
-		g = w.p.gain
+		g = w.gain
 	}
 	if !isFinite(g) || g == 0 {
 		g = q.b.p.gain
 	}
-	eta := append([]float64(nil), w.p.eta...)
+	eta := append([]float64(nil), w.eta...)
 	if !slices.Contains(q.b.e.held, true) {
 		sort.Sort(sort.Reverse(sort.Float64Slice(eta[:q.b.e.nl])))
 	}

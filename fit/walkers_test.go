@@ -54,7 +54,7 @@ func (q *posterior) sweep(ws []plantAt) {
 			z := (1 + u) * (1 + u) / 2 // density ∝ 1/√z on [1/2, 2]
 			eta := append([]float64(nil), q.b.p.eta...)
 			for _, j := range q.free {
-				eta[j] = other.p.eta[j] + z*(ws[k].p.eta[j]-other.p.eta[j])
+				eta[j] = other.eta[j] + z*(ws[k].eta[j]-other.eta[j])
 			}
 			accept := q.rng.Float64()
 			next := q.at(eta)
