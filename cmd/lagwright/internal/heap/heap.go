@@ -8,6 +8,8 @@ import (
 	"runtime"
 	"runtime/debug"
 	"sync"
+
+	"lagwright/cmd/lagwright/internal/pages"
 )
 
 // room is how much memory a short command fills, bytes.
@@ -23,12 +25,13 @@ const usualPercent = 100
 var Widen = sync.OnceFunc(widen)
 
 func widen() {
-	largePages(make([]byte, room))
+	before := debug.SetGCPercent(-1) // memory of this size would begin a collection of its own
+	pages.Under(make([]byte, room))
 	runtime.GC() // what was only asked for to have the addresses can be used
-	before := debug.SetGCPercent(4 * usualPercent)
 	if before != usualPercent {
 		debug.SetGCPercent(before)
 		return
 	}
+	debug.SetGCPercent(4 * usualPercent)
 	runtime.AddCleanup(new([64]byte), func(percent int) { debug.SetGCPercent(percent) }, before)
 }
