@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"slices"
 	"sort"
 )
 
@@ -160,7 +161,9 @@ func (e *engine) intervals(p point) point {
 			return point{}, false
 		}
 		e.lower[d], e.upper[d] = a, b
-		q := e.descend(e.moveDeadTime(from, a+frac*(b-a)), scanTol)
+		start := slices.Clone(from)
+		start[d] = a + frac*(b-a)
+		q := e.descend(start, scanTol)
 		if q.s < best.s+worse/12 { // near enough to become the best
 			q = e.descend(q.eta, searchTol)
 		}
@@ -174,7 +177,7 @@ func (e *engine) intervals(p point) point {
 	for _, dir := range []float64{-1, 1} {
 		from, miss := p.eta, 0
 		for k := 1.0; k <= 12 && miss < 2; k++ {
-			q, ok := try(m0+dir*k, 0.5, from)
+			q, ok := try(m0+dir*k, 0.5-0.48*dir, from) // at its end next to the one before
 			if !ok {
 				break
 			}
@@ -187,17 +190,6 @@ func (e *engine) intervals(p point) point {
 		}
 	}
 	return best
-}
-
-// moveDeadTime returns eta with another dead time; the longest lag gives part
-// of what the dead time takes.
-func (e *engine) moveDeadTime(eta []float64, dead float64) []float64 {
-	s := append([]float64(nil), eta...)
-	if e.ng > 0 && !e.held[0] {
-		s[0] = math.Max(s[0]-0.3*(dead-s[e.ng]), 0.3*s[0])
-	}
-	s[e.ng] = dead
-	return s
 }
 
 func (e *engine) samples() int {

@@ -42,6 +42,7 @@ type engine struct {
 type workspace struct {
 	raw   [][]float64 // simulated: response, d/dlag…, d/ddeadtime
 	start [][]float64 // the same for the change at the first row, or free states
+	ahead []float64   // response at a longer dead time
 	g, r  []float64
 	jac   [][]float64 // whitened columns d/deta
 	extra [][]float64 // orthonormal columns of the initial state
@@ -250,6 +251,9 @@ func (e *engine) unity() float64 {
 func (e *engine) simulate(r *record, w *workspace, lags []float64, dead float64, full bool) {
 	if full {
 		r.sim.Sensitivities(w.raw[:e.nl+2], e.st, lags, dead)
+		if dead <= e.lower[e.ng] && !e.held[e.ng] && e.kinked(lags) {
+			e.fromAbove(r, w, lags, dead)
+		}
 	} else {
 		r.sim.Response(w.raw[0], e.st, lags, dead)
 	}

@@ -38,7 +38,7 @@ func (q *profiler) hold(i int, v float64, from point) point {
 	start := q.predict(i, v, from)
 	if i == 0 {
 		e.gainFix, e.gain = true, v
-		return e.descend(start, searchTol)
+		return e.descend(start, q.tol())
 	}
 	j := i - 1
 	if j < e.ng { // the lag stays the j-th longest
@@ -56,8 +56,12 @@ func (q *profiler) hold(i int, v float64, from point) point {
 	start[j] = v
 	e.lower[j], e.upper[j] = v, v
 	e.held[j] = true
-	return e.descend(start, searchTol)
+	return e.descend(start, q.tol())
 }
+
+// tol is what a sum of squares may be off by, relative, for r to be good to a
+// thousandth at 1.
+func (q *profiler) tol() float64 { return math.Max(searchTol, 2e-3*q.s2/q.best.s) }
 
 // predict is where the others will be when parameter i is held at v: on the
 // straight line through the optimum and a nearby solution, or along the

@@ -1,0 +1,34 @@
+package fit
+
+// kinked reports whether the response has a kink in the dead time wherever a change of
+// the input reaches a row: a single element answers at once, and an integrator too.
+func (e *engine) kinked(lags []float64) bool {
+	elements := 0
+	for _, l := range lags {
+		if l > 0 {
+			elements++
+		}
+	}
+	if e.st.Equal() {
+		elements *= e.st.Order()
+	}
+	return elements <= 1
+}
+
+// fromAbove is the derivative of the response with respect to a dead time that cannot
+// become shorter, from responses at longer ones: (-3y(0) + 4y(δ) - y(2δ))/(2δ). The
+// simulator takes the other side of a kink, where the change was made before the row. With
+// a controller that answers every row, that side would explain its noise by the answer.
+func (e *engine) fromAbove(r *record, w *workspace, lags []float64, dead float64) {
+	delta := 1e-3 * r.step
+	y, out := w.raw[0], w.raw[len(w.raw)-1]
+	w.ahead = resize(w.ahead, len(y))
+	r.sim.Response(w.ahead, e.st, lags, dead+delta)
+	for k, v := range w.ahead {
+		out[k] = 4*v - 3*y[k]
+	}
+	r.sim.Response(w.ahead, e.st, lags, dead+2*delta)
+	for k, v := range w.ahead {
+		out[k] = (out[k] - v) / (2 * delta)
+	}
+}
