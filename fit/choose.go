@@ -28,6 +28,7 @@ type outcome struct {
 	yardsticks []*yardstick // of the records
 
 	one, two *fitted // the single lag and the chain of two that settled initial state and drift
+	final    bool    // two is the chain of two that is asked for, too
 }
 
 // plausible is a draw with the structure it is of.
@@ -122,10 +123,14 @@ func find(ctx context.Context, recs []*record, o Options) (*outcome, error) {
 					below, _ := ident.ParseStructure(fmt.Sprintf("chain%d", n))
 					shorter = studies[i].clone().fit(below, shorter)
 				}
-				if st.Order() == 2 {
-					shorter = out.one
+				switch {
+				case st.Order() == 2 && out.final:
+					fits[i] = studies[i].take(out.two)
+				case st.Order() == 2:
+					fits[i] = studies[i].fit(st, out.one)
+				default:
+					fits[i] = studies[i].fit(st, shorter)
 				}
-				fits[i] = studies[i].fit(st, shorter)
 				shorter = fits[i]
 			}
 		})
@@ -342,13 +347,14 @@ func (out *outcome) settle(s *study) error {
 			}
 		}
 	}
+	out.final = len(s.fix) == 0
 	if !s.white {
 		out.two.activate()
 		for i, t := range out.two.tangents() {
 			w := t.bestWalk(shapes[i])
 			s.walks = append(s.walks, t.walkNodes(w))
 			if w.dev < t.judge(shapes[i]).dev-walkBonus {
-				shapes[i] = w.shape
+				shapes[i], out.final = w.shape, false
 			}
 		}
 	}

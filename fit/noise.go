@@ -447,9 +447,14 @@ func (f *filter) applyFollowing(dst, src []float64) {
 // applyAll filters columns in place, four side by side: one recursion alone
 // waits for its own last value most of the time.
 func (f *filter) applyAll(cols [][]float64) {
-	single := f.white || len(f.follow) > 0
-	for !single && len(cols) >= 4 {
-		f.applyFour(cols[0], cols[1], cols[2], cols[3])
+	wanders := len(f.follow) > 0
+	single := f.white || wanders
+	for !f.white && len(cols) >= 4 {
+		if wanders {
+			f.followFour(cols[0], cols[1], cols[2], cols[3])
+		} else {
+			f.applyFour(cols[0], cols[1], cols[2], cols[3])
+		}
 		cols = cols[4:]
 	}
 	if !single && len(cols) >= 2 {
@@ -477,6 +482,22 @@ func (f *filter) applyFour(x0, x1, x2, x3 []float64) {
 		b1 = d*b1 + h*v1
 		b2 = d*b2 + h*v2
 		b3 = d*b3 + h*v3
+	}
+}
+
+// followFour is applyFour for noise that wanders.
+func (f *filter) followFour(x0, x1, x2, x3 []float64) {
+	n := len(x0)
+	decay, a2, g, isd, follow := f.decay[:n], f.a2[:n], f.gain[:n], f.isd[:n], f.follow[:n]
+	x1, x2, x3 = x1[:n], x2[:n], x3[:n]
+	var c0, c1, c2, c3, b0, b1, b2, b3 float64
+	for k, v0 := range x0 {
+		p, w, d, h, f := a2[k], isd[k], decay[k], g[k], follow[k]
+		v0, v1, v2, v3 := v0-b0, x1[k]-b1, x2[k]-b2, x3[k]-b3
+		e0, e1, e2, e3 := v0-p*c0, v1-p*c1, v2-p*c2, v3-p*c3
+		x0[k], x1[k], x2[k], x3[k] = e0*w, e1*w, e2*w, e3*w
+		c0, c1, c2, c3 = d*c0+h*v0, d*c1+h*v1, d*c2+h*v2, d*c3+h*v3
+		b0, b1, b2, b3 = b0+f*e0, b1+f*e1, b2+f*e2, b3+f*e3
 	}
 }
 

@@ -129,3 +129,31 @@ func TestWhitenerPassesLikeTheFilter(t *testing.T) {
 		}
 	}
 }
+
+// TestColumnsSideBySide holds columns filtered side by side to one filtered alone.
+func TestColumnsSideBySide(t *testing.T) {
+	r := rand.New(rand.NewPCG(5, 2))
+	var rows []ident.Row
+	for k := range 90 {
+		rows = append(rows, ident.Row{T: 0.4 * float64(k), H: 0.1, M: 1 + k%4})
+	}
+	for _, s := range []shape{{tc: 0.5, white: 0.1}, {tc: 0.5, white: 0.1, walk: 0.2}, {tc: 1, white: 1, walk: 0.01}, whiteShape} {
+		var f filter
+		f.set(rows, s)
+		cols, want := columns(7, len(rows)), columns(7, len(rows))
+		for j, c := range cols {
+			for k := range c {
+				c[k] = r.NormFloat64()
+			}
+			f.apply(want[j], c)
+		}
+		f.applyAll(cols)
+		for j, c := range cols {
+			for k, v := range c {
+				if math.Abs(v-want[j][k]) > 1e-12 {
+					t.Fatalf("%+v: row %d of column %d is %g, alone %g", s, k, j, v, want[j][k])
+				}
+			}
+		}
+	}
+}

@@ -93,6 +93,19 @@ func (s *study) fit(st ident.Structure, shorter *fitted) *fitted {
 	return s.fitFrom(e, e.starts(s.tau, s.dead, from))
 }
 
+// take makes a fit of the same log, found before under the noise shapes in force, one of
+// the study's. The dead time may have left its interval with the last change of the shape.
+func (s *study) take(f *fitted) *fitted {
+	s.recs = f.e.recs
+	if q := f.e.intervals(f.p); q.s < f.p.s {
+		f.p = f.e.descend(q.eta, finalTol)
+		s.coincide(f)
+		s.complete(f)
+		s.score(f)
+	}
+	return f
+}
+
 // survey averages the records for the search among structures: the single lag
 // has the longest dead time of all, being late for all the lags it lacks.
 func (s *study) survey() {
