@@ -31,6 +31,7 @@ type bounded struct {
 // optimum turns up on the way.
 func (s *study) bound(f *fitted, level float64, rng *rand.Rand) *bounded {
 	f.activate()
+	defer f.e.release()
 	for range 3 {
 		b, better := s.tryBound(f, level, rng)
 		if better == nil {

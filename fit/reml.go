@@ -2,7 +2,6 @@ package fit
 
 import (
 	"math"
-	"slices"
 
 	"gonum.org/v1/gonum/floats"
 )
@@ -57,13 +56,17 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	t.left = left
 	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
-		t.rest = t.memory.rest[:0]
+		rows := 0
 		for _, c := range r.parts {
-			n := len(t.rest)
-			t.rest = slices.Grow(t.rest, c.hi-c.lo)[:n+c.hi-c.lo]
-			r.residual(t.rest[n:], t.model, c)
+			rows += c.hi - c.lo
 		}
-		t.memory.rest = t.rest
+		t.memory.rest = longColumn(t.memory.rest, rows)
+		t.rest = t.memory.rest
+		rows = 0
+		for _, c := range r.parts {
+			r.residual(t.rest[rows:rows+c.hi-c.lo], t.model, c)
+			rows += c.hi - c.lo
+		}
 	}
 	var kept [][]float64 // of linear
 	for _, c := range linear {
@@ -346,7 +349,8 @@ func (t *tangent) fixedMargins(s2, dof float64) []margin {
 // the number of rows).
 func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
 	m := t.memory
-	m.spare = append(m.spare[:0], t.rest...)
+	m.spare = longColumn(m.spare, len(t.rest))
+	copy(m.spare, t.rest)
 	w := t.rec.whitener(s)
 	left := m.spare
 	for _, c := range t.rec.parts {

@@ -12,7 +12,8 @@ func (out *outcome) residuals(b *bounded, m *Model) {
 	for _, f := range figures {
 		count += len(f.white)
 	}
-	whitened := make([]float64, 0, count)
+	whitened := longColumn(nil, count)[:0]
+	defer func() { giveBack(whitened) }()
 	for i, f := range figures {
 		r, c := b.e.recs[i], out.yardstick(i)
 		n := len(r.root.t)

@@ -133,6 +133,7 @@ func (s *study) fitFrom(e *engine, starts [][]float64) *fitted {
 	if st.Order() == 1 {
 		s.tau, s.dead = f.p.eta[0], f.p.eta[1]
 	}
+	f.e.release()
 	return f
 }
 
