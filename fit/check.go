@@ -198,7 +198,43 @@ func quickFit(ctx context.Context, run *data.Run, o Options) (*Card, error) {
 	if err != nil || m.AICc < one.Models[0].AICc-2 {
 		return warned(two, found, err)
 	}
+	if m.AICc < one.Models[0].AICc+alikeBy {
+		one.reachOver(two)
+	}
 	return warned(one, foundOne, nil)
+}
+
+// alikeBy is the difference in AICc up to which the second structure of a quick fit
+// counts beside the first, as in the gain's interval of a whole fit.
+const alikeBy = 4
+
+// reachOver widens the bounds of the gain, the dead time and what is derived over those
+// of another quick card: which of the two structures the heater has is not known.
+func (c *Card) reachOver(other *Card) {
+	widen := func(low, high **float64, otherLow, otherHigh *float64) {
+		if *low == nil || otherLow == nil || *otherLow < **low {
+			*low = otherLow
+		}
+		if *high == nil || otherHigh == nil || *otherHigh > **high {
+			*high = otherHigh
+		}
+	}
+	for i := range c.Models[0].Parameters {
+		p := &c.Models[0].Parameters[i]
+		for _, q := range other.Models[0].Parameters {
+			if q.Name == p.Name && !p.Fixed && (p.Name == "gain" || p.Name == "dead_time") {
+				widen(&p.Low, &p.High, q.Low, q.High)
+			}
+		}
+	}
+	for i := range c.Derived {
+		d := &c.Derived[i]
+		for _, q := range other.Derived {
+			if q.Name == d.Name {
+				widen(&d.Low, &d.High, q.Low, q.High)
+			}
+		}
+	}
 }
 
 // warned adds the warnings to a quick card of one log.

@@ -283,3 +283,28 @@ func BenchmarkCheck(b *testing.B) {
 		})
 	}
 }
+
+// TestQuickFitOwnsUpToTwoStructures: of a slow heater whose bump is cut short a single lag
+// will do, and its dead time is not the heater's.
+func TestQuickFitOwnsUpToTwoStructures(t *testing.T) {
+	log := bumpLog{structure: "chain2", gain: 9, lags: []float64{180, 25}, dead: 12, n: 200, every: 2, steps: []step{{0, 3}, {90, 5}}, sd: 0.5}
+	missed, single := 0, 0
+	for seed := range uint64(16) {
+		r, err := Check(t.Context(), log.run(seed), Options{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		if r.Quick.Structure != "fopdt" {
+			continue
+		}
+		single++
+		for _, p := range r.Quick.Parameters {
+			if p.Name == "dead_time" && (p.Low != nil && *p.Low > log.dead || p.High != nil && *p.High < log.dead) {
+				missed++
+			}
+		}
+	}
+	if single < 3 || missed > single/4 {
+		t.Errorf("of %d logs taken for a single lag the dead time's interval misses in %d", single, missed)
+	}
+}

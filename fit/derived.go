@@ -18,13 +18,18 @@ func (out *outcome) derived() []Derived {
 	unit := out.gainUnit(st)
 	var list []Derived
 	eta := b.eta()
+	dead := out.deadTime(b).value
+	instant, within := rng(out.opt.Rand, "instant", 1), 0.0 // of a bump, before its row
+	if out.opt.BumpInstant == "unknown" && !b.est[len(b.est)-1].fixed {
+		within = out.longestStep()
+	}
 	add := func(name, unit string, f func(gain float64, elements []float64, dead float64) float64) {
-		best := f(b.est[0].value, elements(st, eta), eta[len(eta)-1])
+		best := f(b.est[0].value, elements(st, eta), dead)
 		d := Derived{Name: name, Unit: unit, Value: best}
 		var v []float64
 		for _, p := range out.draws {
 			if p.st.Integrating() == st.Integrating() {
-				v = append(v, f(p.gain, elements(p.st, p.eta), p.eta[len(p.eta)-1]))
+				v = append(v, f(p.gain, elements(p.st, p.eta), p.eta[len(p.eta)-1]+within*instant.Float64()))
 			}
 		}
 		if len(v) >= 40 {
