@@ -33,6 +33,9 @@ func (t *tuning) cautions(g *Gains) []string {
 		c = append(c, fmt.Sprintf("P control leaves an offset: a setpoint step of %s ends %s away from the setpoint, on the best fit.",
 			quantity(*g.Requirement.SetpointStep, unit, 2), quantity(math.Abs(*n.SteadyOffset), unit, 2)))
 	}
+	if words := g.betweenScans(); words != "" {
+		c = append(c, words)
+	}
 	c = append(c, t.inFahrenheit(g)...)
 	c = append(c, fit.CautionCutOut, fit.CautionSheath, CautionStart)
 	for _, o := range t.ops {
@@ -70,6 +73,28 @@ func (t *tuning) cautions(g *Gains) []string {
 		}
 	}
 	return append(c, fit.CautionCodes)
+}
+
+// longScan is the part of the settling time from which a scan more or less is
+// worth a word.
+const longScan = 0.05
+
+// betweenScans says that settling is counted from a setpoint moved at a scan,
+// where the scan is long against the settling time found or asked.
+func (g *Gains) betweenScans() string {
+	shortest := math.Inf(1)
+	if q := g.Requirement.Settling; q != nil {
+		shortest = *q
+	}
+	for _, m := range []*Metrics{g.Worst, g.Nominal} {
+		if m != nil && m.Settling != nil {
+			shortest = min(shortest, *m.Settling)
+		}
+	}
+	if g.Scan <= longScan*shortest || math.IsInf(shortest, 1) {
+		return ""
+	}
+	return fmt.Sprintf("Settling is counted from a setpoint moved at a scan; moved between scans it may take up to %s longer.", duration(g.Scan, 3))
 }
 
 // inFahrenheit gives the gain in the degrees of a log in °F.

@@ -29,6 +29,7 @@ type Controller struct {
 	limits          bool    // whether any of these binds
 	low, high, slew float64 // slew per step
 	quantum         float64 // resolution of the output, 0 when none
+	touched         bool    // whether any of these has changed an output
 
 	i, yf, y, slope, e float64 // integral, filtered and raw temperature, dyf/dt, r − yf
 	u                  float64 // last output
@@ -115,6 +116,7 @@ func (c *Controller) Next(r, y float64) float64 {
 	u := want + add
 	if c.limits {
 		u = c.limited(u)
+		c.touched = c.touched || u != want+add
 	}
 	if push := want + add - u; push*add <= 0 || c.quantum > 0 && math.Abs(push) <= c.quantum {
 		c.i += add

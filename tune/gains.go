@@ -31,6 +31,7 @@ type Gains struct {
 	Meets        bool     `json:"meets"`
 	ShareMeeting float64  `json:"share_meeting"`         // of several cards, on the worst
 	ShareError   float64  `json:"share_error,omitempty"` // its sampling error, one standard deviation
+	SmallStep    bool     `json:"small_step,omitempty"`  // the input is limited, and a step that no limit touches must meet overshoot and settling too
 	Reasons      []string `json:"reasons"`               // what fails and by how much
 	Cures        []string `json:"cures,omitempty"`       // changes that would let it hold, sized
 	Cautions     []string `json:"cautions"`

@@ -6,7 +6,6 @@ import (
 	"regexp"
 	"strconv"
 	"strings"
-	"time"
 )
 
 // WrittenOut tells gains written out, as [ParseGains] reads them, from the
@@ -192,18 +191,6 @@ func timeInto(to **float64, text string) error {
 	v, err := timeOf(text)
 	*to = &v
 	return err
-}
-
-// timeOf reads 45s, 250ms, 2m as seconds.
-func timeOf(text string) (float64, error) {
-	d, err := time.ParseDuration(strings.ReplaceAll(text, " ", ""))
-	if _, bare := strconv.ParseFloat(text, 64); err != nil && bare == nil {
-		return 0, fmt.Errorf("%s has no unit: write %ss, %sms or %sm", text, text, text, text)
-	}
-	if err != nil {
-		return 0, fmt.Errorf("%q is no time: write it as 45s, 250ms or 2m", text)
-	}
-	return d.Seconds(), nil
 }
 
 // InWords says the gains in one line, with what stands where nothing was given.

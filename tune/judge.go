@@ -16,6 +16,7 @@ type task struct {
 	peakTemp  float64 // highest temperature allowed above the operating point
 	step      float64 // of the setpoint
 	limits    Limits
+	limited   bool // whether the requirement limits the input, see smallToo
 	curve     curve
 	scan      float64
 }
@@ -45,6 +46,7 @@ func newTask(q Requirement, input, temperature float64) task {
 		return &x
 	}
 	t.limits = Limits{Min: shifted(q.InputMin), Max: shifted(q.InputMax), Rate: q.InputRate}
+	t.limited = t.limits != Limits{}
 	return t
 }
 
@@ -58,8 +60,9 @@ type outcome struct {
 	stable      bool
 	quick       quickFigures
 	step        stepFigures
-	violation   float64 // of the requirement that is missed most, in parts of its limit; ≤ 0 when all hold
-	missed      string  // its name
+	small       *stepFigures // of a step that no limit touches, nil where it was not judged apart, see steps
+	violation   float64      // of the requirement that is missed most, in parts of its limit; ≤ 0 when all hold
+	missed      string       // its name
 	dampingHeld bool
 }
 
@@ -91,16 +94,11 @@ func (t *task) meets(s *scenario, c law) bool {
 	if !t.simulates() {
 		return true
 	}
-	fig, err := t.setpoint(s, c, &l, f, searchStep, t.settling)
-	return err == nil && t.stepViolation(fig) <= hair
+	j, err := t.steps(s, c, &l, f, stepTerms{searchStep, t.settling, hair})
+	return err == nil && j.violation <= hair
 }
 
-// stepViolation is the worst violation seen in a setpoint step.
-func (t *task) stepViolation(f stepFigures) float64 {
-	worst, _ := t.worstOf(f)
-	return worst
-}
-
+// worstOf is the worst violation seen in a setpoint step.
 func (t *task) worstOf(f stepFigures) (violation float64, name string) {
 	violation = math.Inf(-1)
 	note := func(v float64, what string) {
@@ -129,22 +127,6 @@ func (t *task) worstOf(f stepFigures) (violation float64, name string) {
 		note((top-t.peakTemp)/max(math.Abs(t.peakTemp), 1e-9), "temperature")
 	}
 	return violation, name
-}
-
-// setpoint runs the setpoint step of the task; it gives up when the
-// temperature is outside the band after deadline.
-func (t *task) setpoint(s *scenario, c law, l *openLoop, f quickFigures, fine, deadline float64) (stepFigures, error) {
-	plan := l.planAt(f.crossover, fine)
-	plan.deadline = deadline
-	plan.rest = min(1e-3, t.band/10)
-	if fine < searchStep {
-		plan.rest /= 20
-	}
-	sim, err := s.loop(c, plan.step)
-	if err != nil {
-		return stepFigures{}, err
-	}
-	return setpointStep(sim.under(c, t.limits).through(t.curve), s.p, c, t.step, t.band, plan), nil
 }
 
 // load runs a unit load step, limits aside. Its figures are per unit of a small
@@ -187,13 +169,14 @@ func (t *task) judge(s *scenario, c law, fine float64) outcome {
 			note(0, "damping")
 		}
 	}
-	var err error
-	if o.step, err = t.setpoint(s, c, &l, o.quick, fine, patience*t.settling); err != nil {
+	j, err := t.steps(s, c, &l, o.quick, stepTerms{fine, patience * t.settling, math.Inf(1)})
+	o.step, o.small = j.asked, j.small
+	if err != nil {
 		o.violation, o.missed = 1000, "simulation"
 		return o
 	}
-	if v, what := t.worstOf(o.step); v > hair || v > o.violation {
-		note(v, what)
+	if j.violation > hair || j.violation > o.violation {
+		note(j.violation, j.missed)
 	}
 	return o
 }
@@ -231,11 +214,11 @@ func (t *task) violation(s *scenario, c law, bound float64) float64 {
 		if !math.IsInf(deadline, 1) {
 			deadline *= min(patience, 1+bound)
 		}
-		fig, err := t.setpoint(s, c, &l, f, searchStep, deadline)
+		j, err := t.steps(s, c, &l, f, stepTerms{searchStep, deadline, bound})
 		if err != nil {
 			return 1000
 		}
-		if v := t.stepViolation(fig); v > hair || v > worst {
+		if v := j.violation; v > hair || v > worst {
 			worst = max(worst, v)
 		}
 	}

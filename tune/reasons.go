@@ -33,6 +33,16 @@ func (t *tuning) reasons(r row) []string {
 	over("Ms", in(""), func(i int) float64 { return r.out[i].quick.ms }, q.Ms)
 	over("settling time", func(v float64) string { return duration(v, 3) }, func(i int) float64 { return r.out[i].step.settling }, q.Settling)
 	over("overshoot", in("%"), func(i int) float64 { return 100 * r.out[i].step.overshoot }, q.Overshoot)
+	small := func(figure func(f *stepFigures) float64) func(i int) float64 {
+		return func(i int) float64 {
+			if f := r.out[i].small; f != nil {
+				return figure(f)
+			}
+			return 0 // said of the step asked for
+		}
+	}
+	over("settling time of a small step that no limit touches", func(v float64) string { return duration(v, 3) }, small(func(f *stepFigures) float64 { return f.settling }), q.Settling)
+	over("overshoot of a small step that no limit touches", in("%"), small(func(f *stepFigures) float64 { return 100 * f.overshoot }), q.Overshoot)
 	if card, damped := r.on.leastShare(func(i int) bool { return r.out[i].dampingHeld }); q.Damping != nil && damped < share {
 		say(card, "damping ratio: %.3g is held on %s of the plausible plants only", *q.Damping, percent(damped))
 	}
@@ -73,7 +83,7 @@ func (r row) binding() (words string, card int) {
 	most := 0.0
 	for _, b := range []struct{ name, words string }{
 		{"stability", "stability"}, {"ms", "Ms"}, {"damping", "the damping ratio"}, {"overshoot", "the overshoot"},
-		{"settling", "settling time"}, {"temperature", "the temperature ceiling"}, {"input", "the input"},
+		{"settling", "settling time"}, {smallOvershoot, "the overshoot of small steps"}, {smallSettling, "the settling time of small steps"}, {"temperature", "the temperature ceiling"}, {"input", "the input"},
 	} {
 		if k, share := r.misses(b.name); share > most {
 			words, card, most = b.words, k, share

@@ -18,6 +18,7 @@ type stepFigures struct {
 	final     float64 // temperature it comes to
 	offset    float64 // r − final
 	short     float64 // input that the step needs beyond a limit, as a part of what the limit leaves; 0 where it is within reach
+	touched   bool    // whether a limit kept the output from what the controller wanted
 }
 
 // maxSamples bounds a run that does not come to rest.
@@ -221,6 +222,7 @@ func setpointStep(s *loopSim, p ident.Plant, c law, r, band float64, plan runPla
 	w.direction = math.Copysign(1, target)
 	s.run(r, 0, w.see)
 	f := w.stepFigures
+	f.touched = s.control.touched
 	f.settling = math.NaN()
 	if d := math.Abs(w.last.y - target); end == target && d <= w.band && w.last.t-w.outside > plan.quiet/2 {
 		f.settling = w.outside

@@ -156,6 +156,9 @@ func (g *Gains) writeJudgement(b *bufio.Writer) {
 	}
 	fmt.Fprintf(b, "\nThis %s the requirement (%s)%s: it holds on %s; asked %s%s.\n",
 		verdict, g.Requirement.Words(g.Units), g.offsetWords(), g.countedOn(), percent(g.Assurance), g.scatter())
+	if g.Meets && g.SmallStep {
+		fmt.Fprintln(b, "It holds for small setpoint steps too, those that no limit of the input touches.")
+	}
 	for _, r := range g.Reasons {
 		fmt.Fprintln(b, "  -", plain(r))
 	}

@@ -430,6 +430,7 @@ func (t *tuning) gains(ctx context.Context, r row) (*Gains, error) {
 	}
 	g.Nominal, g.Worst, g.WorstOver, g.Assurance = r.nominal, r.worst, r.worstOver, t.options.Assurance
 	g.Meets, g.ShareMeeting, g.ShareError = t.meets(r), r.share, t.shareError(r)
+	g.SmallStep = t.plausible.scenarios[0].task.smallToo()
 	g.OperatingInput = finite(o.input)
 	g.Reasons = []string{}
 	if !g.Meets {
