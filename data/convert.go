@@ -23,6 +23,7 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 			return fmt.Errorf("column %q holds words such as ON and OFF, which are read as 100 and 0 %%: instead of --input-unit %s say what 0 and 100 %% are, such as --input-span 0..230V",
 				info.label(roleInput), o.InputUnit)
 		}
+		r.noteUnit(info, roleInput, unit, "--input-unit "+o.InputUnit)
 	}
 	if unit != "" {
 		if err := refuseFactor(info.label(roleInput), roleInput, o.InputUnit != "" || o.InputSpan != nil); err != nil {
@@ -62,10 +63,30 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 	return nil
 }
 
+// noteUnit says that a flag gives a column another unit than the file does.
+func (r *rows) noteUnit(info *reading, x role, given, flag string) {
+	if own := info.unit(x); own != "" && own != given {
+		r.notes = append(r.notes, Note{Code: "unit-named-otherwise",
+			Text: fmt.Sprintf("column %q is in %s as the file has it, and read in %s because of %s", info.label(x), spokenUnit(own), spokenUnit(given), flag)})
+	}
+}
+
+// spokenUnit is a unit as people write it.
+func spokenUnit(unit string) string {
+	switch unit {
+	case "degC":
+		return "°C"
+	case "degF":
+		return "°F"
+	}
+	return unit
+}
+
 func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {
 	unit := info.unit(roleTemp)
 	if o.TempUnit != "" {
 		unit = unitOption(o.TempUnit)
+		r.noteUnit(info, roleTemp, unit, "--temp-unit "+o.TempUnit)
 	}
 	y := r.v[roleTemp]
 	if unit != "" {
