@@ -45,7 +45,7 @@ var tableQuirks = []quirk{
 
 	// the wrong way round
 	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V"}, wrong: `column "outlet_degC" is named as the input and column "drive_V" as the temperature, but their names or units say the reverse: change over --input-col and --temp-col, or, if it is meant, say the units with --input-unit and --temp-unit`},
-	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V", InputUnit: "%", TempUnit: "C"}, u: baseY, y: baseU, input: "%", notes: []string{"unit-named-otherwise", "unit-named-otherwise"}},
+	{file: "comma.csv", o: Options{InputCol: "outlet_degC", TempCol: "drive_V", InputUnit: "%", TempUnit: "C"}, u: baseY, y: baseU, input: "%", notes: []string{"unit-named-otherwise"}},
 	{file: "setpoint-as-temperature.csv", o: Options{TempCol: "setpoint_degC"}, y: ramp(8, func(int) float64 { return 60 }), notes: []string{"column-named-otherwise"}},
 	{file: "columns-look-swapped.csv", t: ramp(40, half), u: swappedU, y: swappedY, input: "unit", temp: "unit", notes: []string{"input-unit-unknown", "unit-unknown", "columns-look-swapped"}},
 	{file: "coarse-closed-loop.csv", t: ramp(40, half), u: ramp(40, func(i int) float64 { return math.Round(100*(5+2*math.Sin(float64(i)/9))+float64(i)) / 100 }),
