@@ -103,6 +103,10 @@ func (p *plan) testController(b *BackTest, run *data.Run, courses []*course) (ok
 	if err != nil {
 		return false, err
 	}
+	wild := p.wild(courses, asked)
+	if wild {
+		asked = nearness{row: inputTolerance * inputRange(courses)}
+	}
 	m, err := p.compareInputs(p.logged, courses, asked)
 	if err != nil {
 		return false, err
@@ -111,6 +115,10 @@ func (p *plan) testController(b *BackTest, run *data.Run, courses []*course) (ok
 	b.InputRMSE, b.TempRMSE = finite(m.rmsU), finite(m.rmsY)
 	if m.near >= p.options.Confidence {
 		return true, nil
+	}
+	if wild {
+		b.Differs = append(b.Differs, p.wildWords(m))
+		return false, nil
 	}
 	within := "within " + quantity(asked.row, p.units.input)
 	if m.inMean {
@@ -121,6 +129,33 @@ func (p *plan) testController(b *BackTest, run *data.Run, courses []*course) (ok
 	hint, err := p.controllerHint(courses, asked)
 	b.Differs = append(b.Differs, text+"; "+hint)
 	return false, err
+}
+
+// wrongWay tells gains that would heat where they should not.
+func (p *plan) wrongWay(g *tune.Gains) bool {
+	return (g.Kc > 0) != (p.best.Gain*p.law.Slope(p.operatingInput()) > 0)
+}
+
+// wild tells logged gains under which the loop swings up on the best-fit plant.
+// Noise then grows with it, and as a tolerance it would let everything pass; a
+// loop that its limits keep within twice the logged range is told by them.
+func (p *plan) wild(courses []*course, asked nearness) bool {
+	if p.wrongWay(p.logged) {
+		return true
+	}
+	plant := p.best
+	plant.Gain *= p.law.Slope(p.operatingInput())
+	return asked.row > 2*inputRange(courses) && !tune.Analyse(plant, p.logged).Stable
+}
+
+// wildWords say that logged gains cannot be those of the run. How far off they
+// are says nothing: they drive the input as far as its limits let them.
+func (p *plan) wildWords(m match) string {
+	share := fmt.Sprintf("on %.0f%% of the rows the input is not the logged one", 100*(1-m.near))
+	if p.wrongWay(p.logged) {
+		return "these logged gains act the wrong way for this heater, " + share + "; look at their sign and at the controller's action"
+	}
+	return "under these logged gains the loop is unstable on this model, " + share + "; look at the gain and its units, and at the integral time"
 }
 
 // A match says how near the inputs of a replay come to those logged.

@@ -8,7 +8,7 @@ const runaway = -1
 func runawayFigures() figures {
 	inf := math.Inf(1)
 	f := figures{
-		settling: inf, overshoot: inf, iae: inf, deviation: inf, peakTemp: inf,
+		settling: inf, overshoot: inf, iae: inf, deviation: inf, peakTemp: inf, lowTemp: -inf,
 		peakInput: inf, lowInput: -inf, travel: inf, handOver: inf, moves: runaway,
 	}
 	f.noisy.settling, f.noisy.overshoot = inf, inf

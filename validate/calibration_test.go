@@ -270,7 +270,7 @@ func newStudy(t testing.TB, card *fit.Card, log, clean *data.Run, gains *tune.Ga
 // itself meets it.
 func (s studied) ask(r *reliability, asked tune.Requirement) {
 	ds := demands(asked, s.plan.units)
-	stated, _ := judge(ds, s.all, s.plan.loop.misses, s.plan.assurance())
-	met, _ := judge(ds, []figures{s.truth}, []bool{false}, s.plan.assurance())
+	stated, _, _ := judge(ds, s.all, s.plan.loop.misses, s.plan.assurance())
+	met, _, _ := judge(ds, []figures{s.truth}, []bool{false}, s.plan.assurance())
 	r.add(stated, met)
 }

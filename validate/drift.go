@@ -120,7 +120,7 @@ func (d *Drift) WriteText(w io.Writer) error {
 		fmt.Fprintf(&b, "\nwarning: %s\n", text)
 	}
 	for _, f := range d.Failed {
-		fmt.Fprintf(&b, "left out: %s\n", f.words())
+		fmt.Fprintf(&b, "left out: %s\n", f.Words())
 	}
 	if len(d.Cautions) > 0 {
 		b.WriteString("\nCautions\n")

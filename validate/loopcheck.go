@@ -56,7 +56,7 @@ func (p *plan) checkLoop() loopCheck {
 	}
 	r := p.options.Requirement
 	say(count(func(f tune.LoopFigures) bool { return !f.Stable }, true), "the loop is unstable")
-	if (p.gains.Kc > 0) != (p.best.Gain*slope > 0) {
+	if p.wrongWay(p.gains) {
 		c.reasons = append(c.reasons, "the gains act the wrong way for this heater")
 	}
 	if r.Ms != nil {

@@ -42,6 +42,7 @@ type figures struct {
 	iae       float64 // ∫|r − y| dt
 	deviation float64 // largest |r − y| while no setpoint move is being followed
 	peakTemp  float64
+	lowTemp   float64 // the least temperature
 	peakInput float64
 	lowInput  float64 // the least input
 	travel    float64 // Σ|Δu|
@@ -58,14 +59,20 @@ type figures struct {
 
 func noFigures() figures {
 	nan := math.NaN()
-	f := figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, peakInput: nan, lowInput: nan, travel: nan, handOver: nan}
+	f := figures{settling: nan, overshoot: nan, iae: nan, deviation: nan, peakTemp: nan, lowTemp: nan, peakInput: nan, lowInput: nan, travel: nan, handOver: nan}
 	f.noisy.settling, f.noisy.overshoot = nan, nan
 	return f
 }
 
+// endsTooSoon tells that the setpoint moved, but that the record of every move
+// ends before it shows whether the temperature settles in the time asked. A loop
+// that does nothing has no overshoot either: such a run cannot be called good.
+func (f figures) endsTooSoon() bool { return f.cut > 0 && math.IsNaN(f.settling) }
+
 // add measures one unbroken segment and adds it to the figures of the run.
 func (f *figures) add(s signal, m yardstick) {
 	f.peakTemp = larger(f.peakTemp, greatest(s.y))
+	f.lowTemp = -larger(-f.lowTemp, -least(s.y))
 	f.peakInput = larger(f.peakInput, greatest(s.u))
 	f.lowInput = -larger(-f.lowInput, -least(s.u))
 	f.travel = plus(f.travel, travel(s.u))

@@ -43,7 +43,7 @@ type RunReplay struct {
 	// begins at its setpoint, or nearer than noise lets see.
 	HandOver *HandOver `json:"hand_over,omitempty"`
 
-	Judged      bool     `json:"judged"`      // the run shows something that the requirement asks for
+	Judged      bool     `json:"judged"`      // the run shows what the requirement asks for; false where nothing fails but its record ends too early, or the back-test speaks against the model
 	Meets       bool     `json:"meets"`       // probability not below the assurance of the gains by more than twice its sampling error; false when nothing could be judged
 	Probability float64  `json:"probability"` // share of plausible plants on which it meets
 	Reasons     []string `json:"reasons"`

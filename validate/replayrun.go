@@ -33,16 +33,16 @@ func (p *plan) replayRun(ctx context.Context, run *data.Run, runners []*runner) 
 	if err != nil {
 		return out, err
 	}
+	if p.logged != nil {
+		if out.BackTest, err = p.backTest(ctx, run, courses); err != nil {
+			return out, err
+		}
+	}
 	p.conclude(&out, run, e)
 	out.Logged, out.HandOver = logged.metrics(), handOverOf(courses, e.figures, logged)
 	out.Warnings = append(append(out.Warnings, warnings...), p.warnings(run, courses, e, out.HandOver)...)
 	if p.traces {
 		out.Trace = e.trace(courses, p.options.Confidence)
-	}
-	if p.logged != nil {
-		if out.BackTest, err = p.backTest(ctx, run, courses); err != nil {
-			return out, err
-		}
 	}
 	return out, nil
 }
@@ -208,49 +208,4 @@ func (e *ensemble) choose(p *plan, courses []*course) error {
 	e.y = make([]float64, kept*len(p.plants))
 	e.u = make([]float64, kept*len(p.plants))
 	return nil
-}
-
-// conclude writes metrics with their bands, and the verdict. A run in which no
-// setpoint was followed is judged only if the loop itself is not sound.
-func (p *plan) conclude(out *RunReplay, run *data.Run, e *ensemble) {
-	out.Proposed, out.WithNoise = bandMetrics(e.figures, p.options.Confidence), withNoise(e.figures)
-	open, typical := []string{}, p.typical(e.figures)
-	for _, d := range p.asked {
-		if math.IsNaN(d.figure(typical)) {
-			open = append(open, d.name)
-		}
-	}
-	asked, unfollowed := p.asked, p.unfollowed(run)
-	if unfollowed != "" && len(asked) > 0 {
-		asked, open = nil, nil
-		out.Reasons = append(out.Reasons, "not judged: "+unfollowed)
-	}
-	out.Judged = len(open) < len(asked) || p.loop.fails
-	share, reasons := judge(asked, e.figures, p.loop.misses, p.assurance())
-	out.Reasons = append(append(out.Reasons, p.loop.reasons...), reasons...)
-	if len(open) > 0 {
-		out.Reasons = append(out.Reasons, fmt.Sprintf("not judged on this run: %s", list(open)))
-	}
-	if out.Judged || len(p.asked) == 0 {
-		out.Probability = share
-		out.Meets = p.enough(share) && !p.loop.fails
-	}
-	if short := p.assurance() - share; out.Judged && out.Meets && short > 1e-9 {
-		out.Reasons = append(out.Reasons, fmt.Sprintf("%s are asked: short by no more than twice the sampling error of %d plants, which passes", percent(p.assurance()), len(p.plants)))
-	}
-}
-
-// enough tells whether a share of the plants holds the requirement on as many
-// as the assurance asks, as gains are judged when they are tuned.
-func (p *plan) enough(share float64) bool {
-	n := len(p.plants)
-	return (1-share)*float64(n) <= float64(p.allowedMisses(n))+1e-9
-}
-
-// assurance is the share of plants on which a run must meet the requirement.
-func (p *plan) assurance() float64 {
-	if p.gains.Assurance > 0 {
-		return p.gains.Assurance
-	}
-	return 0.95
 }

@@ -27,7 +27,7 @@ func (r *Replay) WriteText(w io.Writer) error {
 			fmt.Fprintf(&b, "and %d more not replayed\n", len(r.Failed)-mostShown)
 			break
 		}
-		fmt.Fprintf(&b, "not replayed: %s\n", f.words())
+		fmt.Fprintf(&b, "not replayed: %s\n", f.Words())
 	}
 	if len(r.Cautions) > 0 {
 		b.WriteString("\nCautions\n")
@@ -44,6 +44,8 @@ func (r *Replay) writeHead(b *strings.Builder) {
 	switch open := s.Runs - s.Judged; {
 	case r.Requirement.Words(r.Gains.Units) == "none" && r.RunLimits == (RunLimits{}):
 		fmt.Fprintf(b, "%s replayed on %d plausible plants; no requirement was given to judge by", counted(s.Runs, "run"), r.Plants)
+	case s.Judged == 0 && slices.ContainsFunc(r.Runs, func(run RunReplay) bool { return run.Undecided() }):
+		fmt.Fprintf(b, "not judged: %s, replayed on %d plausible plants", counted(open, "run"), r.Plants)
 	case s.Judged == 0:
 		fmt.Fprintf(b, "nothing of the requirement shows in %s, replayed on %d plausible plants", counted(open, "run"), r.Plants)
 	case open > 0:
@@ -227,8 +229,8 @@ func (r *RunReplay) writeNotes(b *strings.Builder) {
 	}
 }
 
-// words name the file once.
-func (f FailedRun) words() string {
+// Words name the file once.
+func (f FailedRun) Words() string {
 	if strings.HasPrefix(f.Reason, f.File) {
 		return clean(f.Reason)
 	}

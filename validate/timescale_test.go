@@ -94,7 +94,7 @@ func TestSidesTold(t *testing.T) {
 	for i := range 200 {
 		all = append(all, figures{settling: 80 + float64(i)*0.2})
 	}
-	_, reasons := judge([]demand{d}, all, make([]bool, len(all)), 0.95)
+	_, _, reasons := judge([]demand{d}, all, make([]bool, len(all)), 0.95)
 	if run := (&RunReplay{Reasons: reasons}); !run.OneSided() {
 		t.Errorf("%q is not told as one-sided", reasons)
 	}

@@ -54,11 +54,12 @@ func (d demand) fails(f figures) bool {
 	return d.figure(f) > d.limit+slack*max(1, math.Abs(d.limit)) // false for NaN
 }
 
-// judge returns the share of plants on which a run meets every demand, and
-// for each demand that fails on some plant a sentence with its numbers. A
-// plant whose loop misses what is asked of it meets nothing. assurance is the
-// share that is asked.
-func judge(ds []demand, all []figures, misses []bool, assurance float64) (share float64, reasons []string) {
+// judge returns the share of plants on which a run fails no demand, the share
+// of those among them on which it is open whether it meets them all, and for
+// each demand that fails on some plant a sentence with its numbers. A plant
+// whose loop misses what is asked of it meets nothing. assurance is the share
+// that is asked.
+func judge(ds []demand, all []figures, misses []bool, assurance float64) (share, open float64, reasons []string) {
 	failing := slices.Clone(misses)
 	for k, f := range all {
 		failing[k] = failing[k] || f.moves == runaway
@@ -75,13 +76,18 @@ func judge(ds []demand, all []figures, misses []bool, assurance float64) (share 
 			reasons = append(reasons, d.reason(all, count, assurance))
 		}
 	}
-	meeting := 0
-	for _, failed := range failing {
-		if !failed {
-			meeting++
+	meeting, unseen := 0, 0
+	for k, failed := range failing {
+		if failed {
+			continue
+		}
+		meeting++
+		if len(ds) > 0 && all[k].endsTooSoon() {
+			unseen++
 		}
 	}
-	return float64(meeting) / float64(len(all)), reasons
+	n := float64(len(all))
+	return float64(meeting) / n, float64(unseen) / n, reasons
 }
 
 // upToWords begin the figure that a share of the plants stays below.

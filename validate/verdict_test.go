@@ -68,7 +68,7 @@ func TestReason(t *testing.T) {
 		{"a few never settle", from(never(20)...), 179. / 199, "settling 45 s (not reached on 20 plants) where at most 50 s is asked: fails on 20 of 199 plausible plants"},
 		{"most never settle", from(never(120)...), 79. / 199, "settling not reached where at most 50 s is asked: fails on 120 of 199 plausible plants"},
 	} {
-		share, reasons := judge([]demand{settling}, c.all, make([]bool, 199), 0.95)
+		share, _, reasons := judge([]demand{settling}, c.all, make([]bool, 199), 0.95)
 		if math.Abs(share-c.share) > 1e-12 || len(reasons) != 1 || reasons[0] != c.want {
 			t.Errorf("%s: share %g, want %g; %q, want %q", c.name, share, c.share, reasons, c.want)
 		}

@@ -100,7 +100,7 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, args []str
 	if err != nil {
 		return err
 	}
-	files, err := o.log.expand(logs)
+	files, err := o.files(logs)
 	if err != nil {
 		return err
 	}
@@ -149,6 +149,24 @@ func splitCards(args []string) (cards, logs []string, err error) {
 	return nil, nil, usageErrorf("no log among the arguments: lagwright validate card.json runs/ --gains gains.json")
 }
 
+// files lists the logs. A file that is not there stays in the list, so that it
+// is named with the others that cannot be read and does not stop the rest.
+func (o *validateOptions) files(args []string) ([]string, error) {
+	var out []string
+	for _, arg := range args {
+		if _, err := os.Stat(arg); errors.Is(err, fs.ErrNotExist) && !strings.ContainsAny(arg, "*?[") {
+			out = append(out, arg)
+			continue
+		}
+		files, err := o.log.expand([]string{arg})
+		if err != nil {
+			return nil, err
+		}
+		out = append(out, files...)
+	}
+	return out, nil
+}
+
 // replay replays all files with one card and one set of gains.
 func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gainsPath string, files []string, journal bool) (*validate.Replay, error) {
 	card, err := c.readCard(cardPath)
@@ -182,7 +200,7 @@ func (o *validateOptions) replay(ctx context.Context, c *console, cardPath, gain
 		return nil, inputError{err}
 	}
 	if len(replay.Runs) == 0 && len(replay.Failed) > 0 {
-		return nil, inputErrorf("none of %s can be replayed: %s: %s", format.Count(len(replay.Failed), "log", "logs"), replay.Failed[0].File, replay.Failed[0].Reason)
+		return nil, inputErrorf("none of %s can be replayed: %s", format.Count(len(replay.Failed), "log", "logs"), replay.Failed[0].Words())
 	}
 	return replay, nil
 }
@@ -302,13 +320,19 @@ func worstRun(r *validate.Replay) *validate.RunReplay {
 }
 
 // replayVerdict is nil where every judged run meets the requirement; where none
-// could be judged, where the gains were tuned to it and meet it.
+// could be judged since none shows it, where the gains were tuned to it and meet
+// it. A run that should show it and does not is no such run.
 func replayVerdict(r *validate.Replay) error {
 	s := r.Summary
 	if s.Meets {
 		return nil
 	}
 	worst := worstRun(r)
+	for i := range r.Runs {
+		if run := &r.Runs[i]; worst == nil && run.Undecided() {
+			return answerNof("no run could be judged; %s: %s", run.File, strings.Join(run.Reasons, "; "))
+		}
+	}
 	if worst == nil && r.RunLimits == (validate.RunLimits{}) && r.Gains.Meets && reflect.DeepEqual(r.Gains.Requirement, r.Requirement) {
 		return nil
 	}

@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
@@ -96,6 +97,11 @@ func reproduced(r *validate.Replay) bool {
 	return true
 }
 
+// undecided tells whether a run that should show the requirement could not be judged.
+func undecided(r *validate.Replay) bool {
+	return slices.ContainsFunc(r.Runs, func(run validate.RunReplay) bool { return run.Undecided() })
+}
+
 // unproven names the side that past runs speak against: the model, which every
 // replay rests on, or only the gains said to be in force then.
 func unproven(r *validate.Replay) string {
@@ -135,6 +141,8 @@ func replayPhrase(r *validate.Replay) string {
 	n := r.Summary
 	s := fmt.Sprintf("Replayed on %s: ", format.Count(n.Runs, "past run", "past runs"))
 	switch {
+	case n.Judged == 0 && undecided(r):
+		s += "the requirement could not be judged"
 	case n.Judged == 0 && n.Runs == 1:
 		s += "it shows nothing that the requirement asks for"
 	case n.Judged == 0:
@@ -176,12 +184,12 @@ func replayAnswer(b *Bundle) answer {
 		Sure:       []string{"Asked: " + requirementWords(r.Requirement, r.Gains.Units) + ".", replayPhrase(r)},
 	}
 	switch {
-	case r.Summary.Judged == 0:
+	case r.Summary.Judged == 0 && (reproduced(r) || !undecided(r)):
 		a.Headline = "These runs cannot judge the requirement"
 	case r.Summary.Meets && reproduced(r):
 		a.Headline = "These gains would have met the requirement"
 		a.Verdict = &item{"good", "The requirement holds on every run that can be judged."}
-	case r.Summary.Meets:
+	case r.Summary.Judged == 0 || r.Summary.Meets:
 		a.Headline = "These gains are not proven on past runs"
 		a.Verdict = &item{"bad", sentenceCase(unproven(r)) + "."}
 	default:

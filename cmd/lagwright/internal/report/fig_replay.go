@@ -74,7 +74,10 @@ func replayTime(r *validate.RunReplay) *axis {
 }
 
 func replayFinding(r *validate.RunReplay, g *tune.Gains) string {
-	if !r.Judged {
+	switch {
+	case r.Undecided():
+		return runName(r) + ": the requirement could not be judged on this run."
+	case !r.Judged:
 		return runName(r) + ": this run shows nothing that the requirement asks for."
 	}
 	s := fmt.Sprintf("%s: under the proposed gains the requirement holds on %s of the plausible plants", runName(r), format.Percent(r.Probability))
