@@ -101,14 +101,21 @@ func TestReasonsOfSmallSteps(t *testing.T) {
 	}
 	middle := (c.Range.Input[0] + c.Range.Input[1]) / 2
 	q := Requirement{Overshoot: ptr(5), InputMin: ptr(0), InputMax: ptr(middle + 2), SetpointStep: ptr(1.7 * plant.Gain)}
-	g, err := Tune(context.Background(), []*fit.Card{c}, q, Options{Rule: "zn-step", Controller: "pi", Workers: 2})
-	if err != nil {
-		t.Fatal(err)
+	of := func(c *fit.Card, q Requirement) (*Gains, string) {
+		g, err := Tune(context.Background(), []*fit.Card{c}, q, Options{Rule: "zn-step", Controller: "pi", Workers: 2})
+		if err != nil {
+			t.Fatal(err)
+		}
+		return g, strings.Join(g.Reasons, "\n")
 	}
-	text := strings.Join(g.Reasons, "\n")
+	g, text := of(c, q)
 	for _, want := range []string{"overshoot of a small step that no limit touches: up to", "the limit that binds is the overshoot of small steps"} {
 		if g.Meets || !strings.Contains(text, want) {
 			t.Errorf("%q is not said in:\n%s", want, text)
 		}
+	} // loops that are not stable have no small step to speak of
+	wide := card(t, 3, 0.6)
+	if _, text := of(wide, Requirement{Overshoot: ptr(5), Settling: ptr(100)}); !strings.Contains(text, "stable on") || strings.Contains(text, "small") {
+		t.Errorf("without limits it says\n%s", text)
 	}
 }

@@ -1,6 +1,9 @@
 package tune
 
-import "fmt"
+import (
+	"fmt"
+	"slices"
+)
 
 // reasons says what fails, and by how much, at the share quantile of every
 // figure that is asked for; of several cards, on the worst.
@@ -33,16 +36,19 @@ func (t *tuning) reasons(r row) []string {
 	over("Ms", in(""), func(i int) float64 { return r.out[i].quick.ms }, q.Ms)
 	over("settling time", func(v float64) string { return duration(v, 3) }, func(i int) float64 { return r.out[i].step.settling }, q.Settling)
 	over("overshoot", in("%"), func(i int) float64 { return 100 * r.out[i].step.overshoot }, q.Overshoot)
-	small := func(figure func(f *stepFigures) float64) func(i int) float64 {
-		return func(i int) float64 {
-			if f := r.out[i].small; f != nil {
-				return figure(f)
+	if slices.ContainsFunc(r.out, func(o outcome) bool { return o.small != nil }) {
+		small := func(figure func(f *stepFigures) float64) func(i int) float64 {
+			return func(i int) float64 {
+				if f := r.out[i].small; f != nil {
+					return figure(f)
+				}
+				return 0 // said of the step asked for
 			}
-			return 0 // said of the step asked for
 		}
+		const of = " of a small step that no limit touches"
+		over("settling time"+of, func(v float64) string { return duration(v, 3) }, small(func(f *stepFigures) float64 { return f.settling }), q.Settling)
+		over("overshoot"+of, in("%"), small(func(f *stepFigures) float64 { return 100 * f.overshoot }), q.Overshoot)
 	}
-	over("settling time of a small step that no limit touches", func(v float64) string { return duration(v, 3) }, small(func(f *stepFigures) float64 { return f.settling }), q.Settling)
-	over("overshoot of a small step that no limit touches", in("%"), small(func(f *stepFigures) float64 { return 100 * f.overshoot }), q.Overshoot)
 	if card, damped := r.on.leastShare(func(i int) bool { return r.out[i].dampingHeld }); q.Damping != nil && damped < share {
 		say(card, "damping ratio: %.3g is held on %s of the plausible plants only", *q.Damping, percent(damped))
 	}
