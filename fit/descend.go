@@ -181,6 +181,11 @@ func (e *engine) intervals(p point) point {
 			if !ok {
 				break
 			}
+			if e.samples() <= fewSamples {
+				if other, _ := try(m0+dir*k, 0.5, e.traded(from, (m0+dir*k+0.5)*h)); other.s < q.s {
+					q = other
+				}
+			}
 			if q.s > best.s+worse {
 				miss++
 			} else {
@@ -190,6 +195,19 @@ func (e *engine) intervals(p point) point {
 		}
 	}
 	return best
+}
+
+// fewSamples is the number of rows up to which an interval of dead time is entered in its
+// middle too: few rows leave several optima in one.
+const fewSamples = 60
+
+// traded is eta with the longest lag giving part of what a longer dead time takes.
+func (e *engine) traded(eta []float64, dead float64) []float64 {
+	s := slices.Clone(eta)
+	if e.ng > 0 && !e.held[0] {
+		s[0] = math.Max(s[0]-0.3*(dead-s[e.ng]), 0.3*s[0])
+	}
+	return s
 }
 
 func (e *engine) samples() int {

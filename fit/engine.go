@@ -252,7 +252,7 @@ func (e *engine) simulate(r *record, w *workspace, lags []float64, dead float64,
 	if full {
 		r.sim.Sensitivities(w.raw[:e.nl+2], e.st, lags, dead)
 		if dead <= e.lower[e.ng] && !e.held[e.ng] && e.kinked(lags) {
-			e.fromAbove(r, w, lags, dead)
+			e.fromAbove(r.sim, w, w.raw, lags, dead, r.step)
 		}
 	} else {
 		r.sim.Response(w.raw[0], e.st, lags, dead)
@@ -263,6 +263,9 @@ func (e *engine) simulate(r *record, w *workspace, lags []float64, dead float64,
 	case earlier:
 		if full {
 			r.start.Sensitivities(w.start, e.st, lags, dead)
+			if dead <= e.lower[e.ng] && !e.held[e.ng] && e.kinked(lags) {
+				e.fromAbove(r.start, w, w.start, lags, dead, r.step)
+			}
 		} else {
 			r.start.Response(w.start[0], e.st, lags, dead)
 		}

@@ -23,20 +23,22 @@ func TestDerivativeAtNoDeadTime(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		r := rec.whole()
-		r.model(rest, false)
-		e := newEngine(st, []*record{r})
-		e.gainFix, e.gain = true, 6
-		d := len(c.eta) - 1
-		at := func(dead float64) float64 {
-			eta := append([]float64(nil), c.eta...)
-			eta[d] = dead
-			return e.eval(eta, false).s
-		}
-		const h = 1e-4
-		want := (-3*at(0) + 4*at(h) - at(2*h)) / (2 * h)
-		if got := -2 * e.eval(c.eta, true).grad[d]; math.Abs(got-want) > 1e-5*math.Abs(want)+1e-6 {
-			t.Errorf("%s at %v: slope %.9g, by differences %.9g", c.structure, c.eta, got, want)
+		for _, in := range []initial{rest, earlier, free} {
+			r := rec.whole()
+			r.model(in, false)
+			e := newEngine(st, []*record{r})
+			e.gainFix, e.gain = true, 6
+			d := len(c.eta) - 1
+			at := func(dead float64) float64 {
+				eta := append([]float64(nil), c.eta...)
+				eta[d] = dead
+				return e.eval(eta, false).s
+			}
+			const h = 1e-4
+			want := (-3*at(0) + 4*at(h) - at(2*h)) / (2 * h)
+			if got := -2 * e.eval(c.eta, true).grad[d]; math.Abs(got-want) > 1e-5*math.Abs(want)+1e-6 {
+				t.Errorf("%s, %s at %v: slope %.9g, by differences %.9g", c.structure, in, c.eta, got, want)
+			}
 		}
 	}
 }

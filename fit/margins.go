@@ -68,10 +68,10 @@ func (ms margins) quantile(p float64) float64 {
 	for range 60 {
 		switch {
 		case fl >= 0:
-			lo, hi, fh = lo-(hi-lo), lo, fl
+			lo, hi, fh = lo-2*(hi-lo), lo, fl
 			fl = away(lo)
 		case fh <= 0:
-			lo, hi, fl = hi, hi+(hi-lo), fh
+			lo, hi, fl = hi, hi+2*(hi-lo), fh
 			fh = away(hi)
 		}
 		if fl < 0 && fh > 0 {
@@ -114,7 +114,7 @@ func (ms margins) cdf(x float64) float64 {
 			s += m.weight * studentCDF((x-m.centre)/m.sd, m.dof)
 		}
 	}
-	return s
+	return math.Min(s, 1) // the weights add up to 1 but for their rounding
 }
 
 // studentCDF is the distribution function of Student's t. Above 30 degrees of

@@ -220,7 +220,8 @@ func (k *kalman) again() {
 	k.isd, k.variance = math.Sqrt(inverse), sv
 	// Equal rows bring the filter to a steady state; then its figures repeat. The
 	// walk nears it by a part 2·follow a row, so that what is left of w is 1e-8/(2·follow)
-	// of it, and 1e-8 of the variance of a row.
+	// of it, and 1e-8 of the variance of a row. Without one, what is left of p is 1e-12
+	// over a part that is 1e-3 or more wherever the log can tell the correlation time.
 	settled := 1e-12
 	if k.s.walk > 0 {
 		settled = 1e-10

@@ -368,65 +368,89 @@ func (t *tangent) tcRange() (lo, hi float64) {
 }
 
 // bestShape finds the noise shape without a walk of greatest restricted
-// likelihood: from near where that is known, else from the best of a coarse grid,
-// through parabolas over a lattice that narrows around their lowest points.
+// likelihood: from near where that is known, else, or where that search strays, from the
+// best of a coarse grid.
 func (t *tangent) bestShape(near *shape) node {
-	lo, hi := t.tcRange()
-	best := t.judge(whiteShape)
-	dev := func(tc, w float64) float64 {
-		tc = math.Min(math.Max(tc, lo), hi)
-		w = math.Min(math.Max(w, 0), 0.995)
-		n := t.judge(shape{tc: tc, white: w})
-		if n.dev < best.dev-1e-9 {
-			best = n
-		}
-		return n.dev
-	}
-	da, db := 0.067, 0.025 // of the lattice, in log tc and in white
+	s := &shapeSearch{t: t, best: t.judge(whiteShape)}
+	s.lo, s.hi = t.tcRange()
 	if near != nil && near.white < 1 {
-		dev(near.tc, near.white)
-	} else {
-		da, db = math.Log(hi/lo)/8, 0.12
-		for i := range 9 {
-			for _, w := range []float64{0, 0.3, 0.7, 0.93} {
-				dev(lo*math.Exp(float64(i)*da), w)
-			}
+		s.at(near.tc, near.white)
+		s.narrow(0.067, 0.025)
+		if !s.strayed(*near) {
+			return s.best
 		}
-		da /= 2
 	}
+	da := math.Log(s.hi/s.lo) / 8
+	for i := range 9 {
+		for _, w := range []float64{0, 0.3, 0.7, 0.93} {
+			s.at(s.lo*math.Exp(float64(i)*da), w)
+		}
+	}
+	s.narrow(da/2, 0.12)
+	return s.best
+}
+
+// shapeSearch is a search for the best noise shape.
+type shapeSearch struct {
+	t      *tangent
+	lo, hi float64 // of tc
+	best   node
+}
+
+// at judges a shape and returns its -2L.
+func (s *shapeSearch) at(tc, w float64) float64 {
+	tc = math.Min(math.Max(tc, s.lo), s.hi)
+	w = math.Min(math.Max(w, 0), 0.995)
+	n := s.t.judge(shape{tc: tc, white: w})
+	if n.dev < s.best.dev-1e-9 {
+		s.best = n
+	}
+	return n.dev
+}
+
+// strayed reports whether the best shape lies so far from where the search for it began,
+// or at such an end of its range, that there may be a better one elsewhere.
+func (s *shapeSearch) strayed(from shape) bool {
+	c := s.best.shape
+	return math.Abs(math.Log(c.tc/from.tc)) > 1.5 || c.tc <= 1.01*s.lo || c.tc >= 0.99*s.hi || c.white >= 0.99
+}
+
+// narrow closes in on the lowest -2L around the best shape by parabolas over a lattice, da
+// and db its first steps in log tc and in white. It ends where a parabola told the value
+// that was found, or where the lattice is narrow.
+func (s *shapeSearch) narrow(da, db float64) {
 	looked := false // for a little white
 	for range 40 {
-		c, centre := best.shape, best.dev
+		c, centre := s.best.shape, s.best.dev
 		if c.white >= 1 {
-			c = shape{tc: lo * 3, white: 0.97}
-			centre = dev(c.tc, c.white)
+			c = shape{tc: s.lo * 3, white: 0.97}
+			centre = s.at(c.tc, c.white)
 		}
-		at := func(x, y float64) float64 { return dev(c.tc*math.Exp(x*da), c.white+y*db) }
+		at := func(x, y float64) float64 { return s.at(c.tc*math.Exp(x*da), c.white+y*db) }
 		p, ok := parabola(centre, at)
 		inside := ok && math.Max(math.Abs(p.x), math.Abs(p.y)) <= 1
 		told := ok && math.Abs(at(p.x, p.y)-p.least) < 0.002 && inside
-		far := math.Max(math.Abs(math.Log(best.shape.tc/c.tc))/da, math.Abs(best.shape.white-c.white)/db)
+		far := math.Max(math.Abs(math.Log(s.best.shape.tc/c.tc))/da, math.Abs(s.best.shape.white-c.white)/db)
 		switch {
 		case far > 0.9 && !inside:
 			da, db = math.Min(2*da, 0.6), math.Min(2*db, 0.2)
 		case told, far <= 0.6 && da < 0.1:
-			if looked || best.shape.white > 0 {
-				return best
+			if looked || s.best.shape.white > 0 {
+				return
 			}
 			// Long correlation leaves a valley of little white that a lattice steps over.
 			looked = true
 			for _, w := range []float64{0.03, 0.01, 0.003, 0.001} {
-				dev(best.shape.tc, w)
+				s.at(s.best.shape.tc, w)
 			}
-			if best.shape.white == 0 {
-				return best
+			if s.best.shape.white == 0 {
+				return
 			}
-			da, db = 0.2, best.shape.white/2
+			da, db = 0.2, s.best.shape.white/2
 		case far <= 0.6:
 			da, db = da/3, db/3
 		}
 	}
-	return best
 }
 
 // bowl is the lowest point of a parabola, in steps, and the value there.

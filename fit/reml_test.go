@@ -51,7 +51,7 @@ func TestBestShapeIsTheBest(t *testing.T) {
 					least = math.Min(least, tan.judge(shape{tc: lo * math.Pow(hi/lo, float64(i)/60), white: w}).dev)
 				}
 			}
-			for _, near := range []*shape{nil, {tc: 0.1, white: 0.5}, {tc: 1, white: 0.02}} {
+			for _, near := range []*shape{nil, {tc: 0.1, white: 0.5}, {tc: 1, white: 0.02}, {tc: lo, white: 0.3}, {tc: hi}, {tc: hi / 4, white: 0.9}} {
 				if got := tan.bestShape(near); got.dev > least+c.within {
 					t.Errorf("%s, %s, seed %d, from %v: -2L %.3f at %v, and %.3f on the lattice", c.family, c.structure, seed, near, got.dev, got.shape, least)
 				}

@@ -8,11 +8,11 @@ package pages
 
 import "unsafe"
 
-// Large is the size of the larger pages of the usual processors, bytes.
-const Large = 2 << 20
+// large is the size of the larger pages of the usual processors, bytes.
+const large = 2 << 20
 
 // first is as much memory as Go asks the system for at a time, and begins with.
-const first = 2 * Large
+const first = 2 * large
 
 // begun lies in the memory that the process begins with.
 var begun = new([64]byte)
@@ -26,12 +26,12 @@ func init() {
 // as they lie within it, and joins the pages of what the process began with up to there.
 func Under(b []byte) {
 	at := uintptr(unsafe.Pointer(unsafe.SliceData(b)))
-	whole := (at + Large - 1) &^ (Large - 1)
-	if end := (at + uintptr(len(b))) &^ (Large - 1); end > whole {
+	whole := (at + large - 1) &^ (large - 1)
+	if end := (at + uintptr(len(b))) &^ (large - 1); end > whole {
 		largePages(b[whole-at : end-at])
 	}
 	from := uintptr(unsafe.Pointer(begun)) &^ (first - 1)
-	if whole > from && whole-from <= 4*Large {
+	if whole > from && whole-from <= 4*large {
 		joinPages(from, whole)
 	}
 }
