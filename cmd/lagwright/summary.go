@@ -172,6 +172,8 @@ func replayWords(r *validate.RunReplay, unit string) string {
 		words += ", run " + r.Name
 	}
 	switch {
+	case r.Undecided():
+		words += ": not judged"
 	case !r.Judged:
 		words += ": nothing of the requirement shows in this run"
 	case r.Meets:
