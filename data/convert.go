@@ -67,19 +67,8 @@ func (r *rows) convertInput(run *Run, info *reading, o *Options) error {
 func (r *rows) noteUnit(info *reading, x role, given, flag string) {
 	if own := info.unit(x); own != "" && own != given {
 		r.notes = append(r.notes, Note{Code: "unit-named-otherwise",
-			Text: fmt.Sprintf("column %q is in %s as the file has it, and read in %s because of %s", info.label(x), spokenUnit(own), spokenUnit(given), flag)})
+			Text: fmt.Sprintf("column %q is in %s as the file has it, and read in %s because of %s", info.label(x), ShownUnit(own), ShownUnit(given), flag)})
 	}
-}
-
-// spokenUnit is a unit as people write it.
-func spokenUnit(unit string) string {
-	switch unit {
-	case "degC":
-		return "°C"
-	case "degF":
-		return "°F"
-	}
-	return unit
 }
 
 func (r *rows) convertTemps(run *Run, info *reading, o *Options) error {

@@ -155,3 +155,14 @@ func unitOption(written string) string {
 	u, _ := canonicalUnit(written)
 	return u
 }
+
+// ShownUnit is the unit of a [Run] as people write it: °C for degC.
+func ShownUnit(unit string) string {
+	switch unit {
+	case "degC":
+		return "°C"
+	case "degF":
+		return "°F"
+	}
+	return unit
+}

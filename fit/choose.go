@@ -466,7 +466,7 @@ func (out *outcome) widen() {
 		if m.irregular() {
 			continue // its interval is that of an excerpt
 		}
-		if m == sel || m.st.Integrating() || m.aicc > low+4 || m.est[0].value*g.value < 0 {
+		if m == sel || m.st.Integrating() || m.aicc > low+alikeBy || m.est[0].value*g.value < 0 {
 			continue
 		}
 		g.low = math.Min(g.low, m.est[0].low) // NaN, an open end, stays

@@ -249,32 +249,30 @@ func (e *engine) unity() float64 {
 
 // simulate fills the raw columns and the basis of the record's linear columns.
 func (e *engine) simulate(r *record, w *workspace, lags []float64, dead float64, full bool) {
-	if full {
-		r.sim.Sensitivities(w.raw[:e.nl+2], e.st, lags, dead)
-		if dead <= e.lower[e.ng] && !e.held[e.ng] && e.kinked(lags) {
-			e.fromAbove(r.sim, w, w.raw, lags, dead, r.step)
-		}
-	} else {
-		r.sim.Response(w.raw[0], e.st, lags, dead)
-	}
+	e.respond(r.sim, w, w.raw[:e.nl+2], r.step, lags, dead, full)
 	w.extra = w.extra[:0]
 	w.basis = append(w.basis[:0], r.basis...)
 	switch r.rest {
 	case earlier:
-		if full {
-			r.start.Sensitivities(w.start, e.st, lags, dead)
-			if dead <= e.lower[e.ng] && !e.held[e.ng] && e.kinked(lags) {
-				e.fromAbove(r.start, w, w.start, lags, dead, r.step)
-			}
-		} else {
-			r.start.Response(w.start[0], e.st, lags, dead)
-		}
+		e.respond(r.start, w, w.start, r.step, lags, dead, full)
 		e.addExtra(r, w, w.start[0])
 	case free:
 		r.sim.FreeStates(w.start, e.st, lags, dead)
 		for _, c := range w.start {
 			e.addExtra(r, w, c)
 		}
+	}
+}
+
+// respond fills a simulator's columns: the response, and with full its derivatives.
+func (e *engine) respond(sim *ident.Simulator, w *workspace, columns [][]float64, step float64, lags []float64, dead float64, full bool) {
+	if !full {
+		sim.Response(columns[0], e.st, lags, dead)
+		return
+	}
+	sim.Sensitivities(columns, e.st, lags, dead)
+	if dead <= e.lower[e.ng] && !e.held[e.ng] && e.kinked(lags) {
+		e.fromAbove(sim, w, columns, step, lags, dead)
 	}
 }
 

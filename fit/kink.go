@@ -18,12 +18,13 @@ func (e *engine) kinked(lags []float64) bool {
 }
 
 // fromAbove sets the last of a simulator's columns, the first its response, to the
-// derivative with respect to a dead time that cannot become shorter, from responses at longer ones: (-3y(0) + 4y(δ) - y(2δ))/(2δ). The
-// simulator takes the other side of a kink, where the change was made before the row. With
-// a controller that answers every row, that side would explain its noise by the answer.
-func (e *engine) fromAbove(sim *ident.Simulator, w *workspace, columns [][]float64, lags []float64, dead, step float64) {
+// derivative with respect to a dead time that cannot become shorter, from responses at
+// longer ones: (-3y(0) + 4y(δ) - y(2δ))/(2δ). The simulator takes the other side of a kink,
+// where the change was made before the row. With a controller that answers every row, that
+// side would explain its noise by the answer.
+func (e *engine) fromAbove(sim *ident.Simulator, w *workspace, columns [][]float64, step float64, lags []float64, dead float64) {
 	delta := 1e-3 * step
-	y, out := columns[0], columns[e.nl+1]
+	y, out := columns[0], columns[len(columns)-1]
 	w.ahead = resize(w.ahead, len(y))
 	sim.Response(w.ahead, e.st, lags, dead+delta)
 	for k, v := range w.ahead {

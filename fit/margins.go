@@ -81,29 +81,16 @@ func (ms margins) quantile(p float64) float64 {
 	if !(fl < 0 && fh > 0) {
 		return (lo + hi) / 2
 	}
-	// Regula falsi with the Illinois modification.
-	side := 0
+	b := bracket{lo: lo, hi: hi, fl: fl, fh: fh}
 	for range 50 {
-		x := hi - fh*(hi-lo)/(fh-fl)
+		x := b.next()
 		f := away(x)
-		if math.Abs(f) < 1e-7 || hi-lo < 1e-9*scale {
+		if math.Abs(f) < 1e-7 || b.hi-b.lo < 1e-9*scale {
 			return x
 		}
-		if f > 0 {
-			hi, fh = x, f
-			if side == 1 {
-				fl /= 2
-			}
-			side = 1
-		} else {
-			lo, fl = x, f
-			if side == -1 {
-				fh /= 2
-			}
-			side = -1
-		}
+		b.take(x, f)
 	}
-	return (lo + hi) / 2
+	return b.middle()
 }
 
 // cdf is the probability below x; margins without a width have none.

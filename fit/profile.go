@@ -170,35 +170,21 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 		}
 		x = math.Min(x*grow, room)
 	}
-	// Regula falsi with the Illinois modification; r is nearly linear in v.
-	side := 0
-	fl, fh := rl-c, rh-c
+	b := bracket{lo: xl, hi: xh, fl: rl - c, fh: rh - c} // r is nearly linear in v
 	for range 12 {
-		if math.Abs(xh-xl) < 1e-5*xh {
+		if math.Abs(b.hi-b.lo) < 1e-5*b.hi {
 			break
 		}
-		x = xh - fh*(xh-xl)/(fh-fl)
+		x := b.next()
 		rv, p := r(value+dir*x, from)
 		from = p
 		f := rv - c
 		if math.Abs(f) < 2e-3*c {
 			return value + dir*x
 		}
-		if f > 0 {
-			xh, fh = x, f
-			if side == 1 {
-				fl /= 2
-			}
-			side = 1
-		} else {
-			xl, fl = x, f
-			if side == -1 {
-				fh /= 2
-			}
-			side = -1
-		}
+		b.take(x, f)
 	}
-	return value + dir*(xl+xh)/2
+	return value + dir*b.middle()
 }
 
 // takeTrail hands over the points passed, in order, the optimum among them.

@@ -62,10 +62,11 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 		}
 		t.memory.rest = longColumn(t.memory.rest, rows)
 		t.rest = t.memory.rest
-		rows = 0
+		next := t.rest
 		for _, c := range r.parts {
-			r.residual(t.rest[rows:rows+c.hi-c.lo], t.model, c)
-			rows += c.hi - c.lo
+			n := c.hi - c.lo
+			r.residual(next[:n], t.model, c)
+			next = next[n:]
 		}
 	}
 	var kept [][]float64 // of linear

@@ -1,21 +1,22 @@
 package tune
 
 import (
+	"errors"
 	"fmt"
 	"math"
 	"regexp"
 	"strconv"
 	"strings"
+	"time"
 )
 
-// timeUnits are the units of time as people write them, in lower case, in s.
-// They are those of the durations on the command line.
-var timeUnits = map[string]float64{}
+// timeUnits are the units of time as people write them, in lower case.
+var timeUnits = map[string]time.Duration{}
 
 func init() {
-	for words, unit := range map[string]float64{
-		"ns": 1e-9, "us µs μs": 1e-6, "ms msec msecs millisecond milliseconds": 1e-3,
-		"s sec secs second seconds": 1, "m min mins minute minutes": 60, "h hr hrs hour hours": 3600,
+	for unit, words := range map[time.Duration]string{
+		time.Nanosecond: "ns", time.Microsecond: "us µs μs", time.Millisecond: "ms msec msecs millisecond milliseconds",
+		time.Second: "s sec secs second seconds", time.Minute: "m min mins minute minutes", time.Hour: "h hr hrs hour hours",
 	} {
 		for _, word := range strings.Fields(words) {
 			timeUnits[word] = unit
@@ -23,44 +24,55 @@ func init() {
 	}
 }
 
-// longestTime is that of the command line, s.
-const longestTime = math.MaxInt64 * 1e-9
+// What a text is that [ParseTime] does not read.
+var (
+	ErrNoTime   = errors.New("no time")
+	ErrLongTime = errors.New("longer than 290 years")
+)
 
 var timePart = regexp.MustCompile(`^\s*([0-9]+\.?[0-9]*|\.[0-9]+)\s*(\pL+)\.?\s*`)
 
-// timeOf reads 45s, 250ms, 2m, 25min, 2h, 1m30s, and the same with words and
-// blanks, as seconds. The sign stays: what a time cannot be is said of the
-// setting.
+// ParseTime reads a time as the command line and gains written out have it: 45s, 250ms,
+// 2m, 25min, 2h, 1m30s, and the same with words and blanks. A sign in front stays. The
+// error wraps [ErrNoTime], also of a number without a unit, or [ErrLongTime].
+func ParseTime(text string) (time.Duration, error) {
+	rest, negative := strings.CutPrefix(strings.TrimPrefix(strings.TrimSpace(text), "+"), "-")
+	sum := 0.0 // ns
+	for first := true; first || rest != ""; first = false {
+		part := timePart.FindStringSubmatch(rest)
+		if part == nil {
+			return 0, fmt.Errorf("%q: %w", text, ErrNoTime)
+		}
+		unit, known := timeUnits[strings.ToLower(part[2])]
+		v, err := strconv.ParseFloat(part[1], 64)
+		if !known || err != nil {
+			return 0, fmt.Errorf("%q: %w", text, ErrNoTime)
+		}
+		sum += v * float64(unit)
+		rest = rest[len(part[0]):]
+	}
+	if sum >= math.MaxInt64 {
+		return 0, fmt.Errorf("%q: %w", text, ErrLongTime)
+	}
+	if negative {
+		sum = -sum
+	}
+	return time.Duration(math.Round(sum)), nil
+}
+
+// timeOf reads a time of gains written out as seconds. The sign stays: what a time
+// cannot be is said of the setting.
 func timeOf(text string) (float64, error) {
 	text = strings.TrimSpace(text)
 	if _, err := strconv.ParseFloat(text, 64); err == nil {
 		return 0, fmt.Errorf("%s has no unit: write %ss, %sms or %smin", text, text, text, text)
 	}
-	rest, negative := strings.CutPrefix(strings.TrimPrefix(text, "+"), "-")
-	sum := 0.0
-	for first := true; first || rest != ""; first = false {
-		part := timePart.FindStringSubmatch(rest)
-		if part == nil {
-			return 0, noTime(text)
-		}
-		unit, known := timeUnits[strings.ToLower(part[2])]
-		v, err := strconv.ParseFloat(part[1], 64)
-		if !known || err != nil {
-			return 0, noTime(text)
-		}
-		sum += v * unit
-		rest = rest[len(part[0]):]
+	d, err := ParseTime(text)
+	switch {
+	case errors.Is(err, ErrNoTime):
+		return 0, fmt.Errorf("%q is no time: write it as 45s, 250ms, 2min or 1h", text)
+	case err != nil:
+		return 0, fmt.Errorf("%q is %w", text, ErrLongTime)
 	}
-	if sum >= longestTime {
-		return 0, fmt.Errorf("%q is longer than 290 years", text)
-	}
-	sum = math.Round(sum*1e9) / 1e9 // whole nanoseconds, so that 300ms is 0.3
-	if negative {
-		sum = -sum
-	}
-	return sum, nil
-}
-
-func noTime(text string) error {
-	return fmt.Errorf("%q is no time: write it as 45s, 250ms, 2min or 1h", text)
+	return float64(d) / float64(time.Second), nil
 }

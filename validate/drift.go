@@ -5,6 +5,8 @@ import (
 	"io"
 	"math"
 	"strings"
+
+	"lagwright/data"
 )
 
 // DriftSchema is the schema of a drift file.
@@ -144,7 +146,7 @@ func (d *Drift) writeTable(b *strings.Builder) {
 	}
 	line := label
 	for _, p := range d.Parameters {
-		line += fmt.Sprintf("%*s", cell, wordFor(p.Name)+" "+shown(p.Unit))
+		line += fmt.Sprintf("%*s", cell, wordFor(p.Name)+" "+data.ShownUnit(p.Unit))
 	}
 	fmt.Fprintln(b, line)
 	for i, r := range d.Runs {

@@ -6,6 +6,8 @@ import (
 	"strings"
 
 	"gonum.org/v1/gonum/stat/distuv"
+
+	"lagwright/data"
 )
 
 // text words the finding on one parameter.
@@ -71,7 +73,7 @@ func (c *Change) amount(unit string) string {
 		size, low, high = -size, -high, -low
 	}
 	if unit != "%" {
-		unit = " " + shown(unit)
+		unit = " " + data.ShownUnit(unit)
 	}
 	return fmt.Sprintf("%s%s (%s to %s%s)", number(size), unit, number(low), number(high), unit)
 }

@@ -6,6 +6,8 @@ import (
 	"slices"
 	"strings"
 	"unicode"
+
+	"lagwright/data"
 )
 
 // mostShown is how many runs and failures the terminal lists; the files hold
@@ -109,12 +111,12 @@ func (r *Replay) shownMetrics() []shownMetric {
 		{head: "settling " + scale.unit, scale: scale, pick: func(m RunMetrics) *float64 { return m.Settling }},
 		{head: "overshoot %", pick: func(m RunMetrics) *float64 { return m.Overshoot }},
 		{head: "deviation " + difference(u.Temperature), pick: func(m RunMetrics) *float64 { return m.Deviation }},
-		{head: "peak " + shown(u.Temperature), unit: u.Temperature, pick: func(m RunMetrics) *float64 { return m.PeakTemp }},
+		{head: "peak " + data.ShownUnit(u.Temperature), unit: u.Temperature, pick: func(m RunMetrics) *float64 { return m.PeakTemp }},
 	}
 	if r.RunLimits.IAE != nil {
 		return append(columns, shownMetric{head: "IAE " + difference(u.Temperature) + "·s", pick: func(m RunMetrics) *float64 { return m.IAE }})
 	}
-	return append(columns, shownMetric{head: "peak " + shown(u.Input), unit: u.Input, pick: func(m RunMetrics) *float64 { return m.PeakInput }})
+	return append(columns, shownMetric{head: "peak " + data.ShownUnit(u.Input), unit: u.Input, pick: func(m RunMetrics) *float64 { return m.PeakInput }})
 }
 
 // settlingScale is the unit of the whole column, that of the longest median:
@@ -308,17 +310,6 @@ func optional(x *float64) string {
 		return "-"
 	}
 	return number(*x)
-}
-
-// shown writes a unit as people do.
-func shown(unit string) string {
-	switch unit {
-	case "degC":
-		return "°C"
-	case "degF":
-		return "°F"
-	}
-	return unit
 }
 
 // difference is the unit of a difference of temperatures.

@@ -83,7 +83,7 @@ func alike(runs []*data.Run) error {
 	for _, run := range runs {
 		if a, b := runs[0].Units, run.Units; a.Input != b.Input || a.Temperature != b.Temperature {
 			return fmt.Errorf("%w: %s is in %s and %s, %s in %s and %s; a history is that of one heater: track each heater by itself, or bring its logs to the same units with --input-unit, --temp-unit",
-				fit.ErrUnlike, runTitle(runs[0]), shown(a.Input), shown(a.Temperature), runTitle(run), shown(b.Input), shown(b.Temperature))
+				fit.ErrUnlike, runTitle(runs[0]), data.ShownUnit(a.Input), data.ShownUnit(a.Temperature), runTitle(run), data.ShownUnit(b.Input), data.ShownUnit(b.Temperature))
 		}
 	}
 	return nil

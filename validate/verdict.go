@@ -7,6 +7,7 @@ import (
 	"strconv"
 	"strings"
 
+	"lagwright/data"
 	"lagwright/tune"
 )
 
@@ -126,7 +127,7 @@ func quantity(x float64, unit string) string {
 	case unit == "s":
 		return duration(x)
 	}
-	return bare(x, unit) + " " + shown(unit)
+	return bare(x, unit) + " " + data.ShownUnit(unit)
 }
 
 // duration writes a time in the unit of its size.
