@@ -11,6 +11,8 @@ import (
 	"os"
 	"os/signal"
 	"syscall"
+
+	_ "lagwright/cmd/lagwright/internal/pages" // memory in large pages
 )
 
 func main() {

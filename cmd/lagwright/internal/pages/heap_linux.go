@@ -1,0 +1,104 @@
+package pages
+
+import (
+	"syscall"
+	"unsafe"
+)
+
+const (
+	// large is the size of the larger pages of the usual processors, bytes.
+	large = 2 << 20
+	// step is as much memory as Go asks the system for at a time, and begins with.
+	step = 2 * large
+	// collapse is MADV_COLLAPSE, which systems older than Linux 6.1 refuse.
+	collapse = 25
+)
+
+// room is as much memory as a call of take takes of the stack, and half of what a call of
+// stretch does: Go widens the stack to the next power of two, 64 MiB.
+type room [31 << 20]byte
+
+// begun lies in the memory that the process begins with.
+var begun = new([64]byte)
+
+// nothing is never set.
+var nothing *room
+
+func init() {
+	if !wanted() {
+		return
+	}
+	done := make(chan struct{})
+	go func() {
+		defer close(done)
+		stretch(nothing)
+		var here byte // on the stack as it is now
+		join(uintptr(unsafe.Pointer(begun)), uintptr(unsafe.Pointer(&here)))
+	}()
+	<-done
+}
+
+// stretch widens the stack and leaves it alone. It is the one way to have the heap's next
+// addresses and to leave them free: a stack is memory of the heap, of which only what is
+// used is touched, and goes back to it when its goroutine ends, where a piece of
+// the heap would have to wait for a collection. That collection, and what the heap
+// is touched for before it can be made, cost a tenth of a fit of a thousand rows.
+//
+//go:noinline
+func stretch(p *room) {
+	if p != nil {
+		take(*p)
+	}
+}
+
+var taken byte
+
+//go:noinline
+func take(r room) { taken = r[0] }
+
+// join asks for large pages from one address of the heap to another and a little beyond,
+// and makes such of the first and the last ones, in which some memory is in use by now.
+// Addresses without memory are passed over.
+func join(from, to uintptr) {
+	from &^= large - 1
+	end := (to + step - 1) &^ (step - 1)
+	if end <= from || end-from > uintptr(4*len(room{})) {
+		return // the system gave the memory elsewhere
+	}
+	advise(from, end-from, syscall.MADV_HUGEPAGE)
+	advise(from, large, collapse)
+	advise(from+large, large, collapse)
+	advise(to&^(large-1), large, collapse)
+}
+
+// advise tells the system how a range of memory will be used.
+func advise(from, size uintptr, how int) {
+	_, _, _ = syscall.Syscall(syscall.SYS_MADVISE, from, size, uintptr(how))
+}
+
+// wanted reports whether the system gives large pages to those who ask.
+func wanted() bool {
+	var text [64]byte
+	n := readFile("/sys/kernel/mm/transparent_hugepage/enabled", text[:])
+	const never = "[never]"
+	for i := 0; i+len(never) <= n; i++ {
+		if string(text[i:i+len(never)]) == never {
+			return false
+		}
+	}
+	return n > 0
+}
+
+// readFile reads the beginning of a small file; zero bytes if there is none.
+func readFile(name string, into []byte) int {
+	f, err := syscall.Open(name, syscall.O_RDONLY|syscall.O_CLOEXEC, 0)
+	if err != nil {
+		return 0
+	}
+	defer func() { _ = syscall.Close(f) }()
+	n, err := syscall.Read(f, into)
+	if err != nil {
+		return 0
+	}
+	return n
+}
