@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"regexp"
 	"strings"
+	"sync"
 )
 
 // beside is the unit in a name, as it may stand right behind a factor.
@@ -11,14 +12,20 @@ const beside = `[\s_]*(?:[\[({]\s*)?(?:[°º℃℉%]|deg|celsius|kelvin|[cfkvw]\
 
 var (
 	// timesTen is x10 or *100 at the end of a name, or right in front of its unit.
-	timesTen = regexp.MustCompile(`(?i)[x×*] ?10{1,3}(?:[)\]}]?$|` + beside + `)`)
+	timesTen = sync.OnceValue(func() *regexp.Regexp {
+		return regexp.MustCompile(`(?i)[x×*] ?10{1,3}(?:[)\]}]?$|` + beside + `)`)
+	})
 
 	// tenthOf is 1/10 or 0.1 right in front of the unit, in brackets or behind
 	// "in": elsewhere 1/10 may be a class of sensors or a zone of ten.
-	tenthOf = regexp.MustCompile(`(?i)(?:[\[({]\s*|\b(?:in|en)\s+)(?:1/10{1,3}|0[.,]0{0,2}1)` + beside)
+	tenthOf = sync.OnceValue(func() *regexp.Regexp {
+		return regexp.MustCompile(`(?i)(?:[\[({]\s*|\b(?:in|en)\s+)(?:1/10{1,3}|0[.,]0{0,2}1)` + beside)
+	})
 
 	// decimalTenth is 0.1 right in front of the unit anywhere.
-	decimalTenth = regexp.MustCompile(`(?i)(?:^|[\s_])0[.,]0{0,2}1` + beside)
+	decimalTenth = sync.OnceValue(func() *regexp.Regexp {
+		return regexp.MustCompile(`(?i)(?:^|[\s_])0[.,]0{0,2}1` + beside)
+	})
 )
 
 // resolution are words for what 0.01 °C may be beside a factor.
@@ -26,10 +33,13 @@ var resolution = vocabulary{words: []string{"res", "resol", "resolution", "aufl�
 
 // namesFactor tells a name with a factor that the values of the column carry.
 func namesFactor(label string) bool {
-	if at := timesTen.FindStringIndex(label); at != nil && multiplies(label, at[0]) {
+	if !strings.Contains(label, "1") {
+		return false // every factor holds one
+	}
+	if at := timesTen().FindStringIndex(label); at != nil && multiplies(label, at[0]) {
 		return true
 	}
-	return !resolution.in(column{name: label}) && (tenthOf.MatchString(label) || decimalTenth.MatchString(label))
+	return !resolution.in(column{name: label}) && (tenthOf().MatchString(label) || decimalTenth().MatchString(label))
 }
 
 // multiplies tells that the sign at a place of a name stands for itself: not

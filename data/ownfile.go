@@ -3,11 +3,14 @@ package data
 import (
 	"bytes"
 	"regexp"
+	"sync"
 )
 
 // ownSchema is the schema of a result that lagwright wrote, at the head of its
 // JSON.
-var ownSchema = regexp.MustCompile(`"schema"\s*:\s*"lagwright/([a-z]+)/`)
+var ownSchema = sync.OnceValue(func() *regexp.Regexp {
+	return regexp.MustCompile(`"schema"\s*:\s*"lagwright/([a-z]+)/`)
+})
 
 // ownUse says what the results are and where they go.
 var ownUse = map[string]string{
@@ -23,7 +26,7 @@ func ownFile(head []byte) string {
 	if !bytes.HasPrefix(bytes.TrimLeft(head, " \t\r\n"), []byte("{")) {
 		return ""
 	}
-	m := ownSchema.FindSubmatch(head)
+	m := ownSchema().FindSubmatch(head)
 	if m == nil {
 		return ""
 	}

@@ -6,17 +6,22 @@ import (
 	"regexp"
 	"strconv"
 	"strings"
+	"sync"
 )
 
 // WrittenOut tells gains written out, as [ParseGains] reads them, from the
 // name of a file: they begin with a word and an equals sign, such as kc=.
 func WrittenOut(text string) bool {
-	return settingFirst.MatchString(text) && !strings.HasSuffix(text, ".json")
+	return settingFirst().MatchString(text) && !strings.HasSuffix(text, ".json")
 }
 
 var (
-	settingFirst = regexp.MustCompile(`^\s*[A-Za-z]+\s*=`)
-	decimalComma = regexp.MustCompile(`=\s*[-+]?\d+,\d`)
+	settingFirst = sync.OnceValue(func() *regexp.Regexp {
+		return regexp.MustCompile(`^\s*[A-Za-z]+\s*=`)
+	})
+	decimalComma = sync.OnceValue(func() *regexp.Regexp {
+		return regexp.MustCompile(`=\s*[-+]?\d+,\d`)
+	})
 )
 
 // perFahrenheit is the text of a gain per °F without its /°F.
@@ -42,7 +47,7 @@ func perFahrenheit(text string) (string, bool) {
 func ParseGains(text string, u GainUnits) (*Gains, error) {
 	g := &Gains{Schema: GainsSchema, Form: Ideal, SetpointWeight: 1, Units: u}
 	given := map[string]bool{}
-	if decimalComma.MatchString(text) {
+	if decimalComma().MatchString(text) {
 		return nil, fmt.Errorf("write decimals with a point, as in %s: a comma parts the settings", u.example())
 	}
 	for part := range strings.SplitSeq(text, ",") {

@@ -7,6 +7,7 @@ import (
 	"regexp"
 	"strconv"
 	"strings"
+	"sync"
 	"time"
 )
 
@@ -30,7 +31,9 @@ var (
 	ErrLongTime = errors.New("longer than 290 years")
 )
 
-var timePart = regexp.MustCompile(`^\s*([0-9]+\.?[0-9]*|\.[0-9]+)\s*(\pL+)\.?\s*`)
+var timePart = sync.OnceValue(func() *regexp.Regexp {
+	return regexp.MustCompile(`^\s*([0-9]+\.?[0-9]*|\.[0-9]+)\s*(\pL+)\.?\s*`)
+})
 
 // ParseTime reads a time as the command line and gains written out have it: 45s, 250ms,
 // 2m, 25min, 2h, 1m30s, and the same with words and blanks. A sign in front stays. The
@@ -39,7 +42,7 @@ func ParseTime(text string) (time.Duration, error) {
 	rest, negative := strings.CutPrefix(strings.TrimPrefix(strings.TrimSpace(text), "+"), "-")
 	sum := 0.0 // ns
 	for first := true; first || rest != ""; first = false {
-		part := timePart.FindStringSubmatch(rest)
+		part := timePart().FindStringSubmatch(rest)
 		if part == nil {
 			return 0, fmt.Errorf("%q: %w", text, ErrNoTime)
 		}

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"regexp"
 	"strings"
+	"sync"
 
 	"github.com/spf13/cobra"
 
@@ -41,13 +42,15 @@ func structureNames() []string {
 	return names
 }
 
-var fixName = regexp.MustCompile(`^(gain|lag[1-8]|dead_time)$`)
+var fixName = sync.OnceValue(func() *regexp.Regexp {
+	return regexp.MustCompile(`^(gain|lag[1-8]|dead_time)$`)
+})
 
 // fixOne reads one NAME=VALUE, or several with commas between.
 func (f *fitFlags) fixOne(s string) error {
 	for part := range strings.SplitSeq(s, ",") {
 		name, text, ok := strings.Cut(strings.TrimSpace(part), "=")
-		if !ok || !fixName.MatchString(name) {
+		if !ok || !fixName().MatchString(name) {
 			return errors.New("want NAME=VALUE with gain, lag1, lag2, … or dead_time, such as lag2=0.05")
 		}
 		v, err := fixedValue(name, text)

@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"sync"
 
 	"github.com/spf13/cobra"
 	"github.com/spf13/pflag"
@@ -161,12 +162,14 @@ func share(s string) (float64, error) {
 	return v, nil
 }
 
-var spanText = regexp.MustCompile(`^\s*([-+0-9.eE]+?)\s*\.\.\s*([-+]?[0-9.]+(?:[eE][-+]?[0-9]+)?)\s*([^\s\d].*)?$`)
+var spanText = sync.OnceValue(func() *regexp.Regexp {
+	return regexp.MustCompile(`^\s*([-+0-9.eE]+?)\s*\.\.\s*([-+]?[0-9.]+(?:[eE][-+]?[0-9]+)?)\s*([^\s\d].*)?$`)
+})
 
 // span reads 0..10V, 4..20mA, -20..180C.
 func span(s string) (data.Span, error) {
 	bad := errors.New("want low..high with a unit, such as 0..10V or 0..200C")
-	m := spanText.FindStringSubmatch(s)
+	m := spanText().FindStringSubmatch(s)
 	if m == nil {
 		return data.Span{}, bad
 	}

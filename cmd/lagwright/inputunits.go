@@ -7,6 +7,7 @@ import (
 	"regexp"
 	"strconv"
 	"strings"
+	"sync"
 
 	"github.com/spf13/pflag"
 )
@@ -27,12 +28,14 @@ var inputFlags = map[string]struct{ before, after string }{
 // unitless are flags read by number all the same.
 var unitless = map[string]string{"damping": "0.7", "ms": "1.6"}
 
-var leadingNumber = regexp.MustCompile(`^[-+]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][-+]?[0-9]+)?`)
+var leadingNumber = sync.OnceValue(func() *regexp.Regexp {
+	return regexp.MustCompile(`^[-+]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][-+]?[0-9]+)?`)
+})
 
 // cutUnit parts a number from what stands behind it.
 func cutUnit(s string) (number, unit string) {
 	s = strings.TrimSpace(s)
-	number = leadingNumber.FindString(s)
+	number = leadingNumber().FindString(s)
 	return number, strings.TrimSpace(s[len(number):])
 }
 

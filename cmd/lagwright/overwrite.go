@@ -8,6 +8,7 @@ import (
 	"regexp"
 	"slices"
 	"strings"
+	"sync"
 
 	"lagwright/data"
 )
@@ -96,7 +97,9 @@ func bareName(log string) string {
 }
 
 // jobFile are the names of what a whole job writes into its folder.
-var jobFile = regexp.MustCompile(`^(card\.json|gains\.json|replay\.json|report\.html|(log|residuals|intervals|poles|step-response|load-response|sensitivity|replay-\d+)\.svg)$`)
+var jobFile = sync.OnceValue(func() *regexp.Regexp {
+	return regexp.MustCompile(`^(card\.json|gains\.json|replay\.json|report\.html|(log|residuals|intervals|poles|step-response|load-response|sensitivity|replay-\d+)\.svg)$`)
+})
 
 // jobMarks are files that together only a whole job leaves in a folder.
 var jobMarks = []string{"card.json", "gains.json", "replay.json", "report.html", "log.svg", "residuals.svg", "intervals.svg"}
@@ -116,7 +119,7 @@ func (c *console) refuseSpreading(folder string, more ...string) error {
 			continue
 		}
 		names = append(names, name)
-		if !jobFile.MatchString(name) && !slices.Contains(more, name) {
+		if !jobFile().MatchString(name) && !slices.Contains(more, name) {
 			others = append(others, name)
 		}
 	}

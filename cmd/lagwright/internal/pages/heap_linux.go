@@ -57,8 +57,8 @@ var taken byte
 func take(r room) { taken = r[0] }
 
 // join asks for large pages from one address of the heap to another and a little beyond,
-// and makes such of the first and the last ones, in which some memory is in use by now.
-// Addresses without memory are passed over.
+// and makes such of the first ones, in which some memory is in use by now. Addresses
+// without memory are passed over.
 func join(from, to uintptr) {
 	from &^= large - 1
 	end := (to + step - 1) &^ (step - 1)
@@ -68,7 +68,6 @@ func join(from, to uintptr) {
 	advise(from, end-from, syscall.MADV_HUGEPAGE)
 	advise(from, large, collapse)
 	advise(from+large, large, collapse)
-	advise(to&^(large-1), large, collapse)
 }
 
 // advise tells the system how a range of memory will be used.
