@@ -209,13 +209,23 @@ func (k *kalman) again() {
 		return
 	}
 	p, pw, w := k.p, k.pw, k.w
-	sv := k.a2*k.a2*p + 2*k.a2*pw + w + k.own
+	// What is predicted has the covariance u with the correlated part and v with the walk
+	// at the last sample. Each row waits for the division of the one before it, and
+	// so as little as can be stands behind it.
+	u, v := k.a2*p+pw, k.a2*pw+w
+	sv := k.a2*u + (v + k.own)
+	withLast, withWalk := k.a1*u+k.ownCross, v+k.walkCross
 	inverse := 1 / sv
-	k.gain = (k.a1*(k.a2*p+pw) + k.ownCross) * inverse
-	k.follow = (k.a2*pw + w + k.walkCross) * inverse
-	k.p = max(k.a1*k.a1*p+k.ownLast-k.gain*k.gain*sv, 0)
-	k.pw = k.a1*pw - k.gain*k.follow*sv
-	k.w = max(w+k.walkLast-k.follow*k.follow*sv, 0)
+	k.gain, k.follow = withLast*inverse, withWalk*inverse
+	k.p = k.a1*k.a1*p + k.ownLast - withLast*k.gain
+	k.pw = k.a1*pw - withLast*k.follow
+	k.w = w + k.walkLast - withWalk*k.follow
+	if k.p < 0 {
+		k.p = 0
+	}
+	if k.w < 0 {
+		k.w = 0
+	}
 	k.decay = k.a1 - k.gain*k.a2
 	k.isd, k.variance = math.Sqrt(inverse), sv
 	// Equal rows bring the filter to a steady state; then its figures repeat. The
