@@ -69,7 +69,7 @@ func (q *posterior) adapt(pool proposals, count int) []plantAt {
 	if math.IsInf(kept.top(math.Inf(-1)), -1) {
 		return q.alone(count)
 	}
-	return kept.drawn(count, q.rng.Float64())
+	return kept.drawn(kept.shares(1), count, q.rng.Float64())
 }
 
 // alone is the optimum, so many times.
@@ -78,10 +78,9 @@ func (q *posterior) alone(count int) []plantAt {
 	return slices.Repeat([]plantAt{{eta: p.eta, gain: p.gain, gg: p.gg}}, count)
 }
 
-// drawn are count places in proportion to their weights, evenly spaced in their sum
+// drawn are count places in proportion to their shares, evenly spaced in their sum
 // from the start u on; the same place may come twice.
-func (p proposals) drawn(count int, u float64) []plantAt {
-	shares := p.shares(1)
+func (p proposals) drawn(shares []float64, count int, u float64) []plantAt {
 	out := make([]plantAt, 0, count)
 	sum, i := 0.0, -1
 	for k := range count {
@@ -106,8 +105,9 @@ func (p proposals) shares(power float64) []float64 {
 		}
 		sum += out[i]
 	}
+	sum = max(sum, 1) // the greatest is 1
 	for i := range out {
-		out[i] /= math.Max(sum, 1) // the greatest is 1
+		out[i] /= sum
 	}
 	return out
 }
@@ -117,7 +117,7 @@ func (p proposals) top(none float64) float64 {
 	top, found := math.Inf(-1), false
 	for _, w := range p.weight {
 		if isFinite(w) {
-			top, found = math.Max(top, w), true
+			top, found = max(top, w), true
 		}
 	}
 	if !found {
@@ -178,11 +178,7 @@ func (q *posterior) around(pool proposals, wider float64) *kernels {
 	for i := range d {
 		k.logdet += math.Log(k.root[i][i])
 	}
-	tempered := proposals{at: pool.at, weight: make([]float64, len(shares))}
-	for i, s := range shares {
-		tempered.weight[i] = math.Log(s)
-	}
-	for _, c := range tempered.drawn(kernelCentres, q.rng.Float64()) {
+	for _, c := range pool.drawn(shares, kernelCentres, q.rng.Float64()) {
 		k.centres = append(k.centres, c.eta)
 		k.seen = append(k.seen, k.units(c.eta))
 	}

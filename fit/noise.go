@@ -63,13 +63,9 @@ type rowMoments struct {
 	vLL, vLM, vMM float64 // parts from the noise inside the row, unit variance
 }
 
-func momentsOf(h, tc float64, m int) rowMoments {
+// momentsOf are those of m samples, phi the decay from one to the next and one = 1-phi².
+func momentsOf(phi, one float64, m int) rowMoments {
 	r := rowMoments{phiM: 1, g: 1}
-	if m <= 1 {
-		return r
-	}
-	phi := math.Exp(-h / tc)
-	one := -math.Expm1(-2 * h / tc) // 1 - phi²
 	if m&(m-1) == 0 {
 		for ; m > 1; m /= 2 {
 			r = r.doubled(phi, one)
@@ -129,9 +125,12 @@ type kalman struct {
 	// Of rows like the last one: the decay over the gap before them, and their
 	// moments.
 	lastGap, phi float64
-	lastH        float64
 	lastM        int
 	mom          rowMoments
+
+	// Of the samples inside such a row: their distance, the decay over it and what it
+	// leaves to be new, 1 - phiH².
+	lastH, phiH, oneH float64
 
 	// What follows from these for the update: the last sample and the mean against
 	// the last sample seen, and the variances that the row itself brings.
@@ -172,8 +171,11 @@ func (k *kalman) next(r ident.Row) {
 		}
 	}
 	if m != k.lastM || (m > 1 && r.H != k.lastH) {
-		k.mom = momentsOf(r.H, k.s.tc, m)
-		k.lastM, k.lastH, known = m, r.H, false
+		if m > 1 && r.H != k.lastH {
+			k.lastH, k.phiH, k.oneH = r.H, math.Exp(-r.H/k.s.tc), -math.Expm1(-2*r.H/k.s.tc)
+		}
+		k.mom = momentsOf(k.phiH, k.oneH, m)
+		k.lastM, known = m, false
 	}
 	k.prevEnd = r.T
 	if m > 1 {
