@@ -82,7 +82,23 @@ func (l *logFlags) readAll(ctx context.Context, c *console, args []string) ([]*d
 	return runs, nil
 }
 
+// manyRows are rows that collections of the heap are fitted to.
+const manyRows = 200_000
+
 func (l *logFlags) read(ctx context.Context, c *console, file string) ([]*data.Run, error) {
+	runs, err := l.readAsKnown(ctx, c, file)
+	rows := 0
+	for _, r := range runs {
+		rows += len(r.T)
+	}
+	if rows >= manyRows {
+		heap.Narrow()
+	}
+	return runs, err
+}
+
+// readAsKnown reads a file by the columns of the card's log, if it has them.
+func (l *logFlags) readAsKnown(ctx context.Context, c *console, file string) ([]*data.Run, error) {
 	o := l.options
 	o.Stdin = c.in
 	for _, known := range l.known {
