@@ -313,7 +313,7 @@ func (r *record) whitener(s shape) whitener {
 // carried is what one column carries from row to row.
 type carried struct {
 	a, b float64 // predicted correlated part at the last sample, and walk
-	sum  float64 // of squares
+	sum  float64 // of squares, where it is passed alone
 }
 
 // pass filters the next rows x at the times t.
@@ -352,45 +352,70 @@ func (w *whitener) passAll(cols [][]float64, carry []carried, t []float64) {
 		} else {
 			w.variances.power(k.variance, end-i)
 		}
-		for j, x := range cols {
+		j := 0
+		for ; k.s.walk == 0 && j+4 <= len(cols) && end-i >= 4; j += 4 {
+			steadilyFour(k, carry[j:j+4], cols[j][i:end], cols[j+1][i:end], cols[j+2][i:end], cols[j+3][i:end])
+		}
+		for ; j < len(cols); j++ {
 			if k.s.walk > 0 {
-				carry[j].following(k, x[i:end])
+				carry[j].following(k, cols[j][i:end])
 			} else {
-				carry[j].steadily(k, x[i:end])
+				carry[j].steadily(k, cols[j][i:end])
 			}
 		}
 		i = end
 	}
 }
 
-// steadily filters rows under the coefficients in force. The recursion
-// a ← decay·a + gain·x waits for itself; four rows at a time it waits once.
+// steadily filters rows under the coefficients in force. The recursion of what is
+// predicted, u ← decay·u + a2·gain·x with u = a2·a, waits for itself; four rows at a
+// time it waits once.
 func (c *carried) steadily(k *kalman, x []float64) {
 	a2, isd, d, g := k.a2, k.isd, k.decay, k.gain
 	a, sum := c.a, 0.0
-	d2, d3, d4 := d*d, d*d*d, d*d*d*d
-	for ; len(x) >= 4; x = x[4:] {
-		v0, v1, v2, v3 := x[0], x[1], x[2], x[3]
-		c1 := g * v0
-		c2 := d*c1 + g*v1
-		c3 := d*c2 + g*v2
-		c4 := d*c3 + g*v3
-		w0 := (v0 - a2*a) * isd
-		w1 := (v1 - a2*(d*a+c1)) * isd
-		w2 := (v2 - a2*(d2*a+c2)) * isd
-		w3 := (v3 - a2*(d3*a+c3)) * isd
-		a = d4*a + c4
-		x[0], x[1], x[2], x[3] = w0, w1, w2, w3
-		sum += w0*w0 + w1*w1 + w2*w2 + w3*w3
+	if len(x) >= 4 && a2 > 0 {
+		u, h := a2*a, a2*g
+		d2, d3, d4 := d*d, d*d*d, d*d*d*d
+		for ; len(x) >= 4; x = x[4:] {
+			v0, v1, v2, v3 := x[0], x[1], x[2], x[3]
+			c1 := h * v0
+			c2 := d*c1 + h*v1
+			c3 := d*c2 + h*v2
+			c4 := d*c3 + h*v3
+			e0 := v0 - u
+			e1 := v1 - c1 - d*u
+			e2 := v2 - c2 - d2*u
+			e3 := v3 - c3 - d3*u
+			u = d4*u + c4
+			sum += (e0*e0 + e1*e1) + (e2*e2 + e3*e3)
+			x[0], x[1], x[2], x[3] = e0*isd, e1*isd, e2*isd, e3*isd
+		}
+		a = u / a2
 	}
 	for i, v := range x {
-		r := (v - a2*a) * isd
+		e := v - a2*a
 		a = d*a + g*v
-		x[i] = r
-		sum += r * r
+		x[i] = e * isd
+		sum += e * e
 	}
 	c.a = a
-	c.sum += sum
+	c.sum += sum * isd * isd
+}
+
+// steadilyFour is steadily for four columns side by side, which wait together, and
+// without their sums.
+func steadilyFour(k *kalman, c []carried, x0, x1, x2, x3 []float64) {
+	a2, isd, d, g := k.a2, k.isd, k.decay, k.gain
+	a, b, e, f := c[0].a, c[1].a, c[2].a, c[3].a
+	n := len(x0)
+	x1, x2, x3 = x1[:n], x2[:n], x3[:n]
+	for i, v0 := range x0 {
+		v1, v2, v3 := x1[i], x2[i], x3[i]
+		x0[i], x1[i] = (v0-a2*a)*isd, (v1-a2*b)*isd
+		x2[i], x3[i] = (v2-a2*e)*isd, (v3-a2*f)*isd
+		a, b, e, f = d*a+g*v0, d*b+g*v1, d*e+g*v2, d*f+g*v3
+	}
+	c[0].a, c[1].a, c[2].a, c[3].a = a, b, e, f
 }
 
 // following is steadily for noise that wanders.

@@ -130,6 +130,59 @@ func TestWhitenerPassesLikeTheFilter(t *testing.T) {
 	}
 }
 
+// Columns passed together must be what they are when passed one by one, whatever
+// their number, over rows whose distance changes, and far enough apart to be independent.
+func TestWhitenerPassesColumnsTogether(t *testing.T) {
+	r := rand.New(rand.NewPCG(5, 3))
+	var at []float64
+	x := 0.0
+	for k := range 600 {
+		at = append(at, x)
+		switch {
+		case k == 200:
+			x += 1e4
+		case k > 400:
+			x += 0.3
+		default:
+			x += 0.1
+		}
+	}
+	for _, s := range []shape{{tc: 0.5, white: 0.1}, {tc: 1e-5, white: 0.2}, {tc: 0.5, white: 0.1, walk: 0.2}, whiteShape} {
+		for m := 1; m <= 9; m++ {
+			cols, want := columns(m, len(at)), columns(m, len(at))
+			for j, c := range cols {
+				for k := range c {
+					c[k] = r.NormFloat64()
+				}
+				copy(want[j], c)
+				w := (&record{}).whitener(s)
+				w.pass(want[j], at)
+			}
+			w, carry := (&record{}).whitener(s), make([]carried, m)
+			for lo := 0; lo < len(at); lo += 130 {
+				hi := min(lo+130, len(at))
+				w.passAll(sliced(cols, lo, hi), carry, at[lo:hi])
+			}
+			for j := range cols {
+				for k, v := range cols[j] {
+					if math.Abs(v-want[j][k]) > 1e-9 {
+						t.Fatalf("%+v: column %d of %d, row %d is %g, want %g", s, j, m, k, v, want[j][k])
+					}
+				}
+			}
+		}
+	}
+}
+
+// sliced is the rows lo to hi of some columns.
+func sliced(cols [][]float64, lo, hi int) [][]float64 {
+	out := make([][]float64, len(cols))
+	for j, c := range cols {
+		out[j] = c[lo:hi]
+	}
+	return out
+}
+
 // TestColumnsSideBySide holds columns filtered side by side to one filtered alone.
 func TestColumnsSideBySide(t *testing.T) {
 	r := rand.New(rand.NewPCG(5, 2))
