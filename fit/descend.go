@@ -37,6 +37,28 @@ func (e *engine) movable(p *point, a [][]float64) []int {
 	return free
 }
 
+// uncut are those in free whose step x came to at least half, where a bound, or a lag
+// just above zero, has cut those of others; none where that did not happen. Next to
+// nothing is left of a step in which such a lag had the others' part, as where it should
+// give way to the dead time: it must be taken without that lag. A search of the
+// optimum comes upon it on other ways, and only profiles take it. The list takes
+// the place of free.
+func (e *engine) uncut(p *point, free []int, x, next []float64) []int {
+	if !e.profiling {
+		return nil
+	}
+	whole := free[:0]
+	for i, j := range free {
+		if math.Abs(next[j]-p.eta[j]) >= 0.5*math.Abs(x[i]) {
+			whole = append(whole, j)
+		}
+	}
+	if len(whole) == len(free) {
+		return nil
+	}
+	return whole
+}
+
 // advance takes the step x of the parameters in free from p, kept inside the
 // bounds, and returns the new eta, valid until the next call, with the reduction
 // the gradient promises.
@@ -76,8 +98,12 @@ func (e *engine) descend(eta []float64, tol float64) point {
 				lambda = math.Max(10*lambda, 1e-9)
 				continue
 			}
-			next, predicted := e.advance(&p, free, e.damped.solve(p.grad, free))
+			x := e.damped.solve(p.grad, free)
+			next, predicted := e.advance(&p, free, x)
 			if predicted <= 0.1*tol*p.s {
+				if free = e.uncut(&p, free, x, next); len(free) > 0 {
+					continue
+				}
 				return p
 			}
 			q := e.eval(next, true)

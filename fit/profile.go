@@ -31,8 +31,9 @@ func (q *profiler) hold(i int, v float64, from point) point {
 	gainFix, gain := e.gainFix, e.gain
 	held := append([]bool(nil), e.held...)
 	defer func() {
-		e.lower, e.upper, e.gainFix, e.gain, e.held = lower, upper, gainFix, gain, held
+		e.lower, e.upper, e.gainFix, e.gain, e.held, e.profiling = lower, upper, gainFix, gain, held, false
 	}()
+	e.profiling = true
 	e.lower, e.upper = append([]float64(nil), lower...), append([]float64(nil), upper...)
 	e.held = append([]bool(nil), held...)
 	start := q.predict(i, v, from)
