@@ -5,8 +5,11 @@ const GainsSchema = "lagwright/gains/1"
 
 // Gains is a controller with what is known of it.
 type Gains struct {
-	Schema     string `json:"schema"`
-	Tool       string `json:"tool"`
+	Schema string `json:"schema"`
+	Tool   string `json:"tool"`
+
+	Cards []string `json:"cards,omitempty"` // fingerprints of the cards they were made from, see [fit.Card.Fingerprint]
+
 	Controller string `json:"controller"` // "p", "pi" or "pid"
 	Form       string `json:"form"`       // "ideal", "parallel" or "series"
 

@@ -5,6 +5,8 @@ import (
 	"fmt"
 	"io"
 	"slices"
+
+	"lagwright/fit"
 )
 
 // maxGainsFile bounds what ReadGains takes in, in bytes.
@@ -37,6 +39,16 @@ func ReadGains(r io.Reader, name string) (*Gains, error) {
 		return nil, fmt.Errorf("%s: %w", name, err)
 	}
 	return g, nil
+}
+
+// MadeFrom reports whether the gains were made from a card, alone or among others, as far
+// as they say: gains written by hand name none, and may be of any.
+func (g *Gains) MadeFrom(c *fit.Card) (bool, error) {
+	if len(g.Cards) == 0 {
+		return true, nil
+	}
+	id, err := c.Fingerprint()
+	return slices.Contains(g.Cards, id), err
 }
 
 // check says which field cannot be.

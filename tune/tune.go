@@ -94,6 +94,13 @@ func Tune(ctx context.Context, cards []*fit.Card, q Requirement, o Options) (*Ga
 	}
 	t.powerLaw(g)
 	t.poleRegion(g)
+	for _, c := range cards {
+		id, err := c.Fingerprint()
+		if err != nil {
+			return nil, err
+		}
+		g.Cards = append(g.Cards, id)
+	}
 	return g, ctx.Err()
 }
 

@@ -13,7 +13,7 @@ import (
 // found of the replayed ones.
 func (r *Replay) Belongs(card *fit.Card, gains *tune.Gains) error {
 	if card != nil && r.Card != "" {
-		id, err := hash(card)
+		id, err := card.Fingerprint()
 		if err != nil {
 			return err
 		}

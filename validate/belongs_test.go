@@ -17,7 +17,7 @@ func TestBelongs(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	id, err := hash(card)
+	id, err := card.Fingerprint()
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -1,18 +1,24 @@
 package validate
 
 import (
+	"slices"
+
 	"lagwright/fit"
 	"lagwright/tune"
 )
 
 // cautions that go with a replay.
 func cautions(p *plan) []string {
-	return []string{
+	var out []string
+	if made := p.gains.Cards; len(made) > 0 && !slices.Contains(made, p.cardID) {
+		out = append(out, "The gains were made from another card: what their file promises is of that one.")
+	}
+	return append(out,
 		"A replay is a computation, not a test: it holds as far as the model does.",
 		p.card.CautionRange(),
 		tune.CautionStart,
 		fit.CautionCutOut,
 		fit.CautionSheath,
 		fit.CautionCodes,
-	}
+	)
 }

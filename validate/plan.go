@@ -94,7 +94,7 @@ func newPlan(card *fit.Card, gains *tune.Gains, o Options) (*plan, error) {
 	p.units = units{card.Units.Input, card.Units.Temperature, difference(card.Units.Temperature)}
 	p.asked = append(demands(o.Requirement, p.units), o.RunLimits.demands(p.units)...)
 	p.loop = p.checkLoop()
-	p.cardID, err = hash(card)
+	p.cardID, err = card.Fingerprint()
 	return p, err
 }
 
@@ -165,7 +165,7 @@ func (p *plan) key() (string, error) {
 func hash(v any) (string, error) {
 	b, err := json.Marshal(v)
 	if err != nil {
-		return "", fmt.Errorf("model card or gains: %w", err)
+		return "", fmt.Errorf("gains: %w", err)
 	}
 	sum := sha256.Sum256(b)
 	return hex.EncodeToString(sum[:8]), nil
