@@ -3,6 +3,9 @@ package main
 import (
 	"cmp"
 	"context"
+	"errors"
+	"io/fs"
+	"os"
 	"path/filepath"
 	"strings"
 	"sync"
@@ -62,6 +65,24 @@ func (l *logFlags) expand(args []string) ([]string, error) {
 		return nil, inputError{err}
 	}
 	return files, nil
+}
+
+// listed is expand for logs that are worked on one by one. A file that is not there stays in the list, so that it
+// is named with the others that cannot be read and does not stop the rest.
+func (l *logFlags) listed(args []string) ([]string, error) {
+	var out []string
+	for _, arg := range args {
+		if _, err := os.Stat(arg); errors.Is(err, fs.ErrNotExist) && !strings.ContainsAny(arg, "*?[") {
+			out = append(out, arg)
+			continue
+		}
+		files, err := l.expand([]string{arg})
+		if err != nil {
+			return nil, err
+		}
+		out = append(out, files...)
+	}
+	return out, nil
 }
 
 // readAll reads every file; the first that cannot be read stops it.

@@ -43,7 +43,7 @@ func runTrack(ctx context.Context, c *console, o *trackOptions, args []string) e
 	if err := c.refuseOverwriting(args, c.output, o.plot.path); err != nil {
 		return err
 	}
-	files, err := o.log.expand(args)
+	files, err := o.log.listed(args)
 	if err != nil {
 		return err
 	}

@@ -100,7 +100,7 @@ func runValidate(ctx context.Context, c *console, o *validateOptions, args []str
 	if err != nil {
 		return err
 	}
-	files, err := o.files(logs)
+	files, err := o.log.listed(logs)
 	if err != nil {
 		return err
 	}
@@ -147,24 +147,6 @@ func splitCards(args []string) (cards, logs []string, err error) {
 		}
 	}
 	return nil, nil, usageErrorf("no log among the arguments: lagwright validate card.json runs/ --gains gains.json")
-}
-
-// files lists the logs. A file that is not there stays in the list, so that it
-// is named with the others that cannot be read and does not stop the rest.
-func (o *validateOptions) files(args []string) ([]string, error) {
-	var out []string
-	for _, arg := range args {
-		if _, err := os.Stat(arg); errors.Is(err, fs.ErrNotExist) && !strings.ContainsAny(arg, "*?[") {
-			out = append(out, arg)
-			continue
-		}
-		files, err := o.log.expand([]string{arg})
-		if err != nil {
-			return nil, err
-		}
-		out = append(out, files...)
-	}
-	return out, nil
 }
 
 // replay replays all files with one card and one set of gains.
