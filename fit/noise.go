@@ -373,7 +373,7 @@ func (w *whitener) passAll(cols [][]float64, carry []carried, t []float64) {
 func (c *carried) steadily(k *kalman, x []float64) {
 	a2, isd, d, g := k.a2, k.isd, k.decay, k.gain
 	a, sum := c.a, 0.0
-	if len(x) >= 4 && a2 > 0 {
+	if len(x) >= 4 && a2 > 1e-150 { // below, u keeps too few digits of a
 		u, h := a2*a, a2*g
 		d2, d3, d4 := d*d, d*d*d, d*d*d*d
 		for ; len(x) >= 4; x = x[4:] {

@@ -25,13 +25,15 @@ func writeJSON(w io.Writer, v any) error {
 }
 
 // Fingerprint tells a card from others by all that it says: the first 16 hexadecimal
-// digits of the SHA-256 of its JSON.
+// digits of the SHA-256 of its JSON. A card read back from its file has the same one.
 func (c *Card) Fingerprint() (string, error) {
 	b, err := json.Marshal(c)
 	if err != nil {
 		return "", fmt.Errorf("model card: %w", err)
 	}
-	sum := sha256.Sum256(b)
+	// A byte of a file's name that is no text is written as this escape, and as the
+	// character itself once it was read.
+	sum := sha256.Sum256(bytes.ReplaceAll(b, []byte(`\ufffd`), []byte("\uFFFD")))
 	return hex.EncodeToString(sum[:8]), nil
 }
 

@@ -99,7 +99,9 @@ func Tune(ctx context.Context, cards []*fit.Card, q Requirement, o Options) (*Ga
 		if err != nil {
 			return nil, err
 		}
-		g.Cards = append(g.Cards, id)
+		if !slices.Contains(g.Cards, id) {
+			g.Cards = append(g.Cards, id)
+		}
 	}
 	return g, ctx.Err()
 }

@@ -17,7 +17,7 @@ const (
 	narrow = usual / 2
 )
 
-// later is the growth from the first collection on.
+// later is the growth from the first collection on; 0 before Widen has set one.
 var later atomic.Int64
 
 // Widen puts the first collection off until the heap has four times the usual size;
@@ -30,16 +30,19 @@ func widen() {
 		return
 	}
 	later.Store(usual)
-	runtime.AddCleanup(new([64]byte), func(struct{}) { debug.SetGCPercent(int(later.Load())) }, struct{}{})
+	runtime.AddCleanup(new([64]byte), func(struct{}) {
+		for p := int64(0); p != later.Load(); { // once more, if it was narrowed meanwhile
+			p = later.Load()
+			debug.SetGCPercent(int(p))
+		}
+	}, struct{}{})
 }
 
-// Narrow has the heap grow by half from one collection to the next. Long columns hold
-// no pointers, and so collections cost next to nothing beside work on every row of them,
-// while garbage as large as they are would double the memory in use.
-var Narrow = sync.OnceFunc(func() {
-	if before := debug.SetGCPercent(narrow); before != usual && before != first {
-		debug.SetGCPercent(before)
-		return
+// Narrow has a widened heap grow by half from one collection to the next. Long columns
+// hold no pointers, and so collections cost next to nothing beside work on every row of
+// them, while garbage as large as they are would double the memory in use.
+func Narrow() {
+	if later.CompareAndSwap(usual, narrow) {
+		debug.SetGCPercent(narrow)
 	}
-	later.Store(narrow)
-})
+}

@@ -36,18 +36,25 @@ func TestWidenAndNarrow(t *testing.T) {
 	if got := collected(usual); got != usual {
 		t.Errorf("after a collection the heap grows by %d %%, want %d", got, usual)
 	}
-	widen()
 	Narrow()
+	if got := percent(); got != narrow {
+		t.Errorf("with long columns the heap grows by %d %% at once, want %d", got, narrow)
+	}
 	if got := collected(narrow); got != narrow {
 		t.Errorf("with long columns the heap grows by %d %%, want %d", got, narrow)
 	}
 }
 
 // What the user asks for stays.
-func TestWidenLeavesOthers(t *testing.T) {
-	defer debug.SetGCPercent(debug.SetGCPercent(70))
-	widen()
-	if got := percent(); got != 70 {
-		t.Errorf("a growth of 70 %% became %d %%", got)
+func TestOthersStay(t *testing.T) {
+	for _, asked := range []int{70, first} {
+		before := debug.SetGCPercent(asked)
+		later.Store(0)
+		widen()
+		Narrow()
+		if got := percent(); got != asked {
+			t.Errorf("a growth of %d %% became %d %%", asked, got)
+		}
+		debug.SetGCPercent(before)
 	}
 }

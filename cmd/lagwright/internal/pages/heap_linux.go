@@ -25,7 +25,7 @@ var begun = new([64]byte)
 var nothing *room
 
 func init() {
-	if !wanted() {
+	if !wanted() || scarce() {
 		return
 	}
 	done := make(chan struct{})
@@ -73,6 +73,14 @@ func join(from, to uintptr) {
 // advise tells the system how a range of memory will be used.
 func advise(from, size uintptr, how int) {
 	_, _, _ = syscall.Syscall(syscall.SYS_MADVISE, from, size, uintptr(how))
+}
+
+// scarce reports whether the addresses that the process may use are limited: room that
+// is never used would then cost others their place.
+func scarce() bool {
+	var limit syscall.Rlimit
+	err := syscall.Getrlimit(syscall.RLIMIT_AS, &limit)
+	return err != nil || uint64(limit.Cur) < 1<<40
 }
 
 // wanted reports whether the system gives large pages to those who ask.
