@@ -32,6 +32,30 @@ func TestCardRoundTrip(t *testing.T) {
 	}
 }
 
+// A card read back from its file must be known again, whatever its log is called.
+func TestFingerprint(t *testing.T) {
+	c := sampleCard(t)
+	seen := map[string]string{}
+	for _, name := range []string{"bump.csv", "b\xb0x.csv", "a<b>&.csv", "\u2028.csv", "\ufffd.csv"} {
+		c.Source[0].File = name
+		want, err := c.Fingerprint()
+		if err != nil {
+			t.Fatal(err)
+		}
+		back, err := ReadCard(bytes.NewReader(cardBytes(t, c)), "card.json")
+		if err != nil {
+			t.Fatal(err)
+		}
+		if got, err := back.Fingerprint(); err != nil || got != want {
+			t.Errorf("log %q: fingerprint %s, read back %s (%v)", name, want, got, err)
+		}
+		if other, ok := seen[want]; ok {
+			t.Errorf("logs %q and %q have one fingerprint", name, other)
+		}
+		seen[want] = name
+	}
+}
+
 // An end that the log does not set is null, never a number.
 func TestOpenEndsAreNull(t *testing.T) {
 	l := twoLags()

@@ -34,8 +34,9 @@ func (out *outcome) derived() []Derived {
 		}
 		if len(v) >= 40 {
 			sort.Float64s(v)
-			d.Low = numberOrNull(quantileOf(v, (1-out.opt.Confidence)/2))
-			d.High = numberOrNull(quantileOf(v, (1+out.opt.Confidence)/2))
+			// Plants of other structures may lie all on one side of the best fit.
+			d.Low = numberOrNull(math.Min(quantileOf(v, (1-out.opt.Confidence)/2), best))
+			d.High = numberOrNull(math.Max(quantileOf(v, (1+out.opt.Confidence)/2), best))
 		}
 		if !math.IsNaN(best) && !math.IsInf(best, 0) {
 			list = append(list, d)

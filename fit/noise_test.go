@@ -130,6 +130,40 @@ func TestWhitenerPassesLikeTheFilter(t *testing.T) {
 	}
 }
 
+// Rows so far apart that the noise between them is next to independent, and then close
+// together again: what is carried over must keep its digits.
+func TestWhitenerFarApart(t *testing.T) {
+	r := rand.New(rand.NewPCG(5, 4))
+	for _, gap := range []float64{300, 346, 500, 710, 735, 744, 746, 2000} {
+		var rows []ident.Row
+		var at, x []float64
+		now := 0.0
+		for k := range 30 {
+			rows, at, x = append(rows, ident.Row{T: now, M: 1}), append(at, now), append(x, r.NormFloat64())
+			switch {
+			case k >= 10 && k < 20:
+				now += gap
+			case k == 20:
+				now += 0.05
+			default:
+				now++
+			}
+		}
+		var f filter
+		s := shape{tc: 1, white: 0.1}
+		f.set(rows, s)
+		want := make([]float64, len(x))
+		f.apply(want, x)
+		w := (&record{}).whitener(s)
+		w.pass(x, at)
+		for k := range x {
+			if math.Abs(x[k]-want[k]) > 1e-12 {
+				t.Errorf("gaps of %g: row %d is %g, want %g", gap, k, x[k], want[k])
+			}
+		}
+	}
+}
+
 // Columns passed together must be what they are when passed one by one, whatever
 // their number, over rows whose distance changes, and far enough apart to be independent.
 func TestWhitenerPassesColumnsTogether(t *testing.T) {

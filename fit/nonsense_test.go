@@ -61,6 +61,11 @@ func TestNonsense(t *testing.T) {
 						}
 					}
 				}
+				for _, d := range card.Derived {
+					if d.Low != nil && *d.Low > d.Value || d.High != nil && *d.High < d.Value {
+						t.Errorf("%s: %s is %g, its interval %g to %g", run.Source.File, d.Name, d.Value, *d.Low, *d.High)
+					}
+				}
 				if _, err := card.PlausiblePlants(); err != nil {
 					t.Errorf("%s: %v", run.Source.File, err)
 				}

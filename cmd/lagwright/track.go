@@ -51,6 +51,12 @@ func runTrack(ctx context.Context, c *console, o *trackOptions, args []string) e
 	if err := ctx.Err(); err != nil {
 		return err
 	}
+	switch {
+	case len(runs) == 0 && len(failed) == 1:
+		return inputErrorf("%s", failed[0].Reason)
+	case len(runs) == 0 && len(failed) > 1:
+		return inputErrorf("none of %d files can be read, the first: %s", len(failed), failed[0].Reason)
+	}
 	options, err := o.fit.with(c, &o.log, nil)
 	if err != nil {
 		return err
