@@ -47,14 +47,12 @@ func init() {
 //go:noinline
 func stretch(p *room) {
 	if p != nil {
-		take(*p)
+		_ = take(*p)
 	}
 }
 
-var taken byte
-
 //go:noinline
-func take(r room) { taken = r[0] }
+func take(r room) byte { return r[0] }
 
 // join asks for large pages from one address of the heap to another and a little beyond,
 // and makes such of the first ones, in which some memory is in use by now. Addresses
