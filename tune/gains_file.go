@@ -5,8 +5,6 @@ import (
 	"fmt"
 	"io"
 	"slices"
-
-	"lagwright/fit"
 )
 
 // maxGainsFile bounds what ReadGains takes in, in bytes.
@@ -41,14 +39,10 @@ func ReadGains(r io.Reader, name string) (*Gains, error) {
 	return g, nil
 }
 
-// MadeFrom reports whether the gains were made from a card, alone or among others, as far
-// as they say: gains written by hand name none, and may be of any.
-func (g *Gains) MadeFrom(c *fit.Card) (bool, error) {
-	if len(g.Cards) == 0 {
-		return true, nil
-	}
-	id, err := c.Fingerprint()
-	return slices.Contains(g.Cards, id), err
+// MadeFrom reports whether the gains were made from the card of a fingerprint, alone or
+// among others, as far as they say: gains written by hand name none, and may be of any.
+func (g *Gains) MadeFrom(card string) bool {
+	return len(g.Cards) == 0 || slices.Contains(g.Cards, card)
 }
 
 // check says which field cannot be.

@@ -49,16 +49,23 @@ func TestSmallStepIsJudgedToo(t *testing.T) {
 	near(t, "violation", o.violation, f.violation, 1e-12)
 }
 
-// What is recommended under limits keeps its overshoot in a small step, and
-// says so; without limits nothing is said of it.
-func TestLimitsLeaveTheLoopSound(t *testing.T) {
-	c := card(t, 3, 0.02)
+// stepToTheLimit is a card, its plant and the middle of its input, and a requirement whose
+// step an input limit cuts short.
+func stepToTheLimit(t *testing.T) (c *fit.Card, plant ident.Plant, middle float64, q Requirement) {
+	t.Helper()
+	c = card(t, 3, 0.02)
 	plant, err := c.Plant()
 	if err != nil {
 		t.Fatal(err)
 	}
-	middle := (c.Range.Input[0] + c.Range.Input[1]) / 2
-	q := Requirement{Overshoot: ptr(5), InputMin: ptr(0), InputMax: ptr(middle + 2), SetpointStep: ptr(1.7 * plant.Gain)}
+	middle = (c.Range.Input[0] + c.Range.Input[1]) / 2
+	return c, plant, middle, Requirement{Overshoot: ptr(5), InputMin: ptr(0), InputMax: ptr(middle + 2), SetpointStep: ptr(1.7 * plant.Gain)}
+}
+
+// What is recommended under limits keeps its overshoot in a small step, and
+// says so; without limits nothing is said of it.
+func TestLimitsLeaveTheLoopSound(t *testing.T) {
+	c, plant, middle, q := stepToTheLimit(t)
 	says := func(g *Gains) bool {
 		var b strings.Builder
 		if err := g.WriteText(&b); err != nil {
@@ -94,13 +101,7 @@ func TestLimitsLeaveTheLoopSound(t *testing.T) {
 // A published rule that only a limit keeps from overshooting is told what it
 // misses.
 func TestReasonsOfSmallSteps(t *testing.T) {
-	c := card(t, 3, 0.02)
-	plant, err := c.Plant()
-	if err != nil {
-		t.Fatal(err)
-	}
-	middle := (c.Range.Input[0] + c.Range.Input[1]) / 2
-	q := Requirement{Overshoot: ptr(5), InputMin: ptr(0), InputMax: ptr(middle + 2), SetpointStep: ptr(1.7 * plant.Gain)}
+	c, _, _, q := stepToTheLimit(t)
 	of := func(c *fit.Card, q Requirement) (*Gains, string) {
 		g, err := Tune(context.Background(), []*fit.Card{c}, q, Options{Rule: "zn-step", Controller: "pi", Workers: 2})
 		if err != nil {

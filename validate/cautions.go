@@ -1,8 +1,6 @@
 package validate
 
 import (
-	"slices"
-
 	"lagwright/fit"
 	"lagwright/tune"
 )
@@ -10,7 +8,7 @@ import (
 // cautions that go with a replay.
 func cautions(p *plan) []string {
 	var out []string
-	if made := p.gains.Cards; len(made) > 0 && !slices.Contains(made, p.cardID) {
+	if !p.gains.MadeFrom(p.cardID) {
 		out = append(out, "The gains were made from another card: what their file promises is of that one.")
 	}
 	return append(out,

@@ -76,13 +76,15 @@ func runReport(ctx context.Context, c *console, o *reportOptions, args []string)
 // agree refuses parts of a page that are not about one heater and one set of
 // gains.
 func (j *job) agree() error {
-	if c, g := j.card, j.gains; c != nil && g != nil && g.Units != (tune.GainUnits{Input: c.Units.Input, Temperature: c.Units.Temperature}) {
-		return inputErrorf("the gains are in %s/%s, the card is in %s/%s: these are not of one heater", g.Units.Input, g.Units.Temperature, c.Units.Input, c.Units.Temperature)
-	}
-	if j.card != nil && j.gains != nil {
-		if ok, err := j.gains.MadeFrom(j.card); err != nil {
+	if c, g := j.card, j.gains; c != nil && g != nil {
+		if g.Units != (tune.GainUnits{Input: c.Units.Input, Temperature: c.Units.Temperature}) {
+			return inputErrorf("the gains are in %s/%s, the card is in %s/%s: these are not of one heater", g.Units.Input, g.Units.Temperature, c.Units.Input, c.Units.Temperature)
+		}
+		id, err := c.Fingerprint()
+		if err != nil {
 			return err
-		} else if !ok {
+		}
+		if !g.MadeFrom(id) {
 			return inputErrorf("the gains were made from another card, and what they say of the heater is of that one: give that card, or tune this one")
 		}
 	}

@@ -14,16 +14,18 @@ const (
 	collapse = 25
 )
 
-// room is as much memory as a call of take takes of the stack, and half of what a call of
-// stretch does: Go widens the stack to the next power of two, 64 MiB.
+// room is half of the memory that is reserved, which with what a stack needs besides
+// makes 64 MiB.
 type room [31 << 20]byte
 
 // begun lies in the memory that the process begins with.
 var begun = new([64]byte)
 
-// nothing is never set.
-var nothing *room
-
+// The next addresses of the heap are had, and left free, by a goroutine that widens its
+// stack and ends. There is no other way: a stack is memory of the heap, of which only what
+// is used is touched, and goes back to it when its goroutine ends, where a piece of
+// the heap would have to wait for a collection. That collection, and what the heap
+// is touched for before it can be made, cost a tenth of a fit of a thousand rows.
 func init() {
 	if !wanted() || scarce() {
 		return
@@ -31,28 +33,12 @@ func init() {
 	done := make(chan struct{})
 	go func() {
 		defer close(done)
-		stretch(nothing)
+		stretch[room](nil)
 		var here byte // on the stack as it is now
 		join(uintptr(unsafe.Pointer(begun)), uintptr(unsafe.Pointer(&here)))
 	}()
 	<-done
 }
-
-// stretch widens the stack and leaves it alone. It is the one way to have the heap's next
-// addresses and to leave them free: a stack is memory of the heap, of which only what is
-// used is touched, and goes back to it when its goroutine ends, where a piece of
-// the heap would have to wait for a collection. That collection, and what the heap
-// is touched for before it can be made, cost a tenth of a fit of a thousand rows.
-//
-//go:noinline
-func stretch(p *room) {
-	if p != nil {
-		_ = take(*p)
-	}
-}
-
-//go:noinline
-func take(r room) byte { return r[0] }
 
 // join asks for large pages from one address of the heap to another and a little beyond,
 // and makes such of the first ones, in which some memory is in use by now. Addresses

@@ -3,20 +3,19 @@ package pages
 // depth is half of the stack that a command comes to use.
 type depth [60 << 10]byte
 
-// shallow is never set.
-var shallow *depth
+// The main stack is widened once, while next to nothing lies on it: grown by doubling, it
+// would be copied again and again, each time frame by frame.
+func init() { stretch[depth](nil) }
 
-func init() { deepen(shallow) }
-
-// deepen widens the main goroutine's stack once, while next to nothing lies on it:
-// grown by doubling, it would be copied again and again, each time frame by frame.
+// stretch widens the stack by twice a T, to the next power of two, and leaves it alone: p
+// is nil, and the call that takes the room is never made.
 //
 //go:noinline
-func deepen(p *depth) {
+func stretch[T any](p *T) {
 	if p != nil {
-		_ = reach(*p)
+		take(*p)
 	}
 }
 
 //go:noinline
-func reach(d depth) byte { return d[0] }
+func take[T any](T) {}
