@@ -102,16 +102,30 @@ func source(run *data.Run) CardSource {
 func extent(runs []*data.Run, column func(*data.Run) []float64) [2]float64 {
 	lo, hi := math.Inf(1), math.Inf(-1)
 	for _, r := range runs {
-		for _, v := range column(r) {
-			if v < lo && v > math.Inf(-1) {
-				lo = v
-			}
-			if v > hi && v < math.Inf(1) {
-				hi = v
-			}
-		}
+		from, to := rangeOf(column(r))
+		lo, hi = math.Min(lo, from), math.Max(hi, to)
 	}
 	return [2]float64{lo, hi}
+}
+
+// rangeOf is the range of the finite values of a column, infinite ends first where there
+// are none.
+func rangeOf(x []float64) (lo, hi float64) {
+	lo, hi = math.Inf(1), math.Inf(-1)
+	last := math.NaN()
+	for _, v := range x {
+		if v == last { // as nearly every input of a bump test
+			continue
+		}
+		last = v
+		if v < lo && v > math.Inf(-1) {
+			lo = v
+		}
+		if v > hi && v < math.Inf(1) {
+			hi = v
+		}
+	}
+	return lo, hi
 }
 
 func condition(runs []*data.Run, column func(*data.Run) []float64) *[2]float64 {

@@ -3,6 +3,8 @@ package fit
 import (
 	"math"
 
+	"gonum.org/v1/gonum/floats"
+
 	"lagwright/ident"
 )
 
@@ -28,85 +30,101 @@ type part struct {
 	sim    *ident.Simulator // of these rows
 }
 
-// everyRow visits what x leaves of the full log, piece by piece: row lo and
-// those after it. The slice may be written to.
-func (r *record) everyRow(x explained, visit func(lo int, left []float64)) {
-	n := len(r.root.t)
-	next := r.leaving(x, part{0, n, r.root.sim.Clone()})
-	left := make([]float64, min(pieceRows, n))
-	for lo := 0; lo < n; {
-		rows := left[:min(len(left), n-lo)]
-		next(rows)
-		visit(lo, rows)
-		lo += len(rows)
-	}
-}
-
 // residual sets left to what x leaves of a part of the full log.
 func (r *record) residual(left []float64, x explained, p part) {
-	next := r.leaving(x, p)
+	walk := r.leaving(x, p)
 	for len(left) > 0 {
 		n := min(pieceRows, len(left))
-		next(left[:n])
+		walk.next(left[:n])
 		left = left[n:]
 	}
 }
 
-// leaving returns a function that sets rows, at most pieceRows of them, to what x
-// leaves of the next rows of a part of the full log.
-func (r *record) leaving(x explained, p part) func(rows []float64) {
-	takeInitial := r.initialRows(x, p)
-	response := p.sim.Pieces(x.st, x.lags, x.dead, false)
-	base, slope := x.beta[0], 0.0
-	if r.drift {
-		slope = x.beta[1]
-	}
-	lo := p.lo
-	var dst [1][]float64
-	return func(rows []float64) {
-		dst[0] = rows
-		response(dst[:])
-		t, logged := r.root.t[lo:lo+len(rows)], r.root.y[lo:lo+len(rows)]
-		for k, v := range rows {
-			rows[k] = logged[k] - x.gain*v - base - slope*t[k]
-		}
-		takeInitial(rows)
-		lo += len(rows)
-	}
+// leaving walks over the rows of a part of the full log and finds what x leaves of them.
+type leaving struct {
+	r  *record
+	x  explained
+	lo int // the next row
+
+	base, slope float64
+	sim         *ident.Simulator
+	response    func(dst [][]float64) int
+	dst         [1][]float64
+
+	// Of the initial state: its coefficients, the response to the change at the first row,
+	// or the columns of free states.
+	state       []float64
+	started     *ident.Simulator
+	startedRows func(dst [][]float64) int
+	column      []float64
+	free        [][]float64
 }
 
-// initialRows returns a function that takes what the initial state adds out of
-// the next rows of a part.
-func (r *record) initialRows(x explained, p part) func(rows []float64) {
-	beta := x.beta[1:]
+func (r *record) leaving(x explained, p part) *leaving {
+	l := &leaving{r: r, x: x, lo: p.lo, base: x.beta[0], sim: p.sim, state: x.beta[1:]}
+	l.response = p.sim.Pieces(x.st, x.lags, x.dead, false)
 	if r.drift {
-		beta = beta[1:]
-	}
-	take := func(rows, column []float64, times float64) {
-		for k, v := range column[:len(rows)] {
-			rows[k] -= times * v
-		}
+		l.slope, l.state = x.beta[1], x.beta[2:]
 	}
 	switch r.rest {
 	case earlier:
-		next := p.sim.WithInput(r.fromFirstRow()).Pieces(x.st, x.lags, x.dead, false)
-		buf := make([]float64, min(pieceRows, p.hi-p.lo))
-		return func(rows []float64) {
-			next([][]float64{buf[:len(rows)]})
-			take(rows, buf, beta[0])
-		}
+		l.started = p.sim.WithInput(r.fromFirstRow())
+		l.startedRows = l.started.Pieces(x.st, x.lags, x.dead, false)
 	case free: // from the first row of the log, whatever the part
-		cols := columns(max(x.st.Order(), 1), len(r.root.t))
-		r.root.sim.Clone().FreeStates(cols, x.st, x.lags, x.dead)
-		lo := p.lo
-		return func(rows []float64) {
-			for i, b := range beta {
-				take(rows, cols[i][lo:], b)
-			}
-			lo += len(rows)
+		l.free = columns(max(x.st.Order(), 1), len(r.root.t))
+		r.root.sim.Clone().FreeStates(l.free, x.st, x.lags, x.dead)
+	}
+	return l
+}
+
+// next sets rows to what is left of the next ones.
+func (l *leaving) next(rows []float64) {
+	l.dst[0] = rows
+	l.response(l.dst[:])
+	lo, root := l.lo, l.r.root
+	logged := root.y[lo : lo+len(rows)]
+	if l.slope == 0 {
+		for k, v := range rows {
+			rows[k] = logged[k] - l.x.gain*v - l.base
+		}
+	} else {
+		t := root.t[lo : lo+len(rows)]
+		for k, v := range rows {
+			rows[k] = logged[k] - l.x.gain*v - l.base - l.slope*t[k]
 		}
 	}
-	return func([]float64) {}
+	switch l.r.rest {
+	case earlier:
+		l.column = resize(l.column, len(rows))
+		l.startedRows([][]float64{l.column})
+		floats.AddScaled(rows, -l.state[0], l.column)
+	case free:
+		for i, b := range l.state {
+			floats.AddScaled(rows, -b, l.free[i][lo:lo+len(rows)])
+		}
+	}
+	l.lo += len(rows)
+}
+
+// rest passes the next n rows where x is a straight line over them.
+func (l *leaving) rest(n int) (model line, ok bool) {
+	level, slope, ok := l.sim.Resting(n)
+	if !ok || l.r.rest == free {
+		return line{}, false
+	}
+	step := l.r.root.step
+	model = line{l.base + l.slope*l.r.root.t[l.lo], l.slope * step}.plus(l.x.gain, line{level, slope * step})
+	if l.started != nil {
+		level, slope, ok := l.started.Resting(n)
+		if !ok {
+			return line{}, false
+		}
+		model = model.plus(l.state[0], line{level, slope * step})
+		l.started.Rest(n)
+	}
+	l.sim.Rest(n)
+	l.lo += n
+	return model, true
 }
 
 // fromFirstRow is an input that changes by one at the first row.

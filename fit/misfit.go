@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"math"
 
-	"lagwright/data"
 	"lagwright/ident"
 )
 
@@ -44,10 +43,11 @@ type scene struct {
 }
 
 // scenes prepares the logs.
-func (m misfit) scenes(runs []*data.Run) []*scene {
+func (m misfit) scenes(recs []*record) []*scene {
 	var all []*scene
-	for _, run := range runs {
-		s := &scene{in: ident.HeldInput(run.T, run.U, m.law), bumps: ident.FindBumps(run.T, run.U, run.Y)}
+	for _, r := range recs {
+		run := r.run
+		s := &scene{in: r.input, bumps: ident.FindBumps(run.T, run.U, run.Y)}
 		var y []float64
 		for _, k := range closeRows(run, s.bumps, misfitRows) {
 			if !math.IsNaN(run.Y[k]) {

@@ -242,13 +242,15 @@ func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, 
 	e, root := f.e, r.root
 	nl, m := e.nl, len(idx)
 	lags, dead := e.lags(at.eta), at.eta[nl]
-	response := root.sim.Clone().Pieces(e.st, lags, dead, true)
+	walk := restWalk{f: f, r: r, gain: at.gain, beta: beta, sim: root.sim.Clone()}
+	response := walk.sim.Pieces(e.st, lags, dead, true)
 	var started func([][]float64) int
 	if r.rest == earlier {
-		started = root.sim.WithInput(r.fromFirstRow()).Pieces(e.st, lags, dead, true)
+		walk.started = root.sim.WithInput(r.fromFirstRow())
+		started = walk.started.Pieces(e.st, lags, dead, true)
 	}
 	white, carry := r.whitener(r.shape), make([]carried, m)
-	size := min(pieceRows, len(root.t))
+	size := min(root.sums.pieceLength(), len(root.t))
 	raw, cols := columnsIn(&memory.raw, nl+2, size), columnsIn(&memory.cols, m, size)
 	var start [][]float64
 	if started != nil {
@@ -256,6 +258,10 @@ func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, 
 	}
 	upper := columns(m, m)
 	for lo := 0; lo < len(root.t); {
+		if n, ok := walk.pass(lo, &white, carry, upper); ok {
+			lo += n
+			continue
+		}
 		n := response(raw)
 		if started != nil {
 			started(start)

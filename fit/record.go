@@ -27,13 +27,14 @@ type record struct {
 	rest  initial
 	drift bool
 
-	root  *record // the record at full resolution; itself when nothing is averaged
-	used  int     // rows of the full log that these rows stand for, see excerpt.go
-	scope scope   // where they may lie
-	most  int     // how many there may be, of a log whose input never rests
-	even  bool    // the full log is evenly sampled
-	usual float64 // s, interval of a log that is so but for jitter, else 0
-	parts []part  // of the full log, on which its noise is judged
+	root  *record   // the record at full resolution; itself when nothing is averaged
+	used  int       // rows of the full log that these rows stand for, see excerpt.go
+	scope scope     // where they may lie
+	most  int       // how many there may be, of a log whose input never rests
+	even  bool      // the full log is evenly sampled
+	usual float64   // s, interval of a log that is so but for jitter, else 0
+	parts []part    // of the full log, on which its noise is judged
+	sums  *restSums // over its pieces, nil where they are not worth it
 
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
 
@@ -76,10 +77,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	if len(r.t) < 8 {
 		return nil, fmt.Errorf("%s: %w: %d rows hold a temperature, at least 8 are needed", name, ErrTooShort, len(r.t))
 	}
-	lo, hi := r.y[0], r.y[0]
-	for _, v := range r.y {
-		lo, hi = math.Min(lo, v), math.Max(hi, v)
-	}
+	lo, hi := rangeOf(r.y)
 	if lo == hi {
 		return nil, fmt.Errorf("%s: %w: %sit is %.6g in every row; check the sensor, or name the right column with --temp-col", name, ErrConstant, columnNamed(run.Source.Columns.Temperature), lo)
 	}
@@ -94,6 +92,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	r.used, r.most = len(r.t), mostRows
 	r.even = isEven(r.t, r.step)
 	r.usual = usualStep(r.t, r.step)
+	r.sums = newRestSums(r.t, r.y, r.step, r.even)
 	r.sim = ident.NewSimulator(r.t, r.input)
 	r.scope = r.wholeScope()
 	r.parts = r.noiseParts(len(r.t))

@@ -13,6 +13,7 @@ type tangent struct {
 	rec    *record
 	left   []float64   // log minus model, unwhitened
 	rest   []float64   // the same of the parts of the log on which the noise is judged, when rec averages rows, else nil
+	parts  []part      // these
 	model  explained   // the model itself
 	cols   [][]float64 // orthonormal (unwhitened) directions
 	first  int         // how many of cols are linear columns
@@ -28,12 +29,13 @@ type tangent struct {
 
 // tangentMemory is what the tangents of a record use one after the other.
 type tangentMemory struct {
-	rest   []float64   // of the tangent
-	room   [][]float64 // of its columns
-	spare  []float64   // rest whitened
-	white  [][]float64 // its directions and left, whitened
-	factor [][]float64 // Cholesky factor of their products
-	turned [][]float64 // a part of that, in terms of the parameters
+	rest     []float64     // of the tangent
+	room     [][]float64   // of its columns
+	spare    []float64     // rest whitened
+	products []lagProducts // of rest, by parts
+	white    [][]float64   // its directions and left, whitened
+	factor   [][]float64   // Cholesky factor of their products
+	turned   [][]float64   // a part of that, in terms of the parameters
 }
 
 // tangents linearises the model at p on every record. They are valid until the
@@ -61,11 +63,15 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			rows += c.hi - c.lo
 		}
 		t.memory.rest = longColumn(t.memory.rest, rows)
-		t.rest = t.memory.rest
+		t.rest, t.parts = t.memory.rest, r.parts
+		if t.memory.products == nil {
+			t.memory.products = make([]lagProducts, len(r.parts))
+		}
 		next := t.rest
-		for _, c := range r.parts {
+		for i, c := range r.parts {
 			n := c.hi - c.lo
 			r.residual(next[:n], t.model, c)
+			t.memory.products[i].set(next[:n])
 			next = next[n:]
 		}
 	}
@@ -351,13 +357,9 @@ func (t *tangent) fixedMargins(s2, dof float64) []margin {
 func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
 	m := t.memory
 	m.spare = longColumn(m.spare, len(t.rest))
-	copy(m.spare, t.rest)
 	w := t.rec.whitener(s)
-	left := m.spare
-	for _, c := range t.rec.parts {
-		n := c.hi - c.lo
-		w.pass(left[:n], t.rec.root.t[c.lo:c.hi])
-		left = left[n:]
+	for i, c := range t.parts {
+		w.passSum(&m.products[i], t.rec.root.t[c.lo:c.hi], m.spare)
 	}
 	taken := (r.all - r.least) * float64(len(t.rest)) / float64(t.rec.used)
 	return math.Max(w.sum-taken, 1e-3*w.sum), w.logDeterminant()
@@ -382,13 +384,33 @@ func (t *tangent) bestShape(near *shape) node {
 		}
 	}
 	da := math.Log(s.hi/s.lo) / 8
+	coarse := &shapeSearch{t: t.glance(), lo: s.lo, hi: s.hi}
+	coarse.best = coarse.t.judge(whiteShape)
 	for i := range 9 {
 		for _, w := range []float64{0, 0.3, 0.7, 0.93} {
-			s.at(s.lo*math.Exp(float64(i)*da), w)
+			coarse.at(s.lo*math.Exp(float64(i)*da), w)
 		}
 	}
+	s.at(coarse.best.shape.tc, coarse.best.shape.white)
 	s.narrow(da/2, 0.12)
 	return s.best
+}
+
+// glance is the tangent with a quarter of the parts on which the noise is judged, the first
+// of them.
+func (t *tangent) glance() *tangent {
+	few := len(t.parts) / 4
+	if few == 0 {
+		return t
+	}
+	c := *t
+	rows := 0
+	c.parts = t.parts[:few]
+	for _, p := range c.parts {
+		rows += p.hi - p.lo
+	}
+	c.rest = t.rest[:rows]
+	return &c
 }
 
 // shapeSearch is a search for the best noise shape.

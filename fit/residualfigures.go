@@ -62,11 +62,27 @@ func (b *bounded) residualFigures() []*residualFigures {
 // needed, unless nil.
 func (r *record) walkResiduals(x explained, old *residualFigures) (*residualFigures, *whitener) {
 	f, w := r.newResidualFigures(old), r.whitener(r.shape)
-	r.everyRow(x, func(lo int, left []float64) {
-		f.add(left)
-		w.pass(left, r.root.t[lo:lo+len(left)])
-		f.addWhite(left, lo, len(r.root.t))
-	})
+	t, sums := r.root.t, r.root.sums
+	walk := r.leaving(x, part{0, len(t), r.root.sim.Clone()})
+	var rest restRows
+	size := sums.pieceLength()
+	left := make([]float64, min(size, len(t)))
+	for lo := 0; lo < len(t); {
+		n := min(size, len(t)-lo)
+		if reach, ok := sums.serve(&w, lo, n); ok {
+			if model, ok := walk.rest(n); ok {
+				rest.under(model, sums, lo, n, reach)
+				w.passRest(&rest, f)
+				lo += n
+				continue
+			}
+		}
+		walk.next(left[:n])
+		f.add(left[:n])
+		w.pass(left[:n], t[lo:lo+n])
+		f.addWhite(left[:n], lo, len(t))
+		lo += n
+	}
 	return f, &w
 }
 
@@ -106,12 +122,22 @@ func (out *outcome) yardstick(i int) *yardstick {
 	r := out.recs[i].root
 	n := len(r.t)
 	c := &yardstick{changes: groupedChanges(r, groupSize(n)), bases: map[int][][]float64{}}
-	mean := total(r.y) / float64(n)
-	for _, v := range r.y {
-		c.sst += (v - mean) * (v - mean)
-	}
+	c.sst = squaresAbout(r.y, total(r.y)/float64(n))
 	out.yardsticks[i] = c
 	return c
+}
+
+// squaresAbout is the sum of squares of x about a value.
+func squaresAbout(x []float64, value float64) float64 {
+	var a, b, c, d float64 // one sum alone waits for itself
+	for ; len(x) >= 4; x = x[4:] {
+		p, q, r, s := x[0]-value, x[1]-value, x[2]-value, x[3]-value
+		a, b, c, d = a+p*p, b+q*q, c+r*r, d+s*s
+	}
+	for _, v := range x {
+		a += (v - value) * (v - value)
+	}
+	return (a + b) + (c + d)
 }
 
 // residualFigures are sums over the residuals of a record.

@@ -148,23 +148,56 @@ func windowedChanges(du []float64, windows int) [][]float64 {
 // by their mean rank, and takes the mean off.
 func normalScores(r []float64) []float64 {
 	n := len(r)
-	order := make([]int, n)
-	for t := range order {
-		order[t] = t
-	}
-	slices.SortFunc(order, func(a, b int) int { return cmp.Compare(r[a], r[b]) })
+	order := ordered(r)
 	scores := make([]float64, n)
 	for a := 0; a < n; {
 		b := a + 1
-		for b < n && r[order[b]] == r[order[a]] {
+		for b < n && order[b].value == order[a].value {
 			b++
 		}
 		z := normalQuantile((float64(a+b) + 1) / 2 / float64(n+1))
-		for _, t := range order[a:b] {
-			scores[t] = z
+		for _, e := range order[a:b] {
+			scores[e.at] = z
 		}
 		a = b
 	}
 	floats.AddConst(-stat.Mean(scores, nil), scores)
 	return scores
+}
+
+// placed is a value with its place.
+type placed struct {
+	value float64
+	at    int
+}
+
+// ordered is r in ascending order. The values are dealt out into as many even classes as
+// there are values, which are then sorted one by one: residuals leave few in most.
+func ordered(r []float64) []placed {
+	n := len(r)
+	lo, hi := rangeOf(r)
+	class := func(v float64) int {
+		if c := (v - lo) / (hi - lo) * float64(n); c > 0 { // not where all are the same
+			return int(math.Min(c, float64(n-1)))
+		}
+		return 0
+	}
+	next := make([]int, n+1) // where the next value of a class goes
+	for _, v := range r {
+		next[class(v)+1]++
+	}
+	for c := 1; c < n; c++ {
+		next[c] += next[c-1]
+	}
+	out := make([]placed, n)
+	for t, v := range r {
+		c := class(v)
+		out[next[c]] = placed{v, t}
+		next[c]++
+	}
+	for c, from := 0, 0; c < n; c++ { // next[c] is now the end of the class
+		slices.SortFunc(out[from:next[c]], func(a, b placed) int { return cmp.Compare(a.value, b.value) })
+		from = next[c]
+	}
+	return out
 }

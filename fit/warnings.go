@@ -92,7 +92,7 @@ func (out *outcome) warnNonlinear(runs []*data.Run, b *bounded, m *Model, add wa
 	for _, e := range b.est {
 		fit.held = append(fit.held, e.fixed)
 	}
-	scenes := fit.scenes(runs)
+	scenes := fit.scenes(out.recs)
 	if p := m.Residuals.InputCorrelationP; p < 0.01 {
 		looks := fit.looks(scenes, temperatureStep(runs[0].Units.Temperature))
 		if looks != "" {

@@ -92,7 +92,7 @@ func (l level) mean() float64 { return l.first + l.excess/float64(l.end-l.held) 
 // heldLevels cuts the input into levels.
 func heldLevels(u []float64) []level {
 	noise := differenceNoise(u)
-	threshold := max(leastBump*(slices.Max(u)-slices.Min(u)), noisyBump*noise)
+	threshold := max(leastBump*swing(u), noisyBump*noise)
 	now := level{end: 1, first: u[0]}
 	var out []level
 	for k := 1; k < len(u); k++ {
@@ -118,6 +118,17 @@ func heldLevels(u []float64) []level {
 		now.excess += u[k] - now.first
 	}
 	return append(out, now)
+}
+
+// swing is the range of an input that repeats itself in most rows.
+func swing(u []float64) float64 {
+	lo, hi := u[0], u[0]
+	for k := 1; k < len(u); k++ {
+		if u[k] != u[k-1] {
+			lo, hi = min(lo, u[k]), max(hi, u[k])
+		}
+	}
+	return hi - lo
 }
 
 // joinRamps joins short levels on the way up or down with the level they lead

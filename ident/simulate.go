@@ -18,6 +18,7 @@ type Simulator struct {
 	change   []float64 // of the input at in.At
 	greatest float64   // |change|; 1 without a change
 
+	valid      bool   // the parameters of the evaluation
 	evaluation uint64 // counts the evaluations, to tell what is remembered from which
 
 	chain chain
@@ -135,11 +136,11 @@ func (s *Simulator) Sensitivities(dst [][]float64, st Structure, lags []float64,
 // its columns have elements, and returns how many it wrote: a long log in
 // bounded memory. Another evaluation of s ends it.
 func (s *Simulator) Pieces(st Structure, lags []float64, deadTime float64, sensitivities bool) func(dst [][]float64) int {
-	valid := s.prepare(st, lags, deadTime, sensitivities)
+	s.prepare(st, lags, deadTime, sensitivities)
 	return func(dst [][]float64) int {
 		rows := min(len(dst[0]), len(s.t)-s.row)
 		switch {
-		case !valid:
+		case !s.valid:
 			for _, column := range dst {
 				fillNaN(column)
 			}
@@ -186,7 +187,8 @@ func (s *Simulator) prepare(st Structure, lags []float64, deadTime float64, sens
 	}
 	s.integrating, s.deadTime = st.integrating, deadTime
 	s.rewind()
-	return finite(deadTime) && s.chain.set(st, lags, sensitivities)
+	s.valid = finite(deadTime) && s.chain.set(st, lags, sensitivities)
+	return s.valid
 }
 
 // rewind goes back to before the first row, at rest.
