@@ -66,7 +66,7 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 			samples = append(samples, response)
 		}
 		c.t = append(c.t, response.T+float64(response.M-1)/2*response.H)
-		c.y = append(c.y, total(root.y[k:k+m])/float64(m))
+		c.y = append(c.y, root.sumOf(k, k+m)/float64(m))
 		k += m
 	}
 	if float64(len(c.rows)) > 0.7*float64(k-from) {
@@ -80,6 +80,27 @@ func (r *record) averaged(allowed func(t float64) int) *record {
 	}
 	c.sim = ident.NewBlockSimulator(samples, root.scope.input)
 	return r.adopt(&c)
+}
+
+// chunkRows is the number of rows whose temperatures are added up once for all averages.
+const chunkRows = 256
+
+// chunkSums are the sums of the chunks of a column.
+func chunkSums(y []float64) []float64 {
+	out := make([]float64, len(y)/chunkRows)
+	for i := range out {
+		out[i] = total(y[i*chunkRows : (i+1)*chunkRows])
+	}
+	return out
+}
+
+// sumOf is the sum of the temperatures of the rows lo ≤ k < hi of a full log.
+func (r *record) sumOf(lo, hi int) float64 {
+	first, last := (lo+chunkRows-1)/chunkRows, hi/chunkRows
+	if first >= last {
+		return total(r.y[lo:hi])
+	}
+	return total(r.y[lo:first*chunkRows]) + total(r.chunks[first:last]) + total(r.y[last*chunkRows:hi])
 }
 
 // within is the longest ladder length of rows from k on that span no more than m

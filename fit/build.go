@@ -43,7 +43,7 @@ func (out *outcome) card(ctx context.Context, runs []*data.Run) *Card {
 		Drift: map[bool]string{false: "none", true: "linear"}[out.drift], BumpTime: o.BumpInstant,
 		Confidence: o.Confidence,
 	}
-	c.Range = CardRange{Input: extent(runs, func(r *data.Run) []float64 { return r.U }), Temperature: extent(runs, func(r *data.Run) []float64 { return r.Y })}
+	c.Range = out.extent()
 	c.Conditions.Airflow = condition(runs, func(r *data.Run) []float64 { return r.Airflow })
 	c.Conditions.Inlet = condition(runs, func(r *data.Run) []float64 { return r.Inlet })
 	for _, run := range runs {
@@ -98,6 +98,16 @@ func source(run *data.Run) CardSource {
 	return out
 }
 
+// extent is that of all logs.
+func (out *outcome) extent() CardRange {
+	e := out.recs[0].extent
+	for _, r := range out.recs[1:] {
+		e.Input = [2]float64{math.Min(e.Input[0], r.extent.Input[0]), math.Max(e.Input[1], r.extent.Input[1])}
+		e.Temperature = [2]float64{math.Min(e.Temperature[0], r.extent.Temperature[0]), math.Max(e.Temperature[1], r.extent.Temperature[1])}
+	}
+	return e
+}
+
 // extent is the range of the finite values of a column over the runs.
 func extent(runs []*data.Run, column func(*data.Run) []float64) [2]float64 {
 	lo, hi := math.Inf(1), math.Inf(-1)
@@ -112,16 +122,11 @@ func extent(runs []*data.Run, column func(*data.Run) []float64) [2]float64 {
 // are none.
 func rangeOf(x []float64) (lo, hi float64) {
 	lo, hi = math.Inf(1), math.Inf(-1)
-	last := math.NaN()
 	for _, v := range x {
-		if v == last { // as nearly every input of a bump test
-			continue
-		}
-		last = v
-		if v < lo && v > math.Inf(-1) {
+		if v < lo && !math.IsInf(v, -1) {
 			lo = v
 		}
-		if v > hi && v < math.Inf(1) {
+		if v > hi && !math.IsInf(v, 1) {
 			hi = v
 		}
 	}

@@ -38,15 +38,9 @@ func (e *engine) movable(p *point, a [][]float64) []int {
 }
 
 // uncut are those in free whose step x came to at least half, where a bound, or a lag
-// just above zero, has cut those of others; none where that did not happen. Next to
-// nothing is left of a step in which such a lag had the others' part, as where it should
-// give way to the dead time: it must be taken without that lag. A search of the
-// optimum comes upon it on other ways, and only profiles take it. The list takes
-// the place of free.
+// just above zero, has cut those of others; none where that did not happen.
+// The list takes the place of free.
 func (e *engine) uncut(p *point, free []int, x, next []float64) []int {
-	if !e.profiling {
-		return nil
-	}
 	whole := free[:0]
 	for i, j := range free {
 		if math.Abs(next[j]-p.eta[j]) >= 0.5*math.Abs(x[i]) {
@@ -59,6 +53,59 @@ func (e *engine) uncut(p *point, free []int, x, next []float64) []int {
 	return whole
 }
 
+// within steps on from next, where the step x of the parameters in free has been cut to
+// so little that the rest of it leads nowhere: those that were cut keep what is left of
+// their step where it leads downhill, and the others take the step that goes with it.
+func (e *engine) within(p *point, a [][]float64, free []int, x, next []float64, lambda float64) (predicted float64) {
+	all := append([]int(nil), free...)
+	for len(free) > 0 {
+		rest := e.uncut(p, free, x, next)
+		if len(rest) == 0 {
+			break
+		}
+		rhs := make([]float64, len(p.eta))
+		move := make([]float64, len(p.eta))
+		for _, j := range all {
+			if slices.Contains(rest, j) {
+				continue
+			}
+			if move[j] = next[j] - p.eta[j]; move[j]*p.grad[j] < 0 {
+				move[j], next[j] = 0, p.eta[j]
+			}
+		}
+		for _, j := range rest {
+			rhs[j] = p.grad[j]
+			for k, d := range move {
+				rhs[j] -= a[j][k] * d
+			}
+		}
+		if !e.damped.factor(a, rest, lambda) {
+			break
+		}
+		x = e.damped.solve(rhs, rest)
+		for i, j := range rest {
+			next[j] = e.kept(p, j, p.eta[j]+x[i])
+		}
+		free = rest
+		predicted = 0
+		for _, j := range all {
+			predicted += p.grad[j] * (next[j] - p.eta[j])
+		}
+		if predicted > 0 {
+			break
+		}
+	}
+	return predicted
+}
+
+// kept is v, where parameter j may go from p in one step.
+func (e *engine) kept(p *point, j int, v float64) float64 {
+	if j < e.ng { // a lag changes by at most a factor in one step, but can leave zero
+		v = math.Min(math.Max(v, 0.2*p.eta[j]), math.Max(5*p.eta[j], e.recs[0].step))
+	}
+	return math.Min(math.Max(v, e.lower[j]), e.upper[j])
+}
+
 // advance takes the step x of the parameters in free from p, kept inside the
 // bounds, and returns the new eta, valid until the next call, with the reduction
 // the gradient promises.
@@ -66,11 +113,7 @@ func (e *engine) advance(p *point, free []int, x []float64) (next []float64, pre
 	e.next = append(e.next[:0], p.eta...)
 	next = e.next
 	for i, j := range free {
-		v := p.eta[j] + x[i]
-		if j < e.ng { // a lag changes by at most a factor in one step, but can leave zero
-			v = math.Min(math.Max(v, 0.2*p.eta[j]), math.Max(5*p.eta[j], e.recs[0].step))
-		}
-		next[j] = math.Min(math.Max(v, e.lower[j]), e.upper[j])
+		next[j] = e.kept(p, j, p.eta[j]+x[i])
 		predicted += p.grad[j] * (next[j] - p.eta[j])
 	}
 	return next, predicted
@@ -101,10 +144,12 @@ func (e *engine) descend(eta []float64, tol float64) point {
 			x := e.damped.solve(p.grad, free)
 			next, predicted := e.advance(&p, free, x)
 			if predicted <= 0.1*tol*p.s {
-				if free = e.uncut(&p, free, x, next); len(free) > 0 {
-					continue
+				if tol != scanTol { // a scan need not come to the bottom of every interval
+					predicted = e.within(&p, a, free, x, next, lambda)
 				}
-				return p
+				if predicted <= 0.1*tol*p.s {
+					return p
+				}
 			}
 			q := e.eval(next, true)
 			if q.s < p.s {

@@ -26,8 +26,6 @@ type engine struct {
 	gain    float64
 	gainFix bool
 
-	profiling bool // one parameter is held for its profile
-
 	work []workspace
 
 	// Memory of a step of the descent.

@@ -26,17 +26,20 @@ type profiler struct {
 // hold fits everything else with parameter i (0 gain, 1… eta) at v, from a
 // nearby solution.
 func (q *profiler) hold(i int, v float64, from point) point {
+	return q.holdFrom(i, v, q.predict(i, v, from))
+}
+
+// holdFrom is hold from a start.
+func (q *profiler) holdFrom(i int, v float64, start []float64) point {
 	e := q.e
 	lower, upper := append([]float64(nil), e.lower...), append([]float64(nil), e.upper...)
 	gainFix, gain := e.gainFix, e.gain
 	held := append([]bool(nil), e.held...)
 	defer func() {
-		e.lower, e.upper, e.gainFix, e.gain, e.held, e.profiling = lower, upper, gainFix, gain, held, false
+		e.lower, e.upper, e.gainFix, e.gain, e.held = lower, upper, gainFix, gain, held
 	}()
-	e.profiling = true
 	e.lower, e.upper = append([]float64(nil), lower...), append([]float64(nil), upper...)
 	e.held = append([]bool(nil), held...)
-	start := q.predict(i, v, from)
 	if i == 0 {
 		e.gainFix, e.gain = true, v
 		return e.descend(start, q.tol())
@@ -58,6 +61,34 @@ func (q *profiler) hold(i int, v float64, from point) point {
 	e.lower[j], e.upper[j] = v, v
 	e.held[j] = true
 	return e.descend(start, q.tol())
+}
+
+// offZero is a start beside p at which the first lag of two rows or less has half of the
+// next longer one, taken from the dead time or, where that has not as much or is the one
+// held, from that lag; nil where there is none. Next to zero such a lag and the dead time
+// are nearly the same to the response, and hardly a slope tells that the lag should grow
+// while parameter i is held.
+func (q *profiler) offZero(i int, p point) []float64 {
+	e := q.e
+	k := 1
+	for k < e.ng && (e.held[k] || p.eta[k] > 2*e.recs[0].step) {
+		k++
+	}
+	if k >= e.ng || k == i-1 {
+		return nil
+	}
+	start := slices.Clone(p.eta)
+	x := start[k-1] / 2
+	switch {
+	case e.ng != i-1 && !e.held[e.ng] && start[e.ng]-x >= e.lower[e.ng]:
+		start[e.ng] -= x
+	case k-1 != i-1 && !e.held[k-1]:
+		start[k-1] -= x
+	default:
+		return nil
+	}
+	start[k] = x
+	return start
 }
 
 // tol is what a sum of squares may be off by, relative, for r to be good to a
@@ -134,6 +165,14 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 	value := q.value(i)
 	r := func(v float64, from point) (float64, point) {
 		p := q.hold(i, v, from)
+		if rise := math.Max(p.s-q.best.s, 0) / q.s2; rise >= c*c {
+			// Before an end is believed, a lag at zero must have had the chance to grow.
+			if start := q.offZero(i, p); start != nil {
+				if other := q.holdFrom(i, v, start); other.s < p.s {
+					p = other
+				}
+			}
+		}
 		if p.s < q.best.s*(1-1e-7) && (q.found == nil || p.s < q.found.s) {
 			cp := p
 			q.found = &cp

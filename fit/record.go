@@ -14,27 +14,29 @@ import (
 // record is one log made ready for fitting: the rows with a temperature, the
 // input as held, and the columns that enter the model linearly.
 type record struct {
-	run   *data.Run
-	input ident.Input // phi(u)
-	t, y  []float64   // rows with a temperature, or means of some (t their middle)
-	rows  []ident.Row // the same rows
-	span  float64     // s, first to last row
-	swing float64     // of the input
-	rise  float64     // highest temperature less the lowest
-	step  float64     // s, median interval
-	sim   *ident.Simulator
-	start *ident.Simulator // response to a unit change at the first row, for an earlier rest
-	rest  initial
-	drift bool
+	run    *data.Run
+	input  ident.Input // phi(u)
+	t, y   []float64   // rows with a temperature, or means of some (t their middle)
+	rows   []ident.Row // the same rows
+	span   float64     // s, first to last row
+	swing  float64     // of the input
+	rise   float64     // highest temperature less the lowest
+	extent CardRange
+	step   float64 // s, median interval
+	sim    *ident.Simulator
+	start  *ident.Simulator // response to a unit change at the first row, for an earlier rest
+	rest   initial
+	drift  bool
 
-	root  *record   // the record at full resolution; itself when nothing is averaged
-	used  int       // rows of the full log that these rows stand for, see excerpt.go
-	scope scope     // where they may lie
-	most  int       // how many there may be, of a log whose input never rests
-	even  bool      // the full log is evenly sampled
-	usual float64   // s, interval of a log that is so but for jitter, else 0
-	parts []part    // of the full log, on which its noise is judged
-	sums  *restSums // over its pieces, nil where they are not worth it
+	root   *record   // the record at full resolution; itself when nothing is averaged
+	used   int       // rows of the full log that these rows stand for, see excerpt.go
+	scope  scope     // where they may lie
+	most   int       // how many there may be, of a log whose input never rests
+	even   bool      // the full log is evenly sampled
+	usual  float64   // s, interval of a log that is so but for jitter, else 0
+	parts  []part    // of the full log, on which its noise is judged
+	sums   *restSums // over its pieces, nil where they are not worth it
+	chunks []float64 // sums of its temperature
 
 	fixed [][]float64 // unwhitened linear columns that do not depend on the plant: 1, time
 
@@ -78,6 +80,7 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		return nil, fmt.Errorf("%s: %w: %d rows hold a temperature, at least 8 are needed", name, ErrTooShort, len(r.t))
 	}
 	lo, hi := rangeOf(r.y)
+	r.extent.Temperature = [2]float64{lo, hi}
 	if lo == hi {
 		return nil, fmt.Errorf("%s: %w: %sit is %.6g in every row; check the sensor, or name the right column with --temp-col", name, ErrConstant, columnNamed(run.Source.Columns.Temperature), lo)
 	}
@@ -86,12 +89,17 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 	}
 	r.span = r.t[len(r.t)-1] - r.t[0]
 	r.rise = hi - lo
+	lo, hi = rangeOf(run.U)
+	r.extent.Input = [2]float64{lo, hi}
 	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
 	r.step = evenStep(r.t, medianInterval(r.t))
 	r.root = r
 	r.used, r.most = len(r.t), mostRows
 	r.even = isEven(r.t, r.step)
-	r.usual = usualStep(r.t, r.step)
+	if r.usual = r.step; !r.even {
+		r.usual = usualStep(r.t, r.step)
+	}
+	r.chunks = chunkSums(r.y)
 	r.sums = newRestSums(r.t, r.y, r.step, r.even)
 	r.sim = ident.NewSimulator(r.t, r.input)
 	r.scope = r.wholeScope()

@@ -184,19 +184,30 @@ func (w *whitener) skip(r *restRows) {
 func (w *whitener) groupRest(r *restRows, f *residualFigures) {
 	k, a := &w.k, w.carried.a
 	white := k.s.unfiltered()
+	var room [mostMemory]float64
+	powers := room[:r.reach] // d^(reach−1) … d, 1
+	next := 1.0              // d^reach
+	var faded, fadedTilt float64
+	for j := range powers {
+		powers[r.reach-1-j] = next
+		faded += next
+		fadedTilt += next * float64(j)
+		next *= k.decay
+	}
 	for g, lo := 0, 0; lo < r.n; g, lo = g+1, lo+r.s.group {
 		hi := min(lo+r.s.group, r.n)
 		n := float64(hi - lo)
 		sum := r.p.groups[g] - line{r.less.over(float64(lo)), r.less.slope}.sum(n)
 		if !white {
-			b, power := 0.0, 1.0
-			for j := 1; j <= min(r.reach, hi-lo); j++ {
-				b += power * r.row(hi-j)
-				power *= k.decay
-			}
-			b *= k.gain
+			b := 0.0
 			if hi-lo < r.reach {
-				b += a * power
+				b = a
+				for j := lo; j < hi; j++ {
+					b = k.decay*b + k.gain*r.row(j)
+				}
+			} else { // Σ d^j·(y − model) over the last rows
+				y := r.s.y[r.lo+hi-r.reach : r.lo+hi]
+				b = k.gain * (dot(powers, y) - r.model.over(float64(hi-1))*faded + r.model.slope*fadedTilt)
 			}
 			sum = k.isd * (sum - k.a2*(k.gain*sum+a-b)/(1-k.decay))
 			a = b

@@ -103,7 +103,7 @@ func (out *outcome) warnNonlinear(runs []*data.Run, b *bounded, m *Model, add wa
 	if out.opt.BumpInstant != "unknown" { // each bump then has an instant of its own
 		fit.upDown(scenes, add)
 	}
-	fit.curved(scenes, extent(runs, func(r *data.Run) []float64 { return r.U }), CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
+	fit.curved(scenes, out.extent().Input, CardUnits{Input: runs[0].Units.Input, Temperature: runs[0].Units.Temperature}, add)
 	return true
 }
 
@@ -171,11 +171,11 @@ func (out *outcome) openEnds(b *bounded, add warn) {
 		switch {
 		case i == 0 && high && b.st.Integrating():
 			add("weak-bump", names[i], "the log sets no upper bound on the slope: the answer is lost in the noise; make a larger bump")
+		case i == 0 && low:
+			add("weak-bump", names[i], "the log does not tell the gain from zero: the answer is lost in the noise; make a larger bump")
 		case i == 0 && high:
 			hold := 4*total(elements(b.st, b.eta())) + b.est[len(b.est)-1].value
 			add("short-record", names[i], "the record shows no plateau: it sets no upper bound on the gain; hold the next bump at least %s", duration(roundUp(hold)))
-		case i == 0 && low:
-			add("weak-bump", names[i], "the log does not tell the gain from zero: the answer is lost in the noise; make a larger bump")
 		case i == len(b.est)-1 && low:
 			add("dead-time-unresolved", names[i], "the dead time cannot be told from zero: its interval is one-sided; log faster if it matters")
 		case high:

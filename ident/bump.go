@@ -96,9 +96,14 @@ func heldLevels(u []float64) []level {
 	now := level{end: 1, first: u[0]}
 	var out []level
 	for k := 1; k < len(u); k++ {
-		if u[k] == now.first && now.excess == 0 { // held, as nearly every row of a bump test
-			now.end++
-			continue
+		if now.excess == 0 { // held, as nearly every row of a bump test
+			from := k
+			for k < len(u) && u[k] == now.first {
+				k++
+			}
+			if now.end += k - from; k == len(u) {
+				break
+			}
 		}
 		away := math.Abs(u[k]-now.mean()) > threshold
 		if away && noise > 0 && k+1 < len(u) {
