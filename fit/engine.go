@@ -44,7 +44,8 @@ type workspace struct {
 	start [][]float64 // the same for the change at the first row, or free states
 	ahead []float64   // response at a longer dead time
 	g, r  []float64
-	jac   [][]float64 // whitened columns d/deta
+	jac   [][]float64 // whitened columns d/deta, of a gain of one at rest
+	white [][]float64 // the columns whitened side by side
 	extra [][]float64 // orthonormal columns of the initial state
 	basis [][]float64 // the record's and extra
 	spare [][]float64 // memory of extra
@@ -203,7 +204,13 @@ func (e *engine) eval(eta []float64, full bool) point {
 	for i, r := range e.recs {
 		w := &e.work[i]
 		e.simulate(r, w, lags, dead, full)
-		r.filter.apply(w.g, w.raw[0])
+		copy(w.g, w.raw[0])
+		w.white = append(w.white[:0], w.g)
+		if full && r.rest == rest {
+			e.slopes(w)
+			w.white = append(w.white, w.jac[:e.ng+1]...)
+		}
+		r.filter.applyAll(w.white)
 		project(w.g, w.basis)
 		gg += r.weight * dot(w.g, w.g)
 		gy += r.weight * dot(w.g, r.yw)
@@ -288,26 +295,46 @@ func (e *engine) addExtra(r *record, w *workspace, c []float64) {
 	}
 }
 
+// column is the eta that lag l of the structure belongs to, or the dead time after them.
+func (e *engine) column(l int) int {
+	if l == e.nl {
+		return e.ng
+	}
+	return e.groups[l]
+}
+
+// slopes sets the columns d/deta to those of a gain of one.
+func (e *engine) slopes(w *workspace) {
+	last := -1
+	for l := range e.nl + 1 {
+		j := e.column(l)
+		if j > last { // groups are numbered as they appear
+			copy(w.jac[j], w.raw[l+1])
+			last = j
+		} else {
+			floats.Add(w.jac[j], w.raw[l+1])
+		}
+	}
+}
+
 // gaussNewton fills normal and grad of p from the sensitivities.
 func (e *engine) gaussNewton(p *point) {
 	n := e.ng + 1
 	for i, r := range e.recs {
 		w := &e.work[i]
-		states := e.stateDerivatives(r, w, p)
-		for j := range n {
-			c := w.jac[j]
-			clear(c)
-			for l := range e.nl + 1 {
-				if (l < e.nl && e.groups[l] != j) || (l == e.nl && j != e.ng) {
-					continue
-				}
-				floats.AddScaled(c, p.gain, w.raw[l+1])
-				if states != nil {
-					floats.Add(c, states[l])
-				}
+		gain := p.gain // of the columns, unless they hold it
+		if r.rest != rest {
+			e.slopes(w)
+			states := e.stateDerivatives(r, w, p)
+			for j := range n {
+				floats.Scale(p.gain, w.jac[j])
 			}
+			for l, c := range states {
+				floats.Add(w.jac[e.column(l)], c)
+			}
+			r.filter.applyAll(w.jac[:n])
+			gain = 1
 		}
-		r.filter.applyAll(w.jac[:n])
 		// The residual and g are free of the basis already; the columns are
 		// freed of it in their products, which saves passes over the rows.
 		in := columnsIn(&e.inner, n, len(w.basis))
@@ -318,10 +345,10 @@ func (e *engine) gaussNewton(p *point) {
 		}
 		p.normal[0][0] += r.weight * dot(w.g, w.g)
 		for j := range n {
-			p.normal[0][j+1] += r.weight * dot(w.g, w.jac[j])
-			p.grad[j] += r.weight * dot(w.jac[j], w.r)
+			p.normal[0][j+1] += r.weight * gain * dot(w.g, w.jac[j])
+			p.grad[j] += r.weight * gain * dot(w.jac[j], w.r)
 			for l := 0; l <= j; l++ {
-				p.normal[l+1][j+1] += r.weight * (dot(w.jac[l], w.jac[j]) - dot(in[l], in[j]))
+				p.normal[l+1][j+1] += r.weight * gain * gain * (dot(w.jac[l], w.jac[j]) - dot(in[l], in[j]))
 			}
 		}
 	}

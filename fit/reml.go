@@ -202,7 +202,7 @@ func (t *tangent) evaluate(s shape) node {
 // with rss the generalised least-squares sum over all directions X of the
 // tangent.
 func (t *tangent) judge(s shape) node {
-	if s.walk > 0 && t.sampled() {
+	if s.walk > 0 && t.rest != nil {
 		return t.judgeWalk(s)
 	}
 	nd, _ := t.judgeRows(s)
@@ -223,13 +223,10 @@ func (t *tangent) judgeRows(s shape) (node, onRowsSums) {
 	return nd, sums
 }
 
-// sampled reports whether the noise is judged on a part of the log's rows.
-func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < t.rec.used }
-
-// judgeWalk is judge for a log whose noise is judged on pieces of it. A
-// walk is slow: what it adds to -2L is told by the averaged rows, which cover the
-// whole log, with the variance and the rest of the shape as the pieces tell them.
-// (On the pieces alone a walk would take credit for the baseline of the whole
+// judgeWalk is judge for a log whose rows are averaged, and its noise judged on all of
+// them or on pieces of the log. A walk is slow: what it adds to -2L is told by the averaged
+// rows, which cover the whole log, with the variance and the rest of the shape as the single
+// ones tell them. (On pieces alone a walk would take credit for the baseline of the whole
 // log being known less well than the pieces say.)
 func (t *tangent) judgeWalk(s shape) node {
 	without := s

@@ -15,7 +15,7 @@ func (e *engine) starts(tau, dead float64, shorter []float64) [][]float64 {
 	if e.st.Equal() {
 		t := tau / math.Sqrt(n)
 		d := math.Max(tau+dead-n*t, 0)
-		return [][]float64{{t, d}, {(tau + dead) / (n + 1), dead / (n + 1)}}
+		return [][]float64{{t, d}, {(tau + dead) / (n + 1), dead / (n + 1)}, e.shared(tau + dead)}
 	}
 	total := tau + dead
 	var out [][]float64
@@ -40,6 +40,25 @@ func (e *engine) starts(tau, dead float64, shorter []float64) [][]float64 {
 	}
 	s[int(n)] = math.Max(total-n*t, 0)
 	return append(out, s)
+}
+
+// shared is the best place of a scan among equal lags that share a delay with the dead time,
+// all of it or somewhat less: the sum of squares has more than one valley along that line.
+func (e *engine) shared(delay float64) []float64 {
+	var best []float64
+	least := math.Inf(1)
+	for _, all := range []float64{delay, 0.8 * delay} {
+		for _, lags := range []float64{0.15, 0.3, 0.45, 0.6, 0.8, 1} {
+			eta := []float64{lags * all / float64(e.st.Order()), (1 - lags) * all}
+			for j := range eta {
+				eta[j] = math.Min(math.Max(eta[j], e.lower[j]), e.upper[j])
+			}
+			if s := e.eval(eta, false).s; best == nil || s < least {
+				best, least = eta, s
+			}
+		}
+	}
+	return best
 }
 
 // patterns lists the ways in which lags of a chain can coincide, as groups;
