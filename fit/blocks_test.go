@@ -79,3 +79,26 @@ func thinned(run *data.Run, share float64, seed uint64) *data.Run {
 	}
 	return &out
 }
+
+// TestSumOf adds up rows from anywhere to anywhere.
+func TestSumOf(t *testing.T) {
+	y := make([]float64, 3*chunkRows+77)
+	for k := range y {
+		y[k] = math.Sin(float64(k)) + 60
+	}
+	r := &record{y: y, chunks: chunkSums(y)}
+	for _, lo := range []int{0, 1, 200, 255, 256, 257, 512, 700} {
+		for _, hi := range []int{lo, lo + 1, 256, 257, 512, 768, 800, len(y)} {
+			if hi < lo {
+				continue
+			}
+			want := 0.0
+			for _, v := range y[lo:hi] {
+				want += v
+			}
+			if got := r.sumOf(lo, hi); math.Abs(got-want) > 1e-9 {
+				t.Errorf("rows %d to %d: %g, want %g", lo, hi, got, want)
+			}
+		}
+	}
+}

@@ -341,7 +341,7 @@ func (w *whitener) passAll(cols [][]float64, carry []carried, t []float64) {
 		}
 		end := i + 1
 		switch {
-		case k.steady && w.even:
+		case k.steady && w.even && i > 0: // a part may begin after a gap
 			end = len(t)
 			k.prevEnd = t[end-1]
 		case k.steady:

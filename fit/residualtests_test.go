@@ -180,3 +180,33 @@ func TestCrossCorrelationWithout(t *testing.T) {
 		t.Errorf("no rows: p = %g", p)
 	}
 }
+
+// TestOrdered sorts what leaves many values in one class, none in most, or is not finite.
+func TestOrdered(t *testing.T) {
+	rng := rand.New(rand.NewPCG(3, 9))
+	normal, cubed, tied := make([]float64, 501), make([]float64, 501), make([]float64, 501)
+	for i := range normal {
+		normal[i] = rng.NormFloat64()
+		cubed[i] = math.Pow(normal[i], 9)
+		tied[i] = math.Round(normal[i])
+	}
+	for name, r := range map[string][]float64{
+		"none": nil, "one": {4}, "all the same": {2, 2, 2}, "normal": normal, "far out": cubed, "tied": tied,
+		"infinite": {3, math.Inf(1), 1, math.Inf(-1), 2},
+	} {
+		got := ordered(r)
+		if len(got) != len(r) {
+			t.Fatalf("%s: %d of %d values", name, len(got), len(r))
+		}
+		seen := make([]bool, len(r))
+		for i, p := range got {
+			if seen[p.at] || p.value != r[p.at] {
+				t.Errorf("%s: value %g of place %d", name, p.value, p.at)
+			}
+			seen[p.at] = true
+			if i > 0 && got[i-1].value > p.value {
+				t.Errorf("%s: %g before %g", name, got[i-1].value, p.value)
+			}
+		}
+	}
+}

@@ -34,6 +34,7 @@ func TestWarnings(t *testing.T) {
 	}{
 		{"short-record", "lag1", []*data.Run{short.run(1)}, Options{Structure: "fopdt", Initial: "rest", Drift: "none"}, `no upper bound on lag 1.*hold the next bump longer`},
 		{"weak-bump", "gain", []*data.Run{weak.run(1)}, Options{Structure: "fopdt", Noise: "white", Initial: "rest", Drift: "none"}, `larger bump`},
+		{"weak-bump", "gain", []*data.Run{weak.run(4)}, Options{Structure: "fopdt", Noise: "white", Initial: "rest", Drift: "none"}, `larger bump`}, // both ends are open
 		{"lag-unresolved", "lag1", []*data.Run{slow.run(3)}, Options{Structure: "fopdt", Initial: "rest", Drift: "none"}, `log at .* or faster`},
 		{"dead-time-unresolved", "dead_time", []*data.Run{instant.run(1)}, Options{Structure: "fopdt", Initial: "rest", Drift: "none"}, `one-sided`},
 		{"structures-alike", "", []*data.Run{alike.run(1)}, Options{Plants: -1, Drift: "none", Initial: "rest"}, `cannot tell \w+ from`},
