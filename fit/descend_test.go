@@ -41,10 +41,10 @@ func TestProfileLetsALagGrow(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	log := bumpLog{structure: "chain2", gain: 8.2, lags: []float64{2.1, 0.75}, dead: 0.2, n: 400, every: 0.05,
-		steps: []step{{0, 1}, {2, 1.5}, {11, 0.9}}, sd: 0.06}
+	log := bumpLog{structure: "chain2", gain: 8.2, lags: []float64{2.1, 0.75}, dead: 0.2, n: 1000, every: 0.05,
+		steps: []step{{0, 1}, {8.3, 1.3}, {16.7, 1.6}, {25, 1}, {33, 1.3}, {41, 1.6}}, sd: 0.2}
 	grown := 0
-	for seed := range uint64(6) {
+	for seed := range uint64(50) {
 		rec, err := newRecord(log.run(seed), ident.Linear)
 		if err != nil {
 			t.Fatal(err)
