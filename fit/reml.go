@@ -202,17 +202,18 @@ func (t *tangent) evaluate(s shape) node {
 // with rss the generalised least-squares sum over all directions X of the
 // tangent.
 func (t *tangent) judge(s shape) node {
-	if s.walk > 0 && t.rest != nil {
+	if s.walk > 0 && t.sampled() {
 		return t.judgeWalk(s)
 	}
-	nd, _ := t.judgeRows(s)
+	nd, _, _ := t.judgeRows(s)
 	return nd
 }
 
-func (t *tangent) judgeRows(s shape) (node, onRowsSums) {
-	sums := t.onRows(s)
-	rss, logdet, n, p := sums.least, sums.logdet, len(t.left), len(t.cols)
-	nd := node{shape: s, dof: n - p}
+func (t *tangent) judgeRows(s shape) (nd node, sums onRowsSums, rss float64) {
+	sums = t.onRows(s)
+	logdet, n, p := sums.logdet, len(t.left), len(t.cols)
+	rss = sums.least
+	nd = node{shape: s, dof: n - p}
 	if t.rest != nil {
 		rss, logdet = t.fullSum(s, sums)
 		n = len(t.rest)
@@ -220,20 +221,23 @@ func (t *tangent) judgeRows(s shape) (node, onRowsSums) {
 	}
 	nd.s2 = t.rounded(rss / float64(n-p))
 	nd.dev = float64(n-p)*math.Log(rss) + logdet + sums.directions
-	return nd, sums
+	return nd, sums, rss
 }
 
-// judgeWalk is judge for a log whose rows are averaged, and its noise judged on all of
-// them or on pieces of the log. A walk is slow: what it adds to -2L is told by the averaged
-// rows, which cover the whole log, with the variance and the rest of the shape as the single
-// ones tell them. (On pieces alone a walk would take credit for the baseline of the whole
-// log being known less well than the pieces say.)
+// sampled reports whether the noise is judged on a part of the log's rows.
+func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < t.rec.used }
+
+// judgeWalk is judge for a log whose noise is judged on pieces of it. A
+// walk is slow: what it takes from rss and adds to the determinants is told by the averaged
+// rows, which cover the whole log, and the rest of the shape by the pieces. (On the pieces
+// alone a walk would take credit for the baseline of the whole log being known less well than
+// the pieces say.) Of all rows rss is that of the pieces, scaled up.
 func (t *tangent) judgeWalk(s shape) node {
 	without := s
 	without.walk = 0
 	still, ok := t.still[without]
 	if !ok {
-		still.node, still.sums = t.judgeRows(without)
+		still.node, still.sums, still.rss = t.judgeRows(without)
 		if t.still == nil {
 			t.still = map[shape]judged{}
 		}
@@ -241,7 +245,10 @@ func (t *tangent) judgeWalk(s shape) node {
 	}
 	r, r0, nd := t.onRows(s), still.sums, still.node
 	nd.shape = s
-	nd.dev += (r.least-r0.least)/nd.s2 + r.logdet - r0.logdet + r.directions - r0.directions
+	whole := still.rss * float64(t.rec.used) / float64(len(t.rest)) // without a walk, over all rows in use
+	share := math.Max(1+(r.least-r0.least)/whole, 1e-3)
+	nd.s2 = t.rounded(nd.s2 * share)
+	nd.dev += float64(nd.dof)*math.Log(share) + r.logdet - r0.logdet + r.directions - r0.directions
 	return nd
 }
 
@@ -249,6 +256,7 @@ func (t *tangent) judgeWalk(s shape) node {
 type judged struct {
 	node node
 	sums onRowsSums
+	rss  float64
 }
 
 // rounded is a variance of readings of the logged resolution: a rounded reading
