@@ -330,7 +330,7 @@ func (out *outcome) settle(s *study) error {
 			s.set(in, dr)
 			free := &study{recs: slices.Clone(s.recs), white: s.white, tau: start.p.eta[0], dead: start.p.eta[1], rival: math.Inf(1)}
 			f := free.fit(two, start)
-			if math.IsNaN(f.p.s) || math.IsInf(f.p.s, 0) {
+			if math.IsNaN(f.p.s) || math.IsInf(f.p.s, 0) || math.IsNaN(f.aicc) {
 				return fmt.Errorf("%s: %w: the least squares did not come to an end", s.recs[0].run.Source.File, ErrNoAnswer)
 			}
 			score := f.aicc

@@ -39,9 +39,8 @@ func (e *engine) movable(p *point, a [][]float64) []int {
 
 // uncut are those in free whose step x came to at least half, where a bound, or a lag
 // just above zero, has cut those of others; none where that did not happen.
-// The list takes the place of free.
 func (e *engine) uncut(p *point, free []int, x, next []float64) []int {
-	whole := free[:0]
+	var whole []int
 	for i, j := range free {
 		if math.Abs(next[j]-p.eta[j]) >= 0.5*math.Abs(x[i]) {
 			whole = append(whole, j)
@@ -55,9 +54,10 @@ func (e *engine) uncut(p *point, free []int, x, next []float64) []int {
 
 // within steps on from next, where the step x of the parameters in free has been cut to
 // so little that the rest of it leads nowhere: those that were cut keep what is left of
-// their step where it leads downhill, and the others take the step that goes with it.
-func (e *engine) within(p *point, a [][]float64, free []int, x, next []float64, lambda float64) (predicted float64) {
-	all := append([]int(nil), free...)
+// their step where it leads downhill, and the others take the step that goes with it, until
+// that promises enough.
+func (e *engine) within(p *point, a [][]float64, free []int, x, next []float64, lambda, enough float64) (predicted float64) {
+	all := free
 	for len(free) > 0 {
 		rest := e.uncut(p, free, x, next)
 		if len(rest) == 0 {
@@ -91,7 +91,7 @@ func (e *engine) within(p *point, a [][]float64, free []int, x, next []float64, 
 		for _, j := range all {
 			predicted += p.grad[j] * (next[j] - p.eta[j])
 		}
-		if predicted > 0 {
+		if predicted > enough {
 			break
 		}
 	}
@@ -145,7 +145,7 @@ func (e *engine) descend(eta []float64, tol float64) point {
 			next, predicted := e.advance(&p, free, x)
 			if predicted <= 0.1*tol*p.s {
 				if tol != scanTol { // a scan need not come to the bottom of every interval
-					predicted = e.within(&p, a, free, x, next, lambda)
+					predicted = e.within(&p, a, free, x, next, lambda, 0.1*tol*p.s)
 				}
 				if predicted <= 0.1*tol*p.s {
 					return p

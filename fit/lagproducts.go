@@ -25,13 +25,14 @@ const mostMemory = 64
 // of it; ok is false where that is too many, or where the filter is not in its steady
 // state.
 func (k *kalman) memory() (rows int, ok bool) {
-	if !k.steady || k.s.walk > 0 || k.decay < 0 || k.decay > 0.65 {
+	if !k.steady || k.s.walk > 0 || !(k.decay >= 0 && k.decay < 1) {
 		return 0, false
 	}
 	if k.decay < 1e-12 {
 		return 1, true
 	}
-	return 1 + int(math.Log(1e-12)/math.Log(k.decay)), true
+	rows = 1 + int(math.Log(1e-12)/math.Log(k.decay))
+	return rows, rows <= mostMemory
 }
 
 // over is steadily for n rows without passing them: r are their products at distances

@@ -11,6 +11,21 @@ func (l line) plus(times float64, m line) line {
 	return line{l.at + times*m.at, l.slope + times*m.slope}
 }
 
+// lineThrough is the one of least squares through rows.
+func lineThrough(y []float64) line {
+	n := float64(len(y))
+	middle, mean := (n-1)/2, total(y)/n
+	top := 0.0
+	for k, v := range y {
+		top += (float64(k) - middle) * (v - mean)
+	}
+	if n < 2 {
+		return line{mean, 0}
+	}
+	slope := top * 12 / (n * (n*n - 1))
+	return line{mean - slope*middle, slope}
+}
+
 // sum is that of the line over n rows, tilt that of k times it.
 func (l line) sum(n float64) float64  { return n*l.at + l.slope*n*(n-1)/2 }
 func (l line) tilt(n float64) float64 { return l.at*n*(n-1)/2 + l.slope*(n-1)*n*(2*n-1)/6 }

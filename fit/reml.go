@@ -11,15 +11,15 @@ import (
 // move, the linear columns first, then gain, lags, dead time.
 type tangent struct {
 	rec    *record
-	left   []float64   // log minus model, unwhitened
-	rest   []float64   // the same of the parts of the log on which the noise is judged, when rec averages rows, else nil
-	parts  []part      // these
-	model  explained   // the model itself
-	cols   [][]float64 // orthonormal (unwhitened) directions
-	first  int         // how many of cols are linear columns
-	param  []int       // parameter (0 gain, 1… eta) behind cols[first+i]
-	tri    [][]float64 // parameter block of the triangular factor: direction = Σ tri·parameter
-	scale  []float64   // norm of each parameter's direction after the linear columns; 0 when nothing is left
+	left   []float64    // log minus model, unwhitened
+	rest   []float64    // the same of the parts of the log on which the noise is judged, when rec averages rows, else nil
+	judged []judgedPart // these
+	model  explained    // the model itself
+	cols   [][]float64  // orthonormal (unwhitened) directions
+	first  int          // how many of cols are linear columns
+	param  []int        // parameter (0 gain, 1… eta) behind cols[first+i]
+	tri    [][]float64  // parameter block of the triangular factor: direction = Σ tri·parameter
+	scale  []float64    // norm of each parameter's direction after the linear columns; 0 when nothing is left
 	nparam int
 	fixed  [][]float64 // coefficients of the record's fixed columns in terms of cols
 
@@ -27,15 +27,21 @@ type tangent struct {
 	still  map[shape]judged // remembered by judgeWalk
 }
 
+// judgedPart is a part of the log on which the noise is judged.
+type judgedPart struct {
+	times []float64
+	left  lagProducts // of log minus model
+}
+
 // tangentMemory is what the tangents of a record use one after the other.
 type tangentMemory struct {
-	rest     []float64     // of the tangent
-	room     [][]float64   // of its columns
-	spare    []float64     // rest whitened
-	products []lagProducts // of rest, by parts
-	white    [][]float64   // its directions and left, whitened
-	factor   [][]float64   // Cholesky factor of their products
-	turned   [][]float64   // a part of that, in terms of the parameters
+	rest   []float64   // of the tangent
+	room   [][]float64 // of its columns
+	spare  []float64   // rest whitened
+	judged []judgedPart
+	white  [][]float64 // its directions and left, whitened
+	factor [][]float64 // Cholesky factor of their products
+	turned [][]float64 // a part of that, in terms of the parameters
 }
 
 // tangents linearises the model at p on every record. They are valid until the
@@ -63,15 +69,17 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 			rows += c.hi - c.lo
 		}
 		t.memory.rest = longColumn(t.memory.rest, rows)
-		t.rest, t.parts = t.memory.rest, r.parts
-		if t.memory.products == nil {
-			t.memory.products = make([]lagProducts, len(r.parts))
+		t.rest = t.memory.rest
+		if t.memory.judged == nil {
+			t.memory.judged = make([]judgedPart, len(r.parts))
 		}
+		t.judged = t.memory.judged
 		next := t.rest
 		for i, c := range r.parts {
 			n := c.hi - c.lo
 			r.residual(next[:n], t.model, c)
-			t.memory.products[i].set(next[:n])
+			t.judged[i].times = r.root.t[c.lo:c.hi]
+			t.judged[i].left.set(next[:n])
 			next = next[n:]
 		}
 	}
@@ -231,7 +239,9 @@ func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < t.rec.u
 // walk is slow: what it takes from rss and adds to the determinants is told by the averaged
 // rows, which cover the whole log, and the rest of the shape by the pieces. (On the pieces
 // alone a walk would take credit for the baseline of the whole log being known less well than
-// the pieces say.) Of all rows rss is that of the pieces, scaled up.
+// the pieces say.) Of all rows rss is that of the averaged ones and that of the pieces, scaled
+// up. Both count as much as the pieces have rows: a walk known from the whole log beside a
+// correlation time known from a part of it would make up for any correlation time.
 func (t *tangent) judgeWalk(s shape) node {
 	without := s
 	without.walk = 0
@@ -245,10 +255,11 @@ func (t *tangent) judgeWalk(s shape) node {
 	}
 	r, r0, nd := t.onRows(s), still.sums, still.node
 	nd.shape = s
-	whole := still.rss * float64(t.rec.used) / float64(len(t.rest)) // without a walk, over all rows in use
-	share := math.Max(1+(r.least-r0.least)/whole, 1e-3)
+	judged := float64(len(t.rest)) / float64(t.rec.used)
+	within := still.rss / judged
+	share := (r.least + within) / (r0.least + within)
 	nd.s2 = t.rounded(nd.s2 * share)
-	nd.dev += float64(nd.dof)*math.Log(share) + r.logdet - r0.logdet + r.directions - r0.directions
+	nd.dev += float64(len(t.rest)-len(t.cols))*math.Log(share) + judged*(r.logdet-r0.logdet+r.directions-r0.directions)
 	return nd
 }
 
@@ -357,17 +368,19 @@ func (t *tangent) fixedMargins(s2, dof float64) []margin {
 
 // fullSum is the generalised least-squares sum over the noise rows: their
 // whitened sum of squares less what the model's directions would still take
-// from it, which the averaged rows tell (whitened sum minus least, scaled to
-// the number of rows).
+// from it, which the averaged rows tell (whitened sum minus least). Pieces of the log are
+// spared that: what the directions take lies about the bumps, where the pieces may not.
 func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
 	m := t.memory
 	m.spare = longColumn(m.spare, len(t.rest))
 	w := t.rec.whitener(s)
-	for i, c := range t.parts {
-		w.passSum(&m.products[i], t.rec.root.t[c.lo:c.hi], m.spare)
+	for i := range t.judged {
+		w.passSum(&t.judged[i].left, t.judged[i].times, m.spare)
 	}
-	taken := (r.all - r.least) * float64(len(t.rest)) / float64(t.rec.used)
-	return math.Max(w.sum-taken, 1e-3*w.sum), w.logDeterminant()
+	if t.sampled() {
+		return w.sum, w.logDeterminant()
+	}
+	return math.Max(w.sum-(r.all-r.least), 1e-3*w.sum), w.logDeterminant()
 }
 
 // tcRange is the range of correlation times that a record can speak about.
@@ -401,20 +414,19 @@ func (t *tangent) bestShape(near *shape) node {
 	return s.best
 }
 
-// glance is the tangent with a quarter of the parts on which the noise is judged, the first
-// of them.
+// glance is the tangent with every third of the parts on which the noise is judged.
 func (t *tangent) glance() *tangent {
-	few := len(t.parts) / 4
-	if few == 0 {
+	if len(t.judged) < 4 {
 		return t
 	}
 	c := *t
+	c.judged = nil
 	rows := 0
-	c.parts = t.parts[:few]
-	for _, p := range c.parts {
-		rows += p.hi - p.lo
+	for i := 0; i < len(t.judged); i += 3 {
+		c.judged = append(c.judged, t.judged[i])
+		rows += len(t.judged[i].times)
 	}
-	c.rest = t.rest[:rows]
+	c.rest = t.rest[:rows] // as many
 	return &c
 }
 

@@ -5,8 +5,9 @@ import "sync"
 // Most rows of a long log lie where every lag has died away since the last change of the
 // input. What a model leaves there is the log less a straight line, whichever model it
 // is, and so the sums over what is left follow from sums over the log that are taken
-// once: with x[k] the log less its mean over the piece, and e[k] = x[k] − (at + slope·k),
-// the products of a piece of n rows at the distance l are
+// once: with x[k] the log less the straight line through the piece, so that no large terms
+// cancel, and e[k] = x[k] − (at + slope·k), the products of a piece of n rows at the distance
+// l are
 //
 //	Σ_{k≥l} e[k]·e[k−l] = R_l − Σ_{k≥l} x[k]·(at + slope·(k−l)) − Σ_{k<n−l} x[k]·(at + slope·(k+l))
 //	                      + Σ_{k<n−l} (at + slope·k)·(at + slope·(k+l)).
@@ -26,7 +27,7 @@ type restSums struct {
 
 // pieceSums are those of one piece.
 type pieceSums struct {
-	mean      float64
+	through   line
 	sum, tilt float64   // Σx[k] and Σk·x[k]
 	r         []float64 // R_l
 	groups    []float64 // Σx[k] over the piece's groups
@@ -81,10 +82,10 @@ func (s *restSums) piece(lo, distance int) pieceSums {
 	y := s.y[lo:min(lo+s.rows, len(s.y))]
 	x := s.spare[:len(y)]
 	if p.r == nil {
-		p.mean = total(y) / float64(len(y))
+		p.through = lineThrough(y)
 	}
 	for k, v := range y {
-		x[k] = v - p.mean
+		x[k] = v - p.through.over(float64(k))
 	}
 	if p.r == nil {
 		p.r = make([]float64, 0, distance+1)
@@ -104,7 +105,7 @@ type restRows struct {
 	s     *restSums
 	lo, n int
 	model line
-	less  line // model, counted from the mean
+	less  line // model, counted from the line through the piece
 	p     pieceSums
 
 	reach int
@@ -115,7 +116,7 @@ type restRows struct {
 // reaches so many rows back.
 func (r *restRows) under(model line, s *restSums, lo, n, reach int) {
 	p := s.piece(lo, reach)
-	r.s, r.lo, r.n, r.model, r.less, r.p, r.reach = s, lo, n, model, model.plus(-p.mean, line{at: 1}), p, reach
+	r.s, r.lo, r.n, r.model, r.less, r.p, r.reach = s, lo, n, model, model.plus(-1, p.through), p, reach
 	at, slope := r.less.at, r.less.slope
 	all := at*p.sum + slope*p.tilt         // Σ x[k]·(at + slope·k)
 	var first, last, firstX, lastX float64 // the same, and Σx, over the first and last l rows
@@ -124,7 +125,7 @@ func (r *restRows) under(model line, s *restSums, lo, n, reach int) {
 		back := all - first - far*(p.sum-firstX)
 		ahead := all - last + far*(p.sum-lastX)
 		r.room[l] = p.r[l] - back - ahead + r.less.product(line{at + far, slope}, float64(n-l))
-		x, end := s.y[lo+l]-p.mean, s.y[lo+n-1-l]-p.mean
+		x, end := s.y[lo+l]-p.through.over(float64(l)), s.y[lo+n-1-l]-p.through.over(float64(n-1-l))
 		first += x * r.less.over(float64(l))
 		last += end * r.less.over(float64(n-1-l))
 		firstX += x

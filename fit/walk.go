@@ -40,7 +40,23 @@ func (t *tangent) bestWalk(near shape) node {
 		}
 		step = [3]float64{0.6, 0.2, 0.8}
 	}
-	for step[0] > 0.1 {
+	looked := false // for a little white
+	for step[0] > 0.1 || !looked {
+		if step[0] <= 0.1 {
+			// Long correlation leaves a valley of little white that the steps pass over.
+			looked = true
+			if best.shape.white == 0 {
+				for _, w := range []float64{0.03, 0.01, 0.003, 0.001} {
+					s := best.shape
+					s.white = w
+					better(s)
+				}
+			}
+			if best.shape.white == 0 || best.shape.white > 0.03 {
+				break
+			}
+			step = [3]float64{0.2, best.shape.white / 2, 0.4}
+		}
 		c, moved := best.shape, false
 		for axis := range 3 {
 			for _, sign := range []float64{1, -1} {
