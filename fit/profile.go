@@ -165,7 +165,7 @@ func (q *profiler) end(i int, dir, c, scale, limit float64) float64 {
 	value := q.value(i)
 	r := func(v float64, from point) (float64, point) {
 		p := q.hold(i, v, from)
-		if rise := math.Max(p.s-q.best.s, 0) / q.s2; rise >= c*c {
+		if rise := math.Max(p.s-q.best.s, 0) / q.s2; rise >= c*c && !(i == 0 && q.endless(p)) {
 			// Before an end is believed, a lag at zero must have had the chance to grow.
 			if start := q.offZero(i, p); start != nil {
 				if other := q.holdFrom(i, v, start); other.s < p.s {

@@ -136,6 +136,8 @@ func (g *Gains) heading() string {
 	switch {
 	case !g.Judged() || g.Meets:
 		return "Enter at the controller"
+	case g.Unstable():
+		return "DO NOT ENTER, the loop would be unstable on plausible plants; the nearest"
 	case g.Rule == synthesised:
 		return "Requirement NOT met; the nearest"
 	}
@@ -145,6 +147,10 @@ func (g *Gains) heading() string {
 // Judged tells gains whose loop was looked at from gains that someone wrote
 // down.
 func (g *Gains) Judged() bool { return g.Nominal != nil || g.Worst != nil }
+
+// Unstable tells gains with which the loop is not stable on the share of the plausible plants
+// that was asked for: nothing to enter.
+func (g *Gains) Unstable() bool { return !g.Meets && g.Worst != nil && !g.Worst.Stable }
 
 func (g *Gains) writeJudgement(b *bufio.Writer) {
 	if !g.Judged() {

@@ -119,3 +119,24 @@ func TestDuration(t *testing.T) {
 		}
 	}
 }
+
+// Gains with which plausible loops are unstable are not to be entered, whatever else is said.
+func TestUnstableGainsAreNotToBeEntered(t *testing.T) {
+	for _, c := range []struct {
+		meets, stable bool
+		begins        string
+	}{
+		{true, true, "Enter at the controller"},
+		{false, true, "Requirement NOT met"},
+		{false, false, "DO NOT ENTER"},
+	} {
+		g := &Gains{Rule: synthesised, Controller: "pi", Meets: c.meets, Nominal: &Metrics{Stable: true}, Worst: &Metrics{Stable: c.stable}}
+		var b bytes.Buffer
+		if err := g.WriteText(&b); err != nil {
+			t.Fatal(err)
+		}
+		if !strings.HasPrefix(b.String(), c.begins) {
+			t.Errorf("meets %v, stable %v: %q", c.meets, c.stable, strings.SplitN(b.String(), "\n", 2)[0])
+		}
+	}
+}

@@ -58,7 +58,11 @@ func (j *job) summary(w io.Writer, folder string) error {
 	for _, warning := range j.card.Warnings {
 		s.add("warning", warning.Text)
 	}
-	s.add("enter", gainsWords(j.gains, report.LoggedInFahrenheit(j.card)))
+	if j.gains.Unstable() {
+		s.add("enter", "nothing: with the nearest gains that were found the loop would be unstable on plausible plants")
+	} else {
+		s.add("enter", gainsWords(j.gains, report.LoggedInFahrenheit(j.card)))
+	}
 	s.add("", requirementWords(j.gains))
 	for _, reason := range j.gains.Reasons {
 		s.add("", reason)

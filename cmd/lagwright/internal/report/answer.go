@@ -59,9 +59,12 @@ func gainsAnswer(b *Bundle) answer {
 	if m := b.model(); m != nil {
 		a.Sure = append(a.Sure, heaterPhrase(b.Card, m))
 	}
-	if g.Meets || !g.Judged() {
+	switch {
+	case g.Unstable():
+		a.Sure = append(a.Sure, "Do not enter them. The cautions below come first.")
+	case g.Meets || !g.Judged():
 		a.Sure = append(a.Sure, "Begin with the output limited and a small setpoint step. The cautions below come first.")
-	} else {
+	default:
 		a.Sure = append(a.Sure, "Enter them only if what fails can be lived with. The cautions below come first.")
 	}
 	return a
@@ -75,6 +78,8 @@ func gainsVerdict(g *tune.Gains, r *validate.Replay) (headline string, verdict *
 	switch {
 	case !g.Judged():
 		return "Gains as they were written down", nil
+	case g.Unstable():
+		return "Do not enter these gains", &item{"bad", "With them the loop would be unstable on plausible plants."}
 	case !g.Meets && g.Rule == "synthesis":
 		return "No gains meet the requirement; these come nearest", &item{"bad", "They do not meet the requirement."}
 	case !g.Meets:

@@ -2,9 +2,11 @@ package report
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"lagwright/cmd/lagwright/internal/format"
+	"lagwright/fit"
 	"lagwright/tune"
 )
 
@@ -23,10 +25,18 @@ func grave(b *Bundle) []doubt {
 	if words := logDoubt(b); words != "" {
 		out = append(out, doubt{words, "log", "Can I trust this log?"})
 	}
+	if warnedOf(b.Card, "little-explained", "input-correlation") {
+		out = append(out, doubt{"The model does not follow the log well.", "watch", "What to watch for"})
+	}
 	if w := b.Gains.Worst; w != nil && w.Ms != nil && *w.Ms > soundMs {
 		out = append(out, doubt{fmt.Sprintf("Small margins: Ms is %s at its worst, up to %s is usual.", format.Number(*w.Ms, 3), format.Short(soundMs, 2)), "gains", "Why these gains?"})
 	}
 	return out
+}
+
+// warnedOf reports whether the card has a warning of one of the codes.
+func warnedOf(c *fit.Card, codes ...string) bool {
+	return c != nil && slices.ContainsFunc(c.Warnings, func(w fit.Warning) bool { return slices.Contains(codes, w.Code) })
 }
 
 // GraveDoubts are the words of the doubts that change the headline, for a bundle

@@ -52,7 +52,11 @@ func trustLead(b *Bundle) string {
 		rows += len(r.T)
 		length += span(r.T)
 	}
-	s := verdictWords(b.Checks) + fmt.Sprintf("%s with %s over %s.", format.Count(len(b.Runs), "run", "runs"),
+	answer := verdictWords(b.Checks)
+	if answer == "Yes. " && warnedOf(b.Card, "little-explained", "input-correlation", "residual-correlation") {
+		answer = "With care. "
+	}
+	s := answer + fmt.Sprintf("%s with %s over %s.", format.Count(len(b.Runs), "run", "runs"),
 		format.Count(rows, "row", "rows"), format.Duration(length))
 	if m := b.model(); m != nil {
 		s += fmt.Sprintf(" The model explains it to %s rms (fit %s %%).", format.Amount(m.RMSE, kelvin(b.Card.Units.Temperature), 2), format.Short(m.FitPercent, 3))
