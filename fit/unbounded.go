@@ -148,6 +148,23 @@ func noted(run *data.Run, code string) bool {
 	return slices.ContainsFunc(run.Quality.Notes, func(n data.Note) bool { return n.Code == code })
 }
 
+// loadMistaken takes back a dead time read from a controller's record that does not give the
+// gain: the moment at which a load came then passes for it.
+func (j *judgement) loadMistaken(verdicts []Verdict) {
+	gainKnown := true
+	for i := range verdicts {
+		v := &verdicts[i]
+		switch {
+		case v.Parameter == "gain":
+			gainKnown = v.Verdict != not
+		case v.Parameter == "dead_time" && v.Verdict != not && v.Reason != known && !gainKnown && j.loop.State == "closed":
+			v.Verdict = not
+			v.Reason += ", but the log does not give the gain: when a load came may pass for a dead time"
+			v.Cures = append(v.Cures, j.cures("dead_time", math.Inf(1), 0)[0])
+		}
+	}
+}
+
 // largestRise is that of the bumps, without bumps the swing of the temperature.
 func (j *judgement) largestRise() float64 {
 	largest := 0.0
@@ -166,6 +183,7 @@ func (j *judgement) largestRise() float64 {
 // cap lowers what is good to doubtful where something spoils the log, and says so.
 func (j *judgement) cap(verdicts []Verdict) {
 	spoilt := j.limitations()
+	j.loadMistaken(verdicts)
 	for i := range verdicts {
 		v := &verdicts[i]
 		if v.Reason == known {

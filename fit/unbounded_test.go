@@ -7,6 +7,7 @@ import (
 	"testing"
 
 	"lagwright/data"
+	"lagwright/ident"
 )
 
 // A log that ends at the beginning of the rise bounds neither gain nor lags,
@@ -113,5 +114,30 @@ func TestWriteOneSidedBoundAtTheValue(t *testing.T) {
 	}
 	if far := 2800.0; write(v, &far, nil, false).interval != "at least 2800" {
 		t.Errorf("%+v", write(v, &far, nil, false))
+	}
+}
+
+// TestLoadIsNoDeadTime: of a controller's record that does not give the gain, the dead time
+// is none either; of a bump in manual, or with the gain known, it stays what it is.
+func TestLoadIsNoDeadTime(t *testing.T) {
+	for _, c := range []struct {
+		loop, gain, want string
+	}{
+		{"closed", not, not},
+		{"closed", doubtful, good},
+		{"open", not, good},
+	} {
+		j := &judgement{loop: Loop{State: c.loop}, card: &Card{InputLaw: "linear"}, model: &Model{},
+			run: &data.Run{T: []float64{0, 1, 2, 3}, U: []float64{1, 1, 2, 2}, Y: []float64{1, 1, 2, 2}}}
+		j.plant.Structure, _ = ident.ParseStructure("fopdt")
+		j.plant.Gain, j.plant.Lags = 1, []float64{3}
+		v := []Verdict{{Parameter: "gain", Verdict: c.gain}, {Parameter: "dead_time", Verdict: good, Reason: "known to ±4 %"}}
+		j.loadMistaken(v)
+		if v[1].Verdict != c.want {
+			t.Errorf("%s loop, gain %s: the dead time is %s, want %s", c.loop, c.gain, v[1].Verdict, c.want)
+		}
+		if v[1].Verdict == not && (len(v[1].Cures) == 0 || !strings.Contains(v[1].Reason, "load")) {
+			t.Errorf("%q, cures %q", v[1].Reason, v[1].Cures)
+		}
 	}
 }

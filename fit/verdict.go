@@ -189,6 +189,9 @@ func (j *judgement) cures(name string, half, target float64) []string {
 	}
 	step := medianInterval(j.run.T)
 	for _, k := range []int{2, 5, 10, 20} {
+		if step/float64(k) < 0.1*j.model.Noise.CorrelationTime {
+			break // such rows repeat one another; common practice, no source
+		}
 		if would(j.experiment(0, k)) {
 			out = append(out, fmt.Sprintf("log every %s or faster", duration(roundDown(step/float64(k)))))
 			break
@@ -217,7 +220,9 @@ func (j *judgement) bumpInManual(name string, target float64) string {
 	// Standard errors fall as the step of the heat, here 1, grows.
 	heat := 2 * e.precision(j.plant, j.model.Noise, nil).of(name) / target
 	law, u := j.card.Law(), j.run.U[len(j.run.U)-1]
-	if math.Abs(j.plant.Gain*heat) > mostRise*j.largestRise() {
+	// Nor is a plant that reacts within a row, or a move that noise would hide.
+	rise := math.Abs(j.plant.Gain * heat)
+	if rise > mostRise*j.largestRise() || lags < step || rise < 3*j.model.Noise.SD {
 		return "the loop was closed: make a bump in manual, and see that the temperature follows it; no size can be foretold from a log whose temperature hardly answers the input (are these the right columns?)"
 	}
 	size := heat

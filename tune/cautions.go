@@ -75,6 +75,33 @@ func (t *tuning) cautions(g *Gains) []string {
 	return append(c, fit.CautionCodes)
 }
 
+// betterBy is the part of the synthesis's load IAE below which that of a published rule is
+// worth a word.
+const betterBy = 0.9
+
+// betterRule names the published rule that meets the requirement with the same controller
+// and a load IAE well below that of the synthesis, which weighs the setpoint in full: with less
+// of it the setpoint step leaves room for more gain.
+func (g *Gains) betterRule() string {
+	if g.Rule != synthesised || !g.Meets || g.Nominal == nil || g.Nominal.IAE == nil {
+		return ""
+	}
+	least := betterBy * *g.Nominal.IAE
+	var best *Candidate
+	for i := range g.Candidates {
+		c := &g.Candidates[i]
+		if c.Meets && !c.Selected && c.Controller == g.Controller && c.SetpointWeight != nil && *c.SetpointWeight < 1 &&
+			c.Nominal != nil && c.Nominal.IAE != nil && *c.Nominal.IAE < least {
+			best, least = c, *c.Nominal.IAE
+		}
+	}
+	if best == nil {
+		return ""
+	}
+	return fmt.Sprintf("The rule %s meets the requirement too and rejects a load better (IAE %s against %s), with a setpoint weight of %s: where the controller has one, look at it with --rule %s.",
+		best.Rule, figure(best.Nominal.IAE, 3), figure(g.Nominal.IAE, 3), figure(best.SetpointWeight, 2), best.Rule)
+}
+
 // longScan is the part of the settling time from which a scan more or less is
 // worth a word.
 const longScan = 0.05

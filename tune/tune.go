@@ -89,6 +89,9 @@ func Tune(ctx context.Context, cards []*fit.Card, q Requirement, o Options) (*Ga
 	for i := range rows {
 		g.Candidates = append(g.Candidates, t.candidate(rows[i], i == best))
 	}
+	if words := g.betterRule(); words != "" {
+		g.Cautions = append([]string{words}, g.Cautions...)
+	}
 	if o.Rule == "" && len(cards) > 1 {
 		t.schedule(ctx, g)
 	}

@@ -29,6 +29,7 @@ func newTune(c *console) *cobra.Command {
 		Long: `Chooses gains from a model card: the best load rejection (smallest IAE) that
 meets the requirement on the plausible plants, not only on the best fit. With
 no requirement, Ms is held to 1.6. Several cards give one set, safe for all.
+The setpoint weight is 1; rules that have another are listed with it.
 P control leaves a permanent offset: it is listed, and taken only where it is
 asked for with --controller p.
 When nothing meets the requirement the nearest miss is written, with what

@@ -102,7 +102,7 @@ func ruleWords(g *tune.Gains) string {
 		return "Of the P gains that keep the requirement on the plausible plants this is the largest: it leaves the smallest offset."
 	}
 	if g.Rule == "synthesis" || g.Rule == "" {
-		return fmt.Sprintf("Of all %s gains that keep the requirement on the plausible plants, these reject a load best (smallest IAE).", strings.ToUpper(g.Controller))
+		return fmt.Sprintf("Of all %s gains with a setpoint weight of 1 that keep the requirement on the plausible plants, these reject a load best (smallest IAE).", strings.ToUpper(g.Controller))
 	}
 	return "They come from the rule " + g.Rule + "; the plausible plants say how well it does here."
 }
