@@ -21,6 +21,14 @@ func figure(v float64, digits int) string {
 	return s
 }
 
+// probability is a p-value with its sign: "= 0.21", and of a very small one only that it is.
+func probability(p float64) string {
+	if p < 1e-4 {
+		return "below 0.0001"
+	}
+	return "= " + figure(p, 2)
+}
+
 // plusMinus is a relative bound in percent, "±2.3 %"; what is known better than
 // to 0.01 % is not told finer.
 func plusMinus(percent float64) string { return "±" + figure(math.Max(percent, 0.01), 2) + " %" }

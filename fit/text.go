@@ -148,7 +148,7 @@ func (c *Card) writeFit(p *page, m *Model) {
 		{"misfit", fmt.Sprintf("%s rms over %s, fit %s %%", quantity(m.RMSE, unit, 2), counted(m.Samples, "temperature", "temperatures"), figure(m.FitPercent, 4))},
 		{"noise", noiseWords(m.Noise, unit)},
 		{"pattern", fmt.Sprintf("correlation from row to row %s; after the noise model", figure(m.Residuals.Lag1Correlation, 2))},
-		{"", fmt.Sprintf("Ljung-Box p = %s, tie to the input p = %s", figure(m.Residuals.LjungBoxP, 2), figure(m.Residuals.InputCorrelationP, 2))},
+		{"", fmt.Sprintf("Ljung-Box p %s, tie to the input p %s", probability(m.Residuals.LjungBoxP), probability(m.Residuals.InputCorrelationP))},
 	})
 }
 

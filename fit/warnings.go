@@ -57,7 +57,7 @@ func (out *outcome) warnNoise(m *Model, add warn) {
 		add("white-intervals", "", "the residuals are correlated (%s from row to row) but the fit was told they are white: the bounds are too narrow; fit with --noise auto", figure(m.Residuals.Lag1Correlation, 2))
 	}
 	if m.Residuals.LjungBoxP < 0.01 {
-		add("residual-correlation", "", "what is left after the noise model is still correlated (Ljung-Box p = %s): the noise is not a first-order one, or the structure misses something; treat the bounds as too narrow", figure(m.Residuals.LjungBoxP, 2))
+		add("residual-correlation", "", "what is left after the noise model is still correlated (Ljung-Box p %s): the noise is not a first-order one, or the structure misses something; treat the bounds as too narrow", probability(m.Residuals.LjungBoxP))
 	}
 	for _, r := range out.recs {
 		if q := r.run.Quality.Quantum; q > 0 && q > 2*m.Noise.SD {
@@ -98,7 +98,7 @@ func (out *outcome) warnNonlinear(runs []*data.Run, b *bounded, m *Model, add wa
 		if looks != "" {
 			looks = ", " + looks
 		}
-		add("input-correlation", "", "the misfit follows the input (p = %s)%s: the structure, the input law or the dead time is not right over the whole log; look at the residuals after each bump", figure(p, 2), looks)
+		add("input-correlation", "", "the misfit follows the input (p %s)%s: the structure, the input law or the dead time is not right over the whole log; look at the residuals after each bump", probability(p), looks)
 	}
 	if out.opt.BumpInstant != "unknown" { // each bump then has an instant of its own
 		fit.upDown(scenes, add)

@@ -58,7 +58,11 @@ func residualFinding(m *fit.Model, outside, of int) string {
 	if m.Residuals.LjungBoxP < 0.05 {
 		s = "What the model leaves still has a pattern"
 	}
-	s += fmt.Sprintf(" (Ljung-Box p = %s", format.Short(m.Residuals.LjungBoxP, 2))
+	p := "= " + format.Short(m.Residuals.LjungBoxP, 2)
+	if m.Residuals.LjungBoxP < 1e-4 {
+		p = "below 0.0001"
+	}
+	s += " (Ljung-Box p " + p
 	if of > 0 {
 		s += fmt.Sprintf("; %d of %d lags outside the expected range", outside, of)
 	}
