@@ -34,7 +34,7 @@ func longFamilies() []family {
 func TestLongCoverage(t *testing.T) {
 	logs, sds := 12, 4.0
 	if os.Getenv("LAGWRIGHT_LONG") != "" {
-		logs, sds = 200, 2
+		logs, sds = 400, 2
 	}
 	for i, f := range longFamilies() {
 		if logs < 100 && i != 1 && i != 4 {
