@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"math/bits"
 
 	"lagwright/ident"
 )
@@ -48,6 +49,8 @@ type filter struct {
 	logdet               float64   // log determinant of the correlation matrix of the rows
 	white                bool      // nothing to do apart from the weights isd
 	plain                bool      // white and every weight 1
+
+	ladder []rowMoments // memory of the next set
 }
 
 // rowMoments are the moments of a row that is the mean of m samples spaced h:
@@ -66,12 +69,6 @@ type rowMoments struct {
 // momentsOf are those of m samples, phi the decay from one to the next and one = 1-phi².
 func momentsOf(phi, one float64, m int) rowMoments {
 	r := rowMoments{phiM: 1, g: 1}
-	if m&(m-1) == 0 {
-		for ; m > 1; m /= 2 {
-			r = r.doubled(phi, one)
-		}
-		return r
-	}
 	// q is 1 + phi + … + phi^(l), pl is phi^l, l counted from the last sample back.
 	q, pl := 0.0, 1.0
 	n := float64(m)
@@ -131,6 +128,7 @@ type kalman struct {
 	// Of the samples inside such a row: their distance, the decay over it and what it
 	// leaves to be new, 1 - phiH².
 	lastH, phiH, oneH float64
+	ladder            []rowMoments // of 1, 2, 4, … of them
 
 	// What follows from these for the update: the last sample and the mean against
 	// the last sample seen, and the variances that the row itself brings.
@@ -173,8 +171,9 @@ func (k *kalman) next(r ident.Row) {
 	if m != k.lastM || (m > 1 && r.H != k.lastH) {
 		if m > 1 && r.H != k.lastH {
 			k.lastH, k.phiH, k.oneH = r.H, math.Exp(-r.H/k.s.tc), -math.Expm1(-2*r.H/k.s.tc)
+			k.ladder = k.ladder[:0]
 		}
-		k.mom = momentsOf(k.phiH, k.oneH, m)
+		k.mom = k.moments(m)
 		k.lastM, known = m, false
 	}
 	k.prevEnd = r.T
@@ -186,6 +185,23 @@ func (k *kalman) next(r ident.Row) {
 	}
 	k.again()
 	k.started = true
+}
+
+// moments are those of a row of m samples like the last one's; those of a ladder are
+// remembered, for rows go up and down it.
+func (k *kalman) moments(m int) rowMoments {
+	rung := bits.TrailingZeros(uint(m))
+	if m != 1<<rung {
+		return momentsOf(k.phiH, k.oneH, m)
+	}
+	for len(k.ladder) <= rung {
+		next := rowMoments{phiM: 1, g: 1}
+		if last := len(k.ladder) - 1; last >= 0 {
+			next = k.ladder[last].doubled(k.phiH, k.oneH)
+		}
+		k.ladder = append(k.ladder, next)
+	}
+	return k.ladder[rung]
 }
 
 // prepare finds what the rows from now on have in common.
@@ -262,6 +278,7 @@ func (f *filter) set(rows []ident.Row, s shape) {
 	f.decay, f.a2, f.gain, f.isd = resize(f.decay, n), resize(f.a2, n), resize(f.gain, n), resize(f.isd, n)
 	f.follow = f.follow[:0]
 	k := newKalman(s)
+	k.ladder = f.ladder[:0]
 	product := newLogProduct()
 	for i, r := range rows {
 		k.next(r)
@@ -271,7 +288,7 @@ func (f *filter) set(rows []ident.Row, s shape) {
 		}
 		product.times(k.variance)
 	}
-	f.logdet = product.log()
+	f.logdet, f.ladder = product.log(), k.ladder
 }
 
 // logDeterminant is that of the correlation matrix of the rows passed.
