@@ -90,6 +90,10 @@ func (r *record) walkResiduals(x explained, old *residualFigures) (*residualFigu
 // input in sums over several rows: a slow misfit shows in them just as well.
 const testRows = 5000
 
+// whiteRows is how many whitened rows are kept for the test of what the noise model leaves:
+// more would find it wanting on every log.
+const whiteRows = 8000
+
 // groupSize is the number of rows added up in a log of n.
 func groupSize(n int) int { return max(1, (n+testRows-1)/testRows) }
 
@@ -146,7 +150,7 @@ type residualFigures struct {
 	sum, squares, lagged float64 // lagged: Σ of neighbours' products
 	first, last          float64
 
-	white   []float64 // whitened, the first noiseRows
+	white   []float64 // whitened, the first whiteRows
 	grouped []float64 // whitened, every so many rows added up
 }
 
@@ -160,7 +164,7 @@ func (r *record) newResidualFigures(old *residualFigures) *residualFigures {
 	n := len(r.root.t)
 	group := groupSize(n)
 	return &residualFigures{
-		white:   make([]float64, 0, min(n, noiseRows)),
+		white:   make([]float64, 0, min(n, whiteRows)),
 		grouped: make([]float64, (n+group-1)/group),
 	}
 }

@@ -41,7 +41,7 @@ func newRestSums(t, y []float64, step float64, even bool) *restSums {
 	}
 	group := groupSize(n)
 	s := &restSums{t: t, y: y, step: step, group: group, rows: group * max(1, pieceRows/group)}
-	s.first = (noiseRows + s.rows - 1) / s.rows * s.rows
+	s.first = (whiteRows + s.rows - 1) / s.rows * s.rows
 	s.pieces = make([]pieceSums, (n+s.rows-1)/s.rows)
 	s.ramp, s.spare = make([]float64, s.rows), make([]float64, s.rows)
 	for k := range s.ramp {
