@@ -20,7 +20,7 @@ func startsAtRest(recs []*record, tau float64) bool {
 		}
 		slope, se := lineSlope(r.t[:n], r.y[:n])
 		lost := 2.5*se + r.run.Quality.Quantum/(r.t[n-1]-r.t[0])
-		if math.Abs(slope) > lost && math.Abs(slope)*tau > 0.1*r.rise {
+		if math.Abs(slope) > lost && math.Abs(slope)*tau > 0.1*r.rise() {
 			return false
 		}
 	}

@@ -215,7 +215,7 @@ func (f *fitted) shows() bool {
 		if f.st.Integrating() {
 			answer *= r.root.span
 		}
-		if answer > leastShown*r.rise {
+		if answer > leastShown*r.rise() {
 			return true
 		}
 	}

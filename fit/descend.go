@@ -143,13 +143,12 @@ func (e *engine) descend(eta []float64, tol float64) point {
 			}
 			x := e.damped.solve(p.grad, free)
 			next, predicted := e.advance(&p, free, x)
-			if predicted <= 0.1*tol*p.s {
-				if tol != scanTol { // a scan need not come to the bottom of every interval
-					predicted = e.within(&p, a, free, x, next, lambda, 0.1*tol*p.s)
-				}
-				if predicted <= 0.1*tol*p.s {
-					return p
-				}
+			enough := 0.1 * tol * p.s
+			if predicted <= enough && tol != scanTol { // a scan need not come to the bottom of every interval
+				predicted = e.within(&p, a, free, x, next, lambda, enough)
+			}
+			if predicted <= enough {
+				return p
 			}
 			q := e.eval(next, true)
 			if q.s < p.s {

@@ -46,22 +46,22 @@ type leaving struct {
 	x  explained
 	lo int // the next row
 
+	responses
 	base, slope float64
-	sim         *ident.Simulator
 	response    func(dst [][]float64) int
 	dst         [1][]float64
 
 	// Of the initial state: its coefficients, the response to the change at the first row,
 	// or the columns of free states.
 	state       []float64
-	started     *ident.Simulator
 	startedRows func(dst [][]float64) int
 	column      []float64
 	free        [][]float64
 }
 
 func (r *record) leaving(x explained, p part) *leaving {
-	l := &leaving{r: r, x: x, lo: p.lo, base: x.beta[0], sim: p.sim, state: x.beta[1:]}
+	l := &leaving{r: r, x: x, lo: p.lo, base: x.beta[0], state: x.beta[1:]}
+	l.sim = p.sim
 	l.response = p.sim.Pieces(x.st, x.lags, x.dead, false)
 	if r.drift {
 		l.slope, l.state = x.beta[1], x.beta[2:]
@@ -106,25 +106,43 @@ func (l *leaving) next(rows []float64) {
 	l.lo += len(rows)
 }
 
-// rest passes the next n rows where x is a straight line over them.
-func (l *leaving) rest(n int) (model line, ok bool) {
-	level, slope, ok := l.sim.Resting(n)
+// line passes the next n rows where x is a straight line over them.
+func (l *leaving) line(n int) (model line, ok bool) {
+	step := l.r.root.step
+	response, started, ok := l.lines(n, step)
 	if !ok || l.r.rest == free {
 		return line{}, false
 	}
-	step := l.r.root.step
-	model = line{l.base + l.slope*l.r.root.t[l.lo], l.slope * step}.plus(l.x.gain, line{level, slope * step})
+	model = line{l.base + l.slope*l.r.root.t[l.lo], l.slope * step}.plus(l.x.gain, response)
 	if l.started != nil {
-		level, slope, ok := l.started.Resting(n)
-		if !ok {
-			return line{}, false
-		}
-		model = model.plus(l.state[0], line{level, slope * step})
-		l.started.Rest(n)
+		model = model.plus(l.state[0], started)
 	}
-	l.sim.Rest(n)
+	l.rest(n)
 	l.lo += n
 	return model, true
+}
+
+// responses walk over the rows of a log: that to its input and, where an earlier input is
+// unknown, that to the change at the first row, else nil.
+type responses struct{ sim, started *ident.Simulator }
+
+// lines are the responses over the next n rows, step s apart, where both are straight lines.
+func (s responses) lines(n int, step float64) (response, started line, ok bool) {
+	level, slope, ok := s.sim.Resting(n)
+	response = line{level, slope * step}
+	if ok && s.started != nil {
+		level, slope, ok = s.started.Resting(n)
+		started = line{level, slope * step}
+	}
+	return response, started, ok
+}
+
+// rest passes these rows.
+func (s responses) rest(n int) {
+	s.sim.Rest(n)
+	if s.started != nil {
+		s.started.Rest(n)
+	}
 }
 
 // fromFirstRow is an input that changes by one at the first row.

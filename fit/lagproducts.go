@@ -70,11 +70,16 @@ func (p *lagProducts) after() []float64 { return p.x[min(mostMemory, len(p.x)):]
 
 // upTo returns the products at distances up to the given one.
 func (p *lagProducts) upTo(distance int) []float64 {
-	x := p.after()
-	for l := len(p.r); l <= distance; l++ {
-		p.r = append(p.r, dot(x[l:], x))
-	}
+	p.r = productsTo(p.r, p.after(), distance)
 	return p.r[:distance+1]
+}
+
+// productsTo appends to the products r of x those that are missing up to the distance.
+func productsTo(r, x []float64, distance int) []float64 {
+	for l := len(r); l <= distance; l++ {
+		r = append(r, dot(x[l:], x))
+	}
+	return r
 }
 
 // passSum adds the whitened sum of squares of the next rows, those of p at the times t.
@@ -85,11 +90,19 @@ func (w *whitener) passSum(p *lagProducts, t, spare []float64) {
 	w.passCopy(p.x[:first], t[:first], spare)
 	if rows, ok := w.k.memory(); ok && w.even && len(x) >= 2*mostMemory {
 		w.over(&w.k, len(x), p.upTo(rows), x[:rows], x[len(x)-rows:])
-		w.variances.power(w.k.variance, len(x))
-		w.k.prevEnd = t[len(t)-1]
+		w.skip(t[first:])
 		return
 	}
 	w.passCopy(x, t[first:], spare)
+}
+
+// skip passes the rows at the times t in the steady state, without a column.
+func (w *whitener) skip(t []float64) {
+	if w.k.s.unfiltered() {
+		return
+	}
+	w.variances.power(w.k.variance, len(t))
+	w.k.prevEnd = t[len(t)-1]
 }
 
 // passCopy is pass without a change to x.

@@ -242,7 +242,8 @@ func (f *fitted) accumulate(r *record, at *polished, beta []float64, idx []int, 
 	e, root := f.e, r.root
 	nl, m := e.nl, len(idx)
 	lags, dead := e.lags(at.eta), at.eta[nl]
-	walk := restWalk{f: f, r: r, gain: at.gain, beta: beta, sim: root.sim.Clone()}
+	walk := restWalk{f: f, r: r, gain: at.gain, beta: beta}
+	walk.sim = root.sim.Clone()
 	response := walk.sim.Pieces(e.st, lags, dead, true)
 	var started func([][]float64) int
 	if r.rest == earlier {

@@ -20,9 +20,8 @@ type record struct {
 	rows   []ident.Row // the same rows
 	span   float64     // s, first to last row
 	swing  float64     // of the input
-	rise   float64     // highest temperature less the lowest
-	extent CardRange
-	step   float64 // s, median interval
+	extent CardRange   // of input and temperature
+	step   float64     // s, median interval
 	sim    *ident.Simulator
 	start  *ident.Simulator // response to a unit change at the first row, for an earlier rest
 	rest   initial
@@ -88,7 +87,6 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		return nil, fmt.Errorf("%s: %w: the input is %g in every row; step it and record the answer", name, ErrNoBump, run.U[0])
 	}
 	r.span = r.t[len(r.t)-1] - r.t[0]
-	r.rise = hi - lo
 	lo, hi = rangeOf(run.U)
 	r.extent.Input = [2]float64{lo, hi}
 	r.swing = math.Max(slices.Max(r.input.Value), r.input.Before) - math.Min(slices.Min(r.input.Value), r.input.Before)
@@ -100,13 +98,16 @@ func newRecord(run *data.Run, law ident.Law) (*record, error) {
 		r.usual = usualStep(r.t, r.step)
 	}
 	r.chunks = chunkSums(r.y)
-	r.sums = newRestSums(r.t, r.y, r.step, r.even)
+	r.sums = newRestSums(r.t, r.y, r.even)
 	r.sim = ident.NewSimulator(r.t, r.input)
 	r.scope = r.wholeScope()
 	r.parts = r.noiseParts(len(r.t))
 	r.choosePlace()
 	return r, nil
 }
+
+// rise is the highest temperature less the lowest.
+func (r *record) rise() float64 { return r.extent.Temperature[1] - r.extent.Temperature[0] }
 
 // columnNamed begins a sentence on a column of a log; a run that was not read
 // from one has no names.

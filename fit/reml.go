@@ -12,8 +12,8 @@ import (
 type tangent struct {
 	rec    *record
 	left   []float64    // log minus model, unwhitened
-	rest   []float64    // the same of the parts of the log on which the noise is judged, when rec averages rows, else nil
-	judged []judgedPart // these
+	judged []judgedPart // the parts of the log on which the noise is judged, when rec averages rows, else none
+	rows   int          // of these
 	model  explained    // the model itself
 	cols   [][]float64  // orthonormal (unwhitened) directions
 	first  int          // how many of cols are linear columns
@@ -35,9 +35,9 @@ type judgedPart struct {
 
 // tangentMemory is what the tangents of a record use one after the other.
 type tangentMemory struct {
-	rest   []float64   // of the tangent
+	rest   []float64   // log minus model, of the judged parts
 	room   [][]float64 // of its columns
-	spare  []float64   // rest whitened
+	spare  []float64   // a part of it whitened
 	judged []judgedPart
 	white  [][]float64 // its directions and left, whitened
 	factor [][]float64 // Cholesky factor of their products
@@ -64,17 +64,15 @@ func (e *engine) tangent(r *record, w *workspace, p *point) *tangent {
 	t.left = left
 	t.model = explained{e.st, p.gain, e.lags(p.eta), p.eta[e.ng], beta}
 	if r.averagesRows() {
-		rows := 0
 		for _, c := range r.parts {
-			rows += c.hi - c.lo
+			t.rows += c.hi - c.lo
 		}
-		t.memory.rest = longColumn(t.memory.rest, rows)
-		t.rest = t.memory.rest
+		t.memory.rest = longColumn(t.memory.rest, t.rows)
 		if t.memory.judged == nil {
 			t.memory.judged = make([]judgedPart, len(r.parts))
 		}
 		t.judged = t.memory.judged
-		next := t.rest
+		next := t.memory.rest
 		for i, c := range r.parts {
 			n := c.hi - c.lo
 			r.residual(next[:n], t.model, c)
@@ -222,9 +220,9 @@ func (t *tangent) judgeRows(s shape) (nd node, sums onRowsSums, rss float64) {
 	logdet, n, p := sums.logdet, len(t.left), len(t.cols)
 	rss = sums.least
 	nd = node{shape: s, dof: n - p}
-	if t.rest != nil {
+	if t.rows > 0 {
 		rss, logdet = t.fullSum(s, sums)
-		n = len(t.rest)
+		n = t.rows
 		nd.dof = max(t.rec.used-p, 1)
 	}
 	nd.s2 = t.rounded(rss / float64(n-p))
@@ -233,7 +231,7 @@ func (t *tangent) judgeRows(s shape) (nd node, sums onRowsSums, rss float64) {
 }
 
 // sampled reports whether the noise is judged on a part of the log's rows.
-func (t *tangent) sampled() bool { return t.rest != nil && len(t.rest) < t.rec.used }
+func (t *tangent) sampled() bool { return t.rows > 0 && t.rows < t.rec.used }
 
 // judgeWalk is judge for a log whose noise is judged on pieces of it. A
 // walk is slow: what it takes from rss and adds to the determinants is told by the averaged
@@ -255,11 +253,11 @@ func (t *tangent) judgeWalk(s shape) node {
 	}
 	r, r0, nd := t.onRows(s), still.sums, still.node
 	nd.shape = s
-	judged := float64(len(t.rest)) / float64(t.rec.used)
+	judged := float64(t.rows) / float64(t.rec.used)
 	within := still.rss / judged
 	share := (r.least + within) / (r0.least + within)
 	nd.s2 = t.rounded(nd.s2 * share)
-	nd.dev += float64(len(t.rest)-len(t.cols))*math.Log(share) + judged*(r.logdet-r0.logdet+r.directions-r0.directions)
+	nd.dev += float64(t.rows-len(t.cols))*math.Log(share) + judged*(r.logdet-r0.logdet+r.directions-r0.directions)
 	return nd
 }
 
@@ -372,7 +370,7 @@ func (t *tangent) fixedMargins(s2, dof float64) []margin {
 // spared that: what the directions take lies about the bumps, where the pieces may not.
 func (t *tangent) fullSum(s shape, r onRowsSums) (sum, logdet float64) {
 	m := t.memory
-	m.spare = longColumn(m.spare, len(t.rest))
+	m.spare = longColumn(m.spare, t.rows)
 	w := t.rec.whitener(s)
 	for i := range t.judged {
 		w.passSum(&t.judged[i].left, t.judged[i].times, m.spare)
@@ -420,13 +418,11 @@ func (t *tangent) glance() *tangent {
 		return t
 	}
 	c := *t
-	c.judged = nil
-	rows := 0
+	c.judged, c.rows = nil, 0
 	for i := 0; i < len(t.judged); i += 3 {
 		c.judged = append(c.judged, t.judged[i])
-		rows += len(t.judged[i].times)
+		c.rows += len(t.judged[i].times)
 	}
-	c.rest = t.rest[:rows] // as many
 	return &c
 }
 
@@ -455,6 +451,10 @@ func (s *shapeSearch) strayed(from shape) bool {
 	return math.Abs(math.Log(c.tc/from.tc)) > 1.5 || c.tc <= 1.01*s.lo || c.tc >= 0.99*s.hi || c.white >= 0.99
 }
 
+// littleWhite are white fractions to try where a search ended at none: long correlation leaves
+// a valley of little white that its steps pass over.
+var littleWhite = []float64{0.03, 0.01, 0.003, 0.001}
+
 // narrow closes in on the lowest -2L around the best shape by parabolas over a lattice, da
 // and db its first steps in log tc and in white. It ends where a parabola told the value
 // that was found, or where the lattice is narrow.
@@ -478,9 +478,8 @@ func (s *shapeSearch) narrow(da, db float64) {
 			if looked || s.best.shape.white > 0 {
 				return
 			}
-			// Long correlation leaves a valley of little white that a lattice steps over.
 			looked = true
-			for _, w := range []float64{0.03, 0.01, 0.003, 0.001} {
+			for _, w := range littleWhite {
 				s.at(s.best.shape.tc, w)
 			}
 			if s.best.shape.white == 0 {

@@ -70,7 +70,7 @@ func (r *record) walkResiduals(x explained, old *residualFigures) (*residualFigu
 	for lo := 0; lo < len(t); {
 		n := min(size, len(t)-lo)
 		if reach, ok := sums.serve(&w, lo, n); ok {
-			if model, ok := walk.rest(n); ok {
+			if model, ok := walk.line(n); ok {
 				rest.under(model, sums, lo, n, reach)
 				w.passRest(&rest, f)
 				lo += n

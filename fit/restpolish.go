@@ -1,10 +1,6 @@
 package fit
 
-import (
-	"math"
-
-	"lagwright/ident"
-)
+import "math"
 
 // restWalk passes the pieces of a full log in which the normal equations of an optimum need
 // no rows: at rest every column is a straight line, or nothing, and what is left is
@@ -15,8 +11,8 @@ type restWalk struct {
 	gain float64
 	beta []float64
 
-	sim, started *ident.Simulator // started: of the change at the first row, nil without one
-	left         restRows
+	responses
+	left restRows
 }
 
 // pass adds the products of the piece that begins at row lo to the upper triangle and
@@ -28,7 +24,7 @@ func (s *restWalk) pass(lo int, w *whitener, carry []carried, upper [][]float64)
 	if !ok {
 		return 0, false
 	}
-	cols, model, ok := s.lines(lo, n)
+	cols, model, ok := s.columns(lo, n)
 	if !ok {
 		return 0, false
 	}
@@ -54,39 +50,32 @@ func (s *restWalk) pass(lo int, w *whitener, carry []carried, upper [][]float64)
 		upper[j][last] += c.at*z.sum + c.slope*z.tilt
 	}
 	upper[last][last] += z.squares
-	w.skip(&s.left)
-	s.sim.Rest(n)
-	if s.started != nil {
-		s.started.Rest(n)
-	}
+	w.skip(s.left.times())
+	s.rest(n)
 	return n, true
 }
 
-// lines are the columns of [fitted.directions] over the n rows from lo on, without what is
-// left, and the model; ok is false where they are no lines.
-func (s *restWalk) lines(lo, n int) (cols []line, model line, ok bool) {
+// columns are those of [fitted.directions] over the n rows from lo on, without what is left,
+// and the model; ok is false where they are no lines.
+func (s *restWalk) columns(lo, n int) (cols []line, model line, ok bool) {
 	root := s.r.root
-	dead := s.f.direction(s.f.e.nl + 1)
-	cols = make([]line, dead+1, dead+1+s.r.linearColumns())
-	level, slope, ok := s.sim.Resting(n)
+	response, started, ok := s.lines(n, root.step)
 	if !ok {
 		return nil, line{}, false
 	}
-	cols[0] = line{level, slope * root.step}
-	cols[dead].at = -s.gain * slope
+	dead := s.f.direction(s.f.e.nl + 1)
+	cols = make([]line, dead+1, dead+1+s.r.linearColumns())
+	cols[0] = response
+	cols[dead].at = -s.gain * response.slope / root.step
 	cols = append(cols, line{at: 1})
 	if s.r.drift {
 		cols = append(cols, line{root.t[lo], root.step})
 	}
 	if s.started != nil {
-		level, slope, ok := s.started.Resting(n)
-		if !ok {
-			return nil, line{}, false
-		}
-		cols[dead].at -= s.beta[len(s.beta)-1] * slope
-		cols = append(cols, line{level, slope * root.step})
+		cols[dead].at -= s.beta[len(s.beta)-1] * started.slope / root.step
+		cols = append(cols, started)
 	}
-	model = model.plus(s.gain, cols[0])
+	model = model.plus(s.gain, response)
 	for i, c := range cols[dead+1:] {
 		model = model.plus(s.beta[i], c)
 	}

@@ -15,7 +15,6 @@ import "sync"
 // restSums are the sums over the pieces of a full log.
 type restSums struct {
 	t, y   []float64
-	step   float64
 	group  int // rows added up in what the input is compared with
 	rows   int // of a piece, whole groups; the last piece of the log may be shorter
 	first  int // row from which pieces are taken by their sums
@@ -34,13 +33,13 @@ type pieceSums struct {
 }
 
 // newRestSums is nil for a log that is too short to gain by it, or unevenly sampled.
-func newRestSums(t, y []float64, step float64, even bool) *restSums {
+func newRestSums(t, y []float64, even bool) *restSums {
 	n := len(t)
 	if !even || n < 2*noiseRows {
 		return nil
 	}
 	group := groupSize(n)
-	s := &restSums{t: t, y: y, step: step, group: group, rows: group * max(1, pieceRows/group)}
+	s := &restSums{t: t, y: y, group: group, rows: group * max(1, pieceRows/group)}
 	s.first = (whiteRows + s.rows - 1) / s.rows * s.rows
 	s.pieces = make([]pieceSums, (n+s.rows-1)/s.rows)
 	s.ramp, s.spare = make([]float64, s.rows), make([]float64, s.rows)
@@ -94,9 +93,7 @@ func (s *restSums) piece(lo, distance int) pieceSums {
 			p.groups = append(p.groups, total(rest[:min(s.group, len(rest))]))
 		}
 	}
-	for l := len(p.r); l <= distance; l++ {
-		p.r = append(p.r, dot(x[l:], x))
-	}
+	p.r = productsTo(p.r, x, distance)
 	return *p
 }
 
@@ -133,6 +130,12 @@ func (r *restRows) under(model line, s *restSums, lo, n, reach int) {
 	}
 }
 
+// times are those of the piece's rows.
+func (r *restRows) times() []float64 { return r.s.t[r.lo : r.lo+r.n] }
+
+// sum is that of what is left.
+func (r *restRows) sum() float64 { return r.p.sum - r.less.sum(float64(r.n)) }
+
 // row is what is left of row k of the piece.
 func (r *restRows) row(k int) float64 { return r.s.y[r.lo+k] - r.model.over(float64(k)) }
 
@@ -145,7 +148,7 @@ type whiteSums struct{ sum, tilt, squares float64 }
 //	(1 − d)·Σa[k] = g·Σe[k] + a − b,  (1 − d)·Σk·a[k] = d·Σa[k] + g·(Σk·e[k] + Σe[k]) − n·b.
 func (r *restRows) whiten(k *kalman, c *carried) whiteSums {
 	n := float64(r.n)
-	sum, tilt := r.p.sum-r.less.sum(n), r.p.tilt-r.less.tilt(n)
+	sum, tilt := r.sum(), r.p.tilt-r.less.tilt(n)
 	if k.s.unfiltered() {
 		c.sum += r.room[0]
 		return whiteSums{sum, tilt, r.room[0]}
@@ -167,16 +170,7 @@ func (w *whitener) passRest(r *restRows, f *residualFigures) {
 	f.addRest(r)
 	w.groupRest(r, f)
 	r.whiten(&w.k, &w.carried)
-	w.skip(r)
-}
-
-// skip passes the rows without a column.
-func (w *whitener) skip(r *restRows) {
-	if w.k.s.unfiltered() {
-		return
-	}
-	w.variances.power(w.k.variance, r.n)
-	w.k.prevEnd = r.s.t[r.lo+r.n-1]
+	w.skip(r.times())
 }
 
 // groupRest adds up the whitened rows of the piece's groups. With a what the filter carries
@@ -187,13 +181,13 @@ func (w *whitener) groupRest(r *restRows, f *residualFigures) {
 	white := k.s.unfiltered()
 	var room [mostMemory]float64
 	powers := room[:r.reach] // d^(reach−1) … d, 1
-	next := 1.0              // d^reach
-	var faded, fadedTilt float64
+	power := 1.0
+	var faded, fadedTilt float64 // Σd^j and Σj·d^j
 	for j := range powers {
-		powers[r.reach-1-j] = next
-		faded += next
-		fadedTilt += next * float64(j)
-		next *= k.decay
+		powers[r.reach-1-j] = power
+		faded += power
+		fadedTilt += power * float64(j)
+		power *= k.decay
 	}
 	for g, lo := 0, 0; lo < r.n; g, lo = g+1, lo+r.s.group {
 		hi := min(lo+r.s.group, r.n)
@@ -220,7 +214,7 @@ func (w *whitener) groupRest(r *restRows, f *residualFigures) {
 // addRest takes the rows of a piece at rest, before they are whitened.
 func (f *residualFigures) addRest(r *restRows) {
 	f.lagged += f.last*r.row(0) + r.room[1]
-	f.sum += r.p.sum - r.less.sum(float64(r.n))
+	f.sum += r.sum()
 	f.squares += r.room[0]
 	f.last = r.row(r.n - 1)
 	f.n += r.n

@@ -40,40 +40,37 @@ func (t *tangent) bestWalk(near shape) node {
 		}
 		step = [3]float64{0.6, 0.2, 0.8}
 	}
-	looked := false // for a little white
-	for step[0] > 0.1 || !looked {
-		if step[0] <= 0.1 {
-			// Long correlation leaves a valley of little white that the steps pass over.
-			looked = true
-			if best.shape.white == 0 {
-				for _, w := range []float64{0.03, 0.01, 0.003, 0.001} {
-					s := best.shape
-					s.white = w
-					better(s)
+	closeIn := func(step [3]float64) {
+		for step[0] > 0.1 {
+			c, moved := best.shape, false
+			for axis := range 3 {
+				for _, sign := range []float64{1, -1} {
+					if better(c.moved(axis, sign*step[axis])) {
+						moved = true
+						break
+					}
 				}
 			}
-			if best.shape.white == 0 || best.shape.white > 0.03 {
-				break
+			if moved { // on in the direction that all the moves together took
+				d := best.shape
+				better(shape{tc: d.tc * d.tc / c.tc, white: 2*d.white - c.white, walk: d.walk * d.walk / c.walk})
+				continue
 			}
-			step = [3]float64{0.2, best.shape.white / 2, 0.4}
-		}
-		c, moved := best.shape, false
-		for axis := range 3 {
-			for _, sign := range []float64{1, -1} {
-				if better(c.moved(axis, sign*step[axis])) {
-					moved = true
-					break
-				}
+			for axis := range step {
+				step[axis] /= 2
 			}
 		}
-		if moved { // on in the direction that all the moves together took
-			d := best.shape
-			better(shape{tc: d.tc * d.tc / c.tc, white: 2*d.white - c.white, walk: d.walk * d.walk / c.walk})
-			continue
+	}
+	closeIn(step)
+	if best.shape.white == 0 {
+		for _, w := range littleWhite {
+			s := best.shape
+			s.white = w
+			better(s)
 		}
-		for axis := range step {
-			step[axis] /= 2
-		}
+	}
+	if w := best.shape.white; w > 0 && w <= littleWhite[0] {
+		closeIn([3]float64{0.2, w / 2, 0.4})
 	}
 	return best
 }
